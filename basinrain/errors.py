@@ -206,9 +206,7 @@ class Problems:
         listed = list(self._kept)
         if self._count > len(listed):
             more = self._count - len(listed)
-            listed.append(
-                Problem(item=f"{more} more problems of this input", found="not listed", file=self._file)
-            )
+            listed.append(Problem(item=f"{more} more problems of this input", found="not listed", file=self._file))
         raise kind(listed)
 
 

@@ -38,9 +38,7 @@ DEPTH_UNITS: Final = MappingProxyType(
 )
 """Depth units and how many mm one of them is (1 kg m⁻² of water is 1 mm at 1000 kg m⁻³, WMO-No. 8)."""
 
-LENGTH_UNITS: Final = MappingProxyType(
-    {"m": 1.0, "km": 1000.0, "ft": 0.3048, "us-ft": 1200 / 3937, "mi": 1609.344}
-)
+LENGTH_UNITS: Final = MappingProxyType({"m": 1.0, "km": 1000.0, "ft": 0.3048, "us-ft": 1200 / 3937, "mi": 1609.344})
 """Length units and how many m one of them is."""
 
 AREA_UNITS: Final = MappingProxyType(

@@ -1,0 +1,1 @@
+"""Areal rainfall from rain gauges."""

@@ -1,0 +1,176 @@
+"""The gauge network: where the gauges are and what is known of them."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain import ground
+from basinrain.errors import DataError, Problems
+
+__all__ = ["GaugeNetwork"]
+
+
+@dataclass(frozen=True, eq=False)
+class GaugeNetwork:
+    """Gauges with their positions, elevations, normals and times of service.
+
+    Parameters
+    ----------
+    ids : tuple of str
+        One id per gauge, all different. Wherever a choice between gauges is a tie, the id decides.
+    x, y : array of float, shape (n_gauges,)
+        Easting and northing, or longitude and latitude in degrees, in ``crs``; finite.
+    crs : str
+        Anything pyproj reads, or ``"local"``: a flat plane in metres that belongs to no map.
+    names : tuple of str, optional
+        Names for people; the ids where none are given.
+    elevation : array of float, shape (n_gauges,), optional
+        m above sea level; NaN where not known.
+    normals : array of float, shape (n_gauges, 1) or (n_gauges, 12), optional
+        Normal precipitation in mm of the year (one column) or of the months January to December; NaN where not known.
+    normal_period : str
+        The years that the normals belong to, as the user wrote them: ``"1991-2020"``.
+    opened, closed : array of datetime64[s], shape (n_gauges,), optional
+        In service over ``(opened, closed]``; NaT for no limit.
+
+    Raises
+    ------
+    DataError
+        Ids are repeated or empty, a position is not finite, or an array has another length; all such problems together.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 3000.0], y=[0.0, 4000.0], crs="local")
+    >>> len(network), network.position("B")
+    (2, 1)
+    >>> network.distances()
+    array([[   0., 5000.],
+           [5000.,    0.]])
+    >>> network.subset([False, True]).ids
+    ('B',)
+    >>> GaugeNetwork(ids=("A", "A"), x=[0.0, 1.0], y=[0.0, 1.0], crs="local")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.DataError: gauge A: found the id twice; expected each gauge once; rename or remove one of them
+    """
+
+    ids: tuple[str, ...]
+    x: npt.NDArray[np.float64]
+    y: npt.NDArray[np.float64]
+    crs: str = field(kw_only=True)
+    names: tuple[str, ...] = field(default=(), kw_only=True)
+    elevation: npt.NDArray[np.float64] = field(default_factory=lambda: np.empty(0), kw_only=True)
+    normals: npt.NDArray[np.float64] | None = field(default=None, kw_only=True)
+    normal_period: str = field(default="", kw_only=True)
+    opened: npt.NDArray[np.datetime64] = field(default_factory=lambda: np.empty(0, "datetime64[s]"), kw_only=True)
+    closed: npt.NDArray[np.datetime64] = field(default_factory=lambda: np.empty(0, "datetime64[s]"), kw_only=True)
+
+    def __post_init__(self) -> None:
+        n = len(self.ids)
+        put = object.__setattr__
+        put(self, "ids", tuple(self.ids))
+        put(self, "names", tuple(self.names) or self.ids)
+        put(self, "x", _frozen(self.x, np.float64))
+        put(self, "y", _frozen(self.y, np.float64))
+        # An empty array says "not given".
+        put(self, "elevation", _frozen(self.elevation if len(self.elevation) else np.full(n, np.nan), np.float64))
+        if self.normals is not None:
+            put(self, "normals", _frozen(self.normals, np.float64))
+        for name in ("opened", "closed"):
+            value = getattr(self, name)
+            put(self, name, _frozen(value if len(value) else np.full(n, "NaT"), "datetime64[s]"))
+        self._check(n)
+
+    def _check(self, n: int) -> None:
+        problems = Problems()
+        seen: set[str] = set()
+        for gauge in self.ids:
+            if not gauge.strip():
+                problems.add(item="a gauge", found="an empty id", expected="an id for every gauge")
+            elif gauge in seen:
+                problems.add(
+                    item=f"gauge {gauge}",
+                    found="the id twice",
+                    expected="each gauge once",
+                    remedy="rename or remove one of them",
+                    gauge=gauge,
+                )
+            seen.add(gauge)
+        for name in ("names", "x", "y", "elevation", "opened", "closed"):
+            if len(getattr(self, name)) != n:
+                problems.add(item=name, found=f"{len(getattr(self, name))} values", expected=f"{n}, one a gauge")
+        if self.normals is not None and self.normals.shape not in ((n, 1), (n, 12)):
+            problems.add(
+                item="normals",
+                found=f"an array of shape {self.normals.shape}",
+                expected=f"({n}, 1) for the year or ({n}, 12) for the months",
+            )
+        if len(self.x) == n == len(self.y):
+            for gauge, x, y in zip(self.ids, self.x, self.y, strict=True):
+                if not (np.isfinite(x) and np.isfinite(y)):
+                    problems.add(
+                        item=f"gauge {gauge}",
+                        found=f"position ({x}, {y})",
+                        expected="two finite coordinates",
+                        gauge=gauge,
+                    )
+        problems.raise_as(DataError)
+
+    def __len__(self) -> int:
+        return len(self.ids)
+
+    def position(self, gauge: str) -> int:
+        """Return the place of ``gauge`` in the network's order; ``ValueError`` when it is not there."""
+        return self.ids.index(gauge)
+
+    @property
+    def id_rank(self) -> npt.NDArray[np.int64]:
+        """The rank of every gauge's id in sorted order, by which ties are broken."""
+        rank = np.empty(len(self), dtype=np.int64)
+        rank[sorted(range(len(self)), key=lambda i: self.ids[i])] = np.arange(len(self))
+        return rank
+
+    def subset(self, mask: Sequence[bool] | npt.NDArray[np.bool_]) -> GaugeNetwork:
+        """Return the network of the gauges where ``mask`` (n_gauges,) is true, in the same order."""
+        keep = np.flatnonzero(np.asarray(mask, dtype=bool))
+        return replace(
+            self,
+            ids=tuple(self.ids[i] for i in keep),
+            names=tuple(self.names[i] for i in keep),
+            x=self.x[keep],
+            y=self.y[keep],
+            elevation=self.elevation[keep],
+            normals=None if self.normals is None else self.normals[keep],
+            opened=self.opened[keep],
+            closed=self.closed[keep],
+        )
+
+    def to_crs(self, crs: str) -> GaugeNetwork:
+        """Return the same gauges with positions in ``crs``; ``"local"`` cannot be changed into another or back."""
+        x, y = ground.transform(self.x, self.y, self.crs, crs)
+        return replace(self, x=x, y=y, crs=crs)
+
+    def distances(self) -> npt.NDArray[np.float64]:
+        """Return the distances between all gauges in m, shape (n_gauges, n_gauges); geodesic unless ``crs`` is local."""
+        return ground.distances(self.x, self.y, self.x, self.y, self.crs)
+
+    def in_service(self, starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> npt.NDArray[np.bool_]:
+        """Return whether every gauge was in service over the whole of every interval, shape (n_steps, n_gauges).
+
+        An interval without times (NaT) counts as in service.
+        """
+        begins, finishes = starts[:, None], ends[:, None]
+        late = begins < self.opened[None, :]
+        early = finishes > self.closed[None, :]
+        return ~(late | early)
+
+
+def _frozen(values: Any, dtype: Any) -> Any:  # noqa: ANN401 - any array-like, any dtype
+    array = np.array(values, dtype=dtype)
+    array.setflags(write=False)
+    return array

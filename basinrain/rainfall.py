@@ -1,0 +1,222 @@
+"""The rain record: depths per interval and gauge, and where every value came from."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field, replace
+from enum import IntEnum
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.errors import DataError, Problems
+
+__all__ = ["MEASURED", "REPORTING", "WITHOUT_DEPTH", "KnownTotal", "RainRecord", "Status"]
+
+
+class Status(IntEnum):
+    """Where a value of the record came from. It travels to every output, by its ``label``.
+
+    Examples
+    --------
+    >>> Status.PRESUMED_ZERO.label, Status(3) is Status.MISSING
+    ('presumed zero', True)
+    """
+
+    OBSERVED = 0
+    ZERO = 1
+    TRACE = 2
+    MISSING = 3
+    PRESUMED_ZERO = 4
+    ACCUMULATED = 5
+    SPREAD = 6
+    ESTIMATED = 7
+    ADJUSTED = 8
+    REJECTED = 9
+    NOT_INSTALLED = 10
+    INFILLED = 11
+
+    @property
+    def label(self) -> str:
+        """The status in words: ``"not installed"``."""
+        return self.name.lower().replace("_", " ")
+
+
+MEASURED: Final = frozenset(
+    {
+        Status.OBSERVED,
+        Status.ZERO,
+        Status.TRACE,
+        Status.PRESUMED_ZERO,
+        Status.ESTIMATED,
+        Status.ADJUSTED,
+    }
+)
+"""Statuses whose value was measured at the record's own step; only such values are donors step by step."""
+
+REPORTING: Final = MEASURED | {Status.SPREAD}
+"""Statuses whose value is the gauge's own: measured at the step, or measured over a longer interval and spread."""
+
+WITHOUT_DEPTH: Final = frozenset({Status.MISSING, Status.REJECTED, Status.NOT_INSTALLED, Status.ACCUMULATED})
+"""Statuses that have no depth at the step; the depth is NaN there, never zero."""
+
+
+@dataclass(frozen=True)
+class KnownTotal:
+    """A depth that is known over several steps only: an accumulation, a daily reading, a storm total.
+
+    Parameters
+    ----------
+    gauge
+        The gauge's id.
+    start, end
+        The interval ``(start, end]`` over which it fell, datetime64[s] in the record's clock.
+    depth
+        mm.
+    """
+
+    gauge: str
+    start: np.datetime64
+    end: np.datetime64
+    depth: float
+
+
+@dataclass(frozen=True, eq=False)
+class RainRecord:
+    """Depths of rain by interval and gauge.
+
+    Parameters
+    ----------
+    gauges : tuple of str
+        Gauge ids, the columns.
+    starts, ends : array of datetime64[s], shape (n_steps,)
+        Every interval is ``(start, end]``, in the record's clock. Ends increase and intervals do not overlap. A record of
+        storm totals without times has NaT in both.
+    depth : array of float, shape (n_steps, n_gauges)
+        mm; NaN where the status is one of :data:`WITHOUT_DEPTH`, and nowhere else.
+    status : array of uint8, shape (n_steps, n_gauges)
+        A :class:`Status` for every value.
+    step : str
+        The step in words: ``"1h"``, ``"1d"``, ``"1mo"``, ``"storm"`` for storm totals.
+    zone : str
+        The clock, a fixed offset from UTC such as ``"+02:00"``; empty where the files do not say.
+    totals : tuple of KnownTotal
+        Depths known only over several steps. Before spreading, their steps have status ACCUMULATED and no depth.
+    day_phase : int
+        Seconds after midnight at which the record's rainfall day begins.
+
+    Raises
+    ------
+    DataError
+        Shapes disagree, times do not increase, a depth is negative or infinite, or depth and status contradict each other.
+
+    Examples
+    --------
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(
+    ...     ("A", "B"), ends - np.timedelta64(3600, "s"), ends, [[1.0, 0.0], [2.5, np.nan]], step="1h"
+    ... )
+    >>> record.status
+    array([[0, 1],
+           [0, 3]], dtype=uint8)
+    >>> record.reporting
+    array([[ True,  True],
+           [ True, False]])
+    >>> RainRecord.from_depths(("A",), ends - 3600, ends, [[1.0], [-2.0]], step="1h")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.DataError: gauge A: found -2.0 mm; expected a depth of 0 or more
+    """
+
+    gauges: tuple[str, ...]
+    starts: npt.NDArray[np.datetime64]
+    ends: npt.NDArray[np.datetime64]
+    depth: npt.NDArray[np.float64]
+    status: npt.NDArray[np.uint8]
+    step: str = field(kw_only=True)
+    zone: str = field(default="", kw_only=True)
+    totals: tuple[KnownTotal, ...] = field(default=(), kw_only=True)
+    day_phase: int = field(default=0, kw_only=True)
+
+    def __post_init__(self) -> None:
+        problems = Problems()
+        shape = (len(self.ends), len(self.gauges))
+        for name in ("depth", "status"):
+            if getattr(self, name).shape != shape:
+                problems.add(item=name, found=f"an array of shape {getattr(self, name).shape}", expected=f"{shape}")
+        problems.raise_as(DataError)
+        if not np.isnat(self.ends).any() and (np.diff(self.ends) <= np.timedelta64(0, "s")).any():
+            problems.add(item="times", found="ends that do not increase", expected="each interval once, in order")
+        bad = (self.depth < 0) | np.isinf(self.depth)
+        for t, g in np.argwhere(bad):
+            problems.add(
+                item=f"gauge {self.gauges[g]}",
+                found=f"{self.depth[t, g]} mm",
+                expected="a depth of 0 or more",
+                gauge=self.gauges[g],
+                time=str(self.ends[t]),
+            )
+        empty = np.isin(self.status, [int(s) for s in WITHOUT_DEPTH])
+        for t, g in np.argwhere(empty != np.isnan(self.depth)):
+            problems.add(
+                item=f"gauge {self.gauges[g]}",
+                found=f"depth {self.depth[t, g]} with status '{Status(self.status[t, g]).label}'",
+                expected="no depth where nothing is known, and only there",
+                gauge=self.gauges[g],
+                time=str(self.ends[t]),
+            )
+        problems.raise_as(DataError)
+
+    @classmethod
+    def from_depths(
+        cls,
+        gauges: tuple[str, ...],
+        starts: npt.NDArray[np.datetime64],
+        ends: npt.NDArray[np.datetime64],
+        depth: npt.ArrayLike,
+        *,
+        step: str,
+        zone: str = "",
+    ) -> RainRecord:
+        """Return a record whose statuses follow from the depths: NaN is missing, 0 is zero, the rest is observed."""
+        values = np.array(depth, dtype=float)
+        status = np.where(np.isnan(values), Status.MISSING, np.where(values == 0, Status.ZERO, Status.OBSERVED)).astype(
+            np.uint8
+        )
+        return cls(
+            gauges,
+            np.asarray(starts, dtype="datetime64[s]"),
+            np.asarray(ends, dtype="datetime64[s]"),
+            values,
+            status,
+            step=step,
+            zone=zone,
+        )
+
+    def __len__(self) -> int:
+        return len(self.ends)
+
+    @property
+    def measured(self) -> npt.NDArray[np.bool_]:
+        """Where a value was measured at the record's own step, shape (n_steps, n_gauges)."""
+        return np.isin(self.status, [int(s) for s in MEASURED])
+
+    @property
+    def reporting(self) -> npt.NDArray[np.bool_]:
+        """Where a value is the gauge's own, measured at the step or spread, shape (n_steps, n_gauges)."""
+        return np.isin(self.status, [int(s) for s in REPORTING])
+
+    def window(self, first: int, stop: int) -> RainRecord:
+        """Return the steps ``first`` to ``stop`` (exclusive); ``totals`` are kept whole."""
+        return replace(
+            self,
+            starts=self.starts[first:stop],
+            ends=self.ends[first:stop],
+            depth=self.depth[first:stop],
+            status=self.status[first:stop],
+        )
+
+    def ordered(self, gauges: tuple[str, ...]) -> RainRecord:
+        """Return the same record with its columns in the order of ``gauges``, each of which must be a column."""
+        order = [self.gauges.index(gauge) for gauge in gauges]
+        return replace(self, gauges=tuple(gauges), depth=self.depth[:, order], status=self.status[:, order])
