@@ -33,15 +33,19 @@ class Basins:
         Coordinate system of the polygons, or ``"local"`` (metres).
     official_areas : array of float, shape (n_basins,), optional
         Areas in m² that a register states; NaN where it states none.
+    elevations : array of float, shape (n_basins, 2), optional
+        Lowest and highest ground of each basin, m above sea level; NaN where not known.
 
     Raises
     ------
     DataError
-        Ids are repeated, a polygon is empty, invalid or without area; all such problems together.
+        Ids are repeated, a polygon is empty, invalid or without area, an array has another length; all such problems
+        together.
 
     Examples
     --------
-    >>> basins = Basins(ids=("west", "east"), polygons=[shapely.box(0, 0, 5, 10), shapely.box(5, 0, 10, 10)], crs="local")
+    >>> halves = [shapely.box(0, 0, 5, 10), shapely.box(5, 0, 10, 10)]
+    >>> basins = Basins(ids=("west", "east"), polygons=halves, crs="local")
     >>> basins.areas
     array([50., 50.])
     >>> basins.with_union().ids
@@ -59,15 +63,23 @@ correct or remove it
     polygons: npt.NDArray[np.object_]
     crs: str = field(kw_only=True)
     official_areas: npt.NDArray[np.float64] = field(default_factory=lambda: np.empty(0), kw_only=True)
+    elevations: npt.NDArray[np.float64] = field(default_factory=lambda: np.empty((0, 2)), kw_only=True)
 
     def __post_init__(self) -> None:
         put = object.__setattr__
         put(self, "ids", tuple(self.ids))
+        problems = Problems()
+        for name in ("polygons", "official_areas"):
+            if (n := len(getattr(self, name))) != len(self.ids) and (n or name == "polygons"):
+                problems.add(item=name, found=f"{n} values", expected=f"{len(self.ids)}, one a basin")
+        problems.raise_as(DataError)
         polygons = np.empty(len(self.ids), dtype=object)
         polygons[:] = list(self.polygons)
         put(self, "polygons", polygons)
         if not len(self.official_areas):
             put(self, "official_areas", np.full(len(self.ids), np.nan))
+        if not len(self.elevations):
+            put(self, "elevations", np.full((len(self.ids), 2), np.nan))
         problems = Problems()
         seen: set[str] = set()
         for basin, polygon in zip(self.ids, polygons, strict=True):
@@ -125,10 +137,9 @@ correct or remove it
             ids=(*self.ids, UNION),
             polygons=polygons,
             official_areas=np.append(self.official_areas, np.nan),
+            elevations=np.vstack([self.elevations, [self.elevations[:, 0].min(), self.elevations[:, 1].max()]]),
         )
 
     def to_crs(self, crs: str) -> Basins:
         """Return the same basins in ``crs``, edges kept straight as the present system draws them."""
-        if crs == self.crs:
-            return self
         return replace(self, polygons=ground.project(self.polygons, self.crs, crs), crs=crs)

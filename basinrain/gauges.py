@@ -4,15 +4,21 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
-from typing import Any
+from typing import Any, Final
 
 import numpy as np
 import numpy.typing as npt
+from scipy.sparse import coo_array
+from scipy.sparse.csgraph import connected_components
+from scipy.spatial import cKDTree
 
 from basinrain import ground
 from basinrain.errors import DataError, Problems
 
-__all__ = ["GaugeNetwork"]
+__all__ = ["GaugeNetwork", "colocated_groups", "refuse_colocated"]
+
+_ONE_PLACE: Final = 0.01
+"""Gauges closer than this, in m, are at one place."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -156,7 +162,7 @@ class GaugeNetwork:
         return replace(self, x=x, y=y, crs=crs)
 
     def distances(self) -> npt.NDArray[np.float64]:
-        """Return the distances between all gauges in m, shape (n_gauges, n_gauges); geodesic unless ``crs`` is local."""
+        """Return the distances between all gauges in m, (n_gauges, n_gauges); geodesic unless ``crs`` is local."""
         return ground.distances(self.x, self.y, self.x, self.y, self.crs)
 
     def in_service(self, starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> npt.NDArray[np.bool_]:
@@ -168,6 +174,69 @@ class GaugeNetwork:
         late = begins < self.opened[None, :]
         early = finishes > self.closed[None, :]
         return ~(late | early)
+
+
+def colocated_groups(network: GaugeNetwork) -> list[tuple[str, ...]]:
+    """Return the gauges that stand at one place: within 0.01 m of each other.
+
+    Parameters
+    ----------
+    network
+        Positions in a plane in metres.
+
+    Returns
+    -------
+    list of tuple of str
+        The ids of each such place, two or more, in the network's order; empty where all gauges stand apart.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[0.0, 5000.0, 0.004], y=[0.0, 0.0, 0.0], crs="local")
+    >>> colocated_groups(network)
+    [('A', 'C')]
+    """
+    n = len(network)
+    pairs = cKDTree(np.column_stack([network.x, network.y])).query_pairs(_ONE_PLACE, output_type="ndarray")
+    links = coo_array((np.ones(len(pairs)), (pairs[:, 0], pairs[:, 1])), shape=(n, n))
+    _, place = connected_components(links, directed=False)
+    groups: dict[int, list[str]] = {}
+    for gauge, label in zip(network.ids, place.tolist(), strict=True):
+        groups.setdefault(label, []).append(gauge)
+    return [tuple(group) for group in groups.values() if len(group) > 1]
+
+
+def refuse_colocated(network: GaugeNetwork) -> None:
+    """Raise where gauges stand at one place, since no method can tell their areas apart.
+
+    Parameters
+    ----------
+    network
+        Positions in a plane in metres.
+
+    Raises
+    ------
+    DataError
+        One problem a place, naming its gauges.
+
+    Examples
+    --------
+    >>> refuse_colocated(GaugeNetwork(ids=("A", "B"), x=[7.0, 7.0], y=[2.0, 2.0], crs="local"))
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.DataError: gauges A and B: found one place (x 7.00, y 2.00); expected places apart; correct a \
+position, exclude all but one, or average them with colocated = "mean"
+    """
+    problems = Problems()
+    for group in colocated_groups(network):
+        first = network.position(group[0])
+        problems.add(
+            item=f"gauges {', '.join(group[:-1])} and {group[-1]}",
+            found=f"one place (x {network.x[first]:.2f}, y {network.y[first]:.2f})",
+            expected="places apart",
+            remedy='correct a position, exclude all but one, or average them with colocated = "mean"',
+            gauge=group[0],
+        )
+    problems.raise_as(DataError)
 
 
 def _frozen(values: Any, dtype: Any) -> Any:  # noqa: ANN401 - any array-like, any dtype

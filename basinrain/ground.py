@@ -1,9 +1,9 @@
 """The ground: coordinate systems, the working plane in which areas are taken, and distances.
 
-Areas and grids live in one plane per run: a Lambert azimuthal equal-area plane centred on the basins, unless the user names
-another. Distances between gauges for infilling are geodesic (WGS 84 ellipsoid; Karney 2013, through PROJ). Coordinates are
-always in the order x (easting, longitude), y (northing, latitude). ``"local"`` is a flat plane in metres without a place on
-the map, for handbook cases and site grids; its distances are planar.
+Areas and grids live in one plane per run: a Lambert azimuthal equal-area plane centred on the basins, unless the user
+names another. Distances between gauges for infilling are geodesic (WGS 84 ellipsoid; Karney 2013, through PROJ).
+Coordinates are always in the order x (easting, longitude), y (northing, latitude). ``"local"`` is a flat plane in
+metres without a place on the map, for handbook cases and site grids; its distances are planar.
 """
 
 from __future__ import annotations
@@ -23,12 +23,15 @@ __all__ = [
     "LOCAL",
     "LONLAT",
     "Plane",
+    "degree_fault",
     "distances",
     "equal_area_plane",
     "is_geographic",
     "parse_crs",
     "project",
+    "same_crs",
     "transform",
+    "unit_name",
 ]
 
 LOCAL: Final = "local"
@@ -36,6 +39,7 @@ LONLAT: Final = "EPSG:4326"
 
 _EDGE_DEGREES: Final = 0.01
 _EDGE_METRES: Final = 1000.0
+_HAIR: Final = 1e-6
 
 
 @dataclass(frozen=True)
@@ -61,20 +65,23 @@ class Plane:
 @lru_cache(maxsize=64)
 def _parsed(crs: str) -> pyproj.CRS:
     try:
-        return pyproj.CRS.from_user_input(crs)
+        parsed = pyproj.CRS.from_user_input(crs)
     except pyproj.exceptions.CRSError:
+        parsed = None
+    if parsed is None or not (parsed.is_geographic or parsed.is_projected):
         raise JobError(
             Problem(
                 item="coordinate reference system",
                 found=f"'{crs}'",
-                expected="'local', an EPSG code such as 'EPSG:4326', WKT or a PROJ string",
+                expected="'local', or a map's system: an EPSG code such as 'EPSG:4326', WKT or a PROJ string",
                 remedy="correct crs",
             )
-        ) from None
+        )
+    return parsed
 
 
 def parse_crs(crs: str) -> str:
-    """Return ``crs`` unchanged when it is ``"local"`` or known to pyproj.
+    """Return ``crs`` unchanged when it is ``"local"``, or a geographic or projected system known to pyproj.
 
     Raises
     ------
@@ -88,8 +95,8 @@ def parse_crs(crs: str) -> str:
     >>> parse_crs("EPSG:nonsense")
     Traceback (most recent call last):
         ...
-    basinrain.errors.JobError: coordinate reference system: found 'EPSG:nonsense'; expected 'local', an EPSG code such as \
-'EPSG:4326', WKT or a PROJ string; correct crs
+    basinrain.errors.JobError: coordinate reference system: found 'EPSG:nonsense'; expected 'local', or a map's \
+system: an EPSG code such as 'EPSG:4326', WKT or a PROJ string; correct crs
     """
     if crs != LOCAL:
         _parsed(crs)
@@ -104,17 +111,56 @@ def is_geographic(crs: str) -> bool:
     >>> is_geographic("EPSG:4326"), is_geographic("local")
     (True, False)
     """
-    return crs != LOCAL and _parsed(crs).is_geographic
+    return crs != LOCAL and bool(_parsed(crs).is_geographic)
+
+
+def unit_name(crs: str) -> str:
+    """Return the unit of coordinates in ``crs``, as its authority calls it.
+
+    Examples
+    --------
+    >>> unit_name("EPSG:5070"), unit_name("EPSG:2263"), unit_name("local")
+    ('metre', 'US survey foot', 'metre')
+    """
+    return "metre" if crs == LOCAL else str(_parsed(crs).axis_info[0].unit_name)
+
+
+@lru_cache(maxsize=256)
+def same_crs(one: str, other: str) -> bool:
+    """Return whether two texts name one coordinate system, the order of its axes apart.
+
+    Examples
+    --------
+    >>> same_crs("EPSG:4326", "OGC:CRS84"), same_crs("EPSG:4326", "EPSG:4269"), same_crs("local", "EPSG:4326")
+    (True, False, False)
+    """
+    if one == other or LOCAL in (one, other):
+        return one == other
+    return bool(_parsed(one).equals(_parsed(other), ignore_axis_order=True))
+
+
+def degree_fault(lon: float, lat: float) -> str:
+    """Return what is wrong with a longitude and a latitude in degrees; empty where a place may have them.
+
+    Examples
+    --------
+    >>> degree_fault(-105.0, 39.7), degree_fault(39.7, -105.0), degree_fault(282.0, 39.7)
+    ('', 'longitude and latitude look swapped', 'longitude goes from -180 to 180, latitude from -90 to 90')
+    >>> degree_fault(622751.8, 2352667.2)
+    'the coordinates look projected: give their own crs'
+    """
+    if abs(lon) <= 180 and abs(lat) <= 90:
+        return ""
+    if abs(lat) <= 180 and abs(lon) <= 90:
+        return "longitude and latitude look swapped"
+    if max(abs(lon), abs(lat)) > 360:
+        return "the coordinates look projected: give their own crs"
+    return "longitude goes from -180 to 180, latitude from -90 to 90"
 
 
 @lru_cache(maxsize=64)
 def _transformer(source: str, target: str) -> pyproj.Transformer:
-    return pyproj.Transformer.from_crs(_metric(source), _metric(target), always_xy=True)
-
-
-@lru_cache(maxsize=64)
-def _metric(crs: str) -> pyproj.CRS:
-    return _parsed(crs)
+    return pyproj.Transformer.from_crs(_parsed(source), _parsed(target), always_xy=True)
 
 
 def _both_or_neither_local(source: str, target: str) -> None:
@@ -138,7 +184,7 @@ def transform(
     ----------
     x, y : array of float, shape (n,)
     source, target : str
-        Coordinate systems; equal ones return the positions untouched, to the last bit.
+        Coordinate systems; one named in two ways returns the positions untouched, to the last bit.
 
     Raises
     ------
@@ -153,7 +199,7 @@ def transform(
     """
     x, y = np.asarray(x, dtype=float), np.asarray(y, dtype=float)
     _both_or_neither_local(source, target)
-    if source == target:
+    if same_crs(source, target):
         return x, y
     moved_x, moved_y = _transformer(source, target).transform(x, y)
     return np.asarray(moved_x, dtype=float), np.asarray(moved_y, dtype=float)
@@ -162,15 +208,22 @@ def transform(
 def project(polygons: npt.NDArray[np.object_], source: str, target: str) -> npt.NDArray[np.object_]:
     """Return polygons of ``source`` in ``target``, their edges kept straight as ``source`` draws them.
 
-    An edge between two longitudes and latitudes is straight in longitude and latitude (RFC 7946, section 3.1.1), which is a
-    curve in any other plane. Points are added every 0.01 degree (1 km for a projected source) before projecting, so that
-    the polygon's area is that of the edge meant: within 1e-6 of it for basins up to continental size.
+    An edge between two longitudes and latitudes is straight in longitude and latitude (RFC 7946, section 3.1.1), which
+    is a curve in any other plane. Longer edges get a point at least every 0.01 degree (1 km for a projected source)
+    before projecting, so that the area is that of the edges meant: within 1e-6 of it for basins up to continental size.
 
     Parameters
     ----------
     polygons : array of shapely polygons, shape (n,)
+        Valid.
     source, target : str
-        Coordinate systems; equal ones return the polygons untouched.
+        Coordinate systems; one named in two ways returns the polygons untouched.
+
+    Returns
+    -------
+    array of shapely polygons, shape (n,)
+        Where a ring touches an edge between that edge's ends, the touch may come out as a crossing a hair wide; such a
+        polygon is mended. A part that ``target`` cannot show leaves its polygon invalid.
 
     Examples
     --------
@@ -179,7 +232,7 @@ def project(polygons: npt.NDArray[np.object_], source: str, target: str) -> npt.
     401
     """
     _both_or_neither_local(source, target)
-    if source == target:
+    if same_crs(source, target):
         return polygons
     edge = (
         _EDGE_DEGREES if is_geographic(source) else _EDGE_METRES / _parsed(source).axis_info[0].unit_conversion_factor
@@ -190,6 +243,11 @@ def project(polygons: npt.NDArray[np.object_], source: str, target: str) -> npt.
         return np.column_stack(mover.transform(xy[:, 0], xy[:, 1]))
 
     moved: npt.NDArray[np.object_] = shapely.transform(shapely.segmentize(polygons, edge), move)
+    for place in np.flatnonzero(~shapely.is_valid(moved)):
+        if np.isfinite(shapely.bounds(moved[place])).all():
+            mended = shapely.make_valid(moved[place], method="structure", keep_collapsed=False)
+            if abs(mended.area - moved[place].area) <= _HAIR * moved[place].area:
+                moved[place] = mended
     return moved
 
 
@@ -201,8 +259,9 @@ def equal_area_plane(west: float, south: float, east: float, north: float) -> st
     >>> equal_area_plane(10, 50, 12, 51)
     '+proj=laea +lat_0=50.5 +lon_0=11 +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs'
     """
+    # A whole millionth of a degree, for a name that people can read.
     lat, lon = round((south + north) / 2, 6), round((west + east) / 2, 6)
-    return f"+proj=laea +lat_0={lat:g} +lon_0={lon:g} +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs"
+    return f"+proj=laea +lat_0={lat:.10g} +lon_0={lon:.10g} +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs"
 
 
 def distances(

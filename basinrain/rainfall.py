@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field, replace
 from enum import IntEnum
-from typing import Final
+from typing import Final, cast
 
 import numpy as np
 import numpy.typing as npt
@@ -104,6 +104,10 @@ class RainRecord:
         Depths known only over several steps. Before spreading, their steps have status ACCUMULATED and no depth.
     day_phase : int
         Seconds after midnight at which the record's rainfall day begins.
+    labels : tuple of str
+        The storms' names, one a step, in a record of storm totals; else empty.
+    recorders : frozenset of str
+        Gauges that record at the record's own step or finer, whose values can give a pattern in time; all when not given.
 
     Raises
     ------
@@ -137,13 +141,19 @@ class RainRecord:
     zone: str = field(default="", kw_only=True)
     totals: tuple[KnownTotal, ...] = field(default=(), kw_only=True)
     day_phase: int = field(default=0, kw_only=True)
+    labels: tuple[str, ...] = field(default=(), kw_only=True)
+    recorders: frozenset[str] = field(default=cast("frozenset[str]", None), kw_only=True)
 
     def __post_init__(self) -> None:
+        given = cast("frozenset[str] | None", self.recorders)
+        object.__setattr__(self, "recorders", frozenset(self.gauges) if given is None else given)
         problems = Problems()
         shape = (len(self.ends), len(self.gauges))
         for name in ("depth", "status"):
             if getattr(self, name).shape != shape:
                 problems.add(item=name, found=f"an array of shape {getattr(self, name).shape}", expected=f"{shape}")
+        if self.labels and len(self.labels) != len(self.ends):
+            problems.add(item="labels", found=f"{len(self.labels)} names", expected=f"{len(self.ends)}, one a step")
         problems.raise_as(DataError)
         if not np.isnat(self.ends).any() and (np.diff(self.ends) <= np.timedelta64(0, "s")).any():
             problems.add(item="times", found="ends that do not increase", expected="each interval once, in order")
@@ -214,6 +224,7 @@ class RainRecord:
             ends=self.ends[first:stop],
             depth=self.depth[first:stop],
             status=self.status[first:stop],
+            labels=self.labels[first:stop],
         )
 
     def ordered(self, gauges: tuple[str, ...]) -> RainRecord:

@@ -1,4 +1,4 @@
-"""The registry of averaging methods: a name, how to prepare it, and the laws it promises."""
+"""The contract of an averaging method: a name, how to prepare it, and the laws it promises."""
 
 from __future__ import annotations
 
@@ -28,10 +28,30 @@ class AveragingMethod:
     name
         What jobs and tables call it.
     prepare
-        ``prepare(network, basins, **options)`` does the geometry once and returns a :data:`Weigher`. Network and basins are
-        in the same plane; basins already hold the union's row.
+        ``prepare(network, basins, **options)`` does the geometry once and returns a :data:`Weigher`. Network and basins
+        are in the same plane; basins already hold the union's row.
     sums_to_one, non_negative, partition
         The laws it promises: rows sum to 1; no weight below 0; adjoining basins add up by area to their union.
+    lengths
+        The options that are lengths in m: when the plane is drawn at another scale they scale with it.
+
+    Examples
+    --------
+    A method is one function and one line in :data:`basinrain.averaging.METHODS`. A whole one, which gives every present
+    gauge the same weight wherever it stands:
+
+    >>> import shapely
+    >>> def prepare_even(network, basins):
+    ...     def weigh(present):
+    ...         row = present / max(present.sum(), 1)
+    ...         return WeightTable("even", basins.ids, network.ids, np.tile(row, (len(basins), 1)))
+    ...
+    ...     return weigh
+    >>> even = AveragingMethod("even", prepare_even)
+    >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 9.0], y=[0.0, 0.0], crs="local")
+    >>> basins = Basins(ids=("all",), polygons=[shapely.box(0, 0, 9, 9)], crs="local")
+    >>> even(network, basins)(np.array([True, True])).weights
+    array([[0.5, 0.5]])
     """
 
     name: str
@@ -39,6 +59,7 @@ class AveragingMethod:
     sums_to_one: bool = True
     non_negative: bool = True
     partition: bool = False
+    lengths: tuple[str, ...] = ()
 
     def __call__(self, network: GaugeNetwork, basins: Basins, options: Mapping[str, Any] | None = None) -> Weigher:
         """Prepare the method for a network and its basins."""

@@ -1,1 +1,65 @@
-""""""
+"""The command line. It holds no hydrology: every command reads a job, calls :mod:`basinrain.job` and shows the result."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Callable
+from functools import wraps
+from pathlib import Path
+from typing import Any
+
+import click
+
+__all__ = ["main"]
+
+
+def _clear_errors(command: Callable[..., None]) -> Callable[..., None]:
+    """Print an expected failure as one line a problem on stderr, and leave with 1."""
+
+    @wraps(command)
+    def run(*args: Any, **kwargs: Any) -> None:  # noqa: ANN401 - click passes what the options say
+        from basinrain.errors import BasinRainError
+
+        try:
+            command(*args, **kwargs)
+        except BasinRainError as error:
+            for problem in error.problems:
+                click.echo(str(problem), err=True)
+            sys.exit(1)
+
+    return run
+
+
+@click.group(context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(package_name="basinrain")
+def main() -> None:
+    """Areal rainfall from rain gauges: gaps infilled, basin means three ways, every gauge's weight shown.
+
+    Results are for use by a qualified hydrologist or engineer; local codes and licensed practice govern design.
+    """
+
+
+@main.command()
+@click.argument("job", type=click.Path(path_type=Path))
+@click.option("--output", type=click.Path(path_type=Path), help="Folder for the results in place of the job's; they go to its storm folder.")
+@click.option(
+    "--set", "settings", multiple=True, metavar="TABLE.KEY=VALUE", help="Change the job; may be given more than once."
+)
+@click.option("--json", "as_json", is_flag=True, help="Print one JSON document with all results, and nothing else.")
+@click.option("--quiet", is_flag=True, help="Print nothing but errors.")
+@_clear_errors
+def storm(job: Path, output: Path | None, settings: tuple[str, ...], as_json: bool, quiet: bool) -> None:  # noqa: FBT001
+    """Storm totals per basin from JOB, a TOML file: tables, weights compared, report."""
+    from basinrain.cli.storm import storm_command
+
+    storm_command(job, output=output, settings=settings, as_json=as_json, quiet=quiet)
+
+
+@main.command()
+@click.argument("folder", type=click.Path(path_type=Path))
+@_clear_errors
+def start(folder: Path) -> None:
+    """Make FOLDER with a commented job and sample data, ready to run."""
+    from basinrain.cli.start import start_command
+
+    start_command(folder)

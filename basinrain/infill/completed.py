@@ -2,19 +2,23 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 import numpy.typing as npt
 
 from basinrain.notes import Note
-from basinrain.rainfall import RainRecord, Status
+from basinrain.rainfall import RainRecord
 
 __all__ = ["Completed", "Estimate"]
 
+_OWN = 1
+_DONATED = 2
 
-@dataclass(frozen=True, kw_only=True)
+
+@dataclass(frozen=True, kw_only=True, slots=True)
 class Estimate:
     """One infilled depth: a step's, a day's or a storm's.
 
@@ -32,6 +36,14 @@ class Estimate:
         The infill method's registered name.
     donors
         Weight of every donor, by gauge id: ``depth`` is the weighted sum of the donors' depths over the same steps.
+
+    Examples
+    --------
+    >>> estimate = Estimate(
+    ...     gauge="B", first=0, stop=2, scale="storm", depth=5.0, method="normal-ratio", donors={"A": 0.5}
+    ... )
+    >>> estimate.stop - estimate.first, estimate.donors["A"]
+    (2, 0.5)
     """
 
     gauge: str
@@ -52,7 +64,7 @@ class Completed:
     record : RainRecord
         Estimated values have status INFILLED; what could not be estimated stays without a depth.
     estimates : tuple of Estimate
-        How every estimated value came about, by gauge, then time.
+        How every estimated value came about, by gauge, then time; no two of a gauge share a step.
     notes : tuple of Note
         Which gauges stayed missing and why, totals raised to what was observed, patterns spread evenly.
 
@@ -82,45 +94,135 @@ class Completed:
     def donor_table(self, step: int) -> npt.NDArray[np.float64]:
         """Return how the depths of one step rest on reporting gauges, shape (n_gauges, n_gauges).
 
-        Row g holds 1 at g itself where the gauge's own value counts, the donor weights where its value, or the total that
-        its value is part of, was estimated, and zeros where it has no depth.
+        Row g holds 1 at g itself where the gauge's own value counts, the donor weights where its value, or the total
+        that its value is part of, was estimated, and zeros where it has no depth.
         """
-        table = np.diag(self.record.reporting[step].astype(float))
-        for estimate in self.estimates:
-            if estimate.first <= step < estimate.stop:
-                table[self._column(estimate.gauge)] = self._donor_row(estimate)
+        kinds = self._kinds[step]
+        table = np.diag((kinds == _OWN).astype(float))
+        estimated = kinds >= _DONATED
+        table[estimated] = self._donor_rows[1][kinds[estimated] - _DONATED]
         return table
 
-    def donor_tables(self) -> list[tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]]:
-        """Return the steps that share one donor table, with that table; together they are all steps of the window."""
-        reporting = self.record.reporting
-        groups: dict[bytes, list[int]] = {}
-        for step in range(len(self.record)):
-            active = tuple(k for k, e in enumerate(self.estimates) if e.first <= step < e.stop)
-            key = reporting[step].tobytes() + np.array(active, dtype=np.int64).tobytes()
-            groups.setdefault(key, []).append(step)
-        return [(np.array(steps), self.donor_table(steps[0])) for steps in groups.values()]
+    def donor_tables(self) -> Iterator[tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]]:
+        """Yield the steps that share one donor table and the same reporting gauges, with that table.
 
-    def sources(self) -> npt.NDArray[np.float64]:
-        """Return the depth in every gauge's window total that comes from each gauge's own values.
+        Together they are all steps of the window; groups come in the order of their first steps. The time taken grows
+        with the number of steps and of different tables, not with their product.
+        """
+        for steps in self._groups:
+            yield steps, self.donor_table(int(steps[0]))
+
+    def sources(self, steps: npt.NDArray[np.int64] | None = None) -> npt.NDArray[np.float64]:
+        """Return the depth in every gauge's total that comes from each gauge's own values.
+
+        Parameters
+        ----------
+        steps : array of int, shape (n,), optional
+            Positions of the steps to total, each once; all where not given.
 
         Returns
         -------
         array of float, shape (n_gauges, n_gauges)
-            Rows sum to the completed totals (NaN steps left out); columns are the gauges whose own values they rest on.
+            mm. Rows sum to the completed totals over those steps (steps without a depth left out); columns are the
+            gauges whose own values they rest on. A depth that is part of an estimated day's or storm's total rests on
+            that total's donors in proportion to what each put into it, whatever the pattern by which it was spread: so
+            rows sum to the depths over any choice of steps.
+
+        Examples
+        --------
+        B's storm total of 5 mm is half of A's and was spread evenly. Of its first hour, too, all comes from A.
+
+        >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+        >>> status = np.array([[Status.ZERO, Status.INFILLED], [Status.OBSERVED, Status.INFILLED]], dtype=np.uint8)
+        >>> depth = np.array([[0.0, 2.5], [10.0, 2.5]])
+        >>> record = RainRecord(("A", "B"), ends - 3600, ends, depth, status, step="1h")
+        >>> estimate = Estimate(
+        ...     gauge="B", first=0, stop=2, scale="storm", depth=5.0, method="normal-ratio", donors={"A": 0.5}
+        ... )
+        >>> Completed(record, (estimate,), ()).sources(np.array([0]))
+        array([[0. , 0. ],
+               [2.5, 0. ]])
         """
-        own = np.where(self.record.reporting, self.record.depth, 0.0)
+        chosen = np.arange(len(self.record)) if steps is None else np.asarray(steps, dtype=np.int64)
+        kinds, own = self._kinds[chosen], self._own[chosen]
         n = len(self.record.gauges)
         result = np.zeros((n, n))
-        for steps, table in self.donor_tables():
-            result += table * own[steps].sum(axis=0)[None, :]
+        result[np.arange(n), np.arange(n)] = np.where(kinds == _OWN, own, 0.0).sum(axis=0)
+        for g in np.flatnonzero((kinds >= _DONATED).any(axis=0)):
+            at = np.flatnonzero(kinds[:, g] >= _DONATED)
+            result[g] += self._donated(int(g), chosen[at], kinds[at, g] - _DONATED)
         return result
 
-    def _column(self, gauge: str) -> int:
-        return self.record.gauges.index(gauge)
+    def _donated(self, g: int, steps: npt.NDArray[np.int64], rows: npt.NDArray[np.int64]) -> npt.NDArray[np.float64]:
+        """Return what every gauge put into the estimated depths of gauge g at these steps, shape (n_gauges,)."""
+        weights = self._donor_rows[1]
+        columns = np.flatnonzero((weights[np.unique(rows)] != 0).any(axis=0))
+        used = weights[np.ix_(rows, columns)]
+        which = self._estimate_at[steps, g]
+        single = self._lengths[which] == 1
+        put = np.zeros(len(self.record.gauges))
+        put[columns] = (used[single] * self._own[np.ix_(steps[single], columns)]).sum(axis=0)
+        for k in np.unique(which[~single]):
+            estimate = self.estimates[k]
+            if estimate.depth > 0:
+                mine = which == k
+                share = self.record.depth[steps[mine], g].sum() / estimate.depth
+                totals = self._own[estimate.first : estimate.stop, columns].sum(axis=0)
+                put[columns] += share * used[mine][0] * totals
+        return put
 
-    def _donor_row(self, estimate: Estimate) -> npt.NDArray[np.float64]:
-        row = np.zeros(len(self.record.gauges))
-        for donor, weight in estimate.donors.items():
-            row[self._column(donor)] = weight
-        return row
+    @cached_property
+    def _own(self) -> npt.NDArray[np.float64]:
+        return np.where(self.record.reporting, self.record.depth, 0.0)
+
+    @cached_property
+    def _estimate_at(self) -> npt.NDArray[np.int64]:
+        """The position in ``estimates`` of what each depth belongs to, -1 where it is nothing but the gauge's own."""
+        at = np.full(self.record.depth.shape, -1, dtype=np.int64)
+        column = {gauge: g for g, gauge in enumerate(self.record.gauges)}
+        for k, estimate in enumerate(self.estimates):
+            at[estimate.first : estimate.stop, column[estimate.gauge]] = k
+        return at
+
+    @cached_property
+    def _lengths(self) -> npt.NDArray[np.int64]:
+        return np.array([estimate.stop - estimate.first for estimate in self.estimates], dtype=np.int64)
+
+    @cached_property
+    def _donor_rows(self) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]:
+        """The row of weights that each estimate uses, and the different rows, shape (n_rows, n_gauges)."""
+        column = {gauge: g for g, gauge in enumerate(self.record.gauges)}
+        place: dict[tuple[tuple[str, float], ...], int] = {}
+        # Estimates of one pattern share one mapping, whose content is then compared only once.
+        known: dict[int, int] = {}
+        row_of = np.empty(len(self.estimates), dtype=np.int64)
+        for k, estimate in enumerate(self.estimates):
+            row = known.get(id(estimate.donors))
+            if row is None:
+                row = place.setdefault(tuple(sorted(estimate.donors.items())), len(place))
+                known[id(estimate.donors)] = row
+            row_of[k] = row
+        rows = np.zeros((len(place), len(column)))
+        for donors, row in place.items():
+            for gauge, weight in donors:
+                rows[row, column[gauge]] = weight
+        return row_of, rows
+
+    @cached_property
+    def _kinds(self) -> npt.NDArray[np.int64]:
+        """0 without a depth, 1 the gauge's own value, from 2 on the donor row that the depth rests on."""
+        kinds = np.where(self.record.reporting, _OWN, 0)
+        estimated = self._estimate_at >= 0
+        kinds[estimated] = self._donor_rows[0][self._estimate_at[estimated]] + _DONATED
+        return kinds
+
+    @cached_property
+    def _groups(self) -> list[npt.NDArray[np.int64]]:
+        if not len(self.record):
+            return []
+        keys = np.column_stack([self._kinds, self.record.reporting])
+        _, first, group = np.unique(keys, axis=0, return_index=True, return_inverse=True)
+        group = group.ravel()
+        order = np.argsort(group, kind="stable")
+        split = np.split(order, np.flatnonzero(np.diff(group[order])) + 1)
+        return [split[k] for k in np.argsort(first, kind="stable")]

@@ -1,0 +1,53 @@
+"""Gauge catch: factors that the user gives, by gauge and month; none is applied otherwise."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import replace
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.rainfall import RainRecord, Status
+
+__all__ = ["correct_catch"]
+
+
+def correct_catch(record: RainRecord, factors: Mapping[str, npt.NDArray[np.float64]]) -> RainRecord:
+    """Return the record with depths multiplied by catch factors.
+
+    Parameters
+    ----------
+    record : RainRecord
+        Steps without times (storm totals) take the mean of the twelve factors.
+    factors : mapping of gauge id to array of float, shape (12,)
+        Factors of January to December, above 0. The month is that in which a step ends.
+
+    Returns
+    -------
+    RainRecord
+        Changed values have status ADJUSTED; spread values stay SPREAD, missing ones missing.
+
+    Examples
+    --------
+    >>> ends = np.array(["2031-01-31T23", "2031-02-01T01"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[10.0, 10.0], [10.0, 0.0]], step="1h")
+    >>> corrected = correct_catch(record, {"A": np.array([1.1] + [1.0] * 11)})
+    >>> corrected.depth
+    array([[11., 10.],
+           [10.,  0.]])
+    >>> [Status(s).label for s in corrected.status[:, 0]]
+    ['adjusted', 'observed']
+    """
+    if not factors:
+        return record
+    depth, status = record.depth.copy(), record.status.copy()
+    timeless = np.isnat(record.ends)
+    month = np.where(timeless, 0, record.ends.astype("datetime64[M]").astype(np.int64) % 12)
+    for gauge, months in factors.items():
+        column = record.gauges.index(gauge)
+        factor = np.where(timeless, months.mean(), months[month])
+        changed = (factor != 1) & (depth[:, column] > 0) & (status[:, column] != Status.SPREAD)
+        depth[:, column] *= factor
+        status[changed, column] = Status.ADJUSTED
+    return replace(record, depth=depth, status=status)

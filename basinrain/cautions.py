@@ -1,0 +1,173 @@
+"""Warnings that a reviewer would raise: drawn from the results of a run, not from any method's code.
+
+The limits are conventions of this package (design defaults, common practice where a figure is used in the trade), chosen to
+make a reader look, not to pass or fail a result.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+import numpy as np
+import shapely
+
+from basinrain.basins import Basins
+from basinrain.gauges import GaugeNetwork
+from basinrain.notes import Note
+from basinrain.rainfall import RainRecord, Status
+from basinrain.storms import BasinDepths, spread_across_methods
+
+__all__ = ["network_cautions", "record_cautions", "storm_cautions"]
+
+_DOMINANT_WEIGHT = 0.5
+_INFILLED_SHARE = 0.25
+_SPREAD_PERCENT = 10.0
+_TOUCH = 1e-3
+
+
+def network_cautions(network: GaugeNetwork, basins: Basins) -> Iterator[Note]:
+    """Yield warnings about where the gauges lie in each basin and at what height.
+
+    Parameters
+    ----------
+    network, basins
+        In the same plane.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B"), x=[2000.0, 90000.0], y=[2000.0, 0.0], crs="local")
+    >>> basins = Basins(ids=("all",), polygons=[shapely.box(0, 0, 10000, 10000)], crs="local")
+    >>> [note.code for note in network_cautions(network, basins)]
+    ['one-gauge-inside']
+    """
+    points = shapely.points(network.x, network.y)
+    for basin, polygon, area, (low, high) in zip(
+        basins.ids, basins.polygons, basins.areas, basins.elevations, strict=True
+    ):
+        inside = np.flatnonzero(shapely.dwithin(points, polygon, _TOUCH))
+        if len(inside) == 0:
+            yield Note(
+                code="no-gauge-inside",
+                text=f"No gauge lies inside basin {basin}; its mean rests on gauges outside, and the arithmetic mean has "
+                "no number unless the job widens it.",
+                basin=basin,
+            )
+        elif len(inside) == 1:
+            gauge = network.ids[inside[0]]
+            yield Note(
+                code="one-gauge-inside",
+                text=f"Only gauge {gauge} lies inside basin {basin}.",
+                basin=basin,
+                gauge=gauge,
+            )
+        away = shapely.distance(points, polygon.centroid)
+        nearest = int(np.argmin(away))
+        if away[nearest] > np.sqrt(area):
+            yield Note(
+                code="far-gauge",
+                text=f"The gauge nearest to the centre of basin {basin}, {network.ids[nearest]}, is "
+                f"{away[nearest] / 1000:.1f} km away, farther than the square root of the basin's area "
+                f"({np.sqrt(area) / 1000:.1f} km).",
+                basin=basin,
+                gauge=network.ids[nearest],
+            )
+        yield from _elevation_caution(network, basin, inside if len(inside) else np.array([nearest]), low, high)
+
+
+def _elevation_caution(
+    network: GaugeNetwork, basin: str, gauges: np.ndarray[tuple[int], np.dtype[np.int64]], low: float, high: float
+) -> Iterator[Note]:
+    heights = network.elevation[gauges]
+    if np.isnan(heights).all() or np.isnan(low) or np.isnan(high):
+        return
+    lowest, highest = float(np.nanmin(heights)), float(np.nanmax(heights))
+    middle = (low + high) / 2
+    if highest < middle or lowest > middle:
+        side = "above" if highest < middle else "below"
+        yield Note(
+            code="elevation-missed",
+            text=f"Basin {basin} reaches from {low:.0f} to {high:.0f} m, its gauges from {lowest:.0f} to {highest:.0f} m: "
+            f"the half of its range {side} {middle:.0f} m has no gauge.",
+            basin=basin,
+        )
+
+
+def record_cautions(record: RainRecord) -> Iterator[Note]:
+    """Yield a warning when the network changed during the record.
+
+    Examples
+    --------
+    >>> ends = np.datetime64("2031-05-04T00", "s") + np.arange(1, 3) * np.timedelta64(3600, "s")
+    >>> record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[1.0, 2.0], [1.0, 2.0]], step="1h")
+    >>> list(record_cautions(record))
+    []
+    """
+    absent = record.status == Status.NOT_INSTALLED
+    changed = absent.any(axis=0)
+    if changed.any():
+        gauges = ", ".join(gauge for gauge, c in zip(record.gauges, changed, strict=True) if c)
+        yield Note(
+            code="network-changed",
+            text=f"The network changed during the record: {gauges} not in service throughout; nothing was infilled for them "
+            "while they were not there.",
+        )
+
+
+def storm_cautions(
+    storm: str, network: GaugeNetwork, basins: Basins, depths: Sequence[tuple[str, BasinDepths]]
+) -> Iterator[Note]:
+    """Yield warnings about one storm's results: dominant gauges, infilled shares, rebuilt weights, methods apart.
+
+    Parameters
+    ----------
+    storm
+        The storm's name.
+    network, basins
+        Gauges and basins of the run.
+    depths
+        Results by averaging method.
+    """
+    for method, result in depths:
+        weights = result.table.weights
+        for b, basin in enumerate(basins.ids):
+            if np.isnan(weights[b]).any():
+                continue
+            total = weights[b].sum()
+            g = int(np.argmax(weights[b]))
+            if weights[b, g] > _DOMINANT_WEIGHT * total:
+                yield Note(
+                    code="one-gauge-dominates",
+                    text=f"Gauge {network.ids[g]} has {100 * weights[b, g] / total:.0f} % of the weight in basin {basin} "
+                    f"by {method}.",
+                    storm=storm,
+                    basin=basin,
+                    gauge=network.ids[g],
+                    method=method,
+                )
+            if result.infilled[b] > _INFILLED_SHARE * result.total[b]:
+                yield Note(
+                    code="much-infilled",
+                    text=f"{100 * result.infilled[b] / result.total[b]:.0f} % of the mean of basin {basin} by {method} "
+                    "rests on infilled values.",
+                    storm=storm,
+                    basin=basin,
+                    method=method,
+                )
+        if result.rebuilt_steps:
+            yield Note(
+                code="weights-rebuilt",
+                text=f"At {result.rebuilt_steps} steps some gauge had no value even after infill; the weights by {method} "
+                "were rebuilt from the others there.",
+                storm=storm,
+                method=method,
+            )
+    for b, basin in enumerate(basins.ids):
+        least, most, apart, percent = spread_across_methods([result.total[b] for _, result in depths])
+        if percent > _SPREAD_PERCENT:
+            yield Note(
+                code="methods-apart",
+                text=f"The methods give basin {basin} from {least:.1f} to {most:.1f} mm, {apart:.1f} mm or {percent:.0f} % "
+                "apart.",
+                storm=storm,
+                basin=basin,
+            )

@@ -1,0 +1,83 @@
+"""Gauges at one place, merged into one where the job says so."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+
+from basinrain.gauges import GaugeNetwork
+from basinrain.ground import colocated_groups
+from basinrain.notes import Note
+from basinrain.rainfall import RainRecord, Status
+
+__all__ = ["merge_colocated"]
+
+
+def merge_colocated(network: GaugeNetwork, record: RainRecord) -> tuple[GaugeNetwork, RainRecord, tuple[Note, ...]]:
+    """Merge gauges at one place into one gauge, whose depth is the mean of those that report.
+
+    Parameters
+    ----------
+    network, record
+        Gauges and their record, in the same order.
+
+    Returns
+    -------
+    network, record, notes
+        The first gauge's place, elevation and service stand for the group; its id joins the group's ids with ``+``;
+        normals are averaged. Where one of the group reports its value is taken as it is.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[0.0, 0.0, 500.0], y=[0.0, 0.0, 0.0], crs="local")
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(
+    ...     network.ids, ends - 3600, ends, [[4.0, 6.0, 1.0], [np.nan, 2.0, 1.0]], step="1h"
+    ... )
+    >>> merged, rain, notes = merge_colocated(network, record)
+    >>> merged.ids, rain.depth.tolist()
+    (('A+B', 'C'), [[5.0, 1.0], [2.0, 1.0]])
+    >>> notes[0].text
+    'Gauges A and B stand at one place; their mean stands for both as gauge A+B.'
+    """
+    groups = colocated_groups(network)
+    if not groups:
+        return network, record, ()
+    depth, status = record.depth.copy(), record.status.copy()
+    ids = list(network.ids)
+    normals = None if network.normals is None else network.normals.copy()
+    keep = np.ones(len(network), dtype=bool)
+    recorders = set(record.recorders)
+    for group in groups:
+        columns = [network.position(gauge) for gauge in group]
+        first = columns[0]
+        reporting = record.reporting[:, columns]
+        count = reporting.sum(axis=1)
+        mean = np.where(reporting, record.depth[:, columns], 0.0).sum(axis=1) / np.maximum(count, 1)
+        # The status is that of the first member that reports; where none does, that of the first member.
+        chosen = np.where(count > 0, np.argmax(reporting, axis=1), 0)
+        picked = record.status[:, columns][np.arange(len(record)), chosen]
+        status[:, first] = np.where((picked == Status.ZERO) & (mean > 0), Status.OBSERVED, picked)
+        depth[:, first] = np.where(count > 0, mean, np.nan)
+        ids[first] = "+".join(group)
+        keep[columns[1:]] = False
+        if normals is not None and network.normals is not None:
+            normals[first] = network.normals[columns].mean(axis=0)
+        if recorders & set(group):
+            recorders = (recorders - set(group)) | {ids[first]}
+    merged = replace(network, ids=tuple(ids), normals=normals).subset(keep)
+    notes = tuple(
+        Note(
+            code="colocated-merged",
+            text=f"Gauges {', '.join(group[:-1])} and {group[-1]} stand at one place; their mean stands for "
+            f"{'both' if len(group) == 2 else 'all'} as gauge {'+'.join(group)}.",
+            level="info",
+            gauge="+".join(group),
+        )
+        for group in groups
+    )
+    rain = replace(
+        record, gauges=tuple(ids), depth=depth, status=status, totals=(), recorders=frozenset(recorders)
+    )
+    return merged, rain.ordered(merged.ids), notes

@@ -1,0 +1,161 @@
+"""Completing a storm window: every gap infilled at its scale, as far as it can be."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Final
+
+import numpy as np
+
+from basinrain.errors import DataError, Problems
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill.completed import Completed, Estimate
+from basinrain.infill.filling import GaugeFilling
+from basinrain.infill.gaps import gap_mask, longer_than, over_peak
+from basinrain.infill.normals import require_normals
+from basinrain.infill.options import InfillOptions
+from basinrain.infill.window import Window
+from basinrain.notes import Note
+from basinrain.rainfall import RainRecord, Status
+
+__all__ = ["complete"]
+
+_YEAR: Final = np.timedelta64(365 * 86400, "s")
+
+
+def complete(record: RainRecord, network: GaugeNetwork, options: InfillOptions, *, daily: bool = False) -> Completed:
+    """Infill the gaps of a storm window.
+
+    Parameters
+    ----------
+    record : RainRecord
+        The window, its columns in the network's order. It is not changed.
+    network : GaugeNetwork
+        The gauges, with their normals where the method needs them.
+    options : InfillOptions
+        Method, scale and limits.
+    daily
+        Whether a daily gauge takes part; a record that holds spread values says so by itself.
+
+    Returns
+    -------
+    Completed
+        The completed record, every estimate with its donor weights, and notes: ``not-infilled`` (which gauge stays
+        without a depth, where and why), ``total-raised``, ``spread-evenly``, ``gap-over-peak``, ``annual-normals``.
+
+    Raises
+    ------
+    DataError
+        The columns are not the network's gauges, the record was infilled before, or normals are missing or not above 0
+        at a gauge that takes part; all such problems together, before anything is computed.
+
+    Notes ----- Donors are values that a gauge measured itself, never infilled ones. At the scale ``"step"`` every
+    missing step is the weighted sum of the donors measured at that step. At ``"day"`` and ``"storm"`` a span of steps
+    (the rainfall day within the window, or the window; where a gauge was in service for part of it, that part) is
+    looked at as a whole:
+
+    - at least half of its steps have the gauge's own value: the missing steps are infilled step by step;
+    - fewer: the span's total is the weighted sum of the totals of donors that have their own values at all of its
+      steps. What the gauge did observe is kept, and the rest of the total goes to the missing steps in the pattern of
+      the nearest recording gauge that is complete over the span and wet in those steps; evenly, with a note, where
+      there is none;
+    - but where that total is below what was observed, only the missing steps are infilled, step by step, with a note.
+
+    A total without times is a span of its own. Normals are those of the month that holds the middle of the step, day or
+    storm. Gauges not in service, and gaps longer than ``longest_gap``, are left alone.
+
+    Examples
+    --------
+    B misses two hours of four. At least half is there, so each is the mean of A and C.
+
+    >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[0.0, 1e3, 2e3], y=[0.0, 0.0, 0.0], crs="local")
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02", "2031-05-04T03", "2031-05-04T04"], dtype="datetime64[s]")
+    >>> depths = [[5.0, 6.0, 4.0], [10.0, np.nan, 8.0], [5.0, np.nan, 6.0], [0.0, 1.0, 2.0]]
+    >>> record = RainRecord.from_depths(("A", "B", "C"), ends - 3600, ends, depths, step="1h")
+    >>> completed = complete(record, network, InfillOptions(method="station-average"))
+    >>> completed.record.depth[:, 1]
+    array([6. , 9. , 5.5, 1. ])
+    >>> completed.estimates[0].donors
+    {'A': 0.5, 'C': 0.5}
+    >>> [note.code for note in completed.notes]
+    ['gap-over-peak']
+    """
+    _check(record, network)
+    gaps = gap_mask(record)
+    long = longer_than(record, gaps, options.longest_gap)
+    window = Window(record, network, options, _scale(record, options, daily=daily), gaps & ~long)
+    if window.fillable.any() and options.chosen_method.needs_normals:
+        taking_part = record.reporting.any(axis=0) | window.fillable.any(axis=0)
+        require_normals(network, taking_part, [month or None for month in _months(window)])
+    depth, status = record.depth.copy(), record.status.copy()
+    estimates: list[Estimate] = []
+    notes = over_peak(record, gaps)
+    for g in np.flatnonzero(gaps.any(axis=0)).tolist():
+        filling = GaugeFilling(window, g, long[:, g], depth[:, g])
+        filling.infill()
+        status[gaps[:, g] & ~np.isnan(depth[:, g]), g] = Status.INFILLED
+        estimates += sorted(filling.estimates, key=lambda estimate: estimate.first)
+        notes += filling.notes()
+    notes += _annual_normals(window, estimates)
+    return Completed(replace(record, depth=depth, status=status), tuple(estimates), tuple(notes))
+
+
+def _scale(record: RainRecord, options: InfillOptions, *, daily: bool) -> str:
+    # A total without times is a storm's, whatever else is asked for.
+    if np.isnat(record.ends).any():
+        return "storm"
+    if options.scale is not None:
+        return options.scale
+    daily = daily or not record.recorders.issuperset(record.gauges) or bool((record.status == Status.SPREAD).any())
+    return "day" if daily else "storm"
+
+
+def _months(window: Window) -> list[int]:
+    """Return the months of the steps and spans that have something to infill, 0 for those without times."""
+    months = set(window.months[window.fillable.any(axis=1)].tolist())
+    if window.scale != "step":
+        for g in np.flatnonzero(window.fillable.any(axis=0)).tolist():
+            spans = window.spans_of(g)
+            months |= set(spans.months[np.logical_or.reduceat(window.fillable[:, g], spans.first)].tolist())
+    return sorted(months)
+
+
+def _annual_normals(window: Window, estimates: list[Estimate]) -> list[Note]:
+    if not estimates or not window.options.chosen_method.needs_normals or window.network.normals is None:
+        return []
+    record = window.record
+    undated = bool(np.isnat(record.ends).any())
+    annual = window.network.normals.shape[1] == 1
+    if not undated and not (
+        annual and any(record.ends[e.stop - 1] - record.starts[e.first] < _YEAR for e in estimates)
+    ):
+        return []
+    why = "the network has no monthly ones" if annual else "the totals have no dates"
+    return [
+        Note(
+            code="annual-normals",
+            text=f"Normals of the year are used for depths over less than a year, because {why}: the ratio between "
+            "gauges in the season of the storm may be another.",
+            method=window.options.method,
+        )
+    ]
+
+
+def _check(record: RainRecord, network: GaugeNetwork) -> None:
+    problems = Problems()
+    if record.gauges != network.ids:
+        problems.add(
+            item="rain record",
+            found="columns that are not the network's gauges in their order",
+            expected=", ".join(network.ids),
+            remedy="bring them in order first",
+        )
+    for g in np.flatnonzero((record.status == Status.INFILLED).any(axis=0)):
+        problems.add(
+            item=f"gauge {record.gauges[g]}",
+            found="infilled values",
+            expected="a record as it was observed",
+            remedy="infill from the record as it was read: an infilled value is never a donor",
+            gauge=record.gauges[g],
+        )
+    problems.raise_as(DataError)

@@ -1,0 +1,316 @@
+"""The run of a job: the only place that knows the order of the rooms.
+
+reading → screening → infill → averaging → storms → cautions; writing and report take the result from here.
+"""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Callable, Iterable, Sequence
+from dataclasses import replace
+from importlib.metadata import version
+from pathlib import Path
+from typing import Any, TypeVar
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain import reading
+from basinrain.averaging import Grid, Weigher, averaging_method, choose_grid
+from basinrain.basins import Basins
+from basinrain.catch import correct_catch
+from basinrain.cautions import network_cautions, record_cautions, storm_cautions
+from basinrain.colocated import merge_colocated
+from basinrain.errors import BasinRainError, DataError, JobError, MethodError, Problem, Problems, ReadError
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill import InfillOptions, complete
+from basinrain.jobfile import Job, read_job
+from basinrain.jobfile.tables import StormTable
+from basinrain.notes import Note
+from basinrain.rainfall import RainRecord
+from basinrain.results import StormResult, StormRun
+from basinrain.storms import Storm, average_storm, hyetograph_shape, storm_window
+
+__all__ = ["run_storm"]
+
+_T = TypeVar("_T")
+Report = Callable[[str], None]
+
+
+def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> StormRun:
+    """Run a job's storms: infill, average by every method, compare.
+
+    Parameters
+    ----------
+    job
+        A job, or the path of a job file.
+    settings
+        Changes to the file in the command line's words, ``"infill.method=normal-ratio"``.
+    progress
+        Called with a few words before each part of the work.
+
+    Returns
+    -------
+    StormRun
+        Nothing has been written; see :meth:`~basinrain.results.StormRun.write`.
+
+    Raises
+    ------
+    BasinRainError
+        The job, a file or the data are at fault; every problem found is listed.
+    """
+    say = progress or (lambda _: None)
+    if not isinstance(job, Job):
+        job = read_job(job, settings)
+    elif settings:
+        raise JobError(
+            Problem(
+                item="settings",
+                found="settings beside a job that is already resolved",
+                expected="settings with the path of a job file",
+                remedy="give them to read_job",
+            )
+        )
+    say("reading")
+    network, record, basins, notes = _read(job)
+    network, basins, plane, ground_notes = reading.settle(network, basins, plane=job.job.plane)
+    notes += ground_notes
+    if job.gauges.colocated == "mean":
+        network, record, merged = merge_colocated(network, record)
+        notes += merged
+    else:
+        reading.refuse_colocated(network)
+    record = correct_catch(record, _catch_factors(job, network))
+    storms, window_notes = _storms(job, record)
+    notes += window_notes
+
+    say("weights")
+    weighers, grid = _weighers(job, network, basins)
+    facts = _facts(job, grid)
+    results = []
+    for storm in storms:
+        say(f"storm {storm.name}")
+        result, found = _run_one(job, storm, record, network, basins, weighers)
+        results.append(result)
+        notes += found
+    notes += (*network_cautions(network, basins), *record_cautions(record))
+    return StormRun(
+        name=job.job.name,
+        settings=job.model_dump(mode="json", exclude_none=True),
+        depth_unit=job.job.depth_unit,
+        area_unit=job.job.area_unit,
+        network=network,
+        basins=basins,
+        plane=plane,
+        record=record,
+        storms=tuple(results),
+        notes=tuple(notes),
+        inputs=_digests(job),
+        versions={name: version(name) for name in ("basinrain", "numpy", "scipy", "shapely", "pyproj", "pandas")},
+        facts=facts,
+    )
+
+
+def _read(job: Job) -> tuple[GaugeNetwork, RainRecord, Basins, tuple[Note, ...]]:
+    """Read every file; the problems of all files are reported together."""
+    problems = Problems()
+    network = _try(problems, lambda: _read_gauges(job))
+    records = [_try(problems, lambda source=source: _read_source(job, source)) for source in job.rainfall]
+    basins = _try(problems, lambda: _read_basins(job))
+    problems.raise_as(ReadError)
+    if network is None or basins is None or any(record is None for record in records):
+        raise AssertionError  # every reader that gives nothing has raised
+    polygons, basin_notes = basins
+    record, step_notes = reading.bring_to_step(
+        [record for record in records if record is not None],
+        network,
+        common=job.step.common,
+        storm_times=_storm_times(job, records[0].zone if records[0] is not None else ""),
+    )
+    return network, record, polygons, (*basin_notes, *step_notes)
+
+
+def _try(problems: Problems, read: Callable[[], _T]) -> _T | None:
+    try:
+        return read()
+    except BasinRainError as error:
+        problems.extend(error.problems)
+        return None
+
+
+def _read_gauges(job: Job) -> GaugeNetwork:
+    table = job.gauges
+    return reading.read_gauges(
+        job.path(table.file),
+        layer=table.layer,
+        crs=table.crs,
+        length_unit=table.length_unit,
+        elevation_unit=table.elevation_unit,
+        normal_unit=table.normal_unit,
+        normal_period=table.normal_period,
+        columns=table.columns,
+        exclude=table.exclude,
+    )
+
+
+def _read_source(job: Job, table: Any) -> RainRecord:  # noqa: ANN401 - RainfallTable; its fields are the reader's
+    options = table.model_dump(exclude={"file", "files"})
+    return reading.read_rainfall([job.path(name) for name in table.paths], **options)
+
+
+def _read_basins(job: Job) -> tuple[Basins, tuple[Note, ...]]:
+    table = job.basins
+    return reading.read_basins(job.path(table.file), **table.model_dump(exclude={"file"}))
+
+
+def _moment(text: str | None, zone: str, *, end: bool) -> np.datetime64 | None:
+    """Return a job's time in the record's clock; a bare date names its whole day."""
+    from datetime import datetime, timedelta
+
+    if text is None:
+        return None
+    when = datetime.fromisoformat(text)
+    if end and len(text) == len("2031-05-04"):
+        when += timedelta(days=1)
+    if when.tzinfo is not None:
+        if not zone:
+            raise JobError(
+                Problem(
+                    item="storm times",
+                    found=f"'{text}' with an offset",
+                    expected="times without one, since the rainfall files state no time zone",
+                    remedy="give [[rainfall]] timezone, or write the storm's times in the files' clock",
+                )
+            )
+        offset = datetime.fromisoformat(f"2000-01-01T00:00{zone}").utcoffset() or timedelta(0)
+        when = (when - (when.utcoffset() or timedelta(0)) + offset).replace(tzinfo=None)
+    return np.datetime64(when, "s")
+
+
+def _storm_times(job: Job, zone: str) -> dict[str, tuple[np.datetime64, np.datetime64]]:
+    times = {}
+    for table in job.storm:
+        start, end = _moment(table.start, zone, end=False), _moment(table.end, zone, end=True)
+        if start is not None and end is not None:
+            times[table.name] = (start, end)
+    return times
+
+
+def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]]:
+    """Return the job's storms; without any the whole record is the storm, or each storm of a file of totals."""
+    tables = job.storm or tuple(
+        StormTable(name=name) for name in (record.labels or ("whole record",))
+    )
+    problems = Problems()
+    names = [table.name for table in tables]
+    for name in sorted({name for name in names if names.count(name) > 1}):
+        problems.add(item=f"storm {name}", found="the name twice", expected="each storm its own name")
+    storms: list[Storm] = []
+    notes: list[Note] = []
+    for table in tables:
+        found = _try(
+            problems,
+            lambda table=table: storm_window(
+                record,
+                table.name,
+                start=_moment(table.start, record.zone, end=False),
+                end=_moment(table.end, record.zone, end=True),
+                pattern=table.pattern,
+            ),
+        )
+        if found is not None:
+            storms.append(found[0])
+            notes += found[1]
+    problems.raise_as(JobError)
+    return storms, tuple(notes)
+
+
+def _catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.float64]]:
+    problems = Problems()
+    factors = {}
+    for gauge, value in job.gauges.catch_factor.items():
+        months = np.array(value if isinstance(value, tuple) else [value] * 12, dtype=float)
+        if gauge not in network.ids:
+            problems.add(
+                item=f"[gauges] catch_factor of {gauge}",
+                found="a gauge that is not in the network",
+                expected="the id of a gauge",
+                gauge=gauge,
+            )
+        elif len(months) != 12:
+            problems.add(
+                item=f"[gauges] catch_factor of {gauge}",
+                found=f"{len(months)} values",
+                expected="one value, or twelve from January to December",
+                gauge=gauge,
+            )
+        factors[gauge] = months
+    problems.raise_as(JobError)
+    return factors
+
+
+def _weighers(job: Job, network: GaugeNetwork, basins: Basins) -> tuple[dict[str, Weigher], Grid | None]:
+    """Prepare every averaging method once; the grid is laid once, on the full network."""
+    grid = None
+    weighers = {}
+    for name in job.averaging.methods:
+        options = job.averaging.options(name)
+        if name == "idw":
+            grid = choose_grid(network, basins, **options)
+            options = {**{k: v for k, v in options.items() if k != "cell"}, "grid": grid}
+        weighers[name] = averaging_method(name)(network, basins, options)
+    return weighers, grid
+
+
+def _facts(job: Job, grid: Grid | None) -> dict[str, str]:
+    facts = {}
+    if grid is not None:
+        facts["grid"] = grid.sentence
+    if job.gauges.normal_period:
+        facts["normals"] = f"Normals of {job.gauges.normal_period}."
+    if job.gauges.catch_factor:
+        facts["catch"] = "Catch factors applied to: " + ", ".join(sorted(job.gauges.catch_factor)) + "."
+    return facts
+
+
+def _run_one(
+    job: Job,
+    storm: Storm,
+    record: RainRecord,
+    network: GaugeNetwork,
+    basins: Basins,
+    weighers: dict[str, Weigher],
+) -> tuple[StormResult, Iterable[Note]]:
+    window = record.window(storm.first, storm.stop)
+    if not window.reporting.any():
+        raise DataError(
+            Problem(
+                item=f"storm {storm.name}",
+                found="no gauge reporting in it",
+                expected="one gauge at least",
+                remedy="correct the storm's times, or add a record",
+            )
+        )
+    options = InfillOptions(**job.infill.model_dump())
+    completed = complete(window, network, options)
+    depths = {name: average_storm(completed, weigher) for name, weigher in weighers.items()}
+    shapes = hyetograph_shape(completed, storm, network, basins)
+    if not any(d.table.answered.any() for d in depths.values()):
+        raise MethodError(
+            Problem(
+                item=f"storm {storm.name}",
+                found="no averaging method with a number for any basin",
+                expected="one at least",
+                remedy="add 'thiessen' or 'idw' to [averaging] methods",
+            )
+        )
+    notes = [
+        *(note if note.storm else replace(note, storm=storm.name) for note in completed.notes),
+        *storm_cautions(storm.name, network, basins, list(depths.items())),
+    ]
+    return StormResult(storm, completed, depths, tuple(shapes)), notes
+
+
+def _digests(job: Job) -> dict[str, str]:
+    names = [job.gauges.file, *(name for source in job.rainfall for name in source.paths), job.basins.file]
+    return {name: hashlib.sha256(job.path(name).read_bytes()).hexdigest() for name in names}

@@ -1,0 +1,140 @@
+"""What pydantic finds wrong with a job, in the words of the job file."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+from pydantic import BaseModel
+from pydantic_core import ErrorDetails
+
+from basinrain.errors import Problem, nearest_name
+from basinrain.jobfile.tables import Job
+
+__all__ = ["problem_of"]
+
+_REPEATED = frozenset({"rainfall", "storm"})
+
+_MESSAGES: Mapping[str, tuple[str, str]] = {
+    "string_type": ("text in quotes", "correct the value"),
+    "float_type": ("a number", "correct the value"),
+    "float_parsing": ("a number", "correct the value"),
+    "int_type": ("a whole number", "correct the value"),
+    "int_parsing": ("a whole number", "correct the value"),
+    "int_from_float": ("a whole number", "correct the value"),
+    "bool_type": ("true or false", "correct the value"),
+    "bool_parsing": ("true or false", "correct the value"),
+    "tuple_type": ("a list in square brackets", "correct the value"),
+    "list_type": ("a list in square brackets", "correct the value"),
+    "dict_type": ("a table", "correct the value"),
+    "model_type": ("a table", "correct the value"),
+    "finite_number": ("a finite number", "correct the value"),
+}
+
+
+def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
+    """Return one finding as a :class:`~basinrain.errors.Problem`, with the line where it stands in ``text``."""
+    loc = [part for part in details["loc"] if isinstance(part, int) or not _internal(part)]
+    kind = details["type"]
+    context = details.get("ctx", {})
+    item, line = _item(loc), _line(loc, text)
+    found = f"'{details['input']}'" if isinstance(details["input"], str) else f"{details['input']!r}"
+    if kind == "extra_forbidden":
+        known = _keys_at(loc[:-1])
+        return Problem(
+            item=item,
+            found="a key that is not known",
+            expected="one of: " + ", ".join(known),
+            remedy=nearest_name(str(loc[-1]), known) if _is_near(str(loc[-1]), known) else "remove it",
+            file=file,
+            line=line,
+        )
+    if kind == "missing":
+        table = len(loc) == 1
+        return Problem(
+            item=item,
+            found="no such table" if table else "no such key",
+            expected="it to be given",
+            remedy="add it",
+            file=file,
+            line=_line(loc[:-1], text),
+        )
+    if kind == "too_short" and loc == ["rainfall"]:
+        return Problem(item="[[rainfall]]", found="no table", expected="at least one", remedy="add it", file=file)
+    if kind in {"file_or_files", "no_interval"}:
+        found = "both or neither" if kind == "file_or_files" else "no interval"
+    expected, remedy = _MESSAGES.get(kind, (details["msg"].lower(), "correct the value"))
+    if kind in {"greater_than", "greater_than_equal"}:
+        bound = context.get("gt", context.get("ge"))
+        expected = f"a number {'above' if 'gt' in context else 'of at least'} {bound:g}"
+    if "expected" in context:
+        expected, remedy = str(context["expected"]), str(context.get("remedy", remedy))
+    return Problem(item=item, found=found, expected=expected, remedy=remedy, file=file, line=line)
+
+
+def _internal(part: str) -> bool:
+    """Pydantic names the branch of a union in the location; the user never wrote it."""
+    return bool(re.match(r"^(str|float|int|tuple|function-|literal\[|list\[|BufferTable|constrained)", part))
+
+
+def _is_near(name: str, known: Sequence[str]) -> bool:
+    return nearest_name(name, known).startswith("did you mean")
+
+
+def _item(loc: Sequence[str | int]) -> str:
+    if not loc:
+        return "job"
+    table = str(loc[0])
+    rest = list(loc[1:])
+    if table in _REPEATED:
+        number = f" no. {int(rest.pop(0)) + 1}" if rest and isinstance(rest[0], int) else ""
+        head = f"[[{table}]]{number}"
+    else:
+        head = f"[{table}]"
+    words = [f"no. {part + 1}" if isinstance(part, int) else part for part in rest]
+    return " ".join([head, ".".join(words)]).strip()
+
+
+def _keys_at(loc: Sequence[str | int]) -> list[str]:
+    """Return the keys that the model at a location accepts."""
+    model: type[BaseModel] = Job
+    for part in loc:
+        if isinstance(part, int):
+            continue
+        found = _model_in(model.model_fields[part].annotation)
+        if found is None:
+            return []
+        model = found
+    return [name for name, info in model.model_fields.items() if not info.exclude]
+
+
+def _model_in(annotation: Any) -> type[BaseModel] | None:  # noqa: ANN401 - any type form
+    if isinstance(annotation, type) and issubclass(annotation, BaseModel):
+        return annotation
+    for part in getattr(annotation, "__args__", ()):
+        found = _model_in(part)
+        if found is not None:
+            return found
+    return None
+
+
+def _line(loc: Sequence[str | int], text: str) -> int | None:
+    """Return the line on which a key of a table stands, as far as plain TOML shows it."""
+    if not text or not loc:
+        return None
+    table = str(loc[0])
+    number = loc[1] if len(loc) > 1 and isinstance(loc[1], int) else 0
+    keys = [part for part in loc[1:] if isinstance(part, str)]
+    seen, here, header = -1, False, None
+    for k, raw in enumerate(text.splitlines(), start=1):
+        line = raw.strip()
+        match = re.match(r"^\[{1,2}\s*([\w.\-]+)\s*\]{1,2}", line)
+        if match:
+            here = match.group(1) == table
+            seen += here
+            header = k if here and seen == number else header
+            here = here and seen == number
+        elif here and keys and re.match(rf"^[\"']?{re.escape(keys[0])}[\"']?\s*[=.]", line):
+            return k
+    return header

@@ -1,0 +1,175 @@
+"""Reading a job: TOML, the changes of the command line, and the check of the whole."""
+
+from __future__ import annotations
+
+import re
+import tomllib
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+from typing import Any
+
+from pydantic import ValidationError
+
+from basinrain.errors import JobError, Problem, Problems, ReadError
+from basinrain.jobfile.problems import problem_of
+from basinrain.jobfile.tables import Job
+
+__all__ = ["parse_job", "read_job"]
+
+
+def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
+    """Read and check a job file.
+
+    Parameters
+    ----------
+    path
+        The TOML file.
+    settings
+        Changes in the words of the command line, ``"infill.method=normal-ratio"``; a value is TOML where it can be, else
+        text. A table that may repeat is counted from 1: ``"rainfall.2.unit=in"``; the number may be left out where
+        there is one.
+
+    Raises
+    ------
+    ReadError
+        The file is missing, a folder, not text, or not TOML.
+    JobError
+        A key or a value is not known, or one is missing; all of them together, with the line where it stands.
+    """
+    place = Path(path)
+    try:
+        text = place.read_text(encoding="utf-8-sig")
+    except (OSError, UnicodeDecodeError) as error:
+        found = "bytes that are not UTF-8 text" if isinstance(error, UnicodeDecodeError) else _os_words(error)
+        raise ReadError(
+            Problem(item="job file", found=found, expected="a TOML file", remedy="check the path", file=str(path))
+        ) from None
+    try:
+        content = tomllib.loads(text.replace("\r\n", "\n"))
+    except tomllib.TOMLDecodeError as error:
+        message = str(error)
+        match = re.search(r"\(at line (\d+)", message)
+        raise ReadError(
+            Problem(
+                item="job file",
+                found=message.split(" (at ")[0].lower(),
+                expected="TOML",
+                remedy="correct the line",
+                file=str(path),
+                line=int(match.group(1)) if match else None,
+            )
+        ) from None
+    return parse_job(content, folder=place.resolve().parent, settings=settings, file=str(path), text=text)
+
+
+def _os_words(error: OSError) -> str:
+    return (error.strerror or str(error)).lower()
+
+
+def parse_job(
+    content: Mapping[str, Any],
+    *,
+    folder: str | Path = ".",
+    settings: Sequence[str] = (),
+    file: str = "",
+    text: str = "",
+) -> Job:
+    """Check a job given as nested tables, and resolve its defaults.
+
+    Parameters
+    ----------
+    content
+        The tables, as a TOML reader gives them.
+    folder
+        Where relative paths start.
+    settings
+        As for :func:`read_job`.
+    file, text
+        Name and text of the file, for the place of a problem.
+
+    Examples
+    --------
+    >>> job = parse_job(
+    ...     {
+    ...         "job": {"name": "Two gauges"},
+    ...         "gauges": {"file": "gauges.csv"},
+    ...         "rainfall": {"file": "rain.csv", "unit": "mm", "interval": "1h"},
+    ...         "basins": {"file": "basins.geojson"},
+    ...     },
+    ...     settings=["infill.power=3"],
+    ... )
+    >>> job.infill.power, job.averaging.methods, job.rainfall[0].stamp
+    (3.0, ('arithmetic', 'thiessen', 'idw'), 'end')
+    >>> parse_job({"job": {"name": "x", "deph_unit": "mm"}, "gauges": {}, "rainfall": [], "basins": {"file": "b"}})
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.JobError: [job] deph_unit: found a key that is not known; expected one of: name, depth_unit, \
+area_unit, output, plane; did you mean 'depth_unit'?
+    [gauges] file: found no such key; expected it to be given; add it
+    [[rainfall]]: found no table; expected at least one; add it
+    """
+    tables = _plain(content)
+    for setting in settings:
+        _apply(tables, setting)
+    try:
+        return Job.model_validate({**tables, "folder": Path(folder)})
+    except ValidationError as error:
+        problems = Problems(file=file)
+        for details in error.errors():
+            problems.extend([problem_of(details, file, text)])
+        problems.raise_as(JobError)
+        raise
+
+
+def _plain(value: Any) -> Any:  # noqa: ANN401 - TOML values
+    if isinstance(value, Mapping):
+        return {key: _plain(item) for key, item in value.items()}
+    return [_plain(item) for item in value] if isinstance(value, list | tuple) else value
+
+
+def _apply(tables: dict[str, Any], setting: str) -> None:
+    """Put one ``key=value`` of the command line into the tables."""
+    key, equals, text = setting.partition("=")
+    words = [word.strip() for word in key.split(".")]
+    if not equals or len(words) < 2 or not all(words):
+        raise JobError(
+            Problem(
+                item="--set", found=f"'{setting}'", expected="TABLE.KEY=VALUE", remedy="write infill.method=normal-ratio"
+            )
+        )
+    try:
+        value = tomllib.loads(f"value = {text.strip()}")["value"]
+    except tomllib.TOMLDecodeError:
+        value = text.strip()
+    place: Any = tables
+    for depth, word in enumerate(words[:-1]):
+        place = _enter(place, word, setting, repeats=depth == 1 or isinstance(place, list))
+        if isinstance(place, list) and len(place) == 1 and not words[depth + 1].isdigit():
+            place = place[0]
+    if not isinstance(place, dict):
+        raise JobError(
+            Problem(
+                item=f"--set {setting}",
+                found="a table that is there more than once, or a plain value",
+                expected="the table's number, counted from 1",
+                remedy=f"write {words[0]}.1.{words[-1]}=...",
+            )
+        )
+    place[words[-1]] = value
+
+
+def _enter(place: Any, word: str, setting: str, *, repeats: bool) -> Any:  # noqa: ANN401 - TOML values
+    if isinstance(place, list) and repeats:
+        if word.isdigit() and 1 <= int(word) <= len(place):
+            return place[int(word) - 1]
+        raise JobError(
+            Problem(
+                item=f"--set {setting}",
+                found=f"'{word}'",
+                expected=f"the number of a table, 1 to {len(place)}",
+                remedy="correct the number",
+            )
+        )
+    if isinstance(place, dict):
+        return place.setdefault(word, {})
+    raise JobError(Problem(item=f"--set {setting}", found=f"'{word}' inside a plain value", expected="a table"))

@@ -1,0 +1,117 @@
+"""Wide rainfall files: a row for every time, a column for every gauge."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.errors import Problems
+from basinrain.reading.blocks import TIME_NAMES, Block
+from basinrain.reading.clocks import StampRules, read_stamps
+from basinrain.reading.delimited import DelimitedTable, find_column
+from basinrain.reading.depths import DepthCells, DepthRules
+
+__all__ = ["read_wide"]
+
+
+def read_wide(
+    table: DelimitedTable,
+    depths: DepthRules,
+    stamps: StampRules,
+    *,
+    columns: Mapping[str, str],
+    zone: str | None,
+    problems: Problems,
+) -> tuple[Block | None, str | None]:
+    """Read a table with the times in one column and a column for every gauge.
+
+    Parameters
+    ----------
+    table
+        The file's cells.
+    depths, stamps
+        How to understand them. A mark may follow the number in its cell.
+    columns
+        ``time``: the column of times; else the first one named like a time, else the first one.
+    zone
+        The clock settled by earlier files; None when this is the first.
+    problems
+        Takes what is wrong with the file.
+
+    Returns
+    -------
+    block, zone
+        None where the file cannot be used at all.
+    """
+    mapped = columns.get("time")
+    time = find_column(table.columns, TIME_NAMES, mapped=mapped, key="time", problems=problems)
+    if time is None:
+        if mapped is not None:
+            return None, zone
+        time = table.columns[0]
+    gauges = tuple(column for column in table.columns if column != time)
+    if not gauges:
+        problems.add(item="the header", found=f"only the column '{time}'", expected="a column for every gauge")
+        return None, zone
+    cells = table.frame[time].tolist()
+    ends, zone, faults = read_stamps(cells, stamps, zone=zone)
+    for fault in faults:
+        problems.add(
+            item="time",
+            found=fault.found,
+            expected=fault.expected,
+            remedy=fault.remedy,
+            line=int(table.lines[fault.row]),
+            column=time,
+        )
+    _check_order(ends, cells, table, time, problems)
+    depth = np.empty((len(cells), len(gauges)))
+    status = np.empty((len(cells), len(gauges)), dtype=np.uint8)
+    reader = DepthCells(table, depths)
+    for place, gauge in enumerate(gauges):
+        depth[:, place], status[:, place], wrong = reader.column(gauge)
+        for row, cell in wrong:
+            problems.add(
+                item=f"gauge {gauge}",
+                found=cell.found,
+                expected=cell.expected,
+                remedy=cell.remedy,
+                line=int(table.lines[row]),
+                column=gauge,
+                gauge=gauge,
+                time=cells[row],
+            )
+    if faults:
+        return None, zone
+    block = Block(table.file, gauges, ends, table.lines, depth, status, None, {})
+    return block, zone
+
+
+def _check_order(
+    ends: npt.NDArray[np.datetime64], cells: list[str], table: DelimitedTable, time: str, problems: Problems
+) -> None:
+    known = np.flatnonzero(~np.isnat(ends))
+    seconds = ends[known].astype(np.int64)
+    if len(seconds) < 2 or (np.diff(seconds) > 0).all():
+        return
+    _, first, place = np.unique(seconds, return_index=True, return_inverse=True)
+    twice = first[place] != np.arange(len(seconds))
+    latest = np.maximum.accumulate(seconds)
+    back = np.r_[False, seconds[1:] < latest[:-1]] & ~twice
+    for k in np.flatnonzero(twice | back):
+        row = int(known[k])
+        if twice[k]:
+            found, expected = f"'{cells[row]}', as in line {table.lines[known[first[place[k]]]]}", "each time once"
+        else:
+            found, expected = f"'{cells[row]}' after a later time", "times in order"
+        problems.add(
+            item="time",
+            found=found,
+            expected=expected,
+            remedy="remove one of the rows" if twice[k] else "sort the rows by time",
+            line=int(table.lines[row]),
+            column=time,
+            time=cells[row],
+        )

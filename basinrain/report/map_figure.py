@@ -1,0 +1,349 @@
+"""The map: basins, Thiessen cells inside them, and gauges whose marks say what is known of them."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from typing import Any, Final
+
+import numpy as np
+import numpy.typing as npt
+import shapely
+from matplotlib.collections import LineCollection
+from matplotlib.figure import Figure
+from matplotlib.lines import Line2D
+from matplotlib.patches import PathPatch, Polygon
+from matplotlib.path import Path
+from matplotlib.ticker import FuncFormatter, MaxNLocator
+
+from basinrain.averaging import thiessen_pieces
+from basinrain.basins import UNION
+from basinrain.ground import LOCAL, LONLAT, transform
+from basinrain.report import limits
+from basinrain.report.figures import HALO, INK, PAGE_WIDTH, Picture, figure_style, to_svg
+from basinrain.report.labels import Box, LabelPlacer
+from basinrain.report.words import counted, depth_text, inline, unit_text
+from basinrain.results import StormResult, StormRun
+from basinrain.storms import status_of_total
+from basinrain.units import depth_factor
+
+__all__ = ["map_pictures"]
+
+_REACH: Final = 0.6  # gauges farther from the basins than this share of their box are only named
+_TALLEST: Final = 7.2
+_LEFT, _RIGHT, _BOTTOM, _LINE_HEIGHT = 0.55, 0.1, 0.42, 0.15  # inches
+_TOUCH: Final = 1e-3
+
+# Fill and overlay of a gauge's mark, by the status of its total.
+_FILLS: Final[dict[str, dict[str, Any]]] = {
+    "observed": {"markerfacecolor": "black"},
+    "spread": {"markerfacecolor": "#9a9a9a"},
+    "partly infilled": {"markerfacecolor": "black", "markerfacecoloralt": "white", "fillstyle": "bottom"},
+    "infilled": {"markerfacecolor": "white"},
+    "missing": {"markerfacecolor": "none"},
+    "not installed": {"markerfacecolor": "none"},
+}
+_WORDS: Final = {"spread": "observed over a longer time, spread", "missing": "no total"}
+
+
+def map_pictures(run: StormRun) -> list[Picture]:
+    """Return one map for every set of storms in which the gauges have the same statuses."""
+    pictures = []
+    with figure_style():
+        ground = _Ground(run)
+        for k, (result, names) in enumerate(limits.same_storms(run, _statuses), start=1):
+            pictures.append(_picture(run, ground, result, names, k))
+    return pictures
+
+
+def _statuses(result: StormResult) -> tuple[str, ...]:
+    record = result.completed.record
+    return tuple(status_of_total(record, g) for g in range(len(record.gauges)))
+
+
+class _Ground:
+    """What all maps of a run share: the lines, cut to what the map's width can show, and the frame."""
+
+    def __init__(self, run: StormRun) -> None:
+        basins = run.basins
+        west, south, east, north = basins.bounds
+        reach = _REACH * max(east - west, north - south)
+        x, y = run.network.x, run.network.y
+        self.on_map: npt.NDArray[np.bool_] = (
+            (x >= west - reach) & (x <= east + reach) & (y >= south - reach) & (y <= north + reach)
+        )
+        west, south = min(west, *x[self.on_map], east), min(south, *y[self.on_map], north)
+        east, north = max(east, *x[self.on_map], west), max(north, *y[self.on_map], south)
+        pad = 0.06 * max(east - west, north - south)
+        self.west, self.south, self.east, self.north = west - pad, south - 2 * pad, east + pad, north + pad
+        pixel = max(self.east - self.west, self.north - self.south) / (PAGE_WIDTH * 72)
+        union = basins.polygons[basins.ids.index(UNION)] if UNION in basins.ids else basins.union
+        self.area = union.simplify(pixel / 2)
+        self.points = shapely.points(x, y)
+        self.inside: npt.NDArray[np.bool_] = shapely.dwithin(self.points, union, _TOUCH)
+        # Nodes and merges, so that an edge of two basins is drawn once and simplified once.
+        borders = shapely.unary_union(shapely.boundary(basins.polygons))
+        self.borders = _merged(borders).simplify(pixel / 2)
+        self.cells = self._cells(run, union, pixel)
+
+    @staticmethod
+    def _cells(run: StormRun, union: shapely.Geometry, pixel: float) -> shapely.Geometry:
+        basin, _, polygons, _ = thiessen_pieces(run.network, run.basins)
+        whole = run.basins.ids.index(UNION) if UNION in run.basins.ids else None
+        pieces = polygons if whole is None else polygons[np.asarray(basin) == whole]
+        edges = shapely.unary_union(shapely.boundary(pieces))
+        rim = shapely.boundary(union).buffer(pixel / 4, quad_segs=1)
+        return _merged(edges.difference(rim)).simplify(pixel / 2)
+
+
+def _merged(lines: shapely.Geometry) -> shapely.Geometry:
+    return lines if lines.geom_type == "LineString" else shapely.line_merge(lines)
+
+
+def _lines(geometry: shapely.Geometry) -> list[npt.NDArray[np.float64]]:
+    return [shapely.get_coordinates(part) for part in shapely.get_parts(geometry) if part.length > 0]
+
+
+def _path(geometry: shapely.Geometry) -> Path:
+    rings: list[shapely.Geometry] = []
+    for polygon in shapely.get_parts(geometry):
+        rings += [polygon.exterior, *polygon.interiors]
+    return Path.make_compound_path(*(Path(shapely.get_coordinates(ring), closed=True) for ring in rings))
+
+
+def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[str, ...], number: int) -> Picture:
+    statuses = _statuses(result)
+    handles = _legend(run, ground, statuses)
+    legend_columns = 3
+    head = 0.12 + _LINE_HEIGHT * math.ceil(len(handles) / legend_columns)
+    wide, high = ground.east - ground.west, ground.north - ground.south
+    width = PAGE_WIDTH - _LEFT - _RIGHT
+    height = width * high / wide
+    if height > _TALLEST - head - _BOTTOM:
+        height = _TALLEST - head - _BOTTOM
+        width = height * wide / high
+    total = height + head + _BOTTOM
+    figure = Figure(figsize=(PAGE_WIDTH, total))
+    left = _LEFT + (PAGE_WIDTH - _LEFT - _RIGHT - width) / 2
+    axes = figure.add_axes((left / PAGE_WIDTH, _BOTTOM / total, width / PAGE_WIDTH, height / total))
+    axes.set_xlim(ground.west, ground.east)
+    axes.set_ylim(ground.south, ground.north)
+    axes.add_patch(PathPatch(_path(ground.area), facecolor="#eef0ee", edgecolor="none", zorder=1))
+    axes.add_collection(LineCollection(_lines(ground.cells), colors=INK, linewidths=0.7, linestyles=[(0, (3, 2))], zorder=2))
+    axes.add_collection(LineCollection(_lines(ground.borders), colors=INK, linewidths=1.2, zorder=3))
+    for axis in (axes.xaxis, axes.yaxis):
+        axis.set_major_locator(MaxNLocator(6))
+        axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value / 1000:g}".replace("-", "−")))
+    axes.set_xlabel("easting in the working plane, km")
+    axes.set_ylabel("northing, km")
+    for mark, gauges in _marks(run, ground, statuses).items():
+        axes.plot(run.network.x[gauges], run.network.y[gauges], **_mark_style(*mark), linestyle="none", zorder=5)
+    scale = width * 72 / wide  # points a metre
+    placer = LabelPlacer(Box(0, 0, width * 72, height * 72))
+    unlabelled = _label(axes, run, ground, result, placer, scale)
+    _scale_bar(axes, ground, scale)
+    if run.plane.crs != LOCAL:
+        _north(axes, run, ground, scale)
+    figure.legend(
+        handles=handles,
+        loc="upper left",
+        bbox_to_anchor=(_LEFT / PAGE_WIDTH, 1 - 0.02 / total),
+        ncols=legend_columns,
+        columnspacing=1.6,
+        handletextpad=0.6,
+    )
+    storms = ", ".join(names) if len(run.storms) > 1 else ""
+    caption = _caption(run, ground, storms, unlabelled)
+    name = f"map-{number}"
+    description = (
+        f"Map of {counted(int((np.array(run.basins.ids) != UNION).sum()), 'basin')} and "
+        f"{counted(int(ground.on_map.sum()), 'gauge')} with Thiessen cells. "
+        + "; ".join(
+            f"{_mark_words(*mark)}: {', '.join(run.network.ids[g] for g in gauges[:40])}"
+            for mark, gauges in _marks(run, ground, statuses).items()
+        )
+        + "."
+    )
+    title = "Map of basins and gauges" + (f", {storms}" if storms else "")
+    return Picture(name, caption, to_svg(figure, name, inline(title), inline(description)))
+
+
+def _caption(run: StormRun, ground: _Ground, storms: str, unlabelled: int) -> str:
+    parts = ["Basins, Thiessen cells with every gauge of the network present, and gauges with their storm total in "
+             f"{unit_text(run.depth_unit)}" + (f" ({storms})." if storms else ".")]
+    away = [run.network.ids[g] for g in np.flatnonzero(~ground.on_map)]
+    if away:
+        listed = ", ".join(away[:12]) + (f" and {len(away) - 12} more" if len(away) > 12 else "")
+        parts.append(f"Beyond the map: {counted(len(away), 'gauge')} ({listed}).")
+    if unlabelled:
+        parts.append(f"For want of room {counted(unlabelled, 'label is', 'labels are')} left out.")
+    if run.plane.crs != LOCAL:
+        parts.append("The arrow points to true north.")
+    return " ".join(parts)
+
+
+Mark = tuple[str, bool]
+
+
+def _marks(run: StormRun, ground: _Ground, statuses: Iterable[str]) -> dict[Mark, list[int]]:
+    marks: dict[Mark, list[int]] = {}
+    for g, status in enumerate(statuses):
+        if ground.on_map[g]:
+            marks.setdefault((status, bool(ground.inside[g])), []).append(g)
+    order = list(_FILLS)
+    return dict(sorted(marks.items(), key=lambda item: (not item[0][1], order.index(item[0][0]))))
+
+
+def _mark_style(status: str, inside: bool) -> dict[str, Any]:  # noqa: FBT001 - one half of a mark's key
+    if status in ("missing", "not installed"):
+        shape = {"missing": "x", "not installed": "+"}[status]
+        return {"marker": shape, "markersize": 7 if inside else 5, "color": INK, "markeredgewidth": 1.3}
+    return {
+        "marker": "o" if inside else "s",
+        "markersize": 6.2 if inside else 5.4,
+        "color": INK,
+        "markeredgecolor": INK,
+        "markeredgewidth": 1.0,
+        **_FILLS[status],
+    }
+
+
+def _mark_words(status: str, inside: bool) -> str:  # noqa: FBT001 - one half of a mark's key
+    return f"{'gauge' if inside else 'gauge outside'}, {_WORDS.get(status, status)}"
+
+
+def _legend(run: StormRun, ground: _Ground, statuses: Iterable[str]) -> list[Line2D]:
+    handles = [
+        Line2D([], [], **_mark_style(*mark), linestyle="none", label=_mark_words(*mark))
+        for mark in _marks(run, ground, statuses)
+    ]
+    handles.append(Line2D([], [], color=INK, linewidth=1.2, label="basin boundary"))
+    if not ground.cells.is_empty:
+        handles.append(Line2D([], [], color=INK, linewidth=0.7, linestyle=(0, (3, 2)), label="edge of Thiessen cells"))
+    return handles
+
+
+def _label(axes: Any, run: StormRun, ground: _Ground, result: StormResult, placer: LabelPlacer, scale: float) -> int:  # noqa: ANN401 - matplotlib's axes
+    """Label gauges and basins; return how many labels found no room."""
+    network = run.network
+    x, y = (network.x - ground.west) * scale, (network.y - ground.south) * scale
+    shown = np.flatnonzero(ground.on_map)
+    placer.taken += [Box(x[g] - 4, y[g] - 4, x[g] + 4, y[g] + 4) for g in shown]
+    strip = (ground.south + 0.5 * (ground.north - ground.south) * 0.1 - ground.south) * scale
+    placer.taken.append(Box(0, 0, placer.frame.right, min(strip, 26)))
+    totals = result.completed.record.depth.sum(axis=0) / depth_factor(run.depth_unit)
+    few = len(shown) <= 40
+    size = 6.5 if few else 5.5
+    lost = 0
+    weight = np.zeros(len(network))
+    for depths in result.depths.values():
+        weight = np.maximum(weight, np.nan_to_num(depths.table.weights).max(axis=0))
+    basins = [b for b, basin in enumerate(run.basins.ids) if basin != UNION]
+    if len(basins) > 1:
+        lost += _label_basins(axes, run, ground, placer, scale, basins)
+    for g in sorted(shown, key=lambda g: (-round(float(weight[g]), 9), network.ids[g])):
+        lines = [inline(network.ids[g], 18)] + ([depth_text(totals[g], run.depth_unit)] if few else [])
+        place = placer.beside(x[g], y[g], lines, size, gap=5.5)
+        if place is None and len(lines) > 1:
+            place = placer.beside(x[g], y[g], lines[:1], size, gap=5.5)
+            lines = lines[:1]
+        if place is None:
+            lost += 1
+            continue
+        axes.text(
+            ground.west + place.x / scale,
+            ground.south + place.y / scale,
+            "\n".join(lines),
+            ha=place.side,
+            va="center",
+            fontsize=size,
+            linespacing=1.0,
+            gid=f"{HALO}-{g}",
+            zorder=7,
+        )
+    return lost
+
+
+def _label_basins(
+    axes: Any,  # noqa: ANN401 - matplotlib's axes
+    run: StormRun,
+    ground: _Ground,
+    placer: LabelPlacer,
+    scale: float,
+    basins: list[int],
+) -> int:
+    lost = 0
+    size = 8.0 if len(basins) <= 12 else 6.0
+    for b in basins:
+        polygon = run.basins.polygons[b]
+        low = min(polygon.bounds[2] - polygon.bounds[0], polygon.bounds[3] - polygon.bounds[1]) / 60
+        circle = shapely.maximum_inscribed_circle(polygon, tolerance=low)
+        (cx, cy), (rx, ry) = shapely.get_coordinates(circle)[:2]
+        radius = math.hypot(rx - cx, ry - cy)
+        turns = [(0.0, 0.0)] + [
+            (r * math.cos(a * math.pi / 4), r * math.sin(a * math.pi / 4)) for r in (0.35, 0.7) for a in range(8)
+        ]
+        places = [
+            ((cx + dx * radius - ground.west) * scale, (cy + dy * radius - ground.south) * scale) for dx, dy in turns
+        ]
+        text = inline(run.basins.ids[b], 18)
+        place = placer.over(places, text, size)
+        if place is None:
+            lost += 1
+            continue
+        axes.text(
+            ground.west + place.x / scale,
+            ground.south + place.y / scale,
+            text,
+            ha="center",
+            va="center",
+            fontsize=size,
+            fontstyle="italic",
+            fontweight="bold",
+            color="#4a545b",
+            gid=f"{HALO}-basin-{b}",
+            zorder=6,
+        )
+    return lost
+
+
+def _nice(length: float) -> float:
+    power = 10 ** math.floor(math.log10(length))
+    return max(step * power for step in (1, 2, 5) if step * power <= length)
+
+
+def _scale_bar(axes: Any, ground: _Ground, scale: float) -> None:  # noqa: ANN401 - matplotlib's axes
+    length = _nice(0.25 * (ground.east - ground.west))
+    x, y, thick = ground.west + 10 / scale, ground.south + 8 / scale, 3.2 / scale
+    for k, colour in enumerate((INK, "white")):
+        left = x + k * length / 2
+        corners = [(left, y), (left + length / 2, y), (left + length / 2, y + thick), (left, y + thick)]
+        axes.add_patch(Polygon(corners, closed=True, facecolor=colour, edgecolor=INK, linewidth=0.6, zorder=8))
+    unit, factor = ("km", 1000.0) if length >= 1000 else ("m", 1.0)
+    for k, text in enumerate(("0", f"{length / 2 / factor:g}", f"{length / factor:g} {unit}")):
+        axes.text(
+            x + k * length / 2,
+            y + thick + 2 / scale,
+            text,
+            ha="center" if k < 2 else "left",
+            va="bottom",
+            fontsize=6.5,
+            gid=f"{HALO}-scale-{k}",
+            zorder=8,
+        )
+
+
+def _north(axes: Any, run: StormRun, ground: _Ground, scale: float) -> None:  # noqa: ANN401 - matplotlib's axes
+    """Draw an arrow to true north at the middle of the map, whatever the plane's own north is."""
+    middle = np.array([(ground.west + ground.east) / 2]), np.array([(ground.south + ground.north) / 2])
+    lon, lat = transform(*middle, run.plane.crs, LONLAT)
+    x, y = transform(lon, lat + 0.01, LONLAT, run.plane.crs)
+    up = np.array([x[0] - middle[0][0], y[0] - middle[1][0]])
+    up /= np.hypot(*up)
+    side = np.array([up[1], -up[0]])
+    foot = np.array([ground.east - 14 / scale, ground.south + 6 / scale])
+    tip = foot + up * 18 / scale
+    left, right, notch = (foot + side * s / scale + up * h / scale for s, h in ((-4.5, 0), (4.5, 0), (0, 4)))
+    axes.add_patch(Polygon([tip, left, notch], closed=True, facecolor=INK, edgecolor=INK, linewidth=0.6, zorder=8))
+    axes.add_patch(Polygon([tip, right, notch], closed=True, facecolor="white", edgecolor=INK, linewidth=0.6, zorder=8))
+    axes.text(*(tip + up * 5 / scale), "N", ha="center", va="center", fontsize=7.5, fontweight="bold", zorder=8)

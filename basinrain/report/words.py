@@ -1,0 +1,220 @@
+"""Numbers and units as people read them in the report: 0.1 mm, 0.01 in, weights with 3 decimals; a gap is a dash."""
+
+from __future__ import annotations
+
+import math
+import re
+from decimal import Decimal
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+__all__ = [
+    "DASH",
+    "NARROW_SPACE",
+    "area_text",
+    "counted",
+    "depth_decimals",
+    "depth_text",
+    "depth_texts",
+    "inline",
+    "number_text",
+    "percent_text",
+    "round_to_sum",
+    "step_text",
+    "unit_text",
+    "volume_text",
+    "weight_text",
+]
+
+DASH: Final = "–"
+"""Stands wherever there is no number; never zero."""
+
+NARROW_SPACE: Final = "\u202f"
+"""Parts thousands and stands before a per cent sign; lines do not break at it."""
+
+_UNITS: Final = {"m2": "m²", "km2": "km²", "ft2": "ft²", "mi2": "mi²", "m3": "m³"}
+_STEP_WORDS: Final = {"min": "min", "h": "h", "d": "day", "mo": "month"}
+_CONTROL: Final = re.compile(r"[\x00-\x1f\x7f-\x9f\ud800-\udfff\ufffe\uffff]+")
+
+
+def depth_decimals(unit: str) -> int:
+    """Return the decimals of a printed depth: 2 for inches, else 1."""
+    return 2 if unit == "in" else 1
+
+
+def number_text(value: float, decimals: int, *, grouped: bool = False) -> str:
+    """Return a number with fixed decimals; a dash for NaN.
+
+    Examples
+    --------
+    >>> number_text(1.25, 1), number_text(-0.01, 1), number_text(-2.0, 1), number_text(float("nan"), 1)
+    ('1.2', '0.0', '−2.0', '–')
+    >>> number_text(3312700.4, 0, grouped=True).split(NARROW_SPACE)
+    ['3', '312', '700']
+    """
+    if math.isnan(value):
+        return DASH
+    text = f"{value:,.{decimals}f}" if grouped else f"{value:.{decimals}f}"
+    if not text.strip("-0.,"):
+        text = text.lstrip("-")
+    return text.replace(",", NARROW_SPACE).replace("-", "−")
+
+
+def depth_text(depth: float, unit: str) -> str:
+    """Return a depth that is given in ``unit``.
+
+    Examples
+    --------
+    >>> depth_text(33.127, "mm"), depth_text(1.1244, "in"), depth_text(float("nan"), "mm")
+    ('33.1', '1.12', '–')
+    """
+    return number_text(depth, depth_decimals(unit))
+
+
+def depth_texts(depths: npt.ArrayLike, unit: str) -> list[str]:
+    """Return the depths of a series, rounded so that what is printed sums to the printed total.
+
+    Examples
+    --------
+    >>> depth_texts([0.24, 0.24, 0.0, 0.24], "mm")  # the total is 0.72
+    ['0.3', '0.2', '0.0', '0.2']
+    """
+    decimals = depth_decimals(unit)
+    return [number_text(float(v), decimals) for v in round_to_sum(depths, decimals)]
+
+
+def round_to_sum(values: npt.ArrayLike, decimals: int) -> npt.NDArray[np.float64]:
+    """Round a series so that the rounded values sum to its rounded total.
+
+    Every value is rounded down, and the units that the total still lacks go to the values that lost most (largest
+    remainder; of equal ones the first). No value moves by a whole unit of the last decimal, and zero stays zero.
+
+    Parameters
+    ----------
+    values : array of float, shape (n,)
+        A series with a NaN has no total: its values are rounded one by one.
+    decimals : int
+        Decimals kept.
+
+    Returns
+    -------
+    array of float, shape (n,)
+
+    Examples
+    --------
+    >>> round_to_sum([1.04, 1.04, 1.04, 0.0], 1)  # the total is 3.12, which prints as 3.1
+    array([1.1, 1. , 1. , 0. ])
+    >>> round_to_sum([0.25, float("nan")], 1)
+    array([0.2, nan])
+    >>> round_to_sum([], 1)
+    array([], dtype=float64)
+    """
+    array = np.asarray(values, dtype=float)
+    if array.size == 0 or np.isnan(array).any():
+        return np.round(array, decimals)
+    # Rounded at the 6th further decimal, so that 0.7 * 10 is 7 and not a little more.
+    scaled = np.round(array * 10.0**decimals, 6)
+    units = np.floor(scaled)
+    total = int(Decimal(f"{float(array.sum()):.{decimals}f}").scaleb(decimals))
+    lacking = total - int(units.sum())
+    order = np.argsort(-(scaled - units), kind="stable")
+    # Beyond one unit for each value only where the sum of many values and of their rounded-down parts drift apart.
+    everyone, some = divmod(lacking, len(array))
+    units += everyone
+    units[order[:some]] += 1
+    return np.round(units / 10.0**decimals, decimals)
+
+
+def weight_text(weight: float) -> str:
+    """Return a weight with 3 decimals.
+
+    Examples
+    --------
+    >>> weight_text(0.42549), weight_text(0.0), weight_text(float("nan"))
+    ('0.425', '0.000', '–')
+    """
+    return number_text(weight, 3)
+
+
+def percent_text(share: float) -> str:
+    """Return a share of 1 in per cent, 1 decimal.
+
+    Examples
+    --------
+    >>> percent_text(0.0724).replace(NARROW_SPACE, " "), percent_text(float("nan"))
+    ('7.2 %', '–')
+    """
+    return DASH if math.isnan(share) else f"{number_text(100 * share, 1)}{NARROW_SPACE}%"
+
+
+def area_text(area: float) -> str:
+    """Return an area with about four digits.
+
+    Examples
+    --------
+    >>> area_text(512.37), area_text(43.218), area_text(1.23456)
+    ('512.4', '43.22', '1.235')
+    """
+    return number_text(area, 1 if area >= 100 else 2 if area >= 10 else 3, grouped=True)
+
+
+def volume_text(volume: float) -> str:
+    """Return a volume in whole units from 1000 on, with 1 decimal below.
+
+    Examples
+    --------
+    >>> volume_text(812.34), volume_text(float("nan"))
+    ('812.3', '–')
+    """
+    return number_text(volume, 0 if abs(volume) >= 1000 else 1, grouped=True)
+
+
+def unit_text(unit: str) -> str:
+    """Return a unit as it is printed.
+
+    Examples
+    --------
+    >>> unit_text("km2"), unit_text("mm")
+    ('km²', 'mm')
+    """
+    return _UNITS.get(unit, unit)
+
+
+def step_text(step: str) -> str:
+    """Return a step in words.
+
+    Examples
+    --------
+    >>> step_text("1h"), step_text("15min"), step_text("1d"), step_text("storm")
+    ('1 h', '15 min', '1 day', 'storm')
+    """
+    match = re.fullmatch(r"(\d+)([a-z]+)", step)
+    if match is None:
+        return step
+    count, word = match.groups()
+    return f"{count} {_STEP_WORDS.get(word, word)}"
+
+
+def counted(count: int, one: str, many: str = "") -> str:
+    """Return a count with its noun.
+
+    Examples
+    --------
+    >>> counted(1, "gauge"), counted(3, "gauge"), counted(2, "gauge has", "gauges have")
+    ('1 gauge', '3 gauges', '2 gauges have')
+    """
+    return f"{count} {one if count == 1 else many or one + 's'}"
+
+
+def inline(text: str, longest: int = 0) -> str:
+    """Return a name from a file fit for one line: no control characters, cut to ``longest`` letters where that is given.
+
+    Examples
+    --------
+    >>> inline("Upper" + chr(7) + "Mill"), inline("Somewhere far away", 10)
+    ('Upper Mill', 'Somewhere…')
+    """
+    clean = _CONTROL.sub(" ", text).strip()
+    return clean if not longest or len(clean) <= longest else clean[: longest - 1].rstrip() + "…"

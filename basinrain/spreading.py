@@ -1,0 +1,190 @@
+"""Spreading depths that are known over several steps: daily readings, accumulations, storm totals.
+
+A total over an interval is given to the steps of that interval in the proportions in which the recording gauges near it caught
+their rain, its own amount kept. The pattern is the weighted mean depth of the donors, step by step; their weights are the
+inverse squared distances (common practice in disaggregating daily readings; the exponent is that of the reciprocal-distance
+method, US National Weather Service 1972).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.gauges import GaugeNetwork
+from basinrain.notes import Note
+from basinrain.rainfall import KnownTotal, RainRecord, Status
+
+__all__ = ["NEAREST", "pattern_shares", "share_out", "spread_totals"]
+
+NEAREST: Final = 5
+"""How many recording gauges make a pattern."""
+
+_LISTED: Final = 3
+_NONE_COMPLETE: Final = "no recording gauge is complete over it"
+_ALL_DRY: Final = "none of the recording gauges near it has rain"
+
+
+def pattern_shares(depths: npt.NDArray[np.float64], weights: npt.NDArray[np.float64]) -> npt.NDArray[np.float64] | None:
+    """Return the share of every step in the rain of the donors.
+
+    Parameters
+    ----------
+    depths : array of float, shape (n_steps, n_donors)
+        mm, complete: a NaN would become NaN shares.
+    weights : array of float, shape (n_donors,)
+        Weight of every donor, above 0; only their proportions count.
+
+    Returns
+    -------
+    array of float, shape (n_steps,), or None
+        Shares that sum to 1; None when all donors are dry or there is none, which leaves no pattern.
+
+    Examples
+    --------
+    >>> shares = pattern_shares(np.array([[10.0, 0.0], [0.0, 0.0], [20.0, 10.0]]), np.array([1.0, 1.0]))
+    >>> shares  # 5, 0 and 15 mm on average
+    array([0.25, 0.  , 0.75])
+    >>> pattern_shares(np.zeros((3, 2)), np.array([1.0, 1.0])) is None
+    True
+    """
+    mixed = depths @ weights
+    total = mixed.sum()
+    # Weights and depths are not negative, so a sum of zero means that every donor is dry.
+    return None if total == 0 else mixed / total
+
+
+def share_out(total: float, shares: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
+    """Return ``total`` given to steps by ``shares``, the sum kept: rounding goes to the last step of the largest share.
+
+    Parameters
+    ----------
+    total : float
+        mm, 0 or more.
+    shares : array of float, shape (n_steps,)
+        0 or more, summing to 1.
+
+    Examples
+    --------
+    >>> share_out(48.0, np.array([1 / 3, 2 / 3]))
+    array([16., 32.])
+    """
+    return _share_out(np.array([total]), shares[:, None])[:, 0]
+
+
+def spread_totals(
+    record: RainRecord, network: GaugeNetwork, totals: Sequence[KnownTotal]
+) -> tuple[RainRecord, tuple[Note, ...]]:
+    """Return the record with ``totals`` spread over its steps in the pattern of the recording gauges.
+
+    The donors of a total are the :data:`NEAREST` nearest of ``record.recorders`` that are measured at every step of its
+    interval, weighted by the inverse squared distance; equal distances go by gauge id. Where none is complete, or none of
+    them has rain, the total is spread evenly and a note says so.
+
+    Parameters
+    ----------
+    record : RainRecord
+        Columns in the network's order.
+    network : GaugeNetwork
+        Gives the distances; no two gauges stand at one place.
+    totals : sequence of KnownTotal
+        Each begins and ends on bounds of the record's steps; intervals of one gauge do not overlap. Whatever the record
+        holds for the gauge in those steps is replaced.
+
+    Returns
+    -------
+    record : RainRecord
+        The totals' steps have status SPREAD, or ZERO where the total is 0; ``totals`` holds them beside earlier ones.
+    notes : tuple of Note
+        One ``spread-evenly`` for every gauge and reason.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 1000.0], y=[0.0, 0.0], crs="local")
+    >>> ends = np.array(["2031-05-04", "2031-05-05", "2031-05-06"], dtype="datetime64[s]") + np.timedelta64(1, "D")
+    >>> depths = [[10.0, np.nan], [0.0, np.nan], [20.0, np.nan]]
+    >>> record = RainRecord.from_depths(("A", "B"), ends - np.timedelta64(1, "D"), ends, depths, step="1d")
+    >>> spread, notes = spread_totals(record, network, [KnownTotal("B", record.starts[0], record.ends[2], 45.0)])
+    >>> spread.depth[:, 1], notes
+    (array([15.,  0., 30.]), ())
+    """
+    depth, status = record.depth.copy(), record.status.copy()
+    donors = np.array([g for g, gauge in enumerate(record.gauges) if gauge in record.recorders], dtype=np.int64)
+    near, squared = _by_distance(network, donors)
+    measured = record.measured[:, donors]
+    column = {gauge: g for g, gauge in enumerate(record.gauges)}
+    evenly: dict[tuple[str, str], list[KnownTotal]] = {}
+    for (first, stop), group in _by_interval(record, totals).items():
+        targets = np.array([column[total.gauge] for total in group], dtype=np.int64)
+        amounts = np.array([total.depth for total in group])
+        weights = _weights(near[targets], squared[targets], measured[first:stop].all(axis=0))
+        mixed = np.where(measured[first:stop], record.depth[first:stop, donors], 0.0) @ weights.T
+        caught = mixed.sum(axis=0)
+        even = caught == 0
+        shares = np.where(even, 1 / (stop - first), mixed / np.where(even, 1.0, caught))
+        depth[first:stop, targets] = _share_out(amounts, shares)
+        status[first:stop, targets] = np.where(amounts == 0, Status.ZERO, Status.SPREAD)
+        for k in np.flatnonzero(even & (amounts > 0)):
+            reason = _ALL_DRY if weights[k].any() else _NONE_COMPLETE
+            evenly.setdefault((group[k].gauge, reason), []).append(group[k])
+    notes = [_evenly_note(gauge, reason, where) for (gauge, reason), where in evenly.items()]
+    notes.sort(key=lambda note: (column[note.gauge], note.text))
+    return replace(record, depth=depth, status=status, totals=(*record.totals, *totals)), tuple(notes)
+
+
+def _share_out(totals: npt.NDArray[np.float64], shares: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
+    """Give each total (n,) to its steps by shares (n_steps, n)."""
+    parts = shares * totals
+    # The last of the largest: it is wet, and large enough never to be pushed below zero by rounding.
+    largest = len(shares) - 1 - shares[::-1].argmax(axis=0)
+    each = np.arange(len(totals))
+    parts[largest, each] += totals - parts.sum(axis=0)
+    return parts
+
+
+def _by_distance(
+    network: GaugeNetwork, donors: npt.NDArray[np.int64]
+) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]:
+    """Return for every gauge the places in ``donors`` by distance, itself left out last, and the squared distances."""
+    distance = network.distances()[:, donors]
+    distance[donors, np.arange(len(donors))] = np.inf
+    order = np.lexsort((np.broadcast_to(network.id_rank[donors], distance.shape), distance), axis=-1)
+    return order, np.take_along_axis(distance, order, axis=1) ** 2
+
+
+def _by_interval(record: RainRecord, totals: Sequence[KnownTotal]) -> dict[tuple[int, int], list[KnownTotal]]:
+    firsts = np.searchsorted(record.starts, np.array([t.start for t in totals], dtype="datetime64[s]"))
+    stops = np.searchsorted(record.ends, np.array([t.end for t in totals], dtype="datetime64[s]")) + 1
+    groups: dict[tuple[int, int], list[KnownTotal]] = {}
+    for first, stop, total in zip(firsts.tolist(), stops.tolist(), totals, strict=True):
+        groups.setdefault((first, stop), []).append(total)
+    return groups
+
+
+def _weights(
+    near: npt.NDArray[np.int64], squared: npt.NDArray[np.float64], complete: npt.NDArray[np.bool_]
+) -> npt.NDArray[np.float64]:
+    """Return the weights (n_targets, n_donors) of the nearest complete donors; a row of zeros where there is none."""
+    usable = complete[near] & np.isfinite(squared)
+    chosen = usable & (np.cumsum(usable, axis=1) <= NEAREST)
+    weights = np.zeros(near.shape)
+    # Scaled by the nearest one's, so that metres squared do not lose digits.
+    inverse = np.divide(1.0, squared, out=np.zeros(near.shape), where=chosen)
+    np.put_along_axis(
+        weights, near, inverse / np.where(chosen.any(axis=1), inverse.max(axis=1, initial=0), 1)[:, None], 1
+    )
+    return weights
+
+
+def _evenly_note(gauge: str, reason: str, where: list[KnownTotal]) -> Note:
+    listed = ", ".join(f"{t.depth:g} mm over {t.start} to {t.end}" for t in where[:_LISTED])
+    more = f" and {len(where) - _LISTED} more" if len(where) > _LISTED else ""
+    return Note(
+        code="spread-evenly",
+        text=f"Gauge {gauge}: {listed}{more} spread evenly over the steps, because {reason}.",
+        gauge=gauge,
+    )

@@ -1,0 +1,294 @@
+"""The tables of a storm run, as data frames in the job's units.
+
+Columns and their order are those of the CSV files; ``docs/outputs.md`` describes each.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.storms import spread_across_methods, status_of_total
+from basinrain.units import area_factor, depth_factor, volume_factor, volume_unit_for
+from basinrain.weights import compare
+
+if TYPE_CHECKING:
+    import geopandas as gpd
+    import pandas as pd
+
+    from basinrain.results import StormResult, StormRun
+    from basinrain.storms import BasinDepths
+
+__all__ = [
+    "basin_means",
+    "gauge_totals",
+    "hyetographs",
+    "infilled",
+    "spread",
+    "storm_table",
+    "thiessen",
+    "time_text",
+    "weights",
+    "weights_compared",
+]
+
+
+def time_text(when: np.datetime64, zone: str) -> str:
+    """Return a time in ISO 8601 with the record's offset; empty for NaT.
+
+    Examples
+    --------
+    >>> time_text(np.datetime64("2031-05-04T06:00"), "+02:00"), time_text(np.datetime64("NaT"), "")
+    ('2031-05-04T06:00+02:00', '')
+    """
+    if np.isnat(when):
+        return ""
+    seconds = when.astype("datetime64[s]")
+    minutes = seconds.astype("datetime64[m]")
+    return f"{minutes if minutes == seconds else seconds}{'Z' if zone == '+00:00' else zone}"
+
+
+def _depths(run: StormRun) -> Iterator[tuple[StormResult, str, BasinDepths]]:
+    for result in run.storms:
+        for method, depths in result.depths.items():
+            yield result, method, depths
+
+
+def _frame(rows: list[tuple[Any, ...]], columns: str) -> pd.DataFrame:
+    import pandas as pd
+
+    return pd.DataFrame(rows, columns=columns.split())
+
+
+def _quotient(part: npt.NDArray[np.float64], whole: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
+    return np.divide(part, whole, out=np.full(np.broadcast(part, whole).shape, np.nan), where=whole > 0)
+
+
+def basin_means(run: StormRun) -> pd.DataFrame:
+    """Return ``basin_means``: one row per storm, basin and method."""
+    mm, m2 = depth_factor(run.depth_unit), area_factor(run.area_unit)
+    volume_unit = volume_unit_for(run.depth_unit)
+    m3 = volume_factor(volume_unit)
+    rows = []
+    for result, method, depths in _depths(run):
+        total, table = depths.total, depths.table
+        share = share_infilled(result, method)
+        for b, basin in enumerate(run.basins.ids):
+            area = run.basins.areas[b]
+            rows.append(
+                (
+                    result.storm.name,
+                    basin,
+                    method,
+                    total[b] / mm,
+                    run.depth_unit,
+                    area / m2,
+                    run.area_unit,
+                    total[b] / 1000 * area / m3,
+                    volume_unit,
+                    int(np.count_nonzero(np.nan_to_num(table.weights[b]))),
+                    share[b],
+                    table.covered[b],
+                    depths.reporting_only[b] / mm,
+                )
+            )
+    return _frame(
+        rows,
+        "storm basin method depth depth_unit area area_unit volume volume_unit gauges_used share_infilled covered_share "
+        "depth_reporting_only",
+    )
+
+
+def share_infilled(result: StormResult, method: str) -> npt.NDArray[np.float64]:
+    """Return the share of each basin's total that rests on infilled values; by weight where the basin stayed dry."""
+    depths = result.depths[method]
+    by_weight = 1 - depths.observed_share.mean(axis=0)
+    by_depth = _quotient(depths.infilled, depths.total)
+    return np.where(depths.total == 0, by_weight, by_depth)
+
+
+def storm_table(run: StormRun) -> pd.DataFrame:
+    """Return ``storms``: windows, totals, and the peak of the mean over the weighted mean of the gauges' peaks."""
+    mm = depth_factor(run.depth_unit)
+    rows = []
+    for result, method, depths in _depths(run):
+        storm, zone = result.storm, run.record.zone
+        peak_of_mean, mean_of_peaks = peaks(result, method)
+        ratio = _quotient(peak_of_mean, mean_of_peaks)
+        for b, basin in enumerate(run.basins.ids):
+            rows.append(
+                (
+                    storm.name,
+                    basin,
+                    method,
+                    time_text(storm.start, zone),
+                    time_text(storm.end, zone),
+                    depths.total[b] / mm,
+                    run.depth_unit,
+                    peak_of_mean[b] / mm,
+                    mean_of_peaks[b] / mm,
+                    ratio[b],
+                )
+            )
+    return _frame(
+        rows, "storm basin method start end depth depth_unit peak_of_mean mean_of_peaks peak_ratio"
+    )
+
+
+def peaks(result: StormResult, method: str) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
+    """Return the peak of each basin's mean and the weighted mean of the gauges' own peaks, both in mm a step."""
+    depths = result.depths[method]
+    depth = result.completed.record.depth
+    gauge_peaks = np.max(np.where(np.isnan(depth), -1.0, depth), axis=0)
+    return depths.depth.max(axis=0), depths.table.apply(np.where(gauge_peaks < 0, np.nan, gauge_peaks))
+
+
+def spread(run: StormRun) -> pd.DataFrame:
+    """Return ``spread``: the least and greatest basin mean across methods."""
+    mm = depth_factor(run.depth_unit)
+    rows = []
+    for result in run.storms:
+        for b, basin in enumerate(run.basins.ids):
+            least, most, apart, percent = spread_across_methods([d.total[b] for d in result.depths.values()])
+            rows.append((result.storm.name, basin, least / mm, most / mm, apart / mm, run.depth_unit, percent))
+    return _frame(rows, "storm basin least greatest spread depth_unit spread_percent")
+
+
+def weights(run: StormRun) -> pd.DataFrame:
+    """Return ``weights``: one row per storm, basin, method and gauge that has weight or contributes."""
+    mm = depth_factor(run.depth_unit)
+    rows: list[tuple[Any, ...]] = []
+    for result, method, depths in _depths(run):
+        share = _quotient(depths.contribution, depths.total[:, None])
+        reports = result.completed.record.reporting.any(axis=0)
+        for b, basin in enumerate(run.basins.ids):
+            weight = depths.table.weights[b]
+            counts = np.flatnonzero((np.nan_to_num(weight) != 0) | (np.nan_to_num(depths.most[b]) != 0))
+            rows += [
+                (
+                    result.storm.name,
+                    basin,
+                    method,
+                    run.network.ids[g],
+                    weight[g],
+                    depths.least[b, g] if reports[g] else 0.0,
+                    depths.most[b, g] if reports[g] else 0.0,
+                    depths.contribution[b, g] / mm,
+                    run.depth_unit,
+                    share[b, g],
+                )
+                for g in counts
+            ]
+    return _frame(
+        rows, "storm basin method gauge weight weight_min weight_max contribution depth_unit share"
+    )
+
+
+def weights_compared(run: StormRun) -> pd.DataFrame:
+    """Return ``weights_compared``: the methods' own weights side by side, largest differences first."""
+    import pandas as pd
+
+    frames = []
+    for result in run.storms:
+        frame = compare([depths.table for depths in result.depths.values()])
+        frame.insert(0, "storm", result.storm.name)
+        frames.append(frame)
+    return pd.concat(frames, ignore_index=True)
+
+
+def gauge_totals(run: StormRun) -> pd.DataFrame:
+    """Return ``gauge_totals``: one row per storm and gauge."""
+    mm = depth_factor(run.depth_unit)
+    rows = []
+    for result in run.storms:
+        record = result.completed.record
+        total, observed = record.depth.sum(axis=0), record.reporting.sum(axis=0)
+        rows += [
+            (
+                result.storm.name,
+                gauge,
+                total[g] / mm,
+                run.depth_unit,
+                status_of_total(record, g),
+                int(observed[g]),
+                len(record),
+            )
+            for g, gauge in enumerate(run.network.ids)
+        ]
+    return _frame(rows, "storm gauge depth depth_unit status steps_observed steps_total")
+
+
+def infilled(run: StormRun) -> pd.DataFrame:
+    """Return ``infilled``: one row per estimate; the time is the end of the step or day, blank for a storm's total."""
+    mm = depth_factor(run.depth_unit)
+    rows = []
+    for result in run.storms:
+        ends = result.completed.record.ends
+        for estimate in result.completed.estimates:
+            when = ends[estimate.stop - 1] if estimate.scale != "storm" else np.datetime64("NaT")
+            rows.append(
+                (
+                    result.storm.name,
+                    estimate.gauge,
+                    time_text(when, run.record.zone),
+                    estimate.scale,
+                    estimate.depth / mm,
+                    run.depth_unit,
+                    estimate.method,
+                    " ".join(f"{donor}:{weight:.6g}" for donor, weight in sorted(estimate.donors.items())),
+                )
+            )
+    return _frame(rows, "storm gauge time scale depth depth_unit method donors")
+
+
+def hyetographs(run: StormRun) -> pd.DataFrame:
+    """Return ``hyetographs``: one row per storm, basin, method and step."""
+    import pandas as pd
+
+    mm = depth_factor(run.depth_unit)
+    frames = []
+    for result, method, depths in _depths(run):
+        depth = result.hyetograph(method) / mm
+        times = [time_text(end, run.record.zone) for end in result.completed.record.ends]
+        frames += [
+            pd.DataFrame(
+                {
+                    "storm": result.storm.name,
+                    "basin": basin,
+                    "method": method,
+                    "time": times,
+                    "depth": depth[:, b],
+                    "cumulative": np.cumsum(depth[:, b]),
+                    "depth_unit": run.depth_unit,
+                    "observed_share": depths.observed_share[:, b],
+                }
+            )
+            for b, basin in enumerate(run.basins.ids)
+        ]
+    return pd.concat(frames, ignore_index=True)
+
+
+def thiessen(run: StormRun) -> gpd.GeoDataFrame:
+    """Return ``thiessen``: polygons of basin and gauge, with area and weight."""
+    import geopandas as gpd
+
+    from basinrain.averaging import thiessen_pieces
+    from basinrain.ground import LOCAL, LONLAT, project
+
+    basin, gauge, polygons, areas = thiessen_pieces(run.network, run.basins)
+    local = run.plane.crs == LOCAL
+    shapes = polygons if local else project(polygons, run.plane.crs, LONLAT)
+    return gpd.GeoDataFrame(
+        {
+            "basin": [run.basins.ids[b] for b in basin],
+            "gauge": [run.network.ids[g] for g in gauge],
+            "area": areas / area_factor(run.area_unit),
+            "area_unit": run.area_unit,
+            "weight": areas / run.basins.areas[basin],
+        },
+        geometry=list(shapes),
+        crs=None if local else LONLAT,
+    )

@@ -1,0 +1,114 @@
+"""An output folder that is whole at every moment: built beside its place, then moved there."""
+
+from __future__ import annotations
+
+import json
+import os
+import shutil
+import tempfile
+from collections.abc import Iterable, Iterator
+from contextlib import contextmanager
+from pathlib import Path
+
+from basinrain.errors import Problem, WriteError
+
+__all__ = ["RECORD", "check_folder", "whole_folder"]
+
+RECORD = "record.json"
+"""The file by which a folder is known as an earlier output, with the list of what belongs to it."""
+
+
+def check_folder(folder: Path, inputs: Iterable[Path]) -> None:
+    """Refuse a folder that results must not replace.
+
+    Parameters
+    ----------
+    folder
+        Where the results are to go; it need not exist.
+    inputs
+        Files that the run reads.
+
+    Raises
+    ------
+    WriteError
+        It is a file, holds an input, holds something that is not from an earlier run, or cannot be written.
+    """
+    place = folder.resolve()
+    if place.exists() and not place.is_dir():
+        raise _refused(folder, "a file", "a folder", "name another output folder")
+    for path in inputs:
+        if path.resolve().is_relative_to(place):
+            raise _refused(folder, f"the input {path.name} inside it", "a folder without inputs", "name another one")
+    _restore(place)
+    if place.exists():
+        strangers = sorted(set(os.listdir(place)) - _own_files(place))
+        if strangers:
+            named = ", ".join(strangers[:5]) + (" ..." if len(strangers) > 5 else "")
+            raise _refused(
+                folder,
+                f"files that no earlier run wrote: {named}",
+                "an empty folder or an earlier output",
+                "move them away or name another output folder",
+            )
+    parent = next(p for p in place.parents if p.exists())
+    if not parent.is_dir() or not os.access(parent, os.W_OK | os.X_OK):
+        raise _refused(folder, f"no right to write in {parent}", "a folder that can be written", "name another one")
+    if place.exists() and not os.access(place, os.W_OK | os.X_OK):
+        raise _refused(folder, "no right to write there", "a folder that can be written", "name another one")
+
+
+def _refused(folder: Path, found: str, expected: str, remedy: str) -> WriteError:
+    return WriteError(Problem(item="output folder", found=found, expected=expected, remedy=remedy, file=str(folder)))
+
+
+def _own_files(place: Path) -> set[str]:
+    try:
+        content = json.loads((place / RECORD).read_text(encoding="utf-8"))
+        return {RECORD, *content["files"]}
+    except (OSError, ValueError, KeyError, TypeError):
+        return set()
+
+
+def _earlier(place: Path) -> Path:
+    return place.with_name(f".{place.name}.earlier")
+
+
+def _restore(place: Path) -> None:
+    """Put an earlier output back that a killed run had moved aside, or clear it where the new one had arrived."""
+    earlier = _earlier(place)
+    if earlier.exists():
+        if place.exists():
+            shutil.rmtree(earlier)
+        else:
+            earlier.rename(place)
+
+
+@contextmanager
+def whole_folder(folder: Path) -> Iterator[Path]:
+    """Give a temporary folder beside ``folder``; move it into place when the block ends well.
+
+    A run that fails leaves the earlier folder as it was and nothing beside it. A run that is killed leaves the earlier
+    folder whole, at worst under the name ``.<name>.earlier`` from which the next run puts it back.
+
+    Raises
+    ------
+    WriteError
+        The folder cannot be made, written or moved.
+    """
+    place = folder.resolve()
+    built: Path | None = None
+    try:
+        place.parent.mkdir(parents=True, exist_ok=True)
+        built = Path(tempfile.mkdtemp(prefix=f".{place.name}.", dir=place.parent))
+        built.chmod(0o755)
+        yield built
+        earlier = _earlier(place)
+        if place.exists():
+            place.rename(earlier)
+        built.rename(place)
+        shutil.rmtree(earlier, ignore_errors=True)
+    except OSError as error:
+        raise _refused(folder, (error.strerror or str(error)).lower(), "a folder that can be written", "") from error
+    finally:
+        if built is not None and built.exists():
+            shutil.rmtree(built, ignore_errors=True)

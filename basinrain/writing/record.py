@@ -1,0 +1,75 @@
+"""The record of a run as one JSON document: what was asked, read, warned of and found."""
+
+from __future__ import annotations
+
+import json
+import math
+from typing import TYPE_CHECKING, Any
+
+from basinrain.results import CAUTION, StormRun
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+__all__ = ["record_text", "run_record", "run_tables"]
+
+
+def run_tables(run: StormRun) -> dict[str, pd.DataFrame]:
+    """Return the run's tables under the names of their files."""
+    return {
+        "basin_means": run.basin_means,
+        "storms": run.storm_table,
+        "spread": run.spread,
+        "weights": run.weights,
+        "weights_compared": run.weights_compared,
+        "gauge_totals": run.gauge_totals,
+        "infilled": run.infilled,
+        "hyetographs": run.hyetographs,
+    }
+
+
+def run_record(run: StormRun, files: list[str]) -> dict[str, Any]:
+    """Return the whole run as plain values; a number that is missing is null.
+
+    Parameters
+    ----------
+    run
+        The run.
+    files
+        Names of the files written beside the record; empty when nothing is written.
+    """
+    return {
+        "name": run.name,
+        "caution": CAUTION,
+        "versions": dict(run.versions),
+        "job": dict(run.settings),
+        "inputs": {name: {"sha256": digest} for name, digest in run.inputs.items()},
+        "files": files,
+        "plane": {"name": run.plane.name, "crs": run.plane.crs, "largest_distortion": run.plane.distortion},
+        "clock": run.record.zone or "as in the files",
+        "step": run.record.step,
+        "facts": dict(run.facts),
+        "warnings": [_note(note) for note in run.notes if note.level == "warning"],
+        "remarks": [_note(note) for note in run.notes if note.level == "info"],
+        "results": {name: _rows(frame) for name, frame in run_tables(run).items()},
+    }
+
+
+def _note(note: Any) -> dict[str, str]:  # noqa: ANN401 - Note; only its text fields are read
+    fields = ("code", "text", "storm", "basin", "gauge", "method")
+    return {field: getattr(note, field) for field in fields if getattr(note, field)}
+
+
+def _rows(frame: pd.DataFrame) -> list[dict[str, Any]]:
+    columns = {name: [_plain(value) for value in frame[name].tolist()] for name in frame.columns}
+    names = list(columns)
+    return [dict(zip(names, row, strict=True)) for row in zip(*columns.values(), strict=True)]
+
+
+def _plain(value: Any) -> Any:  # noqa: ANN401 - a cell
+    return None if isinstance(value, float) and not math.isfinite(value) else value
+
+
+def record_text(run: StormRun, files: list[str]) -> str:
+    """Return :func:`run_record` as JSON text."""
+    return json.dumps(run_record(run, files), indent=1, ensure_ascii=False, allow_nan=False) + "\n"

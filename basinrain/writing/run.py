@@ -1,0 +1,58 @@
+"""All files of a storm run."""
+
+from __future__ import annotations
+
+import json
+from pathlib import Path
+
+from basinrain.ground import LOCAL
+from basinrain.report import render_report
+from basinrain.results import StormRun
+from basinrain.writing.folder import RECORD, whole_folder
+from basinrain.writing.record import record_text, run_tables
+
+__all__ = ["write_run"]
+
+
+def write_run(run: StormRun, folder: str | Path) -> Path:
+    """Write the run's tables, Thiessen polygons, record and report into a folder.
+
+    Parameters
+    ----------
+    run
+        The run.
+    folder
+        Replaced as a whole; it appears only when every file is complete.
+
+    Returns
+    -------
+    Path
+        The folder.
+
+    Raises
+    ------
+    WriteError
+        The folder cannot be written.
+    """
+    place = Path(folder)
+    with whole_folder(place) as built:
+        for name, frame in run_tables(run).items():
+            frame.to_csv(built / f"{name}.csv", index=False, encoding="utf-8", lineterminator="\n")
+        (built / "thiessen.geojson").write_text(thiessen_text(run), encoding="utf-8")
+        (built / "report.html").write_text(render_report(run), encoding="utf-8")
+        files = sorted(path.name for path in built.iterdir())
+        (built / RECORD).write_text(record_text(run, files), encoding="utf-8")
+    return place
+
+
+def thiessen_text(run: StormRun) -> str:
+    """Return the Thiessen polygons as GeoJSON (RFC 7946).
+
+    Positions are longitude and latitude (EPSG:4326). A job in local coordinates has no place on the map: its positions are
+    metres of the local plane, which a member ``coordinates`` says, as section 4 of the standard allows by arrangement.
+    """
+    content = json.loads(run.thiessen.to_json(show_bbox=False, drop_id=True))
+    content.pop("crs", None)
+    if run.plane.crs == LOCAL:
+        content["coordinates"] = "local plane, metres"
+    return json.dumps(content, ensure_ascii=False) + "\n"

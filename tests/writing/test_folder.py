@@ -1,0 +1,143 @@
+"""An output folder is whole at every moment, and nothing that is not ours is ever lost."""
+
+from __future__ import annotations
+
+import json
+import os
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+
+from basinrain.errors import WriteError
+from basinrain.writing.folder import RECORD, check_folder, whole_folder
+
+
+def earlier_output(folder: Path, text: str = "first") -> None:
+    with whole_folder(folder) as built:
+        (built / "a.csv").write_text(text)
+        (built / RECORD).write_text(json.dumps({"files": ["a.csv"]}))
+
+
+def test_the_folder_appears_only_when_everything_is_there(tmp_path: Path) -> None:
+    """While the block runs the place is empty; after it, it holds everything and nothing is left beside it."""
+    place = tmp_path / "deep" / "out"
+    with whole_folder(place) as built:
+        (built / "a.csv").write_text("x")
+        assert not place.exists()
+    assert [path.name for path in place.iterdir()] == ["a.csv"]
+    assert [path.name for path in place.parent.iterdir()] == ["out"]
+
+
+def test_a_run_that_fails_leaves_the_earlier_output(tmp_path: Path) -> None:
+    """An error inside the block changes nothing."""
+    place = tmp_path / "out"
+    earlier_output(place)
+    with pytest.raises(RuntimeError, match="midway"), whole_folder(place) as built:
+        (built / "a.csv").write_text("second")
+        message = "midway"
+        raise RuntimeError(message)
+    assert (place / "a.csv").read_text() == "first"
+    assert [path.name for path in tmp_path.iterdir()] == ["out"]
+
+
+def test_a_file_of_the_earlier_run_does_not_survive_in_the_new_one(tmp_path: Path) -> None:
+    """The folder is replaced as a whole."""
+    place = tmp_path / "out"
+    earlier_output(place)
+    check_folder(place, [])
+    with whole_folder(place) as built:
+        (built / "b.csv").write_text("x")
+    assert [path.name for path in place.iterdir()] == ["b.csv"]
+
+
+def test_killed_at_any_moment_the_earlier_output_is_whole(tmp_path: Path) -> None:
+    """A writer that replaces the folder without end is killed again and again; what is there afterwards is always whole."""
+    place = tmp_path / "out"
+    earlier_output(place, "0" * 50_000)
+    script = (
+        "import sys, json\nfrom pathlib import Path\nfrom basinrain.writing.folder import whole_folder, check_folder\n"
+        "place = Path(sys.argv[1])\ncheck_folder(place, [])\nprint('go', flush=True)\nk = 1\n"
+        "while True:\n    with whole_folder(place) as built:\n        (built / 'a.csv').write_text(str(k % 10) * 50_000)\n"
+        "        (built / 'record.json').write_text(json.dumps({'files': ['a.csv']}))\n    k += 1\n"
+    )
+    seen = set()
+    for attempt in range(8):
+        with subprocess.Popen([sys.executable, "-c", script, str(place)], stdout=subprocess.PIPE, text=True) as child:
+            assert child.stdout is not None
+            assert child.stdout.readline() == "go\n"
+            time.sleep(0.01 + 0.007 * attempt)
+            child.send_signal(signal.SIGKILL)
+        check_folder(place, [])
+        text = (place / "a.csv").read_text()
+        assert len(text) == 50_000
+        assert len(set(text)) == 1
+        assert sorted(path.name for path in place.iterdir()) == ["a.csv", "record.json"]
+        seen.add(text[0])
+    assert seen != {"0"}
+
+
+def test_an_output_moved_aside_by_a_killed_run_comes_back(tmp_path: Path) -> None:
+    """Killed between its two renames, a run leaves the earlier output under another name; the next run puts it back."""
+    place = tmp_path / "out"
+    earlier_output(place)
+    place.rename(tmp_path / ".out.earlier")
+    check_folder(place, [])
+    assert (place / "a.csv").read_text() == "first"
+    assert not (tmp_path / ".out.earlier").exists()
+
+
+def test_what_is_not_ours_is_never_replaced(tmp_path: Path) -> None:
+    """A folder with a stranger's file is refused and named."""
+    place = tmp_path / "out"
+    earlier_output(place)
+    (place / "notes.txt").write_text("mine")
+    with pytest.raises(WriteError, match="found files that no earlier run wrote: notes.txt; expected an empty folder"):
+        check_folder(place, [])
+    place_of_others = tmp_path / "others"
+    place_of_others.mkdir()
+    (place_of_others / "record.json").write_text("[]")
+    with pytest.raises(WriteError, match="no earlier run wrote: record.json"):
+        check_folder(place_of_others, [])
+
+
+def test_inputs_files_and_forbidden_places_are_refused(tmp_path: Path) -> None:
+    """A folder that holds an input, is a file, or cannot be written is refused before anything is computed."""
+    (tmp_path / "rain.csv").write_text("x")
+    with pytest.raises(WriteError, match="found the input rain.csv inside it; expected a folder without inputs"):
+        check_folder(tmp_path, [tmp_path / "rain.csv"])
+    with pytest.raises(WriteError, match="found a file; expected a folder"):
+        check_folder(tmp_path / "rain.csv", [])
+    with pytest.raises(WriteError, match=r"output folder: found .*; expected a folder that can be written"):
+        check_folder(tmp_path / "rain.csv" / "out", [])
+
+
+@pytest.mark.skipif(os.geteuid() == 0, reason="root may write everywhere")
+def test_a_folder_without_the_right_to_write_is_refused(tmp_path: Path) -> None:
+    """No right to write is said before anything is computed."""
+    tmp_path.chmod(0o500)
+    try:
+        with pytest.raises(WriteError, match="no right to write in"):
+            check_folder(tmp_path / "out", [])
+    finally:
+        tmp_path.chmod(0o700)
+
+
+def test_no_right_to_write_is_said(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """The same where the tests run as root: the system's answer is what counts."""
+    monkeypatch.setattr(os, "access", lambda *_: False)
+    with pytest.raises(WriteError, match="no right to write in"):
+        check_folder(tmp_path / "out", [])
+
+
+def test_a_full_disk_leaves_the_earlier_output(tmp_path: Path) -> None:
+    """An error of the system while writing becomes one clear line, and the earlier output stays."""
+    place = tmp_path / "out"
+    earlier_output(place)
+    with pytest.raises(WriteError, match="found no space left on device"), whole_folder(place) as built:
+        (built / "a.csv").write_text("second")
+        raise OSError(28, "No space left on device")
+    assert (place / "a.csv").read_text() == "first"
