@@ -7,7 +7,7 @@ from dataclasses import replace
 import numpy as np
 
 from basinrain.gauges import GaugeNetwork
-from basinrain.ground import colocated_groups
+from basinrain.gauges import colocated_groups
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 

@@ -30,6 +30,7 @@ __all__ = [
     "parse_crs",
     "project",
     "same_crs",
+    "title",
     "transform",
     "unit_name",
 ]
@@ -123,6 +124,23 @@ def unit_name(crs: str) -> str:
     ('metre', 'US survey foot', 'metre')
     """
     return "metre" if crs == LOCAL else str(_parsed(crs).axis_info[0].unit_name)
+
+
+def title(crs: str) -> str:
+    """Return a coordinate system as people should read it: what was given, and its name.
+
+    Examples
+    --------
+    >>> title("EPSG:5070")
+    'EPSG:5070 (NAD83 / Conus Albers)'
+    >>> title("+proj=utm +zone=13 +datum=WGS84")
+    '+proj=utm +zone=13 +datum=WGS84'
+    """
+    name = "" if crs == LOCAL else _parsed(crs).name
+    if name in {"", "unknown"}:
+        return crs
+    # WKT is too long to read, and has the name in it.
+    return f"{crs} ({name})" if len(crs) <= len("EPSG:00000000") else name
 
 
 @lru_cache(maxsize=256)

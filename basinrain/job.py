@@ -6,11 +6,11 @@ reading → screening → infill → averaging → storms → cautions; writing 
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from importlib.metadata import version
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any, TypeVar, cast
 
 import numpy as np
 import numpy.typing as npt
@@ -22,7 +22,7 @@ from basinrain.catch import correct_catch
 from basinrain.cautions import network_cautions, record_cautions, storm_cautions
 from basinrain.colocated import merge_colocated
 from basinrain.errors import BasinRainError, DataError, JobError, MethodError, Problem, Problems, ReadError
-from basinrain.gauges import GaugeNetwork
+from basinrain.gauges import GaugeNetwork, refuse_colocated
 from basinrain.infill import InfillOptions, complete
 from basinrain.jobfile import Job, read_job
 from basinrain.jobfile.tables import StormTable
@@ -79,7 +79,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
         network, record, merged = merge_colocated(network, record)
         notes += merged
     else:
-        reading.refuse_colocated(network)
+        refuse_colocated(network)
     record = correct_catch(record, _catch_factors(job, network))
     storms, window_notes = _storms(job, record)
     notes += window_notes
@@ -118,14 +118,11 @@ def _read(job: Job) -> tuple[GaugeNetwork, RainRecord, Basins, tuple[Note, ...]]
     records = [_try(problems, lambda source=source: _read_source(job, source)) for source in job.rainfall]
     basins = _try(problems, lambda: _read_basins(job))
     problems.raise_as(ReadError)
-    if network is None or basins is None or any(record is None for record in records):
-        raise AssertionError  # every reader that gives nothing has raised
-    polygons, basin_notes = basins
+    # A reader that gave nothing has left a problem, so from here on everything is there.
+    network, (polygons, basin_notes) = cast(GaugeNetwork, network), cast(tuple[Basins, tuple[Note, ...]], basins)
+    sources = cast(list[RainRecord], records)
     record, step_notes = reading.bring_to_step(
-        [record for record in records if record is not None],
-        network,
-        common=job.step.common,
-        storm_times=_storm_times(job, records[0].zone if records[0] is not None else ""),
+        sources, network, common=job.step.common, storm_times=_storm_times(job, sources[0].zone)
     )
     return network, record, polygons, (*basin_notes, *step_notes)
 
@@ -280,7 +277,7 @@ def _run_one(
     network: GaugeNetwork,
     basins: Basins,
     weighers: dict[str, Weigher],
-) -> tuple[StormResult, Iterable[Note]]:
+) -> tuple[StormResult, tuple[Note, ...]]:
     window = record.window(storm.first, storm.stop)
     if not window.reporting.any():
         raise DataError(
@@ -304,10 +301,10 @@ def _run_one(
                 remedy="add 'thiessen' or 'idw' to [averaging] methods",
             )
         )
-    notes = [
+    notes = (
         *(note if note.storm else replace(note, storm=storm.name) for note in completed.notes),
         *storm_cautions(storm.name, network, basins, list(depths.items())),
-    ]
+    )
     return StormResult(storm, completed, depths, tuple(shapes)), notes
 
 

@@ -90,8 +90,8 @@ class RainRecord:
     gauges : tuple of str
         Gauge ids, the columns.
     starts, ends : array of datetime64[s], shape (n_steps,)
-        Every interval is ``(start, end]``, in the record's clock. Ends increase and intervals do not overlap. A record of
-        storm totals without times has NaT in both.
+        Every interval is ``(start, end]``, in the record's clock. Ends increase and intervals do not overlap. A record
+        of storm totals without times has NaT in both.
     depth : array of float, shape (n_steps, n_gauges)
         mm; NaN where the status is one of :data:`WITHOUT_DEPTH`, and nowhere else.
     status : array of uint8, shape (n_steps, n_gauges)
@@ -107,12 +107,14 @@ class RainRecord:
     labels : tuple of str
         The storms' names, one a step, in a record of storm totals; else empty.
     recorders : frozenset of str
-        Gauges that record at the record's own step or finer, whose values can give a pattern in time; all when not given.
+        Gauges that record at the record's own step or finer, whose values can give a pattern in time; all when not
+        given.
 
     Raises
     ------
     DataError
-        Shapes disagree, times do not increase, a depth is negative or infinite, or depth and status contradict each other.
+        Shapes disagree, times do not increase, a depth is negative or infinite, or depth and status contradict each
+        other.
 
     Examples
     --------

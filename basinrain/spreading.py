@@ -1,9 +1,8 @@
 """Spreading depths that are known over several steps: daily readings, accumulations, storm totals.
 
-A total over an interval is given to the steps of that interval in the proportions in which the recording gauges near it caught
-their rain, its own amount kept. The pattern is the weighted mean depth of the donors, step by step; their weights are the
-inverse squared distances (common practice in disaggregating daily readings; the exponent is that of the reciprocal-distance
-method, US National Weather Service 1972).
+A total over an interval is given to the steps of that interval in the proportions in which the recording gauges near it
+caught their rain, its own amount kept. The pattern is the weighted mean depth of the donors, step by step; their
+weights are the inverse squared distances (common practice in disaggregating daily readings).
 """
 
 from __future__ import annotations
@@ -82,8 +81,8 @@ def spread_totals(
     """Return the record with ``totals`` spread over its steps in the pattern of the recording gauges.
 
     The donors of a total are the :data:`NEAREST` nearest of ``record.recorders`` that are measured at every step of its
-    interval, weighted by the inverse squared distance; equal distances go by gauge id. Where none is complete, or none of
-    them has rain, the total is spread evenly and a note says so.
+    interval, weighted by the inverse squared distance; equal distances go by gauge id. Where none is complete,
+    or none of them has rain, the total is spread evenly and a note says so.
 
     Parameters
     ----------
@@ -121,7 +120,7 @@ def spread_totals(
     for (first, stop), group in _by_interval(record, totals).items():
         targets = np.array([column[total.gauge] for total in group], dtype=np.int64)
         amounts = np.array([total.depth for total in group])
-        weights = _weights(near[targets], squared[targets], measured[first:stop].all(axis=0))
+        weights = _weights(near[targets], squared[targets], np.asarray(measured[first:stop].all(axis=0)))
         mixed = np.where(measured[first:stop], record.depth[first:stop, donors], 0.0) @ weights.T
         caught = mixed.sum(axis=0)
         even = caught == 0

@@ -245,7 +245,7 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
         table=table,
         depth=depth,
         infilled=infilled,
-        reporting_only=_reporting_only(record, weigh),
+        reporting_only=_reporting_only(record, weigh, n_basins),
         contribution=contribution,
         least=np.where(np.isinf(least), np.nan, least),
         most=np.where(np.isinf(most), np.nan, most),
@@ -254,23 +254,20 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     )
 
 
-def _reporting_only(record: RainRecord, weigh: Weigher) -> npt.NDArray[np.float64]:
-    reporting = record.reporting
-    patterns, group = np.unique(reporting, axis=0, return_inverse=True)
-    total: npt.NDArray[np.float64] | float = 0.0
+def _reporting_only(record: RainRecord, weigh: Weigher, n_basins: int) -> npt.NDArray[np.float64]:
+    patterns, group = np.unique(record.reporting, axis=0, return_inverse=True)
+    total = np.zeros(n_basins)
     for k, pattern in enumerate(patterns):
-        depth = np.where(pattern, record.depth[group == k], 0.0).sum(axis=0)
         if not pattern.any():
-            total = total + np.nan
-            continue
+            return np.full(n_basins, np.nan)
         try:
             table = weigh(pattern)
         except MethodError:
             # The gauges that happen to report do not reach the basin: this one figure has no number, the run goes on.
-            total = total + np.nan
-            continue
-        total = total + table.apply(np.where(pattern, depth, np.nan))
-    return np.asarray(total, dtype=float)
+            return np.full(n_basins, np.nan)
+        depth = np.where(pattern, record.depth[group == k], 0.0).sum(axis=0)
+        total += table.apply(np.where(pattern, depth, np.nan))
+    return total
 
 
 class _Remembered:

@@ -1,8 +1,8 @@
 """Weight tables: how much every gauge counts in every basin, whichever method made the weights.
 
-A method of areal averaging is a table of weights ``W`` (basins × gauges). Everything else follows from the table by the same
-few products: the basin mean of a step is ``W @ p``, its comparison with another method is a difference of two tables, and
-what each gauge contributed is a product that sums to the mean exactly.
+A method of areal averaging is a table of weights ``W`` (basins × gauges). Everything else follows from the table by the
+same few products: the basin mean of a step is ``W @ p``, its comparison with another method is a difference of two
+tables, and what each gauge contributed is a product that sums to the mean exactly.
 """
 
 from __future__ import annotations

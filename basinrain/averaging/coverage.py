@@ -94,11 +94,12 @@ def cell_shares(
     share = through - fall + own
     gap = np.diff(cells, append=cells[-1:]) - 1
     last = np.append(line[1:] != line[:-1], True)
-    gap[last | (through < 0.5)] = 0
-    # Cells between two boundary cells of a row are wholly inside, or outside and not listed.
+    gap[last | (through < _ROUNDING)] = 0
+    # Cells between two boundary cells of a row are outside and not listed, or inside over the same breadth: a side of
+    # the polygon that runs along the row cuts them all alike.
     filled = np.repeat(cells, gap) + 1 + np.arange(gap.sum()) - np.repeat(np.cumsum(gap) - gap, gap)
     cells = np.concatenate((cells, filled))
-    share = np.concatenate((share, np.ones(len(filled))))
+    share = np.concatenate((share, np.repeat(through, gap)))
     order = np.argsort(cells, kind="stable")
     cells, share = cells[order], share[order]
     polygon = cells // (n_rows * n_columns)

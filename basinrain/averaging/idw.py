@@ -180,7 +180,15 @@ def prepare_idw(
     surface = _surface(power, max_gauges, radius)
     require_one_plane(network, basins)
     if grid is None:
-        grid = choose_grid(network, basins, power=power, cell=cell, max_gauges=max_gauges, radius=radius)
+        grid = choose_grid(
+            network,
+            basins,
+            power=power,
+            cell=cell,
+            max_gauges=max_gauges,
+            radius=radius,
+            allow_uncovered=allow_uncovered,
+        )
     elif grid.basins != basins.ids or cell is not None:
         found = "a grid and a cell" if cell is not None else f"a grid of basins {', '.join(grid.basins)}"
         expected = "one of them" if cell is not None else f"a grid of basins {', '.join(basins.ids)}"
@@ -193,7 +201,7 @@ def prepare_idw(
         mask = presence(network, present)
         weights, covered = _basin_weights(network, mask, laid, surface)
         notes = [Note(code="idw-grid", text=laid.sentence, level="info", method="idw")]
-        if mask.any():
+        if radius is not None and mask.any():
             notes += _coverage(basins, covered, radius, allowed=allow_uncovered)
         return WeightTable("idw", basins.ids, network.ids, weights, covered=covered, notes=tuple(notes))
 
@@ -208,19 +216,20 @@ def choose_grid(
     cell: float | None = None,
     max_gauges: int | None = None,
     radius: float | None = None,
+    allow_uncovered: bool = False,
 ) -> Grid:
     """Return the grid of a run, its cell size chosen by halving unless it is given.
 
-    The cell chosen is the largest of the series 1, 2, 5 x 10^k, no longer than the basins' common box, for which going to
-    half of it changes the weights of every basin of at least 1 % of the median basin's area by at most 0.001, with all
-    gauges of the network present. The change is half the sum of absolute changes: the weight that moves from some gauges
-    to others.
+    The cell chosen is the largest of the series 1, 2, 5 x 10^k, no longer than the basins' common box, for which going
+    to half of it changes the weights of every basin of at least 1 % of the median basin's area by at most 0.001, with
+    all gauges of the network present. The change is half the sum of absolute changes: the weight that moves from some
+    gauges to others.
 
     Parameters
     ----------
     network, basins
         In one plane.
-    power, max_gauges, radius
+    power, max_gauges, radius, allow_uncovered
         As in :func:`idw_weights`.
     cell
         Side of a cell, m: lay this one, and measure what halving it changes (left out where the halved grid would have
@@ -231,7 +240,7 @@ def choose_grid(
     JobError
         An option is out of range.
     MethodError
-        Over 2,000,000 cells would be needed.
+        Over 2,000,000 cells would be needed, or a basin is not wholly covered though every gauge reports.
 
     Examples
     --------
@@ -244,22 +253,31 @@ def choose_grid(
     surface = _surface(power, max_gauges, radius)
     require_one_plane(network, basins)
     everyone = np.ones(len(network), dtype=bool)
-    known: dict[float, npt.NDArray[np.float64]] = {}
+    known: dict[float, tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]] = {}
+
+    def weights(grid: Grid) -> npt.NDArray[np.float64]:
+        if grid.cell not in known:
+            known[grid.cell] = _basin_weights(network, everyone, grid, surface)
+        return known[grid.cell][0]
 
     def measured(grid: Grid) -> Grid:
-        for size, laid in ((grid.cell, grid), (grid.cell / 2, None)):
-            if size not in known:
-                known[size] = _basin_weights(network, everyone, laid or grids.lay(basins, size), surface)[0]
-        return replace(grid, halving_change=_change(known[grid.cell], known[grid.cell / 2]))
+        half = grid.cell / 2
+        halved = known[half][0] if half in known else weights(grids.lay(basins, half))
+        return replace(grid, halving_change=_change(weights(grid), halved))
 
     if cell is not None:
         grid = make_grid(basins, cell)
-        return measured(grid) if 4 * grid.n_cells <= grids.MOST_CELLS else grid
-    west, south, east, north = basins.bounds
-    for size in _series(max(east - west, north - south)):
-        grid = measured(grids.lay_within_limit(basins, size, remedy="choose the size yourself: give cell"))
-        if grid.settled:
-            break
+        if 4 * grid.n_cells <= grids.MOST_CELLS:
+            grid = measured(grid)
+        weights(grid)
+    else:
+        west, south, east, north = basins.bounds
+        for size in _series(max(east - west, north - south)):
+            grid = measured(grids.lay_within_limit(basins, size, remedy="choose the size yourself: give cell"))
+            if grid.settled:
+                break
+    if radius is not None and len(network):
+        _coverage(basins, known[grid.cell][1], radius, allowed=allow_uncovered)
     return grid
 
 
@@ -301,7 +319,7 @@ def _basin_weights(
     return weights, covered
 
 
-def _coverage(basins: Basins, covered: npt.NDArray[np.float64], radius: float | None, *, allowed: bool) -> list[Note]:
+def _coverage(basins: Basins, covered: npt.NDArray[np.float64], radius: float, *, allowed: bool) -> list[Note]:
     """Return a note for every basin that is covered in part, or refuse them all together."""
     notes, problems = [], Problems()
     for k in np.flatnonzero(covered < 1 - _TIE):

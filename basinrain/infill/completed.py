@@ -70,6 +70,7 @@ class Completed:
 
     Examples
     --------
+    >>> from basinrain.rainfall import Status
     >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
     >>> record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[4.0, 2.0], [6.0, 3.0]], step="1h")
     >>> status = record.status.copy()
@@ -132,6 +133,7 @@ class Completed:
         --------
         B's storm total of 5 mm is half of A's and was spread evenly. Of its first hour, too, all comes from A.
 
+        >>> from basinrain.rainfall import Status
         >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
         >>> status = np.array([[Status.ZERO, Status.INFILLED], [Status.OBSERVED, Status.INFILLED]], dtype=np.uint8)
         >>> depth = np.array([[0.0, 2.5], [10.0, 2.5]])

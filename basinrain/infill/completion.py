@@ -85,7 +85,7 @@ def complete(record: RainRecord, network: GaugeNetwork, options: InfillOptions, 
     long = longer_than(record, gaps, options.longest_gap)
     window = Window(record, network, options, _scale(record, options, daily=daily), gaps & ~long)
     if window.fillable.any() and options.chosen_method.needs_normals:
-        taking_part = record.reporting.any(axis=0) | window.fillable.any(axis=0)
+        taking_part = np.asarray(record.reporting.any(axis=0) | window.fillable.any(axis=0))
         require_normals(network, taking_part, [month or None for month in _months(window)])
     depth, status = record.depth.copy(), record.status.copy()
     estimates: list[Estimate] = []

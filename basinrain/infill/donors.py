@@ -108,6 +108,15 @@ def choose_donors(
 
 
 def distances_from(network: GaugeNetwork, target: int) -> npt.NDArray[np.float64]:
-    """Return the distances in m from one gauge to all, shape (n_gauges,); geodesic unless the network is local."""
+    """Return the distances in m from one gauge to all, shape (n_gauges,); geodesic unless the network is local.
+
+    Examples
+    --------
+    >>> distances_from(GaugeNetwork(ids=("A", "B"), x=[0.0, 3e3], y=[0.0, 4e3], crs="local"), 0)
+    array([   0., 5000.])
+    """
     here = slice(target, target + 1)
-    return ground.distances(network.x[here], network.y[here], network.x, network.y, network.crs)[0]
+    row: npt.NDArray[np.float64] = ground.distances(
+        network.x[here], network.y[here], network.x, network.y, network.crs
+    )[0]
+    return row

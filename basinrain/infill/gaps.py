@@ -97,7 +97,8 @@ next to it; what was infilled there may miss the peak.
         Note(
             code="gap-over-peak",
             text=f"Gauge {record.gauges[g]} has no value of its own at the wettest step of the window "
-            f"({greatest:.1f} mm on average, ending {_minute(peak)}) or next to it; what was infilled there may miss the peak.",
+            f"({greatest:.1f} mm on average, ending {_minute(peak)}) or next to it; "
+            "what was infilled there may miss the peak.",
             gauge=record.gauges[g],
         )
         for g in np.flatnonzero(gaps[near].any(axis=0))

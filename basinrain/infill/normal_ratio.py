@@ -58,11 +58,11 @@ def normal_ratio_weights(
     donors = choose_donors(
         network, target, reporting, nearest=nearest, radius=radius, min_donors=min_donors, distances=distances
     )
-    needed = donors.reshape(-1, len(network)).any(axis=0)
+    needed = np.asarray(donors.reshape(-1, len(network)).any(axis=0))
     if not needed.any():
         return np.zeros(donors.shape)
     needed[target] = True
     require_normals(network, needed, [month])
     normals = normals_of(network, month)
     ratio = np.where(needed, normals[target] / np.where(needed, normals, 1.0), 0.0)
-    return np.where(donors, ratio, 0.0) / np.maximum(donors.sum(axis=-1, keepdims=True), 1)
+    return np.asarray(np.where(donors, ratio, 0.0) / np.maximum(donors.sum(axis=-1, keepdims=True), 1), dtype=float)

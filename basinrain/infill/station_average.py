@@ -48,4 +48,4 @@ def station_average_weights(
     donors = choose_donors(
         network, target, reporting, nearest=nearest, radius=radius, min_donors=min_donors, distances=distances
     )
-    return donors / np.maximum(donors.sum(axis=-1, keepdims=True), 1)
+    return np.asarray(donors / np.maximum(donors.sum(axis=-1, keepdims=True), 1), dtype=float)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from functools import cached_property
 
 import numpy as np
 import numpy.typing as npt
@@ -21,46 +22,105 @@ Bools = npt.NDArray[np.bool_]
 
 @dataclass(frozen=True, eq=False)
 class Window:
-    """What all gauges of a window share, computed once."""
+    """A window of the record with what all its gauges share, each thing computed once.
+
+    Parameters
+    ----------
+    record, network, options
+        As for :func:`basinrain.infill.complete`.
+    scale : str
+        The scale that is used: ``"step"``, ``"day"`` or ``"storm"``.
+    fillable : array of bool, shape (n_steps, n_gauges)
+        The gaps that may be infilled.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 1e3], y=[0.0, 0.0], crs="local")
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[1.0, np.nan], [2.0, 0.5]], step="1h")
+    >>> window = Window(record, network, InfillOptions(), "storm", np.isnan(record.depth))
+    >>> window.own
+    array([[1. , 0. ],
+           [2. , 0.5]])
+    >>> window.spans_of(1).totals, window.spans_of(1).reporting
+    (array([[3. , 0.5]]), array([[ True, False]]))
+    """
 
     record: RainRecord
     network: GaugeNetwork
     options: InfillOptions
     scale: str
     fillable: Bools
-    distances: Floats = field(init=False)
-    own: Floats = field(init=False)
-    measured: Bools = field(init=False)
-    reporting: Bools = field(init=False)
-    recorders: Bools = field(init=False)
-    months: Ints = field(init=False)
-    bounds: Ints = field(init=False)
-    spans: dict[bytes, Spans] = field(init=False, default_factory=dict)
+    _spans: dict[bytes, Spans] = field(init=False, repr=False, default_factory=dict)
 
-    def __post_init__(self) -> None:
-        put, record = object.__setattr__, self.record
-        put(self, "distances", self.network.distances() if self.fillable.any() else np.empty((0, 0)))
-        put(self, "measured", record.measured)
-        put(self, "reporting", record.reporting)
-        put(self, "own", np.where(self.reporting, record.depth, 0.0))
-        put(self, "recorders", np.array([gauge in record.recorders for gauge in record.gauges], dtype=bool))
-        put(self, "months", month_of(record.starts, record.ends))
-        put(self, "bounds", span_starts(record, self.scale))
+    @cached_property
+    def distances(self) -> Floats:
+        """Distances between the gauges in m, shape (n_gauges, n_gauges)."""
+        return self.network.distances()
+
+    @cached_property
+    def measured(self) -> Bools:
+        """Where a value was measured at the step, shape (n_steps, n_gauges)."""
+        return self.record.measured
+
+    @cached_property
+    def reporting(self) -> Bools:
+        """Where a value is the gauge's own, shape (n_steps, n_gauges)."""
+        return self.record.reporting
+
+    @cached_property
+    def own(self) -> Floats:
+        """The gauges' own depths in mm, 0 where there is none, shape (n_steps, n_gauges)."""
+        return np.where(self.reporting, self.record.depth, 0.0)
+
+    @cached_property
+    def recorders(self) -> Bools:
+        """Whether a gauge records at the step or finer, shape (n_gauges,)."""
+        return np.array([gauge in self.record.recorders for gauge in self.record.gauges], dtype=bool)
+
+    @cached_property
+    def months(self) -> Ints:
+        """The month of every step, 0 without times, shape (n_steps,)."""
+        return month_of(self.record.starts, self.record.ends)
+
+    @cached_property
+    def _bounds(self) -> Ints:
+        return span_starts(self.record, self.scale)
 
     def spans_of(self, g: int) -> Spans:
-        """Return the spans as they are for one gauge: cut where it comes into service or leaves it."""
+        """Return the spans as they are for gauge ``g``: cut where it comes into service or leaves it."""
         absent = self.record.status[:, g] == Status.NOT_INSTALLED
         cuts = np.flatnonzero(np.diff(absent)) + 1
-        first = np.union1d(self.bounds, cuts) if len(cuts) else self.bounds
+        first = np.union1d(self._bounds, cuts) if len(cuts) else self._bounds
         key = first.tobytes()
-        if key not in self.spans:
-            self.spans[key] = Spans.of(self, first)
-        return self.spans[key]
+        if key not in self._spans:
+            stop = np.append(first[1:], len(self.record))
+            self._spans[key] = Spans(
+                first=first,
+                stop=stop,
+                months=month_of(self.record.starts[first], self.record.ends[stop - 1]),
+                totals=np.add.reduceat(self.own, first, axis=0),
+                reporting=np.logical_and.reduceat(self.reporting, first, axis=0),
+                measured=np.logical_and.reduceat(self.measured, first, axis=0),
+            )
+        return self._spans[key]
 
 
-@dataclass(frozen=True, eq=False)
+@dataclass(frozen=True, kw_only=True, eq=False)
 class Spans:
-    """Spans of steps, with what every gauge has over them; arrays are (n_spans, n_gauges) or (n_spans,)."""
+    """Spans of steps, which together are all steps of the window, and what every gauge has over them.
+
+    Parameters
+    ----------
+    first, stop : array of int, shape (n_spans,)
+        The steps of each span, ``first`` included, ``stop`` not.
+    months : array of int, shape (n_spans,)
+        The month that holds the middle, 0 without times.
+    totals : array of float, shape (n_spans, n_gauges)
+        mm of the gauges' own values.
+    reporting, measured : array of bool, shape (n_spans, n_gauges)
+        Whether the gauge has its own, or measured, values at every step.
+    """
 
     first: Ints
     stop: Ints
@@ -68,16 +128,3 @@ class Spans:
     totals: Floats
     reporting: Bools
     measured: Bools
-
-    @classmethod
-    def of(cls, window: Window, first: Ints) -> Spans:
-        record = window.record
-        stop = np.append(first[1:], len(record))
-        return cls(
-            first,
-            stop,
-            month_of(record.starts[first], record.ends[stop - 1]),
-            np.add.reduceat(window.own, first, axis=0),
-            np.logical_and.reduceat(window.reporting, first, axis=0),
-            np.logical_and.reduceat(window.measured, first, axis=0),
-        )

@@ -47,19 +47,19 @@ def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
     try:
         content = tomllib.loads(text.replace("\r\n", "\n"))
     except tomllib.TOMLDecodeError as error:
-        message = str(error)
-        match = re.search(r"\(at line (\d+)", message)
-        raise ReadError(
-            Problem(
-                item="job file",
-                found=message.split(" (at ")[0].lower(),
-                expected="TOML",
-                remedy="correct the line",
-                file=str(path),
-                line=int(match.group(1)) if match else None,
-            )
-        ) from None
+        raise ReadError(_not_toml(str(error), text, str(path))) from None
     return parse_job(content, folder=place.resolve().parent, settings=settings, file=str(path), text=text)
+
+
+def _not_toml(message: str, text: str, file: str) -> Problem:
+    match = re.search(r"\(at line (\d+)", message)
+    line = int(match.group(1)) if match else None
+    written = text.splitlines()[line - 1].strip() if line is not None else ""
+    remedy = "correct the line"
+    if re.search(r"=\s*\d{4}-\d\d-\d\d[T ]\d\d:\d\d\b(?!:)", written):
+        remedy = "a time in TOML has seconds: write 2031-05-03T18:00:00, or put it in quotes"
+    found = f"'{written}': {message.split(' (at ')[0].lower()}" if written else message.lower()
+    return Problem(item="job file", found=found, expected="TOML", remedy=remedy, file=file, line=line)
 
 
 def _os_words(error: OSError) -> str:

@@ -1,1 +1,9 @@
-""""""
+"""Files to the three values that everything is computed from: gauges, rain record, basins."""
+
+from basinrain.reading.basins import read_basins
+from basinrain.reading.gauges import read_gauges
+from basinrain.reading.rainfall import read_rainfall
+from basinrain.reading.settle import settle
+from basinrain.reading.step import bring_to_step
+
+__all__ = ["bring_to_step", "read_basins", "read_gauges", "read_rainfall", "settle"]

@@ -53,9 +53,9 @@ def join_blocks(
     times = np.unique(np.concatenate(steps))
     gauges = tuple(dict.fromkeys(gauge for block in blocks for gauge in block.gauges))
     column = {gauge: g for g, gauge in enumerate(gauges)}
-    depth, status, present = _joined(blocks, steps, times, gauges, column, interval, problems)
+    depth, status, present = _joined(blocks, steps, times, column, interval=interval, problems=problems)
     if gaps == "refuse":
-        _check_gaps(times, present, gauges, blocks, steps, interval, problems)
+        _check_gaps(times, present, gauges, blocks=blocks, interval=interval, problems=problems)
     n = int(times[-1] - times[0]) // _unit(interval) + 1
     if n > _MOST_STEPS:
         problems.add(
@@ -74,7 +74,7 @@ def join_blocks(
     ends = _end(axis, interval)
     starts = _end(axis - _unit(interval), interval)
     spans = {key: span for block in blocks for key, span in block.spans.items()}
-    totals = _accumulations(depth, status, starts, ends, gauges, spans, problems, file=_files(blocks))
+    totals = _accumulations(depth, status, starts, ends, gauges, spans=spans, problems=problems, file=_files(blocks))
     problems.raise_as(ReadError)
     return RainRecord(
         gauges,
@@ -133,8 +133,8 @@ def _joined(
     blocks: Sequence[Block],
     steps: Sequence[npt.NDArray[np.int64]],
     times: npt.NDArray[np.int64],
-    gauges: tuple[str, ...],
     column: dict[str, int],
+    *,
     interval: Interval,
     problems: Problems,
 ) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8], npt.NDArray[np.bool_] | None]:
@@ -142,12 +142,12 @@ def _joined(
     if len(blocks) == 1:
         only = blocks[0]
         return only.depth, only.status, only.present
-    shape = (len(times), len(gauges))
+    shape = (len(times), len(column))
     depth, status = np.full(shape, np.nan), np.full(shape, Status.MISSING, dtype=np.uint8)
     present = np.zeros(shape, dtype=bool)
     owner = np.zeros(shape, dtype=np.int16)
     for number, (block, mine) in enumerate(zip(blocks, steps, strict=True)):
-        at = np.ix_(np.searchsorted(times, mine), [column[gauge] for gauge in block.gauges])
+        at = np.ix_(np.searchsorted(times, mine), np.array([column[gauge] for gauge in block.gauges]))
         here = np.ones(block.depth.shape, dtype=bool) if block.present is None else block.present
         for row, g in np.argwhere(present[at] & here):
             gauge, end = block.gauges[g], block.ends[row]
@@ -173,8 +173,8 @@ def _check_gaps(
     times: npt.NDArray[np.int64],
     present: npt.NDArray[np.bool_] | None,
     gauges: tuple[str, ...],
+    *,
     blocks: Sequence[Block],
-    steps: Sequence[npt.NDArray[np.int64]],
     interval: Interval,
     problems: Problems,
 ) -> None:
@@ -187,13 +187,13 @@ def _check_gaps(
         before = before[((first <= before[:, None]) & (last > before[:, None])).any(axis=1)]
     if len(before):
         absent = [
-            times[k] + unit * j
+            int(times[k]) + unit * j
             for k in before[:_LISTED]
             for j in range(1, 1 + _LISTED)
             if times[k] + unit * j < times[k + 1]
         ]
         count = int((np.diff(times)[before] // unit - 1).sum())
-        lines = dict(zip(steps[0].tolist(), blocks[0].lines.tolist(), strict=True)) if len(blocks) == 1 else {}
+        lines = dict(zip(times.tolist(), blocks[0].lines.tolist(), strict=True)) if len(blocks) == 1 else {}
         problems.add(
             item="time axis",
             found=_absent(np.array(absent), count, interval),
@@ -231,9 +231,9 @@ def _accumulations(
     starts: npt.NDArray[np.datetime64],
     ends: npt.NDArray[np.datetime64],
     gauges: tuple[str, ...],
+    *,
     spans: dict[tuple[str, np.datetime64], int],
     problems: Problems,
-    *,
     file: str,
 ) -> tuple[KnownTotal, ...]:
     """Turn accumulated values, in place, into totals over their steps."""

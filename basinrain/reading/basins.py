@@ -36,6 +36,9 @@ def read_basins(
     length_unit: str = "m",
     area: str | None = None,
     area_unit: str = "km2",
+    lowest: str | None = None,
+    highest: str | None = None,
+    elevation_unit: str = "m",
 ) -> tuple[Basins, tuple[Note, ...]]:
     """Read basins from a vector file.
 
@@ -55,6 +58,8 @@ def read_basins(
         Unit of local coordinates.
     area, area_unit
         The column of official areas, and its unit. Merged polygons keep an area on which all agree, else have the sum.
+    lowest, highest, elevation_unit
+        The columns of each basin's lowest and highest ground, and their unit.
 
     Returns
     -------
@@ -68,14 +73,14 @@ def read_basins(
     ReadError
         With all problems of the file: no coordinate system or one that the coordinates do not fit, no such column, ids
         blank, repeated or ``"union"``, geometries missing, empty, without area or not polygons, polygons that a repair
-        would change by 0.01 % of their area or more, official areas that are no numbers.
+        would change by 0.01 % of their area or more, official areas or elevations that are no numbers.
     JobError
         ``repeated``, ``crs`` or a unit is not known.
 
     Notes
     -----
-    A polygon is repaired only when three measures of its area agree: the one by the shoelace formula of its rings, which
-    counts the lobes of a figure-eight against each other, and those of two repairs that rest on different rules
+    A polygon is repaired only when three measures of its area agree: the one by the shoelace formula of its rings,
+    which counts the lobes of a figure-eight against each other, and those of two repairs that rest on different rules
     (what the rings enclose; what an odd number of their lines encloses).
 
     Examples
@@ -99,14 +104,16 @@ def read_basins(
                 remedy=nearest_name(repeated, _REPEATED),
             )
         )
-    length, area_in_m2 = length_factor(length_unit), area_factor(area_unit)
+    length, area_in_m2, height = length_factor(length_unit), area_factor(area_unit), length_factor(elevation_unit)
     table = read_vector(path, layer=layer)
     cells = table.cells
     problems = Problems(file=cells.file)
     used_crs = settled_crs(table, crs, problems)
     ids = _ids(cells, id, problems)
     names = [f"feature {number}" + (f", basin {basin}" if id else "") for number, basin in enumerate(ids, 1)]
-    official = _official(cells, area, names, problems) * area_in_m2
+    official = _column_values(cells, area, "area", names, problems) * area_in_m2
+    low = _column_values(cells, lowest, "lowest", names, problems) * height
+    high = _column_values(cells, highest, "highest", names, problems) * height
 
     polygons = _polygons(table, names, problems)
     if used_crs == ground.LOCAL:
@@ -118,8 +125,15 @@ def read_basins(
         _check_repeated(ids, repeated, problems)
     problems.raise_as(ReadError)
     if len(set(ids)) < len(ids):
-        ids, polygons, official = _merged(ids, polygons, official)
-    return Basins(ids=tuple(ids), polygons=polygons, crs=used_crs, official_areas=official), tuple(notes)
+        ids, polygons, official, low, high = _merged(ids, polygons, official, low, high)
+    basins = Basins(
+        ids=tuple(ids),
+        polygons=polygons,
+        crs=used_crs,
+        official_areas=official,
+        elevations=np.column_stack([low, high]),
+    )
+    return basins, tuple(notes)
 
 
 def _column(cells: DelimitedTable, name: str, key: str, problems: Problems) -> str | None:
@@ -133,9 +147,7 @@ def _ids(cells: DelimitedTable, column: str | None, problems: Problems) -> list[
     ids = [str(basin) for basin in cells.frame[named]]
     for number, basin in enumerate(ids, 1):
         if not basin:
-            problems.add(
-                item=f"feature {number}", found="a blank id", expected="an id for every basin", column=named
-            )
+            problems.add(item=f"feature {number}", found="a blank id", expected="an id for every basin", column=named)
         elif basin == UNION:
             problems.add(
                 item=f"feature {number}",
@@ -164,18 +176,20 @@ def _check_repeated(ids: Sequence[str], repeated: str, problems: Problems) -> No
             )
 
 
-def _official(
-    cells: DelimitedTable, column: str | None, names: Sequence[str], problems: Problems
+def _column_values(
+    cells: DelimitedTable, column: str | None, key: str, names: Sequence[str], problems: Problems
 ) -> npt.NDArray[np.float64]:
-    """Return the official areas as the file has them; NaN where it has none."""
-    if column is None or (named := _column(cells, column, "area", problems)) is None:
+    """Return a column of areas or elevations as the file has them; NaN where it has none."""
+    if column is None or (named := _column(cells, column, key, problems)) is None:
         return np.full(len(names), np.nan)
     values, bad = numbers(cells, named)
-    for place in np.flatnonzero(bad | (values <= 0)):
+    if key == "area":
+        bad = bad | (values <= 0)
+    for place in np.flatnonzero(bad).tolist():
         problems.add(
             item=names[place],
             found=f"'{cells.frame[named].iloc[place]}'",
-            expected="an area above 0, or none",
+            expected="an area above 0, or none" if key == "area" else "an elevation, or none",
             column=named,
         )
     return values
@@ -254,10 +268,12 @@ def _repair(
     """Repair in place what can be repaired without a change; polygons that are None are passed over."""
     notes: list[Note] = []
     present = np.asarray([polygon is not None for polygon in polygons])
-    for place in np.flatnonzero(present & ~shapely.is_valid(polygons)):
+    for place in np.flatnonzero(present & ~shapely.is_valid(polygons)).tolist():
         polygon = polygons[place]
         reason = re.sub(
-            r"\[(\S+) (\S+)\]", lambda at: f" at ({float(at[1]):.10g}, {float(at[2]):.10g})", shapely.is_valid_reason(polygon)
+            r"\[(\S+) (\S+)\]",
+            lambda at: f" at ({float(at[1]):.10g}, {float(at[2]):.10g})",
+            shapely.is_valid_reason(polygon),
         ).lower()
         repaired = shapely.make_valid(polygon, method="structure", keep_collapsed=False)
         by_lines = shapely.make_valid(polygon, method="linework")
@@ -265,13 +281,13 @@ def _repair(
         if repaired.geom_type in ("Polygon", "MultiPolygon") and change < _REPAIR_CHANGE * polygon.area:
             polygons[place] = repaired
             percent = 100 * change / polygon.area
+            by = "less than 0.0001" if percent < 1e-4 else f"{percent:.4f}"
             notes.append(
                 Note(
                     code="basin-repaired",
                     level="info",
                     basin=ids[place],
-                    text=f"Basin {ids[place]} ({names[place].partition(',')[0]}) was repaired: {reason}; its area changed "
-                    f"by {'less than 0.0001' if percent < 1e-4 else f'{percent:.4f}'} %.",
+                    text=f"Basin {ids[place]} was repaired: {reason}; its area changed by {by} %.",
                 )
             )
         else:
@@ -296,16 +312,27 @@ def _repair(
 
 
 def _merged(
-    ids: Sequence[str], polygons: npt.NDArray[np.object_], official: npt.NDArray[np.float64]
-) -> tuple[list[str], npt.NDArray[np.object_], npt.NDArray[np.float64]]:
+    ids: Sequence[str],
+    polygons: npt.NDArray[np.object_],
+    official: npt.NDArray[np.float64],
+    low: npt.NDArray[np.float64],
+    high: npt.NDArray[np.float64],
+) -> tuple[
+    list[str],
+    npt.NDArray[np.object_],
+    npt.NDArray[np.float64],
+    npt.NDArray[np.float64],
+    npt.NDArray[np.float64],
+]:
     """Return one basin an id, in the order in which the ids first stand."""
     places: dict[str, list[int]] = {}
     for place, basin in enumerate(ids):
         places.setdefault(basin, []).append(place)
     merged = np.empty(len(places), dtype=object)
-    areas = np.empty(len(places))
+    areas, lowest, highest = np.empty((3, len(places)))
     for row, where in enumerate(places.values()):
         merged[row] = shapely.union_all(polygons[where])
         values = official[where]
         areas[row] = values[0] if (values == values[0]).all() else values.sum()
-    return list(places), merged, areas
+        lowest[row], highest[row] = low[where].min(), high[where].max()
+    return list(places), merged, areas, lowest, highest

@@ -24,14 +24,15 @@ __all__ = [
 ]
 
 TIME_NAMES: Final = (
-    "time", "datetime", "date_time", "timestamp", "date", "day", "month", "time_utc", "datetime_utc", "time_local", "end",
-    "interval_end", "valid_time",
+    "time", "datetime", "date_time", "timestamp", "date", "day", "month", "time_utc", "datetime_utc", "time_local",
+    "end", "interval_end", "valid_time",
 )  # fmt: skip
 """Names under which a column of times is found, after a declared one; lower case, words joined by an underscore."""
 
 GAUGE_NAMES: Final = ("gauge", "gauge_id", "gage", "gage_id", "station", "station_id", "site", "site_id", "id")
 DEPTH_NAMES: Final = (
-    "depth", "rain", "rainfall", "rain_mm", "rainfall_mm", "precipitation", "precip", "prcp", "amount", "value", "total",
+    "depth", "rain", "rainfall", "rain_mm", "rainfall_mm", "precipitation", "precip", "prcp", "amount", "value",
+    "total",
 )  # fmt: skip
 FLAG_NAMES: Final = ("flag", "flags", "quality", "qualifier", "mark", "quality_flag")
 STEPS_NAMES: Final = ("steps", "n_steps", "accumulated_steps")

@@ -1,7 +1,7 @@
 """Time stamps of rainfall files, and the fixed-offset clock in which a record keeps them.
 
-Every interval is ``(start, end]``. A stamp with a time of day ends its interval, unless the source says that it starts it; a bare
-date or month names that day or month. Stamps are ISO 8601, or of a declared format.
+Every interval is ``(start, end]``. A stamp with a time of day ends its interval, unless the source says that it starts
+it; a bare date or month names that day or month. Stamps are ISO 8601, or of a declared format.
 """
 
 from __future__ import annotations
@@ -163,9 +163,9 @@ def read_stamps(texts: Sequence[str], rules: StampRules, *, zone: str | None = N
     Returns
     -------
     Stamps
-        The clock is the declared zone's; an IANA zone's is its standard time, into which local stamps are converted, bare
-        dates and reading hours being taken as standard time. Without a declared zone it is the first stamp's own offset,
-        else ``""``.
+        The clock is the declared zone's; an IANA zone's is its standard time, into which local stamps are converted,
+        bare dates and reading hours being taken as standard time. Without a declared zone it is the first stamp's own
+        offset, else ``""``.
 
     Raises
     ------
@@ -306,7 +306,7 @@ def _to_clock(
     local[aware] += (ahead - parsed.offset[aware]).astype("timedelta64[s]")
     naive = (parsed.kind == _FULL) & ~aware
     if isinstance(declared, zoneinfo.ZoneInfo) and naive.any():
-        local[naive] = _from_legal_time(local, np.flatnonzero(naive), declared, ahead, cells, faults)
+        local[naive] = _from_legal_time(local, np.flatnonzero(naive), declared, ahead=ahead, cells=cells, faults=faults)
     return local, clock
 
 
@@ -323,14 +323,17 @@ def _from_legal_time(
     times: npt.NDArray[np.datetime64],
     rows: npt.NDArray[np.int64],
     zone: zoneinfo.ZoneInfo,
+    *,
     ahead: int,
     cells: list[str],
     faults: list[StampFault],
 ) -> npt.NDArray[np.datetime64]:
     legal = pd.DatetimeIndex(times[rows])
-    twice = legal.tz_localize(zone, ambiguous="NaT", nonexistent="shift_forward").isna()
-    never = legal.tz_localize(zone, ambiguous=np.zeros(len(rows), dtype=bool), nonexistent="NaT").isna()
-    for place in np.flatnonzero(twice | never):
+    shown = legal.tz_localize(zone, ambiguous="NaT", nonexistent="shift_forward")
+    twice = np.isnat(shown.tz_convert(None).to_numpy())
+    known = legal.tz_localize(zone, ambiguous="NaT", nonexistent="NaT").tz_convert(None)
+    utc: npt.NDArray[np.datetime64] = known.to_numpy(dtype="datetime64[s]")
+    for place in np.flatnonzero(np.isnat(utc)):
         how = f"which the clocks of {zone.key} {'show twice' if twice[place] else 'skip'}"
         faults.append(
             StampFault(
@@ -340,8 +343,7 @@ def _from_legal_time(
                 f"give the stamps in standard time, with timezone = '{clock_name(ahead)}'",
             )
         )
-    known = legal.tz_localize(zone, ambiguous="NaT", nonexistent="NaT").tz_convert(None)
-    return known.to_numpy(dtype="datetime64[s]") + np.timedelta64(ahead, "s")
+    return np.asarray(utc + np.timedelta64(ahead, "s"))
 
 
 def _interval_ends(

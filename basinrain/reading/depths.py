@@ -176,11 +176,11 @@ def _number(text: str) -> float:
 def _implausible(interval: Interval | None) -> float:
     """Return a depth that has hardly ever fallen in so short a time.
 
-    491 mm times the square root-like power 0.452 of the hours follows the world's record rainfalls (WMO-No. 1045, from
+    491 mm times the hours to the power 0.452 is the envelope of the world's record rainfalls (WMO-No. 1045, from
     memory); up to a day, 999 mm is already beyond nearly every gauge. A storm total is held against a month.
     """
     if interval is None or interval.seconds is None:
-        return 491.0 * (30 * 24) ** 0.452
+        return float(491.0 * (30 * 24) ** 0.452)
     envelope = float(491.0 * (interval.seconds / 3600) ** 0.452)
     return min(envelope, 999.0) if interval.seconds <= DAY else envelope
 

@@ -68,7 +68,7 @@ class _Rows:
     def add(self, row: int, *, column: str, found: str, expected: str, remedy: str = "") -> None:
         gauge, number = self.ids[row], int(self.table.lines[row])
         self.problems.add(
-            item=(f"feature {number}: " if self.vector else "") + f"gauge {gauge}",
+            item=(f"feature {number}: " if self.vector else "") + (f"gauge {gauge}" if gauge else "a gauge"),
             found=found,
             expected=expected,
             remedy=remedy,

@@ -64,8 +64,8 @@ def parse_interval(text: str, *, item: str = "interval") -> Interval:
     >>> parse_interval("hourly")
     Traceback (most recent call last):
         ...
-    basinrain.errors.JobError: interval: found 'hourly'; expected a number with min, h or d, or 1mo: 1min, 5min, 15min, \
-1h, 6h, 12h, 1d, 1mo
+    basinrain.errors.JobError: interval: found 'hourly'; expected a number with min, h or d, or 1mo: 1min, 5min, \
+15min, 1h, 6h, 12h, 1d, 1mo
     """
     match = _WORD.fullmatch(text.strip())
     if match:

@@ -32,8 +32,8 @@ def read_long(
 ) -> tuple[Block | None, str | None]:
     """Read a table with the columns gauge, time and depth, and optionally flag and steps.
 
-    Rows may stand in any order. ``steps`` is the number of steps over which a value accumulates, itself included; the steps
-    before it need no rows of their own.
+    Rows may stand in any order. ``steps`` is the number of steps over which a value accumulates, itself included; the
+    steps before it need no rows of their own.
 
     Parameters
     ----------
@@ -86,7 +86,8 @@ def read_long(
     # Two texts may name one time: 08:00 and 08:00:00.
     axis, place = np.unique(ends, return_inverse=True)
     rows = place[time_codes]
-    _check_twice(rows * len(gauges) + gauge_codes, texts, time_codes, gauges, gauge_codes, table, problems)
+    key = rows * len(gauges) + gauge_codes
+    _check_twice(key, texts, time_codes, gauges=gauges, gauge_codes=gauge_codes, table=table, problems=problems)
     if len(problems) > before:
         return None, zone
     spans = {
@@ -178,6 +179,7 @@ def _check_twice(
     key: npt.NDArray[np.int64],
     texts: list[str],
     time_codes: npt.NDArray[np.int64],
+    *,
     gauges: tuple[str, ...],
     gauge_codes: npt.NDArray[np.int64],
     table: DelimitedTable,

@@ -54,15 +54,15 @@ def read_rainfall(
     time_format: str | None = None,
     columns: Mapping[str, str] | None = None,
 ) -> RainRecord:
-    """Read the files of one rainfall source.
+    r"""Read the files of one rainfall source.
 
     Parameters
     ----------
     files
         One or several; several are joined in time, in gauges, or both.
     layout
-        ``"wide"``: a column of times and a column for every gauge. ``"long"``: columns gauge, time, depth, and where there
-        are such, flag and steps. ``"totals"``: columns gauge, depth, and where there is one, storm.
+        ``"wide"``: a column of times and a column for every gauge. ``"long"``: columns gauge, time, depth, and where
+        there are such, flag and steps. ``"totals"``: columns gauge, depth, and where there is one, storm.
     unit
         Depth unit of the files, one of :data:`basinrain.units.DEPTH_UNITS`; never guessed.
     interval
@@ -70,20 +70,20 @@ def read_rainfall(
     stamp
         Whether a stamp with a time of day ends or starts its interval.
     timezone
-        ``"UTC"``, ``"+02:00"``, or an IANA name, whose standard time becomes the record's clock. Stamps that carry their own
-        offset need none.
+        ``"UTC"``, ``"+02:00"``, or an IANA name, whose standard time becomes the record's clock. Stamps that carry
+        their own offset need none.
     read_hour
         When daily gauges are read, ``"08:00"``, in the record's clock; with ``date_means``, for bare dates.
     date_means
-        ``"calendar-day"``; ``"ends"``: a date names the day that ends at the reading hour of that date; ``"starts"``: the
-        day that starts then.
+        ``"calendar-day"``; ``"ends"``: a date names the day that ends at the reading hour of that date; ``"starts"``:
+        the day that starts then.
     missing
         Codes that mean missing, compared as text and as numbers. A blank cell is always missing.
     trace
         Marks of a trace, which counts 0.
     flags
-        Marks by what they mean, one of :data:`basinrain.reading.depths.MARKED`; they stand in the flag column, or behind
-        the number in its cell.
+        Marks by what they mean, one of :data:`basinrain.reading.depths.MARKED`; they stand in the flag column, or
+        behind the number in its cell.
     accumulated
         The mark of a value that is the total of its own step and of the missing steps directly before it.
     gaps
@@ -109,7 +109,7 @@ def read_rainfall(
     --------
     >>> import tempfile
     >>> file = Path(tempfile.mkdtemp()) / "rain.csv"
-    >>> _ = file.write_text("time,W01,W02\\n2031-05-04 08:00,0.1,T\\n2031-05-04 09:00,,0.25E\\n")
+    >>> _ = file.write_text("time,W01,W02\n2031-05-04 08:00,0.1,T\n2031-05-04 09:00,,0.25E\n")
     >>> record = read_rainfall([file], layout="wide", unit="in", interval="1h", flags={"estimated": ["E"]})
     >>> record.depth
     array([[2.54, 0.  ],

@@ -61,7 +61,7 @@ def settle(
     >>> basins = Basins(ids=("upper",), polygons=[shapely.box(8, 47, 8.5, 47.5)], crs="EPSG:4326")
     >>> network, basins, plane, notes = settle(network, basins)
     >>> plane.name, round(float(basins.areas[0]) / 1e6, 1), notes
-    ('Lambert azimuthal equal-area plane centred on 47.25° N, 8.25° E', 2105.3, ())
+    ('Lambert azimuthal equal-area plane centred on 47.25° N, 8.25° E', 2104.0, ())
     """
     if (network.crs == ground.LOCAL) != (basins.crs == ground.LOCAL):
         raise DataError(
@@ -118,8 +118,7 @@ def _check_plane(plane: str, *, local: bool) -> None:
 
 def _around(polygons: npt.NDArray[np.object_], crs: str) -> tuple[str, str]:
     """Return the equal-area plane centred on the polygons, and its name."""
-    xy = shapely.get_coordinates(polygons)
-    lon, lat = ground.transform(xy[:, 0], xy[:, 1], crs, ground.LONLAT)
+    lon, lat = ground.transform(*_xy(polygons), crs, ground.LONLAT)
     if np.ptp(lon) > 180:
         # Basins on both sides of the antimeridian.
         lon = lon % 360
@@ -133,27 +132,104 @@ def _around(polygons: npt.NDArray[np.object_], crs: str) -> tuple[str, str]:
 
 
 def _check_near(network: GaugeNetwork, basins: Basins) -> None:
-    away, limit, ends = _nearest(network.x, network.y, network.crs, basins.polygons, basins.crs)
+    x, y, polygons = network.x, network.y, basins.polygons
+    away, limit, gauge = _nearest(x, y, network.crs, polygons, basins.crs)
     if away <= limit:
         return
     swapped = ""
-    flipped = shapely.transform(basins.polygons, lambda xy: xy[:, ::-1])
-    if _could_swap(network.x, network.y, network.crs):
-        near, within, _ = _nearest(network.y, network.x, network.crs, basins.polygons, basins.crs)
-        if near <= within:
-            swapped = "gauges"
-    corners = shapely.get_coordinates(basins.polygons)
-    if not swapped and _could_swap(corners[:, 0], corners[:, 1], basins.crs):
-        near, within, _ = _nearest(network.x, network.y, network.crs, flipped, basins.crs)
-        if near <= within:
-            swapped = "basins"
-    pair = "longitude and latitude" if ground.is_geographic(getattr_crs(network, basins, swapped)) else "x and y"
+    if _may_swap(x, y, network.crs) and _is_near(_nearest(y, x, network.crs, polygons, basins.crs)):
+        swapped = f"{_pair(network.crs)} of the gauges look swapped"
+    elif _may_swap(*_xy(polygons), basins.crs):
+        flipped = shapely.transform(polygons, lambda xy: xy[:, ::-1])
+        if _is_near(_nearest(x, y, network.crs, flipped, basins.crs)):
+            swapped = f"{_pair(basins.crs)} of the basins look swapped"
+    how_far = f"{away / 1000:,.0f} km away" if np.isfinite(away) else "off the map"
     raise DataError(
         Problem(
             item="gauges and basins",
-            found=f"them nowhere near each other: the nearest gauge, {network.ids[ends]}, is {away / 1000:,.0f} km from "
-            "the basins",
-            expected=f"a gauge within {limit / 1000:,.0f} km",
-            remedy=f"{pair} of the {swapped} look swapped" if swapped else "check both files and their crs",
+            found=f"them nowhere near each other: gauge {network.ids[gauge]}, the nearest, is {how_far}",
+            expected=f"a gauge within {limit / 1000:,.0f} km of the basins",
+            remedy=swapped or "check both files and their crs",
         )
     )
+
+
+def _pair(crs: str) -> str:
+    return "longitude and latitude" if ground.is_geographic(crs) else "x and y"
+
+
+def _xy(polygons: npt.NDArray[np.object_]) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
+    xy = shapely.get_coordinates(polygons)
+    return xy[:, 0], xy[:, 1]
+
+
+def _may_swap(x: npt.NDArray[np.float64], y: npt.NDArray[np.float64], crs: str) -> bool:
+    return not ground.is_geographic(crs) or bool((np.abs(x) <= 90).all() and (np.abs(y) <= 180).all())
+
+
+def _is_near(nearest: tuple[float, float, int]) -> bool:
+    return nearest[0] <= nearest[1]
+
+
+def _nearest(
+    x: npt.NDArray[np.float64], y: npt.NDArray[np.float64], crs: str, polygons: npt.NDArray[np.object_], basins_crs: str
+) -> tuple[float, float, int]:
+    """Return how far the nearest gauge is from the polygons in m, how far it may be, and which it is."""
+    local = crs == ground.LOCAL
+    if not local:
+        plane, _ = _around(polygons, basins_crs)
+        x, y = ground.transform(x, y, crs, plane)
+        xy = np.column_stack(ground.transform(*_xy(polygons), basins_crs, plane))
+        polygons = shapely.set_coordinates(polygons.copy(), xy)
+    west, south, east, north = (float(v) for v in shapely.total_bounds(polygons))
+    diagonal = float(np.hypot(east - west, north - south))
+    limit = _NEAR_DIAGONALS * diagonal if local else max(_NEAR_DIAGONALS * diagonal, _NEAR_METRES)
+    in_box = (west <= x) & (x <= east) & (south <= y) & (y <= north)
+    if in_box.any():
+        return 0.0, limit, int(np.flatnonzero(in_box)[0])
+    finite = np.flatnonzero(np.isfinite(x) & np.isfinite(y))
+    if not len(finite):
+        return np.inf, limit, 0
+    points = np.asarray(shapely.points(x[finite], y[finite]), dtype=object)
+    (which, polygon), planar = shapely.STRtree(polygons).query_nearest(points, return_distance=True)
+    first = int(np.argmin(planar))
+    gauge, away = int(finite[which[first]]), float(planar[first])
+    if not local:
+        line = shapely.get_coordinates(shapely.shortest_line(points[which[first]], polygons[polygon[first]]))
+        away = float(ground.distances(line[:1, 0], line[:1, 1], line[1:, 0], line[1:, 1], plane)[0, 0])
+    return away, limit, gauge
+
+
+def _distortion(network: GaugeNetwork, basins: Basins) -> float:
+    """Return the largest relative difference of planar and geodesic distances among gauges and the basins' corners."""
+    corners = shapely.get_coordinates(
+        shapely.convex_hull(shapely.multipoints(shapely.get_coordinates(basins.polygons)))
+    )
+    gauges = np.column_stack([network.x, network.y])
+    if len(gauges) > _MOST_POINTS // 2:
+        gauges = shapely.get_coordinates(shapely.convex_hull(shapely.multipoints(gauges)))
+    xy = np.vstack([_thinned(corners), _thinned(gauges)])
+    x, y = xy[:, 0], xy[:, 1]
+    planar = ground.distances(x, y, x, y, ground.LOCAL)
+    geodesic = ground.distances(x, y, x, y, basins.crs)
+    apart = geodesic > 1.0
+    return float(np.abs(planar[apart] / geodesic[apart] - 1).max(initial=0.0))
+
+
+def _thinned(points: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
+    most = _MOST_POINTS // 2
+    return points if len(points) <= most else points[np.linspace(0, len(points) - 1, most).astype(int)]
+
+
+def _area_notes(basins: Basins) -> list[Note]:
+    with np.errstate(invalid="ignore"):
+        off = basins.areas / basins.official_areas - 1
+    return [
+        Note(
+            code="area-differs",
+            basin=basins.ids[place],
+            text=f"Basin {basins.ids[place]} has {basins.areas[place] / 1e6:.3f} km2 by its polygon and "
+            f"{basins.official_areas[place] / 1e6:.3f} km2 by its attribute: {100 * off[place]:+.1f} %.",
+        )
+        for place in np.flatnonzero(np.abs(off) > _DIFFERENCE)
+    ]

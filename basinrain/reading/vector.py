@@ -206,5 +206,7 @@ def _texts(values: npt.NDArray[np.generic]) -> list[str]:
 
     null = pd.isna(values)
     if values.dtype.kind == "M":
+        if values.dtype != np.dtype("datetime64[D]"):
+            values = values.astype("datetime64[s]")
         return ["" if absent else str(value) for value, absent in zip(values, null, strict=True)]
     return ["" if absent else text(value) for value, absent in zip(values.tolist(), null, strict=True)]

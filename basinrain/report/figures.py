@@ -78,7 +78,6 @@ _STYLE: Final = {
     "hatch.linewidth": 0.5,
     "grid.color": "#c9cdd0",
     "grid.linewidth": 0.5,
-    "timezone": "UTC",
 }
 _FONTS: Final = "Arial, 'Liberation Sans', Helvetica, 'DejaVu Sans', sans-serif"
 _SVG: Final = "{http://www.w3.org/2000/svg}"

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from datetime import UTC
 from typing import Any, Final
 
 import numpy as np
@@ -27,7 +28,7 @@ MOST_BARS: Final = 240
 """Bars that a figure of half a page can still show apart."""
 
 _HEIGHT: Final = 2.9
-_NO_NUMBER: Final = "#d9a08a"
+_NO_NUMBER: Final = "#8a8a8a"
 
 
 def lead_method(result: StormResult) -> str:
@@ -175,11 +176,12 @@ def _dress(figure: Figure, upper: Any, lower: Any, tops: tuple[float, float], sp
         for side in ("top", "right"):
             axes.spines[side].set_visible(False)
     upper.set_xlim(*span)
-    locator = AutoDateLocator(minticks=3, maxticks=6)
+    locator = AutoDateLocator(tz=UTC, minticks=3, maxticks=6)  # the record's own clock, never the machine's
     lower.xaxis.set_major_locator(locator)
     # Digits only: the names of months would follow the machine's language.
     formatter = ConciseDateFormatter(
         locator,
+        tz=UTC,
         formats=["%Y", "%Y-%m", "%m-%d", "%H:%M", "%H:%M", "%H:%M:%S"],
         zero_formats=["", "%Y", "%Y-%m", "%m-%d", "%H:%M", "%H:%M"],
         offset_formats=["", "%Y", "%Y", "%Y-%m-%d", "%Y-%m-%d", "%Y-%m-%d %H:%M"],

@@ -25,7 +25,7 @@ class Table:
     align
         One letter a column: ``"t"`` for text, ``"n"`` for numbers.
     rows
-        The body. The first cell of a line names the line; lines in a row with the same first cell make one group.
+        The body. The first cell of a line names the line.
     over
         A line of heads above the heads, each with the number of columns that it spans; they span all columns together.
     foot
@@ -54,6 +54,11 @@ class Table:
             widths.add(sum(span for _, span in self.over))
         if len(widths) != 1:
             raise ValueError(f"table '{self.caption}' has lines of {sorted(widths)} cells")
+
+    @property
+    def grouped(self) -> bool:
+        """Whether neighbouring lines have the same first cell, which then stands once for all of them."""
+        return any(len(group) > 1 for group in self.groups)
 
     @property
     def groups(self) -> list[list[Row]]:

@@ -55,7 +55,7 @@ def _panel(run: StormRun, result: StormResult, b: int, right: float, storms: str
     rest = max(0, len(order) - _MOST_GAUGES)
     order = order[:_MOST_GAUGES]
     labels = [inline(run.network.ids[g], 14) for g in order]
-    left = 0.28 + 0.062 * max((len(label) for label in labels), default=1)
+    left = 0.3 + 0.062 * max((len(label) for label in labels), default=1)
     lines = -(-len(methods) // 3)
     head = _HEAD - 0.16 + 0.15 * lines
     height = head + _FOOT + _ROW * max(len(order), 1)
@@ -82,7 +82,7 @@ def _panel(run: StormRun, result: StormResult, b: int, right: float, storms: str
     axes.set_yticks(places, labels)
     axes.set_ylim(max(len(order), 1) - 0.5, -0.5)
     axes.set_xlim(0, right)
-    axes.tick_params(axis="y", length=0)
+    axes.tick_params(axis="y", length=0, pad=6)
     for side in ("top", "right"):
         axes.spines[side].set_visible(False)
     axes.set_xlabel("weight")

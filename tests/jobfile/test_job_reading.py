@@ -33,7 +33,7 @@ file = "basins.geojson"
 
 [[storm]]
 name = "Quill"
-start = 2031-05-03T18:00
+start = 2031-05-03T18:00:00
 end = 2031-05-05
 """
 
@@ -162,6 +162,9 @@ def test_a_file_that_is_not_toml_is_refused(tmp_path: Path) -> None:
     """Syntax errors carry the line; missing files, folders and binary files are named."""
     path = job_file(tmp_path, '[job]\nname = "a\n')
     with pytest.raises(ReadError, match=r"job.toml:2: job file: found .*; expected TOML; correct the line"):
+        read_job(path)
+    job_file(tmp_path, SMALL.replace("T18:00:00", "T18:00"))
+    with pytest.raises(ReadError, match=r"job.toml:23: .*a time in TOML has seconds: write 2031-05-03T18:00:00, or"):
         read_job(path)
     with pytest.raises(ReadError, match="job file: found no such file or directory; expected a TOML file"):
         read_job(tmp_path / "none.toml")

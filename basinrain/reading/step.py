@@ -1,0 +1,355 @@
+"""Brings the sources of a job to its common step: finer ones summed, coarser and accumulated ones spread."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.errors import DataError, JobError, Problems, nearest_name
+from basinrain.gauges import GaugeNetwork
+from basinrain.notes import Note
+from basinrain.rainfall import KnownTotal, RainRecord, Status
+from basinrain.reading.clocks import clock_name, clock_seconds
+from basinrain.reading.grid import ABSENT, Grid, OnGrid, Source, off_bounds, place, relation
+from basinrain.reading.intervals import DAY, Interval, interval_of, parse_interval
+from basinrain.reading.storm_totals import merge_storm_totals, storm_bounds
+from basinrain.spreading import spread_totals
+
+__all__ = ["bring_to_step"]
+
+_NOTHING: Final = np.array([ABSENT, Status.MISSING], dtype=np.uint8)
+
+
+def bring_to_step(
+    records: Sequence[RainRecord],
+    network: GaugeNetwork,
+    *,
+    common: str | None = None,
+    storm_times: Mapping[str, tuple[np.datetime64, np.datetime64]] | None = None,
+) -> tuple[RainRecord, tuple[Note, ...]]:
+    """Return the one record of all sources, at the common step.
+
+    Parameters
+    ----------
+    records
+        One a source, in the job's order; messages number them from 1.
+    network
+        The gauges; each must have rain values in one source at least, and the sources no other gauges.
+    common
+        The common step, ``"1h"``; the finest source's where none is given.
+    storm_times
+        Start and end of every storm, in the first source's clock, by name. Needed where storm totals without times come
+        beside sources with times.
+
+    Returns
+    -------
+    record : RainRecord
+        Columns in the network's order, on a regular axis over the union of all sources, in the first source's clock. A
+        step of a finer source needs all its parts, else it is missing. Intervals of a coarser source, and
+        accumulations, are spread over their steps in the pattern of the recording gauges
+        (:func:`basinrain.spreading.spread_totals`); they stand in ``totals``. Outside a gauge's time of service nothing
+        counts. Totals-only sources alone give a record of storm totals.
+    notes : tuple of Note
+        ``value-out-of-service``, ``mixed-reading-hours``, ``spread-evenly``.
+
+    Raises
+    ------
+    DataError
+        Gauges of the network without rain or the reverse; zones that some sources have and others have not; steps that
+        neither divide nor are a multiple of the common one; intervals off the common bounds; a gauge with values in two
+        sources at one time; all of a kind together.
+    JobError
+        The common step is not understood, or a storm's times are needed and not given.
+
+    Examples
+    --------
+    A recorder and a daily gauge that was read at 08:00:
+
+    >>> network = GaugeNetwork(ids=("R", "D"), x=[0.0, 4000.0], y=[0.0, 0.0], crs="local")
+    >>> ends = np.datetime64("2031-06-04T08:00:00") + 6 * np.arange(1, 5) * np.timedelta64(3600, "s")
+    >>> six = np.timedelta64(21600, "s")
+    >>> recorder = RainRecord.from_depths(("R",), ends - six, ends, [[0.0], [12.0], [24.0], [0.0]], step="6h")
+    >>> daily = RainRecord.from_depths(("D",), ends[3:] - 4 * six, ends[3:], [[48.0]], step="1d")
+    >>> record, notes = bring_to_step([recorder, daily], network)
+    >>> record.depth[:, 1]
+    array([ 0., 16., 32.,  0.])
+    """
+    if not records:
+        problems = Problems()
+        problems.add(item="rainfall", found="no source", expected="at least one")
+        problems.raise_as(JobError)
+    _check_names(records, network)
+    timed = [record for record in records if record.step != "storm"]
+    if not timed:
+        return merge_storm_totals(records, network), ()
+    zone = _one_clock(records)
+    sources = _sources(records, zone, storm_times)
+    step = parse_interval(common, item="[step] common") if common is not None else _finest(sources)
+    grid = Grid(step, _phase(sources, step))
+    _check_steps(sources, grid)
+    placed = [place(source, grid) for source in sources]
+    first = min(part.first for part in placed)
+    n = max(part.first + len(part.depth) for part in placed) - first
+    bounds = grid.bounds(first + np.arange(n + 1))
+    depth, status = _merged(sources, placed, network.ids, first, bounds)
+    status[status == ABSENT] = Status.MISSING
+    totals = [total for part in placed for total in part.totals]
+    notes = _take_out_of_service(network, depth, status, bounds, totals)
+    day_phase, mixed = _day_phase(sources, step, grid)
+    recorders = frozenset(
+        gauge for source in sources if relation(source.interval, step) == "finer" for gauge in source.gauges
+    )
+    record = RainRecord(
+        network.ids,
+        bounds[:-1],
+        bounds[1:],
+        depth,
+        status,
+        step=step.label,
+        zone=zone,
+        day_phase=day_phase,
+        recorders=recorders,
+    )
+    record, evenly = spread_totals(record, network, totals)
+    return record, (*notes, *mixed, *evenly)
+
+
+def _near(name: str, known: Sequence[str]) -> str:
+    advice = nearest_name(name, known) if known else ""
+    return f"; {advice}" if advice.startswith("did you mean") else ""
+
+
+def _check_names(records: Sequence[RainRecord], network: GaugeNetwork) -> None:
+    problems = Problems()
+    rain = dict.fromkeys(gauge for record in records for gauge in record.gauges)
+    known = set(network.ids)
+    silent = [gauge for gauge in network.ids if gauge not in rain]
+    for gauge in rain:
+        if gauge not in known:
+            problems.add(
+                item=f"gauge {gauge}",
+                found="rain values, but no such gauge in the network",
+                expected="a gauge with a position",
+                remedy="add it to the gauges, or correct its id in the rainfall file" + _near(gauge, network.ids),
+                gauge=gauge,
+            )
+    for gauge in silent:
+        problems.add(
+            item=f"gauge {gauge}",
+            found="no rain values in any source",
+            expected="a column or rows of its own, if only of missing values",
+            remedy="add them, or exclude the gauge" + _near(gauge, [other for other in rain if other not in known]),
+            gauge=gauge,
+        )
+    problems.raise_as(DataError)
+
+
+def _name(number: int, record: RainRecord) -> str:
+    return f"source {number} ({record.step})"
+
+
+def _one_clock(records: Sequence[RainRecord]) -> str:
+    timed = [(number, record) for number, record in enumerate(records, 1) if record.step != "storm"]
+    zone = timed[0][1].zone
+    problems = Problems()
+    for number, record in timed[1:]:
+        if bool(record.zone) != bool(zone):
+            problems.add(
+                item="time zones",
+                found=f"{_clock_of(zone)} for {_name(*timed[0])}, {_clock_of(record.zone)} for {_name(number, record)}",
+                expected="a zone for every source, or for none",
+                remedy="declare timezone for each",
+            )
+    problems.raise_as(DataError)
+    return zone
+
+
+def _clock_of(zone: str) -> str:
+    return zone or "no zone"
+
+
+def _sources(
+    records: Sequence[RainRecord],
+    zone: str,
+    storm_times: Mapping[str, tuple[np.datetime64, np.datetime64]] | None,
+) -> list[Source]:
+    """Return the sources in the clock of ``zone``, storm totals with their times."""
+    sources = []
+    problems = Problems()
+    for number, record in enumerate(records, 1):
+        name = _name(number, record)
+        if record.step == "storm":
+            starts, ends = storm_bounds(record, storm_times or {}, name, problems)
+            order = np.argsort(ends, kind="stable")
+            sources.append(
+                Source(
+                    name, None, record.gauges, starts[order], ends[order], record.depth[order], record.status[order], ()
+                )
+            )
+            continue
+        shift = np.timedelta64(clock_seconds(zone) - clock_seconds(record.zone) if zone else 0, "s")
+        totals = tuple(replace(t, start=t.start + shift, end=t.end + shift) for t in record.totals)
+        sources.append(
+            Source(
+                name,
+                parse_interval(record.step),
+                record.gauges,
+                record.starts + shift,
+                record.ends + shift,
+                record.depth,
+                record.status,
+                totals,
+            )
+        )
+    problems.raise_as(JobError)
+    return sources
+
+
+def _finest(sources: Sequence[Source]) -> Interval:
+    steps = [source.interval for source in sources if source.interval is not None]
+    return min(steps, key=lambda step: step.seconds or np.inf)
+
+
+def _phase(sources: Sequence[Source], step: Interval) -> int:
+    length = step.seconds or DAY
+    same = [source for source in sources if source.interval == step]
+    if same:
+        return int(same[0].ends[0].astype(np.int64)) % length
+    hours = {hour for source in sources for hour in _reading_hours(source)}
+    return hours.pop() if length % DAY == 0 and len(hours) == 1 else 0
+
+
+def _reading_hours(source: Source) -> set[int]:
+    if source.interval is None or not source.interval.whole_days:
+        return set()
+    return {int(source.ends[0].astype(np.int64)) % DAY}
+
+
+def _check_steps(sources: Sequence[Source], grid: Grid) -> None:
+    problems = Problems()
+    step = grid.interval
+    for source in sources:
+        if source.interval is not None and not relation(source.interval, step):
+            problems.add(
+                item=source.name,
+                found=f"steps of {source.interval.label} beside the common step {step.label}",
+                expected="a common step that divides it or is a multiple of it",
+                remedy=f"set [step] common to one that fits every source, such as '{_fitting(sources, 0)}'",
+            )
+            continue
+        off = off_bounds(source, grid)
+        if len(off):
+            row = off[0]
+            problems.add(
+                item=source.name,
+                found=f"an interval from {source.starts[row]} to {source.ends[row]}",
+                expected=f"intervals that begin and end on bounds of the common step {step.label}, such as "
+                f"{grid.bounds(grid.numbers(source.ends[row : row + 1])[0])[0]}",
+                remedy=f"set [step] common = '{_fitting(sources, grid.phase)}', or correct the source's times",
+                time=str(source.ends[row]),
+            )
+    problems.raise_as(DataError)
+
+
+def _fitting(sources: Sequence[Source], phase: int) -> str:
+    """Return the longest step, of a day at most, whose bounds all sources share."""
+    seconds = DAY
+    for source in sources:
+        seconds = int(np.gcd(seconds, (source.interval.seconds if source.interval else None) or DAY))
+        for times in (source.starts, source.ends):
+            seconds = int(np.gcd.reduce(np.r_[seconds, np.abs(times.astype(np.int64) - phase)]))
+    return interval_of(seconds).label if seconds % 60 == 0 else "1min"
+
+
+def _merged(
+    sources: Sequence[Source],
+    placed: Sequence[OnGrid],
+    gauges: tuple[str, ...],
+    first: int,
+    bounds: npt.NDArray[np.datetime64],
+) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8]]:
+    """Return depth and status of all sources on one grid; two values of a gauge at one time are problems."""
+    shape = (len(bounds) - 1, len(gauges))
+    depth, status = np.full(shape, np.nan), np.full(shape, ABSENT, dtype=np.uint8)
+    owner = np.zeros(shape, dtype=np.int16)
+    column = {gauge: g for g, gauge in enumerate(gauges)}
+    problems = Problems()
+    for number, (source, part) in enumerate(zip(sources, placed, strict=True)):
+        columns = np.array([column[gauge] for gauge in source.gauges])
+        at = np.ix_(np.arange(len(part.depth)) + part.first - first, columns)
+        free = np.isin(status[at], _NOTHING)
+        both = ~free & ~np.isin(part.status, _NOTHING)
+        for g in np.flatnonzero(both.any(axis=0)):
+            rows = np.flatnonzero(both[:, g])
+            row = int(rows[0]) + part.first - first
+            other = sources[owner[row, columns[g]]].name
+            problems.add(
+                item=f"gauge {source.gauges[g]}",
+                found=f"values in {other} and in {source.name} for {len(rows)} of the same steps, the first ending at "
+                f"{bounds[row + 1]}",
+                expected="one source for a gauge and time",
+                remedy="remove it from one of them",
+                gauge=source.gauges[g],
+                time=str(bounds[row + 1]),
+            )
+        take = free & (part.status != ABSENT) & ~((part.status == Status.MISSING) & (status[at] != ABSENT))
+        depth[at] = np.where(take, part.depth, depth[at])
+        status[at] = np.where(take, part.status, status[at])
+        owner[at] = np.where(take, number, owner[at])
+    problems.raise_as(DataError)
+    return depth, status
+
+
+def _take_out_of_service(
+    network: GaugeNetwork,
+    depth: npt.NDArray[np.float64],
+    status: npt.NDArray[np.uint8],
+    bounds: npt.NDArray[np.datetime64],
+    totals: list[KnownTotal],
+) -> list[Note]:
+    """Mark, in place, what lies outside the gauges' time of service; drop totals that reach into it."""
+    out = ~network.in_service(bounds[:-1], bounds[1:])
+    if not out.any():
+        return []
+    notes = []
+    unused = out & ~np.isin(status, [int(Status.MISSING), int(Status.NOT_INSTALLED)])
+    for g in np.flatnonzero(unused.any(axis=0)):
+        rows = np.flatnonzero(unused[:, g])
+        notes.append(
+            Note(
+                code="value-out-of-service",
+                text=f"Gauge {network.ids[g]} has values for {len(rows)} steps outside its time of service, the first "
+                f"ending at {bounds[rows[0] + 1]}; they are not used.",
+                gauge=network.ids[g],
+            )
+        )
+    kept = []
+    for total in totals:
+        place_of = network.position(total.gauge)
+        rows_of = slice(*np.searchsorted(bounds, np.array([total.start, total.end])))
+        if out[rows_of, place_of].any():
+            status[rows_of, place_of] = Status.MISSING
+        else:
+            kept.append(total)
+    totals[:] = kept
+    depth[out], status[out] = np.nan, Status.NOT_INSTALLED
+    return notes
+
+
+def _day_phase(sources: Sequence[Source], step: Interval, grid: Grid) -> tuple[int, list[Note]]:
+    """Return the second at which the rainfall day begins, and a note where the daily gauges do not agree on it."""
+    if step.whole_days:
+        return grid.phase % DAY, []
+    gauges: dict[int, dict[str, None]] = {}
+    for source in sources:
+        for hour in _reading_hours(source):
+            gauges.setdefault(hour, {}).update(dict.fromkeys(source.gauges))
+    if len(gauges) < 2:
+        return next(iter(gauges), 0), []
+    listed = "; ".join(f"{clock_name(hour)[1:]} {', '.join(ids)}" for hour, ids in sorted(gauges.items()))
+    text = f"Daily gauges are read at different hours: {listed}. Days are taken from midnight to midnight."
+    return 0, [Note(code="mixed-reading-hours", text=text)]

@@ -1,0 +1,73 @@
+"""The report: one HTML file with everything in it, for a screen and for paper."""
+
+from __future__ import annotations
+
+import re
+from typing import Final
+
+from jinja2 import Environment, PackageLoader, StrictUndefined
+
+from basinrain.report import gauge_list, infill_list, limits, means, overview, provenance, shares, timing
+from basinrain.report.map_figure import map_pictures
+from basinrain.report.weights_figure import weights_pictures
+from basinrain.results import CAUTION, StormRun
+
+__all__ = ["render_report"]
+
+# Neither HTML nor XML can hold these, and no name needs them.
+_FORBIDDEN: Final = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff\ufffe\uffff]")
+
+
+def render_report(run: StormRun) -> str:
+    """Return the report of a run as one HTML page.
+
+    The page holds no script and asks for nothing: style and figures are inside it. The same run gives the same text,
+    letter for letter. Depths are printed to 0.1 mm or 0.01 in, weights to 3 decimals; what is not known is a dash, never
+    zero. Large runs are shortened, each time with the file that holds the rest.
+
+    Parameters
+    ----------
+    run
+        A finished run.
+
+    Returns
+    -------
+    str
+        HTML, to be written as UTF-8.
+    """
+    drawn = limits.drawn_storms(run)
+    environment = Environment(
+        loader=PackageLoader("basinrain.report"),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        keep_trailing_newline=True,
+    )
+    page = environment.get_template("report.html").render(
+        run=run,
+        caution=CAUTION,
+        asked=overview.what_was_asked(run),
+        storms_asked=overview.storms_asked(run),
+        warnings=overview.note_groups(run.warnings),
+        remarks=overview.note_groups(note for note in run.notes if note.level != "warning"),
+        summary=means.summary(run),
+        details=means.details(run),
+        maps=map_pictures(run),
+        weight_tables=[(result.storm.name, shares.weight_tables(run, result)) for result in drawn],
+        weight_pictures=weights_pictures(run),
+        weights_left_out=limits.left_out(run, "weights.csv"),
+        listed_weight=limits.LISTED_WEIGHT,
+        times=[timing.storm_times(run, result, k) for k, result in enumerate(drawn, start=1)],
+        times_left_out=limits.left_out(run, "hyetographs.csv"),
+        network=gauge_list.network_table(run),
+        totals=gauge_list.totals_tables(run),
+        estimates=infill_list.estimate_tables(run),
+        infilled=infill_list.infilled_shares(run),
+        ground=provenance.ground_facts(run),
+        formulas=provenance.formulas(run),
+        inputs=provenance.inputs_table(run),
+        versions=provenance.versions_table(run),
+        settings=provenance.settings_text(run.settings),
+    )
+    return _FORBIDDEN.sub("\ufffd", page)

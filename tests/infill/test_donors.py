@@ -1,0 +1,74 @@
+"""Which gauges donate."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill.donors import choose_donors, distances_from, nearness
+
+# On a line, the target T in the middle: distances 1, 1, 2, 3 km.
+LINE = GaugeNetwork(ids=("T", "D", "C", "B", "A"), x=np.array([0.0, 1e3, -1e3, 2e3, -3e3]), y=np.zeros(5), crs="local")
+EVERYONE = np.ones(5, dtype=bool)
+
+
+def donors(reporting: np.ndarray = EVERYONE, **options: object) -> list[str]:
+    chosen = choose_donors(LINE, 0, reporting, **{"nearest": "all", **options})  # type: ignore[arg-type]
+    return [gauge for gauge, yes in zip(LINE.ids, chosen, strict=True) if yes]
+
+
+def test_nearest_come_first_and_ties_go_by_id() -> None:
+    """C and D are both 1 km away; C comes first by its id though D stands before it in the file."""
+    assert [LINE.ids[g] for g in nearness(LINE, LINE.distances()[0])] == ["T", "C", "D", "B", "A"]
+
+
+def test_rounding_makes_no_difference_between_equal_distances() -> None:
+    """One part in 10 to the 12 is rounding, one in 10 000 is not."""
+    assert nearness(LINE, np.array([0.0, 1e3, 1e3 * (1 + 1e-12), 2e3, 3e3])).tolist() == [0, 2, 1, 3, 4]
+    assert nearness(LINE, np.array([0.0, 1e3, 1e3 * (1 + 1e-4), 2e3, 3e3])).tolist() == [0, 1, 2, 3, 4]
+
+
+def test_no_gauges_have_no_order() -> None:
+    """An empty network has an empty order."""
+    assert nearness(GaugeNetwork(ids=(), x=np.empty(0), y=np.empty(0), crs="local"), np.empty(0)).shape == (0,)
+
+
+def test_the_nearest_reporting_ones_donate() -> None:
+    """With C silent the two nearest reporting gauges are D and B."""
+    assert donors(nearest=2) == ["D", "C"]
+    assert donors(np.array([True, True, False, True, True]), nearest=2) == ["D", "B"]
+
+
+def test_one_of_two_equally_near_is_chosen_by_id() -> None:
+    """Of C and D, both 1 km away, the nearest one is C."""
+    assert donors(nearest=1, min_donors=1) == ["C"]
+
+
+def test_the_target_never_donates_to_itself() -> None:
+    """T reports here, and is still no donor."""
+    assert donors() == ["D", "C", "B", "A"]
+
+
+def test_radius_includes_its_edge() -> None:
+    """2 km away is within 2 km."""
+    assert donors(radius=2e3) == ["D", "C", "B"]
+
+
+def test_too_few_donors_are_none() -> None:
+    """Two within 1 km where three are asked for."""
+    assert donors(radius=1e3, min_donors=2) == ["D", "C"]
+    assert donors(radius=1e3, min_donors=3) == []
+
+
+def test_a_gauge_at_the_targets_place_does_not_donate() -> None:
+    """Its distance is zero, which no inverse distance can use."""
+    network = GaugeNetwork(ids=("T", "U", "V"), x=np.array([5.0, 5.0, 9.0]), y=np.zeros(3), crs="local")
+    chosen = choose_donors(network, 0, np.ones(3, dtype=bool), nearest="all", min_donors=1)
+    assert chosen.tolist() == [False, False, True]
+
+
+def test_distances_are_geodesic_on_the_map() -> None:
+    """One degree of latitude at the equator is 110 574 m on the WGS 84 ellipsoid (Karney 2013), not 111 195 m."""
+    network = GaugeNetwork(ids=("A", "B"), x=np.zeros(2), y=np.array([0.0, 1.0]), crs="EPSG:4326")
+    assert distances_from(network, 0) == pytest.approx([0, 110574.4], abs=0.1)
