@@ -6,9 +6,10 @@ make a reader look, not to pass or fail a result.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping
 
 import numpy as np
+import numpy.typing as npt
 import shapely
 
 from basinrain.basins import Basins
@@ -16,6 +17,7 @@ from basinrain.gauges import GaugeNetwork
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.storms import BasinDepths, spread_across_methods
+from basinrain.units import depth_factor
 
 __all__ = ["network_cautions", "record_cautions", "storm_cautions"]
 
@@ -23,6 +25,7 @@ _DOMINANT_WEIGHT = 0.5
 _INFILLED_SHARE = 0.25
 _SPREAD_PERCENT = 10.0
 _TOUCH = 1e-3
+_ROUNDING = 1e-9
 
 
 def network_cautions(network: GaugeNetwork, basins: Basins) -> Iterator[Note]:
@@ -75,7 +78,7 @@ def network_cautions(network: GaugeNetwork, basins: Basins) -> Iterator[Note]:
 
 
 def _elevation_caution(
-    network: GaugeNetwork, basin: str, gauges: np.ndarray[tuple[int], np.dtype[np.int64]], low: float, high: float
+    network: GaugeNetwork, basin: str, gauges: npt.NDArray[np.int64], low: float, high: float
 ) -> Iterator[Note]:
     heights = network.elevation[gauges]
     if np.isnan(heights).all() or np.isnan(low) or np.isnan(high):
@@ -114,7 +117,12 @@ def record_cautions(record: RainRecord) -> Iterator[Note]:
 
 
 def storm_cautions(
-    storm: str, network: GaugeNetwork, basins: Basins, depths: Sequence[tuple[str, BasinDepths]]
+    storm: str,
+    network: GaugeNetwork,
+    basins: Basins,
+    depths: Mapping[str, BasinDepths],
+    *,
+    depth_unit: str = "mm",
 ) -> Iterator[Note]:
     """Yield warnings about one storm's results: dominant gauges, infilled shares, rebuilt weights, methods apart.
 
@@ -126,48 +134,69 @@ def storm_cautions(
         Gauges and basins of the run.
     depths
         Results by averaging method.
+    depth_unit
+        Unit of the depths that the warnings name.
     """
-    for method, result in depths:
-        weights = result.table.weights
-        for b, basin in enumerate(basins.ids):
-            if np.isnan(weights[b]).any():
-                continue
-            total = weights[b].sum()
-            g = int(np.argmax(weights[b]))
-            if weights[b, g] > _DOMINANT_WEIGHT * total:
-                yield Note(
-                    code="one-gauge-dominates",
-                    text=f"Gauge {network.ids[g]} has {100 * weights[b, g] / total:.0f} % of the weight in basin {basin} "
-                    f"by {method}.",
-                    storm=storm,
-                    basin=basin,
-                    gauge=network.ids[g],
-                    method=method,
-                )
-            if result.infilled[b] > _INFILLED_SHARE * result.total[b]:
-                yield Note(
-                    code="much-infilled",
-                    text=f"{100 * result.infilled[b] / result.total[b]:.0f} % of the mean of basin {basin} by {method} "
-                    "rests on infilled values.",
-                    storm=storm,
-                    basin=basin,
-                    method=method,
-                )
-        if result.rebuilt_steps:
-            yield Note(
-                code="weights-rebuilt",
-                text=f"At {result.rebuilt_steps} steps some gauge had no value even after infill; the weights by {method} "
-                "were rebuilt from the others there.",
-                storm=storm,
-                method=method,
-            )
     for b, basin in enumerate(basins.ids):
-        least, most, apart, percent = spread_across_methods([result.total[b] for _, result in depths])
-        if percent > _SPREAD_PERCENT:
+        yield from _dominant_gauge(storm, network, basin, {m: result.table.weights[b] for m, result in depths.items()})
+        shares = {m: _share(float(result.infilled[b]), float(result.total[b])) for m, result in depths.items()}
+        much = {method: share for method, share in shares.items() if share > _INFILLED_SHARE + _ROUNDING}
+        if much:
             yield Note(
-                code="methods-apart",
-                text=f"The methods give basin {basin} from {least:.1f} to {most:.1f} mm, {apart:.1f} mm or {percent:.0f} % "
-                "apart.",
+                code="much-infilled",
+                text=f"Much of the mean of basin {basin} rests on infilled values: {_by_method(much)}.",
                 storm=storm,
                 basin=basin,
             )
+        least, most, apart, percent = spread_across_methods([result.total[b] for result in depths.values()])
+        if percent > _SPREAD_PERCENT:
+            low, high, wide = (_depth(value, depth_unit) for value in (least, most, apart))
+            yield Note(
+                code="methods-apart",
+                text=f"The methods give basin {basin} from {low} to {high} {depth_unit}, {wide} {depth_unit} or "
+                f"{percent:.0f} % apart.",
+                storm=storm,
+                basin=basin,
+            )
+    rebuilt = max(result.rebuilt_steps for result in depths.values())
+    if rebuilt:
+        yield Note(
+            code="weights-rebuilt",
+            text=f"{'At 1 step' if rebuilt == 1 else f'At {rebuilt} steps'} some gauge had no value even after infill; "
+            "the weights were rebuilt from the others there.",
+            storm=storm,
+        )
+
+
+def _dominant_gauge(
+    storm: str, network: GaugeNetwork, basin: str, weights: Mapping[str, npt.NDArray[np.float64]]
+) -> Iterator[Note]:
+    """Yield one warning for every gauge that has over half of the weight by some method."""
+    by_gauge: dict[str, dict[str, float]] = {}
+    for method, row in weights.items():
+        if np.isnan(row).any():
+            continue
+        g = int(np.argmax(row))
+        share = _share(float(row[g]), float(row.sum()))
+        if share > _DOMINANT_WEIGHT + _ROUNDING:
+            by_gauge.setdefault(network.ids[g], {})[method] = share
+    for gauge, shares in by_gauge.items():
+        yield Note(
+            code="one-gauge-dominates",
+            text=f"Gauge {gauge} has over half of the weight in basin {basin}: {_by_method(shares)}.",
+            storm=storm,
+            basin=basin,
+            gauge=gauge,
+        )
+
+
+def _share(part: float, whole: float) -> float:
+    return part / whole if whole > 0 else 0.0
+
+
+def _by_method(shares: Mapping[str, float]) -> str:
+    return ", ".join(f"{100 * share:.0f} % by {method}" for method, share in shares.items())
+
+
+def _depth(depth: float, unit: str) -> str:
+    return f"{depth / depth_factor(unit):.{2 if unit == 'in' else 1}f}"

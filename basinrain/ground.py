@@ -277,9 +277,12 @@ def equal_area_plane(west: float, south: float, east: float, north: float) -> st
     >>> equal_area_plane(10, 50, 12, 51)
     '+proj=laea +lat_0=50.5 +lon_0=11 +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs'
     """
-    # A whole millionth of a degree, for a name that people can read.
-    lat, lon = round((south + north) / 2, 6), round((west + east) / 2, 6)
-    return f"+proj=laea +lat_0={lat:.10g} +lon_0={lon:.10g} +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs"
+    # To a millionth of a degree, written so that people can read it.
+    lat, lon = (
+        np.format_float_positional(round(middle, 6) + 0.0, trim="-")
+        for middle in ((south + north) / 2, (west + east) / 2)
+    )
+    return f"+proj=laea +lat_0={lat} +lon_0={lon} +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs"
 
 
 def distances(

@@ -303,7 +303,7 @@ def _run_one(
         )
     notes = (
         *(note if note.storm else replace(note, storm=storm.name) for note in completed.notes),
-        *storm_cautions(storm.name, network, basins, list(depths.items())),
+        *storm_cautions(storm.name, network, basins, depths, depth_unit=job.job.depth_unit),
     )
     return StormResult(storm, completed, depths, tuple(shapes)), notes
 

@@ -17,7 +17,17 @@ from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.weights import WeightTable
 
-__all__ = ["MEAN", "NEAREST_RECORDER", "BasinDepths", "Storm", "average_storm", "hyetograph_shape", "storm_window"]
+__all__ = [
+    "MEAN",
+    "NEAREST_RECORDER",
+    "BasinDepths",
+    "Storm",
+    "average_storm",
+    "hyetograph_shape",
+    "spread_across_methods",
+    "status_of_total",
+    "storm_window",
+]
 
 MEAN = "mean"
 NEAREST_RECORDER = "nearest-recorder"

@@ -27,6 +27,8 @@ __all__ = [
     "gauge_totals",
     "hyetographs",
     "infilled",
+    "peaks",
+    "share_infilled",
     "spread",
     "storm_table",
     "thiessen",

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Any, NamedTuple
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -23,7 +23,7 @@ _PRECISION = 2.0**-10
 
 @st.composite
 def networks(draw: st.DrawFn, *, at_least: int = 1, at_most: int = 9) -> GaugeNetwork:
-    """Gauges at distinct places of a square of 24 km around the origin, in any order, in or out of line."""
+    """Draw gauges at distinct places of a square of 24 km around the origin, in any order, in or out of line."""
     count = st.integers(-_REACH, _REACH)
     places = draw(st.lists(st.tuples(count, count), min_size=at_least, max_size=at_most, unique=True))
     xy = np.array(places, dtype=float) * GRAIN
@@ -33,7 +33,7 @@ def networks(draw: st.DrawFn, *, at_least: int = 1, at_most: int = 9) -> GaugeNe
 
 @st.composite
 def outlines(draw: st.DrawFn) -> shapely.Polygon:
-    """A star-shaped outline of 3 to 12 corners, 2 to 10 km from a middle near the origin."""
+    """Draw a star-shaped outline of 3 to 12 corners, 2 to 10 km from a middle near the origin."""
     n = draw(st.integers(3, 12))
     far = np.array(draw(st.lists(st.integers(20, 100), min_size=n, max_size=n)), dtype=float) * GRAIN
     middle = np.array(draw(st.tuples(st.integers(-30, 30), st.integers(-30, 30))), dtype=float) * GRAIN
@@ -44,7 +44,7 @@ def outlines(draw: st.DrawFn) -> shapely.Polygon:
 
 @st.composite
 def divided_basins(draw: st.DrawFn) -> Basins:
-    """Two or more adjoining basins that fill one outline: it is cut along one bent line; no union row yet."""
+    """Draw two or more adjoining basins that fill one outline: it is cut along one bent line; no union row yet."""
     outline = draw(outlines())
     west, south, east, north = outline.bounds
     heights = np.linspace(south, north, draw(st.integers(2, 5)))
@@ -61,7 +61,7 @@ def divided_basins(draw: st.DrawFn) -> Basins:
 
 @st.composite
 def overlapping_basins(draw: st.DrawFn) -> Basins:
-    """One to three outlines that may lie apart, touch, nest and overlap."""
+    """Draw one to three outlines that may lie apart, touch, nest and overlap."""
     shapes = draw(st.lists(outlines(), min_size=1, max_size=3))
     return Basins(ids=tuple("abc"[: len(shapes)]), polygons=np.array(shapes, dtype=object), crs="local")
 
@@ -81,9 +81,9 @@ class Case(NamedTuple):
 
 
 @st.composite
-def cases(draw: st.DrawFn, basins: st.SearchStrategy[Basins] | None = None, **counts: Any) -> Case:  # noqa: ANN401
-    """A whole case for the averaging methods."""
-    network = draw(networks(**counts))
+def cases(draw: st.DrawFn, basins: st.SearchStrategy[Basins] | None = None, *, at_least: int = 1) -> Case:
+    """Draw a whole case for the averaging methods."""
+    network = draw(networks(at_least=at_least))
     n = len(network)
     depths = np.array(draw(st.lists(st.integers(0, 2000), min_size=n, max_size=n)), dtype=float) / 10
     present = np.array(draw(st.lists(st.booleans(), min_size=n, max_size=n)))

@@ -77,20 +77,22 @@ def test_network_that_changes() -> None:
     assert (note.code, "B not in service throughout" in note.text) == ("network-changed", True)
 
 
-def storm_notes(depth: list[list[float]], network: GaugeNetwork, methods: tuple[str, ...]) -> list[Note]:
+def storm_notes(
+    depth: list[list[float]], network: GaugeNetwork, methods: tuple[str, ...], depth_unit: str = "mm"
+) -> list[Note]:
     completed = complete(
         record_of(depth, network), network, InfillOptions(method="station-average", scale="step", min_donors=1)
     )
     basins = square()
-    depths = [(m, average_storm(completed, averaging_method(m)(network, basins))) for m in methods]
-    return list(storm_cautions("Q", network, basins, depths))
+    depths = {m: average_storm(completed, averaging_method(m)(network, basins)) for m in methods}
+    return list(storm_cautions("Q", network, basins, depths, depth_unit=depth_unit))
 
 
 def test_one_gauge_over_half_of_the_weight() -> None:
     """A gauge at 2 km and one at 12 km share a 10 km square as 70 to 30: the first dominates."""
     (note,) = storm_notes([[5, 5]], at((2e3, 5e3), (12e3, 5e3)), ("thiessen",))
-    assert (note.code, note.gauge, note.basin, note.method) == ("one-gauge-dominates", "A", "all", "thiessen")
-    assert "Gauge A has 70 % of the weight" in note.text
+    assert (note.code, note.gauge, note.basin) == ("one-gauge-dominates", "A", "all")
+    assert note.text == "Gauge A has over half of the weight in basin all: 70 % by thiessen."
     assert storm_notes([[5, 5]], at((2.5e3, 5e3), (7.5e3, 5e3)), ("thiessen",)) == []
 
 
@@ -99,15 +101,18 @@ def test_much_of_the_mean_on_infilled_values() -> None:
     network = at((2.5e3, 5e3), (7.5e3, 5e3))
     assert storm_notes([[5, 5], [5, NAN]], network, ("thiessen",)) == []
     (note,) = storm_notes([[5, NAN], [5, NAN]], network, ("thiessen",))
-    assert (note.code, "50 % of the mean" in note.text) == ("much-infilled", True)
+    assert (note.code, "50 % by thiessen" in note.text) == ("much-infilled", True)
+    assert note.text == "Much of the mean of basin all rests on infilled values: 50 % by thiessen."
 
 
 def test_methods_apart() -> None:
-    """Arithmetic 20, Thiessen .7·10 + .3·30 = 16: 4 mm or 22 % of 18 apart. Equal depths are not apart."""
+    """Arithmetic 20, Thiessen .6·10 + .4·30 = 18: 2 mm or 11 % of 19 apart. Equal depths are not apart."""
     network = at((2e3, 5e3), (10e3, 5e3))
     notes = storm_notes([[10, 30]], network, ("arithmetic", "thiessen"))
     apart = [note for note in notes if note.code == "methods-apart"]
     assert [note.text for note in apart] == ["The methods give basin all from 18.0 to 20.0 mm, 2.0 mm or 11 % apart."]
+    inches = [n.text for n in storm_notes([[10, 30]], network, ("arithmetic", "thiessen"), "in") if n.code == "methods-apart"]
+    assert inches == ["The methods give basin all from 0.71 to 0.79 in, 0.08 in or 11 % apart."]
     assert "methods-apart" not in [n.code for n in storm_notes([[9, 9]], network, ("arithmetic", "thiessen"))]
 
 
@@ -118,9 +123,9 @@ def test_weights_rebuilt_is_said() -> None:
         record_of([[5, 5], [5, NAN]], network), network, InfillOptions(method="station-average", scale="step", min_donors=2)
     )
     depths = average_storm(completed, averaging_method("thiessen")(network, square()))
-    notes = list(storm_cautions("Q", network, square(), [("thiessen", depths)]))
+    notes = list(storm_cautions("Q", network, square(), {"thiessen": depths}))
     assert [note.code for note in notes] == ["weights-rebuilt"]
-    assert notes[0].text.startswith("At 1 steps some gauge had no value")
+    assert notes[0].text.startswith("At 1 step some gauge had no value")
 
 
 def test_a_basin_without_a_number_raises_no_false_warning() -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import runpy
 import subprocess
 import sys
 import tomllib
@@ -208,6 +209,24 @@ def test_elevations_lie_in_the_range_of_their_basin() -> None:
         inside = frame[shapely.contains_xy(basin.geometry, frame["lon"].to_numpy(), frame["lat"].to_numpy())]
         assert len(inside) >= 2
         assert inside["elevation_m"].between(basin["lowest_m"], basin["highest_m"]).all()
+
+
+def test_readme_tells_what_the_gauges_would_have_caught() -> None:
+    """The README's true totals are the script's, which agree with the file wherever a gauge has its whole storm."""
+    script = runpy.run_path(str(DEMO / "make_demo.py"))
+    rng = np.random.default_rng(script["SEED"])
+    script["basins"](rng)
+    script["normals"](rng)
+    true = pd.DataFrame(script["rain"](rng), columns=[gauge[0] for gauge in script["GAUGES"]], index=hourly().index)
+    complete = hourly().columns[hourly().notna().all()]
+    assert len(complete) == 8
+    assert np.allclose(true[complete], hourly()[complete], atol=1e-9)
+    main, second = true[during("October front")].sum(), true[during("Following wave")].sum()
+    text = " ".join((DEMO / "README.md").read_text(encoding="utf-8").split())
+    assert (
+        f"in the main storm R04 {main['R04']:.1f} mm, R06 {main['R06']:.1f} mm, R09 {main['R09']:.1f} mm; "
+        f"in the second R09 {second['R09']:.1f} mm." in text
+    )
 
 
 def test_handbook_rectangle_has_the_published_corners_and_its_stated_answers() -> None:

@@ -245,6 +245,9 @@ def _pieces(network: GaugeNetwork, basins: Basins, mask: npt.NDArray[np.bool_], 
     """Cut the first ``n_clipped`` basins by the cells of the present gauges; prove that nothing is lost or doubled."""
     cells = thiessen_cells(network, mask, around=basins.bounds)
     polygons, areas = basins.polygons[:n_clipped], basins.areas[:n_clipped]
+    if shapely.get_precision(polygons).any():
+        # A polygon with a precision of its own would have the corners of its pieces rounded to it.
+        polygons = np.asarray(shapely.set_precision(polygons, 0.0), dtype=object)
     at = np.flatnonzero(mask)
     nearby, basin = shapely.STRtree(polygons).query(cells[at])
     gauge = at[nearby]

@@ -197,7 +197,7 @@ class InfillTable(_Table):
     method: Annotated[str, _one_of(infill.METHODS)] = "inverse-distance"
     scale: Annotated[str, _one_of(("step", "day", "storm"))] | None = None
     longest_gap: Positive = 31.0
-    nearest: Count | None = None
+    nearest: Count | Literal["all"] | None = None
     radius: Positive | None = None
     min_donors: Count = 2
     power: Positive = 2.0

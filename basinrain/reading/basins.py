@@ -277,6 +277,8 @@ def _repair(
         ).lower()
         repaired = shapely.make_valid(polygon, method="structure", keep_collapsed=False)
         by_lines = shapely.make_valid(polygon, method="linework")
+        if max(polygon.area, repaired.area, by_lines.area) <= 0:
+            continue
         change = max(abs(other.area - polygon.area) for other in (repaired, by_lines))
         if repaired.geom_type in ("Polygon", "MultiPolygon") and change < _REPAIR_CHANGE * polygon.area:
             polygons[place] = repaired

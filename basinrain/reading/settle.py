@@ -136,22 +136,26 @@ def _check_near(network: GaugeNetwork, basins: Basins) -> None:
     away, limit, gauge = _nearest(x, y, network.crs, polygons, basins.crs)
     if away <= limit:
         return
-    swapped = ""
+    swapped = []
     if _may_swap(x, y, network.crs) and _is_near(_nearest(y, x, network.crs, polygons, basins.crs)):
-        swapped = f"{_pair(network.crs)} of the gauges look swapped"
-    elif _may_swap(*_xy(polygons), basins.crs):
+        swapped.append(f"{_pair(network.crs)} of the gauges")
+    if _may_swap(*_xy(polygons), basins.crs):
         flipped = shapely.transform(polygons, lambda xy: xy[:, ::-1])
         if _is_near(_nearest(x, y, network.crs, flipped, basins.crs)):
-            swapped = f"{_pair(basins.crs)} of the basins look swapped"
-    how_far = f"{away / 1000:,.0f} km away" if np.isfinite(away) else "off the map"
+            swapped.append(f"{_pair(basins.crs)} of the basins")
+    how_far = f"{_km(away)} away" if np.isfinite(away) else "off the map"
     raise DataError(
         Problem(
             item="gauges and basins",
             found=f"them nowhere near each other: gauge {network.ids[gauge]}, the nearest, is {how_far}",
-            expected=f"a gauge within {limit / 1000:,.0f} km of the basins",
-            remedy=swapped or "check both files and their crs",
+            expected=f"a gauge within {_km(limit)} of the basins",
+            remedy=f"{', or '.join(swapped)} look swapped" if swapped else "check both files and their crs",
         )
     )
+
+
+def _km(metres: float) -> str:
+    return f"{metres / 1000:,.0f} km" if metres >= 10_000 else f"{metres / 1000:.3g} km"
 
 
 def _pair(crs: str) -> str:

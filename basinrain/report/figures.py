@@ -1,7 +1,7 @@
 """What all figures share: their style, and how a figure becomes a piece of the page.
 
-Only matplotlib's object interface is used, with a style that no local setting changes, so that the same run always gives
-the same bytes. Text stays text: it can be searched, read aloud and copied.
+Only matplotlib's object interface is used, with a style that no local setting changes, so that the same run always
+gives the same bytes. Text stays text: it can be searched, read aloud and copied.
 """
 
 from __future__ import annotations
@@ -12,7 +12,7 @@ import warnings
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
-from typing import Final
+from typing import Any, Final
 from xml.etree import ElementTree as ET
 
 import matplotlib.style
@@ -20,7 +20,7 @@ from markupsafe import Markup
 from matplotlib.backends.backend_svg import FigureCanvasSVG
 from matplotlib.figure import Figure
 
-__all__ = ["HALO", "HALF_WIDTH", "INK", "LINES", "MARKS", "PAGE_WIDTH", "Picture", "figure_style", "to_svg"]
+__all__ = ["HALF_WIDTH", "HALO", "INK", "LINES", "MARKS", "PAGE_WIDTH", "Picture", "figure_style", "to_svg"]
 
 PAGE_WIDTH: Final = 6.9
 """Width in inches of a figure that takes the width of a page."""
@@ -33,7 +33,7 @@ HALO: Final = "halo"
 """Artists whose ``gid`` begins with this word have their text drawn on a white rim."""
 
 # Told apart without colour: outline, fill and shape; solid, dashed, dotted.
-MARKS: Final = (
+MARKS: Final[tuple[dict[str, Any], ...]] = (
     {"marker": "o", "markerfacecolor": "white"},
     {"marker": "s", "markerfacecolor": "black"},
     {"marker": "^", "markerfacecolor": "#9a9a9a"},
@@ -141,7 +141,7 @@ def to_svg(figure: Figure, name: str, title: str, description: str) -> Markup:
     """
     buffer = io.StringIO()
     nothing = dict.fromkeys(("Date", "Creator", "Type", "Format"))
-    FigureCanvasSVG(figure).print_svg(buffer, metadata=nothing)
+    FigureCanvasSVG(figure).print_svg(buffer, metadata=nothing)  # type: ignore[no-untyped-call]
     root = ET.fromstring(buffer.getvalue())  # noqa: S314 - matplotlib's own output
     _tidy(root, name)
     for tag, text in (("desc", description), ("title", title)):
@@ -201,5 +201,5 @@ def _tidy(root: ET.Element, name: str) -> None:
         if "d" in element.attrib:
             element.set("d", " ".join(element.attrib["d"].split()))
         element.tail = None if not (element.tail or "").strip() else element.tail
-        if element.tag != "text" and element.tag != "tspan" and not (element.text or "").strip():
+        if element.tag not in ("text", "tspan") and not (element.text or "").strip():
             element.text = None

@@ -9,8 +9,8 @@ import shapely
 
 from basinrain.basins import UNION
 from basinrain.report import limits
-from basinrain.report.table import Table
-from basinrain.report.words import DASH, counted, depth_text, number_text, unit_text
+from basinrain.report.table import Table, lines
+from basinrain.report.words import DASH, counted, depth_text, number_text, unit_text, unit_word
 from basinrain.results import StormRun
 from basinrain.units import length_factor
 
@@ -66,16 +66,15 @@ def _others(run: StormRun, listed: int) -> tuple[str, ...]:
     if not rest:
         return ()
     return (
-        f"{counted(rest, 'gauge', 'gauges')} with a weight below {limits.LISTED_WEIGHT} everywhere not shown; "
-        "all are in gauge_totals.csv.",
+        f"Not shown: {counted(rest, 'gauge')} with a weight below {limits.LISTED_WEIGHT} everywhere.",
+        "All are in gauge_totals.csv.",
     )
 
 
 def totals_tables(run: StormRun) -> list[Table]:
     """Return what the gauges recorded, a few storms side by side in each table."""
-    frame = run.gauge_totals.set_index(["storm", "gauge"])
+    totals = {(row.storm, row.gauge): row for row in lines(run.gauge_totals)}
     listed = [run.network.ids[g] for g in np.flatnonzero(limits.listed_gauges(run))]
-    unit = unit_text(run.depth_unit)
     tables = []
     names = [result.storm.name for result in run.storms][: 2 * _STORMS_ABREAST]
     for first in range(0, len(names), _STORMS_ABREAST):
@@ -84,25 +83,30 @@ def totals_tables(run: StormRun) -> list[Table]:
         for gauge in listed:
             cells = [gauge]
             for storm in storms:
-                found = frame.loc[(storm, gauge)]
+                found = totals[storm, gauge]
                 cells += [
-                    depth_text(float(found["depth"]), run.depth_unit),
-                    str(found["status"]),
-                    f"{found['steps_observed']} of {found['steps_total']}",
+                    depth_text(found.depth, run.depth_unit),
+                    found.status,
+                    f"{found.steps_observed} of {found.steps_total}",
                 ]
             rows.append(tuple(cells))
         more = len(run.storms) - len(names)
         tables.append(
             Table(
-                caption=f"Storm totals of the gauges, {unit}",
+                caption=f"Storm totals of the gauges, {unit_word(run.depth_unit)}",
                 heads=("gauge", *(("depth", "status", "steps observed") * len(storms))),
                 over=(("", 1), *((storm, 3) for storm in storms)),
                 align="t" + "ntn" * len(storms),
                 rows=rows,
                 notes=(
-                    f"{DASH}: no total is known, nor could one be estimated. 'Spread' is a depth measured over a longer time.",
+                    f"{DASH}: no total is known or could be estimated.",
+                    "Spread: a depth measured over a longer time.",
                     *_others(run, len(listed)),
-                    *((f"{more} more storms are in gauge_totals.csv.",) if more and first + len(storms) == len(names) else ()),
+                    *(
+                        (f"{more} more storms are in gauge_totals.csv.",)
+                        if more and first + len(storms) == len(names)
+                        else ()
+                    ),
                 ),
             )
         )

@@ -17,9 +17,8 @@ from matplotlib.ticker import MaxNLocator
 
 from basinrain.report import limits
 from basinrain.report.figures import HALF_WIDTH, INK, LINES, Picture, figure_style, to_svg
-from basinrain.report.words import depth_text, inline, step_text, unit_text
+from basinrain.report.words import depth_text, inline, step_text, unit_text, when_text, zone_text
 from basinrain.results import StormResult, StormRun
-from basinrain.tables import time_text
 from basinrain.units import depth_factor
 
 __all__ = ["MOST_BARS", "binned", "hyetograph_pictures", "lead_method"]
@@ -83,7 +82,8 @@ def hyetograph_pictures(run: StormRun, result: StormResult, number: int) -> list
     mass = max((float(np.nansum(depth[:, b])) for depth in series.values() for b in drawn), default=0.0)
     with figure_style():
         return [
-            _picture(run, result, series, lead, b, (peak or 1.0, mass or 1.0), f"hyetograph-{number}-{b + 1}") for b in drawn
+            _picture(run, result, series, lead, b, tops=(peak or 1.0, mass or 1.0), name=f"hyetograph-{number}-{b + 1}")
+            for b in drawn
         ]
 
 
@@ -93,14 +93,15 @@ def _picture(
     series: Mapping[str, npt.NDArray[np.float64]],
     lead: str,
     b: int,
+    *,
     tops: tuple[float, float],
     name: str,
 ) -> Picture:
     record = result.completed.record
     depth, together = binned(series[lead][:, b], MOST_BARS)
-    starts = date2num(record.starts[::together])
+    starts = date2num(record.starts[::together])  # type: ignore[no-untyped-call]
     last = np.minimum(np.arange(len(starts)) * together + together, len(record)) - 1
-    ends = date2num(record.ends[last])
+    ends = date2num(record.ends[last])  # type: ignore[no-untyped-call]
     unit = unit_text(run.depth_unit)
     lines = -(-len(series) // 3)
     head = 0.32 + 0.15 * (1 + lines)
@@ -126,7 +127,9 @@ def _picture(
     edges = np.append(starts[0], ends)
     for m, (_, depths) in enumerate(series.items()):
         cumulative = np.append(0.0, np.cumsum(depths[:, b])[last])
-        lower.plot(edges, cumulative, linestyle=LINES[m % len(LINES)], color="black" if m != 1 else "#5a6268", linewidth=1.2)
+        lower.plot(
+            edges, cumulative, linestyle=LINES[m % len(LINES)], color="black" if m != 1 else "#5a6268", linewidth=1.2
+        )
     handles: list[Any] = [Patch(facecolor="#8d969c", edgecolor=INK, linewidth=0.4, label=f"depth by {lead}")]
     if gaps.any():
         handles.append(Patch(facecolor="white", hatch="////", edgecolor=_NO_NUMBER, label="no number"))
@@ -134,11 +137,15 @@ def _picture(
     step = step_text(record.step) if together == 1 else f"{together} × {step_text(record.step)}"
     upper.set_ylabel(f"{unit} in {step}")
     lower.set_ylabel(f"sum, {unit}")
-    lower.set_xlabel(f"time, UTC{record.zone}" if record.zone else "time, the record's clock")
-    figure.text(0.02, 1 - 0.03 / total, inline(run.basins.ids[b], 44), ha="left", va="top", fontsize=8, fontweight="bold")
+    lower.set_xlabel(f"time, {zone_text(record.zone)}")
+    figure.text(
+        0.02, 1 - 0.03 / total, inline(run.basins.ids[b], 44), ha="left", va="top", fontsize=8, fontweight="bold"
+    )
     figure.legend(handles=handles, loc="upper left", bbox_to_anchor=(0.02, 1 - 0.2 / total), ncols=2, handletextpad=0.5)
     masses = [
-        Line2D([], [], linestyle=LINES[m % len(LINES)], color="black" if m != 1 else "#5a6268", linewidth=1.2, label=method)
+        Line2D(
+            [], [], linestyle=LINES[m % len(LINES)], color="black" if m != 1 else "#5a6268", linewidth=1.2, label=method
+        )
         for m, method in enumerate(series)
     ]
     figure.legend(
@@ -155,7 +162,9 @@ def _picture(
     if together > 1:
         caption += f" A bar adds up {together} steps."
     title = inline(f"Hyetograph and mass curves of basin {run.basins.ids[b]}, {storm}")
-    return Picture(name, caption, to_svg(figure, name, title, inline(_description(run, result, series, lead, b))), half=True)
+    return Picture(
+        name, caption, to_svg(figure, name, title, inline(_description(run, result, series, lead, b))), half=True
+    )
 
 
 def _mark_gaps(
@@ -164,7 +173,9 @@ def _mark_gaps(
     turns = np.flatnonzero(np.diff(np.concatenate([[False], gaps, [False]]).astype(int)))
     for first, stop in zip(turns[::2], turns[1::2], strict=True):
         for panel in axes:
-            panel.axvspan(starts[first], ends[stop - 1], facecolor="white", hatch="////", edgecolor=_NO_NUMBER, linewidth=0)
+            panel.axvspan(
+                starts[first], ends[stop - 1], facecolor="white", hatch="////", edgecolor=_NO_NUMBER, linewidth=0
+            )
 
 
 def _dress(figure: Figure, upper: Any, lower: Any, tops: tuple[float, float], span: tuple[float, float]) -> None:  # noqa: ANN401 - matplotlib's axes
@@ -176,10 +187,11 @@ def _dress(figure: Figure, upper: Any, lower: Any, tops: tuple[float, float], sp
         for side in ("top", "right"):
             axes.spines[side].set_visible(False)
     upper.set_xlim(*span)
-    locator = AutoDateLocator(tz=UTC, minticks=3, maxticks=6)  # the record's own clock, never the machine's
+    # In the record's own clock, never the machine's.
+    locator = AutoDateLocator(tz=UTC, minticks=3, maxticks=6)  # type: ignore[no-untyped-call]
     lower.xaxis.set_major_locator(locator)
     # Digits only: the names of months would follow the machine's language.
-    formatter = ConciseDateFormatter(
+    formatter = ConciseDateFormatter(  # type: ignore[no-untyped-call]
         locator,
         tz=UTC,
         formats=["%Y", "%Y-%m", "%m-%d", "%H:%M", "%H:%M", "%H:%M:%S"],
@@ -200,5 +212,5 @@ def _description(
     if np.isnan(depth).all():
         return text
     t = int(np.nanargmax(depth))
-    when = time_text(result.completed.record.ends[t], run.record.zone)
+    when = when_text(result.completed.record.ends[t])
     return f"{text} Largest step by {lead}: {depth_text(float(depth[t]), run.depth_unit)}, ending {when}."

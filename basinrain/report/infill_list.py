@@ -9,9 +9,9 @@ import numpy as np
 from basinrain.infill.completed import Estimate
 from basinrain.report import limits
 from basinrain.report.table import Row, Table
-from basinrain.report.words import DASH, counted, depth_text, percent_text, unit_text, weight_text
+from basinrain.report.words import DASH, depth_text, percent_text, unit_word, weight_text, when_text, zone_text
 from basinrain.results import StormResult, StormRun
-from basinrain.tables import share_infilled, time_text
+from basinrain.tables import share_infilled
 from basinrain.units import depth_factor
 
 __all__ = ["estimate_tables", "infilled_shares"]
@@ -36,17 +36,24 @@ def _each(run: StormRun, result: StormResult) -> Table:
     record = result.completed.record
     rows: list[Row] = []
     for e in result.completed.estimates:
-        when = time_text(record.ends[e.stop - 1], run.record.zone) if e.scale != "storm" else ""
+        when = DASH if e.scale == "storm" else when_text(record.ends[e.stop - 1])
         depth = depth_text(e.depth / mm, run.depth_unit)
-        rows.append((e.gauge, e.scale, when or DASH, depth, e.method, _donors(e.donors)))
+        rows.append((e.gauge, e.scale, when, depth, e.method, _donors(e.donors)))
     return Table(
-        caption=f"{result.storm.name}: estimates, {unit_text(run.depth_unit)}",
-        heads=("gauge", "scale", "ending", "depth", "method", "donors and their weights"),
+        caption=f"{result.storm.name}: estimates, {unit_word(run.depth_unit)}",
+        heads=(
+            "gauge",
+            "scale",
+            f"ending, {zone_text(run.record.zone)}",
+            "depth",
+            "method",
+            "donors and their weights",
+        ),
         align="tttntt",
         rows=rows,
         notes=(
-            "An estimate is the weighted sum of the donors' depths over the same time. That of a day or storm is the whole "
-            "total, what was observed of it included.",
+            "An estimate is the weighted sum of the donors' depths over the same time.",
+            "That of a day or storm is the whole total, what was observed of it included.",
         ),
     )
 
@@ -65,8 +72,8 @@ def _by_gauge(run: StormRun, result: StormResult) -> Table:
                 gauge,
                 scale,
                 str(len(estimates)),
-                time_text(record.ends[first.stop - 1], run.record.zone) or DASH,
-                time_text(record.ends[last.stop - 1], run.record.zone) or DASH,
+                when_text(record.ends[first.stop - 1]),
+                when_text(record.ends[last.stop - 1]),
                 depth_text(sum(e.depth for e in estimates) / mm, run.depth_unit),
                 method,
                 _donor_ranges(estimates),
@@ -74,13 +81,20 @@ def _by_gauge(run: StormRun, result: StormResult) -> Table:
         )
     more = len(groups) - len(rows)
     return Table(
-        caption=f"{result.storm.name}: {len(result.completed.estimates)} estimates by gauge, {unit_text(run.depth_unit)}",
-        heads=("gauge", "scale", "estimates", "first ending", "last ending", "sum", "method", "donors, least to greatest weight"),
+        caption=f"{result.storm.name}: estimates by gauge, {unit_word(run.depth_unit)}",
+        heads=(
+            "gauge",
+            "scale",
+            "estimates",
+            f"first ending, {zone_text(run.record.zone)}",
+            "last ending",
+            "sum",
+            "method",
+            "donors, least to greatest weight",
+        ),
         align="ttnttntt",
         rows=rows,
-        notes=(
-            "Every single estimate is in infilled.csv." + (f" {more} more gauges are only there." if more else ""),
-        ),
+        notes=("Every single estimate is in infilled.csv." + (f" {more} more gauges are only there." if more else ""),),
     )
 
 
@@ -103,9 +117,11 @@ def infilled_shares(run: StormRun) -> Table | None:
     rows: list[Row] = []
     for result in run.storms:
         share = np.array([share_infilled(result, method) for method in result.depths])
-        for b in limits.drawn_basins(run):
-            if (np.nan_to_num(share[:, b]) > 0).any():
-                rows.append((result.storm.name, run.basins.ids[b], *(percent_text(float(s)) for s in share[:, b])))
+        rows += [
+            (result.storm.name, run.basins.ids[b], *(percent_text(float(s)) for s in share[:, b]))
+            for b in limits.drawn_basins(run)
+            if (np.nan_to_num(share[:, b]) > 0).any()
+        ]
     if not rows:
         return None
     n = len(run.methods)

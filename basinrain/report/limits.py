@@ -12,9 +12,12 @@ from basinrain.basins import UNION
 from basinrain.results import StormResult, StormRun
 
 __all__ = [
+    "BASINS",
     "ESTIMATES",
+    "GAUGES",
     "LISTED_WEIGHT",
     "STEPS",
+    "STORMS",
     "drawn_basins",
     "drawn_storms",
     "left_out",
@@ -75,7 +78,7 @@ def listed_gauges(run: StormRun) -> npt.NDArray[np.bool_]:
 
 
 def same_storms(run: StormRun, key: Callable[[StormResult], Hashable]) -> list[tuple[StormResult, tuple[str, ...]]]:
-    """Return the first storm of every set of storms that look the same, with the names of that set, at most a few sets."""
+    """Return the first storm of every set that looks the same, with the names of that set; at most a few sets."""
     groups: dict[Hashable, list[StormResult]] = {}
     for result in run.storms:
         groups.setdefault(key(result), []).append(result)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable
+from dataclasses import dataclass
 from typing import Any, Final
 
 import numpy as np
@@ -21,8 +22,8 @@ from basinrain.basins import UNION
 from basinrain.ground import LOCAL, LONLAT, transform
 from basinrain.report import limits
 from basinrain.report.figures import HALO, INK, PAGE_WIDTH, Picture, figure_style, to_svg
-from basinrain.report.labels import Box, LabelPlacer
-from basinrain.report.words import counted, depth_text, inline, unit_text
+from basinrain.report.labels import Box, Label, LabelPlacer
+from basinrain.report.words import counted, depth_text, inline, unit_word
 from basinrain.results import StormResult, StormRun
 from basinrain.storms import status_of_total
 from basinrain.units import depth_factor
@@ -31,8 +32,12 @@ __all__ = ["map_pictures"]
 
 _REACH: Final = 0.6  # gauges farther from the basins than this share of their box are only named
 _TALLEST: Final = 7.2
+_FEW: Final = 40  # gauges that still have their totals beside them
+_LONGEST: Final = 18  # letters of a label
 _LEFT, _RIGHT, _BOTTOM, _LINE_HEIGHT = 0.55, 0.1, 0.42, 0.15  # inches
 _TOUCH: Final = 1e-3
+
+Shape = Any
 
 # Fill and overlay of a gauge's mark, by the status of its total.
 _FILLS: Final[dict[str, dict[str, Any]]] = {
@@ -77,35 +82,34 @@ class _Ground:
         pad = 0.06 * max(east - west, north - south)
         self.west, self.south, self.east, self.north = west - pad, south - 2 * pad, east + pad, north + pad
         pixel = max(self.east - self.west, self.north - self.south) / (PAGE_WIDTH * 72)
-        union = basins.polygons[basins.ids.index(UNION)] if UNION in basins.ids else basins.union
+        union: Shape = basins.polygons[basins.ids.index(UNION)] if UNION in basins.ids else basins.union
         self.area = union.simplify(pixel / 2)
-        self.points = shapely.points(x, y)
-        self.inside: npt.NDArray[np.bool_] = shapely.dwithin(self.points, union, _TOUCH)
+        self.inside: npt.NDArray[np.bool_] = np.asarray(shapely.dwithin(shapely.points(x, y), union, _TOUCH))
         # Nodes and merges, so that an edge of two basins is drawn once and simplified once.
         borders = shapely.unary_union(shapely.boundary(basins.polygons))
         self.borders = _merged(borders).simplify(pixel / 2)
         self.cells = self._cells(run, union, pixel)
 
     @staticmethod
-    def _cells(run: StormRun, union: shapely.Geometry, pixel: float) -> shapely.Geometry:
+    def _cells(run: StormRun, union: Shape, pixel: float) -> Shape:
         basin, _, polygons, _ = thiessen_pieces(run.network, run.basins)
         whole = run.basins.ids.index(UNION) if UNION in run.basins.ids else None
         pieces = polygons if whole is None else polygons[np.asarray(basin) == whole]
-        edges = shapely.unary_union(shapely.boundary(pieces))
+        edges: Shape = shapely.unary_union(shapely.boundary(pieces))
         rim = shapely.boundary(union).buffer(pixel / 4, quad_segs=1)
         return _merged(edges.difference(rim)).simplify(pixel / 2)
 
 
-def _merged(lines: shapely.Geometry) -> shapely.Geometry:
+def _merged(lines: Shape) -> Shape:
     return lines if lines.geom_type == "LineString" else shapely.line_merge(lines)
 
 
-def _lines(geometry: shapely.Geometry) -> list[npt.NDArray[np.float64]]:
+def _lines(geometry: Shape) -> list[npt.NDArray[np.float64]]:
     return [shapely.get_coordinates(part) for part in shapely.get_parts(geometry) if part.length > 0]
 
 
-def _path(geometry: shapely.Geometry) -> Path:
-    rings: list[shapely.Geometry] = []
+def _path(geometry: Shape) -> Path:
+    rings: list[Shape] = []
     for polygon in shapely.get_parts(geometry):
         rings += [polygon.exterior, *polygon.interiors]
     return Path.make_compound_path(*(Path(shapely.get_coordinates(ring), closed=True) for ring in rings))
@@ -113,7 +117,7 @@ def _path(geometry: shapely.Geometry) -> Path:
 
 def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[str, ...], number: int) -> Picture:
     statuses = _statuses(result)
-    handles = _legend(run, ground, statuses)
+    handles = _legend(ground, statuses)
     legend_columns = 3
     head = 0.12 + _LINE_HEIGHT * math.ceil(len(handles) / legend_columns)
     wide, high = ground.east - ground.west, ground.north - ground.south
@@ -129,18 +133,20 @@ def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[s
     axes.set_xlim(ground.west, ground.east)
     axes.set_ylim(ground.south, ground.north)
     axes.add_patch(PathPatch(_path(ground.area), facecolor="#eef0ee", edgecolor="none", zorder=1))
-    axes.add_collection(LineCollection(_lines(ground.cells), colors=INK, linewidths=0.7, linestyles=[(0, (3, 2))], zorder=2))
+    axes.add_collection(
+        LineCollection(_lines(ground.cells), colors=INK, linewidths=0.7, linestyles=[(0, (3, 2))], zorder=2)
+    )
     axes.add_collection(LineCollection(_lines(ground.borders), colors=INK, linewidths=1.2, zorder=3))
     for axis in (axes.xaxis, axes.yaxis):
         axis.set_major_locator(MaxNLocator(6))
         axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value / 1000:g}".replace("-", "−")))
     axes.set_xlabel("easting in the working plane, km")
     axes.set_ylabel("northing, km")
-    for mark, gauges in _marks(run, ground, statuses).items():
+    for mark, gauges in _marks(ground, statuses).items():
         axes.plot(run.network.x[gauges], run.network.y[gauges], **_mark_style(*mark), linestyle="none", zorder=5)
     scale = width * 72 / wide  # points a metre
-    placer = LabelPlacer(Box(0, 0, width * 72, height * 72))
-    unlabelled = _label(axes, run, ground, result, placer, scale)
+    sheet = _Sheet(axes, ground, scale, LabelPlacer(Box(0, 0, width * 72, height * 72)))
+    unlabelled = _label(sheet, run, result)
     _scale_bar(axes, ground, scale)
     if run.plane.crs != LOCAL:
         _north(axes, run, ground, scale)
@@ -160,7 +166,7 @@ def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[s
         f"{counted(int(ground.on_map.sum()), 'gauge')} with Thiessen cells. "
         + "; ".join(
             f"{_mark_words(*mark)}: {', '.join(run.network.ids[g] for g in gauges[:40])}"
-            for mark, gauges in _marks(run, ground, statuses).items()
+            for mark, gauges in _marks(ground, statuses).items()
         )
         + "."
     )
@@ -169,8 +175,10 @@ def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[s
 
 
 def _caption(run: StormRun, ground: _Ground, storms: str, unlabelled: int) -> str:
-    parts = ["Basins, Thiessen cells with every gauge of the network present, and gauges with their storm total in "
-             f"{unit_text(run.depth_unit)}" + (f" ({storms})." if storms else ".")]
+    parts = [
+        "Basins, Thiessen cells with every gauge of the network present, and gauges with their storm total in "
+        f"{unit_word(run.depth_unit)}" + (f" ({storms})." if storms else ".")
+    ]
     away = [run.network.ids[g] for g in np.flatnonzero(~ground.on_map)]
     if away:
         listed = ", ".join(away[:12]) + (f" and {len(away) - 12} more" if len(away) > 12 else "")
@@ -185,7 +193,7 @@ def _caption(run: StormRun, ground: _Ground, storms: str, unlabelled: int) -> st
 Mark = tuple[str, bool]
 
 
-def _marks(run: StormRun, ground: _Ground, statuses: Iterable[str]) -> dict[Mark, list[int]]:
+def _marks(ground: _Ground, statuses: Iterable[str]) -> dict[Mark, list[int]]:
     marks: dict[Mark, list[int]] = {}
     for g, status in enumerate(statuses):
         if ground.on_map[g]:
@@ -212,10 +220,10 @@ def _mark_words(status: str, inside: bool) -> str:  # noqa: FBT001 - one half of
     return f"{'gauge' if inside else 'gauge outside'}, {_WORDS.get(status, status)}"
 
 
-def _legend(run: StormRun, ground: _Ground, statuses: Iterable[str]) -> list[Line2D]:
+def _legend(ground: _Ground, statuses: Iterable[str]) -> list[Line2D]:
     handles = [
         Line2D([], [], **_mark_style(*mark), linestyle="none", label=_mark_words(*mark))
-        for mark in _marks(run, ground, statuses)
+        for mark in _marks(ground, statuses)
     ]
     handles.append(Line2D([], [], color=INK, linewidth=1.2, label="basin boundary"))
     if not ground.cells.is_empty:
@@ -223,92 +231,81 @@ def _legend(run: StormRun, ground: _Ground, statuses: Iterable[str]) -> list[Lin
     return handles
 
 
-def _label(axes: Any, run: StormRun, ground: _Ground, result: StormResult, placer: LabelPlacer, scale: float) -> int:  # noqa: ANN401 - matplotlib's axes
-    """Label gauges and basins; return how many labels found no room."""
-    network = run.network
-    x, y = (network.x - ground.west) * scale, (network.y - ground.south) * scale
-    shown = np.flatnonzero(ground.on_map)
+@dataclass(frozen=True)
+class _Sheet:
+    """A map being drawn: its axes, their ground, points a metre, and the labels placed so far."""
+
+    axes: Any
+    ground: _Ground
+    scale: float
+    placer: LabelPlacer
+
+    def points(self, x: Any, y: Any) -> tuple[Any, Any]:  # noqa: ANN401 - numbers or arrays
+        """Return positions in points from the map's lower left corner."""
+        return (x - self.ground.west) * self.scale, (y - self.ground.south) * self.scale
+
+    def write(self, place: Label, text: str, gid: str, **style: Any) -> None:  # noqa: ANN401 - a text's properties
+        """Write a text on a white rim."""
+        x, y = self.ground.west + place.x / self.scale, self.ground.south + place.y / self.scale
+        self.axes.text(x, y, text, ha=place.side, va="center", gid=f"{HALO}-{gid}", **style)
+
+
+def _label(sheet: _Sheet, run: StormRun, result: StormResult) -> int:
+    """Label basins and gauges; return how many labels found no room."""
+    network, placer = run.network, sheet.placer
+    x, y = sheet.points(network.x, network.y)
+    shown = np.flatnonzero(sheet.ground.on_map)
+    # Marks, scale bar and arrow stay clear.
     placer.taken += [Box(x[g] - 4, y[g] - 4, x[g] + 4, y[g] + 4) for g in shown]
-    strip = (ground.south + 0.5 * (ground.north - ground.south) * 0.1 - ground.south) * scale
-    placer.taken.append(Box(0, 0, placer.frame.right, min(strip, 26)))
+    placer.taken.append(Box(0, 0, placer.frame.right, 26))
+    lost = _label_basins(sheet, run)
     totals = result.completed.record.depth.sum(axis=0) / depth_factor(run.depth_unit)
-    few = len(shown) <= 40
+    few = len(shown) <= _FEW
     size = 6.5 if few else 5.5
-    lost = 0
-    weight = np.zeros(len(network))
-    for depths in result.depths.values():
-        weight = np.maximum(weight, np.nan_to_num(depths.table.weights).max(axis=0))
-    basins = [b for b, basin in enumerate(run.basins.ids) if basin != UNION]
-    if len(basins) > 1:
-        lost += _label_basins(axes, run, ground, placer, scale, basins)
+    weight = np.max([np.nan_to_num(d.table.weights).max(axis=0) for d in result.depths.values()], axis=0)
     for g in sorted(shown, key=lambda g: (-round(float(weight[g]), 9), network.ids[g])):
-        lines = [inline(network.ids[g], 18)] + ([depth_text(totals[g], run.depth_unit)] if few else [])
+        lines = [inline(network.ids[g], _LONGEST)] + ([depth_text(totals[g], run.depth_unit)] if few else [])
         place = placer.beside(x[g], y[g], lines, size, gap=5.5)
         if place is None and len(lines) > 1:
-            place = placer.beside(x[g], y[g], lines[:1], size, gap=5.5)
             lines = lines[:1]
+            place = placer.beside(x[g], y[g], lines, size, gap=5.5)
         if place is None:
             lost += 1
-            continue
-        axes.text(
-            ground.west + place.x / scale,
-            ground.south + place.y / scale,
-            "\n".join(lines),
-            ha=place.side,
-            va="center",
-            fontsize=size,
-            linespacing=1.0,
-            gid=f"{HALO}-{g}",
-            zorder=7,
-        )
+        else:
+            sheet.write(place, "\n".join(lines), str(g), fontsize=size, linespacing=1.0, zorder=7)
     return lost
 
 
-def _label_basins(
-    axes: Any,  # noqa: ANN401 - matplotlib's axes
-    run: StormRun,
-    ground: _Ground,
-    placer: LabelPlacer,
-    scale: float,
-    basins: list[int],
-) -> int:
+def _label_basins(sheet: _Sheet, run: StormRun) -> int:
+    basins = [b for b, basin in enumerate(run.basins.ids) if basin != UNION]
+    if len(basins) == 1:
+        return 0
     lost = 0
-    size = 8.0 if len(basins) <= 12 else 6.0
+    size = 8.0 if len(basins) <= limits.BASINS else 6.0
+    style = {"fontsize": size, "fontstyle": "italic", "fontweight": "bold", "color": "#4a545b"}
     for b in basins:
-        polygon = run.basins.polygons[b]
-        low = min(polygon.bounds[2] - polygon.bounds[0], polygon.bounds[3] - polygon.bounds[1]) / 60
-        circle = shapely.maximum_inscribed_circle(polygon, tolerance=low)
-        (cx, cy), (rx, ry) = shapely.get_coordinates(circle)[:2]
-        radius = math.hypot(rx - cx, ry - cy)
-        turns = [(0.0, 0.0)] + [
-            (r * math.cos(a * math.pi / 4), r * math.sin(a * math.pi / 4)) for r in (0.35, 0.7) for a in range(8)
+        west, south, east, north = run.basins.polygons[b].bounds
+        circle = shapely.maximum_inscribed_circle(
+            run.basins.polygons[b], tolerance=min(east - west, north - south) / 60
+        )
+        (x, y), (rim_x, rim_y) = shapely.get_coordinates(circle)[:2]
+        radius = math.hypot(rim_x - x, rim_y - y)
+        steps = [(0.0, 0.0)] + [
+            (share * radius * math.cos(turn * math.pi / 4), share * radius * math.sin(turn * math.pi / 4))
+            for share in (0.35, 0.7)
+            for turn in range(8)
         ]
-        places = [
-            ((cx + dx * radius - ground.west) * scale, (cy + dy * radius - ground.south) * scale) for dx, dy in turns
-        ]
-        text = inline(run.basins.ids[b], 18)
-        place = placer.over(places, text, size)
+        text = inline(run.basins.ids[b], _LONGEST)
+        place = sheet.placer.over([sheet.points(x + dx, y + dy) for dx, dy in steps], text, size)
         if place is None:
             lost += 1
-            continue
-        axes.text(
-            ground.west + place.x / scale,
-            ground.south + place.y / scale,
-            text,
-            ha="center",
-            va="center",
-            fontsize=size,
-            fontstyle="italic",
-            fontweight="bold",
-            color="#4a545b",
-            gid=f"{HALO}-basin-{b}",
-            zorder=6,
-        )
+        else:
+            sheet.write(place, text, f"basin-{b}", zorder=6, **style)
     return lost
 
 
 def _nice(length: float) -> float:
-    power = 10 ** math.floor(math.log10(length))
+    power: float = 10.0 ** math.floor(math.log10(length))
     return max(step * power for step in (1, 2, 5) if step * power <= length)
 
 

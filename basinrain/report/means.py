@@ -7,12 +7,11 @@ from typing import Final
 import numpy as np
 
 from basinrain.report import limits
-from basinrain.report.table import Row, Table
+from basinrain.report.table import Row, Table, lines
 from basinrain.report.words import (
     DASH,
     area_text,
     depth_text,
-    number_text,
     percent_text,
     unit_text,
     volume_text,
@@ -30,8 +29,8 @@ def summary(run: StormRun) -> Table:
     """Return the depths of all storms and basins, methods side by side, with their spread."""
     n = len(run.methods)
     unit = unit_text(run.depth_unit)
-    spread = run.spread.set_index(["storm", "basin"])
-    means = run.basin_means.set_index(["storm", "basin", "method"])["depth"]
+    spread = {(row.storm, row.basin): row for row in lines(run.spread)}
+    means = {(row.storm, row.basin, row.method): row.depth for row in lines(run.basin_means)}
     short = len(run.storms) * len(run.basins) > _ROWS
     basins = limits.drawn_basins(run) if short else list(range(len(run.basins)))
     rows: list[Row] = []
@@ -39,24 +38,26 @@ def summary(run: StormRun) -> Table:
         storm = result.storm.name
         for b in basins:
             basin = run.basins.ids[b]
-            apart = spread.loc[(storm, basin)]
+            apart = spread[storm, basin]
             rows.append(
                 (
                     storm,
                     basin,
                     area_text(run.basins.areas[b] / area_factor(run.area_unit)),
-                    *(depth_text(means.loc[(storm, basin, method)], run.depth_unit) for method in run.methods),
-                    depth_text(apart["spread"], run.depth_unit),
-                    percent_text(apart["spread_percent"] / 100),
+                    *(depth_text(means[storm, basin, method], run.depth_unit) for method in run.methods),
+                    depth_text(apart.spread, run.depth_unit),
+                    percent_text(apart.spread_percent / 100),
                 )
             )
-    notes = ["Spread: greatest less least of the methods, and that in per cent of their mean; none where fewer than two have a number."]
+    notes = ["Spread: greatest less least of the methods, and that in per cent of their mean."]
     if any(DASH in row[3 : 3 + n] for row in rows):
         notes.append(f"{DASH}: the method has no number there.")
     if short:
-        notes.append(f"The first {len(basins)} of {len(run.basins)} rows a storm are shown; all are in basin_means.csv.")
+        notes.append(
+            f"The first {len(basins)} of {len(run.basins)} rows a storm are shown; all are in basin_means.csv."
+        )
     return Table(
-        caption=f"Basin mean depth by method, in {unit}",
+        caption="Basin mean depth by method",
         heads=("storm", "basin", f"area, {unit_text(run.area_unit)}", *run.methods, unit, "per cent"),
         over=(("", 3), (f"depth, {unit}", n), ("spread", 2)),
         align="tt" + "n" * (n + 3),
@@ -78,8 +79,8 @@ def details(run: StormRun) -> list[Table]:
     if partly:
         heads.append("area covered")
     notes = [
-        "On infilled values: the share of the depth that comes from estimates. Reporting gauges only: the depth without any "
-        "infill, weights rebuilt at every step from the gauges that report."
+        "On infilled values: the share of the depth that comes from estimates.",
+        "Reporting gauges only: without any infill, weights rebuilt at every step from the gauges that report.",
     ]
     if len(kept) < len(run.basins):
         notes.append(f"{len(kept)} of {len(run.basins)} rows are shown; all are in basin_means.csv.")
@@ -89,7 +90,7 @@ def details(run: StormRun) -> list[Table]:
         ours = frame[(frame["storm"] == result.storm.name) & frame["basin"].isin(kept)]
         # Methods of one basin together; the sort is stable, so that methods keep the job's order.
         place = ours["basin"].map(run.basins.ids.index)
-        for row in ours.loc[place.sort_values(kind="stable").index].itertuples():
+        for row in lines(ours.loc[place.sort_values(kind="stable").index]):
             number = not np.isnan(row.depth)
             cells = [
                 row.basin,

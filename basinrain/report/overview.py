@@ -12,10 +12,9 @@ import shapely
 from basinrain.basins import UNION
 from basinrain.notes import Note
 from basinrain.report.table import Table
-from basinrain.report.words import DASH, area_text, counted, step_text, unit_text
+from basinrain.report.words import area_text, counted, step_text, unit_text, unit_word, when_text, zone_text
 from basinrain.results import StormRun
 from basinrain.storms import MEAN, NEAREST_RECORDER
-from basinrain.tables import time_text
 from basinrain.units import area_factor, volume_unit_for
 
 __all__ = ["NoteGroup", "note_groups", "storms_asked", "what_was_asked"]
@@ -81,26 +80,24 @@ def _rest(notes: list[Note]) -> str:
 def what_was_asked(run: StormRun) -> list[tuple[str, str]]:
     """Return the job in a few lines, each a name and a text."""
     basins = [b for b, basin in enumerate(run.basins.ids) if basin != UNION]
-    union = shapely.union_all(run.basins.polygons[basins]) if len(basins) == len(run.basins) else run.basins.polygons[-1]
+    union = (
+        shapely.union_all(run.basins.polygons[basins]) if len(basins) == len(run.basins) else run.basins.polygons[-1]
+    )
     area = union.area / area_factor(run.area_unit)
     inside = int(np.count_nonzero(shapely.dwithin(shapely.points(run.network.x, run.network.y), union, _TOUCH)))
     union_words = ", and their union" if UNION in run.basins.ids else ""
     lines = [
-        ("Basins", f"{counted(len(basins), 'basin')}{union_words}; {area_text(area)} {unit_text(run.area_unit)} together"),
-        ("Gauges", f"{len(run.network)}, of which {inside} inside the basins"),
+        ("Basins", f"{counted(len(basins), 'basin')}{union_words}; {area_text(area)} {unit_text(run.area_unit)}"),
+        ("Gauges", f"{len(run.network)}, of which {inside} inside the {'basins' if len(basins) > 1 else 'basin'}"),
         ("Averages", ", ".join(run.methods)),
     ]
     infill = run.settings.get("infill", {})
     if "method" in infill:
         scale = infill.get("scale")
         lines.append(("Infill", str(infill["method"]) + (f" at the scale of the {scale}" if scale else "")))
-    lines.append(
-        (
-            "Units",
-            f"depths in {unit_text(run.depth_unit)}, areas in {unit_text(run.area_unit)}, "
-            f"volumes in {unit_text(volume_unit_for(run.depth_unit))}",
-        )
-    )
+    volume_unit = unit_text(volume_unit_for(run.depth_unit))
+    units = f"depths in {unit_word(run.depth_unit)}, areas in {unit_text(run.area_unit)}, volumes in {volume_unit}"
+    lines.append(("Units", units))
     lines.append(("Step", "storm totals only" if run.record.step == "storm" else step_text(run.record.step)))
     return lines
 
@@ -117,15 +114,19 @@ def storms_asked(run: StormRun) -> Table:
         rows.append(
             (
                 storm.name,
-                time_text(storm.start, run.record.zone) or DASH,
-                time_text(storm.end, run.record.zone) or DASH,
+                when_text(storm.start),
+                when_text(storm.end),
                 str(steps),
                 pattern if steps > 1 else "one total: no times",
             )
         )
     return Table(
-        caption="Storms and their windows; a window holds what fell after its start, up to and including its end",
+        caption="Storms",
         heads=("storm", "start", "end", "steps", "timed by"),
         align="tttnt",
         rows=rows,
+        notes=(
+            f"Times are in {zone_text(run.record.zone)}.",
+            "A window holds what fell after its start and up to its end.",
+        ),
     )

@@ -22,8 +22,8 @@ def render_report(run: StormRun) -> str:
     """Return the report of a run as one HTML page.
 
     The page holds no script and asks for nothing: style and figures are inside it. The same run gives the same text,
-    letter for letter. Depths are printed to 0.1 mm or 0.01 in, weights to 3 decimals; what is not known is a dash, never
-    zero. Large runs are shortened, each time with the file that holds the rest.
+    letter for letter. Depths are printed to 0.1 mm or 0.01 in, weights to 3 decimals; what is not known is a dash,
+    never zero. Large runs are shortened, each time with the file that holds the rest.
 
     Parameters
     ----------

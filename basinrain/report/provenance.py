@@ -30,29 +30,31 @@ class Formula:
 _MEANS: Final = {
     "arithmetic": Formula(
         "arithmetic",
-        Markup("<i>w<sub>i</sub></i> = 1 / <i>n</i> for the <i>n</i> gauges that the job takes (those inside, unless it says more)"),
+        Markup("<i>w<sub>i</sub></i> = 1 / <i>n</i> for the <i>n</i> gauges that the job takes"),
         "common practice",
     ),
     "thiessen": Formula(
         "thiessen",
         Markup(
-            "<i>w<sub>i</sub></i> = <i>A<sub>i</sub></i> / <i>A</i>, <i>A<sub>i</sub></i> the part of the basin that is nearer to "
-            "gauge <i>i</i> than to any other"
+            "<i>w<sub>i</sub></i> = <i>A<sub>i</sub></i> / <i>A</i>, <i>A<sub>i</sub></i> "
+            "the part of the basin that is nearer to gauge <i>i</i> than to any other"
         ),
         "Thiessen (1911), Monthly Weather Review 39, 1082–1084",
     ),
     "idw": Formula(
         "idw",
         Markup(
-            "<i>w<sub>i</sub></i> = mean over the grid cells, by their area in the basin, of <i>d<sub>i</sub></i><sup>−<i>p</i></sup> "
-            "/ Σ<i><sub>j</sub></i> <i>d<sub>j</sub></i><sup>−<i>p</i></sup>"
+            "<i>w<sub>i</sub></i> = mean over the grid cells, by their area in the basin, of "
+            "<i>d<sub>i</sub></i><sup>−<i>p</i></sup> / Σ<i><sub>j</sub></i> <i>d<sub>j</sub></i><sup>−<i>p</i></sup>"
         ),
         "Shepard (1968), Proceedings of the 23rd ACM National Conference, 517–524",
     ),
 }
 _INFILLS: Final = {
     "station-average": Formula(
-        "station-average", Markup("<i>P<sub>x</sub></i> = (1 / <i>m</i>) Σ<i><sub>i</sub></i> <i>P<sub>i</sub></i>"), "common practice"
+        "station-average",
+        Markup("<i>P<sub>x</sub></i> = (1 / <i>m</i>) Σ<i><sub>i</sub></i> <i>P<sub>i</sub></i>"),
+        "common practice",
     ),
     "normal-ratio": Formula(
         "normal-ratio",
@@ -65,8 +67,8 @@ _INFILLS: Final = {
     "inverse-distance": Formula(
         "inverse-distance",
         Markup(
-            "<i>P<sub>x</sub></i> = Σ<i><sub>i</sub></i> <i>d<sub>i</sub></i><sup>−<i>p</i></sup> <i>P<sub>i</sub></i> / "
-            "Σ<i><sub>i</sub></i> <i>d<sub>i</sub></i><sup>−<i>p</i></sup>"
+            "<i>P<sub>x</sub></i> = Σ<i><sub>i</sub></i> <i>d<sub>i</sub></i><sup>−<i>p</i></sup> <i>P<sub>i</sub></i> "
+            "/ Σ<i><sub>i</sub></i> <i>d<sub>i</sub></i><sup>−<i>p</i></sup>"
         ),
         "Shepard (1968), as above; with p = 2 common practice for gauges",
     ),
@@ -74,7 +76,7 @@ _INFILLS: Final = {
 
 
 def formulas(run: StormRun) -> list[Formula]:
-    """Return the formulas of the methods that the run used, averages first; a method without a short one is left out."""
+    """Return the formulas of the methods used, averages first; a method without a short one is left out."""
     used = dict.fromkeys(e.method for result in run.storms for e in result.completed.estimates)
     return [_MEANS[m] for m in run.methods if m in _MEANS] + [_INFILLS[m] for m in used if m in _INFILLS]
 
@@ -85,16 +87,16 @@ def ground_facts(run: StormRun) -> list[tuple[str, str]]:
     if plane.crs == LOCAL:
         lines = [("Plane", f"{plane.name}: a flat plane without a place on the map; distances are planar.")]
     else:
+        most = f"{100 * plane.distortion:.3g}{NARROW_SPACE}%"
+        apart = f"The plane's own differ from them by at most {most} over the network and the basins."
         lines = [
             ("Plane", f"{plane.name} ({plane.crs}). Areas, cells and grids are taken in it."),
-            (
-                "Distances",
-                f"Between gauges geodesic (WGS 84). The plane's own differ from them by at most "
-                f"{100 * plane.distortion:.3g}{NARROW_SPACE}% over the network and the basins.",
-            ),
+            ("Distances", f"Between gauges geodesic (WGS 84). {apart}"),
         ]
     lines += [
-        (name.replace("-", " ").capitalize(), text) for name, text in run.facts.items() if name not in ("normals", "catch")
+        (name.replace("-", " ").capitalize(), text)
+        for name, text in run.facts.items()
+        if name not in ("normals", "catch")
     ]
     if run.network.normals is not None:
         kind = "of the months" if run.network.normals.shape[1] == 12 else "of the year"
@@ -105,9 +107,8 @@ def ground_facts(run: StormRun) -> list[tuple[str, str]]:
     lines.append(("Gauge catch", f"Depths were multiplied by these factors: {text}." if text else "Not corrected."))
     if not np.isnan(run.basins.official_areas).all():
         worst = np.nanmax(np.abs(run.basins.areas / run.basins.official_areas - 1))
-        lines.append(
-            ("Areas", f"Polygon areas differ from those that the register states by at most {100 * worst:.2g}{NARROW_SPACE}%.")
-        )
+        most = f"{100 * worst:.2g}{NARROW_SPACE}%"
+        lines.append(("Areas", f"Polygon areas differ from those that the register states by at most {most}."))
     return lines
 
 

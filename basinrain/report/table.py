@@ -5,8 +5,12 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import groupby
+from typing import TYPE_CHECKING, Any
 
-__all__ = ["Row", "Table"]
+if TYPE_CHECKING:
+    import pandas as pd
+
+__all__ = ["Row", "Table", "lines"]
 
 Row = tuple[str, ...]
 """The cells of one line."""
@@ -35,7 +39,9 @@ class Table:
 
     Examples
     --------
-    >>> table = Table(caption="Depth in mm", heads=("basin", "depth"), align="tn", rows=(("Upper", "3.0"), ("Upper", "4.0")))
+    >>> table = Table(
+    ...     caption="Depth in mm", heads=("basin", "depth"), align="tn", rows=(("Upper", "3.0"), ("Upper", "4.0"))
+    ... )
     >>> [len(group) for group in table.groups]
     [2]
     """
@@ -64,3 +70,15 @@ class Table:
     def groups(self) -> list[list[Row]]:
         """The lines of the body, those with the same first cell together."""
         return [list(rows) for _, rows in groupby(self.rows, key=lambda row: row[0])]
+
+
+def lines(frame: pd.DataFrame) -> list[Any]:
+    """Return the lines of a data frame, each with its columns as attributes.
+
+    Examples
+    --------
+    >>> import pandas as pd
+    >>> [line.depth for line in lines(pd.DataFrame({"depth": [1.5, 2.5]}))]
+    [1.5, 2.5]
+    """
+    return list(frame.itertuples(index=False))

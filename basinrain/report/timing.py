@@ -10,10 +10,19 @@ from basinrain.report import limits
 from basinrain.report.figures import Picture
 from basinrain.report.hyetograph_figure import hyetograph_pictures, lead_method
 from basinrain.report.table import Row, Table
-from basinrain.report.words import DASH, depth_text, depth_texts, number_text, step_text, unit_text
+from basinrain.report.words import (
+    DASH,
+    depth_text,
+    depth_texts,
+    number_text,
+    step_text,
+    unit_word,
+    when_text,
+    zone_text,
+)
 from basinrain.results import StormResult, StormRun
 from basinrain.storms import MEAN
-from basinrain.tables import peaks, time_text
+from basinrain.tables import peaks
 from basinrain.units import depth_factor
 
 __all__ = ["StormTimes", "storm_times"]
@@ -43,10 +52,10 @@ def storm_times(run: StormRun, result: StormResult, number: int) -> StormTimes:
     if len(record) < 2:
         return StormTimes(storm, ("This storm is one total without steps: it has no hyetograph.",), (), ())
     lead = lead_method(result)
+    why = "with the most numbers" if np.isnan(result.depths[lead].total).any() else "with a number in every basin"
     sentences = [
-        f"Bars are depths over their intervals of {step_text(record.step)} by {lead}, the first method "
-        f"{'with a number in every basin' if not np.isnan(result.depths[lead].total).any() else 'with the most numbers'}; "
-        "mass curves are by every method. All basins of a storm have the same scales.",
+        f"Bars are depths over their intervals of {step_text(record.step)} by {lead}, the first method {why}.",
+        "Mass curves are by every method. All basins of a storm have the same scales.",
         _timed_by(result),
     ]
     tables = [_peaks(run, result, lead)]
@@ -61,8 +70,8 @@ def _timed_by(result: StormResult) -> str:
     by = list(dict.fromkeys(name for name, _ in result.shapes))
     if by == [MEAN]:
         return (
-            "Each basin's own mean times its hyetograph. Such a mean is flatter than the rain at any gauge wherever the storm "
-            "moved; the peak ratio below tells how much."
+            "Each basin's own mean times its hyetograph. Such a mean is flatter than the rain at any gauge where the "
+            "storm moved; the ratio below tells how much."
         )
     if len(by) == 1:
         return f"The pattern of gauge {by[0]} times every hyetograph; the total is the basin mean's."
@@ -82,17 +91,25 @@ def _peaks(run: StormRun, result: StormResult, lead: str) -> Table:
             (
                 run.basins.ids[b],
                 DASH if at is None else depth_text(float(column[at]) / mm, run.depth_unit),
-                DASH if at is None or column[at] == 0 else time_text(record.ends[at], run.record.zone) or DASH,
+                DASH if at is None or column[at] == 0 else when_text(record.ends[at]),
                 result.shapes[b][0] if result.shapes[b][0] != MEAN else "basin mean",
                 depth_text(float(of_mean[b]) / mm, run.depth_unit),
                 depth_text(float(of_gauges[b]) / mm, run.depth_unit),
                 number_text(float(of_mean[b] / of_gauges[b]), 2) if of_gauges[b] > 0 else DASH,
             )
         )
-    unit, step = unit_text(run.depth_unit), step_text(record.step)
+    unit, step = unit_word(run.depth_unit), step_text(record.step)
     return Table(
         caption=f"{result.storm.name}: peaks by {lead}, {unit} in {step}",
-        heads=("basin", "peak", "step ending", "timed by", "peak of the mean", "mean of the peaks", "ratio"),
+        heads=(
+            "basin",
+            "peak",
+            f"step ending, {zone_text(run.record.zone)}",
+            "timed by",
+            "peak of the mean",
+            "mean of the peaks",
+            "ratio",
+        ),
         over=(("", 1), ("hyetograph", 3), ("flattening", 3)),
         align="tnttnnn",
         rows=rows,
@@ -109,11 +126,11 @@ def _printed(run: StormRun, result: StormResult, lead: str) -> Table:
     drawn = limits.drawn_basins(run)
     depth = result.hyetograph(lead)[:, drawn] / mm
     columns = [depth_texts(depth[:, k], run.depth_unit) for k in range(len(drawn))]
-    times = [time_text(end, run.record.zone) or str(t + 1) for t, end in enumerate(record.ends)]
+    times = [str(t + 1) if np.isnat(end) else when_text(end) for t, end in enumerate(record.ends)]
     totals = (depth_text(float(depth[:, k].sum()), run.depth_unit) for k in range(len(drawn)))
     return Table(
-        caption=f"{result.storm.name}: hyetographs by {lead}, {unit_text(run.depth_unit)} in {step_text(record.step)}",
-        heads=("step ending", *(run.basins.ids[b] for b in drawn)),
+        caption=f"{result.storm.name}: hyetographs by {lead}, {unit_word(run.depth_unit)} in {step_text(record.step)}",
+        heads=(f"step ending, {zone_text(run.record.zone)}", *(run.basins.ids[b] for b in drawn)),
         align="t" + "n" * len(drawn),
         rows=list(zip(times, *columns, strict=True)),
         foot=[("sum", *totals)],

@@ -37,8 +37,10 @@ def weights_pictures(run: StormRun) -> list[Picture]:
     with figure_style():
         for k, (result, names) in enumerate(groups, start=1):
             storms = f" ({', '.join(names)})" if len(groups) > 1 else ""
-            for b in drawn:
-                pictures.append(_panel(run, result, b, min(1.0, top * 1.04), storms, f"weights-{k}-{b + 1}"))
+            pictures += [
+                _panel(run, result, b, right=min(1.0, top * 1.04), storms=storms, name=f"weights-{k}-{b + 1}")
+                for b in drawn
+            ]
     return pictures
 
 
@@ -46,12 +48,13 @@ def _key(result: StormResult) -> bytes:
     return b"".join(np.nan_to_num(depths.table.weights, nan=-1.0).tobytes() for depths in result.depths.values())
 
 
-def _panel(run: StormRun, result: StormResult, b: int, right: float, storms: str, name: str) -> Picture:
+def _panel(run: StormRun, result: StormResult, b: int, *, right: float, storms: str, name: str) -> Picture:
     methods = list(result.depths)
     weights = np.array([result.depths[method].table.weights[b] for method in methods])
     answered = ~np.isnan(weights).any(axis=1)
     most = np.nan_to_num(weights).max(axis=0)
-    order = sorted(np.flatnonzero(most >= limits.LISTED_WEIGHT), key=lambda g: (-round(most[g], 9), run.network.ids[g]))
+    heavy = [int(g) for g in np.flatnonzero(most >= limits.LISTED_WEIGHT)]
+    order = sorted(heavy, key=lambda g: (-round(float(most[g]), 9), run.network.ids[g]))
     rest = max(0, len(order) - _MOST_GAUGES)
     order = order[:_MOST_GAUGES]
     labels = [inline(run.network.ids[g], 14) for g in order]
@@ -89,7 +92,15 @@ def _panel(run: StormRun, result: StormResult, b: int, right: float, storms: str
     basin = inline(run.basins.ids[b], 40)
     figure.text(0.02, 1 - 0.03 / height, basin, ha="left", va="top", fontsize=8, fontweight="bold")
     handles = [
-        Line2D([], [], linestyle="none", markersize=5.2, color="black", label=_legend_text(method, bool(ok)), **MARKS[m % len(MARKS)])
+        Line2D(
+            [],
+            [],
+            linestyle="none",
+            markersize=5.2,
+            color="black",
+            label=_legend_text(method, bool(ok)),
+            **MARKS[m % len(MARKS)],
+        )
         for m, (method, ok) in enumerate(zip(methods, answered, strict=True))
     ]
     figure.legend(
@@ -114,6 +125,7 @@ def _legend_text(method: str, answered: bool) -> str:  # noqa: FBT001 - private
 
 def _description(run: StormRun, methods: list[str], weights: npt.NDArray[np.float64], order: list[int]) -> str:
     return "; ".join(
-        f"{run.network.ids[g]}: " + ", ".join(f"{method} {weight_text(weights[m, g])}" for m, method in enumerate(methods))
+        f"{run.network.ids[g]}: "
+        + ", ".join(f"{method} {weight_text(weights[m, g])}" for m, method in enumerate(methods))
         for g in order
     )

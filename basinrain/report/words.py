@@ -10,6 +10,8 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.tables import time_text
+
 __all__ = [
     "DASH",
     "NARROW_SPACE",
@@ -24,8 +26,11 @@ __all__ = [
     "round_to_sum",
     "step_text",
     "unit_text",
+    "unit_word",
     "volume_text",
     "weight_text",
+    "when_text",
+    "zone_text",
 ]
 
 DASH: Final = "–"
@@ -182,6 +187,43 @@ def unit_text(unit: str) -> str:
     return _UNITS.get(unit, unit)
 
 
+def unit_word(unit: str) -> str:
+    """Return a unit as it reads in a sentence.
+
+    Examples
+    --------
+    >>> unit_word("in"), unit_word("mm"), unit_word("km2")
+    ('inches', 'mm', 'km²')
+    """
+    return "inches" if unit == "in" else unit_text(unit)
+
+
+def when_text(when: np.datetime64) -> str:
+    """Return a time of the record's clock to the minute, or the second where that counts; a dash for no time.
+
+    Examples
+    --------
+    >>> when_text(np.datetime64("2031-05-04T06:00")), when_text(np.datetime64("NaT"))
+    ('2031-05-04 06:00', '–')
+    """
+    if np.isnat(when):
+        return DASH
+    return time_text(when, "").replace("T", " ")
+
+
+def zone_text(zone: str) -> str:
+    """Return how a record's clock is called.
+
+    Examples
+    --------
+    >>> zone_text("+09:00"), zone_text("+00:00"), zone_text("")
+    ('UTC+09:00', 'UTC', "the record's clock")
+    """
+    if not zone:
+        return "the record's clock"
+    return "UTC" if zone == "+00:00" else f"UTC{zone}".replace("-", "−")
+
+
 def step_text(step: str) -> str:
     """Return a step in words.
 
@@ -209,7 +251,7 @@ def counted(count: int, one: str, many: str = "") -> str:
 
 
 def inline(text: str, longest: int = 0) -> str:
-    """Return a name from a file fit for one line: no control characters, cut to ``longest`` letters where that is given.
+    """Return a name from a file fit for one line: no control characters, at most ``longest`` letters if given.
 
     Examples
     --------

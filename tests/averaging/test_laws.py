@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 import pytest
 import shapely
+from drawn import basins_of, gauges_at
 from hypothesis import HealthCheck, assume, given, settings
 from hypothesis import strategies as st
 from strategies import Case, cases, divided_basins
@@ -126,7 +127,7 @@ def test_adjoining_basins_add_up_to_their_union(name: str, case: Case) -> None:
 @given(case=cases(divided_basins()))
 def test_the_union_has_the_weights_of_its_own_polygon(name: str, case: Case) -> None:
     """The union's row, summed up from the basins, is what the union's polygon gives when weighed by itself."""
-    union = Basins(ids=("whole",), polygons=[case.basins.union], crs="local")
+    union = basins_of(whole=case.basins.union)
     alone = weigh(METHODS[name], case._replace(basins=union)).weights[0]
     among = weigh(METHODS[name], case._replace(basins=case.basins.with_union())).weights[-1]
     np.testing.assert_allclose(among, alone, atol=1e-9)
@@ -158,8 +159,7 @@ def test_contributions_sum_to_the_mean(name: str, case: Case) -> None:
 @pytest.mark.parametrize("name", ALL)
 def test_no_gauge_present_is_no_number(name: str) -> None:
     """With no gauge present, every basin is without a number and wholly uncovered, and nothing is raised."""
-    network = GaugeNetwork(ids=("A", "B"), x=[1000.0, 2000.0], y=[1000.0, 1000.0], crs="local")
-    basins = Basins(ids=("all",), polygons=[shapely.box(0, 0, 4000, 4000)], crs="local")
+    network, basins = gauges_at((1000, 1000), (2000, 1000)), basins_of(all=shapely.box(0, 0, 4000, 4000))
     table = METHODS[name](network, basins, OPTIONS.get(name))(np.array([False, False]))
     assert np.isnan(table.weights).all()
     assert table.covered.tolist() == [0.0]
@@ -168,9 +168,8 @@ def test_no_gauge_present_is_no_number(name: str) -> None:
 
 def test_the_arithmetic_mean_does_not_add_up() -> None:
     """Two gauges in one half of a square and one in the other: (15 x 50 + 40 x 50) / 100 = 27.5, but (10+20+40) / 3."""
-    network = GaugeNetwork(ids=("A", "B", "C"), x=[1.0, 4.0, 8.0], y=[5.0, 5.0, 5.0], crs="local")
-    halves = [shapely.box(0, 0, 5, 10), shapely.box(5, 0, 10, 10)]
-    basins = Basins(ids=("west", "east"), polygons=halves, crs="local").with_union()
+    network = gauges_at((1, 5), (4, 5), (8, 5))
+    basins = basins_of(west=shapely.box(0, 0, 5, 10), east=shapely.box(5, 0, 10, 10)).with_union()
     means = arithmetic_weights(network, basins).apply(np.array([10.0, 20.0, 40.0]))
     assert means[:2].tolist() == [15.0, 40.0]
     assert means[:2] @ basins.areas[:2] / 100.0 == pytest.approx(27.5)

@@ -1,4 +1,4 @@
-"""Seeded networks and basins for the benchmarks: an invented square country, wiggled basins that share their borders."""
+"""Seeded networks and basins for the benchmarks: an invented square country, wiggled basins with shared borders."""
 
 from __future__ import annotations
 

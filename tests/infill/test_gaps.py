@@ -51,7 +51,7 @@ def test_totals_without_times_have_no_length() -> None:
 
 @pytest.mark.parametrize(("missing", "warned"), [(0, False), (1, True), (2, True), (3, True), (4, False)])
 def test_gap_over_the_peak_or_next_to_it(missing: int, warned: bool) -> None:  # noqa: FBT001
-    """The mean is greatest in the third hour: a gap in the second to fourth hides it, in the first or fifth it does not."""
+    """The mean is greatest in the third hour: a gap in the second to fourth hides it, another does not."""
     column = [1.0, 3.0, 9.0, 3.0, 1.0]
     gappy = column.copy()
     gappy[missing] = NAN

@@ -14,7 +14,9 @@ NORMALS = np.array([[1500.0], [1000.0], [1200.0]])
 
 def network(normals: np.ndarray = NORMALS) -> GaugeNetwork:
     n = len(normals)
-    return GaugeNetwork(ids=tuple("XABCDE"[:n]), x=np.arange(n) * 1e3, y=np.zeros(n), crs="local", normals=normals)
+    return GaugeNetwork(
+        ids=tuple("XABCDE"[:n]), x=np.arange(n, dtype=float) * 1000, y=np.zeros(n), crs="local", normals=normals
+    )
 
 
 DONORS = np.array([False, True, True])

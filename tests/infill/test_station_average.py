@@ -9,7 +9,7 @@ import numpy as np
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import METHODS, station_average_weights
 
-NETWORK = GaugeNetwork(ids=tuple("TABCDEF"), x=np.arange(7) * 1e3, y=np.zeros(7), crs="local")
+NETWORK = GaugeNetwork(ids=tuple("TABCDEF"), x=np.arange(7, dtype=float) * 1000, y=np.zeros(7), crs="local")
 
 
 def test_the_five_nearest_share_equally() -> None:

@@ -261,7 +261,8 @@ def test_all_problems_of_a_table_come_together(tmp_path: Path) -> None:
             {"columns": {"id": "idd", "elevation": "z"}},
             (
                 "gauges.csv: columns.id: found no column 'idd'; expected a column of the file; did you mean 'id'?\n"
-                "gauges.csv: columns.elevation: found no column 'z'; expected a column of the file; one of: id, lon, lat"
+                "gauges.csv: columns.elevation: found no column 'z'; expected a column of the file; "
+                "one of: id, lon, lat"
             ),
         ),
         (

@@ -37,15 +37,21 @@ def _depths() -> tuple[np.ndarray[Any, Any], np.ndarray[Any, Any]]:
             [0.0, 0.0, 0.0, 0.0, 0.0, nan],
         ]
     )
-    status = np.where(np.isnan(depth), Status.MISSING, np.where(depth == 0, Status.ZERO, Status.OBSERVED)).astype(np.uint8)
+    status = np.where(np.isnan(depth), Status.MISSING, np.where(depth == 0, Status.ZERO, Status.OBSERVED)).astype(
+        np.uint8
+    )
     status[2, 1] = Status.INFILLED
     status[:, 2] = Status.INFILLED
     return depth, status
 
 
 ESTIMATES = (
-    Estimate(gauge="B", first=2, stop=3, scale="step", depth=7.0, method="station-average", donors={"A": 0.5, "D": 0.5}),
-    Estimate(gauge="C", first=0, stop=6, scale="storm", depth=15.0, method="station-average", donors={"A": 0.5, "D": 0.5}),
+    Estimate(
+        gauge="B", first=2, stop=3, scale="step", depth=7.0, method="station-average", donors={"A": 0.5, "D": 0.5}
+    ),
+    Estimate(
+        gauge="C", first=0, stop=6, scale="storm", depth=15.0, method="station-average", donors={"A": 0.5, "D": 0.5}
+    ),
 )
 
 
@@ -132,4 +138,6 @@ def run_maker() -> RunMaker:
 @pytest.fixture(scope="session")
 def run() -> StormRun:
     """Return the plain run of one storm."""
-    return make_run(notes=(Note(code="one-gauge-dominates", text="Gauge A has 62 % of the weight in basin west.", basin="west"),))
+    return make_run(
+        notes=(Note(code="one-gauge-dominates", text="Gauge A has 62 % of the weight in basin west.", basin="west"),)
+    )
