@@ -9,6 +9,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 import shapely
+from shapely.geometry.base import BaseGeometry
 
 from basinrain import ground
 from basinrain.errors import DataError, Problems
@@ -115,7 +116,7 @@ correct or remove it
         return areas
 
     @cached_property
-    def union(self) -> shapely.Geometry:
+    def union(self) -> BaseGeometry:
         """The polygon of all basins together, overlaps counted once."""
         return shapely.union_all(self.polygons)
 

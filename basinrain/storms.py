@@ -215,12 +215,12 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     -----
     With D the donor weights of a step, W the weights of the gauges that have a depth and p the reporting gauges' own
     depths, the basin mean of the step is ``W D p``. Hence the contribution of gauge i to basin b over the storm is the sum
-    over steps of ``(W D)[b, i] p[i]``, and these sum to the mean exactly.
+    over steps of ``(W D)[b, i] p[i]``, and these sum to the mean exactly. Where a day's or storm's total was spread, p
+    is the donors' total in the times of the gauge whose pattern was used.
     """
     record = completed.record
     has_depth = ~np.isnan(record.depth)
     reporting = record.reporting
-    own = np.where(reporting, record.depth, 0.0)
     table = weigher(has_depth.any(axis=0))
     n_steps, (n_basins, n_gauges) = len(record), table.weights.shape
     weigh = _Remembered(weigher)
@@ -240,7 +240,7 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
         here = weigh(present)
         depth[steps] = here.apply(np.where(present, record.depth[steps], np.nan))
         influence = here.weights @ donors
-        contribution += np.where(influence == 0, 0.0, influence * own[steps].sum(axis=0)[None, :])
+        contribution += here.weights @ completed.sources(steps)
         least, most = np.minimum(least, influence), np.maximum(most, influence)
         estimated = np.where(present & ~reporting[steps[0]], record.depth[steps], 0.0).sum(axis=0)
         infilled += np.where(np.isnan(here.weights), np.nan, here.weights) @ estimated

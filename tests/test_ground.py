@@ -1,6 +1,7 @@
 """The ground: areas and distances against formulas of the ellipsoid and against pyproj's geodesics."""
 
 import re
+from collections.abc import Callable
 
 import numpy as np
 import pyproj
@@ -111,11 +112,11 @@ def test_one_system_under_several_names_moves_nothing(other: str) -> None:
 
 @given(st.floats(-1e5, 1e5), st.floats(-1e5, 1e5))
 def test_there_and_back(x: float, y: float) -> None:
-    """A position goes to longitude and latitude and back to within a micrometre."""
+    """A position goes to longitude and latitude and back to within a millimetre, as PROJ's inverse allows."""
     plane = ground.equal_area_plane(8, 46, 10, 48)
     lon, lat = ground.transform(np.array([x]), np.array([y]), plane, ground.LONLAT)
     back = ground.transform(lon, lat, ground.LONLAT, plane)
-    np.testing.assert_allclose([back[0][0], back[1][0]], [x, y], atol=1e-6)
+    np.testing.assert_allclose([back[0][0], back[1][0]], [x, y], rtol=0, atol=1e-3)
 
 
 def test_geodesic_distances() -> None:
@@ -138,18 +139,24 @@ def test_distances_are_geodesic_from_any_plane() -> None:
     assert local.tolist() == [[0.0], [5.0]]
 
 
-@pytest.mark.parametrize("function", ["transform", "project"])
-def test_local_and_map_cannot_be_brought_together(function: str) -> None:
+@pytest.mark.parametrize(
+    "move",
+    [
+        lambda source, target: ground.transform(np.array([1.0]), np.array([1.0]), source, target),
+        lambda source, target: ground.project(one(shapely.box(0, 0, 1, 1)), source, target),
+    ],
+    ids=["positions", "polygons"],
+)
+def test_local_and_map_cannot_be_brought_together(move: Callable[[str, str], object]) -> None:
     """A site grid has no place on the map, neither way."""
     message = (
         r"^coordinate reference systems: found 'local' and 'EPSG:4326'; expected both 'local', or both on the map; "
         "give gauges and basins in systems that can be brought together$"
     )
     with pytest.raises(DataError, match=message):
-        if function == "transform":
-            ground.transform(np.array([1.0]), np.array([1.0]), "local", ground.LONLAT)
-        else:
-            ground.project(one(shapely.box(0, 0, 1, 1)), "local", ground.LONLAT)
+        move("local", ground.LONLAT)
+    with pytest.raises(DataError, match=message.replace("'local' and 'EPSG:4326'", "'EPSG:4326' and 'local'")):
+        move(ground.LONLAT, "local")
 
 
 @pytest.mark.parametrize(

@@ -61,8 +61,10 @@ def test_dry_donors() -> None:
     np.testing.assert_allclose(depth, [15.0] * 3)
     assert status == ["spread"] * 3
     assert notes == [
-        "Gauge G0: 45 mm over 2031-05-04T00:00:00 to 2031-05-07T00:00:00 spread evenly over the steps, because none of the "
-        "recording gauges near it has rain."
+        (
+            "Gauge G0: 45 mm over 2031-05-04T00:00:00 to 2031-05-07T00:00:00 spread evenly over the steps, because none "
+            "of the recording gauges near it has rain."
+        )
     ]
 
 

@@ -12,7 +12,7 @@ from basinrain.basins import Basins
 from basinrain.errors import JobError, MethodError
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import InfillOptions, complete
-from basinrain.rainfall import RainRecord
+from basinrain.rainfall import RainRecord, Status
 from basinrain.storms import (
     BasinDepths,
     Storm,
@@ -208,3 +208,23 @@ def test_reporting_only_has_no_number_where_the_method_refuses() -> None:
     result = average_storm(completed, weigher)
     assert result.total[0] == pytest.approx((3 + 4.5 + 6) / 3)
     assert np.isnan(result.reporting_only[0])
+
+
+def test_contributions_with_a_gauge_that_closes_inside_a_spread_total() -> None:
+    """A storm total spread in a recorder's pattern, while the set of gauges changes: contributions still sum to the mean."""
+    network = GaugeNetwork(
+        ids=("A", "B", "C", "D"),
+        x=np.array([5e3, 12e3, 25e3, 28e3]),
+        y=np.full(4, 5e3),
+        crs="local",
+        closed=np.array(["NaT", "NaT", "NaT", "2031-05-04T02"], dtype="datetime64[s]"),
+    )
+    record = hourly([[6, NAN, 1, 5], [0, NAN, 2, 5], [3, NAN, 9, NAN]], network)
+    status = record.status.copy()
+    status[2, 3] = Status.NOT_INSTALLED
+    record = RainRecord(record.gauges, record.starts, record.ends, record.depth, status, step="1h")
+    completed = complete(record, network, InfillOptions(method="station-average", scale="storm"))
+    # B has the mean of A's 9 and C's 12 mm, in the times of A, which is nearest.
+    assert completed.record.depth[:, 1] == pytest.approx([10.5 * 6 / 9, 0, 10.5 * 3 / 9])
+    result = average_storm(completed, averaging_method("thiessen")(network, BASINS))
+    assert result.contribution[0].sum() == pytest.approx(result.total[0], abs=1e-12)

@@ -77,7 +77,7 @@ def over_peak(record: RainRecord, gaps: npt.NDArray[np.bool_]) -> list[Note]:
     ...     ("A", "B"), ends - 3600, ends, [[1.0, 0.0], [8.0, np.nan], [2.0, 1.0]], step="1h"
     ... )
     >>> print(over_peak(record, gap_mask(record))[0])
-    Gauge B has no value of its own at the wettest step of the window (8.0 mm on average, ending 2031-05-04T02:00) or \
+    Gauge B has no value of its own at the wettest step of the window (ending 2031-05-04T02:00) or \
 next to it; what was infilled there may miss the peak.
     """
     reporting = record.reporting
@@ -97,7 +97,7 @@ next to it; what was infilled there may miss the peak.
         Note(
             code="gap-over-peak",
             text=f"Gauge {record.gauges[g]} has no value of its own at the wettest step of the window "
-            f"({greatest:.1f} mm on average, ending {_minute(peak)}) or next to it; "
+            f"(ending {_minute(peak)}) or next to it; "
             "what was infilled there may miss the peak.",
             gauge=record.gauges[g],
         )

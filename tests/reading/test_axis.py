@@ -88,8 +88,8 @@ def test_stamp_off_the_axis(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read_all(tmp_path, text)
     assert str(caught.value) == (
-        f"{tmp_path / 'part1.csv'}:3: time: found an interval that ends at 2031-05-04T02:10:00; expected a whole number of "
-        "steps of 1h from 2031-05-04T01:00:00; correct the stamp, or the interval"
+        f"{tmp_path / 'part1.csv'}:3: time: found an interval that ends at 2031-05-04T02:10:00; expected a whole "
+        "number of steps of 1h from 2031-05-04T01:00:00; correct the stamp, or the interval"
     )
 
 
@@ -129,9 +129,9 @@ def test_accumulation_without_a_beginning(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read(tmp_path, "date,A\n2031-05-01,\n2031-05-02,3A\n", interval="1d", accumulated="A")
     assert str(caught.value) == (
-        f"{tmp_path / 'rain.csv'}: gauge A: accumulated value of the step that ends at 2031-05-03T00:00:00: found no value "
-        "before the missing steps it accumulates; expected missing steps directly before it, back to a known value; give the "
-        "number of steps in a steps column, or correct the cells"
+        f"{tmp_path / 'rain.csv'}: gauge A: accumulated value of the step that ends at 2031-05-03T00:00:00: found no "
+        "value before the missing steps it accumulates; expected missing steps directly before it, back to a known "
+        "value; give the number of steps in a steps column, or correct the cells"
     )
 
 

@@ -154,8 +154,10 @@ def test_rules_that_cannot_be() -> None:
         rules("inch", flags={"estimate": ["E"], "trace": ["S"], "rejected": ["S", ""]})
     assert str(caught.value).splitlines() == [
         "depth unit: found 'inch'; expected one of: mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, kg m-2; did you mean 'in'?",
-        "flags: found 'estimate'; expected one of: observed, estimated, adjusted, rejected, missing, trace, presumed-zero, "
-        "accumulated; did you mean 'estimated'?",
+        (
+            "flags: found 'estimate'; expected one of: observed, estimated, adjusted, rejected, missing, trace, "
+            "presumed-zero, accumulated; did you mean 'estimated'?"
+        ),
         "flags: found mark 'S' for 'trace' and 'rejected'; expected one meaning for every mark",
         "flags: found an empty mark; expected a letter or word that stands in the file",
     ]

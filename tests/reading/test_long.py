@@ -72,8 +72,10 @@ def test_problems_together(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read_rainfall([path], layout="long", unit="mm", interval="1h")
     assert str(caught.value).splitlines() == [
-        f"{path}:3: column time: time: found 'noon'; expected a time such as 2031-05-04 08:00, 2031-05-04T08:00:00+02:00, "
-        "2031-05-04 or 2031-05; correct the stamp",
+        (
+            f"{path}:3: column time: time: found 'noon'; expected a time such as 2031-05-04 08:00, "
+            "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp"
+        ),
         f"{path}:2: column gauge: gauge: found a blank cell; expected the gauge",
         f"{path}:5: column depth: gauge A: found 'x'; expected a depth of 0 or more; correct the cell, or declare it in missing",
         f"{path}:6: column depth: gauge A: found mark 'Z'; expected a declared mark (T); declare what it means in flags",
@@ -115,8 +117,8 @@ def test_gap_of_one_gauge(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read(tmp_path, text, layout="long")
     assert str(caught.value) == (
-        f"{tmp_path / 'rain.csv'}: gauge B: found no row for 1 of the 1h steps, ending at 2031-05-04T03:00:00; expected every "
-        "step once between its first and last; complete the file, or declare gaps = 'missing'"
+        f"{tmp_path / 'rain.csv'}: gauge B: found no row for 1 of the 1h steps, ending at 2031-05-04T03:00:00; "
+        "expected every step once between its first and last; complete the file, or declare gaps = 'missing'"
     )
     record = read(tmp_path, text, layout="long", gaps="missing")
     assert [row[1] for row in labels(record)] == ["missing", "observed", "missing", "observed", "missing"]

@@ -80,8 +80,8 @@ def test_local_times_refused_in_a_file(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read(tmp_path, text, interval="30min", timezone="Europe/Vienna")
     assert [line.split("rain.csv:")[1] for line in str(caught.value).splitlines()] == [
-        f"{line}: column time: time: found '2031-10-26 {hour}', which the clocks of Europe/Vienna show twice; expected a time "
-        "that exists once; give the stamps in standard time, with timezone = '+01:00'"
+        f"{line}: column time: time: found '2031-10-26 {hour}', which the clocks of Europe/Vienna show twice; "
+        "expected a time that exists once; give the stamps in standard time, with timezone = '+01:00'"
         for line, hour in ((3, "02:00"), (4, "02:30"))
     ]
 

@@ -159,8 +159,10 @@ def test_a_gauge_in_two_sources_at_one_time() -> None:
     """Two values of one gauge at one time are refused: gauge, time, both sources."""
     found = complaints(record("A", np.ones(24)), record("A", [24.0], "1d"), gauges=network("A"))
     assert found == [
-        "gauge A: found values in source 1 (1h) and in source 2 (1d) for 24 of the same steps, the first ending at "
-        "2031-06-04T01:00:00; expected one source for a gauge and time; remove it from one of them"
+        (
+            "gauge A: found values in source 1 (1h) and in source 2 (1d) for 24 of the same steps, the first ending at "
+            "2031-06-04T01:00:00; expected one source for a gauge and time; remove it from one of them"
+        )
     ]
 
 
@@ -219,28 +221,38 @@ def test_gauges_without_rain_and_rain_without_gauge() -> None:
     rain = record("A", [1.0])
     rain = replace(rain, gauges=("W-01",), recorders=frozenset({"W-01"}))
     assert complaints(rain, gauges=network("W01", "X")) == [
-        "gauge W-01: found rain values, but no such gauge in the network; expected a gauge with a position; add it to the "
-        "gauges, or correct its id in the rainfall file; did you mean 'W01'?",
-        "gauge W01: found no rain values in any source; expected a column or rows of its own, if only of missing values; add "
-        "them, or exclude the gauge; did you mean 'W-01'?",
-        "gauge X: found no rain values in any source; expected a column or rows of its own, if only of missing values; add "
-        "them, or exclude the gauge",
+        (
+            "gauge W-01: found rain values, but no such gauge in the network; expected a gauge with a position; add it "
+            "to the gauges, or correct its id in the rainfall file; did you mean 'W01'?"
+        ),
+        (
+            "gauge W01: found no rain values in any source; expected a column or rows of its own, if only of missing "
+            "values; add them, or exclude the gauge; did you mean 'W-01'?"
+        ),
+        (
+            "gauge X: found no rain values in any source; expected a column or rows of its own, if only of missing "
+            "values; add them, or exclude the gauge"
+        ),
     ]
 
 
 def test_zones_given_and_not_given() -> None:
     """A source with a zone beside one without is refused."""
     assert complaints(record("A", [1.0], zone="+02:00"), record("B", [1.0]), gauges=network("A", "B")) == [
-        "time zones: found +02:00 for source 1 (1h), no zone for source 2 (1h); expected a zone for every source, or for "
-        "none; declare timezone for each"
+        (
+            "time zones: found +02:00 for source 1 (1h), no zone for source 2 (1h); expected a zone for every source, or "
+            "for none; declare timezone for each"
+        )
     ]
 
 
 def test_steps_that_do_not_fit() -> None:
     """A step that neither divides nor is a multiple of the common one is refused, with one that would fit."""
     assert complaints(record("A", [1.0], "2h"), record("B", [1.0], "3h"), gauges=network("A", "B")) == [
-        "source 2 (3h): found steps of 3h beside the common step 2h; expected a common step that divides it or is a multiple "
-        "of it; set [step] common to one that fits every source, such as '1h'"
+        (
+            "source 2 (3h): found steps of 3h beside the common step 2h; expected a common step that divides it or is a "
+            "multiple of it; set [step] common to one that fits every source, such as '1h'"
+        )
     ]
 
 
@@ -289,8 +301,10 @@ def test_out_of_service() -> None:
         (
             "value-out-of-service",
             "A",
-            "Gauge A has values for 1 steps outside its time of service, the first ending at 2031-06-04T02:00:00; they are not "
-            "used.",
+            (
+                "Gauge A has values for 1 steps outside its time of service, the first ending at 2031-06-04T02:00:00; "
+                "they are not used."
+            ),
         )
     ]
 

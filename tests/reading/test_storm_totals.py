@@ -52,9 +52,13 @@ def test_bounds_that_cannot_be() -> None:
     with pytest.raises(JobError) as caught:
         problems.raise_as(JobError)
     assert str(caught.value).splitlines() == [
-        "storm August: found totals in source 2 (storm), but no start and end; expected a [[storm]] of that name with start "
-        "and end, to bring its totals to the other sources' step; add it; one of: May, June, July",
+        (
+            "storm August: found totals in source 2 (storm), but no start and end; expected a [[storm]] of that name "
+            "with start and end, to bring its totals to the other sources' step; add it; one of: May, June, July"
+        ),
         "storm July: found 2031-05-07T00:00:00 to 2031-05-06T00:00:00; expected an end after its start",
-        "storms May and June: found 2031-05-03T00:00:00 as end and 2031-05-02T00:00:00 as start; expected storm totals of "
-        "times that do not overlap",
+        (
+            "storms May and June: found 2031-05-03T00:00:00 as end and 2031-05-02T00:00:00 as start; expected storm "
+            "totals of times that do not overlap"
+        ),
     ]

@@ -40,8 +40,8 @@ def test_several_files(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read_rainfall([one, two, three], layout="totals", unit="mm")
     assert str(caught.value) == (
-        f"{three}:2: gauge A: found a second total of storm 'May'; expected one total for a gauge and storm; remove one of "
-        "the rows"
+        f"{three}:2: gauge A: found a second total of storm 'May'; expected one total for a gauge and storm; remove "
+        "one of the rows"
     )
 
 

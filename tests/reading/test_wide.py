@@ -52,16 +52,26 @@ def test_problems_of_a_file_together(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read_rainfall([path], layout="wide", unit="mm", interval="1h")
     assert str(caught.value).splitlines() == [
-        f"{path}:4: column time: time: found 'noon'; expected a time such as 2031-05-04 08:00, 2031-05-04T08:00:00+02:00, "
-        "2031-05-04 or 2031-05; correct the stamp",
-        f"{path}:2: column W01: gauge W01: found 'wet'; expected a depth of 0 or more; correct the cell, or declare it in "
-        "missing",
-        f"{path}:3: column W01: gauge W01: found '-999'; expected a depth of 0 or more; it looks like a missing code; if it "
-        "is one, add '-999' to missing",
-        f"{path}:2: column W02: gauge W02: found '-1'; expected a depth of 0 or more; correct the cell, or declare it in "
-        "missing",
-        f"{path}:3: column W02: gauge W02: found 'inf'; expected a depth of 0 or more; correct the cell, or declare it in "
-        "missing",
+        (
+            f"{path}:4: column time: time: found 'noon'; expected a time such as 2031-05-04 08:00, "
+            "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp"
+        ),
+        (
+            f"{path}:2: column W01: gauge W01: found 'wet'; expected a depth of 0 or more; correct the cell, or declare "
+            "it in missing"
+        ),
+        (
+            f"{path}:3: column W01: gauge W01: found '-999'; expected a depth of 0 or more; it looks like a missing "
+            "code; if it is one, add '-999' to missing"
+        ),
+        (
+            f"{path}:2: column W02: gauge W02: found '-1'; expected a depth of 0 or more; correct the cell, or declare "
+            "it in missing"
+        ),
+        (
+            f"{path}:3: column W02: gauge W02: found 'inf'; expected a depth of 0 or more; correct the cell, or declare "
+            "it in missing"
+        ),
     ]
     assert [(p.gauge, p.time) for p in caught.value.problems[1:3]] == [
         ("W01", "2031-05-04 01:00"),
@@ -76,10 +86,14 @@ def test_times_twice_or_out_of_order(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read_rainfall([path], layout="wide", unit="mm", interval="1h", gaps="missing")
     assert str(caught.value).splitlines() == [
-        f"{path}:5: column time: time: found '2031-05-04 03:00' after a later time; expected times in order; sort the rows "
-        "by time",
-        f"{path}:6: column time: time: found '2031-05-04 02:00', as in line 3; expected each time once; remove one of the "
-        "rows",
+        (
+            f"{path}:5: column time: time: found '2031-05-04 03:00' after a later time; expected times in order; sort "
+            "the rows by time"
+        ),
+        (
+            f"{path}:6: column time: time: found '2031-05-04 02:00', as in line 3; expected each time once; remove one "
+            "of the rows"
+        ),
     ]
 
 
