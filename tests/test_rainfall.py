@@ -17,7 +17,7 @@ ENDS = np.datetime64("2031-05-04T00:00:00") + np.arange(1, 4) * HOUR
 def record() -> RainRecord:
     """Two gauges over three hours, one gap."""
     return RainRecord.from_depths(
-        ("A", "B"), ENDS - HOUR, ENDS, [[1, 0], [2, np.nan], [0, 3]], step="1h", zone="+01:00"
+        ("A", "B"), ENDS - HOUR, ENDS, [[1.0, 0.0], [2.0, np.nan], [0.0, 3.0]], step="1h", zone="+01:00"
     )
 
 
@@ -83,7 +83,7 @@ def test_times_must_increase() -> None:
 def test_depths_must_be_depths(depth: float) -> None:
     """A negative or infinite depth is refused, with its gauge."""
     with pytest.raises(DataError, match=rf"^gauge A: found {depth} mm; expected a depth of 0 or more$"):
-        RainRecord.from_depths(("A",), ENDS - HOUR, ENDS, [[1], [depth], [1]], step="1h")
+        RainRecord.from_depths(("A",), ENDS - HOUR, ENDS, [[1.0], [depth], [1.0]], step="1h")
 
 
 @pytest.mark.parametrize(

@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from hypothesis.extra import numpy as stn
 
@@ -62,8 +62,8 @@ def test_dry_donors() -> None:
     assert status == ["spread"] * 3
     assert notes == [
         (
-            "Gauge G0: 45 mm over 2031-05-04T00:00:00 to 2031-05-07T00:00:00 spread evenly over the steps, because none "
-            "of the recording gauges near it has rain."
+            "Gauge G0: 45 mm over 2031-05-04T00:00:00 to 2031-05-07T00:00:00 spread evenly over the steps, because "
+            "none of the recording gauges near it has rain."
         )
     ]
 
@@ -158,9 +158,10 @@ DEPTHS = stn.arrays(
 )
 
 
+@settings(deadline=None)
 @given(DEPTHS, st.data())
 def test_shares_sum_to_one(depths: npt.NDArray[np.float64], data: st.DataObject) -> None:
-    """Shares are not negative and sum to 1 unless all donors are dry; dry steps get nothing; weights count by proportion."""
+    """Shares are not negative and sum to 1 unless all donors are dry; only the weights' proportions count."""
     n = depths.shape[1]
     weights = np.array(data.draw(st.lists(st.floats(0.01, 10), min_size=n, max_size=n)))
     shares = pattern_shares(depths, weights)
@@ -175,6 +176,7 @@ def test_shares_sum_to_one(depths: npt.NDArray[np.float64], data: st.DataObject)
     np.testing.assert_allclose(again, shares, rtol=1e-9, atol=1e-15)
 
 
+@settings(deadline=None)
 @given(DEPTHS, st.floats(0, 2000))
 def test_sharing_out_keeps_the_total(depths: npt.NDArray[np.float64], mm: float) -> None:
     """The parts sum to the total and none is negative."""
@@ -185,6 +187,7 @@ def test_sharing_out_keeps_the_total(depths: npt.NDArray[np.float64], mm: float)
         assert (parts >= 0).all()
 
 
+@settings(deadline=None)
 @given(DEPTHS, st.floats(0, 2000))
 def test_spreading_keeps_the_total(depths: npt.NDArray[np.float64], mm: float) -> None:
     """Whatever the donors, the steps of a gauge sum to its total to 1e-9 mm, and the donors stay as they were."""

@@ -45,6 +45,14 @@ def join_blocks(
     ------
     ReadError
         Times off the axis, a gauge and time in two files, undeclared gaps, accumulations that do not fit; all together.
+
+    Examples
+    --------
+    >>> ends = np.array(["2031-05-04", "2031-05-06"], dtype="datetime64[s]")
+    >>> cells = np.array([[1.0], [2.0]]), np.zeros((2, 1), dtype=np.uint8)
+    >>> block = Block("rain.csv", ("W01",), ends, np.array([2, 3]), *cells, None, {})
+    >>> join_blocks([block], Interval("1d", DAY), zone="", gaps="missing").depth[:, 0]
+    array([ 1., nan,  2.])
     """
     problems = Problems()
     steps = [_positions(block.ends, interval) for block in blocks]

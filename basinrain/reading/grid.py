@@ -159,6 +159,16 @@ def place(source: Source, grid: Grid) -> OnGrid:
 
     A finer one is summed: a step of the grid needs all its parts, else it is missing. An interval of a coarser one
     becomes a known total over the steps that it covers, or zeros.
+
+    Examples
+    --------
+    >>> ends = np.datetime64("2031-05-04T00:00:00") + np.arange(1, 5) * np.timedelta64(1800, "s")
+    >>> halves = Interval("30min", 1800)
+    >>> depth, status = np.array([[1.0], [2.0], [0.5], [0.0]]), np.zeros((4, 1), dtype=np.uint8)
+    >>> source = Source("source 1", halves, ("A",), ends - np.timedelta64(1800, "s"), ends, depth, status, ())
+    >>> place(source, Grid(Interval("1h", 3600), 0)).depth
+    array([[3. ],
+           [0.5]])
     """
     if relation(source.interval, grid.interval) == "coarser":
         return _place_coarser(source, grid)

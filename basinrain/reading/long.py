@@ -52,6 +52,18 @@ def read_long(
     -------
     block, zone
         None where the file cannot be used at all.
+
+    Examples
+    --------
+    >>> from basinrain.reading.depths import depth_rules
+    >>> from basinrain.reading.intervals import parse_interval
+    >>> day = parse_interval("1d")
+    >>> rules = depth_rules(unit="mm", interval=day, missing=[], trace=["T"], flags={}, accumulated=None)
+    >>> frame = pd.DataFrame({"gauge": ["W02", "W01"], "date": ["2031-05-04"] * 2, "depth": ["1.5", "T"]})
+    >>> table = DelimitedTable("rain.csv", ("gauge", "date", "depth"), frame, np.array([2, 3]), ".")
+    >>> block, zone = read_long(table, rules, StampRules(interval=day), columns={}, zone=None, problems=Problems())
+    >>> block.gauges, block.depth
+    (('W02', 'W01'), array([[1.5, 0. ]]))
     """
     needed = required_columns(
         table, {"gauge": GAUGE_NAMES, "time": TIME_NAMES, "depth": DEPTH_NAMES}, columns, problems

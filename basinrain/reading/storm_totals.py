@@ -38,6 +38,17 @@ def storm_bounds(
     -------
     starts, ends : arrays of datetime64[s], shape (n_storms,)
         NaT where a storm has no times.
+
+    Examples
+    --------
+    >>> never = np.array(["NaT"], dtype="datetime64[s]")
+    >>> record = RainRecord(
+    ...     ("A",), never, never, np.array([[5.0]]), np.zeros((1, 1), np.uint8), step="storm", labels=("May",)
+    ... )
+    >>> times = {"May": (np.datetime64("2031-05-04T06:00:00"), np.datetime64("2031-05-05T06:00:00"))}
+    >>> starts, ends = storm_bounds(record, times, "source 2 (storm)", Problems())
+    >>> str(starts[0]), str(ends[0])
+    ('2031-05-04T06:00:00', '2031-05-05T06:00:00')
     """
     starts, ends = record.starts.copy(), record.ends.copy()
     for row, storm in enumerate(record.labels):

@@ -40,6 +40,16 @@ def read_totals(
     RainRecord
         A step for every storm, in the order of their first rows, without times; a storm in which a gauge has no row is
         missing there. Without a storm column the only storm is named ``"storm"``.
+
+    Examples
+    --------
+    >>> from basinrain.reading.depths import depth_rules
+    >>> rules = depth_rules(unit="in", interval=None, missing=[], trace=["T"], flags={}, accumulated=None)
+    >>> frame = pd.DataFrame({"gauge": ["W01", "W02"], "depth": ["1", "0.5"]})
+    >>> table = DelimitedTable("totals.csv", ("gauge", "depth"), frame, np.array([2, 3]), ".")
+    >>> record = read_totals([table], rules, columns={}, problems=Problems())
+    >>> record.labels, record.depth
+    (('storm',), array([[25.4, 12.7]]))
     """
     rows: list[pd.DataFrame] = []
     for table in tables:

@@ -44,6 +44,19 @@ def read_wide(
     -------
     block, zone
         None where the file cannot be used at all.
+
+    Examples
+    --------
+    >>> import pandas as pd
+    >>> from basinrain.reading.depths import depth_rules
+    >>> from basinrain.reading.intervals import parse_interval
+    >>> day = parse_interval("1d")
+    >>> rules = depth_rules(unit="mm", interval=day, missing=[], trace=["T"], flags={}, accumulated=None)
+    >>> frame = pd.DataFrame({"date": ["2031-05-04"], "W01": ["1.5"], "W02": ["T"]})
+    >>> table = DelimitedTable("rain.csv", ("date", "W01", "W02"), frame, np.array([2]), ".")
+    >>> block, zone = read_wide(table, rules, StampRules(interval=day), columns={}, zone=None, problems=Problems())
+    >>> block.gauges, block.depth, str(block.ends[0])
+    (('W01', 'W02'), array([[1.5, 0. ]]), '2031-05-05T00:00:00')
     """
     mapped = columns.get("time")
     time = find_column(table.columns, TIME_NAMES, mapped=mapped, key="time", problems=problems)

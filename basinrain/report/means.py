@@ -71,7 +71,7 @@ def details(run: StormRun) -> list[Table]:
     frame = run.basin_means
     basins = limits.drawn_basins(run) if len(run.basins) > _DETAILED else range(len(run.basins))
     kept = [run.basins.ids[b] for b in basins]
-    partly = bool((frame["covered_share"] < 1 - 1e-9).any())
+    partly = bool(((frame["covered_share"] < 1 - 1e-9) & frame["depth"].notna()).any())
     volume_unit = unit_text(volume_unit_for(run.depth_unit))
     unit = unit_text(run.depth_unit)
     heads = ["basin", "method", f"depth, {unit}", f"volume, {volume_unit}", "gauges used", "on infilled values"]
@@ -102,7 +102,7 @@ def details(run: StormRun) -> list[Table]:
                 depth_text(row.depth_reporting_only, run.depth_unit),
             ]
             if partly:
-                cells.append(percent_text(row.covered_share))
+                cells.append(percent_text(row.covered_share if number else float("nan")))
             rows.append(tuple(cells))
         tables.append(
             Table(

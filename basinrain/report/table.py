@@ -5,12 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import groupby
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Final
 
 if TYPE_CHECKING:
     import pandas as pd
 
 __all__ = ["Row", "Table", "lines"]
+
+_LONGEST_GROUP: Final = 20
 
 Row = tuple[str, ...]
 """The cells of one line."""
@@ -63,8 +65,11 @@ class Table:
 
     @property
     def grouped(self) -> bool:
-        """Whether neighbouring lines have the same first cell, which then stands once for all of them."""
-        return any(len(group) > 1 for group in self.groups)
+        """Whether neighbouring lines have the same first cell, which then stands once for all of them.
+
+        Not in groups so long that a page may begin in the middle of one.
+        """
+        return 1 < max((len(group) for group in self.groups), default=0) <= _LONGEST_GROUP
 
     @property
     def groups(self) -> list[list[Row]]:

@@ -16,7 +16,7 @@ from basinrain.results import StormResult, StormRun
 
 __all__ = ["weights_pictures"]
 
-_MOST_GAUGES: Final = 24
+_MOST_GAUGES: Final = 16
 _ROW, _HEAD, _FOOT = 0.165, 0.5, 0.42  # inches
 
 

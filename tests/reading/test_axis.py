@@ -38,8 +38,8 @@ def test_overlapping_files(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read_all(tmp_path, wide("A", [1, 2]), wide("A", [2, 3]))
     assert str(caught.value) == (
-        f"{tmp_path / 'part2.csv'}:2: gauge A: found the 1h that ends at 2031-05-04T02:00:00, which {tmp_path / 'part1.csv'} "
-        "has too; expected a gauge and time in one file only; remove it from one of the files"
+        f"{tmp_path / 'part2.csv'}:2: gauge A: found the 1h that ends at 2031-05-04T02:00:00, which "
+        f"{tmp_path / 'part1.csv'} has too; expected a gauge and time in one file only; remove it from one of the files"
     )
 
 

@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 import pandas as pd
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from basinrain.errors import JobError
@@ -30,6 +30,10 @@ def cell(text: str, mark: str | None = None, **options: Any) -> tuple[float, str
     reader = DepthCells(table, rules(**options))
     depth, status, faults = reader.column("depth", flag=None if mark is None else "flag")
     return float(depth[0]), Status(status[0]).label, " ".join(part for _, fault in faults for part in fault[:2])
+
+
+def same(depth: float) -> Any:  # noqa: ANN401 - pytest's approximation
+    return pytest.approx(depth, nan_ok=True)
 
 
 MARKS = {
@@ -70,7 +74,7 @@ MARKS = {
 )
 def test_cells(text: str, depth: float, status: str) -> None:
     """Every kind of cell has its depth and status; blank and declared codes are missing, never zero."""
-    assert cell(text, missing=[-999, "n/a"], flags=MARKS) == (pytest.approx(depth, nan_ok=True), status, "")
+    assert cell(text, missing=[-999, "n/a"], flags=MARKS) == (same(depth), status, "")
 
 
 @pytest.mark.parametrize(
@@ -89,7 +93,7 @@ def test_cells(text: str, depth: float, status: str) -> None:
 def test_cells_with_a_mark_beside(text: str, mark: str, depth: float, status: str) -> None:
     """A mark in a column of its own means the same as one behind the number."""
     found = cell(text, mark, flags=MARKS, accumulated="A")
-    assert found == (pytest.approx(depth, nan_ok=True), status, "")
+    assert found == (same(depth), status, "")
 
 
 @pytest.mark.parametrize(
@@ -115,7 +119,7 @@ def test_cells_with_a_mark_beside(text: str, mark: str, depth: float, status: st
 def test_faulty_cells(text: str, complaint: str) -> None:
     """Text, infinite and negative numbers and undeclared codes are faults; nothing is made of them."""
     assert cell(text, flags={"presumed-zero": ["P"]}, accumulated="A") == (
-        pytest.approx(np.nan, nan_ok=True),
+        same(np.nan),
         "missing",
         complaint,
     )
@@ -153,7 +157,10 @@ def test_rules_that_cannot_be() -> None:
     with pytest.raises(JobError) as caught:
         rules("inch", flags={"estimate": ["E"], "trace": ["S"], "rejected": ["S", ""]})
     assert str(caught.value).splitlines() == [
-        "depth unit: found 'inch'; expected one of: mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, kg m-2; did you mean 'in'?",
+        (
+            "depth unit: found 'inch'; expected one of: mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, kg m-2; did "
+            "you mean 'in'?"
+        ),
         (
             "flags: found 'estimate'; expected one of: observed, estimated, adjusted, rejected, missing, trace, "
             "presumed-zero, accumulated; did you mean 'estimated'?"
@@ -163,6 +170,7 @@ def test_rules_that_cannot_be() -> None:
     ]
 
 
+@settings(deadline=None)
 @given(st.floats(0, 50), st.sampled_from(sorted(DEPTH_UNITS)))
 def test_units_round_trip(mm: float, unit: str) -> None:
     """A depth written in any unit is read as the same mm."""

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from hypothesis.extra import numpy as stn
 
@@ -24,7 +24,7 @@ def source(
     status: list[Status] | None = None,
     totals: tuple[KnownTotal, ...] = (),
 ) -> Source:
-    """One gauge A, from START."""
+    """Return a source of one gauge A, from START."""
     step = parse_interval(interval)
     values = np.asarray(depth, dtype=float)[:, None]
     length = np.timedelta64(step.seconds or 0, "s")
@@ -35,7 +35,7 @@ def source(
 
 
 def hours(first: int, last: int, mm: float) -> KnownTotal:
-    """A total of hours, counted from START."""
+    """Return a total of hours, counted from START."""
     return KnownTotal("A", START + np.timedelta64(first, "h"), START + np.timedelta64(last, "h"), mm)
 
 
@@ -61,6 +61,7 @@ def test_relation(step: str, common: str, expected: str) -> None:
     assert relation(parse_interval(step), parse_interval(common)) == expected
 
 
+@settings(deadline=None)
 @given(st.integers(-(10**9), 10**9), st.sampled_from(["5min", "1h", "1d", "1mo"]), st.integers(0, 86399))
 def test_numbers_and_bounds(second: int, word: str, phase: int) -> None:
     """Every time lies between its bound and the next, and is exact only at a bound."""
@@ -190,6 +191,7 @@ def test_off_bounds(interval: str, minutes: int, common: str, off: int) -> None:
     assert len(off_bounds(two, Grid(parse_interval(common), 0))) == off
 
 
+@settings(deadline=None)
 @given(
     stn.arrays(np.float64, st.integers(1, 200), elements=st.one_of(st.just(0.0), st.floats(0.01, 100))),
     st.integers(1, 12),

@@ -14,7 +14,10 @@ from basinrain.reading.rainfall import read_rainfall
 
 def test_rows_in_any_order(tmp_path: Path) -> None:
     """Rows of all gauges are sorted into one table, gauges in the order of their first rows."""
-    text = "station,date,precip,flag\nB,2031-05-05,2.5,E\nA,2031-05-04,1.5,\nA,2031-05-05,T,\nB,2031-05-04,-99,\nB,2031-05-06,9,R\n"
+    text = (
+        "station,date,precip,flag\nB,2031-05-05,2.5,E\nA,2031-05-04,1.5,\nA,2031-05-05,T,\n"
+        "B,2031-05-04,-99,\nB,2031-05-06,9,R\n"
+    )
     record = read(
         tmp_path, text, layout="long", interval="1d", missing=["-99"], flags={"estimated": ["E"], "rejected": ["R"]}
     )
@@ -77,8 +80,14 @@ def test_problems_together(tmp_path: Path) -> None:
             "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp"
         ),
         f"{path}:2: column gauge: gauge: found a blank cell; expected the gauge",
-        f"{path}:5: column depth: gauge A: found 'x'; expected a depth of 0 or more; correct the cell, or declare it in missing",
-        f"{path}:6: column depth: gauge A: found mark 'Z'; expected a declared mark (T); declare what it means in flags",
+        (
+            f"{path}:5: column depth: gauge A: found 'x'; expected a depth of 0 or more; correct the cell, or declare "
+            "it in missing"
+        ),
+        (
+            f"{path}:6: column depth: gauge A: found mark 'Z'; expected a declared mark (T); declare what it means in "
+            "flags"
+        ),
         f"{path}:7: column steps: steps: found '0'; expected a whole number of steps, 1 to 366",
         f"{path}:8: column steps: steps: found '1.5'; expected a whole number of steps, 1 to 366",
     ]
@@ -90,7 +99,8 @@ def test_a_time_twice(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read_rainfall([path], layout="long", unit="mm", interval="1h")
     assert str(caught.value) == (
-        f"{path}:4: gauge A: found '2031-05-04T01:00', as in line 2; expected each time once for a gauge; remove one of the rows"
+        f"{path}:4: gauge A: found '2031-05-04T01:00', as in line 2; expected each time once for a gauge; remove "
+        "one of the rows"
     )
 
 

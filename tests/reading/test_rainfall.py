@@ -24,7 +24,9 @@ DATA = Path(__file__).parent.parent / "data"
         ("oahu", "1d", 2792, 27.96, "", ("2010-01-01T00:00", "2010-01-02T00:00")),
     ],
 )
-def test_open_data(folder: str, interval: str, steps: int, missing: float, zone: str, first: tuple[str, str]) -> None:
+def test_open_data(  # noqa: PLR0917 - one row of the table
+    folder: str, interval: str, steps: int, missing: float, zone: str, first: tuple[str, str]
+) -> None:
     """Steps and missing shares of the open records are those of their READMEs (%), depths those that pandas reads."""
     path = DATA / folder / "rain.csv"
     record = read_rainfall([path], layout="wide", unit="mm", interval=interval)
@@ -89,7 +91,8 @@ def test_local_times_refused_in_a_file(tmp_path: Path) -> None:
 def test_options_that_cannot_be() -> None:
     """All faulty options are refused together, before any file is opened."""
     options: dict[str, Any] = {
-        "layout": "widr", "unit": "inch", "stamp": "middle", "timezone": "Nowhere/At_all", "gaps": "fill", "date_means": "end",
+        "layout": "widr", "unit": "inch", "stamp": "middle", "timezone": "Nowhere/At_all", "gaps": "fill",
+        "date_means": "end",
     }  # fmt: skip
     with pytest.raises(JobError) as caught:
         read_rainfall([], **options)

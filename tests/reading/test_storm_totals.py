@@ -15,7 +15,7 @@ NETWORK = GaugeNetwork(ids=("A", "B"), x=np.array([0.0, 1000.0]), y=np.zeros(2),
 
 
 def totals(gauges: tuple[str, ...], depth: npt.ArrayLike, *labels: str) -> RainRecord:
-    """A record of storm totals."""
+    """Return a record of storm totals."""
     never = np.full(len(labels), "NaT", dtype="datetime64[s]")
     plain = RainRecord.from_depths(gauges, never, never, depth, step="storm")
     return RainRecord(gauges, never, never, plain.depth, plain.status, step="storm", labels=labels)
@@ -24,7 +24,7 @@ def totals(gauges: tuple[str, ...], depth: npt.ArrayLike, *labels: str) -> RainR
 def test_sources_are_joined_by_storm() -> None:
     """Totals of one storm in several sources stand in one row, columns in the network's order."""
     record = merge_storm_totals(
-        [totals(("B", "A"), [[2, 1], [4, np.nan]], "May", "June"), totals(("A",), [[3]], "June")], NETWORK
+        [totals(("B", "A"), [[2.0, 1.0], [4.0, np.nan]], "May", "June"), totals(("A",), [[3]], "June")], NETWORK
     )
     assert (record.gauges, record.labels, record.recorders) == (("A", "B"), ("May", "June"), frozenset())
     np.testing.assert_array_equal(record.depth, [[1, 2], [3, 4]])

@@ -57,8 +57,8 @@ def test_problems_of_a_file_together(tmp_path: Path) -> None:
             "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp"
         ),
         (
-            f"{path}:2: column W01: gauge W01: found 'wet'; expected a depth of 0 or more; correct the cell, or declare "
-            "it in missing"
+            f"{path}:2: column W01: gauge W01: found 'wet'; expected a depth of 0 or more; correct the cell, or "
+            "declare it in missing"
         ),
         (
             f"{path}:3: column W01: gauge W01: found '-999'; expected a depth of 0 or more; it looks like a missing "
@@ -69,8 +69,8 @@ def test_problems_of_a_file_together(tmp_path: Path) -> None:
             "it in missing"
         ),
         (
-            f"{path}:3: column W02: gauge W02: found 'inf'; expected a depth of 0 or more; correct the cell, or declare "
-            "it in missing"
+            f"{path}:3: column W02: gauge W02: found 'inf'; expected a depth of 0 or more; correct the cell, or "
+            "declare it in missing"
         ),
     ]
     assert [(p.gauge, p.time) for p in caught.value.problems[1:3]] == [
