@@ -1,7 +1,6 @@
 """Warnings that a reviewer would raise: drawn from the results of a run, not from any method's code.
 
-The limits are conventions of this package (design defaults, common practice where a figure is used in the trade), chosen to
-make a reader look, not to pass or fail a result.
+The limits are conventions of this package, chosen to make a reader look, not to pass or fail a result.
 """
 
 from __future__ import annotations
@@ -51,8 +50,8 @@ def network_cautions(network: GaugeNetwork, basins: Basins) -> Iterator[Note]:
         if len(inside) == 0:
             yield Note(
                 code="no-gauge-inside",
-                text=f"No gauge lies inside basin {basin}; its mean rests on gauges outside, and the arithmetic mean has "
-                "no number unless the job widens it.",
+                text=f"No gauge lies inside basin {basin}; its mean rests on gauges outside, and the arithmetic mean "
+                "has no number unless the job widens it.",
                 basin=basin,
             )
         elif len(inside) == 1:
@@ -89,8 +88,8 @@ def _elevation_caution(
         side = "above" if highest < middle else "below"
         yield Note(
             code="elevation-missed",
-            text=f"Basin {basin} reaches from {low:.0f} to {high:.0f} m, its gauges from {lowest:.0f} to {highest:.0f} m: "
-            f"the half of its range {side} {middle:.0f} m has no gauge.",
+            text=f"Basin {basin} reaches from {low:.0f} to {high:.0f} m, its gauges from {lowest:.0f} to {highest:.0f} "
+            f"m: the half of its range {side} {middle:.0f} m has no gauge.",
             basin=basin,
         )
 
@@ -111,8 +110,8 @@ def record_cautions(record: RainRecord) -> Iterator[Note]:
         gauges = ", ".join(gauge for gauge, c in zip(record.gauges, changed, strict=True) if c)
         yield Note(
             code="network-changed",
-            text=f"The network changed during the record: {gauges} not in service throughout; nothing was infilled for them "
-            "while they were not there.",
+            text=f"The network changed during the record: {gauges} not in service throughout; nothing was infilled for "
+            "them while they were not there.",
         )
 
 

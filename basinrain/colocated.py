@@ -6,8 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from basinrain.gauges import GaugeNetwork
-from basinrain.gauges import colocated_groups
+from basinrain.gauges import GaugeNetwork, colocated_groups
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 
@@ -77,7 +76,5 @@ def merge_colocated(network: GaugeNetwork, record: RainRecord) -> tuple[GaugeNet
         )
         for group in groups
     )
-    rain = replace(
-        record, gauges=tuple(ids), depth=depth, status=status, totals=(), recorders=frozenset(recorders)
-    )
+    rain = replace(record, gauges=tuple(ids), depth=depth, status=status, totals=(), recorders=frozenset(recorders))
     return merged, rain.ordered(merged.ids), notes

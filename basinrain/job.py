@@ -8,6 +8,8 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Callable, Sequence
 from dataclasses import replace
+from datetime import datetime, timedelta
+from functools import partial
 from importlib.metadata import version
 from pathlib import Path
 from typing import Any, TypeVar, cast
@@ -114,13 +116,13 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
 def _read(job: Job) -> tuple[GaugeNetwork, RainRecord, Basins, tuple[Note, ...]]:
     """Read every file; the problems of all files are reported together."""
     problems = Problems()
-    network = _try(problems, lambda: _read_gauges(job))
-    records = [_try(problems, lambda source=source: _read_source(job, source)) for source in job.rainfall]
-    basins = _try(problems, lambda: _read_basins(job))
+    network = _try(problems, partial(_read_gauges, job))
+    records = [_try(problems, partial(_read_source, job, source)) for source in job.rainfall]
+    basins = _try(problems, partial(_read_basins, job))
     problems.raise_as(ReadError)
     # A reader that gave nothing has left a problem, so from here on everything is there.
-    network, (polygons, basin_notes) = cast(GaugeNetwork, network), cast(tuple[Basins, tuple[Note, ...]], basins)
-    sources = cast(list[RainRecord], records)
+    network, (polygons, basin_notes) = cast("GaugeNetwork", network), cast("tuple[Basins, tuple[Note, ...]]", basins)
+    sources = cast("list[RainRecord]", records)
     record, step_notes = reading.bring_to_step(
         sources, network, common=job.step.common, storm_times=_storm_times(job, sources[0].zone)
     )
@@ -162,8 +164,6 @@ def _read_basins(job: Job) -> tuple[Basins, tuple[Note, ...]]:
 
 def _moment(text: str | None, zone: str, *, end: bool) -> np.datetime64 | None:
     """Return a job's time in the record's clock; a bare date names its whole day."""
-    from datetime import datetime, timedelta
-
     if text is None:
         return None
     when = datetime.fromisoformat(text)
@@ -195,9 +195,7 @@ def _storm_times(job: Job, zone: str) -> dict[str, tuple[np.datetime64, np.datet
 
 def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]]:
     """Return the job's storms; without any the whole record is the storm, or each storm of a file of totals."""
-    tables = job.storm or tuple(
-        StormTable(name=name) for name in (record.labels or ("whole record",))
-    )
+    tables = job.storm or tuple(StormTable(name=name) for name in (record.labels or ("whole record",)))
     problems = Problems()
     names = [table.name for table in tables]
     for name in sorted({name for name in names if names.count(name) > 1}):
@@ -207,19 +205,23 @@ def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]
     for table in tables:
         found = _try(
             problems,
-            lambda table=table: storm_window(
-                record,
-                table.name,
-                start=_moment(table.start, record.zone, end=False),
-                end=_moment(table.end, record.zone, end=True),
-                pattern=table.pattern,
-            ),
+            partial(_storm, table, record),
         )
         if found is not None:
             storms.append(found[0])
             notes += found[1]
     problems.raise_as(JobError)
     return storms, tuple(notes)
+
+
+def _storm(table: StormTable, record: RainRecord) -> tuple[Storm, tuple[Note, ...]]:
+    return storm_window(
+        record,
+        table.name,
+        start=_moment(table.start, record.zone, end=False),
+        end=_moment(table.end, record.zone, end=True),
+        pattern=table.pattern,
+    )
 
 
 def _catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.float64]]:
@@ -270,7 +272,7 @@ def _facts(job: Job, grid: Grid | None) -> dict[str, str]:
     return facts
 
 
-def _run_one(
+def _run_one(  # noqa: PLR0917 - each room's product, in order
     job: Job,
     storm: Storm,
     record: RainRecord,

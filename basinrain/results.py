@@ -27,10 +27,10 @@ if TYPE_CHECKING:
 __all__ = ["CAUTION", "StormResult", "StormRun"]
 
 CAUTION = (
-    "Basin rainfall estimated from point gauges, for use by a qualified hydrologist or engineer. Gauge density, exposure, "
-    "wind loss and the choice of method can each change it by more than the digits suggest. For flood, dam-safety or "
-    "drainage design the local code and the responsible licensed professional govern. No correction for gauge catch is "
-    "made unless the job gives one."
+    "Basin rainfall estimated from point gauges, for use by a qualified hydrologist or engineer. Gauge density, "
+    "exposure, wind loss and the choice of method can each change it by more than the digits suggest. For flood, "
+    "dam-safety or drainage design the local code and the responsible licensed professional govern. No correction for "
+    "gauge catch is made unless the job gives one."
 )
 
 
@@ -163,11 +163,11 @@ class StormRun:
 
     @cached_property
     def thiessen(self) -> gpd.GeoDataFrame:
-        """Thiessen polygons cut to the basins, all gauges present: one row per basin and gauge; longitude and latitude."""
+        """Thiessen polygons cut to the basins, all gauges present, in degrees: one row per basin and gauge."""
         return tables.thiessen(self)
 
     def write(self, folder: str | Path) -> Path:
-        """Write every table, the record of the run and the report; return the folder. See :func:`basinrain.writing.write_run`."""
+        """Write every table, the record of the run and the report as :func:`basinrain.writing.write_run` does."""
         from basinrain.writing import write_run
 
         return write_run(self, folder)

@@ -98,8 +98,8 @@ def storm_window(
     >>> storm_window(record, "Quill", start=np.datetime64("2031-06-01"))
     Traceback (most recent call last):
         ...
-    basinrain.errors.JobError: storm Quill: found 2031-06-01T00:00 to 2031-05-04T04:00; expected an end after the start; \
-correct start or end
+    basinrain.errors.JobError: storm Quill: found 2031-06-01T00:00 to 2031-05-04T04:00; expected an end after the \
+start; correct start or end
     """
     known = (MEAN, NEAREST_RECORDER, *record.gauges)
     if pattern not in known:
@@ -170,7 +170,7 @@ class BasinDepths:
     infilled : array of float, shape (n_basins,)
         mm of the total that rest on infilled values.
     reporting_only : array of float, shape (n_basins,)
-        Total in mm with weights rebuilt at every step from the gauges that report; NaN where no gauge does at some step.
+        Total in mm with weights rebuilt at every step from the gauges that report; NaN where at some step none does.
     contribution : array of float, shape (n_basins, n_gauges)
         mm of the total that come from each gauge's own values, directly and through infill; rows sum to the total.
     least, most : array of float, shape (n_basins, n_gauges)
@@ -214,9 +214,9 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     Notes
     -----
     With D the donor weights of a step, W the weights of the gauges that have a depth and p the reporting gauges' own
-    depths, the basin mean of the step is ``W D p``. Hence the contribution of gauge i to basin b over the storm is the sum
-    over steps of ``(W D)[b, i] p[i]``, and these sum to the mean exactly. Where a day's or storm's total was spread, p
-    is the donors' total in the times of the gauge whose pattern was used.
+    depths, the basin mean of the step is ``W D p``. Hence the contribution of gauge i to basin b over the storm is the
+    sum over steps of ``(W D)[b, i] p[i]``, and these sum to the mean exactly. Where the total of a day or storm was
+    spread, p is the donors' total in the times of the gauge whose pattern was used.
     """
     record = completed.record
     has_depth = ~np.isnan(record.depth)
@@ -302,8 +302,8 @@ def hyetograph_shape(
     Returns
     -------
     list of (str, array of shape (n_steps,) or None), one per basin
-        The gauge whose pattern is used and its shares of the storm (summing to 1); ``("mean", None)`` where the basin mean
-        keeps its own times.
+        The gauge whose pattern is used and its shares of the storm (summing to 1); ``("mean", None)`` where the basin
+        mean keeps its own times.
 
     Raises
     ------
@@ -328,7 +328,7 @@ def hyetograph_shape(
                 )
             )
         return [(storm.pattern, record.depth[:, column] / totals[column])] * len(basins)
-    wet = record.measured.all(axis=0) & (totals > 0) & np.isin(record.gauges, list(record.recorders or record.gauges))
+    wet = record.measured.all(axis=0) & (totals > 0) & np.isin(record.gauges, list(record.recorders))
     if not wet.any():
         raise MethodError(
             Problem(

@@ -66,7 +66,9 @@ def _frame(rows: list[tuple[Any, ...]], columns: str) -> pd.DataFrame:
 
 
 def _quotient(part: npt.NDArray[np.float64], whole: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
-    return np.divide(part, whole, out=np.full(np.broadcast(part, whole).shape, np.nan), where=whole > 0)
+    quotient = np.full(np.broadcast(part, whole).shape, np.nan)
+    np.divide(part, whole, out=quotient, where=whole > 0)
+    return quotient
 
 
 def basin_means(run: StormRun) -> pd.DataFrame:
@@ -99,8 +101,8 @@ def basin_means(run: StormRun) -> pd.DataFrame:
             )
     return _frame(
         rows,
-        "storm basin method depth depth_unit area area_unit volume volume_unit gauges_used share_infilled covered_share "
-        "depth_reporting_only",
+        "storm basin method depth depth_unit area area_unit volume volume_unit gauges_used share_infilled "
+        "covered_share depth_reporting_only",
     )
 
 
@@ -135,9 +137,7 @@ def storm_table(run: StormRun) -> pd.DataFrame:
                     ratio[b],
                 )
             )
-    return _frame(
-        rows, "storm basin method start end depth depth_unit peak_of_mean mean_of_peaks peak_ratio"
-    )
+    return _frame(rows, "storm basin method start end depth depth_unit peak_of_mean mean_of_peaks peak_ratio")
 
 
 def peaks(result: StormResult, method: str) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
@@ -165,7 +165,7 @@ def weights(run: StormRun) -> pd.DataFrame:
     rows: list[tuple[Any, ...]] = []
     for result, method, depths in _depths(run):
         share = _quotient(depths.contribution, depths.total[:, None])
-        reports = result.completed.record.reporting.any(axis=0)
+        reports: npt.NDArray[np.bool_] = np.asarray(result.completed.record.reporting.any(axis=0))
         for b, basin in enumerate(run.basins.ids):
             weight = depths.table.weights[b]
             counts = np.flatnonzero((np.nan_to_num(weight) != 0) | (np.nan_to_num(depths.most[b]) != 0))
@@ -184,9 +184,7 @@ def weights(run: StormRun) -> pd.DataFrame:
                 )
                 for g in counts
             ]
-    return _frame(
-        rows, "storm basin method gauge weight weight_min weight_max contribution depth_unit share"
-    )
+    return _frame(rows, "storm basin method gauge weight weight_min weight_max contribution depth_unit share")
 
 
 def weights_compared(run: StormRun) -> pd.DataFrame:

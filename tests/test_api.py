@@ -12,7 +12,19 @@ import pytest
 
 import basinrain
 
-HEAVY = ["numpy", "pandas", "geopandas", "matplotlib", "scipy", "shapely", "pyproj", "pyogrio", "pydantic", "jinja2", "rich"]
+HEAVY = [
+    "numpy",
+    "pandas",
+    "geopandas",
+    "matplotlib",
+    "scipy",
+    "shapely",
+    "pyproj",
+    "pyogrio",
+    "pydantic",
+    "jinja2",
+    "rich",
+]
 
 
 def loaded_by(code: str) -> list[str]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+import numpy.typing as npt
 import pytest
 import shapely
 
@@ -18,7 +19,7 @@ from basinrain.storms import average_storm
 NAN = float("nan")
 
 
-def square(side: float = 10e3, **more: np.ndarray) -> Basins:  # type: ignore[type-arg]
+def square(side: float = 10e3, **more: npt.NDArray[np.float64]) -> Basins:
     return Basins(ids=("all",), polygons=np.array([shapely.box(0, 0, side, side)]), crs="local", **more)
 
 
@@ -53,7 +54,10 @@ def test_elevations_missing_the_basins_range() -> None:
     places = ((2e3, 2e3), (8e3, 8e3))
     notes = list(network_cautions(at(*places, elevation=[100.0, 240.0]), range_known))
     assert [note.code for note in notes] == ["elevation-missed"]
-    assert "from 100 to 900 m, its gauges from 100 to 240 m: the half of its range above 500 m has no gauge" in notes[0].text
+    assert (
+        "from 100 to 900 m, its gauges from 100 to 240 m: the half of its range above 500 m has no gauge"
+        in notes[0].text
+    )
     assert codes(at(*places, elevation=[100.0, 520.0]), range_known) == []
     assert codes(at(*places, elevation=[700.0, 820.0]), range_known) == ["elevation-missed"]
     assert codes(at(*places, elevation=[100.0, 240.0]), square()) == []
@@ -97,7 +101,7 @@ def test_one_gauge_over_half_of_the_weight() -> None:
 
 
 def test_much_of_the_mean_on_infilled_values() -> None:
-    """With one of two gauges silent at the second of two equal steps 25 % is infilled, which is not over; at both it is."""
+    """One of two gauges silent at one of two equal steps: 25 % infilled, which is not over; at both: 50 %, which is."""
     network = at((2.5e3, 5e3), (7.5e3, 5e3))
     assert storm_notes([[5, 5], [5, NAN]], network, ("thiessen",)) == []
     (note,) = storm_notes([[5, NAN], [5, NAN]], network, ("thiessen",))
@@ -111,7 +115,9 @@ def test_methods_apart() -> None:
     notes = storm_notes([[10, 30]], network, ("arithmetic", "thiessen"))
     apart = [note for note in notes if note.code == "methods-apart"]
     assert [note.text for note in apart] == ["The methods give basin all from 18.0 to 20.0 mm, 2.0 mm or 11 % apart."]
-    inches = [n.text for n in storm_notes([[10, 30]], network, ("arithmetic", "thiessen"), "in") if n.code == "methods-apart"]
+    inches = [
+        n.text for n in storm_notes([[10, 30]], network, ("arithmetic", "thiessen"), "in") if n.code == "methods-apart"
+    ]
     assert inches == ["The methods give basin all from 0.71 to 0.79 in, 0.08 in or 11 % apart."]
     assert "methods-apart" not in [n.code for n in storm_notes([[9, 9]], network, ("arithmetic", "thiessen"))]
 
@@ -120,7 +126,9 @@ def test_weights_rebuilt_is_said() -> None:
     """A step at which a gauge stays without a value is counted."""
     network = at((2.5e3, 5e3), (7.5e3, 5e3))
     completed = complete(
-        record_of([[5, 5], [5, NAN]], network), network, InfillOptions(method="station-average", scale="step", min_donors=2)
+        record_of([[5, 5], [5, NAN]], network),
+        network,
+        InfillOptions(method="station-average", scale="step", min_donors=2),
     )
     depths = average_storm(completed, averaging_method("thiessen")(network, square()))
     notes = list(storm_cautions("Q", network, square(), {"thiessen": depths}))

@@ -12,7 +12,7 @@ NAN = float("nan")
 
 
 def test_statuses_and_normals_of_merged_gauges() -> None:
-    """The mean of those that report; missing only where none does; normals averaged; zero and wet make an observed value."""
+    """The mean of those that report, missing only where none does; normals averaged; zero and wet are observed."""
     network = GaugeNetwork(
         ids=("A", "B", "C"),
         x=np.array([0.0, 900.0, 900.0]),

@@ -105,7 +105,9 @@ def test_contributions_sum_to_the_mean_on_random_storms() -> None:
     """Whatever is missing, contributions of reporting gauges sum to every basin's total."""
     random = np.random.default_rng(7)
     basins = Basins(
-        ids=("west", "east"), polygons=np.array([shapely.box(0, 0, 12e3, 10e3), shapely.box(12e3, 0, 30e3, 10e3)]), crs="local"
+        ids=("west", "east"),
+        polygons=np.array([shapely.box(0, 0, 12e3, 10e3), shapely.box(12e3, 0, 30e3, 10e3)]),
+        crs="local",
     ).with_union()
     checked = 0
     for _ in range(60):
@@ -138,7 +140,11 @@ def test_storm_window_takes_whole_steps_and_says_so() -> None:
 @pytest.mark.parametrize(
     ("start", "end", "message"),
     [
-        ("2031-05-04T03", "2031-05-04T01", "storm Q: found 2031-05-04T03:00 to 2031-05-04T01:00; expected an end after"),
+        (
+            "2031-05-04T03",
+            "2031-05-04T01",
+            "storm Q: found 2031-05-04T03:00 to 2031-05-04T01:00; expected an end after",
+        ),
         ("2031-05-03T23", "2031-05-04T03", "expected a window inside the record, 2031-05-04T00:00 to 2031-05-04T06:00"),
         ("2031-05-04T03", "2031-05-04T07", "expected a window inside the record"),
     ],
@@ -182,7 +188,9 @@ def test_patterns_of_the_hyetograph() -> None:
 def test_status_of_a_total_in_words() -> None:
     """Each way a gauge's total can come about has its word."""
     completed = complete(
-        hourly([[1, NAN, NAN], [1, 2, NAN]]), NETWORK, InfillOptions(method="station-average", scale="step", min_donors=1)
+        hourly([[1, NAN, NAN], [1, 2, NAN]]),
+        NETWORK,
+        InfillOptions(method="station-average", scale="step", min_donors=1),
     )
     assert [status_of_total(completed.record, g) for g in range(3)] == ["observed", "partly infilled", "infilled"]
     alone = complete(hourly([[1, NAN, NAN]]), NETWORK, InfillOptions(min_donors=2))
@@ -211,7 +219,7 @@ def test_reporting_only_has_no_number_where_the_method_refuses() -> None:
 
 
 def test_contributions_with_a_gauge_that_closes_inside_a_spread_total() -> None:
-    """A storm total spread in a recorder's pattern, while the set of gauges changes: contributions still sum to the mean."""
+    """A total spread in a recorder's pattern while the set of gauges changes: contributions still sum to the mean."""
     network = GaugeNetwork(
         ids=("A", "B", "C", "D"),
         x=np.array([5e3, 12e3, 25e3, 16e3]),

@@ -1,10 +1,12 @@
-"""A tiny job on a basin that can be drawn: a 10 km square in two halves, three gauges on its middle line, four hours."""
+"""A tiny job on a basin that can be drawn: a 10 km square in two halves, three gauges on a line, four hours."""
 
 from __future__ import annotations
 
 import json
 from pathlib import Path
 from typing import Any
+
+Ring = list[list[float]]
 
 GAUGES = """id,name,x,y,elevation,normal
 A,Alder Ford,2.5,5,120,900
@@ -43,11 +45,11 @@ length_unit = "km"
 idw = { cell = 250 }
 """
 
-WEST = [[0, 0], [5, 0], [5, 10], [0, 10], [0, 0]]
-EAST = [[5, 0], [10, 0], [10, 10], [5, 10], [5, 0]]
+WEST: Ring = [[0, 0], [5, 0], [5, 10], [0, 10], [0, 0]]
+EAST: Ring = [[5, 0], [10, 0], [10, 10], [5, 10], [5, 0]]
 
 
-def feature(ring: list[list[float]], **properties: object) -> dict[str, Any]:
+def feature(ring: Ring, **properties: object) -> dict[str, Any]:
     return {"type": "Feature", "properties": properties, "geometry": {"type": "Polygon", "coordinates": [ring]}}
 
 

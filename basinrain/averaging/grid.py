@@ -15,7 +15,7 @@ from basinrain.averaging.inputs import union_is_sum
 from basinrain.basins import UNION, Basins
 from basinrain.errors import JobError, MethodError, Problem
 
-__all__ = ["MOST_CELLS", "SETTLED", "Grid", "make_grid"]
+__all__ = ["MOST_CELLS", "SETTLED", "Grid", "lay", "lay_within_limit", "make_grid"]
 
 MOST_CELLS: Final = 2_000_000
 """A grid with more cells is refused."""
@@ -137,7 +137,13 @@ a larger cell
 
 
 def lay_within_limit(basins: Basins, cell: float, *, remedy: str) -> Grid:
-    """Lay a grid, or refuse it for its number of cells and say what to do about it."""
+    """Lay a grid as :func:`make_grid` does; where it has too many cells, say in ``remedy`` what to do about it.
+
+    Raises
+    ------
+    MethodError
+        There would be over 2,000,000 cells.
+    """
     # The largest basin tells without any geometry when there would be far too many.
     at_least = math.ceil(float(basins.areas.max()) / cell**2 * (1 - 1e-9))
     grid = lay(basins, cell) if at_least <= MOST_CELLS else None
@@ -154,7 +160,13 @@ def lay_within_limit(basins: Basins, cell: float, *, remedy: str) -> Grid:
 
 
 def lay(basins: Basins, cell: float) -> Grid:
-    """Lay a grid without asking how many cells it will have."""
+    """Lay a grid without asking how many cells it will have, as :func:`make_grid` does with a limit.
+
+    Raises
+    ------
+    MethodError
+        The cells of a basin do not hold its area (to 1e-9 of it).
+    """
     west, south, _, _ = basins.bounds
     added = union_is_sum(basins)
     n_cut = len(basins) - added

@@ -1,4 +1,4 @@
-"""The command line. It holds no hydrology: every command reads a job, calls :mod:`basinrain.job` and shows the result."""
+"""The command line: every command reads a job, calls :mod:`basinrain.job` and shows the result. No hydrology here."""
 
 from __future__ import annotations
 
@@ -41,7 +41,11 @@ def main() -> None:
 
 @main.command()
 @click.argument("job", type=click.Path(path_type=Path))
-@click.option("--output", type=click.Path(path_type=Path), help="Folder for the results in place of the job's; they go to its storm folder.")
+@click.option(
+    "--output",
+    type=click.Path(path_type=Path),
+    help="Folder for the results in place of the job's; they go to its storm folder.",
+)
 @click.option(
     "--set", "settings", multiple=True, metavar="TABLE.KEY=VALUE", help="Change the job; may be given more than once."
 )

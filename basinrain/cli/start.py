@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import shutil
 from importlib.resources import as_file, files
+from importlib.resources.abc import Traversable
 from pathlib import Path
 
 import click
@@ -40,7 +41,7 @@ def start_command(folder: Path) -> None:
     click.echo(f"Made {folder}. Next: basinrain storm {folder / 'job.toml'}")
 
 
-def _sample():  # type: ignore[no-untyped-def]  # noqa: ANN202 - importlib.resources' Traversable
+def _sample() -> Traversable:
     package = files("basinrain")
     sample = package / "sample"
     # In a source tree the sample is the demo folder itself; the wheel carries a copy.

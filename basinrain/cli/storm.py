@@ -6,12 +6,17 @@ import sys
 from pathlib import Path
 
 import click
+import numpy as np
 from rich.console import Console
 from rich.table import Table
 
 from basinrain.job import run_storm
 from basinrain.jobfile import read_job
+from basinrain.report.words import depth_decimals, number_text
 from basinrain.results import StormRun
+from basinrain.storms import spread_across_methods
+from basinrain.tables import share_infilled
+from basinrain.units import area_factor, depth_factor
 from basinrain.writing import check_folder, record_text, write_run
 from basinrain.writing.folder import RECORD
 
@@ -42,35 +47,31 @@ def storm_command(
 
 def _show(run: StormRun, folder: Path) -> None:
     console = Console(width=None if sys.stdout.isatty() else 110, highlight=False, markup=False, emoji=False)
-    digits = 2 if run.depth_unit == "in" else 1
+    digits = depth_decimals(run.depth_unit)
     for result in run.storms:
-        name = result.storm.name
-        means = run.basin_means[run.basin_means["storm"] == name]
-        spread = run.spread[run.spread["storm"] == name].set_index("basin")
-        console.print(f"{name}: basin means in {run.depth_unit}")
+        console.print(f"{result.storm.name}: basin means in {run.depth_unit}")
         table = Table(show_edge=False, pad_edge=False)
         table.add_column("basin")
         for heading in (f"area {run.area_unit}", *run.methods, "spread", "spread %", "infilled %"):
             table.add_column(heading, justify="right")
-        for basin, rows in means.groupby("basin", sort=False):
-            by_method = rows.set_index("method")
-            apart = spread.loc[basin]
+        mm = depth_factor(run.depth_unit)
+        shares = [share_infilled(result, method) for method in run.methods]
+        for b, basin in enumerate(run.basins.ids):
+            totals = [float(result.depths[method].total[b]) for method in run.methods]
+            _, _, apart, percent = spread_across_methods(totals)
             table.add_row(
-                str(basin),
-                f"{rows['area'].iloc[0]:.1f}",
-                *(_number(by_method.loc[m, "depth"], digits) for m in run.methods),
-                _number(apart["spread"], digits),
-                _number(apart["spread_percent"], 1),
-                _number(100 * rows["share_infilled"].max(), 0),
+                basin,
+                number_text(run.basins.areas[b] / area_factor(run.area_unit), 1),
+                *(number_text(total / mm, digits) for total in totals),
+                number_text(apart / mm, digits),
+                number_text(percent, 1),
+                number_text(100 * max((float(s[b]) for s in shares if not np.isnan(s[b])), default=np.nan), 0),
             )
         console.print(table)
         console.print()
     for note in run.warnings:
         console.print(f"Warning: {note}", soft_wrap=True)
-    console.print("For a qualified engineer's judgement; local codes and licensed practice govern design.", soft_wrap=True)
+    console.print(
+        "For a qualified engineer's judgement; local codes and licensed practice govern design.", soft_wrap=True
+    )
     click.echo(f"Written to {folder}: report.html, record.json and the CSV files")
-
-
-def _number(value: object, digits: int) -> str:
-    number = float(value)  # type: ignore[arg-type]
-    return "–" if number != number else f"{number:.{digits}f}"

@@ -25,8 +25,8 @@ def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
     path
         The TOML file.
     settings
-        Changes in the words of the command line, ``"infill.method=normal-ratio"``; a value is TOML where it can be, else
-        text. A table that may repeat is counted from 1: ``"rainfall.2.unit=in"``; the number may be left out where
+        Changes in the words of the command line, ``"infill.method=normal-ratio"``; a value is TOML where it can be,
+        else text. A table that may repeat is counted from 1: ``"rainfall.2.unit=in"``; the number may be left out where
         there is one.
 
     Raises
@@ -58,7 +58,7 @@ def _not_toml(message: str, text: str, file: str) -> Problem:
     remedy = "correct the line"
     if re.search(r"=\s*\d{4}-\d\d-\d\d[T ]\d\d:\d\d\b(?!:)", written):
         remedy = "a time in TOML has seconds: write 2031-05-03T18:00:00, or put it in quotes"
-    found = f"'{written}': {message.split(' (at ')[0].lower()}" if written else message.lower()
+    found = f"'{written}': {message.partition(' (at ')[0].lower()}" if written else message.lower()
     return Problem(item="job file", found=found, expected="TOML", remedy=remedy, file=file, line=line)
 
 
@@ -134,7 +134,10 @@ def _apply(tables: dict[str, Any], setting: str) -> None:
     if not equals or len(words) < 2 or not all(words):
         raise JobError(
             Problem(
-                item="--set", found=f"'{setting}'", expected="TABLE.KEY=VALUE", remedy="write infill.method=normal-ratio"
+                item="--set",
+                found=f"'{setting}'",
+                expected="TABLE.KEY=VALUE",
+                remedy="write infill.method=normal-ratio",
             )
         )
     try:

@@ -1,7 +1,7 @@
 """The tables and keys of a job file, declared once.
 
-The Python API, the command line's ``--set``, the messages about wrong keys and the JSON Schema in ``docs/`` all come from
-these models.
+The Python API, the command line's ``--set``, the messages about wrong keys and the JSON Schema in ``docs/`` all come
+from these models.
 """
 
 from __future__ import annotations
@@ -40,7 +40,9 @@ def _one_of(known: Iterable[str]) -> AfterValidator:
     def check(value: str) -> str:
         if value not in names:
             raise PydanticCustomError(
-                "one_of", "{expected}", {"expected": "one of: " + ", ".join(names), "remedy": nearest_name(value, names)}
+                "one_of",
+                "{expected}",
+                {"expected": "one of: " + ", ".join(names), "remedy": nearest_name(value, names)},
             )
         return value
 

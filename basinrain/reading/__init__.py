@@ -3,7 +3,7 @@
 from basinrain.reading.basins import read_basins
 from basinrain.reading.gauges import read_gauges
 from basinrain.reading.rainfall import read_rainfall
-from basinrain.reading.settle import settle
+from basinrain.reading.settling import settle
 from basinrain.reading.step import bring_to_step
 
 __all__ = ["bring_to_step", "read_basins", "read_gauges", "read_rainfall", "settle"]

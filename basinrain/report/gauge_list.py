@@ -103,7 +103,7 @@ def totals_tables(run: StormRun) -> list[Table]:
                     "Spread: a depth measured over a longer time.",
                     *_others(run, len(listed)),
                     *(
-                        (f"{more} more storms are in gauge_totals.csv.",)
+                        (f"{counted(more, 'more storm is', 'more storms are')} in gauge_totals.csv.",)
                         if more and first + len(storms) == len(names)
                         else ()
                     ),

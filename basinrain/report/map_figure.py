@@ -88,6 +88,7 @@ class _Ground:
         # Nodes and merges, so that an edge of two basins is drawn once and simplified once.
         borders = shapely.unary_union(shapely.boundary(basins.polygons))
         self.borders = _merged(borders).simplify(pixel / 2)
+        self.border_width = 1.2 if len(basins) <= limits.BASINS else 0.7
         self.cells = self._cells(run, union, pixel)
 
     @staticmethod
@@ -136,7 +137,7 @@ def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[s
     axes.add_collection(
         LineCollection(_lines(ground.cells), colors=INK, linewidths=0.7, linestyles=[(0, (3, 2))], zorder=2)
     )
-    axes.add_collection(LineCollection(_lines(ground.borders), colors=INK, linewidths=1.2, zorder=3))
+    axes.add_collection(LineCollection(_lines(ground.borders), colors=INK, linewidths=ground.border_width, zorder=3))
     for axis in (axes.xaxis, axes.yaxis):
         axis.set_major_locator(MaxNLocator(6))
         axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value / 1000:g}".replace("-", "−")))
@@ -225,7 +226,7 @@ def _legend(ground: _Ground, statuses: Iterable[str]) -> list[Line2D]:
         Line2D([], [], **_mark_style(*mark), linestyle="none", label=_mark_words(*mark))
         for mark in _marks(ground, statuses)
     ]
-    handles.append(Line2D([], [], color=INK, linewidth=1.2, label="basin boundary"))
+    handles.append(Line2D([], [], color=INK, linewidth=ground.border_width, label="basin boundary"))
     if not ground.cells.is_empty:
         handles.append(Line2D([], [], color=INK, linewidth=0.7, linestyle=(0, (3, 2)), label="edge of Thiessen cells"))
     return handles

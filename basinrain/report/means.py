@@ -11,6 +11,7 @@ from basinrain.report.table import Row, Table, lines
 from basinrain.report.words import (
     DASH,
     area_text,
+    counted,
     depth_text,
     percent_text,
     unit_text,
@@ -121,6 +122,6 @@ def details(run: StormRun) -> list[Table]:
             heads=last.heads,
             align=last.align,
             rows=last.rows,
-            notes=(*last.notes, f"{more} more storms are in basin_means.csv."),
+            notes=(*last.notes, f"{counted(more, 'more storm is', 'more storms are')} in basin_means.csv."),
         )
     return tables

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 import re
-from decimal import Decimal
+from decimal import ROUND_HALF_UP, Decimal
 from typing import Final
 
 import numpy as np
@@ -50,21 +50,27 @@ def depth_decimals(unit: str) -> int:
 
 
 def number_text(value: float, decimals: int, *, grouped: bool = False) -> str:
-    """Return a number with fixed decimals; a dash for NaN.
+    """Return a number with fixed decimals, halves away from zero as the trade rounds; a dash for NaN.
 
     Examples
     --------
     >>> number_text(1.25, 1), number_text(-0.01, 1), number_text(-2.0, 1), number_text(float("nan"), 1)
-    ('1.2', '0.0', '−2.0', '–')
+    ('1.3', '0.0', '−2.0', '–')
     >>> number_text(3312700.4, 0, grouped=True).split(NARROW_SPACE)
     ['3', '312', '700']
     """
     if math.isnan(value):
         return DASH
-    text = f"{value:,.{decimals}f}" if grouped else f"{value:.{decimals}f}"
+    rounded = _half_up(value, decimals)
+    text = f"{rounded:,f}" if grouped else f"{rounded:f}"
     if not text.strip("-0.,"):
         text = text.lstrip("-")
     return text.replace(",", NARROW_SPACE).replace("-", "−")
+
+
+def _half_up(value: float, decimals: int) -> Decimal:
+    """Round a half up, also one that binary fractions miss by a little: 25.25 is 25.3."""
+    return Decimal(f"{value:.{decimals + 6}f}").quantize(Decimal(1).scaleb(-decimals), ROUND_HALF_UP)
 
 
 def depth_text(depth: float, unit: str) -> str:
@@ -112,17 +118,17 @@ def round_to_sum(values: npt.ArrayLike, decimals: int) -> npt.NDArray[np.float64
     >>> round_to_sum([1.04, 1.04, 1.04, 0.0], 1)  # the total is 3.12, which prints as 3.1
     array([1.1, 1. , 1. , 0. ])
     >>> round_to_sum([0.25, float("nan")], 1)
-    array([0.2, nan])
+    array([0.3, nan])
     >>> round_to_sum([], 1)
     array([], dtype=float64)
     """
     array = np.asarray(values, dtype=float)
     if array.size == 0 or np.isnan(array).any():
-        return np.round(array, decimals)
+        return np.array([v if math.isnan(v) else float(_half_up(v, decimals)) for v in array.tolist()])
     # Rounded at the 6th further decimal, so that 0.7 * 10 is 7 and not a little more.
     scaled = np.round(array * 10.0**decimals, 6)
     units = np.floor(scaled)
-    total = int(Decimal(f"{float(array.sum()):.{decimals}f}").scaleb(decimals))
+    total = int(_half_up(float(array.sum()), decimals).scaleb(decimals))
     lacking = total - int(units.sum())
     order = np.argsort(-(scaled - units), kind="stable")
     # Beyond one unit for each value only where the sum of many values and of their rounded-down parts drift apart.

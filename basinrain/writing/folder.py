@@ -41,7 +41,7 @@ def check_folder(folder: Path, inputs: Iterable[Path]) -> None:
             raise _refused(folder, f"the input {path.name} inside it", "a folder without inputs", "name another one")
     _restore(place)
     if place.exists():
-        strangers = sorted(set(os.listdir(place)) - _own_files(place))
+        strangers = sorted({path.name for path in place.iterdir()} - _own_files(place))
         if strangers:
             named = ", ".join(strangers[:5]) + (" ..." if len(strangers) > 5 else "")
             raise _refused(

@@ -56,7 +56,7 @@ def mean(weights: Array, values: Array) -> float:
 
 @pytest.mark.parametrize("case", ["subramanya_circle_4", "subramanya_circle_5"])
 def test_circular_catchment_against_its_closed_form(case: str) -> None:
-    """Subramanya, Engineering Hydrology, ex. 2.6: areas, mean to 1e-6; station 1, outside, has a sliver of 9.634 km²."""
+    """Subramanya, Engineering Hydrology, ex. 2.6: areas and mean to 1e-6; station 1, outside, holds 9.634 km²."""
     row = GEOMETRY[case]
     pieces = thiessen_pieces(network_of(row), basins_of(KM, catchment=circle()))
     np.testing.assert_allclose(pieces.area / KM**2, numbers(row["exact_areas"]), rtol=1e-6)

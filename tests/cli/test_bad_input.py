@@ -68,7 +68,10 @@ CASES: dict[str, tuple[dict[str, Any], str]] = {
     "undeclared -999": ({"rain": RAIN.replace("4,9,50", "4,-999,50")}, r"rain\.csv:3: column B: .*-999.*missing"),
     "undeclared -9999": ({"rain": RAIN.replace("4,9,50", "4,-9999,50")}, r"rain\.csv:3: column B: .*-9999.*missing"),
     "undeclared 9999": ({"rain": RAIN.replace("4,9,50", "4,9999,50")}, r"rain\.csv:3: column B: .*9999.*missing"),
-    "unit missing": ({"job": JOB.replace('unit = "mm"\n', "")}, r"job\.toml:\d+: \[\[rainfall\]\] no\. 1 unit: found no"),
+    "unit missing": (
+        {"job": JOB.replace('unit = "mm"\n', "")},
+        r"job\.toml:\d+: \[\[rainfall\]\] no\. 1 unit: found no",
+    ),
     "interval missing": ({"job": JOB.replace('interval = "1h"\n', "")}, r"\[\[rainfall\]\] no\. 1: found no interval"),
     "normals missing": (
         {
@@ -80,7 +83,11 @@ CASES: dict[str, tuple[dict[str, Any], str]] = {
     ),
     "two gauges at one place": ({"gauges": GAUGES.replace("11,5", "7.5,5")}, r"B.*C.*mean"),
     "empty basin": (
-        {"basins": geojson({"type": "Feature", "properties": {"name": "gone"}, "geometry": None}, feature(EAST, name="e"))},
+        {
+            "basins": geojson(
+                {"type": "Feature", "properties": {"name": "gone"}, "geometry": None}, feature(EAST, name="e")
+            )
+        },
         r"basin gone",
     ),
     "bow-tie basin": (
@@ -99,12 +106,18 @@ CASES: dict[str, tuple[dict[str, Any], str]] = {
         r"storm Q: found no gauge reporting in it",
     ),
     "storm outside the record": (with_storm("2031-06-04T01:00", "2031-06-04T02:00"), r"storm Q: .*inside the record"),
-    "storm ends before it starts": (with_storm("2031-05-04T03:00", "2031-05-04T02:00"), r"storm Q: .*end after the start"),
+    "storm ends before it starts": (
+        with_storm("2031-05-04T03:00", "2031-05-04T02:00"),
+        r"storm Q: .*end after the start",
+    ),
     "unknown key": ({"job": JOB.replace("id = ", "idd = ")}, r"\[basins\] idd: .*did you mean 'id'\?"),
     "unknown method": ({"job": JOB + '\n[infill]\nmethod = "nomal-ratio"\n'}, r"did you mean 'normal-ratio'\?"),
     "unknown unit": ({"job": JOB.replace('unit = "mm"', 'unit = "inches"')}, r"unit: found 'inches'; expected one of"),
     "unknown CRS": ({"job": JOB.replace('crs = "local"', 'crs = "EPSG:1"', 1)}, r"found 'EPSG:1'"),
-    "file missing": ({"job": JOB.replace("rain.csv", "rian.csv")}, r"rian\.csv: the file: found nothing of that name; expected a file; correct the path"),
+    "file missing": (
+        {"job": JOB.replace("rain.csv", "rian.csv")},
+        r"rian\.csv: the file: found nothing of that name; expected a file; correct the path",
+    ),
     "file is a folder": ({"job": JOB.replace("rain.csv", ".")}, r"folder|directory"),
     "empty file": ({"rain": ""}, r"rain\.csv: .*empty|rain\.csv: .*nothing"),
     "binary file": ({"rain__csv": b"\x00\x01\x02" * 50}, r"rain\.csv: .*binary|rain\.csv: .*NUL"),
@@ -112,7 +125,11 @@ CASES: dict[str, tuple[dict[str, Any], str]] = {
     "basins that are no map file": ({"basins": "not a map"}, r"basins\.geojson"),
     "common step that does not fit": ({"job": JOB + '\n[step]\ncommon = "45min"\n'}, r"45min.*1h|1h.*45min"),
     "unknown catch factor": (
-        {"job": JOB.replace('length_unit = "km"\n\n[[rain', 'length_unit = "km"\ncatch_factor = { Z = 1.1 }\n\n[[rain')},
+        {
+            "job": JOB.replace(
+                'length_unit = "km"\n\n[[rain', 'length_unit = "km"\ncatch_factor = { Z = 1.1 }\n\n[[rain'
+            )
+        },
         r"catch_factor of Z: found a gauge that is not in the network",
     ),
     "basin called union": ({"basins": geojson(feature(WEST, name="union"))}, r"union"),
@@ -120,7 +137,10 @@ CASES: dict[str, tuple[dict[str, Any], str]] = {
         {"job": JOB + '\n[[storm]]\nname = "Q"\npattern = "Z9"\n'},
         r"storm Q pattern: found 'Z9'",
     ),
-    "storm named twice": ({"job": JOB + '\n[[storm]]\nname = "Q"\n\n[[storm]]\nname = "Q"\n'}, r"storm Q: found the name twice"),
+    "storm named twice": (
+        {"job": JOB + '\n[[storm]]\nname = "Q"\n\n[[storm]]\nname = "Q"\n'},
+        r"storm Q: found the name twice",
+    ),
 }
 
 
@@ -156,9 +176,10 @@ def test_problems_of_all_files_come_together(tmp_path: Path) -> None:
     result = CliRunner().invoke(main, ["storm", str(job)])
     assert result.exit_code == 1
     text = result.stderr
-    assert [bool(re.search(p, text)) for p in (r"gauges\.csv:2: ", r"rain\.csv:3: column B", r"rain\.csv:3: column C", "tie")] == [
-        True
-    ] * 4
+    assert [
+        bool(re.search(p, text))
+        for p in (r"gauges\.csv:2: ", r"rain\.csv:3: column B", r"rain\.csv:3: column C", "tie")
+    ] == [True] * 4
 
 
 def test_unreadable_file(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -166,7 +187,7 @@ def test_unreadable_file(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Non
     job = write_tiny(tmp_path)
     real = Path.open
 
-    def refuse(self: Path, *args: Any, **kwargs: Any) -> Any:
+    def refuse(self: Path, *args: Any, **kwargs: Any) -> Any:  # noqa: ANN401 - stands in for Path.open
         if self.name == "rain.csv":
             raise PermissionError(13, "Permission denied")
         return real(self, *args, **kwargs)

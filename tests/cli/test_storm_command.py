@@ -22,11 +22,11 @@ west  │     50.0 │       10.0 │     10.0 │ 21.2 │   11.2 │     81.6 
 east  │     50.0 │       30.0 │     40.5 │ 45.0 │   15.0 │     39.0 │          0
 union │    100.0 │       20.0 │     25.3 │ 33.1 │   13.1 │     50.2 │          0
 
-Warning: whole record: Gauge A has over half of the weight in basin west: 100 % by arithmetic, 100 % by thiessen, 72 % by \
-idw.
+Warning: whole record: Gauge A has over half of the weight in basin west: 100 % by arithmetic, 100 % by thiessen, \
+72 % by idw.
 Warning: whole record: The methods give basin west from 10.0 to 21.2 mm, 11.2 mm or 82 % apart.
-Warning: whole record: Gauge B has over half of the weight in basin east: 100 % by arithmetic, 85 % by thiessen, 57 % by \
-idw.
+Warning: whole record: Gauge B has over half of the weight in basin east: 100 % by arithmetic, 85 % by thiessen, \
+57 % by idw.
 Warning: whole record: The methods give basin east from 30.0 to 45.0 mm, 15.0 mm or 39 % apart.
 Warning: whole record: The methods give basin union from 20.0 to 33.1 mm, 13.1 mm or 50 % apart.
 Warning: Only gauge A lies inside basin west.
@@ -73,7 +73,9 @@ def test_storm_from_another_folder_with_spaces_and_letters_of_other_alphabets(tm
 
 def test_files_hold_full_digits(tmp_path: Path) -> None:
     """basin_means.csv is exactly this: 10, 40.5 and 25.25 mm over 50, 50 and 100 km²."""
-    done = basinrain("storm", write_tiny(tmp_path), "--set", "averaging.methods=['thiessen']", "--output", tmp_path / "out")
+    done = basinrain(
+        "storm", write_tiny(tmp_path), "--set", "averaging.methods=['thiessen']", "--output", tmp_path / "out"
+    )
     assert done.returncode == 0
     assert (tmp_path / "out" / "storm" / "basin_means.csv").read_bytes().decode() == MEANS
 
@@ -111,7 +113,7 @@ def test_windows_line_ends_mark_semicolon_and_decimal_comma(tmp_path: Path) -> N
 
 
 def test_json_is_one_document_that_keeps_its_schema(tmp_path: Path) -> None:
-    """--json prints the record and nothing else; it is what record.json holds, and docs/record.schema.json describes it."""
+    """--json prints the record and nothing else; record.json holds the same, docs/record.schema.json describes it."""
     done = basinrain("storm", write_tiny(tmp_path), "--json")
     assert (done.returncode, done.stderr) == (0, "")
     document = json.loads(done.stdout)
@@ -140,13 +142,11 @@ def test_one_problem_is_one_line(tmp_path: Path) -> None:
     """The messages of a run with two faults are exactly these two lines."""
     job = write_tiny(tmp_path, rain=RAIN.replace("4,9,50", "4,nine,-1"))
     done = basinrain("storm", job)
-    rain = tmp_path / "rain.csv"
+    rain, remedy = tmp_path / "rain.csv", "correct the cell, or declare it in missing"
     assert (done.returncode, done.stdout) == (1, "")
     assert done.stderr.splitlines() == [
-        f"{rain}:3: column B: gauge B: found 'nine'; expected a depth of 0 or more; correct the cell, or declare it in "
-        "missing",
-        f"{rain}:3: column C: gauge C: found '-1'; expected a depth of 0 or more; correct the cell, or declare it in "
-        "missing",
+        f"{rain}:3: column {gauge}: gauge {gauge}: found '{cell}'; expected a depth of 0 or more; {remedy}"
+        for gauge, cell in (("B", "nine"), ("C", "-1"))
     ]
 
 

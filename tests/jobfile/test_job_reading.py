@@ -83,16 +83,15 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
     path = job_file(tmp_path, text)
     with pytest.raises(JobError) as caught:
         read_job(path)
+    unknown = "found a key that is not known; expected one of:"
+    units = "mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, kg m-2"
+    names = "job, gauges, rainfall, step, basins, storm, infill, averaging"
     expected = [
         f"{path}:2: [job] name: found no such key; expected it to be given; add it",
-        f"{path}:3: [job] nam: found a key that is not known; expected one of: name, depth_unit, area_unit, output, plane; "
-        "did you mean 'name'?",
-        f"{path}:15: [[rainfall]] no. 2 unit: found 'inch'; expected one of: mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, "
-        "0.01 in, kg m-2; did you mean 'in'?",
-        f"{path}:23: [[storm]] no. 1 patern: found a key that is not known; expected one of: name, start, end, pattern; "
-        "did you mean 'pattern'?",
-        f"{path}:27: [infil]: found a key that is not known; expected one of: job, gauges, rainfall, step, basins, storm, "
-        "infill, averaging; did you mean 'infill'?",
+        f"{path}:3: [job] nam: {unknown} name, depth_unit, area_unit, output, plane; did you mean 'name'?",
+        f"{path}:15: [[rainfall]] no. 2 unit: found 'inch'; expected one of: {units}; did you mean 'in'?",
+        f"{path}:23: [[storm]] no. 1 patern: {unknown} name, start, end, pattern; did you mean 'pattern'?",
+        f"{path}:27: [infil]: {unknown} {names}; did you mean 'infill'?",
     ]
     assert sorted(str(caught.value).splitlines()) == sorted(expected)
 
@@ -100,8 +99,14 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
 @pytest.mark.parametrize(
     ("change", "message"),
     [
-        ({"averaging": {"methods": ["theissen"]}}, r"\[averaging\] methods.no. 1: found 'theissen'.*did you mean 'thiessen'"),
-        ({"infill": {"method": "normal ratio"}}, r"\[infill\] method: found 'normal ratio'.*did you mean 'normal-ratio'"),
+        (
+            {"averaging": {"methods": ["theissen"]}},
+            r"\[averaging\] methods.no. 1: found 'theissen'.*did you mean 'thiessen'",
+        ),
+        (
+            {"infill": {"method": "normal ratio"}},
+            r"\[infill\] method: found 'normal ratio'.*did you mean 'normal-ratio'",
+        ),
         ({"infill": {"power": -1}}, r"\[infill\] power: found -1; expected a number above 0"),
         ({"infill": {"min_donors": 0}}, r"\[infill\] min_donors: found 0; expected a number of at least 1"),
         ({"infill": {"nearest": 2.5}}, r"\[infill\] nearest: found 2.5; expected a whole number"),
@@ -109,8 +114,14 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
         ({"infill": {"power": float("inf")}}, r"\[infill\] power: found inf; expected a finite number"),
         ({"averaging": {"idw": {"powr": 2}}}, r"\[averaging\] idw.powr: found a key that is not known.*'power'"),
         ({"storm": {"name": "q", "start": "May 3"}}, r"\[\[storm\]\] no. 1 start: found 'May 3'; expected a date"),
-        ({"rainfall": {"unit": "mm", "interval": "1h"}}, r"\[\[rainfall\]\] no. 1: found both or neither; .*file or files"),
-        ({"rainfall": {"file": "r.csv", "unit": "mm"}}, r"\[\[rainfall\]\] no. 1: found no interval; expected interval"),
+        (
+            {"rainfall": {"unit": "mm", "interval": "1h"}},
+            r"\[\[rainfall\]\] no. 1: found both or neither; .*file or files",
+        ),
+        (
+            {"rainfall": {"file": "r.csv", "unit": "mm"}},
+            r"\[\[rainfall\]\] no. 1: found no interval; expected interval",
+        ),
         ({"rainfall": {"file": "r.csv", "interval": "1h"}}, r"\[\[rainfall\]\] no. 1 unit: found no such key"),
         ({"rainfall": []}, r"\[\[rainfall\]\]: found no table; expected at least one"),
         ({"gauges": 3}, r"\[gauges\]: found 3; expected a table"),
@@ -124,7 +135,7 @@ def test_a_wrong_value_says_what_is_accepted(change: dict[str, Any], message: st
 
 
 def test_settings_change_the_job(tmp_path: Path) -> None:
-    """--set speaks the job's words; numbers, lists and plain text are understood; repeated tables are counted from 1."""
+    """--set speaks the job's words: numbers, lists and plain text; repeated tables are counted from 1."""
     job = read_job(
         job_file(tmp_path),
         [

@@ -36,10 +36,14 @@ def test_a_run_that_fails_leaves_the_earlier_output(tmp_path: Path) -> None:
     """An error inside the block changes nothing."""
     place = tmp_path / "out"
     earlier_output(place)
-    with pytest.raises(RuntimeError, match="midway"), whole_folder(place) as built:
-        (built / "a.csv").write_text("second")
-        message = "midway"
-        raise RuntimeError(message)
+
+    def fail() -> None:
+        with whole_folder(place) as built:
+            (built / "a.csv").write_text("second")
+            raise RuntimeError("midway")
+
+    with pytest.raises(RuntimeError, match="midway"):
+        fail()
     assert (place / "a.csv").read_text() == "first"
     assert [path.name for path in tmp_path.iterdir()] == ["out"]
 
@@ -55,13 +59,14 @@ def test_a_file_of_the_earlier_run_does_not_survive_in_the_new_one(tmp_path: Pat
 
 
 def test_killed_at_any_moment_the_earlier_output_is_whole(tmp_path: Path) -> None:
-    """A writer that replaces the folder without end is killed again and again; what is there afterwards is always whole."""
+    """A writer that replaces the folder without end is killed again and again; what is left is always whole."""
     place = tmp_path / "out"
     earlier_output(place, "0" * 50_000)
     script = (
         "import sys, json\nfrom pathlib import Path\nfrom basinrain.writing.folder import whole_folder, check_folder\n"
         "place = Path(sys.argv[1])\ncheck_folder(place, [])\nprint('go', flush=True)\nk = 1\n"
-        "while True:\n    with whole_folder(place) as built:\n        (built / 'a.csv').write_text(str(k % 10) * 50_000)\n"
+        "while True:\n    with whole_folder(place) as built:\n"
+        "        (built / 'a.csv').write_text(str(k % 10) * 50_000)\n"
         "        (built / 'record.json').write_text(json.dumps({'files': ['a.csv']}))\n    k += 1\n"
     )
     seen = set()
@@ -95,19 +100,21 @@ def test_what_is_not_ours_is_never_replaced(tmp_path: Path) -> None:
     place = tmp_path / "out"
     earlier_output(place)
     (place / "notes.txt").write_text("mine")
-    with pytest.raises(WriteError, match="found files that no earlier run wrote: notes.txt; expected an empty folder"):
+    with pytest.raises(
+        WriteError, match=r"found files that no earlier run wrote: notes\.txt; expected an empty folder"
+    ):
         check_folder(place, [])
     place_of_others = tmp_path / "others"
     place_of_others.mkdir()
     (place_of_others / "record.json").write_text("[]")
-    with pytest.raises(WriteError, match="no earlier run wrote: record.json"):
+    with pytest.raises(WriteError, match=r"no earlier run wrote: record\.json"):
         check_folder(place_of_others, [])
 
 
 def test_inputs_files_and_forbidden_places_are_refused(tmp_path: Path) -> None:
     """A folder that holds an input, is a file, or cannot be written is refused before anything is computed."""
     (tmp_path / "rain.csv").write_text("x")
-    with pytest.raises(WriteError, match="found the input rain.csv inside it; expected a folder without inputs"):
+    with pytest.raises(WriteError, match=r"found the input rain\.csv inside it; expected a folder without inputs"):
         check_folder(tmp_path, [tmp_path / "rain.csv"])
     with pytest.raises(WriteError, match="found a file; expected a folder"):
         check_folder(tmp_path / "rain.csv", [])
@@ -126,7 +133,12 @@ def test_a_full_disk_leaves_the_earlier_output(tmp_path: Path) -> None:
     """An error of the system while writing becomes one clear line, and the earlier output stays."""
     place = tmp_path / "out"
     earlier_output(place)
-    with pytest.raises(WriteError, match="found no space left on device"), whole_folder(place) as built:
-        (built / "a.csv").write_text("second")
-        raise OSError(28, "No space left on device")
+
+    def fail() -> None:
+        with whole_folder(place) as built:
+            (built / "a.csv").write_text("second")
+            raise OSError(28, "No space left on device")
+
+    with pytest.raises(WriteError, match="found no space left on device"):
+        fail()
     assert (place / "a.csv").read_text() == "first"

@@ -14,7 +14,7 @@ from basinrain.errors import DataError, JobError
 from basinrain.gauges import GaugeNetwork
 from basinrain.reading.basins import read_basins
 from basinrain.reading.gauges import read_gauges
-from basinrain.reading.settle import settle
+from basinrain.reading.settling import settle
 
 DATA = Path(__file__).parents[1] / "data"
 LONLAT = "EPSG:4326"

@@ -1,0 +1,128 @@
+"""The report in a real browser: on screen, at the width of paper, and printed."""
+
+from __future__ import annotations
+
+import shutil
+import subprocess
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+import pytest
+from report.small_run import make_run
+
+from basinrain.notes import Note
+from basinrain.report import render_report
+
+CHROMIUM = Path("/usr/bin/chromium")
+
+pytestmark = [
+    pytest.mark.browser,
+    pytest.mark.skipif(not CHROMIUM.exists(), reason="needs Chromium at /usr/bin/chromium"),
+]
+
+
+@pytest.fixture(scope="module")
+def file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Return the report of two storms, with a hostile name, as a file in a folder with spaces and non-ASCII letters."""
+    path = tmp_path_factory.mktemp("Bericht über Regen") / "report.html"
+    note = Note(code="far-gauge", text="Gauge E is far.")
+    names = ("A<script>alert(1)</script>", "B&B", "C", "D", "E", "F")
+    path.write_text(render_report(make_run(names=names, storms=("Quill", "Sedge"), notes=(note,))), encoding="utf-8")
+    return path
+
+
+@pytest.fixture(scope="module")
+def browser() -> Iterator[Any]:
+    """Start one browser for the module."""
+    playwright = pytest.importorskip("playwright.sync_api")
+    quiet = [
+        "--no-sandbox",
+        "--disable-gpu",
+        "--disable-background-networking",
+        "--disable-component-update",
+        "--disable-sync",
+    ]
+    with playwright.sync_playwright() as driver:
+        opened = driver.chromium.launch(executable_path=str(CHROMIUM), args=quiet)
+        yield opened
+        opened.close()
+
+
+@pytest.fixture
+def page(browser: Any, file: Path) -> Iterator[tuple[Any, list[str], list[str]]]:  # noqa: ANN401 - playwright's browser
+    """Open the report; return the page, every address it asked for and every complaint."""
+    opened = browser.new_page(viewport={"width": 1200, "height": 900})
+    asked: list[str] = []
+    complaints: list[str] = []
+    opened.on("request", lambda request: asked.append(request.url))
+    opened.on("console", lambda message: complaints.append(message.text))
+    opened.on("pageerror", lambda error: complaints.append(str(error)))
+    opened.on("dialog", lambda dialog: complaints.append(f"dialog: {dialog.message}") or dialog.dismiss())
+    opened.goto(file.as_uri())
+    yield opened, asked, complaints
+    opened.close()
+
+
+def test_only_the_file_itself_is_read(page: tuple[Any, list[str], list[str]], file: Path) -> None:
+    """One request, for the file; no word on the console, no dialog."""
+    _, asked, complaints = page
+    assert asked == [file.as_uri()]
+    assert complaints == []
+
+
+@pytest.mark.parametrize(("width", "media"), [(1200, "screen"), (700, "screen"), (680, "print")])
+def test_nothing_runs_over_the_side(page: tuple[Any, list[str], list[str]], width: int, media: str) -> None:
+    """At a screen's width and at that of A4 within its margins (180 mm, 680 px) the page does not scroll sideways."""
+    opened, _, _ = page
+    opened.set_viewport_size({"width": width, "height": 900})
+    opened.emulate_media(media=media)
+    assert opened.evaluate("document.documentElement.scrollWidth") <= width
+
+
+def test_figures_have_a_size_and_their_text_is_text(page: tuple[Any, list[str], list[str]]) -> None:
+    """Every figure is drawn, within the page, and its labels can be found as text."""
+    opened, _, _ = page
+    boxes = opened.evaluate(
+        "[...document.querySelectorAll('figure svg')].map(s => s.getBoundingClientRect()).map(r => [r.left, r.right, r.height])"
+    )
+    assert len(boxes) == 1 + 3 + 6
+    assert all(left >= 0 and right <= 1200 and height > 80 for left, right, height in boxes)
+    assert opened.locator("svg text", has_text="gauge, partly infilled").count() == 1
+
+
+def test_labels_stay_inside_their_figures(page: tuple[Any, list[str], list[str]]) -> None:
+    """No letter is cut at a figure's edge, whatever font the browser has."""
+    opened, _, _ = page
+    outside = opened.evaluate(
+        """[...document.querySelectorAll('figure svg')].flatMap(s => {
+             const b = s.getBoundingClientRect();
+             return [...s.querySelectorAll('text')].filter(t => {
+               const r = t.getBoundingClientRect();
+               return r.left < b.left - 1 || r.right > b.right + 1 || r.top < b.top - 1 || r.bottom > b.bottom + 1;
+             }).map(t => t.textContent);
+           })"""
+    )
+    assert outside == []
+
+
+def test_printed_pages_keep_text_and_figures(page: tuple[Any, list[str], list[str]], tmp_path: Path) -> None:
+    """The PDF has a sensible number of pages, page numbers, and the words of tables and figures."""
+    if shutil.which("pdftotext") is None:
+        pytest.skip("needs pdftotext (poppler-utils)")
+    opened, _, _ = page
+    path = tmp_path / "report.pdf"
+    opened.pdf(path=str(path), format="A4", prefer_css_page_size=True)
+    text = subprocess.run(["pdftotext", "-layout", path, "-"], capture_output=True, text=True, check=True).stdout
+    pages = text.split("\f")[:-1]
+    assert 5 <= len(pages) <= 14
+    assert f"1 / {len(pages)}" in pages[0]
+    for words in (
+        "Basin mean depth by method",
+        "gauge, partly infilled",
+        "mm in 1 h",
+        "A<script>alert(1)</script>",
+        "B&B",
+    ):
+        assert words in text
+    assert all(len(page.split()) > 10 for page in pages)
