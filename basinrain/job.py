@@ -305,6 +305,12 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
         )
     notes = (
         *(note if note.storm else replace(note, storm=storm.name) for note in completed.notes),
+        *(
+            replace(note, storm=storm.name)
+            for result in depths.values()
+            for note in result.table.notes
+            if note.level == "warning"
+        ),
         *storm_cautions(storm.name, network, basins, depths, depth_unit=job.job.depth_unit),
     )
     return StormResult(storm, completed, depths, tuple(shapes)), notes

@@ -6,7 +6,7 @@ import sys
 import matplotlib as mpl
 import pytest
 from matplotlib.figure import Figure
-from report.markup import svg_tree
+from report.markup import SVG, svg_tree
 
 from basinrain.report.figures import HALO, figure_style, to_svg
 

@@ -67,7 +67,7 @@ def test_the_scale_bar_is_as_long_as_it_says(run: StormRun, monkeypatch: pytest.
     drawn: list[float] = []
     real = Polygon
 
-    def spy(corners: list[tuple[float, float]], **style: Any) -> object:
+    def spy(corners: list[tuple[float, float]], **style: Any) -> object:  # noqa: ANN401 - handed on
         drawn.append(corners[1][0] - corners[0][0])
         return real(corners, **style)
 
@@ -119,7 +119,7 @@ def test_true_north_is_not_the_planes_north(monkeypatch: pytest.MonkeyPatch) -> 
     tips: list[list[np.ndarray[tuple[int], np.dtype[np.float64]]]] = []
     real = Polygon
 
-    def spy(corners: list[np.ndarray[tuple[int], np.dtype[np.float64]]], **style: Any) -> object:
+    def spy(corners: list[np.ndarray[tuple[int], np.dtype[np.float64]]], **style: Any) -> object:  # noqa: ANN401 - handed on
         tips.append(corners)
         return real(corners, **style)
 

@@ -1,5 +1,6 @@
 from __future__ import annotations
 
+import itertools
 import re
 import time
 from dataclasses import replace
@@ -113,7 +114,7 @@ def test_headings_descend_one_level_at_a_time(html: str) -> None:
     """One h1, and no level is skipped."""
     levels = [int(tag[1]) for tag, _ in Page(html).tags if re.fullmatch(r"h[1-6]", tag)]
     assert levels.count(1) == 1
-    assert all(b <= a + 1 for a, b in zip(levels, levels[1:], strict=False))
+    assert all(b <= a + 1 for a, b in itertools.pairwise(levels))
 
 
 def test_tables_have_captions_and_scoped_heads(html: str) -> None:

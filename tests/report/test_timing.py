@@ -45,7 +45,7 @@ def test_peaks_by_hand(run: StormRun) -> None:
 
 
 def test_a_gauges_pattern_times_the_total() -> None:
-    """D fell 1, 3, 8, 5, 1, 0 of 18 mm; west's 12 mm follow it and peak at 12 * 8 / 18 = 5.3; the mean's own peak is 6.5."""
+    """D fell 1, 3, 8, 5, 1, 0 of 18 mm; west's 12 mm follow it and peak at 12 * 8 / 18 = 5.3, not at 6.5."""
     run = make_run(pattern="D")
     times = storm_times(run, run.storms[0], 1)
     assert "The pattern of gauge D times every hyetograph" in " ".join(times.sentences)

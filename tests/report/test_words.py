@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from basinrain.report.words import (
     area_text,
     depth_text,
+    depth_texts,
     inline,
     number_text,
     percent_text,
