@@ -152,6 +152,11 @@ class StormRun:
         return tables.gauge_totals(self)
 
     @cached_property
+    def gauge_depths(self) -> pd.DataFrame:
+        """Completed depths of the gauges with the status of every value: one row per storm, gauge and step."""
+        return tables.gauge_depths(self)
+
+    @cached_property
     def infilled(self) -> pd.DataFrame:
         """Every infilled depth with its donors: one row per estimate."""
         return tables.infilled(self)

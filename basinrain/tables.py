@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.rainfall import Status
 from basinrain.storms import spread_across_methods, status_of_total
 from basinrain.units import area_factor, depth_factor, volume_factor, volume_unit_for
 from basinrain.weights import compare
@@ -24,6 +25,7 @@ if TYPE_CHECKING:
 
 __all__ = [
     "basin_means",
+    "gauge_depths",
     "gauge_totals",
     "hyetographs",
     "infilled",
@@ -219,6 +221,32 @@ def gauge_totals(run: StormRun) -> pd.DataFrame:
             for g, gauge in enumerate(run.network.ids)
         ]
     return _frame(rows, "storm gauge depth depth_unit status steps_observed steps_total")
+
+
+def gauge_depths(run: StormRun) -> pd.DataFrame:
+    """Return ``gauge_depths``: one row per storm, gauge and step, with the status of every value."""
+    import pandas as pd
+
+    mm = depth_factor(run.depth_unit)
+    labels = np.array([status.label for status in Status])
+    frames = []
+    for result in run.storms:
+        record = result.completed.record
+        times = [time_text(end, run.record.zone) for end in record.ends]
+        frames += [
+            pd.DataFrame(
+                {
+                    "storm": result.storm.name,
+                    "gauge": gauge,
+                    "time": times,
+                    "depth": record.depth[:, g] / mm,
+                    "depth_unit": run.depth_unit,
+                    "status": labels[record.status[:, g]],
+                }
+            )
+            for g, gauge in enumerate(run.network.ids)
+        ]
+    return pd.concat(frames, ignore_index=True)
 
 
 def infilled(run: StormRun) -> pd.DataFrame:

@@ -32,17 +32,18 @@ INK: Final = "#1d2328"
 HALO: Final = "halo"
 """Artists whose ``gid`` begins with this word have their text drawn on a white rim."""
 
-# Told apart without colour, by outline, fill and shape, and by size where they fall on each other; solid, dashed, dotted.
+# Told apart without colour: by shape and fill, and by size where they fall on each other.
 MARKS: Final[tuple[dict[str, Any], ...]] = (
-    {"marker": "o", "markersize": 7.0, "markerfacecolor": "white"},
-    {"marker": "s", "markersize": 5.0, "markerfacecolor": "black"},
-    {"marker": "^", "markersize": 4.4, "markerfacecolor": "#9a9a9a"},
+    {"marker": "o", "markersize": 7.8, "markerfacecolor": "white"},
+    {"marker": "s", "markersize": 4.2, "markerfacecolor": "black"},
+    {"marker": "^", "markersize": 4.0, "markerfacecolor": "#9a9a9a"},
     {"marker": "x", "markersize": 4.6, "markerfacecolor": "black"},
     {"marker": "D", "markersize": 3.6, "markerfacecolor": "white"},
     {"marker": "P", "markersize": 4.4, "markerfacecolor": "black"},
     {"marker": "v", "markersize": 4.4, "markerfacecolor": "white"},
     {"marker": "*", "markersize": 5.0, "markerfacecolor": "black"},
 )
+# Solid, dashed, dotted.
 LINES: Final = ("-", (0, (5, 2)), (0, (1, 1.4)), (0, (6, 1.5, 1, 1.5)), (0, (3, 1)), (0, (6, 1.5, 1, 1.5, 1, 1.5)))
 
 _STYLE: Final = {

@@ -23,6 +23,7 @@ def run_tables(run: StormRun) -> dict[str, pd.DataFrame]:
         "weights": run.weights,
         "weights_compared": run.weights_compared,
         "gauge_totals": run.gauge_totals,
+        "gauge_depths": run.gauge_depths,
         "infilled": run.infilled,
         "hyetographs": run.hyetographs,
     }
