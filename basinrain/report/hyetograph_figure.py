@@ -9,6 +9,7 @@ from typing import Any, Final
 
 import numpy as np
 import numpy.typing as npt
+from matplotlib.collections import PolyCollection
 from matplotlib.dates import AutoDateLocator, ConciseDateFormatter, date2num
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
@@ -17,7 +18,7 @@ from matplotlib.ticker import MaxNLocator
 
 from basinrain.report import limits
 from basinrain.report.figures import HALF_WIDTH, INK, LINES, Picture, figure_style, to_svg
-from basinrain.report.words import depth_text, inline, step_text, unit_text, when_text, zone_text
+from basinrain.report.words import depth_text, inline, step_text, unit_word, when_text, zone_text
 from basinrain.results import StormResult, StormRun
 from basinrain.units import depth_factor
 
@@ -31,8 +32,8 @@ _NO_NUMBER: Final = "#8a8a8a"
 
 
 def lead_method(result: StormResult) -> str:
-    """Return the first method that has a number in every basin, or else in the most basins."""
-    counts = {method: int((~np.isnan(depths.total)).sum()) for method, depths in result.depths.items()}
+    """Return the first method that has a number in every basin, or else the one with the most numbers."""
+    counts = {method: int((~np.isnan(depths.depth)).sum()) for method, depths in result.depths.items()}
     most = max(counts.values())
     return next(method for method, count in counts.items() if count == most)
 
@@ -79,7 +80,10 @@ def hyetograph_pictures(run: StormRun, result: StormResult, number: int) -> list
     drawn = limits.drawn_basins(run)
     bars = [binned(series[lead][:, b], MOST_BARS)[0] for b in drawn]
     peak = max((float(np.nanmax(bar)) for bar in bars if not np.isnan(bar).all()), default=0.0)
-    mass = max((float(np.nansum(depth[:, b])) for depth in series.values() for b in drawn), default=0.0)
+    # A mass curve ends where a step has no number; fmax skips what comes after.
+    mass = max(
+        float(np.fmax.reduce(np.cumsum(depth[:, drawn], axis=0), axis=None, initial=0.0)) for depth in series.values()
+    )
     with figure_style():
         return [
             _picture(run, result, series, lead, b, tops=(peak or 1.0, mass or 1.0), name=f"hyetograph-{number}-{b + 1}")
@@ -102,7 +106,7 @@ def _picture(
     starts = date2num(record.starts[::together])  # type: ignore[no-untyped-call]
     last = np.minimum(np.arange(len(starts)) * together + together, len(record)) - 1
     ends = date2num(record.ends[last])  # type: ignore[no-untyped-call]
-    unit = unit_text(run.depth_unit)
+    unit = unit_word(run.depth_unit)
     lines = -(-len(series) // 3)
     head = 0.32 + 0.15 * (1 + lines)
     total = _HEIGHT + 0.15 * (lines - 1)
@@ -114,15 +118,7 @@ def _picture(
     lower = figure.add_axes((left, foot, wide, 0.42 * room), sharex=upper)
     gaps = np.isnan(depth)
     edge = INK if len(depth) <= 80 else "none"
-    upper.bar(
-        starts[~gaps],
-        depth[~gaps],
-        (ends - starts)[~gaps],
-        align="edge",
-        facecolor="#8d969c",
-        edgecolor=edge,
-        linewidth=0.4,
-    )
+    upper.add_collection(_bars(starts[~gaps], ends[~gaps], depth[~gaps], edge))
     _mark_gaps((upper, lower), starts, ends, gaps)
     edges = np.append(starts[0], ends)
     for m, (_, depths) in enumerate(series.items()):
@@ -165,6 +161,15 @@ def _picture(
     return Picture(
         name, caption, to_svg(figure, name, title, inline(_description(run, result, series, lead, b))), half=True
     )
+
+
+def _bars(
+    starts: npt.NDArray[np.float64], ends: npt.NDArray[np.float64], depth: npt.NDArray[np.float64], edge: str
+) -> PolyCollection:
+    """Return bars that stand on their intervals; one collection is several times faster than a patch for each."""
+    zero = np.zeros(len(depth))
+    corners = np.array([[starts, zero], [starts, depth], [ends, depth], [ends, zero]]).transpose(2, 0, 1)
+    return PolyCollection(list(corners), facecolors="#8d969c", edgecolors=edge, linewidths=0.4)
 
 
 def _mark_gaps(

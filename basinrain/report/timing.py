@@ -52,7 +52,11 @@ def storm_times(run: StormRun, result: StormResult, number: int) -> StormTimes:
     if len(record) < 2:
         return StormTimes(storm, ("This storm is one total without steps: it has no hyetograph.",), (), ())
     lead = lead_method(result)
-    why = "with the most numbers" if np.isnan(result.depths[lead].total).any() else "with a number in every basin"
+    why = (
+        "with the most numbers"
+        if np.isnan(result.depths[lead].depth).all(axis=0).any()
+        else "with a number in every basin"
+    )
     sentences = [
         f"Bars are depths over their intervals of {step_text(record.step)} by {lead}, the first method {why}.",
         "Mass curves are by every method. All basins of a storm have the same scales.",

@@ -1,12 +1,13 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from typing import Any
 
-import matplotlib.axes
 import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from matplotlib.collections import PolyCollection
 from report.markup import svg_texts
 from report.small_run import make_run
 
@@ -33,20 +34,20 @@ def test_bars_keep_the_total(depth: list[float], most: int) -> None:
 
 def test_bars_stand_on_their_intervals(run: StormRun, monkeypatch: pytest.MonkeyPatch) -> None:
     """The bar of 07:00 begins at 06:00 and is an hour wide; its height is the mean of A and B, 0, 1.5, 6.5 mm ..."""
-    calls = []
-    real = matplotlib.axes.Axes.bar
+    drawn = []
+    real = PolyCollection
 
-    def spy(self: matplotlib.axes.Axes, *args: object, **options: object) -> object:
-        calls.append(args)
-        return real(self, *args, **options)  # type: ignore[arg-type]
+    def spy(corners: list[np.ndarray[tuple[int, int], np.dtype[np.float64]]], **style: Any) -> object:  # noqa: ANN401 - handed on
+        drawn.append(np.array(corners))
+        return real(corners, **style)
 
-    monkeypatch.setattr(matplotlib.axes.Axes, "bar", spy)
+    monkeypatch.setattr(hyetograph_figure, "PolyCollection", spy)
     hyetograph_pictures(run, run.storms[0], 1)
-    left, height, width = (np.asarray(v, dtype=float) for v in calls[0])
+    west = drawn[0]
     day = float(np.datetime64("2031-05-04", "D").astype(int))  # days since 1970, the figure's own clock
-    assert left[0] == pytest.approx(day + 6 / 24)
-    assert width == pytest.approx(np.full(6, 1 / 24))
-    assert height == pytest.approx([0, 1.5, 6.5, 3.5, 0.5, 0])
+    assert west[:, 0, 0] == pytest.approx(day + np.arange(6, 12) / 24)
+    assert west[:, 2, 0] == pytest.approx(day + np.arange(7, 13) / 24)
+    assert west[:, :, 1] == pytest.approx(np.array([[0, h, h, 0] for h in (0, 1.5, 6.5, 3.5, 0.5, 0)]))
 
 
 def test_axes_say_unit_step_and_clock(run: StormRun) -> None:
@@ -86,9 +87,26 @@ def test_the_first_method_with_a_number_everywhere_leads(run: StormRun) -> None:
     assert lead_method(_without(run.storms[0], "arithmetic")) == "thiessen"
 
 
+def test_a_gap_of_every_method_does_not_change_the_lead(run: StormRun) -> None:
+    """One hour without any number leaves no total at all; still the method that lacks a whole basin does not lead."""
+    result = _without(run.storms[0], "arithmetic")
+    for method in ("thiessen", "idw"):
+        result = _without(result, method, step=2)
+    assert lead_method(result) == "thiessen"
+
+
 def test_many_steps_share_bars(run: StormRun, monkeypatch: pytest.MonkeyPatch) -> None:
     """With at most 3 bars two hours share one, and the axis says so."""
     monkeypatch.setattr(hyetograph_figure, "MOST_BARS", 3)
     picture = hyetograph_pictures(run, run.storms[0], 1)[0]
     assert "mm in 2 × 1 h" in svg_texts(picture.svg)
     assert picture.caption.endswith("A bar adds up 2 steps.")
+
+
+def test_a_basin_without_any_number_is_one_gap(run: StormRun) -> None:
+    """Where the only method has no number in a basin, its panel is there and says so."""
+    result = _without(run.storms[0], "arithmetic")
+    result = replace(result, depths={"arithmetic": result.depths["arithmetic"]})
+    svg = hyetograph_pictures(replace(run, storms=(result,)), result, 1)[0].svg
+    assert "no number" in svg_texts(svg)
+    assert "Storm totals in mm: arithmetic –." in str(svg)
