@@ -37,7 +37,7 @@ def test_jobs_in_the_documentation_are_jobs() -> None:
     jobs = [
         block
         for page in PAGES
-        for block in re.findall(r"```toml\n(.*?)```", page.read_text(encoding="utf-8"), flags=re.S)
+        for block in re.findall(r"```toml\n(.*?)```", page.read_text(encoding="utf-8"), flags=re.DOTALL)
         if "[job]" in block and "[basins]" in block
     ]
     assert jobs
