@@ -221,7 +221,8 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     record = completed.record
     has_depth = ~np.isnan(record.depth)
     reporting = record.reporting
-    table = weigher(has_depth.any(axis=0))
+    anywhere: npt.NDArray[np.bool_] = np.asarray(has_depth.any(axis=0))
+    table = weigher(anywhere)
     n_steps, (n_basins, n_gauges) = len(record), table.weights.shape
     weigh = _Remembered(weigher)
     depth = np.full((n_steps, n_basins), np.nan)
@@ -236,7 +237,7 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
             contribution[:] = np.nan
             infilled[:] = np.nan
             continue
-        rebuilt += len(steps) * int((present != has_depth.any(axis=0)).any())
+        rebuilt += len(steps) * int((present != anywhere).any())
         here = weigh(present)
         depth[steps] = here.apply(np.where(present, record.depth[steps], np.nan))
         influence = here.weights @ donors

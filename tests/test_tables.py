@@ -55,9 +55,9 @@ def test_silent_gauge_by_hand(run: StormRun) -> None:
     Weights 1/25 and 1/12.25 of A's 10 and C's 100 mm: (10/25 + 100/12.25) / (1/25 + 1/12.25) = 70.40 mm.
     """
     expected = (10 / 25 + 100 / 12.25) / (1 / 25 + 1 / 12.25)
-    totals = run.gauge_totals[run.gauge_totals["storm"] == "all"].set_index("gauge")
-    assert totals.loc["B", ["status", "steps_observed", "steps_total"]].tolist() == ["partly infilled", 1, 4]
-    assert totals.loc["B", "depth"] == pytest.approx(expected)
+    (total,) = run.gauge_totals.query("storm == 'all' and gauge == 'B'").to_dict("records")
+    assert (total["status"], total["steps_observed"], total["steps_total"]) == ("partly infilled", 1, 4)
+    assert total["depth"] == pytest.approx(expected)
     (row,) = run.infilled[run.infilled["storm"] == "all"].to_dict("records")
     assert (row["gauge"], row["time"], row["scale"], row["method"]) == ("B", "", "storm", "inverse-distance")
     assert row["donors"] == "A:0.328859 C:0.671141"
