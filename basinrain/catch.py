@@ -21,7 +21,7 @@ def correct_catch(record: RainRecord, factors: Mapping[str, npt.NDArray[np.float
     record : RainRecord
         Steps without times (storm totals) take the mean of the twelve factors.
     factors : mapping of gauge id to array of float, shape (12,)
-        Factors of January to December, above 0. The month is that in which a step ends.
+        Factors of January to December, above 0. The month is that which holds the middle of a step.
 
     Returns
     -------
@@ -43,7 +43,9 @@ def correct_catch(record: RainRecord, factors: Mapping[str, npt.NDArray[np.float
         return record
     depth, status = record.depth.copy(), record.status.copy()
     timeless = np.isnat(record.ends)
-    month = np.where(timeless, 0, record.ends.astype("datetime64[M]").astype(np.int64) % 12)
+    # The middle, since the last step of a month ends at the first moment of the next.
+    middle = record.starts + (record.ends - record.starts) // 2
+    month = np.where(timeless, 0, middle.astype("datetime64[M]").astype(np.int64) % 12)
     for gauge, months in factors.items():
         column = record.gauges.index(gauge)
         factor = np.where(timeless, months.mean(), months[month])

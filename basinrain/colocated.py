@@ -57,7 +57,12 @@ def merge_colocated(network: GaugeNetwork, record: RainRecord) -> tuple[GaugeNet
         # The status is that of the first member that reports; where none does, that of the first member.
         chosen = np.where(count > 0, np.argmax(reporting, axis=1), 0)
         picked = record.status[:, columns][np.arange(len(record)), chosen]
-        status[:, first] = np.where((picked == Status.ZERO) & (mean > 0), Status.OBSERVED, picked)
+        picked = np.where((picked == Status.ZERO) & (mean > 0), Status.OBSERVED, picked)
+        own = record.status[:, columns]
+        # A mean that holds a spread value was not measured at the step; a gap is one while any of them is in service.
+        spread = ((own == Status.SPREAD) & (record.depth[:, columns] > 0)).any(axis=1)
+        gap = (count == 0) & (picked == Status.NOT_INSTALLED) & (own != Status.NOT_INSTALLED).any(axis=1)
+        status[:, first] = np.where(spread, Status.SPREAD, np.where(gap, Status.MISSING, picked))
         depth[:, first] = np.where(count > 0, mean, np.nan)
         ids[first] = "+".join(group)
         keep[columns[1:]] = False

@@ -6,6 +6,7 @@ reading → screening → infill → averaging → storms → cautions; writing 
 from __future__ import annotations
 
 import hashlib
+import re
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from datetime import datetime, timedelta
@@ -26,6 +27,7 @@ from basinrain.colocated import merge_colocated
 from basinrain.errors import BasinRainError, DataError, JobError, MethodError, Problem, Problems, ReadError
 from basinrain.gauges import GaugeNetwork, refuse_colocated
 from basinrain.infill import InfillOptions, complete
+from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.jobfile import Job, read_job
 from basinrain.jobfile.tables import StormTable
 from basinrain.notes import Note
@@ -77,12 +79,13 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     network, record, basins, notes = _read(job)
     network, basins, plane, ground_notes = reading.settle(network, basins, plane=job.job.plane)
     notes += ground_notes
+    # Each gauge has a catch of its own, so it is corrected before gauges at one place are merged.
+    record = correct_catch(record, _catch_factors(job, network))
     if job.gauges.colocated == "mean":
         network, record, merged = merge_colocated(network, record)
         notes += merged
     else:
         refuse_colocated(network)
-    record = correct_catch(record, _catch_factors(job, network))
     storms, window_notes = _storms(job, record)
     notes += window_notes
 
@@ -167,7 +170,7 @@ def _moment(text: str | None, zone: str, *, end: bool) -> np.datetime64 | None:
     if text is None:
         return None
     when = datetime.fromisoformat(text)
-    if end and len(text) == len("2031-05-04"):
+    if end and not re.search(r"[T ]", text):
         when += timedelta(days=1)
     if when.tzinfo is not None:
         if not zone:
@@ -291,7 +294,9 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
             )
         )
     options = InfillOptions(**job.infill.model_dump())
-    completed = complete(window, network, options)
+    # A gap may be longer than the storm.
+    long = longer_than(record, gap_mask(record), options.longest_gap)[storm.first : storm.stop]
+    completed = complete(window, network, options, long=long)
     depths = {name: average_storm(completed, weigher) for name, weigher in weighers.items()}
     shapes = hyetograph_shape(completed, storm, network, basins)
     if not any(d.table.answered.any() for d in depths.values()):

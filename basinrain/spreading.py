@@ -23,6 +23,9 @@ __all__ = ["NEAREST", "pattern_shares", "share_out", "spread_totals"]
 NEAREST: Final = 5
 """How many recording gauges make a pattern."""
 
+_ONE_PLACE: Final = 0.01
+"""m; gauges nearer to each other stand at one place."""
+
 _LISTED: Final = 3
 _NONE_COMPLETE: Final = "no recording gauge is complete over it"
 _ALL_DRY: Final = "none of the recording gauges near it has rain"
@@ -89,7 +92,7 @@ def spread_totals(
     record : RainRecord
         Columns in the network's order.
     network : GaugeNetwork
-        Gives the distances; no two gauges stand at one place.
+        Gives the distances; a recorder at the target's own place gives the pattern alone.
     totals : sequence of KnownTotal
         Each begins and ends on bounds of the record's steps; intervals of one gauge do not overlap. Whatever the record
         holds for the gauge in those steps is replaced.
@@ -172,7 +175,8 @@ def _weights(
     chosen = usable & (np.cumsum(usable, axis=1) <= NEAREST)
     weights = np.zeros(near.shape)
     # Scaled by the nearest one's, so that metres squared do not lose digits.
-    inverse = np.divide(1.0, squared, out=np.zeros(near.shape), where=chosen)
+    # A recorder at the gauge's own place gives the pattern alone: others are then 1e-8 of it or less.
+    inverse = np.divide(1.0, np.maximum(squared, _ONE_PLACE**2), out=np.zeros(near.shape), where=chosen)
     np.put_along_axis(
         weights, near, inverse / np.where(chosen.any(axis=1), inverse.max(axis=1, initial=0), 1)[:, None], 1
     )

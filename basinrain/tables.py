@@ -143,11 +143,13 @@ def storm_table(run: StormRun) -> pd.DataFrame:
 
 
 def peaks(result: StormResult, method: str) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
-    """Return the peak of each basin's mean and the weighted mean of the gauges' own peaks, both in mm a step."""
+    """Return the peak of each basin's mean and the weighted mean of the gauges' own peaks, both in mm a step.
+
+    The peak of a gauge that has no depth at some step is not known; nor is then a mean of peaks that needs it.
+    """
     depths = result.depths[method]
     depth = result.completed.record.depth
-    gauge_peaks = np.max(np.where(np.isnan(depth), -1.0, depth), axis=0)
-    return depths.depth.max(axis=0), depths.table.apply(np.where(gauge_peaks < 0, np.nan, gauge_peaks))
+    return depths.depth.max(axis=0), depths.table.apply(depth.max(axis=0))
 
 
 def spread(run: StormRun) -> pd.DataFrame:
@@ -302,6 +304,7 @@ def hyetographs(run: StormRun) -> pd.DataFrame:
 def thiessen(run: StormRun) -> gpd.GeoDataFrame:
     """Return ``thiessen``: polygons of basin and gauge, with area and weight."""
     import geopandas as gpd
+    import shapely
 
     from basinrain.averaging import thiessen_pieces
     from basinrain.ground import LOCAL, LONLAT, project
@@ -309,6 +312,8 @@ def thiessen(run: StormRun) -> gpd.GeoDataFrame:
     basin, gauge, polygons, areas = thiessen_pieces(run.network, run.basins)
     local = run.plane.crs == LOCAL
     shapes = polygons if local else project(polygons, run.plane.crs, LONLAT)
+    # Outer rings counterclockwise, as RFC 7946 asks (section 3.1.6).
+    shapes = shapely.orient_polygons(shapes)
     return gpd.GeoDataFrame(
         {
             "basin": [run.basins.ids[b] for b in basin],

@@ -26,6 +26,9 @@ __all__ = ["choose_grid", "idw_weights", "prepare_idw"]
 _BLOCK: Final = 500_000
 """Distances held at a time; few enough to stay in a processor's cache, so that memory does not grow with the grid."""
 
+_FEWEST_CELLS: Final = 100
+"""Cells that the median basin has at least, where the size is chosen here."""
+
 _ON_GAUGE: Final = 1e-6
 """A centre this close to a gauge, as a share of the cell, is on it."""
 
@@ -220,10 +223,10 @@ def choose_grid(
 ) -> Grid:
     """Return the grid of a run, its cell size chosen by halving unless it is given.
 
-    The cell chosen is the largest of the series 1, 2, 5 x 10^k, no longer than the basins' common box, for which going
-    to half of it changes the weights of every basin of at least 1 % of the median basin's area by at most 0.001, with
-    all gauges of the network present. The change is half the sum of absolute changes: the weight that moves from some
-    gauges to others.
+    The cell chosen is the largest of the series 1, 2, 5 x 10^k, with at least 100 cells in the median basin, for which
+    going to half of it changes the weights and the covered share of every basin of at least 1 % of the median basin's
+    area by at most 0.001, with all gauges of the network present, and for which this holds for the next smaller size
+    too. The change of weights is half the sum of absolute changes: what moves from some gauges to others.
 
     Parameters
     ----------
@@ -263,7 +266,9 @@ def choose_grid(
     def measured(grid: Grid) -> Grid:
         half = grid.cell / 2
         halved = known[half][0] if half in known else weights(grids.lay(basins, half))
-        return replace(grid, halving_change=_change(weights(grid), halved))
+        moved = _change(weights(grid), halved)
+        reach = np.abs(known[grid.cell][1] - known[half][1])
+        return replace(grid, halving_change=np.maximum(moved, reach))
 
     if cell is not None:
         grid = make_grid(basins, cell)
@@ -272,10 +277,21 @@ def choose_grid(
         weights(grid)
     else:
         west, south, east, north = basins.bounds
+        settled: Grid | None = None
+        again = False
         for size in _series(max(east - west, north - south)):
-            grid = measured(grids.lay_within_limit(basins, size, remedy="choose the size yourself: give cell"))
-            if grid.settled:
+            median = float(np.median(basins.areas))
+            if median < _FEWEST_CELLS * size**2:
+                continue
+            # Two sizes may agree by accident, so the next one must settle too, as far as there may be so many cells.
+            if settled is not None and float(basins.areas.max()) > grids.MOST_CELLS * size**2:
                 break
+            grid = measured(grids.lay_within_limit(basins, size, remedy="choose the size yourself: give cell"))
+            if again and grid.settled:
+                break
+            again = grid.settled
+            settled = grid if again else settled
+        grid = settled or grid
     if radius is not None and len(network):
         _coverage(basins, known[grid.cell][1], radius, allowed=allow_uncovered)
     return grid

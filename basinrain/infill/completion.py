@@ -6,6 +6,7 @@ from dataclasses import replace
 from typing import Final
 
 import numpy as np
+import numpy.typing as npt
 
 from basinrain.errors import DataError, Problems
 from basinrain.gauges import GaugeNetwork
@@ -23,7 +24,9 @@ __all__ = ["complete"]
 _YEAR: Final = np.timedelta64(365 * 86400, "s")
 
 
-def complete(record: RainRecord, network: GaugeNetwork, options: InfillOptions, *, daily: bool = False) -> Completed:
+def complete(
+    record: RainRecord, network: GaugeNetwork, options: InfillOptions, *, long: npt.NDArray[np.bool_] | None = None
+) -> Completed:
     """Infill the gaps of a storm window.
 
     Parameters
@@ -34,8 +37,10 @@ def complete(record: RainRecord, network: GaugeNetwork, options: InfillOptions, 
         The gauges, with their normals where the method needs them.
     options : InfillOptions
         Method, scale and limits.
-    daily
-        Whether a daily gauge takes part; a record that holds spread values says so by itself.
+    long : array of bool, shape (n_steps, n_gauges), optional
+        The gaps that are too long to be infilled. A gap may begin before the window and end after it, so whoever has
+        the whole record gives them (:func:`basinrain.infill.gaps.longer_than`); where not given, what is seen of a gap
+        in this record is its length.
 
     Returns
     -------
@@ -49,7 +54,9 @@ def complete(record: RainRecord, network: GaugeNetwork, options: InfillOptions, 
         The columns are not the network's gauges, the record was infilled before, or normals are missing or not above 0
         at a gauge that takes part; all such problems together, before anything is computed.
 
-    Notes ----- Donors are values that a gauge measured itself, never infilled ones. At the scale ``"step"`` every
+    Notes
+    -----
+    Donors are values that a gauge measured itself, never infilled ones. At the scale ``"step"`` every
     missing step is the weighted sum of the donors measured at that step. At ``"day"`` and ``"storm"`` a span of steps
     (the rainfall day within the window, or the window; where a gauge was in service for part of it, that part) is
     looked at as a whole:
@@ -82,8 +89,8 @@ def complete(record: RainRecord, network: GaugeNetwork, options: InfillOptions, 
     """
     _check(record, network)
     gaps = gap_mask(record)
-    long = longer_than(record, gaps, options.longest_gap)
-    window = Window(record, network, options, _scale(record, options, daily=daily), gaps & ~long)
+    long = longer_than(record, gaps, options.longest_gap) if long is None else gaps & long
+    window = Window(record, network, options, _scale(record, options), gaps & ~long)
     if window.fillable.any() and options.chosen_method.needs_normals:
         taking_part = np.asarray(record.reporting.any(axis=0) | window.fillable.any(axis=0))
         require_normals(network, taking_part, [month or None for month in _months(window)])
@@ -100,13 +107,13 @@ def complete(record: RainRecord, network: GaugeNetwork, options: InfillOptions, 
     return Completed(replace(record, depth=depth, status=status), tuple(estimates), tuple(notes))
 
 
-def _scale(record: RainRecord, options: InfillOptions, *, daily: bool) -> str:
+def _scale(record: RainRecord, options: InfillOptions) -> str:
     # A total without times is a storm's, whatever else is asked for.
     if np.isnat(record.ends).any():
         return "storm"
     if options.scale is not None:
         return options.scale
-    daily = daily or not record.recorders.issuperset(record.gauges) or bool((record.status == Status.SPREAD).any())
+    daily = not record.recorders.issuperset(record.gauges) or bool((record.status == Status.SPREAD).any())
     return "day" if daily else "storm"
 
 

@@ -40,16 +40,7 @@ def check_folder(folder: Path, inputs: Iterable[Path]) -> None:
         if path.resolve().is_relative_to(place):
             raise _refused(folder, f"the input {path.name} inside it", "a folder without inputs", "name another one")
     _restore(place)
-    if place.exists():
-        strangers = sorted({path.name for path in place.iterdir()} - _own_files(place))
-        if strangers:
-            named = ", ".join(strangers[:5]) + (" ..." if len(strangers) > 5 else "")
-            raise _refused(
-                folder,
-                f"files that no earlier run wrote: {named}",
-                "an empty folder or an earlier output",
-                "move them away or name another output folder",
-            )
+    _refuse_strangers(folder, place)
     parent = next(p for p in place.parents if p.exists())
     if not parent.is_dir() or not os.access(parent, os.W_OK | os.X_OK):
         raise _refused(folder, f"no right to write in {parent}", "a folder that can be written", "name another one")
@@ -59,6 +50,20 @@ def check_folder(folder: Path, inputs: Iterable[Path]) -> None:
 
 def _refused(folder: Path, found: str, expected: str, remedy: str) -> WriteError:
     return WriteError(Problem(item="output folder", found=found, expected=expected, remedy=remedy, file=str(folder)))
+
+
+def _refuse_strangers(folder: Path, place: Path) -> None:
+    if not place.exists():
+        return
+    strangers = sorted({path.name for path in place.iterdir()} - _own_files(place))
+    if strangers:
+        named = ", ".join(strangers[:5]) + (" ..." if len(strangers) > 5 else "")
+        raise _refused(
+            folder,
+            f"files that no earlier run wrote: {named}",
+            "an empty folder or an earlier output",
+            "move them away or name another output folder",
+        )
 
 
 def _own_files(place: Path) -> set[str]:
@@ -77,10 +82,10 @@ def _restore(place: Path) -> None:
     """Put an earlier output back that a killed run had moved aside, or clear it where the new one had arrived."""
     earlier = _earlier(place)
     if earlier.exists():
-        if place.exists():
-            shutil.rmtree(earlier)
-        else:
+        if not place.exists():
             earlier.rename(place)
+        elif (place / RECORD).exists():
+            shutil.rmtree(earlier, ignore_errors=True)
 
 
 @contextmanager
@@ -98,14 +103,24 @@ def whole_folder(folder: Path) -> Iterator[Path]:
     place = folder.resolve()
     built: Path | None = None
     try:
+        _restore(place)
+        _refuse_strangers(folder, place)
         place.parent.mkdir(parents=True, exist_ok=True)
         built = Path(tempfile.mkdtemp(prefix=f".{place.name}.", dir=place.parent))
         built.chmod(0o755)
         yield built
         earlier = _earlier(place)
-        if place.exists():
+        # Looked at again: the run took its time, and what came to lie there meanwhile is not ours.
+        _refuse_strangers(folder, place)
+        moved = place.exists()
+        if moved:
             place.rename(earlier)
-        built.rename(place)
+        try:
+            built.rename(place)
+        except OSError:
+            if moved and not place.exists():
+                earlier.rename(place)
+            raise
         shutil.rmtree(earlier, ignore_errors=True)
     except OSError as error:
         raise _refused(folder, (error.strerror or str(error)).lower(), "a folder that can be written", "") from error

@@ -55,5 +55,5 @@ def thiessen_text(run: StormRun) -> str:
     content = json.loads(run.thiessen.to_json(show_bbox=False, drop_id=True))
     content.pop("crs", None)
     if run.plane.crs == LOCAL:
-        content["coordinates"] = "local plane, metres"
+        content["plane"] = "local, metres"
     return json.dumps(content, ensure_ascii=False) + "\n"

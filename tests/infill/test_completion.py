@@ -328,9 +328,9 @@ class TestScale:
 
     SILENT = ([1.0, 9.0], [NAN, NAN], [2.0, 8.0])
 
-    def used(self, record: RainRecord, *, daily: bool = False) -> str:
+    def used(self, record: RainRecord) -> str:
         """Return the scale of the only estimate."""
-        (estimate,) = complete(record, network(3), InfillOptions(), daily=daily).estimates
+        (estimate,) = complete(record, network(3), InfillOptions()).estimates
         return estimate.scale
 
     def test_storm_where_all_record(self) -> None:
@@ -338,9 +338,8 @@ class TestScale:
         assert self.used(hourly(*self.SILENT)) == "storm"
 
     def test_day_where_a_daily_gauge_takes_part(self) -> None:
-        """Said by the caller, by spread values, or by the record's list of recorders."""
+        """Said by spread values or by the record's list of recorders."""
         record = hourly(*self.SILENT)
-        assert self.used(record, daily=True) == "day"
         assert self.used(with_status(record, "C", slice(None), Status.SPREAD)) == "day"
         assert self.used(replace(record, recorders=frozenset("AB"))) == "day"
 
