@@ -19,14 +19,15 @@ def correct_catch(record: RainRecord, factors: Mapping[str, npt.NDArray[np.float
     Parameters
     ----------
     record : RainRecord
-        Steps without times (storm totals) take the mean of the twelve factors.
+        With its totals spread. Steps without times (storm totals) take the mean of the twelve factors.
     factors : mapping of gauge id to array of float, shape (12,)
         Factors of January to December, above 0. The month is that which holds the middle of a step.
 
     Returns
     -------
     RainRecord
-        Changed values have status ADJUSTED; spread values stay SPREAD, missing ones missing.
+        Changed values have status ADJUSTED; spread values stay SPREAD, missing ones missing. Totals that were spread
+        are those of their corrected steps.
 
     Examples
     --------
@@ -52,4 +53,10 @@ def correct_catch(record: RainRecord, factors: Mapping[str, npt.NDArray[np.float
         changed = (factor != 1) & (depth[:, column] > 0) & (status[:, column] != Status.SPREAD)
         depth[:, column] *= factor
         status[changed, column] = Status.ADJUSTED
-    return replace(record, depth=depth, status=status)
+    totals = [
+        replace(total, depth=float(depth[first:stop, record.gauges.index(total.gauge)].sum()))
+        if total.gauge in factors
+        else total
+        for total, first, stop in zip(record.totals, *record.steps_of(record.totals), strict=True)
+    ]
+    return replace(record, depth=depth, status=status, totals=tuple(totals))

@@ -11,11 +11,11 @@ import numpy as np
 import numpy.typing as npt
 import shapely
 
+from basinrain.basin_depths import BasinDepths, spread_across_methods
 from basinrain.basins import Basins
 from basinrain.gauges import GaugeNetwork
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
-from basinrain.storms import BasinDepths, spread_across_methods
 from basinrain.units import depth_factor
 
 __all__ = ["network_cautions", "record_cautions", "storm_cautions"]
@@ -138,6 +138,7 @@ def storm_cautions(
     """
     for b, basin in enumerate(basins.ids):
         yield from _dominant_gauge(storm, network, basin, {m: result.table.weights[b] for m, result in depths.items()})
+        yield from _no_number(storm, basin, {m: result.depth[:, b] for m, result in depths.items()})
         shares = {m: _share(float(result.infilled[b]), float(result.total[b])) for m, result in depths.items()}
         much = {method: share for method, share in shares.items() if share > _INFILLED_SHARE + _ROUNDING}
         if much:
@@ -157,13 +158,28 @@ def storm_cautions(
                 storm=storm,
                 basin=basin,
             )
-    rebuilt = max(result.rebuilt_steps for result in depths.values())
-    if rebuilt:
+    without = next(iter(depths.values())).without_depth
+    if without.any():
+        gauges = ", ".join(f"{network.ids[g]} ({without[g]})" for g in np.flatnonzero(without))
         yield Note(
             code="weights-rebuilt",
-            text=f"{'At 1 step' if rebuilt == 1 else f'At {rebuilt} steps'} some gauge had no value even after infill; "
-            "the weights were rebuilt from the others there.",
+            text=f"Gauges without a value even after infill (steps): {gauges}; the weights were rebuilt from the "
+            "others there.",
             storm=storm,
+        )
+
+
+def _no_number(storm: str, basin: str, series: Mapping[str, npt.NDArray[np.float64]]) -> Iterator[Note]:
+    """Yield a warning for methods that have a number at some steps and none at others."""
+    gaps = {method: int(np.isnan(depth).sum()) for method, depth in series.items()}
+    blank = {method: gap for method, gap in gaps.items() if 0 < gap < len(series[method])}
+    if blank:
+        methods = ", ".join(f"{gap} by {method}" for method, gap in blank.items())
+        yield Note(
+            code="no-basin-total",
+            text=f"Basin {basin} has no total: at some steps no gauge has a value ({methods}).",
+            storm=storm,
+            basin=basin,
         )
 
 

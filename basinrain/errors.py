@@ -3,7 +3,8 @@
 ::
 
     BasinRainError              every expected failure; carries Problems
-    ├── JobError                the job file (or a --set, or a call) asks for something that cannot be
+    ├── JobError                the job file (or a call) asks for something that cannot be
+    │   └── SettingError        a change to the job, ``--set`` on the command line, cannot be made
     ├── ReadError               a file cannot be read as the job says it should be
     ├── DataError               values were read, but they cannot be used together
     ├── MethodError             a method has no answer for this network, basin or storm
@@ -27,6 +28,7 @@ __all__ = [
     "Problem",
     "Problems",
     "ReadError",
+    "SettingError",
     "WriteError",
     "nearest_name",
 ]
@@ -100,21 +102,32 @@ class BasinRainError(Exception):
     ----------
     problems
         One problem or several; printed one a line.
+    unlisted
+        How many more there are that are not listed word for word.
 
     Examples
     --------
-    >>> raise_me = DataError(Problem(item="gauge A", found="two positions"))
-    >>> str(raise_me), len(raise_me.problems)
-    ('gauge A: found two positions', 1)
+    >>> raise_me = DataError(Problem(item="gauge A", found="two positions"), unlisted=7)
+    >>> print(raise_me)
+    gauge A: found two positions
+    7 more problems: found but not listed
     """
 
-    def __init__(self, problems: Problem | Iterable[Problem]) -> None:
+    def __init__(self, problems: Problem | Iterable[Problem], *, unlisted: int = 0) -> None:
         self.problems: tuple[Problem, ...] = (problems,) if isinstance(problems, Problem) else tuple(problems)
-        super().__init__("\n".join(str(problem) for problem in self.problems))
+        self.unlisted = unlisted
+        lines = [str(problem) for problem in self.problems]
+        if unlisted:
+            lines.append(f"{unlisted} more {'problem' if unlisted == 1 else 'problems'}: found but not listed")
+        super().__init__("\n".join(lines))
 
 
 class JobError(BasinRainError):
     """The job asks for something that cannot be."""
+
+
+class SettingError(JobError):
+    """A change to the job cannot be made; on the command line that is wrong usage."""
 
 
 class ReadError(BasinRainError):
@@ -192,22 +205,15 @@ class Problems:
                 )
             )
 
-    def extend(self, problems: Iterable[Problem]) -> None:
-        """Take over problems found elsewhere."""
-        for problem in problems:
-            self._count += 1
-            if len(self._kept) < self._limit:
-                self._kept.append(problem)
+    def extend(self, error: BasinRainError) -> None:
+        """Take over the problems of an error, those that it does not list included."""
+        self._count += len(error.problems) + error.unlisted
+        self._kept += error.problems[: self._limit - len(self._kept)]
 
     def raise_as(self, kind: type[BasinRainError]) -> None:
         """Raise all of them as one error of ``kind``; do nothing when there are none."""
-        if not self._count:
-            return
-        listed = list(self._kept)
-        if self._count > len(listed):
-            more = self._count - len(listed)
-            listed.append(Problem(item=f"{more} more problems of this input", found="not listed", file=self._file))
-        raise kind(listed)
+        if self._count:
+            raise kind(self._kept, unlisted=self._count - len(self._kept))
 
 
 def nearest_name(name: str, known: Iterable[str]) -> str:

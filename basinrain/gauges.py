@@ -15,10 +15,12 @@ from scipy.spatial import cKDTree
 from basinrain import ground
 from basinrain.errors import DataError, Problems
 
-__all__ = ["GaugeNetwork", "colocated_groups", "refuse_colocated"]
+__all__ = ["ONE_PLACE", "GaugeNetwork", "colocated_groups", "refuse_colocated"]
 
-_ONE_PLACE: Final = 0.01
+ONE_PLACE: Final = 0.01
 """Gauges closer than this, in m, are at one place."""
+
+_TIE: Final = 1e-9
 
 
 @dataclass(frozen=True, eq=False)
@@ -165,6 +167,38 @@ class GaugeNetwork:
         """Return the distances between all gauges in m, (n_gauges, n_gauges); geodesic unless ``crs`` is local."""
         return ground.distances(self.x, self.y, self.x, self.y, self.crs)
 
+    def nearest_first(
+        self, distances: npt.NDArray[np.float64], gauges: npt.NDArray[np.int64] | None = None
+    ) -> npt.NDArray[np.int64]:
+        """Return the order of gauges by distance, the nearest first.
+
+        Parameters
+        ----------
+        distances : array of float, shape (..., n)
+            m, from one place or many to every gauge. Distances that differ by less than one part in 10⁹ are ties, which
+            go by gauge id, so that neither the plane's origin nor the order of the file decides.
+        gauges : array of int, shape (n,), optional
+            Positions of the gauges that the distances lead to; all gauges where not given.
+
+        Returns
+        -------
+        array of int, shape (..., n)
+            Places along the last axis of ``distances``.
+
+        Examples
+        --------
+        >>> network = GaugeNetwork(ids=("B", "C", "A"), x=[0.0, 0.0, 0.0], y=[0.0, 0.0, 0.0], crs="local")
+        >>> network.nearest_first(np.array([5.0, 3.0, 5.0 + 1e-10]))
+        array([1, 2, 0])
+        """
+        order = np.argsort(distances, axis=-1, kind="stable")
+        ranked = np.take_along_axis(distances, order, axis=-1)
+        farther = ranked[..., 1:] > ranked[..., :-1] * (1 + _TIE)
+        place = np.zeros(order.shape, dtype=np.int64)
+        np.put_along_axis(place, order[..., 1:], np.cumsum(farther, axis=-1), axis=-1)
+        rank = self.id_rank if gauges is None else self.id_rank[gauges]
+        return np.lexsort((np.broadcast_to(rank, place.shape), place), axis=-1)
+
     def in_service(self, starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> npt.NDArray[np.bool_]:
         """Return whether every gauge was in service over the whole of every interval, shape (n_steps, n_gauges).
 
@@ -196,7 +230,7 @@ def colocated_groups(network: GaugeNetwork) -> list[tuple[str, ...]]:
     [('A', 'C')]
     """
     n = len(network)
-    pairs = cKDTree(np.column_stack([network.x, network.y])).query_pairs(_ONE_PLACE, output_type="ndarray")
+    pairs = cKDTree(np.column_stack([network.x, network.y])).query_pairs(ONE_PLACE, output_type="ndarray")
     links = coo_array((np.ones(len(pairs)), (pairs[:, 0], pairs[:, 1])), shape=(n, n))
     _, place = connected_components(links, directed=False)
     groups: dict[int, list[str]] = {}

@@ -6,10 +6,8 @@ reading → screening → infill → averaging → storms → cautions; writing 
 from __future__ import annotations
 
 import hashlib
-import re
 from collections.abc import Callable, Sequence
 from dataclasses import replace
-from datetime import datetime, timedelta
 from functools import partial
 from importlib.metadata import version
 from pathlib import Path
@@ -20,6 +18,7 @@ import numpy.typing as npt
 
 from basinrain import reading
 from basinrain.averaging import Grid, Weigher, averaging_method, choose_grid
+from basinrain.basin_depths import average_storm
 from basinrain.basins import Basins
 from basinrain.catch import correct_catch
 from basinrain.cautions import network_cautions, record_cautions, storm_cautions
@@ -30,12 +29,15 @@ from basinrain.infill import InfillOptions, complete
 from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.jobfile import Job, read_job
 from basinrain.jobfile.tables import StormTable
-from basinrain.notes import Note
-from basinrain.rainfall import RainRecord
+from basinrain.jobfile.times import rainfall_day_start, storm_window_times
+from basinrain.notes import Note, once
+from basinrain.rainfall import RainRecord, Status
 from basinrain.results import StormResult, StormRun
-from basinrain.storms import Storm, average_storm, hyetograph_shape, storm_window
+from basinrain.storms import Storm, hyetograph_shape, storm_window
 
 __all__ = ["run_storm"]
+
+_SHAPEFILE_PARTS = frozenset({".shp", ".shx", ".dbf", ".prj", ".cpg"})
 
 _T = TypeVar("_T")
 Report = Callable[[str], None]
@@ -98,7 +100,8 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
         result, found = _run_one(job, storm, record, network, basins, weighers)
         results.append(result)
         notes += found
-    notes += (*network_cautions(network, basins), *record_cautions(record))
+    in_use = np.any([~(r.completed.record.status == Status.NOT_INSTALLED).all(axis=0) for r in results], axis=0)
+    notes += (*network_cautions(network.subset(in_use), basins), *record_cautions(record))
     return StormRun(
         name=job.job.name,
         settings=job.model_dump(mode="json", exclude_none=True),
@@ -109,7 +112,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
         plane=plane,
         record=record,
         storms=tuple(results),
-        notes=tuple(notes),
+        notes=once(notes, [storm.name for storm in storms]),
         inputs=_digests(job),
         versions={name: version(name) for name in ("basinrain", "numpy", "scipy", "shapely", "pyproj", "pandas")},
         facts=facts,
@@ -126,8 +129,13 @@ def _read(job: Job) -> tuple[GaugeNetwork, RainRecord, Basins, tuple[Note, ...]]
     # A reader that gave nothing has left a problem, so from here on everything is there.
     network, (polygons, basin_notes) = cast("GaugeNetwork", network), cast("tuple[Basins, tuple[Note, ...]]", basins)
     sources = cast("list[RainRecord]", records)
+    timed = [source.zone for source in sources if not source.labels]
     record, step_notes = reading.bring_to_step(
-        sources, network, common=job.step.common, storm_times=_storm_times(job, sources[0].zone)
+        sources,
+        network,
+        common=job.step.common,
+        storm_times=_storm_times(job, timed[0] if timed else ""),
+        exclude=job.gauges.exclude,
     )
     return network, record, polygons, (*basin_notes, *step_notes)
 
@@ -136,7 +144,7 @@ def _try(problems: Problems, read: Callable[[], _T]) -> _T | None:
     try:
         return read()
     except BasinRainError as error:
-        problems.extend(error.problems)
+        problems.extend(error)
         return None
 
 
@@ -165,35 +173,13 @@ def _read_basins(job: Job) -> tuple[Basins, tuple[Note, ...]]:
     return reading.read_basins(job.path(table.file), **table.model_dump(exclude={"file"}))
 
 
-def _moment(text: str | None, zone: str, *, end: bool) -> np.datetime64 | None:
-    """Return a job's time in the record's clock; a bare date names its whole day."""
-    if text is None:
-        return None
-    when = datetime.fromisoformat(text)
-    if end and not re.search(r"[T ]", text):
-        when += timedelta(days=1)
-    if when.tzinfo is not None:
-        if not zone:
-            raise JobError(
-                Problem(
-                    item="storm times",
-                    found=f"'{text}' with an offset",
-                    expected="times without one, since the rainfall files state no time zone",
-                    remedy="give [[rainfall]] timezone, or write the storm's times in the files' clock",
-                )
-            )
-        offset = datetime.fromisoformat(f"2000-01-01T00:00{zone}").utcoffset() or timedelta(0)
-        when = (when - (when.utcoffset() or timedelta(0)) + offset).replace(tzinfo=None)
-    return np.datetime64(when, "s")
+def _window(job: Job, table: StormTable, zone: str) -> tuple[np.datetime64 | None, np.datetime64 | None]:
+    return storm_window_times(table, zone, day_start=rainfall_day_start(job.rainfall))
 
 
 def _storm_times(job: Job, zone: str) -> dict[str, tuple[np.datetime64, np.datetime64]]:
-    times = {}
-    for table in job.storm:
-        start, end = _moment(table.start, zone, end=False), _moment(table.end, zone, end=True)
-        if start is not None and end is not None:
-            times[table.name] = (start, end)
-    return times
+    windows = {table.name: _window(job, table, zone) for table in job.storm}
+    return {name: (start, end) for name, (start, end) in windows.items() if start is not None and end is not None}
 
 
 def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]]:
@@ -206,10 +192,7 @@ def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]
     storms: list[Storm] = []
     notes: list[Note] = []
     for table in tables:
-        found = _try(
-            problems,
-            partial(_storm, table, record),
-        )
+        found = _try(problems, partial(_storm, job, table, record))
         if found is not None:
             storms.append(found[0])
             notes += found[1]
@@ -217,14 +200,9 @@ def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]
     return storms, tuple(notes)
 
 
-def _storm(table: StormTable, record: RainRecord) -> tuple[Storm, tuple[Note, ...]]:
-    return storm_window(
-        record,
-        table.name,
-        start=_moment(table.start, record.zone, end=False),
-        end=_moment(table.end, record.zone, end=True),
-        pattern=table.pattern,
-    )
+def _storm(job: Job, table: StormTable, record: RainRecord) -> tuple[Storm, tuple[Note, ...]]:
+    start, end = _window(job, table, record.zone)
+    return storm_window(record, table.name, start=start, end=end, pattern=table.pattern)
 
 
 def _catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.float64]]:
@@ -283,7 +261,7 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
     basins: Basins,
     weighers: dict[str, Weigher],
 ) -> tuple[StormResult, tuple[Note, ...]]:
-    window = record.window(storm.first, storm.stop)
+    window = storm.cut(record)
     if not window.reporting.any():
         raise DataError(
             Problem(
@@ -323,4 +301,18 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
 
 def _digests(job: Job) -> dict[str, str]:
     names = [job.gauges.file, *(name for source in job.rainfall for name in source.paths), job.basins.file]
-    return {name: hashlib.sha256(job.path(name).read_bytes()).hexdigest() for name in names}
+    return {part: _digest(job.path(part)) for name in names for part in _parts(job, name)}
+
+
+def _parts(job: Job, name: str) -> list[str]:
+    """Return the files that one name stands for: a shapefile has its table, index and projection beside it."""
+    path = job.path(name)
+    if path.suffix.lower() != ".shp":
+        return [name]
+    beside = [p.name for p in path.parent.iterdir() if p.stem == path.stem and p.suffix.lower() in _SHAPEFILE_PARTS]
+    return [str(Path(name).with_name(part)) for part in sorted(beside)]
+
+
+def _digest(path: Path) -> str:
+    with path.open("rb") as file:
+        return hashlib.file_digest(file, "sha256").hexdigest()

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, replace
 from typing import Literal
 
-__all__ = ["Note"]
+__all__ = ["Note", "once"]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -39,3 +40,33 @@ class Note:
 
     def __str__(self) -> str:
         return f"{self.storm}: {self.text}" if self.storm else self.text
+
+
+def once(notes: Iterable[Note], storms: Sequence[str]) -> tuple[Note, ...]:
+    """Return the notes with what is said of several storms said once.
+
+    Parameters
+    ----------
+    notes
+        Notes of a run, in order.
+    storms
+        Names of the run's storms. A note of all of them (two or more) loses its storm; a note of some names them.
+
+    Examples
+    --------
+    >>> both = [Note(code="dry", text="It was dry.", storm=name) for name in ("Quill", "Reed")]
+    >>> [str(note) for note in once(both, ["Quill", "Reed"])]
+    ['It was dry.']
+    >>> [str(note) for note in once(both, ["Quill", "Reed", "Sedge"])]
+    ['Quill, Reed: It was dry.']
+    """
+    where: dict[Note, list[str]] = {}
+    for note in notes:
+        names = where.setdefault(replace(note, storm=""), [])
+        if note.storm not in names:
+            names.append(note.storm)
+    everywhere = set(storms) if len(storms) > 1 else None
+    return tuple(
+        replace(note, storm="" if set(names) == everywhere else ", ".join(name for name in names if name))
+        for note, names in where.items()
+    )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from enum import IntEnum
 from typing import Final, cast
@@ -217,6 +218,12 @@ class RainRecord:
     def reporting(self) -> npt.NDArray[np.bool_]:
         """Where a value is the gauge's own, measured at the step or spread, shape (n_steps, n_gauges)."""
         return np.isin(self.status, [int(s) for s in REPORTING])
+
+    def steps_of(self, totals: Sequence[KnownTotal]) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.int64]]:
+        """Return the steps of totals as far as the record has them: first and stop (exclusive), each (n_totals,)."""
+        first = np.searchsorted(self.starts, np.array([total.start for total in totals], dtype="datetime64[s]"))
+        stop = np.searchsorted(self.ends, np.array([total.end for total in totals], dtype="datetime64[s]"), "right")
+        return first, np.maximum(first, stop)
 
     def window(self, first: int, stop: int) -> RainRecord:
         """Return the steps ``first`` to ``stop`` (exclusive); ``totals`` are kept whole."""

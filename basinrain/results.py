@@ -12,13 +12,14 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain import tables
+from basinrain.basin_depths import BasinDepths
 from basinrain.basins import Basins
 from basinrain.gauges import GaugeNetwork
 from basinrain.ground import Plane
 from basinrain.infill import Completed
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
-from basinrain.storms import BasinDepths, Storm
+from basinrain.storms import Storm
 
 if TYPE_CHECKING:
     import geopandas as gpd

@@ -14,7 +14,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.gauges import GaugeNetwork
+from basinrain.gauges import ONE_PLACE, GaugeNetwork
 from basinrain.notes import Note
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 
@@ -22,9 +22,6 @@ __all__ = ["NEAREST", "pattern_shares", "share_out", "spread_totals"]
 
 NEAREST: Final = 5
 """How many recording gauges make a pattern."""
-
-_ONE_PLACE: Final = 0.01
-"""m; gauges nearer to each other stand at one place."""
 
 _LISTED: Final = 3
 _NONE_COMPLETE: Final = "no recording gauge is complete over it"
@@ -84,15 +81,16 @@ def spread_totals(
     """Return the record with ``totals`` spread over its steps in the pattern of the recording gauges.
 
     The donors of a total are the :data:`NEAREST` nearest of ``record.recorders`` that are measured at every step of its
-    interval, weighted by the inverse squared distance; equal distances go by gauge id. Where none is complete,
-    or none of them has rain, the total is spread evenly and a note says so.
+    interval, weighted by the inverse squared distance; equal distances go by gauge id. A recorder at the gauge's own
+    place counts as 0.01 m away, which leaves next to nothing to the others as long as it is wet. Where none is
+    complete, or none of them has rain, the total is spread evenly and a note says so.
 
     Parameters
     ----------
     record : RainRecord
         Columns in the network's order.
     network : GaugeNetwork
-        Gives the distances; a recorder at the target's own place gives the pattern alone.
+        Gives the distances.
     totals : sequence of KnownTotal
         Each begins and ends on bounds of the record's steps; intervals of one gauge do not overlap. Whatever the record
         holds for the gauge in those steps is replaced.
@@ -154,13 +152,12 @@ def _by_distance(
     """Return for every gauge the places in ``donors`` by distance, itself left out last, and the squared distances."""
     distance = network.distances()[:, donors]
     distance[donors, np.arange(len(donors))] = np.inf
-    order = np.lexsort((np.broadcast_to(network.id_rank[donors], distance.shape), distance), axis=-1)
+    order = network.nearest_first(distance, donors)
     return order, np.take_along_axis(distance, order, axis=1) ** 2
 
 
 def _by_interval(record: RainRecord, totals: Sequence[KnownTotal]) -> dict[tuple[int, int], list[KnownTotal]]:
-    firsts = np.searchsorted(record.starts, np.array([t.start for t in totals], dtype="datetime64[s]"))
-    stops = np.searchsorted(record.ends, np.array([t.end for t in totals], dtype="datetime64[s]")) + 1
+    firsts, stops = record.steps_of(totals)
     groups: dict[tuple[int, int], list[KnownTotal]] = {}
     for first, stop, total in zip(firsts.tolist(), stops.tolist(), totals, strict=True):
         groups.setdefault((first, stop), []).append(total)
@@ -175,8 +172,7 @@ def _weights(
     chosen = usable & (np.cumsum(usable, axis=1) <= NEAREST)
     weights = np.zeros(near.shape)
     # Scaled by the nearest one's, so that metres squared do not lose digits.
-    # A recorder at the gauge's own place gives the pattern alone: others are then 1e-8 of it or less.
-    inverse = np.divide(1.0, np.maximum(squared, _ONE_PLACE**2), out=np.zeros(near.shape), where=chosen)
+    inverse = np.divide(1.0, np.maximum(squared, ONE_PLACE**2), out=np.zeros(near.shape), where=chosen)
     np.put_along_axis(
         weights, near, inverse / np.where(chosen.any(axis=1), inverse.max(axis=1, initial=0), 1)[:, None], 1
     )

@@ -11,8 +11,9 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.basin_depths import BasinDepths, spread_across_methods
 from basinrain.rainfall import Status
-from basinrain.storms import spread_across_methods, status_of_total
+from basinrain.storms import status_of_total
 from basinrain.units import area_factor, depth_factor, volume_factor, volume_unit_for
 from basinrain.weights import compare
 
@@ -20,8 +21,8 @@ if TYPE_CHECKING:
     import geopandas as gpd
     import pandas as pd
 
+    from basinrain.basin_depths import BasinDepths
     from basinrain.results import StormResult, StormRun
-    from basinrain.storms import BasinDepths
 
 __all__ = [
     "basin_means",

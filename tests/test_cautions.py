@@ -8,13 +8,13 @@ import pytest
 import shapely
 
 from basinrain.averaging import averaging_method
+from basinrain.basin_depths import average_storm
 from basinrain.basins import Basins
 from basinrain.cautions import network_cautions, record_cautions, storm_cautions
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import InfillOptions, complete
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
-from basinrain.storms import average_storm
 
 NAN = float("nan")
 
@@ -133,7 +133,7 @@ def test_weights_rebuilt_is_said() -> None:
     depths = average_storm(completed, averaging_method("thiessen")(network, square()))
     notes = list(storm_cautions("Q", network, square(), {"thiessen": depths}))
     assert [note.code for note in notes] == ["weights-rebuilt"]
-    assert notes[0].text.startswith("At 1 step some gauge had no value")
+    assert notes[0].text.startswith("Gauges without a value even after infill (steps): B (1); the weights were rebuilt")
 
 
 def test_a_basin_without_a_number_raises_no_false_warning() -> None:

@@ -166,3 +166,30 @@ def test_apart_is_accepted(gauges: GaugeNetwork, pick: int) -> None:
         crs="local",
     )
     assert colocated_groups(twice) == [(gauges.ids[beside], "beside")]
+
+
+# On a line, T in the middle: distances 1, 1, 2, 3 km.
+LINE = GaugeNetwork(ids=("T", "D", "C", "B", "A"), x=np.array([0.0, 1e3, -1e3, 2e3, -3e3]), y=np.zeros(5), crs="local")
+
+
+def test_nearest_come_first_and_ties_go_by_id() -> None:
+    """C and D are both 1 km away; C comes first by its id though D stands before it in the file."""
+    assert [LINE.ids[g] for g in LINE.nearest_first(LINE.distances()[0])] == ["T", "C", "D", "B", "A"]
+
+
+def test_rounding_makes_no_difference_between_equal_distances() -> None:
+    """One part in 10 to the 12 is rounding, one in 10 000 is not; so row by row, and among some gauges only."""
+    rounded = np.array([0.0, 1e3, 1e3 * (1 + 1e-12), 2e3, 3e3])
+    apart = np.array([0.0, 1e3, 1e3 * (1 + 1e-4), 2e3, 3e3])
+    both = np.array([rounded, rounded[::-1]])
+    assert LINE.nearest_first(rounded).tolist() == [0, 2, 1, 3, 4]
+    assert LINE.nearest_first(apart).tolist() == [0, 1, 2, 3, 4]
+    assert LINE.nearest_first(np.array([rounded, apart])).tolist() == [[0, 2, 1, 3, 4], [0, 1, 2, 3, 4]]
+    assert LINE.nearest_first(np.array([1e3, 5.0, 1e3 * (1 - 1e-12)]), np.array([1, 3, 2])).tolist() == [1, 2, 0]
+    assert LINE.nearest_first(both)[1].tolist() == [4, 3, 2, 1, 0]
+
+
+def test_no_gauges_have_no_order() -> None:
+    """An empty network has an empty order."""
+    nobody = GaugeNetwork(ids=(), x=np.empty(0), y=np.empty(0), crs="local")
+    assert nobody.nearest_first(np.empty(0)).shape == (0,)

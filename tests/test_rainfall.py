@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from basinrain.errors import DataError
-from basinrain.rainfall import MEASURED, REPORTING, WITHOUT_DEPTH, RainRecord, Status
+from basinrain.rainfall import MEASURED, REPORTING, WITHOUT_DEPTH, KnownTotal, RainRecord, Status
 
 HOUR = np.timedelta64(3600, "s")
 ENDS = np.datetime64("2031-05-04T00:00:00") + np.arange(1, 4) * HOUR
@@ -105,3 +105,12 @@ def test_storm_totals_have_no_times() -> None:
         ("A",), never, never, np.array([[1.0], [2.0]]), np.zeros((2, 1), np.uint8), step="storm", labels=("May", "June")
     )
     assert totals.labels == ("May", "June")
+
+
+def test_steps_of_totals() -> None:
+    """Hours 1 and 2 of three, what of a longer total is in the record, and none of totals beside it."""
+    spans = [(0, 2), (-3, 1), (2, 9), (-3, 0), (3, 5)]
+    totals = [KnownTotal("A", ENDS[0] + (a - 1) * HOUR, ENDS[0] + (b - 1) * HOUR, 1.0) for a, b in spans]
+    first, stop = record().steps_of(totals)
+    assert list(zip(first.tolist(), stop.tolist(), strict=True)) == [(0, 2), (0, 1), (2, 3), (0, 0), (3, 3)]
+    assert [len(part) for part in record().steps_of([])] == [0, 0]

@@ -115,6 +115,31 @@ def test_ties_go_by_id() -> None:
     np.testing.assert_array_equal(depth, [0.0, 0.0, 10.0])  # A, not Z
 
 
+def test_rounding_does_not_break_a_tie() -> None:
+    """Distances that differ in the twelfth digit are equal, and A comes before Z though it is a hair farther."""
+    ids = ("T", "E", "D", "C", "B", "Z", "A")
+    gauges = network(0, 100, 200, 300, 400, 500, -500 * (1 + 1e-12), ids=ids)
+    rows = [[NAN, 0, 0, 0, 0, 7, 0], [NAN] + [0] * 6, [NAN, 0, 0, 0, 0, 0, 7]]
+    depth, _, _ = spread(gauges, rows, 10.0)
+    np.testing.assert_array_equal(depth, [0.0, 0.0, 10.0])
+
+
+def test_a_daily_gauge_beside_a_recorder() -> None:
+    """A recorder at the gauge's own place, or a hair from it, gives its pattern 1 : 0 : 2, whatever stands near."""
+    for beside in (0.0, 0.004):
+        rows = [[NAN, 1, 9], [NAN, 0, 9], [NAN, 2, 9]]
+        depth, status, notes = spread(network(0, beside, 1000), rows, 45.0)
+        np.testing.assert_allclose(depth, [15.0, 0.0, 30.0], atol=1e-6)
+        assert (status, notes) == (["spread"] * 3, [])
+
+
+def test_a_dry_recorder_at_the_same_place() -> None:
+    """Where the recorder beside the gauge caught nothing, the next one gives the pattern."""
+    depth, _, notes = spread(network(0, 0.0, 1000), [[NAN, 0, 1], [NAN, 0, 0], [NAN, 0, 2]], 45.0)
+    np.testing.assert_allclose(depth, [15.0, 0.0, 30.0], rtol=1e-12)
+    assert notes == []
+
+
 def test_spread_values_are_no_donors() -> None:
     """A gauge whose own values were spread gives no pattern to another."""
     gauges = network(0, 1000, 2000)
@@ -151,6 +176,32 @@ def test_no_totals() -> None:
 def test_shares_without_donors() -> None:
     """No donor leaves no pattern."""
     assert pattern_shares(np.empty((3, 0)), np.empty(0)) is None
+
+
+@pytest.mark.parametrize(
+    ("parts", "of", "mm", "last"),
+    [
+        ([1, 3, 3, 1, 3, 1, 3], 15, 100.3, 6),
+        ([1, 1, 1, 1, 1, 1, 1], 7, 12.7, 6),
+        ([1, 1, 1, 0, 0, 0, 0], 3, 12.7, 2),
+        ([1, 2, 2, 1, 2, 1, 0], 9, 10.1, 4),
+    ],
+)
+def test_what_rounding_leaves_goes_to_the_last_of_the_largest_steps(
+    parts: list[int], of: int, mm: float, last: int
+) -> None:
+    """The products of share and total miss the total by some bits; these go to one step, the rest are the products."""
+    shares = np.array(parts) / of
+    rounded = shares * mm
+    given = share_out(mm, shares)
+    assert rounded.sum() != mm
+    assert given.sum() == mm
+    assert np.flatnonzero(given != rounded).tolist() == [last]
+
+
+def test_shares_that_do_not_sum_to_one_keep_the_total() -> None:
+    """Thirds with four digits leave 0.0001 of the total, which the last of the largest steps takes."""
+    np.testing.assert_allclose(share_out(90.0, np.full(3, 0.3333)), [29.997, 29.997, 30.006], rtol=1e-12)
 
 
 DEPTHS = stn.arrays(

@@ -15,7 +15,7 @@ from basinrain.averaging.inputs import union_is_sum
 from basinrain.basins import UNION, Basins
 from basinrain.errors import JobError, MethodError, Problem
 
-__all__ = ["MOST_CELLS", "SETTLED", "Grid", "lay", "lay_within_limit", "make_grid"]
+__all__ = ["MOST_CELLS", "SETTLED", "Grid", "lay", "lay_within_limit", "make_grid", "median_area", "too_many_cells"]
 
 MOST_CELLS: Final = 2_000_000
 """A grid with more cells is refused."""
@@ -46,8 +46,8 @@ class Grid:
     counted : array of bool, shape (n_basins,)
         Whether the basin has at least 1 % of the median basin's area, so that the choice of a cell size looks at it.
     halving_change : array of float, shape (n_basins,)
-        Half the sum of absolute changes of a basin's weights when the cell is halved, with all gauges present; NaN
-        where it was not measured.
+        Half the sum of absolute changes of a basin's weights when the cell is halved, with all gauges present, or the
+        change of its covered share where that is more; NaN where it was not measured.
 
     Examples
     --------
@@ -133,30 +133,42 @@ a larger cell
                 item="idw cell", found=f"{cell:g}", expected="a length above 0", remedy="correct cell, or leave it out"
             )
         )
-    return lay_within_limit(basins, cell, remedy="give a larger cell")
-
-
-def lay_within_limit(basins: Basins, cell: float, *, remedy: str) -> Grid:
-    """Lay a grid as :func:`make_grid` does; where it has too many cells, say in ``remedy`` what to do about it.
-
-    Raises
-    ------
-    MethodError
-        There would be over 2,000,000 cells.
-    """
-    # The largest basin tells without any geometry when there would be far too many.
-    at_least = math.ceil(float(basins.areas.max()) / cell**2 * (1 - 1e-9))
-    grid = lay(basins, cell) if at_least <= MOST_CELLS else None
-    if grid is None or grid.n_cells > MOST_CELLS:
-        raise MethodError(
-            Problem(
-                item=f"idw grid of {cell:g} m",
-                found=f"at least {at_least:,} cells" if grid is None else f"{grid.n_cells:,} cells",
-                expected=f"at most {MOST_CELLS:,}",
-                remedy=remedy,
-            )
-        )
+    grid = lay_within_limit(basins, cell)
+    if grid is None:
+        raise too_many_cells(basins, cell, remedy="give a larger cell")
     return grid
+
+
+def lay_within_limit(basins: Basins, cell: float) -> Grid | None:
+    """Lay a grid as :func:`make_grid` does; None where there would be over 2,000,000 cells."""
+    if _fewest_cells(basins, cell) > MOST_CELLS:
+        return None
+    grid = lay(basins, cell)
+    return grid if grid.n_cells <= MOST_CELLS else None
+
+
+def too_many_cells(basins: Basins, cell: float, *, remedy: str) -> MethodError:
+    """Return the error that says so of a size for which :func:`lay_within_limit` laid no grid."""
+    fewest = _fewest_cells(basins, cell)
+    return MethodError(
+        Problem(
+            item=f"idw grid of {cell:g} m",
+            found=f"at least {fewest:,} cells" if fewest > MOST_CELLS else f"over {MOST_CELLS:,} cells",
+            expected=f"at most {MOST_CELLS:,}",
+            remedy=remedy,
+        )
+    )
+
+
+def _fewest_cells(basins: Basins, cell: float) -> int:
+    # The largest basin tells without any geometry when there would be far too many.
+    return math.ceil(float(basins.areas.max()) / cell**2 * (1 - 1e-9))
+
+
+def median_area(basins: Basins) -> float:
+    """Return the median of the basins' areas in m², the union left out."""
+    own = basins.areas[:-1] if basins.ids[-1:] == (UNION,) and len(basins) > 1 else basins.areas
+    return float(np.median(own))
 
 
 def lay(basins: Basins, cell: float) -> Grid:
@@ -178,13 +190,12 @@ def lay(basins: Basins, cell: float) -> Grid:
     if added:
         table = sparse.csr_array(sparse.vstack([table, sparse.csr_array(table.sum(axis=0)[None, :])]))
     centres = np.column_stack((west + (cells % n_columns + 0.5) * cell, south + (cells // n_columns + 0.5) * cell))
-    own = basins.areas[:-1] if basins.ids[-1:] == (UNION,) and len(basins) > 1 else basins.areas
     return Grid(
         cell,
         (west, south),
         basins.ids,
         centres,
         table,
-        basins.areas >= _COUNTED * float(np.median(own)),
+        basins.areas >= _COUNTED * median_area(basins),
         halving_change=np.full(len(basins), np.nan),
     )

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, replace
-from typing import Final
+from itertools import count
+from typing import Final, NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -223,10 +224,11 @@ def choose_grid(
 ) -> Grid:
     """Return the grid of a run, its cell size chosen by halving unless it is given.
 
-    The cell chosen is the largest of the series 1, 2, 5 x 10^k, with at least 100 cells in the median basin, for which
-    going to half of it changes the weights and the covered share of every basin of at least 1 % of the median basin's
-    area by at most 0.001, with all gauges of the network present, and for which this holds for the next smaller size
-    too. The change of weights is half the sum of absolute changes: what moves from some gauges to others.
+    A size has settled when going to half of it changes the weights and the covered share of every basin of at least 1 %
+    of the median basin's area by at most 0.001, with all gauges of the network present. The change of weights is half
+    the sum of absolute changes: what moves from some gauges to others. The cell chosen is the largest of the series 1,
+    2, 5 x 10^k with at least 100 cells in the median basin that has settled together with the next smaller size, since
+    one alone may do so by accident; where the next would have over 2,000,000 cells, one alone is enough.
 
     Parameters
     ----------
@@ -256,52 +258,61 @@ def choose_grid(
     surface = _surface(power, max_gauges, radius)
     require_one_plane(network, basins)
     everyone = np.ones(len(network), dtype=bool)
-    known: dict[float, tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]] = {}
 
-    def weights(grid: Grid) -> npt.NDArray[np.float64]:
-        if grid.cell not in known:
-            known[grid.cell] = _basin_weights(network, everyone, grid, surface)
-        return known[grid.cell][0]
+    def weigh(grid: Grid) -> _Weighed:
+        return _Weighed(grid, *_basin_weights(network, everyone, grid, surface))
 
-    def measured(grid: Grid) -> Grid:
-        half = grid.cell / 2
-        halved = known[half][0] if half in known else weights(grids.lay(basins, half))
-        moved = _change(weights(grid), halved)
-        reach = np.abs(known[grid.cell][1] - known[half][1])
-        return replace(grid, halving_change=np.maximum(moved, reach))
-
-    if cell is not None:
-        grid = make_grid(basins, cell)
-        if 4 * grid.n_cells <= grids.MOST_CELLS:
-            grid = measured(grid)
-        weights(grid)
+    if cell is None:
+        chosen = _settled(basins, weigh)
     else:
-        west, south, east, north = basins.bounds
-        settled: Grid | None = None
-        again = False
-        for size in _series(max(east - west, north - south)):
-            median = float(np.median(basins.areas))
-            if median < _FEWEST_CELLS * size**2:
-                continue
-            # Two sizes may agree by accident, so the next one must settle too, as far as there may be so many cells.
-            if settled is not None and float(basins.areas.max()) > grids.MOST_CELLS * size**2:
-                break
-            grid = measured(grids.lay_within_limit(basins, size, remedy="choose the size yourself: give cell"))
-            if again and grid.settled:
-                break
-            again = grid.settled
-            settled = grid if again else settled
-        grid = settled or grid
+        chosen = weigh(make_grid(basins, cell))
+        if 4 * chosen.grid.n_cells <= grids.MOST_CELLS:
+            chosen = chosen.measured(weigh(grids.lay(basins, cell / 2)))
     if radius is not None and len(network):
-        _coverage(basins, known[grid.cell][1], radius, allowed=allow_uncovered)
-    return grid
+        _coverage(basins, chosen.covered, radius, allowed=allow_uncovered)
+    return chosen.grid
 
 
-def _series(longest: float) -> list[float]:
-    """Return the sizes 5, 2, 1 x 10^k from ``longest`` downward, as many as any grid could need."""
-    top = math.floor(math.log10(longest))
-    sizes = [float(f"{m}e{k}") for k in range(top, top - 9, -1) for m in (5, 2, 1)]
-    return [size for size in sizes if size <= longest]
+class _Weighed(NamedTuple):
+    """A grid with the weights (n_basins, n_gauges) and covered shares (n_basins,) on it."""
+
+    grid: Grid
+    weights: npt.NDArray[np.float64]
+    covered: npt.NDArray[np.float64]
+
+    def measured(self, half: _Weighed) -> _Weighed:
+        """Return the same, its grid with what going to ``half`` of the cell changes."""
+        change = np.maximum(_change(self.weights, half.weights), np.abs(half.covered - self.covered))
+        return self._replace(grid=replace(self.grid, halving_change=change))
+
+
+def _settled(basins: Basins, weigh: Callable[[Grid], _Weighed]) -> _Weighed:
+    """Return the largest size that has settled together with the next; see :func:`choose_grid`."""
+    before: _Weighed | None = None
+    half: _Weighed | None = None
+    for size in _sizes(basins):
+        if half is not None and half.grid.cell == size and half.grid.n_cells <= grids.MOST_CELLS:
+            found = half
+        else:
+            grid = grids.lay_within_limit(basins, size)
+            if grid is None:
+                break
+            found = weigh(grid)
+        half = weigh(grids.lay(basins, size / 2))
+        found = found.measured(half)
+        if before is not None and found.grid.settled:
+            return before
+        before = found if found.grid.settled else None
+    if before is None:
+        raise grids.too_many_cells(basins, size, remedy="choose the size yourself: give cell")
+    return before
+
+
+def _sizes(basins: Basins) -> Iterator[float]:
+    """Yield the sizes 5, 2, 1 x 10^k downward from the largest that the median basin holds often enough."""
+    largest = math.sqrt(grids.median_area(basins) / _FEWEST_CELLS)
+    for k in count(math.floor(math.log10(largest)), -1):
+        yield from (size for size in (float(f"{m}e{k}") for m in (5, 2, 1)) if size <= largest)
 
 
 def _change(weights: npt.NDArray[np.float64], halved: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
@@ -330,7 +341,8 @@ def _basin_weights(
             part += held @ lent
             covered += held @ (lent.sum(axis=1) > 0.5).astype(float)
         weights[:, at] = part / np.where(covered > 0, covered, np.nan)[:, None]
-        covered /= np.asarray(grid.shares.sum(axis=1)).ravel()
+        # Rounding may leave a whole basin a hair above its own area.
+        covered = np.minimum(covered / np.asarray(grid.shares.sum(axis=1)).ravel(), 1.0)
     weights[covered == 0] = np.nan
     return weights, covered
 

@@ -14,18 +14,20 @@ __all__ = ["main"]
 
 
 def _clear_errors(command: Callable[..., None]) -> Callable[..., None]:
-    """Print an expected failure as one line a problem on stderr, and leave with 1."""
+    """Print an expected failure as one line a problem; leave with 1, for wrong usage with 2, for Ctrl-C with 130."""
 
     @wraps(command)
     def run(*args: Any, **kwargs: Any) -> None:  # noqa: ANN401 - click passes what the options say
-        from basinrain.errors import BasinRainError
+        from basinrain.errors import BasinRainError, SettingError
 
         try:
             command(*args, **kwargs)
         except BasinRainError as error:
-            for problem in error.problems:
-                click.echo(str(problem), err=True)
-            sys.exit(1)
+            click.echo(str(error), err=True)
+            sys.exit(2 if isinstance(error, SettingError) else 1)
+        except KeyboardInterrupt:
+            click.echo("Stopped; nothing was written.", err=True)
+            sys.exit(130)
 
     return run
 

@@ -10,17 +10,21 @@ import numpy as np
 from rich.console import Console
 from rich.table import Table
 
+from basinrain.basin_depths import spread_across_methods
 from basinrain.job import run_storm
 from basinrain.jobfile import read_job
+from basinrain.notes import Note
 from basinrain.report.words import depth_decimals, number_text
 from basinrain.results import StormRun
-from basinrain.storms import spread_across_methods
 from basinrain.tables import share_infilled
 from basinrain.units import area_factor, depth_factor
 from basinrain.writing import check_folder, record_text, write_run
 from basinrain.writing.folder import RECORD
 
 __all__ = ["storm_command"]
+
+_SHOWN = 3
+"""Warnings of one kind that are printed; a page of them would not be read."""
 
 
 def storm_command(
@@ -69,8 +73,14 @@ def _show(run: StormRun, folder: Path) -> None:
             )
         console.print(table)
         console.print()
+    by_code: dict[str, list[Note]] = {}
     for note in run.warnings:
-        console.print(f"Warning: {note}", soft_wrap=True)
+        by_code.setdefault(note.code, []).append(note)
+    for notes in by_code.values():
+        for note in notes[:_SHOWN]:
+            console.print(f"Warning: {note}", soft_wrap=True)
+        if len(notes) > _SHOWN:
+            console.print(f"Warning: {len(notes) - _SHOWN} more of this kind stand in report.html", soft_wrap=True)
     console.print(
         "For a qualified engineer's judgement; local codes and licensed practice govern design.", soft_wrap=True
     )

@@ -63,9 +63,10 @@ def complete(
 
     - at least half of its steps have the gauge's own value: the missing steps are infilled step by step;
     - fewer: the span's total is the weighted sum of the totals of donors that have their own values at all of its
-      steps. What the gauge did observe is kept, and the rest of the total goes to the missing steps in the pattern of
-      the nearest recording gauge that is complete over the span and wet in those steps; evenly, with a note, where
-      there is none;
+      steps. A gauge is no donor where part of a total in ``record.totals`` fell outside the span (a daily reading that
+      began before the storm), since what fell inside is known from the pattern of others alone. What the gauge did
+      observe is kept, and the rest of the total goes to the missing steps in the pattern of the nearest recording gauge
+      that is complete over the span and wet in those steps; evenly, with a note, where there is none;
     - but where that total is below what was observed, only the missing steps are infilled, step by step, with a note.
 
     A total without times is a span of its own. Normals are those of the month that holds the middle of the step, day or
@@ -96,14 +97,14 @@ def complete(
         require_normals(network, taking_part, [month or None for month in _months(window)])
     depth, status = record.depth.copy(), record.status.copy()
     estimates: list[Estimate] = []
-    notes = over_peak(record, gaps)
+    notes: list[Note] = []
     for g in np.flatnonzero(gaps.any(axis=0)).tolist():
         filling = GaugeFilling(window, g, long[:, g], depth[:, g])
         filling.infill()
         status[gaps[:, g] & ~np.isnan(depth[:, g]), g] = Status.INFILLED
         estimates += sorted(filling.estimates, key=lambda estimate: estimate.first)
         notes += filling.notes()
-    notes += _annual_normals(window, estimates)
+    notes = [*over_peak(record, gaps, depth), *notes, *_annual_normals(window, estimates)]
     return Completed(replace(record, depth=depth, status=status), tuple(estimates), tuple(notes))
 
 

@@ -10,7 +10,7 @@ import numpy.typing as npt
 from basinrain import ground
 from basinrain.gauges import GaugeNetwork
 
-__all__ = ["ALL", "Nearest", "choose_donors", "distances_from", "nearness"]
+__all__ = ["ALL", "Nearest", "choose_donors", "distances_from"]
 
 ALL: Final = "all"
 """Written for ``nearest`` when every reporting gauge is to donate."""
@@ -19,34 +19,6 @@ Nearest = int | Literal["all"]
 """How many of the nearest reporting gauges donate."""
 
 _TIE: Final = 1e-9
-
-
-def nearness(network: GaugeNetwork, distances: npt.NDArray[np.float64]) -> npt.NDArray[np.int64]:
-    """Return the positions of all gauges, the nearest first.
-
-    Parameters
-    ----------
-    network
-        The gauges.
-    distances : array of float, shape (n_gauges,)
-        m, from one place to every gauge. Distances that differ by less than one part in 10⁹ are ties, which go by gauge
-        id, so that neither the plane's origin nor the order of the file decides.
-
-    Returns
-    -------
-    array of int, shape (n_gauges,)
-
-    Examples
-    --------
-    >>> network = GaugeNetwork(ids=("B", "C", "A"), x=[0.0, 0.0, 0.0], y=[0.0, 0.0, 0.0], crs="local")
-    >>> nearness(network, np.array([5.0, 3.0, 5.0 + 1e-10]))
-    array([1, 2, 0])
-    """
-    order = np.argsort(distances, kind="stable")
-    ranked = distances[order]
-    place = np.empty(len(order), dtype=np.int64)
-    place[order] = np.concatenate(([0], np.cumsum(ranked[1:] > ranked[:-1] * (1 + _TIE)))) if len(order) else []
-    return np.lexsort((network.id_rank, place))
 
 
 def choose_donors(
@@ -96,7 +68,7 @@ def choose_donors(
     eligible[target] = False
     if radius is not None:
         eligible &= distances <= radius * (1 + _TIE)
-    order = nearness(network, distances)
+    order = network.nearest_first(distances)
     order = order[eligible[order]]
     chosen = np.asarray(reporting, dtype=bool)[..., order]
     if nearest != ALL:

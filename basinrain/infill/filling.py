@@ -4,21 +4,17 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from functools import cached_property
-from typing import Final
 
 import numpy as np
 
 from basinrain.infill.completed import Estimate
-from basinrain.infill.donors import nearness
 from basinrain.infill.gaps import steps_in_words
-from basinrain.infill.window import Bools, Floats, Ints, Spans, Window
+from basinrain.infill.window import EXACT, Bools, Floats, Ints, Spans, Window
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 from basinrain.spreading import pattern_shares, share_out
 
 __all__ = ["GaugeFilling"]
-
-_EXACT: Final = 1e-9
 
 
 class GaugeFilling:
@@ -94,14 +90,18 @@ class GaugeFilling:
         if not len(chosen):
             return np.empty(0, dtype=np.int64)
         window = self._window
-        row_of, rows, donors = self._weigh(spans.reporting[chosen], spans.months[chosen])
+        row_of, rows, donors = self._weigh(spans.donating[chosen], spans.months[chosen])
         totals = _weighted_sums(row_of, rows, spans.totals, chosen)
         known = (rows != 0).any(axis=1)[row_of]
         if not known.all():
-            steps = np.concatenate([self._missing(spans, k) for k in chosen[~known].tolist()])
-            self._leave(f"have values of their own at every step of the {window.scale}", steps)
+            what = f"have values of their own at every step of the {window.scale}"
+            beyond = ", totals that reach beyond it left out"
+            cut = (spans.complete & spans.cut)[chosen].any(axis=1)
+            for words, unknown in ((what, ~known & ~cut), (what + beyond, ~known & cut)):
+                if unknown.any():
+                    self._leave(words, np.concatenate([self._missing(spans, k) for k in chosen[unknown].tolist()]))
         observed = spans.totals[chosen, self._g]
-        low = known & (totals < observed - _EXACT * np.maximum(observed, 1))
+        low = known & (totals < observed - EXACT * np.maximum(observed, 1))
         raised = [self._missing(spans, k) for k in chosen[low].tolist()]
         self._raised += raised
         method, gauge, scale = window.options.method, self._gauge, window.scale
@@ -142,7 +142,7 @@ class GaugeFilling:
     @cached_property
     def _near_rank(self) -> Ints:
         """The rank of every gauge by nearness."""
-        order = nearness(self._window.network, self._window.distances[self._g])
+        order = self._window.network.nearest_first(self._window.distances[self._g])
         rank = np.empty(len(order), dtype=np.int64)
         rank[order] = np.arange(len(order))
         return rank

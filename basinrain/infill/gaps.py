@@ -64,8 +64,12 @@ def longer_than(record: RainRecord, gaps: npt.NDArray[np.bool_], days: float) ->
     return np.asarray(level.cumsum(axis=0)[:-1] > 0)
 
 
-def over_peak(record: RainRecord, gaps: npt.NDArray[np.bool_]) -> list[Note]:
+def over_peak(record: RainRecord, gaps: npt.NDArray[np.bool_], completed: npt.NDArray[np.float64]) -> list[Note]:
     """Return a warning for every gauge without a value at the wettest step of the window, or at a step next to it.
+
+    It says whether the gap was infilled there: ``completed`` (n_steps, n_gauges) are the depths after infill in mm, NaN
+    where there is none.
+
 
     The wettest step is the one at which the mean of the reporting gauges is greatest; all of them where several tie.
     Windows of one step, dry ones and totals without times have none.
@@ -76,9 +80,11 @@ def over_peak(record: RainRecord, gaps: npt.NDArray[np.bool_]) -> list[Note]:
     >>> record = RainRecord.from_depths(
     ...     ("A", "B"), ends - 3600, ends, [[1.0, 0.0], [8.0, np.nan], [2.0, 1.0]], step="1h"
     ... )
-    >>> print(over_peak(record, gap_mask(record))[0])
+    >>> print(over_peak(record, gap_mask(record), np.array([[1.0, 0.0], [8.0, 4.0], [2.0, 1.0]]))[0])
     Gauge B has no value of its own at the wettest step of the window (ending 2031-05-04T02:00) or \
 next to it; what was infilled there may miss the peak.
+    >>> print(over_peak(record, gap_mask(record), record.depth)[0].text.split("; ")[1])
+    it stays missing there.
     """
     reporting = record.reporting
     count = reporting.sum(axis=1)
@@ -93,16 +99,24 @@ next to it; what was infilled there may miss the peak.
     near[1:] |= wettest[:-1]
     near[:-1] |= wettest[1:]
     peak = record.ends[int(np.flatnonzero(wettest)[0])]
+    missing = gaps[near]
+    left = missing & np.isnan(completed[near])
     return [
         Note(
             code="gap-over-peak",
             text=f"Gauge {record.gauges[g]} has no value of its own at the wettest step of the window "
-            f"(ending {_minute(peak)}) or next to it; "
-            "what was infilled there may miss the peak.",
+            f"(ending {_minute(peak)}) or next to it; {_outcome(missing[:, g], left[:, g])}.",
             gauge=record.gauges[g],
         )
-        for g in np.flatnonzero(gaps[near].any(axis=0))
+        for g in np.flatnonzero(missing.any(axis=0))
     ]
+
+
+def _outcome(missing: npt.NDArray[np.bool_], left: npt.NDArray[np.bool_]) -> str:
+    if (missing == left).all():
+        return "it stays missing there"
+    infilled = "what was infilled there may miss the peak"
+    return f"{infilled}, and in part it stays missing" if left.any() else infilled
 
 
 def steps_in_words(record: RainRecord, steps: npt.NDArray[np.int64]) -> str:

@@ -73,7 +73,7 @@ class InfillOptions:
         try:
             infill_method(self.method)
         except JobError as error:
-            problems.extend(error.problems)
+            problems.extend(error)
         scale: object = self.scale
         if scale is not None and scale not in SCALES:
             advice = nearest_name(str(scale), SCALES)

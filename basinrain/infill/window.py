@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from functools import cached_property
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
@@ -13,7 +14,10 @@ from basinrain.infill.options import InfillOptions
 from basinrain.infill.spans import month_of, span_starts
 from basinrain.rainfall import RainRecord, Status
 
-__all__ = ["Bools", "Floats", "Ints", "Spans", "Window"]
+__all__ = ["EXACT", "Bools", "Floats", "Ints", "Spans", "Window"]
+
+EXACT: Final = 1e-9
+"""Depths this close to each other, relatively and in mm, are equal."""
 
 Ints = npt.NDArray[np.int64]
 Floats = npt.NDArray[np.float64]
@@ -42,7 +46,7 @@ class Window:
     >>> window.own
     array([[1. , 0. ],
            [2. , 0.5]])
-    >>> window.spans_of(1).totals, window.spans_of(1).reporting
+    >>> window.spans_of(1).totals, window.spans_of(1).donating
     (array([[3. , 0.5]]), array([[ True, False]]))
     """
 
@@ -100,10 +104,35 @@ class Window:
                 stop=stop,
                 months=month_of(self.record.starts[first], self.record.ends[stop - 1]),
                 totals=np.add.reduceat(self.own, first, axis=0),
-                reporting=np.logical_and.reduceat(self.reporting, first, axis=0),
+                complete=np.logical_and.reduceat(self.reporting, first, axis=0),
+                cut=self._cut(first, stop),
                 measured=np.logical_and.reduceat(self.measured, first, axis=0),
             )
         return self._spans[key]
+
+    def _cut(self, first: Ints, stop: Ints) -> Bools:
+        """Return where a span holds part of a known total's interval, but not all of its depth."""
+        cut = np.zeros((len(first), len(self.network)), dtype=bool)
+        totals = self.record.totals
+        begin, end = self.record.steps_of(totals)
+        inside = np.flatnonzero(begin < end)
+        begin, end = begin[inside], end[inside]
+        column = {gauge: g for g, gauge in enumerate(self.record.gauges)}
+        gauge = np.array([column[totals[k].gauge] for k in inside], dtype=np.int64)
+        depth = np.array([totals[k].depth for k in inside])
+        # Every total with every span that it reaches.
+        first_span = np.searchsorted(stop, begin, "right")
+        reached = np.searchsorted(first, end) - first_span
+        total = np.repeat(np.arange(len(inside)), reached)
+        span = np.arange(len(total)) - np.repeat(np.cumsum(reached) - reached - first_span, reached)
+        through = np.concatenate([np.zeros((1, len(self.network))), self.own.cumsum(axis=0)])
+        held = (
+            through[np.minimum(end[total], stop[span]), gauge[total]]
+            - through[np.maximum(begin[total], first[span]), gauge[total]]
+        )
+        lost = np.abs(held - depth[total]) > EXACT * np.maximum(depth[total], 1)
+        cut[span[lost], gauge[total[lost]]] = True
+        return cut
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -118,13 +147,22 @@ class Spans:
         The month that holds the middle, 0 without times.
     totals : array of float, shape (n_spans, n_gauges)
         mm of the gauges' own values.
-    reporting, measured : array of bool, shape (n_spans, n_gauges)
+    complete, measured : array of bool, shape (n_spans, n_gauges)
         Whether the gauge has its own, or measured, values at every step.
+    cut : array of bool, shape (n_spans, n_gauges)
+        Whether the span holds part of an interval over which the gauge knows only its total, but not all of that total:
+        what fell inside is then known from other gauges' pattern alone.
     """
 
     first: Ints
     stop: Ints
     months: Ints
     totals: Floats
-    reporting: Bools
+    complete: Bools
     measured: Bools
+    cut: Bools
+
+    @property
+    def donating(self) -> Bools:
+        """Whether the gauge knows its total over the span, shape (n_spans, n_gauges)."""
+        return self.complete & ~self.cut

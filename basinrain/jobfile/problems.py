@@ -62,6 +62,10 @@ def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
         )
     if kind == "too_short" and loc == ["rainfall"]:
         return Problem(item="[[rainfall]]", found="no table", expected="at least one", remedy="add it", file=file)
+    if kind == "too_short":
+        return Problem(
+            item=item, found="an empty list", expected="at least one", remedy="name one", file=file, line=line
+        )
     if kind in {"file_or_files", "no_interval"}:
         found = "both or neither" if kind == "file_or_files" else "no interval"
     expected, remedy = _MESSAGES.get(kind, (details["msg"].lower(), "correct the value"))
@@ -75,7 +79,7 @@ def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
 
 def _internal(part: str) -> bool:
     """Pydantic names the branch of a union in the location; the user never wrote it."""
-    return bool(re.match(r"^(str|float|int|tuple|function-|literal\[|list\[|BufferTable|constrained)", part))
+    return bool(re.match(r"^((str|float|int|bool|BufferTable)$|function-|literal\[|list\[|tuple\[|constrained-)", part))
 
 
 def _is_near(name: str, known: Sequence[str]) -> bool:

@@ -10,7 +10,7 @@ from typing import Any
 
 from pydantic import ValidationError
 
-from basinrain.errors import JobError, Problem, Problems, ReadError
+from basinrain.errors import JobError, Problem, ReadError, SettingError
 from basinrain.jobfile.problems import problem_of
 from basinrain.jobfile.tables import Job
 
@@ -35,6 +35,8 @@ def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
         The file is missing, a folder, not text, or not TOML.
     JobError
         A key or a value is not known, or one is missing; all of them together, with the line where it stands.
+    SettingError
+        One of ``settings`` cannot be placed.
     """
     place = Path(path)
     try:
@@ -114,11 +116,24 @@ area_unit, output, plane; did you mean 'depth_unit'?
     try:
         return Job.model_validate({**tables, "folder": Path(folder)})
     except ValidationError as error:
-        problems = Problems(file=file)
-        for details in error.errors():
-            problems.extend([problem_of(details, file, text)])
-        problems.raise_as(JobError)
-        raise
+        # What a setting brought in does not stand in the file.
+        changed = [_setting_words(setting) for setting in settings]
+        raise JobError(
+            [
+                problem_of(details, "", "") if _is_set(details["loc"], changed) else problem_of(details, file, text)
+                for details in error.errors()
+            ]
+        ) from None
+
+
+def _setting_words(setting: str) -> list[str]:
+    return [word.strip() for word in setting.partition("=")[0].split(".")]
+
+
+def _is_set(loc: Sequence[str | int], changed: Sequence[Sequence[str]]) -> bool:
+    where = [part for part in loc if isinstance(part, str)]
+    keys = [[word for word in words if not word.isdigit()] for words in changed]
+    return any(where[: len(key)] == key for key in keys)
 
 
 def _plain(value: Any) -> Any:  # noqa: ANN401 - TOML values
@@ -129,10 +144,10 @@ def _plain(value: Any) -> Any:  # noqa: ANN401 - TOML values
 
 def _apply(tables: dict[str, Any], setting: str) -> None:
     """Put one ``key=value`` of the command line into the tables."""
-    key, equals, text = setting.partition("=")
-    words = [word.strip() for word in key.split(".")]
+    _, equals, text = setting.partition("=")
+    words = _setting_words(setting)
     if not equals or len(words) < 2 or not all(words):
-        raise JobError(
+        raise SettingError(
             Problem(
                 item="--set",
                 found=f"'{setting}'",
@@ -150,7 +165,7 @@ def _apply(tables: dict[str, Any], setting: str) -> None:
         if isinstance(place, list) and len(place) == 1 and not words[depth + 1].isdigit():
             place = place[0]
     if not isinstance(place, dict):
-        raise JobError(
+        raise SettingError(
             Problem(
                 item=f"--set {setting}",
                 found="a table that is there more than once, or a plain value",
@@ -165,14 +180,14 @@ def _enter(place: Any, word: str, setting: str, *, repeats: bool) -> Any:  # noq
     if isinstance(place, list) and repeats:
         if word.isdigit() and 1 <= int(word) <= len(place):
             return place[int(word) - 1]
-        raise JobError(
+        raise SettingError(
             Problem(
                 item=f"--set {setting}",
                 found=f"'{word}'",
-                expected=f"the number of a table, 1 to {len(place)}",
-                remedy="correct the number",
+                expected=f"the number of a table that the job has, 1 to {len(place)}",
+                remedy="correct the number; a table is added in the file",
             )
         )
     if isinstance(place, dict):
         return place.setdefault(word, {})
-    raise JobError(Problem(item=f"--set {setting}", found=f"'{word}' inside a plain value", expected="a table"))
+    raise SettingError(Problem(item=f"--set {setting}", found=f"'{word}' inside a plain value", expected="a table"))

@@ -88,6 +88,7 @@ DepthUnit = Annotated[str, _one_of(DEPTH_UNITS)]
 LengthUnit = Annotated[str, _one_of(LENGTH_UNITS)]
 Moment = Annotated[str, BeforeValidator(_moment), AfterValidator(_iso)]
 NameList = Annotated[tuple[str, ...], BeforeValidator(_names)]
+AveragingName = Annotated[str, _one_of(averaging.METHODS)]
 Positive = Annotated[float, Field(gt=0)]
 Count = Annotated[int, Field(ge=1)]
 
@@ -230,7 +231,9 @@ class ArithmeticTable(_Table):
 class AveragingTable(_Table):
     """``[averaging]``: the methods that are run and compared."""
 
-    methods: Annotated[tuple[Annotated[str, _one_of(averaging.METHODS)], ...], BeforeValidator(_names)] = (
+    methods: Annotated[
+        tuple[Annotated[str, _one_of(averaging.METHODS)], ...], BeforeValidator(_names), Field(min_length=1)
+    ] = (
         "arithmetic",
         "thiessen",
         "idw",

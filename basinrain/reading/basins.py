@@ -15,7 +15,8 @@ from basinrain import ground
 from basinrain.basins import UNION, Basins
 from basinrain.errors import JobError, Problem, Problems, ReadError, nearest_name
 from basinrain.notes import Note
-from basinrain.reading.delimited import DelimitedTable, find_column, numbers
+from basinrain.reading.columns import find_column, numbers
+from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.vector import VectorTable, read_vector, settled_crs
 from basinrain.units import area_factor, length_factor
 

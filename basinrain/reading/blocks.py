@@ -88,4 +88,4 @@ def problems_of(file: str, problems: Problems) -> Iterator[Problems]:
         yield here
         here.raise_as(ReadError)
     except ReadError as error:
-        problems.extend(error.problems)
+        problems.extend(error)

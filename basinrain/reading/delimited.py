@@ -10,7 +10,7 @@ import csv
 import io
 import re
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
@@ -19,12 +19,12 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
-from basinrain.errors import Problem, Problems, ReadError, nearest_name
+from basinrain.errors import Problem, Problems, ReadError
+from basinrain.reading.files import read_bytes
 
-__all__ = ["DelimitedTable", "find_column", "numbers", "read_bytes", "read_delimited"]
+__all__ = ["DelimitedTable", "read_delimited"]
 
 _SEPARATORS: Final = ("\t", ";", ",")
-_NUMBER: Final = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 
 
 @dataclass(frozen=True, eq=False)
@@ -72,7 +72,8 @@ def read_delimited(path: Path) -> DelimitedTable:
     ------
     ReadError
         The file is missing, a folder, unreadable, empty, binary, not UTF-8 or only a header; columns are unnamed or
-        named twice; rows have more cells than the header (all such rows together).
+        named twice; rows have more cells than the header, or fewer (all such rows together). A row of empty cells is
+        passed over, however many it has; so are empty cells behind the header's last name.
 
     Examples
     --------
@@ -96,7 +97,7 @@ def read_delimited(path: Path) -> DelimitedTable:
     if '"' in text and any(line.count('"') % 2 for line in lines):
         header, cells, numbers_of_lines = _records(text, separator, file)
     else:
-        header = next(csv.reader([lines[kept[0]]], delimiter=separator))
+        header = next(csv.reader([lines[kept[0]]], delimiter=separator, skipinitialspace=True))
         cells = [lines[number] for number in kept[1:]]
         numbers_of_lines = np.asarray(kept[1:], dtype=np.int64) + 1
     columns = [name.strip() for name in header]
@@ -125,150 +126,6 @@ def read_delimited(path: Path) -> DelimitedTable:
         lines=numbers_of_lines,
         decimal=_decimal(text, separator),
     )
-
-
-def read_bytes(path: Path, *, size: int = -1, expected: str = "a header and rows") -> bytes:
-    """Return a file's content.
-
-    Parameters
-    ----------
-    path
-    size
-        Return no more than so many bytes from its start; -1 for all.
-    expected
-        What a file with nothing in it should hold.
-
-    Raises
-    ------
-    ReadError
-        The file is missing, a folder, unreadable or empty.
-
-    Examples
-    --------
-    >>> read_bytes(Path("no_such_file.csv"))
-    Traceback (most recent call last):
-        ...
-    basinrain.errors.ReadError: no_such_file.csv: the file: found nothing of that name; expected a file; correct the \
-path
-    """
-    file = str(path)
-    try:
-        with path.open("rb") as stream:
-            content = stream.read(size)
-    except FileNotFoundError:
-        problem = Problem(
-            item="the file", found="nothing of that name", expected="a file", remedy="correct the path", file=file
-        )
-    except OSError as error:
-        if path.is_dir():
-            problem = Problem(item="the file", found="a folder", expected="a file", remedy="name a file", file=file)
-        else:
-            problem = Problem(
-                item="the file",
-                found=f"that it cannot be read ({error.strerror})",
-                remedy="allow reading it, or copy it to where it can be read",
-                file=file,
-            )
-    else:
-        if content:
-            return content
-        problem = Problem(item="the file", found="nothing in it", expected=expected, file=file)
-    raise ReadError(problem)
-
-
-def numbers(table: DelimitedTable, column: str) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.bool_]]:
-    """Return a column's numbers, and which cells are not numbers.
-
-    Parameters
-    ----------
-    table
-    column
-        Name of a column of ``table``.
-
-    Returns
-    -------
-    values : array of float, shape (n_rows,)
-        NaN where the cell is blank or no number.
-    bad : array of bool, shape (n_rows,)
-        True where a cell has text that is not a finite decimal number: words, ``"nan"``, ``"inf"``, a thousands mark. A
-        blank cell is not bad.
-
-    Examples
-    --------
-    >>> frame = pd.DataFrame({"depth": ["1.5", "", "1e2", "nan", "1,5"]})
-    >>> table = DelimitedTable("depths.csv", ("depth",), frame, np.arange(2, 7), ".")
-    >>> numbers(table, "depth")
-    (array([  1.5,   nan, 100. ,   nan,   nan]), array([False, False, False,  True,  True]))
-    """
-    # Depths repeat: every different text is read once.
-    codes, texts = pd.factorize(table.frame[column])
-    values = np.full(len(texts), np.nan)
-    bad = np.zeros(len(texts), dtype=bool)
-    for place, text in enumerate(texts):
-        if not text:
-            continue
-        number = text
-        if table.decimal == ",":
-            number = "?" if "." in text else text.replace(",", ".")
-        if _NUMBER.fullmatch(number) and np.isfinite(value := float(number)):
-            values[place] = value
-        else:
-            bad[place] = True
-    return values[codes], bad[codes]
-
-
-def find_column(
-    columns: Sequence[str], trade_names: Sequence[str], *, mapped: str | None, key: str, problems: Problems
-) -> str | None:
-    """Return the column that holds a quantity.
-
-    Parameters
-    ----------
-    columns
-        Names of the file's columns.
-    trade_names
-        Names under which the quantity is known, the first found wins; capitals do not matter, and a space, a hyphen and
-        a full stop count as an underscore.
-    mapped
-        The column that the user named; it is used or it is a problem, whatever the trade names say.
-    key
-        The quantity's name in the job's ``columns``, for the problem.
-    problems
-        Takes the problem of a mapped column that is not there, with the nearest name.
-
-    Returns
-    -------
-    str or None
-        The column's name in the file; None where there is none.
-
-    Examples
-    --------
-    >>> problems = Problems(file="gauges.csv")
-    >>> find_column(["Station ID", "Lon"], ["id", "station_id"], mapped=None, key="id", problems=problems)
-    'Station ID'
-    >>> find_column(["Station ID", "Lon"], ["lat"], mapped="Lo", key="lon", problems=problems)
-    >>> problems.raise_as(ReadError)
-    Traceback (most recent call last):
-        ...
-    basinrain.errors.ReadError: gauges.csv: columns.lon: found no column 'Lo'; expected a column of the file; did you \
-mean 'Lon'?
-    """
-    if mapped is not None:
-        for column in columns:
-            if column == mapped:
-                return column
-        for column in columns:
-            if column.lower() == mapped.strip().lower():
-                return column
-        problems.add(
-            item=f"columns.{key}",
-            found=f"no column '{mapped}'",
-            expected="a column of the file",
-            remedy=nearest_name(mapped, columns),
-        )
-        return None
-    plain = {re.sub(r"[\s.\-]+", "_", column.strip().lower()): column for column in reversed(columns)}
-    return next((plain[name] for name in trade_names if name in plain), None)
 
 
 def _text(path: Path, file: str) -> str:
@@ -317,7 +174,7 @@ def _has_spaces_at_cell_ends(text: str, separator: str) -> bool:
 
 def _records(text: str, separator: str, file: str) -> tuple[list[str], list[list[str]], npt.NDArray[np.int64]]:
     """Cells of a text whose quoted cells may run over line ends."""
-    reader = csv.reader(io.StringIO(text), delimiter=separator, strict=True)
+    reader = csv.reader(io.StringIO(text), delimiter=separator, skipinitialspace=True, strict=True)
     records, starts = [], []
     start = 1
     try:
@@ -347,29 +204,20 @@ def _frame(
     separator: str,
     problems: Problems,
 ) -> pd.DataFrame:
-    """Cells of the rows, n_columns across; rows with more than that are problems."""
+    """Cells of the rows, n_columns across; rows with more cells or fewer are problems."""
     cut: list[str | list[str]] = list(rows)
     whole_lines = bool(rows) and isinstance(rows[0], str)
-    for place, row in enumerate(cut):
-        if isinstance(row, str):
-            if row.count(separator) < n_columns:
-                continue
-            cells = next(csv.reader([row], delimiter=separator))
-        else:
-            cells = row
-        if len(cells) <= n_columns:
-            continue
-        if any(cell.strip() for cell in cells[n_columns:]):
+    for place, cells in _uneven(rows, n_columns, separator):
+        # Cells after the last named column, and those of a row that has none filled, are a spreadsheet's leavings.
+        if any(cell.strip() for cell in (cells[n_columns:] if len(cells) > n_columns else cells)):
             problems.add(
                 item="a row",
                 found=f"{len(cells)} cells",
-                expected=f"at most {n_columns}, as the header has",
-                remedy="separate cells by semicolons where the decimal sign is a comma, or quote cells with a comma"
-                if separator == ","
-                else "",
+                expected=f"{n_columns}, as the header has",
+                remedy=_uneven_remedy(separator, more=len(cells) > n_columns),
                 line=int(lines[place]),
             )
-        cut[place] = _joined(cells[:n_columns], separator) if isinstance(row, str) else cells[:n_columns]
+        cut[place] = _joined(cells[:n_columns], separator) if whole_lines else cells[:n_columns]
     if not whole_lines:
         padded = [[*row, *[""] * (n_columns - len(row))] for row in cut]
         return pd.DataFrame(padded, columns=range(n_columns), dtype=str)
@@ -386,6 +234,30 @@ def _frame(
         engine="c",
         low_memory=False,
     )
+
+
+def _uneven(
+    rows: Sequence[str] | Sequence[list[str]], n_columns: int, separator: str
+) -> Iterator[tuple[int, list[str]]]:
+    """Yield place and cells of the rows that have not n_columns cells."""
+    for place, row in enumerate(rows):
+        if isinstance(row, str):
+            # Between quotation marks a separator separates nothing.
+            if row.count(separator) == n_columns - 1 and '"' not in row:
+                continue
+            cells = next(csv.reader([row], delimiter=separator, skipinitialspace=True))
+        else:
+            cells = row
+        if len(cells) != n_columns:
+            yield place, cells
+
+
+def _uneven_remedy(separator: str, *, more: bool) -> str:
+    if not more:
+        return "give every cell, an empty one where there is no value"
+    if separator == ",":
+        return "separate cells by semicolons where the decimal sign is a comma, or quote cells with a comma"
+    return ""
 
 
 def _joined(cells: Sequence[str], separator: str) -> str:

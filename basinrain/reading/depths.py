@@ -16,7 +16,8 @@ import pandas as pd
 
 from basinrain.errors import JobError, Problems, nearest_name
 from basinrain.rainfall import Status
-from basinrain.reading.delimited import DelimitedTable, numbers
+from basinrain.reading.columns import numbers
+from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.intervals import DAY, Interval
 from basinrain.units import depth_factor
 
@@ -129,7 +130,7 @@ def depth_rules(
     try:
         factor = depth_factor(unit)
     except JobError as error:
-        problems.extend(error.problems)
+        problems.extend(error)
     declared: list[tuple[str, Status]] = [(mark, Status.TRACE) for mark in trace]
     if accumulated is not None:
         declared.append((accumulated, Status.ACCUMULATED))

@@ -16,7 +16,8 @@ import shapely
 from basinrain import ground
 from basinrain.errors import JobError, Problems, ReadError, nearest_name
 from basinrain.gauges import GaugeNetwork
-from basinrain.reading.delimited import DelimitedTable, find_column, numbers, read_delimited
+from basinrain.reading.columns import find_column, numbers
+from basinrain.reading.delimited import DelimitedTable, read_delimited
 from basinrain.reading.vector import VectorTable, add_no_crs, read_vector, settled_crs
 from basinrain.units import depth_factor, length_factor
 

@@ -12,7 +12,8 @@ from basinrain.errors import Problems
 from basinrain.rainfall import Status
 from basinrain.reading.blocks import DEPTH_NAMES, FLAG_NAMES, GAUGE_NAMES, STEPS_NAMES, TIME_NAMES, Block
 from basinrain.reading.clocks import StampRules, read_stamps
-from basinrain.reading.delimited import DelimitedTable, find_column, numbers
+from basinrain.reading.columns import find_column, numbers
+from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules
 from basinrain.reading.intervals import Interval
 

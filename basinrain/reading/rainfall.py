@@ -182,7 +182,7 @@ def _gathered(problems: Problems) -> Iterator[None]:
     try:
         yield
     except JobError as error:
-        problems.extend(error.problems)
+        problems.extend(error)
 
 
 def _check_choices(

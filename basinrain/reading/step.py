@@ -2,20 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import replace
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import DataError, JobError, Problems, nearest_name
+from basinrain.errors import DataError, JobError, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.notes import Note
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 from basinrain.reading.clocks import clock_name, clock_seconds
 from basinrain.reading.grid import ABSENT, Grid, OnGrid, Source, off_bounds, place, relation
 from basinrain.reading.intervals import DAY, Interval, interval_of, parse_interval
+from basinrain.reading.membership import check_membership, without_gauges
 from basinrain.reading.storm_totals import merge_storm_totals, storm_bounds
 from basinrain.spreading import spread_totals
 
@@ -30,6 +31,7 @@ def bring_to_step(
     *,
     common: str | None = None,
     storm_times: Mapping[str, tuple[np.datetime64, np.datetime64]] | None = None,
+    exclude: Collection[str] = (),
 ) -> tuple[RainRecord, tuple[Note, ...]]:
     """Return the one record of all sources, at the common step.
 
@@ -44,6 +46,8 @@ def bring_to_step(
     storm_times
         Start and end of every storm, in the first source's clock, by name. Needed where storm totals without times come
         beside sources with times.
+    exclude
+        Ids of gauges that are left out, as if the sources did not have them; a source of none but these counts as none.
 
     Returns
     -------
@@ -82,12 +86,13 @@ def bring_to_step(
         problems = Problems()
         problems.add(item="rainfall", found="no source", expected="at least one")
         problems.raise_as(JobError)
-    _check_names(records, network)
-    timed = [record for record in records if record.step != "storm"]
+    used = without_gauges(dict(enumerate(records, 1)), exclude)
+    check_membership(list(used.values()), network)
+    timed = {number: record for number, record in used.items() if record.step != "storm"}
     if not timed:
-        return merge_storm_totals(records, network), ()
-    zone = _one_clock(records)
-    sources = _sources(records, zone, storm_times)
+        return merge_storm_totals(used, network), ()
+    zone = _one_clock(timed)
+    sources = _sources(used, zone, storm_times)
     step = parse_interval(common, item="[step] common") if common is not None else _finest(sources)
     grid = Grid(step, _phase(sources, step))
     _check_steps(sources, grid)
@@ -118,49 +123,20 @@ def bring_to_step(
     return record, (*notes, *mixed, *evenly)
 
 
-def _near(name: str, known: Sequence[str]) -> str:
-    advice = nearest_name(name, known) if known else ""
-    return f"; {advice}" if advice.startswith("did you mean") else ""
-
-
-def _check_names(records: Sequence[RainRecord], network: GaugeNetwork) -> None:
-    problems = Problems()
-    rain = dict.fromkeys(gauge for record in records for gauge in record.gauges)
-    known = set(network.ids)
-    silent = [gauge for gauge in network.ids if gauge not in rain]
-    for gauge in rain:
-        if gauge not in known:
-            problems.add(
-                item=f"gauge {gauge}",
-                found="rain values, but no such gauge in the network",
-                expected="a gauge with a position",
-                remedy="add it to the gauges, or correct its id in the rainfall file" + _near(gauge, network.ids),
-                gauge=gauge,
-            )
-    for gauge in silent:
-        problems.add(
-            item=f"gauge {gauge}",
-            found="no rain values in any source",
-            expected="a column or rows of its own, if only of missing values",
-            remedy="add them, or exclude the gauge" + _near(gauge, [other for other in rain if other not in known]),
-            gauge=gauge,
-        )
-    problems.raise_as(DataError)
-
-
 def _name(number: int, record: RainRecord) -> str:
     return f"source {number} ({record.step})"
 
 
-def _one_clock(records: Sequence[RainRecord]) -> str:
-    timed = [(number, record) for number, record in enumerate(records, 1) if record.step != "storm"]
-    zone = timed[0][1].zone
+def _one_clock(timed: Mapping[int, RainRecord]) -> str:
+    first = next(iter(timed))
+    zone = timed[first].zone
     problems = Problems()
-    for number, record in timed[1:]:
+    for number, record in timed.items():
         if bool(record.zone) != bool(zone):
             problems.add(
                 item="time zones",
-                found=f"{_clock_of(zone)} for {_name(*timed[0])}, {_clock_of(record.zone)} for {_name(number, record)}",
+                found=f"{_clock_of(zone)} for {_name(first, timed[first])}, {_clock_of(record.zone)} for "
+                f"{_name(number, record)}",
                 expected="a zone for every source, or for none",
                 remedy="declare timezone for each",
             )
@@ -173,14 +149,14 @@ def _clock_of(zone: str) -> str:
 
 
 def _sources(
-    records: Sequence[RainRecord],
+    records: Mapping[int, RainRecord],
     zone: str,
     storm_times: Mapping[str, tuple[np.datetime64, np.datetime64]] | None,
 ) -> list[Source]:
     """Return the sources in the clock of ``zone``, storm totals with their times."""
     sources = []
     problems = Problems()
-    for number, record in enumerate(records, 1):
+    for number, record in records.items():
         name = _name(number, record)
         if record.step == "storm":
             starts, ends = storm_bounds(record, storm_times or {}, name, problems)

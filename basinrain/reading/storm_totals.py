@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from itertools import pairwise
 
 import numpy as np
@@ -75,13 +75,13 @@ def storm_bounds(
     return starts, ends
 
 
-def merge_storm_totals(records: Sequence[RainRecord], network: GaugeNetwork) -> RainRecord:
+def merge_storm_totals(records: Mapping[int, RainRecord], network: GaugeNetwork) -> RainRecord:
     """Return the record of storm totals that totals-only sources make together.
 
     Parameters
     ----------
     records
-        Records of storm totals.
+        Records of storm totals, by the number under which messages name their source.
     network
         Holds all of their gauges.
 
@@ -105,14 +105,14 @@ def merge_storm_totals(records: Sequence[RainRecord], network: GaugeNetwork) -> 
     ...     )
     ...     for gauge, mm in (("B", 30.0), ("A", 10.0))
     ... )
-    >>> merge_storm_totals([one, two], network).depth
+    >>> merge_storm_totals({1: one, 2: two}, network).depth
     array([[10., 30.]])
     """
-    storms = tuple(dict.fromkeys(storm for record in records for storm in record.labels))
+    storms = tuple(dict.fromkeys(storm for record in records.values() for storm in record.labels))
     depth = np.full((len(storms), len(network)), np.nan)
     status = np.full(depth.shape, Status.MISSING, dtype=np.uint8)
     problems = Problems()
-    for number, record in enumerate(records, 1):
+    for number, record in records.items():
         at = np.ix_([storms.index(storm) for storm in record.labels], [network.position(g) for g in record.gauges])
         new = record.status != Status.MISSING
         for row, g in np.argwhere(new & (status[at] != Status.MISSING)):

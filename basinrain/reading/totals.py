@@ -10,7 +10,8 @@ import pandas as pd
 from basinrain.errors import Problems, ReadError
 from basinrain.rainfall import RainRecord, Status
 from basinrain.reading.blocks import DEPTH_NAMES, FLAG_NAMES, GAUGE_NAMES, STORM_NAMES, problems_of
-from basinrain.reading.delimited import DelimitedTable, find_column
+from basinrain.reading.columns import find_column
+from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthRules
 from basinrain.reading.long import depth_column, report_blank, required_columns
 

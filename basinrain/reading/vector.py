@@ -19,7 +19,8 @@ import shapely
 
 from basinrain import ground
 from basinrain.errors import Problem, Problems, ReadError, nearest_name
-from basinrain.reading.delimited import DelimitedTable, read_bytes
+from basinrain.reading.delimited import DelimitedTable
+from basinrain.reading.files import read_bytes
 
 __all__ = ["VectorTable", "add_no_crs", "read_vector", "settled_crs"]
 

@@ -10,7 +10,8 @@ import numpy.typing as npt
 from basinrain.errors import Problems
 from basinrain.reading.blocks import TIME_NAMES, Block
 from basinrain.reading.clocks import StampRules, read_stamps
-from basinrain.reading.delimited import DelimitedTable, find_column
+from basinrain.reading.columns import find_column
+from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules
 
 __all__ = ["read_wide"]

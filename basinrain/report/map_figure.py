@@ -45,6 +45,7 @@ _FILLS: Final[dict[str, dict[str, Any]]] = {
     "spread": {"markerfacecolor": "#9a9a9a"},
     "partly infilled": {"markerfacecolor": "black", "markerfacecoloralt": "white", "fillstyle": "bottom"},
     "infilled": {"markerfacecolor": "white"},
+    "in service for part": {"markerfacecolor": "black", "markerfacecoloralt": "white", "fillstyle": "left"},
     "missing": {"markerfacecolor": "none"},
     "not installed": {"markerfacecolor": "none"},
 }
@@ -63,7 +64,9 @@ def map_pictures(run: StormRun) -> list[Picture]:
 
 def _statuses(result: StormResult) -> tuple[str, ...]:
     record = result.completed.record
-    return tuple(status_of_total(record, g) for g in range(len(record.gauges)))
+    statuses = (status_of_total(record, g) for g in range(len(record.gauges)))
+    # A map has room for who measured and who did not; the gauges' table tells estimated and adjusted values apart.
+    return tuple(status if status in _FILLS else "observed" for status in statuses)
 
 
 class _Ground:

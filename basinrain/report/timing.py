@@ -74,8 +74,8 @@ def _timed_by(result: StormResult) -> str:
     by = list(dict.fromkeys(name for name, _ in result.shapes))
     if by == [MEAN]:
         return (
-            "Each basin's own mean times its hyetograph. Such a mean is flatter than the rain at any gauge where the "
-            "storm moved; the ratio below tells how much."
+            "Each basin's own mean times its hyetograph. Where the storm moved, such a mean is as a rule flatter than "
+            "the rain at a gauge; the ratio below tells how much."
         )
     if len(by) == 1:
         return f"The pattern of gauge {by[0]} times every hyetograph; the total is the basin mean's."

@@ -4,10 +4,10 @@ from __future__ import annotations
 
 import json
 import os
+import secrets
 import shutil
-import tempfile
 from collections.abc import Iterable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from pathlib import Path
 
 from basinrain.errors import Problem, WriteError
@@ -42,7 +42,9 @@ def check_folder(folder: Path, inputs: Iterable[Path]) -> None:
     _restore(place)
     _refuse_strangers(folder, place)
     parent = next(p for p in place.parents if p.exists())
-    if not parent.is_dir() or not os.access(parent, os.W_OK | os.X_OK):
+    if not parent.is_dir():
+        raise _refused(folder, f"the file {parent} on the way to it", "a folder that can be made", "name another one")
+    if not os.access(parent, os.W_OK | os.X_OK):
         raise _refused(folder, f"no right to write in {parent}", "a folder that can be written", "name another one")
     if place.exists() and not os.access(place, os.W_OK | os.X_OK):
         raise _refused(folder, "no right to write there", "a folder that can be written", "name another one")
@@ -101,13 +103,12 @@ def whole_folder(folder: Path) -> Iterator[Path]:
         The folder cannot be made, written or moved.
     """
     place = folder.resolve()
-    built: Path | None = None
+    built = place.with_name(f".{place.name}.{os.getpid()}.{secrets.token_hex(4)}")
+    alone = not place.parent.exists()
     try:
         _restore(place)
         _refuse_strangers(folder, place)
-        place.parent.mkdir(parents=True, exist_ok=True)
-        built = Path(tempfile.mkdtemp(prefix=f".{place.name}.", dir=place.parent))
-        built.chmod(0o755)
+        built.mkdir(parents=True)
         yield built
         earlier = _earlier(place)
         # Looked at again: the run took its time, and what came to lie there meanwhile is not ours.
@@ -125,5 +126,8 @@ def whole_folder(folder: Path) -> Iterator[Path]:
     except OSError as error:
         raise _refused(folder, (error.strerror or str(error)).lower(), "a folder that can be written", "") from error
     finally:
-        if built is not None and built.exists():
-            shutil.rmtree(built, ignore_errors=True)
+        shutil.rmtree(built, ignore_errors=True)
+        if alone:
+            # Made for a result that did not come; a folder with something in it stays.
+            with suppress(OSError):
+                place.parent.rmdir()

@@ -49,8 +49,7 @@ def thiessen_text(run: StormRun) -> str:
     """Return the Thiessen polygons as GeoJSON (RFC 7946).
 
     Positions are longitude and latitude (EPSG:4326). A job in local coordinates has no place on the map: its positions
-    are metres of the local plane, which a member ``coordinates`` says, as section 4 of the standard allows by
-    arrangement.
+    are metres of the local plane, which a member ``plane`` says, as section 4 of the standard allows by arrangement.
     """
     content = json.loads(run.thiessen.to_json(show_bbox=False, drop_id=True))
     content.pop("crs", None)

@@ -214,13 +214,43 @@ def test_output_that_cannot_be_written(tmp_path: Path) -> None:
     (tmp_path / "out").write_text("a file")
     result = CliRunner().invoke(main, ["storm", str(job), "--output", str(tmp_path / "out")])
     assert result.exit_code == 1
-    assert "expected a folder that can be written" in result.stderr
+    assert f"found the file {tmp_path / 'out'} on the way to it; expected a folder" in result.stderr
 
 
 @pytest.mark.parametrize("arguments", [["storm"], ["strom", "x"], ["storm", "job.toml", "--colour"]])
 def test_wrong_usage_leaves_with_two(arguments: list[str]) -> None:
     """What the command line itself gets wrong is usage, exit 2."""
     assert CliRunner().invoke(main, arguments).exit_code == 2
+
+
+def test_a_setting_that_cannot_be_placed_is_wrong_usage(tmp_path: Path) -> None:
+    """A --set without a value leaves with 2; one with a wrong value with 1, and is not blamed on a line of the file."""
+    job = str(write_tiny(tmp_path))
+    placed = CliRunner().invoke(main, ["storm", job, "--set", "infill"])
+    assert (placed.exit_code, placed.stderr) == (
+        2,
+        "--set: found 'infill'; expected TABLE.KEY=VALUE; write infill.method=normal-ratio\n",
+    )
+    valued = CliRunner().invoke(main, ["storm", job, "--set", "infill.power=steep"])
+    assert (valued.exit_code, valued.stderr) == (
+        1,
+        "[infill] power: found 'steep'; expected a number; correct the value\n",
+    )
+
+
+def test_interrupted_run_says_so(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Ctrl-C leaves with 130, one line, and nothing written."""
+    from basinrain.cli import storm
+
+    def interrupt(*_: object, **__: object) -> None:
+        raise KeyboardInterrupt
+
+    job = write_tiny(tmp_path)
+    before = fingerprints(tmp_path)
+    monkeypatch.setattr(storm, "run_storm", interrupt)
+    result = CliRunner().invoke(main, ["storm", str(job)])
+    assert (result.exit_code, result.stdout, result.stderr) == (130, "", "Stopped; nothing was written.\n")
+    assert fingerprints(tmp_path) == before
 
 
 def test_start_refuses_a_folder_with_something_in_it(tmp_path: Path) -> None:

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill.donors import choose_donors, distances_from, nearness
+from basinrain.infill.donors import choose_donors, distances_from
 
 # On a line, the target T in the middle: distances 1, 1, 2, 3 km.
 LINE = GaugeNetwork(ids=("T", "D", "C", "B", "A"), x=np.array([0.0, 1e3, -1e3, 2e3, -3e3]), y=np.zeros(5), crs="local")
@@ -16,22 +16,6 @@ EVERYONE = np.ones(5, dtype=bool)
 def donors(reporting: np.ndarray = EVERYONE, **options: object) -> list[str]:
     chosen = choose_donors(LINE, 0, reporting, **{"nearest": "all", **options})  # type: ignore[arg-type]
     return [gauge for gauge, yes in zip(LINE.ids, chosen, strict=True) if yes]
-
-
-def test_nearest_come_first_and_ties_go_by_id() -> None:
-    """C and D are both 1 km away; C comes first by its id though D stands before it in the file."""
-    assert [LINE.ids[g] for g in nearness(LINE, LINE.distances()[0])] == ["T", "C", "D", "B", "A"]
-
-
-def test_rounding_makes_no_difference_between_equal_distances() -> None:
-    """One part in 10 to the 12 is rounding, one in 10 000 is not."""
-    assert nearness(LINE, np.array([0.0, 1e3, 1e3 * (1 + 1e-12), 2e3, 3e3])).tolist() == [0, 2, 1, 3, 4]
-    assert nearness(LINE, np.array([0.0, 1e3, 1e3 * (1 + 1e-4), 2e3, 3e3])).tolist() == [0, 1, 2, 3, 4]
-
-
-def test_no_gauges_have_no_order() -> None:
-    """An empty network has an empty order."""
-    assert nearness(GaugeNetwork(ids=(), x=np.empty(0), y=np.empty(0), crs="local"), np.empty(0)).shape == (0,)
 
 
 def test_the_nearest_reporting_ones_donate() -> None:

@@ -56,13 +56,30 @@ def test_gap_over_the_peak_or_next_to_it(missing: int, warned: bool) -> None:  #
     gappy = column.copy()
     gappy[missing] = NAN
     record = hourly(column, gappy)
-    assert [note.gauge for note in over_peak(record, gap_mask(record))] == (["B"] if warned else [])
+    assert [note.gauge for note in over_peak(record, gap_mask(record), record.depth)] == (["B"] if warned else [])
 
 
 def test_all_of_several_peaks_count() -> None:
     """Two hours are equally wet; a gap over the second is warned of."""
     record = hourly([9, 0, 0, 0, 9], [9, 0, 0, 0, NAN])
-    assert [note.code for note in over_peak(record, gap_mask(record))] == ["gap-over-peak"]
+    assert [note.code for note in over_peak(record, gap_mask(record), record.depth)] == ["gap-over-peak"]
+
+
+@pytest.mark.parametrize(
+    ("completed", "said"),
+    [
+        ([9.0, 9.0], "what was infilled there may miss the peak."),
+        ([NAN, NAN], "it stays missing there."),
+        ([9.0, NAN], "what was infilled there may miss the peak, and in part it stays missing."),
+    ],
+)
+def test_what_became_of_the_gap_is_said(completed: list[float], said: str) -> None:
+    """One note for the gauge, whether its gap over the peak was infilled, left, or both."""
+    record = hourly([1, 9, 9, 1], [1, NAN, NAN, 1])
+    depth = record.depth.copy()
+    depth[1:3, 1] = completed
+    (note,) = over_peak(record, gap_mask(record), depth)
+    assert note.text.split("; ")[1] == said
 
 
 def test_windows_without_a_peak() -> None:
@@ -70,7 +87,7 @@ def test_windows_without_a_peak() -> None:
     nat = np.full(2, "NaT", dtype="datetime64[s]")
     totals = RainRecord.from_depths(("A", "B"), nat, nat, [[9.0, NAN], [8.0, 1.0]], step="storm")
     for record in (hourly([0, 0], [0, NAN]), hourly([5], [NAN]), totals, hourly([NAN, NAN])):
-        assert over_peak(record, gap_mask(record)) == []
+        assert over_peak(record, gap_mask(record), record.depth) == []
 
 
 def test_steps_in_words() -> None:

@@ -14,7 +14,7 @@ from strategies import networks
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import METHODS, InfillOptions, complete
-from basinrain.rainfall import RainRecord, Status
+from basinrain.rainfall import KnownTotal, RainRecord, Status
 
 methods = pytest.mark.parametrize("method", METHODS)
 SUM_TO_ONE = [name for name, method in METHODS.items() if method.sums_to_one]
@@ -41,8 +41,18 @@ def gappy(draw: st.DrawFn) -> tuple[RainRecord, GaugeNetwork]:
     spread = rng.random(n) < 0.2
     status[(status == Status.OBSERVED) & spread] = Status.SPREAD
     recorders = frozenset(np.array(network.ids)[~spread])
+    totals = []
+    for g in np.flatnonzero(spread).tolist():
+        length, early = int(rng.integers(1, 5)), int(rng.integers(0, 3))
+        for first in range(-early, n_steps, length):
+            held = slice(max(first, 0), first + length)
+            # What a total holds before the first and after the last step of the window is not in the depths.
+            outside = 3.0 * (rng.random() < 0.5) if first < 0 or first + length > n_steps else 0.0
+            if first + length > 0 and np.isin(status[held, g], [Status.SPREAD, Status.ZERO]).all():
+                bounds = ends[0] + (first - 1) * step, ends[0] + (first + length - 1) * step
+                totals.append(KnownTotal(network.ids[g], *bounds, float(depth[held, g].sum()) + outside))
     phase = draw(st.sampled_from([0, 9 * 3600]))
-    return replace(record, status=status, recorders=recorders, day_phase=phase), network
+    return replace(record, status=status, recorders=recorders, day_phase=phase, totals=tuple(totals)), network
 
 
 @st.composite
@@ -232,6 +242,16 @@ def slow_step(record: RainRecord, network: GaugeNetwork, t: int, g: int, options
     return sum(w * record.depth[t, i] for i, w in weights.items()) if weights else np.nan
 
 
+def whole(record: RainRecord, i: int, steps: list[int]) -> bool:
+    """Whether every total of a gauge that reaches into some steps fell in them."""
+    for total in record.totals:
+        if total.gauge == record.gauges[i]:
+            inside = [t for t in steps if total.start <= record.starts[t] and record.ends[t] <= total.end]
+            if inside and abs(sum(record.depth[t, i] for t in inside) - total.depth) > 1e-9:
+                return False
+    return True
+
+
 def slow_span(
     record: RainRecord, network: GaugeNetwork, steps: list[int], g: int, options: InfillOptions
 ) -> dict[int, float]:
@@ -241,7 +261,7 @@ def slow_span(
     by_step = {t: slow_step(record, network, t, g, options) for t in missing}
     if len(seen) * 2 >= len(steps):
         return by_step
-    usable = [all(record.reporting[t, i] for t in steps) for i in range(len(network))]
+    usable = [all(record.reporting[t, i] for t in steps) and whole(record, i, steps) for i in range(len(network))]
     weights = slow_weights(network, g, usable, month_index(record, steps[0], steps[-1]), options)
     if not weights:
         return dict.fromkeys(missing, np.nan)

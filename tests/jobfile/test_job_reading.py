@@ -9,7 +9,7 @@ from typing import Any
 
 import pytest
 
-from basinrain.errors import JobError, ReadError
+from basinrain.errors import JobError, ReadError, SettingError
 from basinrain.jobfile import Job, parse_job, read_job
 
 SMALL = """
@@ -123,6 +123,15 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
             r"\[\[rainfall\]\] no. 1: found no interval; expected interval",
         ),
         ({"rainfall": {"file": "r.csv", "interval": "1h"}}, r"\[\[rainfall\]\] no. 1 unit: found no such key"),
+        ({"averaging": {"methods": []}}, r"\[averaging\] methods: found an empty list; expected at least one"),
+        (
+            {"rainfall": {"file": "r.csv", "unit": "mm", "interval": "1h", "intervall": "1h"}},
+            r"\[\[rainfall\]\] no. 1 intervall: found a key that is not known; .*did you mean 'interval'\?",
+        ),
+        (
+            {"rainfall": {"file": "r.csv", "unit": "mm", "interval": 60}},
+            r"\[\[rainfall\]\] no. 1 interval: found 60; expected text in quotes",
+        ),
         ({"rainfall": []}, r"\[\[rainfall\]\]: found no table; expected at least one"),
         ({"gauges": 3}, r"\[gauges\]: found 3; expected a table"),
         ({"job": {"name": 5}}, r"\[job\] name: found 5; expected text in quotes"),
@@ -160,13 +169,13 @@ def test_settings_change_the_job(tmp_path: Path) -> None:
         ("infill", "--set: found 'infill'; expected TABLE.KEY=VALUE"),
         ("infill.=3", "--set: found 'infill.=3'"),
         ("rainfall.unit=mm", "a table that is there more than once"),
-        ("rainfall.7.unit=mm", "found '7'; expected the number of a table, 1 to 2"),
+        ("rainfall.7.unit=mm", "found '7'; expected the number of a table that the job has, 1 to 2"),
         ("job.name.deep.er=1", "inside a plain value"),
     ],
 )
 def test_a_wrong_setting_is_refused(tmp_path: Path, setting: str, message: str) -> None:
     """A --set that cannot be placed says why."""
-    with pytest.raises(JobError, match=message):
+    with pytest.raises(SettingError, match=message):
         read_job(job_file(tmp_path), [setting])
 
 

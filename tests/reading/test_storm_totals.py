@@ -24,7 +24,7 @@ def totals(gauges: tuple[str, ...], depth: npt.ArrayLike, *labels: str) -> RainR
 def test_sources_are_joined_by_storm() -> None:
     """Totals of one storm in several sources stand in one row, columns in the network's order."""
     record = merge_storm_totals(
-        [totals(("B", "A"), [[2.0, 1.0], [4.0, np.nan]], "May", "June"), totals(("A",), [[3]], "June")], NETWORK
+        {1: totals(("B", "A"), [[2.0, 1.0], [4.0, np.nan]], "May", "June"), 2: totals(("A",), [[3]], "June")}, NETWORK
     )
     assert (record.gauges, record.labels, record.recorders) == (("A", "B"), ("May", "June"), frozenset())
     np.testing.assert_array_equal(record.depth, [[1, 2], [3, 4]])
@@ -35,7 +35,7 @@ def test_a_total_in_two_sources() -> None:
     with pytest.raises(
         DataError, match=r"^gauge A: found another total of storm 'May' in source 2; expected one source for"
     ):
-        merge_storm_totals([totals(("A",), [[1]], "May"), totals(("A",), [[1]], "May")], NETWORK)
+        merge_storm_totals({1: totals(("A",), [[1]], "May"), 2: totals(("A",), [[1]], "May")}, NETWORK)
 
 
 def test_bounds_that_cannot_be() -> None:

@@ -8,6 +8,7 @@ import numpy as np
 import shapely
 
 from basinrain.averaging import averaging_method
+from basinrain.basin_depths import average_storm
 from basinrain.basins import Basins
 from basinrain.gauges import GaugeNetwork
 from basinrain.ground import LOCAL, Plane
@@ -16,7 +17,7 @@ from basinrain.infill.completed import Estimate
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.results import StormResult, StormRun
-from basinrain.storms import Storm, average_storm, hyetograph_shape
+from basinrain.storms import Storm, hyetograph_shape
 
 NAMES = ("A", "B", "C", "D", "E", "F")
 

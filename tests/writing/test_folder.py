@@ -95,6 +95,65 @@ def test_an_output_moved_aside_by_a_killed_run_comes_back(tmp_path: Path) -> Non
     assert not (tmp_path / ".out.earlier").exists()
 
 
+def test_an_earlier_output_is_not_lost_to_a_folder_made_in_its_place(tmp_path: Path) -> None:
+    """Killed between its renames, and somebody makes a folder of that name: both are left alone; refused."""
+    place, aside = tmp_path / "out", tmp_path / ".out.earlier"
+    earlier_output(place)
+    place.rename(aside)
+    place.mkdir()
+    (place / "notes.txt").write_text("mine")
+    with pytest.raises(WriteError, match="no earlier run wrote: notes"):
+        check_folder(place, [])
+    assert ((aside / "a.csv").read_text(), (place / "notes.txt").read_text()) == ("first", "mine")
+
+
+def test_what_comes_to_lie_there_during_the_run_is_kept(tmp_path: Path) -> None:
+    """A file put into the folder while the run computes is not replaced; the API checks as the command line does."""
+    place = tmp_path / "out"
+    earlier_output(place)
+
+    def run() -> None:
+        with whole_folder(place) as built:
+            (built / "a.csv").write_text("second")
+            (place / "thesis.txt").write_text("years of work")
+
+    with pytest.raises(WriteError, match=r"no earlier run wrote: thesis\.txt"):
+        run()
+    assert (place / "thesis.txt").read_text() == "years of work"
+    assert (place / "a.csv").read_text() == "first"
+    assert sorted(path.name for path in tmp_path.iterdir()) == ["out"]
+
+
+def test_a_failed_last_step_puts_the_earlier_output_back(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """When the new folder cannot be moved into place, the earlier one returns to it."""
+    place = tmp_path / "out"
+    earlier_output(place)
+    real = Path.rename
+
+    def rename(self: Path, target: Path) -> Path:
+        if self.name.startswith(".out.") and self.name != ".out.earlier":
+            raise OSError(5, "Input/output error")
+        return real(self, target)
+
+    monkeypatch.setattr(Path, "rename", rename)
+    with pytest.raises(WriteError, match="found input/output error"):
+        earlier_output(place, "second")
+    assert (place / "a.csv").read_text() == "first"
+    assert sorted(path.name for path in tmp_path.iterdir()) == ["out"]
+
+
+def test_an_interrupted_run_leaves_nothing(tmp_path: Path) -> None:
+    """Ctrl-C leaves neither the temporary folder nor a parent that was made for it."""
+
+    def run() -> None:
+        with whole_folder(tmp_path / "results" / "storm"):
+            raise KeyboardInterrupt
+
+    with pytest.raises(KeyboardInterrupt):
+        run()
+    assert list(tmp_path.iterdir()) == []
+
+
 def test_what_is_not_ours_is_never_replaced(tmp_path: Path) -> None:
     """A folder with a stranger's file is refused and named."""
     place = tmp_path / "out"
@@ -118,7 +177,9 @@ def test_inputs_files_and_forbidden_places_are_refused(tmp_path: Path) -> None:
         check_folder(tmp_path, [tmp_path / "rain.csv"])
     with pytest.raises(WriteError, match="found a file; expected a folder"):
         check_folder(tmp_path / "rain.csv", [])
-    with pytest.raises(WriteError, match=r"output folder: found .*; expected a folder that can be written"):
+    with pytest.raises(
+        WriteError, match=r"found the file .*rain\.csv on the way to it; expected a folder that can be made"
+    ):
         check_folder(tmp_path / "rain.csv" / "out", [])
 
 

@@ -1,0 +1,181 @@
+"""Basin depths of a storm by one averaging method, and where every millimetre of them came from."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.errors import MethodError
+from basinrain.infill import Completed
+from basinrain.rainfall import RainRecord, Status
+from basinrain.weights import WeightTable
+
+__all__ = ["BasinDepths", "average_storm", "spread_across_methods"]
+
+Weigher = Callable[[npt.NDArray[np.bool_]], WeightTable]
+
+
+@dataclass(frozen=True, eq=False)
+class BasinDepths:
+    """What one averaging method gives for one storm, for all basins.
+
+    Parameters
+    ----------
+    table : WeightTable
+        The method's own weights with every gauge present that has a depth in the storm, observed or infilled.
+    depth : array of float, shape (n_steps, n_basins)
+        Basin means in mm; NaN where the method has no number.
+    infilled : array of float, shape (n_basins,)
+        mm of the total that rest on infilled values.
+    reporting_only : array of float, shape (n_basins,)
+        Total in mm with weights rebuilt at every step from the gauges that report; NaN where at some step none does.
+    contribution : array of float, shape (n_basins, n_gauges)
+        mm of the total that come from each gauge's own values, directly and through infill; rows sum to the total.
+    least, most : array of float, shape (n_basins, n_gauges)
+        Least and greatest weight of each gauge's own values over the steps, infill included.
+    observed_share : array of float, shape (n_steps, n_basins)
+        Share of the weight that lies on gauges which report at the step.
+    without_depth : array of int, shape (n_gauges,)
+        Steps at which each gauge was in service and had no depth even after infill; weights were rebuilt there.
+    """
+
+    table: WeightTable
+    depth: npt.NDArray[np.float64]
+    infilled: npt.NDArray[np.float64]
+    reporting_only: npt.NDArray[np.float64]
+    contribution: npt.NDArray[np.float64]
+    least: npt.NDArray[np.float64]
+    most: npt.NDArray[np.float64]
+    observed_share: npt.NDArray[np.float64]
+    without_depth: npt.NDArray[np.int64]
+
+    @property
+    def total(self) -> npt.NDArray[np.float64]:
+        """Storm totals in mm, shape (n_basins,); NaN where any step is: a total is never the sum of what is left."""
+        return np.asarray(self.depth.sum(axis=0))
+
+
+def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
+    """Average a completed storm over the basins by one method.
+
+    Parameters
+    ----------
+    completed
+        The storm's window after infill.
+    weigher
+        Makes the method's weights for any set of gauges that are present.
+
+    Returns
+    -------
+    BasinDepths
+
+    Notes
+    -----
+    With D the donor weights of a step, W the weights of the gauges that have a depth and p the reporting gauges' own
+    depths, the basin mean of the step is ``W D p``. Hence the contribution of gauge i to basin b over the storm is the
+    sum over steps of ``(W D)[b, i] p[i]``, and these sum to the mean exactly. Where the total of a day or storm was
+    spread, p is the donors' total in the times of the gauge whose pattern was used.
+    """
+    record = completed.record
+    has_depth = ~np.isnan(record.depth)
+    reporting = record.reporting
+    anywhere: npt.NDArray[np.bool_] = np.asarray(has_depth.any(axis=0))
+    table = weigher(anywhere)
+    n_steps, (n_basins, n_gauges) = len(record), table.weights.shape
+    weigh = _Remembered(weigher)
+    depth = np.full((n_steps, n_basins), np.nan)
+    observed_share = np.zeros((n_steps, n_basins))
+    infilled = np.zeros(n_basins)
+    contribution = np.zeros((n_basins, n_gauges))
+    least, most = np.full((n_basins, n_gauges), np.inf), np.full((n_basins, n_gauges), -np.inf)
+    for steps, donors in completed.donor_tables():
+        present = has_depth[steps[0]]
+        if not present.any():
+            contribution[:] = np.nan
+            infilled[:] = np.nan
+            continue
+        here = weigh(present)
+        depth[steps] = here.apply(np.where(present, record.depth[steps], np.nan))
+        influence = here.weights @ donors
+        contribution += here.weights @ completed.sources(steps)
+        least, most = np.minimum(least, influence), np.maximum(most, influence)
+        estimated = np.where(present & ~reporting[steps[0]], record.depth[steps], 0.0).sum(axis=0)
+        infilled += here.weights @ estimated
+        weight_sum = here.weights.sum(axis=1)
+        observed_share[steps] = np.divide(
+            here.weights @ reporting[steps[0]].astype(float),
+            weight_sum,
+            out=np.full(n_basins, np.nan),
+            where=weight_sum != 0,
+        )
+    return BasinDepths(
+        table=table,
+        depth=depth,
+        infilled=infilled,
+        reporting_only=_reporting_only(record, weigh, n_basins),
+        contribution=contribution,
+        least=np.where(np.isinf(least), np.nan, least),
+        most=np.where(np.isinf(most), np.nan, most),
+        observed_share=observed_share,
+        without_depth=np.asarray((~has_depth & (record.status != Status.NOT_INSTALLED)).sum(axis=0)),
+    )
+
+
+def _reporting_only(record: RainRecord, weigh: _Remembered, n_basins: int) -> npt.NDArray[np.float64]:
+    patterns, group = np.unique(record.reporting, axis=0, return_inverse=True)
+    total = np.zeros(n_basins)
+    for k, pattern in enumerate(patterns):
+        if not pattern.any():
+            return np.full(n_basins, np.nan)
+        try:
+            table = weigh.seldom(pattern)
+        except MethodError:
+            # The gauges that happen to report do not reach the basin: this one figure has no number, the run goes on.
+            return np.full(n_basins, np.nan)
+        depth = np.where(pattern, record.depth[group == k], 0.0).sum(axis=0)
+        total += table.apply(np.where(pattern, depth, np.nan))
+    return total
+
+
+class _Remembered:
+    """Keeps the tables that were made, since few sets of present gauges recur at many steps."""
+
+    def __init__(self, weigher: Weigher) -> None:
+        self._weigher = weigher
+        self._tables: dict[bytes, WeightTable] = {}
+
+    def __call__(self, present: npt.NDArray[np.bool_]) -> WeightTable:
+        key = present.tobytes()
+        if key not in self._tables:
+            self._tables[key] = self._weigher(present)
+        return self._tables[key]
+
+    def seldom(self, present: npt.NDArray[np.bool_]) -> WeightTable:
+        """Return the table without keeping it: a long record has as many sets of reporting gauges as it has gaps."""
+        return self._tables.get(present.tobytes()) or self._weigher(present)
+
+
+def spread_across_methods(totals: Mapping[str, float] | Sequence[float]) -> tuple[float, float, float, float]:
+    """Return least, greatest, their difference and that difference in percent of the mean of the methods' totals.
+
+    Methods without a number are left out; with fewer than two numbers the difference is NaN.
+
+    Examples
+    --------
+    >>> spread_across_methods([20.0, 25.0, float("nan")])
+    (20.0, 25.0, 5.0, 22.22222222222222)
+    >>> spread_across_methods([20.0])
+    (20.0, 20.0, nan, nan)
+    """
+    values = np.array(list(totals.values()) if isinstance(totals, Mapping) else totals, dtype=float)
+    values = values[~np.isnan(values)]
+    if len(values) == 0:
+        return (np.nan,) * 4
+    least, most = float(values.min()), float(values.max())
+    if len(values) == 1:
+        return least, most, np.nan, np.nan
+    centre = float(values.mean())
+    return least, most, most - least, 100 * (most - least) / centre if centre > 0 else 0.0

@@ -1,0 +1,98 @@
+"""Times that a job states, in the clock of its record."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from datetime import datetime, timedelta
+
+import numpy as np
+
+from basinrain.errors import JobError, Problem
+from basinrain.jobfile.tables import RainfallTable, StormTable
+
+__all__ = ["rainfall_day_start", "storm_window_times"]
+
+Window = tuple[np.datetime64 | None, np.datetime64 | None]
+
+
+def rainfall_day_start(sources: Sequence[RainfallTable]) -> np.timedelta64:
+    """Return when the rainfall day that a bare date names begins, from midnight of that date.
+
+    Midnight, unless every source is read daily at one hour: then the day of a date is the files' own, which ends or
+    starts at the reading hour.
+
+    Parameters
+    ----------
+    sources
+        The job's ``[[rainfall]]`` tables.
+
+    Examples
+    --------
+    >>> daily = RainfallTable(file="d.csv", unit="mm", interval="1d", read_hour="07:00", date_means="ends")
+    >>> rainfall_day_start([daily]).astype(int) / 3600  # the day of the 9th begins on the 8th at 07:00
+    np.float64(-17.0)
+    >>> hourly = RainfallTable(file="h.csv", unit="mm", interval="1h")
+    >>> rainfall_day_start([daily, hourly]).astype(int)
+    np.int64(0)
+    """
+    readings = {(source.read_hour, source.date_means) for source in sources if source.interval == "1d"}
+    midnight = np.timedelta64(0, "s")
+    if len(readings) != 1 or any(source.interval != "1d" for source in sources):
+        return midnight
+    ((hour, means),) = readings
+    if hour is None or means not in {"ends", "starts"}:
+        return midnight
+    hours, _, minutes = str(hour).partition(":")
+    at = np.timedelta64(3600 * int(hours) + 60 * int(minutes or 0), "s")
+    return at - np.timedelta64(86400, "s") if means == "ends" else at
+
+
+def storm_window_times(table: StormTable, zone: str, *, day_start: np.timedelta64) -> Window:
+    """Return a storm's start and end in the record's clock; None where the job states none.
+
+    Parameters
+    ----------
+    table
+        The storm. A bare date names its whole day.
+    zone
+        The record's clock, a fixed offset; empty where the files do not say.
+    day_start
+        When the day of a date begins, from midnight (:func:`rainfall_day_start`).
+
+    Raises
+    ------
+    JobError
+        A time has an offset, and the record's clock is not known.
+
+    Examples
+    --------
+    >>> storm = StormTable(name="Quill", start="2031-05-04T06:00:00Z", end="2031-05-05")
+    >>> [str(time) for time in storm_window_times(storm, "+02:00", day_start=np.timedelta64(0, "s"))]
+    ['2031-05-04T08:00:00', '2031-05-06T00:00:00']
+    """
+    return (
+        _moment(table.name, table.start, zone, day_start),
+        _moment(table.name, table.end, zone, day_start + np.timedelta64(86400, "s")),
+    )
+
+
+def _moment(storm: str, text: str | None, zone: str, bare: np.timedelta64) -> np.datetime64 | None:
+    if text is None:
+        return None
+    when = datetime.fromisoformat(text)
+    local = np.datetime64(when.replace(tzinfo=None), "s")
+    if "T" not in text and " " not in text:
+        return local + bare
+    if when.tzinfo is None:
+        return local
+    if not zone:
+        raise JobError(
+            Problem(
+                item=f"storm {storm}",
+                found=f"the time '{text}' with an offset",
+                expected="times without one, since the rainfall files state no time zone",
+                remedy="give [[rainfall]] timezone, or write the storm's times in the files' clock",
+            )
+        )
+    clock = datetime.fromisoformat(f"2000-01-01T00:00{zone}").utcoffset() or timedelta(0)
+    return local + np.timedelta64(clock - (when.utcoffset() or timedelta(0)), "s")
