@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 import numpy as np
 import pytest
 
@@ -50,37 +52,37 @@ def pair(
     status: object,
     totals: tuple[KnownTotal, ...] = (),
     normals: object = None,
-    **service: object,
+    service: Mapping[str, object] | None = None,
 ) -> tuple[GaugeNetwork, RainRecord]:
-    """A stands alone, B and C at one place; two hours."""
+    """Return two hours of A, which stands alone, and of B and C at one place."""
     network = GaugeNetwork(
         ids=("A", "B", "C"),
         x=np.array([0.0, 900.0, 900.0]),
         y=np.zeros(3),
         crs="local",
         normals=None if normals is None else np.array(normals, dtype=float),
-        **{name: np.array(times, dtype="datetime64[s]") for name, times in service.items()},  # type: ignore[arg-type]
+        **{name: np.array(times, dtype="datetime64[s]") for name, times in (service or {}).items()},  # type: ignore[arg-type]
     )
     values, codes = np.array(depth, dtype=float), np.array(status, dtype=np.uint8)
     return network, RainRecord(network.ids, ENDS - HOUR, ENDS, values, codes, step="1h", totals=totals)
 
 
-O, Z, M, S, N = Status.OBSERVED, Status.ZERO, Status.MISSING, Status.SPREAD, Status.NOT_INSTALLED
+SEEN, ZERO, GAP, SPREAD, ABSENT = Status.OBSERVED, Status.ZERO, Status.MISSING, Status.SPREAD, Status.NOT_INSTALLED
 
 
 @pytest.mark.parametrize(
     ("one", "other", "merged"),
     [
-        ((4.0, O), (2.0, S), (3.0, S)),
-        ((4.0, O), (0.0, S), (2.0, S)),
-        ((0.0, Z), (2.0, S), (1.0, S)),
-        ((NAN, M), (2.0, S), (2.0, S)),
-        ((NAN, N), (NAN, M), (NAN, M)),
-        ((NAN, M), (NAN, N), (NAN, M)),
-        ((NAN, N), (NAN, N), (NAN, N)),
-        ((NAN, N), (2.0, O), (2.0, O)),
-        ((0.0, Z), (2.0, O), (1.0, O)),
-        ((0.0, Z), (0.0, Z), (0.0, Z)),
+        ((4.0, SEEN), (2.0, SPREAD), (3.0, SPREAD)),
+        ((4.0, SEEN), (0.0, SPREAD), (2.0, SPREAD)),
+        ((0.0, ZERO), (2.0, SPREAD), (1.0, SPREAD)),
+        ((NAN, GAP), (2.0, SPREAD), (2.0, SPREAD)),
+        ((NAN, ABSENT), (NAN, GAP), (NAN, GAP)),
+        ((NAN, GAP), (NAN, ABSENT), (NAN, GAP)),
+        ((NAN, ABSENT), (NAN, ABSENT), (NAN, ABSENT)),
+        ((NAN, ABSENT), (2.0, SEEN), (2.0, SEEN)),
+        ((0.0, ZERO), (2.0, SEEN), (1.0, SEEN)),
+        ((0.0, ZERO), (0.0, ZERO), (0.0, ZERO)),
     ],
 )
 def test_status_of_the_mean(
@@ -88,10 +90,10 @@ def test_status_of_the_mean(
 ) -> None:
     """Spread where any of them is, a gap as long as one is in service, else as the first that reports; in any order."""
     for first, second in ((one, other), (other, one)):
-        cells = [[1.0, first[0], second[0]]] * 2, [[O, first[1], second[1]]] * 2
+        cells = [[1.0, first[0], second[0]]] * 2, [[SEEN, first[1], second[1]]] * 2
         _, rain, _ = merge_colocated(*pair(*cells))
         np.testing.assert_array_equal(rain.depth[0], [1.0, merged[0]])
-        assert rain.status[0].tolist() == [O, merged[1]]
+        assert rain.status[0].tolist() == [SEEN, merged[1]]
 
 
 def test_a_normal_that_one_of_them_lacks_is_the_others() -> None:
@@ -107,10 +109,10 @@ def test_service_is_that_of_them_all() -> None:
     limited = {"opened": ["NaT", "2000-01-01", "1990-01-01"], "closed": ["NaT", "2040-01-01", "2050-01-01"]}
     open_ended = {"opened": ["2010-01-01", "2000-01-01", "NaT"], "closed": ["2040-01-01", "NaT", "2041-01-01"]}
     cells = np.ones((2, 3)), np.zeros((2, 3))
-    merged, _, _ = merge_colocated(*pair(*cells, **limited))
+    merged, _, _ = merge_colocated(*pair(*cells, service=limited))
     assert [str(merged.opened[1])[:4], str(merged.closed[1])[:4]] == ["1990", "2050"]
     assert np.isnat([merged.opened[0], merged.closed[0]]).all()
-    merged, _, _ = merge_colocated(*pair(*cells, **open_ended))
+    merged, _, _ = merge_colocated(*pair(*cells, service=open_ended))
     assert np.isnat([merged.opened[1], merged.closed[1]]).all()
     assert [str(merged.opened[0])[:4], str(merged.closed[0])[:4]] == ["2010", "2040"]
 
@@ -119,5 +121,5 @@ def test_totals_of_merged_and_other_gauges() -> None:
     """A keeps its total; what B and C know over the two hours is the sum of their means, 3 + 5 = 8, once."""
     bounds = ENDS[0] - HOUR, ENDS[1]
     totals = tuple(KnownTotal(gauge, *bounds, mm) for gauge, mm in (("A", 2.0), ("B", 4.0), ("C", 12.0)))
-    _, rain, _ = merge_colocated(*pair([[1.0, 2.0, 4.0], [1.0, 2.0, 8.0]], [[S, S, S]] * 2, totals))
+    _, rain, _ = merge_colocated(*pair([[1.0, 2.0, 4.0], [1.0, 2.0, 8.0]], [[SPREAD, SPREAD, SPREAD]] * 2, totals))
     assert rain.totals == (KnownTotal("A", *bounds, 2.0), KnownTotal("B+C", *bounds, 8.0))

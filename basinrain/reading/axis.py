@@ -12,6 +12,7 @@ from basinrain.errors import Problems, ReadError
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 from basinrain.reading.blocks import Block
 from basinrain.reading.intervals import DAY, Interval
+from basinrain.reading.spacing import check_spacing
 
 __all__ = ["join_blocks"]
 
@@ -44,7 +45,8 @@ def join_blocks(
     Raises
     ------
     ReadError
-        Times off the axis, a gauge and time in two files, undeclared gaps, accumulations that do not fit; all together.
+        Rows whose spacing is not the interval, times off the axis, a gauge and time in two files, undeclared gaps,
+        accumulations that do not fit; all of a kind together.
 
     Examples
     --------
@@ -56,7 +58,9 @@ def join_blocks(
     """
     problems = Problems()
     steps = [_positions(block.ends, interval) for block in blocks]
-    _check_phase(blocks, interval, problems)
+    # A file of another interval would be off the axis line by line, or full of gaps.
+    fitting = [block for block in blocks if check_spacing(block, interval, problems)]
+    _check_phase(fitting, interval, problems)
     problems.raise_as(ReadError)
     times = np.unique(np.concatenate(steps))
     gauges = tuple(dict.fromkeys(gauge for block in blocks for gauge in block.gauges))
@@ -116,7 +120,7 @@ def _files(blocks: Sequence[Block]) -> str:
 
 
 def _check_phase(blocks: Sequence[Block], interval: Interval, problems: Problems) -> None:
-    if interval.seconds is None:
+    if interval.seconds is None or not blocks:
         return  # months begin where the calendar says
     phases = [block.ends.astype(np.int64) % interval.seconds for block in blocks]
     values, counts = np.unique(np.concatenate(phases), return_counts=True)

@@ -13,10 +13,11 @@ import shapely
 
 from basinrain import ground
 from basinrain.basins import UNION, Basins
-from basinrain.errors import JobError, Problem, Problems, ReadError, nearest_name
+from basinrain.errors import JobError, Problems, ReadError, nearest_name
 from basinrain.notes import Note
 from basinrain.reading.columns import find_column, numbers
 from basinrain.reading.delimited import DelimitedTable
+from basinrain.reading.options import option_problems
 from basinrain.reading.vector import VectorTable, read_vector, settled_crs
 from basinrain.units import area_factor, length_factor
 
@@ -96,16 +97,25 @@ def read_basins(
     >>> basins.ids, basins.areas, notes
     (('upper',), array([2000000.]), ())
     """
+    file = str(path)
+    length = area_in_m2 = height = np.nan
+    faults = Problems(file=file)
     if repeated not in _REPEATED:
-        raise JobError(
-            Problem(
-                item="[basins] repeated",
-                found=f"'{repeated}'",
-                expected=" or ".join(f"'{choice}'" for choice in _REPEATED),
-                remedy=nearest_name(repeated, _REPEATED),
-            )
+        faults.add(
+            item="[basins] repeated",
+            found=f"'{repeated}'",
+            expected=" or ".join(f"'{choice}'" for choice in _REPEATED),
+            remedy=nearest_name(repeated, _REPEATED),
         )
-    length, area_in_m2, height = length_factor(length_unit), area_factor(area_unit), length_factor(elevation_unit)
+    with option_problems(faults, file=file, item="[basins] length_unit"):
+        length = length_factor(length_unit)
+    with option_problems(faults, file=file, item="[basins] area_unit"):
+        area_in_m2 = area_factor(area_unit)
+    with option_problems(faults, file=file, item="[basins] elevation_unit"):
+        height = length_factor(elevation_unit)
+    with option_problems(faults, file=file, item="[basins] crs"):
+        _ = None if crs is None else ground.parse_crs(crs)
+    faults.raise_as(JobError)
     table = read_vector(path, layer=layer)
     cells = table.cells
     problems = Problems(file=cells.file)

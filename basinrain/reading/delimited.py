@@ -212,7 +212,7 @@ def _frame(
         if any(cell.strip() for cell in (cells[n_columns:] if len(cells) > n_columns else cells)):
             problems.add(
                 item="a row",
-                found=f"{len(cells)} cells",
+                found=f"{len(cells)} cell" + ("s" if len(cells) > 1 else ""),
                 expected=f"{n_columns}, as the header has",
                 remedy=_uneven_remedy(separator, more=len(cells) > n_columns),
                 line=int(lines[place]),
@@ -240,14 +240,15 @@ def _uneven(
     rows: Sequence[str] | Sequence[list[str]], n_columns: int, separator: str
 ) -> Iterator[tuple[int, list[str]]]:
     """Yield place and cells of the rows that have not n_columns cells."""
-    for place, row in enumerate(rows):
-        if isinstance(row, str):
-            # Between quotation marks a separator separates nothing.
-            if row.count(separator) == n_columns - 1 and '"' not in row:
-                continue
-            cells = next(csv.reader([row], delimiter=separator, skipinitialspace=True))
-        else:
-            cells = row
+    # Between quotation marks a separator separates nothing.
+    doubtful = [
+        place
+        for place, row in enumerate(rows)
+        if not isinstance(row, str) or row.count(separator) != n_columns - 1 or '"' in row
+    ]
+    for place in doubtful:
+        row = rows[place]
+        cells = next(csv.reader([row], delimiter=separator, skipinitialspace=True)) if isinstance(row, str) else row
         if len(cells) != n_columns:
             yield place, cells
 

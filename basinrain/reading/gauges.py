@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from pathlib import Path
 from types import MappingProxyType
 from typing import Final
@@ -16,8 +14,12 @@ import shapely
 from basinrain import ground
 from basinrain.errors import JobError, Problems, ReadError, nearest_name
 from basinrain.gauges import GaugeNetwork
-from basinrain.reading.columns import find_column, numbers
+from basinrain.reading.columns import find_column
 from basinrain.reading.delimited import DelimitedTable, read_delimited
+from basinrain.reading.gauge_rows import GaugeRows
+from basinrain.reading.normals import MONTHS, normal_columns, read_normals
+from basinrain.reading.options import option_problems
+from basinrain.reading.service import service_times
 from basinrain.reading.vector import VectorTable, add_no_crs, read_vector, settled_crs
 from basinrain.units import depth_factor, length_factor
 
@@ -40,58 +42,6 @@ _TRADE_NAMES: Final = MappingProxyType(
         "to": "to closed close end end_date to_date",
     }
 )
-# fmt: off
-_MONTHS: Final = ("january", "february", "march", "april", "may", "june",
-                  "july", "august", "september", "october", "november", "december")
-# fmt: on
-_NORMALS: Final = (
-    tuple(month[:3] for month in _MONTHS),
-    _MONTHS,
-    *(tuple(f"{stem}{month:02d}" for month in range(1, 13)) for stem in ("normal_", "p")),
-    *(tuple(f"{stem}{month}" for month in range(1, 13)) for stem in ("normal_", "p")),
-    tuple(f"normal_{month[:3]}" for month in _MONTHS),
-)
-_MOST_MONTHS: Final = 6
-"""So many columns of one scheme of months are meant as normals, and a missing one is a slip."""
-
-_TIME: Final = re.compile(r"[0-9]{4}(-[0-9]{2}(-[0-9]{2}([T ][0-9]{2}:[0-9]{2}(:[0-9]{2})?)?)?)?")
-
-
-@dataclass(frozen=True, eq=False)
-class _Rows:
-    """The file's rows that are read, and where they stand in it."""
-
-    table: DelimitedTable
-    vector: bool
-    ids: tuple[str, ...]
-    problems: Problems
-
-    def add(self, row: int, *, column: str, found: str, expected: str, remedy: str = "") -> None:
-        gauge, number = self.ids[row], int(self.table.lines[row])
-        self.problems.add(
-            item=(f"feature {number}: " if self.vector else "") + (f"gauge {gauge}" if gauge else "a gauge"),
-            found=found,
-            expected=expected,
-            remedy=remedy,
-            line=None if self.vector else number,
-            column=column,
-            gauge=gauge,
-        )
-
-    def numbers(self, column: str, *, blank: bool = True) -> npt.NDArray[np.float64]:
-        """Return a column's numbers, NaN where there is none; a cell that is no number is a problem."""
-        values, bad = numbers(self.table, column)
-        wrong = bad if blank else np.isnan(values)
-        for row in np.flatnonzero(wrong):
-            cell = self.table.frame[column].iloc[row]
-            self.add(
-                int(row),
-                column=column,
-                found=f"'{cell}'" if cell else "nothing",
-                expected="a number",
-                remedy="correct the cell",
-            )
-        return values
 
 
 def read_gauges(
@@ -156,10 +106,17 @@ def read_gauges(
     (('0501', '0502'), 'EPSG:4326', [1600.0, nan], ['NaT', '2031-07-01T00:00:00'])
     """
     mapped = _checked_mapping(columns or {})
-    factors = {"length": length_factor(length_unit), "elevation": length_factor(elevation_unit)}
-    factors["normal"] = depth_factor(normal_unit)
-    if crs is not None:
-        ground.parse_crs(crs)
+    factors = dict.fromkeys(("length", "elevation", "normal"), np.nan)
+    faults = Problems()
+    with option_problems(faults, file=str(path), item="[gauges] length_unit"):
+        factors["length"] = length_factor(length_unit)
+    with option_problems(faults, file=str(path), item="[gauges] elevation_unit"):
+        factors["elevation"] = length_factor(elevation_unit)
+    with option_problems(faults, file=str(path), item="[gauges] normal_unit"):
+        factors["normal"] = depth_factor(normal_unit)
+    with option_problems(faults, file=str(path), item="[gauges] crs"):
+        _ = None if crs is None else ground.parse_crs(crs)
+    faults.raise_as(JobError)
 
     vector = None if path.suffix.lower() in _TEXT_SUFFIXES else read_vector(path, layer=layer)
     table = read_delimited(path) if vector is None else vector.cells
@@ -174,7 +131,7 @@ def read_gauges(
         )
 
     found = {key: column(key) for key in _TRADE_NAMES}
-    normal_columns = _normal_columns(table.columns, mapped, found["normal"], problems)
+    normal_cells = normal_columns(table.columns, mapped, found["normal"], problems)
     id_column = found["id"]
     if id_column is None:
         if "id" not in mapped:
@@ -197,9 +154,9 @@ def read_gauges(
         _check_degrees(rows, x, y, x_column, y_column)
     scale = factors["length"] if used_crs == ground.LOCAL else 1.0
     elevation = rows.numbers(found["elevation"]) * factors["elevation"] if found["elevation"] else np.empty(0)
-    normals = _normals(rows, normal_columns, factors["normal"])
+    normals = read_normals(rows, normal_cells, factors["normal"])
     names = tuple(rows.table.frame[found["name"]]) if found["name"] else rows.ids
-    opened, closed = _service(rows, found["from"], found["to"])
+    opened, closed = service_times(rows, found["from"], found["to"])
     problems.raise_as(ReadError)
     return GaugeNetwork(
         ids=rows.ids,
@@ -225,7 +182,7 @@ def _checked_mapping(columns: Mapping[str, str | Sequence[str]]) -> dict[str, st
                 item="[gauges] columns", found=f"'{key}'", expected="a known key", remedy=nearest_name(key, known)
             )
         elif key == "normals":
-            if isinstance(value, str) or len(value) != len(_MONTHS):
+            if isinstance(value, str) or len(value) != len(MONTHS):
                 problems.add(
                     item="[gauges] columns.normals",
                     found=f"'{value}'" if isinstance(value, str) else f"{len(value)} columns",
@@ -240,34 +197,9 @@ def _checked_mapping(columns: Mapping[str, str | Sequence[str]]) -> dict[str, st
     return mapped
 
 
-def _normal_columns(
-    columns: Sequence[str], mapped: Mapping[str, str | tuple[str, ...]], annual: str | None, problems: Problems
-) -> tuple[str, ...]:
-    """Return the 12 monthly columns where there are such, else the annual one, else none."""
-    if "normals" in mapped:
-        named = [find_column(columns, (), mapped=name, key="normals", problems=problems) for name in mapped["normals"]]
-        return tuple(name for name in named if name is not None)
-    if "normal" not in mapped:
-        for scheme in _NORMALS:
-            months = [find_column(columns, (name,), mapped=None, key="normals", problems=problems) for name in scheme]
-            present = tuple(name for name in months if name is not None)
-            if len(present) == len(_MONTHS):
-                return present
-            if len(present) >= _MOST_MONTHS:
-                absent = [name for name, month in zip(scheme, months, strict=True) if month is None]
-                problems.add(
-                    item="monthly normals",
-                    found="no column " + " nor ".join(f"'{name}'" for name in absent),
-                    expected="all twelve months",
-                    remedy="add it, or name the columns with columns = { normals = [...] }",
-                )
-                return ()
-    return (annual,) if annual else ()
-
-
 def _kept(
     table: DelimitedTable, id_column: str, exclude: Sequence[str], vector: VectorTable | None, problems: Problems
-) -> tuple[_Rows, npt.NDArray[np.object_]]:
+) -> tuple[GaugeRows, npt.NDArray[np.object_]]:
     """Return the rows without the excluded gauges, their ids checked."""
     all_ids = table.frame[id_column].tolist()
     for gauge in dict.fromkeys(exclude):
@@ -283,7 +215,7 @@ def _kept(
     kept = DelimitedTable(
         table.file, table.columns, table.frame.iloc[left].reset_index(drop=True), table.lines[left], table.decimal
     )
-    rows = _Rows(kept, vector is not None, tuple(kept.frame[id_column]), problems)
+    rows = GaugeRows(kept, vector is not None, tuple(kept.frame[id_column]), problems)
     if not len(left):
         problems.add(item="the gauges", found="none left after exclude", expected="at least one")
     first: dict[str, int] = {}
@@ -305,7 +237,7 @@ def _kept(
 
 
 def _columns_xy(
-    rows: _Rows, found: Mapping[str, str | None], mapped: Mapping[str, object], crs: str | None
+    rows: GaugeRows, found: Mapping[str, str | None], mapped: Mapping[str, object], crs: str | None
 ) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64], str, str, str]:
     """Return x, y, their coordinate system and their columns; empty where that is a problem."""
     nothing = np.empty(0)
@@ -338,7 +270,7 @@ def _columns_xy(
 
 
 def _points_xy(
-    rows: _Rows, geometry: npt.NDArray[np.object_], vector: VectorTable, crs: str | None
+    rows: GaugeRows, geometry: npt.NDArray[np.object_], vector: VectorTable, crs: str | None
 ) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64], str]:
     points = geometry.copy()
     # Some formats write every point as a collection of one.
@@ -355,7 +287,7 @@ def _points_xy(
 
 
 def _check_degrees(
-    rows: _Rows, x: npt.NDArray[np.float64], y: npt.NDArray[np.float64], x_column: str, y_column: str
+    rows: GaugeRows, x: npt.NDArray[np.float64], y: npt.NDArray[np.float64], x_column: str, y_column: str
 ) -> None:
     if len(x) != len(y):
         return
@@ -369,65 +301,3 @@ def _check_degrees(
             expected="degrees that a place can have",
             remedy=ground.degree_fault(float(x[row]), float(y[row])),
         )
-
-
-def _normals(rows: _Rows, columns: Sequence[str], factor: float) -> npt.NDArray[np.float64] | None:
-    if not columns:
-        return None
-    normals = np.empty((len(rows.ids), len(columns)))
-    for place, column in enumerate(columns):
-        normals[:, place] = rows.numbers(column)
-        for row in np.flatnonzero(normals[:, place] < 0):
-            rows.add(
-                int(row),
-                column=column,
-                found=f"a normal of {normals[row, place]:g}",
-                expected="0 or more, or a blank cell where it is not known",
-            )
-    return normals * factor
-
-
-def _service(
-    rows: _Rows, from_column: str | None, to_column: str | None
-) -> tuple[npt.NDArray[np.datetime64], npt.NDArray[np.datetime64]]:
-    opened = _times(rows, from_column, at_end=False)
-    closed = _times(rows, to_column, at_end=True)
-    for row in np.flatnonzero(closed <= opened):
-        rows.add(
-            int(row),
-            column=to_column or "",
-            found=f"in service to {closed[row]}, from {opened[row]}",
-            expected="an end after the start",
-        )
-    return opened, closed
-
-
-def _times(rows: _Rows, column: str | None, *, at_end: bool) -> npt.NDArray[np.datetime64]:
-    """Return the start, or the end, of the day, month or year that each cell names; NaT where it is blank."""
-    times = np.full(len(rows.ids), "NaT", dtype="datetime64[s]")
-    if column is None:
-        return times
-    for row, text in enumerate(rows.table.frame[column]):
-        if not text:
-            continue
-        named = _named_time(text)
-        if named is None:
-            rows.add(
-                row,
-                column=column,
-                found=f"'{text}'",
-                expected="a date such as 2031-06-30, or a date and time such as 2031-06-30T08:00",
-            )
-        else:
-            times[row] = named + 1 if at_end and len(text) <= len("2031-06-30") else named
-    return times
-
-
-def _named_time(text: str) -> np.datetime64 | None:
-    """Return the year, month, day, minute or second that a text names, in that unit."""
-    if not _TIME.fullmatch(text):
-        return None
-    try:
-        return np.datetime64(text)
-    except ValueError:
-        return None

@@ -11,11 +11,11 @@ import pandas as pd
 from basinrain.errors import Problems
 from basinrain.rainfall import Status
 from basinrain.reading.blocks import DEPTH_NAMES, FLAG_NAMES, GAUGE_NAMES, STEPS_NAMES, TIME_NAMES, Block
-from basinrain.reading.clocks import StampRules, read_stamps
 from basinrain.reading.columns import find_column, numbers
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules
 from basinrain.reading.intervals import Interval
+from basinrain.reading.stamps import StampRules, read_stamps
 
 __all__ = ["depth_column", "read_long", "report_blank", "required_columns"]
 
@@ -82,12 +82,12 @@ def read_long(
     firsts = _first_rows(time_codes, len(texts))
     for fault in faults:
         problems.add(
-            item="time",
+            item=f"column {needed['time']}",
             found=fault.found,
             expected=fault.expected,
             remedy=fault.remedy,
             line=int(table.lines[firsts[fault.row]]),
-            column=needed["time"],
+            time=texts[fault.row],
         )
     gauge_codes, names = pd.factorize(table.frame[needed["gauge"]])
     gauges = tuple(str(name) for name in names)
@@ -143,7 +143,7 @@ def required_columns(
 def report_blank(table: DelimitedTable, column: str, what: str, problems: Problems) -> None:
     """Report the rows whose ``column``, which names the ``what``, is blank."""
     for row in np.flatnonzero((table.frame[column] == "").to_numpy()):
-        problems.add(item=what, found="a blank cell", expected=f"the {what}", line=int(table.lines[row]), column=column)
+        problems.add(item=f"column {column}", found="a blank cell", expected=f"the {what}", line=int(table.lines[row]))
 
 
 def depth_column(
@@ -179,11 +179,10 @@ def _steps(table: DelimitedTable, column: str | None, problems: Problems) -> npt
     wrong = bad | ~((values >= 1) & (values <= _LONGEST_SPAN) & (values % 1 == 0))
     for row in np.flatnonzero(wrong):
         problems.add(
-            item="steps",
+            item=f"column {column}",
             found=f"'{table.frame[column].iloc[row]}'",
             expected=f"a whole number of steps, 1 to {_LONGEST_SPAN}",
             line=int(table.lines[row]),
-            column=column,
         )
     return np.where(wrong, 1, values).astype(np.int64)
 

@@ -69,8 +69,8 @@ def check_membership(records: Sequence[RainRecord], network: GaugeNetwork) -> No
         ...
     basinrain.errors.DataError: gauge R1: found rain values, but no such gauge in the network; expected a gauge with a \
 position; add it to the gauges, or correct its id in the rainfall file; did you mean 'R01'?
-    gauge R01: found no rain values in any source; expected a column or rows of its own, if only of missing values; add \
-them, or exclude the gauge; did you mean 'R1'?
+    gauge R01: found no rain values in any source; expected a column or rows of its own, if only of missing values; \
+add them, or exclude the gauge; did you mean 'R1'?
     """
     problems = Problems()
     rain = dict.fromkeys(gauge for record in records for gauge in record.gauges)

@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Mapping, Sequence
-from contextlib import contextmanager
+from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Final, Literal
 
@@ -12,11 +11,13 @@ from basinrain.errors import JobError, Problem, Problems, ReadError, nearest_nam
 from basinrain.rainfall import RainRecord
 from basinrain.reading.axis import join_blocks
 from basinrain.reading.blocks import Block, problems_of
-from basinrain.reading.clocks import StampRules, parse_zone
+from basinrain.reading.clocks import parse_zone
 from basinrain.reading.delimited import DelimitedTable, read_delimited
 from basinrain.reading.depths import DepthRules, depth_rules
 from basinrain.reading.intervals import FORMS, Interval, parse_interval
 from basinrain.reading.long import read_long
+from basinrain.reading.options import option_problems
+from basinrain.reading.stamps import StampRules
 from basinrain.reading.totals import read_totals
 from basinrain.reading.wide import read_wide
 
@@ -119,18 +120,20 @@ def read_rainfall(
            [3, 7]], dtype=uint8), '2031-05-04T07:00:00')
     """
     named = columns or {}
-    problems = Problems()
+    # A job may have many sources; their first file tells them apart.
+    first = str(files[0]) if files else ""
+    problems = Problems(file=first)
     _check_choices(layout=layout, stamp=stamp, date_means=date_means, gaps=gaps, columns=named, problems=problems)
     if not files:
         problems.add(item="files", found="none", expected="at least one file")
     step, hour = None, None
-    with _gathered(problems):
+    with option_problems(problems, file=first):
         step = _interval(interval, layout)
-    with _gathered(problems):
+    with option_problems(problems, file=first):
         hour = _read_hour(read_hour, date_means, step)
-    with _gathered(problems):
+    with option_problems(problems, file=first):
         _ = None if timezone is None else parse_zone(timezone)
-    with _gathered(problems):
+    with option_problems(problems, file=first):
         depths = depth_rules(
             unit=unit, interval=step, missing=missing, trace=trace, flags=flags or {}, accumulated=accumulated
         )
@@ -170,19 +173,13 @@ def _read_blocks(
     blocks = []
     while tables:
         table = tables.pop(0)  # let go of the text as soon as it is numbers
-        with problems_of(table.file, problems) as here:
+        options = Problems()
+        with option_problems(options, file=table.file), problems_of(table.file, problems) as here:
             block, zone = read(table, depths, stamps, columns=columns, zone=zone, problems=here)
             if block is not None:
                 blocks.append(block)
+        options.raise_as(JobError)
     return blocks, zone or ""
-
-
-@contextmanager
-def _gathered(problems: Problems) -> Iterator[None]:
-    try:
-        yield
-    except JobError as error:
-        problems.extend(error)
 
 
 def _check_choices(

@@ -10,10 +10,11 @@ import shapely
 
 from basinrain import ground
 from basinrain.basins import Basins
-from basinrain.errors import DataError, JobError, Problem
+from basinrain.errors import DataError, JobError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.ground import Plane
 from basinrain.notes import Note
+from basinrain.reading.options import option_problems
 
 __all__ = ["settle"]
 
@@ -96,7 +97,10 @@ def settle(
 
 
 def _check_plane(plane: str, *, local: bool) -> None:
-    ground.parse_crs(plane)
+    problems = Problems()
+    with option_problems(problems, item="[job] plane"):
+        ground.parse_crs(plane)
+    problems.raise_as(JobError)
     fault = ""
     if (plane == ground.LOCAL) != local:
         fault = "for local coordinates" if local else "for coordinates on the map"

@@ -123,7 +123,7 @@ def settled_crs(table: VectorTable, crs: str | None, problems: Problems) -> str:
     ----------
     table
     crs
-        What the user says; it wins over what the file says.
+        What the user says, a system that is known; it wins over what the file says.
     problems
         Takes the problem of a file without a coordinate system.
 
@@ -131,14 +131,9 @@ def settled_crs(table: VectorTable, crs: str | None, problems: Problems) -> str:
     -------
     str
         ``""`` where there is none.
-
-    Raises
-    ------
-    JobError
-        ``crs`` is not known.
     """
     if crs is not None:
-        return ground.parse_crs(crs)
+        return crs
     if table.crs is None:
         add_no_crs(problems)
         return ""

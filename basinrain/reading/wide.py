@@ -9,10 +9,10 @@ import numpy.typing as npt
 
 from basinrain.errors import Problems
 from basinrain.reading.blocks import TIME_NAMES, Block
-from basinrain.reading.clocks import StampRules, read_stamps
 from basinrain.reading.columns import find_column
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules
+from basinrain.reading.stamps import StampRules, read_stamps
 
 __all__ = ["read_wide"]
 
@@ -73,12 +73,12 @@ def read_wide(
     ends, zone, faults = read_stamps(cells, stamps, zone=zone)
     for fault in faults:
         problems.add(
-            item="time",
+            item=f"column {time}",
             found=fault.found,
             expected=fault.expected,
             remedy=fault.remedy,
             line=int(table.lines[fault.row]),
-            column=time,
+            time=cells[fault.row],
         )
     _check_order(ends, cells, table, time, problems)
     depth = np.empty((len(cells), len(gauges)))
@@ -121,11 +121,10 @@ def _check_order(
         else:
             found, expected = f"'{cells[row]}' after a later time", "times in order"
         problems.add(
-            item="time",
+            item=f"column {time}",
             found=found,
             expected=expected,
             remedy="remove one of the rows" if twice[k] else "sort the rows by time",
             line=int(table.lines[row]),
-            column=time,
             time=cells[row],
         )

@@ -9,6 +9,7 @@ from drawn import KM, basins_of
 from hypothesis import given, settings
 from strategies import any_basins
 
+from basinrain.averaging import grid as grids
 from basinrain.averaging import make_grid
 from basinrain.basins import Basins
 from basinrain.errors import JobError, MethodError
@@ -53,6 +54,13 @@ def test_a_cell_larger_than_everything() -> None:
     assert grid.shares.toarray() == pytest.approx(1e-4)
 
 
+def test_the_median_area_leaves_the_union_out() -> None:
+    """Of 1, 2 and 10 km² the median is 2, with and without their union of 13; a basin alone is its own."""
+    three = basins_of(KM, a=shapely.box(0, 0, 1, 1), b=shapely.box(1, 0, 3, 1), c=shapely.box(3, 0, 13, 1))
+    assert [grids.median_area(b) for b in (three, three.with_union())] == [2e6, 2e6]
+    assert grids.median_area(basins_of(KM, a=shapely.box(0, 0, 1, 1))) == 1e6
+
+
 def test_no_length_and_too_many_cells_are_refused() -> None:
     """A cell must be a length above 0; over 2,000,000 cells are refused before or after they are counted."""
     square = basins_of(KM, square=shapely.box(0, 0, 10, 10))
@@ -64,5 +72,5 @@ def test_no_length_and_too_many_cells_are_refused() -> None:
     ):
         make_grid(square, 2.0)
     two = basins_of(KM, one=shapely.box(0, 0, 10, 10), other=shapely.box(10, 0, 20, 10))
-    with pytest.raises(MethodError, match=r"idw grid of 8 m: found 3,12\d,\d\d\d cells; .*; give a larger cell"):
+    with pytest.raises(MethodError, match=r"idw grid of 8 m: found over 2,000,000 cells; .*; give a larger cell"):
         make_grid(two, 8.0)

@@ -55,11 +55,15 @@ def test_a_boundary_cell_counts_by_its_share() -> None:
 
 
 def test_a_centre_on_a_gauge_takes_it() -> None:
-    """A gauge on the centre of the only cell has the whole weight, also after a move that rounds its place."""
+    """A gauge on the centre of the only cell has the whole weight, also after a move that rounds its place.
+
+    With a small power even a distance of rounding size would leave weight to the other gauge.
+    """
     for shift in (0.0, 1234567.1):
         cell = basins_of(cell=shapely.box(shift, shift, shift + 100, shift + 100))
-        weights = idw_weights(gauges_at((shift + 50, shift + 50), (shift + 51, shift + 50)), cell, cell=100.0).weights
-        np.testing.assert_allclose(weights, [[1.0, 0.0]], atol=1e-12)
+        network = gauges_at((shift + 50 + 1e-9, shift + 50), (shift + 51, shift + 50))
+        for power in (0.25, 1.0, 2.0):
+            assert idw_weights(network, cell, cell=100.0, power=power).weights.tolist() == [[1.0, 0.0]]
 
 
 def test_of_equally_near_gauges_the_first_by_id_are_taken() -> None:
@@ -172,6 +176,50 @@ def test_the_cell_chosen_is_the_largest_that_has_settled() -> None:
     assert chosen.settled
 
 
+def test_a_size_that_settles_by_accident_is_passed_over(monkeypatch: pytest.MonkeyPatch) -> None:
+    """With the nearest gauge alone and the border at 8.8 km, cells of 1 km and of 500 m both put it at 9 km.
+
+    Halving 500 m moves it to 8.75 km; 200 and 100 m put it at 8.8 km. Where sizes under 500 m may not be laid, nothing
+    has settled; where those under 1 km may not, the 1 km that did is all there is.
+    """
+    network = gauges_at((7.8, 5), (9.8, 5), unit=KM)
+    basins = basins_of(KM, square=SQUARE)
+    by_size = [choose_grid(network, basins, max_gauges=1, cell=size).settled for size in (1000.0, 500.0, 200.0, 100.0)]
+    assert by_size == [True, False, True, True]
+    chosen = choose_grid(network, basins, max_gauges=1)
+    assert (chosen.cell, chosen.settled) == (200.0, True)
+    np.testing.assert_allclose(idw_weights(network, basins, max_gauges=1).weights, [[0.88, 0.12]], rtol=1e-12)
+    monkeypatch.setattr(grid, "MOST_CELLS", 1000)
+    with pytest.raises(MethodError, match=r"idw grid of 200 m: found at least 2,500 cells; .* give cell"):
+        choose_grid(network, basins, max_gauges=1)
+    monkeypatch.setattr(grid, "MOST_CELLS", 399)
+    assert choose_grid(network, basins, max_gauges=1).cell == 1000.0
+
+
+def test_the_median_basin_has_a_hundred_cells() -> None:
+    """One gauge has all the weight at any size: 4, 25 and 900 km² get cells of 500 m, 100 in 25 km², union or not."""
+    steps = {"small": shapely.box(0, 0, 2, 2), "middle": shapely.box(2, 0, 7, 5), "large": shapely.box(7, 0, 37, 30)}
+    for basins in (basins_of(KM, **steps), basins_of(KM, **steps).with_union()):
+        chosen = choose_grid(gauges_at((1, 1), unit=KM), basins)
+        assert chosen.cell == 500.0
+        assert chosen.shares.toarray()[1].sum() == pytest.approx(100)
+    a_little_less = basins_of(KM, basin=shapely.box(0, 0, 4.99, 5))
+    assert choose_grid(gauges_at((1, 1), unit=KM), a_little_less).cell == 200.0
+
+
+def test_the_cell_chosen_follows_the_reach_too() -> None:
+    """Gauges reach 4 km, 75 % of the square: no coarse cell that finds all centres in reach passes for settled."""
+    basins = basins_of(KM, square=SQUARE)
+    with pytest.raises(MethodError, match=r"found a gauge within 4000 m of (74\.9\d|75\.0\d) % of its area"):
+        idw_weights(IN_A_ROW, basins, radius=4000.0)
+    reach = shapely.union_all(shapely.buffer(shapely.points([[2.5, 5], [7.5, 5], [11, 5]]), 4.0, quad_segs=64))
+    table = idw_weights(IN_A_ROW, basins, radius=4000.0, allow_uncovered=True)
+    assert table.covered == pytest.approx([reach.intersection(SQUARE).area / 100], abs=1e-3)
+    chosen = choose_grid(IN_A_ROW, basins, radius=4000.0, allow_uncovered=True)
+    half = idw_weights(IN_A_ROW, basins, radius=4000.0, allow_uncovered=True, cell=chosen.cell / 2)
+    assert chosen.halving_change[0] >= abs(float(half.covered[0] - table.covered[0])) > 0
+
+
 def test_small_basins_do_not_hold_the_cell_down_and_have_their_own_figure() -> None:
     """A basin of 0.0001 of the median's area, near a gauge, has its own figure and is left out of the choice."""
     network = gauges_at((2.5, 5), (7.5, 5), (7.9, 5), (11, 5), unit=KM)
@@ -228,6 +276,17 @@ def test_memory_does_not_grow_with_cells_times_gauges() -> None:
     tracemalloc.stop()
     assert laid.n_cells * 300 * 8 > 475e6
     assert peak < 96e6
+
+
+@settings(max_examples=40, deadline=None)
+@given(case=cases(), block=st.sampled_from([7, 50, 500_000]))
+def test_no_more_than_all_of_a_basin_is_covered(case: Case, block: int) -> None:
+    """Where every cell has a gauge the covered share is 1 and never a hair more, however the sum is rounded."""
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(idw, "_BLOCK", block)
+        covered = idw_weights(case.network, case.basins, cell=731.0).covered
+    assert covered.max() <= 1
+    np.testing.assert_allclose(covered, 1, rtol=1e-12)
 
 
 def test_one_grid_serves_any_present_gauges() -> None:

@@ -3,14 +3,12 @@
 import re
 from pathlib import Path
 
-import hypothesis.strategies as st
 import numpy as np
-import pandas as pd
 import pytest
-from hypothesis import given
 
-from basinrain.errors import Problems, ReadError
-from basinrain.reading.delimited import DelimitedTable, find_column, numbers, read_bytes, read_delimited
+from basinrain.errors import ReadError
+from basinrain.reading.columns import numbers
+from basinrain.reading.delimited import DelimitedTable, read_delimited
 
 
 def written(folder: Path, content: str | bytes, name: str = "table.csv") -> Path:
@@ -54,15 +52,47 @@ def test_rows_know_their_line_in_the_file(tmp_path: Path) -> None:
 
 def test_rows_know_their_line_behind_a_cell_of_two_lines(tmp_path: Path) -> None:
     """A quoted cell may run over a line end, and the rows behind it keep their line."""
-    table = read_delimited(written(tmp_path, 'id,note\nA,"first\n\nsecond"\n\nB,plain\nC\n'))
+    table = read_delimited(written(tmp_path, 'id,note\nA,"first\n\nsecond"\n\nB,plain\nC,\n'))
     assert cells(table) == [["A", "first\n\nsecond"], ["B", "plain"], ["C", ""]]
     assert table.lines.tolist() == [2, 6, 7]
 
 
-def test_cells_missing_at_the_end_of_a_row_are_empty(tmp_path: Path) -> None:
-    """A short row has nothing in the columns it does not reach, be it the first or a later one."""
-    table = read_delimited(written(tmp_path, "id,x,y\nA\nB,1,2\nC,3\n"))
-    assert cells(table) == [["A", "", ""], ["B", "1", "2"], ["C", "3", ""]]
+@pytest.mark.parametrize(
+    ("content", "lines"),
+    [
+        # Without the refusal, 1.0 of gauge D would be read as that of C.
+        ("t,A,B,C,D\n1,.1,.2,.3,.4\n2,.1,.2,1.0\n3,,,,\n4\n", [(3, 4), (5, 1)]),
+        ("t,A,B,C,D\n1,.1,.2,.3\n", [(2, 4)]),
+        ("t;A;B;C;D\r\n1;0,1;0,2;0,3;0,4\r\n\r\n2;0,1;0,2;0,3\r\n", [(4, 4)]),
+        # A comma inside quotation marks separates nothing, with a space before them or without.
+        ('t,A,B,C,D\n1,"a,b",2,3\n2, "a,b",2,3\n3, "a,b",2,3,4\n', [(2, 4), (3, 4)]),
+        ('t,A,B,C,D\n1,"a\nb",2,3,4\n2,1,2,3\n3,"a\nb",2,3\n', [(4, 4), (5, 4)]),
+        # Names in the header count, not its trailing separators.
+        ("t,A,B,C,D,,\n1,2,3,4,5,,\n2,3,4,5,6\n3,4,5,6\n", [(4, 4)]),
+    ],
+)
+def test_short_rows_are_refused(tmp_path: Path, content: str, lines: list[tuple[int, int]]) -> None:
+    """A row that lost a cell is never filled up: nothing says which gauge's value it lacks."""
+    assert refusal(written(tmp_path, content)).splitlines() == [
+        f"table.csv:{line}: a row: found {n} cell{'' if n == 1 else 's'}; expected 5, as the header has; give every "
+        "cell, an empty one where there is no value"
+        for line, n in lines
+    ]
+
+
+def test_empty_cells_at_the_end_of_a_row_are_cells(tmp_path: Path) -> None:
+    """Nothing after the last separators is an empty cell; a row of empty cells only is none, however many it has."""
+    table = read_delimited(written(tmp_path, "id,x,y\nA,,\n,\nB,1,\n,,,\n"))
+    assert cells(table) == [["A", "", ""], ["B", "1", ""]]
+    assert table.lines.tolist() == [2, 4]
+
+
+def test_a_file_of_short_rows_is_counted_not_listed(tmp_path: Path) -> None:
+    """Fifty rows are listed, the rest is a number."""
+    path = written(tmp_path, "id,x,y\n" + "A,1\n" * 70)
+    with pytest.raises(ReadError, match=r"\n20 more problems: found but not listed$") as caught:
+        read_delimited(path)
+    assert [problem.line for problem in caught.value.problems] == list(range(2, 52))
 
 
 def test_surrounding_spaces_are_not_content(tmp_path: Path) -> None:
@@ -140,16 +170,18 @@ def test_the_decimal_sign_is_one_for_the_file(tmp_path: Path, content: str, deci
             "table.csv:1: the header: found no name over column 2, which has cells; expected a name for every column",
         ),
         (
-            b"id;x\nA;1;2\nB;1\nC;1;;3\n",
+            b"id;x\nA;1;2\nB\nC;1;;3\n",
             (
-                "table.csv:2: a row: found 3 cells; expected at most 2, as the header has\n"
-                "table.csv:4: a row: found 4 cells; expected at most 2, as the header has"
+                "table.csv:2: a row: found 3 cells; expected 2, as the header has\n"
+                "table.csv:3: a row: found 1 cell; expected 2, as the header has; give every cell, an empty one where "
+                "there is no value\n"
+                "table.csv:4: a row: found 4 cells; expected 2, as the header has"
             ),
         ),
         (
             b"id,x\nA,1,5\n",
             (
-                "table.csv:2: a row: found 3 cells; expected at most 2, as the header has; "
+                "table.csv:2: a row: found 3 cells; expected 2, as the header has; "
                 "separate cells by semicolons where the decimal sign is a comma, or quote cells with a comma"
             ),
         ),
@@ -198,31 +230,6 @@ def test_reading_leaves_the_file_alone(tmp_path: Path) -> None:
     assert (path.stat().st_mtime_ns, path.read_bytes()) == before
 
 
-def test_read_bytes_reads_no_more_than_asked(tmp_path: Path) -> None:
-    """A size bounds what is read; -1 is all."""
-    path = written(tmp_path, "abcdef")
-    assert (read_bytes(path, size=2), read_bytes(path)) == (b"ab", b"abcdef")
-
-
-@given(st.lists(st.floats(allow_nan=False, allow_infinity=False), min_size=1))
-def test_numbers_are_read_to_the_last_bit(values: list[float]) -> None:
-    """A number's shortest text gives that number back."""
-    frame = pd.DataFrame({"x": [repr(value) for value in values]}, dtype=str)
-    got, bad = numbers(DelimitedTable("t.csv", ("x",), frame, np.arange(len(values)), "."), "x")
-    np.testing.assert_array_equal(got, values)
-    assert not bad.any()
-
-
-@pytest.mark.parametrize(
-    "text", ["inf", "-Infinity", "nan", "NaN", "1_000", "0x10", "1,000", "1e999", "T", "1 2", "٣", "--1"]
-)
-def test_odd_texts_are_no_numbers(text: str) -> None:
-    """What another reader might take for a number is reported, not read."""
-    got, bad = numbers(DelimitedTable("t.csv", ("x",), pd.DataFrame({"x": [text, ""]}), np.arange(2), "."), "x")
-    assert np.isnan(got).all()
-    assert bad.tolist() == [True, False]
-
-
 def test_a_long_record_keeps_rows_and_lines_together(tmp_path: Path) -> None:
     """Row by row, the fast reader agrees with splitting the lines."""
     rng = np.random.default_rng(3)
@@ -233,33 +240,3 @@ def test_a_long_record_keeps_rows_and_lines_together(tmp_path: Path) -> None:
     assert cells(table) == [row.strip().split(",") for row in rows]
     lines = ("n,a,b\n" + "\n".join(rows)).split("\n")
     assert [lines[line - 1].split(",")[0] for line in table.lines] == table.frame["n"].tolist()
-
-
-@pytest.mark.parametrize(
-    ("columns", "mapped", "column"),
-    [
-        (["Gauge ID", "x"], None, "Gauge ID"),
-        (["station", "gauge.id"], None, "gauge.id"),
-        (["STATION", "x"], None, "STATION"),
-        (["Id", "gauge_id"], "Id", "Id"),
-        (["Id", "gauge_id"], "ID", "Id"),
-        (["id", "ID"], "ID", "ID"),
-        (["name"], None, None),
-    ],
-)
-def test_columns_are_found_by_trade_name_or_mapping(columns: list[str], mapped: str | None, column: str | None) -> None:
-    """The mapped column wins, then the first trade name in their order; capitals and word breaks do not matter."""
-    problems = Problems()
-    assert find_column(columns, ["gauge_id", "station"], mapped=mapped, key="id", problems=problems) == column
-    assert len(problems) == 0
-
-
-def test_a_mapped_column_that_is_not_there_is_never_replaced() -> None:
-    """A slip in the mapping is a problem, though a trade name would fit."""
-    problems = Problems(file="gauges.csv")
-    assert find_column(["id", "gauge"], ["id"], mapped="gage", key="id", problems=problems) is None
-    with pytest.raises(
-        ReadError,
-        match=r"^gauges.csv: columns.id: found no column 'gage'; expected a column of the file; did you mean 'gauge'\?",
-    ):
-        problems.raise_as(ReadError)

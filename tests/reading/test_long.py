@@ -76,10 +76,10 @@ def test_problems_together(tmp_path: Path) -> None:
         read_rainfall([path], layout="long", unit="mm", interval="1h")
     assert str(caught.value).splitlines() == [
         (
-            f"{path}:3: column time: time: found 'noon'; expected a time such as 2031-05-04 08:00, "
+            f"{path}:3: column time: found 'noon'; expected a time such as 2031-05-04 08:00, "
             "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp"
         ),
-        f"{path}:2: column gauge: gauge: found a blank cell; expected the gauge",
+        f"{path}:2: column gauge: found a blank cell; expected the gauge",
         (
             f"{path}:5: column depth: gauge A: found 'x'; expected a depth of 0 or more; correct the cell, or declare "
             "it in missing"
@@ -88,8 +88,8 @@ def test_problems_together(tmp_path: Path) -> None:
             f"{path}:6: column depth: gauge A: found mark 'Z'; expected a declared mark (T); declare what it means in "
             "flags"
         ),
-        f"{path}:7: column steps: steps: found '0'; expected a whole number of steps, 1 to 366",
-        f"{path}:8: column steps: steps: found '1.5'; expected a whole number of steps, 1 to 366",
+        f"{path}:7: column steps: found '0'; expected a whole number of steps, 1 to 366",
+        f"{path}:8: column steps: found '1.5'; expected a whole number of steps, 1 to 366",
     ]
 
 

@@ -22,9 +22,8 @@ def network(*ids: str) -> GaugeNetwork:
 def rain(*gauges: str, zone: str = "") -> RainRecord:
     """Return 1 mm of one hour at every gauge."""
     ends = np.array(["2031-05-04T01"], dtype="datetime64[s]")
-    return RainRecord.from_depths(
-        gauges, ends - np.timedelta64(3600, "s"), ends, np.ones((1, len(gauges))), step="1h", zone=zone
-    )
+    starts = np.array(["2031-05-04T00"], dtype="datetime64[s]")
+    return RainRecord.from_depths(gauges, starts, ends, np.ones((1, len(gauges))), step="1h", zone=zone)
 
 
 def advice(rain_gauges: tuple[str, ...], gauges: tuple[str, ...]) -> dict[str, str]:
@@ -40,8 +39,10 @@ def advice(rain_gauges: tuple[str, ...], gauges: tuple[str, ...]) -> dict[str, s
         ("wide", "time,A,B,C\n2031-05-04 01:00,1,7,3\n2031-05-04 02:00,2,8,4\n"),
         (
             "long",
-            "gauge,time,depth\nB,2031-05-04 01:00,7\nB,2031-05-04 02:00,8\nA,2031-05-04 01:00,1\n"
-            "A,2031-05-04 02:00,2\nC,2031-05-04 01:00,3\nC,2031-05-04 02:00,4\n",
+            (
+                "gauge,time,depth\nB,2031-05-04 01:00,7\nB,2031-05-04 02:00,8\nA,2031-05-04 01:00,1\n"
+                "A,2031-05-04 02:00,2\nC,2031-05-04 01:00,3\nC,2031-05-04 02:00,4\n"
+            ),
         ),
     ],
 )
@@ -91,8 +92,6 @@ def test_all_gauges_excluded_from_the_rain() -> None:
         (("Alder",), ("Zinc",), {"Alder": "", "Zinc": ""}),
     ],
 )
-def test_the_gauge_that_was_meant(
-    rain_gauges: tuple[str, ...], gauges: tuple[str, ...], meant: dict[str, str]
-) -> None:
+def test_the_gauge_that_was_meant(rain_gauges: tuple[str, ...], gauges: tuple[str, ...], meant: dict[str, str]) -> None:
     """Advice goes first to a gauge without a partner, and to one that differs in capitals or leading zeros only."""
     assert advice(rain_gauges, gauges) == meant

@@ -82,7 +82,7 @@ def test_local_times_refused_in_a_file(tmp_path: Path) -> None:
     with pytest.raises(ReadError) as caught:
         read(tmp_path, text, interval="30min", timezone="Europe/Vienna")
     assert [line.split("rain.csv:")[1] for line in str(caught.value).splitlines()] == [
-        f"{line}: column time: time: found '2031-10-26 {hour}', which the clocks of Europe/Vienna show twice; "
+        f"{line}: column time: found '2031-10-26 {hour}', which the clocks of Europe/Vienna show twice; "
         "expected a time that exists once; give the stamps in standard time, with timezone = '+01:00'"
         for line, hour in ((3, "02:00"), (4, "02:30"))
     ]
@@ -111,32 +111,56 @@ def test_options_that_cannot_be() -> None:
 @pytest.mark.parametrize(
     ("options", "message"),
     [
-        ({"unit": ""}, r"^depth unit: found ''; expected one of: mm, "),
+        ({"unit": ""}, r"depth unit: found ''; expected one of: mm, "),
         (
             {"interval": None},
-            r"^interval: found none; expected a number with min, h or d, or 1mo.*; declare the files' step$",
+            r"interval: found none; expected a number with min, h or d, or 1mo.*; declare the files' step$",
         ),
-        ({"interval": "hour"}, r"^interval: found 'hour'; expected a number"),
-        ({"read_hour": "08:00"}, r"^date_means: found none beside read_hour; expected 'ends' .* or 'starts'; declare"),
-        ({"read_hour": 8, "date_means": "calendar-day"}, r"^date_means: found 'calendar-day' beside read_hour; "),
-        ({"date_means": "ends"}, r"^read_hour: found none beside date_means = 'ends'; expected the hour"),
+        ({"interval": "hour"}, r"interval: found 'hour'; expected a number"),
+        (
+            {"read_hour": "08:00"},
+            r"date_means: found none beside read_hour; expected 'ends' .* or 'starts'; declare",
+        ),
+        (
+            {"read_hour": 8, "date_means": "calendar-day"},
+            r"date_means: found 'calendar-day' beside read_hour; ",
+        ),
+        ({"date_means": "ends"}, r"read_hour: found none beside date_means = 'ends'; expected the hour"),
         (
             {"read_hour": "8 am", "date_means": "ends", "interval": "1d"},
-            r"^read_hour: found '8 am'; expected a time of day",
+            r"read_hour: found '8 am'; expected a time of day",
         ),
-        ({"read_hour": 24, "date_means": "ends", "interval": "1d"}, r"^read_hour: found '24'; expected a time of day"),
+        (
+            {"read_hour": 24, "date_means": "ends", "interval": "1d"},
+            r"read_hour: found '24'; expected a time of day",
+        ),
         (
             {"read_hour": 8, "date_means": "ends"},
-            r"^read_hour: found it beside the interval 1h; expected it with daily",
+            r"read_hour: found it beside the interval 1h; expected it with daily",
         ),
-        ({"columns": {"depth": "x"}}, r"^columns: found 'depth'; expected for layout 'wide' one of: time; "),
-        ({"layout": "long", "columns": {"gage": "x"}}, r"^columns: found 'gage'; .*; did you mean 'gauge'\?$"),
+        ({"columns": {"depth": "x"}}, r"columns: found 'depth'; expected for layout 'wide' one of: time; "),
+        (
+            {"layout": "long", "columns": {"gage": "x"}},
+            r"columns: found 'gage'; .*; did you mean 'gauge'\?$",
+        ),
     ],
 )
 def test_an_option_that_cannot_be(tmp_path: Path, options: dict[str, Any], message: str) -> None:
     """Each faulty option says what was found, what is expected and what to do."""
-    with pytest.raises(JobError, match=message):
+    with pytest.raises(JobError, match=rf"rain\.csv: {message}"):
         read(tmp_path, "time,A\n2031-05-04 01:00,1\n", **options)
+
+
+def test_options_name_the_first_file_of_their_source(tmp_path: Path) -> None:
+    """Of several sources, the faulty one is told by its first file; so is a format found out while reading."""
+    files = [written(tmp_path, "time,A\n2031-05-04 01:00,1\n", name) for name in ("one.csv", "two.csv")]
+    options: dict[str, Any] = {"layout": "wide", "unit": "mm"}
+    with pytest.raises(JobError) as caught:
+        read_rainfall(files, interval="hour", timezone="Nowhere/At_all", read_hour=8, **options)
+    assert {problem.file for problem in caught.value.problems} == {str(files[0])}
+    assert [problem.item for problem in caught.value.problems] == ["interval", "date_means", "timezone"]
+    with pytest.raises(JobError, match=r"one\.csv: time_format: found '%Q'; expected a strptime format"):
+        read_rainfall(files, interval="1h", time_format="%Q", **options)
 
 
 def test_files_that_cannot_be_read(tmp_path: Path) -> None:

@@ -134,8 +134,8 @@ def test_a_plane_that_distorts_is_warned_of() -> None:
             ),
         ),
         ("local", "[job] plane: found 'local', for coordinates on the map; expected a projected system in metres; "),
-        ("EPSG:nothing", "coordinate reference system: found 'EPSG:nothing'; expected 'local', or a map's system: "),
-        ("EPSG:4978", "coordinate reference system: found 'EPSG:4978'; expected 'local', or a map's system: "),
+        ("EPSG:nothing", "[job] plane: found 'EPSG:nothing'; expected 'local', or a map's system: "),
+        ("EPSG:4978", "[job] plane: found 'EPSG:4978'; expected 'local', or a map's system: "),
     ],
 )
 def test_planes_that_are_none(plane: str, message: str) -> None:

@@ -53,7 +53,7 @@ def test_problems_of_a_file_together(tmp_path: Path) -> None:
         read_rainfall([path], layout="wide", unit="mm", interval="1h")
     assert str(caught.value).splitlines() == [
         (
-            f"{path}:4: column time: time: found 'noon'; expected a time such as 2031-05-04 08:00, "
+            f"{path}:4: column time: found 'noon'; expected a time such as 2031-05-04 08:00, "
             "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp"
         ),
         (
@@ -87,11 +87,11 @@ def test_times_twice_or_out_of_order(tmp_path: Path) -> None:
         read_rainfall([path], layout="wide", unit="mm", interval="1h", gaps="missing")
     assert str(caught.value).splitlines() == [
         (
-            f"{path}:5: column time: time: found '2031-05-04 03:00' after a later time; expected times in order; sort "
+            f"{path}:5: column time: found '2031-05-04 03:00' after a later time; expected times in order; sort "
             "the rows by time"
         ),
         (
-            f"{path}:6: column time: time: found '2031-05-04 02:00', as in line 3; expected each time once; remove one "
+            f"{path}:6: column time: found '2031-05-04 02:00', as in line 3; expected each time once; remove one "
             "of the rows"
         ),
     ]

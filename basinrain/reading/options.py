@@ -1,0 +1,42 @@
+"""Problems of options, with the file or files that the options are for."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import replace
+
+from basinrain.errors import JobError, Problems
+
+__all__ = ["option_problems"]
+
+
+@contextmanager
+def option_problems(problems: Problems, *, file: str = "", item: str = "") -> Iterator[None]:
+    """Collect what is wrong with an option instead of raising it.
+
+    Parameters
+    ----------
+    problems
+        Takes the problems of a JobError.
+    file, item
+        The file that the option is for, and what messages call the option, where the problem itself does not say or
+        says it too generally.
+
+    Examples
+    --------
+    >>> from basinrain.units import length_factor
+    >>> problems = Problems()
+    >>> with option_problems(problems, file="gauges.csv", item="[gauges] length_unit"):
+    ...     length_factor("us_ft")
+    >>> problems.raise_as(JobError)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.JobError: gauges.csv: [gauges] length_unit: found 'us_ft'; expected one of: m, km, ft, us-ft, mi; \
+did you mean 'us-ft'?
+    """
+    try:
+        yield
+    except JobError as error:
+        told = [replace(problem, file=problem.file or file, item=item or problem.item) for problem in error.problems]
+        problems.extend(JobError(told, unlisted=error.unlisted))
