@@ -30,6 +30,9 @@ _BLOCK: Final = 500_000
 _FEWEST_CELLS: Final = 100
 """Cells that the median basin has at least, where the size is chosen here."""
 
+_OTHER: Final = 0.4
+"""Another size, as a share of the cell, that must give the same weights; its lines fall elsewhere than the halves'."""
+
 _ON_GAUGE: Final = 1e-6
 """A centre this close to a gauge, as a share of the cell, is on it."""
 
@@ -225,10 +228,11 @@ def choose_grid(
     """Return the grid of a run, its cell size chosen by halving unless it is given.
 
     A size has settled when going to half of it changes the weights and the covered share of every basin of at least 1 %
-    of the median basin's area by at most 0.001, with all gauges of the network present. The change of weights is half
-    the sum of absolute changes: what moves from some gauges to others. The cell chosen is the largest of the series 1,
-    2, 5 x 10^k with at least 100 cells in the median basin that has settled together with the next smaller size, since
-    one alone may do so by accident; where the next would have over 2,000,000 cells, one alone is enough.
+    of the median basin's area by at most 0.001, with all gauges of the network present, and going to two fifths of it
+    does not change them by more either, since two grids alone may agree by accident (left out where those would be over
+    2,000,000 cells). The change of weights is half the sum of absolute changes: what moves from some gauges to others.
+    The cell chosen is the largest of the series 1, 2, 5 x 10^k that has settled, with at least 100 cells in the median
+    basin.
 
     Parameters
     ----------
@@ -287,25 +291,19 @@ class _Weighed(NamedTuple):
 
 
 def _settled(basins: Basins, weigh: Callable[[Grid], _Weighed]) -> _Weighed:
-    """Return the largest size that has settled together with the next; see :func:`choose_grid`."""
-    before: _Weighed | None = None
-    half: _Weighed | None = None
+    """Return the largest size that has settled; see :func:`choose_grid`."""
     for size in _sizes(basins):
-        if half is not None and half.grid.cell == size and half.grid.n_cells <= grids.MOST_CELLS:
-            found = half
-        else:
-            grid = grids.lay_within_limit(basins, size)
-            if grid is None:
-                break
-            found = weigh(grid)
-        half = weigh(grids.lay(basins, size / 2))
-        found = found.measured(half)
-        if before is not None and found.grid.settled:
-            return before
-        before = found if found.grid.settled else None
-    if before is None:
-        raise grids.too_many_cells(basins, size, remedy="choose the size yourself: give cell")
-    return before
+        grid = grids.lay_within_limit(basins, size)
+        if grid is None:
+            break
+        found = weigh(grid)
+        found = found.measured(weigh(grids.lay(basins, size / 2)))
+        if not found.grid.settled:
+            continue
+        other = grids.lay_within_limit(basins, _OTHER * size)
+        if other is None or found.measured(weigh(other)).grid.settled:
+            return found
+    raise grids.too_many_cells(basins, size, remedy="choose the size yourself: give cell")
 
 
 def _sizes(basins: Basins) -> Iterator[float]:

@@ -18,7 +18,7 @@ from basinrain.reading.intervals import DAY, Interval, interval_of
 
 __all__ = ["check_spacing"]
 
-_SHARE: Final = 0.7
+_SHARE: Final = 0.9
 """A spacing of so many rows is the file's rule."""
 
 _FEWEST: Final = 2
