@@ -16,6 +16,7 @@ import numpy as np
 import numpy.typing as npt
 import pyproj
 import shapely
+from pyproj.network import set_network_enabled  # type: ignore[attr-defined]
 
 from basinrain.errors import DataError, JobError, Problem
 
@@ -178,6 +179,8 @@ def degree_fault(lon: float, lat: float) -> str:
 
 @lru_cache(maxsize=64)
 def _transformer(source: str, target: str) -> pyproj.Transformer:
+    # No run touches the network, and no grid that PROJ would fetch makes one machine's result another's.
+    set_network_enabled(active=False)
     return pyproj.Transformer.from_crs(_parsed(source), _parsed(target), always_xy=True)
 
 

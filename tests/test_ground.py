@@ -9,6 +9,7 @@ import pytest
 import shapely
 from hypothesis import given
 from hypothesis import strategies as st
+from pyproj.network import is_network_enabled, set_network_enabled  # type: ignore[attr-defined]
 
 from basinrain import ground
 from basinrain.errors import DataError, JobError
@@ -196,3 +197,13 @@ def test_the_planes_name_keeps_its_centre() -> None:
     assert "+lat_0=-33.123457 +lon_0=179.654321 " in ground.equal_area_plane(
         179.154321, -33.623457, 180.154321, -32.623457
     )
+
+
+def test_no_transformation_asks_the_network() -> None:
+    """PROJ's fetching of grids is off, also where the surroundings have switched it on."""
+    set_network_enabled(active=True)
+    try:
+        ground.transform(np.array([7.0]), np.array([51.0]), "EPSG:4326", "EPSG:31466")
+        assert not is_network_enabled()
+    finally:
+        set_network_enabled(active=False)

@@ -68,6 +68,7 @@ def test_a_source_of_excluded_gauges_only_is_no_source() -> None:
     """It gives neither the clock nor a clash of clocks, and the other sources keep their number in messages."""
     left = without_gauges({1: rain("A"), 2: rain("B", zone="+02:00"), 3: rain("C", "A")}, {"A"})
     assert {number: record.gauges for number, record in left.items()} == {2: ("B",), 3: ("C",)}
+    assert left[3].recorders == frozenset({"C"})
     result, _ = bring_to_step([rain("A"), rain("B", zone="+02:00")], network("B"), exclude=["A"])
     assert (result.gauges, result.zone) == (("B",), "+02:00")
     with pytest.raises(DataError, match=r"^gauge B: found values in source 2 \(1h\) and in source 3 \(1h\) for 1 of"):

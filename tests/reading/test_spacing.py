@@ -45,7 +45,8 @@ def refusal(folder: Path, text: str, **options: Any) -> list[str]:  # noqa: ANN4
         ([60, 120, 180, 240], "45min", "1h"),
         ([1440 * k for k in range(1, 5)], "1h", "1d"),
         ([1440 * 7 * k for k in range(1, 5)], "1d", "7d"),
-        # The first of January, February, March and April.
+        # A month of 30 days is none when all are alike; the first of January, February, March and April.
+        ([1440 * 30 * k for k in range(1, 5)], "1d", "30d"),
         ([1440 * (day - 4) for day in (-119, -88, -60, -29)], "1d", "1mo"),
     ],
 )
@@ -113,6 +114,10 @@ def test_accumulated_rows_may_stand_apart(tmp_path: Path) -> None:
     record = read(tmp_path, text, interval="1d", accumulated="S", gaps="missing")
     assert [total.depth for total in record.totals] == [7.0] * 4
     assert labels(record)[1:] == [["accumulated"]] * 28
+    rows = [f"A,2031-05-{day:02d},7,S\n" for day in (8, 15, 22, 29)] + [f"B,2031-05-{d:02d},1,\n" for d in range(1, 30)]
+    text = "gauge,date,depth,flag\nA,2031-05-01,1,\n" + "".join(rows)
+    record = read(tmp_path, text, layout="long", interval="1d", accumulated="S", gaps="missing")
+    assert [(total.gauge, total.depth) for total in record.totals] == [("A", 7.0)] * 4
 
 
 def test_a_gauge_of_a_longer_step_in_a_long_file(tmp_path: Path) -> None:

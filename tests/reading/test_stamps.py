@@ -181,6 +181,13 @@ def test_stamps_of_another_interval_are_told_once(
     assert np.isnat(result.ends).sum() >= len(texts) - 1
 
 
+def test_stamps_of_another_interval_among_others_are_listed() -> None:
+    """Up to four fifths of the stamps may be wrong one by one."""
+    texts = [f"2031-05-0{k}T0{8 if k > 4 else 7}:00" for k in range(1, 6)]
+    result = stamps(texts, "1d", read_hour=28800, date_means="ends")
+    assert [fault.found for fault in result.faults] == [f"'{text}'" for text in texts[:4]]
+
+
 def test_first_and_last_day_both_name_a_month() -> None:
     """A month written by its first day in one row and by its last in another is one month."""
     dates = [f"2031-0{k}-{day}" for k in (1, 3, 5) for day in ("01", "31")]
