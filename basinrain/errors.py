@@ -87,7 +87,7 @@ class Problem:
             for part in (
                 f"found {self.found}" if self.found else "",
                 f"expected {self.expected}" if self.expected else "",
-                self.remedy,
+                self.remedy if self.remedy != self.expected else "",
             )
             if part
         )

@@ -129,7 +129,8 @@ def _read(job: Job) -> tuple[GaugeNetwork, RainRecord, Basins, tuple[Note, ...]]
     # A reader that gave nothing has left a problem, so from here on everything is there.
     network, (polygons, basin_notes) = cast("GaugeNetwork", network), cast("tuple[Basins, tuple[Note, ...]]", basins)
     sources = cast("list[RainRecord]", records)
-    timed = [source.zone for source in sources if not source.labels]
+    excluded = set(job.gauges.exclude)
+    timed = [source.zone for source in sources if not source.labels and not excluded.issuperset(source.gauges)]
     record, step_notes = reading.bring_to_step(
         sources,
         network,

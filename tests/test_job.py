@@ -102,9 +102,7 @@ def test_times_with_an_offset_are_brought_to_the_clock_of_the_files(tmp_path: Pa
     run = run_storm(write_tiny(tmp_path / "utc", job=utc + storm))
     assert run.gauge_totals["depth"].tolist() == [4, 9, 50]
     assert set(run.storm_table["end"]) == {"2031-05-04T02:00Z"}
-    with pytest.raises(
-        JobError, match=r"storm Q: found the time '2031-05-04T03:00:00\+02:00' with an offset"
-    ):
+    with pytest.raises(JobError, match=r"storm Q: found the time '2031-05-04T03:00:00\+02:00' with an offset"):
         run_storm(write_tiny(tmp_path / "bare", job=JOB + storm))
 
 

@@ -24,9 +24,9 @@ union │    100.0 │       20.0 │     25.3 │ 33.1 │   13.1 │     50.2 
 
 Warning: whole record: Gauge A has over half of the weight in basin west: 100 % by arithmetic, 100 % by thiessen, \
 72 % by idw.
-Warning: whole record: The methods give basin west from 10.0 to 21.2 mm, 11.2 mm or 82 % apart.
 Warning: whole record: Gauge B has over half of the weight in basin east: 100 % by arithmetic, 85 % by thiessen, \
 57 % by idw.
+Warning: whole record: The methods give basin west from 10.0 to 21.2 mm, 11.2 mm or 82 % apart.
 Warning: whole record: The methods give basin east from 30.0 to 45.0 mm, 15.0 mm or 39 % apart.
 Warning: whole record: The methods give basin union from 20.0 to 33.1 mm, 13.1 mm or 50 % apart.
 Warning: Only gauge A lies inside basin west.

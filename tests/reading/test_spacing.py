@@ -45,8 +45,8 @@ def refusal(folder: Path, text: str, **options: Any) -> list[str]:  # noqa: ANN4
         ([60, 120, 180, 240], "45min", "1h"),
         ([1440 * k for k in range(1, 5)], "1h", "1d"),
         ([1440 * 7 * k for k in range(1, 5)], "1d", "7d"),
-        # A month of 30 days is none when all are alike; the first of January, February, March and April.
         ([1440 * 30 * k for k in range(1, 5)], "1d", "30d"),
+        # The first of January, February, March and April.
         ([1440 * (day - 4) for day in (-119, -88, -60, -29)], "1d", "1mo"),
     ],
 )
