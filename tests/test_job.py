@@ -20,7 +20,7 @@ DAILY = "date,A,B,C\n2031-03-08,1,1,1\n2031-03-09,2,4,8\n2031-03-10,3,3,3\n"
 
 def depths(run: StormRun, method: str = "thiessen") -> dict[tuple[str, str], float]:
     frame = run.basin_means[run.basin_means["method"] == method]
-    return {(row.storm, row.basin): row.depth for row in frame.itertuples()}
+    return {(row["storm"], row["basin"]): row["depth"] for row in frame.to_dict("records")}
 
 
 def test_excluded_gauges_take_no_part(tmp_path: Path) -> None:
