@@ -78,6 +78,22 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     depths, the basin mean of the step is ``W D p``. Hence the contribution of gauge i to basin b over the storm is the
     sum over steps of ``(W D)[b, i] p[i]``, and these sum to the mean exactly. Where the total of a day or storm was
     spread, p is the donors' total in the times of the gauge whose pattern was used.
+
+    Examples
+    --------
+    >>> from basinrain.infill import InfillOptions, complete
+    >>> from basinrain.gauges import GaugeNetwork
+    >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[0.0, 5000.0, 9000.0], y=[0.0] * 3, crs="local")
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(network.ids, ends - 3600, ends, [[6.0, np.nan, 2.0], [3.0, 3, 3]], step="1h")
+    >>> completed = complete(record, network, InfillOptions(method="station-average", scale="step"))
+    >>> def thirds(present):
+    ...     return WeightTable("thirds", ("all",), network.ids, np.where(present, 1 / present.sum(), 0.0)[None, :])
+    >>> result = average_storm(completed, thirds)  # B's first hour is the mean of A and C, 4 mm
+    >>> result.depth.ravel(), result.total
+    (array([4., 3.]), array([7.]))
+    >>> result.contribution.round(2), result.infilled.round(2)
+    (array([[4., 1., 2.]]), array([1.33]))
     """
     record = completed.record
     has_depth = ~np.isnan(record.depth)

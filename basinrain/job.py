@@ -44,7 +44,7 @@ Report = Callable[[str], None]
 
 
 def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> StormRun:
-    """Run a job's storms: infill, average by every method, compare.
+    r"""Run a job's storms: infill, average by every method, compare.
 
     Parameters
     ----------
@@ -64,6 +64,24 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     ------
     BasinRainError
         The job, a file or the data are at fault; every problem found is listed.
+
+    Examples
+    --------
+    >>> import tempfile
+    >>> folder = Path(tempfile.mkdtemp())
+    >>> _ = (folder / "gauges.csv").write_text("id,x,y\nA,2.5,5\nB,7.5,5\nC,11,5\n")
+    >>> _ = (folder / "rain.csv").write_text("gauge,depth\nA,10\nB,30\nC,100\n")
+    >>> _ = (folder / "basins.geojson").write_text(
+    ...     '{"type": "Polygon", "coordinates": [[[0, 0], [10, 0], [10, 10], [0, 10], [0, 0]]]}'
+    ... )
+    >>> _ = (folder / "job.toml").write_text(
+    ...     '[job]\nname = "Square"\n[gauges]\nfile = "gauges.csv"\ncrs = "local"\nlength_unit = "km"\n'
+    ...     '[rainfall]\nfile = "rain.csv"\nlayout = "totals"\nunit = "mm"\n'
+    ...     '[basins]\nfile = "basins.geojson"\ncrs = "local"\nlength_unit = "km"\n'
+    ... )
+    >>> run = run_storm(folder / "job.toml", ["averaging.methods=['arithmetic', 'thiessen']"])
+    >>> run.basin_means[["basin", "method", "depth"]].values.tolist()
+    [['1', 'arithmetic', 20.0], ['1', 'thiessen', 25.25]]
     """
     say = progress or (lambda _: None)
     if not isinstance(job, Job):
