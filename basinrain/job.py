@@ -33,7 +33,7 @@ from basinrain.jobfile.times import rainfall_day_start, storm_window_times
 from basinrain.notes import Note, once
 from basinrain.rainfall import RainRecord, Status
 from basinrain.results import StormResult, StormRun
-from basinrain.storms import Storm, hyetograph_shape, storm_window
+from basinrain.storms import Storm, borrowed_times, hyetograph_shape, storm_window
 
 __all__ = ["run_storm"]
 
@@ -306,6 +306,7 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
             )
         )
     notes = (
+        *borrowed_times(storm, completed),
         *(note if note.storm else replace(note, storm=storm.name) for note in completed.notes),
         *(
             replace(note, storm=storm.name)

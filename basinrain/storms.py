@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -19,6 +20,7 @@ __all__ = [
     "MEAN",
     "NEAREST_RECORDER",
     "Storm",
+    "borrowed_times",
     "hyetograph_shape",
     "status_of_total",
     "storm_window",
@@ -211,6 +213,39 @@ def hyetograph_shape(
         nearest = min(np.flatnonzero(wet), key=lambda g: (round(float(away[g]), 3), network.ids[g]))
         shapes.append((network.ids[nearest], record.depth[:, nearest] / totals[nearest]))
     return shapes
+
+
+def borrowed_times(storm: Storm, completed: Completed) -> Iterator[Note]:
+    """Yield a warning when the gauge that times a storm did not record all of it itself.
+
+    Parameters
+    ----------
+    storm
+        Its pattern may be a gauge's id.
+    completed
+        The storm's window after infill.
+
+    Examples
+    --------
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[4.0, 2.0], [6.0, 3.0]], step="1h")
+    >>> storm = Storm("Quill", 0, 2, record.starts[0], record.ends[-1], "B")
+    >>> list(borrowed_times(storm, Completed(record, (), ())))
+    []
+    """
+    record = completed.record
+    if storm.pattern not in record.gauges:
+        return
+    column = record.gauges.index(storm.pattern)
+    lacking = int((~record.measured[:, column]).sum())
+    if lacking:
+        yield Note(
+            code="pattern-borrowed",
+            text=f"Gauge {storm.pattern} times the hyetographs, but did not record {lacking} of {len(record)} steps "
+            f"itself; their times are those of other gauges.",
+            storm=storm.name,
+            gauge=storm.pattern,
+        )
 
 
 def status_of_total(record: RainRecord, column: int) -> str:

@@ -193,13 +193,27 @@ def weights(run: StormRun) -> pd.DataFrame:
 
 
 def weights_compared(run: StormRun) -> pd.DataFrame:
-    """Return ``weights_compared``: the methods' own weights side by side, largest differences first."""
+    """Return ``weights_compared``: the methods side by side, the largest differences of weight first.
+
+    Behind the weights and their difference every method has its contribution and share. A gauge without weight that
+    contributes through infill is listed too, so that contributions sum to the mean.
+    """
     import pandas as pd
 
+    mm = depth_factor(run.depth_unit)
     frames = []
     for result in run.storms:
-        frame = compare([depths.table for depths in result.depths.values()])
+        tables = [depths.table for depths in result.depths.values()]
+        contributes = np.any([np.nan_to_num(depths.most) != 0 for depths in result.depths.values()], axis=0)
+        frame = compare(tables, also=contributes)
         frame.insert(0, "storm", result.storm.name)
+        b = [run.basins.ids.index(basin) for basin in frame["basin"]]
+        g = [run.network.position(gauge) for gauge in frame["gauge"]]
+        for method, depths in result.depths.items():
+            frame[f"contribution_{method}"] = depths.contribution[b, g] / mm
+        frame["depth_unit"] = run.depth_unit
+        for method, depths in result.depths.items():
+            frame[f"share_{method}"] = _quotient(depths.contribution, depths.total[:, None])[b, g]
         frames.append(frame)
     return pd.concat(frames, ignore_index=True)
 

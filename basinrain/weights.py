@@ -129,13 +129,15 @@ class WeightTable:
         )
 
 
-def compare(tables: Sequence[WeightTable]) -> pd.DataFrame:
+def compare(tables: Sequence[WeightTable], *, also: npt.NDArray[np.bool_] | None = None) -> pd.DataFrame:
     """Set the weights of several methods side by side, the largest differences first.
 
     Parameters
     ----------
     tables
         Tables of the same basins and gauges, one a method.
+    also : array of bool, shape (n_basins, n_gauges), optional
+        Gauges to list though no method gives them weight, such as donors of infilled gauges.
 
     Returns
     -------
@@ -162,7 +164,7 @@ def compare(tables: Sequence[WeightTable]) -> pd.DataFrame:
     for b, basin in enumerate(first.basins):
         answered = stacked[b][:, ~np.isnan(stacked[b]).any(axis=0)]
         spread = np.ptp(answered, axis=1) if answered.shape[1] else np.zeros(len(first.gauges))
-        used = (answered != 0).any(axis=1)
+        used = (answered != 0).any(axis=1) | (False if also is None else also[b])
         # Rounded, so that differences equal but for the last bit are ordered by id.
         order = sorted(np.flatnonzero(used), key=lambda g: (-round(float(spread[g]), 12), first.gauges[g]))
         rows += [(basin, first.gauges[g], *stacked[b, g], spread[g]) for g in order]

@@ -14,7 +14,7 @@ from basinrain.errors import JobError, MethodError
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import InfillOptions, complete
 from basinrain.rainfall import RainRecord, Status
-from basinrain.storms import Storm, hyetograph_shape, status_of_total, storm_window
+from basinrain.storms import Storm, borrowed_times, hyetograph_shape, status_of_total, storm_window
 from basinrain.weights import WeightTable
 
 NAN = float("nan")
@@ -229,3 +229,13 @@ def test_contributions_with_a_gauge_that_closes_inside_a_spread_total() -> None:
     assert completed.record.depth[:, 1] == pytest.approx([10.5 * 6 / 9, 0, 10.5 * 3 / 9])
     result = average_storm(completed, averaging_method("thiessen")(network, BASINS))
     assert result.contribution[0].sum() == pytest.approx(result.total[0], abs=1e-12)
+
+
+def test_a_pattern_that_the_gauge_did_not_record_is_said() -> None:
+    """A gauge whose steps were infilled lends other gauges' times; how many steps is said. The mean needs no remark."""
+    record = hourly([[1.0, NAN, 2.0], [3.0, 4.0, 2.0], [0.0, NAN, 1.0]])
+    completed = complete(record, NETWORK, InfillOptions(method="station-average", scale="step"))
+    for pattern, said in (("B", ["2 of 3 steps"]), ("A", []), ("mean", [])):
+        storm = Storm("Q", 0, 3, record.starts[0], record.ends[-1], pattern)
+        notes = list(borrowed_times(storm, completed))
+        assert [text for note, text in zip(notes, said, strict=True) if text in note.text] == said

@@ -49,6 +49,26 @@ def test_contributions_and_hyetographs_sum_to_the_mean(run: StormRun) -> None:
     np.testing.assert_allclose(shares, 1.0, rtol=1e-12)
 
 
+def test_the_comparison_sums_to_the_mean(run: StormRun) -> None:
+    """In every storm and basin the contributions of each method sum to its mean, the shares to 1."""
+    compared = run.weights_compared.groupby(["storm", "basin"])
+    for method in run.methods:
+        depth = run.basin_means[run.basin_means["method"] == method].set_index(["storm", "basin"])["depth"]
+        total = compared[f"contribution_{method}"].sum()
+        np.testing.assert_allclose(total.reindex(depth.index), depth, rtol=1e-12)
+        np.testing.assert_allclose(compared[f"share_{method}"].sum(), 1.0, rtol=1e-12)
+
+
+def test_a_donor_without_weight_is_listed(tmp_path: Path) -> None:
+    """With the arithmetic mean alone, C outside the square has no weight, but B's estimate rests on it."""
+    run = run_storm(
+        write_tiny(tmp_path, job=JOB.replace("[averaging]", "[averaging]\nmethods = ['arithmetic']"), rain=GAPS)
+    )
+    (row,) = run.weights_compared.query("basin == 'union' and gauge == 'C'").to_dict("records")
+    assert (row["arithmetic"], row["difference"]) == (0.0, 0.0)
+    assert row["contribution_arithmetic"] == pytest.approx(0.5 * 0.671141 * 100, abs=1e-3)
+
+
 def test_silent_gauge_by_hand(run: StormRun) -> None:
     """B reports one hour of four: its total comes from A (5 km away) and C (3.5 km), and is at least its own 6 mm.
 

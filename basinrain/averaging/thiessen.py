@@ -14,17 +14,14 @@ from basinrain.averaging.inputs import AREA_TOLERANCE, presence, require_one_pla
 from basinrain.averaging.registry import Weigher
 from basinrain.basins import Basins
 from basinrain.errors import DataError, MethodError, Problems
-from basinrain.gauges import GaugeNetwork
+from basinrain.gauges import ONE_PLACE, GaugeNetwork
 from basinrain.weights import WeightTable
 
 __all__ = ["ThiessenPieces", "prepare_thiessen", "thiessen_cells", "thiessen_pieces", "thiessen_weights"]
 
-_SAME_PLACE: Final = 0.01
-"""Gauges closer than this, in m, stand at one place: no polygon can be drawn between them."""
-
-_HELPERS: Final = 16
-_HELPER_RADII: Final = 10.0
-"""Helper points beyond everything close the outer cells. Any distance above 3 radii leaves the cells exact where gauges
+_FAR_POINTS: Final = 16
+_FAR_RADII: Final = 10.0
+"""Far points beyond everything close the outer cells. Any distance above 3 radii leaves the cells exact where gauges
 and basins are; far ones (1e6 radii) make the tessellation fail without a word."""
 
 _SLIVER: Final = 1e-12
@@ -160,8 +157,8 @@ def thiessen_cells(
     centre = (low + high) / 2
     radius = max(float(np.hypot(*(high - low))) / 2, 1.0)
     scaled = (xy - centre) / radius
-    turn = np.arange(_HELPERS) * (2 * np.pi / _HELPERS)
-    helpers = _HELPER_RADII * np.column_stack((np.cos(turn), np.sin(turn)))
+    turn = np.arange(_FAR_POINTS) * (2 * np.pi / _FAR_POINTS)
+    helpers = _FAR_RADII * np.column_stack((np.cos(turn), np.sin(turn)))
     diagram = Voronoi(np.vstack((scaled, helpers)))
     regions = [diagram.regions[k] for k in diagram.point_region[: len(at)]]
     without = Problems()
@@ -207,12 +204,12 @@ def thiessen_pieces(
 
 def _refuse_same_place(network: GaugeNetwork, at: npt.NDArray[np.int64], xy: npt.NDArray[np.float64]) -> None:
     problems = Problems()
-    for i, j in sorted(KDTree(xy).query_pairs(_SAME_PLACE)):
+    for i, j in sorted(KDTree(xy).query_pairs(ONE_PLACE)):
         one, other = sorted((network.ids[at[i]], network.ids[at[j]]))
         problems.add(
             item=f"gauges {one} and {other}",
             found="one place for both",
-            expected=f"gauges at least {_SAME_PLACE} m apart",
+            expected=f"gauges at least {ONE_PLACE} m apart",
             remedy='correct or remove one of them, or take their mean (colocated = "mean")',
             gauge=one,
         )

@@ -12,7 +12,7 @@ from pydantic_core import ErrorDetails
 from basinrain.errors import Problem, nearest_name
 from basinrain.jobfile.tables import Job
 
-__all__ = ["problem_of"]
+__all__ = ["plainest", "problem_of"]
 
 _REPEATED = frozenset({"rainfall", "storm"})
 
@@ -33,9 +33,27 @@ _MESSAGES: Mapping[str, tuple[str, str]] = {
 }
 
 
+_OTHER_SHAPES = frozenset({"tuple_type", "list_type", "dict_type", "model_type", "string_type"})
+
+
+def plainest(found: Sequence[ErrorDetails]) -> list[ErrorDetails]:
+    """Return one finding for every place of the job.
+
+    Where a value may have several shapes, each shape has its complaint; the one that fits the shape given is kept.
+    """
+    places: dict[tuple[str | int, ...], list[ErrorDetails]] = {}
+    for details in found:
+        places.setdefault(tuple(_place(details)), []).append(details)
+    return [min(several, key=lambda details: details["type"] in _OTHER_SHAPES) for several in places.values()]
+
+
+def _place(details: ErrorDetails) -> list[str | int]:
+    return [part for part in details["loc"] if isinstance(part, int) or not _internal(part)]
+
+
 def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
     """Return one finding as a :class:`~basinrain.errors.Problem`, with the line where it stands in ``text``."""
-    loc = [part for part in details["loc"] if isinstance(part, int) or not _internal(part)]
+    loc = _place(details)
     kind = details["type"]
     context = details.get("ctx", {})
     item, line = _item(loc), _line(loc, text)

@@ -5,13 +5,14 @@ from __future__ import annotations
 import re
 import tomllib
 from collections.abc import Mapping, Sequence
+from itertools import pairwise
 from pathlib import Path
 from typing import Any
 
 from pydantic import ValidationError
 
 from basinrain.errors import JobError, Problem, ReadError, SettingError
-from basinrain.jobfile.problems import problem_of
+from basinrain.jobfile.problems import plainest, problem_of
 from basinrain.jobfile.tables import Job
 
 __all__ = ["parse_job", "read_job"]
@@ -121,7 +122,7 @@ area_unit, output, plane; did you mean 'depth_unit'?
         raise JobError(
             [
                 problem_of(details, "", "") if _is_set(details["loc"], changed) else problem_of(details, file, text)
-                for details in error.errors()
+                for details in plainest(error.errors())
             ]
         ) from None
 
@@ -160,24 +161,27 @@ def _apply(tables: dict[str, Any], setting: str) -> None:
     except tomllib.TOMLDecodeError:
         value = text.strip()
     place: Any = tables
-    for depth, word in enumerate(words[:-1]):
-        place = _enter(place, word, setting, repeats=depth == 1 or isinstance(place, list))
-        if isinstance(place, list) and len(place) == 1 and not words[depth + 1].isdigit():
+    for word, following in pairwise(words):
+        place = _enter(place, word, setting)
+        if isinstance(place, list) and len(place) == 1 and not following.isdigit():
             place = place[0]
-    if not isinstance(place, dict):
+    if isinstance(place, list):
         raise SettingError(
             Problem(
                 item=f"--set {setting}",
-                found="a table that is there more than once, or a plain value",
-                expected="the table's number, counted from 1",
+                found=f"{len(place)} such tables",
+                expected="the number of one of them, counted from 1",
                 remedy=f"write {words[0]}.1.{words[-1]}=...",
             )
         )
+    if not isinstance(place, dict):
+        raise _inside_plain(words[-1], words[-2], setting)
     place[words[-1]] = value
 
 
-def _enter(place: Any, word: str, setting: str, *, repeats: bool) -> Any:  # noqa: ANN401 - TOML values
-    if isinstance(place, list) and repeats:
+def _enter(place: Any, word: str, setting: str) -> Any:  # noqa: ANN401 - TOML values
+    """Return what stands under one word of a setting; a table that is not there is made."""
+    if isinstance(place, list):
         if word.isdigit() and 1 <= int(word) <= len(place):
             return place[int(word) - 1]
         raise SettingError(
@@ -188,6 +192,18 @@ def _enter(place: Any, word: str, setting: str, *, repeats: bool) -> Any:  # noq
                 remedy="correct the number; a table is added in the file",
             )
         )
-    if isinstance(place, dict):
-        return place.setdefault(word, {})
-    raise SettingError(Problem(item=f"--set {setting}", found=f"'{word}' inside a plain value", expected="a table"))
+    if not isinstance(place, dict):
+        raise _inside_plain(word, "the key before it", setting)
+    # A table that may repeat and was written once, in single brackets, is its own number 1.
+    return place if word == "1" else place.setdefault(word, {})
+
+
+def _inside_plain(word: str, key: str, setting: str) -> SettingError:
+    return SettingError(
+        Problem(
+            item=f"--set {setting}",
+            found=f"'{word}' inside a plain value of {key}",
+            expected="a table there",
+            remedy=f"give the whole value as a table, {{{word}=...}}",
+        )
+    )

@@ -6,6 +6,7 @@ from these models.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Mapping
 from datetime import date, datetime, time
 from pathlib import Path
@@ -31,6 +32,7 @@ __all__ = [
     "RainfallTable",
     "StepTable",
     "StormTable",
+    "is_month",
 ]
 
 
@@ -58,14 +60,22 @@ def _moment(value: object) -> object:
     return value
 
 
+def is_month(text: str) -> bool:
+    """Return whether a time names a whole month: ``"2031-05"``."""
+    return re.fullmatch(r"\d{4}-\d{2}", text) is not None
+
+
 def _iso(value: str) -> str:
     try:
-        datetime.fromisoformat(value)
+        datetime.fromisoformat(f"{value}-01" if is_month(value) else value)
     except ValueError:
         raise PydanticCustomError(
             "iso",
             "{expected}",
-            {"expected": "a date or a date and time such as 2031-05-04T06:00", "remedy": "write it in ISO 8601"},
+            {
+                "expected": "a month, a date or a date and time such as 2031-05-04T06:00",
+                "remedy": "write it in ISO 8601",
+            },
         ) from None
     return value
 

@@ -8,7 +8,7 @@ from datetime import datetime, timedelta
 import numpy as np
 
 from basinrain.errors import JobError, Problem
-from basinrain.jobfile.tables import RainfallTable, StormTable
+from basinrain.jobfile.tables import RainfallTable, StormTable, is_month
 
 __all__ = ["rainfall_day_start", "storm_window_times"]
 
@@ -53,7 +53,7 @@ def storm_window_times(table: StormTable, zone: str, *, day_start: np.timedelta6
     Parameters
     ----------
     table
-        The storm. A bare date names its whole day.
+        The storm. A bare date names its whole day, a bare month its whole month.
     zone
         The record's clock, a fixed offset; empty where the files do not say.
     day_start
@@ -71,18 +71,23 @@ def storm_window_times(table: StormTable, zone: str, *, day_start: np.timedelta6
     ['2031-05-04T08:00:00', '2031-05-06T00:00:00']
     """
     return (
-        _moment(table.name, table.start, zone, day_start),
-        _moment(table.name, table.end, zone, day_start + np.timedelta64(86400, "s")),
+        _moment(table.name, table.start, zone, day_start, at_end=False),
+        _moment(table.name, table.end, zone, day_start, at_end=True),
     )
 
 
-def _moment(storm: str, text: str | None, zone: str, bare: np.timedelta64) -> np.datetime64 | None:
+def _moment(
+    storm: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool
+) -> np.datetime64 | None:
     if text is None:
         return None
+    if is_month(text):
+        month = np.datetime64(text, "M") + np.timedelta64(int(at_end), "M")
+        return np.datetime64(month, "s") + day_start
     when = datetime.fromisoformat(text)
     local = np.datetime64(when.replace(tzinfo=None), "s")
     if "T" not in text and " " not in text:
-        return local + bare
+        return local + day_start + np.timedelta64(int(at_end), "D")
     if when.tzinfo is None:
         return local
     if not zone:

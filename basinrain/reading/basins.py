@@ -29,7 +29,7 @@ _POLYGONS: Final = (shapely.GeometryType.POLYGON, shapely.GeometryType.MULTIPOLY
 
 
 def read_basins(
-    path: Path,
+    path: str | Path,
     *,
     layer: str | None = None,
     id: str | None = None,  # noqa: A002 - the job file's word
@@ -116,7 +116,7 @@ def read_basins(
     with option_problems(faults, file=file, item="[basins] crs"):
         _ = None if crs is None else ground.parse_crs(crs)
     faults.raise_as(JobError)
-    table = read_vector(path, layer=layer)
+    table = read_vector(Path(path), layer=layer)
     cells = table.cells
     problems = Problems(file=cells.file)
     used_crs = settled_crs(table, crs, problems)

@@ -45,7 +45,7 @@ _TRADE_NAMES: Final = MappingProxyType(
 
 
 def read_gauges(
-    path: Path,
+    path: str | Path,
     *,
     crs: str | None = None,
     length_unit: str = "m",
@@ -105,6 +105,7 @@ def read_gauges(
     >>> network.ids, network.crs, network.elevation.tolist(), [str(time) for time in network.closed]
     (('0501', '0502'), 'EPSG:4326', [1600.0, nan], ['NaT', '2031-07-01T00:00:00'])
     """
+    path = Path(path)
     mapped = _checked_mapping(columns or {})
     factors = dict.fromkeys(("length", "elevation", "normal"), np.nan)
     faults = Problems()

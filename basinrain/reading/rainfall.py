@@ -38,7 +38,7 @@ _HOUR: Final = re.compile(r"(?P<hour>[01]?[0-9]|2[0-3])(?::(?P<minute>[0-5][0-9]
 
 
 def read_rainfall(
-    files: Sequence[Path],
+    files: str | Path | Sequence[str | Path],
     *,
     layout: Literal["wide", "long", "totals"],
     unit: str,
@@ -60,7 +60,7 @@ def read_rainfall(
     Parameters
     ----------
     files
-        One or several; several are joined in time, in gauges, or both.
+        One path or several; several files are joined in time, in gauges, or both.
     layout
         ``"wide"``: a column of times and a column for every gauge. ``"long"``: columns gauge, time, depth, and where
         there are such, flag and steps. ``"totals"``: columns gauge, depth, and where there is one, storm.
@@ -119,12 +119,13 @@ def read_rainfall(
     (array([[0, 2],
            [3, 7]], dtype=uint8), '2031-05-04T07:00:00')
     """
+    paths = [Path(files)] if isinstance(files, str | Path) else [Path(file) for file in files]
     named = columns or {}
     # A job may have many sources; their first file tells them apart.
-    first = str(files[0]) if files else ""
+    first = str(paths[0]) if paths else ""
     problems = Problems(file=first)
     _check_choices(layout=layout, stamp=stamp, date_means=date_means, gaps=gaps, columns=named, problems=problems)
-    if not files:
+    if not paths:
         problems.add(item="files", found="none", expected="at least one file")
     step, hour = None, None
     with option_problems(problems, file=first):
@@ -140,7 +141,7 @@ def read_rainfall(
     problems.raise_as(JobError)
     faults = Problems()
     tables = []
-    for path in files:
+    for path in paths:
         with problems_of(str(path), faults):
             tables.append(read_delimited(path))
     if step is None:

@@ -191,5 +191,7 @@ def test_every_column_is_documented(tmp_path: Path) -> None:
         for path in (tmp_path / "output" / "storm").glob("*.csv")
         for column in path.read_text(encoding="utf-8").splitlines()[0].split(",")
     }
-    method_columns = {"arithmetic", "thiessen", "idw"}  # weights_compared.csv has one column a method
-    assert {column for column in columns if f"`{column}`" not in text} - method_columns == set()
+    # weights_compared.csv has columns of every method.
+    methods = ("arithmetic", "thiessen", "idw")
+    by_method = {f"{what}{method}" for what in ("", "contribution_", "share_") for method in methods}
+    assert {column for column in columns if f"`{column}`" not in text} - by_method == set()

@@ -70,6 +70,11 @@ def test_defaults_are_resolved(tmp_path: Path) -> None:
     assert job.path("gauges.csv") == tmp_path / "gauges.csv"
 
 
+def test_a_setting_by_number_of_a_table_written_once() -> None:
+    """rainfall.1 is the table that stands in single brackets."""
+    assert parse_job(tables(), settings=["rainfall.1.stamp=start"]).rainfall[0].stamp == "start"
+
+
 def test_a_table_given_once_may_stand_in_single_brackets() -> None:
     """[rainfall] and [storm] are lists of one."""
     job = parse_job({**tables(), "storm": {"name": "Quill"}})
@@ -113,7 +118,10 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
         ({"infill": {"power": "two"}}, r"\[infill\] power: found 'two'; expected a number"),
         ({"infill": {"power": float("inf")}}, r"\[infill\] power: found inf; expected a finite number"),
         ({"averaging": {"idw": {"powr": 2}}}, r"\[averaging\] idw.powr: found a key that is not known.*'power'"),
-        ({"storm": {"name": "q", "start": "May 3"}}, r"\[\[storm\]\] no. 1 start: found 'May 3'; expected a date"),
+        (
+            {"storm": {"name": "q", "start": "May 3"}},
+            r"\[\[storm\]\] no. 1 start: found 'May 3'; expected a month, a date",
+        ),
         (
             {"rainfall": {"unit": "mm", "interval": "1h"}},
             r"\[\[rainfall\]\] no. 1: found both or neither; .*file or files",
@@ -133,6 +141,14 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
             r"\[\[rainfall\]\] no. 1 interval: found 60; expected text in quotes",
         ),
         ({"rainfall": []}, r"\[\[rainfall\]\]: found no table; expected at least one"),
+        (
+            {"gauges": {"file": "g.csv", "catch_factor": {"R01": 0}}},
+            r"^\[gauges\] catch_factor.R01: found 0; expected a number above 0; correct the value$",
+        ),
+        (
+            {"averaging": {"arithmetic": {"gauges": "insid"}}},
+            r"^\[averaging\] arithmetic.gauges: found 'insid'; expected .*'inside' or 'all'.*$",
+        ),
         ({"gauges": 3}, r"\[gauges\]: found 3; expected a table"),
         ({"job": {"name": 5}}, r"\[job\] name: found 5; expected text in quotes"),
     ],
@@ -168,9 +184,16 @@ def test_settings_change_the_job(tmp_path: Path) -> None:
     [
         ("infill", "--set: found 'infill'; expected TABLE.KEY=VALUE"),
         ("infill.=3", "--set: found 'infill.=3'"),
-        ("rainfall.unit=mm", "a table that is there more than once"),
+        (
+            "rainfall.unit=mm",
+            r"found 2 such tables; expected the number of one of them, .*; write rainfall\.1\.unit=\.\.\.",
+        ),
         ("rainfall.7.unit=mm", "found '7'; expected the number of a table that the job has, 1 to 2"),
-        ("job.name.deep.er=1", "inside a plain value"),
+        ("job.name.deep.er=1", "found 'deep' inside a plain value of the key before it; expected a table there"),
+        (
+            "job.name.deep=1",
+            r"found 'deep' inside a plain value of name; .*give the whole value as a table, \{deep=\.\.\.\}",
+        ),
     ],
 )
 def test_a_wrong_setting_is_refused(tmp_path: Path, setting: str, message: str) -> None:
