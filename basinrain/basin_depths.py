@@ -37,9 +37,21 @@ class BasinDepths:
     least, most : array of float, shape (n_basins, n_gauges)
         Least and greatest weight of each gauge's own values over the steps, infill included.
     observed_share : array of float, shape (n_steps, n_basins)
-        Share of the weight that lies on gauges which report at the step.
+        Share of the weight that lies on gauges which report at the step; NaN where the depth is.
     without_depth : array of int, shape (n_gauges,)
         Steps at which each gauge was in service and had no depth even after infill; weights were rebuilt there.
+
+    Examples
+    --------
+    Made by :func:`average_storm`. A step without any gauge makes the total missing, never the sum of what is left.
+
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[3.0], [np.nan]], step="1h")
+    >>> def whole(present):
+    ...     return WeightTable("whole", ("all",), ("A",), np.array([[1.0]]))
+    >>> result = average_storm(Completed(record, (), ()), whole)
+    >>> result.depth.ravel(), result.total, result.without_depth
+    (array([ 3., nan]), array([nan]), array([1]))
     """
 
     table: WeightTable
@@ -103,7 +115,7 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     n_steps, (n_basins, n_gauges) = len(record), table.weights.shape
     weigh = _Remembered(weigher)
     depth = np.full((n_steps, n_basins), np.nan)
-    observed_share = np.zeros((n_steps, n_basins))
+    observed_share = np.full((n_steps, n_basins), np.nan)
     infilled = np.zeros(n_basins)
     contribution = np.zeros((n_basins, n_gauges))
     least, most = np.full((n_basins, n_gauges), np.inf), np.full((n_basins, n_gauges), -np.inf)

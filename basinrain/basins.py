@@ -127,7 +127,26 @@ correct or remove it
         return float(west), float(south), float(east), float(north)
 
     def with_union(self) -> Basins:
-        """Return the basins and, where there are two or more, their union as one more row."""
+        """Return the basins and, where there are two or more, their union as one more row.
+
+        Returns
+        -------
+        Basins
+            The union is the last row, its id :data:`UNION`. No register states its area (NaN); its ground reaches from
+            the lowest of all basins to the highest, NaN where one basin's is not known. One basin alone, or basins that
+            have the row already, are returned as they are.
+
+        Examples
+        --------
+        >>> lapped = [shapely.box(0, 0, 6, 10), shapely.box(4, 0, 10, 10)]
+        >>> basins = Basins(ids=("west", "east"), polygons=lapped, crs="local").with_union()
+        >>> basins.ids, basins.areas  # the overlap of 20 counts once
+        (('west', 'east', 'union'), array([ 60.,  60., 100.]))
+        >>> basins.with_union() is basins
+        True
+        >>> Basins(ids=("west",), polygons=lapped[:1], crs="local").with_union().ids
+        ('west',)
+        """
         if len(self) < 2 or UNION in self.ids:
             return self
         polygons = np.empty(len(self) + 1, dtype=object)
@@ -142,5 +161,27 @@ correct or remove it
         )
 
     def to_crs(self, crs: str) -> Basins:
-        """Return the same basins in ``crs``, edges kept straight as the present system draws them."""
+        """Return the same basins in another coordinate system, edges kept straight as the present one draws them.
+
+        Parameters
+        ----------
+        crs : str
+            Anything pyproj reads; the basins' own, however named, leaves them untouched.
+
+        Returns
+        -------
+        Basins
+            Long edges have more corners than before (:func:`basinrain.ground.project`).
+
+        Raises
+        ------
+        DataError
+            One of the two systems is ``"local"`` and the other is not, or ``crs`` cannot show a basin.
+
+        Examples
+        --------
+        >>> basins = Basins(ids=("cell",), polygons=[shapely.box(10, 50, 11, 51)], crs="EPSG:4326")
+        >>> (basins.to_crs("EPSG:3035").areas / 1e6).round(1)  # km², in an equal-area plane
+        array([7892.2])
+        """
         return replace(self, polygons=ground.project(self.polygons, self.crs, crs), crs=crs)

@@ -144,8 +144,25 @@ class GaugeNetwork:
         return rank
 
     def subset(self, mask: Sequence[bool] | npt.NDArray[np.bool_]) -> GaugeNetwork:
-        """Return the network of the gauges where ``mask`` (n_gauges,) is true, in the same order."""
-        keep = np.flatnonzero(np.asarray(mask, dtype=bool))
+        """Return the network of the gauges where ``mask`` is true, in the same order.
+
+        Parameters
+        ----------
+        mask : array of bool, shape (n_gauges,)
+            One value a gauge.
+
+        Returns
+        -------
+        GaugeNetwork
+            With everything that is known of those gauges; without gauges where the mask is nowhere true.
+
+        Examples
+        --------
+        >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 9.0], y=[0.0, 0.0], crs="local", elevation=[np.nan, 240.0])
+        >>> network.subset([False, True]).elevation, len(network.subset([False, False]))
+        (array([240.]), 0)
+        """
+        keep = np.arange(len(self))[np.asarray(mask, dtype=bool)]
         return replace(
             self,
             ids=tuple(self.ids[i] for i in keep),
@@ -159,12 +176,54 @@ class GaugeNetwork:
         )
 
     def to_crs(self, crs: str) -> GaugeNetwork:
-        """Return the same gauges with positions in ``crs``; ``"local"`` cannot be changed into another or back."""
+        """Return the same gauges with positions in another coordinate system.
+
+        Parameters
+        ----------
+        crs : str
+            Anything pyproj reads; the network's own, however named, leaves positions untouched to the last bit.
+
+        Returns
+        -------
+        GaugeNetwork
+
+        Raises
+        ------
+        DataError
+            One of the two systems is ``"local"`` and the other is not, or ``crs`` cannot show a gauge's position.
+
+        Examples
+        --------
+        >>> network = GaugeNetwork(ids=("A",), x=[9.0], y=[0.0], crs="EPSG:4326")
+        >>> network.to_crs("EPSG:32632").x.round(3)  # the central meridian of the zone, at its false easting
+        array([500000.])
+        >>> local = GaugeNetwork(ids=("A",), x=[9.0], y=[0.0], crs="local")
+        >>> local.to_crs("EPSG:32632")
+        Traceback (most recent call last):
+            ...
+        basinrain.errors.DataError: coordinate reference systems: found 'local' and 'EPSG:32632'; expected both \
+'local', or both on the map; give gauges and basins in systems that can be brought together
+        """
         x, y = ground.transform(self.x, self.y, self.crs, crs)
         return replace(self, x=x, y=y, crs=crs)
 
     def distances(self) -> npt.NDArray[np.float64]:
-        """Return the distances between all gauges in m, (n_gauges, n_gauges); geodesic unless ``crs`` is local."""
+        """Return the distances between all gauges.
+
+        Returns
+        -------
+        array of float, shape (n_gauges, n_gauges)
+            m, symmetric, 0 on the diagonal: geodesic on the WGS 84 ellipsoid, planar where ``crs`` is ``"local"``.
+
+        Examples
+        --------
+        >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 0.0], y=[0.0, 1.0], crs="EPSG:4326")
+        >>> network.distances().round(1)  # one degree along the meridian
+        array([[     0. , 110574.4],
+               [110574.4,      0. ]])
+        >>> network.subset([True, False]).distances()
+        array([[0.]])
+        """
         return ground.distances(self.x, self.y, self.x, self.y, self.crs)
 
     def nearest_first(
@@ -200,9 +259,28 @@ class GaugeNetwork:
         return np.lexsort((np.broadcast_to(rank, place.shape), place), axis=-1)
 
     def in_service(self, starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> npt.NDArray[np.bool_]:
-        """Return whether every gauge was in service over the whole of every interval, shape (n_steps, n_gauges).
+        """Return whether every gauge was in service over the whole of every interval.
 
-        An interval without times (NaT) counts as in service.
+        Parameters
+        ----------
+        starts, ends : array of datetime64, shape (n_steps,)
+            The intervals ``(start, end]``; one without times (NaT) counts as in service.
+
+        Returns
+        -------
+        array of bool, shape (n_steps, n_gauges)
+
+        Examples
+        --------
+        B closed at half past one, within the second hour.
+
+        >>> closed = np.array(["NaT", "2031-05-04T01:30"], dtype="datetime64[s]")
+        >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 9.0], y=[0.0, 0.0], crs="local", closed=closed)
+        >>> ends = np.array(["2031-05-04T01", "2031-05-04T02", "NaT"], dtype="datetime64[s]")
+        >>> network.in_service(ends - 3600, ends)
+        array([[ True,  True],
+               [ True, False],
+               [ True,  True]])
         """
         begins, finishes = starts[:, None], ends[:, None]
         late = begins < self.opened[None, :]

@@ -191,7 +191,40 @@ class RainRecord:
         step: str,
         zone: str = "",
     ) -> RainRecord:
-        """Return a record whose statuses follow from the depths: NaN is missing, 0 is zero, the rest is observed."""
+        """Return a record whose statuses follow from the depths: NaN is missing, 0 is zero, the rest is observed.
+
+        Parameters
+        ----------
+        gauges : tuple of str
+            Gauge ids, the columns.
+        starts, ends : array of datetime64, shape (n_steps,)
+            Every interval is ``(start, end]``.
+        depth : array-like of float, shape (n_steps, n_gauges)
+            mm; NaN where nothing is known. It is copied.
+        step, zone : str
+            As for :class:`RainRecord`.
+
+        Returns
+        -------
+        RainRecord
+
+        Raises
+        ------
+        DataError
+            Shapes disagree, ends do not increase, or a depth is negative or infinite.
+
+        Examples
+        --------
+        >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+        >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[0.0], [np.nan]], step="1h")
+        >>> [Status(code).label for code in record.status[:, 0]]
+        ['zero', 'missing']
+        >>> RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[0.0], [1.0]], step="1h")
+        Traceback (most recent call last):
+            ...
+        basinrain.errors.DataError: depth: found an array of shape (2, 1); expected (2, 2)
+        status: found an array of shape (2, 1); expected (2, 2)
+        """
         values = np.array(depth, dtype=float)
         status = np.where(np.isnan(values), Status.MISSING, np.where(values == 0, Status.ZERO, Status.OBSERVED)).astype(
             np.uint8
@@ -220,13 +253,52 @@ class RainRecord:
         return np.isin(self.status, [int(s) for s in REPORTING])
 
     def steps_of(self, totals: Sequence[KnownTotal]) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.int64]]:
-        """Return the steps of totals as far as the record has them: first and stop (exclusive), each (n_totals,)."""
+        """Return the whole steps that lie in each total's interval, as far as the record has them.
+
+        Parameters
+        ----------
+        totals : sequence of KnownTotal
+            Their gauges do not matter here.
+
+        Returns
+        -------
+        first, stop : array of int, shape (n_totals,)
+            Positions of steps, ``stop`` not included; equal where no whole step lies in the interval.
+
+        Examples
+        --------
+        >>> ends = np.array(["2031-05-04T01", "2031-05-04T02", "2031-05-04T03"], dtype="datetime64[s]")
+        >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, np.ones((3, 1)), step="1h")
+        >>> late = KnownTotal("A", np.datetime64("2031-05-04T01"), np.datetime64("2031-05-04T09"), 5.0)
+        >>> short = KnownTotal("A", np.datetime64("2031-05-04T01:10"), np.datetime64("2031-05-04T01:40"), 5.0)
+        >>> record.steps_of([late, short])
+        (array([1, 2]), array([3, 2]))
+        """
         first = np.searchsorted(self.starts, np.array([total.start for total in totals], dtype="datetime64[s]"))
         stop = np.searchsorted(self.ends, np.array([total.end for total in totals], dtype="datetime64[s]"), "right")
         return first, np.maximum(first, stop)
 
     def window(self, first: int, stop: int) -> RainRecord:
-        """Return the steps ``first`` to ``stop`` (exclusive); ``totals`` are kept whole."""
+        """Return the record of the steps ``first`` to ``stop`` (exclusive); ``totals`` are kept whole.
+
+        Parameters
+        ----------
+        first, stop : int
+            Positions of steps, as in a slice: what lies beyond the record is not there, and ``first`` equal to ``stop``
+            gives a record without steps.
+
+        Returns
+        -------
+        RainRecord
+            Its arrays are views of this record's.
+
+        Examples
+        --------
+        >>> ends = np.array(["2031-05-04T01", "2031-05-04T02", "2031-05-04T03"], dtype="datetime64[s]")
+        >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[1.0], [np.nan], [4.0]], step="1h")
+        >>> record.window(1, 9).depth.ravel(), len(record.window(2, 2))
+        (array([nan,  4.]), 0)
+        """
         return replace(
             self,
             starts=self.starts[first:stop],
@@ -237,6 +309,28 @@ class RainRecord:
         )
 
     def ordered(self, gauges: tuple[str, ...]) -> RainRecord:
-        """Return the same record with its columns in the order of ``gauges``, each of which must be a column."""
+        """Return the record with its columns in the order of ``gauges``.
+
+        Parameters
+        ----------
+        gauges : tuple of str
+            Ids of columns. A column that is not named is left out of the arrays; ``totals`` and ``recorders`` stay.
+
+        Returns
+        -------
+        RainRecord
+
+        Raises
+        ------
+        ValueError
+            An id is not a column of the record.
+
+        Examples
+        --------
+        >>> ends = np.array(["2031-05-04T01"], dtype="datetime64[s]")
+        >>> record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[1.0, np.nan]], step="1h")
+        >>> record.ordered(("B", "A")).depth
+        array([[nan,  1.]])
+        """
         order = [self.gauges.index(gauge) for gauge in gauges]
         return replace(self, gauges=tuple(gauges), depth=self.depth[:, order], status=self.status[:, order])

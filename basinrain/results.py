@@ -57,7 +57,19 @@ class StormResult:
     shapes: tuple[tuple[str, npt.NDArray[np.float64] | None], ...]
 
     def hyetograph(self, method: str) -> npt.NDArray[np.float64]:
-        """Return the basin hyetographs in mm, shape (n_steps, n_basins), timed by the storm's pattern."""
+        """Return the basin hyetographs, timed by the storm's pattern.
+
+        Parameters
+        ----------
+        method
+            One of ``depths``; ``KeyError`` for another.
+
+        Returns
+        -------
+        array of float, shape (n_steps, n_basins)
+            mm a step, a copy; sums to the basins' totals. NaN where the method has no number: at the step when the
+            basin mean keeps its own times, throughout when a gauge times a total that is missing.
+        """
         depths = self.depths[method]
         result = depths.depth.copy()
         for b, (_, shape) in enumerate(self.shapes):
@@ -70,7 +82,10 @@ class StormResult:
 class StormRun:
     """All storms of a job, with the tables that go to files, reports and notebooks.
 
-    Depths inside are mm, areas m²; the tables (data frames) are in the job's units, each quantity beside its unit.
+    Depths inside are mm, areas m²; the tables (data frames) are in the job's units, each quantity beside its unit. They
+    are :attr:`basin_means`, :attr:`storm_table`, :attr:`spread`, :attr:`weights`, :attr:`weights_compared`,
+    :attr:`gauge_totals`, :attr:`gauge_depths`, :attr:`infilled`, :attr:`hyetographs` and, with polygons,
+    :attr:`thiessen`. A number that does not exist is NaN in them, and blank in the files: never zero.
 
     Parameters
     ----------
@@ -96,6 +111,10 @@ class StormRun:
         Versions of this package and of the libraries that compute.
     facts
         Facts about the run that a report states, such as the grid's cell, as name and sentence.
+
+    Examples
+    --------
+    See :func:`basinrain.run_storm`, which makes one from a job: ``run.basin_means[["basin", "method", "depth"]]``.
     """
 
     name: str
@@ -173,7 +192,28 @@ class StormRun:
         return tables.thiessen(self)
 
     def write(self, folder: str | Path) -> Path:
-        """Write every table, the record of the run and the report as :func:`basinrain.writing.write_run` does."""
+        """Write every table, the record of the run and the report into a folder.
+
+        Parameters
+        ----------
+        folder
+            Made where it does not exist, its parents too; an earlier output there is replaced as a whole, once every
+            file of the new one is complete.
+
+        Returns
+        -------
+        Path
+            The folder.
+
+        Raises
+        ------
+        WriteError
+            It is a file, holds something that no earlier run wrote, or cannot be written.
+
+        See Also
+        --------
+        basinrain.writing.write_run : the same as a function.
+        """
         from basinrain.writing import write_run
 
         return write_run(self, folder)

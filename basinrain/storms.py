@@ -44,6 +44,14 @@ class Storm:
         The window ``(start, end]`` in the record's clock; NaT for storm totals without times.
     pattern
         What times the basin total: ``"mean"``, ``"nearest-recorder"`` or a gauge's id.
+
+    Examples
+    --------
+    >>> ends = np.datetime64("2031-05-04T00", "s") + np.arange(1, 5) * np.timedelta64(3600, "s")
+    >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[0.0], [4.0], [np.nan], [1.0]], step="1h")
+    >>> storm = Storm("Quill", 1, 3, record.starts[1], record.ends[2])
+    >>> storm.cut(record).depth.ravel(), storm.pattern
+    (array([ 4., nan]), 'mean')
     """
 
     name: str
@@ -54,7 +62,19 @@ class Storm:
     pattern: str = MEAN
 
     def cut(self, record: RainRecord) -> RainRecord:
-        """Return the storm's window of a record; a total without times of its own takes the storm's."""
+        """Return the storm's window of a record.
+
+        Parameters
+        ----------
+        record
+            The record whose steps ``first`` and ``stop`` count.
+
+        Returns
+        -------
+        RainRecord
+            NaN and statuses as they are. The row of a record of storm totals, which has no times of its own, takes the
+            storm's ``start`` and ``end`` where these are known.
+        """
         window = record.window(self.first, self.stop)
         if record.labels and not np.isnat(self.end):
             return replace(window, starts=np.array([self.start]), ends=np.array([self.end]))
@@ -82,6 +102,14 @@ def storm_window(
         the window only in part is taken whole, and a note says so.
     pattern
         ``"mean"``, ``"nearest-recorder"`` or the id of a gauge of the record.
+
+    Returns
+    -------
+    Storm
+        The window as taken: whole steps. Without ``start`` and ``end`` the whole record; of storm totals the row of
+        that name, with NaT for times that are not given.
+    tuple of Note
+        A note with code ``"window-widened"`` where the window was widened to whole steps, else none.
 
     Raises
     ------
@@ -167,6 +195,15 @@ def hyetograph_shape(
 ) -> list[tuple[str, npt.NDArray[np.float64] | None]]:
     """Return what times each basin's total.
 
+    Parameters
+    ----------
+    completed
+        The storm's window after infill.
+    storm
+        Its ``pattern`` says what times the totals.
+    network, basins
+        Positions for the nearest recorder, measured from each basin's centroid; equally near gauges go by id.
+
     Returns
     -------
     list of (str, array of shape (n_steps,) or None), one per basin
@@ -177,6 +214,20 @@ def hyetograph_shape(
     ------
     MethodError
         The gauge named has no depth at some step even after infill, or no rain; or no recorder has the storm.
+
+    Examples
+    --------
+    >>> import shapely
+    >>> network = GaugeNetwork(ids=("A", "B"), x=[2000.0, 9000.0], y=[5000.0, 5000.0], crs="local")
+    >>> basins = Basins(ids=("square",), polygons=[shapely.box(0, 0, 1e4, 1e4)], crs="local")
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> wet = RainRecord.from_depths(network.ids, ends - 3600, ends, [[3.0, np.nan], [1.0, 8.0]], step="1h")
+    >>> storm = Storm("Quill", 0, 2, wet.starts[0], wet.ends[-1], NEAREST_RECORDER)
+    >>> hyetograph_shape(Completed(wet, (), ()), storm, network, basins)
+    [('A', array([0.75, 0.25]))]
+    >>> dry = RainRecord.from_depths(network.ids, ends - 3600, ends, np.zeros((2, 2)), step="1h")
+    >>> hyetograph_shape(Completed(dry, (), ()), storm, network, basins)
+    [('mean', None)]
     """
     record = completed.record
     totals = record.depth.sum(axis=0)
@@ -249,7 +300,29 @@ def borrowed_times(storm: Storm, completed: Completed) -> Iterator[Note]:
 
 
 def status_of_total(record: RainRecord, column: int) -> str:
-    """Return in words how a gauge's storm total came about."""
+    """Return in words how a gauge's storm total came about.
+
+    Parameters
+    ----------
+    record
+        The storm's window after infill.
+    column
+        The gauge's place in ``record.gauges``.
+
+    Returns
+    -------
+    str
+        ``"not installed"`` throughout; ``"missing"`` where a step in service has no depth; ``"in service for part"``;
+        ``"infilled"`` throughout, ``"partly infilled"``; ``"spread"``, ``"estimated"`` or ``"adjusted"`` where a step
+        is, in this order; else ``"observed"``, a dry storm included.
+
+    Examples
+    --------
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, [[0.0, 2.0], [0.0, np.nan]], step="1h")
+    >>> status_of_total(record, 0), status_of_total(record, 1)
+    ('observed', 'missing')
+    """
     status = record.status[:, column]
     if (status == Status.NOT_INSTALLED).all():
         return Status.NOT_INSTALLED.label

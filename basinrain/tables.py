@@ -75,7 +75,11 @@ def _quotient(part: npt.NDArray[np.float64], whole: npt.NDArray[np.float64]) -> 
 
 
 def basin_means(run: StormRun) -> pd.DataFrame:
-    """Return ``basin_means``: one row per storm, basin and method."""
+    """Return ``basin_means``: one row per storm, basin and method.
+
+    ``depth`` and ``volume`` are NaN where the method has no number for the basin, or at some step no gauge has a depth;
+    ``share_infilled`` then is too. ``depth_reporting_only`` is NaN where at some step no gauge reports.
+    """
     mm, m2 = depth_factor(run.depth_unit), area_factor(run.area_unit)
     volume_unit = volume_unit_for(run.depth_unit)
     m3 = volume_factor(volume_unit)
@@ -110,7 +114,10 @@ def basin_means(run: StormRun) -> pd.DataFrame:
 
 
 def share_infilled(result: StormResult, method: str) -> npt.NDArray[np.float64]:
-    """Return the share of each basin's total that rests on infilled values; by weight where the basin stayed dry."""
+    """Return the share of each basin's total that rests on infilled values; by weight where the basin stayed dry.
+
+    Shape (n_basins,), 0 to 1; NaN where the total is missing. ``KeyError`` for a method that was not run.
+    """
     depths = result.depths[method]
     by_weight = 1 - depths.observed_share.mean(axis=0)
     by_depth = _quotient(depths.infilled, depths.total)
@@ -118,7 +125,11 @@ def share_infilled(result: StormResult, method: str) -> npt.NDArray[np.float64]:
 
 
 def storm_table(run: StormRun) -> pd.DataFrame:
-    """Return ``storms``: windows, totals, and the peak of the mean over the weighted mean of the gauges' peaks."""
+    """Return ``storms``: windows, totals, and the peak of the mean over the weighted mean of the gauges' peaks.
+
+    ``start`` and ``end`` are empty for storm totals without times. ``peak_ratio`` is NaN where a peak is not known or
+    the gauges stayed dry.
+    """
     mm = depth_factor(run.depth_unit)
     rows = []
     for result, method, depths in _depths(run):
@@ -146,7 +157,8 @@ def storm_table(run: StormRun) -> pd.DataFrame:
 def peaks(result: StormResult, method: str) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
     """Return the peak of each basin's mean and the weighted mean of the gauges' own peaks, both in mm a step.
 
-    The peak of a gauge that has no depth at some step is not known; nor is then a mean of peaks that needs it.
+    Each has shape (n_basins,). The peak of a gauge that has no depth at some step is not known (NaN); nor is then a
+    mean of peaks that needs it. ``KeyError`` for a method that was not run.
     """
     depths = result.depths[method]
     depth = result.completed.record.depth
@@ -154,7 +166,10 @@ def peaks(result: StormResult, method: str) -> tuple[npt.NDArray[np.float64], np
 
 
 def spread(run: StormRun) -> pd.DataFrame:
-    """Return ``spread``: the least and greatest basin mean across methods."""
+    """Return ``spread``: the least and greatest basin mean across methods, one row per storm and basin.
+
+    Methods without a number are left out; ``spread`` and ``spread_percent`` are NaN where fewer than two have one.
+    """
     mm = depth_factor(run.depth_unit)
     rows = []
     for result in run.storms:
@@ -165,7 +180,11 @@ def spread(run: StormRun) -> pd.DataFrame:
 
 
 def weights(run: StormRun) -> pd.DataFrame:
-    """Return ``weights``: one row per storm, basin, method and gauge that has weight or contributes."""
+    """Return ``weights``: one row per storm, basin, method and gauge that has weight or contributes.
+
+    No rows for a basin for which the method has no number. ``contribution`` and ``share`` are NaN where the basin's
+    total is missing, ``share`` also where the basin stayed dry.
+    """
     mm = depth_factor(run.depth_unit)
     rows: list[tuple[Any, ...]] = []
     for result, method, depths in _depths(run):
@@ -219,7 +238,11 @@ def weights_compared(run: StormRun) -> pd.DataFrame:
 
 
 def gauge_totals(run: StormRun) -> pd.DataFrame:
-    """Return ``gauge_totals``: one row per storm and gauge."""
+    """Return ``gauge_totals``: one row per storm and gauge.
+
+    ``depth`` is NaN where a step has none even after infill, or the gauge was not in service for the whole storm;
+    ``status`` says which (:func:`~basinrain.storms.status_of_total`).
+    """
     mm = depth_factor(run.depth_unit)
     rows = []
     for result in run.storms:
@@ -241,7 +264,11 @@ def gauge_totals(run: StormRun) -> pd.DataFrame:
 
 
 def gauge_depths(run: StormRun) -> pd.DataFrame:
-    """Return ``gauge_depths``: one row per storm, gauge and step, with the status of every value."""
+    """Return ``gauge_depths``: one row per storm, gauge and step, with the status of every value.
+
+    ``depth`` is NaN where the status says that nothing is known (:data:`~basinrain.rainfall.WITHOUT_DEPTH`); ``time``
+    is the step's end, empty for storm totals without times.
+    """
     import pandas as pd
 
     mm = depth_factor(run.depth_unit)
@@ -290,7 +317,10 @@ def infilled(run: StormRun) -> pd.DataFrame:
 
 
 def hyetographs(run: StormRun) -> pd.DataFrame:
-    """Return ``hyetographs``: one row per storm, basin, method and step."""
+    """Return ``hyetographs``: one row per storm, basin, method and step.
+
+    ``depth`` and ``observed_share`` are NaN at a step without a number, ``cumulative`` from there on.
+    """
     import pandas as pd
 
     mm = depth_factor(run.depth_unit)
@@ -317,7 +347,11 @@ def hyetographs(run: StormRun) -> pd.DataFrame:
 
 
 def thiessen(run: StormRun) -> gpd.GeoDataFrame:
-    """Return ``thiessen``: polygons of basin and gauge, with area and weight."""
+    """Return ``thiessen``: polygons of basin and gauge, with area and weight, all gauges present.
+
+    Longitude and latitude (EPSG:4326), or the metres of a local plane without a coordinate system. No row for a gauge
+    whose polygon does not reach the basin; nothing is NaN.
+    """
     import geopandas as gpd
     import shapely
 

@@ -115,11 +115,43 @@ class WeightTable:
         return np.asarray(means, dtype=float)
 
     def contributions(self, depths: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
-        """Return the depth that each gauge puts into each basin's mean, (n_basins, n_gauges); rows sum to the mean."""
+        """Return the depth that each gauge puts into each basin's mean; rows sum to the mean.
+
+        Parameters
+        ----------
+        depths : array of float, shape (n_gauges,)
+            mm; NaN where a gauge has no depth.
+
+        Returns
+        -------
+        array of float, shape (n_basins, n_gauges)
+            mm. A gauge without weight puts in 0 whatever its depth, NaN included; NaN at a gauge that has weight stays
+            NaN, as does the row of a basin for which the method has no number.
+
+        Examples
+        --------
+        >>> table = WeightTable("given", ("u", "v"), ("A", "B"), np.array([[1.0, 0.0], [0.5, 0.5]]))
+        >>> table.contributions(np.array([8.0, np.nan]))
+        array([[ 8.,  0.],
+               [ 4., nan]])
+        """
         return np.where(self.weights == 0, 0.0, self.weights * depths[None, :])
 
     def to_frame(self) -> pd.DataFrame:
-        """Return the weights as a data frame, basins down, gauges across."""
+        """Return the weights as a data frame, basins down, gauges across.
+
+        Returns
+        -------
+        pandas.DataFrame
+            A copy, shape (n_basins, n_gauges), its index named ``basin`` and its columns ``gauge``. A row of NaN says
+            that the method has no number for that basin.
+
+        Examples
+        --------
+        >>> table = WeightTable("given", ("u", "v"), ("A", "B"), np.array([[0.75, 0.25], [np.nan, np.nan]]))
+        >>> table.to_frame().loc["u", "A"], bool(table.to_frame().loc["v"].isna().all())
+        (np.float64(0.75), True)
+        """
         import pandas as pd
 
         return pd.DataFrame(
@@ -135,7 +167,7 @@ def compare(tables: Sequence[WeightTable], *, also: npt.NDArray[np.bool_] | None
     Parameters
     ----------
     tables
-        Tables of the same basins and gauges, one a method.
+        One or more, of the same basins and gauges, each by a method of its own.
     also : array of bool, shape (n_basins, n_gauges), optional
         Gauges to list though no method gives them weight, such as donors of infilled gauges.
 
@@ -144,7 +176,13 @@ def compare(tables: Sequence[WeightTable], *, also: npt.NDArray[np.bool_] | None
     pandas.DataFrame
         One row per basin and gauge that any method gives weight: columns ``basin``, ``gauge``, one per method, and
         ``difference``, the largest less the smallest weight. Basins in their order; within a basin by falling
-        difference, then by gauge id. A method without a number for the basin is NaN and does not enter the difference.
+        difference, then by gauge id. A method without a number for the basin is NaN and does not enter the difference,
+        which is 0 where one method alone has a number; a basin for which none has is left out.
+
+    Raises
+    ------
+    DataError
+        The tables are not of the same basins and gauges in the same order.
 
     Examples
     --------

@@ -193,3 +193,10 @@ def test_no_gauges_have_no_order() -> None:
     """An empty network has an empty order."""
     nobody = GaugeNetwork(ids=(), x=np.empty(0), y=np.empty(0), crs="local")
     assert nobody.nearest_first(np.empty(0)).shape == (0,)
+
+
+def test_a_mask_of_another_length_is_refused() -> None:
+    """A mask that is too short would leave gauges out without a word."""
+    network = GaugeNetwork(ids=("A", "B", "C"), x=np.arange(3.0), y=np.zeros(3), crs="local")
+    with pytest.raises(IndexError, match="boolean index did not match"):
+        network.subset([True, False])

@@ -30,6 +30,12 @@ def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
         else text. A table that may repeat is counted from 1: ``"rainfall.2.unit=in"``; the number may be left out where
         there is one.
 
+    Returns
+    -------
+    Job
+        With every default resolved and the file's folder as the start of relative paths. None of the files
+        that it names is opened.
+
     Raises
     ------
     ReadError
@@ -89,6 +95,18 @@ def parse_job(
         As for :func:`read_job`.
     file, text
         Name and text of the file, for the place of a problem.
+
+    Returns
+    -------
+    Job
+        With every default resolved. No file is opened; ``content`` is left as it is.
+
+    Raises
+    ------
+    JobError
+        A key or a value is not known, or one is missing; all of them together.
+    SettingError
+        One of ``settings`` is not ``TABLE.KEY=VALUE`` or cannot be placed.
 
     Examples
     --------

@@ -260,7 +260,46 @@ class AveragingTable(_Table):
 class Job(_Table):
     """A whole job, as resolved: what the file says, what ``--set`` changed, and every default.
 
-    ``folder`` is where relative paths start, the job file's own folder.
+    It cannot be changed; :func:`~basinrain.jobfile.parse_job` and :func:`~basinrain.jobfile.read_job` make one, and
+    raise :class:`~basinrain.errors.JobError` with every problem of its keys and values.
+
+    Parameters
+    ----------
+    job : JobTable
+        ``[job]``: name, units of the results, output folder, working plane.
+    gauges : GaugesTable
+        ``[gauges]``: the file of gauges.
+    rainfall : tuple of RainfallTable
+        ``[[rainfall]]``: the sources of depths, one at least.
+    step : StepTable
+        ``[step]``: the common step; by default that of the sources.
+    basins : BasinsTable
+        ``[basins]``: the file of watershed polygons.
+    storm : tuple of StormTable
+        ``[[storm]]``: windows of the record; without one the whole record is the storm.
+    infill : InfillTable
+        ``[infill]``: how gaps are filled.
+    averaging : AveragingTable
+        ``[averaging]``: the methods that are run and compared, and their options.
+    folder : Path
+        Where relative paths start, the job file's own folder; not a key of the file.
+
+    Examples
+    --------
+    >>> from basinrain.jobfile import parse_job
+    >>> job = parse_job(
+    ...     {
+    ...         "job": {"name": "Two gauges", "depth_unit": "in"},
+    ...         "gauges": {"file": "gauges.csv"},
+    ...         "rainfall": {"file": "rain.csv", "unit": "0.01 in", "interval": "1h"},
+    ...         "basins": {"file": "basins.geojson"},
+    ...     },
+    ...     folder="jobs",
+    ... )
+    >>> job.job.depth_unit, job.job.area_unit, job.infill.method, job.storm
+    ('in', 'km2', 'inverse-distance', ())
+    >>> [path.as_posix() for path in job.inputs]
+    ['jobs/gauges.csv', 'jobs/rain.csv', 'jobs/basins.geojson']
     """
 
     job: JobTable
@@ -274,7 +313,7 @@ class Job(_Table):
     folder: Annotated[Path, Field(exclude=True)] = Path()
 
     def path(self, name: str) -> Path:
-        """Return the path of a file that the job names."""
+        """Return the path of a file that the job names; an absolute ``name`` is that path itself."""
         return self.folder / name
 
     @property

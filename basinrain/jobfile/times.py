@@ -82,8 +82,8 @@ def _moment(
     if text is None:
         return None
     if is_month(text):
-        month = np.datetime64(text, "M") + np.timedelta64(int(at_end), "M")
-        return np.datetime64(month, "s") + day_start
+        year, month = divmod(12 * int(text[:4]) + int(text[5:]) - 1 + int(at_end), 12)
+        return np.datetime64(f"{year:04d}-{month + 1:02d}-01", "s") + day_start
     when = datetime.fromisoformat(text)
     local = np.datetime64(when.replace(tzinfo=None), "s")
     if "T" not in text and " " not in text:

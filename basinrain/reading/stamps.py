@@ -126,8 +126,9 @@ def read_stamps(texts: Sequence[str], rules: StampRules, *, zone: str | None = N
     """
     cells = list(texts)
     parsed = _parse_iso(cells) if rules.time_format is None else _parse_format(cells, rules.time_format)
+    remedy = "correct the stamp, or declare its form in time_format"
     faults = [
-        StampFault(int(row), f"'{cells[row]}'", f"a time such as {rules.time_format or _FORMS}", "correct the stamp")
+        StampFault(int(row), f"'{cells[row]}'", f"a time such as {rules.time_format or _FORMS}", remedy)
         for row in np.flatnonzero(parsed.kind == _BAD)
     ]
     faults += _mixed(parsed, cells, rules, zone)

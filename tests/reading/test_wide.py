@@ -54,7 +54,8 @@ def test_problems_of_a_file_together(tmp_path: Path) -> None:
     assert str(caught.value).splitlines() == [
         (
             f"{path}:4: column time: found 'noon'; expected a time such as 2031-05-04 08:00, "
-            "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp"
+            "2031-05-04T08:00:00+02:00, 2031-05-04 or 2031-05; correct the stamp, or "
+            "declare its form in time_format"
         ),
         (
             f"{path}:2: column W01: gauge W01: found 'wet'; expected a depth of 0 or more; correct the cell, or "
