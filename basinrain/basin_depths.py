@@ -2,20 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.averaging import Weigher
 from basinrain.errors import MethodError
 from basinrain.infill import Completed
 from basinrain.rainfall import RainRecord, Status
 from basinrain.weights import WeightTable
 
 __all__ = ["BasinDepths", "average_storm", "spread_across_methods"]
-
-Weigher = Callable[[npt.NDArray[np.bool_]], WeightTable]
 
 
 @dataclass(frozen=True, eq=False)

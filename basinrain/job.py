@@ -11,13 +11,13 @@ from dataclasses import replace
 from functools import partial
 from importlib.metadata import version
 from pathlib import Path
-from typing import Any, TypeVar, cast
+from typing import TypeVar, cast
 
 import numpy as np
 import numpy.typing as npt
 
 from basinrain import reading
-from basinrain.averaging import Grid, Weigher, averaging_method, choose_grid
+from basinrain.averaging import Weigher, averaging_method
 from basinrain.basin_depths import average_storm
 from basinrain.basins import Basins
 from basinrain.catch import correct_catch
@@ -25,10 +25,10 @@ from basinrain.cautions import network_cautions, record_cautions, storm_cautions
 from basinrain.colocated import merge_colocated
 from basinrain.errors import BasinRainError, DataError, JobError, MethodError, Problem, Problems, ReadError
 from basinrain.gauges import GaugeNetwork, refuse_colocated
-from basinrain.infill import InfillOptions, complete
+from basinrain.infill import Completed, InfillOptions, complete
 from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.jobfile import Job, read_job
-from basinrain.jobfile.tables import StormTable
+from basinrain.jobfile.tables import RainfallTable, StormTable
 from basinrain.jobfile.times import rainfall_day_start, storm_window_times
 from basinrain.notes import Note, once
 from basinrain.rainfall import RainRecord, Status
@@ -110,12 +110,17 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     notes += window_notes
 
     say("weights")
-    weighers, grid = _weighers(job, network, basins)
-    facts = _facts(job, grid)
+    weighers = _weighers(job, network, basins)
+    options = InfillOptions(**job.infill.model_dump())
+    # Of the whole record, since a gap may be longer than the storm.
+    long = longer_than(record, gap_mask(record), options.longest_gap)
     results = []
     for storm in storms:
         say(f"storm {storm.name}")
-        result, found = _run_one(job, storm, record, network, basins, weighers)
+        window = storm.cut(record)
+        _require_reporting(storm, window)
+        completed = complete(window, network, options, long=long[storm.first : storm.stop])
+        result, found = _run_one(job, storm, completed, network, basins, weighers)
         results.append(result)
         notes += found
     in_use = np.any([~(r.completed.record.status == Status.NOT_INSTALLED).all(axis=0) for r in results], axis=0)
@@ -133,7 +138,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
         notes=once(notes, [storm.name for storm in storms]),
         inputs=_digests(job),
         versions={name: version(name) for name in ("basinrain", "numpy", "scipy", "shapely", "pyproj", "pandas")},
-        facts=facts,
+        facts=_facts(job, results[0]),
     )
 
 
@@ -182,7 +187,7 @@ def _read_gauges(job: Job) -> GaugeNetwork:
     )
 
 
-def _read_source(job: Job, table: Any) -> RainRecord:  # noqa: ANN401 - RainfallTable; its fields are the reader's
+def _read_source(job: Job, table: RainfallTable) -> RainRecord:
     options = table.model_dump(exclude={"file", "files"})
     return reading.read_rainfall([job.path(name) for name in table.paths], **options)
 
@@ -248,23 +253,17 @@ def _catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.
     return factors
 
 
-def _weighers(job: Job, network: GaugeNetwork, basins: Basins) -> tuple[dict[str, Weigher], Grid | None]:
-    """Prepare every averaging method once; the grid is laid once, on the full network."""
-    grid = None
-    weighers = {}
-    for name in job.averaging.methods:
-        options = job.averaging.options(name)
-        if name == "idw":
-            grid = choose_grid(network, basins, **options)
-            options = {**{k: v for k, v in options.items() if k != "cell"}, "grid": grid}
-        weighers[name] = averaging_method(name)(network, basins, options)
-    return weighers, grid
+def _weighers(job: Job, network: GaugeNetwork, basins: Basins) -> dict[str, Weigher]:
+    """Prepare every averaging method once, on the full network."""
+    return {
+        name: averaging_method(name)(network, basins, job.averaging.options(name)) for name in job.averaging.methods
+    }
 
 
-def _facts(job: Job, grid: Grid | None) -> dict[str, str]:
-    facts = {}
-    if grid is not None:
-        facts["grid"] = grid.sentence
+def _facts(job: Job, result: StormResult) -> dict[str, str]:
+    """Return what the methods tell of themselves, and what was given for normals and catch."""
+    tables = [depths.table for depths in result.depths.values()]
+    facts = {note.code: note.text for table in tables for note in table.notes if note.level == "info"}
     if job.gauges.normal_period:
         facts["normals"] = f"Normals of {job.gauges.normal_period}."
     if job.gauges.catch_factor:
@@ -272,15 +271,7 @@ def _facts(job: Job, grid: Grid | None) -> dict[str, str]:
     return facts
 
 
-def _run_one(  # noqa: PLR0917 - each room's product, in order
-    job: Job,
-    storm: Storm,
-    record: RainRecord,
-    network: GaugeNetwork,
-    basins: Basins,
-    weighers: dict[str, Weigher],
-) -> tuple[StormResult, tuple[Note, ...]]:
-    window = storm.cut(record)
+def _require_reporting(storm: Storm, window: RainRecord) -> None:
     if not window.reporting.any():
         raise DataError(
             Problem(
@@ -290,10 +281,16 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
                 remedy="correct the storm's times, or add a record",
             )
         )
-    options = InfillOptions(**job.infill.model_dump())
-    # A gap may be longer than the storm.
-    long = longer_than(record, gap_mask(record), options.longest_gap)[storm.first : storm.stop]
-    completed = complete(window, network, options, long=long)
+
+
+def _run_one(  # noqa: PLR0917 - each room's product, in order
+    job: Job,
+    storm: Storm,
+    completed: Completed,
+    network: GaugeNetwork,
+    basins: Basins,
+    weighers: dict[str, Weigher],
+) -> tuple[StormResult, tuple[Note, ...]]:
     depths = {name: average_storm(completed, weigher) for name, weigher in weighers.items()}
     shapes = hyetograph_shape(completed, storm, network, basins)
     if not any(d.table.answered.any() for d in depths.values()):

@@ -189,7 +189,6 @@ def weights(run: StormRun) -> pd.DataFrame:
     rows: list[tuple[Any, ...]] = []
     for result, method, depths in _depths(run):
         share = _quotient(depths.contribution, depths.total[:, None])
-        reports: npt.NDArray[np.bool_] = np.asarray(result.completed.record.reporting.any(axis=0))
         for b, basin in enumerate(run.basins.ids):
             weight = depths.table.weights[b]
             counts = np.flatnonzero((np.nan_to_num(weight) != 0) | (np.nan_to_num(depths.most[b]) != 0))
@@ -200,8 +199,8 @@ def weights(run: StormRun) -> pd.DataFrame:
                     method,
                     run.network.ids[g],
                     weight[g],
-                    depths.least[b, g] if reports[g] else 0.0,
-                    depths.most[b, g] if reports[g] else 0.0,
+                    depths.least[b, g],
+                    depths.most[b, g],
                     depths.contribution[b, g] / mm,
                     run.depth_unit,
                     share[b, g],

@@ -207,7 +207,7 @@ def prepare_idw(
     def weigh(present: npt.NDArray[np.bool_]) -> WeightTable:
         mask = presence(network, present)
         weights, covered = _basin_weights(network, mask, laid, surface)
-        notes = [Note(code="idw-grid", text=laid.sentence, level="info", method="idw")]
+        notes = [Note(code="grid", text=laid.sentence, level="info", method="idw")]
         if radius is not None and mask.any():
             notes += _coverage(basins, covered, radius, allowed=allow_uncovered)
         return WeightTable("idw", basins.ids, network.ids, weights, covered=covered, notes=tuple(notes))

@@ -113,7 +113,7 @@ def test_cells_out_of_reach_may_be_allowed() -> None:
     assert table.weights[0].sum() == pytest.approx(1.0, rel=1e-12)
     assert np.isnan(table.weights[1]).all()
     assert table.covered == pytest.approx([reached.sum() / 100, 0.0], abs=1e-3)
-    assert [note.code for note in table.notes] == ["idw-grid", "covered-in-part", "covered-in-part"]
+    assert [note.code for note in table.notes] == ["grid", "covered-in-part", "covered-in-part"]
     assert table.notes[1].text.startswith("Basin square has a gauge within 1500 m of ")
 
 
