@@ -14,11 +14,11 @@ if TYPE_CHECKING:
     from basinrain.errors import BasinRainError
     from basinrain.gauges import GaugeNetwork
     from basinrain.infill import InfillOptions, complete
-    from basinrain.job import run_storm
+    from basinrain.job import run_infill, run_screen, run_storm
     from basinrain.jobfile import Job, parse_job, read_job
     from basinrain.rainfall import RainRecord, Status
     from basinrain.reading import bring_to_step, read_basins, read_gauges, read_rainfall, settle
-    from basinrain.results import StormRun
+    from basinrain.results import InfillRun, ScreenRun, StormRun
     from basinrain.weights import WeightTable, compare
 
 __all__ = [
@@ -26,8 +26,10 @@ __all__ = [
     "Basins",
     "GaugeNetwork",
     "InfillOptions",
+    "InfillRun",
     "Job",
     "RainRecord",
+    "ScreenRun",
     "Status",
     "StormRun",
     "WeightTable",
@@ -41,6 +43,8 @@ __all__ = [
     "read_gauges",
     "read_job",
     "read_rainfall",
+    "run_infill",
+    "run_screen",
     "run_storm",
     "settle",
     "thiessen_weights",
@@ -51,8 +55,10 @@ _ROOMS = {
     "Basins": "basins",
     "GaugeNetwork": "gauges",
     "InfillOptions": "infill",
+    "InfillRun": "results",
     "Job": "jobfile",
     "RainRecord": "rainfall",
+    "ScreenRun": "results",
     "Status": "rainfall",
     "StormRun": "results",
     "WeightTable": "weights",
@@ -66,6 +72,8 @@ _ROOMS = {
     "read_gauges": "reading",
     "read_job": "jobfile",
     "read_rainfall": "reading",
+    "run_infill": "job",
+    "run_screen": "job",
     "run_storm": "job",
     "settle": "reading",
     "thiessen_weights": "averaging",

@@ -29,8 +29,11 @@ class BasinDepths:
         Basin means in mm; NaN where the method has no number.
     infilled : array of float, shape (n_basins,)
         mm of the total that rest on infilled values.
+    reporting : array of float, shape (n_steps, n_basins)
+        Basin means in mm with weights rebuilt at every step from the gauges that report; NaN where none does, or where
+        the method refuses those that do.
     reporting_only : array of float, shape (n_basins,)
-        Total in mm with weights rebuilt at every step from the gauges that report; NaN where at some step none does.
+        Total of ``reporting`` in mm; NaN where it is at some step.
     contribution : array of float, shape (n_basins, n_gauges)
         mm of the total that come from each gauge's own values, directly and through infill; rows sum to the total.
     least, most : array of float, shape (n_basins, n_gauges)
@@ -56,6 +59,7 @@ class BasinDepths:
     table: WeightTable
     depth: npt.NDArray[np.float64]
     infilled: npt.NDArray[np.float64]
+    reporting: npt.NDArray[np.float64]
     reporting_only: npt.NDArray[np.float64]
     contribution: npt.NDArray[np.float64]
     least: npt.NDArray[np.float64]
@@ -138,11 +142,13 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
             out=np.full(n_basins, np.nan),
             where=weight_sum != 0,
         )
+    means, reporting_only = _reporting(record, weigh, n_basins)
     return BasinDepths(
         table=table,
         depth=depth,
         infilled=infilled,
-        reporting_only=_reporting_only(record, weigh, n_basins),
+        reporting=means,
+        reporting_only=reporting_only,
         contribution=contribution,
         least=np.where(np.isinf(least), np.nan, least),
         most=np.where(np.isinf(most), np.nan, most),
@@ -151,20 +157,28 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     )
 
 
-def _reporting_only(record: RainRecord, weigh: _Remembered, n_basins: int) -> npt.NDArray[np.float64]:
+def _reporting(
+    record: RainRecord, weigh: _Remembered, n_basins: int
+) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
+    """Return the means of the reporting gauges, (n_steps, n_basins), and their totals."""
     patterns, group = np.unique(record.reporting, axis=0, return_inverse=True)
+    order = np.argsort(group.ravel(), kind="stable")
+    split = np.searchsorted(group.ravel()[order], np.arange(1, len(patterns)))
+    means = np.full((len(record), n_basins), np.nan)
     total = np.zeros(n_basins)
-    for k, pattern in enumerate(patterns):
-        if not pattern.any():
-            return np.full(n_basins, np.nan)
+    for pattern, steps in zip(patterns, np.split(order, split), strict=True):
         try:
-            table = weigh.seldom(pattern)
+            table = weigh.seldom(pattern) if pattern.any() else None
         except MethodError:
             # The gauges that happen to report do not reach the basin: this one figure has no number, the run goes on.
-            return np.full(n_basins, np.nan)
-        depth = np.where(pattern, record.depth[group == k], 0.0).sum(axis=0)
-        total += table.apply(np.where(pattern, depth, np.nan))
-    return total
+            table = None
+        if table is None:
+            total[:] = np.nan
+            continue
+        depth = np.where(pattern, record.depth[steps], np.nan)
+        means[steps] = table.apply(depth)
+        total += table.apply(depth.sum(axis=0))
+    return means, total
 
 
 class _Remembered:

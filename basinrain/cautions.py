@@ -5,7 +5,7 @@ The limits are conventions of this package, chosen to make a reader look, not to
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 
 import numpy as np
 import numpy.typing as npt
@@ -16,9 +16,11 @@ from basinrain.basins import Basins
 from basinrain.gauges import GaugeNetwork
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
+from basinrain.screening import Finding, Screening
+from basinrain.storms import Storm
 from basinrain.units import depth_factor
 
-__all__ = ["network_cautions", "record_cautions", "storm_cautions"]
+__all__ = ["network_cautions", "record_cautions", "screening_cautions", "storm_cautions"]
 
 _DOMINANT_WEIGHT = 0.5
 _INFILLED_SHARE = 0.25
@@ -167,6 +169,57 @@ def storm_cautions(
             "others there.",
             storm=storm,
         )
+
+
+def screening_cautions(screening: Screening, storms: Sequence[Storm]) -> Iterator[Note]:
+    """Yield what screening found in the storms and the job has not settled: one warning a finding, one for the rest.
+
+    Parameters
+    ----------
+    screening
+        Findings with their states.
+    storms
+        The storms of the run.
+
+    Examples
+    --------
+    >>> may = [np.datetime64(f"2031-05-0{day}", "s") for day in range(1, 6)]
+    >>> finding = Finding(
+    ...     check="stuck-values",
+    ...     gauge="A",
+    ...     start=may[1],
+    ...     end=may[2],
+    ...     evidence="0.4 mm stands at 14 steps on end.",
+    ...     action="Reject the stretch.",
+    ... )
+    >>> storms = [Storm("Quill", 0, 24, may[0], may[1]), Storm("Reed", 24, 48, may[1], may[2])]
+    >>> [str(note) for note in screening_cautions(Screening(findings=(finding,)), storms)]
+    ['Reed: Screening, stuck-values: gauge A: 0.4 mm stands at 14 steps on end.']
+    """
+    unsettled = [found for found in screening.findings if found.state == "open" and found.severity != "remark"]
+    told = set()
+    for storm in storms:
+        for k, found in enumerate(unsettled):
+            if found.whole_record or np.isnat(storm.end) or (found.start < storm.end and found.end > storm.start):
+                told.add(k)
+                yield Note(
+                    code="screening",
+                    text=f"Screening, {found.check}: {_of_gauge(found)}{found.evidence}",
+                    storm=storm.name,
+                    gauge=found.gauge,
+                )
+    rest = len(unsettled) - len(told)
+    if rest:
+        yield Note(
+            code="screening-elsewhere",
+            text=f"Screening found {rest} other doubtful or erroneous stretch{'es' if rest > 1 else ''} of the record, "
+            "outside the storms; normals and the relations between gauges rest on them too.",
+            level="info",
+        )
+
+
+def _of_gauge(found: Finding) -> str:
+    return f"gauge {found.gauge}: " if found.gauge else ""
 
 
 def _no_number(storm: str, basin: str, series: Mapping[str, npt.NDArray[np.float64]]) -> Iterator[Note]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 from typing import Any, Final
 
 import numpy as np
@@ -136,11 +137,12 @@ class GaugeNetwork:
         """Return the place of ``gauge`` in the network's order; ``ValueError`` when it is not there."""
         return self.ids.index(gauge)
 
-    @property
+    @cached_property
     def id_rank(self) -> npt.NDArray[np.int64]:
-        """The rank of every gauge's id in sorted order, by which ties are broken."""
+        """The rank of every gauge's id in sorted order, by which ties are broken; read-only."""
         rank = np.empty(len(self), dtype=np.int64)
         rank[sorted(range(len(self)), key=lambda i: self.ids[i])] = np.arange(len(self))
+        rank.setflags(write=False)
         return rank
 
     def subset(self, mask: Sequence[bool] | npt.NDArray[np.bool_]) -> GaugeNetwork:
@@ -253,6 +255,8 @@ class GaugeNetwork:
         order = np.argsort(distances, axis=-1, kind="stable")
         ranked = np.take_along_axis(distances, order, axis=-1)
         farther = ranked[..., 1:] > ranked[..., :-1] * (1 + _TIE)
+        if farther.all():
+            return order
         place = np.zeros(order.shape, dtype=np.int64)
         np.put_along_axis(place, order[..., 1:], np.cumsum(farther, axis=-1), axis=-1)
         rank = self.id_rank if gauges is None else self.id_rank[gauges]

@@ -24,6 +24,7 @@ __all__ = [
     "LOCAL",
     "LONLAT",
     "Plane",
+    "azimuths",
     "degree_fault",
     "distances",
     "equal_area_plane",
@@ -318,3 +319,36 @@ def distances(
     )
     _, _, metres = pyproj.Geod(ellps="WGS84").inv(lon_1, lat_1, lon_2, lat_2)
     return np.asarray(metres, dtype=float).reshape(shape)
+
+
+def azimuths(
+    from_x: npt.NDArray[np.float64],
+    from_y: npt.NDArray[np.float64],
+    to_x: npt.NDArray[np.float64],
+    to_y: npt.NDArray[np.float64],
+    crs: str,
+) -> npt.NDArray[np.float64]:
+    """Return azimuths in degrees from every position to every other, shape (n_from, n_to).
+
+    Clockwise from true north, 0 or more and below 360, at the start of the geodesic on the WGS 84 ellipsoid; clockwise
+    from the y axis when ``crs`` is ``"local"``. Without meaning where the two positions are one.
+
+    Examples
+    --------
+    >>> here = np.array([0.0])
+    >>> azimuths(here, here, np.array([0.0, 5.0, 0.0, -5.0]), np.array([5.0, 0.0, -5.0, 0.0]), "local")
+    array([[  0.,  90., 180., 270.]])
+    >>> azimuths(here, here, np.array([1.0]), np.array([0.0]), "EPSG:4326")  # along the equator
+    array([[90.]])
+    """
+    if crs == LOCAL:
+        degrees = np.degrees(np.arctan2(to_x[None, :] - from_x[:, None], to_y[None, :] - from_y[:, None]))
+        return np.asarray(degrees % 360.0 % 360.0, dtype=float)
+    lon1, lat1 = transform(from_x, from_y, crs, LONLAT)
+    lon2, lat2 = transform(to_x, to_y, crs, LONLAT)
+    shape = (len(lon1), len(lon2))
+    lon_1, lat_1, lon_2, lat_2 = (
+        np.broadcast_to(v, shape).ravel() for v in (lon1[:, None], lat1[:, None], lon2[None, :], lat2[None, :])
+    )
+    forward, _, _ = pyproj.Geod(ellps="WGS84").inv(lon_1, lat_1, lon_2, lat_2)
+    return np.asarray(forward, dtype=float).reshape(shape) % 360.0 % 360.0

@@ -1,45 +1,42 @@
 """The run of a job: the only place that knows the order of the rooms.
 
-reading → screening → infill → averaging → storms → cautions; writing and report take the result from here.
+inputs (reading → edits → screening) → infill → averaging → storms → cautions; writing and report take the result.
 """
 
 from __future__ import annotations
 
-import hashlib
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from functools import partial
 from importlib.metadata import version
 from pathlib import Path
-from typing import TypeVar, cast
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
 
-from basinrain import reading
 from basinrain.averaging import Weigher, averaging_method
 from basinrain.basin_depths import average_storm
 from basinrain.basins import Basins
-from basinrain.catch import correct_catch
-from basinrain.cautions import network_cautions, record_cautions, storm_cautions
-from basinrain.colocated import merge_colocated
-from basinrain.errors import BasinRainError, DataError, JobError, MethodError, Problem, Problems, ReadError
-from basinrain.gauges import GaugeNetwork, refuse_colocated
-from basinrain.infill import Completed, InfillOptions, complete
+from basinrain.cautions import network_cautions, record_cautions, screening_cautions, storm_cautions
+from basinrain.errors import DataError, JobError, MethodError, Problem, Problems
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill import Completed, complete
 from basinrain.infill.gaps import gap_mask, longer_than
+from basinrain.infill.leave_one_out import Comparison
+from basinrain.infill_choice import InfillChoice, choose_infill, compare
+from basinrain.infill_effect import infill_effect, infill_spread_cautions
+from basinrain.inputs import Inputs, attempt, input_digests, read_inputs, window_of
 from basinrain.jobfile import Job, read_job
-from basinrain.jobfile.tables import RainfallTable, StormTable
-from basinrain.jobfile.times import rainfall_day_start, storm_window_times
+from basinrain.jobfile.tables import StormTable
 from basinrain.notes import Note, once
 from basinrain.rainfall import RainRecord, Status
-from basinrain.results import StormResult, StormRun
+from basinrain.results import InfillRun, ScreenRun, StormResult, StormRun
+from basinrain.series_check import series_check
 from basinrain.storms import Storm, borrowed_times, hyetograph_shape, storm_window
 
-__all__ = ["run_storm"]
+__all__ = ["run_infill", "run_screen", "run_storm"]
 
-_SHAPEFILE_PARTS = frozenset({".shp", ".shx", ".dbf", ".prj", ".cpg"})
-
-_T = TypeVar("_T")
 Report = Callable[[str], None]
 
 
@@ -83,10 +80,126 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     >>> run.basin_means[["basin", "method", "depth"]].values.tolist()
     [['1', 'arithmetic', 20.0], ['1', 'thiessen', 25.25]]
     """
-    say = progress or (lambda _: None)
+    job, say = _resolve(job, settings), progress or (lambda _: None)
+    given = read_inputs(job, say)
+    network, record, basins = given.network, given.record, given.basins
+    storms, window_notes = _storms(job, record)
+
+    say("weights")
+    weighers = _weighers(job, network, basins)
+    infill = choose_infill(job, record, network, say)
+    # Of the whole record, since a gap may be longer than the storm.
+    long = longer_than(record, gap_mask(record), infill.options.longest_gap)
+    results = []
+    notes = [*given.notes, *window_notes, *infill.notes]
+    for storm in storms:
+        say(f"storm {storm.name}")
+        window = storm.cut(record)
+        _require_reporting(storm, window)
+        completed = infill.complete(window, network, long=long[storm.first : storm.stop])
+        result, found = _run_one(job, storm, completed, network, basins, weighers)
+        result, moved = _moved(job, result, window, infill, network, weighers, long[storm.first : storm.stop])
+        found += moved
+        results.append(result)
+        notes += found
+    in_use = np.any([~(r.completed.record.status == Status.NOT_INSTALLED).all(axis=0) for r in results], axis=0)
+    notes += (*network_cautions(network.subset(in_use), basins), *record_cautions(record))
+    notes += screening_cautions(given.screening, storms)
+    return StormRun(
+        **_common(job, given),
+        storms=tuple(results),
+        comparison=infill.comparison,
+        notes=once(notes, [storm.name for storm in storms]),
+        facts={**_facts(job, results[0]), **_choice(infill.comparison)},
+    )
+
+
+def run_screen(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> ScreenRun:
+    """Screen a job's record: is it fit to use.
+
+    Parameters
+    ----------
+    job, settings, progress
+        As for :func:`run_storm`.
+
+    Returns
+    -------
+    ScreenRun
+        Nothing has been written, and nothing changed but what the job's edits and rejections say.
+
+    Raises
+    ------
+    BasinRainError
+        The job, a file, an edit or an entry of ``[screening]`` is at fault; every problem found is listed.
+    """
+    job, say = _resolve(job, settings), progress or (lambda _: None)
+    given = read_inputs(job, say)
+    notes = (*given.notes, *record_cautions(given.record))
+    return ScreenRun(**_common(job, given), raw=given.raw, notes=once(notes, ()))
+
+
+def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> InfillRun:
+    """Compare the infill methods on a job's own network, gauge by gauge left out, and complete its record.
+
+    Parameters
+    ----------
+    job, settings, progress
+        As for :func:`run_storm`.
+
+    Returns
+    -------
+    InfillRun
+        Nothing has been written. The whole record is infilled by the method that the job names, or by the one that
+        the comparison takes where it names ``"leave-one-out"``; day by day unless the job gives another scale.
+
+    Raises
+    ------
+    BasinRainError
+        The job, a file or the data are at fault; every problem found is listed.
+    """
+    job, say = _resolve(job, settings), progress or (lambda _: None)
+    given = read_inputs(job, say)
+    say("comparing")
+    comparison = compare(job, given.record, given.network, say)
+    infill = choose_infill(job, given.record, given.network, say, comparison=comparison, whole_record=True)
+    say("completing")
+    completed = infill.complete(given.record, given.network)
+    notes = (*given.notes, *infill.notes, *completed.notes, *record_cautions(given.record))
+    return InfillRun(**_common(job, given), comparison=comparison, completed=completed, notes=once(notes, ()), facts=_choice(comparison))
+
+
+def _moved(  # noqa: PLR0917 - each room's product, in order
+    job: Job,
+    result: StormResult,
+    window: RainRecord,
+    infill: InfillChoice,
+    network: GaugeNetwork,
+    weighers: dict[str, Weigher],
+    long: npt.NDArray[np.bool_],
+) -> tuple[StormResult, tuple[Note, ...]]:
+    """Return a storm's result with how far infilling moved it; nothing is said where nothing was infilled."""
+    checks = series_check(result.completed.record, result.depths)
+    if not result.completed.estimates:
+        return replace(result, checks=checks), ()
+    effect = infill_effect(
+        window,
+        network,
+        result.completed,
+        weighers,
+        options=infill.options,
+        long=long,
+        relations=infill.relations,
+        ratios=infill.ratios,
+    )
+    ids = next(iter(result.depths.values())).table.basins
+    notes = infill_spread_cautions(result.storm.name, ids, effect, depth_unit=job.job.depth_unit)
+    return replace(result, effect=effect, checks=checks), tuple(notes)
+
+
+def _resolve(job: Job | str | Path, settings: Sequence[str]) -> Job:
     if not isinstance(job, Job):
-        job = read_job(job, settings)
-    elif settings:
+        return read_job(job, settings)
+    if settings:
         raise JobError(
             Problem(
                 item="settings",
@@ -95,115 +208,26 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
                 remedy="give them to read_job",
             )
         )
-    say("reading")
-    network, record, basins, notes = _read(job)
-    network, basins, plane, ground_notes = reading.settle(network, basins, plane=job.job.plane)
-    notes += ground_notes
-    # Each gauge has a catch of its own, so it is corrected before gauges at one place are merged.
-    record = correct_catch(record, _catch_factors(job, network))
-    if job.gauges.colocated == "mean":
-        network, record, merged = merge_colocated(network, record)
-        notes += merged
-    else:
-        refuse_colocated(network)
-    storms, window_notes = _storms(job, record)
-    notes += window_notes
-
-    say("weights")
-    weighers = _weighers(job, network, basins)
-    options = InfillOptions(**job.infill.model_dump())
-    # Of the whole record, since a gap may be longer than the storm.
-    long = longer_than(record, gap_mask(record), options.longest_gap)
-    results = []
-    for storm in storms:
-        say(f"storm {storm.name}")
-        window = storm.cut(record)
-        _require_reporting(storm, window)
-        completed = complete(window, network, options, long=long[storm.first : storm.stop])
-        result, found = _run_one(job, storm, completed, network, basins, weighers)
-        results.append(result)
-        notes += found
-    in_use = np.any([~(r.completed.record.status == Status.NOT_INSTALLED).all(axis=0) for r in results], axis=0)
-    notes += (*network_cautions(network.subset(in_use), basins), *record_cautions(record))
-    return StormRun(
-        name=job.job.name,
-        settings=job.model_dump(mode="json", exclude_none=True),
-        depth_unit=job.job.depth_unit,
-        area_unit=job.job.area_unit,
-        network=network,
-        basins=basins,
-        plane=plane,
-        record=record,
-        storms=tuple(results),
-        notes=once(notes, [storm.name for storm in storms]),
-        inputs=_digests(job),
-        versions={name: version(name) for name in ("basinrain", "numpy", "scipy", "shapely", "pyproj", "pandas")},
-        facts=_facts(job, results[0]),
-    )
+    return job
 
 
-def _read(job: Job) -> tuple[GaugeNetwork, RainRecord, Basins, tuple[Note, ...]]:
-    """Read every file; the problems of all files are reported together."""
-    problems = Problems()
-    network = _try(problems, partial(_read_gauges, job))
-    records = [_try(problems, partial(_read_source, job, source)) for source in job.rainfall]
-    basins = _try(problems, partial(_read_basins, job))
-    problems.raise_as(ReadError)
-    # A reader that gave nothing has left a problem, so from here on everything is there.
-    network, (polygons, basin_notes) = cast("GaugeNetwork", network), cast("tuple[Basins, tuple[Note, ...]]", basins)
-    sources = cast("list[RainRecord]", records)
-    excluded = set(job.gauges.exclude)
-    timed = [source.zone for source in sources if not source.labels and not excluded.issuperset(source.gauges)]
-    record, step_notes = reading.bring_to_step(
-        sources,
-        network,
-        common=job.step.common,
-        storm_times=_storm_times(job, timed[0] if timed else ""),
-        exclude=job.gauges.exclude,
-    )
-    return network, record, polygons, (*basin_notes, *step_notes)
-
-
-def _try(problems: Problems, read: Callable[[], _T]) -> _T | None:
-    try:
-        return read()
-    except BasinRainError as error:
-        problems.extend(error)
-        return None
-
-
-def _read_gauges(job: Job) -> GaugeNetwork:
-    table = job.gauges
-    return reading.read_gauges(
-        job.path(table.file),
-        layer=table.layer,
-        crs=table.crs,
-        length_unit=table.length_unit,
-        elevation_unit=table.elevation_unit,
-        normal_unit=table.normal_unit,
-        normal_period=table.normal_period,
-        columns=table.columns,
-        exclude=table.exclude,
-    )
-
-
-def _read_source(job: Job, table: RainfallTable) -> RainRecord:
-    options = table.model_dump(exclude={"file", "files"})
-    return reading.read_rainfall([job.path(name) for name in table.paths], **options)
-
-
-def _read_basins(job: Job) -> tuple[Basins, tuple[Note, ...]]:
-    table = job.basins
-    return reading.read_basins(job.path(table.file), **table.model_dump(exclude={"file"}))
-
-
-def _window(job: Job, table: StormTable, zone: str) -> tuple[np.datetime64 | None, np.datetime64 | None]:
-    return storm_window_times(table, zone, day_start=rainfall_day_start(job.rainfall))
-
-
-def _storm_times(job: Job, zone: str) -> dict[str, tuple[np.datetime64, np.datetime64]]:
-    windows = {table.name: _window(job, table, zone) for table in job.storm}
-    return {name: (start, end) for name, (start, end) in windows.items() if start is not None and end is not None}
+def _common(job: Job, given: Inputs) -> dict[str, Any]:
+    """Return what every run has."""
+    return {
+        "name": job.job.name,
+        "settings": job.model_dump(mode="json", exclude_none=True, by_alias=True),
+        "depth_unit": job.job.depth_unit,
+        "area_unit": job.job.area_unit,
+        "network": given.network,
+        "basins": given.basins,
+        "plane": given.plane,
+        "record": given.record,
+        "screening": given.screening,
+        "edits": given.edits,
+        "edit_rows": given.edit_rows,
+        "inputs": input_digests(job),
+        "versions": {name: version(name) for name in ("basinrain", "numpy", "scipy", "shapely", "pyproj", "pandas")},
+    }
 
 
 def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]]:
@@ -216,7 +240,7 @@ def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]
     storms: list[Storm] = []
     notes: list[Note] = []
     for table in tables:
-        found = _try(problems, partial(_storm, job, table, record))
+        found = attempt(problems, partial(_storm, job, table, record))
         if found is not None:
             storms.append(found[0])
             notes += found[1]
@@ -225,32 +249,8 @@ def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]
 
 
 def _storm(job: Job, table: StormTable, record: RainRecord) -> tuple[Storm, tuple[Note, ...]]:
-    start, end = _window(job, table, record.zone)
+    start, end = window_of(job, table, record.zone)
     return storm_window(record, table.name, start=start, end=end, pattern=table.pattern)
-
-
-def _catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.float64]]:
-    problems = Problems()
-    factors = {}
-    for gauge, value in job.gauges.catch_factor.items():
-        months = np.array(value if isinstance(value, tuple) else [value] * 12, dtype=float)
-        if gauge not in network.ids:
-            problems.add(
-                item=f"[gauges] catch_factor of {gauge}",
-                found="a gauge that is not in the network",
-                expected="the id of a gauge",
-                gauge=gauge,
-            )
-        elif len(months) != 12:
-            problems.add(
-                item=f"[gauges] catch_factor of {gauge}",
-                found=f"{len(months)} values",
-                expected="one value, or twelve from January to December",
-                gauge=gauge,
-            )
-        factors[gauge] = months
-    problems.raise_as(JobError)
-    return factors
 
 
 def _weighers(job: Job, network: GaugeNetwork, basins: Basins) -> dict[str, Weigher]:
@@ -269,6 +269,10 @@ def _facts(job: Job, result: StormResult) -> dict[str, str]:
     if job.gauges.catch_factor:
         facts["catch"] = "Catch factors applied to: " + ", ".join(sorted(job.gauges.catch_factor)) + "."
     return facts
+
+
+def _choice(comparison: Comparison | None) -> dict[str, str]:
+    return {} if comparison is None else {"infill-method": comparison.reason}
 
 
 def _require_reporting(storm: Storm, window: RainRecord) -> None:
@@ -314,22 +318,3 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
         *storm_cautions(storm.name, network, basins, depths, depth_unit=job.job.depth_unit),
     )
     return StormResult(storm, completed, depths, tuple(shapes)), notes
-
-
-def _digests(job: Job) -> dict[str, str]:
-    names = [job.gauges.file, *(name for source in job.rainfall for name in source.paths), job.basins.file]
-    return {part: _digest(job.path(part)) for name in names for part in _parts(job, name)}
-
-
-def _parts(job: Job, name: str) -> list[str]:
-    """Return the files that one name stands for: a shapefile has its table, index and projection beside it."""
-    path = job.path(name)
-    if path.suffix.lower() != ".shp":
-        return [name]
-    beside = [p.name for p in path.parent.iterdir() if p.stem == path.stem and p.suffix.lower() in _SHAPEFILE_PARTS]
-    return [str(Path(name).with_name(part)) for part in sorted(beside)]
-
-
-def _digest(path: Path) -> str:
-    with path.open("rb") as file:
-        return hashlib.file_digest(file, "sha256").hexdigest()

@@ -1,4 +1,4 @@
-"""The result of a storm run: everything that was computed, before any unit or file is chosen."""
+"""The results of runs: everything that was computed, before any unit or file is chosen."""
 
 from __future__ import annotations
 
@@ -11,21 +11,25 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 import numpy.typing as npt
 
-from basinrain import tables
+from basinrain import tables, tables_comparison, tables_infill, tables_record
 from basinrain.basin_depths import BasinDepths
 from basinrain.basins import Basins
 from basinrain.gauges import GaugeNetwork
 from basinrain.ground import Plane
 from basinrain.infill import Completed
+from basinrain.infill.leave_one_out import Comparison
+from basinrain.infill_effect import InfillEffect
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
+from basinrain.screening import Edit, Screening
+from basinrain.series_check import SeriesCheck
 from basinrain.storms import Storm
 
 if TYPE_CHECKING:
     import geopandas as gpd
     import pandas as pd
 
-__all__ = ["CAUTION", "StormResult", "StormRun"]
+__all__ = ["CAUTION", "InfillRun", "Run", "ScreenRun", "StormResult", "StormRun"]
 
 CAUTION = (
     "Basin rainfall estimated from point gauges, for use by a qualified hydrologist or engineer. Gauge density, "
@@ -33,6 +37,72 @@ CAUTION = (
     "dam-safety or drainage design the local code and the responsible licensed professional govern. No correction for "
     "gauge catch is made unless the job gives one."
 )
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Run:
+    """What every run of a job has, whatever was computed.
+
+    Parameters
+    ----------
+    name
+        The job's name.
+    settings
+        The job as resolved, every default included, as plain values.
+    depth_unit, area_unit
+        Units of the tables.
+    network, basins
+        Gauges and basins (the union's row included) in the working plane.
+    plane
+        The working plane.
+    record
+        The whole record at the common step, edited, without what was rejected.
+    screening
+        What the checks found, and what the job says of it.
+    edits
+        The job's changes of the record.
+    edit_rows
+        What each of them did, as plain values in mm.
+    notes
+        Warnings and remarks.
+    inputs
+        SHA-256 of every input file, by its name in the job.
+    versions
+        Versions of this package and of the libraries that compute.
+    facts
+        Facts about the run that a report states, such as the grid's cell, as name and sentence.
+    """
+
+    name: str
+    settings: Mapping[str, Any]
+    depth_unit: str
+    area_unit: str
+    network: GaugeNetwork
+    basins: Basins
+    plane: Plane
+    record: RainRecord
+    screening: Screening = field(default_factory=Screening)
+    edits: tuple[Edit, ...] = ()
+    edit_rows: tuple[Mapping[str, Any], ...] = ()
+    notes: tuple[Note, ...] = ()
+    inputs: Mapping[str, str] = field(default_factory=dict)
+    versions: Mapping[str, str] = field(default_factory=dict)
+    facts: Mapping[str, str] = field(default_factory=dict)
+
+    @property
+    def warnings(self) -> tuple[Note, ...]:
+        """The notes that are warnings."""
+        return tuple(note for note in self.notes if note.level == "warning")
+
+    @cached_property
+    def findings(self) -> pd.DataFrame:
+        """What screening found: one row per finding."""
+        return tables_record.findings(self)
+
+    @cached_property
+    def edit_table(self) -> pd.DataFrame:
+        """The job's changes of the record and what each did: one row per edit."""
+        return tables_record.edit_table(self)
 
 
 @dataclass(frozen=True, eq=False)
@@ -49,12 +119,18 @@ class StormResult:
         What each averaging method gives, by the method's name, in the job's order.
     shapes
         For each basin, what times its hyetograph: ``("mean", None)``, or a gauge and its shares of the storm.
+    effect
+        What the basin means would be by every other infill method; None where nothing was infilled.
+    checks
+        The basin series before and after infill beside the gauges' own.
     """
 
     storm: Storm
     completed: Completed
     depths: Mapping[str, BasinDepths]
     shapes: tuple[tuple[str, npt.NDArray[np.float64] | None], ...]
+    effect: InfillEffect | None = None
+    checks: SeriesCheck | None = None
 
     def hyetograph(self, method: str) -> npt.NDArray[np.float64]:
         """Return the basin hyetographs, timed by the storm's pattern.
@@ -78,68 +154,39 @@ class StormResult:
         return result
 
 
-@dataclass(frozen=True, eq=False)
-class StormRun:
+@dataclass(frozen=True, eq=False, kw_only=True)
+class StormRun(Run):
     """All storms of a job, with the tables that go to files, reports and notebooks.
 
     Depths inside are mm, areas m²; the tables (data frames) are in the job's units, each quantity beside its unit. They
     are :attr:`basin_means`, :attr:`storm_table`, :attr:`spread`, :attr:`weights`, :attr:`weights_compared`,
-    :attr:`gauge_totals`, :attr:`gauge_depths`, :attr:`infilled`, :attr:`hyetographs` and, with polygons,
-    :attr:`thiessen`. A number that does not exist is NaN in them, and blank in the files: never zero.
+    :attr:`gauge_totals`, :attr:`gauge_depths`, :attr:`infilled`, :attr:`infill_effect`, :attr:`series_check`,
+    :attr:`hyetographs`, :attr:`findings`, :attr:`edit_table` and, with polygons, :attr:`thiessen`; where the infill
+    method was chosen by leave-one-out, :attr:`infill_scores` too. A number that does not exist is NaN in them, and
+    blank in the files: never zero.
 
     Parameters
     ----------
-    name
-        The job's name.
-    settings
-        The job as resolved, every default included, as plain values.
-    depth_unit, area_unit
-        Units of the tables.
-    network, basins
-        Gauges and basins (the union's row included) in the working plane.
-    plane
-        The working plane.
-    record
-        The whole record at the common step.
     storms
         The storms, in the job's order.
-    notes
-        Warnings and remarks.
-    inputs
-        SHA-256 of every input file, by its name in the job.
-    versions
-        Versions of this package and of the libraries that compute.
-    facts
-        Facts about the run that a report states, such as the grid's cell, as name and sentence.
+    comparison
+        The comparison of infill methods, where the job asks for its winner.
+    name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, inputs, \
+versions, facts
+        As for :class:`Run`.
 
     Examples
     --------
     See :func:`basinrain.run_storm`, which makes one from a job: ``run.basin_means[["basin", "method", "depth"]]``.
     """
 
-    name: str
-    settings: Mapping[str, Any]
-    depth_unit: str
-    area_unit: str
-    network: GaugeNetwork
-    basins: Basins
-    plane: Plane
-    record: RainRecord
     storms: tuple[StormResult, ...]
-    notes: tuple[Note, ...]
-    inputs: Mapping[str, str] = field(default_factory=dict)
-    versions: Mapping[str, str] = field(default_factory=dict)
-    facts: Mapping[str, str] = field(default_factory=dict)
+    comparison: Comparison | None = None
 
     @property
     def methods(self) -> tuple[str, ...]:
         """Names of the averaging methods that were run."""
         return tuple(self.storms[0].depths)
-
-    @property
-    def warnings(self) -> tuple[Note, ...]:
-        """The notes that are warnings."""
-        return tuple(note for note in self.notes if note.level == "warning")
 
     @cached_property
     def basin_means(self) -> pd.DataFrame:
@@ -187,6 +234,31 @@ class StormRun:
         return tables.hyetographs(self)
 
     @cached_property
+    def infill_effect(self) -> pd.DataFrame:
+        """Basin means by every infill method: one row per storm, basin, method and infill method."""
+        frames = [
+            tables_infill.effect_frame(result.storm.name, self.basins.ids, result.effect, self.depth_unit)
+            for result in self.storms
+            if result.effect is not None
+        ]
+        return tables.by_storm(frames, tables_infill.EFFECT)
+
+    @cached_property
+    def series_check(self) -> pd.DataFrame:
+        """Wet steps, largest depths and variance before and after infill: three rows per storm, basin and method."""
+        frames = [
+            tables_infill.series_frame(result.storm.name, result.checks, self.depth_unit)
+            for result in self.storms
+            if result.checks is not None
+        ]
+        return tables.by_storm(frames, tables_infill.SERIES)
+
+    @cached_property
+    def infill_scores(self) -> pd.DataFrame:
+        """How the infill methods compare, where the job asks for the winner; else no row."""
+        return tables_comparison.infill_scores(self.comparison, self.depth_unit)
+
+    @cached_property
     def thiessen(self) -> gpd.GeoDataFrame:
         """Thiessen polygons cut to the basins, all gauges present, in degrees: one row per basin and gauge."""
         return tables.thiessen(self)
@@ -214,6 +286,111 @@ class StormRun:
         --------
         basinrain.writing.write_run : the same as a function.
         """
+        from basinrain.writing import write_run
+
+        return write_run(self, folder)
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class ScreenRun(Run):
+    """A job's record as it was screened, with the tables that go to files, reports and notebooks.
+
+    They are :attr:`findings`, :attr:`edit_table`, :attr:`completeness`, :attr:`double_mass` and :attr:`homogeneity`.
+
+    Parameters
+    ----------
+    raw
+        The record before anything that the job rejects was taken out, as the checks saw it.
+    name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, inputs, \
+versions, facts
+        As for :class:`Run`.
+
+    Examples
+    --------
+    See :func:`basinrain.run_screen`, which makes one from a job.
+    """
+
+    raw: RainRecord
+
+    @cached_property
+    def completeness(self) -> pd.DataFrame:
+        """What there is of every gauge: first and last value, and steps by where their values come from."""
+        return tables_record.completeness(self)
+
+    @cached_property
+    def double_mass(self) -> pd.DataFrame:
+        """Double-mass curves: one row per gauge and year."""
+        return tables_record.double_mass(self)
+
+    @cached_property
+    def homogeneity(self) -> pd.DataFrame:
+        """Tests of homogeneity: one row per gauge and test."""
+        return tables_record.homogeneity(self)
+
+    def write(self, folder: str | Path) -> Path:
+        """Write every table, the record of the run and the report into a folder, as :meth:`StormRun.write` does."""
+        from basinrain.writing import write_run
+
+        return write_run(self, folder)
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class InfillRun(Run):
+    """A comparison of infill methods and the completed record, with the tables that go to files, reports, notebooks.
+
+    They are :attr:`infill_scores`, :attr:`infill_differences`, :attr:`infill_cases`, :attr:`infilled`,
+    :attr:`completed_depths`, :attr:`completed_status`, :attr:`findings` and :attr:`edit_table`.
+
+    Parameters
+    ----------
+    comparison
+        Every method scored on the same cases.
+    completed
+        The whole record infilled by the method that the job names, or by the one that the comparison takes.
+    name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, inputs, \
+versions, facts
+        As for :class:`Run`.
+
+    Examples
+    --------
+    See :func:`basinrain.run_infill`, which makes one from a job.
+    """
+
+    comparison: Comparison
+    completed: Completed
+
+    @cached_property
+    def infill_scores(self) -> pd.DataFrame:
+        """How the methods compare: one row per scale, gauge (all of them first) and method."""
+        return tables_comparison.infill_scores(self.comparison, self.depth_unit)
+
+    @cached_property
+    def infill_differences(self) -> pd.DataFrame:
+        """How much worse than the best each method is, and whether that can be told from chance: one row per method."""
+        return tables_comparison.infill_differences(self.comparison, self.depth_unit)
+
+    @cached_property
+    def infill_cases(self) -> pd.DataFrame:
+        """Observed depths and what the chosen method makes of them from the other gauges: one row per case, gauge."""
+        return tables_comparison.infill_cases(self.comparison, self.record.zone, self.depth_unit)
+
+    @cached_property
+    def infilled(self) -> pd.DataFrame:
+        """Every infilled depth with its donors: one row per estimate."""
+        return tables.estimates(self.completed, self.depth_unit)
+
+    @cached_property
+    def completed_depths(self) -> pd.DataFrame:
+        """The completed record: a row per time, a column per gauge."""
+        return tables_comparison.completed_depths(self.completed.record, self.depth_unit)
+
+    @cached_property
+    def completed_status(self) -> pd.DataFrame:
+        """Where every value of the completed record comes from, in the same shape."""
+        return tables_comparison.completed_status(self.completed.record)
+
+    def write(self, folder: str | Path) -> Path:
+        """Write every table, the record of the run and the report into a folder, as :meth:`StormRun.write` does."""
         from basinrain.writing import write_run
 
         return write_run(self, folder)

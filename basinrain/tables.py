@@ -5,7 +5,7 @@ Columns and their order are those of the CSV files; ``docs/outputs.md`` describe
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -22,10 +22,13 @@ if TYPE_CHECKING:
     import pandas as pd
 
     from basinrain.basin_depths import BasinDepths
+    from basinrain.infill import Completed
     from basinrain.results import StormResult, StormRun
 
 __all__ = [
     "basin_means",
+    "by_storm",
+    "estimates",
     "gauge_depths",
     "gauge_totals",
     "hyetographs",
@@ -66,6 +69,14 @@ def _frame(rows: list[tuple[Any, ...]], columns: str) -> pd.DataFrame:
     import pandas as pd
 
     return pd.DataFrame(rows, columns=columns.split())
+
+
+def by_storm(frames: Iterable[pd.DataFrame], columns: str) -> pd.DataFrame:
+    """Return the tables of several storms as one; only the header where there is none."""
+    import pandas as pd
+
+    given = list(frames)
+    return pd.concat(given, ignore_index=True) if given else pd.DataFrame(columns=columns.split())
 
 
 def _quotient(part: npt.NDArray[np.float64], whole: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
@@ -293,26 +304,36 @@ def gauge_depths(run: StormRun) -> pd.DataFrame:
 
 
 def infilled(run: StormRun) -> pd.DataFrame:
-    """Return ``infilled``: one row per estimate; the time is the end of the step or day, blank for a storm's total."""
-    mm = depth_factor(run.depth_unit)
-    rows = []
+    """Return ``infilled``: one row per storm and estimate."""
+    import pandas as pd
+
+    frames = []
     for result in run.storms:
-        ends = result.completed.record.ends
-        for estimate in result.completed.estimates:
-            when = ends[estimate.stop - 1] if estimate.scale != "storm" else np.datetime64("NaT")
-            rows.append(
-                (
-                    result.storm.name,
-                    estimate.gauge,
-                    time_text(when, run.record.zone),
-                    estimate.scale,
-                    estimate.depth / mm,
-                    run.depth_unit,
-                    estimate.method,
-                    " ".join(f"{donor}:{weight:.6g}" for donor, weight in sorted(estimate.donors.items())),
-                )
+        frame = estimates(result.completed, run.depth_unit)
+        frame.insert(0, "storm", result.storm.name)
+        frames.append(frame)
+    return pd.concat(frames, ignore_index=True)
+
+
+def estimates(completed: Completed, depth_unit: str) -> pd.DataFrame:
+    """Return one row per estimate; the time is the end of the step or day, blank for a storm's total."""
+    mm = depth_factor(depth_unit)
+    record = completed.record
+    rows = []
+    for estimate in completed.estimates:
+        when = record.ends[estimate.stop - 1] if estimate.scale != "storm" else np.datetime64("NaT")
+        rows.append(
+            (
+                estimate.gauge,
+                time_text(when, record.zone),
+                estimate.scale,
+                estimate.depth / mm,
+                depth_unit,
+                estimate.method,
+                " ".join(f"{donor}:{weight:.6g}" for donor, weight in sorted(estimate.donors.items())),
             )
-    return _frame(rows, "storm gauge time scale depth depth_unit method donors")
+        )
+    return _frame(rows, "gauge time scale depth depth_unit method donors")
 
 
 def hyetographs(run: StormRun) -> pd.DataFrame:

@@ -207,3 +207,25 @@ def test_no_transformation_asks_the_network() -> None:
         assert not is_network_enabled()
     finally:
         set_network_enabled(active=False)
+
+
+def test_azimuths_are_those_of_the_geodesic() -> None:
+    """Against pyproj's geodesics; due north along the meridian, and not due east along a parallel."""
+    lon, lat = np.array([0.0, 0.0, 5.0, -3.0]), np.array([45.0, 46.0, 45.0, 40.0])
+    found = ground.azimuths(lon, lat, lon, lat, ground.LONLAT)
+    forward = pyproj.Geod(ellps="WGS84").inv(lon[1:], lat[1:], np.zeros(3), np.full(3, 45.0))[0]
+    np.testing.assert_allclose(found[1:, 0], np.mod(forward, 360))
+    assert found[0, 1] == 0
+    assert 87 < found[0, 2] < 89
+
+
+def test_azimuths_in_a_plane() -> None:
+    """Of the eight points of the compass, and through another system as through its degrees."""
+    ring = np.radians(np.arange(8) * 45)
+    here = np.array([7.0])
+    found = ground.azimuths(here, here, here + np.sin(ring), here + np.cos(ring), ground.LOCAL)
+    np.testing.assert_allclose(found[0], np.arange(8) * 45, atol=1e-9)
+    lon, lat = np.array([9.0, 9.2]), np.array([47.0, 47.1])
+    x, y = ground.transform(lon, lat, ground.LONLAT, "EPSG:32632")
+    expected = ground.azimuths(lon[:1], lat[:1], lon[1:], lat[1:], ground.LONLAT)
+    np.testing.assert_allclose(ground.azimuths(x[:1], y[:1], x[1:], y[1:], "EPSG:32632"), expected, atol=1e-6)

@@ -32,6 +32,31 @@ def _clear_errors(command: Callable[..., None]) -> Callable[..., None]:
     return run
 
 
+def _of_job(command: Callable[..., None]) -> Callable[..., None]:
+    """Give a command the argument and the options of every command that runs a job."""
+    for decorate in (
+        click.option("--quiet", is_flag=True, help="Print nothing but errors."),
+        click.option(
+            "--json", "as_json", is_flag=True, help="Print one JSON document with all results, and nothing else."
+        ),
+        click.option(
+            "--set",
+            "settings",
+            multiple=True,
+            metavar="TABLE.KEY=VALUE",
+            help="Change the job; may be given more than once.",
+        ),
+        click.option(
+            "--output",
+            type=click.Path(path_type=Path),
+            help="Folder for the results in place of the job's; they go to a folder in it that has the command's name.",
+        ),
+        click.argument("job", type=click.Path(path_type=Path)),
+    ):
+        command = decorate(command)
+    return command
+
+
 @click.group(context_settings={"help_option_names": ["-h", "--help"]})
 @click.version_option(package_name="basinrain")
 def main() -> None:
@@ -42,23 +67,33 @@ def main() -> None:
 
 
 @main.command()
-@click.argument("job", type=click.Path(path_type=Path))
-@click.option(
-    "--output",
-    type=click.Path(path_type=Path),
-    help="Folder for the results in place of the job's; they go to its storm folder.",
-)
-@click.option(
-    "--set", "settings", multiple=True, metavar="TABLE.KEY=VALUE", help="Change the job; may be given more than once."
-)
-@click.option("--json", "as_json", is_flag=True, help="Print one JSON document with all results, and nothing else.")
-@click.option("--quiet", is_flag=True, help="Print nothing but errors.")
+@_of_job
 @_clear_errors
-def storm(job: Path, output: Path | None, settings: tuple[str, ...], as_json: bool, quiet: bool) -> None:  # noqa: FBT001
+def storm(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
     """Storm totals per basin from JOB, a TOML file: tables, weights compared, report."""
     from basinrain.cli.storm import storm_command
 
-    storm_command(job, output=output, settings=settings, as_json=as_json, quiet=quiet)
+    storm_command(job, **options)
+
+
+@main.command()
+@_of_job
+@_clear_errors
+def screen(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
+    """Whether the record of JOB is fit to use: findings, each with its evidence; nothing is changed."""
+    from basinrain.cli.screen import screen_command
+
+    screen_command(job, **options)
+
+
+@main.command()
+@_of_job
+@_clear_errors
+def infill(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
+    """Which infill method works on the network of JOB, every gauge left out in turn; and the completed record."""
+    from basinrain.cli.infill import infill_command
+
+    infill_command(job, **options)
 
 
 @main.command()

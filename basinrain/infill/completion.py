@@ -11,10 +11,13 @@ import numpy.typing as npt
 from basinrain.errors import DataError, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.completed import Completed, Estimate
+from basinrain.infill.donors import require_elevations
 from basinrain.infill.filling import GaugeFilling
 from basinrain.infill.gaps import gap_mask, longer_than, over_peak
 from basinrain.infill.normals import require_normals
 from basinrain.infill.options import InfillOptions
+from basinrain.infill.record_normals import NormalRatios
+from basinrain.infill.relations import Relations, relations_of_record
 from basinrain.infill.window import Window
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
@@ -25,7 +28,13 @@ _YEAR: Final = np.timedelta64(365 * 86400, "s")
 
 
 def complete(
-    record: RainRecord, network: GaugeNetwork, options: InfillOptions, *, long: npt.NDArray[np.bool_] | None = None
+    record: RainRecord,
+    network: GaugeNetwork,
+    options: InfillOptions,
+    *,
+    long: npt.NDArray[np.bool_] | None = None,
+    relations: Relations | None = None,
+    ratios: NormalRatios | None = None,
 ) -> Completed:
     """Infill the gaps of a storm window.
 
@@ -41,6 +50,12 @@ def complete(
         The gaps that are too long to be infilled. A gap may begin before the window and end after it, so whoever has
         the whole record gives them (:func:`basinrain.infill.gaps.longer_than`); where not given, what is seen of a gap
         in this record is its length.
+    relations : Relations, optional
+        Relations between the gauges, for methods that need them. Whoever has the whole record gives its
+        (:func:`basinrain.infill.relations_of_record`), since a storm has too few days; where not given, they are those
+        of this record.
+    ratios : NormalRatios, optional
+        Normals from the whole record (:func:`basinrain.infill.normals_from_record`), used instead of the network's.
 
     Returns
     -------
@@ -51,8 +66,9 @@ def complete(
     Raises
     ------
     DataError
-        The columns are not the network's gauges, the record was infilled before, or normals are missing or not above 0
-        at a gauge that takes part; all such problems together, before anything is computed.
+        The columns are not the network's gauges, the record was infilled before; normals are missing or not above 0, or
+        elevations missing, at a gauge that takes part and needs them; all such problems together, before anything is
+        computed.
 
     Notes
     -----
@@ -91,10 +107,12 @@ def complete(
     _check(record, network)
     gaps = gap_mask(record)
     long = longer_than(record, gaps, options.longest_gap) if long is None else gaps & long
-    window = Window(record, network, options, _scale(record, options), gaps & ~long)
-    if window.fillable.any() and options.chosen_method.needs_normals:
-        taking_part = np.asarray(record.reporting.any(axis=0) | window.fillable.any(axis=0))
-        require_normals(network, taking_part, [month or None for month in _months(window)])
+    fillable = gaps & ~long
+    needed = options.chosen_method.needs_relations and bool(fillable.any())
+    if needed and relations is None:
+        relations = relations_of_record(record, network, ratios=ratios)
+    window = Window(record, network, options, _scale(record, options), fillable, relations, ratios)
+    _require(window)
     depth, status = record.depth.copy(), record.status.copy()
     estimates: list[Estimate] = []
     notes: list[Note] = []
@@ -106,6 +124,26 @@ def complete(
         notes += filling.notes()
     notes = [*over_peak(record, gaps, depth), *notes, *_annual_normals(window, estimates)]
     return Completed(replace(record, depth=depth, status=status), tuple(estimates), tuple(notes))
+
+
+def _require(window: Window) -> None:
+    """Raise one error for all gauges of which the method, or an option, needs to know more."""
+    if not window.fillable.any():
+        return
+    network, options = window.network, window.options
+    taking_part = np.asarray(window.reporting.any(axis=0) | window.fillable.any(axis=0))
+    problems = Problems()
+    try:
+        if options.chosen_method.needs_normals and window.ratios is None:
+            require_normals(network, taking_part, [month or None for month in _months(window)], method=options.method)
+    except DataError as error:
+        problems.extend(error)
+    try:
+        if options.elevation_limit is not None:
+            require_elevations(network, taking_part)
+    except DataError as error:
+        problems.extend(error)
+    problems.raise_as(DataError)
 
 
 def _scale(record: RainRecord, options: InfillOptions) -> str:
@@ -129,7 +167,8 @@ def _months(window: Window) -> list[int]:
 
 
 def _annual_normals(window: Window, estimates: list[Estimate]) -> list[Note]:
-    if not estimates or not window.options.chosen_method.needs_normals or window.network.normals is None:
+    used = window.options.chosen_method.needs_normals and window.ratios is None
+    if not estimates or not used or window.network.normals is None:
         return []
     record = window.record
     undated = bool(np.isnat(record.ends).any())

@@ -9,7 +9,8 @@ import numpy as np
 
 from basinrain.infill.completed import Estimate
 from basinrain.infill.gaps import steps_in_words
-from basinrain.infill.window import EXACT, Bools, Floats, Ints, Spans, Window
+from basinrain.infill.spans import EXACT
+from basinrain.infill.window import Bools, Floats, Ints, Spans, Window
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 from basinrain.spreading import pattern_shares, share_out
@@ -163,6 +164,8 @@ class GaugeFilling:
                 reporting[case[mine]],
                 month=int(month) or None,
                 distances=window.distances[self._g],
+                relations=window.relations,
+                ratios=window.ratios,
             )
         ids = window.network.ids
         donors: list[Mapping[str, float]] = [{} for _ in case]
@@ -173,9 +176,25 @@ class GaugeFilling:
 
     def _leave(self, what: str, steps: Ints) -> None:
         options = self._window.options
-        within = f" within {options.radius / 1000:g} km" if options.radius is not None else ""
-        reason = f"fewer than {options.min_donors} other gauges{within} {what}"
+        reason = f"fewer than {options.donors_required} other gauges{self._limits} {what}"
         self._left.setdefault(reason, []).append(steps)
+
+    @property
+    def _limits(self) -> str:
+        """What a donor must be besides reporting, in words."""
+        options, method = self._window.options, self._window.options.chosen_method
+        within = [
+            f"within {limit}"
+            for limit in (
+                f"{options.radius / 1000:g} km" if options.radius is not None else "",
+                f"{options.elevation_limit:g} m of its elevation" if options.elevation_limit is not None else "",
+            )
+            if limit
+        ]
+        words = [" and ".join(within), method.donors_are]
+        if method.needs_normals and self._window.ratios is not None:
+            words.append("with normals of enough common years")
+        return "".join(f" {part}" for part in words if part)
 
     def notes(self) -> list[Note]:
         """Return what the user must know of this gauge's gaps."""

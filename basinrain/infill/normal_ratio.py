@@ -6,8 +6,9 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill.donors import Nearest, choose_donors
-from basinrain.infill.normals import normals_of, require_normals
+from basinrain.infill.donors import Nearest
+from basinrain.infill.ratio_donors import choose_ratio_donors
+from basinrain.infill.record_normals import NormalRatios
 
 __all__ = ["normal_ratio_weights"]
 
@@ -18,9 +19,11 @@ def normal_ratio_weights(
     reporting: npt.NDArray[np.bool_],
     *,
     month: int | None = None,
+    ratios: NormalRatios | None = None,
     nearest: Nearest = 4,
     radius: float | None = None,
     min_donors: int = 2,
+    elevation_limit: float | None = None,
     distances: npt.NDArray[np.float64] | None = None,
 ) -> npt.NDArray[np.float64]:
     """Return donor weights by the normal ratio.
@@ -32,7 +35,9 @@ def normal_ratio_weights(
     ----------
     month
         The month whose normals are used, 1 to 12, where the network has monthly ones; None for the year's.
-    network, target, reporting, nearest, radius, min_donors, distances
+    ratios : NormalRatios, optional
+        Normals from the record, instead of the network's; a gauge without a ratio to the target does not donate.
+    network, target, reporting, nearest, radius, min_donors, elevation_limit, distances
         As for :func:`basinrain.infill.donors.choose_donors`.
 
     Returns
@@ -44,7 +49,8 @@ def normal_ratio_weights(
     Raises
     ------
     DataError
-        The target or a donor has no normal above 0; all such gauges together.
+        The target or a donor has no normal above 0, all such gauges together; or ``elevation_limit`` is given, and the
+        target or a reporting gauge has no elevation.
 
     Examples
     --------
@@ -55,14 +61,17 @@ def normal_ratio_weights(
     >>> normal_ratio_weights(network, 0, np.array([False, True, False]))  # one donor is too few
     array([0., 0., 0.])
     """
-    donors = choose_donors(
-        network, target, reporting, nearest=nearest, radius=radius, min_donors=min_donors, distances=distances
+    donors, ratio = choose_ratio_donors(
+        network,
+        target,
+        reporting,
+        method="normal-ratio",
+        month=month,
+        ratios=ratios,
+        nearest=nearest,
+        radius=radius,
+        min_donors=min_donors,
+        elevation_limit=elevation_limit,
+        distances=distances,
     )
-    needed = np.asarray(donors.reshape(-1, len(network)).any(axis=0))
-    if not needed.any():
-        return np.zeros(donors.shape)
-    needed[target] = True
-    require_normals(network, needed, [month])
-    normals = normals_of(network, month)
-    ratio = np.where(needed, normals[target] / np.where(needed, normals, 1.0), 0.0)
     return np.asarray(np.where(donors, ratio, 0.0) / np.maximum(donors.sum(axis=-1, keepdims=True), 1), dtype=float)

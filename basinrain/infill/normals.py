@@ -4,14 +4,29 @@ from __future__ import annotations
 
 import calendar
 from collections.abc import Iterable
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import DataError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
+from basinrain.notes import Note
 
-__all__ = ["normals_of", "require_normals"]
+__all__ = ["normals_of", "require_normals", "suspect_normal_units"]
+
+_NEIGHBOURS: Final = 5
+
+_CLOSE: Final = 0.12
+
+_UNIT_RATIOS: Final = (
+    (25.4, "mm where the others are inches"),
+    (10.0, "mm where the others are cm"),
+    (2.54, "cm where the others are inches"),
+    (1 / 2.54, "inches where the others are cm"),
+    (1 / 10.0, "cm where the others are mm"),
+    (1 / 25.4, "inches where the others are mm"),
+)
 
 
 def normals_of(network: GaugeNetwork, month: int | None) -> npt.NDArray[np.float64]:
@@ -44,7 +59,9 @@ def normals_of(network: GaugeNetwork, month: int | None) -> npt.NDArray[np.float
     return network.normals[:, month - 1]
 
 
-def require_normals(network: GaugeNetwork, gauges: npt.NDArray[np.bool_], months: Iterable[int | None]) -> None:
+def require_normals(
+    network: GaugeNetwork, gauges: npt.NDArray[np.bool_], months: Iterable[int | None], *, method: str
+) -> None:
     """Raise an error that names every gauge whose normals cannot be used.
 
     Parameters
@@ -55,6 +72,8 @@ def require_normals(network: GaugeNetwork, gauges: npt.NDArray[np.bool_], months
         The gauges whose normals are needed.
     months
         The months that are needed; None for the year.
+    method
+        The infill method that needs them, for the message.
 
     Raises
     ------
@@ -67,14 +86,14 @@ def require_normals(network: GaugeNetwork, gauges: npt.NDArray[np.bool_], months
     >>> network = GaugeNetwork(
     ...     ids=("A", "B", "C"), x=[0.0, 1.0, 2.0], y=[0.0, 0.0, 0.0], crs="local", normals=normals
     ... )
-    >>> require_normals(network, np.array([True, True, False]), [None])
+    >>> require_normals(network, np.array([True, True, False]), [None], method="normal-ratio")
     Traceback (most recent call last):
         ...
     basinrain.errors.DataError: gauge B: found a normal of 0 mm for the year; expected a normal above 0 for the \
 normal-ratio method; give it, leave the gauge out, or choose another infill method
     """
     remedy = "give it, leave the gauge out, or choose another infill method"
-    expected = "a normal above 0 for the normal-ratio method"
+    expected = f"a normal above 0 for the {method} method"
     if network.normals is None:
         raise DataError(Problem(item="gauges", found="no normals", expected=expected, remedy=remedy))
     wanted: list[int | None] = list(months) if network.normals.shape[1] == 12 else [None]
@@ -94,3 +113,57 @@ normal-ratio method; give it, leave the gauge out, or choose another infill meth
             gauge=network.ids[g],
         )
     problems.raise_as(DataError)
+
+
+def suspect_normal_units(network: GaugeNetwork) -> tuple[Note, ...]:
+    """Return a warning for every gauge whose normal looks as if it were in another unit than its neighbours'.
+
+    Parameters
+    ----------
+    network
+        The gauges; those without a normal above 0 for the year are left out.
+
+    Returns
+    -------
+    tuple of Note
+        ``normal-unit`` where the gauge's normal for the year over the median of those of its 5 nearest gauges is within
+        12 % of 25.4, 10, 2.54 or the inverse of one of them. A doubt only: relief can do that, too.
+
+    Examples
+    --------
+    C's 33.1 would be 841 mm if it were inches.
+
+    >>> normals = np.array([[820.0], [850.0], [33.1], [900.0]])
+    >>> network = GaugeNetwork(
+    ...     ids=("A", "B", "C", "D"), x=[0.0, 1e3, 2e3, 3e3], y=[0.0, 0.0, 0.0, 0.0], crs="local", normals=normals
+    ... )
+    >>> print(*suspect_normal_units(network))
+    Gauge C: its normal of 33.1 mm is 0.039 times the median of its 3 nearest gauges' (850 mm), as if it were in \
+inches where the others are mm.
+    >>> suspect_normal_units(network.subset([True, True, False, True]))
+    ()
+    """
+    normals = normals_of(network, None)
+    known = np.flatnonzero(np.isfinite(normals) & (normals > 0))
+    if len(known) < 2:
+        return ()
+    part = network.subset(np.isin(np.arange(len(network)), known))
+    # The gauge itself comes first or among its twins; it is taken out by its number.
+    order = part.nearest_first(part.distances())
+    others = order[order != np.arange(len(part))[:, None]].reshape(len(part), -1)[:, :_NEIGHBOURS]
+    mine = normals[known]
+    # Middle of the logarithms, so that a factor weighs the same up and down.
+    median = np.exp(np.median(np.log(mine[others]), axis=1))
+    notes = []
+    for k, (gauge, ratio) in enumerate(zip(part.ids, (mine / median).tolist(), strict=True)):
+        for factor, words in _UNIT_RATIOS:
+            if abs(ratio / factor - 1) <= _CLOSE:
+                notes.append(
+                    Note(
+                        code="normal-unit",
+                        text=f"Gauge {gauge}: its normal of {mine[k]:g} mm is {ratio:.2g} times the median of its "
+                        f"{others.shape[1]} nearest gauges' ({median[k]:.4g} mm), as if it were in {words}.",
+                        gauge=gauge,
+                    )
+                )
+    return tuple(notes)

@@ -3,23 +3,29 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Final, Literal
 
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import JobError, Problems, nearest_name
+from basinrain.errors import DataError, JobError, Problem, Problems, nearest_name
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.donors import ALL, Nearest
-from basinrain.infill.registry import InfillMethod, infill_method
+from basinrain.infill.inverse_distance import POWER
+from basinrain.infill.record_normals import NormalRatios
+from basinrain.infill.registry import METHODS, InfillMethod, infill_method
+from basinrain.infill.relations import Relations
 
-__all__ = ["SCALES", "InfillOptions", "Scale"]
+__all__ = ["OF_SOME_METHODS", "SCALES", "InfillOptions", "Scale"]
 
 Scale = Literal["step", "day", "storm"]
 """The time over which one infilled depth is estimated."""
 
 SCALES: Final = ("step", "day", "storm")
+
+OF_SOME_METHODS: Final = ("nearest", "min_donors", "power")
+"""Options that not every method takes; one that a method does not take is refused beside it."""
 
 
 @dataclass(frozen=True)
@@ -35,19 +41,22 @@ class InfillOptions:
     longest_gap
         Days; longer gaps are left missing.
     nearest
-        How many of the nearest reporting gauges donate, or ``"all"``; None: as many as the method has by default
-        (inverse distance 5, normal ratio 4, station average 5).
+        How many of the nearest reporting gauges donate (by regression: of the best correlated), or ``"all"``; None: as
+        many as the method has by default (4 or 5). Not for nearest-gauge and four-quadrant.
     radius
         m; farther gauges do not donate. None: no limit.
     min_donors
-        With fewer donors than this nothing is estimated.
+        With fewer donors than this nothing is estimated; None: 2, by nearest-gauge 1, for which it cannot be given.
     power
-        Exponent of inverse distance.
+        Exponent of the distance, for inverse-distance and inverse-distance-ratios; None: 2.
+    elevation_limit
+        m; gauges whose elevation differs by more from the target's do not donate. None: no limit.
 
     Raises
     ------
     JobError
-        A choice is not known or a number is out of range; all such problems together.
+        A choice is not known, a number is out of range, or an option is given that the method does not take; all such
+        problems together.
 
     Examples
     --------
@@ -58,6 +67,11 @@ class InfillOptions:
         ...
     basinrain.errors.JobError: [infill] scale: found 'hour'; expected one of: step, day, storm
     [infill] power: found 0; expected a number above 0
+    >>> InfillOptions(method="normal-ratio", power=2)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.JobError: [infill] power: found it beside method 'normal-ratio'; expected one of the methods that \
+take it: inverse-distance, inverse-distance-ratios; remove power, or choose one of these
     """
 
     method: str = "inverse-distance"
@@ -65,13 +79,14 @@ class InfillOptions:
     longest_gap: float = 31.0
     nearest: Nearest | None = None
     radius: float | None = None
-    min_donors: int = 2
-    power: float = 2.0
+    min_donors: int | None = None
+    power: float | None = None
+    elevation_limit: float | None = None
 
     def __post_init__(self) -> None:
         problems = Problems()
         try:
-            infill_method(self.method)
+            self._check_belonging(problems)
         except JobError as error:
             problems.extend(error)
         scale: object = self.scale
@@ -83,11 +98,12 @@ class InfillOptions:
                 expected="one of: " + ", ".join(SCALES),
                 remedy=advice if advice.startswith("did") else "",
             )
-        for name, value in (("longest_gap", self.longest_gap), ("power", self.power), ("radius", self.radius)):
-            unlimited = name == "longest_gap" and value == math.inf
-            if not (unlimited or _is_number(value) or (name == "radius" and value is None)):
+        for name in ("longest_gap", "power", "radius", "elevation_limit"):
+            value = getattr(self, name)
+            unlimited = value == math.inf if name == "longest_gap" else value is None
+            if not (unlimited or _is_number(value)):
                 problems.add(item=f"[infill] {name}", found=f"{value!r}", expected="a number above 0")
-        counted = _is_count(self.min_donors)
+        counted = self.min_donors is None or _is_count(self.min_donors)
         if not counted:
             problems.add(
                 item="[infill] min_donors", found=f"{self.min_donors!r}", expected="a whole number of 1 or more"
@@ -99,14 +115,29 @@ class InfillOptions:
                     found=f"{self.nearest!r}",
                     expected="a whole number of 1 or more, or 'all'",
                 )
-            elif counted and self.nearest < self.min_donors:
+            elif counted and self._takes("nearest") and self.nearest < self.donors_required:
                 problems.add(
                     item="[infill] nearest",
-                    found=f"{self.nearest}, below min_donors = {self.min_donors}",
+                    found=f"{self.nearest}, below min_donors = {self.donors_required}",
                     expected="at least as many nearest gauges as donors are asked for",
                     remedy="raise nearest or lower min_donors",
                 )
         problems.raise_as(JobError)
+
+    def _check_belonging(self, problems: Problems) -> None:
+        method = infill_method(self.method)
+        for name in OF_SOME_METHODS:
+            if getattr(self, name) is not None and name not in method.takes:
+                problems.add(
+                    item=f"[infill] {name}",
+                    found=f"it beside method '{self.method}'",
+                    expected="one of the methods that take it: "
+                    + ", ".join(other.name for other in METHODS.values() if name in other.takes),
+                    remedy=f"remove {name}, or choose one of these",
+                )
+
+    def _takes(self, name: str) -> bool:
+        return self.method in METHODS and name in METHODS[self.method].takes
 
     @property
     def chosen_method(self) -> InfillMethod:
@@ -117,8 +148,47 @@ class InfillOptions:
     def donors_wanted(self) -> Nearest:
         """How many of the nearest reporting gauges donate: as given, else the method's default."""
         if self.nearest is None:
-            return max(self.chosen_method.nearest, self.min_donors)
+            return max(self.chosen_method.nearest, self.donors_required)
         return self.nearest
+
+    @property
+    def donors_required(self) -> int:
+        """With fewer donors than this nothing is estimated: as given, else the method's default."""
+        return self.chosen_method.min_donors if self.min_donors is None else self.min_donors
+
+    @property
+    def exponent(self) -> float | None:
+        """The exponent of the distance: as given, else 2; None for a method that takes no ``power``."""
+        if not self._takes("power"):
+            return None
+        return POWER if self.power is None else self.power
+
+    def with_method(self, method: str) -> InfillOptions:
+        """Return the same options with another method, without those that it does not take.
+
+        Parameters
+        ----------
+        method
+            A registered method's name.
+
+        Returns
+        -------
+        InfillOptions
+
+        Raises
+        ------
+        JobError
+            The method is not known, or ``nearest`` and ``min_donors`` do not fit together under it.
+
+        Examples
+        --------
+        >>> options = InfillOptions(power=3, nearest=6, scale="day").with_method("normal-ratio")
+        >>> options.power, options.nearest, options.scale
+        (None, 6, 'day')
+        """
+        takes = infill_method(method).takes
+        dropped = {name: None for name in OF_SOME_METHODS if name not in takes}
+        return replace(self, method=method, **dropped)  # type: ignore[arg-type]
 
     def weights(
         self,
@@ -128,6 +198,8 @@ class InfillOptions:
         *,
         month: int | None = None,
         distances: npt.NDArray[np.float64] | None = None,
+        relations: Relations | None = None,
+        ratios: NormalRatios | None = None,
     ) -> npt.NDArray[np.float64]:
         """Return the donor weights of one gauge by the method and numbers of these options.
 
@@ -143,11 +215,20 @@ class InfillOptions:
             1 to 12, for methods that need normals; None for the year's.
         distances : array of float, shape (n_gauges,), optional
             m, from the target to every gauge.
+        relations : Relations, optional
+            Relations between the gauges in the record, for methods that need them.
+        ratios : NormalRatios, optional
+            Normals from the record, used instead of the network's by methods that need normals.
 
         Returns
         -------
         array of float, shape (..., n_gauges)
             All 0 where the gauge cannot be infilled.
+
+        Raises
+        ------
+        DataError
+            The method needs relations and has none, or what the method itself raises.
 
         Examples
         --------
@@ -156,16 +237,27 @@ class InfillOptions:
         array([0.6667, 0.    , 0.3333])
         """
         method = self.chosen_method
-        further: dict[str, Any] = {name: getattr(self, name) for name in method.takes}
+        given = {"nearest": self.donors_wanted, "min_donors": self.donors_required, "power": self.exponent}
+        further: dict[str, Any] = {name: given[name] for name in method.takes}
         if method.needs_normals:
-            further["month"] = month
+            further |= {"month": month, "ratios": ratios}
+        if method.needs_relations:
+            if relations is None:
+                raise DataError(
+                    Problem(
+                        item="relations between gauges",
+                        found="none",
+                        expected=f"those of the record for method '{self.method}'",
+                        remedy="give relations_of_record(record, network)",
+                    )
+                )
+            further["relations"] = relations
         return method.weights(
             network,
             target,
             reporting,
-            nearest=self.donors_wanted,
             radius=self.radius,
-            min_donors=self.min_donors,
+            elevation_limit=self.elevation_limit,
             distances=distances,
             **further,
         )

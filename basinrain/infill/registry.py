@@ -11,9 +11,16 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.infill.correlation_weighting import correlation_weights
+from basinrain.infill.four_quadrant import four_quadrant_weights
 from basinrain.infill.inverse_distance import inverse_distance_weights
+from basinrain.infill.inverse_distance_ratios import inverse_distance_ratio_weights
+from basinrain.infill.nearest_gauge import nearest_gauge_weights
 from basinrain.infill.normal_ratio import normal_ratio_weights
+from basinrain.infill.ratio_regression import ratio_regression_weights
+from basinrain.infill.regression import regression_weights
 from basinrain.infill.station_average import station_average_weights
+from basinrain.infill.ten_percent_rule import ten_percent_rule_weights
 
 __all__ = ["METHODS", "InfillMethod", "infill_method"]
 
@@ -27,45 +34,119 @@ class InfillMethod:
     name
         What jobs and tables call it.
     weights
-        ``weights(network, target, reporting, *, nearest, radius, min_donors, distances)`` returns the donor weights of
-        one target gauge, shape (..., n_gauges), for reporting gauges of that shape; all 0 where it cannot be infilled.
-        A method that needs normals also takes ``month``.
+        ``weights(network, target, reporting, *, radius, elevation_limit, distances)`` returns the donor weights of one
+        target gauge, shape (..., n_gauges), for reporting gauges of that shape; all 0 where it cannot be infilled. It
+        also takes the options that ``takes`` names; ``month`` and ``ratios`` where it needs normals; ``relations``
+        where it needs these. A gauge of weight 0 may go missing without any weight changing.
     nearest
-        How many of the nearest reporting gauges donate unless the user says otherwise.
-    sums_to_one, needs_normals
-        The laws it promises: weights sum to 1, so that constant rain gives the constant; or it works on ratios to
-        normals, so that rain equal to the normals gives the target's normal.
+        How many of the nearest (or best-correlated) reporting gauges donate unless the user says otherwise.
+    min_donors
+        With fewer donors than this nothing is estimated unless the user says otherwise.
+    sums_to_one, keeps_normals
+        The laws it promises: weights sum to 1, so that constant rain gives the constant; rain equal to the normals
+        gives the target's normal.
+    needs_normals, needs_relations
+        What it rests on besides positions: normals; the relations between gauges in the record.
     takes
         Options of :class:`~basinrain.infill.options.InfillOptions` that it takes besides those of every method.
+    donors_are
+        What donors must be besides reporting, in words that follow "gauges"; empty where that is all.
+    order
+        Its place from simple to complex: of two methods that do equally well, the simpler is to be preferred.
 
     Examples
     --------
     A method of one's own, which takes the mean of the two nearest gauges:
 
     >>> from functools import partial
-    >>> InfillMethod("nearest-pair", partial(station_average_weights, nearest=2), nearest=2).sums_to_one
-    True
+    >>> pair = InfillMethod("nearest-pair", partial(station_average_weights, nearest=2), takes=("min_donors",))
+    >>> pair.sums_to_one, pair.needs_relations
+    (True, False)
     """
 
     name: str
     weights: Callable[..., npt.NDArray[np.float64]]
     nearest: int = 5
+    min_donors: int = 2
     sums_to_one: bool = True
+    keeps_normals: bool = False
     needs_normals: bool = False
-    takes: tuple[str, ...] = ()
+    needs_relations: bool = False
+    takes: tuple[str, ...] = ("nearest", "min_donors")
+    donors_are: str = ""
+    order: int = 0
 
+
+_POWERED: Final = ("nearest", "min_donors", "power")
+_CORRELATED: Final = "with a known correlation above 0"
 
 METHODS: Final[Mapping[str, InfillMethod]] = MappingProxyType(
     {
         method.name: method
         for method in (
-            InfillMethod("inverse-distance", inverse_distance_weights, takes=("power",)),
-            InfillMethod("normal-ratio", normal_ratio_weights, nearest=4, sums_to_one=False, needs_normals=True),
-            InfillMethod("station-average", station_average_weights),
+            InfillMethod("nearest-gauge", nearest_gauge_weights, nearest=1, min_donors=1, takes=(), order=1),
+            InfillMethod("station-average", station_average_weights, order=2),
+            InfillMethod("inverse-distance", inverse_distance_weights, takes=_POWERED, order=3),
+            InfillMethod(
+                "four-quadrant",
+                four_quadrant_weights,
+                nearest=4,
+                takes=("min_donors",),
+                donors_are="in different quadrants",
+                order=4,
+            ),
+            InfillMethod(
+                "normal-ratio",
+                normal_ratio_weights,
+                nearest=4,
+                sums_to_one=False,
+                keeps_normals=True,
+                needs_normals=True,
+                order=5,
+            ),
+            InfillMethod(
+                "ten-percent-rule",
+                ten_percent_rule_weights,
+                nearest=4,
+                sums_to_one=False,
+                needs_normals=True,
+                order=6,
+            ),
+            InfillMethod(
+                "inverse-distance-ratios",
+                inverse_distance_ratio_weights,
+                sums_to_one=False,
+                keeps_normals=True,
+                needs_normals=True,
+                takes=_POWERED,
+                order=7,
+            ),
+            InfillMethod(
+                "correlation-weighting", correlation_weights, needs_relations=True, donors_are=_CORRELATED, order=8
+            ),
+            InfillMethod(
+                "regression",
+                regression_weights,
+                nearest=4,
+                sums_to_one=False,
+                needs_relations=True,
+                donors_are=_CORRELATED,
+                order=9,
+            ),
+            InfillMethod(
+                "ratio-regression",
+                ratio_regression_weights,
+                nearest=4,
+                sums_to_one=False,
+                needs_normals=True,
+                needs_relations=True,
+                donors_are=_CORRELATED,
+                order=10,
+            ),
         )
     }
 )
-"""The infill methods by name."""
+"""The infill methods by name, from simple to complex."""
 
 
 def infill_method(name: str) -> InfillMethod:
@@ -83,8 +164,9 @@ def infill_method(name: str) -> InfillMethod:
     >>> infill_method("normal ratio")
     Traceback (most recent call last):
         ...
-    basinrain.errors.JobError: [infill] method: found 'normal ratio'; expected one of: inverse-distance, normal-ratio, \
-station-average; did you mean 'normal-ratio'?
+    basinrain.errors.JobError: [infill] method: found 'normal ratio'; expected one of: nearest-gauge, \
+station-average, inverse-distance, four-quadrant, normal-ratio, ten-percent-rule, inverse-distance-ratios, \
+correlation-weighting, regression, ratio-regression; did you mean 'normal-ratio'?
     """
     try:
         return METHODS[name]

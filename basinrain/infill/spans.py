@@ -2,14 +2,19 @@
 
 from __future__ import annotations
 
+from typing import Final
+
 import numpy as np
 import numpy.typing as npt
 
 from basinrain.rainfall import RainRecord
 
-__all__ = ["month_of", "span_starts"]
+__all__ = ["EXACT", "cut_totals", "month_of", "span_starts"]
 
-_DAY = 86400
+EXACT: Final = 1e-9
+"""Depths this close to each other, relatively and in mm, are equal."""
+
+_DAY: Final = 86400
 
 
 def span_starts(record: RainRecord, scale: str) -> npt.NDArray[np.int64]:
@@ -61,6 +66,64 @@ def month_of(starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64
     middle = _middle(starts, ends)
     month = middle.astype("datetime64[M]").astype(np.int64) % 12 + 1
     return np.where(np.isnat(middle), 0, month)
+
+
+def cut_totals(
+    record: RainRecord, own: npt.NDArray[np.float64], first: npt.NDArray[np.int64], stop: npt.NDArray[np.int64]
+) -> npt.NDArray[np.bool_]:
+    """Return where a span holds part of the interval of a gauge's known total, but not all of its depth.
+
+    What fell inside is then known from the pattern of other gauges alone.
+
+    Parameters
+    ----------
+    record : RainRecord
+        With its ``totals``.
+    own : array of float, shape (n_steps, n_gauges)
+        The gauges' own depths in mm, 0 where there is none.
+    first, stop : array of int, shape (n_spans,)
+        The steps of each span, ``first`` included, ``stop`` not; rising, none of them in two spans.
+
+    Returns
+    -------
+    array of bool, shape (n_spans, n_gauges)
+
+    Examples
+    --------
+    A knows 4 mm for both hours together: of neither hour, but of the two.
+
+    >>> from basinrain.rainfall import KnownTotal, Status
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
+    >>> total = KnownTotal("A", ends[0] - 3600, ends[1], 4.0)
+    >>> depth, status = np.array([[1.0], [3.0]]), np.full((2, 1), Status.SPREAD, dtype=np.uint8)
+    >>> record = RainRecord(("A",), ends - 3600, ends, depth, status, step="1h", totals=(total,))
+    >>> cut_totals(record, depth, np.array([0, 1]), np.array([1, 2])).ravel()
+    array([ True,  True])
+    >>> cut_totals(record, depth, np.array([0]), np.array([2])).ravel()
+    array([False])
+    """
+    cut = np.zeros((len(first), len(record.gauges)), dtype=bool)
+    column = {gauge: g for g, gauge in enumerate(record.gauges)}
+    # A record of some of the gauges keeps the totals of all.
+    totals = [total for total in record.totals if total.gauge in column]
+    begin, end = record.steps_of(totals)
+    inside = np.flatnonzero(begin < end)
+    begin, end = begin[inside], end[inside]
+    gauge = np.array([column[totals[k].gauge] for k in inside], dtype=np.int64)
+    depth = np.array([totals[k].depth for k in inside])
+    # Every total with every span that it reaches.
+    first_span = np.searchsorted(stop, begin, "right")
+    reached = np.searchsorted(first, end) - first_span
+    total = np.repeat(np.arange(len(inside)), reached)
+    span = np.arange(len(total)) - np.repeat(np.cumsum(reached) - reached - first_span, reached)
+    through = np.concatenate([np.zeros((1, len(record.gauges))), own.cumsum(axis=0)])
+    held = (
+        through[np.minimum(end[total], stop[span]), gauge[total]]
+        - through[np.maximum(begin[total], first[span]), gauge[total]]
+    )
+    lost = np.abs(held - depth[total]) > EXACT * np.maximum(depth[total], 1)
+    cut[span[lost], gauge[total[lost]]] = True
+    return cut
 
 
 def _middle(starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> npt.NDArray[np.datetime64]:

@@ -19,6 +19,7 @@ def station_average_weights(
     nearest: Nearest = 5,
     radius: float | None = None,
     min_donors: int = 2,
+    elevation_limit: float | None = None,
     distances: npt.NDArray[np.float64] | None = None,
 ) -> npt.NDArray[np.float64]:
     """Return donor weights by the station average.
@@ -29,13 +30,18 @@ def station_average_weights(
 
     Parameters
     ----------
-    network, target, reporting, nearest, radius, min_donors, distances
+    network, target, reporting, nearest, radius, min_donors, elevation_limit, distances
         As for :func:`basinrain.infill.donors.choose_donors`.
 
     Returns
     -------
     array of float, shape (..., n_gauges)
         Weights that sum to 1; 0 at gauges that do not donate, all 0 where there are fewer than ``min_donors`` donors.
+
+    Raises
+    ------
+    DataError
+        ``elevation_limit`` is given, and the target or a reporting gauge has no elevation.
 
     Examples
     --------
@@ -46,6 +52,13 @@ def station_average_weights(
     array([0., 0., 0.])
     """
     donors = choose_donors(
-        network, target, reporting, nearest=nearest, radius=radius, min_donors=min_donors, distances=distances
+        network,
+        target,
+        reporting,
+        nearest=nearest,
+        radius=radius,
+        min_donors=min_donors,
+        elevation_limit=elevation_limit,
+        distances=distances,
     )
     return np.asarray(donors / np.maximum(donors.sum(axis=-1, keepdims=True), 1), dtype=float)

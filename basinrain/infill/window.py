@@ -4,20 +4,18 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from functools import cached_property
-from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.options import InfillOptions
-from basinrain.infill.spans import month_of, span_starts
+from basinrain.infill.record_normals import NormalRatios
+from basinrain.infill.relations import Relations
+from basinrain.infill.spans import cut_totals, month_of, span_starts
 from basinrain.rainfall import RainRecord, Status
 
-__all__ = ["EXACT", "Bools", "Floats", "Ints", "Spans", "Window"]
-
-EXACT: Final = 1e-9
-"""Depths this close to each other, relatively and in mm, are equal."""
+__all__ = ["Bools", "Floats", "Ints", "Spans", "Window"]
 
 Ints = npt.NDArray[np.int64]
 Floats = npt.NDArray[np.float64]
@@ -36,6 +34,10 @@ class Window:
         The scale that is used: ``"step"``, ``"day"`` or ``"storm"``.
     fillable : array of bool, shape (n_steps, n_gauges)
         The gaps that may be infilled.
+    relations : Relations, optional
+        Relations between the gauges in the record, where the method needs them.
+    ratios : NormalRatios, optional
+        Normals from the record, where they are used.
 
     Examples
     --------
@@ -55,6 +57,8 @@ class Window:
     options: InfillOptions
     scale: str
     fillable: Bools
+    relations: Relations | None = None
+    ratios: NormalRatios | None = None
     _spans: dict[bytes, Spans] = field(init=False, repr=False, default_factory=dict)
 
     @cached_property
@@ -105,34 +109,10 @@ class Window:
                 months=month_of(self.record.starts[first], self.record.ends[stop - 1]),
                 totals=np.add.reduceat(self.own, first, axis=0),
                 complete=np.logical_and.reduceat(self.reporting, first, axis=0),
-                cut=self._cut(first, stop),
+                cut=cut_totals(self.record, self.own, first, stop),
                 measured=np.logical_and.reduceat(self.measured, first, axis=0),
             )
         return self._spans[key]
-
-    def _cut(self, first: Ints, stop: Ints) -> Bools:
-        """Return where a span holds part of a known total's interval, but not all of its depth."""
-        cut = np.zeros((len(first), len(self.network)), dtype=bool)
-        totals = self.record.totals
-        begin, end = self.record.steps_of(totals)
-        inside = np.flatnonzero(begin < end)
-        begin, end = begin[inside], end[inside]
-        column = {gauge: g for g, gauge in enumerate(self.record.gauges)}
-        gauge = np.array([column[totals[k].gauge] for k in inside], dtype=np.int64)
-        depth = np.array([totals[k].depth for k in inside])
-        # Every total with every span that it reaches.
-        first_span = np.searchsorted(stop, begin, "right")
-        reached = np.searchsorted(first, end) - first_span
-        total = np.repeat(np.arange(len(inside)), reached)
-        span = np.arange(len(total)) - np.repeat(np.cumsum(reached) - reached - first_span, reached)
-        through = np.concatenate([np.zeros((1, len(self.network))), self.own.cumsum(axis=0)])
-        held = (
-            through[np.minimum(end[total], stop[span]), gauge[total]]
-            - through[np.maximum(begin[total], first[span]), gauge[total]]
-        )
-        lost = np.abs(held - depth[total]) > EXACT * np.maximum(depth[total], 1)
-        cut[span[lost], gauge[total[lost]]] = True
-        return cut
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -14,7 +14,7 @@ from basinrain.jobfile.tables import Job
 
 __all__ = ["plainest", "problem_of"]
 
-_REPEATED = frozenset({"rainfall", "storm"})
+_REPEATED = frozenset({"edit", "rainfall", "storm"})
 
 _MESSAGES: Mapping[str, tuple[str, str]] = {
     "string_type": ("text in quotes", "correct the value"),
@@ -124,11 +124,11 @@ def _keys_at(loc: Sequence[str | int]) -> list[str]:
     for part in loc:
         if isinstance(part, int):
             continue
-        found = _model_in(model.model_fields[part].annotation)
+        found = _model_in(model.model_fields[part].annotation)  # only plain keys hold tables, never one with an alias
         if found is None:
             return []
         model = found
-    return [name for name, info in model.model_fields.items() if not info.exclude]
+    return [info.alias or name for name, info in model.model_fields.items() if not info.exclude]
 
 
 def _model_in(annotation: Any) -> type[BaseModel] | None:  # noqa: ANN401 - any type form

@@ -6,118 +6,58 @@ from these models.
 
 from __future__ import annotations
 
-import re
-from collections.abc import Iterable, Mapping
-from datetime import date, datetime, time
 from pathlib import Path
 from typing import Annotated, Any, Literal
 
-from pydantic import AfterValidator, BaseModel, BeforeValidator, ConfigDict, Field, model_validator
+from pydantic import BeforeValidator, Field, ValidationInfo, field_validator, model_validator
 from pydantic_core import PydanticCustomError
 
-from basinrain import averaging, infill
-from basinrain.errors import nearest_name
-from basinrain.units import AREA_UNITS, DEPTH_UNITS, LENGTH_UNITS
+from basinrain import averaging, infill, layouts
+from basinrain.jobfile.fields import (
+    LEAVE_ONE_OUT,
+    Count,
+    DepthUnit,
+    LengthUnit,
+    Moment,
+    NameList,
+    Positive,
+    Table,
+    as_list,
+    clock_time,
+    names,
+    one_of,
+)
+from basinrain.units import AREA_UNITS
 
 __all__ = [
     "ArithmeticTable",
     "AveragingTable",
     "BasinsTable",
     "BufferTable",
+    "EditTable",
     "GaugesTable",
     "IdwTable",
     "InfillTable",
     "Job",
     "JobTable",
     "RainfallTable",
+    "ScreeningTable",
     "StepTable",
     "StormTable",
-    "is_month",
 ]
 
 
-def _one_of(known: Iterable[str]) -> AfterValidator:
-    names = tuple(known)
-
-    def check(value: str) -> str:
-        if value not in names:
-            raise PydanticCustomError(
-                "one_of",
-                "{expected}",
-                {"expected": "one of: " + ", ".join(names), "remedy": nearest_name(value, names)},
-            )
-        return value
-
-    return AfterValidator(check)
-
-
-def _moment(value: object) -> object:
-    """Bring a TOML date, date-time or text to ISO 8601 text; a bare date stays bare, since it names the whole day."""
-    if isinstance(value, datetime):
-        return value.isoformat()
-    if isinstance(value, date):
-        return value.isoformat()
-    return value
-
-
-def is_month(text: str) -> bool:
-    """Return whether a time names a whole month: ``"2031-05"``."""
-    return re.fullmatch(r"\d{4}-\d{2}", text) is not None
-
-
-def _iso(value: str) -> str:
-    try:
-        datetime.fromisoformat(f"{value}-01" if is_month(value) else value)
-    except ValueError:
-        raise PydanticCustomError(
-            "iso",
-            "{expected}",
-            {
-                "expected": "a month, a date or a date and time such as 2031-05-04T06:00",
-                "remedy": "write it in ISO 8601",
-            },
-        ) from None
-    return value
-
-
-def _clock_time(value: object) -> object:
-    if isinstance(value, time):
-        return value.strftime("%H:%M")
-    return value
-
-
-def _as_list(value: object) -> object:
-    return [value] if isinstance(value, Mapping) else value
-
-
-def _names(value: object) -> object:
-    return [value] if isinstance(value, str) else value
-
-
-DepthUnit = Annotated[str, _one_of(DEPTH_UNITS)]
-LengthUnit = Annotated[str, _one_of(LENGTH_UNITS)]
-Moment = Annotated[str, BeforeValidator(_moment), AfterValidator(_iso)]
-NameList = Annotated[tuple[str, ...], BeforeValidator(_names)]
-AveragingName = Annotated[str, _one_of(averaging.METHODS)]
-Positive = Annotated[float, Field(gt=0)]
-Count = Annotated[int, Field(ge=1)]
-
-
-class _Table(BaseModel):
-    model_config = ConfigDict(extra="forbid", frozen=True, allow_inf_nan=False)
-
-
-class JobTable(_Table):
+class JobTable(Table):
     """``[job]``: the name of the work, the units of its results, where they go."""
 
     name: str
-    depth_unit: Annotated[str, _one_of(("mm", "in"))] = "mm"
-    area_unit: Annotated[str, _one_of(("km2", "mi2", "ha", "acre"))] = "km2"
+    depth_unit: Annotated[str, one_of(("mm", "in"))] = "mm"
+    area_unit: Annotated[str, one_of(("km2", "mi2", "ha", "acre"))] = "km2"
     output: str = "output"
     plane: str | None = None
 
 
-class GaugesTable(_Table):
+class GaugesTable(Table):
     """``[gauges]``: the file of gauges and how to read it."""
 
     file: str
@@ -127,31 +67,72 @@ class GaugesTable(_Table):
     elevation_unit: LengthUnit = "m"
     normal_unit: DepthUnit = "mm"
     normal_period: str = ""
-    colocated: Annotated[str, _one_of(("refuse", "mean"))] = "refuse"
+    colocated: Annotated[str, one_of(("refuse", "mean"))] = "refuse"
     catch_factor: dict[str, Positive | tuple[Positive, ...]] = {}
     exclude: tuple[str, ...] = ()
     columns: dict[str, str | list[str]] = {}
 
 
-class RainfallTable(_Table):
+class RainfallTable(Table):
     """``[[rainfall]]``: one source of depths."""
 
     file: str | None = None
     files: tuple[str, ...] = ()
-    layout: Annotated[str, _one_of(("wide", "long", "totals"))] = "wide"
-    unit: DepthUnit
-    interval: str | None = None
-    stamp: Annotated[str, _one_of(("end", "start"))] = "end"
+    layout: Annotated[str, one_of(layouts.LAYOUTS)] = "wide"
+    unit: Annotated[DepthUnit | None, Field(validate_default=True)] = None
+    interval: Annotated[str | None, Field(validate_default=True)] = None
+    stamp: Annotated[str, one_of(("end", "start"))] = "end"
     timezone: str | None = None
-    read_hour: Annotated[str | int | None, BeforeValidator(_clock_time)] = None
-    date_means: Annotated[str, _one_of(("calendar-day", "ends", "starts"))] | None = None
+    read_hour: Annotated[str | int | None, BeforeValidator(clock_time)] = None
+    date_means: Annotated[str, one_of(("calendar-day", "ends", "starts"))] | None = None
     missing: tuple[str | float, ...] = ()
     trace: tuple[str, ...] = ("T",)
     flags: dict[str, tuple[str, ...]] = {}
     accumulated: str | None = None
-    gaps: Annotated[str, _one_of(("refuse", "missing"))] = "refuse"
+    gaps: Annotated[str, one_of(("refuse", "missing"))] = "refuse"
     time_format: str | None = None
+    tip: Positive | None = None
+    start: Moment | None = None
+    end: Moment | None = None
+    rollover: Positive | None = None
+    jitter: Annotated[float, Field(ge=0)] = 0.0
     columns: dict[str, str] = {}
+
+    @field_validator("unit")
+    @classmethod
+    def _unit(cls, unit: str | None, info: ValidationInfo) -> str | None:
+        layout = info.data.get("layout")
+        if layout in layouts.GHCN and unit not in {None, layouts.GHCN_UNIT}:
+            raise PydanticCustomError(
+                "given_by_format",
+                "{expected}",
+                {"expected": f"'{layouts.GHCN_UNIT}', which the format prescribes", "remedy": "leave it out"},
+            )
+        if layout is not None and layout not in layouts.GHCN and unit is None:
+            raise PydanticCustomError("missing", "it to be given")
+        return unit
+
+    @field_validator("interval")
+    @classmethod
+    def _interval(cls, interval: str | None, info: ValidationInfo) -> str | None:
+        if info.data.get("layout") not in layouts.GHCN:
+            return interval
+        if interval not in {None, "1d"}:
+            raise PydanticCustomError(
+                "given_by_format",
+                "{expected}",
+                {"expected": "'1d', which the format prescribes", "remedy": "leave it out"},
+            )
+        return "1d"
+
+    @field_validator(*layouts.TAKEN_BY)
+    @classmethod
+    def _taken(cls, value: object, info: ValidationInfo) -> object:
+        key = str(info.field_name)
+        expected = layouts.misplaced(key, str(info.data.get("layout", "")))
+        if expected and value != cls.model_fields[key].default:
+            raise PydanticCustomError("misplaced", "{expected}", {"expected": expected, "remedy": "leave it out"})
+        return value
 
     @model_validator(mode="after")
     def _whole(self) -> RainfallTable:
@@ -173,29 +154,29 @@ class RainfallTable(_Table):
         return (self.file,) if self.file is not None else self.files
 
 
-class StepTable(_Table):
+class StepTable(Table):
     """``[step]``: the common step of the job."""
 
     common: str | None = None
 
 
-class BasinsTable(_Table):
+class BasinsTable(Table):
     """``[basins]``: the file of watershed polygons and how to read it."""
 
     file: str
     layer: str | None = None
     id: str | None = None
-    repeated: Annotated[str, _one_of(("refuse", "merge"))] = "refuse"
+    repeated: Annotated[str, one_of(("refuse", "merge"))] = "refuse"
     crs: str | None = None
     length_unit: LengthUnit = "m"
     area: str | None = None
-    area_unit: Annotated[str, _one_of(AREA_UNITS)] = "km2"
+    area_unit: Annotated[str, one_of(AREA_UNITS)] = "km2"
     lowest: str | None = None
     highest: str | None = None
     elevation_unit: LengthUnit = "m"
 
 
-class StormTable(_Table):
+class StormTable(Table):
     """``[[storm]]``: one window of the record."""
 
     name: str
@@ -204,19 +185,44 @@ class StormTable(_Table):
     pattern: str = "mean"
 
 
-class InfillTable(_Table):
+class ScreeningTable(Table):
+    """``[screening]``: what is done about findings, and what the checks are told."""
+
+    reject: NameList = ()
+    accept: NameList = ()
+    envelope: str | None = None
+    unheated: NameList = ()
+    cold_months: tuple[Annotated[int, Field(ge=1, le=12)], ...] = ()
+
+
+class EditTable(Table):
+    """``[[edit]]``: one change of the record, by whom and why."""
+
+    gauge: str
+    start: Annotated[Moment, Field(alias="from")]
+    end: Annotated[Moment, Field(alias="to")]
+    action: Annotated[str, one_of(("reject", "set", "shift", "scale"))]
+    value: float | str | None = None
+    reason: str
+    by: str
+    date: Moment
+
+
+class InfillTable(Table):
     """``[infill]``: how gaps are filled."""
 
-    method: Annotated[str, _one_of(infill.METHODS)] = "inverse-distance"
-    scale: Annotated[str, _one_of(("step", "day", "storm"))] | None = None
+    method: Annotated[str, one_of((*infill.METHODS, LEAVE_ONE_OUT))] = "inverse-distance"
+    scale: Annotated[str, one_of(("step", "day", "storm"))] | None = None
     longest_gap: Positive = 31.0
     nearest: Count | Literal["all"] | None = None
     radius: Positive | None = None
-    min_donors: Count = 2
-    power: Positive = 2.0
+    min_donors: Count | None = None
+    elevation_limit: Positive | None = None
+    power: Positive | None = None
+    normals: Annotated[str, one_of(("given", "record"))] = "given"
 
 
-class IdwTable(_Table):
+class IdwTable(Table):
     """``[averaging] idw``: options of the gridded inverse distance."""
 
     power: Positive = 2.0
@@ -226,23 +232,23 @@ class IdwTable(_Table):
     allow_uncovered: bool = False
 
 
-class BufferTable(_Table):
+class BufferTable(Table):
     """``[averaging] arithmetic.gauges``: gauges within a distance of the basin."""
 
     buffer: Annotated[float, Field(ge=0)]
 
 
-class ArithmeticTable(_Table):
+class ArithmeticTable(Table):
     """``[averaging] arithmetic``: which gauges the arithmetic mean takes."""
 
     gauges: Literal["inside", "all"] | BufferTable = "inside"
 
 
-class AveragingTable(_Table):
+class AveragingTable(Table):
     """``[averaging]``: the methods that are run and compared."""
 
     methods: Annotated[
-        tuple[Annotated[str, _one_of(averaging.METHODS)], ...], BeforeValidator(_names), Field(min_length=1)
+        tuple[Annotated[str, one_of(averaging.METHODS)], ...], BeforeValidator(names), Field(min_length=1)
     ] = (
         "arithmetic",
         "thiessen",
@@ -257,7 +263,7 @@ class AveragingTable(_Table):
         return {} if table is None else table.model_dump(exclude_none=True)
 
 
-class Job(_Table):
+class Job(Table):
     """A whole job, as resolved: what the file says, what ``--set`` changed, and every default.
 
     It cannot be changed; :func:`~basinrain.jobfile.parse_job` and :func:`~basinrain.jobfile.read_job` make one, and
@@ -275,6 +281,10 @@ class Job(_Table):
         ``[step]``: the common step; by default that of the sources.
     basins : BasinsTable
         ``[basins]``: the file of watershed polygons.
+    screening : ScreeningTable
+        ``[screening]``: findings that are accepted or rejected, and what the checks are told.
+    edit : tuple of EditTable
+        ``[[edit]]``: changes of the record, each with its reason.
     storm : tuple of StormTable
         ``[[storm]]``: windows of the record; without one the whole record is the storm.
     infill : InfillTable
@@ -304,10 +314,12 @@ class Job(_Table):
 
     job: JobTable
     gauges: GaugesTable
-    rainfall: Annotated[tuple[RainfallTable, ...], BeforeValidator(_as_list), Field(min_length=1)]
+    rainfall: Annotated[tuple[RainfallTable, ...], BeforeValidator(as_list), Field(min_length=1)]
     step: StepTable = StepTable()
     basins: BasinsTable
-    storm: Annotated[tuple[StormTable, ...], BeforeValidator(_as_list)] = ()
+    screening: ScreeningTable = ScreeningTable()
+    edit: Annotated[tuple[EditTable, ...], BeforeValidator(as_list)] = ()
+    storm: Annotated[tuple[StormTable, ...], BeforeValidator(as_list)] = ()
     infill: InfillTable = InfillTable()
     averaging: AveragingTable = AveragingTable()
     folder: Annotated[Path, Field(exclude=True)] = Path()
@@ -317,7 +329,13 @@ class Job(_Table):
         return self.folder / name
 
     @property
+    def input_names(self) -> tuple[str, ...]:
+        """Every input file of the job as it is named, in the job's order."""
+        rain = (name for source in self.rainfall for name in source.paths)
+        envelope = () if self.screening.envelope is None else (self.screening.envelope,)
+        return (self.gauges.file, *rain, self.basins.file, *envelope)
+
+    @property
     def inputs(self) -> tuple[Path, ...]:
-        """Every input file of the job, in the order in which the job names them."""
-        names = [self.gauges.file, *(name for source in self.rainfall for name in source.paths), self.basins.file]
-        return tuple(self.path(name) for name in names)
+        """The paths of every input file of the job."""
+        return tuple(self.path(name) for name in self.input_names)

@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from datetime import datetime, timedelta
+from typing import overload
 
 import numpy as np
 
 from basinrain.errors import JobError, Problem
-from basinrain.jobfile.tables import RainfallTable, StormTable, is_month
+from basinrain.jobfile.fields import is_month
+from basinrain.jobfile.tables import EditTable, RainfallTable, StormTable
 
-__all__ = ["rainfall_day_start", "storm_window_times"]
+__all__ = ["edit_window_times", "rainfall_day_start", "storm_window_times"]
 
 Window = tuple[np.datetime64 | None, np.datetime64 | None]
 
@@ -70,14 +72,56 @@ def storm_window_times(table: StormTable, zone: str, *, day_start: np.timedelta6
     >>> [str(time) for time in storm_window_times(storm, "+02:00", day_start=np.timedelta64(0, "s"))]
     ['2031-05-04T08:00:00', '2031-05-06T00:00:00']
     """
+    item = f"storm {table.name}"
     return (
-        _moment(table.name, table.start, zone, day_start, at_end=False),
-        _moment(table.name, table.end, zone, day_start, at_end=True),
+        _moment(item, table.start, zone, day_start, at_end=False),
+        _moment(item, table.end, zone, day_start, at_end=True),
     )
 
 
+def edit_window_times(
+    table: EditTable, number: int, zone: str, *, day_start: np.timedelta64
+) -> tuple[np.datetime64, np.datetime64]:
+    """Return the start and end of an edit in the clock of the record that it changes.
+
+    Parameters
+    ----------
+    table
+        The edit. A bare date names its whole day, a bare month its whole month.
+    number
+        Which ``[[edit]]`` it is, counted from 1.
+    zone, day_start
+        As for :func:`storm_window_times`, of the source that has the gauge.
+
+    Raises
+    ------
+    JobError
+        A time has an offset, and the record's clock is not known.
+
+    Examples
+    --------
+    >>> edit = EditTable.model_validate(
+    ...     {"gauge": "W01", "from": "2031-05-04", "to": "2031-05-04", "action": "reject"}
+    ...     | {"reason": "funnel blocked", "by": "site log", "date": "2031-06-01"}
+    ... )
+    >>> [str(time) for time in edit_window_times(edit, 1, "", day_start=np.timedelta64(0, "s"))]
+    ['2031-05-04T00:00:00', '2031-05-05T00:00:00']
+    """
+    item = f"[[edit]] no. {number}"
+    return (
+        _moment(item, table.start, zone, day_start, at_end=False),
+        _moment(item, table.end, zone, day_start, at_end=True),
+    )
+
+
+@overload
+def _moment(item: str, text: str, zone: str, day_start: np.timedelta64, *, at_end: bool) -> np.datetime64: ...
+@overload
 def _moment(
-    storm: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool
+    item: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool
+) -> np.datetime64 | None: ...
+def _moment(
+    item: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool
 ) -> np.datetime64 | None:
     if text is None:
         return None
@@ -93,10 +137,10 @@ def _moment(
     if not zone:
         raise JobError(
             Problem(
-                item=f"storm {storm}",
+                item=item,
                 found=f"the time '{text}' with an offset",
                 expected="times without one, since the rainfall files state no time zone",
-                remedy="give [[rainfall]] timezone, or write the storm's times in the files' clock",
+                remedy="give [[rainfall]] timezone, or write the times in the clock of the files",
             )
         )
     clock = datetime.fromisoformat(f"2000-01-01T00:00{zone}").utcoffset() or timedelta(0)

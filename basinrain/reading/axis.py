@@ -14,7 +14,7 @@ from basinrain.reading.blocks import Block
 from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.spacing import check_spacing
 
-__all__ = ["join_blocks"]
+__all__ = ["check_length", "join_blocks"]
 
 _LISTED: Final = 3
 _MOST_STEPS: Final = 20_000_000
@@ -68,14 +68,7 @@ def join_blocks(
     depth, status, present = _joined(blocks, steps, times, column, interval=interval, problems=problems)
     if gaps == "refuse":
         _check_gaps(times, present, gauges, blocks=blocks, interval=interval, problems=problems)
-    n = int(times[-1] - times[0]) // _unit(interval) + 1
-    if n > _MOST_STEPS:
-        problems.add(
-            item="time axis",
-            found=f"{n} steps of {interval.label} from {_end(times[0], interval)} to {_end(times[-1], interval)}",
-            expected=f"at most {_MOST_STEPS}",
-            remedy="correct the first or last time",
-        )
+    n = check_length(int(times[0]), int(times[-1]), interval, problems)
     problems.raise_as(ReadError)
     if n > len(times):
         place = (times - times[0]) // _unit(interval)
@@ -99,6 +92,36 @@ def join_blocks(
         totals=totals,
         day_phase=int(ends[0].astype(np.int64) % DAY) if interval.whole_days else 0,
     )
+
+
+def check_length(first: int, last: int, interval: Interval, problems: Problems) -> int:
+    """Return the number of steps of an axis; a problem where it is too long to be meant.
+
+    Parameters
+    ----------
+    first, last
+        Ends of its first and last step: seconds since 1970, or months since then where the interval is a month.
+    interval
+        The step.
+    problems
+        Takes the problem.
+
+    Examples
+    --------
+    >>> problems = Problems()
+    >>> check_length(3600, 7200, Interval("1h", 3600), problems), len(problems)
+    (2, 0)
+    """
+    n = (last - first) // _unit(interval) + 1
+    if n > _MOST_STEPS:
+        bounds = _end(np.array([first, last]), interval)
+        problems.add(
+            item="time axis",
+            found=f"{n} steps of {interval.label} from {bounds[0]} to {bounds[1]}",
+            expected=f"at most {_MOST_STEPS}",
+            remedy="correct the first or last time",
+        )
+    return n
 
 
 def _unit(interval: Interval) -> int:
@@ -161,12 +184,14 @@ def _joined(
     for number, (block, mine) in enumerate(zip(blocks, steps, strict=True)):
         at = np.ix_(np.searchsorted(times, mine), np.array([column[gauge] for gauge in block.gauges]))
         here = np.ones(block.depth.shape, dtype=bool) if block.present is None else block.present
-        for row, g in np.argwhere(present[at] & here):
+        both = np.argwhere(present[at] & here)
+        for row, g in both if len(both) <= _LISTED else both[:1]:
             gauge, end = block.gauges[g], block.ends[row]
             first = blocks[owner[np.searchsorted(times, mine[row]), column[gauge]]].file
+            more = f", and {len(both) - 1} more values like it" if len(both) > _LISTED else ""
             problems.add(
                 item=f"gauge {gauge}",
-                found=f"the {interval.label} that ends at {end}, which {first} has too",
+                found=f"the {interval.label} that ends at {end}, which {first} has too{more}",
                 expected="a gauge and time in one file only",
                 remedy="remove it from one of the files",
                 file=block.file,

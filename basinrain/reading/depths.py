@@ -21,7 +21,7 @@ from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.intervals import DAY, Interval
 from basinrain.units import depth_factor
 
-__all__ = ["MARKED", "DepthCells", "DepthRules", "Fault", "depth_rules"]
+__all__ = ["MARKED", "DepthCells", "DepthRules", "Fault", "depth_rules", "greatest_depth"]
 
 MARKED: Final[Mapping[str, Status]] = MappingProxyType(
     {
@@ -76,6 +76,8 @@ class DepthRules:
         What every declared mark means.
     implausible
         mm from which a value that is a usual missing code is not taken for rain.
+    least
+        mm, 0 or less; what is below is refused.
     """
 
     unit: str
@@ -84,6 +86,7 @@ class DepthRules:
     missing_numbers: frozenset[float]
     marks: Mapping[str, Status]
     implausible: float
+    least: float = 0.0
 
 
 def depth_rules(
@@ -94,6 +97,7 @@ def depth_rules(
     trace: Sequence[str],
     flags: Mapping[str, Sequence[str]],
     accumulated: str | None,
+    least: float = 0.0,
 ) -> DepthRules:
     """Return the rules of a source, its options checked.
 
@@ -111,6 +115,8 @@ def depth_rules(
         Marks by what they mean, one of :data:`MARKED`.
     accumulated
         The mark of an accumulated value.
+    least
+        The least value that is one, 0 or less, in the unit.
 
     Raises
     ------
@@ -164,6 +170,7 @@ def depth_rules(
         missing_numbers=frozenset(filter(np.isfinite, map(_number, texts))),
         marks=MappingProxyType(marks),
         implausible=_implausible(interval),
+        least=least * factor,
     )
 
 
@@ -174,15 +181,28 @@ def _number(text: str) -> float:
         return np.nan
 
 
+def greatest_depth(hours: npt.ArrayLike) -> npt.NDArray[np.float64]:
+    """Return depths in mm that have hardly ever fallen in so many hours.
+
+    491 mm times the hours to the power 0.452 is the envelope of the world's record rainfalls (WMO-No. 1045, from
+    memory).
+
+    Examples
+    --------
+    >>> greatest_depth([0.25, 1.0]).round()
+    array([262., 491.])
+    """
+    return np.asarray(491.0 * np.asarray(hours, dtype=float) ** 0.452)
+
+
 def _implausible(interval: Interval | None) -> float:
     """Return a depth that has hardly ever fallen in so short a time.
 
-    491 mm times the hours to the power 0.452 is the envelope of the world's record rainfalls (WMO-No. 1045, from
-    memory); up to a day, 999 mm is already beyond nearly every gauge. A storm total is held against a month.
+    Up to a day, 999 mm is already beyond nearly every gauge. A storm total is held against a month.
     """
     if interval is None or interval.seconds is None:
-        return float(491.0 * (30 * 24) ** 0.452)
-    envelope = float(491.0 * (interval.seconds / 3600) ** 0.452)
+        return float(greatest_depth(30 * 24))
+    envelope = float(greatest_depth(interval.seconds / 3600))
     return min(envelope, 999.0) if interval.seconds <= DAY else envelope
 
 
@@ -277,6 +297,8 @@ class DepthCells:
         if wrong:
             remedy = "correct the cell, or declare its mark in flags" if text[:1].isdigit() else "correct the cell"
             return _fault(f"'{text}'", _EXPECTED, f"{remedy}, or declare it in missing")
+        if value < 0 and value * rules.factor >= rules.least:
+            return _Cell(value * rules.factor, meaning)
         if value < 0 or value in _CODES:
             code = (-value if value < 0 else value) in _NEGATIVE_CODES
             if value < 0 and not code:

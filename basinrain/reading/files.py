@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import hashlib
+from collections.abc import Sequence
 from pathlib import Path
 
-from basinrain.errors import Problem, ReadError
+from basinrain.errors import Problem, Problems, ReadError
 
-__all__ = ["read_bytes"]
+__all__ = ["read_bytes", "report_repeated"]
 
 
 def read_bytes(path: Path, *, size: int = -1, expected: str = "a header and rows") -> bytes:
@@ -56,3 +58,44 @@ path
             return content
         problem = Problem(item="the file", found="nothing in it", expected=expected, file=file)
     raise ReadError(problem)
+
+
+def report_repeated(paths: Sequence[Path], problems: Problems) -> None:
+    """Report files that come twice, under one name or two: each in one line, in place of one for all its values.
+
+    Parameters
+    ----------
+    paths
+        The files of one source. Those that cannot be read are passed over.
+    problems
+        Takes what is found.
+
+    Examples
+    --------
+    >>> import tempfile
+    >>> from basinrain.errors import Problems
+    >>> path = Path(tempfile.mkdtemp()) / "rain.csv"
+    >>> _ = path.write_text("time,A")
+    >>> problems = Problems()
+    >>> report_repeated([path, path], problems)
+    >>> len(problems)
+    1
+    """
+    sizes: dict[int, list[Path]] = {}
+    for path in paths:
+        if path.is_file():
+            sizes.setdefault(path.stat().st_size, []).append(path)
+    for alike in sizes.values():
+        kept: list[tuple[Path, bytes]] = []
+        for path in alike if len(alike) > 1 else ():
+            content = hashlib.sha256(path.read_bytes()).digest()
+            first = next((other for other, its in kept if its == content), None)
+            if first is not None:
+                problems.add(
+                    item="the file",
+                    found="it twice" if first == path else f"the same content as in {first}",
+                    expected="each file once",
+                    remedy="name it once",
+                    file=str(path),
+                )
+            kept.append((path, content))

@@ -8,7 +8,7 @@ from dataclasses import replace
 
 from basinrain.errors import JobError, Problems
 
-__all__ = ["option_problems"]
+__all__ = ["of_file", "option_problems"]
 
 
 @contextmanager
@@ -40,3 +40,23 @@ did you mean 'us-ft'?
     except JobError as error:
         told = [replace(problem, file=problem.file or file, item=item or problem.item) for problem in error.problems]
         problems.extend(JobError(told, unlisted=error.unlisted))
+
+
+@contextmanager
+def of_file(file: str) -> Iterator[None]:
+    """Name the file in an option's problem that does not name one.
+
+    Examples
+    --------
+    >>> from basinrain.units import length_factor
+    >>> with of_file("gauges.csv"):
+    ...     length_factor("us_ft")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.JobError: gauges.csv: length unit: found 'us_ft'; expected one of: m, km, ft, us-ft, mi; \
+did you mean 'us-ft'?
+    """
+    problems = Problems()
+    with option_problems(problems, file=file):
+        yield
+    problems.raise_as(JobError)

@@ -1,47 +1,38 @@
-"""Rainfall files: wide, long and totals-only tables become a :class:`~basinrain.rainfall.RainRecord`."""
+"""Rainfall files of any layout become a :class:`~basinrain.rainfall.RainRecord`."""
 
 from __future__ import annotations
 
-import re
 from collections.abc import Mapping, Sequence
 from pathlib import Path
-from typing import Final, Literal
+from typing import Literal, Protocol
 
-from basinrain.errors import JobError, Problem, Problems, ReadError, nearest_name
+from basinrain.errors import JobError, Problems, ReadError
+from basinrain.layouts import GHCN, GHCN_UNIT
 from basinrain.rainfall import RainRecord
 from basinrain.reading.axis import join_blocks
 from basinrain.reading.blocks import Block, problems_of
+from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval
 from basinrain.reading.clocks import parse_zone
+from basinrain.reading.counter import CounterRules, counter_depths, read_counter
 from basinrain.reading.delimited import DelimitedTable, read_delimited
 from basinrain.reading.depths import DepthRules, depth_rules
-from basinrain.reading.intervals import FORMS, Interval, parse_interval
+from basinrain.reading.files import report_repeated
+from basinrain.reading.ghcn import read_ghcn
 from basinrain.reading.long import read_long
-from basinrain.reading.options import option_problems
-from basinrain.reading.stamps import StampRules
+from basinrain.reading.options import of_file, option_problems
+from basinrain.reading.stamps import StampRules, read_stamps
+from basinrain.reading.tips import TipRules, read_tips
 from basinrain.reading.totals import read_totals
 from basinrain.reading.wide import read_wide
 
 __all__ = ["read_rainfall"]
 
-_COLUMNS: Final = {
-    "wide": ("time",),
-    "long": ("gauge", "time", "depth", "flag", "steps"),
-    "totals": ("gauge", "depth", "storm", "flag"),
-}
-_CHOICES: Final = {
-    "layout": tuple(_COLUMNS),
-    "stamp": ("end", "start"),
-    "date_means": ("calendar-day", "ends", "starts"),
-    "gaps": ("refuse", "missing"),
-}
-_HOUR: Final = re.compile(r"(?P<hour>[01]?[0-9]|2[0-3])(?::(?P<minute>[0-5][0-9]))?")
-
 
 def read_rainfall(
     files: str | Path | Sequence[str | Path],
     *,
-    layout: Literal["wide", "long", "totals"],
-    unit: str,
+    layout: Literal["wide", "long", "totals", "tips", "counter", "ghcn-dly", "ghcn-csv"],
+    unit: str | None = None,
     interval: str | None = None,
     stamp: Literal["end", "start"] = "end",
     timezone: str | None = None,
@@ -53,6 +44,11 @@ def read_rainfall(
     accumulated: str | None = None,
     gaps: Literal["refuse", "missing"] = "refuse",
     time_format: str | None = None,
+    tip: float | None = None,
+    start: str | None = None,
+    end: str | None = None,
+    rollover: float | None = None,
+    jitter: float = 0.0,
     columns: Mapping[str, str] | None = None,
 ) -> RainRecord:
     r"""Read the files of one rainfall source.
@@ -60,7 +56,7 @@ def read_rainfall(
     Parameters
     ----------
     files
-        One path or several; several files are joined in time, in gauges, or both.
+        One path or several; several files are joined in time, in gauges, or both. No file may come twice.
     layout
         ``"wide"``: a column of times and a column for every gauge. ``"long"``: columns gauge, time, depth, and where
         there are such, flag and steps. ``"totals"``: columns gauge, depth, and where there is one, storm.
@@ -91,6 +87,15 @@ def read_rainfall(
         ``"missing"``: times absent from the files are missing values; else they are refused.
     time_format
         A strptime format; without it, stamps are ISO 8601.
+    tip
+        Depth of one tip in the unit; needed where tips have no depth column, and only then.
+    start, end
+        The period ``(start, end]`` over which all loggers of a source of tips ran, ISO 8601: there, silence is zero. A
+        bare date or month names that whole day or month. None: from every gauge's first row, until its last.
+    rollover
+        Reading, in the unit, at which a counter starts again from 0.
+    jitter
+        Depth, in the unit, by which a counter may fall without meaning.
     columns
         Which column holds what, by ``time``, ``gauge``, ``depth``, ``flag``, ``steps``, ``storm``.
 
@@ -120,33 +125,61 @@ def read_rainfall(
            [3, 7]], dtype=uint8), '2031-05-04T07:00:00')
     """
     paths = [Path(files)] if isinstance(files, str | Path) else [Path(file) for file in files]
-    named = columns or {}
     # A job may have many sources; their first file tells them apart.
     first = str(paths[0]) if paths else ""
     problems = Problems(file=first)
-    _check_choices(layout=layout, stamp=stamp, date_means=date_means, gaps=gaps, columns=named, problems=problems)
+    given: dict[str, object] = {
+        "stamp": None if stamp == "end" else stamp,
+        "date_means": date_means,
+        "gaps": None if gaps == "refuse" else gaps,
+        "unit": unit,
+        "read_hour": read_hour,
+        "missing": missing or None,
+        "trace": None if tuple(trace) == ("T",) else trace,
+        "flags": flags or None,
+        "accumulated": accumulated,
+        "time_format": time_format,
+        "tip": tip,
+        "start": start,
+        "end": end,
+        "rollover": rollover,
+        "jitter": jitter or None,
+        "columns": columns or None,
+    }
+    check_choices(layout, given, problems)
     if not paths:
         problems.add(item="files", found="none", expected="at least one file")
+    check_numbers(problems, above={"tip": tip, "rollover": rollover}, least={"jitter": jitter})
     step, hour = None, None
     with option_problems(problems, file=first):
-        step = _interval(interval, layout)
+        step = source_interval(interval, layout)
     with option_problems(problems, file=first):
-        hour = _read_hour(read_hour, date_means, step)
+        hour = reading_hour(read_hour, date_means, step)
     with option_problems(problems, file=first):
         _ = None if timezone is None else parse_zone(timezone)
-    with option_problems(problems, file=first):
-        depths = depth_rules(
-            unit=unit, interval=step, missing=missing, trace=trace, flags=flags or {}, accumulated=accumulated
+
+    def rules_of_depths() -> DepthRules:
+        return depth_rules(
+            unit=GHCN_UNIT if layout in GHCN else unit or "",
+            interval=None if layout == "counter" else step,  # a reading may be of any size
+            missing=missing,
+            trace=() if layout in {"tips", "counter"} else trace,
+            flags=flags or {},
+            accumulated=accumulated,
+            least=-jitter if layout == "counter" else 0.0,
         )
+
+    with option_problems(problems, file=first):
+        rules_of_depths()
     problems.raise_as(JobError)
+    depths = rules_of_depths()
     faults = Problems()
-    tables = []
-    for path in paths:
-        with problems_of(str(path), faults):
-            tables.append(read_delimited(path))
+    report_repeated(paths, faults)
+    faults.raise_as(ReadError)
     if step is None:
+        tables = _tables(paths, faults)
         faults.raise_as(ReadError)
-        return read_totals(tables, depths, columns=named, problems=faults)
+        return read_totals(tables, depths, columns=columns or {}, problems=faults)
     stamps = StampRules(
         interval=step,
         stamp=stamp,
@@ -155,109 +188,76 @@ def read_rainfall(
         date_means=date_means or "calendar-day",
         time_format=time_format,
     )
-    blocks, zone = _read_blocks(tables, depths, stamps, layout=layout, columns=named, problems=faults)
+    with of_file(first):
+        tips = TipRules(interval=step, tip=_in_mm(tip, depths), start=start, end=end) if layout == "tips" else None
+        counter = CounterRules(rollover=_in_mm(rollover, depths), jitter=jitter * depths.factor)
+    if layout == "ghcn-dly" or layout == "ghcn-csv":  # noqa: PLR1714 - a type checker follows this, not a set
+        blocks, zone = _read_ghcn(paths, layout, stamps, faults)
+    else:
+        tables = _tables(paths, faults)
+        if tips is not None:
+            blocks, zone = read_tips(tables, depths, stamps, tips, columns=columns or {}, problems=faults)
+        else:
+            read = {"wide": read_wide, "long": read_long, "counter": read_counter}[layout]
+            blocks, zone = _read_blocks(read, tables, depths, stamps, columns=columns or {}, problems=faults)
     faults.raise_as(ReadError)
-    return join_blocks(blocks, step, zone=zone, gaps=gaps)
+    # The days that a GHCN-Daily file leaves out are missing, by its format.
+    record = join_blocks(blocks, step, zone=zone, gaps="missing" if layout in GHCN else gaps)
+    if layout == "counter":
+        return counter_depths(record, counter, file=first if len(paths) == 1 else "")
+    return record
+
+
+class _Reader(Protocol):
+    def __call__(
+        self,
+        table: DelimitedTable,
+        depths: DepthRules,
+        stamps: StampRules,
+        *,
+        columns: Mapping[str, str],
+        zone: str | None,
+        problems: Problems,
+    ) -> tuple[Block | None, str | None]: ...
+
+
+def _tables(paths: Sequence[Path], problems: Problems) -> list[DelimitedTable]:
+    tables = []
+    for path in paths:
+        with problems_of(str(path), problems):
+            tables.append(read_delimited(path))
+    return tables
 
 
 def _read_blocks(
+    read: _Reader,
     tables: list[DelimitedTable],
     depths: DepthRules,
     stamps: StampRules,
     *,
-    layout: str,
     columns: Mapping[str, str],
     problems: Problems,
 ) -> tuple[list[Block], str]:
-    read = read_wide if layout == "wide" else read_long
     zone: str | None = None
     blocks = []
     while tables:
         table = tables.pop(0)  # let go of the text as soon as it is numbers
-        options = Problems()
-        with option_problems(options, file=table.file), problems_of(table.file, problems) as here:
+        with of_file(table.file), problems_of(table.file, problems) as here:
             block, zone = read(table, depths, stamps, columns=columns, zone=zone, problems=here)
             if block is not None:
                 blocks.append(block)
-        options.raise_as(JobError)
     return blocks, zone or ""
 
 
-def _check_choices(
-    *,
-    layout: str,
-    stamp: str,
-    date_means: str | None,
-    gaps: str,
-    columns: Mapping[str, str],
-    problems: Problems,
-) -> None:
-    for key, given in (("layout", layout), ("stamp", stamp), ("date_means", date_means), ("gaps", gaps)):
-        if given is not None and given not in _CHOICES[key]:
-            problems.add(
-                item=key,
-                found=f"'{given}'",
-                expected="one of: " + ", ".join(_CHOICES[key]),
-                remedy=nearest_name(given, _CHOICES[key]),
-            )
-    accepted = _COLUMNS.get(layout)
-    for key in columns if accepted else ():
-        if accepted and key not in accepted:
-            problems.add(
-                item="columns",
-                found=f"'{key}'",
-                expected=f"for layout '{layout}' one of: " + ", ".join(accepted),
-                remedy=nearest_name(key, accepted),
-            )
+def _read_ghcn(
+    paths: Sequence[Path], layout: Literal["ghcn-dly", "ghcn-csv"], stamps: StampRules, problems: Problems
+) -> tuple[list[Block], str]:
+    read = [read_ghcn(path, layout=layout, stamps=stamps, problems=problems) for path in paths]
+    blocks = [block for block in read if block is not None]
+    # Dates have no clock of their own, so that the declared one is the record's.
+    days = [str(block.ends[0])[:10] for block in blocks]
+    return blocks, read_stamps(days[:1], stamps).zone
 
 
-def _interval(interval: str | None, layout: str) -> Interval | None:
-    if layout == "totals":
-        if interval is None:
-            return None
-        problem = Problem(
-            item="interval", found=f"'{interval}'", expected="none for storm totals", remedy="leave it out"
-        )
-        raise JobError(problem)
-    if interval is None:
-        raise JobError(Problem(item="interval", found="none", expected=FORMS, remedy="declare the files' step"))
-    return parse_interval(interval)
-
-
-def _read_hour(hour: str | int | None, date_means: str | None, step: Interval | None) -> int | None:
-    """Return the reading hour in seconds after midnight."""
-    if date_means in {"ends", "starts"} and hour is None:
-        raise JobError(
-            Problem(
-                item="read_hour",
-                found=f"none beside date_means = '{date_means}'",
-                expected="the hour at which the day begins and ends",
-                remedy="declare it: read_hour = '08:00'",
-            )
-        )
-    if hour is None:
-        return None
-    if date_means not in {"ends", "starts"}:
-        raise JobError(
-            Problem(
-                item="date_means",
-                found=f"{'none' if date_means is None else repr(date_means)} beside read_hour",
-                expected="'ends' (a date names the 24 hours that end at that hour of that date) or 'starts'",
-                remedy="declare date_means, or leave out read_hour",
-            )
-        )
-    if step is not None and not step.whole_days:
-        raise JobError(
-            Problem(
-                item="read_hour",
-                found=f"it beside the interval {step.label}",
-                expected="it with daily values only",
-                remedy="leave it out",
-            )
-        )
-    match = _HOUR.fullmatch(str(hour).strip())
-    if not match:
-        raise JobError(
-            Problem(item="read_hour", found=f"'{hour}'", expected="a time of day, such as '08:00' or 8", remedy="")
-        )
-    return int(match["hour"]) * 3600 + int(match["minute"] or 0) * 60
+def _in_mm(depth: float | None, rules: DepthRules) -> float | None:
+    return None if depth is None else depth * rules.factor

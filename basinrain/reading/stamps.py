@@ -33,6 +33,8 @@ _BAD, _MONTH, _DATE, _FULL = 0, 1, 2, 3
 _KIND: Final = {_MONTH: "a bare month", _DATE: "a bare date", _FULL: "a date with a time of day"}
 _RULE: Final = 0.8
 """When more than this share of the stamps is wrong in one way, the interval is, and they are told in one line."""
+_LISTED: Final = 3
+"""So many stamps that are none are told one by one all the same."""
 
 
 class StampFault(NamedTuple):
@@ -127,14 +129,17 @@ def read_stamps(texts: Sequence[str], rules: StampRules, *, zone: str | None = N
     cells = list(texts)
     parsed = _parse_iso(cells) if rules.time_format is None else _parse_format(cells, rules.time_format)
     remedy = "correct the stamp, or declare its form in time_format"
-    faults = [
-        StampFault(int(row), f"'{cells[row]}'", f"a time such as {rules.time_format or _FORMS}", remedy)
-        for row in np.flatnonzero(parsed.kind == _BAD)
-    ]
+    bad = parsed.kind == _BAD
+    expected = f"a time such as {rules.time_format or _FORMS}"
+    if bad.sum() > _LISTED:
+        faults = _alike(bad, cells, expected, remedy)
+    else:
+        faults = [StampFault(int(row), f"'{cells[row]}'", expected, remedy) for row in np.flatnonzero(bad)]
     faults += _mixed(parsed, cells, rules, zone)
     local, clock = _to_clock(parsed, cells, rules, zone, faults)
     ends = _interval_ends(local, parsed.kind, cells, rules, faults)
     ends[[fault.row for fault in faults]] = np.datetime64("NaT")
+    ends[bad] = np.datetime64("NaT")
     first_of_row = {fault.row: fault for fault in reversed(faults)}
     return Stamps(ends, clock, sorted(first_of_row.values()))
 

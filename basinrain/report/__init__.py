@@ -1,5 +1,7 @@
-"""The report room: figures, and the page that holds them."""
+"""The report room: figures, and the pages that hold them."""
 
+from basinrain.report.comparison_page import render_comparison
 from basinrain.report.page import render_report
+from basinrain.report.screening_page import render_screening
 
-__all__ = ["render_report"]
+__all__ = ["render_comparison", "render_report", "render_screening"]

@@ -4,13 +4,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from datetime import UTC
 from typing import Any, Final
 
 import numpy as np
 import numpy.typing as npt
 from matplotlib.collections import PolyCollection
-from matplotlib.dates import AutoDateLocator, ConciseDateFormatter, date2num
+from matplotlib.dates import date2num
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.patches import Patch
@@ -18,6 +17,7 @@ from matplotlib.ticker import MaxNLocator
 
 from basinrain.report import limits
 from basinrain.report.figures import HALF_WIDTH, INK, LINES, Picture, figure_style, to_svg
+from basinrain.report.time_axis import date_axis
 from basinrain.report.words import depth_text, inline, step_text, unit_word, when_text, zone_text
 from basinrain.results import StormResult, StormRun
 from basinrain.units import depth_factor
@@ -192,18 +192,7 @@ def _dress(figure: Figure, upper: Any, lower: Any, tops: tuple[float, float], sp
         for side in ("top", "right"):
             axes.spines[side].set_visible(False)
     upper.set_xlim(*span)
-    # In the record's own clock, never the machine's.
-    locator = AutoDateLocator(tz=UTC, minticks=3, maxticks=6)  # type: ignore[no-untyped-call]
-    lower.xaxis.set_major_locator(locator)
-    # Digits only: the names of months would follow the machine's language.
-    formatter = ConciseDateFormatter(  # type: ignore[no-untyped-call]
-        locator,
-        tz=UTC,
-        formats=["%Y", "%Y-%m", "%m-%d", "%H:%M", "%H:%M", "%H:%M:%S"],
-        zero_formats=["", "%Y", "%Y-%m", "%m-%d", "%H:%M", "%H:%M"],
-        offset_formats=["", "%Y", "%Y", "%Y-%m-%d", "%Y-%m-%d", "%Y-%m-%d %H:%M"],
-    )
-    lower.xaxis.set_major_formatter(formatter)
+    date_axis(lower.xaxis)
     upper.tick_params(axis="x", labelbottom=False)
     figure.align_ylabels([upper, lower])
 

@@ -13,16 +13,15 @@ import shapely
 from matplotlib.collections import LineCollection
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
-from matplotlib.patches import PathPatch, Polygon
-from matplotlib.path import Path
-from matplotlib.ticker import FuncFormatter, MaxNLocator
+from matplotlib.patches import PathPatch
 
 from basinrain.averaging import thiessen_pieces
 from basinrain.basins import UNION
-from basinrain.ground import LOCAL, LONLAT, transform
+from basinrain.ground import LOCAL
 from basinrain.report import limits
 from basinrain.report.figures import HALO, INK, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.labels import Box, Label, LabelPlacer
+from basinrain.report.map_parts import Extent, Shape, kilometres, line_parts, merged, north_arrow, outline, scale_bar
 from basinrain.report.words import counted, depth_text, inline, unit_word
 from basinrain.results import StormResult, StormRun
 from basinrain.storms import status_of_total
@@ -36,8 +35,6 @@ _FEW: Final = 40  # gauges that still have their totals beside them
 _LONGEST: Final = 18  # letters of a label
 _LEFT, _RIGHT, _BOTTOM, _LINE_HEIGHT = 0.55, 0.1, 0.42, 0.15  # inches
 _TOUCH: Final = 1e-3
-
-Shape = Any
 
 # Fill and overlay of a gauge's mark, by the status of its total.
 _FILLS: Final[dict[str, dict[str, Any]]] = {
@@ -90,7 +87,7 @@ class _Ground:
         self.inside: npt.NDArray[np.bool_] = np.asarray(shapely.dwithin(shapely.points(x, y), union, _TOUCH))
         # Nodes and merges, so that an edge of two basins is drawn once and simplified once.
         borders = shapely.unary_union(shapely.boundary(basins.polygons))
-        self.borders = _merged(borders).simplify(pixel / 2)
+        self.borders = merged(borders).simplify(pixel / 2)
         self.border_width = 1.2 if len(basins) <= limits.BASINS else 0.7
         self.cells = self._cells(run, union, pixel)
 
@@ -101,22 +98,7 @@ class _Ground:
         pieces = polygons if whole is None else polygons[np.asarray(basin) == whole]
         edges: Shape = shapely.unary_union(shapely.boundary(pieces))
         rim = shapely.boundary(union).buffer(pixel / 4, quad_segs=1)
-        return _merged(edges.difference(rim)).simplify(pixel / 2)
-
-
-def _merged(lines: Shape) -> Shape:
-    return lines if lines.geom_type == "LineString" else shapely.line_merge(lines)
-
-
-def _lines(geometry: Shape) -> list[npt.NDArray[np.float64]]:
-    return [shapely.get_coordinates(part) for part in shapely.get_parts(geometry) if part.length > 0]
-
-
-def _path(geometry: Shape) -> Path:
-    rings: list[Shape] = []
-    for polygon in shapely.get_parts(geometry):
-        rings += [polygon.exterior, *polygon.interiors]
-    return Path.make_compound_path(*(Path(shapely.get_coordinates(ring), closed=True) for ring in rings))
+        return merged(edges.difference(rim)).simplify(pixel / 2)
 
 
 def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[str, ...], number: int) -> Picture:
@@ -136,24 +118,23 @@ def _picture(run: StormRun, ground: _Ground, result: StormResult, names: tuple[s
     axes = figure.add_axes((left / PAGE_WIDTH, _BOTTOM / total, width / PAGE_WIDTH, height / total))
     axes.set_xlim(ground.west, ground.east)
     axes.set_ylim(ground.south, ground.north)
-    axes.add_patch(PathPatch(_path(ground.area), facecolor="#eef0ee", edgecolor="none", zorder=1))
+    axes.add_patch(PathPatch(outline(ground.area), facecolor="#eef0ee", edgecolor="none", zorder=1))
     axes.add_collection(
-        LineCollection(_lines(ground.cells), colors=INK, linewidths=0.7, linestyles=[(0, (3, 2))], zorder=2)
+        LineCollection(line_parts(ground.cells), colors=INK, linewidths=0.7, linestyles=[(0, (3, 2))], zorder=2)
     )
-    axes.add_collection(LineCollection(_lines(ground.borders), colors=INK, linewidths=ground.border_width, zorder=3))
-    for axis in (axes.xaxis, axes.yaxis):
-        axis.set_major_locator(MaxNLocator(6))
-        axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value / 1000:g}".replace("-", "−")))
-    axes.set_xlabel("easting in the working plane, km")
-    axes.set_ylabel("northing, km")
+    axes.add_collection(
+        LineCollection(line_parts(ground.borders), colors=INK, linewidths=ground.border_width, zorder=3)
+    )
+    kilometres(axes)
     for mark, gauges in _marks(ground, statuses).items():
         axes.plot(run.network.x[gauges], run.network.y[gauges], **_mark_style(*mark), linestyle="none", zorder=5)
     scale = width * 72 / wide  # points a metre
     sheet = _Sheet(axes, ground, scale, LabelPlacer(Box(0, 0, width * 72, height * 72)))
     unlabelled = _label(sheet, run, result)
-    _scale_bar(axes, ground, scale)
+    extent = Extent(ground.west, ground.south, ground.east, ground.north)
+    scale_bar(axes, extent, scale)
     if run.plane.crs != LOCAL:
-        _north(axes, run, ground, scale)
+        north_arrow(axes, extent, scale, run.plane.crs)
     figure.legend(
         handles=handles,
         loc="upper left",
@@ -306,45 +287,3 @@ def _label_basins(sheet: _Sheet, run: StormRun) -> int:
         else:
             sheet.write(place, text, f"basin-{b}", zorder=6, **style)
     return lost
-
-
-def _nice(length: float) -> float:
-    power: float = 10.0 ** math.floor(math.log10(length))
-    return max(step * power for step in (1, 2, 5) if step * power <= length)
-
-
-def _scale_bar(axes: Any, ground: _Ground, scale: float) -> None:  # noqa: ANN401 - matplotlib's axes
-    length = _nice(0.25 * (ground.east - ground.west))
-    x, y, thick = ground.west + 10 / scale, ground.south + 8 / scale, 3.2 / scale
-    for k, colour in enumerate((INK, "white")):
-        left = x + k * length / 2
-        corners = [(left, y), (left + length / 2, y), (left + length / 2, y + thick), (left, y + thick)]
-        axes.add_patch(Polygon(corners, closed=True, facecolor=colour, edgecolor=INK, linewidth=0.6, zorder=8))
-    unit, factor = ("km", 1000.0) if length >= 1000 else ("m", 1.0)
-    for k, text in enumerate(("0", f"{length / 2 / factor:g}", f"{length / factor:g} {unit}")):
-        axes.text(
-            x + k * length / 2,
-            y + thick + 2 / scale,
-            text,
-            ha="center" if k < 2 else "left",
-            va="bottom",
-            fontsize=6.5,
-            gid=f"{HALO}-scale-{k}",
-            zorder=8,
-        )
-
-
-def _north(axes: Any, run: StormRun, ground: _Ground, scale: float) -> None:  # noqa: ANN401 - matplotlib's axes
-    """Draw an arrow to true north at the middle of the map, whatever the plane's own north is."""
-    middle = np.array([(ground.west + ground.east) / 2]), np.array([(ground.south + ground.north) / 2])
-    lon, lat = transform(*middle, run.plane.crs, LONLAT)
-    x, y = transform(lon, lat + 0.01, LONLAT, run.plane.crs)
-    up = np.array([x[0] - middle[0][0], y[0] - middle[1][0]])
-    up /= np.hypot(*up)
-    side = np.array([up[1], -up[0]])
-    foot = np.array([ground.east - 14 / scale, ground.south + 6 / scale])
-    tip = foot + up * 18 / scale
-    left, right, notch = (foot + side * s / scale + up * h / scale for s, h in ((-4.5, 0), (4.5, 0), (0, 4)))
-    axes.add_patch(Polygon([tip, left, notch], closed=True, facecolor=INK, edgecolor=INK, linewidth=0.6, zorder=8))
-    axes.add_patch(Polygon([tip, right, notch], closed=True, facecolor="white", edgecolor=INK, linewidth=0.6, zorder=8))
-    axes.text(*(tip + up * 5 / scale), "N", ha="center", va="center", fontsize=7.5, fontweight="bold", zorder=8)

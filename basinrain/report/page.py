@@ -2,20 +2,15 @@
 
 from __future__ import annotations
 
-import re
-from typing import Final
-
-from jinja2 import Environment, PackageLoader, StrictUndefined
-
-from basinrain.report import gauge_list, infill_list, limits, means, overview, provenance, shares, timing
+from basinrain.report import effect_list, gauge_list, infill_list, limits, means, overview, provenance, shares, timing
+from basinrain.report.comparison_list import choice_tables
+from basinrain.report.fitness import fitness
 from basinrain.report.map_figure import map_pictures
+from basinrain.report.rendering import render_template
 from basinrain.report.weights_figure import weights_pictures
 from basinrain.results import CAUTION, StormRun
 
 __all__ = ["render_report"]
-
-# Neither HTML nor XML can hold these, and no name needs them.
-_FORBIDDEN: Final = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff\ufffe\uffff]")
 
 
 def render_report(run: StormRun) -> str:
@@ -36,15 +31,8 @@ def render_report(run: StormRun) -> str:
         HTML, to be written as UTF-8.
     """
     drawn = limits.drawn_storms(run)
-    environment = Environment(
-        loader=PackageLoader("basinrain.report"),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-        keep_trailing_newline=True,
-    )
-    page = environment.get_template("report.html").render(
+    return render_template(
+        "report.html",
         run=run,
         caution=CAUTION,
         asked=overview.what_was_asked(run),
@@ -64,10 +52,13 @@ def render_report(run: StormRun) -> str:
         totals=gauge_list.totals_tables(run),
         estimates=infill_list.estimate_tables(run),
         infilled=infill_list.infilled_shares(run),
+        fitness=fitness(run),
+        effects=effect_list.storm_effects(run),
+        choice=run.comparison.reason if run.comparison else "",
+        choice_tables=choice_tables(run.comparison, depth_unit=run.depth_unit),
         ground=provenance.ground_facts(run),
         formulas=provenance.formulas(run),
         inputs=provenance.inputs_table(run),
         versions=provenance.versions_table(run),
         settings=provenance.settings_text(run.settings),
     )
-    return _FORBIDDEN.sub("\ufffd", page)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any, Final
 
@@ -13,9 +13,9 @@ from markupsafe import Markup
 from basinrain.ground import LOCAL
 from basinrain.report.table import Table
 from basinrain.report.words import NARROW_SPACE
-from basinrain.results import StormRun
+from basinrain.results import Run, StormRun
 
-__all__ = ["Formula", "formulas", "ground_facts", "inputs_table", "settings_text", "versions_table"]
+__all__ = ["Formula", "formulas", "ground_facts", "infill_formulas", "inputs_table", "settings_text", "versions_table"]
 
 
 @dataclass(frozen=True)
@@ -50,20 +50,19 @@ _MEANS: Final = {
         "Shepard (1968), Proceedings of the 23rd ACM National Conference, 517–524",
     ),
 }
+_PAULHUS: Final = "Paulhus and Kohler (1952), Monthly Weather Review 80, 129–133"
+_AVERAGE: Final = Markup("<i>P<sub>x</sub></i> = (1 / <i>m</i>) Σ<i><sub>i</sub></i> <i>P<sub>i</sub></i>")
+_BY_NORMALS: Final = Markup(
+    "<i>P<sub>x</sub></i> = (1 / <i>m</i>) Σ<i><sub>i</sub></i> (<i>N<sub>x</sub></i> / <i>N<sub>i</sub></i>) "
+    "<i>P<sub>i</sub></i>"
+)
 _INFILLS: Final = {
-    "station-average": Formula(
-        "station-average",
-        Markup("<i>P<sub>x</sub></i> = (1 / <i>m</i>) Σ<i><sub>i</sub></i> <i>P<sub>i</sub></i>"),
+    "nearest-gauge": Formula(
+        "nearest-gauge",
+        Markup("<i>P<sub>x</sub></i> = <i>P</i><sub>1</sub>, the depth at the nearest reporting gauge"),
         "common practice",
     ),
-    "normal-ratio": Formula(
-        "normal-ratio",
-        Markup(
-            "<i>P<sub>x</sub></i> = (1 / <i>m</i>) Σ<i><sub>i</sub></i> (<i>N<sub>x</sub></i> / <i>N<sub>i</sub></i>) "
-            "<i>P<sub>i</sub></i>"
-        ),
-        "Paulhus and Kohler (1952), Monthly Weather Review 80, 129–133",
-    ),
+    "station-average": Formula("station-average", _AVERAGE, "common practice"),
     "inverse-distance": Formula(
         "inverse-distance",
         Markup(
@@ -72,6 +71,55 @@ _INFILLS: Final = {
         ),
         "Shepard (1968), as above; with p = 2 common practice for gauges",
     ),
+    "four-quadrant": Formula(
+        "four-quadrant",
+        Markup(
+            "<i>P<sub>x</sub></i> = Σ<i><sub>i</sub></i> <i>d<sub>i</sub></i><sup>−2</sup> <i>P<sub>i</sub></i> "
+            "/ Σ<i><sub>i</sub></i> <i>d<sub>i</sub></i><sup>−2</sup>, one gauge from each quadrant around x"
+        ),
+        "US National Weather Service (1972), HYDRO-14",
+    ),
+    "normal-ratio": Formula("normal-ratio", _BY_NORMALS, _PAULHUS),
+    "ten-percent-rule": Formula(
+        "ten-percent-rule",
+        _AVERAGE + Markup(" if each <i>N<sub>i</sub></i> is within 10 % of <i>N<sub>x</sub></i>, else ") + _BY_NORMALS,
+        _PAULHUS,
+    ),
+    "inverse-distance-ratios": Formula(
+        "inverse-distance-ratios",
+        Markup(
+            "<i>P<sub>x</sub></i> = <i>N<sub>x</sub></i> Σ<i><sub>i</sub></i> "
+            "<i>d<sub>i</sub></i><sup>−<i>p</i></sup> (<i>P<sub>i</sub></i> / <i>N<sub>i</sub></i>) "
+            "/ Σ<i><sub>i</sub></i> <i>d<sub>i</sub></i><sup>−<i>p</i></sup>"
+        ),
+        "common practice where relief makes normals differ",
+    ),
+    "correlation-weighting": Formula(
+        "correlation-weighting",
+        Markup(
+            "<i>P<sub>x</sub></i> = Σ<i><sub>i</sub></i> <i>r<sub>i</sub></i> <i>P<sub>i</sub></i> "
+            "/ Σ<i><sub>i</sub></i> <i>r<sub>i</sub></i>, <i>r<sub>i</sub></i> the correlation with x in the record"
+        ),
+        "Teegavarapu and Chandramouli (2005), Journal of Hydrology 312, 191–206",
+    ),
+    "regression": Formula(
+        "regression",
+        Markup(
+            "<i>P<sub>x</sub></i> = Σ<i><sub>i</sub></i> <i>r<sub>i</sub></i><sup>2</sup> <i>b<sub>i</sub></i> "
+            "<i>P<sub>i</sub></i> / Σ<i><sub>i</sub></i> <i>r<sub>i</sub></i><sup>2</sup>, <i>b<sub>i</sub></i> the "
+            "slope through the origin in the record"
+        ),
+        "common practice",
+    ),
+    "ratio-regression": Formula(
+        "ratio-regression",
+        Markup(
+            "<i>P<sub>x</sub></i> = <i>N<sub>x</sub></i> Σ<i><sub>i</sub></i> <i>r<sub>i</sub></i><sup>2</sup> "
+            "<i>b<sub>i</sub></i> (<i>P<sub>i</sub></i> / <i>N<sub>i</sub></i>) / Σ<i><sub>i</sub></i> "
+            "<i>r<sub>i</sub></i><sup>2</sup>, <i>b<sub>i</sub></i> the slope of the ratios through the origin"
+        ),
+        "common practice",
+    ),
 }
 
 
@@ -79,6 +127,11 @@ def formulas(run: StormRun) -> list[Formula]:
     """Return the formulas of the methods used, averages first; a method without a short one is left out."""
     used = dict.fromkeys(e.method for result in run.storms for e in result.completed.estimates)
     return [_MEANS[m] for m in run.methods if m in _MEANS] + [_INFILLS[m] for m in used if m in _INFILLS]
+
+
+def infill_formulas(methods: Iterable[str]) -> list[Formula]:
+    """Return the formulas of infill methods by name, in their order; one without a short formula is left out."""
+    return [_INFILLS[method] for method in methods if method in _INFILLS]
 
 
 def ground_facts(run: StormRun) -> list[tuple[str, str]]:
@@ -112,7 +165,7 @@ def ground_facts(run: StormRun) -> list[tuple[str, str]]:
     return lines
 
 
-def inputs_table(run: StormRun) -> Table:
+def inputs_table(run: Run) -> Table:
     """Return the input files with their SHA-256."""
     return Table(
         caption="Input files and their SHA-256",
@@ -122,7 +175,7 @@ def inputs_table(run: StormRun) -> Table:
     )
 
 
-def versions_table(run: StormRun) -> Table:
+def versions_table(run: Run) -> Table:
     """Return the versions of what computed."""
     return Table(caption="Versions", heads=("software", "version"), align="tt", rows=list(run.versions.items()))
 

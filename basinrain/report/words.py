@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import math
 import re
+from collections.abc import Sequence
 from decimal import ROUND_HALF_UP, Decimal
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
+from markupsafe import Markup
 
 from basinrain.tables import time_text
 
@@ -20,11 +22,14 @@ __all__ = [
     "depth_decimals",
     "depth_text",
     "depth_texts",
+    "error_text",
     "inline",
     "number_text",
     "percent_text",
     "round_to_sum",
+    "short_names",
     "step_text",
+    "unbroken",
     "unit_text",
     "unit_word",
     "volume_text",
@@ -82,6 +87,17 @@ def depth_text(depth: float, unit: str) -> str:
     ('33.1', '1.12', '–')
     """
     return number_text(depth, depth_decimals(unit))
+
+
+def error_text(error: float, unit: str) -> str:
+    """Return an error of many depths, given in ``unit``, with one decimal more than a depth.
+
+    Examples
+    --------
+    >>> error_text(11.404, "mm"), error_text(0.4489, "in"), error_text(float("nan"), "mm")
+    ('11.40', '0.449', '–')
+    """
+    return number_text(error, depth_decimals(unit) + 1)
 
 
 def depth_texts(depths: npt.ArrayLike, unit: str) -> list[str]:
@@ -182,6 +198,17 @@ def volume_text(volume: float) -> str:
     return number_text(volume, 0 if abs(volume) >= 1000 else 1, grouped=True)
 
 
+def unbroken(text: str) -> Markup:
+    """Return a text for a table that is never broken at the end of a line, such as a time.
+
+    Examples
+    --------
+    >>> unbroken("2031-05-04 06:00")
+    Markup('<span class="unbroken">2031-05-04 06:00</span>')
+    """
+    return Markup('<span class="unbroken">{}</span>').format(text)
+
+
 def unit_text(unit: str) -> str:
     """Return a unit as it is printed.
 
@@ -266,3 +293,25 @@ def inline(text: str, longest: int = 0) -> str:
     """
     clean = _CONTROL.sub(" ", text).strip()
     return clean if not longest or len(clean) <= longest else clean[: longest - 1].rstrip() + "…"
+
+
+def short_names(names: Sequence[str], longest: int) -> list[str]:
+    """Return names of at most ``longest`` letters, cut so that what tells them apart is kept where it can be.
+
+    Examples
+    --------
+    >>> short_names(["Mill", "Upper Mill Gauge 1", "Upper Mill Gauge 2"], 12)
+    ['Mill', 'Upper…auge 1', 'Upper…auge 2']
+    >>> short_names(["Upper Mill Gauge", "Lower Mill Gauge"], 12)
+    ['Upper Mill…', 'Lower Mill…']
+    """
+    clean = [inline(name) for name in names]
+    cut = [inline(name, longest) for name in clean]
+    alike = {text for text in cut if cut.count(text) > 1}
+    half = longest // 2
+    return [
+        name[: longest - half - 1].rstrip() + "…" + name[len(name) - half :].lstrip()
+        if text in alike and len(name) > longest
+        else text
+        for name, text in zip(clean, cut, strict=True)
+    ]

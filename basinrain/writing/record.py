@@ -6,30 +6,57 @@ import json
 import math
 from typing import TYPE_CHECKING, Any
 
-from basinrain.results import CAUTION, StormRun
+from basinrain.results import CAUTION, InfillRun, Run, ScreenRun, StormRun
 
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["record_text", "run_record", "run_tables"]
+__all__ = ["record_text", "run_record", "run_tables", "wide_tables"]
 
 
-def run_tables(run: StormRun) -> dict[str, pd.DataFrame]:
+def run_tables(run: Run) -> dict[str, pd.DataFrame]:
     """Return the run's tables under the names of their files."""
-    return {
-        "basin_means": run.basin_means,
-        "storms": run.storm_table,
-        "spread": run.spread,
-        "weights": run.weights,
-        "weights_compared": run.weights_compared,
-        "gauge_totals": run.gauge_totals,
-        "gauge_depths": run.gauge_depths,
-        "infilled": run.infilled,
-        "hyetographs": run.hyetographs,
-    }
+    own: dict[str, pd.DataFrame] = {}
+    if isinstance(run, StormRun):
+        own = {
+            "basin_means": run.basin_means,
+            "storms": run.storm_table,
+            "spread": run.spread,
+            "weights": run.weights,
+            "weights_compared": run.weights_compared,
+            "gauge_totals": run.gauge_totals,
+            "gauge_depths": run.gauge_depths,
+            "infilled": run.infilled,
+            "infill_effect": run.infill_effect,
+            "series_check": run.series_check,
+            "hyetographs": run.hyetographs,
+        }
+        if run.comparison is not None:
+            own["infill_scores"] = run.infill_scores
+    elif isinstance(run, ScreenRun):
+        own = {
+            "completeness": run.completeness,
+            "double_mass": run.double_mass,
+            "homogeneity": run.homogeneity,
+        }
+    elif isinstance(run, InfillRun):
+        own = {
+            "infill_scores": run.infill_scores,
+            "infill_differences": run.infill_differences,
+            "infill_cases": run.infill_cases,
+            "infilled": run.infilled,
+        }
+    return {**own, "findings": run.findings, "edits": run.edit_table}
 
 
-def run_record(run: StormRun, files: list[str]) -> dict[str, Any]:
+def wide_tables(run: Run) -> dict[str, pd.DataFrame]:
+    """Return tables with a column for every gauge, which go to files only: as JSON they would be many times as long."""
+    if not isinstance(run, InfillRun):
+        return {}
+    return {f"completed_{run.depth_unit}": run.completed_depths, "completed_status": run.completed_status}
+
+
+def run_record(run: Run, files: list[str]) -> dict[str, Any]:
     """Return the whole run as plain values; a number that is missing is null.
 
     Parameters
@@ -49,6 +76,7 @@ def run_record(run: StormRun, files: list[str]) -> dict[str, Any]:
         "plane": {"name": run.plane.name, "crs": run.plane.crs, "largest_distortion": run.plane.distortion},
         "clock": run.record.zone or "as in the files",
         "step": run.record.step,
+        "checks": {"run": list(run.screening.checks_run), "skipped": dict(run.screening.checks_skipped)},
         "facts": dict(run.facts),
         "warnings": [_note(note) for note in run.notes if note.level == "warning"],
         "remarks": [_note(note) for note in run.notes if note.level == "info"],
@@ -71,6 +99,6 @@ def _plain(value: Any) -> Any:  # noqa: ANN401 - a cell
     return None if isinstance(value, float) and not math.isfinite(value) else value
 
 
-def record_text(run: StormRun, files: list[str]) -> str:
+def record_text(run: Run, files: list[str]) -> str:
     """Return :func:`run_record` as JSON text."""
     return json.dumps(run_record(run, files), indent=1, ensure_ascii=False, allow_nan=False) + "\n"

@@ -1,21 +1,22 @@
-"""All files of a storm run."""
+"""All files of a run."""
 
 from __future__ import annotations
 
 import json
 from pathlib import Path
+from typing import cast
 
 from basinrain.ground import LOCAL
-from basinrain.report import render_report
-from basinrain.results import StormRun
+from basinrain.report import render_comparison, render_report, render_screening
+from basinrain.results import InfillRun, Run, ScreenRun, StormRun
 from basinrain.writing.folder import RECORD, whole_folder
-from basinrain.writing.record import record_text, run_tables
+from basinrain.writing.record import record_text, run_tables, wide_tables
 
 __all__ = ["write_run"]
 
 
-def write_run(run: StormRun, folder: str | Path) -> Path:
-    """Write the run's tables, Thiessen polygons, record and report into a folder.
+def write_run(run: Run, folder: str | Path) -> Path:
+    """Write the run's tables, record and report, and a storm run's Thiessen polygons, into a folder.
 
     Parameters
     ----------
@@ -36,13 +37,22 @@ def write_run(run: StormRun, folder: str | Path) -> Path:
     """
     place = Path(folder)
     with whole_folder(place) as built:
-        for name, frame in run_tables(run).items():
+        for name, frame in {**run_tables(run), **wide_tables(run)}.items():
             frame.to_csv(built / f"{name}.csv", index=False, encoding="utf-8", lineterminator="\n")
-        (built / "thiessen.geojson").write_text(thiessen_text(run), encoding="utf-8")
-        (built / "report.html").write_text(render_report(run), encoding="utf-8")
+        if isinstance(run, StormRun):
+            (built / "thiessen.geojson").write_text(thiessen_text(run), encoding="utf-8")
+        (built / "report.html").write_text(_report(run), encoding="utf-8")
         files = sorted(path.name for path in built.iterdir())
         (built / RECORD).write_text(record_text(run, files), encoding="utf-8")
     return place
+
+
+def _report(run: Run) -> str:
+    if isinstance(run, ScreenRun):
+        return render_screening(run)
+    if isinstance(run, InfillRun):
+        return render_comparison(run)
+    return render_report(cast("StormRun", run))
 
 
 def thiessen_text(run: StormRun) -> str:

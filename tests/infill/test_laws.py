@@ -3,31 +3,60 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 import numpy.typing as npt
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from slow_infill import slow_span, slow_step
 from strategies import networks
 
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill import METHODS, InfillOptions, complete
+from basinrain.infill import METHODS, InfillOptions, Relations, complete, relations_of
+from basinrain.infill.completed import Completed
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 
 methods = pytest.mark.parametrize("method", METHODS)
 SUM_TO_ONE = [name for name, method in METHODS.items() if method.sums_to_one]
-RATIO = [name for name, method in METHODS.items() if method.needs_normals]
+KEEP_NORMALS = [name for name, method in METHODS.items() if method.keeps_normals]
+
+
+class Case(NamedTuple):
+    """A record with gaps, its network, and the days before it, from which the relations come."""
+
+    record: RainRecord
+    network: GaugeNetwork
+    days: npt.NDArray[np.float64]
+
+    @property
+    def relations(self) -> Relations:
+        """The relations of those days, of which every twelfth is in the same month."""
+        return relations_of(self.days, self.network, np.arange(len(self.days)) % 12 + 1)
+
+    def completed(self, options: InfillOptions) -> Completed:
+        """Return the completed record."""
+        return complete(self.record, self.network, options, relations=self.relations)
+
+
+def options_of(method: str, given: dict[str, Any]) -> InfillOptions:
+    """Return options without those that the method does not take."""
+    return InfillOptions(**{"method": "inverse-distance-ratios", **given}).with_method(method)
 
 
 @st.composite
-def gappy(draw: st.DrawFn) -> tuple[RainRecord, GaugeNetwork]:
+def gappy(draw: st.DrawFn) -> Case:
     """Draw a network with monthly normals, and a record with gaps, spread values and gauges that come and go."""
     bare = draw(networks(at_least=2, at_most=6))
     n = len(bare)
     rng = np.random.default_rng(draw(st.integers(0, 2**32 - 1)))
-    network = replace(bare, normals=rng.integers(20, 200, (n, 12)).astype(float))
+    normals = rng.integers(20, 200, (n, 12)) if draw(st.booleans()) else rng.integers(190, 212, (n, 12))
+    elevation = rng.integers(0, 4, n).astype(float) * 100
+    network = replace(bare, normals=normals.astype(float), elevation=elevation)
+    days = rng.gamma(0.5, 8, (40, 1)) * rng.gamma(2, 0.5, (40, n))
+    days[:, rng.random(n) < 0.1] = 3.0  # never varies
+    days[rng.random((40, n)) < 0.1] = np.nan
     n_steps = draw(st.integers(1, 14))
     step = np.timedelta64(draw(st.sampled_from([3600, 6 * 3600, 86400])), "s")
     ends = np.datetime64("2031-04-29T00", "s") + np.arange(1, n_steps + 1) * step
@@ -52,7 +81,8 @@ def gappy(draw: st.DrawFn) -> tuple[RainRecord, GaugeNetwork]:
                 bounds = ends[0] + (first - 1) * step, ends[0] + (first + length - 1) * step
                 totals.append(KnownTotal(network.ids[g], *bounds, float(depth[held, g].sum()) + outside))
     phase = draw(st.sampled_from([0, 9 * 3600]))
-    return replace(record, status=status, recorders=recorders, day_phase=phase, totals=tuple(totals)), network
+    record = replace(record, status=status, recorders=recorders, day_phase=phase, totals=tuple(totals))
+    return Case(record, network, days)
 
 
 @st.composite
@@ -65,15 +95,13 @@ def settings_of(draw: st.DrawFn) -> dict[str, Any]:
         "nearest": draw(st.sampled_from([None, "all", min_donors, min_donors + 1])),
         "radius": draw(st.sampled_from([None, 8e3, 20e3])),
         "longest_gap": draw(st.sampled_from([0.5, 2, 31])),
-        "power": draw(st.sampled_from([0.5, 1, 2, 3])),
+        "power": draw(st.sampled_from([None, 0.5, 1, 3])),
+        "elevation_limit": draw(st.sampled_from([None, None, 100, 200])),
     }
 
 
-Case = tuple[RainRecord, GaugeNetwork]
-
-
 def reordered(case: Case, order: npt.NDArray[np.int64]) -> Case:
-    record, network = case
+    network = case.network
     ids = tuple(network.ids[k] for k in order)
     assert network.normals is not None
     moved = replace(
@@ -83,17 +111,18 @@ def reordered(case: Case, order: npt.NDArray[np.int64]) -> Case:
         x=network.x[order],
         y=network.y[order],
         normals=network.normals[order],
+        elevation=network.elevation[order],
     )
-    return record.ordered(ids), moved
+    return Case(case.record.ordered(ids), moved, case.days[:, order])
 
 
 @methods
 @given(case=gappy(), options=settings_of(), data=st.data())
 def test_gauge_order_does_not_matter(method: str, case: Case, options: dict[str, Any], data: st.DataObject) -> None:
     """The same gauges in another order get the same depths and the same donors."""
-    order = np.array(data.draw(st.permutations(range(len(case[1])))))
-    chosen = InfillOptions(method=method, **options)
-    first, second = complete(*case, chosen), complete(*reordered(case, order), chosen)
+    order = np.array(data.draw(st.permutations(range(len(case.network)))))
+    chosen = options_of(method, options)
+    first, second = case.completed(chosen), reordered(case, order).completed(chosen)
     assert np.allclose(first.record.depth[:, order], second.record.depth, rtol=1e-9, atol=1e-9, equal_nan=True)
     donors = [{(e.gauge, e.first): sorted(e.donors) for e in result.estimates} for result in (first, second)]
     assert donors[0] == donors[1]
@@ -106,12 +135,12 @@ def test_moving_turning_and_scaling_the_plane_do_not_matter(
     method: str, case: Case, options: dict[str, Any], scale: float, shift: int
 ) -> None:
     """A quarter turn, a shift of up to 3000 km and another scale, the radius scaled too, change nothing."""
-    record, network = case
+    network = case.network
     moved = replace(network, x=-network.y * scale + shift * 1e5, y=network.x * scale - shift * 5e4)
     radius = options["radius"]
     other = {**options, "radius": None if radius is None else radius * scale}
-    first = complete(record, network, InfillOptions(method=method, **options))
-    second = complete(record, moved, InfillOptions(method=method, **other))
+    first = case.completed(options_of(method, options))
+    second = case._replace(network=moved).completed(options_of(method, other))
     assert np.allclose(first.record.depth, second.record.depth, rtol=1e-9, atol=1e-9, equal_nan=True)
 
 
@@ -119,25 +148,24 @@ def test_moving_turning_and_scaling_the_plane_do_not_matter(
 @given(case=gappy(), options=settings_of(), rain=st.sampled_from([0.5, 7.25, 300.0]))
 def test_constant_rain_returns_the_constant(method: str, case: Case, options: dict[str, Any], rain: float) -> None:
     """Everywhere the same in every step: so it is in the gaps."""
-    record, network = case
-    constant = replace(record, depth=np.where(np.isnan(record.depth), np.nan, rain))
-    completed = complete(constant, network, InfillOptions(method=method, **options))
+    constant = replace(case.record, depth=np.where(np.isnan(case.record.depth), np.nan, rain))
+    completed = case._replace(record=constant).completed(options_of(method, options))
     filled = completed.record.depth[completed.record.status == Status.INFILLED]
     assert filled == pytest.approx(rain)
 
 
-@pytest.mark.parametrize("method", RATIO)
+@pytest.mark.parametrize("method", KEEP_NORMALS)
 @given(case=gappy(), options=settings_of(), share=st.sampled_from([0.01, 0.1, 1.0]))
 def test_rain_as_the_normals_returns_the_targets_normal(
     method: str, case: Case, options: dict[str, Any], share: float
 ) -> None:
     """A tenth of the normal at every donor gives a tenth of the target's own (one month's normals all year)."""
-    record, bare = case
+    record, bare, _ = case
     assert bare.normals is not None
     network = replace(bare, normals=np.repeat(bare.normals[:, :1], 12, axis=1))
     normal = bare.normals[:, 0] * share
     as_normal = replace(record, depth=np.where(np.isnan(record.depth), np.nan, normal[None, :]))
-    completed = complete(as_normal, network, InfillOptions(method=method, **options))
+    completed = case._replace(record=as_normal, network=network).completed(options_of(method, options))
     assert np.allclose(np.nan_to_num(completed.record.depth - normal), 0, atol=1e-9)
 
 
@@ -145,8 +173,8 @@ def test_rain_as_the_normals_returns_the_targets_normal(
 @given(case=gappy(), options=settings_of())
 def test_what_infilling_may_and_may_not_touch(method: str, case: Case, options: dict[str, Any]) -> None:
     """Observed values stay, estimates are not negative, gauges not in service stay away, totals are kept."""
-    record, network = case
-    completed = complete(record, network, InfillOptions(method=method, **options))
+    record, chosen = case.record, options_of(method, options)
+    completed = case.completed(chosen)
     depth, status = completed.record.depth, completed.record.status
     own = record.reporting
     assert np.array_equal(depth[own], record.depth[own])
@@ -171,13 +199,13 @@ def test_what_infilling_may_and_may_not_touch(method: str, case: Case, options: 
 @given(case=gappy(), options=settings_of())
 def test_donors_are_observed_at_their_own_scale(method: str, case: Case, options: dict[str, Any]) -> None:
     """Every donor of a step was measured at it, every donor of a total reported all through it; the sum is theirs."""
-    record, network = case
-    completed = complete(record, network, InfillOptions(method=method, **options))
+    record, chosen = case.record, options_of(method, options)
+    completed = case.completed(chosen)
     for e in completed.estimates:
         donors = [record.gauges.index(gauge) for gauge in e.donors]
         steps = slice(e.first, e.stop)
         assert e.gauge not in e.donors
-        assert len(donors) >= options["min_donors"]
+        assert len(donors) >= chosen.donors_required
         values = record.measured if e.scale == "step" else record.reporting
         assert values[steps, donors].all()
         totals = record.depth[steps, donors].sum(axis=0)
@@ -190,8 +218,8 @@ def test_sources_sum_to_the_completed_depths(
     method: str, case: Case, options: dict[str, Any], data: st.DataObject
 ) -> None:
     """Over the window, over any choice of steps, and group by group; only reporting gauges are sources."""
-    record, network = case
-    completed = complete(record, network, InfillOptions(method=method, **options))
+    record, chosen = case.record, options_of(method, options)
+    completed = case.completed(chosen)
     depth = np.nan_to_num(completed.record.depth)
     assert completed.sources().sum(axis=1) == pytest.approx(depth.sum(axis=0), abs=1e-9)
     some = np.array(sorted(data.draw(st.sets(st.integers(0, len(record) - 1)))), dtype=np.int64)
@@ -210,81 +238,14 @@ def test_sources_sum_to_the_completed_depths(
         assert (record.reporting[steps] == record.reporting[steps[0]]).all()
 
 
-def slow_weights(
-    network: GaugeNetwork, g: int, usable: list[bool], month: int, options: InfillOptions
-) -> dict[int, float]:
-    """Donor weights of one gauge by plain loops and the formulas as printed."""
-    away = network.distances()[g]
-    near = sorted((round(float(away[i]), 6), network.ids[i], i) for i in range(len(network)) if i != g and usable[i])
-    near = [item for item in near if options.radius is None or item[0] <= options.radius]
-    if options.donors_wanted != "all":
-        near = near[: options.donors_wanted]
-    if len(near) < options.min_donors:
-        return {}
-    normals = network.normals
-    assert normals is not None
-    if options.method == "station-average":
-        return {i: 1 / len(near) for _, _, i in near}
-    if options.method == "normal-ratio":
-        return {i: normals[g, month] / normals[i, month] / len(near) for _, _, i in near}
-    total = sum(d**-options.power for d, _, _ in near)
-    return {i: d**-options.power / total for d, _, i in near}
-
-
-def month_index(record: RainRecord, first: int, last: int) -> int:
-    middle = record.starts[first] + (record.ends[last] - record.starts[first]) // 2
-    return int(str(middle)[5:7]) - 1
-
-
-def slow_step(record: RainRecord, network: GaugeNetwork, t: int, g: int, options: InfillOptions) -> float:
-    usable = [bool(record.measured[t, i]) for i in range(len(network))]
-    weights = slow_weights(network, g, usable, month_index(record, t, t), options)
-    return sum(w * record.depth[t, i] for i, w in weights.items()) if weights else np.nan
-
-
-def whole(record: RainRecord, i: int, steps: list[int]) -> bool:
-    """Whether every total of a gauge that reaches into some steps fell in them."""
-    for total in record.totals:
-        if total.gauge == record.gauges[i]:
-            inside = [t for t in steps if total.start <= record.starts[t] and record.ends[t] <= total.end]
-            if inside and abs(sum(record.depth[t, i] for t in inside) - total.depth) > 1e-9:
-                return False
-    return True
-
-
-def slow_span(
-    record: RainRecord, network: GaugeNetwork, steps: list[int], g: int, options: InfillOptions
-) -> dict[int, float]:
-    """Depths of the missing steps of one gauge's day or storm, by plain loops."""
-    missing = [t for t in steps if not record.reporting[t, g]]
-    seen = [t for t in steps if record.reporting[t, g]]
-    by_step = {t: slow_step(record, network, t, g, options) for t in missing}
-    if len(seen) * 2 >= len(steps):
-        return by_step
-    usable = [all(record.reporting[t, i] for t in steps) and whole(record, i, steps) for i in range(len(network))]
-    weights = slow_weights(network, g, usable, month_index(record, steps[0], steps[-1]), options)
-    if not weights:
-        return dict.fromkeys(missing, np.nan)
-    rest = sum(w * record.depth[t, i] for i, w in weights.items() for t in steps)
-    rest -= sum(record.depth[t, g] for t in seen)
-    if rest < -1e-9:
-        return by_step
-    away = network.distances()[g]
-    for _, _, i in sorted((round(float(away[i]), 6), network.ids[i], i) for i in range(len(network)) if i != g):
-        caught = sum(record.depth[t, i] for t in missing)
-        recorder = network.ids[i] in record.recorders and all(record.measured[t, i] for t in steps)
-        if recorder and caught > 0:
-            return {t: rest * record.depth[t, i] / caught for t in missing}
-    return {t: rest / len(missing) for t in missing}
-
-
 @methods
 @given(case=gappy(), options=settings_of())
 def test_equals_a_plain_loop(method: str, case: Case, options: dict[str, Any]) -> None:
     """Step by step, day by day and storm by storm, for gaps of any length."""
-    record, network = case
+    record, network, _ = case
+    relations = case.relations
     scale = options["scale"] or ("storm" if record.recorders == set(record.gauges) else "day")
-    chosen = InfillOptions(method=method, **{**options, "scale": scale, "longest_gap": 1e6})
+    chosen = options_of(method, {**options, "scale": scale, "longest_gap": 1e6})
     expected = record.depth.copy()
     for g in range(len(network)):
         spans: dict[tuple[int, int], list[int]] = {}
@@ -299,9 +260,10 @@ def test_equals_a_plain_loop(method: str, case: Case, options: dict[str, Any]) -
             spans.setdefault((span, service), []).append(t)
         for steps in spans.values():
             if scale == "step":
-                found = {t: slow_step(record, network, t, g, chosen) for t in steps if not record.reporting[t, g]}
+                missing = [t for t in steps if not record.reporting[t, g]]
+                found = {t: slow_step(record, network, t, g, chosen, relations) for t in missing}
             else:
-                found = slow_span(record, network, steps, g, chosen)
+                found = slow_span(record, network, steps, g, chosen, relations)
             for t, depth in found.items():
                 expected[t, g] = depth
-    assert np.allclose(complete(record, network, chosen).record.depth, expected, atol=1e-9, equal_nan=True)
+    assert np.allclose(case.completed(chosen).record.depth, expected, atol=1e-9, equal_nan=True)

@@ -7,7 +7,7 @@ import pytest
 
 from basinrain.errors import DataError
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill.normals import normals_of, require_normals
+from basinrain.infill.normals import normals_of, require_normals, suspect_normal_units
 
 
 def network(normals: object) -> GaugeNetwork:
@@ -40,13 +40,13 @@ def test_no_normals_at_all() -> None:
     with pytest.raises(
         DataError, match=r"^gauges: found no normals; expected a normal above 0 .* another infill method$"
     ):
-        require_normals(network(None), EVERYONE, [1])
+        require_normals(network(None), EVERYONE, [1], method="normal-ratio")
 
 
 def test_every_gauge_at_fault_is_named() -> None:
     """A missing, a zero and a negative normal are three problems of one error."""
     with pytest.raises(DataError) as caught:
-        require_normals(network([[np.nan], [0], [-5]]), EVERYONE, [1])
+        require_normals(network([[np.nan], [0], [-5]]), EVERYONE, [1], method="normal-ratio")
     assert [problem.gauge for problem in caught.value.problems] == ["A", "B", "C"]
     assert [problem.found for problem in caught.value.problems] == [
         "no normal for the year",
@@ -59,13 +59,74 @@ def test_only_the_months_concerned_matter() -> None:
     """A dry July is no problem for a storm in March, and is one for a storm in July."""
     dry = MONTHLY.copy()
     dry[1, 6] = 0
-    require_normals(network(dry), EVERYONE, [3])
+    require_normals(network(dry), EVERYONE, [3], method="normal-ratio")
     with pytest.raises(DataError, match="gauge B: found a normal of 0 mm for July; expected a normal above 0"):
-        require_normals(network(dry), EVERYONE, [3, 7])
+        require_normals(network(dry), EVERYONE, [3, 7], method="normal-ratio")
 
 
 def test_only_the_gauges_concerned_matter() -> None:
     """Gauge A without a normal takes no part here."""
-    require_normals(network([[np.nan], [5], [6]]), np.array([False, True, True]), [None])
+    require_normals(network([[np.nan], [5], [6]]), np.array([False, True, True]), [None], method="normal-ratio")
     with pytest.raises(DataError, match="gauge A: found no normal for the year"):
-        require_normals(network([[np.nan], [5], [6]]), EVERYONE, [None])
+        require_normals(network([[np.nan], [5], [6]]), EVERYONE, [None], method="normal-ratio")
+
+
+@pytest.mark.parametrize("method", ["ten-percent-rule", "ratio-regression"])
+def test_the_method_in_use_is_named(method: str) -> None:
+    """Whoever runs the 10 % rule is not told of the normal ratio."""
+    with pytest.raises(DataError, match=f"gauge B: found a normal of 0 mm .* for the {method} method; give it"):
+        require_normals(network([[5], [0], [6]]), EVERYONE, [None], method=method)
+
+
+def row(*normals: float) -> GaugeNetwork:
+    """Gauges 1 km apart in line."""
+    n = len(normals)
+    return GaugeNetwork(
+        ids=tuple("ABCDEFGHIJ"[:n]),
+        x=np.arange(n, dtype=float) * 1e3,
+        y=np.zeros(n),
+        crs="local",
+        normals=np.array(normals, dtype=float)[:, None],
+    )
+
+
+@pytest.mark.parametrize(
+    ("factor", "words"),
+    [
+        (25.4, "mm where the others are inches"),
+        (10, "mm where the others are cm"),
+        (2.54, "cm where the others are inches"),
+        (1 / 2.54, "inches where the others are cm"),
+        (0.1, "cm where the others are mm"),
+        (1 / 25.4, "inches where the others are mm"),
+    ],
+)
+@pytest.mark.parametrize("off", [0.9, 1.0, 1.11])
+def test_a_normal_in_another_unit_is_doubted(factor: float, words: str, off: float) -> None:
+    """Only D, off by the factor and up to 11 % more or less, however it is among its own neighbours' neighbours."""
+    notes = suspect_normal_units(row(800, 850, 900, 870 * factor * off, 870, 880, 900))
+    assert [(note.gauge, note.code, note.level) for note in notes] == [("D", "normal-unit", "warning")]
+    assert notes[0].text.endswith(f"as if it were in {words}.")
+
+
+def test_relief_alone_is_not_doubted() -> None:
+    """Twice, three and five times the neighbours' normal are none of the units' ratios."""
+    for factor in (0.5, 1.5, 2, 3, 5, 40):
+        assert suspect_normal_units(row(800, 850, 900, 870 * factor, 870, 880, 900)) == ()
+
+
+def test_of_two_gauges_either_may_be_the_wrong_one() -> None:
+    """With one neighbour each both are named; gauges without a normal count for nothing; one gauge has no neighbour."""
+    assert [note.gauge for note in suspect_normal_units(row(800, 31.5, np.nan, 0))] == ["A", "B"]
+    assert suspect_normal_units(row(800, np.nan)) == ()
+    assert suspect_normal_units(network(None)) == ()
+
+
+def test_monthly_normals_are_doubted_by_their_sum() -> None:
+    """Twelve months of 3.3 among months of 80 mm."""
+    months = np.array([[80.0], [82.0], [3.3]]) * np.ones(12)
+    (note,) = suspect_normal_units(network(months))
+    assert note.text == (
+        "Gauge C: its normal of 39.6 mm is 0.041 times the median of its 2 nearest gauges' (971.9 mm), "
+        "as if it were in inches where the others are mm."
+    )

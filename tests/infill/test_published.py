@@ -32,8 +32,8 @@ def numbers(text: str) -> list[float]:
     return [float(part) for part in text.split(";")]
 
 
-def infilled(case: dict[str, str]) -> tuple[float, dict[str, float]]:
-    """Infill the silent gauge X of a case; its neighbours stand where the case says, else 1 km away."""
+def infilled(case: dict[str, str], method: str = "") -> tuple[float, dict[str, float]]:
+    """Infill the silent gauge X by the case's method or another; neighbours stand where it says, else 1 km away."""
     values = numbers(case["values"])
     n = len(values)
     if case["distances2_or_dxdy"]:
@@ -49,7 +49,7 @@ def infilled(case: dict[str, str]) -> tuple[float, dict[str, float]]:
     )
     nat = np.full(1, "NaT", dtype="datetime64[s]")
     record = RainRecord.from_depths(ids, nat, nat, [[np.nan, *values]], step="storm")
-    completed = complete(record, network, InfillOptions(method=METHOD[case["method"]]))
+    completed = complete(record, network, InfillOptions(method=method or METHOD[case["method"]]))
     return float(completed.record.depth[0, 0]), dict(completed.estimates[0].donors)
 
 
@@ -91,3 +91,30 @@ def test_reciprocal_distance_squared_weights() -> None:
     depth, donors = infilled(CASES["punmia_4_4"])
     assert list(donors.values()) == pytest.approx([0.28909, 0.15033, 0.21544, 0.34514], abs=5e-6)
     assert depth == pytest.approx(77.5, abs=0.05)
+
+
+def test_ten_percent_rule_on_subramanya() -> None:
+    """Normals are 12.0, 26.5 and 17.1 % off the target's 92.01 cm: the normal ratio, 99.41 cm (from memory)."""
+    case = CASES["subramanya_2_2"]
+    off = [100 * (1 - normal / 92.01) for normal in numbers(case["normals"])]
+    assert off == pytest.approx([12.0, 26.5, 17.1], abs=0.05)
+    assert infilled(case, "ten-percent-rule")[0] == pytest.approx(99.407801, abs=1e-6)
+
+
+@pytest.mark.parametrize("name", ["raghunath_2_1", "punmia_4_3"])
+def test_ten_percent_rule_on_the_other_normal_ratios(name: str) -> None:
+    """A normal 17 % off in the one, 42 % in the other: the rule turns to the normal ratio there, too."""
+    assert infilled(CASES[name], "ten-percent-rule")[0] == pytest.approx(float(CASES[name]["recomputed"]), abs=1e-6)
+
+
+def test_ten_percent_rule_where_normals_are_alike() -> None:
+    """Punmia 4.2 with normals within 10 % of each other: the station average, (48 + 51 + 45)/3."""
+    alike = {**CASES["punmia_4_2"], "target_normal": "70", "normals": "72;68;75"}
+    assert infilled(alike, "ten-percent-rule")[0] == pytest.approx(48.0, abs=1e-9)
+
+
+def test_four_quadrants_on_punmia() -> None:
+    """Punmia 4.4 has one gauge in each quadrant: squared distances 117, 225, 157, 98; 77.529125 mm."""
+    depth, donors = infilled(CASES["punmia_4_4"], "four-quadrant")
+    assert list(donors.values()) == pytest.approx([0.289092, 0.150328, 0.215438, 0.345141], abs=1e-6)
+    assert depth == pytest.approx(77.529125, abs=1e-6)

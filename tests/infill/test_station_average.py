@@ -2,12 +2,10 @@
 
 from __future__ import annotations
 
-import inspect
-
 import numpy as np
 
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill import METHODS, station_average_weights
+from basinrain.infill import station_average_weights
 
 NETWORK = GaugeNetwork(ids=tuple("TABCDEF"), x=np.arange(7, dtype=float) * 1000, y=np.zeros(7), crs="local")
 
@@ -28,9 +26,3 @@ def test_many_cases_at_once() -> None:
     """A row for every row of reporting gauges, zeros where there are too few."""
     reporting = np.array([[0, 1, 1, 0, 0, 0, 0], [1, 0, 0, 0, 0, 0, 1]], dtype=bool)
     assert station_average_weights(NETWORK, 0, reporting).tolist() == [[0, 0.5, 0.5, 0, 0, 0, 0], [0.0] * 7]
-
-
-def test_the_registry_states_the_default_number_of_donors() -> None:
-    """What the registry says of every method's donors is what its function does."""
-    for method in METHODS.values():
-        assert inspect.signature(method.weights).parameters["nearest"].default == method.nearest

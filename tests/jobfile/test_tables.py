@@ -11,6 +11,7 @@ from pydantic import BaseModel, ValidationError
 
 from basinrain import averaging, infill
 from basinrain.infill import InfillOptions
+from basinrain.jobfile.fields import is_month
 from basinrain.jobfile.tables import (
     ArithmeticTable,
     AveragingTable,
@@ -21,7 +22,6 @@ from basinrain.jobfile.tables import (
     Job,
     RainfallTable,
     StormTable,
-    is_month,
 )
 
 RAIN = {"file": "r.csv", "unit": "mm", "interval": "1h"}

@@ -9,8 +9,10 @@ import numpy as np
 import pytest
 from rainfiles import labels, read, times, written
 
-from basinrain.errors import ReadError
+from basinrain.errors import Problems, ReadError
 from basinrain.rainfall import RainRecord
+from basinrain.reading.axis import check_length
+from basinrain.reading.intervals import parse_interval
 from basinrain.reading.rainfall import read_rainfall
 
 
@@ -41,6 +43,21 @@ def test_overlapping_files(tmp_path: Path) -> None:
         f"{tmp_path / 'part2.csv'}:2: gauge A: found the 1h that ends at 2031-05-04T02:00:00, which "
         f"{tmp_path / 'part1.csv'} has too; expected a gauge and time in one file only; remove it from one of the files"
     )
+
+
+def test_files_that_overlap_at_length(tmp_path: Path) -> None:
+    """Many values in two files are one line, with the first of them and their number; so is a file given twice."""
+    with pytest.raises(ReadError) as caught:
+        read_all(tmp_path, wide("AB", [1, 2, 3]), wide("BA", [2, 3, 4]))
+    assert str(caught.value) == (
+        f"{tmp_path / 'part2.csv'}:2: gauge B: found the 1h that ends at 2031-05-04T02:00:00, which "
+        f"{tmp_path / 'part1.csv'} has too, and 3 more values like it; expected a gauge and time in one file only; "
+        "remove it from one of the files"
+    )
+    with pytest.raises(
+        ReadError, match=r"^\S*part2\.csv: the file: found the same content as in \S*part1\.csv; [^\n]*$"
+    ):
+        read_all(tmp_path, wide("AB", [1, 2, 3]), wide("AB", [1, 2, 3]))
 
 
 def test_undeclared_gap(tmp_path: Path) -> None:
@@ -149,3 +166,16 @@ def test_rejected_accumulation(tmp_path: Path) -> None:
     text = "gauge,date,depth,steps,flag\nA,2031-05-01,1,,\nA,2031-05-03,9,2,R\n"
     record = read(tmp_path, text, layout="long", interval="1d", flags={"rejected": ["R"]})
     assert (labels(record), record.totals) == ([["observed"], ["missing"], ["rejected"]], ())
+
+
+def test_length_of_an_axis() -> None:
+    """Steps are counted from end to end, months by the calendar; more than 20 million are taken for a wrong time."""
+    problems = Problems()
+    assert check_length(0, 11, parse_interval("1mo"), problems) == 12
+    assert check_length(0, 60 * 19_999_999, parse_interval("1min"), problems) == 20_000_000
+    assert len(problems) == 0
+    check_length(0, 60 * 20_000_000, parse_interval("1min"), problems)
+    with pytest.raises(
+        ReadError, match=r"time axis: found 20000001 steps of 1min from 1970-01-01T00:00:00 to 2008-01-10"
+    ):
+        problems.raise_as(ReadError)

@@ -9,10 +9,13 @@ from typing import Any
 import numpy as np
 import pandas as pd
 import pytest
+from ghcnfiles import ONE, TWO, month
 from rainfiles import labels, read, times, written
 
 from basinrain.errors import JobError, ReadError
+from basinrain.gauges import GaugeNetwork
 from basinrain.reading.rainfall import read_rainfall
+from basinrain.reading.step import bring_to_step
 
 DATA = Path(__file__).parent.parent / "data"
 
@@ -153,13 +156,13 @@ def test_an_option_that_cannot_be(tmp_path: Path, options: dict[str, Any], messa
 
 def test_options_name_the_first_file_of_their_source(tmp_path: Path) -> None:
     """Of several sources, the faulty one is told by its first file; so is a format found out while reading."""
-    files = [written(tmp_path, "time,A\n2031-05-04 01:00,1\n", name) for name in ("one.csv", "two.csv")]
+    files = [written(tmp_path, f"time,A\n2031-05-04 0{hour}:00,1\n", f"{hour}.csv") for hour in (1, 2)]
     options: dict[str, Any] = {"layout": "wide", "unit": "mm"}
     with pytest.raises(JobError) as caught:
         read_rainfall(files, interval="hour", timezone="Nowhere/At_all", read_hour=8, **options)
     assert {problem.file for problem in caught.value.problems} == {str(files[0])}
     assert [problem.item for problem in caught.value.problems] == ["interval", "date_means", "timezone"]
-    with pytest.raises(JobError, match=r"one\.csv: time_format: found '%Q'; expected a strptime format"):
+    with pytest.raises(JobError, match=r"1\.csv: time_format: found '%Q'; expected a strptime format"):
         read_rainfall(files, interval="1h", time_format="%Q", **options)
 
 
@@ -189,3 +192,35 @@ def test_inputs_are_left_alone(tmp_path: Path) -> None:
     before = (path.read_bytes(), path.stat().st_mtime_ns)
     assert labels(read_rainfall([path], layout="wide", unit="mm", interval="1h")) == [["trace"]]
     assert (path.read_bytes(), path.stat().st_mtime_ns) == before
+
+
+@pytest.mark.parametrize("layout", ["ghcn-dly", "ghcn-csv"])
+@pytest.mark.parametrize("timezone", [None, "+09:00", "Europe/Vienna"])
+def test_published_daily_formats(tmp_path: Path, layout: str, timezone: str | None) -> None:
+    """Station files of GHCN-Daily reach the common step with the statuses of their flags, in the declared clock."""
+    two, one = month("PRCP", {4: "0T", 5: "12"}, station=TWO), month("PRCP", {2: "15", 3: "0P", 5: "30 X"})
+    if layout == "ghcn-csv":
+        two = f"{TWO},20310504,PRCP,0,T,,S,\n{TWO},20310505,PRCP,12,,,S,"
+        one = f"{ONE},20310502,PRCP,15,,,S,\n{ONE},20310503,PRCP,0,P,,S,\n{ONE},20310505,PRCP,30,,X,S,"
+    files = [written(tmp_path, text + "\n", name) for name, text in (("one", one), ("two", two))]
+    options: dict[str, Any] = {"read_hour": 7, "date_means": "ends", "timezone": timezone}
+    record = read_rainfall(files, layout=layout, **options)  # type: ignore[arg-type]
+    assert (record.gauges, record.step) == ((ONE, TWO), "1d")
+    assert record.zone == {None: "", "+09:00": "+09:00", "Europe/Vienna": "+01:00"}[timezone]
+    network = GaugeNetwork(ids=(TWO, ONE), x=np.array([0.0, 1000.0]), y=np.zeros(2), crs="local")
+    common, _ = bring_to_step([record], network)
+    assert times(common)[0] == ("2031-05-01T07:00", "2031-05-02T07:00")
+    np.testing.assert_array_equal(common.depth, [[np.nan, 1.5], [np.nan, 0], [0, np.nan], [1.2, np.nan]])
+    assert labels(common) == [
+        ["missing", "observed"],
+        ["missing", "presumed zero"],
+        ["trace", "missing"],
+        ["observed", "rejected"],
+    ]
+
+
+def test_faults_of_published_files(tmp_path: Path) -> None:
+    """Faults of station files are told like those of others, all files together."""
+    files = [written(tmp_path, f"{ONE},2031050{k},PRCP,1.5,,,S,\n", f"{k}.csv") for k in (1, 2)]
+    with pytest.raises(ReadError, match=r"(?s)1\.csv:1: .*found '1\.5'.*\n.*2\.csv:1: .*found '1\.5'"):
+        read_rainfall(files, layout="ghcn-csv")

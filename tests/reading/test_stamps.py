@@ -209,3 +209,16 @@ def test_legal_time_agrees_with_the_standard_library(time: dt.datetime, name: st
         return
     instant = early.replace(tzinfo=None) + dt.timedelta(seconds=clock_seconds(result.zone))
     assert result.ends[0].astype("datetime64[s]").item() == instant
+
+
+def test_a_wrong_format_is_one_line() -> None:
+    """When most stamps are not as the format says, the format is wrong: one fault with an example and their number."""
+    cells = [f"2031-05-{day:02d} 08:00" for day in range(1, 11)]
+    result = stamps(cells, time_format="%d.%m.%Y %H:%M")
+    assert [tuple(fault)[:3] for fault in result.faults] == [
+        (0, "'2031-05-01 08:00', and 9 more stamps like it", "a time such as %d.%m.%Y %H:%M")
+    ]
+    assert np.isnat(result.ends).all()
+    some = stamps([*cells[:6], "a", "b", "c", "d"])
+    assert [fault.row for fault in some.faults] == [6, 7, 8, 9]
+    assert np.isnat(some.ends).tolist() == [False] * 6 + [True] * 4

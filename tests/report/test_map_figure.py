@@ -12,7 +12,7 @@ from report.small_run import make_run
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.ground import Plane, equal_area_plane
-from basinrain.report import map_figure
+from basinrain.report import map_figure, map_parts
 from basinrain.report.map_figure import map_pictures
 from basinrain.results import StormRun
 
@@ -71,15 +71,9 @@ def test_the_scale_bar_is_as_long_as_it_says(run: StormRun, monkeypatch: pytest.
         drawn.append(corners[1][0] - corners[0][0])
         return real(corners, **style)
 
-    monkeypatch.setattr(map_figure, "Polygon", spy)
+    monkeypatch.setattr(map_parts, "Polygon", spy)
     map_pictures(run)
     assert drawn == pytest.approx([2500.0, 2500.0])
-
-
-@pytest.mark.parametrize(("length", "nice"), [(7.3, 5), (19.9, 10), (0.24, 0.2), (1000, 1000)])
-def test_the_scale_bar_has_a_round_length(length: float, nice: float) -> None:
-    """One, two or five times a power of ten, and no longer than asked."""
-    assert math.isclose(map_figure._nice(length), nice)
 
 
 def test_a_gauge_far_away_is_named_but_does_not_shrink_the_map(run: StormRun) -> None:
@@ -123,7 +117,7 @@ def test_true_north_is_not_the_planes_north(monkeypatch: pytest.MonkeyPatch) -> 
         tips.append(corners)
         return real(corners, **style)
 
-    monkeypatch.setattr(map_figure, "Polygon", spy)
+    monkeypatch.setattr(map_parts, "Polygon", spy)
     crs = "+proj=tmerc +lat_0=50 +lon_0=0 +x_0=-214000 +datum=WGS84 +units=m"  # x = 10 km lies near 3 degrees east
     map_pictures(make_run(plane=Plane(crs, "Far plane", 0.0)))
     tip, _, notch = tips[2]

@@ -95,7 +95,7 @@ def test_ids_are_unique_and_links_arrive() -> None:
     assert len(ids) > 30
     assert len(ids) == len(set(ids))
     links = {(a.get("href") or "#")[1:] for a in page.named("a")}
-    assert len(links) == 9
+    assert len(links) == 11
     assert links <= set(ids)
 
 

@@ -1,0 +1,68 @@
+"""``basinrain infill``: compare the infill methods on the job's network, write them and the completed record."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from rich.table import Table
+
+from basinrain.cli.running import console, run_command, show_warnings
+from basinrain.job import run_infill
+from basinrain.report.words import number_text
+from basinrain.results import InfillRun
+from basinrain.units import depth_factor
+
+__all__ = ["infill_command"]
+
+
+def infill_command(
+    job_file: Path, *, output: Path | None, settings: tuple[str, ...], as_json: bool, quiet: bool
+) -> None:
+    """Compare infill methods and complete the record; nothing is written unless everything worked."""
+    run_command(
+        "infill",
+        lambda job, progress: run_infill(job, progress=progress),
+        _show,
+        job_file,
+        output=output,
+        settings=settings,
+        as_json=as_json,
+        quiet=quiet,
+    )
+
+
+def _show(run: InfillRun) -> None:
+    page = console()
+    comparison = run.comparison
+    mm, digits = depth_factor(run.depth_unit), 3 if run.depth_unit == "in" else 2
+    page.print(f"Infill methods compared, each gauge left out in turn; {run.depth_unit} by {comparison.scale}")
+    table = Table(show_edge=False, pad_edge=False)
+    table.add_column("method")
+    for heading in ("RMSE", "worse than best", "95 % interval", "MAE", "bias", "correlation", "cases"):
+        table.add_column(heading, justify="right")
+    for found in comparison.differences:
+        score = comparison.score(found.candidate)
+        interval = f"{number_text(found.low / mm, digits)} to {number_text(found.high / mm, digits)}"
+        table.add_row(
+            found.candidate,
+            number_text(score.rmse / mm, digits),
+            number_text(found.difference / mm, digits),
+            "best" if found.candidate == comparison.best else interval,
+            number_text(score.mae / mm, digits),
+            number_text(score.bias / mm, digits),
+            number_text(score.correlation, 3),
+            str(score.n),
+        )
+    page.print(table)
+    page.print()
+    for label, reason in comparison.skipped.items():
+        page.print(f"Not compared: {label}: {reason}", soft_wrap=True)
+    page.print(comparison.reason, soft_wrap=True)
+    estimates = len(run.completed.estimates)
+    method = run.completed.estimates[0].method if estimates else ""
+    page.print(
+        f"The completed record: {estimates} depths estimated by {method}." if estimates else "There was nothing to infill."
+    )
+    for note in comparison.notes:
+        page.print(f"Note: {note}", soft_wrap=True)
+    show_warnings(page, run.warnings)

@@ -1,0 +1,308 @@
+"""The comparison: every infill method estimates every gauge from the others, on the same cases for all."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field
+from types import MappingProxyType
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.errors import BasinRainError, DataError, MethodError, Problem, Problems
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill.days import day_totals
+from basinrain.infill.leave_one_out.bootstrap import differences_to_best
+from basinrain.infill.leave_one_out.candidates import candidates_of
+from basinrain.infill.leave_one_out.cases import Cases, cases_of, steps_of_cases
+from basinrain.infill.leave_one_out.comparison import Candidate, Comparison, Score
+from basinrain.infill.leave_one_out.cross_fit import CrossFit, Fitted
+from basinrain.infill.leave_one_out.scoring import ScoreSums
+from basinrain.infill.leave_one_out.wording import notes_of, reason_of
+from basinrain.infill.options import InfillOptions
+from basinrain.infill.record_normals import FEWEST_YEARS, NormalRatios
+from basinrain.infill.registry import InfillMethod
+from basinrain.infill.relations import AT_LEAST
+from basinrain.rainfall import RainRecord
+
+__all__ = ["ENOUGH", "SEED", "compare_infill"]
+
+SEED: Final = 1
+"""Of the bootstrap, so that a repeat gives the same interval."""
+
+ENOUGH: Final = 0.8
+"""A method that can estimate a smaller part than this of what others can is left out, lest it choose the cases."""
+
+_KEPT: Final = 1 << 24
+"""Estimates that are kept in memory; where there are more, they are made again when they are needed again."""
+
+Floats = npt.NDArray[np.float64]
+Progress = Callable[[str], None]
+
+
+def compare_infill(
+    record: RainRecord,
+    network: GaugeNetwork,
+    *,
+    options: InfillOptions,
+    ratios: NormalRatios | None = None,
+    candidates: Sequence[Candidate] | None = None,
+    seed: int = SEED,
+    progress: Progress | None = None,
+) -> Comparison:
+    """Compare infill methods by leaving out one gauge at a time.
+
+    Parameters
+    ----------
+    record : RainRecord
+        The whole record, its columns in the network's order.
+    network : GaugeNetwork
+        The gauges, with normals and elevations where they are known.
+    options : InfillOptions
+        The job's: radius, elevation limit and, where given, numbers of donors and power go to all methods that take
+        them.
+    ratios : NormalRatios, optional
+        Normals from the record, in place of the network's.
+    candidates : sequence of Candidate, optional
+        What to compare, from simple to complex; every registered method where not given.
+    seed : int
+        Of the bootstrap.
+    progress : callable, optional
+        Called with the label of each method before it is tried.
+
+    Returns
+    -------
+    Comparison
+        The chosen method is the first, from simple to complex, that cannot be told from the best by root-mean-square
+        error.
+
+    Raises
+    ------
+    DataError
+        The columns are not the network's gauges, there is one gauge only, or no gauge can be estimated on a wet day.
+
+    Notes
+    -----
+    A case is a gauge's total of a rainfall day, or its depth at a step where steps are longer. Days count on which the
+    mean over the gauges that know their total is at least 1 mm (longer steps: above 0); and gauges which every
+    candidate can estimate. The estimate is the weighted sum of the totals of donors that know theirs; no infilled value
+    takes part. Where steps are shorter than a day, the steps of these days that every candidate can estimate are scored
+    beside, dry ones too.
+
+    Correlations, slopes and normals from the record are learned anew for each fifth of the record from the other four,
+    so that no method has seen what it is scored on.
+
+    Examples
+    --------
+    B is always the mean of A and C; no gauge alone gives it.
+
+    >>> rng = np.random.default_rng(7)
+    >>> a, c = rng.gamma(0.5, 20.0, (2, 200))
+    >>> ends = np.datetime64("2031-01-01", "s") + np.arange(1, 201) * np.timedelta64(86400, "s")
+    >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[0.0, 1e3, 2e3], y=[0.0, 0.0, 0.0], crs="local")
+    >>> depths = np.column_stack([a, (a + c) / 2, c])
+    >>> record = RainRecord.from_depths(network.ids, ends - np.timedelta64(86400, "s"), ends, depths, step="1d")
+    >>> comparison = compare_infill(record, network, options=InfillOptions())
+    >>> comparison.score("station-average", gauge="B").rmse < 1e-9 < comparison.score("nearest-gauge", gauge="B").rmse
+    True
+    >>> comparison.skipped["normal-ratio"]
+    'it needs normals, and the gauges have none'
+    """
+    _check(record, network)
+    days = day_totals(record)
+    cases, finer = cases_of(record, days)
+    fit = CrossFit(record, network, days, ratios)
+    given = candidates_of(options) if candidates is None else tuple(candidates)
+    runners, skipped, able = _able(given, fit, cases, progress or (lambda _: None))
+    result = _scored(runners, cases, network)
+    scores = list(result.scores)
+    if finer:
+        scores += _scored(runners, steps_of_cases(record, days, cases), network).scores
+    labels = tuple(runner.label for runner in runners)
+    differences = differences_to_best(labels, result.squared, result.count, cases.week[result.compared], seed=seed)
+    chosen = next(k for k, found in enumerate(differences) if not found.distinguishable)
+    observed, estimated = _cases_of_one(runners[chosen], cases, result)
+    n = int(result.count.sum())
+    return Comparison(
+        candidates=labels,
+        skipped=MappingProxyType(skipped),
+        scale=cases.scale,
+        gauges=record.gauges,
+        ends=cases.ends[result.compared],
+        observed=observed,
+        estimated=estimated,
+        scores=tuple(scores),
+        differences=differences,
+        best=differences[0].best,
+        chosen=labels[chosen],
+        chosen_options=runners[chosen].options,
+        reason=reason_of(scores, differences, labels[chosen], n),
+        notes=notes_of(
+            cases,
+            network,
+            n=n,
+            left_out=able - n,
+            learned=any(runner.options.chosen_method.needs_relations for runner in runners),
+            normals=any(runner.options.chosen_method.needs_normals for runner in runners),
+            from_record=ratios is not None,
+            normals_see_all=fit.normals_see_all,
+        ),
+    )
+
+
+@dataclass(frozen=True, eq=False)
+class _Runner:
+    """A candidate that can take part."""
+
+    label: str
+    options: InfillOptions
+    fitted: Fitted
+    kept: dict[tuple[Cases, int], Floats] = field(default_factory=dict)
+
+    def estimates(self, cases: Cases, chunk: slice, depth: Floats, *, keep: bool = False) -> Floats:
+        """Return the estimates of some cases; the same ones, asked for again, come out of memory where it was kept."""
+        found = self.kept.get((cases, chunk.start))
+        if found is None:
+            found = self.fitted.estimates(depth, cases.months[chunk], cases.part[chunk])
+            if keep:
+                self.kept[cases, chunk.start] = found
+        return found
+
+
+@dataclass(frozen=True, eq=False)
+class _Scored:
+    """Scores, and for each time with a case the squared errors by candidate, the count, and the gauges compared."""
+
+    scores: list[Score]
+    squared: Floats
+    count: Floats
+    compared: npt.NDArray[np.int64]
+    common: npt.NDArray[np.bool_]
+
+
+def _check(record: RainRecord, network: GaugeNetwork) -> None:
+    problems = Problems()
+    if record.gauges != network.ids:
+        problems.add(
+            item="rain record",
+            found="columns that are not the network's gauges in their order",
+            expected=", ".join(network.ids),
+            remedy="bring them in order first",
+        )
+    if len(network) < 2:
+        problems.add(
+            item="leave-one-out comparison",
+            found=f"{len(network)} gauge{'' if len(network) == 1 else 's'}",
+            expected="two gauges or more, since each is estimated from the others",
+            remedy="give further gauges, or name the infill method",
+        )
+    problems.raise_as(DataError)
+
+
+def _able(
+    given: tuple[Candidate, ...], fit: CrossFit, cases: Cases, progress: Progress
+) -> tuple[list[_Runner], dict[str, str], int]:
+    """Return the candidates that can estimate enough, why others are skipped, and how many values the ablest can."""
+    skipped: dict[str, str] = {}
+    distances = fit.network.distances()
+    keep = len(given) * len(cases) * len(fit.network) <= _KEPT
+    runners: list[_Runner] = []
+    counts: list[int] = []
+    for candidate in given:
+        progress(candidate.label)
+        method = candidate.options.chosen_method
+        if method.needs_normals and fit.ratios is None and fit.network.normals is None:
+            skipped[candidate.label] = "it needs normals, and the gauges have none"
+            continue
+        try:
+            runner = _Runner(candidate.label, candidate.options, Fitted(candidate.options, fit, distances))
+            count = 0
+            for chunk in cases.chunks():
+                estimates = runner.estimates(cases, chunk, cases.depth(chunk), keep=keep)
+                count += int((~np.isnan(estimates)).sum())
+        except (DataError, MethodError) as error:
+            skipped[candidate.label] = _in_short(error)
+            continue
+        runners.append(runner)
+        counts.append(count)
+    most = max(counts, default=0)
+    if not most:
+        _no_case(cases, skipped)
+    kept = []
+    for runner, count in zip(runners, counts, strict=True):
+        if count >= ENOUGH * most:
+            kept.append(runner)
+        else:
+            skipped[runner.label] = _too_few(runner.options.chosen_method, count, most, ratios=fit.ratios is not None)
+    return kept, skipped, most
+
+
+def _too_few(method: InfillMethod, count: int, most: int, *, ratios: bool) -> str:
+    """Return why a method that can estimate some values is skipped."""
+    why = [f"it can estimate {count:,} of the {most:,} values that others can"]
+    if method.needs_normals and ratios:
+        why.append(f"normals from the record need {FEWEST_YEARS} years in common")
+    if method.needs_relations:
+        why.append(f"relations need {AT_LEAST} days or steps in common, besides the fifth of the record estimated")
+    return "; ".join(why)
+
+
+def _no_case(cases: Cases, skipped: dict[str, str]) -> None:
+    what = "day" if cases.scale == "day" else "step"
+    why = "".join(f"; {label}: {reason}" for label, reason in skipped.items())
+    raise DataError(
+        Problem(
+            item="leave-one-out comparison",
+            found=f"no gauge that another method's donors could estimate on one of {len(cases)} wet {what}s{why}"
+            if len(cases)
+            else f"no wet {what}",
+            expected=f"wet {what}s on which several gauges have values",
+            remedy="give a longer record, loosen radius or min_donors, or name the infill method",
+        )
+    )
+
+
+def _in_short(error: BasinRainError) -> str:
+    """Return an error in one line: its first problems, and how many there are besides."""
+    shown = [str(problem) for problem in error.problems[:2]]
+    more = len(error.problems) + error.unlisted - len(shown)
+    return "; ".join([*shown, *([f"and {more} more"] if more else [])])
+
+
+def _scored(runners: list[_Runner], cases: Cases, network: GaugeNetwork) -> _Scored:
+    """Score all candidates on the values that each of them can estimate."""
+    sums = [ScoreSums(len(network), wet=cases.wet) for _ in runners]
+    squared = np.zeros((len(runners), len(cases)))
+    common = np.zeros((len(cases), len(network)), dtype=bool)
+    for chunk in cases.chunks():
+        depth = cases.depth(chunk)
+        estimates = [runner.estimates(cases, chunk, depth) for runner in runners]
+        valid = common[chunk]
+        np.logical_and.reduce([~np.isnan(estimate) for estimate in estimates], axis=0, out=valid)
+        for k, estimate in enumerate(estimates):
+            sums[k].add(depth, estimate, valid)
+            squared[k, chunk] = np.square(np.where(valid, estimate - depth, 0.0)).sum(axis=1)
+    by_candidate = [
+        one.scores(runner.label, network.ids, cases.scale) for one, runner in zip(sums, runners, strict=True)
+    ]
+    compared = np.flatnonzero(common.any(axis=1))
+    return _Scored(
+        scores=[scores[g] for g in range(len(network) + 1) for scores in by_candidate],
+        squared=squared[:, compared],
+        count=common[compared].sum(axis=1).astype(float),
+        compared=compared,
+        common=common[compared],
+    )
+
+
+def _cases_of_one(runner: _Runner, cases: Cases, result: _Scored) -> tuple[Floats, Floats]:
+    """Return observed and estimated depths, NaN where they were not compared."""
+    observed, estimated = [], []
+    for chunk in cases.chunks():
+        depth = cases.depth(chunk)
+        observed.append(depth)
+        estimated.append(runner.estimates(cases, chunk, depth))
+    pair = (np.concatenate(part)[result.compared] for part in (observed, estimated))
+    first, second = (np.where(result.common, part, np.nan) for part in pair)
+    return first, second

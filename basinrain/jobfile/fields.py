@@ -1,0 +1,106 @@
+"""The kinds of value that a job's tables hold, and their base."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterable, Mapping
+from datetime import date, datetime, time
+from typing import Annotated
+
+from pydantic import AfterValidator, BaseModel, BeforeValidator, ConfigDict, Field
+from pydantic_core import PydanticCustomError
+
+from basinrain.errors import nearest_name
+from basinrain.units import DEPTH_UNITS, LENGTH_UNITS
+
+__all__ = [
+    "LEAVE_ONE_OUT",
+    "Count",
+    "DepthUnit",
+    "LengthUnit",
+    "Moment",
+    "NameList",
+    "Positive",
+    "Table",
+    "as_list",
+    "clock_time",
+    "is_month",
+    "names",
+    "one_of",
+]
+
+
+LEAVE_ONE_OUT = "leave-one-out"
+"""Written for the infill method in a job that takes the one which the comparison finds."""
+
+
+def one_of(known: Iterable[str]) -> AfterValidator:
+    choices = tuple(known)
+
+    def check(value: str) -> str:
+        if value not in choices:
+            raise PydanticCustomError(
+                "one_of",
+                "{expected}",
+                {"expected": "one of: " + ", ".join(choices), "remedy": nearest_name(value, choices)},
+            )
+        return value
+
+    return AfterValidator(check)
+
+
+def _moment(value: object) -> object:
+    """Bring a TOML date, date-time or text to ISO 8601 text; a bare date stays bare, since it names the whole day."""
+    if isinstance(value, datetime):
+        return value.isoformat()
+    if isinstance(value, date):
+        return value.isoformat()
+    return value
+
+
+def is_month(text: str) -> bool:
+    """Return whether a time names a whole month: ``"2031-05"``."""
+    return re.fullmatch(r"\d{4}-\d{2}", text) is not None
+
+
+def _iso(value: str) -> str:
+    try:
+        datetime.fromisoformat(f"{value}-01" if is_month(value) else value)
+    except ValueError:
+        raise PydanticCustomError(
+            "iso",
+            "{expected}",
+            {
+                "expected": "a month, a date or a date and time such as 2031-05-04T06:00",
+                "remedy": "write it in ISO 8601",
+            },
+        ) from None
+    return value
+
+
+def clock_time(value: object) -> object:
+    if isinstance(value, time):
+        return value.strftime("%H:%M")
+    return value
+
+
+def as_list(value: object) -> object:
+    return [value] if isinstance(value, Mapping) else value
+
+
+def names(value: object) -> object:
+    return [value] if isinstance(value, str) else value
+
+
+DepthUnit = Annotated[str, one_of(DEPTH_UNITS)]
+LengthUnit = Annotated[str, one_of(LENGTH_UNITS)]
+Moment = Annotated[str, BeforeValidator(_moment), AfterValidator(_iso)]
+NameList = Annotated[tuple[str, ...], BeforeValidator(names)]
+Positive = Annotated[float, Field(gt=0)]
+Count = Annotated[int, Field(ge=1)]
+
+
+class Table(BaseModel):
+    """A table of a job: no key that is not known, no change once it is made."""
+
+    model_config = ConfigDict(extra="forbid", frozen=True, allow_inf_nan=False)

@@ -1,0 +1,162 @@
+"""Readings over several days that the record does not say are such."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Final
+
+import numpy as np
+from scipy.stats import binom
+
+from basinrain.screening.edits import SUGGESTED, Edit
+from basinrain.screening.findings import Finding
+from basinrain.screening.screened import DAY, DRY, WET_DAY, Floats, Ints, Screened, runs_of
+
+__all__ = ["unflagged_accumulations"]
+
+LONGEST: Final = 31
+"""Days over which an observer may have been away."""
+
+MISSED: Final = 15.0
+"""mm that the neighbours had over the days without a reading."""
+
+MISSED_DAY: Final = 5.0
+"""mm that they had on one of these days, each of them some: rain that the gauge cannot have missed."""
+
+SUM_FITS: Final = 2.0
+"""Standard deviations of root depths by which the reading may differ from the neighbours' sum over the whole stretch."""
+
+DAY_OFF: Final = 1.5
+"""Standard deviations of root depths by which the reading exceeds the neighbours' own of its day."""
+
+ODDS: Final = 3.0
+"""Natural logarithm of the odds against the days without rain, where they are not days without a reading."""
+
+WEEKDAY_CHANCE: Final = 1e-6
+"""Probability of so many dry readings on a weekday below which it is a habit."""
+
+WEEKDAY_TIMES: Final = 2.5
+"""Times the dry readings of the other weekdays that a habit must have: a weekly cycle of rain is not one."""
+
+WEEKDAY_LEAST: Final = 20
+"""Wet days of the neighbours on a weekday that are needed."""
+
+_WEEK: Final = ("Thursday", "Friday", "Saturday", "Sunday", "Monday", "Tuesday", "Wednesday")
+
+
+def unflagged_accumulations(view: Screened) -> Iterator[Finding]:
+    """Yield readings that are as much as the neighbours had over the days before, on which the gauge has none."""
+    cases = view.cases
+    recorders = view.record.recorders if cases.scale == "day" else frozenset()
+    for g, near in enumerate(view.neighbours):
+        if view.network.ids[g] in recorders or len(near) < 2:
+            continue
+        habit = _weekdays(view, g)
+        if habit is not None:
+            yield habit
+            continue
+        for first, stop, missed, own_day in _stretches(view, g):
+            reading = cases.depths[stop - 1, g]
+            days = stop - 1 - first
+            blank = np.isnan(cases.depths[first : stop - 1, g])
+            what = (
+                "without a reading" if blank.all() else "without rain" if not blank.any() else "without rain or reading"
+            )
+            start, end = cases.starts[first], cases.ends[stop - 1]
+            yield Finding(
+                check="unflagged-accumulation",
+                gauge=view.network.ids[g],
+                start=start,
+                end=end,
+                evidence=f"{reading:.1f} mm after {days} day{'s' if days > 1 else ''} {what}; the neighbours' medians, in "
+                f"this gauge's climate, are {missed:.1f} mm over {'those days' if days > 1 else 'that day'} and "
+                f"{own_day:.1f} mm on the day itself. Neighbours as measured, over all of it: "
+                f"{view.beside(g, first, stop)}.",
+                action="Declare the stretch accumulated, so that its total is spread; or reject its days without rain.",
+                others=view.ids(near),
+                edit=Edit(
+                    gauge=view.network.ids[g],
+                    start=start,
+                    end=end,
+                    action="reject",
+                    reason=f"{reading:.1f} mm seems to be the total of {days + 1} days",
+                    by=SUGGESTED,
+                ),
+            )
+
+
+def _stretches(view: Screened, g: int) -> Iterator[tuple[int, int, float, float]]:
+    """Yield first and stop of stretches that end with their reading, and the neighbours' depths before and on that day."""
+    depths, middle = view.cases.depths[:, g], np.nan_to_num(view.middle[:, g])
+    for first, last in runs_of(~(depths > DRY)):
+        if last >= len(depths):
+            continue
+        # Of a long dry or silent run only its end can have run into the reading; it begins with the neighbours' rain.
+        first = max(first, last - LONGEST)
+        wet = np.flatnonzero(middle[first:last] >= WET_DAY)
+        if not len(wet):
+            continue
+        reading, own_day = float(depths[last]), float(middle[last])
+        # The stretch that fits: days are added backwards until the sum is nearest to the reading.
+        sums = np.cumsum(middle[first:last][::-1])
+        k = int(np.argmin(np.abs(np.log((sums + own_day + 0.1) / reading)))) + 1
+        begin = last - k
+        missed, scatter = float(sums[k - 1]), float(view.scatter[last, g])
+        if missed < MISSED or np.sqrt(reading) - np.sqrt(own_day) < DAY_OFF * scatter:
+            continue
+        if not ((middle[begin:last] >= MISSED_DAY) & (view.least_measured[begin:last, g] >= WET_DAY)).any():
+            continue
+        if abs(np.sqrt(reading) - np.sqrt(missed + own_day)) > SUM_FITS * scatter:
+            continue
+        dry = begin + np.flatnonzero(np.isfinite(depths[begin:last]))
+        if len(dry) and view.dry_surprise[dry, g].sum() < ODDS:
+            continue
+        yield begin, last + 1, missed, own_day
+
+
+def _weekdays(view: Screened, g: int) -> Finding | None:
+    """Return the weekdays on which the gauge is seldom read, if there are such."""
+    cases = view.cases
+    if (cases.seconds or 0) != DAY:
+        return None
+    with np.errstate(invalid="ignore"):
+        wet = view.middle[:, g] >= 3 * WET_DAY
+    none = ~(cases.depths[:, g] > DRY)
+    # A day is named by its middle. The epoch was a Thursday.
+    middle = (cases.starts.astype(np.int64) + DAY // 2) // DAY
+    weekday: Ints = middle % 7
+    total = np.bincount(weekday[wet], minlength=7)
+    dry = np.bincount(weekday[wet & none], minlength=7)
+    habits = []
+    for day in range(7):
+        others_total, others_dry = total.sum() - total[day], dry.sum() - dry[day]
+        if total[day] < WEEKDAY_LEAST or others_total == 0:
+            continue
+        share = (others_dry + 1) / (others_total + 2)
+        if dry[day] / total[day] > WEEKDAY_TIMES * share and binom.sf(dry[day] - 1, total[day], share) < WEEKDAY_CHANCE:
+            habits.append(day)
+    if not habits:
+        return None
+    # Monday first, as people list them.
+    habits.sort(key=lambda day: (day - 4) % 7)
+    listed = ", ".join(f"{_WEEK[day]} {dry[day]} of {total[day]}" for day in habits)
+    rest = np.array([day for day in range(7) if day not in habits])
+    after = _ratio(view, g, weekday, (habits[-1] + 1) % 7)
+    return Finding(
+        check="unflagged-accumulation",
+        gauge=view.network.ids[g],
+        severity="doubtful",
+        evidence=f"It has no rain or no reading on most days on which its neighbours were wet, by weekday: {listed}; on "
+        f"the other weekdays {int(dry[rest].sum())} of {int(total[rest].sum())}. The day after has {after:.1f} times the "
+        "neighbours' depth.",
+        action=f"Ask whether the gauge is read on {_WEEK[habits[0]]}; if not, declare the days as accumulated into the next "
+        "reading.",
+        others=view.ids(view.neighbours[g]),
+    )
+
+
+def _ratio(view: Screened, g: int, weekday: Ints, day: int) -> float:
+    depths: Floats = view.cases.depths[:, g]
+    middle = view.middle[:, g]
+    there = (weekday == day) & np.isfinite(depths) & np.isfinite(middle)
+    return float(depths[there].sum() / max(middle[there].sum(), 1e-9))

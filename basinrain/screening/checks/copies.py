@@ -1,0 +1,225 @@
+"""Rain that stands in the record twice: copied within a gauge, or one record under two gauges' names."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.screening.edits import SUGGESTED, Edit
+from basinrain.screening.findings import Finding
+from basinrain.screening.screened import Floats, Ints, Screened, Sheet
+
+__all__ = ["duplicated_stretches", "shared_records"]
+
+WORD: Final = 5
+"""Wet values, with the dry steps between them, that are compared at a time: the shortest stretch that is found."""
+
+SURPRISE: Final = 12.0
+"""Natural logarithm of the odds against chance, after allowing for all pairs of places in the record: wet spells repeat
+more than independent values do, so that e¹² to 1, not 100 to 1, is asked."""
+
+SHARED_SURPRISE: Final = 30.0
+"""The same for two gauges at one time: neighbours have wet spells in common, and coarse gauges equal depths."""
+
+LEAST_SHARED: Final = 8
+"""Equal wet values on end that two gauges must have."""
+
+_MIX: Final = (np.uint64(0x9E3779B97F4A7C15), np.uint64(0xBF58476D1CE4E5B9), np.uint64(0x94D049BB133111EB))
+
+
+@dataclass(frozen=True, eq=False)
+class _Wet:
+    """The wet values of a gauge.
+
+    Parameters
+    ----------
+    at : array of int, shape (n_wet,)
+        Their intervals.
+    value, gap : array of uint64, shape (n_wet,)
+        The bits of the depths, and the intervals since the wet value before.
+    bits : array of float, shape (n_wet,)
+        How surprising each depth is: less the logarithm of its share among the gauge's wet values.
+    bits_gap : array of float, shape (n_wet,)
+        The same for gaps.
+    """
+
+    at: Ints
+    value: npt.NDArray[np.uint64]
+    gap: npt.NDArray[np.uint64]
+    bits: Floats
+    bits_gap: Floats
+
+
+def _wet(depths: Floats) -> _Wet | None:
+    at = np.flatnonzero(depths > 0)
+    if len(at) < 2 * WORD:
+        return None
+    gap = np.diff(at, prepend=at[0] - 1)
+    # A stretch over missing values is no stretch that stands twice: its gap is like no other.
+    missing = np.cumsum(np.isnan(depths))
+    across = np.diff(missing[at], prepend=missing[at[0]]) > 0
+    gap = np.where(across, -at - 1, gap)
+    value = depths[at] + 0.0
+    return _Wet(at, value.view(np.uint64), gap.astype(np.uint64), _surprise(value), _surprise(gap))
+
+
+def _surprise(values: npt.NDArray[np.generic]) -> Floats:
+    _, which, counts = np.unique(values, return_inverse=True, return_counts=True)
+    surprise: Floats = -np.log(counts / len(values))[which]
+    return surprise
+
+
+def _words(*parts: npt.NDArray[np.uint64]) -> npt.NDArray[np.uint64]:
+    """Return one number for every ``WORD`` values on end; equal words have equal numbers."""
+    letters = np.zeros(len(parts[0]), dtype=np.uint64)
+    with np.errstate(over="ignore"):
+        for part in parts:
+            letters = _mixed(letters * _MIX[0] + part)
+        n = len(letters) - WORD + 1
+        words = np.zeros(n, dtype=np.uint64)
+        for k in range(WORD):
+            words = _mixed(words * _MIX[0] + letters[k : k + n])
+    return words
+
+
+def _mixed(numbers: npt.NDArray[np.uint64]) -> npt.NDArray[np.uint64]:
+    mixed = (numbers ^ (numbers >> np.uint64(30))) * _MIX[1]
+    mixed = (mixed ^ (mixed >> np.uint64(27))) * _MIX[2]
+    return mixed ^ (mixed >> np.uint64(31))
+
+
+def duplicated_stretches(view: Screened) -> Iterator[Finding]:
+    """Yield stretches of a gauge's record that stand in it a second time, value by value."""
+    for sheet in view.sheets:
+        for column, g in enumerate(sheet.gauges.tolist()):
+            wet = _wet(sheet.depths[:, column])
+            if wet is None:
+                continue
+            for first, second, n in _repeats(wet):
+                yield _repeat(view, sheet, g, wet, first, second, n)
+
+
+def _repeats(wet: _Wet) -> list[tuple[int, int, int]]:
+    """Return places among the wet values of stretches that stand twice, with their lengths."""
+    # A word's first gap lies before it and does not belong to it.
+    words = _words(wet.value, np.roll(wet.gap, -1))
+    order = np.argsort(words, kind="stable")
+    same = words[order[1:]] == words[order[:-1]]
+    earlier, later = order[:-1][same], order[1:][same]
+    places = len(wet.at)
+    limit = SURPRISE + 2 * np.log(places)
+    found: list[tuple[int, int, int]] = []
+    through = np.concatenate([[0.0], np.cumsum(wet.bits)])
+    through_gap = np.concatenate([[0.0], np.cumsum(wet.bits_gap)])
+    for offset in np.unique(later - earlier).tolist():
+        begins = np.sort(earlier[later - earlier == offset])
+        for group in np.split(begins, np.flatnonzero(np.diff(begins) > 1) + 1):
+            first, n = int(group[0]), len(group) + WORD - 1
+            if offset < n or first + n > places:
+                continue
+            surprise = through[first + n] - through[first] + through_gap[first + n] - through_gap[first + 1]
+            if surprise >= limit and len(np.unique(wet.value[first : first + n])) > 2:
+                found.append((first, first + offset, n))
+    return _apart(found)
+
+
+def _apart(found: list[tuple[int, int, int]]) -> list[tuple[int, int, int]]:
+    """Return the longest of the stretches that do not overlap with a longer one."""
+    kept: list[tuple[int, int, int]] = []
+    for item in sorted(found, key=lambda f: (-f[2], f[0], f[1])):
+        if all(item[1] >= k[1] + k[2] or item[1] + item[2] <= k[1] for k in kept):
+            kept.append(item)
+    return kept
+
+
+def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, first: int, second: int, n: int) -> Finding:
+    gauge = view.network.ids[g]
+    start, end = sheet.starts[wet.at[second]], sheet.ends[wet.at[second + n - 1]]
+    origin, until = sheet.starts[wet.at[first]], sheet.ends[wet.at[first + n - 1]]
+    return Finding(
+        check="duplicated-stretch",
+        gauge=gauge,
+        start=start,
+        end=end,
+        severity="erroneous",
+        evidence=f"{n} wet {sheet.scale}s with the dry ones between them are, value by value, those from {origin} to "
+        f"{until}.",
+        action="Find out which of the two stretches is the original, and reject the other.",
+        others=view.ids(view.neighbours[g][:4]),
+        edit=Edit(
+            gauge=gauge,
+            start=start,
+            end=end,
+            action="reject",
+            reason=f"a copy of {origin} to {until}",
+            by=SUGGESTED,
+        ),
+    )
+
+
+def shared_records(view: Screened) -> Iterator[Finding]:
+    """Yield pairs of gauges that have the same wet values at the same times over a stretch."""
+    for sheet in view.sheets:
+        wets = {
+            column: wet for column in range(len(sheet.gauges)) if (wet := _wet(sheet.depths[:, column])) is not None
+        }
+        if len(wets) < 2:
+            continue
+        words = {column: _words(wet.value, wet.at.astype(np.uint64)) for column, wet in wets.items()}
+        word = np.concatenate(list(words.values()))
+        column = np.repeat(list(words), [len(w) for w in words.values()])
+        place = np.concatenate([np.arange(len(w)) for w in words.values()])
+        order = np.lexsort((column, word))
+        same = word[order[1:]] == word[order[:-1]]
+        pairs: dict[tuple[int, int], list[int]] = {}
+        for k in np.flatnonzero(same).tolist():
+            one, other = order[k], order[k + 1]
+            pairs.setdefault((int(column[one]), int(column[other])), []).append(int(place[one]))
+        for (one, other), begins in pairs.items():
+            yield from _shared(view, sheet, wets[one], (one, other), np.sort(begins))
+
+
+def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begins: Ints) -> Iterator[Finding]:
+    through = np.concatenate([[0.0], np.cumsum(wet.bits)])
+    stretches = []
+    for group in np.split(begins, np.flatnonzero(np.diff(begins) > 1) + 1):
+        first, n = int(group[0]), len(group) + WORD - 1
+        if n >= LEAST_SHARED and through[first + n] - through[first] >= SHARED_SURPRISE:
+            stretches.append((first, n))
+    if not stretches:
+        return
+    a, b = sorted((int(sheet.gauges[pair[0]]), int(sheet.gauges[pair[1]])), key=lambda g: view.network.ids[g])
+    equal = sum(n for _, n in stretches)
+    whole = equal >= _WHOLE * len(wet.at)
+    never = np.datetime64("NaT", "s")
+    for first, n in stretches[:1] if whole else stretches:
+        start = never if whole else sheet.starts[wet.at[first]]
+        end = never if whole else sheet.ends[wet.at[first + n - 1]]
+        yield Finding(
+            check="one-record-two-gauges",
+            gauge=view.network.ids[b],
+            start=start,
+            end=end,
+            severity="erroneous",
+            evidence=f"{equal if whole else n} wet {sheet.scale}s on end are, value by value, those of "
+            f"{view.network.ids[a]}, {view.distances[a, b] / 1000:.1f} km away.",
+            action="Find out whose record it is, and exclude or reject the other's: one rain must not count twice.",
+            others=(view.network.ids[a],),
+            edit=None
+            if whole
+            else Edit(
+                gauge=view.network.ids[b],
+                start=start,
+                end=end,
+                action="reject",
+                reason=f"the record of {view.network.ids[a]}",
+                by=SUGGESTED,
+            ),
+        )
+
+
+_WHOLE: Final = 0.9

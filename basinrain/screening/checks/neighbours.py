@@ -1,0 +1,150 @@
+"""A gauge against its neighbours, day by day: far off, or dry among wet ones."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Final
+
+import numpy as np
+
+from basinrain.screening.edits import SUGGESTED, Edit
+from basinrain.screening.findings import Finding
+from basinrain.screening.screened import DRY, NORMAL, WET_DAY, Screened, runs_of
+
+__all__ = ["dry_among_wet", "far_from_neighbours", "long_dry_runs"]
+
+LEAST_REPORTING: Final = 3
+"""Neighbours that must report: with two, nobody can tell which of three is wrong."""
+
+OUTLYING: Final = 4.5
+"""Standard deviations, on root depths, beyond which a day is far from its neighbours. Root depths of neighbours are near
+enough to normal (common practice); on clean records (docs/verification.md) a lower limit blames showers."""
+
+TIMES_GREATEST: Final = 2.0
+"""Times the greatest neighbour, in the gauge's climate, that the depth must be: a storm seldom falls into one gauge."""
+
+LEAST_EXCESS: Final = 20.0
+"""mm above the neighbours' median below which nobody would act."""
+
+MISSING_RAIN: Final = 3.0
+"""Standard deviations, on root depths, by which a dry day must be below the neighbours' median."""
+
+LEAST_MEASURED: Final = 1.0
+"""mm that even the driest neighbour must have: rain from which no gauge among them was spared."""
+
+MIDDLE_WET: Final = 10.0
+"""mm that the neighbours' median must have, in the gauge's climate."""
+
+LONG_RUN: Final = 3
+"""Days with rain at the neighbours that a dry run must span before it is more than a missed shower."""
+
+ODDS: Final = 10.0
+"""Natural logarithm of the odds against so many dry days among wet ones, after allowing for all the record's days: wet
+days come in spells that miss a gauge together, so that e¹⁰ to 1, not 100 to 1, is asked."""
+
+LOST: Final = 20.0
+"""mm that the neighbours had over the run, by their medians."""
+
+
+def far_from_neighbours(view: Screened) -> Iterator[Finding]:
+    """Yield days far above the neighbours', in the gauge's climate."""
+    cases = view.cases
+    spread = np.maximum(NORMAL * view.spread, view.scatter)
+    with np.errstate(invalid="ignore"):
+        away = (np.sqrt(cases.depths) - np.sqrt(view.middle)) / spread
+        odd = (
+            (away > OUTLYING)
+            & (cases.depths - view.middle > LEAST_EXCESS)
+            & (cases.depths > TIMES_GREATEST * view.greatest)
+            & (view.reporting >= LEAST_REPORTING)
+        )
+    for g in np.flatnonzero(odd.any(axis=0)).tolist():
+        for first, stop in runs_of(odd[:, g]):
+            depth, middle = cases.depths[first:stop, g].sum(), view.middle[first:stop, g].sum()
+            yield Finding(
+                check="spatial-outlier",
+                gauge=view.network.ids[g],
+                start=cases.starts[first],
+                end=cases.ends[stop - 1],
+                evidence=f"{depth:.1f} mm against a median of {middle:.1f} mm at {int(view.reporting[first, g])} "
+                f"neighbours in this gauge's climate, {away[first:stop, g].max():.1f} standard deviations of root "
+                f"depths away. Neighbours as measured: {view.beside(g, first, stop)}.",
+                action="Look at the original: a local storm, a misplaced decimal point, another day's depth.",
+                others=view.ids(view.neighbours[g]),
+            )
+
+
+def dry_among_wet(view: Screened) -> Iterator[Finding]:
+    """Yield days without rain at a gauge while every neighbour was wet."""
+    cases = view.cases
+    with np.errstate(invalid="ignore"):
+        odd = (
+            (cases.depths <= DRY)
+            & (np.sqrt(view.middle) >= MISSING_RAIN * view.scatter)
+            & (view.least_measured >= LEAST_MEASURED)
+            & (view.middle >= MIDDLE_WET)
+            & (view.reporting >= LEAST_REPORTING)
+        )
+    for g in np.flatnonzero(odd.any(axis=0)).tolist():
+        for first, stop in runs_of(odd[:, g]):
+            gauge = view.network.ids[g]
+            start, end = cases.starts[first], cases.ends[stop - 1]
+            yield Finding(
+                check="zero-among-wet",
+                gauge=gauge,
+                start=start,
+                end=end,
+                evidence=f"No rain while all {int(view.reporting[first, g])} neighbours were wet, the driest "
+                f"{view.least_measured[first:stop, g].min():.1f} mm, their median {view.middle[first:stop, g].sum():.1f} mm in "
+                f"this gauge's climate. Neighbours as measured: {view.beside(g, first, stop)}.",
+                action="Reject the zero unless the observer confirms it: it may stand for a missing reading.",
+                others=view.ids(view.neighbours[g]),
+                edit=Edit(
+                    gauge=gauge,
+                    start=start,
+                    end=end,
+                    action="reject",
+                    reason="no rain while all neighbours were wet",
+                    by=SUGGESTED,
+                ),
+            )
+
+
+def long_dry_runs(view: Screened) -> Iterator[Finding]:
+    """Yield long runs without rain while the neighbours had much."""
+    cases = view.cases
+    for g, near in enumerate(view.neighbours):
+        if len(near) < 2:
+            continue
+        known = np.flatnonzero(np.isfinite(cases.depths[:, g]))
+        middle = np.nan_to_num(view.middle[:, g])
+        # Missing days neither end a run nor add to it.
+        for a, b in runs_of(cases.depths[known, g] <= DRY):
+            days = known[a:b]
+            # A neighbour's caught shower does not count for more than other days: the run has to be wet on many.
+            wet = days[(middle[days] >= WET_DAY) & (view.reporting[days, g] >= 2)]
+            odds = view.dry_surprise[days, g].sum() - np.log(len(known))
+            if len(wet) < LONG_RUN or middle[wet].sum() < LOST or odds < ODDS:
+                continue
+            first, stop = int(wet[0]), int(wet[-1]) + 1
+            gauge = view.network.ids[g]
+            start, end = cases.starts[first], cases.ends[stop - 1]
+            yield Finding(
+                check="zero-run",
+                gauge=gauge,
+                start=start,
+                end=end,
+                severity="erroneous" if middle[wet].sum() > 4 * LOST else "doubtful",
+                evidence=f"No rain from {start} to {end}, while the neighbours' median was {middle[wet].sum():.0f} mm, on "
+                f"{len(wet)} wet days. Neighbours as measured: {view.beside(g, first, stop)}.",
+                action="Reject the run: a blocked funnel, a stopped logger, or zeros for missing values.",
+                others=view.ids(near),
+                edit=Edit(
+                    gauge=gauge,
+                    start=start,
+                    end=end,
+                    action="reject",
+                    reason=f"no rain over {len(wet)} wet days of the neighbours",
+                    by=SUGGESTED,
+                ),
+            )

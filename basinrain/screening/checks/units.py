@@ -1,0 +1,224 @@
+"""Records in another unit than the one declared, throughout or over a stretch."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from basinrain.screening.edits import SUGGESTED, Edit
+from basinrain.screening.findings import Finding
+from basinrain.screening.screened import Bools, Floats, Ints, Screened
+
+__all__ = ["NAME", "unit_mixups"]
+
+NAME: Final = "unit-mixup"
+
+FACTORS: Final = (25.4, 10.0, 2.54, 1 / 2.54, 1 / 10.0, 1 / 25.4)
+"""What a depth is multiplied by when mm, tenths, inches and hundredths of an inch are taken for each other."""
+
+LEAST_BLOCK: Final = 10.0
+"""mm that a neighbour must have in a month before its ratio says something."""
+
+LEAST_TOTAL: Final = 40.0
+"""mm that a neighbour must have over the whole stretch."""
+
+LEAST_MONTHS: Final = 3
+"""Months on end that a stretch must have: a month of showers differs by as much as ten times now and then."""
+
+LEAST_MONTHS_SMALL: Final = 5
+"""The same for a factor of 2.54, by which a season differs in mountains."""
+
+CLOSE: Final = 0.5
+"""Natural logarithm: how near the ratio must come to the factor: about half between 10 and 25.4."""
+
+CLOSE_SMALL: Final = 0.35
+"""The same for a factor of 2.54, which dry and wet seasons come near to."""
+
+SURE: Final = 12.0
+"""Natural logarithm of how much likelier the months of a stretch are with the factor than without."""
+
+MOST_TOLD: Final = 6.0
+"""The most that one month may add to it, either way: months of showers are wilder than the normal law."""
+
+LEAST_SCATTER: Final = 0.25
+"""Natural logarithm: months of neighbours differ by as much even where a short record does not show it."""
+
+HARD_PLACES: Final = 4.0
+"""Times: mountains make neighbours differ by up to this over a whole record, so that a smaller factor over the whole of
+it is no evidence of another unit."""
+
+LEAST_NEIGHBOURS: Final = 2
+
+
+@dataclass(frozen=True, eq=False)
+class _Months:
+    """Depths of a gauge and of each neighbour over the cases that both have, by month.
+
+    Parameters
+    ----------
+    mine, theirs : array of float, shape (n_months, n_neighbours)
+        mm.
+    """
+
+    mine: Floats
+    theirs: Floats
+
+    def ratio(self, least: float) -> Floats:
+        """Return the logarithms of the ratios, NaN where one of the two is too dry to tell."""
+        told = (self.theirs >= least) & (self.mine > 0)
+        return np.log(np.divide(self.mine, self.theirs, out=np.full(self.mine.shape, np.nan), where=told))
+
+    def total(self, months: slice | Ints) -> _Months:
+        """Return the same over some months together, as one row."""
+        return _Months(self.mine[months].sum(axis=0, keepdims=True), self.theirs[months].sum(axis=0, keepdims=True))
+
+
+def unit_mixups(view: Screened) -> Iterator[Finding]:
+    """Yield gauges whose ratio to their neighbours is near a factor between units, throughout or over some months."""
+    depths = view.cases.depths
+    first_of_month = _months(view)
+    known = np.isfinite(depths)
+    for g, near in enumerate(view.neighbours):
+        if len(near) < LEAST_NEIGHBOURS:
+            continue
+        both = known[:, [g]] & known[:, near]
+        months = _Months(
+            np.add.reduceat(np.where(both, depths[:, [g]], 0.0), first_of_month, axis=0),
+            np.add.reduceat(np.where(both, depths[:, near], 0.0), first_of_month, axis=0),
+        )
+        found = _whole(view, g, near, months)
+        if found is not None:
+            yield found
+        else:
+            yield from _stretches(view, g, months, first_of_month)
+
+
+def _months(view: Screened) -> Ints:
+    """Return the first case of every calendar month."""
+    middle = view.cases.starts + (view.cases.ends - view.cases.starts) // 2
+    month = middle.astype("datetime64[M]").astype(np.int64)
+    return np.concatenate([[0], np.flatnonzero(np.diff(month)) + 1])
+
+
+def _whole(view: Screened, g: int, near: list[int], months: _Months) -> Finding | None:
+    ratios = months.total(slice(None)).ratio(LEAST_TOTAL)
+    ratios = ratios[np.isfinite(ratios)]
+    if len(ratios) < LEAST_NEIGHBOURS:
+        return None
+    ratio = float(np.median(ratios))
+    factor = min(FACTORS, key=lambda f: abs(ratio - np.log(f)))
+    if _small(factor) or abs(ratio - np.log(factor)) > CLOSE:
+        return None
+    # A gauge in another unit is far from all; among neighbours that differ as much from each other nobody can tell.
+    if np.ptp(ratios) > abs(np.log(factor)) - CLOSE:
+        return None
+    return _finding(view, g, factor, np.exp(ratio), None)
+
+
+def _stretches(view: Screened, g: int, months: _Months, first_of_month: Ints) -> Iterator[Finding]:
+    by_neighbour = months.ratio(LEAST_BLOCK)
+    counts = np.isfinite(by_neighbour).sum(axis=0)
+    told = np.flatnonzero(counts >= 2 * LEAST_MONTHS)
+    if len(told) < LEAST_NEIGHBOURS:
+        return
+    usual = np.array([_usual(column[np.isfinite(column)]) for column in by_neighbour[:, told].T])
+    # Every neighbour's ratio against its usual one: what lasting climate there is between the two does not count.
+    off = by_neighbour[:, told] - usual
+    enough = np.isfinite(off).sum(axis=1) >= LEAST_NEIGHBOURS
+    telling = np.flatnonzero(enough)
+    if len(telling) < 2 * LEAST_MONTHS:
+        return
+    away = np.nanmedian(off[telling], axis=1)
+    stop_of_month = np.append(first_of_month[1:], len(view.cases.ends))
+    # From month to month, so that a change of unit half way does not count as scatter.
+    scatter = max(1.4826 * float(np.median(np.abs(np.diff(away)))) / np.sqrt(2), LEAST_SCATTER)
+    found = []
+    for factor in FACTORS:
+        for a, b, sure in _segments(away, np.log(factor), scatter):
+            ratios = months.total(telling[a:b]).ratio(LEAST_TOTAL)[0, told]
+            if np.isfinite(ratios).sum() >= LEAST_NEIGHBOURS:
+                stands = float(np.nanmedian(ratios - usual))
+                if abs(stands - np.log(factor)) <= (CLOSE_SMALL if _small(factor) else CLOSE):
+                    found.append((sure, a, b, factor, float(np.nanmedian(ratios)), stands))
+    taken: Bools = np.zeros(len(away), dtype=bool)
+    for _, a, b, factor, ratio, stands in sorted(found, key=lambda item: (-item[0], item[1], item[3])):
+        if taken[a:b].any():
+            continue
+        taken[a:b] = True
+        first, stop = int(first_of_month[telling[a]]), int(stop_of_month[telling[b - 1]])
+        yield _finding(view, g, factor, float(np.exp(ratio)), (first, stop, float(np.exp(ratio - stands))))
+
+
+def _small(factor: float) -> bool:
+    return abs(np.log(factor)) < np.log(HARD_PLACES)
+
+
+def _segments(away: Floats, log: float, scatter: float) -> list[tuple[int, int, float]]:
+    """Return first, stop and sureness of the stretches of months that a factor explains better than none."""
+    least = LEAST_MONTHS_SMALL if _small(np.exp(log)) else LEAST_MONTHS
+    gain = np.clip((away**2 - (away - log) ** 2) / (2 * scatter**2), -MOST_TOLD, MOST_TOLD)
+    found = []
+    while True:
+        a, b, sure = _richest(gain)
+        if sure < SURE:
+            return found
+        if b - a >= least:
+            found.append((a, b, sure))
+        gain[a:b] = -MOST_TOLD
+
+
+def _richest(gain: Floats) -> tuple[int, int, float]:
+    """Return first and stop of the stretch with the greatest sum, and the sum."""
+    through = np.concatenate([[0.0], np.cumsum(gain)])
+    above = through - np.minimum.accumulate(through)
+    stop = int(np.argmax(above))
+    first = int(np.argmin(through[: stop + 1]))
+    return first, stop, float(above[stop])
+
+
+def _usual(ratio: Floats) -> float:
+    """Return the logarithm of the gauge's usual ratio: the median, or of two camps the one nearer to 1."""
+    middle = float(np.median(ratio))
+    ordered = np.sort(ratio)
+    gap = int(np.argmax(np.diff(ordered)))
+    low, high = ordered[: gap + 1], ordered[gap + 1 :]
+    # Camps of nearly equal size, far apart: the unit changed half way, and the median could fall into either.
+    if min(len(low), len(high)) > 0.3 * len(ratio) and np.median(high) - np.median(low) > np.log(2.0):
+        return float(min(np.median(low), np.median(high), key=abs))
+    return middle
+
+
+def _finding(
+    view: Screened, g: int, factor: float, ratio: float, stretch: tuple[int, int, float] | None
+) -> Finding:
+    gauge = view.network.ids[g]
+    words = f"{factor:g}" if factor > 1 else f"1/{1 / factor:g}"
+    never = np.datetime64("NaT", "s")
+    start, end, usual = never, never, ""
+    if stretch is not None:
+        first, stop, lasting = stretch
+        start, end = view.cases.starts[first], view.cases.ends[stop - 1]
+        usual = f" from {start} to {end}, and {lasting:.2f} times otherwise"
+    return Finding(
+        check=NAME,
+        gauge=gauge,
+        start=start,
+        end=end,
+        severity="doubtful" if _small(factor) else "erroneous",
+        evidence=f"It has {ratio:.3g} times the depth of its neighbours, by the median of them{usual}: near {words}, as "
+        "between mm, tenths and inches.",
+        action=f"Ask for the unit of the file; if it is confirmed, declare it, or multiply by {1 / factor:.4g}.",
+        others=view.ids(view.neighbours[g]),
+        edit=Edit(
+            gauge=gauge,
+            start=start,
+            end=end,
+            action="scale",
+            value=float(1 / factor),
+            reason=f"depths are {words} times what the neighbours' would make them",
+            by=SUGGESTED,
+        ),
+    )

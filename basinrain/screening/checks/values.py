@@ -1,0 +1,150 @@
+"""Values that no rain writes: one depth that stands still, and codes of missing values read as depths."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Final
+
+import numpy as np
+
+from basinrain.screening.edits import SUGGESTED, Edit
+from basinrain.screening.findings import Finding
+from basinrain.screening.screened import Floats, Screened, Sheet, runs_of
+from basinrain.units import DEPTH_UNITS
+
+__all__ = ["missing_codes", "stuck_values"]
+
+LEAST_EQUAL: Final = 5
+"""Equal depths on end below which a run is never called stuck: coarse gauges repeat small depths."""
+
+CHANCE: Final = 1e-4
+"""Expected number of such runs in the whole record, by the gauge's own habit of repeating a depth, above which a run
+may be chance: one in ten thousand, since rain that lasts repeats itself more than the habit says."""
+
+HABIT: Final = 5.0
+"""Weight, in pairs of steps, of the gauge's habit over all depths when that of one depth is estimated."""
+
+CODES: Final = (99.9, 99.99, 777.0, 777.7, 888.0, 888.8, 999.0, 999.9, 999.99, 7777.0, 8888.0, 9999.0, 9999.9, 99999.0)
+"""Codes of missing or suspect values that formats and observers use (common practice)."""
+
+LIMITS: Final = (3276.7, 32767.0, 6553.5, 65535.0)
+"""Full scale of two-byte registers, which loggers write when they fail."""
+
+TIMES_GREATER: Final = 2.0
+"""How far a code must stand above every other depth of the gauge to be sure; where it stands three times it need not."""
+
+_FIT: Final = 2e-4
+_FEW: Final = 3
+
+
+def stuck_values(view: Screened) -> Iterator[Finding]:
+    """Yield runs of one depth above 0 that are too long for the gauge's own habit of repeating it."""
+    for sheet in view.sheets:
+        for column, g in enumerate(sheet.gauges.tolist()):
+            for first, stop, expected in _stuck(sheet.depths[:, column]):
+                gauge, depth = view.network.ids[g], sheet.depths[first, column]
+                start, end = sheet.starts[first], sheet.ends[stop - 1]
+                beside = view.beside(g, *view.cases_of(start, end)) if view.timed else ""
+                yield Finding(
+                    check="stuck-values",
+                    gauge=gauge,
+                    start=start,
+                    end=end,
+                    evidence=f"{depth:.4g} mm stands at {stop - first} {sheet.scale}s on end; by the gauge's own habit "
+                    f"{max(expected, 1e-9):.1g} such runs would be expected in the record."
+                    + (f" Neighbours over the same day or days: {beside}." if beside else ""),
+                    action="Reject the run: a stuck float or register, or one value copied down.",
+                    others=view.ids(view.neighbours[g][:4]),
+                    edit=Edit(
+                        gauge=gauge,
+                        start=start,
+                        end=end,
+                        action="reject",
+                        reason=f"{depth:.4g} mm repeated over {stop - first} {sheet.scale}s",
+                        by=SUGGESTED,
+                    ),
+                )
+
+
+def _stuck(depths: Floats) -> list[tuple[int, int, float]]:
+    """Return first, stop and the expected number of runs as long, for the runs that are too long."""
+    n = len(depths)
+    if n < LEAST_EQUAL:
+        return []
+    begins = np.flatnonzero(np.concatenate([[True], depths[1:] != depths[:-1]]))
+    stops = np.append(begins[1:], n)
+    wet = depths[begins] > 0
+    begins, stops = begins[wet], stops[wet]
+    lengths = stops - begins
+    if not len(lengths) or lengths.max() < LEAST_EQUAL:
+        return []
+    values, which = np.unique(depths[begins], return_inverse=True)
+    # How often a depth repeats, apart from its longest run, which is what is judged.
+    longest = np.zeros(len(values), dtype=np.int64)
+    np.maximum.at(longest, which, lengths)
+    pairs = np.bincount(which, lengths - 1) - (longest - 1)
+    chances = np.bincount(which, lengths) - longest
+    general = (pairs.sum() + 1) / (chances.sum() + 2)
+    repeats = (pairs + HABIT * general) / (chances + HABIT)
+    expected = len(lengths) * repeats[which] ** (lengths - 1)
+    found = (lengths >= LEAST_EQUAL) & (expected < CHANCE)
+    return list(zip(begins[found].tolist(), stops[found].tolist(), expected[found].tolist(), strict=True))
+
+
+def missing_codes(view: Screened) -> Iterator[Finding]:
+    """Yield codes of missing values that were read as depths: they repeat exactly, far above all else."""
+    factors = sorted(set(DEPTH_UNITS.values()))
+    codes = np.array([code * factor for code in (*CODES, *LIMITS) for factor in factors])
+    names = [f"{code:g}" for code in (*CODES, *LIMITS) for _ in factors]
+    order = np.argsort(codes)
+    codes = codes[order]
+    for sheet in view.sheets:
+        for column, g in enumerate(sheet.gauges.tolist()):
+            depths = sheet.depths[:, column]
+            values, counts = np.unique(depths[depths > 0], return_counts=True)
+            if not len(values):
+                continue
+            nearest = _nearest(codes, values)
+            fits = np.abs(codes[nearest] - values) <= _FIT * values
+            for k in np.flatnonzero(fits)[::-1].tolist():
+                others = values[:k][~fits[:k]]
+                above = others[-1] if len(others) else 0.0
+                beyond = values[k + 1 :][~fits[k + 1 :]]
+                sure = counts[k] >= 2 and values[k] >= TIMES_GREATER * above
+                if len(beyond) or not (sure or (counts[k] >= _FEW and values[k] > above)):
+                    continue
+                yield from _codes(view, sheet, column, float(values[k]), names[order[nearest[k]]], float(above))
+
+
+def _nearest(codes: Floats, values: Floats) -> np.ndarray[tuple[int], np.dtype[np.int64]]:
+    right = np.clip(np.searchsorted(codes, values), 1, len(codes) - 1)
+    return np.where(values - codes[right - 1] < codes[right] - values, right - 1, right)
+
+
+def _codes(view: Screened, sheet: Sheet, column: int, value: float, code: str, above: float) -> Iterator[Finding]:
+    """Yield the stretches of a code; steps that have no depth do not part them."""
+    depths = sheet.depths[:, column]
+    g = int(sheet.gauges[column])
+    gauge = view.network.ids[g]
+    known = np.flatnonzero(np.isfinite(depths))
+    count = int((depths == value).sum())
+    for a, b in runs_of(depths[known] == value):
+        start, end = sheet.starts[known[a]], sheet.ends[known[b - 1]]
+        yield Finding(
+            check="missing-code",
+            gauge=gauge,
+            start=start,
+            end=end,
+            severity="erroneous",
+            evidence=f"{value:.4f} mm stands at {count} {sheet.scale}s, {b - a} of them here; its greatest other depth is "
+            f"{above:.1f} mm, and {code} is a usual code for a missing value.",
+            action=f"Declare the code, missing = [{code}], for this source, or reject the values.",
+            edit=Edit(
+                gauge=gauge,
+                start=start,
+                end=end,
+                action="reject",
+                reason=f"{code} is a code for a missing value",
+                by=SUGGESTED,
+            ),
+        )

@@ -1,0 +1,211 @@
+"""Double-mass curves and homogeneity over a network: what is found, what is left alone, and what cannot be told."""
+
+from __future__ import annotations
+
+import numpy as np
+import numpy.typing as npt
+import pytest
+
+from basinrain.gauges import GaugeNetwork
+from basinrain.rainfall import RainRecord, Status
+from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS, Consistency, consistency
+from basinrain.screening.edits import SUGGESTED, apply_edits
+from basinrain.screening.homogeneity import homogeneity_of
+
+
+def network_of(n: int) -> GaugeNetwork:
+    """Return n gauges A, B, ... in a line, 5 km apart."""
+    return GaugeNetwork(ids=tuple("ABCDEFGHIJ"[:n]), x=np.arange(float(n)) * 5e3, y=np.zeros(n), crs="local")
+
+
+def record_of(depths: npt.NDArray[np.float64]) -> RainRecord:
+    """Return a record of months from January 1991 on."""
+    first = np.datetime64("1991-01", "M")
+    bounds = (first + np.arange(len(depths) + 1)).astype("datetime64[s]")
+    return RainRecord.from_depths(network_of(depths.shape[1]).ids, bounds[:-1], bounds[1:], depths, step="1mo")
+
+
+def months(years: int, gauges: int, seed: int = 3, noise: float = 0.12) -> npt.NDArray[np.float64]:
+    """Return monthly depths in mm that share their weather: each gauge's factor, and noise that is its own."""
+    rng = np.random.default_rng(seed)
+    shared = rng.gamma(4.0, 20.0, (12 * years, 1)) * np.linspace(0.8, 1.3, gauges)
+    return np.asarray(shared * (1 + noise * rng.standard_normal((12 * years, gauges))).clip(0.1))
+
+
+def found(depths: npt.NDArray[np.float64]) -> Consistency:
+    return consistency(record_of(depths), network_of(depths.shape[1]))
+
+
+def keys(result: Consistency) -> list[tuple[str, str]]:
+    return [(finding.check, finding.gauge) for finding in result.findings]
+
+
+def test_a_clean_network() -> None:
+    """Thirty years of six gauges have curves and tests, and nothing is found."""
+    result = found(months(30, 6))
+    assert [curve.gauge for curve in result.double_mass] == list("ABCDEF")
+    assert [tested.grade for tested in result.homogeneity] == ["useful"] * 6
+    assert (result.findings, dict(result.skipped)) == ((), {})
+
+
+def test_false_alarms() -> None:
+    """Over 60 clean networks of six gauges, at most 2 % of curves and of tests are called out."""
+    results = [keys(found(months(30, 6, seed))) for seed in range(60)]
+    for check in (DOUBLE_MASS_BREAK, INHOMOGENEOUS):
+        assert sum(name == check for result in results for name, _ in result) <= 0.02 * 360
+
+
+def test_one_break() -> None:
+    """C lost 25 % after 2004: it is named, with the years, the slopes and the edit, and no neighbour is."""
+    depths = months(30, 6)
+    depths[14 * 12 :, 2] *= 0.75
+    result = found(depths)
+    assert keys(result) == [(DOUBLE_MASS_BREAK, "C"), (INHOMOGENEOUS, "C")]
+    finding = result.findings[0]
+    curve = result.double_mass[2]
+    assert curve.break_after == 2004
+    assert curve.ratio == pytest.approx(0.75, rel=0.05)
+    assert (str(finding.start), str(finding.end)) == ("1991-01-01T00:00:00", "2005-01-01T00:00:00")
+    assert finding.key == "double-mass-break C 1991-01-01T00:00"
+    assert finding.severity == "doubtful"
+    assert finding.evidence == (
+        f"Against the mean of B, D, A, E, F over 30 years, 1991 to 2020, the slope of the double-mass curve is "
+        f"{curve.slopes[0]:.3f} to 2004 and {curve.slopes[1]:.3f} after (F = {curve.f:.1f}, probability below 0.001)."
+    )
+    assert finding.others == tuple("ABDEF")
+    assert f"scale the record to 2004 by {curve.ratio:.3f}" in finding.action
+    second = result.findings[1]
+    assert (second.severity, second.whole_record) == ("doubtful", True)
+    assert second.evidence == (
+        "4 of 4 tests (snht, buishand-range, pettitt, von-neumann) reject homogeneity at 1 % for 30 ratios of annual "
+        "totals to the mean of B, D, A, E, F, which grades the record suspect; the change is most likely after 2004."
+    )
+
+
+def test_the_suggested_edit_mends_it() -> None:
+    """Carried out, the edit scales the older part, and nothing is found any more."""
+    depths = months(30, 6)
+    depths[14 * 12 :, 2] *= 0.75
+    record, network = record_of(depths), network_of(6)
+    edit = consistency(record, network).findings[0].edit
+    assert edit is not None
+    assert (edit.gauge, edit.action, edit.by) == ("C", "scale", SUGGESTED)
+    mended = apply_edits([record], [edit])[0]
+    assert (mended.status[: 14 * 12, 2] == Status.ADJUSTED).all()
+    assert np.array_equal(mended.depth[14 * 12 :], record.depth[14 * 12 :])
+    assert consistency(mended, network).findings == ()
+
+
+def test_a_break_spoils_no_neighbours() -> None:
+    """C at half and F at double after 2004: both are named, the neighbours are judged without them."""
+    depths = months(30, 8)
+    depths[14 * 12 :, 2] *= 0.5
+    depths[14 * 12 :, 5] *= 2.0
+    result = found(depths)
+    assert {gauge for _, gauge in keys(result)} == {"C", "F"}
+    for curve in result.double_mass:
+        assert not {"C", "F"} & set(curve.reference)
+
+
+def test_order_of_gauges_does_not_matter() -> None:
+    """With the columns and the network turned round, the same is said of every gauge."""
+    depths = months(30, 6)
+    depths[14 * 12 :, 2] *= 0.75
+    record, network = record_of(depths), network_of(6)
+    turned = GaugeNetwork(ids=network.ids[::-1], x=network.x[::-1], y=network.y[::-1], crs="local")
+    plain, other = consistency(record, network), consistency(record.ordered(network.ids[::-1]), turned)
+    assert [finding.key for finding in plain.findings] == [finding.key for finding in other.findings]
+    for one, two in zip(plain.double_mass, other.double_mass[::-1], strict=True):
+        assert (one.gauge, one.reference, one.break_after) == (two.gauge, two.reference, two.break_after)
+        assert one.f == pytest.approx(two.f, rel=1e-9)
+
+
+def test_without_neighbours() -> None:
+    """Two gauges have no reference: no curve, and their totals are tested by themselves."""
+    depths = months(30, 2)
+    result = found(depths)
+    assert result.double_mass == ()
+    assert result.skipped == {
+        DOUBLE_MASS_BREAK: "A, B: fewer than 3 neighbours with 10 complete years in common",
+    }
+    assert [tested.reference for tested in result.homogeneity] == [(), ()]
+    totals = depths[:, 1].reshape(30, 12).sum(axis=1)
+    expected = homogeneity_of(np.arange(1991, 2021), totals, gauge="B")
+    assert result.homogeneity[1].series == pytest.approx(totals)
+    assert result.homogeneity[1].tests[0].statistic == pytest.approx(expected.tests[0].statistic)
+
+
+def test_totals_by_themselves_are_named_as_such() -> None:
+    """The evidence says whether totals or ratios were tested."""
+    depths = months(30, 1, noise=0.02)
+    depths[14 * 12 :] *= 0.4
+    finding = found(depths).findings[0]
+    assert "reject homogeneity at 1 % for 30 annual totals, which grades the record suspect" in finding.evidence
+
+
+@pytest.mark.parametrize(
+    ("years", "curves", "tested", "skipped"),
+    [
+        (
+            9,
+            0,
+            0,
+            {
+                DOUBLE_MASS_BREAK: "A, B, C, D, E and 1 more: at most 9 complete calendar years; it takes 10",
+                INHOMOGENEOUS: "A, B, C, D, E and 1 more: at most 9 complete calendar years; it takes 20",
+            },
+        ),
+        (
+            12,
+            6,
+            0,
+            {INHOMOGENEOUS: "A, B, C, D, E and 1 more: at most 12 complete calendar years; it takes 20"},
+        ),
+    ],
+)
+def test_short_records(years: int, curves: int, tested: int, skipped: dict[str, str]) -> None:
+    """Ten complete years make a curve, twenty a test; below that it is said how many there are."""
+    result = found(months(years, 6))
+    assert (len(result.double_mass), len(result.homogeneity), dict(result.skipped)) == (curves, tested, skipped)
+
+
+def test_one_short_gauge() -> None:
+    """A gauge with gaps in most years is left out alone, as target and as neighbour."""
+    depths = months(30, 6)
+    depths[: 22 * 12 : 12, 1] = np.nan
+    result = found(depths)
+    assert [curve.gauge for curve in result.double_mass] == list("ACDEF")
+    assert all("B" not in curve.reference for curve in result.double_mass)
+    assert result.skipped == {
+        DOUBLE_MASS_BREAK: "B: 8 complete calendar years; it takes 10",
+        INHOMOGENEOUS: "B: 8 complete calendar years; it takes 20",
+    }
+
+
+def test_too_few_that_can_be_trusted() -> None:
+    """Of four gauges one breaks: the other three have only two sound neighbours each, which is said."""
+    depths = months(30, 4, noise=0.05)
+    depths[14 * 12 :, 0] *= 0.5
+    result = found(depths)
+    assert [curve.gauge for curve in result.double_mass] == ["A"]
+    assert result.skipped[DOUBLE_MASS_BREAK] == (
+        "B, C, D: fewer than 3 neighbours with 10 complete years in common, not counting A with a break of their own"
+    )
+
+
+def test_a_gauge_that_went_dry() -> None:
+    """A gauge without rain in half of its years has no factor, so no edit is suggested."""
+    depths = months(30, 6)
+    depths[14 * 12 :, 2] = 0.0
+    finding = found(depths).findings[0]
+    assert (finding.gauge, finding.edit) == ("C", None)
+    assert finding.action == "Look for what happened to the gauge: one part of its record has no rain."
+
+
+def test_storm_totals_without_times() -> None:
+    """A record without times has no years."""
+    nat = np.full(2, "NaT", dtype="datetime64[s]")
+    storms = RainRecord.from_depths(("A",), nat, nat, [[10.0], [20.0]], step="storm")
+    result = consistency(storms, network_of(1))
+    assert (result.double_mass, result.homogeneity, result.findings) == ((), (), ())
+    assert result.skipped[DOUBLE_MASS_BREAK] == "A: 0 complete calendar years; it takes 10"

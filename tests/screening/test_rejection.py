@@ -1,0 +1,197 @@
+"""What a job may say about findings, and the record that is left."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from basinrain.errors import JobError
+from basinrain.rainfall import KnownTotal, RainRecord, Status
+from basinrain.screening.findings import Finding
+from basinrain.screening.rejection import apply_rejections, settle_findings
+
+HOUR = np.timedelta64(3600, "s")
+MIDNIGHT = np.datetime64("2031-05-04", "s")
+
+
+def found(check: str, gauge: str, first: int | None = None, last: int | None = None, **fields: str) -> Finding:
+    """Return a finding from the end of one hour to the end of another; over the whole record without them."""
+    start, end = (np.datetime64("NaT", "s") if hour is None else MIDNIGHT + hour * HOUR for hour in (first, last))
+    return Finding(check=check, gauge=gauge, start=start, end=end, evidence="Seen.", action="Look.", **fields)  # type: ignore[arg-type]
+
+
+FINDINGS = (
+    found("unit-mixup", "W03"),
+    found("unit-mixup", "W04"),
+    found("stuck-values", "W03", 6, 9),
+    found("stuck-values", "W03", 12, 14),
+    found("reading-hours", ""),
+)
+
+
+def states(**options: list[str]) -> str:
+    """Return the first letter of every finding's state."""
+    return "".join(finding.state[0] for finding in settle_findings(FINDINGS, **options))
+
+
+@pytest.mark.parametrize(
+    ("entry", "expected"),
+    [
+        ("unit-mixup", "rrooo"),
+        ("unit-mixup W03", "roooo"),
+        ("stuck-values W03", "oorro"),
+        ("stuck-values W03 2031-05-04T06:00", "ooroo"),
+        ("  stuck-values   W03 2031-05-04T12:00 ", "oooro"),
+    ],
+)
+def test_entries(entry: str, expected: str) -> None:
+    """An entry names a finding by its key, or several by the leading words."""
+    assert states(reject=[entry]) == expected
+    assert states(accept=[entry]) == expected.replace("r", "a")
+
+
+def test_both_lists() -> None:
+    """What is neither rejected nor accepted stays as it was; an entry may be given twice."""
+    assert states(reject=["stuck-values", "stuck-values"], accept=["unit-mixup W03", "reading-hours"]) == "aorra"
+    assert states() == "ooooo"
+    assert settle_findings(()) == ()
+
+
+@pytest.mark.parametrize(
+    ("options", "text"),
+    [
+        (
+            {"reject": ["stuck-value W03"]},
+            "[screening] reject 'stuck-value W03': found no such finding; expected the key of a finding or its leading",
+        ),
+        (
+            {"accept": ["unit-mixup W05"]},
+            "accept 'unit-mixup W05': found no such finding; expected the key of a finding",
+        ),
+        ({"accept": ["unit-mixup W05"]}, "the nearest: unit-mixup W0"),
+        # Words are whole: the leading part of one is none.
+        ({"reject": ["unit"]}, "reject 'unit': found no such finding"),
+        ({"reject": ["W03"]}, "there are: unit-mixup W03, unit-mixup W04, stuck-values W03 2031-05-04T06:00"),
+        ({"reject": [" "]}, "reject ' ': found no such finding"),
+        (
+            {"reject": ["unit-mixup"], "accept": ["unit-mixup W04"]},
+            "[screening] finding 'unit-mixup W04': found reject 'unit-mixup' and accept 'unit-mixup W04'; expected one",
+        ),
+        (
+            {"reject": ["reading-hours"]},
+            "[screening] reject 'reading-hours': found a finding about the network as a whole; expected one about a",
+        ),
+    ],
+)
+def test_entries_that_do_not_fit(options: dict[str, list[str]], text: str) -> None:
+    """An entry that names nothing, or what another entry names otherwise, is refused."""
+    with pytest.raises(JobError, match=re.escape(text)):
+        states(**options)
+
+
+def test_nothing_found() -> None:
+    """Where screening found nothing, an entry is told so."""
+    with pytest.raises(JobError, match=r"accept 'stuck-values': found no such finding; .*; screening found nothing"):
+        settle_findings((), accept=["stuck-values"])
+
+
+def test_all_together() -> None:
+    """All entries that do not fit are said at once."""
+    with pytest.raises(JobError) as caught:
+        states(reject=["one", "reading-hours", "unit-mixup"], accept=["two", "unit-mixup W03"])
+    assert len(caught.value.problems) == 4
+
+
+def drawn() -> RainRecord:
+    """Return A and B over eight hours: A measured but for one hour, B a spread total of hours 3 to 6 among zeros."""
+    ends = MIDNIGHT + np.arange(1, 9) * HOUR
+    depths = np.array([[1, 2, 0, np.nan, 5, 6, 7, 8], [0, 0, 1, 2, 3, 4, 0, 0]], dtype=float).T
+    record = RainRecord.from_depths(("A", "B"), ends - HOUR, ends, depths, step="1h")
+    status = record.status.copy()
+    status[2:6, 1] = Status.SPREAD
+    return replace(record, status=status, totals=(KnownTotal("B", MIDNIGHT + 2 * HOUR, MIDNIGHT + 6 * HOUR, 10.0),))
+
+
+def left(record: RainRecord, gauge: str) -> str:
+    """Return the first two letters of every status."""
+    return " ".join(Status(code).label[:2] for code in record.status[:, record.gauges.index(gauge)])
+
+
+def rejected(*findings: Finding) -> RainRecord:
+    record = drawn()
+    result = apply_rejections(record, [replace(finding, state="rejected") for finding in findings])
+    assert np.array_equal(record.depth, drawn().depth, equal_nan=True)
+    return result
+
+
+def test_a_stretch() -> None:
+    """Steps after the start and up to the end lose their values; missing stays missing, the other gauge as it is."""
+    result = rejected(found("stuck-values", "A", 2, 6))
+    assert left(result, "A") == "ob ob re mi re re ob ob"
+    assert np.isnan(result.depth[2:6, 0]).all()
+    assert left(result, "B") == left(drawn(), "B")
+    assert result.totals == drawn().totals
+
+
+def test_a_whole_record() -> None:
+    """A finding without times takes the gauge's whole record."""
+    assert left(rejected(found("unit-mixup", "A")), "A") == "re re re mi re re re re"
+    assert rejected(found("unit-mixup", "B")).totals == ()
+
+
+@pytest.mark.parametrize(("first", "last"), [(5, 8), (0, 3), (3, 4)])
+def test_a_total_goes_whole(first: int, last: int) -> None:
+    """One rejected step of a spread total takes all of it, since what is left of it is not known."""
+    result = rejected(found("spatial-outlier", "B", first, last))
+    assert left(result, "B").split()[2:6] == ["re"] * 4
+    assert result.totals == ()
+
+
+def test_beside_a_total() -> None:
+    """Steps that only adjoin a total leave it."""
+    result = rejected(found("spatial-outlier", "B", 0, 2), found("spatial-outlier", "B", 6, 8))
+    assert left(result, "B") == "re re sp sp sp sp re re"
+    assert result.totals == drawn().totals
+
+
+def test_accumulation_that_is_not_spread() -> None:
+    """An accumulation without depths at its steps is rejected whole as well."""
+    record = drawn()
+    status, depth = record.status.copy(), record.depth.copy()
+    status[2:6, 1], depth[2:6, 1] = Status.ACCUMULATED, np.nan
+    record = replace(record, status=status, depth=depth)
+    result = apply_rejections(record, [found("unmarked-accumulation", "B", 4, 5, state="rejected")])
+    assert left(result, "B") == "ze ze re re re re ze ze"
+    assert result.totals == ()
+
+
+def test_storm_totals() -> None:
+    """A whole record of storm totals without times can be rejected; a stretch of time meets none of them."""
+    nat = np.full(2, "NaT", dtype="datetime64[s]")
+    storms = RainRecord.from_depths(("A",), nat, nat, [[10.0], [20.0]], step="storm")
+    whole, part = (found("unit-mixup", "A", *hours, state="rejected") for hours in ((), (0, 8)))
+    assert left(apply_rejections(storms, [whole]), "A") == "re re"
+    assert left(apply_rejections(storms, [part]), "A") == "ob ob"
+
+
+def test_open_and_accepted_findings_change_nothing() -> None:
+    """Only what the job rejects is left out."""
+    record = drawn()
+    findings = [found("unit-mixup", "A"), found("unit-mixup", "B", state="accepted")]
+    assert apply_rejections(record, findings) is record
+
+
+@given(st.lists(st.tuples(st.sampled_from("AB"), st.integers(0, 8), st.integers(0, 8)), max_size=5))
+def test_order_and_repetition(stretches: list[tuple[str, int, int]]) -> None:
+    """Findings in another order, or twice, reject the same values, and never make a value."""
+    findings = [found("x", gauge, min(a, b), max(a, b)) for gauge, a, b in stretches if a != b]
+    once, again = rejected(*findings), rejected(*findings[::-1], *findings)
+    assert np.array_equal(once.status, again.status)
+    assert once.totals == again.totals
+    kept = np.isfinite(once.depth)
+    assert np.array_equal(once.depth[kept], drawn().depth[kept])
