@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 import numpy.typing as npt
@@ -21,16 +22,17 @@ from basinrain.rainfall import RainRecord
 
 __all__ = ["InfillChoice", "choose_infill", "compare"]
 
+
 @dataclass(frozen=True, eq=False)
 class InfillChoice:
     """The infill method of a run with what it needs to know.
 
     Parameters
     ----------
+    record, network
+        The whole record and its gauges.
     options
         Method and numbers.
-    relations
-        Correlations and slopes of the whole record; None where it is too short for any.
     ratios
         Normals from the record, where the job asks for them.
     comparison
@@ -39,17 +41,39 @@ class InfillChoice:
         What the normals and the comparison had to remark.
     """
 
+    record: RainRecord
+    network: GaugeNetwork
     options: InfillOptions
-    relations: Relations | None
     ratios: NormalRatios | None
     comparison: Comparison | None
     notes: tuple[Note, ...]
 
-    def complete(
-        self, window: RainRecord, network: GaugeNetwork, *, long: npt.NDArray[np.bool_] | None = None
-    ) -> Completed:
+    @cached_property
+    def relations(self) -> Relations:
+        """Correlations and slopes of the whole record, not of a storm alone, which has too few days."""
+        return relations_of_record(self.record, self.network, ratios=self.ratios)
+
+    @property
+    def settings(self) -> dict[str, str | float]:
+        """The options in the words of a job, with what the method takes by default."""
+        options = self.options
+        given = {
+            "method": options.method,
+            "scale": options.scale,
+            "longest_gap": options.longest_gap,
+            "nearest": options.donors_wanted,
+            "radius": options.radius,
+            "min_donors": options.donors_required,
+            "elevation_limit": options.elevation_limit,
+            "power": options.exponent,
+            "normals": "given" if self.ratios is None else "record",
+        }
+        return {key: value for key, value in given.items() if value is not None}
+
+    def complete(self, window: RainRecord, *, long: npt.NDArray[np.bool_] | None = None) -> Completed:
         """Infill a window of the record; ``long`` as for :func:`basinrain.infill.complete`."""
-        return complete(window, network, self.options, long=long, relations=self.relations, ratios=self.ratios)
+        relations = self.relations if self.options.chosen_method.needs_relations else None
+        return complete(window, self.network, self.options, long=long, relations=relations, ratios=self.ratios)
 
 
 def compare(job: Job, record: RainRecord, network: GaugeNetwork, say: Callable[[str], None]) -> Comparison:
@@ -99,7 +123,7 @@ def choose_infill(
         options = replace(options, scale="day")
     if options.chosen_method.needs_normals and ratios is None:
         notes = (*notes, *suspect_normal_units(network))
-    return InfillChoice(options, relations_of_record(record, network, ratios=ratios), ratios, chosen, notes)
+    return InfillChoice(record, network, options, ratios, chosen, notes)
 
 
 def _options(job: Job) -> InfillOptions:
@@ -109,7 +133,5 @@ def _options(job: Job) -> InfillOptions:
     return InfillOptions(**given)
 
 
-def _ratios(
-    job: Job, record: RainRecord, network: GaugeNetwork
-) -> tuple[NormalRatios | None, tuple[Note, ...]]:
+def _ratios(job: Job, record: RainRecord, network: GaugeNetwork) -> tuple[NormalRatios | None, tuple[Note, ...]]:
     return normals_from_record(record, network) if job.infill.normals == "record" else (None, ())

@@ -34,6 +34,8 @@ from basinrain.screening import (
     screen,
     settle_findings,
 )
+from basinrain.screening.edits import Action
+from basinrain.spreading import spread_totals
 from basinrain.units import depth_factor
 
 __all__ = ["Inputs", "attempt", "input_digests", "read_inputs", "window_of"]
@@ -100,6 +102,10 @@ def read_inputs(job: Job, say: Callable[[str], None]) -> Inputs:
     say("screening")
     screening = _screen(job, raw, network)
     record = apply_rejections(raw, screening.findings)
+    if record is not raw:
+        # Daily depths were spread in the times of recorders, some of which may have been rejected.
+        record, spread_notes = spread_totals(replace(record, totals=()), network, record.totals)
+        notes += spread_notes
     # Each gauge has a catch of its own, so it is corrected before gauges at one place are merged.
     record = correct_catch(record, _catch_factors(job, network))
     if job.gauges.colocated == "mean":
@@ -172,7 +178,7 @@ def _read_basins(job: Job) -> tuple[Basins, tuple[Note, ...]]:
 
 
 def _edits(job: Job, sources: Sequence[RainRecord]) -> tuple[Edit, ...]:
-    """Return the job's edits with their times in the clock of the source that has the gauge."""
+    """Return the job's edits with their times in the clock of the first source that has one."""
     problems = Problems()
     edits = []
     for number, table in enumerate(job.edit, start=1):
@@ -194,7 +200,7 @@ def _edit(job: Job, table: EditTable, number: int, sources: Sequence[RainRecord]
         gauge=table.gauge,
         start=start,
         end=end,
-        action=table.action,
+        action=cast("Action", table.action),
         value=value,
         reason=table.reason,
         by=table.by,

@@ -21,7 +21,7 @@ from basinrain.basins import Basins
 from basinrain.cautions import network_cautions, record_cautions, screening_cautions, storm_cautions
 from basinrain.errors import DataError, JobError, MethodError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill import Completed, complete
+from basinrain.infill import Completed
 from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.infill.leave_one_out import Comparison
 from basinrain.infill_choice import InfillChoice, choose_infill, compare
@@ -96,7 +96,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
         say(f"storm {storm.name}")
         window = storm.cut(record)
         _require_reporting(storm, window)
-        completed = infill.complete(window, network, long=long[storm.first : storm.stop])
+        completed = infill.complete(window, long=long[storm.first : storm.stop])
         result, found = _run_one(job, storm, completed, network, basins, weighers)
         result, moved = _moved(job, result, window, infill, network, weighers, long[storm.first : storm.stop])
         found += moved
@@ -106,7 +106,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     notes += (*network_cautions(network.subset(in_use), basins), *record_cautions(record))
     notes += screening_cautions(given.screening, storms)
     return StormRun(
-        **_common(job, given),
+        **_common(job, given, infill),
         storms=tuple(results),
         comparison=infill.comparison,
         notes=once(notes, [storm.name for storm in storms]),
@@ -163,9 +163,15 @@ def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
     comparison = compare(job, given.record, given.network, say)
     infill = choose_infill(job, given.record, given.network, say, comparison=comparison, whole_record=True)
     say("completing")
-    completed = infill.complete(given.record, given.network)
+    completed = infill.complete(given.record)
     notes = (*given.notes, *infill.notes, *completed.notes, *record_cautions(given.record))
-    return InfillRun(**_common(job, given), comparison=comparison, completed=completed, notes=once(notes, ()), facts=_choice(comparison))
+    return InfillRun(
+        **_common(job, given, infill),
+        comparison=comparison,
+        completed=completed,
+        notes=once(notes, ()),
+        facts=_choice(comparison),
+    )
 
 
 def _moved(  # noqa: PLR0917 - each room's product, in order
@@ -211,11 +217,12 @@ def _resolve(job: Job | str | Path, settings: Sequence[str]) -> Job:
     return job
 
 
-def _common(job: Job, given: Inputs) -> dict[str, Any]:
+def _common(job: Job, given: Inputs, infill: InfillChoice | None = None) -> dict[str, Any]:
     """Return what every run has."""
+    settings = job.model_dump(mode="json", exclude_none=True, by_alias=True)
     return {
         "name": job.job.name,
-        "settings": job.model_dump(mode="json", exclude_none=True, by_alias=True),
+        "settings": settings if infill is None else {**settings, "infill": infill.settings},
         "depth_unit": job.job.depth_unit,
         "area_unit": job.job.area_unit,
         "network": given.network,

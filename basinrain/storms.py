@@ -231,7 +231,7 @@ def hyetograph_shape(
     """
     record = completed.record
     totals = record.depth.sum(axis=0)
-    if storm.pattern == MEAN or not (totals != 0).any():
+    if storm.pattern == MEAN or not (record.depth > 0).any():
         return [(MEAN, None)] * len(basins)
     if storm.pattern != NEAREST_RECORDER:
         column = record.gauges.index(storm.pattern)

@@ -5,7 +5,7 @@ Columns and their order are those of the CSV files; ``docs/outputs.md`` describe
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -70,7 +70,7 @@ def infill_differences(comparison: Comparison, depth_unit: str) -> pd.DataFrame:
     import pandas as pd
 
     mm = depth_factor(depth_unit)
-    rows = [
+    rows: list[tuple[Any, ...]] = [
         (
             found.candidate,
             found.best,

@@ -20,6 +20,14 @@ if TYPE_CHECKING:
 
 __all__ = ["completeness", "double_mass", "edit_table", "findings", "homogeneity"]
 
+_FINDINGS = "check gauge from to severity state evidence action others key"
+_EDITS = "gauge from to action value reason by date steps_changed depth_before depth_after depth_unit"
+_DOUBLE_MASS = (
+    "gauge reference year total cumulative reference_cumulative adjusted depth_unit break_after ratio fitted_ratio "
+    "significance"
+)
+_HOMOGENEITY = "gauge reference test years statistic critical_5 critical_1 rejected_at change_after counted grade"
+
 
 def findings(run: Run) -> pd.DataFrame:
     """Return ``findings``: one row per finding; times are blank where it concerns the whole record."""
@@ -41,7 +49,7 @@ def findings(run: Run) -> pd.DataFrame:
         )
         for found in run.screening.findings
     ]
-    return pd.DataFrame(rows, columns="check gauge from to severity state evidence action others key".split())
+    return pd.DataFrame(rows, columns=_FINDINGS.split())
 
 
 def completeness(run: ScreenRun) -> pd.DataFrame:
@@ -105,8 +113,7 @@ def edit_table(run: Run) -> pd.DataFrame:
                 run.depth_unit,
             )
         )
-    columns = "gauge from to action value reason by date steps_changed depth_before depth_after depth_unit"
-    return pd.DataFrame(rows, columns=columns.split())
+    return pd.DataFrame(rows, columns=_EDITS.split())
 
 
 def double_mass(run: ScreenRun) -> pd.DataFrame:
@@ -137,11 +144,7 @@ def double_mass(run: ScreenRun) -> pd.DataFrame:
         )
         for curve in run.screening.double_mass
     ]
-    columns = (
-        "gauge reference year total cumulative reference_cumulative adjusted depth_unit break_after ratio fitted_ratio "
-        "significance"
-    ).split()
-    return pd.concat(frames, ignore_index=True) if frames else pd.DataFrame(columns=columns)
+    return pd.concat(frames, ignore_index=True) if frames else pd.DataFrame(columns=_DOUBLE_MASS.split())
 
 
 def homogeneity(run: ScreenRun) -> pd.DataFrame:
@@ -169,7 +172,4 @@ def homogeneity(run: ScreenRun) -> pd.DataFrame:
         for tested in run.screening.homogeneity
         for test in tested.tests
     ]
-    columns = (
-        "gauge reference test years statistic critical_5 critical_1 rejected_at change_after counted grade"
-    ).split()
-    return pd.DataFrame(rows, columns=columns)
+    return pd.DataFrame(rows, columns=_HOMOGENEITY.split())

@@ -8,7 +8,7 @@ import pytest
 from strips import BASINS, NAN, NETWORK, hourly
 
 from basinrain.errors import JobError, MethodError
-from basinrain.infill import InfillOptions, complete
+from basinrain.infill import Completed, InfillOptions, complete
 from basinrain.storms import Storm, borrowed_times, hyetograph_shape, status_of_total, storm_window
 
 
@@ -69,6 +69,14 @@ def test_patterns_of_the_hyetograph() -> None:
         shapes(depth, "B")
     with pytest.raises(MethodError, match="no recording gauge with the whole storm and rain in it"):
         shapes([[0.0, 0.0, NAN], [0.0, NAN, 1.0]], "nearest-recorder")
+
+
+@pytest.mark.parametrize("pattern", ["A", "nearest-recorder"])
+def test_a_dry_storm_keeps_its_own_times_although_a_gauge_is_silent(pattern: str) -> None:
+    """No rain anywhere, and one gauge without a total: there is nothing to time, and nothing to refuse."""
+    record = hourly([[0.0, NAN, 0.0], [0.0, NAN, 0.0]])
+    storm = Storm("Q", 0, 2, record.starts[0], record.ends[-1], pattern)
+    assert hyetograph_shape(Completed(record, (), ()), storm, NETWORK, BASINS) == [("mean", None)]
 
 
 def test_status_of_a_total_in_words() -> None:

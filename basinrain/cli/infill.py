@@ -58,11 +58,9 @@ def _show(run: InfillRun) -> None:
     for label, reason in comparison.skipped.items():
         page.print(f"Not compared: {label}: {reason}", soft_wrap=True)
     page.print(comparison.reason, soft_wrap=True)
-    estimates = len(run.completed.estimates)
-    method = run.completed.estimates[0].method if estimates else ""
-    page.print(
-        f"The completed record: {estimates} depths estimated by {method}." if estimates else "There was nothing to infill."
-    )
+    estimates = run.completed.estimates
+    done = f"{len(estimates)} depths estimated by {estimates[0].method}" if estimates else "there was nothing to infill"
+    page.print(f"The completed record: {done}.", soft_wrap=True)
     for note in comparison.notes:
         page.print(f"Note: {note}", soft_wrap=True)
     show_warnings(page, run.warnings)

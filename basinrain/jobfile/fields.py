@@ -35,6 +35,7 @@ LEAVE_ONE_OUT = "leave-one-out"
 
 
 def one_of(known: Iterable[str]) -> AfterValidator:
+    """Return what makes a text be one of some, naming the nearest where it is not."""
     choices = tuple(known)
 
     def check(value: str) -> str:
@@ -79,16 +80,19 @@ def _iso(value: str) -> str:
 
 
 def clock_time(value: object) -> object:
+    """Bring a TOML time to text; anything else stays as it is."""
     if isinstance(value, time):
         return value.strftime("%H:%M")
     return value
 
 
 def as_list(value: object) -> object:
+    """Bring a table that was written once to a list of tables."""
     return [value] if isinstance(value, Mapping) else value
 
 
 def names(value: object) -> object:
+    """Bring a single name to a list of names."""
     return [value] if isinstance(value, str) else value
 
 

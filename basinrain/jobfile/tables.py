@@ -68,9 +68,9 @@ class GaugesTable(Table):
     normal_unit: DepthUnit = "mm"
     normal_period: str = ""
     colocated: Annotated[str, one_of(("refuse", "mean"))] = "refuse"
-    catch_factor: dict[str, Positive | tuple[Positive, ...]] = {}
+    catch_factor: dict[str, Positive | tuple[Positive, ...]] = Field(default={})
     exclude: tuple[str, ...] = ()
-    columns: dict[str, str | list[str]] = {}
+    columns: dict[str, str | list[str]] = Field(default={})
 
 
 class RainfallTable(Table):
@@ -87,7 +87,7 @@ class RainfallTable(Table):
     date_means: Annotated[str, one_of(("calendar-day", "ends", "starts"))] | None = None
     missing: tuple[str | float, ...] = ()
     trace: tuple[str, ...] = ("T",)
-    flags: dict[str, tuple[str, ...]] = {}
+    flags: dict[str, tuple[str, ...]] = Field(default={})
     accumulated: str | None = None
     gaps: Annotated[str, one_of(("refuse", "missing"))] = "refuse"
     time_format: str | None = None
@@ -96,7 +96,7 @@ class RainfallTable(Table):
     end: Moment | None = None
     rollover: Positive | None = None
     jitter: Annotated[float, Field(ge=0)] = 0.0
-    columns: dict[str, str] = {}
+    columns: dict[str, str] = Field(default={})
 
     @field_validator("unit")
     @classmethod

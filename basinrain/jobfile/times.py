@@ -91,7 +91,7 @@ def edit_window_times(
     number
         Which ``[[edit]]`` it is, counted from 1.
     zone, day_start
-        As for :func:`storm_window_times`, of the source that has the gauge.
+        As for :func:`storm_window_times`: the clock of the first source with times, the day of the gauge's own source.
 
     Raises
     ------
@@ -120,9 +120,7 @@ def _moment(item: str, text: str, zone: str, day_start: np.timedelta64, *, at_en
 def _moment(
     item: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool
 ) -> np.datetime64 | None: ...
-def _moment(
-    item: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool
-) -> np.datetime64 | None:
+def _moment(item: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool) -> np.datetime64 | None:
     if text is None:
         return None
     if is_month(text):

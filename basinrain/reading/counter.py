@@ -371,7 +371,6 @@ def _put(
         kind[1:][marked[1:] | marked[:-1]] = mark
     known = ~np.isnan(rises)
     single = known & (np.diff(rows, prepend=-1) == 1)
-    single[:1] = False
     depth[rows[single] - 1], status[rows[single] - 1] = rises[single], kind[single]
     totals = []
     for reading in np.flatnonzero(known & ~single):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
 from pathlib import Path
 from typing import Final
 
@@ -78,7 +79,7 @@ def read_envelope(path: Path) -> tuple[tuple[float, float], ...]:
             # Twelve digits: a product of factors is no better known.
             limits[hours] = float(f"{depths[row] * depth_factor(str(unit)):.12g}")
     ordered = sorted(limits.items())
-    for (shorter, more), (longer, less) in zip(ordered, ordered[1:], strict=False):
+    for (shorter, more), (longer, less) in pairwise(ordered):
         if less < more:
             problems.add(
                 item="depth",

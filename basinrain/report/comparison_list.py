@@ -44,10 +44,11 @@ def scale_words(scale: str) -> str:
 def comparison_facts(comparison: Comparison) -> list[tuple[str, str]]:
     """Return what was compared, each a name and a text."""
     score = comparison.score(comparison.chosen)
+    skipped = f"; {len(comparison.skipped)} could not be" if comparison.skipped else ""
     facts = [
         ("Taken", comparison.chosen),
         ("Least error", comparison.best),
-        ("Compared", f"{counted(len(comparison.candidates), 'method')}, {len(comparison.skipped)} could not be"),
+        ("Compared", counted(len(comparison.candidates), "method") + skipped),
         ("Cases", f"{score.n} values at {counted(len(comparison.gauges), 'gauge')}, {scale_words(comparison.scale)}"),
     ]
     return [*facts, ("Donors", _donors(comparison.chosen_options))]

@@ -51,7 +51,7 @@ def _picture(curve: DoubleMass, depth_unit: str, name: str) -> Picture:
     stop = int(np.flatnonzero(curve.years == curve.break_after)[0]) + 1
     before, after = curve.slopes
     figure = Figure(figsize=(HALF_WIDTH, _HEIGHT))
-    left, foot, head = 0.58, 0.44, 0.56
+    left, foot, head = 0.66, 0.44, 0.56
     axes = figure.add_axes(
         (left / HALF_WIDTH, foot / _HEIGHT, 1 - (left + 0.14) / HALF_WIDTH, (_HEIGHT - foot - head) / _HEIGHT)
     )

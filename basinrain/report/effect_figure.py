@@ -16,7 +16,7 @@ from basinrain.units import depth_factor
 
 __all__ = ["effect_picture"]
 
-_ROW, _HEAD, _FOOT, _GAP = 0.165, 0.55, 0.42, 0.16  # inches
+_ROW, _HEAD, _FOOT, _GAP = 0.165, 0.55, 0.42, 0.26  # inches
 _MOST: Final = 4
 
 _OWN: Final[dict[str, Any]] = {"marker": "s", "markersize": 5.2, "markerfacecolor": "black"}

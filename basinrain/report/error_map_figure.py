@@ -36,6 +36,7 @@ __all__ = ["error_map_picture"]
 
 _TALLEST: Final = 6.4
 _LARGEST: Final = 17.0  # points across the circle of the largest error
+_RIM: Final = 2.0  # points that labels keep from circles
 _FEW: Final = 60
 _LEFT, _RIGHT, _BOTTOM, _HEAD = 0.55, 0.1, 0.42, 0.34  # inches
 _FILLS: Final = {"over": "white", "under": "#8d969c"}
@@ -183,10 +184,10 @@ def _circles(axes: Any, network: GaugeNetwork, errors: _Errors) -> None:  # noqa
     # The large ones first, so that no small one is hidden.
     for g in np.argsort(-np.nan_to_num(across), kind="stable"):
         if np.isnan(across[g]):
-            axes.plot(network.x[g], network.y[g], marker="x", markersize=5, color=INK, linestyle="none", zorder=4)
+            axes.plot(network.x[g], network.y[g], marker="x", markersize=5, color=INK, linestyle="none", zorder=8)
         else:
             fill = "under" if errors.bias[g] < 0 else "over"
-            axes.plot(network.x[g], network.y[g], zorder=4, **_circle(float(across[g]), fill))
+            axes.plot(network.x[g], network.y[g], zorder=8, **_circle(float(across[g]), fill))
 
 
 @dataclass(frozen=True)
@@ -204,11 +205,12 @@ def _label(sheet: _Sheet, network: GaugeNetwork, errors: _Errors) -> int:
     half = np.nan_to_num(errors.across(errors.size), nan=5.0) / 2
     x, y = (network.x - extent.west) * scale, (network.y - extent.south) * scale
     frame = Box(0, 0, (extent.east - extent.west) * scale, (extent.north - extent.south) * scale)
-    taken = [Box(x[g] - half[g], y[g] - half[g], x[g] + half[g], y[g] + half[g]) for g in range(len(network))]
+    reach = half + _RIM
+    taken = [Box(x[g] - reach[g], y[g] - reach[g], x[g] + reach[g], y[g] + reach[g]) for g in range(len(network))]
     placer = LabelPlacer(frame, [*taken, Box(0, 0, frame.right, 26)])
     few = len(network) <= _FEW
     size = 6.5 if few else 5.5
-    names = short_names(network.ids, 18)
+    names = short_names(network.ids, 16)
     lost = 0
     for g in sorted(range(len(network)), key=lambda g: (-np.nan_to_num(errors.size[g], nan=-1.0), network.ids[g])):
         lines = [names[g]]

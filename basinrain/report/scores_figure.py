@@ -95,7 +95,7 @@ def scores_picture(comparison: Comparison, *, depth_unit: str) -> Picture | None
         _legend(figure, comparison, height)
         title = "Error of the infill methods"
         description = "; ".join(f"{c}: {error_text(error[c], depth_unit)} ({_kind(comparison, c)})" for c in candidates)
-        svg = to_svg(figure, "scores", title, inline(description))
+        svg = to_svg(figure, "scores-by-method", title, inline(description))
     caption = "Root mean square error of each method over the same cases, from simple to complex. "
     if _intervals(comparison):
         caption += (
@@ -105,7 +105,7 @@ def scores_picture(comparison: Comparison, *, depth_unit: str) -> Picture | None
     else:
         caption += "The cases are too few for intervals: no method can be told from another. "
     caption += "The axis does not begin at zero."
-    return Picture("scores", caption, svg, half=True)
+    return Picture("scores-by-method", caption, svg, half=True)
 
 
 def _intervals(comparison: Comparison) -> bool:

@@ -207,10 +207,9 @@ def _why(check: str, annual: AnnualTotals, gauges: list[int], trusted: npt.NDArr
     parts = []
     if short:
         most = int(counts[short].max())
-        parts.append(
-            f"{_named(annual, short)}: {'at most ' if len(short) > 1 else ''}{most} complete calendar years; it takes "
-            f"{needed}"
-        )
+        years = f"{most or 'no'} complete calendar year{'' if most < 2 else 's'}"
+        some = "at most " if len(short) > 1 and most else ""
+        parts.append(f"{_named(annual, short)}: {some}{years}; it takes {needed}")
     if alone:
         broken = np.flatnonzero(~trusted).tolist()
         without = f", not counting {_named(annual, broken)} with a break of their own" if broken else ""

@@ -7,7 +7,7 @@ from typing import Final, NamedTuple
 
 import numpy as np
 import numpy.typing as npt
-from scipy.stats import f as f_distribution
+from scipy.special import fdtrc
 
 from basinrain.errors import DataError, Problem
 
@@ -48,7 +48,7 @@ class DoubleMass:
         The same with least squares lines through the points of either part, the break's own in both and the origin in
         neither. How far it is from ``ratio`` tells how well the slopes are known.
     f
-        Of the analysis of covariance, with 1 and n - 2 degrees of freedom; NaN without a break.
+        Of the analysis of covariance, with 1 and n - 2 degrees of freedom; NaN without a break or a third year.
     significance
         The probability of so large an ``f`` by chance. Where the break was looked for, it is multiplied by the number
         of breaks that were tried (Bonferroni), at most 1. NaN without a break.
@@ -212,7 +212,7 @@ def double_mass(
         ratio=ratio,
         fitted_ratio=_ratio(_fitted(sums, stop), newest_first=newest_first),
         f=float(f[best]),
-        significance=min(1.0, len(tried) * float(f_distribution.sf(f[best], 1, len(y) - 2))),
+        significance=float(np.minimum(1.0, len(tried) * fdtrc(1, len(y) - 2, f[best]))),
         found=break_after is None,
         adjusted=np.where(older & np.isfinite(ratio), y * ratio, y),
     )
@@ -236,11 +236,10 @@ def _variance_ratios(
     two = squares - y1**2 / x1 - y2**2 / x2
     one, two = (np.where(value <= _ROUNDING * squares, 0.0, value) for value in (one, two))
     explained = np.maximum(one - two, 0.0)
-    return np.asarray(
-        np.divide(
-            explained * (len(x) - 2), two, out=np.where(explained > 0, np.inf, 0.0), where=(two > 0) & (len(x) > 2)
-        )
-    )
+    if len(x) <= 2:
+        return np.full(len(tried), np.nan)  # two slopes through two years leave nothing to judge them by
+    f = np.divide(explained * (len(x) - 2), two, out=np.where(explained > 0, np.inf, 0.0), where=two > 0)
+    return np.asarray(f)
 
 
 def _chords(sums: _Sums, stop: int) -> tuple[float, float]:

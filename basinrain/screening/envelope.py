@@ -39,7 +39,7 @@ def greatest_depths() -> tuple[GreatestDepth, ...]:
     Returns
     -------
     tuple of GreatestDepth
-        1 minute to 2 years. A longer duration may stand with a smaller depth than a shorter one, as observers' lists do.
+        1 minute to 2 years. A longer duration may stand with a smaller depth than a shorter one, as lists have it.
 
     Examples
     --------
@@ -69,10 +69,10 @@ def world_depth(hours: float) -> float:
 
     Examples
     --------
-    >>> round(world_depth(24), 1), round(world_depth(1), 1), world_depth(1e-3)
+    >>> round(world_depth(24), 1), round(world_depth(1), 1), round(world_depth(1e-3), 1)
     (1825.0, 401.0, 38.0)
     >>> round(world_depth(12), 1)  # the 1400 mm of 10 h hold for 12 h too
-    1425.2
+    1480.1
     """
     return envelope_depth([(record.hours, record.depth) for record in greatest_depths()], hours)
 

@@ -19,7 +19,8 @@ from basinrain.screening.screened import Screened
 __all__ = ["screen"]
 
 MOST_STRETCHES: Final = 20
-"""Stretches of one gauge that a check lists one by one; with more, the fault is the gauge's, and one finding says so."""
+"""Stretches of one gauge that a check lists one by one; with more, the fault is the gauge's, and one finding says
+so."""
 
 
 def screen(record: RainRecord, network: GaugeNetwork, *, options: ScreeningOptions | None = None) -> Screening:
@@ -38,8 +39,8 @@ def screen(record: RainRecord, network: GaugeNetwork, *, options: ScreeningOptio
     -------
     Screening
         A check that lacks what it needs is named in ``checks_skipped`` with the reason; the two on years, which some
-        gauges may lack, are then named in ``checks_run`` as well where other gauges have them. A record without steps or
-        gauges has no findings.
+        gauges may lack, are then named in ``checks_run`` as well where other gauges have them. A record without steps
+        or gauges has no findings.
 
     Examples
     --------

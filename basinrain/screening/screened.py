@@ -52,8 +52,9 @@ UNTOLD_SCATTER: Final = 1.2
 
 _DEPTH_CLASSES: Final = (0.5, 1.0, 2.0, 4.0, 8.0, 16.0)
 _LONG_STEP: Final = 10 * DAY
-_CAP: Final = 0.995
-"""Depths above this quantile of a gauge's wet cases count as the quantile in its climate, so that no fault makes it."""
+_CAP: Final = (0.9, 3.0)
+"""Depths above three times a gauge's 90 % quantile of wet cases count as that in its climate, so that no fault makes
+it; of rain one day in some hundreds is above."""
 
 _LEAST_COMMON: Final = 30
 """Common wet cases below which two gauges' climates are not compared and count as the same."""
@@ -88,13 +89,17 @@ class Sheet:
             return 0
         return int(np.median((self.ends - self.starts).astype(np.int64)))
 
+    @property
+    def unit(self) -> str:
+        """What people call an interval: ``"day"`` or ``"step"``."""
+        return "day" if self.seconds == DAY else "step"
+
 
 @dataclass(frozen=True, eq=False)
 class _Around:
     """What the neighbours of every gauge had, by case and gauge."""
 
     middle: Floats
-    least: Floats
     least_measured: Floats
     greatest: Floats
     spread: Floats
@@ -141,7 +146,8 @@ class Screened:
     def steps(self) -> Sheet:
         """All gauges at the record's step, as measured: what was spread or infilled is not there."""
         record = self.record
-        depths = np.where(record.measured, record.depth, np.nan)
+        # By columns, since most checks go gauge by gauge.
+        depths = np.asfortranarray(np.where(record.measured, record.depth, np.nan))
         return Sheet("step", record.starts, record.ends, depths, np.arange(len(self.network)))
 
     @cached_property
@@ -149,7 +155,7 @@ class Screened:
         """All gauges by rainfall days where the step is shorter than a day, else by steps: the scale of comparison."""
         days = day_totals(self.record)
         scale = "day" if self.timed and self.seconds < DAY else "step"
-        return Sheet(scale, days.starts, days.ends, days.totals, np.arange(len(self.network)))
+        return Sheet(scale, days.starts, days.ends, np.asfortranarray(days.totals), np.arange(len(self.network)))
 
     @cached_property
     def sheets(self) -> tuple[Sheet, ...]:
@@ -202,30 +208,29 @@ class Screened:
 
     @cached_property
     def caps(self) -> Floats:
-        """The depth that all but the greatest half percent of a gauge's wet cases stay below, shape (n_gauges,)."""
+        """The depth in mm above which a gauge's cases count as it in its climate; 0 without rain; (n_gauges,)."""
         wet = np.sort(np.where(self.cases.depths > 0, self.cases.depths, np.nan), axis=0)
         count = np.isfinite(wet).sum(axis=0)
-        at = np.maximum(np.ceil(_CAP * count).astype(np.int64) - 1, 0)
+        at = np.maximum(np.ceil(_CAP[0] * count).astype(np.int64) - 1, 0)
         caps = wet[at, np.arange(wet.shape[1])] if len(wet) else np.zeros(wet.shape[1])
-        return np.where(np.isfinite(caps), caps, 0.0)
+        return np.where(np.isfinite(caps), _CAP[1] * caps, 0.0)
 
     @cached_property
     def _around(self) -> _Around:
         shape = self.cases.depths.shape
-        around = _Around(*(np.full(shape, np.nan) for _ in range(5)), np.zeros(shape, dtype=np.int64))
+        middle, least, greatest, spread = (np.full(shape, np.nan) for _ in range(4))
+        around = _Around(middle, least, greatest, spread, np.zeros(shape, dtype=np.int64))
         for g, near in enumerate(self.neighbours):
             if not near:
                 continue
             depths = self.cases.depths[:, near]
             ranked = np.sort(depths * self.climate[g, near], axis=1)
             count = np.isfinite(ranked).sum(axis=1)
-            middle = _median(ranked, count)
             around.count[:, g] = count
-            around.middle[:, g] = middle
-            around.least[:, g] = ranked[:, 0]
+            around.middle[:, g] = _median(ranked, count)
             around.least_measured[:, g] = np.fmin.reduce(depths, axis=1)
             around.greatest[:, g] = np.fmax.reduce(ranked, axis=1)
-            apart = np.sort(np.abs(np.sqrt(ranked) - np.sqrt(middle)[:, None]), axis=1)
+            apart = np.sort(np.abs(np.sqrt(ranked) - np.sqrt(around.middle[:, [g]])), axis=1)
             around.spread[:, g] = _median(apart, count)
         return around
 
@@ -233,11 +238,6 @@ class Screened:
     def middle(self) -> Floats:
         """Median of the neighbours in mm, in the gauge's climate; NaN where none reports; (n_cases, n_gauges)."""
         return self._around.middle
-
-    @property
-    def least(self) -> Floats:
-        """The least neighbour in mm, in the gauge's climate; NaN where none reports; (n_cases, n_gauges)."""
-        return self._around.least
 
     @property
     def least_measured(self) -> Floats:
@@ -280,8 +280,10 @@ class Screened:
 
     @cached_property
     def dry_surprise(self) -> Floats:
-        """How odd it would be for the gauge to be dry on that case: less the logarithm of how often it is when its
-        neighbours' median is like that; 0 where none reports; (n_cases, n_gauges).
+        """How odd it would be for the gauge to be dry in that case, (n_cases, n_gauges).
+
+        Less the logarithm of how often it is dry when its neighbours' median is like that; 0 where fewer than two
+        report.
         """
         depths, middle = self.cases.depths, np.nan_to_num(self.middle)
         kind = np.searchsorted(_DEPTH_CLASSES, middle)

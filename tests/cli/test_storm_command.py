@@ -58,12 +58,16 @@ def test_storm_from_another_folder_with_spaces_and_letters_of_other_alphabets(tm
     assert done.stdout == SHOWN.format(folder=folder / "output" / "storm")
     assert sorted(path.name for path in (folder / "output" / "storm").iterdir()) == [
         "basin_means.csv",
+        "edits.csv",
+        "findings.csv",
         "gauge_depths.csv",
         "gauge_totals.csv",
         "hyetographs.csv",
+        "infill_effect.csv",
         "infilled.csv",
         "record.json",
         "report.html",
+        "series_check.csv",
         "spread.csv",
         "storms.csv",
         "thiessen.geojson",
@@ -110,7 +114,7 @@ def test_windows_line_ends_mark_semicolon_and_decimal_comma(tmp_path: Path) -> N
         folder = job.parent / "output" / "storm"
         results.append({p.name: p.read_bytes() for p in folder.iterdir() if p.suffix in {".csv", ".geojson"}})
     assert results[0] == results[1]
-    assert len(results[0]) == 10
+    assert len(results[0]) == 14
 
 
 def test_json_is_one_document_that_keeps_its_schema(tmp_path: Path) -> None:

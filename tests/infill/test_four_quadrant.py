@@ -64,13 +64,17 @@ def test_a_quadrant_holds_its_first_edge_clockwise(turn: int) -> None:
     assert quadrants_from(network, 0)[1:].tolist() == [turn, (turn - 1) % 4, turn]
 
 
-def test_rounding_does_not_move_a_gauge_off_the_axis() -> None:
-    """In a plane with far origin, tenths of a metre cannot be written exactly."""
-    network = GaugeNetwork(ids=("T", "N"), x=np.array([0.3, 0.1 + 0.2]), y=np.array([0.0, 5e3]), crs="local")
-    assert network.x[0] != network.x[1]
-    assert quadrants_from(network, 0)[1] == 0
-    west = GaugeNetwork(ids=("T", "N"), x=np.array([0.1 + 0.2, 0.3]), y=np.array([0.0, 5e3]), crs="local")
-    assert quadrants_from(west, 0)[1] == 0
+@pytest.mark.parametrize("off", [-1e-10, 0.0, 1e-10])
+@pytest.mark.parametrize(("east", "north", "quadrant"), [(0, 5e3, 0), (5e3, 0, 1), (0, -5e3, 2), (-5e3, 0, 3)])
+def test_rounding_does_not_move_a_gauge_off_the_axis(east: float, north: float, quadrant: int, off: float) -> None:
+    """A ten-thousandth of a micrometre beside the axis, as it comes from coordinates far from the origin, is on it."""
+    network = GaugeNetwork(
+        ids=("T", "G"),
+        x=np.array([0.0, east + off * (north != 0)]),
+        y=np.array([0.0, north + off * (east != 0)]),
+        crs="local",
+    )
+    assert quadrants_from(network, 0)[1] == quadrant
 
 
 def test_on_the_map_quadrants_go_by_the_geodesic() -> None:

@@ -68,7 +68,8 @@ def quadrants_reporting(network: GaugeNetwork, g: int, reporting: np.ndarray) ->
     ]
     quadrant = np.floor(np.mod(azimuth, 360) / 90)
     others = np.arange(n) != g
-    return np.sum([reporting[:, others & (quadrant == q)].any(axis=1) for q in range(4)], axis=0)
+    held = np.column_stack([reporting[:, others & (quadrant == q)].any(axis=1) for q in range(4)])
+    return np.asarray(held.sum(axis=1))
 
 
 def test_gaps_over_31_days_are_left(oahu: tuple[RainRecord, GaugeNetwork]) -> None:

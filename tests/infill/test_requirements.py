@@ -68,7 +68,8 @@ def test_correlations_are_named() -> None:
     """Two hours make no relation."""
     options = InfillOptions(method="correlation-weighting")
     assert not_infilled(hourly([1, 2], [NAN, NAN], [3, 1]), options) == (
-        "fewer than 2 other gauges with a known correlation above 0 have values of their own at every step of the storm."
+        "fewer than 2 other gauges with a known correlation above 0 have values of their own at every step of the "
+        "storm."
     )
 
 

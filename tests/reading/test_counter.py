@@ -51,6 +51,11 @@ def test_rises_are_depths(tmp_path: Path) -> None:
     assert (record.totals, record.step) == ((), "1h")
 
 
+def test_rises_are_clean_numbers() -> None:
+    """12.4 less 12.2 is 0.2 to the last digit, so that what is zero is zero."""
+    assert depths([12.2, 12.4, 12.7])[0] == [0.2, 0.3]
+
+
 def test_long_files(tmp_path: Path) -> None:
     """With a column of gauges and one of depths the file is long, in any order of rows, whatever they are called."""
     text = "time,depth,gauge\n2031-05-04 10:00,3,B\n2031-05-04 09:00,1,A\n2031-05-04 10:00,4,A\n2031-05-04 09:00,3,B\n"
@@ -138,6 +143,15 @@ def test_rollover() -> None:
     agree(depths([97.0, 99.5, 1.0, 1.5], rollover=100), [2.5, 1.5, 0.5], "ooo", [])
     agree(depths([97.0, 99.5, NAN, 1.0, 1.5], rollover=100), [2.5, NAN, NAN, 0.5], "oaao", [1.5])
     agree(depths([99.5, 100.0, 0.0, 0.5], rollover=100), [0.5, 0, 0.5], "ozo", [])
+
+
+def test_a_long_counter_with_rollovers() -> None:
+    """Depths are those whose sum, wrapped at the rollover value, the counter shows, however long it runs."""
+    fell = np.random.default_rng(3).integers(0, 3, 3000) * 0.2
+    shown = np.mod(np.cumsum(fell), 250.0).round(1)
+    found, _, totals = depths(shown.tolist(), rollover=250.0, jitter=0.1)
+    np.testing.assert_allclose(found, fell[1:], atol=1e-9)
+    assert ((np.diff(shown) < 0).sum(), totals) == (2, [])
 
 
 def test_rollover_in_the_unit_of_the_file(tmp_path: Path) -> None:

@@ -1,4 +1,4 @@
-"""A screened record whose numbers are seeded: monthly depths of thirty years, with a break, gaps and what was rejected."""
+"""A screened record whose numbers are seeded: thirty years of months, with a break, gaps and rejected values."""
 
 from __future__ import annotations
 

@@ -1,18 +1,23 @@
-"""The report in a real browser: on screen, at the width of paper, and printed."""
+"""The pages in a real browser: on screen, at the width of paper, and printed."""
 
 from __future__ import annotations
 
 import shutil
 import subprocess
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
 import pytest
+from report.comparison_pieces import make_comparison, make_network
+from report.infill_pieces import make_infill_run
+from report.screen_pieces import make_monthly, make_screen_run
 from report.small_run import make_run
+from report.test_effect_figure import make_effect
 
 from basinrain.notes import Note
-from basinrain.report import render_report
+from basinrain.report import render_comparison, render_report, render_screening
 
 CHROMIUM = Path("/usr/bin/chromium")
 
@@ -22,13 +27,37 @@ pytestmark = [
 ]
 
 
-@pytest.fixture(scope="module")
-def file(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    """Return the report of two storms, with a hostile name, as a file in a folder with spaces and non-ASCII letters."""
+NAMES = ("A<script>alert(1)</script>", "B&B", "C", "D", "E", "F")
+NOTE = Note(code="far-gauge", text="Gauge E is far.")
+LONG = tuple(f"Upper Wintermill Gauge No. {k:02d}" for k in range(40))
+
+
+def _report() -> str:
+    effect = make_effect([[9.0, 20.0, 14.0], [10.0, 20.0, 15.0], [11.0, 21.0, 16.0]])
+    run = make_run(names=NAMES, storms=("Quill", "Sedge"), notes=(NOTE,))
+    all_alike = dict.fromkeys(run.methods, effect.totals["thiessen"])
+    effect = replace(effect, totals=all_alike, share_infilled=all_alike)
+    screened = make_screen_run()
+    storms = tuple(replace(result, effect=effect) for result in run.storms)
+    return render_report(replace(run, storms=storms, screening=screened.screening, edit_rows=screened.edit_rows))
+
+
+PAGES: dict[str, Callable[[], str]] = {
+    "report": _report,
+    "screening": lambda: render_screening(make_screen_run(notes=(NOTE,))),
+    "screening of forty": lambda: render_screening(make_screen_run(make_monthly(LONG))),
+    "comparison": lambda: render_comparison(make_infill_run(names=NAMES, notes=(NOTE,))),
+    "comparison of forty": lambda: render_comparison(
+        replace(make_infill_run(make_comparison(LONG, cases=200)), network=make_network(LONG))
+    ),
+}
+
+
+@pytest.fixture(scope="module", params=PAGES)
+def file(tmp_path_factory: pytest.TempPathFactory, request: pytest.FixtureRequest) -> Path:
+    """Return a page, with a hostile name, as a file in a folder with spaces and non-ASCII letters."""
     path = tmp_path_factory.mktemp("Bericht über Regen") / "report.html"
-    note = Note(code="far-gauge", text="Gauge E is far.")
-    names = ("A<script>alert(1)</script>", "B&B", "C", "D", "E", "F")
-    path.write_text(render_report(make_run(names=names, storms=("Quill", "Sedge"), notes=(note,))), encoding="utf-8")
+    path.write_text(PAGES[request.param](), encoding="utf-8")
     return path
 
 
@@ -80,6 +109,7 @@ def test_nothing_runs_over_the_side(page: tuple[Any, list[str], list[str]], widt
     assert opened.evaluate("document.documentElement.scrollWidth") <= width
 
 
+@pytest.mark.parametrize("file", ["report"], indirect=True)
 def test_figures_have_a_size_and_their_text_is_text(page: tuple[Any, list[str], list[str]]) -> None:
     """Every figure is drawn, within the page, and its labels can be found as text."""
     opened, _, _ = page
@@ -87,7 +117,7 @@ def test_figures_have_a_size_and_their_text_is_text(page: tuple[Any, list[str], 
         "[...document.querySelectorAll('figure svg')].map(s => s.getBoundingClientRect())"
         ".map(r => [r.left, r.right, r.height])"
     )
-    assert len(boxes) == 1 + 3 + 6
+    assert len(boxes) == 1 + 3 + 6 + 2
     assert all(left >= 0 and right <= 1200 and height > 80 for left, right, height in boxes)
     assert opened.locator("svg text", has_text="gauge, partly infilled").count() == 1
 
@@ -107,6 +137,7 @@ def test_labels_stay_inside_their_figures(page: tuple[Any, list[str], list[str]]
     assert outside == []
 
 
+@pytest.mark.parametrize("file", ["report"], indirect=True)
 def test_printed_pages_keep_text_and_figures(page: tuple[Any, list[str], list[str]], tmp_path: Path) -> None:
     """The PDF has a sensible number of pages, page numbers, and the words of tables and figures."""
     if shutil.which("pdftotext") is None:
@@ -116,7 +147,7 @@ def test_printed_pages_keep_text_and_figures(page: tuple[Any, list[str], list[st
     opened.pdf(path=str(path), format="A4", prefer_css_page_size=True)
     text = subprocess.run(["pdftotext", "-layout", path, "-"], capture_output=True, text=True, check=True).stdout
     pages = text.split("\f")[:-1]
-    assert 5 <= len(pages) <= 14
+    assert 5 <= len(pages) <= 18
     assert f"1/{len(pages)}" in "".join(pages[0].split())
     for words in (
         "Basin mean depth by method",

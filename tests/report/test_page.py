@@ -8,7 +8,9 @@ from dataclasses import replace
 import numpy as np
 import pytest
 import shapely
+from report.comparison_pieces import make_comparison
 from report.markup import Page, svg_texts, svg_tree
+from report.screen_pieces import make_screen_run
 from report.small_run import make_run
 
 from basinrain.basins import Basins
@@ -136,6 +138,42 @@ def test_text_stands_out_from_its_ground() -> None:
 
     for colour in ("#1d2328", "#4a545b", "#8a4300", "#164a7a"):
         assert 1.05 / (luminance(colour) + 0.05) >= 4.5
+
+
+def test_screening_and_edits_stand_in_short() -> None:
+    """Section 8: counts, the open findings, what the job decided, and its edits whole."""
+    screened = make_screen_run()
+    run = replace(make_run(), screening=screened.screening, edit_rows=screened.edit_rows)
+    text = Page(render_report(run)).text
+    places = [
+        text.index(words)
+        for words in (
+            "could not be; basinrain screen tells",
+            "Open: 2 findings",
+            "Rejected by the job: 1 finding",
+            "Accepted by the job: 1 finding",
+            "Edits of the job, all of them",
+            "9 Ground and methods Plane",
+        )
+    ]
+    assert places == sorted(places)
+
+
+def test_the_choice_of_the_infill_method_is_recorded(run: StormRun) -> None:
+    """Where leave-one-out chose, section 6 has the reason and the scores; else it speaks of neither."""
+    comparison = make_comparison()
+    html = render_report(replace(run, comparison=comparison))
+    assert "Why this infill method" in html
+    assert comparison.reason in Page(html).text
+    assert "Scores over rainfall days" in html
+    assert "Why this infill method" not in render_report(run)
+
+
+def test_shares_on_infill_stand_in_their_own_section(html: str) -> None:
+    """Section 7 begins with the share of every mean that rests on infilled values."""
+    text = Page(html).text
+    start = text.index("7 How much rests on infill Share of the basin means that rests on infilled values")
+    assert text.index("Nothing was infilled in this storm, so no infill method moves its means.") > start
 
 
 def test_a_storm_of_one_total_has_no_hyetograph_but_a_report() -> None:

@@ -32,12 +32,12 @@ class Planted:
     @property
     def start(self) -> np.datetime64:
         """Beginning of the fault."""
-        return self.record.starts[self.first]
+        return np.datetime64(self.record.starts[self.first])
 
     @property
     def end(self) -> np.datetime64:
         """End of the fault."""
-        return self.record.ends[self.stop - 1]
+        return np.datetime64(self.record.ends[self.stop - 1])
 
 
 def drawn_network(rng: Generator, n: int = N_GAUGES) -> GaugeNetwork:
@@ -108,8 +108,8 @@ def record_of(network: GaugeNetwork, depths: Floats, seconds: int) -> RainRecord
     return RainRecord.from_depths(network.ids, ends - np.timedelta64(seconds, "s"), ends, depths, step=step)
 
 
-Fault = Callable[[Generator, Floats, int], tuple[int, int]]
-"""Changes the depths of one gauge in place, and returns where."""
+Fault = Callable[[Generator, Floats, int, int], tuple[int, int]]
+"""Changes the depths of one gauge in place, given its column and the steps a day, and returns where."""
 
 
 def _gaps(rng: Generator, depths: Floats, share: float, length: int) -> Floats:
@@ -122,7 +122,7 @@ def _gaps(rng: Generator, depths: Floats, share: float, length: int) -> Floats:
 
 
 @cache
-def clean_days(seed: int, years: int = 6) -> tuple[GaugeNetwork, Floats]:
+def clean_days(seed: int, years: int = 5) -> tuple[GaugeNetwork, Floats]:
     """Return a network and clean daily depths: fronts from October to May, showers in summer, two percent missing."""
     rng = np.random.default_rng([seed, 1])
     network = drawn_network(rng)
@@ -151,56 +151,54 @@ def clean_hours(seed: int, days: int = 365) -> tuple[GaugeNetwork, Floats]:
 
 
 def _wet_places(depths: Floats, gauge: int, length: int, least: float) -> npt.NDArray[np.int64]:
-    """Return the first steps of stretches over which the mean of the gauges is at least so much and the gauge reports."""
+    """Return where stretches begin with so much or more by the mean of the gauges, over which the gauge reports."""
     middle = np.nan_to_num(np.nanmean(depths, axis=1))
     through = np.concatenate([[0.0], np.cumsum(middle)])
     silent = np.concatenate([[0], np.cumsum(np.isnan(depths[:, gauge]))])
-    return np.flatnonzero(
-        (through[length:] - through[:-length] >= least) & (silent[length:] == silent[:-length])
-    )
+    return np.flatnonzero((through[length:] - through[:-length] >= least) & (silent[length:] == silent[:-length]))
 
 
-def _decimal_point(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """A wet day's depth, ten times too great."""
+def _decimal_point(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Make a wet day's depth ten times too great."""
     first = int(rng.choice(np.flatnonzero(depths[:, g] >= 8)))
     depths[first, g] *= 10
     return first, first + 1
 
 
-def _impossible(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """A step with a depth that no rain reaches."""
+def _impossible(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Give a step a depth that no rain reaches."""
     first = int(rng.integers(len(depths)))
-    depths[first, g] = rng.uniform(450, 900) if len(depths) % 24 == 0 else rng.uniform(1900, 4000)
+    depths[first, g] = rng.uniform(450, 900) if per == 24 else rng.uniform(1900, 4000)
     return first, first + 1
 
 
-def _zero_day(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """A zero on a day on which every gauge has 1 mm or more and all together 15 mm or more on average."""
+def _zero_day(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Put a zero on a day on which every gauge has 1 mm or more and all together 15 mm or more on average."""
     places = _wet_places(depths, g, 1, 15.0)
     first = int(rng.choice(places[np.nanmin(depths[places], axis=1) >= 1]))
     depths[first, g] = 0
     return first, first + 1
 
 
-def _zeros(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """Zeros over 30 to 90 days with 50 mm or more at the gauges' mean."""
-    length = int(rng.integers(30, 91)) * (24 if len(depths) % 24 == 0 else 1)
+def _zeros(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Put zeros over 30 to 90 days with 50 mm or more at the gauges' mean."""
+    length = int(rng.integers(30, 91)) * per
     first = int(rng.choice(_wet_places(depths, g, length, 50.0)))
     depths[first : first + length, g] = 0
     return first, first + length
 
 
-def _stuck(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """One of the gauge's own wet values at 8 to 30 days, or 18 to 72 hours, on end."""
-    length = int(rng.integers(18, 73) if len(depths) % 24 == 0 else rng.integers(8, 31))
+def _stuck(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Repeat one of the gauge's own wet values over 8 to 30 days, or 18 to 72 hours, on end."""
+    length = int(rng.integers(18, 73) if per == 24 else rng.integers(8, 31))
     first = int(rng.integers(len(depths) - length))
     wet = depths[depths[:, g] > 0, g]
     depths[first : first + length, g] = rng.choice(wet)
     return first, first + length
 
 
-def _code(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """A code of a missing value over two to ten steps, in mm, tenths of mm or inches."""
+def _code(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Put a code of a missing value over two to ten steps, in mm, tenths of mm or inches."""
     length = int(rng.integers(2, 11))
     first = int(rng.integers(len(depths) - length))
     depths[first : first + length, g] = float(rng.choice([999.0, 9999.0, 999.9, 777.0, 888.8])) * float(
@@ -210,8 +208,7 @@ def _code(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
 
 
 def _unit(factor: float, months: tuple[int, int]) -> Fault:
-    def plant(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-        per = 24 if len(depths) % 24 == 0 else 1
+    def plant(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
         length = min(len(depths), 30 * int(rng.integers(months[0], months[1] + 1)) * per)
         first = int(rng.integers(len(depths) - length + 1))
         depths[first : first + length, g] *= factor
@@ -221,8 +218,7 @@ def _unit(factor: float, months: tuple[int, int]) -> Fault:
 
 
 def _shift(steps: tuple[int, ...], days: int) -> Fault:
-    def plant(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-        per = 24 if len(depths) % 24 == 0 else 1
+    def plant(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
         length = min(len(depths), days * per)
         first = int(rng.integers(len(depths) - length + 1))
         by = int(rng.choice(steps))
@@ -232,9 +228,9 @@ def _shift(steps: tuple[int, ...], days: int) -> Fault:
     return plant
 
 
-def _copied(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """Thirty days, with eight wet steps or more, that stand a second time later on."""
-    length = 30 * (24 if len(depths) % 24 == 0 else 1)
+def _copied(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Copy thirty days, with eight wet steps or more, to a later time."""
+    length = 30 * per
     wet = np.concatenate([[0], np.cumsum(depths[:, g] > 0)])
     silent = np.concatenate([[0], np.cumsum(np.isnan(depths[:, g]))])
     n = len(depths) - 2 * length
@@ -245,17 +241,17 @@ def _copied(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
     return first, first + length
 
 
-def _twin(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """Sixty to 180 days of another gauge's record."""
-    length = int(rng.integers(60, 181)) * (24 if len(depths) % 24 == 0 else 1)
+def _twin(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Put sixty to 180 days of another gauge's record in the place of the gauge's own."""
+    length = int(rng.integers(60, 181)) * per
     first = int(rng.integers(len(depths) - length))
     other = int(rng.choice([j for j in range(depths.shape[1]) if j != g]))
     depths[first : first + length, g] = depths[first : first + length, other]
     return first, first + length
 
 
-def _accumulated(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """Zeros or gaps over two to six days with 20 mm or more at the gauges' mean, then their sum."""
+def _accumulated(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Put zeros or gaps over two to six days with 20 mm or more at the gauges' mean, then their sum."""
     length = int(rng.integers(3, 8))
     places = _wet_places(depths[:-1], g, length - 1, 20.0)
     first = int(rng.choice(places[~np.isnan(depths[places + length - 1, g])]))
@@ -265,8 +261,8 @@ def _accumulated(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
     return first, first + length
 
 
-def _mondays(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """Saturdays and Sundays are never read and stand in Monday's depth."""
+def _mondays(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Add Saturdays and Sundays to Monday's depth and make them zero."""
     # The first of January 2021 was a Friday.
     for saturday in range(1, len(depths) - 2, 7):
         depths[saturday + 2, g] += np.nan_to_num(depths[saturday : saturday + 2, g]).sum()
@@ -274,8 +270,8 @@ def _mondays(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
     return 0, len(depths)
 
 
-def _other_hours(rng: Generator, depths: Floats, g: int) -> tuple[int, int]:
-    """Days that end 8 to 16 hours early: part of each day's rain stands on the next date."""
+def _other_hours(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Move part of every day's rain, a third to two thirds on average, to the next date."""
     share = rng.uniform(1 / 3, 2 / 3)
     moved = np.nan_to_num(depths[:-1, g]) * share * rng.choice([0.0, 0.5, 1.0, 1.5], len(depths) - 1).clip(0, 1 / share)
     depths[:-1, g] -= moved
@@ -315,13 +311,12 @@ KINDS = (
 )
 
 
-def planted(kind: Kind, scale: str, seed: int, *, records: int = 20) -> Planted:
-    """Return one of ``records`` clean records with a fault of this kind at a place and gauge of the seed's choice."""
+def planted(kind: Kind, scale: str, seed: int) -> Planted:
+    """Return one of twenty clean records with a fault of this kind at a place and gauge of the seed's choice."""
     rng = np.random.default_rng([seed, 3, sum(kind.name.encode())])
-    network, clean = clean_days(seed % records) if scale == "day" else clean_hours(seed % records)
+    network, clean = clean_days(seed % 20) if scale == "day" else clean_hours(seed % 20)
     depths = clean.copy()
     g = int(rng.integers(len(network)))
-    first, stop = kind.plant(rng, depths, g)
-    return Planted(
-        record_of(network, depths, DAY if scale == "day" else 3600), network, network.ids[g], first, stop
-    )
+    seconds = DAY if scale == "day" else 3600
+    first, stop = kind.plant(rng, depths, g, DAY // seconds)
+    return Planted(record_of(network, depths, seconds), network, network.ids[g], first, stop)

@@ -179,6 +179,14 @@ def test_too_few_years() -> None:
     assert len(none.years) == 0
 
 
+def test_two_years() -> None:
+    """A break that is given between the only two years has slopes, and nothing to judge them by."""
+    curve = double_mass([80.0, 60.0], [100.0, 100.0], [2001, 2002], break_after=2001)
+    assert (curve.slopes, curve.significant) == ((0.8, 0.6), False)
+    assert curve.ratio == pytest.approx(0.75)
+    assert np.isnan([curve.f, curve.significance]).all()
+
+
 def test_years_that_are_left_out() -> None:
     """A year without a total, without a reference or with a dry one takes no part."""
     totals, reference = np.full(14, 90.0), np.full(14, 100.0)

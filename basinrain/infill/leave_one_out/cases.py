@@ -120,7 +120,7 @@ def cases_of(record: RainRecord, days: Days) -> tuple[Cases, bool]:
         ends=days.ends[wet],
         months=days.months[wet],
         part=parts_of(len(totals))[wet],
-        week=_weeks(days.ends[wet], days.ends[0]) if by_day else np.arange(len(wet)),
+        week=_weeks(days.ends[wet], record.ends[0]) if by_day else np.arange(len(wet)),
         depth=lambda chunk: totals[wet[chunk]],
         n_gauges=totals.shape[1],
     )
@@ -164,7 +164,7 @@ def steps_of_cases(record: RainRecord, days: Days, cases: Cases) -> Cases:
         ends=record.ends[rows],
         months=month_of(record.starts[rows], record.ends[rows]),
         part=parts_of(len(days.ends))[day[rows]],
-        week=_weeks(record.ends[rows], days.ends[0]),
+        week=_weeks(record.ends[rows], record.ends[0]),
         depth=depth,
         n_gauges=record.depth.shape[1],
     )

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 from types import MappingProxyType
-from typing import Final
+from typing import Final, NoReturn
 
 import numpy as np
 import numpy.typing as npt
@@ -13,6 +13,7 @@ import numpy.typing as npt
 from basinrain.errors import BasinRainError, DataError, MethodError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.days import day_totals
+from basinrain.infill.donors import require_elevations
 from basinrain.infill.leave_one_out.bootstrap import differences_to_best
 from basinrain.infill.leave_one_out.candidates import candidates_of
 from basinrain.infill.leave_one_out.cases import Cases, cases_of, steps_of_cases
@@ -80,7 +81,8 @@ def compare_infill(
     Raises
     ------
     DataError
-        The columns are not the network's gauges, there is one gauge only, or no gauge can be estimated on a wet day.
+        The columns are not the network's gauges, there is one gauge only, an elevation limit is given and a gauge that
+        reports has no elevation, or no gauge can be estimated on a wet day.
 
     Notes
     -----
@@ -114,8 +116,12 @@ def compare_infill(
     cases, finer = cases_of(record, days)
     fit = CrossFit(record, network, days, ratios)
     given = candidates_of(options) if candidates is None else tuple(candidates)
+    if any(candidate.options.elevation_limit is not None for candidate in given):
+        require_elevations(network, fit.reporting)
     runners, skipped, able = _able(given, fit, cases, progress or (lambda _: None))
     result = _scored(runners, cases, network)
+    if not len(result.compared):
+        _no_case(cases, skipped, by=f" by each of {', '.join(runner.label for runner in runners)}")
     scores = list(result.scores)
     if finer:
         scores += _scored(runners, steps_of_cases(record, days, cases), network).scores
@@ -141,6 +147,7 @@ def compare_infill(
         notes=notes_of(
             cases,
             network,
+            chosen=next(score for score in scores if score.candidate == labels[chosen]),
             n=n,
             left_out=able - n,
             learned=any(runner.options.chosen_method.needs_relations for runner in runners),
@@ -248,17 +255,16 @@ def _too_few(method: InfillMethod, count: int, most: int, *, ratios: bool) -> st
     return "; ".join(why)
 
 
-def _no_case(cases: Cases, skipped: dict[str, str]) -> None:
+def _no_case(cases: Cases, skipped: dict[str, str], *, by: str = "") -> NoReturn:
     what = "day" if cases.scale == "day" else "step"
     why = "".join(f"; {label}: {reason}" for label, reason in skipped.items())
+    found = f"no gauge that could be estimated from others{by} on any of {len(cases):,} wet {what}s{why}"
     raise DataError(
         Problem(
             item="leave-one-out comparison",
-            found=f"no gauge that another method's donors could estimate on one of {len(cases)} wet {what}s{why}"
-            if len(cases)
-            else f"no wet {what}",
+            found=found if len(cases) else f"no wet {what}",
             expected=f"wet {what}s on which several gauges have values",
-            remedy="give a longer record, loosen radius or min_donors, or name the infill method",
+            remedy="give a longer record, loosen radius, elevation_limit or min_donors, or name the infill method",
         )
     )
 

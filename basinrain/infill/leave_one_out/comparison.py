@@ -197,6 +197,10 @@ class Comparison:
         scale
             ``"day"`` or ``"step"``; empty for the scale of the score.
 
+        Returns
+        -------
+        Score
+
         Raises
         ------
         KeyError

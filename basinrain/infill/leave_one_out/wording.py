@@ -11,12 +11,15 @@ from basinrain.gauges import GaugeNetwork
 from basinrain.infill.leave_one_out.cases import WET_DAY, WET_STEP, Cases
 from basinrain.infill.leave_one_out.comparison import Difference, Score
 from basinrain.infill.leave_one_out.cross_fit import PARTS
+from basinrain.infill.leave_one_out.scoring import TOP
 from basinrain.notes import Note
 
-__all__ = ["FEW_CASES", "notes_of", "reason_of"]
+__all__ = ["FEW_CASES", "FLAT", "notes_of", "reason_of"]
 
 FEW_CASES: Final = 20
 """Below this a comparison says that its cases are few."""
+FLAT: Final = 0.8
+"""Where the largest estimates are a smaller part than this of the largest depths, storms are said to be flattened."""
 
 
 def reason_of(scores: Sequence[Score], differences: Sequence[Difference], chosen: str, n: int) -> str:
@@ -78,6 +81,7 @@ def notes_of(
     cases: Cases,
     network: GaugeNetwork,
     *,
+    chosen: Score,
     n: int,
     left_out: int,
     learned: bool,
@@ -91,6 +95,8 @@ def notes_of(
     ----------
     cases, network
         What was compared.
+    chosen
+        The score of the method that is taken, over all gauges.
     n, left_out
         Number of cases, and of values that some candidate but not all could estimate.
     learned
@@ -101,8 +107,9 @@ def notes_of(
     Returns
     -------
     tuple of Note
-        ``gauge-sites-are-not-the-basin``, ``cases-compared``, and where they apply ``few-cases``, ``cases-left-out``,
-        ``learned-without-the-case``, ``normals-as-given``, ``normals-see-the-case``.
+        ``gauge-sites-are-not-the-basin``, ``cases-compared``, and where they apply ``few-cases``,
+        ``chosen-flattens-storms``, ``cases-left-out``, ``learned-without-the-case``, ``normals-as-given``,
+        ``normals-see-the-case``.
     """
     notes = [
         Note(
@@ -120,6 +127,15 @@ def notes_of(
                 code="few-cases",
                 text=f"The infill methods were compared on {n} case{'' if n == 1 else 's'} only: another storm may "
                 "rank them otherwise.",
+            )
+        )
+    if chosen.top20_ratio < FLAT:
+        notes.append(
+            Note(
+                code="chosen-flattens-storms",
+                text=f"{chosen.candidate} is taken for its error, but flattens storms: its {TOP} largest estimates are "
+                f"{100 * chosen.top20_ratio:.0f} % of the {TOP} largest depths observed, and its bias is "
+                f"{chosen.bias:.2f} mm a case. The scores list methods that keep them better.",
             )
         )
     if left_out:

@@ -10,7 +10,7 @@ from scipy.stats import binom
 
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
-from basinrain.screening.screened import DAY, DRY, WET_DAY, Floats, Ints, Screened, runs_of
+from basinrain.screening.screened import DAY, DRY, WET_DAY, Floats, Ints, Screened
 
 __all__ = ["unflagged_accumulations"]
 
@@ -24,7 +24,7 @@ MISSED_DAY: Final = 5.0
 """mm that they had on one of these days, each of them some: rain that the gauge cannot have missed."""
 
 SUM_FITS: Final = 2.0
-"""Standard deviations of root depths by which the reading may differ from the neighbours' sum over the whole stretch."""
+"""Standard deviations of root depths by which the reading may differ from the neighbours' sum over the stretch."""
 
 DAY_OFF: Final = 1.5
 """Standard deviations of root depths by which the reading exceeds the neighbours' own of its day."""
@@ -37,6 +37,9 @@ WEEKDAY_CHANCE: Final = 1e-6
 
 WEEKDAY_TIMES: Final = 2.5
 """Times the dry readings of the other weekdays that a habit must have: a weekly cycle of rain is not one."""
+
+ADDED: Final = 1.3
+"""Times the neighbours' depth on the day after, from which the days before are in it."""
 
 WEEKDAY_LEAST: Final = 20
 """Wet days of the neighbours on a weekday that are needed."""
@@ -68,8 +71,8 @@ def unflagged_accumulations(view: Screened) -> Iterator[Finding]:
                 gauge=view.network.ids[g],
                 start=start,
                 end=end,
-                evidence=f"{reading:.1f} mm after {days} day{'s' if days > 1 else ''} {what}; the neighbours' medians, in "
-                f"this gauge's climate, are {missed:.1f} mm over {'those days' if days > 1 else 'that day'} and "
+                evidence=f"{reading:.1f} mm after {days} day{'s' if days > 1 else ''} {what}; the neighbours' medians, "
+                f"in this gauge's climate, are {missed:.1f} mm over {'those days' if days > 1 else 'that day'} and "
                 f"{own_day:.1f} mm on the day itself. Neighbours as measured, over all of it: "
                 f"{view.beside(g, first, stop)}.",
                 action="Declare the stretch accumulated, so that its total is spread; or reject its days without rain.",
@@ -86,38 +89,36 @@ def unflagged_accumulations(view: Screened) -> Iterator[Finding]:
 
 
 def _stretches(view: Screened, g: int) -> Iterator[tuple[int, int, float, float]]:
-    """Yield first and stop of stretches that end with their reading, and the neighbours' depths before and on that day."""
-    depths, middle = view.cases.depths[:, g], np.nan_to_num(view.middle[:, g])
-    for first, last in runs_of(~(depths > DRY)):
-        if last >= len(depths):
-            continue
-        # Of a long dry or silent run only its end can have run into the reading; it begins with the neighbours' rain.
-        first = max(first, last - LONGEST)
-        wet = np.flatnonzero(middle[first:last] >= WET_DAY)
-        if not len(wet):
-            continue
-        reading, own_day = float(depths[last]), float(middle[last])
+    """Yield first and stop of stretches that end with their reading, the neighbours' depth before it and on its day."""
+    depths, middle, scatter = view.cases.depths[:, g], np.nan_to_num(view.middle[:, g]), view.scatter[:, g]
+    none = ~(depths > DRY)
+    with np.errstate(invalid="ignore"):
+        great = np.sqrt(depths) - np.sqrt(middle) >= DAY_OFF * scatter
+    # Where the run of days without rain or reading began that ends before each day.
+    days = np.arange(len(depths))
+    began = np.maximum.accumulate(np.where(none, -1, days))
+    for last in np.flatnonzero(great[1:] & none[:-1]).tolist():
+        reading, own_day = float(depths[last + 1]), float(middle[last + 1])
+        first = max(int(began[last]) + 1, last + 1 - LONGEST)
         # The stretch that fits: days are added backwards until the sum is nearest to the reading.
-        sums = np.cumsum(middle[first:last][::-1])
-        k = int(np.argmin(np.abs(np.log((sums + own_day + 0.1) / reading)))) + 1
-        begin = last - k
-        missed, scatter = float(sums[k - 1]), float(view.scatter[last, g])
-        if missed < MISSED or np.sqrt(reading) - np.sqrt(own_day) < DAY_OFF * scatter:
-            continue
-        if not ((middle[begin:last] >= MISSED_DAY) & (view.least_measured[begin:last, g] >= WET_DAY)).any():
-            continue
-        if abs(np.sqrt(reading) - np.sqrt(missed + own_day)) > SUM_FITS * scatter:
-            continue
-        dry = begin + np.flatnonzero(np.isfinite(depths[begin:last]))
-        if len(dry) and view.dry_surprise[dry, g].sum() < ODDS:
-            continue
-        yield begin, last + 1, missed, own_day
+        sums = np.cumsum(middle[first : last + 1][::-1])
+        k = int(np.argmin(np.abs(sums + own_day - reading)))
+        begin, missed, spread = last - k, float(sums[k]), float(scatter[last + 1])
+        before = slice(begin, last + 1)
+        dry = begin + np.flatnonzero(np.isfinite(depths[before]))
+        if (
+            missed >= MISSED
+            and abs(np.sqrt(reading) - np.sqrt(missed + own_day)) <= SUM_FITS * spread
+            and ((middle[before] >= MISSED_DAY) & (view.least_measured[before, g] >= WET_DAY)).any()
+            and (not len(dry) or view.dry_surprise[dry, g].sum() >= ODDS)
+        ):
+            yield begin, last + 2, missed, own_day
 
 
 def _weekdays(view: Screened, g: int) -> Finding | None:
     """Return the weekdays on which the gauge is seldom read, if there are such."""
     cases = view.cases
-    if (cases.seconds or 0) != DAY:
+    if cases.seconds != DAY:
         return None
     with np.errstate(invalid="ignore"):
         wet = view.middle[:, g] >= 3 * WET_DAY
@@ -142,15 +143,16 @@ def _weekdays(view: Screened, g: int) -> Finding | None:
     listed = ", ".join(f"{_WEEK[day]} {dry[day]} of {total[day]}" for day in habits)
     rest = np.array([day for day in range(7) if day not in habits])
     after = _ratio(view, g, weekday, (habits[-1] + 1) % 7)
+    days = ", ".join(_WEEK[day] for day in habits)
     return Finding(
         check="unflagged-accumulation",
         gauge=view.network.ids[g],
         severity="doubtful",
-        evidence=f"It has no rain or no reading on most days on which its neighbours were wet, by weekday: {listed}; on "
-        f"the other weekdays {int(dry[rest].sum())} of {int(total[rest].sum())}. The day after has {after:.1f} times the "
-        "neighbours' depth.",
-        action=f"Ask whether the gauge is read on {_WEEK[habits[0]]}; if not, declare the days as accumulated into the next "
-        "reading.",
+        evidence="It has no rain or no reading on days on which its neighbours were wet, by the weekday of the day's "
+        f"middle: {listed}; on the other weekdays {int(dry[rest].sum())} of {int(total[rest].sum())}. The day after "
+        f"has {after:.1f} times the neighbours' depth.",
+        action=f"Ask whether it is read on {days}; if not, declare those days "
+        + ("accumulated into the next reading." if after >= ADDED else "missing."),
         others=view.ids(view.neighbours[g]),
     )
 

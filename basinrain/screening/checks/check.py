@@ -84,8 +84,8 @@ def needs_cases(least: int) -> Need:
 
     def need(view: Screened) -> str:
         n = len(view.cases.ends)
-        unit = "rainfall day" if view.cases.scale == "day" or view.seconds == DAY else "step"
-        return "" if n >= least else f"the record has {n} whole {unit}{'' if n == 1 else 's'}; it takes {least} or more"
+        have = f"the record has {n} whole {view.cases.unit}{'' if n == 1 else 's'}"
+        return "" if n >= least else f"{have}; it takes {least} or more"
 
     return need
 

@@ -28,6 +28,9 @@ SHARED_SURPRISE: Final = 30.0
 LEAST_SHARED: Final = 8
 """Equal wet values on end that two gauges must have."""
 
+WHOLE: Final = 0.9
+"""Share of a gauge's wet values that are the other's, from which the whole record is."""
+
 _MIX: Final = (np.uint64(0x9E3779B97F4A7C15), np.uint64(0xBF58476D1CE4E5B9), np.uint64(0x94D049BB133111EB))
 
 
@@ -73,20 +76,22 @@ def _surprise(values: npt.NDArray[np.generic]) -> Floats:
     return surprise
 
 
-def _words(*parts: npt.NDArray[np.uint64]) -> npt.NDArray[np.uint64]:
-    """Return one number for every ``WORD`` values on end; equal words have equal numbers."""
-    letters = np.zeros(len(parts[0]), dtype=np.uint64)
+def _words(letters: npt.NDArray[np.uint64], before: npt.NDArray[np.uint64]) -> npt.NDArray[np.uint64]:
+    """Return one number for every ``WORD`` letters on end; equal words have equal numbers.
+
+    What lies ``before`` a letter counts too, except before the first of the word.
+    """
+    n = len(letters) - WORD + 1
     with np.errstate(over="ignore"):
-        for part in parts:
-            letters = _mixed(letters * _MIX[0] + part)
-        n = len(letters) - WORD + 1
-        words = np.zeros(n, dtype=np.uint64)
-        for k in range(WORD):
-            words = _mixed(words * _MIX[0] + letters[k : k + n])
+        joined = _mixed(_mixed(letters) * _MIX[0] + before)
+        words = _mixed(letters[:n])
+        for k in range(1, WORD):
+            words = _mixed(words * _MIX[0] + joined[k : k + n])
     return words
 
 
 def _mixed(numbers: npt.NDArray[np.uint64]) -> npt.NDArray[np.uint64]:
+    """Return numbers in which every bit depends on every bit (a finalizer of the kind that hash functions use)."""
     mixed = (numbers ^ (numbers >> np.uint64(30))) * _MIX[1]
     mixed = (mixed ^ (mixed >> np.uint64(27))) * _MIX[2]
     return mixed ^ (mixed >> np.uint64(31))
@@ -99,14 +104,13 @@ def duplicated_stretches(view: Screened) -> Iterator[Finding]:
             wet = _wet(sheet.depths[:, column])
             if wet is None:
                 continue
-            for first, second, n in _repeats(wet):
-                yield _repeat(view, sheet, g, wet, first, second, n)
+            for copy in _repeats(wet):
+                yield _repeat(view, sheet, g, wet, copy)
 
 
 def _repeats(wet: _Wet) -> list[tuple[int, int, int]]:
     """Return places among the wet values of stretches that stand twice, with their lengths."""
-    # A word's first gap lies before it and does not belong to it.
-    words = _words(wet.value, np.roll(wet.gap, -1))
+    words = _words(wet.value, wet.gap)
     order = np.argsort(words, kind="stable")
     same = words[order[1:]] == words[order[:-1]]
     earlier, later = order[:-1][same], order[1:][same]
@@ -136,8 +140,9 @@ def _apart(found: list[tuple[int, int, int]]) -> list[tuple[int, int, int]]:
     return kept
 
 
-def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, first: int, second: int, n: int) -> Finding:
+def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, copy: tuple[int, int, int]) -> Finding:
     gauge = view.network.ids[g]
+    first, second, n = copy
     start, end = sheet.starts[wet.at[second]], sheet.ends[wet.at[second + n - 1]]
     origin, until = sheet.starts[wet.at[first]], sheet.ends[wet.at[first + n - 1]]
     return Finding(
@@ -146,7 +151,7 @@ def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, first: int, second:
         start=start,
         end=end,
         severity="erroneous",
-        evidence=f"{n} wet {sheet.scale}s with the dry ones between them are, value by value, those from {origin} to "
+        evidence=f"{n} wet {sheet.unit}s with the dry ones between them are, value by value, those from {origin} to "
         f"{until}.",
         action="Find out which of the two stretches is the original, and reject the other.",
         others=view.ids(view.neighbours[g][:4]),
@@ -164,23 +169,30 @@ def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, first: int, second:
 def shared_records(view: Screened) -> Iterator[Finding]:
     """Yield pairs of gauges that have the same wet values at the same times over a stretch."""
     for sheet in view.sheets:
-        wets = {
-            column: wet for column in range(len(sheet.gauges)) if (wet := _wet(sheet.depths[:, column])) is not None
-        }
+        # In the order of ids, so that of three gauges with one record the same pairs are named in any order of columns.
+        by_id = sorted(range(len(sheet.gauges)), key=lambda column: view.network.ids[sheet.gauges[column]])
+        wets = {rank: wet for rank, column in enumerate(by_id) if (wet := _wet(sheet.depths[:, column])) is not None}
         if len(wets) < 2:
             continue
-        words = {column: _words(wet.value, wet.at.astype(np.uint64)) for column, wet in wets.items()}
+        words = {rank: _words(_dated(wet), wet.gap) for rank, wet in wets.items()}
         word = np.concatenate(list(words.values()))
-        column = np.repeat(list(words), [len(w) for w in words.values()])
+        rank = np.repeat(list(words), [len(w) for w in words.values()])
         place = np.concatenate([np.arange(len(w)) for w in words.values()])
-        order = np.lexsort((column, word))
+        order = np.lexsort((rank, word))
         same = word[order[1:]] == word[order[:-1]]
         pairs: dict[tuple[int, int], list[int]] = {}
         for k in np.flatnonzero(same).tolist():
             one, other = order[k], order[k + 1]
-            pairs.setdefault((int(column[one]), int(column[other])), []).append(int(place[one]))
+            pairs.setdefault((int(rank[one]), int(rank[other])), []).append(int(place[one]))
         for (one, other), begins in pairs.items():
-            yield from _shared(view, sheet, wets[one], (one, other), np.sort(begins))
+            pair = int(sheet.gauges[by_id[one]]), int(sheet.gauges[by_id[other]])
+            yield from _shared(view, sheet, wets[one], pair, np.sort(begins))
+
+
+def _dated(wet: _Wet) -> npt.NDArray[np.uint64]:
+    """Return the wet values with their time in them."""
+    with np.errstate(over="ignore"):
+        return _mixed(wet.value) + wet.at.astype(np.uint64) * _MIX[0]
 
 
 def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begins: Ints) -> Iterator[Finding]:
@@ -192,9 +204,9 @@ def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begi
             stretches.append((first, n))
     if not stretches:
         return
-    a, b = sorted((int(sheet.gauges[pair[0]]), int(sheet.gauges[pair[1]])), key=lambda g: view.network.ids[g])
+    a, b = pair
     equal = sum(n for _, n in stretches)
-    whole = equal >= _WHOLE * len(wet.at)
+    whole = equal >= WHOLE * len(wet.at)
     never = np.datetime64("NaT", "s")
     for first, n in stretches[:1] if whole else stretches:
         start = never if whole else sheet.starts[wet.at[first]]
@@ -205,7 +217,7 @@ def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begi
             start=start,
             end=end,
             severity="erroneous",
-            evidence=f"{equal if whole else n} wet {sheet.scale}s on end are, value by value, those of "
+            evidence=f"{equal if whole else n} wet {sheet.unit}s on end are, value by value, those of "
             f"{view.network.ids[a]}, {view.distances[a, b] / 1000:.1f} km away.",
             action="Find out whose record it is, and exclude or reject the other's: one rain must not count twice.",
             others=(view.network.ids[a],),
@@ -220,6 +232,3 @@ def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begi
                 by=SUGGESTED,
             ),
         )
-
-
-_WHOLE: Final = 0.9

@@ -11,7 +11,7 @@ import numpy as np
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.envelope import envelope_depth, world_depth, world_record
 from basinrain.screening.findings import Finding, Severity
-from basinrain.screening.screened import DAY, Bools, Floats, Screened, Sheet, runs_of
+from basinrain.screening.screened import DAY, Bools, Floats, Ints, Screened, Sheet, runs_of
 
 __all__ = ["NAME", "greatest_depths_found"]
 
@@ -21,8 +21,8 @@ HOURS: Final = (1.0, 3.0, 6.0, 12.0, 24.0, 72.0, 720.0)
 """Durations of windows: the usual ones of depth-duration tables, a month at the end for slow faults."""
 
 DOUBTFUL_SHARE: Final = 1 / 3
-"""Share of the world's envelope above which a depth is doubtful where the user gives no limit: 134 mm in an hour, 608 mm
-in a day. Most regions never see it; where storms do, the user gives the region's own limit."""
+"""Share of the world's envelope above which a depth is doubtful where the user gives no limit: 134 mm in an hour, 608
+mm in a day. Most regions never see it; where storms do, the user gives the region's own limit."""
 
 
 @dataclass(frozen=True)
@@ -42,7 +42,7 @@ class _Window:
 
 
 def greatest_depths_found(view: Screened) -> Iterator[Finding]:
-    """Yield depths over the world's greatest for their duration, over the user's limit, or over a third of the world's."""
+    """Yield depths over the world's greatest for their duration, the user's limit, or a third of the world's."""
     for sheet in view.sheets:
         windows: dict[int, list[_Window]] = {}
         depths = np.nan_to_num(sheet.depths)
@@ -71,8 +71,8 @@ def _durations(sheet: Sheet) -> list[tuple[int, float]]:
     return [(k, hours) for k, hours in sorted(lengths.items()) if k <= len(sheet.ends)]
 
 
-def _may_exceed(depths: Floats, k: int, limit: float) -> np.ndarray[tuple[int], np.dtype[np.int64]]:
-    """Return the columns in which some window of ``k`` steps could reach the limit: it fits into two blocks of ``k``."""
+def _may_exceed(depths: Floats, k: int, limit: float) -> Ints:
+    """Return the columns in which a window of ``k`` steps may exceed the limit: it fits into two blocks of ``k``."""
     if k == 1:
         return np.flatnonzero(depths.max(axis=0) > limit)
     blocks = np.add.reduceat(depths, np.arange(0, len(depths), k), axis=0)
@@ -109,11 +109,11 @@ def _findings(view: Screened, sheet: Sheet, column: int, windows: list[_Window])
             kept.append(window)
     for first, stop in runs_of(taken):
         top = max((w for w in kept if first <= w.first < stop), key=lambda w: w.rank)
-        yield _finding(view, sheet, g, top, first, stop)
+        yield _finding(view, sheet, g, top, (first, stop))
 
 
-def _finding(view: Screened, sheet: Sheet, g: int, top: _Window, first: int, stop: int) -> Finding:
-    start, end = sheet.starts[first], sheet.ends[stop - 1]
+def _finding(view: Screened, sheet: Sheet, g: int, top: _Window, steps: tuple[int, int]) -> Finding:
+    start, end = sheet.starts[steps[0]], sheet.ends[steps[1] - 1]
     when = np.datetime_as_string(sheet.ends[top.stop - 1], unit="m")
     world = top.severity == "erroneous"
     record = world_record(top.hours)

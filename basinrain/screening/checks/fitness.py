@@ -109,8 +109,8 @@ def cold_seasons(view: Screened) -> Iterator[Finding]:
             check="cold-season",
             gauge=gauge,
             severity="remark",
-            evidence=f"It is not heated and has values in {names}: {in_cold:.0f} of {total:.0f} mm ({share:.0f} %), on "
-            f"{wet_cold} of {wet} wet {'days' if view.cases.scale == 'day' or view.seconds == DAY else 'steps'}.{beside}",
+            evidence=f"It is not heated and has values in {names}: {in_cold:.0f} of {total:.0f} mm ({share:.0f} %), "
+            f"on {wet_cold} of {wet} wet {view.cases.unit}s.{beside}",
             action="Snow may be caught too little and too late there; leave the gauge out of storms in those months.",
             others=view.ids(view.neighbours[g]),
         )

@@ -17,8 +17,8 @@ LEAST_REPORTING: Final = 3
 """Neighbours that must report: with two, nobody can tell which of three is wrong."""
 
 OUTLYING: Final = 4.5
-"""Standard deviations, on root depths, beyond which a day is far from its neighbours. Root depths of neighbours are near
-enough to normal (common practice); on clean records (docs/verification.md) a lower limit blames showers."""
+"""Standard deviations, on root depths, beyond which a day is far from its neighbours. Root depths of neighbours are
+near enough to normal (common practice); on clean records (docs/verification.md) a lower limit blames showers."""
 
 TIMES_GREATEST: Final = 2.0
 """Times the greatest neighbour, in the gauge's climate, that the depth must be: a storm seldom falls into one gauge."""
@@ -95,8 +95,8 @@ def dry_among_wet(view: Screened) -> Iterator[Finding]:
                 start=start,
                 end=end,
                 evidence=f"No rain while all {int(view.reporting[first, g])} neighbours were wet, the driest "
-                f"{view.least_measured[first:stop, g].min():.1f} mm, their median {view.middle[first:stop, g].sum():.1f} mm in "
-                f"this gauge's climate. Neighbours as measured: {view.beside(g, first, stop)}.",
+                f"{view.least_measured[first:stop, g].min():.1f} mm, their median, in this gauge's climate, "
+                f"{view.middle[first:stop, g].sum():.1f} mm. Neighbours as measured: {view.beside(g, first, stop)}.",
                 action="Reject the zero unless the observer confirms it: it may stand for a missing reading.",
                 others=view.ids(view.neighbours[g]),
                 edit=Edit(
@@ -117,15 +117,16 @@ def long_dry_runs(view: Screened) -> Iterator[Finding]:
         if len(near) < 2:
             continue
         known = np.flatnonzero(np.isfinite(cases.depths[:, g]))
-        middle = np.nan_to_num(view.middle[:, g])
+        # A neighbour's caught shower does not count for more than other days: the run has to be wet on many.
+        telling = (view.middle[known, g] >= WET_DAY) & (view.reporting[known, g] >= 2)
+        lost = np.where(telling, view.middle[known, g], 0.0)
+        sums = [np.concatenate([[0.0], np.cumsum(part)]) for part in (telling, lost, view.dry_surprise[known, g])]
         # Missing days neither end a run nor add to it.
         for a, b in runs_of(cases.depths[known, g] <= DRY):
-            days = known[a:b]
-            # A neighbour's caught shower does not count for more than other days: the run has to be wet on many.
-            wet = days[(middle[days] >= WET_DAY) & (view.reporting[days, g] >= 2)]
-            odds = view.dry_surprise[days, g].sum() - np.log(len(known))
-            if len(wet) < LONG_RUN or middle[wet].sum() < LOST or odds < ODDS:
+            days, middle, odds = (float(through[b] - through[a]) for through in sums)
+            if days < LONG_RUN or middle < LOST or odds - np.log(len(known)) < ODDS:
                 continue
+            wet = known[a:b][telling[a:b]]
             first, stop = int(wet[0]), int(wet[-1]) + 1
             gauge = view.network.ids[g]
             start, end = cases.starts[first], cases.ends[stop - 1]
@@ -134,9 +135,9 @@ def long_dry_runs(view: Screened) -> Iterator[Finding]:
                 gauge=gauge,
                 start=start,
                 end=end,
-                severity="erroneous" if middle[wet].sum() > 4 * LOST else "doubtful",
-                evidence=f"No rain from {start} to {end}, while the neighbours' median was {middle[wet].sum():.0f} mm, on "
-                f"{len(wet)} wet days. Neighbours as measured: {view.beside(g, first, stop)}.",
+                severity="erroneous" if middle > 4 * LOST else "doubtful",
+                evidence=f"No rain from {start} to {end}, while the neighbours' median was {middle:.0f} mm, "
+                f"on {len(wet)} wet days. Neighbours as measured: {view.beside(g, first, stop)}.",
                 action="Reject the run: a blocked funnel, a stopped logger, or zeros for missing values.",
                 others=view.ids(near),
                 edit=Edit(

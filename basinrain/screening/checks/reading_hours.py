@@ -8,7 +8,6 @@ from typing import Final
 
 import numpy as np
 
-from basinrain.reading.clocks import clock_name
 from basinrain.screening.checks.timing import FURTHEST_DAYS, LEAST_WET, Lags, lags_by_gauge
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import DAY, Screened
@@ -29,9 +28,11 @@ LOPSIDED: Final = 2.5
 def reading_hours(view: Screened) -> Iterator[Finding]:
     """Yield daily gauges that are read at another hour than most, as stated, or as their neighbours let it seem."""
     yield from _stated(view)
-    for g, lags in lags_by_gauge(view):
-        if lags.seconds == DAY and lags.wet.sum() >= 2 * LEAST_WET:
-            yield from _seeming(view, g, lags)
+    for sheet in view.sheets:
+        if sheet.seconds == DAY:
+            for g, lags in lags_by_gauge(view, sheet):
+                if lags.wet.sum() >= 2 * LEAST_WET:
+                    yield from _seeming(view, g, lags)
 
 
 def _stated(view: Screened) -> Iterator[Finding]:
@@ -47,12 +48,12 @@ def _stated(view: Screened) -> Iterator[Finding]:
     for gauge, count in sorted(hours.items()):
         if usual[gauge] == most and len(count) == 1:
             continue
-        listed = ", ".join(f"{clock_name(hour)[1:]} on {count[hour]} days" for hour in sorted(count))
+        listed = ", ".join(f"{_hour(hour)} on {count[hour]} days" for hour in sorted(count))
         yield Finding(
             check="reading-hours",
             gauge=gauge,
             severity="remark" if len(count) == 1 else "doubtful",
-            evidence=f"Its days end at {listed}; those of most daily gauges end at {clock_name(most)[1:]}.",
+            evidence=f"Its days end at {listed}; those of most daily gauges end at {_hour(most)}.",
             action="Compare and infill by days only after spreading over the pattern of recording gauges.",
             others=tuple(sorted(other for other, hour in usual.items() if hour == most and other != gauge)),
         )
@@ -80,9 +81,13 @@ def _seeming(view: Screened, g: int, lags: Lags) -> Iterator[Finding]:
         check="reading-hours",
         gauge=view.network.ids[g],
         severity="remark",
-        evidence=f"Its days seem to end some {24 * best[lag]:.0f} h {'earlier' if lag > 0 else 'later'} than those of its "
-        f"neighbours: {100 * best[lag]:.0f} % of the {'day before' if lag > 0 else 'next day'} and the rest of the day "
-        f"itself fit it better than either (correlation of root depths higher by {gains[lag]:.2f}).",
+        evidence=f"Its days seem to end some {24 * best[lag]:.0f} h {'earlier' if lag > 0 else 'later'} than those of "
+        f"its neighbours: {100 * best[lag]:.0f} % of the {'day before' if lag > 0 else 'next day'} and the rest of the "
+        f"day itself fit it better than either (correlation of root depths higher by {gains[lag]:.2f}).",
         action="Ask for its hour of reading and declare read_hour; compare it with the others over several days only.",
         others=view.ids(view.neighbours[g]),
     )
+
+
+def _hour(seconds: int) -> str:
+    return f"{seconds // 3600:02d}:{seconds // 60 % 60:02d}"

@@ -69,7 +69,8 @@ class _Months:
     def ratio(self, least: float) -> Floats:
         """Return the logarithms of the ratios, NaN where one of the two is too dry to tell."""
         told = (self.theirs >= least) & (self.mine > 0)
-        return np.log(np.divide(self.mine, self.theirs, out=np.full(self.mine.shape, np.nan), where=told))
+        ratio: Floats = np.divide(self.mine, self.theirs, out=np.full(self.mine.shape, np.nan), where=told)
+        return np.log(ratio)
 
     def total(self, months: slice | Ints) -> _Months:
         """Return the same over some months together, as one row."""
@@ -89,7 +90,7 @@ def unit_mixups(view: Screened) -> Iterator[Finding]:
             np.add.reduceat(np.where(both, depths[:, [g]], 0.0), first_of_month, axis=0),
             np.add.reduceat(np.where(both, depths[:, near], 0.0), first_of_month, axis=0),
         )
-        found = _whole(view, g, near, months)
+        found = _whole(view, g, months)
         if found is not None:
             yield found
         else:
@@ -103,7 +104,7 @@ def _months(view: Screened) -> Ints:
     return np.concatenate([[0], np.flatnonzero(np.diff(month)) + 1])
 
 
-def _whole(view: Screened, g: int, near: list[int], months: _Months) -> Finding | None:
+def _whole(view: Screened, g: int, months: _Months) -> Finding | None:
     ratios = months.total(slice(None)).ratio(LEAST_TOTAL)
     ratios = ratios[np.isfinite(ratios)]
     if len(ratios) < LEAST_NEIGHBOURS:
@@ -135,7 +136,7 @@ def _stretches(view: Screened, g: int, months: _Months, first_of_month: Ints) ->
     stop_of_month = np.append(first_of_month[1:], len(view.cases.ends))
     # From month to month, so that a change of unit half way does not count as scatter.
     scatter = max(1.4826 * float(np.median(np.abs(np.diff(away)))) / np.sqrt(2), LEAST_SCATTER)
-    found = []
+    found: list[tuple[float, int, int, float, float, float]] = []
     for factor in FACTORS:
         for a, b, sure in _segments(away, np.log(factor), scatter):
             ratios = months.total(telling[a:b]).ratio(LEAST_TOTAL)[0, told]
@@ -153,14 +154,14 @@ def _stretches(view: Screened, g: int, months: _Months, first_of_month: Ints) ->
 
 
 def _small(factor: float) -> bool:
-    return abs(np.log(factor)) < np.log(HARD_PLACES)
+    return 1 / HARD_PLACES < factor < HARD_PLACES
 
 
 def _segments(away: Floats, log: float, scatter: float) -> list[tuple[int, int, float]]:
     """Return first, stop and sureness of the stretches of months that a factor explains better than none."""
     least = LEAST_MONTHS_SMALL if _small(np.exp(log)) else LEAST_MONTHS
     gain = np.clip((away**2 - (away - log) ** 2) / (2 * scatter**2), -MOST_TOLD, MOST_TOLD)
-    found = []
+    found: list[tuple[int, int, float]] = []
     while True:
         a, b, sure = _richest(gain)
         if sure < SURE:
@@ -191,9 +192,7 @@ def _usual(ratio: Floats) -> float:
     return middle
 
 
-def _finding(
-    view: Screened, g: int, factor: float, ratio: float, stretch: tuple[int, int, float] | None
-) -> Finding:
+def _finding(view: Screened, g: int, factor: float, ratio: float, stretch: tuple[int, int, float] | None) -> Finding:
     gauge = view.network.ids[g]
     words = f"{factor:g}" if factor > 1 else f"1/{1 / factor:g}"
     never = np.datetime64("NaT", "s")
@@ -208,8 +207,8 @@ def _finding(
         start=start,
         end=end,
         severity="doubtful" if _small(factor) else "erroneous",
-        evidence=f"It has {ratio:.3g} times the depth of its neighbours, by the median of them{usual}: near {words}, as "
-        "between mm, tenths and inches.",
+        evidence=f"It has {ratio:.3g} times the depth of its neighbours, by the median of them{usual}: near {words}, "
+        "as between mm, tenths and inches.",
         action=f"Ask for the unit of the file; if it is confirmed, declare it, or multiply by {1 / factor:.4g}.",
         others=view.ids(view.neighbours[g]),
         edit=Edit(

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import dataclass
+from functools import cache
 from typing import Final
 
 import numpy as np
@@ -10,7 +12,6 @@ import numpy as np
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import Floats, Screened, Sheet, runs_of
-from basinrain.units import DEPTH_UNITS
 
 __all__ = ["missing_codes", "stuck_values"]
 
@@ -30,8 +31,12 @@ CODES: Final = (99.9, 99.99, 777.0, 777.7, 888.0, 888.8, 999.0, 999.9, 999.99, 7
 LIMITS: Final = (3276.7, 32767.0, 6553.5, 65535.0)
 """Full scale of two-byte registers, which loggers write when they fail."""
 
+UNITS: Final = {"mm": 1.0, "in": 25.4, "0.1 mm": 0.1, "0.01 in": 0.254, "cm": 10.0, "0.1 in": 2.54, "0.01 mm": 0.01}
+"""Units that files of rain are written in, and how many mm one is."""
+
 TIMES_GREATER: Final = 2.0
-"""How far a code must stand above every other depth of the gauge to be sure; where it stands three times it need not."""
+"""How far a code must stand above every other depth of the gauge where it stands twice; with three it need only be
+above."""
 
 _FIT: Final = 2e-4
 _FEW: Final = 3
@@ -50,7 +55,7 @@ def stuck_values(view: Screened) -> Iterator[Finding]:
                     gauge=gauge,
                     start=start,
                     end=end,
-                    evidence=f"{depth:.4g} mm stands at {stop - first} {sheet.scale}s on end; by the gauge's own habit "
+                    evidence=f"{depth:.4g} mm stands at {stop - first} {sheet.unit}s on end; by the gauge's own habit "
                     f"{max(expected, 1e-9):.1g} such runs would be expected in the record."
                     + (f" Neighbours over the same day or days: {beside}." if beside else ""),
                     action="Reject the run: a stuck float or register, or one value copied down.",
@@ -60,7 +65,7 @@ def stuck_values(view: Screened) -> Iterator[Finding]:
                         start=start,
                         end=end,
                         action="reject",
-                        reason=f"{depth:.4g} mm repeated over {stop - first} {sheet.scale}s",
+                        reason=f"{depth:.4g} mm repeated over {stop - first} {sheet.unit}s",
                         by=SUGGESTED,
                     ),
                 )
@@ -84,7 +89,8 @@ def _stuck(depths: Floats) -> list[tuple[int, int, float]]:
     np.maximum.at(longest, which, lengths)
     pairs = np.bincount(which, lengths - 1) - (longest - 1)
     chances = np.bincount(which, lengths) - longest
-    general = (pairs.sum() + 1) / (chances.sum() + 2)
+    short = lengths[lengths < LEAST_EQUAL]
+    general = ((short - 1).sum() + 1) / (short.sum() + 2)
     repeats = (pairs + HABIT * general) / (chances + HABIT)
     expected = len(lengths) * repeats[which] ** (lengths - 1)
     found = (lengths >= LEAST_EQUAL) & (expected < CHANCE)
@@ -93,14 +99,9 @@ def _stuck(depths: Floats) -> list[tuple[int, int, float]]:
 
 def missing_codes(view: Screened) -> Iterator[Finding]:
     """Yield codes of missing values that were read as depths: they repeat exactly, far above all else."""
-    factors = sorted(set(DEPTH_UNITS.values()))
-    codes = np.array([code * factor for code in (*CODES, *LIMITS) for factor in factors])
-    names = [f"{code:g}" for code in (*CODES, *LIMITS) for _ in factors]
-    order = np.argsort(codes)
-    codes = codes[order]
+    codes, names = _known_codes()
     for sheet in view.sheets:
-        for column, g in enumerate(sheet.gauges.tolist()):
-            depths = sheet.depths[:, column]
+        for column, depths in enumerate(sheet.depths.T):
             values, counts = np.unique(depths[depths > 0], return_counts=True)
             if not len(values):
                 continue
@@ -113,7 +114,25 @@ def missing_codes(view: Screened) -> Iterator[Finding]:
                 sure = counts[k] >= 2 and values[k] >= TIMES_GREATER * above
                 if len(beyond) or not (sure or (counts[k] >= _FEW and values[k] > above)):
                     continue
-                yield from _codes(view, sheet, column, float(values[k]), names[order[nearest[k]]], float(above))
+                yield from _codes(view, sheet, column, _Code(float(values[k]), names[nearest[k]], float(above)))
+
+
+@dataclass(frozen=True)
+class _Code:
+    """A depth in mm that is a code, what the code is called, and the gauge's greatest other depth in mm."""
+
+    depth: float
+    name: str
+    above: float
+
+
+@cache
+def _known_codes() -> tuple[Floats, list[str]]:
+    """Return the depths in mm that codes are read as, rising, and what they are called; mm goes before other units."""
+    units = sorted(UNITS.items(), key=lambda item: item[1] != 1.0)
+    named = [(code * factor, f"{code:g} {unit}") for unit, factor in units for code in (*CODES, *LIMITS)]
+    codes, first = np.unique(np.round([depth for depth, _ in named], 6), return_index=True)
+    return codes, [named[k][1] for k in first.tolist()]
 
 
 def _nearest(codes: Floats, values: Floats) -> np.ndarray[tuple[int], np.dtype[np.int64]]:
@@ -121,14 +140,14 @@ def _nearest(codes: Floats, values: Floats) -> np.ndarray[tuple[int], np.dtype[n
     return np.where(values - codes[right - 1] < codes[right] - values, right - 1, right)
 
 
-def _codes(view: Screened, sheet: Sheet, column: int, value: float, code: str, above: float) -> Iterator[Finding]:
+def _codes(view: Screened, sheet: Sheet, column: int, code: _Code) -> Iterator[Finding]:
     """Yield the stretches of a code; steps that have no depth do not part them."""
     depths = sheet.depths[:, column]
     g = int(sheet.gauges[column])
     gauge = view.network.ids[g]
     known = np.flatnonzero(np.isfinite(depths))
-    count = int((depths == value).sum())
-    for a, b in runs_of(depths[known] == value):
+    count = int((depths == code.depth).sum())
+    for a, b in runs_of(depths[known] == code.depth):
         start, end = sheet.starts[known[a]], sheet.ends[known[b - 1]]
         yield Finding(
             check="missing-code",
@@ -136,15 +155,15 @@ def _codes(view: Screened, sheet: Sheet, column: int, value: float, code: str, a
             start=start,
             end=end,
             severity="erroneous",
-            evidence=f"{value:.4f} mm stands at {count} {sheet.scale}s, {b - a} of them here; its greatest other depth is "
-            f"{above:.1f} mm, and {code} is a usual code for a missing value.",
-            action=f"Declare the code, missing = [{code}], for this source, or reject the values.",
+            evidence=f"{code.depth:.7g} mm stands at {count} {sheet.unit}s, {b - a} of them here; the gauge's greatest "
+            f"other depth is {code.above:.1f} mm, and {code.name} is a usual code for a missing value.",
+            action="Declare the code under missing, as it stands in the file, or reject the values.",
             edit=Edit(
                 gauge=gauge,
                 start=start,
                 end=end,
                 action="reject",
-                reason=f"{code} is a code for a missing value",
+                reason=f"{code.name} is a code for a missing value",
                 by=SUGGESTED,
             ),
         )

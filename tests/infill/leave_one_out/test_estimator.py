@@ -12,6 +12,7 @@ from basinrain.errors import DataError
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import InfillOptions
 from basinrain.infill.leave_one_out import Candidate, Estimator, estimator
+from basinrain.infill.record_normals import NormalRatios
 from basinrain.infill.relations import relations_of
 
 candidates = pytest.mark.parametrize("candidate", every_candidate(), ids=lambda candidate: candidate.label)
@@ -109,3 +110,34 @@ def test_what_is_not_known_of_a_gauge_that_never_reports_does_not_matter() -> No
     depth[:, 2] = np.nan
     reporting = np.array([True, True, False, True])
     assert np.isfinite(Estimator(network, options, reporting=reporting).estimates(depth)).any()
+
+
+@pytest.mark.parametrize(
+    "candidate",
+    every_candidate(radius=14e3, elevation_limit=500.0, min_donors=1, nearest=2),
+    ids=lambda candidate: candidate.label,
+)
+def test_limits_on_donors(candidate: Candidate) -> None:
+    """Radius, elevation limit and two donors: some gauges have none at all, and the loop agrees."""
+    network, depth = small_network(9), small_depths(120, 9)
+    further = learned(candidate, network, small_depths(400, 9, seed=9, missing=0.0))
+    expected = plain_estimates(network, depth, candidate.options, **further)
+    assert (np.isnan(expected) & ~np.isnan(depth)).any()
+    assert np.isfinite(expected).any()
+    found = Estimator(network, candidate.options, **further).estimates(depth)
+    np.testing.assert_allclose(found, expected, rtol=1e-12, atol=1e-12)
+
+
+@pytest.mark.parametrize("method", ["normal-ratio", "ten-percent-rule", "inverse-distance-ratios"])
+def test_normals_from_the_record(method: str) -> None:
+    """Pairs without common years do not donate to each other, month by month."""
+    network, depth = small_network(6), small_depths(150, 6)
+    rng = np.random.default_rng(7)
+    means = rng.uniform(20, 90, (12, 6, 6))
+    means[rng.random((12, 6, 6)) < 0.2] = np.nan
+    ratios = NormalRatios(network.ids, np.full((12, 6, 6), 30), means)
+    months = rng.integers(1, 13, 150)
+    options = InfillOptions(method=method, min_donors=1)
+    expected = plain_estimates(network, depth, options, months, ratios=ratios)
+    found = Estimator(network, options, ratios=ratios).estimates(depth, months)
+    np.testing.assert_allclose(found, expected, rtol=1e-12, atol=1e-12)

@@ -1,0 +1,268 @@
+"""Every infill method on the same cases, and the one that is taken."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from leave_one_out_data import daily_record, every_candidate, plain_estimates, small_depths, small_network
+
+from basinrain.errors import DataError
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill import InfillOptions
+from basinrain.infill.days import day_totals
+from basinrain.infill.leave_one_out import Candidate, Comparison, compare, compare_infill
+from basinrain.infill.record_normals import normals_from_record
+from basinrain.infill.relations import relations_of
+from basinrain.rainfall import RainRecord, Status
+
+ANY_DONOR = InfillOptions(min_donors=1)
+LABELS = tuple(candidate.label for candidate in every_candidate(min_donors=1))
+
+
+@pytest.fixture(scope="module")
+def network() -> GaugeNetwork:
+    return small_network(6)
+
+
+@pytest.fixture(scope="module")
+def record(network: GaugeNetwork) -> RainRecord:
+    return daily_record(network, small_depths(400, 6, missing=0.15))
+
+
+@pytest.fixture(scope="module")
+def comparison(record: RainRecord, network: GaugeNetwork) -> Comparison:
+    return compare_infill(record, network, options=ANY_DONOR)
+
+
+def test_scores_are_those_of_plain_loops_on_the_common_cases(
+    record: RainRecord, network: GaugeNetwork, comparison: Comparison
+) -> None:
+    """RMSE of all methods to 1e-12, on wet days at gauges that all of them can estimate, relations from the others."""
+    days = day_totals(record)
+    depth = record.depth
+    wet = np.nanmean(depth, axis=1) >= 1
+    part = np.arange(400) * 5 // 400
+    estimates = {}
+    for candidate in every_candidate(min_donors=1):
+        table = np.full(depth.shape, np.nan)
+        for k in range(5):
+            relations = relations_of(depth[part != k], network, days.months[part != k])
+            further = {"relations": relations} if candidate.options.chosen_method.needs_relations else {}
+            mine = wet & (part == k)
+            table[mine] = plain_estimates(network, depth[mine], candidate.options, days.months[mine], **further)
+        estimates[candidate.label] = table
+    common = np.isfinite(np.stack(list(estimates.values()))).all(axis=0)
+    assert comparison.candidates == LABELS
+    assert not comparison.skipped
+    for label, table in estimates.items():
+        score = comparison.score(label)
+        assert score.n == common.sum()
+        assert score.rmse == pytest.approx(np.sqrt(((table - depth)[common] ** 2).mean()), rel=1e-12)
+    assert comparison.best == min(LABELS, key=lambda label: comparison.score(label).rmse)
+    rows = common.any(axis=1)
+    assert np.array_equal(comparison.ends, record.ends[rows])
+    assert np.array_equal(comparison.observed, np.where(common, depth, np.nan)[rows], equal_nan=True)
+    chosen = np.where(common, estimates[comparison.chosen], np.nan)[rows]
+    np.testing.assert_allclose(comparison.estimated, chosen, rtol=1e-12, atol=1e-12)
+
+
+def test_the_first_that_cannot_be_told_from_the_best_is_taken(comparison: Comparison) -> None:
+    """All before it are distinguishable; the reason names both."""
+    k = comparison.candidates.index(comparison.chosen)
+    assert all(difference.distinguishable for difference in comparison.differences[:k])
+    assert not comparison.differences[k].distinguishable
+    assert comparison.chosen in comparison.reason
+    assert comparison.best in comparison.reason
+    assert comparison.chosen_options == every_candidate(min_donors=1)[k].options
+    for difference in comparison.differences:
+        rmse = [comparison.score(label).rmse for label in (difference.candidate, difference.best)]
+        assert difference.difference == pytest.approx(rmse[0] - rmse[1])
+
+
+def test_the_order_of_the_gauges_does_not_matter(
+    record: RainRecord, network: GaugeNetwork, comparison: Comparison
+) -> None:
+    """Columns turned round give the same scores, intervals, winner and cases."""
+    order = [3, 5, 0, 2, 4, 1]
+    turned = GaugeNetwork(
+        ids=tuple(network.ids[k] for k in order),
+        x=network.x[order],
+        y=network.y[order],
+        crs="local",
+        elevation=network.elevation[order],
+        normals=None if network.normals is None else network.normals[order],
+    )
+    other = compare_infill(record.ordered(turned.ids), turned, options=ANY_DONOR)
+    assert (other.chosen, other.best, other.reason) == (comparison.chosen, comparison.best, comparison.reason)
+    for score in comparison.scores:
+        same = other.score(score.candidate, gauge=score.gauge)
+        assert replace(same, rmse=0, mae=0, bias=0, correlation=0, top20_ratio=0) == replace(
+            score, rmse=0, mae=0, bias=0, correlation=0, top20_ratio=0
+        )
+        mine, theirs = ((s.rmse, s.mae, s.bias, s.correlation, s.top20_ratio) for s in (score, same))
+        np.testing.assert_allclose(mine, theirs, rtol=1e-9, atol=1e-9)
+    for here, there in zip(comparison.differences, other.differences, strict=True):
+        np.testing.assert_allclose((here.low, here.high), (there.low, there.high), atol=1e-9)
+    np.testing.assert_allclose(other.estimated[:, np.argsort(order)], comparison.estimated, rtol=1e-9)
+
+
+def test_infilled_values_are_no_donors_and_no_cases(
+    record: RainRecord, network: GaugeNetwork, comparison: Comparison
+) -> None:
+    """Filling all gaps with a metre of rain changes nothing."""
+    gaps = record.status == Status.MISSING
+    filled = replace(
+        record,
+        depth=np.where(gaps, 1000.0, record.depth),
+        status=np.where(gaps, Status.INFILLED, record.status).astype(np.uint8),
+    )
+    other = compare_infill(filled, network, options=ANY_DONOR)
+    assert other.scores == comparison.scores
+    assert other.reason == comparison.reason
+
+
+def test_hours_are_scored_beside_their_days() -> None:
+    """The score is the day's; steps of the wet days, dry ones too, are scored beside."""
+    network = small_network(4)
+    rng = np.random.default_rng(6)
+    depth = rng.gamma(0.2, 4.0, (24 * 60, 1)) * rng.gamma(4.0, 0.25, (24 * 60, 4)) * (rng.random((24 * 60, 1)) < 0.2)
+    depth[(np.arange(24 * 60) // 24) % 3 == 0] = 0.0
+    depth[rng.random(depth.shape) < 0.02] = np.nan
+    ends = np.datetime64("2031-05-01", "s") + np.arange(1, 24 * 60 + 1) * np.timedelta64(3600, "s")
+    record = RainRecord.from_depths(network.ids, ends - np.timedelta64(3600, "s"), ends, depth, step="1h")
+    found = compare_infill(record, network, options=ANY_DONOR)
+    assert found.scale == "day"
+    days, steps = found.score("station-average"), found.score("station-average", scale="step")
+    assert steps.n > 10 * days.n
+    assert steps.dry_hits + steps.hits + steps.misses + steps.false_alarms == steps.n
+    assert steps.dry_hits > 0
+    assert {score.scale for score in found.scores} == {"day", "step"}
+    # The sum of a day's estimates is the estimate of its sum where donors and hours are all there.
+    whole = ~np.isnan(depth).reshape(60, 24, 4).any(axis=(1, 2))
+    day = np.flatnonzero(whole & (depth.reshape(60, 24, 4).sum(axis=1).mean(axis=1) >= 1))[0]
+    total = depth[24 * day : 24 * day + 24].sum(axis=0)
+    at = np.flatnonzero(found.ends == ends[24 * day + 23])[0]
+    weights = found.chosen_options.weights(network, 0, np.array([False, True, True, True]), relations=None)
+    assert found.estimated[at, 0] == pytest.approx(weights @ total)
+
+
+def test_without_normals_their_methods_are_skipped(record: RainRecord, network: GaugeNetwork) -> None:
+    """With the reason in words; and with a normal of 0 the gauge is named."""
+    bare = compare_infill(record, replace(network, normals=None), options=ANY_DONOR)
+    assert set(bare.skipped) == {"normal-ratio", "ten-percent-rule", "inverse-distance-ratios", "ratio-regression"}
+    assert set(bare.skipped.values()) == {"it needs normals, and the gauges have none"}
+    normals = np.array(network.normals)
+    normals[2] = 0.0
+    zero = compare_infill(record, replace(network, normals=normals), options=ANY_DONOR)
+    assert set(zero.skipped) >= {"normal-ratio", "inverse-distance-ratios"}
+    assert zero.skipped["normal-ratio"].startswith(f"gauge {network.ids[2]}: found a normal of 0 mm for the year")
+
+
+def test_a_record_too_short_for_relations(network: GaugeNetwork) -> None:
+    """35 days leave 28 outside each fifth, which are too few for a correlation."""
+    found = compare_infill(daily_record(network, small_depths(35, 6, missing=0.0)), network, options=ANY_DONOR)
+    assert set(found.skipped) == {"correlation-weighting", "regression", "ratio-regression"}
+    assert "it can estimate 0 of the" in found.skipped["regression"]
+    assert "relations need 30 days or steps in common, besides the fifth of the record estimated" in str(
+        found.skipped["regression"]
+    )
+
+
+def test_normals_from_a_record_of_few_years(network: GaugeNetwork, record: RainRecord) -> None:
+    """Without ten common years no method on ratios can estimate anything."""
+    ratios, _ = normals_from_record(record, network)
+    found = compare_infill(record, network, options=InfillOptions(), ratios=ratios)
+    assert "normals from the record need 10 years in common" in found.skipped["normal-ratio"]
+
+
+def test_a_method_that_can_estimate_little_does_not_choose_the_cases(record: RainRecord, network: GaugeNetwork) -> None:
+    """One that asks for all five donors is left out with its count; cases of the others are as without it."""
+    common = [Candidate(label="mean", options=InfillOptions(method="station-average", min_donors=1))]
+    picky = Candidate(label="picky", options=InfillOptions(method="station-average", min_donors=5))
+    alone = compare_infill(record, network, options=InfillOptions(), candidates=common)
+    both = compare_infill(record, network, options=InfillOptions(), candidates=[*common, picky])
+    assert both.score("mean") == alone.score("mean")
+    assert list(both.skipped) == ["picky"]
+    assert "that others can" in both.skipped["picky"]
+    assert "only method that could be compared" in both.reason
+
+
+def test_estimates_made_again_are_the_same(
+    record: RainRecord, network: GaugeNetwork, comparison: Comparison, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Where they do not fit in memory they are made anew, and nothing changes."""
+    monkeypatch.setattr(compare, "_KEPT", 0)
+    again = compare_infill(record, network, options=ANY_DONOR)
+    assert again.scores == comparison.scores
+    assert again.differences == comparison.differences
+    assert np.array_equal(again.estimated, comparison.estimated, equal_nan=True)
+
+
+def test_progress_names_every_method(record: RainRecord, network: GaugeNetwork) -> None:
+    """Before each is tried."""
+    said: list[str] = []
+    compare_infill(record, network, options=InfillOptions(), progress=said.append)
+    assert tuple(said) == LABELS
+
+
+def test_storm_totals_without_times(network: GaugeNetwork) -> None:
+    """They are cases each by itself."""
+    undated = np.full(60, "NaT", dtype="datetime64[s]")
+    depth = small_depths(60, 6, missing=0.1)
+    plain = daily_record(network, depth)
+    record = RainRecord(network.ids, undated, undated, plain.depth, plain.status, step="storm")
+    found = compare_infill(record, network, options=ANY_DONOR)
+    assert found.scale == "step"
+    assert np.isnat(found.ends).all()
+    assert not np.isnan(found.differences[0].low)
+
+
+def test_one_gauge_only() -> None:
+    """Nothing can be estimated from others."""
+    network = small_network(1)
+    with pytest.raises(DataError, match="leave-one-out comparison: found 1 gauge; expected two gauges or more"):
+        compare_infill(daily_record(network, np.ones((9, 1))), network, options=ANY_DONOR)
+
+
+def test_other_columns(record: RainRecord, network: GaugeNetwork) -> None:
+    """A record in another order is refused."""
+    with pytest.raises(DataError, match="rain record: found columns that are not the network's gauges in their order"):
+        compare_infill(record.ordered(network.ids[::-1]), network, options=ANY_DONOR)
+
+
+def test_no_case(network: GaugeNetwork) -> None:
+    """A dry record; and one in which no two gauges ever report together."""
+    dry = daily_record(network, np.zeros((40, 6)))
+    with pytest.raises(DataError, match="found no wet day; expected wet days on which several gauges have values"):
+        compare_infill(dry, network, options=ANY_DONOR)
+    lonely = np.where(np.arange(60)[:, None] % 6 == np.arange(6), 5.0, np.nan)
+    with pytest.raises(DataError, match="found no gauge that could be estimated from others on any of 60 wet days"):
+        compare_infill(daily_record(network, lonely), network, options=ANY_DONOR)
+
+
+def test_no_case_in_common(record: RainRecord, network: GaugeNetwork, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Candidates that can estimate different gauges only cannot be compared, and are named."""
+    nearby = Candidate(label="nearby", options=InfillOptions(method="nearest-gauge", radius=5e3))
+    level = Candidate(label="level", options=InfillOptions(method="nearest-gauge", radius=5e3, elevation_limit=1e-6))
+    monkeypatch.setattr(compare, "ENOUGH", 0.0)
+    with pytest.raises(DataError, match="estimated from others by each of nearby, level on any of"):
+        compare_infill(record, network, options=ANY_DONOR, candidates=[nearby, level])
+
+
+def test_an_elevation_limit_needs_elevations(record: RainRecord, network: GaugeNetwork) -> None:
+    """Every gauge that reports and has none is named."""
+    bare = replace(network, elevation=np.array([np.nan, *network.elevation[1:]]))
+    with pytest.raises(DataError, match=f"gauge {network.ids[0]}: found no elevation"):
+        compare_infill(record, bare, options=InfillOptions(elevation_limit=300))
+    limited = compare_infill(record, network, options=InfillOptions(elevation_limit=600))
+    assert limited.chosen_options.elevation_limit == 600
+
+
+def test_few_cases_are_said_to_be_few(network: GaugeNetwork) -> None:
+    """Two wet days: the simplest method, a remark and a word in the reason."""
+    found = compare_infill(daily_record(network, np.full((2, 6), 7.0)), network, options=ANY_DONOR)
+    assert "few-cases" in {note.code for note in found.notes}
+    assert "over 12 cases (few)" in found.reason
+    assert found.chosen == "nearest-gauge"

@@ -1,0 +1,136 @@
+from __future__ import annotations
+
+import time
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from report.comparison_pieces import make_comparison, make_network
+from report.infill_pieces import make_infill_run
+from report.markup import Page, check_page
+
+from basinrain.infill import InfillOptions
+from basinrain.infill.leave_one_out import compare_infill
+from basinrain.notes import Note
+from basinrain.rainfall import RainRecord
+from basinrain.report import render_comparison
+
+SCRIPT = "<script>alert(1)</script>"
+
+
+@pytest.fixture(scope="module")
+def html() -> str:
+    """Return the page of the small run."""
+    return render_comparison(make_infill_run())
+
+
+def test_the_page_holds_everything_in_order(html: str) -> None:
+    """Choice, caution, figures, scores, rules, formulas, map, gauges, completed record, screening, inputs."""
+    text = Page(html).text
+    places = [
+        text.index(words)
+        for words in (
+            "station-average is taken: it is the simplest",
+            "Gauge sites are not the basin: the scores",
+            "Estimated against observed by station-average",
+            "Root mean square error of each method over the same cases",
+            "Scores over rainfall days, all gauges together",
+            "Scores step by step",
+            "Methods that could not take part",
+            "2 Rules of the comparison A gauge is taken to be silent",
+            "Gauge sites are not the basin. ",
+            "Paulhus and Kohler",
+            "Root mean square error at every gauge",
+            "Scores by gauge of station-average",
+            "values were infilled",
+            "The completed record; depths in mm",
+            "Gauge F stays without a depth at 6 steps: no donor.",
+            "No check found anything.",
+            "Input files and their SHA-256",
+        )
+    ]
+    assert places == sorted(places)
+
+
+def test_the_page_is_whole_and_described(html: str) -> None:
+    """No script, nothing fetched, ids unique, links arriving, figures valid, tables with captions and heads."""
+    check_page(html, figures=3)
+
+
+def test_a_repeat_is_identical(html: str) -> None:
+    """Letter for letter."""
+    assert render_comparison(make_infill_run()) == html
+
+
+def test_what_was_infilled_is_told_by_hand(html: str) -> None:
+    """Seven of 36 values, 19.4 %, of a step and of the storm."""
+    assert (
+        "7 values were infilled (19.4 % of those in service) by station-average at the scale of the step and storm"
+        in (Page(html).text)
+    )
+
+
+def test_names_stay_text() -> None:
+    """Markup in ids, reasons and notes is shown, not obeyed."""
+    names = (f"A{SCRIPT}", "B&B", "$a_b$", "雨<b>", "</style></svg>", "_F' onload='x")
+    comparison = make_comparison(names, skipped={"normal-ratio": SCRIPT})
+    note = Note(code="few-cases", text=SCRIPT)
+    run = make_infill_run(replace(comparison, reason=SCRIPT, notes=(note,)), names=names, job=SCRIPT, notes=(note,))
+    html = render_comparison(run)
+    page = Page(html)
+    assert not page.named("script", "b")
+    assert not [a for _, attributes in page.tags for a in attributes if a.startswith("on")]
+    assert page.text.count("alert(1)") >= 8
+    check_page(html, figures=3)
+
+
+def test_warnings_stand_apart_from_the_rules() -> None:
+    """A warning is among the warnings; what the comparison remarks stands once, among its rules."""
+    comparison = make_comparison()
+    warning = Note(code="few-cases", text="On 12 cases only.")
+    run = make_infill_run(comparison, notes=(warning, *comparison.notes))
+    text = Page(render_comparison(run)).text
+    assert text.index("On 12 cases only.") < text.index("1 Scores Estimated")
+    assert text.count("Gauge sites are not the basin.") == 1
+
+
+def test_the_winner_taken_by_the_job_is_said() -> None:
+    """A job that asks for leave-one-out uses what the comparison takes."""
+    run = make_infill_run()
+    html = render_comparison(replace(run, settings={"infill": {"method": "leave-one-out"}}))
+    assert "leave-one-out, which takes the one above" in html
+
+
+def test_inches() -> None:
+    """Errors are in the job's unit."""
+    html = render_comparison(make_infill_run(depth_unit="in"))
+    assert "errors in inches" in html
+
+
+def test_nothing_infilled_is_said() -> None:
+    """A record without gaps."""
+    run = make_infill_run()
+    record = run.completed.record
+    full = RainRecord.from_depths(
+        record.gauges, record.starts, record.ends, np.ones_like(record.depth), step="1h", zone="+02:00"
+    )
+    html = render_comparison(replace(run, completed=replace(run.completed, record=full, estimates=(), notes=())))
+    assert "Nothing was infilled." in html
+    assert "Left without a depth" not in html
+
+
+def test_a_real_comparison_of_forty_gauges() -> None:
+    """Methods of the registry on seeded days: the page has their errors, and is drawn in some seconds."""
+    ids = tuple(f"W{k:02d}" for k in range(40))
+    network = make_network(ids)
+    rng = np.random.default_rng(11)
+    depth = np.round(rng.gamma(0.5, 12.0, (200, 1)) * rng.lognormal(0, 0.3, (200, 40)), 1)
+    ends = np.datetime64("2031-01-01", "s") + np.arange(1, 201) * np.timedelta64(86400, "s")
+    record = RainRecord.from_depths(ids, ends - 86400, ends, depth, step="1d")
+    comparison = compare_infill(record, network, options=InfillOptions(method="inverse-distance"))
+    run = replace(make_infill_run(comparison), network=network, record=record)
+    began = time.perf_counter()
+    html = render_comparison(run)
+    assert time.perf_counter() - began < 20
+    assert comparison.reason in Page(html).text
+    check_page(html, figures=3)
