@@ -23,7 +23,7 @@ if TYPE_CHECKING:
     from basinrain.infill.record_normals import NormalRatios
     from basinrain.infill.relations import Relations
 
-__all__ = ["InfillEffect", "InfillSpread", "infill_effect", "infill_label", "infill_spread_cautions"]
+__all__ = ["InfillEffect", "InfillSpread", "infill_effect", "infill_spread_cautions"]
 
 _SPREAD_PERCENT: Final = 10.0
 _ROUNDING: Final = 1e-9
@@ -143,17 +143,6 @@ class InfillEffect:
         return tuple(spreads)
 
 
-def infill_label(options: InfillOptions) -> str:
-    """Return what tables call an infill method: its name, and its power where it has one.
-
-    Examples
-    --------
-    >>> infill_label(InfillOptions(method="inverse-distance", power=1)), infill_label(InfillOptions("station-average"))
-    ('inverse-distance (power 1)', 'station-average')
-    """
-    return options.method if options.exponent is None else f"{options.method} (power {options.exponent:g})"
-
-
 def infill_effect(
     window: RainRecord,
     network: GaugeNetwork,
@@ -225,7 +214,7 @@ def infill_effect(
     if not used <= {options.method}:
         found, expected = f"infilled by {', '.join(sorted(used))}", f"infilled by {options.method}, as the options say"
         raise DataError(Problem(item="completed record", found=found, expected=expected))
-    own, n_gaps, mine = infill_label(options), _n_gaps(window), _Sums.of(completed.record)
+    own, n_gaps, mine = options.label, _n_gaps(window), _Sums.of(completed.record)
     # Sums only: the completed records of all methods together may be far larger than the job's own.
     runs: dict[str, _Sums] = {}
     skipped: dict[str, str] = {}
@@ -234,7 +223,7 @@ def infill_effect(
             runs[own] = mine
             continue
         candidate = replace(options, nearest=None).with_method(method.name)
-        label = infill_label(candidate)
+        label = candidate.label
         try:
             other = complete(window, network, candidate, long=long, relations=relations, ratios=ratios).record
         except BasinRainError as error:

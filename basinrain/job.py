@@ -164,7 +164,15 @@ def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
     infill = choose_infill(job, given.record, given.network, say, comparison=comparison, whole_record=True)
     say("completing")
     completed = infill.complete(given.record)
-    notes = (*given.notes, *infill.notes, *completed.notes, *record_cautions(given.record))
+    record = given.record
+    whole = Storm("", 0, len(record), record.starts[0], record.ends[-1])
+    notes = (
+        *given.notes,
+        *infill.notes,
+        *completed.notes,
+        *record_cautions(record),
+        *screening_cautions(given.screening, [whole]),
+    )
     return InfillRun(
         **_common(job, given, infill),
         comparison=comparison,

@@ -37,6 +37,7 @@ TAKEN_BY: Final[Mapping[str, tuple[str, ...]]] = MappingProxyType(
         "end": ("tips",),
         "rollover": ("counter",),
         "jitter": ("counter",),
+        "reset": ("counter",),
         "stamp": _TABLES,
         "read_hour": (*_TABLES, "counter", *GHCN),
         "date_means": (*_TABLES, "counter", *GHCN),

@@ -92,8 +92,8 @@ def wetness(rng: np.random.Generator, at: Values, month: npt.NDArray[np.int64]) 
     own = bell(rng, n, gauges)
     summer = 0.5 - 0.5 * np.cos(2 * np.pi * (month - 1) / 12)
     share_patch, share_own = (0.08 + 0.16 * summer)[:, None], (0.015 + 0.045 * summer)[:, None]
-    wet: Values = np.sqrt(1 - share_patch - share_own) * weather[:, None]
-    wet = wet + np.sqrt(share_patch) * patch + np.sqrt(share_own) * own
+    wet: Values = np.sqrt(share_patch) * patch + np.sqrt(share_own) * own
+    wet += np.sqrt(1 - share_patch - share_own) * weather[:, None]
     return wet
 
 

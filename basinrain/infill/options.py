@@ -163,6 +163,17 @@ take it: inverse-distance, inverse-distance-ratios; remove power, or choose one 
             return None
         return POWER if self.power is None else self.power
 
+    @property
+    def label(self) -> str:
+        """What tables call the method with its numbers: its name, and its power where it takes one.
+
+        Examples
+        --------
+        >>> InfillOptions(power=1).label, InfillOptions(method="station-average").label
+        ('inverse-distance (power 1)', 'station-average')
+        """
+        return self.method if self.exponent is None else f"{self.method} (power {self.exponent:g})"
+
     def with_method(self, method: str) -> InfillOptions:
         """Return the same options with another method, without those that it does not take.
 

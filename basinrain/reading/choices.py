@@ -17,6 +17,7 @@ _CHOICES: Final = {
     "stamp": ("end", "start"),
     "date_means": ("calendar-day", "ends", "starts"),
     "gaps": ("refuse", "missing"),
+    "reset": ("unknown", "at-reading"),
 }
 _NO_READINGS: Final = ("trace", "presumed-zero", "accumulated")
 _HOUR: Final = re.compile(r"(?P<hour>[01]?[0-9]|2[0-3])(?::(?P<minute>[0-5][0-9]))?")

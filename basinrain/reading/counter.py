@@ -50,6 +50,8 @@ class CounterRules:
         mm at which the counter starts again from 0; None: it does not.
     jitter
         mm by which a reading can fall without meaning, from noise or evaporation.
+    reset_at_reading
+        Whether the counter is only ever set to 0 just after a reading, as one of the rain since midnight is.
 
     Raises
     ------
@@ -59,6 +61,7 @@ class CounterRules:
 
     rollover: float | None = None
     jitter: float = 0.0
+    reset_at_reading: bool = False
 
     def __post_init__(self) -> None:
         if self.rollover is not None and self.jitter >= self.rollover / 2:
@@ -143,7 +146,7 @@ def counter_depths(readings: RainRecord, rules: CounterRules, *, file: str = "")
           more than has ever been measured in such a time. The wrapped rise is the depth.
         - Else a fall by at least half the reading is a reset, at an unknown time since the reading before: what fell
           in the meantime is not known, so that the steps since then are missing. The next depth counts from the new
-          reading.
+          reading. With ``reset_at_reading`` the new reading is what fell since.
         - A fall that only undoes the last rise, or that the first rise after it makes good at once, is no reset: the
           readings between the two were faulty, and all steps from the first of the two to the second are missing.
 
@@ -264,6 +267,9 @@ def _rises(column: _Column, rules: CounterRules, problems: Problems) -> npt.NDAr
     rises = np.round(rises, 9)
     _check_falls(column, rises, [reading for reading, _ in resets], noise, problems)
     for reading, before in resets:
+        if rules.reset_at_reading:
+            rises[reading] = round(float(values[reading]), 9)
+            continue
         _drop_faulty(column, rises, reading, before=before, jitter=rules.jitter + _LEAST)
     _check_rises(column, rises, problems)
     return rises

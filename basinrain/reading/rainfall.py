@@ -49,6 +49,7 @@ def read_rainfall(
     end: str | None = None,
     rollover: float | None = None,
     jitter: float = 0.0,
+    reset: Literal["unknown", "at-reading"] = "unknown",
     columns: Mapping[str, str] | None = None,
 ) -> RainRecord:
     r"""Read the files of one rainfall source.
@@ -96,6 +97,9 @@ def read_rainfall(
         Reading, in the unit, at which a counter starts again from 0.
     jitter
         Depth, in the unit, by which a counter may fall without meaning.
+    reset
+        ``"at-reading"``: a counter is set to 0 just after a reading, so that the next one is what fell since; else that
+        is not known.
     columns
         Which column holds what, by ``time``, ``gauge``, ``depth``, ``flag``, ``steps``, ``storm``.
 
@@ -144,6 +148,7 @@ def read_rainfall(
         "end": end,
         "rollover": rollover,
         "jitter": jitter or None,
+        "reset": None if reset == "unknown" else reset,
         "columns": columns or None,
     }
     check_choices(layout, given, problems)
@@ -190,7 +195,9 @@ def read_rainfall(
     )
     with of_file(first):
         tips = TipRules(interval=step, tip=_in_mm(tip, depths), start=start, end=end) if layout == "tips" else None
-        counter = CounterRules(rollover=_in_mm(rollover, depths), jitter=jitter * depths.factor)
+        counter = CounterRules(
+            rollover=_in_mm(rollover, depths), jitter=jitter * depths.factor, reset_at_reading=reset == "at-reading"
+        )
     if layout == "ghcn-dly" or layout == "ghcn-csv":  # noqa: PLR1714 - a type checker follows this, not a set
         blocks, zone = _read_ghcn(paths, layout, stamps, faults)
     else:

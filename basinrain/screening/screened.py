@@ -102,6 +102,7 @@ class _Around:
     middle: Floats
     least_measured: Floats
     greatest: Floats
+    greatest_measured: Floats
     spread: Floats
     count: Ints
 
@@ -218,8 +219,8 @@ class Screened:
     @cached_property
     def _around(self) -> _Around:
         shape = self.cases.depths.shape
-        middle, least, greatest, spread = (np.full(shape, np.nan) for _ in range(4))
-        around = _Around(middle, least, greatest, spread, np.zeros(shape, dtype=np.int64))
+        middle, least, greatest, measured, spread = (np.full(shape, np.nan) for _ in range(5))
+        around = _Around(middle, least, greatest, measured, spread, np.zeros(shape, dtype=np.int64))
         for g, near in enumerate(self.neighbours):
             if not near:
                 continue
@@ -230,6 +231,7 @@ class Screened:
             around.middle[:, g] = _median(ranked, count)
             around.least_measured[:, g] = np.fmin.reduce(depths, axis=1)
             around.greatest[:, g] = np.fmax.reduce(ranked, axis=1)
+            around.greatest_measured[:, g] = np.fmax.reduce(depths, axis=1)
             apart = np.sort(np.abs(np.sqrt(ranked) - np.sqrt(around.middle[:, [g]])), axis=1)
             around.spread[:, g] = _median(apart, count)
         return around
@@ -248,6 +250,11 @@ class Screened:
     def greatest(self) -> Floats:
         """The greatest neighbour in mm, in the gauge's climate; NaN where none reports; (n_cases, n_gauges)."""
         return self._around.greatest
+
+    @property
+    def greatest_measured(self) -> Floats:
+        """The greatest neighbour in mm, as measured; NaN where none reports; (n_cases, n_gauges)."""
+        return self._around.greatest_measured
 
     @property
     def spread(self) -> Floats:

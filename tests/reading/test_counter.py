@@ -80,6 +80,28 @@ def test_a_gap_is_an_accumulation(tmp_path: Path) -> None:
     ]  # fmt: skip
 
 
+def test_a_counter_of_the_rain_since_midnight(tmp_path: Path) -> None:
+    """Set to 0 just after the reading of midnight: the next reading is the first hour's rain, a dry one included."""
+    text = "time,W01,W02\n"
+    for hour, first, second in (
+        ("04T22", 1.0, 0),
+        ("04T23", 1.4, 0),
+        ("05T00", 1.6, 0.2),
+        ("05T01", 0.2, 0),
+        ("05T02", 0.6, 0),
+    ):
+        text += f"2031-05-{hour}:00,{first},{second}\n"
+    file = written(tmp_path, text)
+    told = read_rainfall(file, layout="counter", unit="mm", interval="1h", reset="at-reading")
+    assert told.depth.T.tolist() == [[0.4, 0.2, 0.2, 0.4], [0.0, 0.2, 0.0, 0.0]]
+    untold = read_rainfall(file, layout="counter", unit="mm", interval="1h")
+    assert np.isnan(untold.depth[:, 0]).tolist() == [False, False, True, False]
+    with pytest.raises(JobError, match="reset: found 'at-reading'; expected it with layout 'counter' only"):
+        read_rainfall(file, layout="wide", unit="mm", interval="1h", reset="at-reading")
+    with pytest.raises(JobError, match="reset: found 'midnight'; expected one of: unknown, at-reading"):
+        read_rainfall(file, layout="counter", unit="mm", interval="1h", reset="midnight")  # type: ignore[arg-type]
+
+
 def test_files_that_follow_on_each_other(tmp_path: Path) -> None:
     """The depth between the last reading of one file and the first of the next is not lost."""
     files = [

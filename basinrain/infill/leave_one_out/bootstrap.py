@@ -1,4 +1,4 @@
-"""Whether a difference in error can be told from chance: a bootstrap over the times of the cases."""
+"""Whether a difference in error can be told from chance: a bootstrap over weeks, times or single cases."""
 
 from __future__ import annotations
 
@@ -9,20 +9,55 @@ import numpy.typing as npt
 
 from basinrain.infill.leave_one_out.comparison import Difference
 
-__all__ = ["FEWEST_WEEKS", "RESAMPLES", "differences_to_best"]
+__all__ = ["FEWEST", "FEWEST_WEEKS", "RESAMPLES", "differences_to_best", "what_is_drawn"]
 
 RESAMPLES: Final = 1000
-FEWEST_WEEKS: Final = 5
-"""With fewer weeks of cases than this there is no interval, and nothing can be told apart."""
+FEWEST_WEEKS: Final = 10
+"""With fewer weeks of cases than this their times are drawn instead."""
+FEWEST: Final = 5
+"""With fewer times than this single cases are drawn; with fewer cases there is no interval."""
 
 _NOTHING: Final = 1e-12
 _BOUNDS: Final = (2.5, 97.5)
 
 Floats = npt.NDArray[np.float64]
+Ints = npt.NDArray[np.int64]
+
+
+def what_is_drawn(week: Ints | None, count: Floats) -> str:
+    """Return what a bootstrap may draw anew: the largest parts of which there are enough.
+
+    Parameters
+    ----------
+    week : array of int, shape (n_times,), or None
+        The week of every time with a case; None where times are longer than a day, or have no dates.
+    count : array of float, shape (n_times,)
+        Number of cases at every time.
+
+    Returns
+    -------
+    str
+        ``"week"`` from 10 weeks on; else ``"time"`` from 5 times on (of days of one storm the errors go together, so
+        that intervals come out too narrow); else ``"case"`` from 5 cases on, a gauge at a time each (far too narrow);
+        else ``""``, nothing.
+
+    Examples
+    --------
+    >>> days = np.arange(14)
+    >>> what_is_drawn(days // 7, np.ones(14)), what_is_drawn(days * 7, np.ones(14))
+    ('time', 'week')
+    >>> what_is_drawn(None, np.array([9.0, 9.0])), what_is_drawn(None, np.array([2.0, 2.0]))
+    ('case', '')
+    """
+    if week is not None and len(np.unique(week)) >= FEWEST_WEEKS:
+        return "week"
+    if len(count) >= FEWEST:
+        return "time"
+    return "case" if count.sum() >= FEWEST else ""
 
 
 def differences_to_best(
-    candidates: tuple[str, ...], squared: Floats, count: Floats, week: npt.NDArray[np.int64], *, seed: int
+    candidates: tuple[str, ...], squared: Floats, count: Floats, group: Ints | None, *, seed: int
 ) -> tuple[Difference, ...]:
     """Return how much worse every candidate is than the best.
 
@@ -30,21 +65,21 @@ def differences_to_best(
     ----------
     candidates : tuple of str
         Labels, from simple to complex; of two that are equally good the first is the best.
-    squared : array of float, shape (n_candidates, n_cases)
-        Sums over the gauges of squared errors, mm².
-    count : array of float, shape (n_cases,)
-        Number of gauges in each sum; above 0 in all.
-    week : array of int, shape (n_cases,)
-        Cases of equal numbers are drawn together: gauges err together, and days of one storm do.
+    squared : array of float, shape (n_candidates, n)
+        Sums of squared errors, mm²: over the gauges at a time, or of single cases.
+    count : array of float, shape (n,)
+        Number of cases in each sum; above 0 in all.
+    group : array of int, shape (n,), or None
+        Sums of equal numbers are drawn together: gauges err together, and days of one storm do. None: nothing is drawn.
     seed
         Of the random draws.
 
     Returns
     -------
     tuple of Difference
-        With the percentile interval at 95 % over 1,000 resamples of whole weeks (Efron and Tibshirani 1993, An
-        Introduction to the Bootstrap, ch. 13; from memory). A difference below 1e-12 mm, or fewer than 5 weeks, for
-        which the bounds are NaN, are not distinguishable.
+        With the percentile interval at 95 % over 1,000 resamples of whole groups (Efron and Tibshirani 1993, An
+        Introduction to the Bootstrap, ch. 13; from memory). Not distinguishable are a difference below 1e-12 mm, and
+        any where nothing is drawn, for which the bounds are NaN.
 
     Examples
     --------
@@ -57,11 +92,12 @@ def differences_to_best(
     """
     rmse = np.sqrt(squared.sum(axis=1) / count.sum())
     best = int(np.flatnonzero(rmse <= rmse.min() + _NOTHING)[0])
-    weeks, of_case = np.unique(week, return_inverse=True)
-    sums = np.stack([np.bincount(of_case.ravel(), row, len(weeks)) for row in (*squared, count)])
     low, high = np.full((2, len(candidates)), np.nan)
-    if len(weeks) >= FEWEST_WEEKS:
-        draws = np.random.default_rng(seed).multinomial(len(weeks), np.full(len(weeks), 1 / len(weeks)), RESAMPLES)
+    if group is not None:
+        groups, of_sum = np.unique(group, return_inverse=True)
+        n = len(groups)
+        sums = np.stack([np.bincount(of_sum.ravel(), row, n) for row in (*squared, count)])
+        draws = np.random.default_rng(seed).multinomial(n, np.full(n, 1 / n), RESAMPLES)
         drawn = sums @ draws.T.astype(float)
         errors = np.sqrt(drawn[:-1] / drawn[-1])
         low, high = np.percentile(errors - errors[best], _BOUNDS, axis=1)

@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import Any
-
 from basinrain.infill.leave_one_out.comparison import Candidate
 from basinrain.infill.options import InfillOptions
 from basinrain.infill.registry import METHODS, InfillMethod
@@ -36,18 +34,16 @@ def candidates_of(options: InfillOptions) -> tuple[Candidate, ...]:
 'inverse-distance (power 3)']
     """
     return tuple(
-        Candidate(label=label, options=replace(options, method=method.name, **given))
+        Candidate(label=variant.label, options=variant)
         for method in sorted(METHODS.values(), key=lambda method: method.order)
-        for label, given in _variants(method, options)
+        for variant in _variants(method, options)
     )
 
 
-def _variants(method: InfillMethod, options: InfillOptions) -> list[tuple[str, dict[str, Any]]]:
-    """Return labels and the options that differ from the job's."""
-    given: dict[str, Any] = {
-        name: getattr(options, name) if name in method.takes else None for name in ("nearest", "min_donors", "power")
-    }
+def _variants(method: InfillMethod, options: InfillOptions) -> list[InfillOptions]:
+    """Return the job's options with this method, once for each power that takes part."""
+    own = options.with_method(method.name)
     if method.name != _INVERSE_DISTANCE:
-        return [(method.name, given)]
+        return [own]
     powers = sorted({*_POWERS, *(() if options.power is None else (float(options.power),))})
-    return [(f"{method.name} (power {power:g})", {**given, "power": power}) for power in powers]
+    return [replace(own, power=power) for power in powers]

@@ -42,9 +42,8 @@ class Cases:
     ends : array of datetime64[s], shape (n_cases,)
     months, part : array of int, shape (n_cases,)
         Month (0 without times), and part of the record.
-    week : array of int, shape (n_cases,)
-        Times of one week stand or fall together when cases are drawn at random; each alone where steps are longer than
-        a week, or have no times.
+    week : array of int, shape (n_cases,), or None
+        The week of the record that each lies in; None where steps are longer than a day, or have no times.
     depth
         Gives the depths of some cases, shape (n, n_gauges) in mm, NaN where the gauge has no value.
     n_gauges : int
@@ -59,9 +58,16 @@ class Cases:
     ends: npt.NDArray[np.datetime64]
     months: Ints
     part: Ints
-    week: Ints
+    week: Ints | None
     depth: Callable[[slice], Floats]
     n_gauges: int
+
+    @property
+    def noun(self) -> str:
+        """What one time is: a day, a step, or a total without times."""
+        if self.scale == "day":
+            return "day"
+        return "storm total" if np.isnat(self.ends).any() else "step"
 
     def __len__(self) -> int:
         return len(self.ends)
@@ -120,7 +126,7 @@ def cases_of(record: RainRecord, days: Days) -> tuple[Cases, bool]:
         ends=days.ends[wet],
         months=days.months[wet],
         part=parts_of(len(totals))[wet],
-        week=_weeks(days.ends[wet], record.ends[0]) if by_day else np.arange(len(wet)),
+        week=_weeks(days.ends[wet], record.ends[0]) if by_day else None,
         depth=lambda chunk: totals[wet[chunk]],
         n_gauges=totals.shape[1],
     )

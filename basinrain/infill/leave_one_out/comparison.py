@@ -21,7 +21,7 @@ class Candidate:
     Parameters
     ----------
     label
-        What tables call it: ``"inverse-distance (power 1)"``, ``"station-average"``.
+        What tables call it: :attr:`~basinrain.infill.options.InfillOptions.label`, or a name of one's own.
     options
         The method and its numbers.
 
@@ -107,7 +107,7 @@ class Difference:
     difference
         mm: the candidate's root-mean-square error minus the best's, never below 0.
     low, high
-        mm: the 95 % bootstrap interval of it.
+        mm: the 95 % bootstrap interval of it; NaN where there are too few cases for one.
     distinguishable
         Whether the interval lies above 0.
 
@@ -156,12 +156,16 @@ class Comparison:
         By scale (that of the score first), gauge (all pooled first) and candidate.
     differences : tuple of Difference
         One a candidate, in their order; that of the best is 0.
+    drawn : str
+        What the intervals come from: ``"week"``, ``"time"`` or ``"case"`` drawn anew; empty where there are too few
+        cases for an interval.
     best, chosen : str
-        The label with the least error, and the first of the order that cannot be told from it.
+        The label with the least error, and the first of the order that cannot be told from it; the best itself where
+        there is no interval.
     chosen_options : InfillOptions
         Method and numbers of the chosen one, with all else as the job has it.
     reason : str
-        Why it is taken, one sentence with its numbers.
+        Why it is taken, one sentence with its numbers, in plain ASCII, as ``notes`` are.
     notes : tuple of Note
         What the comparison does and does not say.
 
@@ -179,6 +183,7 @@ class Comparison:
     estimated: npt.NDArray[np.float64]
     scores: tuple[Score, ...]
     differences: tuple[Difference, ...]
+    drawn: str
     best: str
     chosen: str
     chosen_options: InfillOptions

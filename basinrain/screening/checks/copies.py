@@ -217,8 +217,8 @@ def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begi
             start=start,
             end=end,
             severity="erroneous",
-            evidence=f"{equal if whole else n} wet {sheet.unit}s on end are, value by value, those of "
-            f"{view.network.ids[a]}, {view.distances[a, b] / 1000:.1f} km away.",
+            evidence=f"{equal if whole else n} wet {sheet.unit}s{'' if whole else ' on end'} are, value by value, those "
+            f"of {view.network.ids[a]}, {view.distances[a, b] / 1000:.1f} km away.",
             action="Find out whose record it is, and exclude or reject the other's: one rain must not count twice.",
             others=(view.network.ids[a],),
             edit=None

@@ -56,6 +56,8 @@ def far_from_neighbours(view: Screened) -> Iterator[Finding]:
             (away > OUTLYING)
             & (cases.depths - view.middle > LEAST_EXCESS)
             & (cases.depths > TIMES_GREATEST * view.greatest)
+            # In a great storm a dry place may have as much as its wet neighbours.
+            & (cases.depths > view.greatest_measured)
             & (view.reporting >= LEAST_REPORTING)
         )
     for g in np.flatnonzero(odd.any(axis=0)).tolist():

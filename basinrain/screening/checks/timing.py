@@ -211,7 +211,7 @@ def _finding(view: Screened, g: int, lags: Lags, seasons: slice, lag: int) -> Fi
         evidence=f"It fits the mean of its neighbours best {words} {'late' if lag > 0 else 'early'}: correlation of "
         f"root depths {correlation[middle + lag]:.2f}, and {correlation[middle]:.2f} as it stands, over "
         f"{int(lags.wet[seasons].sum())} wet {'days' if lags.seconds >= DAY else 'intervals'}.",
-        action="Ask for the clock, the time zone and what the date of a reading means; then declare it or shift the record."
+        action="Ask for the clock, the time zone and what a reading's date means; then declare it or shift the record."
         if entire
         else f"Ask what changed then; shift the stretch by {moved}, after rejecting what stands where it moves to.",
         others=view.ids(view.neighbours[g]),

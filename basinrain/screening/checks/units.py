@@ -50,6 +50,9 @@ HARD_PLACES: Final = 4.0
 """Times: mountains make neighbours differ by up to this over a whole record, so that a smaller factor over the whole of
 it is no evidence of another unit."""
 
+LEAST_SEASON: Final = 15
+"""Months of one season, five years of them, from which a season has a usual ratio of its own."""
+
 LEAST_NEIGHBOURS: Final = 2
 
 
@@ -121,17 +124,16 @@ def _whole(view: Screened, g: int, months: _Months) -> Finding | None:
 
 def _stretches(view: Screened, g: int, months: _Months, first_of_month: Ints) -> Iterator[Finding]:
     by_neighbour = months.ratio(LEAST_BLOCK)
-    counts = np.isfinite(by_neighbour).sum(axis=0)
-    told = np.flatnonzero(counts >= 2 * LEAST_MONTHS)
+    told = np.flatnonzero(np.isfinite(by_neighbour).sum(axis=0) >= 2 * LEAST_MONTHS)
     if len(told) < LEAST_NEIGHBOURS:
         return
-    usual = np.array([_usual(column[np.isfinite(column)]) for column in by_neighbour[:, told].T])
     # Every neighbour's ratio against its usual one: what lasting climate there is between the two does not count.
+    usual = _usual_ratios(by_neighbour[:, told], view.months[first_of_month])
     off = by_neighbour[:, told] - usual
-    enough = np.isfinite(off).sum(axis=1) >= LEAST_NEIGHBOURS
-    telling = np.flatnonzero(enough)
+    telling = np.flatnonzero(np.isfinite(off).sum(axis=1) >= LEAST_NEIGHBOURS)
     if len(telling) < 2 * LEAST_MONTHS:
         return
+    expected = _Months(months.mine[:, told], months.theirs[:, told] * np.exp(usual))
     away = np.nanmedian(off[telling], axis=1)
     stop_of_month = np.append(first_of_month[1:], len(view.cases.ends))
     # From month to month, so that a change of unit half way does not count as scatter.
@@ -139,18 +141,40 @@ def _stretches(view: Screened, g: int, months: _Months, first_of_month: Ints) ->
     found: list[tuple[float, int, int, float, float, float]] = []
     for factor in FACTORS:
         for a, b, sure in _segments(away, np.log(factor), scatter):
-            ratios = months.total(telling[a:b]).ratio(LEAST_TOTAL)[0, told]
-            if np.isfinite(ratios).sum() >= LEAST_NEIGHBOURS:
-                stands = float(np.nanmedian(ratios - usual))
-                if abs(stands - np.log(factor)) <= (CLOSE_SMALL if _small(factor) else CLOSE):
-                    found.append((sure, a, b, factor, float(np.nanmedian(ratios)), stands))
+            stands = expected.total(telling[a:b]).ratio(LEAST_TOTAL)
+            if np.isfinite(stands).sum() < LEAST_NEIGHBOURS:
+                continue
+            stand = float(np.nanmedian(stands))
+            if abs(stand - np.log(factor)) <= (CLOSE_SMALL if _small(factor) else CLOSE):
+                ratio = float(np.nanmedian(months.total(telling[a:b]).ratio(LEAST_BLOCK)[:, told]))
+                found.append((sure, a, b, factor, ratio, stand))
     taken: Bools = np.zeros(len(away), dtype=bool)
-    for _, a, b, factor, ratio, stands in sorted(found, key=lambda item: (-item[0], item[1], item[3])):
+    for _, a, b, factor, ratio, stand in sorted(found, key=lambda item: (-item[0], item[1], item[3])):
         if taken[a:b].any():
             continue
         taken[a:b] = True
         first, stop = int(first_of_month[telling[a]]), int(stop_of_month[telling[b - 1]])
-        yield _finding(view, g, factor, float(np.exp(ratio)), (first, stop, float(np.exp(ratio - stands))))
+        yield _finding(view, g, factor, float(np.exp(ratio)), (first, stop, float(np.exp(ratio - stand))))
+
+
+def _usual_ratios(ratios: Floats, calendar: Ints) -> Floats:
+    """Return what each ratio would usually be, by the season where the record is long enough to tell seasons apart.
+
+    Mountains and plains differ in summer otherwise than in winter, every year.
+    """
+    usual = np.empty_like(ratios)
+    seasons = [np.isin(calendar, [(month + k - 1) % 12 + 1 for k in (-1, 0, 1)]) for month in range(1, 13)]
+    for j, column in enumerate(ratios.T):
+        known = np.isfinite(column)
+        lasting, parted = _usual(column[known])
+        usual[:, j] = lasting
+        if parted:
+            continue
+        for month, season in enumerate(seasons, 1):
+            told = column[season & known]
+            if len(told) >= LEAST_SEASON:
+                usual[calendar == month, j] = np.median(told)
+    return usual
 
 
 def _small(factor: float) -> bool:
@@ -180,16 +204,18 @@ def _richest(gain: Floats) -> tuple[int, int, float]:
     return first, stop, float(above[stop])
 
 
-def _usual(ratio: Floats) -> float:
-    """Return the logarithm of the gauge's usual ratio: the median, or of two camps the one nearer to 1."""
-    middle = float(np.median(ratio))
+def _usual(ratio: Floats) -> tuple[float, bool]:
+    """Return the logarithm of the gauge's usual ratio, and whether the record falls into two camps.
+
+    The median; of two camps the one nearer to 1.
+    """
     ordered = np.sort(ratio)
     gap = int(np.argmax(np.diff(ordered)))
     low, high = ordered[: gap + 1], ordered[gap + 1 :]
     # Camps of nearly equal size, far apart: the unit changed half way, and the median could fall into either.
     if min(len(low), len(high)) > 0.3 * len(ratio) and np.median(high) - np.median(low) > np.log(2.0):
-        return float(min(np.median(low), np.median(high), key=abs))
-    return middle
+        return float(min(np.median(low), np.median(high), key=abs)), True
+    return float(np.median(ratio)), False
 
 
 def _finding(view: Screened, g: int, factor: float, ratio: float, stretch: tuple[int, int, float] | None) -> Finding:
