@@ -77,9 +77,10 @@ class InfillChoice:
 
 
 def compare(job: Job, record: RainRecord, network: GaugeNetwork, say: Callable[[str], None]) -> Comparison:
-    """Return every infill method scored on a job's record."""
+    """Return every infill method scored on a job's record, whatever method the job names."""
     ratios, _ = _ratios(job, record, network)
-    return compare_infill(record, network, options=_options(job), ratios=ratios, progress=say)
+    names = "with the infill method named" if job.infill.method == LEAVE_ONE_OUT else "which infills without comparing"
+    return _compared(job, record, network, ratios, say, instead=f"use 'basinrain storm', {names}")
 
 
 def choose_infill(
@@ -115,7 +116,7 @@ def choose_infill(
     if job.infill.method == LEAVE_ONE_OUT:
         if comparison is None:
             say("comparing")
-            comparison = compare_infill(record, network, options=options, ratios=ratios, progress=say)
+            comparison = _compared(job, record, network, ratios, say, instead="name the infill method")
         chosen = comparison
         options = comparison.chosen_options
         notes = (*notes, *comparison.notes)
@@ -124,6 +125,26 @@ def choose_infill(
     if options.chosen_method.needs_normals and ratios is None:
         notes = (*notes, *suspect_normal_units(network))
     return InfillChoice(record, network, options, ratios, chosen, notes)
+
+
+def _compared(
+    job: Job,
+    record: RainRecord,
+    network: GaugeNetwork,
+    ratios: NormalRatios | None,
+    say: Callable[[str], None],
+    *,
+    instead: str,
+) -> Comparison:
+    return compare_infill(
+        record,
+        network,
+        options=_options(job),
+        ratios=ratios,
+        progress=say,
+        depth_unit=job.job.depth_unit,
+        instead=instead,
+    )
 
 
 def _options(job: Job) -> InfillOptions:

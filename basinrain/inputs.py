@@ -32,7 +32,7 @@ from basinrain.screening import (
     apply_rejections,
     edit_rows,
     screen,
-    settle_findings,
+    spread_edits,
 )
 from basinrain.screening.edits import Action
 from basinrain.spreading import spread_totals
@@ -60,7 +60,8 @@ class Inputs:
     record
         The same without what was rejected, corrected for catch.
     screening
-        What the checks found in the record before anything was rejected, and what the job says of it.
+        What the checks found in ``raw``, how consistent the years are without what was rejected, and what the job says
+        of it.
     edits
         The job's changes of the record.
     edit_rows
@@ -140,7 +141,7 @@ def _read(
         exclude=job.gauges.exclude,
     )
     rows = tuple(edit_rows(sources, edits))
-    return network, record, polygons, edits, rows, (*basin_notes, *step_notes)
+    return network, record, polygons, edits, rows, (*basin_notes, *step_notes, *spread_edits(record, edits))
 
 
 def attempt(problems: Problems, work: Callable[[], _T]) -> _T | None:
@@ -230,12 +231,18 @@ def _screen(job: Job, record: RainRecord, network: GaugeNetwork) -> Screening:
         )
     problems.raise_as(JobError)
     envelope = None if table.envelope is None else reading.read_envelope(job.path(table.envelope))
-    found = screen(
+    return screen(
         record,
         network,
-        options=ScreeningOptions(envelope=envelope, unheated=table.unheated, cold_months=table.cold_months),
+        options=ScreeningOptions(
+            envelope=envelope,
+            unheated=table.unheated,
+            cold_months=table.cold_months,
+            depth_unit="in" if job.job.depth_unit == "in" else "mm",
+        ),
+        reject=table.reject,
+        accept=table.accept,
     )
-    return replace(found, findings=settle_findings(found.findings, reject=table.reject, accept=table.accept))
 
 
 def window_of(job: Job, table: StormTable, zone: str) -> tuple[np.datetime64 | None, np.datetime64 | None]:

@@ -115,7 +115,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
 
 
 def run_screen(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> ScreenRun:
-    """Screen a job's record: is it fit to use.
+    r"""Screen a job's record: is it fit to use.
 
     Parameters
     ----------
@@ -131,6 +131,29 @@ def run_screen(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
     ------
     BasinRainError
         The job, a file, an edit or an entry of ``[screening]`` is at fault; every problem found is listed.
+
+    Examples
+    --------
+    2,000 mm in a day is more than was ever measured. The value stays until the job rejects it.
+
+    >>> import tempfile
+    >>> folder = Path(tempfile.mkdtemp())
+    >>> _ = (folder / "gauges.csv").write_text("id,x,y\nA,0,0\nB,1,0\nC,2,0\n")
+    >>> _ = (folder / "basins.geojson").write_text(
+    ...     '{"type": "Polygon", "coordinates": [[[0, 0], [2, 0], [2, 2], [0, 2], [0, 0]]]}'
+    ... )
+    >>> _ = (folder / "job.toml").write_text(
+    ...     '[job]\nname = "Three in a row"\n[gauges]\nfile = "gauges.csv"\ncrs = "local"\nlength_unit = "km"\n'
+    ...     '[rainfall]\nfile = "rain.csv"\nunit = "mm"\ninterval = "1d"\n'
+    ...     '[basins]\nfile = "basins.geojson"\ncrs = "local"\nlength_unit = "km"\n'
+    ... )
+    >>> _ = (folder / "rain.csv").write_text("date,A,B,C\n2031-05-04,8,2000,6\n2031-05-05,0,0,\n")
+    >>> run = run_screen(folder / "job.toml")
+    >>> run.findings[["check", "gauge", "severity", "state"]].values.tolist()
+    [['greatest-depths', 'B', 'erroneous', 'open']]
+    >>> run = run_screen(folder / "job.toml", ["screening.reject=['greatest-depths B']"])
+    >>> run.findings["state"].tolist(), run.record.depth[0]
+    (['rejected'], array([ 8., nan,  6.]))
     """
     job, say = _resolve(job, settings), progress or (lambda _: None)
     given = read_inputs(job, say)
@@ -139,7 +162,7 @@ def run_screen(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
 
 
 def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> InfillRun:
-    """Compare the infill methods on a job's own network, gauge by gauge left out, and complete its record.
+    r"""Compare the infill methods on a job's own network, gauge by gauge left out, and complete its record.
 
     Parameters
     ----------
@@ -156,6 +179,31 @@ def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
     ------
     BasinRainError
         The job, a file or the data are at fault; every problem found is listed.
+
+    Examples
+    --------
+    B always has the mean of A and C, so leaving it out shows no error with the station average.
+
+    >>> import tempfile
+    >>> folder = Path(tempfile.mkdtemp())
+    >>> _ = (folder / "gauges.csv").write_text("id,x,y\nA,0,0\nB,1,0\nC,2,0\n")
+    >>> _ = (folder / "basins.geojson").write_text(
+    ...     '{"type": "Polygon", "coordinates": [[[0, 0], [2, 0], [2, 2], [0, 2], [0, 0]]]}'
+    ... )
+    >>> _ = (folder / "job.toml").write_text(
+    ...     '[job]\nname = "Three in a row"\n[gauges]\nfile = "gauges.csv"\ncrs = "local"\nlength_unit = "km"\n'
+    ...     '[rainfall]\nfile = "rain.csv"\nunit = "mm"\ninterval = "1d"\n'
+    ...     '[basins]\nfile = "basins.geojson"\ncrs = "local"\nlength_unit = "km"\n'
+    ... )
+    >>> rows = [(2, 3, 4), (9, 7, 5), (0, 4, 8), (6, 6, 6), (1, 2, 3), (5, "", 7)]
+    >>> lines = [f"2031-05-{4 + day:02d},{a},{b},{c}" for day, (a, b, c) in enumerate(rows)]
+    >>> _ = (folder / "rain.csv").write_text("\n".join(["date,A,B,C", *lines]))
+    >>> run = run_infill(folder / "job.toml", ["infill.method='station-average'"])
+    >>> scores = run.infill_scores.set_index(["infill_method", "gauge"])["rmse"]
+    >>> float(scores["station-average", "B"]), float(scores["nearest-gauge", "B"].round(2))
+    (0.0, 2.1)
+    >>> run.infilled[["gauge", "depth", "donors"]].values.tolist()
+    [['B', 6.0, 'A:0.5 C:0.5']]
     """
     job, say = _resolve(job, settings), progress or (lambda _: None)
     given = read_inputs(job, say)

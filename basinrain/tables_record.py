@@ -23,10 +23,12 @@ __all__ = ["completeness", "double_mass", "edit_table", "findings", "homogeneity
 _FINDINGS = "check gauge from to severity state evidence action others key"
 _EDITS = "gauge from to action value reason by date steps_changed depth_before depth_after depth_unit"
 _DOUBLE_MASS = (
-    "gauge reference year total cumulative reference_cumulative adjusted depth_unit break_after ratio fitted_ratio "
-    "significance"
+    "gauge reference year days total cumulative reference_cumulative adjusted depth_unit break_after ratio "
+    "fitted_ratio significance"
 )
-_HOMOGENEITY = "gauge reference test years statistic critical_5 critical_1 rejected_at change_after counted grade"
+_HOMOGENEITY = (
+    "gauge reference test years fewest_days statistic critical_5 critical_1 rejected_at change_after counted grade"
+)
 
 
 def findings(run: Run) -> pd.DataFrame:
@@ -119,6 +121,7 @@ def edit_table(run: Run) -> pd.DataFrame:
 def double_mass(run: ScreenRun) -> pd.DataFrame:
     """Return ``double_mass``: one row per gauge and year, with the cumulative curve and what it says of the gauge.
 
+    Totals of the gauge and of the reference are over the ``days`` of the year that they share.
     ``adjusted`` is the year's total as the slope ratio would have it; the record is not changed by it. ``break_after``
     is blank, ``ratio`` and ``significance`` are NaN, where no break was looked for.
     """
@@ -131,6 +134,7 @@ def double_mass(run: ScreenRun) -> pd.DataFrame:
                 "gauge": curve.gauge,
                 "reference": " ".join(curve.reference),
                 "year": curve.years,
+                "days": curve.days,
                 "total": curve.totals / mm,
                 "cumulative": curve.y / mm,
                 "reference_cumulative": curve.x / mm,
@@ -150,8 +154,9 @@ def double_mass(run: ScreenRun) -> pd.DataFrame:
 def homogeneity(run: ScreenRun) -> pd.DataFrame:
     """Return ``homogeneity``: one row per gauge and test.
 
-    ``critical_5`` and ``critical_1`` are NaN where the series is too short for a table; ``grade`` and
-    ``change_after`` are the gauge's, blank where there is none.
+    ``fewest_days`` is the least number of days that a year which took part is over. ``critical_5`` and ``critical_1``
+    are NaN where the series is too short for a table; ``grade`` and ``change_after`` are the gauge's, blank where there
+    is none.
     """
     import pandas as pd
 
@@ -161,6 +166,7 @@ def homogeneity(run: ScreenRun) -> pd.DataFrame:
             " ".join(tested.reference),
             test.test,
             test.n,
+            int(tested.days.min()),
             test.statistic,
             test.critical.get(0.05, np.nan),
             test.critical.get(0.01, np.nan),

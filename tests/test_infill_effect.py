@@ -21,7 +21,7 @@ from basinrain.errors import DataError, MethodError, Problem
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import METHODS, InfillOptions, complete
 from basinrain.infill.relations import relations_of
-from basinrain.infill_effect import InfillEffect, infill_effect, infill_label, infill_spread_cautions
+from basinrain.infill_effect import InfillEffect, infill_effect, infill_spread_cautions
 from basinrain.rainfall import RainRecord, Status
 from basinrain.weights import WeightTable
 
@@ -344,10 +344,3 @@ def test_a_warning_names_the_widest_averaging_method_first() -> None:
     (note,) = infill_spread_cautions("Quill", ("all",), effect)
     assert "basin all by idw" in note.text
     assert "100 % of their mean, 20 % by arithmetic; the job has" in note.text
-
-
-def test_a_label_carries_the_power_only_where_there_is_one() -> None:
-    """The default power is told as well."""
-    assert infill_label(InfillOptions()) == IDW
-    assert infill_label(InfillOptions(power=1.5)) == "inverse-distance (power 1.5)"
-    assert infill_label(InfillOptions(method="normal-ratio")) == "normal-ratio"

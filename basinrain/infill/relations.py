@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
 
@@ -14,7 +15,7 @@ from basinrain.infill.days import day_totals
 from basinrain.infill.record_normals import NormalRatios
 from basinrain.rainfall import RainRecord
 
-__all__ = ["AT_LEAST", "Relations", "relations_of", "relations_of_record"]
+__all__ = ["AT_LEAST", "Relations", "relations_of", "relations_of_record", "relations_without_parts"]
 
 AT_LEAST: Final = 30
 """Common cases that a pair of gauges needs."""
@@ -26,6 +27,7 @@ _NONE: Final = 1e-9
 """Correlations this close to 0 are 0, so that rounding does not decide who donates."""
 
 Floats = npt.NDArray[np.float64]
+Ints = npt.NDArray[np.int64]
 
 
 @dataclass(frozen=True, eq=False)
@@ -110,9 +112,22 @@ class _Sums:
 
     @classmethod
     def of(cls, values: Floats) -> _Sums:
-        here = ~np.isnan(values)
-        filled, there = np.where(here, values, 0.0), here.astype(float)
-        return cls(there.T @ there, filled.T @ there, (filled**2).T @ there, filled.T @ filled)
+        there = (~np.isnan(values)).astype(float)
+        count = there.T @ there
+        filled = np.where(there > 0, values, 0.0)
+        # Where all are dry only the count grows.
+        wet = filled.any(axis=1)
+        filled, there = filled[wet], there[wet]
+        return cls(count, filled.T @ there, (filled**2).T @ there, filled.T @ filled)
+
+    @classmethod
+    def zero(cls, n: int) -> _Sums:
+        return cls(*(np.zeros((n, n)) for _ in range(4)))
+
+    def __add__(self, other: _Sums) -> _Sums:
+        return _Sums(
+            self.count + other.count, self.total + other.total, self.square + other.square, self.product + other.product
+        )
 
     def add(self, other: _Sums, means: Floats) -> None:
         """Add the sums of one month, each value divided by its gauge's mean over the years of the pair."""
@@ -200,17 +215,57 @@ def relations_of(
     """
     values = np.asarray(depths, dtype=float)
     month = np.zeros(len(values), dtype=np.int64) if months is None else np.asarray(months, dtype=np.int64)
+    _check(values, month, network, (ratios,))
+    return _relations([(values, month)], [(0,)], network, (ratios,), at_least)[0]
+
+
+def relations_without_parts(
+    depths: npt.ArrayLike,
+    network: GaugeNetwork,
+    months: npt.ArrayLike,
+    part: npt.ArrayLike,
+    *,
+    ratios: Sequence[NormalRatios | None],
+    at_least: int = AT_LEAST,
+) -> tuple[Relations, ...]:
+    """Return the relations between gauges without each part of the cases in turn.
+
+    Parameters
+    ----------
+    depths, network, months, at_least
+        As for :func:`relations_of`.
+    part : array-like of int, shape (n_cases,)
+        The part of every case, from 0.
+    ratios : sequence of NormalRatios or None
+        One a part: normals from the record for the relations without it; None for the network's.
+
+    Returns
+    -------
+    tuple of Relations
+        One a part, of the cases of all other parts.
+
+    Raises
+    ------
+    DataError
+        The arrays' shapes do not fit the network.
+
+    Notes
+    -----
+    Every part is summed once, and the sums of the others are added; nothing is subtracted, so nothing cancels.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B"), x=[0.0, 1e3], y=[0.0, 0.0], crs="local")
+    >>> depths = [[1.0, 2.0], [2.0, 4.0], [1.0, 3.0]]
+    >>> found = relations_without_parts(depths, network, [5, 5, 5], [0, 0, 1], ratios=(None, None), at_least=1)
+    >>> [float(relations.slope[1, 0]) for relations in found]
+    [3.0, 2.0]
+    """
+    values, month = np.asarray(depths, dtype=float), np.asarray(months, dtype=np.int64)
     _check(values, month, network, ratios)
-    sums = _Sums.of(values)
-    of_ratios = _ratio_sums(values, month, network, ratios)
-    return Relations(
-        network.ids,
-        sums.count.astype(np.int64),
-        sums.correlation(at_least),
-        sums.slope(at_least),
-        None if of_ratios is None else of_ratios.correlation(at_least),
-        None if of_ratios is None else of_ratios.slope(at_least),
-    )
+    groups = [np.asarray(part) == k for k in range(len(ratios))]
+    others = [tuple(k for k in range(len(ratios)) if k != left) for left in range(len(ratios))]
+    return _relations([(values[mine], month[mine]) for mine in groups], others, network, ratios, at_least)
 
 
 def relations_of_record(
@@ -241,27 +296,65 @@ def relations_of_record(
     return relations_of(days.totals, network, days.months, ratios=ratios, at_least=at_least)
 
 
+def _relations(
+    parts: list[tuple[Floats, Ints]],
+    kept: Sequence[tuple[int, ...]],
+    network: GaugeNetwork,
+    ratios: Sequence[NormalRatios | None],
+    at_least: int,
+) -> tuple[Relations, ...]:
+    """Return the relations of some choices of parts, each with its own normals; a part is depths and their months."""
+    sums = _sums_of_kept([_Sums.of(values) for values, _ in parts], kept, len(network))
+    return tuple(
+        Relations(
+            network.ids,
+            mine.count.astype(np.int64),
+            mine.correlation(at_least),
+            mine.slope(at_least),
+            None if of_ratios is None else of_ratios.correlation(at_least),
+            None if of_ratios is None else of_ratios.slope(at_least),
+        )
+        for mine, of_ratios in zip(sums, _ratio_sums(parts, kept, network, ratios), strict=True)
+    )
+
+
+def _sums_of_kept(sums: list[_Sums], kept: Sequence[tuple[int, ...]], n: int) -> list[_Sums]:
+    return [sum((sums[k] for k in chosen), start=_Sums.zero(n)) for chosen in kept]
+
+
 def _ratio_sums(
-    values: Floats, months: npt.NDArray[np.int64], network: GaugeNetwork, ratios: NormalRatios | None
-) -> _Sums | None:
+    parts: list[tuple[Floats, Ints]],
+    kept: Sequence[tuple[int, ...]],
+    network: GaugeNetwork,
+    ratios: Sequence[NormalRatios | None],
+) -> Sequence[_Sums | None]:
+    """Return the sums over ratios to normals, one a choice of parts; None without normals."""
     n = len(network)
-    if ratios is not None:
-        sums = _Sums(*(np.zeros((n, n)) for _ in range(4)))
+    from_record = [found for found in ratios if found is not None]
+    if from_record:
+        totals = [_Sums.zero(n) for _ in kept]
+        # Month by month, since every pair has its own means: the sums of all months at once would not fit.
         for month in range(1, 13):
-            sums.add(_Sums.of(values[months == month]), ratios.means[month - 1])
-        return sums
+            by_part = [_Sums.of(values[months == month]) for values, months in parts]
+            for total, mine, found in zip(totals, _sums_of_kept(by_part, kept, n), from_record, strict=True):
+                total.add(mine, found.means[month - 1])
+        return totals
     if network.normals is None:
-        return None
-    if network.normals.shape[1] == 1:
-        normals = np.broadcast_to(network.normals[:, 0], values.shape)
+        return [None] * len(kept)
+    return _sums_of_kept([_Sums.of(_over_normals(*part, network.normals)) for part in parts], kept, n)
+
+
+def _over_normals(values: Floats, months: Ints, given: Floats) -> Floats:
+    """Return depths divided by the normals of the case's month, NaN where there is none."""
+    if given.shape[1] == 1:
+        normals = np.broadcast_to(given[:, 0], values.shape)
     else:
-        table = np.vstack([network.normals.sum(axis=1), network.normals.T])
-        normals = table[months]
+        normals = np.vstack([given.sum(axis=1), given.T])[months]
     usable = np.isfinite(normals) & (normals > 0)
-    return _Sums.of(np.where(usable, values / np.where(usable, normals, 1.0), np.nan))
+    return np.where(usable, values / np.where(usable, normals, 1.0), np.nan)
 
 
-def _check(values: Floats, months: npt.NDArray[np.int64], network: GaugeNetwork, ratios: NormalRatios | None) -> None:
+def _check(values: Floats, months: Ints, network: GaugeNetwork, ratios: Sequence[NormalRatios | None]) -> None:
     problems = Problems()
     if values.ndim != 2 or values.shape[1] != len(network):
         problems.add(
@@ -269,7 +362,7 @@ def _check(values: Floats, months: npt.NDArray[np.int64], network: GaugeNetwork,
         )
     if months.shape != values.shape[:1] or not ((months >= 0) & (months <= 12)).all():
         problems.add(item="months", found="other values", expected="a month from 1 to 12, or 0, for every case")
-    if ratios is not None and ratios.gauges != network.ids:
+    if any(found is not None and found.gauges != network.ids for found in ratios):
         problems.add(
             item="normals from the record",
             found="other gauges than the network's, or another order",

@@ -200,8 +200,8 @@ class EditTable(Table):
     """``[[edit]]``: one change of the record, by whom and why."""
 
     gauge: str
-    start: Annotated[Moment, Field(alias="from")]
-    end: Annotated[Moment, Field(alias="to")]
+    start: Annotated[Moment | None, Field(alias="from")] = None
+    end: Annotated[Moment | None, Field(alias="to")] = None
     action: Annotated[str, one_of(("reject", "set", "shift", "scale"))]
     value: float | str | None = None
     reason: str

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from datetime import datetime, timedelta
-from typing import overload
+from typing import Final
 
 import numpy as np
 
@@ -13,6 +13,8 @@ from basinrain.jobfile.fields import is_month
 from basinrain.jobfile.tables import EditTable, RainfallTable, StormTable
 
 __all__ = ["edit_window_times", "rainfall_day_start", "storm_window_times"]
+
+_NEVER: Final = np.datetime64("NaT", "s")
 
 Window = tuple[np.datetime64 | None, np.datetime64 | None]
 
@@ -87,7 +89,7 @@ def edit_window_times(
     Parameters
     ----------
     table
-        The edit. A bare date names its whole day, a bare month its whole month.
+        The edit. A bare date names its whole day, a bare month its whole month; a side that is not given is open, NaT.
     number
         Which ``[[edit]]`` it is, counted from 1.
     zone, day_start
@@ -108,18 +110,11 @@ def edit_window_times(
     ['2031-05-04T00:00:00', '2031-05-05T00:00:00']
     """
     item = f"[[edit]] no. {number}"
-    return (
-        _moment(item, table.start, zone, day_start, at_end=False),
-        _moment(item, table.end, zone, day_start, at_end=True),
-    )
+    start = _moment(item, table.start, zone, day_start, at_end=False)
+    end = _moment(item, table.end, zone, day_start, at_end=True)
+    return _NEVER if start is None else start, _NEVER if end is None else end
 
 
-@overload
-def _moment(item: str, text: str, zone: str, day_start: np.timedelta64, *, at_end: bool) -> np.datetime64: ...
-@overload
-def _moment(
-    item: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool
-) -> np.datetime64 | None: ...
 def _moment(item: str, text: str | None, zone: str, day_start: np.timedelta64, *, at_end: bool) -> np.datetime64 | None:
     if text is None:
         return None

@@ -25,6 +25,7 @@ _ROW, _HEAD, _FOOT, _RIGHT = 0.152, 0.4, 0.4, 0.62  # inches
 _HIGH: Final = 0.36  # half the height of a strip, of a row's
 _PARTS: Final = 8  # heights of a strip that are told apart
 _LETTER_ROOM: Final = 9.0  # points that a letter takes
+_NARROW: Final = 4.0  # points below which a stretch has no outline
 
 # What else a step can be, the letter that stands for it, and how it is drawn.
 _KINDS: Final[dict[str, tuple[str, dict[str, Any]]]] = {
@@ -56,15 +57,20 @@ def availability_picture(record: RainRecord) -> Picture | None:
     if len(record) < 2 or np.isnat(record.ends).any() or not record.gauges:
         return None
     kinds = _kinds(record)
-    own = (kinds == 0).mean(axis=0)
-    in_service = (kinds != 4).mean(axis=0)
+    own, in_service = (kinds == 0).sum(axis=0), (kinds != 4).sum(axis=0)
+    share = np.divide(own, in_service, out=np.full(len(own), np.nan), where=in_service > 0)
     rows = list(range(len(record.gauges)))
     if len(rows) > MOST_ROWS:
-        least = sorted(rows, key=lambda g: (own[g], record.gauges[g]))[:MOST_ROWS]
+        least = sorted(rows, key=lambda g: (np.nan_to_num(share[g], nan=-1.0), record.gauges[g]))[:MOST_ROWS]
         rows = sorted(least)
     labels = short_names([record.gauges[g] for g in rows], 18)
+    shares = [float(share[g]) for g in rows]
+    everyone = len(rows) < len(record.gauges)
+    if everyone:
+        labels.append(f"all {len(record.gauges)}")
+        shares.append(float(own.sum() / in_service.sum()) if in_service.any() else float("nan"))
     left = 0.22 + 0.06 * max(len(label) for label in labels)
-    height = _HEAD + _FOOT + _ROW * len(rows)
+    height = _HEAD + _FOOT + _ROW * len(labels)
     points = (PAGE_WIDTH - left - _RIGHT) * 72
     edges, first = _bins(record, 230 if len(rows) <= 20 else 160)
     with figure_style():
@@ -73,21 +79,22 @@ def availability_picture(record: RainRecord) -> Picture | None:
             (left / PAGE_WIDTH, _FOOT / height, 1 - (left + _RIGHT) / PAGE_WIDTH, 1 - (_HEAD + _FOOT) / height)
         )
         axes.set_xlim(edges[0], edges[-1])
-        axes.set_ylim(len(rows) - 0.5, -0.5)
+        axes.set_ylim(len(labels) - 0.5, -0.5)
         strips = _Strips(edges, points)
         for row, g in enumerate(rows):
             strips.add(row, _shares(kinds[:, g], first))
+        if everyone:
+            strips.add(len(rows), np.mean([_shares(kinds[:, g], first) for g in range(len(own))], axis=0))
         strips.draw(axes)
-        axes.set_yticks(np.arange(len(rows)), labels)
+        axes.set_yticks(np.arange(len(labels)), labels)
         axes.tick_params(axis="y", length=0, pad=4)
         for side in ("top", "right", "left"):
             axes.spines[side].set_visible(False)
         date_axis(axes.xaxis, most=9)
         axes.set_xlabel(f"time, {zone_text(record.zone)}")
-        for row, g in enumerate(rows):
-            text = percent_text(float(own[g] / in_service[g]) if in_service[g] else float("nan"))
+        for row, part in enumerate(shares):
             axes.annotate(
-                text,
+                percent_text(part),
                 (1.0, row),
                 xycoords=("axes fraction", "data"),
                 xytext=(5, 0),
@@ -109,16 +116,18 @@ def availability_picture(record: RainRecord) -> Picture | None:
         )
         name = "availability"
         title = "What there is of the record"
-        described = "; ".join(f"{record.gauges[g]}: {percent_text(float(own[g]))} own values" for g in rows)
-        svg = to_svg(figure, name, title, inline(f"By share of the record's steps. {described}."))
+        described = "; ".join(
+            f"{label}: {percent_text(part)} own values" for label, part in zip(labels, shares, strict=True)
+        )
+        svg = to_svg(figure, name, title, inline(f"By share of the steps in service. {described}."))
     caption = (
         "The record, a strip a gauge. Where a strip is filled in part, that part of the steps has values of the "
         "gauge's own. On the right their share of the steps in service."
     )
-    if len(rows) < len(record.gauges):
+    if everyone:
         caption += (
-            f" Drawn: the {counted(len(rows), 'gauge')} with the fewest values of their own of "
-            f"{len(record.gauges)}; all are in completeness.csv."
+            f" Drawn: the {counted(len(rows), 'gauge')} of {len(record.gauges)} with the smallest shares, and below "
+            "them all gauges together; all are in completeness.csv."
         )
     return Picture(name, caption, svg)
 
@@ -182,9 +191,17 @@ class _Strips:
     def draw(self, axes: Any) -> None:  # noqa: ANN401 - matplotlib's axes
         """Draw all strips."""
         for kind, boxes in self._boxes.items():
-            if boxes:
-                path = Path.make_compound_path(*(_box(*box) for box in boxes))
-                axes.add_patch(PathPatch(path, zorder=3 if kind == "rejected" else 2, **_look(kind)))
+            # A line around every notch and slit of a strip that is nearly full would hide more than it shows.
+            notches = [
+                box for box in boxes if box[1] - box[3] < 2 * _HIGH - 1e-9 or box[2] - box[0] < _NARROW * self._a_point
+            ]
+            for some, style in (
+                ([box for box in boxes if box not in notches], _look(kind)),
+                (notches, {**_look(kind), "linewidth": 0.0}),
+            ):
+                if some:
+                    path = Path.make_compound_path(*(_box(*box) for box in some))
+                    axes.add_patch(PathPatch(path, zorder=3 if kind == "rejected" else 2, **style))
         for x, y, letter in self._letters:
             axes.text(
                 x,

@@ -45,11 +45,12 @@ def comparison_facts(comparison: Comparison) -> list[tuple[str, str]]:
     """Return what was compared, each a name and a text."""
     score = comparison.score(comparison.chosen)
     skipped = f"; {len(comparison.skipped)} could not be" if comparison.skipped else ""
+    gauges = counted(len(comparison.gauges), "gauge")
     facts = [
         ("Taken", comparison.chosen),
         ("Least error", comparison.best),
         ("Compared", counted(len(comparison.candidates), "method") + skipped),
-        ("Cases", f"{score.n} values at {counted(len(comparison.gauges), 'gauge')}, {scale_words(comparison.scale)}"),
+        ("Cases", f"{_count(score.n)} values at {gauges}, {scale_words(comparison.scale)}"),
     ]
     return [*facts, ("Donors", _donors(comparison.chosen_options))]
 
@@ -96,7 +97,7 @@ def score_table(comparison: Comparison, *, depth_unit: str) -> Table:
         notes=(
             f"From simple to complex; all on the same {_cases(comparison, comparison.scale)} cases.",
             "RMSE: root mean square error.",
-            "Interval: of the difference, by bootstrap; where it reaches 0, chance may have made the difference.",
+            _drawn(comparison),
             _NUMBERS,
         ),
     )
@@ -105,8 +106,24 @@ def score_table(comparison: Comparison, *, depth_unit: str) -> Table:
 _OTHER_HEADS: Final = ("mean abs. error", "bias", "correlation", "wet found", "false alarms", "top 20")
 
 
-def _cases(comparison: Comparison, scale: str) -> int:
-    return comparison.score(comparison.chosen, scale=scale).n
+def _drawn(comparison: Comparison) -> str:
+    """Return what the intervals come from."""
+    times = "days" if comparison.scale == "day" else "steps"
+    what = {"week": "weeks", "time": times, "case": "single cases", "": ""}[comparison.drawn]
+    if not what:
+        return "There are too few cases for an interval: nothing can be told apart."
+    return (
+        f"Interval: of the difference, by bootstrap ({what} drawn anew); where it reaches 0, chance may have made the "
+        "difference."
+    )
+
+
+def _cases(comparison: Comparison, scale: str) -> str:
+    return _count(comparison.score(comparison.chosen, scale=scale).n)
+
+
+def _count(n: int) -> str:
+    return number_text(n, 0, grouped=True)
 
 
 def _judged(comparison: Comparison, candidate: str, difference: Difference) -> str:

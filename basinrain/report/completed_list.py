@@ -8,7 +8,7 @@ from basinrain.infill import Completed
 from basinrain.rainfall import Status
 from basinrain.report import limits
 from basinrain.report.table import Row, Table
-from basinrain.report.words import counted, depth_text, percent_text, unit_word
+from basinrain.report.words import counted, depth_decimals, number_text, percent_text, unit_word
 from basinrain.units import depth_factor
 
 __all__ = ["completed_table", "left_table"]
@@ -56,7 +56,7 @@ def completed_table(completed: Completed, *, depth_unit: str) -> Table:
                 percent_text(float(share[g])),
                 str(estimates[record.gauges[g]]),
                 str(int(left[:, g].sum())),
-                depth_text(total / mm if known.any() else float("nan"), depth_unit),
+                number_text(total / mm if known.any() else float("nan"), depth_decimals(depth_unit), grouped=True),
                 percent_text(infilled / total if total > 0 else float("nan")),
             )
         )

@@ -53,6 +53,7 @@ def double_mass_table(curves: Sequence[DoubleMass]) -> Table | None:
                 curve.gauge,
                 ", ".join(curve.reference),
                 str(len(curve.years)),
+                str(curve.days.min()),
                 str(after) if after is not None else DASH,
                 number_text(curve.slopes[0], 3),
                 number_text(curve.slopes[1], 3) if after is not None else DASH,
@@ -63,6 +64,8 @@ def double_mass_table(curves: Sequence[DoubleMass]) -> Table | None:
             )
         )
     notes = [
+        "Years: of 95 % or more of their days; sums are over the days that the gauge and three neighbours share.",
+        "Fewest days: of the year with the fewest.",
         "Slopes: gauge over the mean of its neighbours, before and after the most likely break.",
         "Ratio: newer over older years, by which the older would be multiplied; the record is not changed by it.",
         "Probability: of so large an F by chance, over all breaks tried; at most 0.01 counts as a break.",
@@ -75,6 +78,7 @@ def double_mass_table(curves: Sequence[DoubleMass]) -> Table | None:
             "gauge",
             "neighbours",
             "years",
+            "fewest days",
             "most likely break after",
             "slope before",
             "slope after",
@@ -83,7 +87,7 @@ def double_mass_table(curves: Sequence[DoubleMass]) -> Table | None:
             "probability",
             "judged",
         ),
-        align="ttnnnnnnnt",
+        align="ttnnnnnnnnt",
         rows=rows,
         notes=tuple(notes),
     )
@@ -116,7 +120,7 @@ def homogeneity_table(tested: Sequence[Homogeneity]) -> Table | None:
             (
                 one.gauge,
                 str(len(one.years)),
-                "ratios" if one.reference else "totals",
+                "ratios" if one.reference else "alone",
                 *(_cell(by_name[name]) if name in by_name else DASH for name in _NAMES),
                 str(one.rejections),
                 one.grade or "no grade",
@@ -125,7 +129,8 @@ def homogeneity_table(tested: Sequence[Homogeneity]) -> Table | None:
         )
     notes = [
         "Statistic, and in brackets the critical value at 1 %; von Neumann's rejects below it, the others above.",
-        "Ratios: of annual totals to the neighbours' mean; totals: the annual totals themselves, without neighbours.",
+        "Ratios: of annual totals to the neighbours' mean over the days that they share, 95 % or more of the year's.",
+        "Alone: the gauge's mean depths of a day, where it has no such neighbours.",
         "Grade: none or one of the four rejects at 1 %, useful; two, doubtful; three or four, suspect.",
         "Grades after Wijngaard, Klein Tank and Können (2003). With fewer than 20 years there is none.",
     ]

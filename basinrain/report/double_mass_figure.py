@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from typing import Any, Final
 
 import numpy as np
+import numpy.typing as npt
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.ticker import FuncFormatter, MaxNLocator
@@ -84,6 +85,19 @@ def _picture(curve: DoubleMass, depth_unit: str, name: str) -> Picture:
         gid=f"{HALO}-break",
         zorder=6,
     )
+    for k in _told_years(curve.years, stop):
+        # Above the curve, where neither slope goes on; the break's own stands below.
+        axes.annotate(
+            str(curve.years[k]),
+            (x[k + 1], y[k + 1]),
+            xytext=(-4, 5),
+            textcoords="offset points",
+            ha="right",
+            va="center",
+            fontsize=6,
+            gid=f"{HALO}-year",
+            zorder=5,
+        )
     axes.set_xlim(0, x[-1] * 1.04)
     axes.set_ylim(0, max(y[-1], before * ahead) * 1.06)
     for axis in (axes.xaxis, axes.yaxis):
@@ -92,9 +106,10 @@ def _picture(curve: DoubleMass, depth_unit: str, name: str) -> Picture:
     for spine in ("top", "right"):
         axes.spines[spine].set_visible(False)
     unit = unit_word(depth_unit)
-    axes.set_xlabel(f"cumulative mean of the neighbours, {unit}")
+    axes.set_xlabel(f"cumulative mean of the neighbours on shared days, {unit}")
     axes.set_ylabel(f"cumulative at the gauge, {unit}")
-    figure.text(0.02, 1 - 0.03 / _HEIGHT, inline(curve.gauge, 40), ha="left", va="top", fontsize=8, fontweight="bold")
+    title = f"{inline(curve.gauge, 40)}: ratio {number_text(curve.ratio, 3)}"
+    figure.text(0.02, 1 - 0.03 / _HEIGHT, title, ha="left", va="top", fontsize=8, fontweight="bold")
     figure.legend(
         handles=[
             Line2D([], [], color="#6d757b", linewidth=0.8, label=f"{curve.years[0]} to {curve.years[-1]}", **points),
@@ -117,10 +132,30 @@ def _picture(curve: DoubleMass, depth_unit: str, name: str) -> Picture:
         f"Gauge {curve.gauge} against the mean of {', '.join(curve.reference)}: break after {curve.break_after}; "
         f"{numbers}; F\u00a0=\u00a0{number_text(curve.f, 1)}, probability {_probability(curve.significance)}."
     )
+    fewest = int(curve.days.min())
+    if fewest < 365:
+        caption += f" A year's sums are over the days that both have, {fewest} of 365 at the fewest."
     if not curve.persists:
         caption += " One side has fewer than five years."
     title = f"Double-mass curve of gauge {curve.gauge}"
     return Picture(name, caption, to_svg(figure, name, inline(title), inline(caption)), half=True)
+
+
+def _told_years(years: npt.NDArray[np.int64], stop: int) -> list[int]:
+    """Return the places of the last year and of round ones before it, none beside another, the break or the origin.
+
+    Examples
+    --------
+    >>> _told_years(np.arange(1998, 2017), 8)  # the break is after 2005
+    [2, 12, 18]
+    """
+    apart = max(2, len(years) // 10)
+    told = [len(years) - 1]
+    step = 5 if len(years) <= 40 else 10
+    for k in np.flatnonzero(years % step == 0).tolist():
+        if min(abs(k - other) for other in [*told, stop - 1, -1]) >= apart:
+            told.append(k)
+    return sorted(k for k in told if abs(k - (stop - 1)) >= apart)
 
 
 def _probability(value: float) -> str:

@@ -185,7 +185,7 @@ def series_table(check: SeriesCheck, basins: list[str], *, depth_unit: str, stor
         (
             basin,
             method,
-            str(series[COMPLETED].steps) if COMPLETED in series else DASH,
+            *(str(series[name].steps) if name in series else DASH for name in (COMPLETED, GAUGES)),
             *three(series, lambda f: percent_text(f.wet_share)),
             *three(series, lambda f: depth_text(f.top_mean / mm, depth_unit)),
             *three(series, lambda f: number_text(f.variance / mm**2, decimals)),
@@ -198,18 +198,29 @@ def series_table(check: SeriesCheck, basins: list[str], *, depth_unit: str, stor
         f"Gauges: each gauge's own figures, averaged by the weights. A step is wet from {WET_DEPTH:g} mm.",
         "A mean over an area is wet more often and varies less than its gauges; infill shall not add to that.",
     ]
+    if any(_silent(series) for series in groups.values()):
+        notes.append(
+            "Steps of gauges: the fewest of any that counts. Where they are fewer than the basin's, a gauge was silent "
+            "for the rest; one that was silent over the peak lowers the gauges' figures, and they may then be below "
+            "the basin's."
+        )
     if len({figures.basin for figures in check.figures}) > len(basins):
         notes.append("All basins are in series_check.csv.")
     return Table(
         caption=f"{storm}: the series before and after infill",
-        heads=("basin", "averaging", "steps", *(("completed", "reporting", "gauges") * 3)),
+        heads=("basin", "averaging", "completed", "gauges", *(("completed", "reporting", "gauges") * 3)),
         over=(
-            ("", 3),
+            ("", 2),
+            ("steps", 2),
             ("wet steps", 3),
             (f"mean of the {most} largest steps, {unit_text(depth_unit)}", 3),
             (f"variance, {unit_text(depth_unit)}²", 3),
         ),
-        align="tt" + "n" * 10,
+        align="tt" + "n" * 11,
         rows=rows,
         notes=tuple(notes),
     )
+
+
+def _silent(series: Mapping[str, SeriesFigures]) -> bool:
+    return COMPLETED in series and GAUGES in series and series[GAUGES].steps < series[COMPLETED].steps

@@ -13,7 +13,7 @@ from matplotlib.ticker import FixedLocator, FuncFormatter
 
 from basinrain.infill.leave_one_out import Comparison
 from basinrain.report.figures import HALF_WIDTH, INK, LINES, Picture, figure_style, to_svg
-from basinrain.report.words import counted, error_text, inline, number_text, unit_word
+from basinrain.report.words import error_text, inline, number_text, unit_word
 from basinrain.units import depth_factor
 
 __all__ = ["MOST_POINTS", "estimated_picture"]
@@ -81,13 +81,13 @@ def estimated_picture(comparison: Comparison, *, depth_unit: str) -> Picture | N
             f"RMSE {error_text(score.rmse / mm, depth_unit)}, bias {error_text(score.bias / mm, depth_unit)} {unit}, "
             f"correlation {number_text(score.correlation, 2)}"
         )
+        cases = f"{number_text(observed.size, 0, grouped=True)} case{'' if observed.size == 1 else 's'}"
         caption = (
-            f"Estimated against observed by {comparison.chosen}, "
-            f"{counted(observed.size, 'case')} ({scale} at gauges). {numbers[0].upper()}{numbers[1:]}."
-            + (" Darker: more cases, in steps of equal ratios." if dense else "")
+            f"Estimated against observed by {comparison.chosen}, {cases} ({scale} at gauges). "
+            f"{numbers[0].upper()}{numbers[1:]}." + (" Darker: more cases, in steps of equal ratios." if dense else "")
         )
         title = f"Estimated against observed depths by {comparison.chosen}"
-        svg = to_svg(figure, "estimated", inline(title), inline(f"{counted(observed.size, 'case')}. {numbers}."))
+        svg = to_svg(figure, "estimated", inline(title), inline(f"{cases}. {numbers}."))
     return Picture("estimated", caption, svg, half=True)
 
 

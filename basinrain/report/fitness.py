@@ -2,21 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Final
 
-from basinrain.rainfall import RainRecord
 from basinrain.report.edit_list import edit_table
-from basinrain.report.findings_list import count_table, short_table
+from basinrain.report.findings_list import check_counts, settled_table
 from basinrain.report.table import Table
-from basinrain.report.words import counted
+from basinrain.report.words import counted, zone_text
 from basinrain.results import Run
-from basinrain.screening import Finding
 
 __all__ = ["Fitness", "fitness"]
-
-_MOST: Final = 20
 
 
 @dataclass(frozen=True)
@@ -43,11 +37,14 @@ def fitness(run: Run) -> Fitness:
     ]
     tables: list[Table] = []
     if found:
-        tables.append(count_table(found))
         weighty = [f for f in found if f.severity != "remark"]
-        tables += _tables("Open", [f for f in weighty if f.state == "open"], run.record)
-        tables += _tables("Rejected by the job", [f for f in found if f.state == "rejected"], run.record)
-        tables += _tables("Accepted by the job", [f for f in found if f.state == "accepted"], run.record)
+        if any(f.state == "open" for f in weighty):
+            sentences.append("Open findings that touch what was computed stand under Warnings, with their evidence.")
+        tables.append(check_counts(found))
+        settled = settled_table(weighty)
+        if settled is not None:
+            sentences.append(f"Times are in {zone_text(run.record.zone)}, depths in the evidence in mm.")
+            tables.append(settled)
     else:
         sentences.append("No check found anything.")
     edits = edit_table(run.edit_rows, depth_unit=run.depth_unit)
@@ -56,7 +53,3 @@ def fitness(run: Run) -> Fitness:
     else:
         sentences.append("The job edits nothing.")
     return Fitness(tuple(sentences), tuple(tables))
-
-
-def _tables(what: str, findings: Sequence[Finding], record: RainRecord) -> list[Table]:
-    return [short_table(what, findings, record, most=_MOST)] if findings else []

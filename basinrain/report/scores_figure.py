@@ -23,8 +23,11 @@ _MARKS: Final[dict[str, dict[str, Any]]] = {
     "chosen": {"marker": "s", "markersize": 5.6, "markerfacecolor": "black"},
     "best": {"marker": "o", "markersize": 5.6, "markerfacecolor": "#9a9a9a"},
     "not told apart from the best": {"marker": "o", "markersize": 5.0, "markerfacecolor": "white"},
-    "worse than the best": {"marker": "x", "markersize": 5.0, "markerfacecolor": "black"},
+    "worse than the best": {"marker": "x", "markersize": 4.2, "markerfacecolor": "black", "markeredgewidth": 0.9},
 }
+
+# A band and no whiskers: these would hide the marks of short intervals.
+_INTERVAL: Final[dict[str, Any]] = {"color": "#b4babe", "linewidth": 5.0, "solid_capstyle": "butt"}
 
 
 def scores_picture(comparison: Comparison, *, depth_unit: str) -> Picture | None:
@@ -58,10 +61,7 @@ def scores_picture(comparison: Comparison, *, depth_unit: str) -> Picture | None
             between = apart[candidate]
             if candidate != comparison.best and not np.isnan(between.low):
                 low, high = best + between.low / mm, best + between.high / mm
-                axes.plot([low, high], [row, row], color="#6d757b", linewidth=1.1, zorder=2)
-                axes.plot(
-                    [low, high], [row, row], color="#6d757b", linestyle="none", marker="|", markersize=5, zorder=2
-                )
+                axes.plot([low, high], [row, row], zorder=2, **_INTERVAL)
             style = _MARKS[_kind(comparison, candidate)]
             axes.plot([error[candidate]], [row], linestyle="none", color="black", zorder=3, clip_on=False, **style)
             axes.annotate(
@@ -126,7 +126,7 @@ def _legend(figure: Figure, comparison: Comparison, height: float) -> None:
     handles = [Line2D([], [], linestyle="none", color="black", label=kind, **_MARKS[kind]) for kind in kinds]
     handles.append(Line2D([], [], color=INK, linewidth=0.7, linestyle=LINES[1], label="error of the best"))
     if _intervals(comparison):
-        handles.append(Line2D([], [], color="#6d757b", linewidth=1.1, marker="|", markersize=5, label="95 % interval"))
+        handles.append(Line2D([], [], label="95 % interval", **_INTERVAL))
     figure.legend(
         handles=handles,
         loc="upper left",

@@ -1,8 +1,6 @@
-"""What was screened: the record's span and what there is of every gauge; the checks that were made, and those not."""
+"""What was screened: the record's span and what there is of every gauge."""
 
 from __future__ import annotations
-
-from typing import Final
 
 import numpy as np
 
@@ -10,18 +8,8 @@ from basinrain.rainfall import RainRecord, Status
 from basinrain.report import limits
 from basinrain.report.table import Row, Table
 from basinrain.report.words import counted, percent_text, step_text, when_text, zone_text
-from basinrain.screening import CHECKS, Screening
-from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS
 
-__all__ = ["check_tables", "completeness_table", "record_facts"]
-
-_CONSISTENCY: Final = {
-    DOUBLE_MASS_BREAK: (
-        "Breaks of the double-mass curve: annual totals of a gauge against the mean of its neighbours, significant at "
-        "1 %."
-    ),
-    INHOMOGENEOUS: "Records that two or more of four tests of homogeneity reject at 1 %.",
-}
+__all__ = ["completeness_table", "record_facts"]
 
 
 def record_facts(record: RainRecord) -> list[tuple[str, str]]:
@@ -103,36 +91,3 @@ def completeness_table(record: RainRecord) -> Table:
         rows=rows,
         notes=tuple(notes),
     )
-
-
-def check_tables(screening: Screening) -> list[Table]:
-    """Return the checks that were made with what they look for, and those that could not be, with why."""
-    found: dict[str, int] = {}
-    for finding in screening.findings:
-        found[finding.check] = found.get(finding.check, 0) + 1
-    tables = []
-    if screening.checks_run:
-        tables.append(
-            Table(
-                caption="Checks made",
-                heads=("check", "what it looks for", "findings"),
-                align="ttn",
-                rows=[(name, _about(name), str(found.get(name, 0))) for name in screening.checks_run],
-                notes=("How each works, its thresholds and how often it is right: docs/methods.md.",),
-            )
-        )
-    if screening.checks_skipped:
-        tables.append(
-            Table(
-                caption="Checks that could not be made",
-                heads=("check", "what it looks for", "why not"),
-                align="ttt",
-                rows=[(name, _about(name), reason) for name, reason in screening.checks_skipped.items()],
-                notes=("A check may have been made at some gauges and not at others.",),
-            )
-        )
-    return tables
-
-
-def _about(name: str) -> str:
-    return CHECKS[name].about if name in CHECKS else _CONSISTENCY.get(name, "")

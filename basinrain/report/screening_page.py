@@ -4,11 +4,12 @@ from __future__ import annotations
 
 from typing import Final
 
-from basinrain.report import consistency_list, findings_list, overview, provenance, screened_list
+from basinrain.report import check_list, consistency_list, findings_list, overview, provenance, screened_list
 from basinrain.report.availability_figure import availability_picture
 from basinrain.report.double_mass_figure import double_mass_pictures
 from basinrain.report.edit_list import edit_table
 from basinrain.report.rendering import render_template
+from basinrain.report.words import zone_text
 from basinrain.results import ScreenRun
 
 __all__ = ["render_screening"]
@@ -47,13 +48,15 @@ def render_screening(run: ScreenRun) -> str:
         # With what was rejected shown as such.
         availability=availability_picture(run.record),
         completeness=screened_list.completeness_table(run.record),
-        findings=findings_list.finding_tables(screening.findings, record, depth_unit=run.depth_unit),
+        found=findings_list.finding_sections(screening.findings, record, depth_unit=run.depth_unit),
+        settled=findings_list.settled_table(screening.findings),
+        clock=zone_text(record.zone),
         edits=edit_table(run.edit_rows, depth_unit=run.depth_unit),
         curves=consistency_list.curve_sentence(screening.double_mass),
         curve_pictures=double_mass_pictures(screening.double_mass, depth_unit=run.depth_unit),
         curve_table=consistency_list.double_mass_table(screening.double_mass),
         homogeneity=consistency_list.homogeneity_table(screening.homogeneity),
-        checks=screened_list.check_tables(screening),
+        checks=check_list.check_tables(screening),
         inputs=provenance.inputs_table(run),
         versions=provenance.versions_table(run),
         settings=provenance.settings_text(run.settings),

@@ -38,6 +38,10 @@ class Table:
         Sums, printed below the body.
     notes
         Sentences printed below the table.
+    lead
+        What stands below the caption, before the heads.
+    widths
+        Per cent of the page that each column takes; as its content asks where there are none.
 
     Examples
     --------
@@ -55,9 +59,13 @@ class Table:
     over: tuple[tuple[str, int], ...] = ()
     foot: Sequence[Row] = ()
     notes: tuple[str, ...] = ()
+    lead: str = ""
+    widths: tuple[int, ...] = ()
 
     def __post_init__(self) -> None:
         widths = {len(self.heads), len(self.align), *map(len, self.rows), *map(len, self.foot)}
+        if self.widths:
+            widths.add(len(self.widths))
         if self.over:
             widths.add(sum(span for _, span in self.over))
         if len(widths) != 1:

@@ -10,6 +10,7 @@ import numpy.typing as npt
 from scipy.special import fdtrc
 
 from basinrain.errors import DataError, Problem
+from basinrain.screening.annual import calendar_days
 
 __all__ = ["PERSISTENCE", "DoubleMass", "double_mass"]
 
@@ -35,6 +36,8 @@ class DoubleMass:
         The years that took part, in the order of accumulation.
     totals : array of float, shape (n,)
         mm, the gauge's own.
+    days : array of int, shape (n,)
+        Days of the year that its total, and the reference's, are over.
     x, y : array of float, shape (n,)
         mm, cumulative totals of the reference and of the gauge.
     break_after
@@ -63,6 +66,7 @@ class DoubleMass:
     reference: tuple[str, ...]
     years: npt.NDArray[np.int64]
     totals: npt.NDArray[np.float64]
+    days: npt.NDArray[np.int64]
     x: npt.NDArray[np.float64]
     y: npt.NDArray[np.float64]
     break_after: int | None = field(kw_only=True)
@@ -108,6 +112,7 @@ def double_mass(
     gauge: str = "",
     reference: tuple[str, ...] = (),
     break_after: int | None = None,
+    days: npt.ArrayLike | None = None,
 ) -> DoubleMass:
     """Return the double-mass curve of a gauge against a reference, with its most likely break or the one given.
 
@@ -122,6 +127,9 @@ def double_mass(
         The gauge's id and those of its neighbours, for the result.
     break_after
         The last year before the break, in the order of accumulation; where not given, the break is looked for.
+    days : array-like of int, shape (n_years,), optional
+        Days that the totals of a year are over, the same ones at the gauge and in the reference; all of the calendar
+        year where not given. For the result: the sums are taken as they are.
 
     Returns
     -------
@@ -160,7 +168,8 @@ def double_mass(
             Problem(item=item, found="years out of order", expected="increasing or decreasing", gauge=gauge)
         )
     used = np.isfinite(y) & np.isfinite(x) & (x > 0)
-    y, x, when = y[used], x[used], when[used]
+    over = calendar_days(when) if days is None else np.asarray(days, dtype=np.int64)
+    y, x, when, over = y[used], x[used], when[used], over[used]
     if break_after is not None and break_after not in when[:-1]:
         span = f"{when[0]} to {when[-1]}" if len(when) else "no year with values"
         raise DataError(
@@ -184,6 +193,7 @@ def double_mass(
             reference,
             when,
             y,
+            over,
             *sums,
             break_after=None,
             slopes=(slope, slope),
@@ -206,6 +216,7 @@ def double_mass(
         reference,
         when,
         y,
+        over,
         *sums,
         break_after=int(when[stop - 1]),
         slopes=slopes,

@@ -12,10 +12,11 @@ from typing import Final, Literal, get_args
 import numpy as np
 
 from basinrain.errors import JobError, Problems, nearest_name
-from basinrain.rainfall import RainRecord
+from basinrain.notes import Note
+from basinrain.rainfall import RainRecord, Status
 from basinrain.screening.editing import Outcome, carry_out
 
-__all__ = ["SUGGESTED", "Action", "Edit", "apply_edits", "edit_rows"]
+__all__ = ["SUGGESTED", "Action", "Edit", "apply_edits", "edit_rows", "spread_edits"]
 
 Action = Literal["reject", "set", "shift", "scale"]
 
@@ -199,6 +200,43 @@ def edit_rows(records: Sequence[RainRecord], edits: Sequence[Edit]) -> list[dict
     """
     outcomes = carry_out(records, _numbered(edits))[1]
     return [_row(edit, outcome) for edit, outcome in zip(edits, outcomes, strict=True)]
+
+
+def spread_edits(record: RainRecord, edits: Sequence[Edit]) -> tuple[Note, ...]:
+    """Return a note for every edit whose depths are spread over finer steps, where no status tells of it any more.
+
+    Parameters
+    ----------
+    record
+        At the common step, in the clock of the edits.
+    edits
+        Those that reject leave nothing to spread.
+
+    Examples
+    --------
+    >>> ends = np.datetime64("2031-05-04", "s") + np.arange(1, 3) * np.timedelta64(3600, "s")
+    >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[2.0], [3.0]], step="1h")
+    >>> record = replace(record, status=np.full((2, 1), np.uint8(Status.SPREAD)))
+    >>> edit = Edit(gauge="A", action="scale", value=0.1, reason="wrong unit", by="J. M.", number=1)
+    >>> print(*spread_edits(record, [edit]))
+    [[edit]] 1 (gauge A) changes totals over longer times than the step: their 2 steps of A read 'spread', not \
+'adjusted'.
+    """
+    notes = []
+    for edit in edits:
+        if edit.action == "reject" or edit.gauge not in record.gauges:
+            continue
+        moved = np.timedelta64(edit.seconds, "s")
+        # A side that is open (NaT) leaves no step out.
+        inside = ~(record.starts < edit.start + moved) & ~(record.ends > edit.end + moved)
+        n = np.count_nonzero(inside & (record.status[:, record.gauges.index(edit.gauge)] == Status.SPREAD))
+        if n:
+            text = (
+                f"{edit.item} changes totals over longer times than the step: their {n} step{'s' if n > 1 else ''} "
+                f"of {edit.gauge} read 'spread', not 'adjusted'."
+            )
+            notes.append(Note(code="edit-spread", text=text, level="info", gauge=edit.gauge))
+    return tuple(notes)
 
 
 def _numbered(edits: Sequence[Edit]) -> list[Edit]:

@@ -10,7 +10,7 @@ from importlib.resources import files
 import numpy as np
 import numpy.typing as npt
 
-__all__ = ["GreatestDepth", "envelope_depth", "greatest_depths", "world_depth", "world_record"]
+__all__ = ["GreatestDepth", "envelope_depth", "greatest_depths", "world_depth"]
 
 
 @dataclass(frozen=True)
@@ -107,14 +107,3 @@ def envelope_depth(points: list[tuple[float, float]] | tuple[tuple[float, float]
     telling = np.concatenate([[True], ordered[1:, 1] >= highest[:-1]])
     durations, depths = ordered[telling, 0], ordered[telling, 1]
     return float(np.exp(np.interp(np.log(hours), np.log(durations), np.log(depths))))
-
-
-def world_record(hours: float) -> GreatestDepth:
-    """Return the record nearest in duration, on logarithms, for people to compare with.
-
-    Examples
-    --------
-    >>> world_record(1).place
-    'Shangdi, Inner Mongolia'
-    """
-    return min(greatest_depths(), key=lambda record: (abs(np.log(record.hours / hours)), record.hours))

@@ -8,6 +8,8 @@ from typing import TYPE_CHECKING, Final, Literal
 
 import numpy as np
 
+from basinrain.screening.wording import DepthUnit
+
 if TYPE_CHECKING:
     from basinrain.screening.double_mass import DoubleMass
     from basinrain.screening.edits import Edit
@@ -33,13 +35,13 @@ class Finding:
     check
         The registry's name of the check that found it: ``"stuck-values"``.
     gauge
-        The gauge's id.
+        The gauge's id; empty for the network as a whole.
     start, end
         The stretch ``(start, end]`` in the record's clock; NaT in both for the whole record.
     severity
         ``"remark"``, ``"doubtful"`` or ``"erroneous"``.
     evidence
-        One sentence with the numbers; depths in mm unless it says otherwise.
+        The numbers in a sentence or two; depths in the unit of the options.
     action
         What is suggested, one sentence.
     others
@@ -47,7 +49,7 @@ class Finding:
     edit
         The edit of the job that would carry the action out, where one can.
     state
-        ``"open"`` until the job accepts the value or rejects it.
+        ``"open"`` until the job accepts the value or rejects it, by itself or with a stretch that holds it.
 
     Examples
     --------
@@ -83,8 +85,8 @@ class Finding:
     @property
     def key(self) -> str:
         """What a job names to accept or reject it: check, gauge and start to the minute, whole or a leading part."""
-        where = "" if self.whole_record else f" {np.datetime_as_string(self.start, unit='m')}"
-        return f"{self.check} {self.gauge}{where}"
+        when = "" if self.whole_record else str(np.datetime_as_string(self.start, unit="m"))
+        return " ".join(word for word in (self.check, self.gauge, when) if word)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -99,8 +101,8 @@ class ScreeningOptions:
         Ids of gauges without heating, whose catch of snow is late or lost.
     cold_months
         Months, 1 to 12, in which precipitation may be snow.
-    adjust
-        Whether records are adjusted at a break of the double-mass curve.
+    depth_unit
+        The unit in which evidence and actions say depths, ``"mm"`` or ``"in"``.
 
     Examples
     --------
@@ -111,7 +113,7 @@ class ScreeningOptions:
     envelope: tuple[tuple[float, float], ...] | None = None
     unheated: tuple[str, ...] = ()
     cold_months: tuple[int, ...] = ()
-    adjust: bool = False
+    depth_unit: DepthUnit = "mm"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -123,7 +125,7 @@ class Screening:
     findings
         In the registry's order of checks, then by gauge id and start.
     double_mass, homogeneity
-        One a gauge that has years enough, in the network's order.
+        One a gauge that has years enough, in the network's order, of the record without what is rejected.
     checks_run
         Names of the checks that ran, in the registry's order.
     checks_skipped

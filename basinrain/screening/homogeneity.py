@@ -15,6 +15,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy.stats import rankdata
 
+from basinrain.screening.annual import calendar_days
 from basinrain.screening.critical_values import critical_values
 
 __all__ = [
@@ -79,7 +80,10 @@ class Homogeneity:
     years : array of int, shape (n,)
         The years that took part, in order; years may be absent between them.
     series : array of float, shape (n,)
-        Annual totals in mm, or their ratios to the reference series.
+        Annual totals in mm (from :func:`basinrain.screening.consistency.consistency`, mean depths of a day), or their
+        ratios to the reference series.
+    days : array of int, shape (n,)
+        Days of the year that each is over.
     reference
         Ids of the gauges whose mean is the reference; empty where the totals themselves were tested.
     tests
@@ -89,6 +93,7 @@ class Homogeneity:
     gauge: str
     years: npt.NDArray[np.int64]
     series: npt.NDArray[np.float64]
+    days: npt.NDArray[np.int64] = field(kw_only=True)
     reference: tuple[str, ...] = field(kw_only=True)
     tests: tuple[TestResult, ...] = field(kw_only=True)
 
@@ -293,6 +298,7 @@ def homogeneity_of(
     gauge: str,
     reference: npt.NDArray[np.float64] | None = None,
     reference_gauges: tuple[str, ...] = (),
+    days: npt.NDArray[np.int64] | None = None,
 ) -> Homogeneity:
     """Return the four tests of a gauge's annual totals, relative to a reference series where one is given.
 
@@ -301,7 +307,7 @@ def homogeneity_of(
     years : array of int, shape (n_years,)
         Increasing.
     totals : array of float, shape (n_years,)
-        mm; NaN where the year is not complete.
+        mm, or mm a day; NaN where the year does not count.
     gauge
         The gauge's id.
     reference : array of float, shape (n_years,), optional
@@ -309,6 +315,8 @@ def homogeneity_of(
         share is no longer noise; years in which it is NaN or 0 are left out.
     reference_gauges
         Their ids.
+    days : array of int, shape (n_years,), optional
+        Days that the totals of a year are over, for the result; all of the calendar year where not given.
 
     Returns
     -------
@@ -331,7 +339,8 @@ def homogeneity_of(
     kept = np.isfinite(series)
     series = series[kept]
     tests = tuple(test(series) for test in (snht, buishand_range, pettitt, von_neumann, buishand_q))
-    return Homogeneity(gauge, np.asarray(years)[kept], series, reference=reference_gauges, tests=tests)
+    over = calendar_days(np.asarray(years)) if days is None else np.asarray(days)
+    return Homogeneity(gauge, np.asarray(years)[kept], series, days=over[kept], reference=reference_gauges, tests=tests)
 
 
 def _given(series: npt.ArrayLike) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.int64]]:

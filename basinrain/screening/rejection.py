@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import difflib
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from dataclasses import replace
 from typing import Final
 
@@ -11,11 +11,14 @@ import numpy as np
 
 from basinrain.errors import JobError, Problems
 from basinrain.rainfall import RainRecord, Status
+from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS
 from basinrain.screening.findings import Finding
 
-__all__ = ["apply_rejections", "settle_findings"]
+__all__ = ["apply_rejections", "rejected_findings", "settle_findings"]
 
 _LISTED: Final = 5
+_FIRST: Final = np.datetime64("-9999-01-01", "s")
+_LAST: Final = np.datetime64("9999-01-01", "s")
 
 
 def settle_findings(
@@ -29,18 +32,21 @@ def settle_findings(
         As found.
     reject, accept
         Entries: a finding's key or its leading words, so that ``"stuck-values"``, ``"stuck-values W03"`` and
-        ``"stuck-values W03 2031-05-04T06:00"`` mean all findings of a check, those at one gauge, and one.
+        ``"stuck-values W03 2031-05-04T06:00"`` mean all findings of a check, those at one gauge, and one. Of the time a
+        leading part will do: ``"2031"``, ``"2031-05"``, ``"2031-05-04"``.
 
     Returns
     -------
     tuple of Finding
-        In the same order, each ``"rejected"``, ``"accepted"`` or, where no entry names it, as it was.
+        In the same order, each ``"rejected"``, ``"accepted"`` or, where no entry names it, as it was. A finding whose
+        stretch lies wholly in what is rejected of its gauge is rejected with it, whatever else names it: its values are
+        gone.
 
     Raises
     ------
     JobError
-        An entry names no finding, a finding is both rejected and accepted, or a finding about the network as a whole is
-        to be rejected; all of it together.
+        An entry names no finding, a finding is both rejected and accepted, or one is to be rejected that has no values
+        of its own: about the network as a whole, or about years that do not go together; all of it together.
 
     Examples
     --------
@@ -57,18 +63,16 @@ def settle_findings(
 finding or its leading words; the nearest: stuck-values W03, stuck-values W04
     """
     problems = Problems()
-    keys = [finding.key.split() for finding in findings]
     named: dict[str, dict[int, str]] = {"reject": {}, "accept": {}}
     for option, entries in (("reject", reject), ("accept", accept)):
         for entry in entries:
-            words = entry.split()
-            matched = [k for k, key in enumerate(keys) if words and key[: len(words)] == words]
+            matched = [k for k, finding in enumerate(findings) if _names(entry, finding)]
             if not matched:
                 problems.add(
                     item=f"[screening] {option} '{entry}'",
                     found="no such finding",
                     expected="the key of a finding or its leading words",
-                    remedy=_nearest(words, findings),
+                    remedy=_nearest(entry.split(), findings),
                 )
             for k in matched:
                 named[option].setdefault(k, entry)
@@ -81,21 +85,96 @@ finding or its leading words; the nearest: stuck-values W03, stuck-values W04
                 remedy="name what differs by gauge and time",
                 gauge=findings[k].gauge,
             )
-        if not findings[k].gauge:
+        if (why := _unfit(findings[k])) is not None:
+            found, remedy = why
             problems.add(
                 item=f"[screening] reject '{entry}'",
-                found="a finding about the network as a whole",
-                expected="one about a gauge, whose values can be left out",
-                remedy="accept it, or correct the input",
+                found=found,
+                expected="one about values that can be left out",
+                remedy=remedy,
+                gauge=findings[k].gauge,
             )
     problems.raise_as(JobError)
+    settled = [
+        replace(finding, state="accepted") if k in named["accept"] else finding for k, finding in enumerate(findings)
+    ]
+    return _with_rejected(settled, named["reject"])
+
+
+def rejected_findings(findings: Sequence[Finding], reject: Sequence[str]) -> tuple[Finding, ...]:
+    """Return the findings that entries reject, as ``"rejected"``; entries that do not fit name none here.
+
+    :func:`settle_findings` reports such entries. This is for the record that further findings are looked for in, before
+    it can be known whether an entry means one of those.
+
+    Examples
+    --------
+    >>> stuck = Finding(check="stuck-values", gauge="W03", evidence="0.4 mm at 14 steps.", action="Reject them.")
+    >>> [finding.key for finding in rejected_findings([stuck], ["stuck-values W03", "double-mass-break W04"])]
+    ['stuck-values W03']
+    """
     return tuple(
         replace(finding, state="rejected")
-        if k in named["reject"]
-        else replace(finding, state="accepted")
-        if k in named["accept"]
-        else finding
+        for finding in findings
+        if _unfit(finding) is None and any(_names(entry, finding) for entry in reject)
+    )
+
+
+def _names(entry: str, finding: Finding) -> bool:
+    """Return whether an entry is the finding's key, its leading words, or these with a leading part of the time."""
+    words, key = entry.split(), finding.key.split()
+    if not words or words[:-1] != key[: len(words) - 1] or len(words) > len(key):
+        return False
+    last, whole = words[-1], key[len(words) - 1]
+    if last == whole:
+        return True
+    of_time = len(words) == len(key) and not finding.whole_record
+    return of_time and whole.startswith(last) and whole[len(last)] in "-T:"
+
+
+def _unfit(finding: Finding) -> tuple[str, str] | None:
+    """Return what a finding is that cannot be rejected, and what to do about it; None where it can be."""
+    if not finding.gauge:
+        return "a finding about the network as a whole", "accept it, or correct the input"
+    if finding.check == DOUBLE_MASS_BREAK:
+        return (
+            "a break between two parts of a record, of which neither is known to be wrong",
+            'correct the older part by an [[edit]] with action = "scale", or accept the finding',
+        )
+    if finding.check == INHOMOGENEOUS:
+        return (
+            "a finding about a gauge's whole record",
+            "accept it, correct a part by an [[edit]], or leave the gauge out by [gauges] exclude",
+        )
+    return None
+
+
+def _with_rejected(findings: Sequence[Finding], rejected: Collection[int]) -> tuple[Finding, ...]:
+    """Return the findings with those rejected, and those of their gauges that lie wholly in their stretches."""
+    gone: dict[str, list[tuple[np.datetime64, np.datetime64]]] = {}
+    for start, end, k in sorted((*_stretch(findings[k]), k) for k in rejected):
+        stretches = gone.setdefault(findings[k].gauge, [])
+        if stretches and start <= stretches[-1][1]:
+            stretches[-1] = stretches[-1][0], max(end, stretches[-1][1])
+        else:
+            stretches.append((start, end))
+
+    def lost(finding: Finding) -> bool:
+        first, last = _stretch(finding)
+        within = any(start <= first and last <= end for start, end in gone.get(finding.gauge, ()))
+        return within and _unfit(finding) is None
+
+    return tuple(
+        replace(finding, state="rejected") if k in rejected or lost(finding) else finding
         for k, finding in enumerate(findings)
+    )
+
+
+def _stretch(finding: Finding) -> tuple[np.datetime64, np.datetime64]:
+    """Return start and end, the ends of time where they are open."""
+    return (
+        _FIRST if np.isnat(finding.start) else finding.start.astype("datetime64[s]"),
+        _LAST if np.isnat(finding.end) else finding.end.astype("datetime64[s]"),
     )
 
 

@@ -2,29 +2,29 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
-from dataclasses import replace
-from itertools import groupby
-from typing import Final
-
-import numpy as np
+from collections.abc import Sequence
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.rainfall import RainRecord
 from basinrain.screening.checks import CHECKS
 from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS, consistency
-from basinrain.screening.findings import SEVERITIES, Finding, Screening, ScreeningOptions
+from basinrain.screening.explained import without_explained
+from basinrain.screening.findings import Finding, Screening, ScreeningOptions
+from basinrain.screening.rejection import apply_rejections, rejected_findings, settle_findings
 from basinrain.screening.screened import Screened
 
 __all__ = ["screen"]
 
-MOST_STRETCHES: Final = 20
-"""Stretches of one gauge that a check lists one by one; with more, the fault is the gauge's, and one finding says
-so."""
 
-
-def screen(record: RainRecord, network: GaugeNetwork, *, options: ScreeningOptions | None = None) -> Screening:
-    """Return what every check of the registry finds in a record; nothing is changed.
+def screen(
+    record: RainRecord,
+    network: GaugeNetwork,
+    *,
+    options: ScreeningOptions | None = None,
+    reject: Sequence[str] = (),
+    accept: Sequence[str] = (),
+) -> Screening:
+    """Return what every check of the registry finds in a record, and how consistent its years are; nothing is changed.
 
     Parameters
     ----------
@@ -34,6 +34,10 @@ def screen(record: RainRecord, network: GaugeNetwork, *, options: ScreeningOptio
         The gauges.
     options
         What the user says about region and gauges.
+    reject, accept
+        What the user says about findings, as for :func:`basinrain.screening.settle_findings`. The checks see the record
+        as it is; consistency is that of the record without what is rejected. What a finding explains is listed beside it
+        only where that is accepted.
 
     Returns
     -------
@@ -41,6 +45,11 @@ def screen(record: RainRecord, network: GaugeNetwork, *, options: ScreeningOptio
         A check that lacks what it needs is named in ``checks_skipped`` with the reason; the two on years, which some
         gauges may lack, are then named in ``checks_run`` as well where other gauges have them. A record without steps
         or gauges has no findings.
+
+    Raises
+    ------
+    JobError
+        An entry of ``reject`` or ``accept`` does not fit.
 
     Examples
     --------
@@ -65,12 +74,13 @@ def screen(record: RainRecord, network: GaugeNetwork, *, options: ScreeningOptio
             skipped[name] = reason
             continue
         ran.append(name)
-        findings += _gathered(sorted(check.run(view), key=_by_gauge_and_time))
-    years = consistency(record, network)
+        findings += sorted(check.run(view), key=_by_gauge_and_time)
+    findings = list(without_explained(findings, accept))
+    years = consistency(apply_rejections(record, rejected_findings(findings, reject)), network)
     findings += sorted(years.findings, key=lambda finding: (finding.check, finding.gauge))
     ran += [name for name, made in ((DOUBLE_MASS_BREAK, years.double_mass), (INHOMOGENEOUS, years.homogeneity)) if made]
     return Screening(
-        findings=tuple(findings),
+        findings=settle_findings(findings, reject=reject, accept=accept),
         double_mass=years.double_mass,
         homogeneity=years.homogeneity,
         checks_run=tuple(ran),
@@ -80,23 +90,3 @@ def screen(record: RainRecord, network: GaugeNetwork, *, options: ScreeningOptio
 
 def _by_gauge_and_time(finding: Finding) -> tuple[str, str, str]:
     return finding.gauge, "" if finding.whole_record else str(finding.start), str(finding.end)
-
-
-def _gathered(findings: Sequence[Finding]) -> Iterator[Finding]:
-    """Yield the findings of a check, those of a gauge as one where they are too many to read."""
-    never = np.datetime64("NaT", "s")
-    for _, group in groupby(findings, key=lambda finding: finding.gauge):
-        members = list(group)
-        if len(members) <= MOST_STRETCHES:
-            yield from members
-            continue
-        worst = max(members, key=lambda finding: SEVERITIES.index(finding.severity))
-        yield replace(
-            worst,
-            start=never,
-            end=never,
-            evidence=f"{len(members)} stretches between {members[0].start} and {members[-1].end}. One of them: "
-            f"{worst.evidence}",
-            action=f"Look at the gauge's whole record before using any of it. Of one stretch: {worst.action}",
-            edit=None,
-        )

@@ -15,6 +15,7 @@ from basinrain.infill.days import day_totals
 from basinrain.infill.spans import month_of
 from basinrain.rainfall import RainRecord
 from basinrain.screening.findings import ScreeningOptions
+from basinrain.screening.wording import DepthUnit, depth_number, depth_text, steps_text
 
 __all__ = ["DAY", "DRY", "NORMAL", "WET_DAY", "Bools", "Floats", "Ints", "Screened", "Sheet", "Times", "runs_of"]
 
@@ -93,6 +94,10 @@ class Sheet:
     def unit(self) -> str:
         """What people call an interval: ``"day"`` or ``"step"``."""
         return "day" if self.seconds == DAY else "step"
+
+    def words(self, first: int, stop: int) -> str:
+        """Return in words the intervals ``first`` to ``stop`` (not included): ``"the 3 days that end ..."``."""
+        return steps_text(self.starts[first:stop], self.ends[first:stop])
 
 
 @dataclass(frozen=True, eq=False)
@@ -303,6 +308,15 @@ class Screened:
             surprise[there] = np.broadcast_to(odd, there.shape)[there]
         return np.where(self.reporting >= 2, surprise, 0.0)
 
+    @property
+    def depth_unit(self) -> DepthUnit:
+        """The unit in which depths are said."""
+        return self.options.depth_unit
+
+    def depth(self, depth: float) -> str:
+        """Return a depth in mm as evidence says it: ``"23.8 mm"``, ``"0.94 in"``."""
+        return depth_text(depth, self.depth_unit)
+
     def ids(self, gauges: list[int]) -> tuple[str, ...]:
         """Return the ids of gauges, sorted."""
         return tuple(sorted(self.network.ids[g] for g in gauges))
@@ -314,7 +328,8 @@ class Screened:
             depths = self.cases.depths[first:stop, j]
             known = np.isfinite(depths)
             if known.any():
-                parts.append(f"{self.network.ids[j]} {depths[known].sum():.1f}{'' if known.all() else ' (in part)'}")
+                depth = depth_number(float(depths[known].sum()), self.depth_unit)
+                parts.append(f"{self.network.ids[j]} {depth}{'' if known.all() else ' (in part)'}")
         return ", ".join(parts[:4])
 
     def cases_of(self, start: np.datetime64, end: np.datetime64) -> tuple[int, int]:

@@ -209,3 +209,82 @@ interval = "1d"
     assert before.record.depth[6, d] > 8
     assert after.record.depth[:, d] == pytest.approx(np.where(np.arange(24) == 2, 9.0, 0.0))
     assert after.record.totals == before.record.totals
+
+
+def test_an_edit_without_times_changes_the_whole_record(tmp_path: Path) -> None:
+    """B is scaled throughout, up to a time, and from one: 8 hours of 1 mm and one of 650 that are tenths."""
+    lines = EDIT.splitlines(keepends=True)
+    whole = "".join(line for line in lines if not line.startswith(("from", "to")))
+    before = "".join(line for line in lines if not line.startswith("from"))
+    after = "".join(line for line in lines if not line.startswith("to")).replace("T00", "T04")
+    plain = run_screen(write_tiny(tmp_path / "plain", gauges=FOUR, rain=hourly())).raw.depth
+    for name, edits, times in (
+        ("whole", whole, [("", "")]),
+        ("halves", before + after, [("", "2031-05-04T04:00:00"), ("2031-05-04T04:00:00", "")]),
+    ):
+        run = run_screen(write_tiny(tmp_path / name, gauges=FOUR, rain=hourly(), job=JOB + edits))
+        assert run.raw.depth == pytest.approx(plain * [1, 0.1, 1, 1])
+        assert [(row["from"], row["to"]) for row in run.edit_rows] == times
+        assert run.edit_table["steps_changed"].sum() == 48
+
+
+def test_an_edit_of_a_daily_total_is_remarked_on_where_it_is_spread(tmp_path: Path) -> None:
+    """D's 9 mm of a day are halved; in hours they are spread, and a remark says that they were changed."""
+    daily = '[[rainfall]]\nfile = "daily.csv"\nlayout = "long"\nunit = "mm"\ninterval = "1d"\n'
+    edit = (
+        EDIT.replace('"B"', '"D"')
+        .replace("T04:00:00", "")
+        .replace("T00:00:00", "")
+        .replace("value = 0.1", "value = 0.5")
+    )
+    hours = "\n".join(line.rpartition(",")[0] for line in hourly().splitlines()) + "\n"
+    job = write_tiny(
+        tmp_path,
+        gauges=FOUR,
+        rain=hours.replace("650", "1"),
+        job=JOB + daily + edit,
+        daily__csv="gauge,date,depth\nD,2031-05-04,9\n",
+    )
+    run = run_screen(job)
+    d = run.record.gauges.index("D")
+    assert np.nansum(run.record.depth[:, d]) == pytest.approx(4.5)
+    (note,) = [note for note in run.notes if note.code == "edit-spread"]
+    assert (note.level, note.gauge) == ("info", "D")
+    assert note.text == (
+        "[[edit]] 1 (gauge D) changes totals over longer times than the step: their 24 steps of D read 'spread', not "
+        "'adjusted'."
+    )
+
+
+def test_consistency_is_of_the_record_after_rejections(tmp_path: Path) -> None:
+    """Twelve years, C at half after 2004, E with 80 mm a day for 18 days: entries name findings of both kinds."""
+    ids, days = "ABCDEF", np.arange(np.datetime64("1999-01-01"), np.datetime64("2011-01-01"))
+    rng = np.random.default_rng(5)
+    weather = np.where(rng.random(len(days)) < 0.4, rng.gamma(0.8, 9.0, len(days)), 0.0)[:, None]
+    depths = weather * rng.lognormal(0, 0.2, (len(days), 6))
+    depths[days >= np.datetime64("2005-01-01"), 2] *= 0.5
+    depths[1000:1018, 4] = 80.0
+    rain = "date," + ",".join(ids) + "\n"
+    rain += "".join(f"{day},{','.join(f'{v:.1f}' for v in row)}\n" for day, row in zip(days, depths, strict=True))
+    gauges = "id,name,x,y,elevation,normal\n" + "".join(f"{g},{g},{2 * k},5,100,900\n" for k, g in enumerate(ids))
+    told = JOB.replace('interval = "1h"', 'interval = "1d"')
+    said = '\n[screening]\nreject = ["stuck-values E 2001"]\naccept = ["double-mass-break C"]\n'
+    raw = run_screen(write_tiny(tmp_path / "raw", gauges=gauges, rain=rain, job=told))
+    run = run_screen(write_tiny(tmp_path / "settled", gauges=gauges, rain=rain, job=told + said))
+    before, after = (
+        next(c for c in r.screening.double_mass if c.gauge == "E" and c.years[2] == 2001) for r in (raw, run)
+    )
+    assert (before.days[2], after.days[2]) == (365, 347)
+    assert before.totals[2] - after.totals[2] == pytest.approx(18 * 80)
+    written = run.double_mass[(run.double_mass["gauge"] == "E") & (run.double_mass["year"] == 2001)]
+    assert written["days"].tolist() == [347]
+    assert written["total"].tolist() == pytest.approx([after.totals[2]])
+    states = {(f.check, f.gauge): f.state for f in run.screening.findings}
+    assert (states["stuck-values", "E"], states["double-mass-break", "C"]) == ("rejected", "accepted")
+    # What else was said of those 18 days goes with them.
+    assert {f.state for f in run.screening.findings if f.gauge == "E" and not f.whole_record} == {"rejected"}
+    assert {f.state for f in raw.screening.findings} == {"open"}
+    wrong = told + '\n[screening]\nreject = ["double-mass-break C"]\n'
+    job = write_tiny(tmp_path / "wrong", gauges=gauges, rain=rain, job=wrong)
+    with pytest.raises(JobError, match=r"reject 'double-mass-break C': found a break .* correct the older part by"):
+        run_screen(job)

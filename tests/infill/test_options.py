@@ -10,7 +10,7 @@ import pytest
 
 from basinrain.errors import DataError, JobError
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill import METHODS, InfillOptions
+from basinrain.infill import METHODS, InfillMethod, InfillOptions
 
 
 def test_defaults() -> None:
@@ -158,3 +158,12 @@ def test_relations_are_asked_for(method: str) -> None:
     network = GaugeNetwork(ids=("T", "A"), x=np.array([0.0, 1e3]), y=np.zeros(2), crs="local")
     with pytest.raises(DataError, match=f"relations between gauges: found none; expected those of .* '{method}'; give"):
         InfillOptions(method=method).weights(network, 0, np.ones(2, dtype=bool))
+
+
+@pytest.mark.parametrize("method", METHODS.values(), ids=lambda method: method.name)
+def test_a_label_has_the_power_of_a_method_that_takes_one(method: InfillMethod) -> None:
+    """Also the default power, and no other number."""
+    powered = "power" in method.takes
+    assert InfillOptions(method=method.name).label == method.name + (" (power 2)" if powered else "")
+    if powered:
+        assert InfillOptions(method=method.name, power=1.5, nearest=3).label == f"{method.name} (power 1.5)"

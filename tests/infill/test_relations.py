@@ -12,6 +12,7 @@ from sklearn.linear_model import LinearRegression
 
 from basinrain.errors import DataError
 from basinrain.infill import NormalRatios, normals_from_record, relations_of, relations_of_record
+from basinrain.infill.relations import relations_without_parts
 from basinrain.rainfall import RainRecord
 
 NAN = float("nan")
@@ -206,3 +207,37 @@ def test_relations_belong_to_their_network() -> None:
     turned = replace(line(2), ids=("A", "X"), names=("A", "X"))
     with pytest.raises(DataError, match="found other gauges than the network's, or another order; expected A, X"):
         found.of(turned)
+
+
+@pytest.mark.parametrize("normals", ["none", "yearly", "monthly", "record"])
+def test_relations_without_a_part_are_those_of_the_other_cases(normals: str) -> None:
+    """To 1e-12, whatever the normals, each part's own normals from the record; an empty part takes nothing away."""
+    depths, months = gappy(600)
+    rng = np.random.default_rng(3)
+    part = np.array([0, 1, 3])[rng.integers(0, 3, 600)]
+    columns = {"yearly": 1, "monthly": 12}.get(normals)
+    network = line(5, None if columns is None else rng.integers(20, 200, (5, columns)).astype(float))
+    ratios: list[NormalRatios | None] = [None] * 4
+    if normals == "record":
+        tables = [rng.integers(20, 200, (12, 5, 5)).astype(float) for _ in ratios]
+        ratios = [NormalRatios(network.ids, np.full((12, 5, 5), 10), means) for means in tables]
+    found = relations_without_parts(depths, network, months, part, ratios=ratios)
+    assert len(found) == 4
+    for k, mine in enumerate(found):
+        rest = part != k
+        expected = relations_of(depths[rest], network, months[rest], ratios=ratios[k])
+        assert np.array_equal(mine.common, expected.common)
+        for name in ("correlation", "slope", "ratio_correlation", "ratio_slope"):
+            one, other = getattr(mine, name), getattr(expected, name)
+            assert (one is None) == (other is None) == (normals == "none" and name.startswith("ratio"))
+            if one is not None:
+                np.testing.assert_allclose(one, other, rtol=1e-12, atol=1e-12)
+
+
+def test_one_part_with_all_the_rain_leaves_the_others_exact() -> None:
+    """Without a part of a million mm the slope is that of the rest to the last digit: nothing is subtracted."""
+    depths = np.column_stack([np.arange(1.0, 81.0), 2 * np.arange(1.0, 81.0)])
+    depths[40:] *= [1e6, 3e6]
+    found = relations_without_parts(depths, line(2), np.zeros(80), np.arange(80) // 40, ratios=(None, None))
+    assert found[1].slope[1, 0] == 2.0
+    assert found[1].correlation[1, 0] == 1.0

@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 
 from basinrain.errors import JobError
-from basinrain.jobfile.tables import RainfallTable, StormTable
-from basinrain.jobfile.times import rainfall_day_start, storm_window_times
+from basinrain.jobfile.tables import EditTable, RainfallTable, StormTable
+from basinrain.jobfile.times import edit_window_times, rainfall_day_start, storm_window_times
 
 MIDNIGHT = np.timedelta64(0, "s")
 
@@ -101,3 +101,19 @@ def test_what_is_not_given_is_none() -> None:
     assert window(None, None) == (None, None)
     assert window("2031-05-04", None) == ("2031-05-04T00:00:00", None)
     assert window(None, "2031-05", "+02:00") == (None, "2031-06-01T00:00:00")
+
+
+@pytest.mark.parametrize(
+    ("stated", "expected"),
+    [
+        ({}, ("NaT", "NaT")),
+        ({"from": "2031-05-04"}, ("2031-05-04T00:00:00", "NaT")),
+        ({"to": "2031-05"}, ("NaT", "2031-06-01T00:00:00")),
+        ({"from": "2031-05-04T06:00", "to": "2031-05-04"}, ("2031-05-04T06:00:00", "2031-05-05T00:00:00")),
+    ],
+)
+def test_an_edit_may_be_open(stated: dict[str, str], expected: tuple[str, str]) -> None:
+    """A side of an edit that is not given is open, both are the whole record."""
+    said = {"gauge": "W01", "action": "reject", "reason": "moved", "by": "site log", "date": "2031-06-01"}
+    edit = EditTable.model_validate(said | stated)
+    assert tuple(str(time) for time in edit_window_times(edit, 1, "", day_start=MIDNIGHT)) == expected

@@ -83,6 +83,7 @@ def make_comparison(
         estimated=estimates[chosen],
         scores=tuple(scores),
         differences=differences,
+        drawn="week",
         best=best,
         chosen=chosen,
         chosen_options=InfillOptions(method="station-average"),

@@ -29,6 +29,7 @@ def test_break_slopes_and_ratio_are_told_in_words() -> None:
     picture = double_mass_pictures([curve], depth_unit="mm")[0]
     texts = svg_texts(picture.svg)
     assert "1995" in texts
+    assert {"1985", "1990", "2000", "2005", "2010", f"W03: ratio {curve.ratio:.3f}"} <= set(texts)
     assert f"before {curve.slopes[0]:.3f}" in texts
     assert f"after {curve.slopes[1]:.3f}" in texts
     assert "break after 1995" in picture.caption

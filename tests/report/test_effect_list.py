@@ -36,17 +36,25 @@ def test_every_infill_method_has_a_line() -> None:
 
 
 def test_the_series_before_and_after() -> None:
-    """West by arithmetic is 0, 1.5, 6.5, 3.5, 0.5, 0 after infill: 4 of 6 steps wet, the largest six 2.0 mm each."""
+    """West by arithmetic is 0, 1.5, 6.5, 3.5, 0.5, 0 after infill: 4 of 6 steps wet, the largest six 2.0 mm each.
+
+    One of its gauges has 5 steps of its own, which a sentence explains.
+    """
     run = make_run()
     result = run.storms[0]
     check = series_check(result.completed.record, result.depths)
     table = series_table(check, ["west", "east", "union"], depth_unit="mm", storm="Quill")
     assert table is not None
     row = _plain(table.rows[0])
-    assert row[:4] == ["west", "arithmetic", "6", "66.7 %"]
-    assert row[6] == "2.0"
+    assert row[:5] == ["west", "arithmetic", "6", "5", "66.7 %"]
+    assert row[7] == "2.0"
     depths = np.array([0, 1.5, 6.5, 3.5, 0.5, 0])
-    assert row[9] == f"{depths.var(ddof=1):.2f}"
+    assert row[10] == f"{depths.var(ddof=1):.2f}"
+    assert any("silent over the peak" in note for note in table.notes)
+    whole = SeriesCheck(figures=tuple(replace(figures, steps=6) for figures in check.figures))
+    told = series_table(whole, ["west"], depth_unit="mm", storm="Quill")
+    assert told is not None
+    assert not any("silent" in note for note in told.notes)
     assert [r[0] for r in table.rows] == ["west"] * 3 + ["east"] * 3 + ["union"] * 3
 
 

@@ -141,7 +141,7 @@ def test_text_stands_out_from_its_ground() -> None:
 
 
 def test_screening_and_edits_stand_in_short() -> None:
-    """Section 8: counts, the open findings, what the job decided, and its edits whole."""
+    """Section 8: counts by check, what the job decided, and its edits whole."""
     screened = make_screen_run()
     run = replace(make_run(), screening=screened.screening, edit_rows=screened.edit_rows)
     text = Page(render_report(run)).text
@@ -149,9 +149,8 @@ def test_screening_and_edits_stand_in_short() -> None:
         text.index(words)
         for words in (
             "could not be; basinrain screen tells",
-            "Open: 2 findings",
-            "Rejected by the job: 1 finding",
-            "Accepted by the job: 1 finding",
+            "Findings by check and by what the job says of them",
+            "Settled by the job: 2 findings",
             "Edits of the job, all of them",
             "9 Ground and methods Plane",
         )

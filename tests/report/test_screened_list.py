@@ -1,13 +1,11 @@
 from __future__ import annotations
 
 import numpy as np
-import pytest
 
 from basinrain.rainfall import RainRecord, Status
 from basinrain.report import limits
-from basinrain.report.screened_list import check_tables, completeness_table, record_facts
+from basinrain.report.screened_list import completeness_table, record_facts
 from basinrain.report.words import NARROW_SPACE
-from basinrain.screening import Finding, Screening
 
 ENDS = np.datetime64("2031-05-04", "s") + np.arange(1, 6) * np.timedelta64(3600, "s")
 
@@ -65,22 +63,3 @@ def test_records_without_times_or_steps() -> None:
     totals = RainRecord(("A",), nat, nat, np.ones((1, 1)), status, step="storm", labels=("Quill",))
     assert ("Record", "1 storm total without times") in record_facts(totals)
     assert ("Record", "no steps") in record_facts(_record().window(0, 0))
-
-
-def test_checks_made_and_not_made() -> None:
-    """Each with what it looks for; those made with their findings counted, those not with the reason."""
-    finding = Finding(check="stuck-values", gauge="A", evidence="e", action="a")
-    screening = Screening(
-        findings=(finding, finding), checks_run=("missing-code", "stuck-values"), checks_skipped={"cold-season": "why"}
-    )
-    made, skipped = check_tables(screening)
-    assert [(row[0], row[2]) for row in made.rows] == [("missing-code", "0"), ("stuck-values", "2")]
-    assert all(row[1].endswith(".") for row in made.rows)
-    assert skipped.rows[0][::2] == ("cold-season", "why")
-    assert check_tables(Screening()) == []
-
-
-@pytest.mark.parametrize("name", ["double-mass-break", "inhomogeneous"])
-def test_the_checks_of_consistency_are_described_too(name: str) -> None:
-    """They are no part of the registry of single checks."""
-    assert len(check_tables(Screening(checks_run=(name,)))[0].rows[0][1]) > 40

@@ -37,7 +37,10 @@ def test_the_page_holds_everything_in_order(html: str) -> None:
             "Two hours.",
             "The record, a strip a gauge.",
             "What there is of every gauge, in steps",
-            "Erroneous: 1 finding, cannot be right",
+            "Erroneous: 1 open finding, cannot be right",
+            "missing-code: 1 finding",
+            "For the job",
+            "Settled by the job: 2 findings",
             "Edits of the job, all of them",
             "1 breaks at the level of 1 %",
             "Tests of homogeneity",
@@ -113,7 +116,8 @@ def test_a_large_record_stays_small() -> None:
     html = render_screening(run)
     assert time.perf_counter() - began < 20
     assert len(html) < 2e6
-    assert "Shown: 60 of 1200, open ones first. All are in findings.csv." in html
+    assert html.count("Shown: 25 of 600. All are in findings.csv.") == 2
+    assert html.count("The keys of 575 more are in findings.csv.") == 2
     assert html.count("logger set to 0.1 mm") == 300
     for svg in re.findall(r"<svg .*?</svg>", html, flags=re.DOTALL):
         svg_tree(svg)

@@ -17,6 +17,12 @@ def test_heads_above_span_all_columns() -> None:
         Table(caption="Depths", heads=("a", "b"), align="tn", rows=[], over=(("", 1), ("depth", 2)))
 
 
+def test_a_width_a_column() -> None:
+    """Widths that do not fit the columns would move them all."""
+    with pytest.raises(ValueError, match=r"lines of \[1, 2\] cells"):
+        Table(caption="Depths", heads=("a", "b"), align="tn", rows=[], widths=(100,))
+
+
 def test_only_short_groups_share_their_first_cell() -> None:
     """Single lines are no group; neither is a group that a page could cut."""
     single = Table(caption="c", heads=("a",), align="t", rows=[("x",), ("y",)])

@@ -312,9 +312,12 @@ KINDS = (
 
 
 def planted(kind: Kind, scale: str, seed: int) -> Planted:
-    """Return one of twenty clean records with a fault of this kind at a place and gauge of the seed's choice."""
+    """Return one of twenty clean records with a fault of this kind at a place and gauge of the seed's choice.
+
+    No threshold was chosen by these records.
+    """
     rng = np.random.default_rng([seed, 3, sum(kind.name.encode())])
-    network, clean = clean_days(seed % 20) if scale == "day" else clean_hours(seed % 20)
+    network, clean = clean_days(100 + seed % 20) if scale == "day" else clean_hours(100 + seed % 20)
     depths = clean.copy()
     g = int(rng.integers(len(network)))
     seconds = DAY if scale == "day" else 3600

@@ -68,7 +68,8 @@ def false_alarms(scale: str) -> dict[str, Alarms]:
     findings: Counter[str] = Counter()
     records: Counter[str] = Counter()
     years = 0.0
-    for seed in range(CLEAN):
+    # Thresholds were chosen on seeds below 100; faults are planted in those of 100 to 119.
+    for seed in range(200, 200 + CLEAN):
         network, depths = clean_days(seed) if scale == "day" else clean_hours(seed)
         seconds = DAY if scale == "day" else 3600
         screening = screen(record_of(network, depths, seconds), network)

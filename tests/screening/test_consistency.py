@@ -5,6 +5,8 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 import pytest
+from screening.break_rates import N_GAUGES, NETWORK, START, days_of, planted_breaks
+from screening.break_rates import record_of as days_record
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.rainfall import RainRecord, Status
@@ -71,14 +73,15 @@ def test_one_break() -> None:
     assert finding.severity == "doubtful"
     assert finding.evidence == (
         f"Against the mean of B, D, A, E, F over 30 years, 1991 to 2020, the slope of the double-mass curve is "
-        f"{curve.slopes[0]:.3f} to 2004 and {curve.slopes[1]:.3f} after (F = {curve.f:.1f}, probability below 0.001)."
+        f"{curve.slopes[0]:.3f} to 2004 and {curve.slopes[1]:.3f} after (F = {curve.f:.1f}, probability below 0.001). "
+        "The finding's stretch is the older part."
     )
     assert finding.others == tuple("ABDEF")
     assert f"scale the record to 2004 by {curve.ratio:.3f}" in finding.action
     second = result.findings[1]
     assert (second.severity, second.whole_record) == ("doubtful", True)
     assert second.evidence == (
-        "4 of 4 tests (snht, buishand-range, pettitt, von-neumann) reject homogeneity at 1 % for 30 ratios of annual "
+        "4 of 4 tests (SNHT, Buishand's range, Pettitt, von Neumann) reject homogeneity at 1 % for 30 ratios of annual "
         "totals to the mean of B, D, A, E, F, which grades the record suspect; the change is most likely after 2004."
     )
 
@@ -127,12 +130,14 @@ def test_without_neighbours() -> None:
     result = found(depths)
     assert result.double_mass == ()
     assert result.skipped == {
-        DOUBLE_MASS_BREAK: "A, B: fewer than 3 neighbours with 10 complete years in common",
+        DOUBLE_MASS_BREAK: "A, B: 1 neighbour; it takes 3",
     }
     assert [tested.reference for tested in result.homogeneity] == [(), ()]
     totals = depths[:, 1].reshape(30, 12).sum(axis=1)
-    expected = homogeneity_of(np.arange(1991, 2021), totals, gauge="B")
-    assert result.homogeneity[1].series == pytest.approx(totals)
+    lengths = np.where(np.arange(1991, 2021) % 4 == 0, 366, 365)
+    expected = homogeneity_of(np.arange(1991, 2021), totals / lengths, gauge="B")
+    assert result.homogeneity[1].series == pytest.approx(totals / result.homogeneity[1].days)
+    assert result.homogeneity[1].days[:2].tolist() == [365, 366]
     assert result.homogeneity[1].tests[0].statistic == pytest.approx(expected.tests[0].statistic)
 
 
@@ -141,7 +146,10 @@ def test_totals_by_themselves_are_named_as_such() -> None:
     depths = months(30, 1, noise=0.02)
     depths[14 * 12 :] *= 0.4
     finding = found(depths).findings[0]
-    assert "reject homogeneity at 1 % for 30 annual totals, which grades the record suspect" in finding.evidence
+    assert (
+        "reject homogeneity at 1 % for 30 annual means of the gauge alone, which grades the record suspect"
+        in finding.evidence
+    )
 
 
 @pytest.mark.parametrize(
@@ -171,12 +179,12 @@ def test_short_records(years: int, curves: int, tested: int, skipped: dict[str, 
 
 
 def test_one_short_gauge() -> None:
-    """A gauge with gaps in most years is left out alone, as target and as neighbour."""
+    """A gauge that lacks a month in most years is left out, as target and, since it cannot be judged, as neighbour."""
     depths = months(30, 6)
     depths[: 22 * 12 : 12, 1] = np.nan
     result = found(depths)
     assert [curve.gauge for curve in result.double_mass] == list("ACDEF")
-    assert all("B" not in curve.reference for curve in result.double_mass)
+    assert all("B" not in curve.reference and len(curve.years) == 30 for curve in result.double_mass)
     assert result.skipped == {
         DOUBLE_MASS_BREAK: "B: 8 complete calendar years; it takes 10",
         INHOMOGENEOUS: "B: 8 complete calendar years; it takes 20",
@@ -217,6 +225,80 @@ def test_planted_breaks(noise: float, factor: float, least: float, most_false: f
     assert max(false.values()) <= most_false * 200 * 7
 
 
+@pytest.mark.parametrize(
+    ("gaps", "curve", "tests"),
+    # Of 200; the table of docs/verification.md less three standard errors.
+    [(0.0, 0.98, 0.98), (0.02, 0.98, 0.98), (0.05, 0.71, 0.0)],
+)
+def test_planted_breaks_with_gaps(gaps: float, curve: float, tests: float) -> None:
+    """In daily records with outages breaks of 10 % are found where years enough are left, hardly any where none is."""
+    rates = planted_breaks(0.22, 0.9, gaps)
+    assert rates.share(DOUBLE_MASS_BREAK) >= curve
+    assert rates.share(INHOMOGENEOUS) >= tests
+    assert max(rates.alarms(DOUBLE_MASS_BREAK), rates.alarms(INHOMOGENEOUS)) <= 0.015
+
+
+def lost(depths: npt.NDArray[np.float64], year: int, days: slice, gauge: int) -> None:
+    """Take some days of a year away from a gauge."""
+    first = int((np.datetime64(f"{year}-01-01") - START).astype(int))
+    depths[first + days.start : first + days.stop, gauge] = np.nan
+
+
+def test_one_day_missing_a_year_takes_nothing_away() -> None:
+    """Every gauge lacks a day of its own in every year: all 30 years count, over 364 days, and the break is found."""
+    depths = days_of(1, 0.22, 0.0)
+    for year in range(1991, 2021):
+        for g in range(N_GAUGES):
+            lost(depths, year, slice(10 + g, 11 + g), g)
+    depths[5479:, 3] *= 0.8
+    result = consistency(days_record(depths), NETWORK)
+    assert {len(c.years) for c in result.double_mass} == {len(t.years) for t in result.homogeneity} == {30}
+    assert {int(c.days.min()) for c in result.double_mass} == {364}
+    assert keys(result) == [(DOUBLE_MASS_BREAK, "D"), (INHOMOGENEOUS, "D")]
+    assert "over 30 years, 1991 to 2020, on the 99.7 % of their days that they share" in result.findings[0].evidence
+
+
+def test_a_neighbour_with_gaps_stands_in_where_it_reports() -> None:
+    """B lacks a month in twelve of thirty years: the others' years all count, over all months, with B among them."""
+    depths = months(30, 6)
+    depths[: 12 * 12 : 12, 1] = np.nan
+    result = found(depths)
+    curves = {curve.gauge: curve for curve in result.double_mass}
+    assert {gauge: len(curve.years) for gauge, curve in curves.items()} == dict.fromkeys("ACDEF", 30) | {"B": 18}
+    assert all("B" in curve.reference and curve.days.min() == 365 for gauge, curve in curves.items() if gauge != "B")
+    assert result.findings == ()
+
+
+def test_years_that_are_left_out_are_named() -> None:
+    """D lacks nineteen days of 1998 and of 2006, the first year after the break: both are named."""
+    depths = days_of(2, 0.22, 0.0)
+    lost(depths, 1998, slice(0, 19), 3)
+    lost(depths, 2006, slice(200, 219), 3)
+    depths[5479:, 3] *= 0.8
+    finding = consistency(days_record(depths), NETWORK).findings[0]
+    assert (finding.gauge, str(finding.end)) == ("D", "2006-01-01T00:00:00")
+    assert (
+        "over 28 years, 1991 to 2020 without 1998, 2006, of which they share less than 95 % of the days, the slope"
+        in finding.evidence
+    )
+    assert "to 2005 and" in finding.evidence
+    assert "from 2007 (F" in finding.evidence
+    assert finding.action.endswith("The years between 2005 and 2007 are left out, so that the change may lie there.")
+
+
+def test_what_is_rejected_takes_no_part() -> None:
+    """D holds 60 mm on 18 days of 1993: the raw record's curve has them; after their rejection they are in no sum."""
+    depths = days_of(3, 0.22, 0.0)
+    depths[800:818, 3] = 60.0
+    record = days_record(depths)
+    raw = screen(record, NETWORK)
+    settled = screen(record, NETWORK, reject=["stuck-values D 1993-03"])
+    curves = [next(c for c in s.double_mass if c.gauge == "D") for s in (raw, settled)]
+    sums = [c.totals[c.years.tolist().index(1993)] for c in curves]
+    assert sums[0] - sums[1] == pytest.approx(18 * 60)
+    assert [int(c.days[2]) for c in curves] == [365, 347]
+
+
 def test_screening_has_it_all() -> None:
     """The whole screening ends with curves, tests and what they found, and says for which gauges they could not be."""
     depths = months(30, 6)
@@ -246,7 +328,8 @@ def test_too_few_that_can_be_trusted() -> None:
     result = found(depths)
     assert [curve.gauge for curve in result.double_mass] == ["A"]
     assert result.skipped[DOUBLE_MASS_BREAK] == (
-        "B, C, D: fewer than 3 neighbours with 10 complete years in common, not counting A with a break of their own"
+        "B, C, D: fewer than 10 years in which 3 neighbours report beside it on 95 % of the days, not counting A "
+        "with a break of their own"
     )
 
 

@@ -196,6 +196,17 @@ def test_years_that_are_left_out() -> None:
     assert curve.y[-1] == 11 * 90
 
 
+def test_days_travel_with_the_totals() -> None:
+    """Days are told for the years that took part, the calendar year's where none are given; sums do not use them."""
+    totals, reference, years = np.full(12, 90.0), np.full(12, 100.0), np.arange(2001, 2013)
+    totals[1] = np.nan
+    told = double_mass(totals, reference, years, days=np.arange(350, 362))
+    assert told.days.tolist() == [350, *range(352, 362)]
+    plain = double_mass(totals, reference, years)
+    assert plain.days.tolist() == [365, 365, 366, 365, 365, 365, 366, 365, 365, 365, 366]
+    assert plain.y.tolist() == told.y.tolist()
+
+
 def test_dry_part() -> None:
     """A gauge without rain after the break has no factor, and nothing is adjusted."""
     totals = np.repeat([90.0, 0.0], 6)

@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from basinrain.screening.envelope import envelope_depth, greatest_depths, world_depth, world_record
+from basinrain.screening.envelope import envelope_depth, greatest_depths, world_depth
 
 
 @pytest.mark.parametrize(
@@ -28,7 +28,7 @@ from basinrain.screening.envelope import envelope_depth, greatest_depths, world_
 def test_the_envelope_runs_through_the_world_records(hours: float, depth: float, place: str) -> None:
     """World greatest point rainfalls as listed by the WMO and in handbooks (from memory)."""
     assert world_depth(hours) == pytest.approx(depth, rel=1e-5)
-    assert place in world_record(hours).place
+    assert any(place in r.place for r in greatest_depths() if r.hours == pytest.approx(hours, rel=1e-3))
 
 
 def test_a_record_below_a_shorter_one_does_not_bend_the_line() -> None:

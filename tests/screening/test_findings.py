@@ -16,6 +16,8 @@ def test_a_finding_is_named_by_check_gauge_and_start_to_the_minute() -> None:
     whole = Finding(check="zero-run", gauge="W 03", evidence="Dry.", action="Look.")
     assert whole.key == "zero-run W 03"
     assert whole.whole_record
+    network = Finding(check="reading-hours", gauge="", evidence="Two sets.", action="State them.")
+    assert network.key == "reading-hours"
 
 
 def test_severities_rise() -> None:

@@ -221,7 +221,10 @@ def test_grade_by_count(rejecting: int, grade: str) -> None:
         homogeneity.TestResult(name, 30, 0.0, {0.01: 1.0}, 0.01 if k < rejecting else 0.05, None)
         for k, name in enumerate(names)
     )
-    assert homogeneity.Homogeneity("A", YEARS, stepped(0.0), reference=(), tests=tests).grade == grade
+    assert (
+        homogeneity.Homogeneity("A", YEARS, stepped(0.0), days=np.full(30, 365), reference=(), tests=tests).grade
+        == grade
+    )
 
 
 def test_below_twenty_years_there_is_no_grade() -> None:
@@ -250,3 +253,5 @@ def test_years_without_ratio_are_left_out() -> None:
     totals[2], reference[5], reference[7] = np.nan, np.nan, 0.0
     tested = homogeneity.homogeneity_of(YEARS, totals, gauge="A", reference=reference)
     assert sorted(set(YEARS) - set(tested.years)) == [1993, 1996, 1998]
+    # The leap years 1996, with the others, is out: 1992, 2000 to 2020 are left.
+    assert tested.days.sum() == 27 * 365 + 7

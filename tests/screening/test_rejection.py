@@ -13,7 +13,7 @@ from hypothesis import strategies as st
 from basinrain.errors import JobError
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 from basinrain.screening.findings import Finding
-from basinrain.screening.rejection import apply_rejections, settle_findings
+from basinrain.screening.rejection import apply_rejections, rejected_findings, settle_findings
 
 HOUR = np.timedelta64(3600, "s")
 MIDNIGHT = np.datetime64("2031-05-04", "s")
@@ -42,17 +42,66 @@ def states(**options: list[str]) -> str:
 @pytest.mark.parametrize(
     ("entry", "expected"),
     [
-        ("unit-mixup", "rrooo"),
-        ("unit-mixup W03", "roooo"),
-        ("stuck-values W03", "oorro"),
-        ("stuck-values W03 2031-05-04T06:00", "ooroo"),
-        ("  stuck-values   W03 2031-05-04T12:00 ", "oooro"),
+        ("unit-mixup", "aaooo"),
+        ("unit-mixup W03", "aoooo"),
+        ("stuck-values W03", "ooaao"),
+        ("stuck-values W03 2031-05-04T06:00", "ooaoo"),
+        ("  stuck-values   W03 2031-05-04T12:00 ", "oooao"),
+        ("stuck-values W03 2031-05-04T06", "ooaoo"),
+        ("stuck-values W03 2031-05-04", "ooaao"),
+        ("stuck-values W03 2031-05", "ooaao"),
+        ("stuck-values W03 2031", "ooaao"),
+        ("reading-hours", "ooooa"),
     ],
 )
 def test_entries(entry: str, expected: str) -> None:
-    """An entry names a finding by its key, or several by the leading words."""
+    """An entry names a finding by its key, or several by the leading words, the time by a leading part of it."""
+    assert states(accept=[entry]) == expected
+
+
+@pytest.mark.parametrize(
+    ("entry", "expected"),
+    [("stuck-values W03", "oorro"), ("stuck-values W03 2031-05-04T12:00", "oooro"), ("unit-mixup W04", "orooo")],
+)
+def test_rejections(entry: str, expected: str) -> None:
+    """The same entries reject."""
     assert states(reject=[entry]) == expected
-    assert states(accept=[entry]) == expected.replace("r", "a")
+
+
+WITHIN = (
+    found("zero-run", "A", 2, 6),
+    found("zero-among-wet", "A", 2, 3),
+    found("zero-among-wet", "A", 5, 6),
+    found("spatial-outlier", "A", 5, 7),
+    found("stuck-values", "A", 6, 9),
+    found("zero-among-wet", "B", 3, 4),
+    found("short-record", "A"),
+    found("double-mass-break", "A", 2, 6),
+)
+
+
+def within(**options: list[str]) -> str:
+    return "".join(finding.state[0] for finding in settle_findings(WITHIN, **options))
+
+
+def test_what_lies_in_a_rejected_stretch_is_settled() -> None:
+    """Zeros within the rejected run go with it; what reaches beyond it, other gauges and whole records do not."""
+    assert within(reject=["zero-run"]) == "rrrooooo"
+
+
+def test_rejected_stretches_that_adjoin() -> None:
+    """What lies across the edge of two that are rejected lies wholly in both together."""
+    assert within(reject=["zero-run", "stuck-values A"]) == "rrrrrooo"
+
+
+def test_a_rejected_whole_record() -> None:
+    """With the whole record all of the gauge's stretches are gone, also one that another entry accepts."""
+    assert within(reject=["short-record A"], accept=["stuck-values A"]) == "rrrrroro"
+
+
+def test_gathered_stretches_between() -> None:
+    """Two rejected days do not settle what lies between them."""
+    assert within(reject=["zero-among-wet A"]) == "orrooooo"
 
 
 def test_both_lists() -> None:
@@ -84,14 +133,40 @@ def test_both_lists() -> None:
         ),
         (
             {"reject": ["reading-hours"]},
-            "[screening] reject 'reading-hours': found a finding about the network as a whole; expected one about a",
+            "[screening] reject 'reading-hours': found a finding about the network as a whole; expected one about v",
         ),
+        # A leading part of the time ends where one of its parts does.
+        ({"accept": ["stuck-values W03 2031-05-0"]}, "accept 'stuck-values W03 2031-05-0': found no such finding"),
+        ({"accept": ["stuck-values W03 2031-05-05"]}, "the nearest: stuck-values W03 2031-05-04T"),
+        ({"accept": ["unit-mixup W03 2031"]}, "accept 'unit-mixup W03 2031': found no such finding"),
     ],
 )
 def test_entries_that_do_not_fit(options: dict[str, list[str]], text: str) -> None:
     """An entry that names nothing, or what another entry names otherwise, is refused."""
     with pytest.raises(JobError, match=re.escape(text)):
         states(**options)
+
+
+@pytest.mark.parametrize(
+    ("check", "text"),
+    [
+        (
+            "double-mass-break",
+            'can be left out; correct the older part by an [[edit]] with action = "scale", or accept the finding',
+        ),
+        (
+            "inhomogeneous",
+            "can be left out; accept it, correct a part by an [[edit]], or leave the gauge out by [gauges] exclude",
+        ),
+    ],
+)
+def test_decades_are_not_rejected_by_a_word(check: str, text: str) -> None:
+    """A finding on years can be accepted, not rejected; looking ahead at what is rejected leaves it out."""
+    finding = found(check, "A", 2, 6)
+    assert settle_findings([finding], accept=[check])[0].state == "accepted"
+    assert rejected_findings([finding], [check]) == ()
+    with pytest.raises(JobError, match=rf"reject '{check} A': found a .*{re.escape(text)}"):
+        settle_findings([finding], reject=[f"{check} A"])
 
 
 def test_nothing_found() -> None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+
 from basinrain.infill.leave_one_out.comparison import Candidate
 from basinrain.infill.options import InfillOptions
 from basinrain.infill.registry import METHODS, InfillMethod

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 from typing import Final, NoReturn
 
@@ -14,10 +14,10 @@ from basinrain.errors import BasinRainError, DataError, MethodError, Problem, Pr
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.days import day_totals
 from basinrain.infill.donors import require_elevations
-from basinrain.infill.leave_one_out.bootstrap import differences_to_best
+from basinrain.infill.leave_one_out.bootstrap import differences_to_best, what_is_drawn
 from basinrain.infill.leave_one_out.candidates import candidates_of
 from basinrain.infill.leave_one_out.cases import Cases, cases_of, steps_of_cases
-from basinrain.infill.leave_one_out.comparison import Candidate, Comparison, Score
+from basinrain.infill.leave_one_out.comparison import Candidate, Comparison, Difference, Score
 from basinrain.infill.leave_one_out.cross_fit import CrossFit, Fitted
 from basinrain.infill.leave_one_out.scoring import ScoreSums
 from basinrain.infill.leave_one_out.wording import notes_of, reason_of
@@ -26,6 +26,7 @@ from basinrain.infill.record_normals import FEWEST_YEARS, NormalRatios
 from basinrain.infill.registry import InfillMethod
 from basinrain.infill.relations import AT_LEAST
 from basinrain.rainfall import RainRecord
+from basinrain.units import depth_factor
 
 __all__ = ["ENOUGH", "SEED", "compare_infill"]
 
@@ -51,6 +52,8 @@ def compare_infill(
     candidates: Sequence[Candidate] | None = None,
     seed: int = SEED,
     progress: Progress | None = None,
+    depth_unit: str = "mm",
+    instead: str = "name the infill method",
 ) -> Comparison:
     """Compare infill methods by leaving out one gauge at a time.
 
@@ -71,18 +74,24 @@ def compare_infill(
         Of the bootstrap.
     progress : callable, optional
         Called with the label of each method before it is tried.
+    depth_unit : str
+        Of the depths that reason and notes name; numbers are in mm whatever it is.
+    instead : str
+        What an error advises to do where nothing can be compared.
 
     Returns
     -------
     Comparison
         The chosen method is the first, from simple to complex, that cannot be told from the best by root-mean-square
-        error.
+        error; with fewer than 5 cases, of which nothing can be told, the best itself.
 
     Raises
     ------
     DataError
         The columns are not the network's gauges, there is one gauge only, an elevation limit is given and a gauge that
         reports has no elevation, or no gauge can be estimated on a wet day.
+    JobError
+        The depth unit is not known.
 
     Notes
     -----
@@ -111,49 +120,55 @@ def compare_infill(
     >>> comparison.skipped["normal-ratio"]
     'it needs normals, and the gauges have none'
     """
-    _check(record, network)
+    depth_factor(depth_unit)  # An unknown one is refused before the work is done.
+    _check(record, network, instead)
     days = day_totals(record)
     cases, finer = cases_of(record, days)
     fit = CrossFit(record, network, days, ratios)
     given = candidates_of(options) if candidates is None else tuple(candidates)
     if any(candidate.options.elevation_limit is not None for candidate in given):
         require_elevations(network, fit.reporting)
-    runners, skipped, able = _able(given, fit, cases, progress or (lambda _: None))
+    runners, skipped, able = _able(given, fit, cases, progress or (lambda _: None), instead)
     result = _scored(runners, cases, network)
     if not len(result.compared):
-        _no_case(cases, skipped, by=f" by each of {', '.join(runner.label for runner in runners)}")
+        _no_case(cases, skipped, instead, by=f" by each of {', '.join(runner.label for runner in runners)}")
     scores = list(result.scores)
     if finer:
         scores += _scored(runners, steps_of_cases(record, days, cases), network).scores
     labels = tuple(runner.label for runner in runners)
-    differences = differences_to_best(labels, result.squared, result.count, cases.week[result.compared], seed=seed)
-    chosen = next(k for k, found in enumerate(differences) if not found.distinguishable)
+    compared, n = _only(cases, result.compared), int(result.count.sum())
+    drawn = what_is_drawn(compared.week, result.count)
+    differences = _differences(runners, cases, result, drawn, compared.week, seed=seed)
+    # Where nothing can be told apart, being simple is no merit: there the error decides.
+    chosen = next(k for k, d in enumerate(differences) if (not d.distinguishable if drawn else d.candidate == d.best))
     observed, estimated = _cases_of_one(runners[chosen], cases, result)
-    n = int(result.count.sum())
     return Comparison(
         candidates=labels,
         skipped=MappingProxyType(skipped),
         scale=cases.scale,
         gauges=record.gauges,
-        ends=cases.ends[result.compared],
+        ends=compared.ends,
         observed=observed,
         estimated=estimated,
         scores=tuple(scores),
         differences=differences,
+        drawn=drawn,
         best=differences[0].best,
         chosen=labels[chosen],
         chosen_options=runners[chosen].options,
-        reason=reason_of(scores, differences, labels[chosen], n),
+        reason=reason_of(scores, differences, labels[chosen], compared, n, drawn, depth_unit=depth_unit),
         notes=notes_of(
-            cases,
+            compared,
             network,
             chosen=next(score for score in scores if score.candidate == labels[chosen]),
             n=n,
+            drawn=drawn,
             left_out=able - n,
             learned=any(runner.options.chosen_method.needs_relations for runner in runners),
             normals=any(runner.options.chosen_method.needs_normals for runner in runners),
             from_record=ratios is not None,
             normals_see_all=fit.normals_see_all,
+            depth_unit=depth_unit,
         ),
     )
 
@@ -188,7 +203,7 @@ class _Scored:
     common: npt.NDArray[np.bool_]
 
 
-def _check(record: RainRecord, network: GaugeNetwork) -> None:
+def _check(record: RainRecord, network: GaugeNetwork, instead: str) -> None:
     problems = Problems()
     if record.gauges != network.ids:
         problems.add(
@@ -202,13 +217,13 @@ def _check(record: RainRecord, network: GaugeNetwork) -> None:
             item="leave-one-out comparison",
             found=f"{len(network)} gauge{'' if len(network) == 1 else 's'}",
             expected="two gauges or more, since each is estimated from the others",
-            remedy="give further gauges, or name the infill method",
+            remedy=f"give further gauges, or {instead}",
         )
     problems.raise_as(DataError)
 
 
 def _able(
-    given: tuple[Candidate, ...], fit: CrossFit, cases: Cases, progress: Progress
+    given: tuple[Candidate, ...], fit: CrossFit, cases: Cases, progress: Progress, instead: str
 ) -> tuple[list[_Runner], dict[str, str], int]:
     """Return the candidates that can estimate enough, why others are skipped, and how many values the ablest can."""
     skipped: dict[str, str] = {}
@@ -235,7 +250,7 @@ def _able(
         counts.append(count)
     most = max(counts, default=0)
     if not most:
-        _no_case(cases, skipped)
+        _no_case(cases, skipped, instead)
     kept = []
     for runner, count in zip(runners, counts, strict=True):
         if count >= ENOUGH * most:
@@ -255,8 +270,8 @@ def _too_few(method: InfillMethod, count: int, most: int, *, ratios: bool) -> st
     return "; ".join(why)
 
 
-def _no_case(cases: Cases, skipped: dict[str, str], *, by: str = "") -> NoReturn:
-    what = "day" if cases.scale == "day" else "step"
+def _no_case(cases: Cases, skipped: dict[str, str], instead: str, *, by: str = "") -> NoReturn:
+    what = cases.noun
     why = "".join(f"; {label}: {reason}" for label, reason in skipped.items())
     found = f"no gauge that could be estimated from others{by} on any of {len(cases):,} wet {what}s{why}"
     raise DataError(
@@ -264,7 +279,9 @@ def _no_case(cases: Cases, skipped: dict[str, str], *, by: str = "") -> NoReturn
             item="leave-one-out comparison",
             found=found if len(cases) else f"no wet {what}",
             expected=f"wet {what}s on which several gauges have values",
-            remedy="give a longer record, loosen radius, elevation_limit or min_donors, or name the infill method",
+            remedy="give a longer record, "
+            + ("loosen radius, elevation_limit or min_donors, " if len(cases) else "")
+            + f"or {instead}",
         )
     )
 
@@ -299,6 +316,32 @@ def _scored(runners: list[_Runner], cases: Cases, network: GaugeNetwork) -> _Sco
         count=common[compared].sum(axis=1).astype(float),
         compared=compared,
         common=common[compared],
+    )
+
+
+def _differences(
+    runners: list[_Runner], cases: Cases, result: _Scored, drawn: str, week: npt.NDArray[np.int64] | None, *, seed: int
+) -> tuple[Difference, ...]:
+    labels = tuple(runner.label for runner in runners)
+    squared, count = result.squared, result.count
+    if drawn == "case":
+        # At fewer than five times: few enough to be estimated again, each by itself.
+        pairs = [_cases_of_one(runner, cases, result) for runner in runners]
+        squared = np.stack([np.square(estimated - observed)[result.common] for observed, estimated in pairs])
+        count = np.ones(squared.shape[1])
+    group = (week if drawn == "week" else np.arange(len(count))) if drawn else None
+    return differences_to_best(labels, squared, count, group, seed=seed)
+
+
+def _only(cases: Cases, rows: npt.NDArray[np.int64]) -> Cases:
+    """Return the cases of some times."""
+    return replace(
+        cases,
+        ends=cases.ends[rows],
+        months=cases.months[rows],
+        part=cases.part[rows],
+        week=None if cases.week is None else cases.week[rows],
+        depth=lambda chunk: cases.depth(slice(None))[rows[chunk]],
     )
 
 

@@ -15,7 +15,7 @@ from basinrain.infill.days import Days
 from basinrain.infill.leave_one_out.estimator import Estimator
 from basinrain.infill.options import InfillOptions
 from basinrain.infill.record_normals import NormalRatios, normals_from_record
-from basinrain.infill.relations import Relations, relations_of
+from basinrain.infill.relations import Relations, relations_without_parts
 from basinrain.rainfall import RainRecord
 
 __all__ = ["PARTS", "CrossFit", "Fitted", "parts_of"]
@@ -83,12 +83,9 @@ class CrossFit:
     @cached_property
     def relations(self) -> tuple[Relations, ...]:
         """What the rest of the record teaches about pairs of gauges, one a part."""
-        part = parts_of(len(self.days.totals))
-        return tuple(
-            relations_of(
-                self.days.totals[part != k], self.network, self.days.months[part != k], ratios=self.part_ratios[k]
-            )
-            for k in range(PARTS)
+        days = self.days
+        return relations_without_parts(
+            days.totals, self.network, days.months, parts_of(len(days.totals)), ratios=self.part_ratios
         )
 
     @cached_property

@@ -12,7 +12,7 @@ from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import DAY, DRY, WET_DAY, Floats, Ints, Screened
 
-__all__ = ["unflagged_accumulations"]
+__all__ = ["ACCUMULATION_LIMITS", "unflagged_accumulations"]
 
 LONGEST: Final = 31
 """Days over which an observer may have been away."""
@@ -23,7 +23,7 @@ MISSED: Final = 15.0
 MISSED_DAY: Final = 5.0
 """mm that they had on one of these days, each of them some: rain that the gauge cannot have missed."""
 
-SUM_FITS: Final = 2.0
+SUM_FITS: Final = 1.5
 """Standard deviations of root depths by which the reading may differ from the neighbours' sum over the stretch."""
 
 DAY_OFF: Final = 1.5
@@ -45,6 +45,12 @@ WEEKDAY_LEAST: Final = 20
 """Wet days of the neighbours on a weekday that are needed."""
 
 _WEEK: Final = ("Thursday", "Friday", "Saturday", "Sunday", "Monday", "Tuesday", "Wednesday")
+
+
+ACCUMULATION_LIMITS: Final = (
+    f"Up to {LONGEST} days without rain or reading on which the neighbours had {MISSED:g} mm and {MISSED_DAY:g} mm on one; "
+    f"the reading within {SUM_FITS:g} standard deviations of the neighbours' sum and {DAY_OFF:g} above their day."
+)
 
 
 def unflagged_accumulations(view: Screened) -> Iterator[Finding]:
@@ -71,10 +77,10 @@ def unflagged_accumulations(view: Screened) -> Iterator[Finding]:
                 gauge=view.network.ids[g],
                 start=start,
                 end=end,
-                evidence=f"{reading:.1f} mm after {days} day{'s' if days > 1 else ''} {what}; the neighbours' medians, "
-                f"in this gauge's climate, are {missed:.1f} mm over {'those days' if days > 1 else 'that day'} and "
-                f"{own_day:.1f} mm on the day itself. Neighbours as measured, over all of it: "
-                f"{view.beside(g, first, stop)}.",
+                evidence=f"{view.depth(reading)} in {cases.words(stop - 1, stop)}, after {days} day"
+                f"{'s' if days > 1 else ''} {what}; the neighbours' medians, in this gauge's climate, are "
+                f"{view.depth(missed)} over {'those days' if days > 1 else 'that day'} and {view.depth(own_day)} on the day "
+                f"itself. Neighbours as measured, over all of it: {view.beside(g, first, stop)}.",
                 action="Declare the stretch accumulated, so that its total is spread; or reject its days without rain.",
                 others=view.ids(near),
                 edit=Edit(
@@ -82,7 +88,7 @@ def unflagged_accumulations(view: Screened) -> Iterator[Finding]:
                     start=start,
                     end=end,
                     action="reject",
-                    reason=f"{reading:.1f} mm seems to be the total of {days + 1} days",
+                    reason=f"{view.depth(reading)} seems to be the total of {days + 1} days",
                     by=SUGGESTED,
                 ),
             )
@@ -100,19 +106,17 @@ def _stretches(view: Screened, g: int) -> Iterator[tuple[int, int, float, float]
     for last in np.flatnonzero(great[1:] & none[:-1]).tolist():
         reading, own_day = float(depths[last + 1]), float(middle[last + 1])
         first = max(int(began[last]) + 1, last + 1 - LONGEST)
-        # The stretch that fits: days are added backwards until the sum is nearest to the reading.
-        sums = np.cumsum(middle[first : last + 1][::-1])
-        k = int(np.argmin(np.abs(sums + own_day - reading)))
-        begin, missed, spread = last - k, float(sums[k]), float(scatter[last + 1])
-        before = slice(begin, last + 1)
-        dry = begin + np.flatnonzero(np.isfinite(depths[before]))
-        if (
-            missed >= MISSED
-            and abs(np.sqrt(reading) - np.sqrt(missed + own_day)) <= SUM_FITS * spread
-            and ((middle[before] >= MISSED_DAY) & (view.least_measured[before, g] >= WET_DAY)).any()
-            and (not len(dry) or view.dry_surprise[dry, g].sum() >= ODDS)
-        ):
-            yield begin, last + 2, missed, own_day
+        # Days are added backwards; of the stretches that are odd enough the one that fits best is told.
+        back = slice(last, first - 1 if first else None, -1)
+        sums = np.cumsum(middle[back])
+        apart = np.abs(np.sqrt(sums + own_day) - np.sqrt(reading))
+        rain = np.logical_or.accumulate((middle[back] >= MISSED_DAY) & (view.least_measured[back, g] >= WET_DAY))
+        dry = np.isfinite(depths[back])
+        odd = ~np.logical_or.accumulate(dry) | (np.cumsum(view.dry_surprise[back, g] * dry) >= ODDS)
+        fits = (sums >= MISSED) & (apart <= SUM_FITS * scatter[last + 1]) & rain & odd
+        if fits.any():
+            k = int(np.argmin(np.where(fits, apart, np.inf)))
+            yield last - k, last + 2, float(sums[k]), own_day
 
 
 def _weekdays(view: Screened, g: int) -> Finding | None:

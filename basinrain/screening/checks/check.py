@@ -26,6 +26,8 @@ class Check:
         One sentence for the report: what it looks for.
     run
         Takes the :class:`Screened` view and yields findings, one a gauge and stretch. It changes nothing.
+    limits
+        One sentence for the report: the thresholds.
     needs
         What must be there for it to mean anything, the first thing that is lacking is named.
 
@@ -39,13 +41,14 @@ class Check:
     ...             yield Finding(
     ...                 check="never-wet", gauge=gauge, evidence="It never rained.", action="Ask the observer."
     ...             )
-    >>> Check("never-wet", "Gauges that were dry throughout.", run).needs
+    >>> Check("never-wet", "Gauges that were dry throughout.", run, "Every depth is 0.").needs
     ()
     """
 
     name: str
     about: str
     run: Callable[[Screened], Iterator[Finding]]
+    limits: str
     needs: tuple[Need, ...] = ()
 
     def lacks(self, view: Screened) -> str:

@@ -13,7 +13,7 @@ from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import Floats, Ints, Screened, Sheet
 
-__all__ = ["duplicated_stretches", "shared_records"]
+__all__ = ["COPY_LIMITS", "TWIN_LIMITS", "duplicated_stretches", "shared_records"]
 
 WORD: Final = 5
 """Wet values, with the dry steps between them, that are compared at a time: the shortest stretch that is found."""
@@ -32,6 +32,10 @@ WHOLE: Final = 0.9
 """Share of a gauge's wet values that are the other's, from which the whole record is."""
 
 _MIX: Final = (np.uint64(0x9E3779B97F4A7C15), np.uint64(0xBF58476D1CE4E5B9), np.uint64(0x94D049BB133111EB))
+
+
+COPY_LIMITS: Final = f"{WORD} or more wet values on end with the dry steps between, at odds of e^{SURPRISE:g} to 1."
+TWIN_LIMITS: Final = f"{LEAST_SHARED} or more equal wet values on end, at odds of e^{SHARED_SURPRISE:g} to 1."
 
 
 @dataclass(frozen=True, eq=False)
@@ -143,16 +147,17 @@ def _apart(found: list[tuple[int, int, int]]) -> list[tuple[int, int, int]]:
 def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, copy: tuple[int, int, int]) -> Finding:
     gauge = view.network.ids[g]
     first, second, n = copy
-    start, end = sheet.starts[wet.at[second]], sheet.ends[wet.at[second + n - 1]]
-    origin, until = sheet.starts[wet.at[first]], sheet.ends[wet.at[first + n - 1]]
+    last = wet.at[second + n - 1]
+    start, end = sheet.starts[wet.at[second]], sheet.ends[last]
+    original = sheet.words(wet.at[first], wet.at[first + n - 1] + 1)
     return Finding(
         check="duplicated-stretch",
         gauge=gauge,
         start=start,
         end=end,
         severity="erroneous",
-        evidence=f"{n} wet {sheet.unit}s with the dry ones between them are, value by value, those from {origin} to "
-        f"{until}.",
+        evidence=f"{n} wet {sheet.unit}s with the dry ones between them, in {sheet.words(wet.at[second], last + 1)}, are, "
+        f"value by value, those of {original}.",
         action="Find out which of the two stretches is the original, and reject the other.",
         others=view.ids(view.neighbours[g][:4]),
         edit=Edit(
@@ -160,7 +165,7 @@ def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, copy: tuple[int, in
             start=start,
             end=end,
             action="reject",
-            reason=f"a copy of {origin} to {until}",
+            reason=f"a copy of {original}",
             by=SUGGESTED,
         ),
     )
@@ -217,8 +222,8 @@ def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begi
             start=start,
             end=end,
             severity="erroneous",
-            evidence=f"{equal if whole else n} wet {sheet.unit}s{'' if whole else ' on end'} are, value by value, those "
-            f"of {view.network.ids[a]}, {view.distances[a, b] / 1000:.1f} km away.",
+            evidence=f"{equal if whole else n} wet {sheet.unit}s{'' if whole else ' on end'} are, value by value, "
+            f"those of {view.network.ids[a]}, {view.distances[a, b] / 1000:.1f} km away.",
             action="Find out whose record it is, and exclude or reject the other's: one rain must not count twice.",
             others=(view.network.ids[a],),
             edit=None

@@ -9,11 +9,12 @@ from typing import Final
 import numpy as np
 
 from basinrain.screening.edits import SUGGESTED, Edit
-from basinrain.screening.envelope import envelope_depth, world_depth, world_record
+from basinrain.screening.envelope import envelope_depth, world_depth
 from basinrain.screening.findings import Finding, Severity
 from basinrain.screening.screened import DAY, Bools, Floats, Ints, Screened, Sheet, runs_of
+from basinrain.screening.wording import time_text
 
-__all__ = ["NAME", "greatest_depths_found"]
+__all__ = ["DEPTH_LIMITS", "NAME", "greatest_depths_found"]
 
 NAME: Final = "greatest-depths"
 
@@ -23,6 +24,12 @@ HOURS: Final = (1.0, 3.0, 6.0, 12.0, 24.0, 72.0, 720.0)
 DOUBTFUL_SHARE: Final = 1 / 3
 """Share of the world's envelope above which a depth is doubtful where the user gives no limit: 134 mm in an hour, 608
 mm in a day. Most regions never see it; where storms do, the user gives the region's own limit."""
+
+
+DEPTH_LIMITS: Final = (
+    f"The world's greatest known depths over the step and {', '.join(f'{hours:g}' for hours in HOURS)} h; doubtful above "
+    f"the region's limit, or {DOUBTFUL_SHARE:.0%} of the world's where none is given."
+)
 
 
 @dataclass(frozen=True)
@@ -114,21 +121,19 @@ def _findings(view: Screened, sheet: Sheet, column: int, windows: list[_Window])
 
 def _finding(view: Screened, sheet: Sheet, g: int, top: _Window, steps: tuple[int, int]) -> Finding:
     start, end = sheet.starts[steps[0]], sheet.ends[steps[1] - 1]
-    when = np.datetime_as_string(sheet.ends[top.stop - 1], unit="m")
     world = top.severity == "erroneous"
-    record = world_record(top.hours)
-    limit = (
-        f"more than the {top.limit:.0f} mm of the world's greatest known depths ({record.place} {record.year}: "
-        f"{record.depth:.0f} mm in {_duration(record.hours)})"
+    limit = view.depth(top.limit)
+    over = (
+        f"more than was ever measured in that time: the greatest known depths reach {limit}"
         if world
-        else f"more than the region's limit of {top.limit:.0f} mm"
+        else f"more than the region's limit of {limit}"
         if np.isfinite(envelope_depth(view.options.envelope or (), top.hours))
-        else f"more than {top.limit:.0f} mm, a third of the world's greatest known depths"
+        else f"more than {limit}, a third of the greatest depths known"
     )
     beside = view.beside(g, *view.cases_of(sheet.starts[top.first], sheet.ends[top.stop - 1]))
     neighbours = f" Neighbours, over the same day or days: {beside}." if beside else " No neighbour has a depth there."
     action = (
-        "Reject it, or correct its unit; only an original chart could show that it is the storm of the century."
+        "Reject it, or correct it from the original: a code, a slipped decimal point, another unit."
         if world
         else "Look at the original and at the neighbours: it may be the storm; keep it unless they speak against it."
     )
@@ -138,7 +143,8 @@ def _finding(view: Screened, sheet: Sheet, g: int, top: _Window, steps: tuple[in
         start=start,
         end=end,
         severity=top.severity,
-        evidence=f"{top.depth:.1f} mm in {_duration(top.hours)} to {when}, {limit}.{neighbours}",
+        evidence=f"{view.depth(top.depth)} in {_duration(top.hours)} to {time_text(sheet.ends[top.stop - 1])}, {over}."
+        f"{neighbours}",
         action=action,
         others=view.ids(view.neighbours[g][:4]),
         edit=Edit(
@@ -146,7 +152,7 @@ def _finding(view: Screened, sheet: Sheet, g: int, top: _Window, steps: tuple[in
             start=start,
             end=end,
             action="reject",
-            reason=f"{top.depth:.1f} mm in {_duration(top.hours)} cannot be",
+            reason=f"{view.depth(top.depth)} in {_duration(top.hours)} cannot be",
             by=SUGGESTED,
         )
         if world

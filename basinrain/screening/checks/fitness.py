@@ -7,10 +7,12 @@ from typing import Final
 
 import numpy as np
 
+from basinrain.screening.annual import COMPLETE, calendar_years
 from basinrain.screening.findings import Finding
-from basinrain.screening.screened import DAY, Ints, Screened
+from basinrain.screening.screened import DAY, Screened
+from basinrain.screening.wording import depth_number
 
-__all__ = ["cold_seasons", "needs_a_year", "needs_unheated", "short_records"]
+__all__ = ["COLD_LIMITS", "YEAR_LIMITS", "cold_seasons", "needs_a_year", "needs_unheated", "short_records"]
 
 LEAST_YEARS: Final = 10
 """Complete years below which no normals are taken from the record (design rule of this package; WMO-No. 1203 asks ten
@@ -19,8 +21,8 @@ for provisional normals)."""
 STANDARD_YEARS: Final = 30
 """Years of a climatological standard normal (WMO-No. 1203)."""
 
-COMPLETE: Final = 0.95
-"""Share of a year's days that a complete year has; the missing eighteen days may be filled (common practice)."""
+_LISTED: Final = 40
+"""Gauges that the remark names with their years."""
 
 _MONTHS: Final = (
     "",
@@ -39,6 +41,12 @@ _MONTHS: Final = (
 )
 
 
+YEAR_LIMITS: Final = (
+    f"{STANDARD_YEARS} calendar years with {COMPLETE:.0%} of their days, {LEAST_YEARS} for any normals."
+)
+COLD_LIMITS: Final = "Any value in the months that the job calls cold."
+
+
 def needs_a_year(view: Screened) -> str:
     """Say whether the record covers a year."""
     if not view.timed:
@@ -55,36 +63,26 @@ def needs_unheated(view: Screened) -> str:
 
 
 def short_records(view: Screened) -> Iterator[Finding]:
-    """Yield gauges whose complete years are fewer than normals take."""
-    complete = _complete_years(view)
-    for gauge, n in zip(view.network.ids, complete.tolist(), strict=True):
-        if n >= STANDARD_YEARS:
-            continue
-        years = f"{n} complete year{'' if n == 1 else 's'}"
-        yield Finding(
-            check="short-record",
-            gauge=gauge,
-            severity="remark",
-            evidence=f"It has {years} ({100 * COMPLETE:.0f} % of the days), fewer than the "
-            + (f"{LEAST_YEARS} that normals take." if n < LEAST_YEARS else f"{STANDARD_YEARS} of a standard normal."),
-            action="Give its normals from elsewhere, or use a method without normals."
-            if n < LEAST_YEARS
-            else "Say that normals from this record are of a period of its own.",
-        )
-
-
-def _complete_years(view: Screened) -> Ints:
-    cases = view.cases
-    middle = cases.starts + (cases.ends - cases.starts) // 2
-    year = middle.astype("datetime64[Y]").astype(np.int64)
-    days = (cases.ends - cases.starts).astype(np.int64) / DAY
-    known = np.isfinite(cases.depths) * days[:, None]
-    first = np.concatenate([[0], np.flatnonzero(np.diff(year)) + 1])
-    in_year = np.add.reduceat(known, first, axis=0)
-    years = year[first].astype("datetime64[Y]")
-    length = ((years + 1).astype("datetime64[D]") - years.astype("datetime64[D]")).astype(np.int64)
-    complete: Ints = (in_year >= COMPLETE * length[:, None]).sum(axis=0)
-    return complete
+    """Yield one remark on all gauges whose complete years are fewer than normals take."""
+    complete = dict(zip(view.network.ids, calendar_years(view.record).complete.sum(axis=0).tolist(), strict=True))
+    short = sorted((n, gauge) for gauge, n in complete.items() if n < STANDARD_YEARS)
+    if not short:
+        return
+    few = sum(n < LEAST_YEARS for n, _ in short)
+    listed = ", ".join(f"{gauge} {n}" for n, gauge in short[:_LISTED])
+    more = f" and {len(short) - _LISTED} more" if len(short) > _LISTED else ""
+    yield Finding(
+        check="short-record",
+        gauge="",
+        severity="remark",
+        evidence=f"{len(short)} gauge{' has' if len(short) == 1 else 's have'} fewer than the {STANDARD_YEARS} complete "
+        f"years of a standard normal ({100 * COMPLETE:.0f} % of the days of each)"
+        + (f", {few} of them fewer than the {LEAST_YEARS} that normals take" if few else "")
+        + f": {listed}{more}.",
+        action="Say that normals from this record are of a period of its own"
+        + (f"; where there are fewer than {LEAST_YEARS} years, give them from elsewhere." if few else "."),
+        others=tuple(sorted(gauge for _, gauge in short)),
+    )
 
 
 def cold_seasons(view: Screened) -> Iterator[Finding]:
@@ -104,12 +102,13 @@ def cold_seasons(view: Screened) -> Iterator[Finding]:
         share = 100 * in_cold / total if total > 0 else 0.0
         other = np.isfinite(view.middle[:, g]) & known & cold
         middle = view.middle[other, g].sum()
-        beside = f" Its neighbours' median there is {middle:.0f} mm." if middle > 0 else ""
+        beside = f" Its neighbours' median there is {view.depth(middle)}." if middle > 0 else ""
         yield Finding(
             check="cold-season",
             gauge=gauge,
             severity="remark",
-            evidence=f"It is not heated and has values in {names}: {in_cold:.0f} of {total:.0f} mm ({share:.0f} %), "
+            evidence=f"It is not heated and has values in {names}: {depth_number(in_cold, view.depth_unit)} of "
+            f"{view.depth(total)} ({share:.0f} %), "
             f"on {wet_cold} of {wet} wet {view.cases.unit}s.{beside}",
             action="Snow may be caught too little and too late there; leave the gauge out of storms in those months.",
             others=view.ids(view.neighbours[g]),

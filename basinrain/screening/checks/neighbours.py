@@ -11,7 +11,7 @@ from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import DRY, NORMAL, WET_DAY, Screened, runs_of
 
-__all__ = ["dry_among_wet", "far_from_neighbours", "long_dry_runs"]
+__all__ = ["OUTLIER_LIMITS", "RUN_LIMITS", "ZERO_LIMITS", "dry_among_wet", "far_from_neighbours", "long_dry_runs"]
 
 LEAST_REPORTING: Final = 3
 """Neighbours that must report: with two, nobody can tell which of three is wrong."""
@@ -46,6 +46,20 @@ LOST: Final = 20.0
 """mm that the neighbours had over the run, by their medians."""
 
 
+OUTLIER_LIMITS: Final = (
+    f"{OUTLYING:g} standard deviations of root depths and {LEAST_EXCESS:g} mm above the neighbours' median, "
+    f"{TIMES_GREATEST:g} times the greatest of {LEAST_REPORTING} or more neighbours."
+)
+ZERO_LIMITS: Final = (
+    f"Up to {DRY:g} mm, while each of {LEAST_REPORTING} or more neighbours has {LEAST_MEASURED:g} mm and their median "
+    f"{MIDDLE_WET:g} mm and {MISSING_RAIN:g} standard deviations of root depths."
+)
+RUN_LIMITS: Final = (
+    f"{LONG_RUN} or more days on which the neighbours were wet and {LOST:g} mm by their medians, at odds of e^{ODDS:g} to "
+    f"1; erroneous above {4 * LOST:g} mm."
+)
+
+
 def far_from_neighbours(view: Screened) -> Iterator[Finding]:
     """Yield days far above the neighbours', in the gauge's climate."""
     cases = view.cases
@@ -68,9 +82,9 @@ def far_from_neighbours(view: Screened) -> Iterator[Finding]:
                 gauge=view.network.ids[g],
                 start=cases.starts[first],
                 end=cases.ends[stop - 1],
-                evidence=f"{depth:.1f} mm against a median of {middle:.1f} mm at {int(view.reporting[first, g])} "
-                f"neighbours in this gauge's climate, {away[first:stop, g].max():.1f} standard deviations of root "
-                f"depths away. Neighbours as measured: {view.beside(g, first, stop)}.",
+                evidence=f"{view.depth(depth)} in {cases.words(first, stop)}, against a median of {view.depth(middle)} at "
+                f"{int(view.reporting[first, g])} neighbours in this gauge's climate, {away[first:stop, g].max():.1f} "
+                f"standard deviations of root depths away. Neighbours as measured: {view.beside(g, first, stop)}.",
                 action="Look at the original: a local storm, a misplaced decimal point, another day's depth.",
                 others=view.ids(view.neighbours[g]),
             )
@@ -96,9 +110,10 @@ def dry_among_wet(view: Screened) -> Iterator[Finding]:
                 gauge=gauge,
                 start=start,
                 end=end,
-                evidence=f"No rain while all {int(view.reporting[first, g])} neighbours were wet, the driest "
-                f"{view.least_measured[first:stop, g].min():.1f} mm, their median, in this gauge's climate, "
-                f"{view.middle[first:stop, g].sum():.1f} mm. Neighbours as measured: {view.beside(g, first, stop)}.",
+                evidence=f"No rain in {cases.words(first, stop)}. All {int(view.reporting[first, g])} neighbours were wet: "
+                f"the driest had {view.depth(view.least_measured[first:stop, g].min())}, and their median is "
+                f"{view.depth(view.middle[first:stop, g].sum())} in this gauge's climate. Neighbours as measured: "
+                f"{view.beside(g, first, stop)}.",
                 action="Reject the zero unless the observer confirms it: it may stand for a missing reading.",
                 others=view.ids(view.neighbours[g]),
                 edit=Edit(
@@ -138,8 +153,8 @@ def long_dry_runs(view: Screened) -> Iterator[Finding]:
                 start=start,
                 end=end,
                 severity="erroneous" if middle > 4 * LOST else "doubtful",
-                evidence=f"No rain from {start} to {end}, while the neighbours' median was {middle:.0f} mm, "
-                f"on {len(wet)} wet days. Neighbours as measured: {view.beside(g, first, stop)}.",
+                evidence=f"No rain in {cases.words(first, stop)}, while the neighbours' median was {view.depth(middle)}, "
+                f"on {len(wet)} wet {cases.unit}s. Neighbours as measured: {view.beside(g, first, stop)}.",
                 action="Reject the run: a blocked funnel, a stopped logger, or zeros for missing values.",
                 others=view.ids(near),
                 edit=Edit(
@@ -147,7 +162,7 @@ def long_dry_runs(view: Screened) -> Iterator[Finding]:
                     start=start,
                     end=end,
                     action="reject",
-                    reason=f"no rain over {len(wet)} wet days of the neighbours",
+                    reason=f"no rain over {len(wet)} wet {cases.unit}s of the neighbours",
                     by=SUGGESTED,
                 ),
             )

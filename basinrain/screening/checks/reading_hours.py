@@ -12,7 +12,7 @@ from basinrain.screening.checks.timing import FURTHEST_DAYS, LEAST_WET, Lags, la
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import DAY, Screened
 
-__all__ = ["reading_hours"]
+__all__ = ["HOUR_LIMITS", "reading_hours"]
 
 PART: Final = (0.2, 0.8)
 """Share of another day's rain between which the day seems to end at another hour: below it the days are the same, above
@@ -23,6 +23,12 @@ PART_GAIN: Final = 0.04
 
 LOPSIDED: Final = 2.5
 """How many times the gain on the other side it must be: neighbours that only resemble the gauge gain on both."""
+
+
+HOUR_LIMITS: Final = (
+    f"Any other hour than most, as stated; as it seems, {PART[0]:.0%} to {PART[1]:.0%} of another day's rain, the "
+    f"correlation of root depths higher by {PART_GAIN:g}."
+)
 
 
 def reading_hours(view: Screened) -> Iterator[Finding]:

@@ -8,11 +8,13 @@ from typing import Final
 
 import numpy as np
 
+from basinrain.rainfall import Status
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import DAY, Bools, Floats, Ints, Screened, Sheet, Times, runs_of
+from basinrain.screening.wording import stamp_text, steps_text
 
-__all__ = ["FURTHEST_DAYS", "Lags", "lags_by_gauge", "shifted_records"]
+__all__ = ["FURTHEST_DAYS", "SHIFT_LIMITS", "Lags", "lags_by_gauge", "shifted_records"]
 
 FURTHEST: Final = 24
 """Hours by which a finer record is tried against its neighbours: any two time zones, or a day."""
@@ -42,8 +44,24 @@ move at 20 to 60 km/h)."""
 AGREEING: Final = 0.7
 """Share of the seasons that must agree on a lag before it is said of the whole record."""
 
+MOST_TOLD: Final = 4.0
+"""The most, a natural logarithm, that one day or hour may say for or against the lag where the ends of a stretch are
+looked for: showers are wilder than the normal law."""
+
+DOUBT: Final = 3.0
+"""Natural logarithm of how much less likely than the best one an end may be that is still told as possible: e³ is 20 to
+1."""
+
 _HOUR: Final = 3600
 _LEAST: Final = 2
+_LEAST_SCATTER: Final = 0.3
+"""mm^½, half that of gauges side by side, since a mean of several is compared."""
+
+
+SHIFT_LIMITS: Final = (
+    f"Up to {FURTHEST_DAYS} days, or {FURTHEST} h of finer steps; the correlation of root depths {CORRELATED:g} or more "
+    f"and higher by {GAIN:g} over the record, by {GAIN_BLOCK:g} over {BLOCK_DAYS} days; up to {TRAVEL} h are weather."
+)
 
 
 @dataclass(frozen=True, eq=False)
@@ -68,6 +86,12 @@ class Lags:
         Sums of products of the neighbours with their next interval.
     wet : array of int, shape (n_seasons,)
         Intervals in which the neighbours were wet and the gauge had a value.
+    first : array of int, shape (n_seasons,)
+        The first interval of every season.
+    bounds : array of datetime64[s], shape (n_intervals + 1,)
+        The beginning of every interval, and the end of the last.
+    roots, reference_roots : array of float, shape (n_intervals,)
+        Root depths of the gauge, and the mean ones of its neighbours; mm^½, NaN where unknown.
     """
 
     lags: Ints
@@ -79,6 +103,10 @@ class Lags:
     reference: Floats
     following: Floats
     wet: Ints
+    first: Ints
+    bounds: Times
+    roots: Floats
+    reference_roots: Floats
 
     def correlation(self, seasons: slice) -> Floats:
         """Return the correlation by lag over some seasons, shape (n_lags,); 0 where nothing varies."""
@@ -108,6 +136,7 @@ def lags_by_gauge(view: Screened, sheet: Sheet) -> Iterator[tuple[int, Lags]]:
     first = np.arange(0, max(1, n - span // 2), span)
     stop = np.append(first[1:], n)
     starts, ends = sheet.starts[first * per], sheet.ends[stop * per - 1]
+    bounds = np.append(sheet.starts[: n * per : per], sheet.ends[n * per - 1])
     for g, column in place.items():
         near = [place[j] for j in view.neighbours[g] if j in place]
         if len(near) < _LEAST:
@@ -120,7 +149,9 @@ def lags_by_gauge(view: Screened, sheet: Sheet) -> Iterator[tuple[int, Lags]]:
             others = np.where(count > 0, mean - mean[both].mean(), 0.0)
             sums = _sums(values[column], known[column], both, others, furthest=furthest, first=first)
             told = np.add.reduceat(wet.astype(np.int64), first)
-            yield g, Lags(np.arange(-furthest, furthest + 1), seconds, starts, ends, *sums, told)
+            lags = np.arange(-furthest, furthest + 1)
+            both_roots = roots[column], np.where(count > 0, mean, np.nan)
+            yield g, Lags(lags, seconds, starts, ends, *sums, told, first, bounds, *both_roots)
 
 
 def _sums(
@@ -170,13 +201,20 @@ def _shifted(view: Screened, g: int, lags: Lags) -> Iterator[Finding]:
     told = [lag for lag in seasons if lag is not None]
     whole = _best(lags, slice(None), 2 * LEAST_WET, GAIN, least)
     if whole and (len(seasons) == 1 or sum(lag == whole for lag in told) >= AGREEING * len(told)):
-        yield _finding(view, g, lags, slice(None), whole)
+        yield _finding(view, g, lags, whole, None)
         return
     # Seasons that tell nothing neither end a stretch nor begin one.
     telling = np.flatnonzero([season is not None for season in seasons])
-    for lag in sorted({lag for lag in told if lag}):
-        for a, b in runs_of(np.array([seasons[k] == lag for k in telling], dtype=bool)):
-            yield _finding(view, g, lags, slice(int(telling[a]), int(telling[b - 1]) + 1), lag)
+    runs = sorted(
+        (int(telling[a]), int(telling[b - 1]) + 1, lag)
+        for lag in {lag for lag in told if lag}
+        for a, b in runs_of(np.array([seasons[k] == lag for k in telling], dtype=bool))
+    )
+    free = 0
+    for a, b, lag in runs:
+        stretch = _refined(lags, slice(a, b), lag, free)
+        free = stretch.stop
+        yield _finding(view, g, lags, lag, stretch)
 
 
 def _best(lags: Lags, seasons: slice, wet: int, gain: float, least: int) -> int | None:
@@ -191,17 +229,103 @@ def _best(lags: Lags, seasons: slice, wet: int, gain: float, least: int) -> int 
     return int(lags.lags[best])
 
 
-def _finding(view: Screened, g: int, lags: Lags, seasons: slice, lag: int) -> Finding:
-    gauge, entire = view.network.ids[g], seasons == slice(None)
+@dataclass(frozen=True)
+class _Stretch:
+    """The intervals ``first`` to ``stop`` (not included), the range of either, and the seasons it was found in."""
+
+    seasons: slice
+    first: int
+    stop: int
+    first_range: tuple[int, int]
+    stop_range: tuple[int, int]
+
+
+def _refined(lags: Lags, seasons: slice, lag: int, free: int) -> _Stretch:
+    """Return the intervals that the lag explains best, looked for up to a season beyond the seasons it was found in.
+
+    Every interval says by how much its root depth is likelier with the neighbours' of the lag than with those of its
+    own time, by the normal law with the scatter of the stretch; the stretch with the greatest sum is taken. What comes
+    before ``free`` belongs to another stretch.
+    """
+    n, bounds = len(lags.roots), np.append(lags.first, len(lags.roots))
+    low, high = int(bounds[max(seasons.start - 1, 0)]), int(bounds[min(seasons.stop + 1, len(bounds) - 1)])
+    low = max(low, free)
+    places = np.arange(low, high)
+    before = places - lag
+    own, at = lags.roots[low:high], lags.reference_roots[low:high]
+    moved = np.where((before >= 0) & (before < n), lags.reference_roots[np.clip(before, 0, n - 1)], np.nan)
+    within = slice(int(bounds[seasons.start]) - low, int(bounds[seasons.stop]) - low)
+    wet = (own > 0) | (at > 0) | (moved > 0)
+    known = np.isfinite(own) & np.isfinite(at) & np.isfinite(moved) & wet
+    inside = np.zeros(len(places), dtype=bool)
+    inside[max(within.start, 0) : within.stop] = True
+    fitted = known & inside
+    slope = float((own[fitted] * moved[fitted]).sum() / max((moved[fitted] ** 2).sum(), 1e-9))
+    scatter = max(float(np.sqrt(np.mean((own[fitted] - slope * moved[fitted]) ** 2))), _LEAST_SCATTER)
+    gain = np.where(known, (own - slope * at) ** 2 - (own - slope * moved) ** 2, 0.0) / (2 * scatter**2)
+    through = np.concatenate([[0.0], np.cumsum(np.clip(gain, -MOST_TOLD, MOST_TOLD))])
+    above = through - np.minimum.accumulate(through)
+    stop = int(np.argmax(above))
+    # Of beginnings that are as likely the last, so that no dry day is moved without need.
+    first = stop - int(np.argmin(through[stop::-1]))
+    firsts = low + np.flatnonzero(through[:stop] <= through[first] + DOUBT)
+    stops = low + first + 1 + np.flatnonzero(through[first + 1 :] >= through[stop] - DOUBT)
+    ranges = (int(firsts[0]), int(firsts[-1])), (int(stops[0]), int(stops[-1]))
+    return _Stretch(seasons, low + first, low + stop, *ranges)
+
+
+def _stands(view: Screened, g: int, start: np.datetime64, end: np.datetime64) -> bool:
+    """Return whether the gauge has anything of its own in ``(start, end]``, which a shift would not overwrite."""
+    record = view.record
+    inside = (record.starts >= start) & (record.ends <= end)
+    valued = record.reporting[inside, g] | (record.status[inside, g] == Status.ACCUMULATED)
+    return bool(valued.any())
+
+
+def _movable(view: Screened, g: int, lags: Lags, lag: int, found: _Stretch) -> tuple[int, int, bool]:
+    """Return first and stop of a stretch, and whether the gauge has nothing where it moves to.
+
+    Where it has, the nearest of the other possible ends is taken that has nothing before or after it: whoever starts to
+    write readings a day late leaves a date empty.
+    """
+
+    def free(at: int) -> bool:
+        edge = lags.bounds[np.clip([at - max(lag, 0), at + max(-lag, 0)], 0, len(lags.bounds) - 1)]
+        return not _stands(view, g, edge[0], edge[1])
+
+    first, stop = found.first, found.stop
+    low, high = found.first_range if lag > 0 else found.stop_range
+    best = first if lag > 0 else stop
+    for at in sorted(range(low, high + 1), key=lambda place: (abs(place - best), place)):
+        if free(at):
+            return (at, stop, True) if lag > 0 else (first, at, True)
+    return first, stop, False
+
+
+def _finding(view: Screened, g: int, lags: Lags, lag: int, stretch: _Stretch | None) -> Finding:
+    gauge = view.network.ids[g]
+    seasons = slice(None) if stretch is None else stretch.seasons
     correlation = lags.correlation(seasons)
     middle = len(lags.lags) // 2
-    whole = np.datetime64("NaT", "s")
     seconds = abs(lag) * lags.seconds
-    length = f"{seconds // DAY}d" if lags.seconds >= DAY else f"{seconds // _HOUR}h"
-    moved = f"{'-' if lag > 0 else ''}{length}"
-    words = f"{seconds // DAY} day{'s' if seconds > DAY else ''}" if lags.seconds >= DAY else f"{seconds // _HOUR} h"
-    start = whole if entire else lags.starts[seasons][0]
-    end = whole if entire else lags.ends[seasons][-1]
+    days = lags.seconds >= DAY
+    n = seconds // (DAY if days else _HOUR)
+    words = f"{n} day{'s' if n > 1 else ''}" if days else f"{n} h"
+    moved = f"{'-' if lag > 0 else ''}{n}{'d' if days else 'h'}"
+    never = np.datetime64("NaT", "s")
+    start, end, exact, mends = never, never, "", True
+    action = "Ask for the clock, the time zone and what a reading's date means; then declare it or shift the record."
+    if stretch is not None:
+        first, stop, mends = _movable(view, g, lags, lag, stretch)
+        start, end = lags.bounds[first], lags.bounds[stop]
+        low, high = stretch.stop_range
+        exact = (
+            f" It begins with {_steps(lags, first, first + 1)}{_possible(lags, first, stretch.first_range)} and ends "
+            f"with {_steps(lags, stop - 1, stop)}{_possible(lags, stop - 1, (low - 1, high - 1))}."
+        )
+        to = (max(first - lag, 0), first) if lag > 0 else (stop, min(stop - lag, len(lags.roots)))
+        before = "" if mends else f"reject {_steps(lags, *to)} by an edit, since the shift moves there, and "
+        action = f"Ask what changed then; {before}shift {_steps(lags, first, stop)} by {moved}."
     return Finding(
         check="shifted-record",
         gauge=gauge,
@@ -210,10 +334,8 @@ def _finding(view: Screened, g: int, lags: Lags, seasons: slice, lag: int) -> Fi
         severity="doubtful",
         evidence=f"It fits the mean of its neighbours best {words} {'late' if lag > 0 else 'early'}: correlation of "
         f"root depths {correlation[middle + lag]:.2f}, and {correlation[middle]:.2f} as it stands, over "
-        f"{int(lags.wet[seasons].sum())} wet {'days' if lags.seconds >= DAY else 'intervals'}.",
-        action="Ask for the clock, the time zone and what a reading's date means; then declare it or shift the record."
-        if entire
-        else f"Ask what changed then; shift the stretch by {moved}, after rejecting what stands where it moves to.",
+        f"{int(lags.wet[seasons].sum())} wet {'days' if lags.seconds >= DAY else 'hours'}.{exact}",
+        action=action,
         others=view.ids(view.neighbours[g]),
         edit=Edit(
             gauge=gauge,
@@ -224,7 +346,16 @@ def _finding(view: Screened, g: int, lags: Lags, seasons: slice, lag: int) -> Fi
             reason=f"{words} {'later' if lag > 0 else 'earlier'} than its neighbours",
             by=SUGGESTED,
         )
-        # The ends of a stretch would move onto values of their own, which an edit does not overwrite.
-        if entire
+        if mends
         else None,
     )
+
+
+def _steps(lags: Lags, first: int, stop: int) -> str:
+    return steps_text(lags.bounds[first:stop], lags.bounds[first + 1 : stop + 1])
+
+
+def _possible(lags: Lags, place: int, among: tuple[int, int]) -> str:
+    """Return in brackets which other intervals are nearly as likely."""
+    low, high = (stamp_text(lags.bounds[at], lags.bounds[at + 1]) for at in among)
+    return "" if among == (place, place) else f" (possible: {low} to {high})"

@@ -12,12 +12,14 @@ from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import Bools, Floats, Ints, Screened
 
-__all__ = ["NAME", "unit_mixups"]
+__all__ = ["NAME", "UNIT_LIMITS", "unit_mixups"]
 
 NAME: Final = "unit-mixup"
 
 FACTORS: Final = (25.4, 10.0, 2.54, 1 / 2.54, 1 / 10.0, 1 / 25.4)
 """What a depth is multiplied by when mm, tenths, inches and hundredths of an inch are taken for each other."""
+
+_BETWEEN: Final = {25.4: "mm and inches", 10.0: "a unit and its tenths", 2.54: "tenths of mm and hundredths of an inch"}
 
 LEAST_BLOCK: Final = 10.0
 """mm that a neighbour must have in a month before its ratio says something."""
@@ -56,6 +58,13 @@ LEAST_SEASON: Final = 15
 LEAST_NEIGHBOURS: Final = 2
 
 
+UNIT_LIMITS: Final = (
+    f"{', '.join(f'{factor:g}' for factor in FACTORS if factor > 1)} times or one in so many, within a factor of "
+    f"{np.exp(CLOSE):.1f}, throughout or over {LEAST_MONTHS} months ({LEAST_MONTHS_SMALL} for 2.54), at odds of "
+    f"e^{SURE:g} to 1."
+)
+
+
 @dataclass(frozen=True, eq=False)
 class _Months:
     """Depths of a gauge and of each neighbour over the cases that both have, by month.
@@ -80,31 +89,52 @@ class _Months:
         return _Months(self.mine[months].sum(axis=0, keepdims=True), self.theirs[months].sum(axis=0, keepdims=True))
 
 
+@dataclass(frozen=True, eq=False)
+class _Calendar:
+    """The calendar months of a record: their first cases, where they stop, and which are of a season.
+
+    ``named[k]`` says which months are the calendar month ``k + 1``, ``seasons[k]`` which are it or one of those beside
+    it.
+    """
+
+    first: Ints
+    stop: Ints
+    seasons: tuple[Bools, ...]
+    named: tuple[Bools, ...]
+
+
 def unit_mixups(view: Screened) -> Iterator[Finding]:
     """Yield gauges whose ratio to their neighbours is near a factor between units, throughout or over some months."""
     depths = view.cases.depths
-    first_of_month = _months(view)
+    calendar = _calendar(view)
     known = np.isfinite(depths)
     for g, near in enumerate(view.neighbours):
         if len(near) < LEAST_NEIGHBOURS:
             continue
         both = known[:, [g]] & known[:, near]
         months = _Months(
-            np.add.reduceat(np.where(both, depths[:, [g]], 0.0), first_of_month, axis=0),
-            np.add.reduceat(np.where(both, depths[:, near], 0.0), first_of_month, axis=0),
+            np.add.reduceat(np.where(both, depths[:, [g]], 0.0), calendar.first, axis=0),
+            np.add.reduceat(np.where(both, depths[:, near], 0.0), calendar.first, axis=0),
         )
         found = _whole(view, g, months)
         if found is not None:
             yield found
         else:
-            yield from _stretches(view, g, months, first_of_month)
+            yield from _stretches(view, g, months, calendar)
 
 
-def _months(view: Screened) -> Ints:
-    """Return the first case of every calendar month."""
+def _calendar(view: Screened) -> _Calendar:
     middle = view.cases.starts + (view.cases.ends - view.cases.starts) // 2
     month = middle.astype("datetime64[M]").astype(np.int64)
-    return np.concatenate([[0], np.flatnonzero(np.diff(month)) + 1])
+    first = np.concatenate([[0], np.flatnonzero(np.diff(month)) + 1])
+    # Months from the first one of 1970, a January.
+    named = tuple(month[first] % 12 == k for k in range(12))
+    return _Calendar(
+        first=first,
+        stop=np.append(first[1:], len(month)),
+        seasons=tuple(named[k - 1] | named[k] | named[(k + 1) % 12] for k in range(12)),
+        named=named,
+    )
 
 
 def _whole(view: Screened, g: int, months: _Months) -> Finding | None:
@@ -122,20 +152,19 @@ def _whole(view: Screened, g: int, months: _Months) -> Finding | None:
     return _finding(view, g, factor, np.exp(ratio), None)
 
 
-def _stretches(view: Screened, g: int, months: _Months, first_of_month: Ints) -> Iterator[Finding]:
+def _stretches(view: Screened, g: int, months: _Months, calendar: _Calendar) -> Iterator[Finding]:
     by_neighbour = months.ratio(LEAST_BLOCK)
     told = np.flatnonzero(np.isfinite(by_neighbour).sum(axis=0) >= 2 * LEAST_MONTHS)
     if len(told) < LEAST_NEIGHBOURS:
         return
     # Every neighbour's ratio against its usual one: what lasting climate there is between the two does not count.
-    usual = _usual_ratios(by_neighbour[:, told], view.months[first_of_month])
+    usual = _usual_ratios(by_neighbour[:, told], calendar)
     off = by_neighbour[:, told] - usual
     telling = np.flatnonzero(np.isfinite(off).sum(axis=1) >= LEAST_NEIGHBOURS)
     if len(telling) < 2 * LEAST_MONTHS:
         return
     expected = _Months(months.mine[:, told], months.theirs[:, told] * np.exp(usual))
     away = np.nanmedian(off[telling], axis=1)
-    stop_of_month = np.append(first_of_month[1:], len(view.cases.ends))
     # From month to month, so that a change of unit half way does not count as scatter.
     scatter = max(1.4826 * float(np.median(np.abs(np.diff(away)))) / np.sqrt(2), LEAST_SCATTER)
     found: list[tuple[float, int, int, float, float, float]] = []
@@ -153,28 +182,31 @@ def _stretches(view: Screened, g: int, months: _Months, first_of_month: Ints) ->
         if taken[a:b].any():
             continue
         taken[a:b] = True
-        first, stop = int(first_of_month[telling[a]]), int(stop_of_month[telling[b - 1]])
+        first, stop = int(calendar.first[telling[a]]), int(calendar.stop[telling[b - 1]])
         yield _finding(view, g, factor, float(np.exp(ratio)), (first, stop, float(np.exp(ratio - stand))))
 
 
-def _usual_ratios(ratios: Floats, calendar: Ints) -> Floats:
+def _usual_ratios(ratios: Floats, calendar: _Calendar) -> Floats:
     """Return what each ratio would usually be, by the season where the record is long enough to tell seasons apart.
 
     Mountains and plains differ in summer otherwise than in winter, every year.
     """
     usual = np.empty_like(ratios)
-    seasons = [np.isin(calendar, [(month + k - 1) % 12 + 1 for k in (-1, 0, 1)]) for month in range(1, 13)]
     for j, column in enumerate(ratios.T):
         known = np.isfinite(column)
         lasting, parted = _usual(column[known])
         usual[:, j] = lasting
         if parted:
             continue
-        for month, season in enumerate(seasons, 1):
+        for season, named in zip(calendar.seasons, calendar.named, strict=True):
             told = column[season & known]
             if len(told) >= LEAST_SEASON:
-                usual[calendar == month, j] = np.median(told)
+                usual[named, j] = np.median(told)
     return usual
+
+
+def _between(factor: float) -> str:
+    return next(words for size, words in _BETWEEN.items() if np.isclose(size, max(factor, 1 / factor)))
 
 
 def _small(factor: float) -> bool:
@@ -222,19 +254,19 @@ def _finding(view: Screened, g: int, factor: float, ratio: float, stretch: tuple
     gauge = view.network.ids[g]
     words = f"{factor:g}" if factor > 1 else f"1/{1 / factor:g}"
     never = np.datetime64("NaT", "s")
-    start, end, usual = never, never, ""
+    start, end, where, usual = never, never, "It", ""
     if stretch is not None:
         first, stop, lasting = stretch
         start, end = view.cases.starts[first], view.cases.ends[stop - 1]
-        usual = f" from {start} to {end}, and {lasting:.2f} times otherwise"
+        where, usual = f"In {view.cases.words(first, stop)} it", f", and {lasting:.2f} times otherwise"
     return Finding(
         check=NAME,
         gauge=gauge,
         start=start,
         end=end,
         severity="doubtful" if _small(factor) else "erroneous",
-        evidence=f"It has {ratio:.3g} times the depth of its neighbours, by the median of them{usual}: near {words}, "
-        "as between mm, tenths and inches.",
+        evidence=f"{where} has {ratio:.3g} times the depth of its neighbours, by the median of them{usual}. That is near "
+        f"{words}, as between {_between(factor)}.",
         action=f"Ask for the unit of the file; if it is confirmed, declare it, or multiply by {1 / factor:.4g}.",
         others=view.ids(view.neighbours[g]),
         edit=Edit(

@@ -12,8 +12,9 @@ import numpy as np
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import Floats, Screened, Sheet, runs_of
+from basinrain.screening.wording import exact_text
 
-__all__ = ["missing_codes", "stuck_values"]
+__all__ = ["CODE_LIMITS", "STUCK_LIMITS", "missing_codes", "stuck_values"]
 
 LEAST_EQUAL: Final = 5
 """Equal depths on end below which a run is never called stuck: coarse gauges repeat small depths."""
@@ -29,7 +30,7 @@ CODES: Final = (99.9, 99.99, 777.0, 777.7, 888.0, 888.8, 999.0, 999.9, 999.99, 7
 """Codes of missing or suspect values that formats and observers use (common practice)."""
 
 LIMITS: Final = (3276.7, 32767.0, 6553.5, 65535.0)
-"""Full scale of two-byte registers, which loggers write when they fail."""
+"""Full scale of registers of two bytes, in whole units or tenths, which loggers write when they fail."""
 
 UNITS: Final = {"mm": 1.0, "in": 25.4, "0.1 mm": 0.1, "0.01 in": 0.254, "cm": 10.0, "0.1 in": 2.54, "0.01 mm": 0.01}
 """Units that files of rain are written in, and how many mm one is."""
@@ -42,12 +43,22 @@ _FIT: Final = 2e-4
 _FEW: Final = 3
 
 
+STUCK_LIMITS: Final = (
+    f"{LEAST_EQUAL} or more equal depths on end, of which the gauge's own habit lets expect less than {CHANCE:g} runs in "
+    "the record."
+)
+CODE_LIMITS: Final = (
+    f"A known code or full scale, twice or more and {TIMES_GREATER:g} times every other depth, or {_FEW} times and above "
+    "every other depth."
+)
+
+
 def stuck_values(view: Screened) -> Iterator[Finding]:
     """Yield runs of one depth above 0 that are too long for the gauge's own habit of repeating it."""
     for sheet in view.sheets:
         for column, g in enumerate(sheet.gauges.tolist()):
             for first, stop, expected in _stuck(sheet.depths[:, column]):
-                gauge, depth = view.network.ids[g], sheet.depths[first, column]
+                gauge, depth = view.network.ids[g], exact_text(float(sheet.depths[first, column]), view.depth_unit)
                 start, end = sheet.starts[first], sheet.ends[stop - 1]
                 beside = view.beside(g, *view.cases_of(start, end)) if view.timed else ""
                 yield Finding(
@@ -55,8 +66,8 @@ def stuck_values(view: Screened) -> Iterator[Finding]:
                     gauge=gauge,
                     start=start,
                     end=end,
-                    evidence=f"{depth:.4g} mm stands at {stop - first} {sheet.unit}s on end; by the gauge's own habit "
-                    f"{max(expected, 1e-9):.1g} such runs would be expected in the record."
+                    evidence=f"{depth} stands at {stop - first} {sheet.unit}s on end, {sheet.words(first, stop)}; by the "
+                    f"gauge's own habit {max(expected, 1e-9):.1g} such runs would be expected in the record."
                     + (f" Neighbours over the same day or days: {beside}." if beside else ""),
                     action="Reject the run: a stuck float or register, or one value copied down.",
                     others=view.ids(view.neighbours[g][:4]),
@@ -65,7 +76,7 @@ def stuck_values(view: Screened) -> Iterator[Finding]:
                         start=start,
                         end=end,
                         action="reject",
-                        reason=f"{depth:.4g} mm repeated over {stop - first} {sheet.unit}s",
+                        reason=f"{depth} repeated over {stop - first} {sheet.unit}s",
                         by=SUGGESTED,
                     ),
                 )
@@ -119,18 +130,27 @@ def missing_codes(view: Screened) -> Iterator[Finding]:
 
 @dataclass(frozen=True)
 class _Code:
-    """A depth in mm that is a code, what the code is called, and the gauge's greatest other depth in mm."""
+    """A depth in mm that is a code, what the code is, and the gauge's greatest other depth in mm."""
 
     depth: float
-    name: str
+    what: str
     above: float
 
 
 @cache
 def _known_codes() -> tuple[Floats, list[str]]:
-    """Return the depths in mm that codes are read as, rising, and what they are called; mm goes before other units."""
+    """Return the depths in mm that codes are read as, rising, and what they are; mm goes before other units."""
     units = sorted(UNITS.items(), key=lambda item: item[1] != 1.0)
-    named = [(code * factor, f"{code:g} {unit}") for unit, factor in units for code in (*CODES, *LIMITS)]
+    kinds = (
+        (CODES, "a usual code for a missing value"),
+        (LIMITS, "the full scale of a logger's register, which it writes when it fails"),
+    )
+    named = [
+        (code * factor, f"{code:.6g} {unit} is {what}")
+        for unit, factor in units
+        for codes, what in kinds
+        for code in codes
+    ]
     codes, first = np.unique(np.round([depth for depth, _ in named], 6), return_index=True)
     return codes, [named[k][1] for k in first.tolist()]
 
@@ -147,6 +167,7 @@ def _codes(view: Screened, sheet: Sheet, column: int, code: _Code) -> Iterator[F
     gauge = view.network.ids[g]
     known = np.flatnonzero(np.isfinite(depths))
     count = int((depths == code.depth).sum())
+    depth = exact_text(code.depth, view.depth_unit)
     for a, b in runs_of(depths[known] == code.depth):
         start, end = sheet.starts[known[a]], sheet.ends[known[b - 1]]
         yield Finding(
@@ -155,15 +176,15 @@ def _codes(view: Screened, sheet: Sheet, column: int, code: _Code) -> Iterator[F
             start=start,
             end=end,
             severity="erroneous",
-            evidence=f"{code.depth:.7g} mm stands at {count} {sheet.unit}s, {b - a} of them here; the gauge's greatest "
-            f"other depth is {code.above:.1f} mm, and {code.name} is a usual code for a missing value.",
+            evidence=f"{depth} on {sheet.words(known[a], known[b - 1] + 1)}, and on {count} {sheet.unit}s of the record; "
+            f"the gauge's greatest other depth is {view.depth(code.above)}, and {code.what}.",
             action="Declare the code under missing, as it stands in the file, or reject the values.",
             edit=Edit(
                 gauge=gauge,
                 start=start,
                 end=end,
                 action="reject",
-                reason=f"{code.name} is a code for a missing value",
+                reason=code.what,
                 by=SUGGESTED,
             ),
         )

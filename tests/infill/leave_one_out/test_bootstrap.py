@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from basinrain.infill.leave_one_out.bootstrap import RESAMPLES, differences_to_best
+from basinrain.infill.leave_one_out.bootstrap import RESAMPLES, differences_to_best, what_is_drawn
 
 
 def test_the_interval_is_that_of_a_plain_loop() -> None:
@@ -59,9 +59,43 @@ def test_of_two_equally_good_the_first_is_the_best() -> None:
     assert [difference.distinguishable for difference in found] == [True, False, False]
 
 
-def test_too_few_weeks() -> None:
-    """With four weeks there is no interval, and nothing is distinguishable."""
-    found = differences_to_best(("a", "b"), np.array([[1.0] * 8, [9.0] * 8]), np.ones(8), np.arange(8) // 2, seed=1)
+def test_nothing_drawn() -> None:
+    """There is no interval, and nothing is distinguishable."""
+    found = differences_to_best(("a", "b"), np.array([[1.0] * 4, [9.0] * 4]), np.ones(4), None, seed=1)
     assert found[1].difference == 2
     assert np.isnan([found[1].low, found[1].high]).all()
     assert not found[1].distinguishable
+
+
+@pytest.mark.parametrize(
+    ("weeks", "days", "gauges", "expected"),
+    [
+        (10, 10, 1, "week"),
+        (9, 63, 9, "time"),
+        (1, 5, 1, "time"),
+        (4, 4, 2, "case"),
+        (1, 1, 5, "case"),
+        (2, 2, 2, ""),
+        (1, 1, 4, ""),
+    ],
+)
+def test_the_largest_parts_of_which_there_are_enough_are_drawn(
+    weeks: int, days: int, gauges: int, expected: str
+) -> None:
+    """Ten weeks, else five times, else five cases."""
+    week, count = np.arange(days) % weeks, np.full(days, float(gauges))
+    assert what_is_drawn(week, count) == expected
+    assert what_is_drawn(None, count) == ("time" if expected == "week" else expected)
+
+
+def test_days_of_a_week_drawn_one_by_one_give_a_narrower_interval() -> None:
+    """Seven equal days a week are one piece of evidence, not seven: by weeks the interval is about √7 times as wide."""
+    rng = np.random.default_rng(4)
+    squared = np.repeat(rng.gamma(1.0, 5.0, (2, 40)), 7, axis=1)
+    widths = []
+    for group in (np.arange(280) // 7, np.arange(280)):
+        worse = max(
+            differences_to_best(("a", "b"), squared, np.ones(280), group, seed=1), key=lambda found: found.difference
+        )
+        widths.append(worse.high - worse.low)
+    assert widths[0] / widths[1] == pytest.approx(np.sqrt(7), rel=0.15)

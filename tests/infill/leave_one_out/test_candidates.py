@@ -17,7 +17,7 @@ def test_every_method_from_simple_to_complex() -> None:
         "four-quadrant",
         "normal-ratio",
         "ten-percent-rule",
-        "inverse-distance-ratios",
+        "inverse-distance-ratios (power 2)",
         "correlation-weighting",
         "regression",
         "ratio-regression",
@@ -33,7 +33,7 @@ def test_the_jobs_numbers_go_to_those_who_take_them() -> None:
     assert [label for label in by_label if label.startswith("inverse-distance (")] == [
         f"inverse-distance (power {power})" for power in ("1", "1.5", "2")
     ]
-    assert by_label["inverse-distance-ratios"].power == 1.5
+    assert by_label["inverse-distance-ratios (power 1.5)"].power == 1.5
     assert by_label["inverse-distance (power 1.5)"] == job
     assert all(o.radius == 9e3 and o.elevation_limit == 400 for o in by_label.values())
     assert by_label["normal-ratio"].nearest == 6

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 from leave_one_out_data import daily_record, every_candidate, plain_estimates, small_depths, small_network
 
-from basinrain.errors import DataError
+from basinrain.errors import DataError, JobError
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import InfillOptions
 from basinrain.infill.days import day_totals
@@ -18,6 +18,7 @@ from basinrain.infill.relations import relations_of
 from basinrain.rainfall import RainRecord, Status
 
 ANY_DONOR = InfillOptions(min_donors=1)
+RATIOS = "inverse-distance-ratios (power 2)"
 LABELS = tuple(candidate.label for candidate in every_candidate(min_donors=1))
 
 
@@ -151,12 +152,12 @@ def test_hours_are_scored_beside_their_days() -> None:
 def test_without_normals_their_methods_are_skipped(record: RainRecord, network: GaugeNetwork) -> None:
     """With the reason in words; and with a normal of 0 the gauge is named."""
     bare = compare_infill(record, replace(network, normals=None), options=ANY_DONOR)
-    assert set(bare.skipped) == {"normal-ratio", "ten-percent-rule", "inverse-distance-ratios", "ratio-regression"}
+    assert set(bare.skipped) == {"normal-ratio", "ten-percent-rule", RATIOS, "ratio-regression"}
     assert set(bare.skipped.values()) == {"it needs normals, and the gauges have none"}
     normals = np.array(network.normals)
     normals[2] = 0.0
     zero = compare_infill(record, replace(network, normals=normals), options=ANY_DONOR)
-    assert set(zero.skipped) >= {"normal-ratio", "inverse-distance-ratios"}
+    assert set(zero.skipped) >= {"normal-ratio", RATIOS}
     assert zero.skipped["normal-ratio"].startswith(f"gauge {network.ids[2]}: found a normal of 0 mm for the year")
 
 
@@ -208,7 +209,7 @@ def test_progress_names_every_method(record: RainRecord, network: GaugeNetwork) 
 
 
 def test_storm_totals_without_times(network: GaugeNetwork) -> None:
-    """They are cases each by itself."""
+    """They are cases each by itself, and are drawn each by itself."""
     undated = np.full(60, "NaT", dtype="datetime64[s]")
     depth = small_depths(60, 6, missing=0.1)
     plain = daily_record(network, depth)
@@ -216,13 +217,18 @@ def test_storm_totals_without_times(network: GaugeNetwork) -> None:
     found = compare_infill(record, network, options=ANY_DONOR)
     assert found.scale == "step"
     assert np.isnat(found.ends).all()
+    assert found.drawn == "time"
     assert not np.isnan(found.differences[0].low)
+    assert "storm totals with a mean above 0" in str(found.notes[1])
+    assert "drawing whole storm totals, all gauges of each together, anew 1,000 times" in str(found.notes[2])
 
 
 def test_one_gauge_only() -> None:
     """Nothing can be estimated from others."""
     network = small_network(1)
-    with pytest.raises(DataError, match="leave-one-out comparison: found 1 gauge; expected two gauges or more"):
+    with pytest.raises(
+        DataError, match=r"found 1 gauge; expected two gauges or more.*gauges, or name the infill method$"
+    ):
         compare_infill(daily_record(network, np.ones((9, 1))), network, options=ANY_DONOR)
 
 
@@ -235,8 +241,8 @@ def test_other_columns(record: RainRecord, network: GaugeNetwork) -> None:
 def test_no_case(network: GaugeNetwork) -> None:
     """A dry record; and one in which no two gauges ever report together."""
     dry = daily_record(network, np.zeros((40, 6)))
-    with pytest.raises(DataError, match="found no wet day; expected wet days on which several gauges have values"):
-        compare_infill(dry, network, options=ANY_DONOR)
+    with pytest.raises(DataError, match=r"found no wet day; expected wet days .*; give a longer record, or ask Pim$"):
+        compare_infill(dry, network, options=ANY_DONOR, instead="ask Pim")
     lonely = np.where(np.arange(60)[:, None] % 6 == np.arange(6), 5.0, np.nan)
     with pytest.raises(DataError, match="found no gauge that could be estimated from others on any of 60 wet days"):
         compare_infill(daily_record(network, lonely), network, options=ANY_DONOR)
@@ -258,6 +264,87 @@ def test_an_elevation_limit_needs_elevations(record: RainRecord, network: GaugeN
         compare_infill(record, bare, options=InfillOptions(elevation_limit=300))
     limited = compare_infill(record, network, options=InfillOptions(elevation_limit=600))
     assert limited.chosen_options.elevation_limit == 600
+
+
+def two_lines(n_days: int) -> tuple[RainRecord, GaugeNetwork]:
+    """B is the mean of A and C, which stand 1 and 2 km away; A has 10 mm more than C every day."""
+    network = GaugeNetwork(ids=("A", "B", "C"), x=np.array([0.0, 1e3, 3e3]), y=np.zeros(3), crs="local")
+    rain = 5.0 + np.arange(n_days) % 3
+    return daily_record(network, np.column_stack([rain + 10, rain + 5, rain])), network
+
+
+def candidate(method: str) -> Candidate:
+    return Candidate(label=method, options=InfillOptions(method=method))
+
+
+PAIR = [candidate("nearest-gauge"), candidate("station-average")]
+
+
+def test_single_cases_are_drawn_where_times_are_few() -> None:
+    """Two days of three gauges are six cases: errors of 5, 5, 5 mm against 7.5, 0, 7.5 mm, drawn one by one."""
+    record, network = two_lines(2)
+    found = compare_infill(record, network, options=InfillOptions(), candidates=PAIR)
+    assert found.drawn == "case"
+    assert (found.best, found.chosen) == ("nearest-gauge", "nearest-gauge")
+    worse = found.differences[1]
+    assert worse.difference == pytest.approx(7.5 * np.sqrt(2 / 3) - 5)
+    # The second and the fifth case are B's, which the mean estimates without error.
+    share = np.random.default_rng(1).multinomial(6, [1 / 6] * 6, 1000)[:, [1, 4]].sum(axis=1) / 6
+    expected = np.percentile(7.5 * np.sqrt(1 - share) - 5, [2.5, 97.5])
+    np.testing.assert_allclose((worse.low, worse.high), expected, atol=1e-12)
+    assert {note.code for note in found.notes if note.level == "warning"} == {"few-cases", "intervals-too-narrow"}
+
+
+def test_a_simple_method_that_is_far_worse_is_not_taken_for_want_of_weeks() -> None:
+    """Three days, eight gauges on a line, in turn 5 mm above and below: the nearest is 10 mm off, the mean 5 + 5/7."""
+    network = GaugeNetwork(ids=tuple("ABCDEFGH"), x=1e3 * np.arange(8.0), y=np.zeros(8), crs="local")
+    record = daily_record(network, np.array([[20.0], [30.0], [25.0]]) + 5 * (-1.0) ** np.arange(8))
+    mean = Candidate(label="mean", options=InfillOptions(method="station-average", nearest="all"))
+    found = compare_infill(record, network, options=InfillOptions(), candidates=[PAIR[0], mean])
+    assert found.score("nearest-gauge").rmse == pytest.approx(10)
+    assert found.score("mean").rmse == pytest.approx(5 + 5 / 7)
+    assert (found.drawn, found.chosen) == ("case", "mean")
+    assert "every simpler method is distinguishably worse (95 % intervals, single cases drawn anew and so too" in str(
+        found.reason
+    )
+
+
+def test_days_are_drawn_where_weeks_are_few() -> None:
+    """63 days are nine weeks, 64 days ten."""
+    nine, ten = (compare_infill(*two_lines(n), options=InfillOptions(), candidates=PAIR) for n in (63, 64))
+    assert (nine.drawn, ten.drawn) == ("time", "week")
+    assert "63 days of fewer than 10 weeks" in str([note for note in nine.notes if note.code == "intervals-too-narrow"])
+    assert [note.level for note in ten.notes if note.code.startswith("interval")] == ["info"]
+
+
+def test_with_fewer_than_five_cases_the_least_error_decides() -> None:
+    """One day, three cases: the nearest gauge is simpler, but the mean is better, and nothing can be told of either."""
+    network = GaugeNetwork(ids=("A", "B", "C"), x=np.array([0.0, 1e3, 3e3]), y=np.zeros(3), crs="local")
+    record = daily_record(network, np.array([[10.0, 20.0, 10.0]]))
+    found = compare_infill(record, network, options=InfillOptions(), candidates=PAIR)
+    # Nearest: 10, -10, 10; mean: 5, -10, 5.
+    assert found.score("nearest-gauge").rmse == pytest.approx(10)
+    assert found.score("station-average").rmse == pytest.approx(np.sqrt(50))
+    assert (found.drawn, found.best, found.chosen) == ("", "station-average", "station-average")
+    assert not any(difference.distinguishable for difference in found.differences)
+    assert np.isnan([difference.low for difference in found.differences]).all()
+    assert found.reason == (
+        "station-average has the least RMSE, 7.07 mm over 3 cases (few); with fewer than 5 cases nothing can be told "
+        "apart, so it is taken for that alone."
+    )
+    assert "no-intervals" in {note.code for note in found.notes}
+
+
+def test_inches_are_in_the_words_only(record: RainRecord, network: GaugeNetwork, comparison: Comparison) -> None:
+    """Scores stay in mm; reason and notes name inches; another unit is refused."""
+    found = compare_infill(record, network, options=ANY_DONOR, depth_unit="in")
+    assert found.scores == comparison.scores
+    rmse = found.score(found.best).rmse
+    assert f"has the least RMSE, {rmse / 25.4:.3f} in over" in found.reason
+    assert "at least 0.039 in (1 mm)" in str(found.notes[1])
+    assert " mm" not in found.reason
+    with pytest.raises(JobError, match="depth unit: found 'inch'"):
+        compare_infill(record, network, options=ANY_DONOR, depth_unit="inch")
 
 
 def test_few_cases_are_said_to_be_few(network: GaugeNetwork) -> None:
