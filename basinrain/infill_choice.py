@@ -20,7 +20,7 @@ from basinrain.jobfile.fields import LEAVE_ONE_OUT
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 
-__all__ = ["InfillChoice", "choose_infill", "compare"]
+__all__ = ["InfillChoice", "choose_infill", "compare", "infill_options"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -111,7 +111,7 @@ def choose_infill(
     InfillChoice
     """
     ratios, notes = _ratios(job, record, network)
-    options = _options(job)
+    options = infill_options(job)
     chosen = None
     if job.infill.method == LEAVE_ONE_OUT:
         if comparison is None:
@@ -139,7 +139,7 @@ def _compared(
     return compare_infill(
         record,
         network,
-        options=_options(job),
+        options=infill_options(job),
         ratios=ratios,
         progress=say,
         depth_unit=job.job.depth_unit,
@@ -147,7 +147,8 @@ def _compared(
     )
 
 
-def _options(job: Job) -> InfillOptions:
+def infill_options(job: Job) -> InfillOptions:
+    """Return what a job says of infilling; the default method stands for the one that a comparison is to find."""
     given = job.infill.model_dump(exclude={"normals"})
     if given["method"] == LEAVE_ONE_OUT:
         given["method"] = InfillOptions().method

@@ -16,9 +16,10 @@ from basinrain import reading
 from basinrain.basins import Basins
 from basinrain.catch import correct_catch
 from basinrain.colocated import merge_colocated
-from basinrain.errors import BasinRainError, JobError, Problems, ReadError, nearest_name
+from basinrain.errors import BasinRainError, JobError, Problem, Problems, ReadError, nearest_name
 from basinrain.gauges import GaugeNetwork, refuse_colocated
 from basinrain.ground import Plane
+from basinrain.infill_choice import infill_options
 from basinrain.jobfile import Job
 from basinrain.jobfile.tables import EditTable, RainfallTable, StormTable
 from basinrain.jobfile.times import edit_window_times, rainfall_day_start, storm_window_times
@@ -106,7 +107,7 @@ def read_inputs(job: Job, say: Callable[[str], None]) -> Inputs:
     if record is not raw:
         # Daily depths were spread in the times of recorders, some of which may have been rejected.
         record, spread_notes = spread_totals(replace(record, totals=()), network, record.totals)
-        notes += spread_notes
+        notes = (*(note for note in notes if note.code != "spread-evenly"), *spread_notes)
     # Each gauge has a catch of its own, so it is corrected before gauges at one place are merged.
     record = correct_catch(record, _catch_factors(job, network))
     if job.gauges.colocated == "mean":
@@ -125,6 +126,8 @@ def _read(
     network = attempt(problems, partial(_read_gauges, job))
     records = [attempt(problems, partial(_read_source, job, source)) for source in job.rainfall]
     basins = attempt(problems, partial(_read_basins, job))
+    # An option that the infill method does not take is told with the rest, not after it.
+    attempt(problems, partial(infill_options, job))
     problems.raise_as(ReadError)
     # A reader that gave nothing has left a problem, so from here on everything is there.
     network, (polygons, basin_notes) = cast("GaugeNetwork", network), cast("tuple[Basins, tuple[Note, ...]]", basins)
@@ -192,8 +195,20 @@ def _edits(job: Job, sources: Sequence[RainRecord]) -> tuple[Edit, ...]:
 
 def _edit(job: Job, table: EditTable, number: int, sources: Sequence[RainRecord]) -> Edit:
     zone = next((source.zone for source in sources if not np.isnat(source.ends).any()), "")
-    mine = [job.rainfall[k] for k, source in enumerate(sources) if table.gauge in source.gauges]
-    start, end = edit_window_times(table, number, zone, day_start=rainfall_day_start(mine or job.rainfall))
+    mine = [job.rainfall[k] for k, source in enumerate(sources) if table.gauge in source.gauges] or job.rainfall
+    days = {rainfall_day_start([source]) for source in mine}
+    dated = any(text is not None and len(text) <= len("2031-05-04") for text in (table.start, table.end))
+    if dated and len(days) > 1:
+        raise JobError(
+            Problem(
+                item=f"[[edit]] {number} (gauge {table.gauge})",
+                found="a date, in sources of the gauge whose days begin at different hours",
+                expected="from and to with a time of day",
+                remedy="write 2031-05-04T07:00:00",
+                gauge=table.gauge,
+            )
+        )
+    start, end = edit_window_times(table, number, zone, day_start=next(iter(days)))
     value = table.value
     if table.action == "set" and not isinstance(value, str) and value is not None:
         value *= depth_factor(job.job.depth_unit)

@@ -131,7 +131,12 @@ def completed_status(record: RainRecord) -> pd.DataFrame:
     """Return ``completed_status``: where every value of the completed record comes from, in the same shape."""
     import pandas as pd
 
-    labels = np.array([status.label for status in Status])
-    frame = pd.DataFrame(labels[record.status], columns=list(record.gauges))
+    labels = [status.label for status in Status]
+    # Categories: as text a long record would take many times its size.
+    columns = {
+        gauge: pd.Categorical.from_codes(record.status[:, g], categories=labels)
+        for g, gauge in enumerate(record.gauges)
+    }
+    frame = pd.DataFrame(columns)
     frame.insert(0, "time", [time_text(end, record.zone) for end in record.ends])
     return frame

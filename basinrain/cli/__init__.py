@@ -71,9 +71,11 @@ def main() -> None:
 @_clear_errors
 def storm(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
     """Storm totals per basin from JOB, a TOML file: tables, weights compared, report."""
-    from basinrain.cli.storm import storm_command
+    from basinrain.cli.running import run_command
+    from basinrain.cli.storm import show
+    from basinrain.job import run_storm
 
-    storm_command(job, **options)
+    run_command("storm", run_storm, show, job, **options)
 
 
 @main.command()
@@ -81,9 +83,11 @@ def storm(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes wha
 @_clear_errors
 def screen(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
     """Whether the record of JOB is fit to use: findings, each with its evidence; nothing is changed."""
-    from basinrain.cli.screen import screen_command
+    from basinrain.cli.running import run_command
+    from basinrain.cli.screen import show
+    from basinrain.job import run_screen
 
-    screen_command(job, **options)
+    run_command("screen", run_screen, show, job, **options)
 
 
 @main.command()
@@ -91,9 +95,11 @@ def screen(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes wh
 @_clear_errors
 def infill(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
     """Which infill method works on the network of JOB, every gauge left out in turn; and the completed record."""
-    from basinrain.cli.infill import infill_command
+    from basinrain.cli.infill import show
+    from basinrain.cli.running import run_command
+    from basinrain.job import run_infill
 
-    infill_command(job, **options)
+    run_command("infill", run_infill, show, job, **options)
 
 
 @main.command()

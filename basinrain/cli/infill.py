@@ -2,37 +2,19 @@
 
 from __future__ import annotations
 
-from pathlib import Path
-
 from rich.table import Table
 
-from basinrain.cli.running import console, run_command, show_warnings
+from basinrain.cli.running import console, show_warnings
 from basinrain.infill import InfillOptions
-from basinrain.job import run_infill
 from basinrain.report.words import DASH, number_text
 from basinrain.results import InfillRun
 from basinrain.units import depth_factor
 
-__all__ = ["infill_command"]
+__all__ = ["show"]
 
 
-def infill_command(
-    job_file: Path, *, output: Path | None, settings: tuple[str, ...], as_json: bool, quiet: bool
-) -> None:
-    """Compare infill methods and complete the record; nothing is written unless everything worked."""
-    run_command(
-        "infill",
-        lambda job, progress: run_infill(job, progress=progress),
-        _show,
-        job_file,
-        output=output,
-        settings=settings,
-        as_json=as_json,
-        quiet=quiet,
-    )
-
-
-def _show(run: InfillRun) -> None:
+def show(run: InfillRun) -> None:
+    """Print the scores, the choice, and how much of the record was infilled."""
     page = console()
     comparison = run.comparison
     mm, digits = depth_factor(run.depth_unit), 3 if run.depth_unit == "in" else 2

@@ -10,7 +10,7 @@ from typing import TypeVar
 import click
 from rich.console import Console
 
-from basinrain.jobfile import Job, read_job
+from basinrain.jobfile import read_job
 from basinrain.notes import Note
 from basinrain.results import Run
 from basinrain.writing import check_folder, record_text, write_run
@@ -26,7 +26,7 @@ _R = TypeVar("_R", bound=Run)
 
 def run_command(
     command: str,
-    compute: Callable[[Job, Callable[[str], None] | None], _R],
+    compute: Callable[..., _R],
     show: Callable[[_R], None],
     job_file: Path,
     *,
@@ -42,7 +42,7 @@ def run_command(
     command
         Its name, and that of the folder of its results.
     compute
-        Makes the run of a job; is handed what shows progress.
+        Makes the run of a job, :func:`basinrain.run_storm` or one like it.
     show
         Prints the run's main figures.
     job_file, output, settings, as_json, quiet
@@ -54,9 +54,9 @@ def run_command(
     progress = Console(stderr=True)
     if progress.is_terminal and not quiet:
         with progress.status("reading") as status:
-            run = compute(job, status.update)
+            run = compute(job, progress=status.update)
     else:
-        run = compute(job, None)
+        run = compute(job)
     write_run(run, folder)
     if as_json:
         files = sorted(path.name for path in folder.iterdir() if path.name != RECORD)

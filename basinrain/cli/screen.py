@@ -3,38 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from pathlib import Path
 
 from rich.console import Console
 
-from basinrain.cli.running import console, run_command, show_warnings
-from basinrain.job import run_screen
+from basinrain.cli.running import console, show_warnings
 from basinrain.results import ScreenRun
 from basinrain.screening import SEVERITIES, Finding
 
-__all__ = ["screen_command"]
+__all__ = ["show"]
 
 _SHOWN = 12
 """Findings of one check that are printed; all of them stand in the files."""
 
 
-def screen_command(
-    job_file: Path, *, output: Path | None, settings: tuple[str, ...], as_json: bool, quiet: bool
-) -> None:
-    """Screen the record of a job; nothing is written unless everything worked."""
-    run_command(
-        "screen",
-        lambda job, progress: run_screen(job, progress=progress),
-        _show,
-        job_file,
-        output=output,
-        settings=settings,
-        as_json=as_json,
-        quiet=quiet,
-    )
-
-
-def _show(run: ScreenRun) -> None:
+def show(run: ScreenRun) -> None:
+    """Print what is not settled, by severity and check, and what could not be checked."""
     page = console()
     findings = run.screening.findings
     page.print(_counts(findings), soft_wrap=True)

@@ -15,6 +15,7 @@ from basinrain.writing.folder import whole_folder
 __all__ = ["start_command"]
 
 _SAMPLE = ("README.md", "basins.geojson", "gauges.csv", "job.toml", "rain_daily.csv", "rain_hourly.csv")
+_FOLDERS = ("handbook", "record")
 
 
 def start_command(folder: Path) -> None:
@@ -38,6 +39,12 @@ def start_command(folder: Path) -> None:
     with as_file(_sample()) as sample, whole_folder(folder) as built:
         for name in _SAMPLE:
             shutil.copyfile(sample / name, built / name)
+        for name in _FOLDERS:
+            (built / name).mkdir()
+            for path in sorted((sample / name).iterdir()):
+                # What an earlier run left beside a job of the source tree is no sample.
+                if path.is_file():
+                    shutil.copyfile(path, built / name / path.name)
     click.echo(f"Made {folder}. Next: basinrain storm {folder / 'job.toml'}")
 
 

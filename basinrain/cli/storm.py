@@ -2,39 +2,21 @@
 
 from __future__ import annotations
 
-from pathlib import Path
-
 import numpy as np
 from rich.table import Table
 
 from basinrain.basin_depths import spread_across_methods
-from basinrain.cli.running import console, run_command, show_warnings
-from basinrain.job import run_storm
+from basinrain.cli.running import console, show_warnings
 from basinrain.report.words import depth_decimals, number_text
 from basinrain.results import StormRun
 from basinrain.tables import share_infilled
 from basinrain.units import area_factor, depth_factor
 
-__all__ = ["storm_command"]
+__all__ = ["show"]
 
 
-def storm_command(
-    job_file: Path, *, output: Path | None, settings: tuple[str, ...], as_json: bool, quiet: bool
-) -> None:
-    """Run the storms of a job; nothing is written unless everything worked."""
-    run_command(
-        "storm",
-        lambda job, progress: run_storm(job, progress=progress),
-        _show,
-        job_file,
-        output=output,
-        settings=settings,
-        as_json=as_json,
-        quiet=quiet,
-    )
-
-
-def _show(run: StormRun) -> None:
+def show(run: StormRun) -> None:
+    """Print the basin means of every storm, the choice of infill and the warnings."""
     page = console()
     digits = depth_decimals(run.depth_unit)
     for result in run.storms:

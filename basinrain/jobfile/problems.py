@@ -87,9 +87,9 @@ def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
     if kind in {"file_or_files", "no_interval"}:
         found = "both or neither" if kind == "file_or_files" else "no interval"
     expected, remedy = _MESSAGES.get(kind, (details["msg"].lower(), "correct the value"))
-    if kind in {"greater_than", "greater_than_equal"}:
-        bound = context.get("gt", context.get("ge"))
-        expected = f"a number {'above' if 'gt' in context else 'of at least'} {bound:g}"
+    bounds = {"gt": "above", "ge": "of at least", "lt": "below", "le": "of at most"}
+    for name in bounds.keys() & context.keys():
+        expected = f"a number {bounds[name]} {context[name]:g}"
     if "expected" in context:
         expected, remedy = str(context["expected"]), str(context.get("remedy", remedy))
     return Problem(item=item, found=found, expected=expected, remedy=remedy, file=file, line=line)
@@ -114,8 +114,8 @@ def _item(loc: Sequence[str | int]) -> str:
         head = f"[[{table}]]{number}"
     else:
         head = f"[{table}]"
-    words = [f"no. {part + 1}" if isinstance(part, int) else part for part in rest]
-    return " ".join([head, ".".join(words)]).strip()
+    words = "".join(f" no. {part + 1}" if isinstance(part, int) else f".{part}" for part in rest)
+    return f"{head} {words.removeprefix('.').strip()}".strip()
 
 
 def _keys_at(loc: Sequence[str | int]) -> list[str]:

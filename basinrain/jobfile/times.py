@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from datetime import datetime, timedelta
 from typing import Final
@@ -39,9 +40,9 @@ def rainfall_day_start(sources: Sequence[RainfallTable]) -> np.timedelta64:
     >>> rainfall_day_start([daily, hourly]).astype(int)
     np.int64(0)
     """
-    readings = {(source.read_hour, source.date_means) for source in sources if source.interval == "1d"}
+    readings = {(source.read_hour, source.date_means) for source in sources if _is_daily(source)}
     midnight = np.timedelta64(0, "s")
-    if len(readings) != 1 or any(source.interval != "1d" for source in sources):
+    if len(readings) != 1 or not all(_is_daily(source) for source in sources):
         return midnight
     ((hour, means),) = readings
     if hour is None or means not in {"ends", "starts"}:
@@ -49,6 +50,11 @@ def rainfall_day_start(sources: Sequence[RainfallTable]) -> np.timedelta64:
     hours, _, minutes = str(hour).partition(":")
     at = np.timedelta64(3600 * int(hours) + 60 * int(minutes or 0), "s")
     return at - np.timedelta64(86400, "s") if means == "ends" else at
+
+
+def _is_daily(source: RainfallTable) -> bool:
+    match = re.fullmatch(r"(\d+)\s*(min|h|d)", (source.interval or "").strip())
+    return match is not None and int(match[1]) * {"min": 1, "h": 60, "d": 1440}[match[2]] == 1440
 
 
 def storm_window_times(table: StormTable, zone: str, *, day_start: np.timedelta64) -> Window:

@@ -44,8 +44,8 @@ def without_explained(findings: Sequence[Finding], accept: Sequence[str] = ()) -
     Returns
     -------
     tuple of Finding
-        In the same order. A finding goes where its stretch lies in that of one of the same gauge that explains its check
-        and weighs as much or more.
+        In the same order. A finding goes where its stretch lies in that of one of the same gauge that explains its
+        check and weighs as much or more.
 
     Examples
     --------
@@ -58,8 +58,7 @@ def without_explained(findings: Sequence[Finding], accept: Sequence[str] = ()) -
     ...     check="zero-among-wet", gauge="A", start=day[2], end=day[3], evidence="No rain.", action="Reject it."
     ... )
     >>> [finding.evidence for finding in without_explained([zero, late])]
-    ['A day late. It explains what would else be listed of single days in it, and is if this is accepted: 1 \
-zero-among-wet.']
+    ['A day late. 1 finding on single days follows from it (1 zero-among-wet), listed only where this is accepted.']
     >>> len(without_explained([zero, late], accept=["shifted-record A"]))
     2
     """
@@ -93,12 +92,15 @@ def _explains(main: Finding, finding: Finding) -> bool:
     return bool(finding.check in _EXPLAINS.get(main.check, ()) and weighs and within)
 
 
+def _follow(n: int) -> str:
+    return f"{n} findings on single days follow from it" if n > 1 else "1 finding on single days follows from it"
+
+
 def _telling(finding: Finding, explained: Counter[str] | None) -> Finding:
     if not explained:
         return finding
     listed = ", ".join(f"{count} {check}" for check, count in sorted(explained.items()))
     return replace(
         finding,
-        evidence=f"{finding.evidence} It explains what would else be listed of single days in it, and is if this is "
-        f"accepted: {listed}.",
+        evidence=f"{finding.evidence} {_follow(explained.total())} ({listed}), listed only where this is accepted.",
     )

@@ -36,8 +36,8 @@ def screen(
         What the user says about region and gauges.
     reject, accept
         What the user says about findings, as for :func:`basinrain.screening.settle_findings`. The checks see the record
-        as it is; consistency is that of the record without what is rejected. What a finding explains is listed beside it
-        only where that is accepted.
+        as it is; consistency is that of the record without what is rejected. What a finding explains is listed beside
+        it only where that is accepted.
 
     Returns
     -------

@@ -84,7 +84,7 @@ def stamp_text(start: np.datetime64, end: np.datetime64) -> str:
 
 
 def _is_date(start: np.datetime64, end: np.datetime64) -> bool:
-    return start == start.astype("datetime64[D]") and end - start == np.timedelta64(_DAY, "s")
+    return bool(start == start.astype("datetime64[D]") and end - start == np.timedelta64(_DAY, "s"))
 
 
 def steps_text(starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> str:

@@ -11,7 +11,7 @@ from basinrain.results import CAUTION, InfillRun, Run, ScreenRun, StormRun
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["record_text", "run_record", "run_tables", "wide_tables"]
+__all__ = ["long_tables", "record_text", "run_record", "run_tables"]
 
 
 def run_tables(run: Run) -> dict[str, pd.DataFrame]:
@@ -43,17 +43,20 @@ def run_tables(run: Run) -> dict[str, pd.DataFrame]:
         own = {
             "infill_scores": run.infill_scores,
             "infill_differences": run.infill_differences,
-            "infill_cases": run.infill_cases,
             "infilled": run.infilled,
         }
     return {**own, "findings": run.findings, "edits": run.edit_table}
 
 
-def wide_tables(run: Run) -> dict[str, pd.DataFrame]:
-    """Return tables with a column for every gauge, which go to files only: as JSON they would be many times as long."""
+def long_tables(run: Run) -> dict[str, pd.DataFrame]:
+    """Return the tables that go to files only: of a long record they would make the JSON too large to read."""
     if not isinstance(run, InfillRun):
         return {}
-    return {f"completed_{run.depth_unit}": run.completed_depths, "completed_status": run.completed_status}
+    return {
+        "infill_cases": run.infill_cases,
+        f"completed_{run.depth_unit}": run.completed_depths,
+        "completed_status": run.completed_status,
+    }
 
 
 def run_record(run: Run, files: list[str]) -> dict[str, Any]:

@@ -10,7 +10,7 @@ from basinrain.ground import LOCAL
 from basinrain.report import render_comparison, render_report, render_screening
 from basinrain.results import InfillRun, Run, ScreenRun, StormRun
 from basinrain.writing.folder import RECORD, whole_folder
-from basinrain.writing.record import record_text, run_tables, wide_tables
+from basinrain.writing.record import long_tables, record_text, run_tables
 
 __all__ = ["write_run"]
 
@@ -37,7 +37,7 @@ def write_run(run: Run, folder: str | Path) -> Path:
     """
     place = Path(folder)
     with whole_folder(place) as built:
-        for name, frame in {**run_tables(run), **wide_tables(run)}.items():
+        for name, frame in {**run_tables(run), **long_tables(run)}.items():
             frame.to_csv(built / f"{name}.csv", index=False, encoding="utf-8", lineterminator="\n")
         if isinstance(run, StormRun):
             (built / "thiessen.geojson").write_text(thiessen_text(run), encoding="utf-8")

@@ -240,14 +240,14 @@ def test_a_setting_that_cannot_be_placed_is_wrong_usage(tmp_path: Path) -> None:
 
 def test_interrupted_run_says_so(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """Ctrl-C leaves with 130, one line, and nothing written."""
-    from basinrain.cli import storm
+    from basinrain import job as running
 
     def interrupt(*_: object, **__: object) -> None:
         raise KeyboardInterrupt
 
     job = write_tiny(tmp_path)
     before = fingerprints(tmp_path)
-    monkeypatch.setattr(storm, "run_storm", interrupt)
+    monkeypatch.setattr(running, "run_storm", interrupt)
     result = CliRunner().invoke(main, ["storm", str(job)])
     assert (result.exit_code, result.stdout, result.stderr) == (130, "", "Stopped; nothing was written.\n")
     assert fingerprints(tmp_path) == before

@@ -59,8 +59,8 @@ def test_a_finding_is_printed_with_its_evidence_and_the_words_that_name_it(tmp_p
     assert (first["gauge"], first["severity"], first["state"]) == ("B", "erroneous", "open")
     assert first["key"] == "greatest-depths B 2031-05-04T06:00"
     assert "650" in first["evidence"]
-    for text in (first["evidence"], f'To name it in the job: "{first["key"]}"', "erroneous (open): greatest-depths"):
-        assert text in done.stdout
+    printed = f'\nerroneous: greatest-depths\n  "{first["key"]}"\n    {first["evidence"]} {first["action"]}\n'
+    assert printed in done.stdout
     assert done.stdout.endswith(
         f"Written to {tmp_path / 'output' / 'screen'}: report.html, record.json and the CSV files\n"
     )
@@ -150,6 +150,45 @@ def test_edits_that_match_nothing_or_overlap_are_refused_together(tmp_path: Path
     assert any("(gauge Q)" in line for line in lines)
     assert any("(gauge A)" in line for line in lines)
     assert any("[[edit]] 1" in line and "2" in line for line in lines)
+
+
+def test_a_bare_date_is_the_day_of_the_gauges_own_source(tmp_path: Path) -> None:
+    """Read at 07:00 for the day before: three dates are three readings, however the step is written."""
+    rain = "date,A,B,C\n" + "".join(f"2031-05-{day:02d},{day},{day},{day}\n" for day in range(1, 9))
+    edit = EDIT.replace("2031-05-04T00:00:00", "2031-05-03").replace("2031-05-04T04:00:00", "2031-05-05")
+    changed = {}
+    for step in ("1d", "24h"):
+        daily = f'interval = "{step}"\nread_hour = "07:00"\ndate_means = "ends"'
+        run = run_screen(write_tiny(tmp_path / step, rain=rain, job=JOB.replace('interval = "1h"', daily) + edit))
+        changed[step] = run.edit_table[["steps_changed", "depth_before"]].values.tolist()
+        assert run.record.depth[:, 1].tolist() == pytest.approx([1, 2, 0.3, 0.4, 0.5, 6, 7, 8])
+    assert changed == {"1d": [[3, 12.0]], "24h": [[3, 12.0]]}
+
+
+def test_a_bare_date_is_refused_where_a_gauge_has_days_of_two_kinds(tmp_path: Path) -> None:
+    """The gauge's hours begin at midnight and its daily readings at 07:00: one date cannot mean both."""
+    job = (
+        JOB
+        + """
+[[rainfall]]
+file = "daily.csv"
+unit = "mm"
+interval = "1d"
+read_hour = "07:00"
+date_means = "starts"
+"""
+    )
+    edit = EDIT.replace("2031-05-04T00:00:00", "2031-05-06").replace("2031-05-04T04:00:00", "2031-05-06")
+    daily = "date,B\n2031-05-06,4\n2031-05-07,5\n"
+    with pytest.raises(JobError, match=r"\[\[edit\]\] 1 \(gauge B\): found a date, in sources of the gauge whose days"):
+        run_screen(write_tiny(tmp_path, gauges=FOUR, rain=hourly(), job=job + edit, daily__csv=daily))
+
+
+def test_months_beyond_the_year_are_refused_in_words(tmp_path: Path) -> None:
+    """A thirteenth month is no month; the line says which entry and what may stand there."""
+    job = write_tiny(tmp_path, job=JOB + '\n[screening]\nunheated = ["A"]\ncold_months = [1, 13]\n')
+    with pytest.raises(JobError, match=r"\[screening\] cold_months no\. 2: found 13; expected a number of at most 12"):
+        run_screen(job)
 
 
 def test_an_envelope_is_an_input_like_any_other(tmp_path: Path) -> None:

@@ -165,10 +165,13 @@ def test_start_makes_a_job_that_runs(tmp_path: Path) -> None:
         "README.md",
         "basins.geojson",
         "gauges.csv",
+        "handbook",
         "job.toml",
         "rain_daily.csv",
         "rain_hourly.csv",
+        "record",
     ]
+    assert basinrain("screen", folder / "record" / "job.toml", "--quiet").returncode == 0
     ran = basinrain("storm", folder / "job.toml")
     assert (ran.returncode, ran.stderr) == (0, "")
     assert ran.stdout.startswith("October front: basin means in mm\n")

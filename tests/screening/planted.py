@@ -299,6 +299,7 @@ KINDS = (
     Kind("missing code", "missing-code", _code),
     Kind("inches as mm throughout", "unit-mixup", _unit(1 / 25.4, (999, 999))),
     Kind("tenths as mm for 3 to 12 months", "unit-mixup", _unit(10.0, (3, 12))),
+    Kind("tenths as mm for 1 or 2 months", "unit-mixup", _unit(10.0, (1, 2))),
     Kind("2.54 times for 6 to 18 months", "unit-mixup", _unit(2.54, (6, 18)), ("day",)),
     Kind("a day late throughout", "shifted-record", _shift((-1, 1), 9999), ("day",)),
     Kind("a day late for a year", "shifted-record", _shift((-1, 1), 365), ("day",)),

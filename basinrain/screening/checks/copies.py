@@ -9,6 +9,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.screening.checks.belonging import TELLING, better_fit
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import Floats, Ints, Screened, Sheet
@@ -156,8 +157,8 @@ def _repeat(view: Screened, sheet: Sheet, g: int, wet: _Wet, copy: tuple[int, in
         start=start,
         end=end,
         severity="erroneous",
-        evidence=f"{n} wet {sheet.unit}s with the dry ones between them, in {sheet.words(wet.at[second], last + 1)}, are, "
-        f"value by value, those of {original}.",
+        evidence=f"{n} wet {sheet.unit}s with the dry ones between them, in {sheet.words(wet.at[second], last + 1)}, "
+        f"are, value by value, those of {original}.",
         action="Find out which of the two stretches is the original, and reject the other.",
         others=view.ids(view.neighbours[g][:4]),
         edit=Edit(
@@ -209,31 +210,54 @@ def _shared(view: Screened, sheet: Sheet, wet: _Wet, pair: tuple[int, int], begi
             stretches.append((first, n))
     if not stretches:
         return
-    a, b = pair
     equal = sum(n for _, n in stretches)
-    whole = equal >= WHOLE * len(wet.at)
-    never = np.datetime64("NaT", "s")
-    for first, n in stretches[:1] if whole else stretches:
-        start = never if whole else sheet.starts[wet.at[first]]
-        end = never if whole else sheet.ends[wet.at[first + n - 1]]
-        yield Finding(
-            check="one-record-two-gauges",
-            gauge=view.network.ids[b],
-            start=start,
-            end=end,
-            severity="erroneous",
-            evidence=f"{equal if whole else n} wet {sheet.unit}s{'' if whole else ' on end'} are, value by value, "
-            f"those of {view.network.ids[a]}, {view.distances[a, b] / 1000:.1f} km away.",
-            action="Find out whose record it is, and exclude or reject the other's: one rain must not count twice.",
-            others=(view.network.ids[a],),
-            edit=None
-            if whole
-            else Edit(
-                gauge=view.network.ids[b],
-                start=start,
-                end=end,
-                action="reject",
-                reason=f"the record of {view.network.ids[a]}",
-                by=SUGGESTED,
-            ),
-        )
+    if equal >= WHOLE * len(wet.at):
+        yield _shared_whole(view, sheet, pair, equal)
+        return
+    for first, n in stretches:
+        yield _shared_stretch(view, sheet, pair, (int(wet.at[first]), int(wet.at[first + n - 1]) + 1), n)
+
+
+def _shared_whole(view: Screened, sheet: Sheet, pair: tuple[int, int], equal: int) -> Finding:
+    a, b = pair
+    return Finding(
+        check="one-record-two-gauges",
+        gauge=view.network.ids[b],
+        severity="erroneous",
+        evidence=f"{equal} wet {sheet.unit}s are, value by value, those of {view.network.ids[a]}, "
+        f"{view.distances[a, b] / 1000:.1f} km away. Whose they are cannot be told.",
+        action="Find out whose record it is, and exclude the other gauge: one rain must not count twice.",
+        others=(view.network.ids[a],),
+    )
+
+
+def _shared_stretch(view: Screened, sheet: Sheet, pair: tuple[int, int], steps: tuple[int, int], n: int) -> Finding:
+    """Return the finding at the gauge whose they are not, by the other gauges; at the later id where these are undecided."""
+    start, end = sheet.starts[steps[0]], sheet.ends[steps[1] - 1]
+    sure = better_fit(view, pair, start, end)
+    right, wrong = pair if sure > -TELLING else pair[::-1]
+    told = abs(sure) >= TELLING
+    owner, gauge = view.network.ids[right], view.network.ids[wrong]
+    odds = f"{np.exp(abs(sure)):.0f}" if abs(sure) < np.log(1000) else "over 1000"
+    whose = (
+        f"By the other gauges they are {owner}'s at odds of {odds} to 1, and not {gauge}'s."
+        if told
+        else f"Whether they are {owner}'s or {gauge}'s the other gauges do not tell."
+    )
+    return Finding(
+        check="one-record-two-gauges",
+        gauge=gauge,
+        start=start,
+        end=end,
+        severity="erroneous",
+        evidence=f"{n} wet {sheet.unit}s on end, in {sheet.words(*steps)}, are, value by value, those of {owner}, "
+        f"{view.distances[pair] / 1000:.1f} km away. {whose}",
+        action=f"Reject them at {gauge}, unless its book says otherwise: one rain must not count twice."
+        if told
+        else f"Find out whose they are, and reject them at the other by an edit, {gauge} or {owner}: one rain must not "
+        "count twice.",
+        others=(owner,),
+        edit=Edit(gauge=gauge, start=start, end=end, action="reject", reason=f"the record of {owner}", by=SUGGESTED)
+        if told
+        else None,
+    )

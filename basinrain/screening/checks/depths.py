@@ -27,8 +27,8 @@ mm in a day. Most regions never see it; where storms do, the user gives the regi
 
 
 DEPTH_LIMITS: Final = (
-    f"The world's greatest known depths over the step and {', '.join(f'{hours:g}' for hours in HOURS)} h; doubtful above "
-    f"the region's limit, or {DOUBTFUL_SHARE:.0%} of the world's where none is given."
+    f"The world's greatest known depths over the step and {', '.join(f'{hours:g}' for hours in HOURS)} h; doubtful "
+    f"above the region's limit, or {DOUBTFUL_SHARE:.0%} of the world's where none is given."
 )
 
 

@@ -75,8 +75,8 @@ def short_records(view: Screened) -> Iterator[Finding]:
         check="short-record",
         gauge="",
         severity="remark",
-        evidence=f"{len(short)} gauge{' has' if len(short) == 1 else 's have'} fewer than the {STANDARD_YEARS} complete "
-        f"years of a standard normal ({100 * COMPLETE:.0f} % of the days of each)"
+        evidence=f"{len(short)} gauge{' has' if len(short) == 1 else 's have'} fewer than the {STANDARD_YEARS} "
+        f"complete years of a standard normal ({100 * COMPLETE:.0f} % of the days of each)"
         + (f", {few} of them fewer than the {LEAST_YEARS} that normals take" if few else "")
         + f": {listed}{more}.",
         action="Say that normals from this record are of a period of its own"

@@ -55,8 +55,8 @@ ZERO_LIMITS: Final = (
     f"{MIDDLE_WET:g} mm and {MISSING_RAIN:g} standard deviations of root depths."
 )
 RUN_LIMITS: Final = (
-    f"{LONG_RUN} or more days on which the neighbours were wet and {LOST:g} mm by their medians, at odds of e^{ODDS:g} to "
-    f"1; erroneous above {4 * LOST:g} mm."
+    f"{LONG_RUN} or more days on which the neighbours were wet and {LOST:g} mm by their medians, at odds of e^{ODDS:g} "
+    f"to 1; erroneous above {4 * LOST:g} mm."
 )
 
 
@@ -82,8 +82,8 @@ def far_from_neighbours(view: Screened) -> Iterator[Finding]:
                 gauge=view.network.ids[g],
                 start=cases.starts[first],
                 end=cases.ends[stop - 1],
-                evidence=f"{view.depth(depth)} in {cases.words(first, stop)}, against a median of {view.depth(middle)} at "
-                f"{int(view.reporting[first, g])} neighbours in this gauge's climate, {away[first:stop, g].max():.1f} "
+                evidence=f"{view.depth(depth)} in {cases.words(first, stop)}, against a median of {view.depth(middle)} "
+                f"at {int(view.reporting[first, g])} neighbours in this gauge's climate, {away[first:stop, g].max():.1f} "
                 f"standard deviations of root depths away. Neighbours as measured: {view.beside(g, first, stop)}.",
                 action="Look at the original: a local storm, a misplaced decimal point, another day's depth.",
                 others=view.ids(view.neighbours[g]),
@@ -110,8 +110,8 @@ def dry_among_wet(view: Screened) -> Iterator[Finding]:
                 gauge=gauge,
                 start=start,
                 end=end,
-                evidence=f"No rain in {cases.words(first, stop)}. All {int(view.reporting[first, g])} neighbours were wet: "
-                f"the driest had {view.depth(view.least_measured[first:stop, g].min())}, and their median is "
+                evidence=f"No rain in {cases.words(first, stop)}. All {int(view.reporting[first, g])} neighbours were "
+                f"wet: the driest had {view.depth(view.least_measured[first:stop, g].min())}, and their median is "
                 f"{view.depth(view.middle[first:stop, g].sum())} in this gauge's climate. Neighbours as measured: "
                 f"{view.beside(g, first, stop)}.",
                 action="Reject the zero unless the observer confirms it: it may stand for a missing reading.",
@@ -153,7 +153,7 @@ def long_dry_runs(view: Screened) -> Iterator[Finding]:
                 start=start,
                 end=end,
                 severity="erroneous" if middle > 4 * LOST else "doubtful",
-                evidence=f"No rain in {cases.words(first, stop)}, while the neighbours' median was {view.depth(middle)}, "
+                evidence=f"No rain in {cases.words(first, stop)}, while the neighbours' median was {view.depth(middle)} "
                 f"on {len(wet)} wet {cases.unit}s. Neighbours as measured: {view.beside(g, first, stop)}.",
                 action="Reject the run: a blocked funnel, a stopped logger, or zeros for missing values.",
                 others=view.ids(near),

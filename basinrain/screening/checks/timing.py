@@ -59,8 +59,8 @@ _LEAST_SCATTER: Final = 0.3
 
 
 SHIFT_LIMITS: Final = (
-    f"Up to {FURTHEST_DAYS} days, or {FURTHEST} h of finer steps; the correlation of root depths {CORRELATED:g} or more "
-    f"and higher by {GAIN:g} over the record, by {GAIN_BLOCK:g} over {BLOCK_DAYS} days; up to {TRAVEL} h are weather."
+    f"Up to {FURTHEST_DAYS} days, or {FURTHEST} h of finer steps; the correlation of root depths {CORRELATED:g} or "
+    f"more and higher by {GAIN:g} over the record, by {GAIN_BLOCK:g} over {BLOCK_DAYS} days; up to {TRAVEL} h are weather."
 )
 
 

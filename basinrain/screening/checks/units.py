@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
 
+from basinrain.screening.checks.unit_days import DAY_SURE, LEAST_DAYS, days_in_unit
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
-from basinrain.screening.screened import Bools, Floats, Ints, Screened
+from basinrain.screening.screened import DAY, Bools, Floats, Ints, Screened
 
 __all__ = ["NAME", "UNIT_LIMITS", "unit_mixups"]
 
@@ -60,8 +61,8 @@ LEAST_NEIGHBOURS: Final = 2
 
 UNIT_LIMITS: Final = (
     f"{', '.join(f'{factor:g}' for factor in FACTORS if factor > 1)} times or one in so many, within a factor of "
-    f"{np.exp(CLOSE):.1f}, throughout or over {LEAST_MONTHS} months ({LEAST_MONTHS_SMALL} for 2.54), at odds of "
-    f"e^{SURE:g} to 1."
+    f"{np.exp(CLOSE):.1f}, throughout, over {LEAST_MONTHS} months ({LEAST_MONTHS_SMALL} for 2.54) at odds of "
+    f"e^{SURE:g} to 1, or over {LEAST_DAYS} wet days at e^{DAY_SURE:g} to 1 (10 and 25.4 times)."
 )
 
 
@@ -119,8 +120,17 @@ def unit_mixups(view: Screened) -> Iterator[Finding]:
         found = _whole(view, g, months)
         if found is not None:
             yield found
-        else:
-            yield from _stretches(view, g, months, calendar)
+            continue
+        free: Bools = np.ones(len(depths), dtype=bool)
+        for stretch in _stretches(view, g, months, calendar):
+            first, stop = view.cases_of(stretch.start, stretch.end)
+            free[first:stop] = False
+            yield stretch
+        if view.cases.seconds > DAY:
+            continue
+        for days in days_in_unit(view, g, [factor for factor in FACTORS if factor >= HARD_PLACES], free):
+            found = _finding(view, g, days.factor, days.ratio, (days.first, days.stop, days.usual))
+            yield replace(found, severity="doubtful")
 
 
 def _calendar(view: Screened) -> _Calendar:
@@ -265,8 +275,8 @@ def _finding(view: Screened, g: int, factor: float, ratio: float, stretch: tuple
         start=start,
         end=end,
         severity="doubtful" if _small(factor) else "erroneous",
-        evidence=f"{where} has {ratio:.3g} times the depth of its neighbours, by the median of them{usual}. That is near "
-        f"{words}, as between {_between(factor)}.",
+        evidence=f"{where} has {ratio:.3g} times the depth of its neighbours, by the median of them{usual}. That is "
+        f"near {words}, as between {_between(factor)}.",
         action=f"Ask for the unit of the file; if it is confirmed, declare it, or multiply by {1 / factor:.4g}.",
         others=view.ids(view.neighbours[g]),
         edit=Edit(
