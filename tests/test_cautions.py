@@ -10,11 +10,13 @@ import shapely
 from basinrain.averaging import averaging_method
 from basinrain.basin_depths import average_storm
 from basinrain.basins import Basins
-from basinrain.cautions import network_cautions, record_cautions, storm_cautions
+from basinrain.cautions import network_cautions, record_cautions, screening_cautions, storm_cautions
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import InfillOptions, complete
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
+from basinrain.screening import Finding, Screening
+from basinrain.storms import Storm
 
 NAN = float("nan")
 
@@ -141,3 +143,30 @@ def test_a_basin_without_a_number_raises_no_false_warning() -> None:
     network = at((12e3, 5e3), (18e3, 5e3))
     assert [n.code for n in storm_notes([[5, 5]], network, ("arithmetic",))] == []
     assert pytest.approx(1.0) == averaging_method("thiessen")(network, square())(np.array([True, True])).weights.sum()
+
+
+def test_open_findings_warn_of_the_storms_that_they_touch() -> None:
+    """What is settled, a remark, or beside the storm is no warning; what touches it by an hour is."""
+    hour = np.datetime64("2031-05-04", "s") + np.arange(30) * np.timedelta64(3600, "s")
+
+    def found(gauge: str, first: int, last: int, **more: str) -> Finding:
+        times = {"start": hour[first], "end": hour[last]} if last else {}
+        return Finding(check="zero-run", gauge=gauge, evidence="No rain.", action="Look.", **times, **more)  # type: ignore[arg-type]
+
+    findings = (
+        found("A", 0, 10),
+        found("B", 9, 11),
+        found("C", 20, 25),
+        found("D", 12, 14, state="accepted"),
+        found("E", 12, 14, severity="remark"),
+        found("F", 0, 0),
+    )
+    storm = Storm("Quill", 10, 20, hour[10], hour[20])
+    notes = list(screening_cautions(Screening(findings=findings), [storm]))
+    assert [(note.code, note.gauge, note.level) for note in notes] == [
+        ("screening", "B", "warning"),
+        ("screening", "F", "warning"),
+        ("screening-elsewhere", "", "info"),
+    ]
+    assert notes[-1].text.startswith("Screening found 2 other doubtful or erroneous stretches")
+    assert list(screening_cautions(Screening(findings=findings[3:5]), [storm])) == []
