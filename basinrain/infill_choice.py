@@ -9,8 +9,9 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.errors import JobError, Problem
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill import Completed, InfillOptions, complete
+from basinrain.infill import METHODS, Completed, InfillOptions, complete
 from basinrain.infill.leave_one_out import Comparison, compare_infill
 from basinrain.infill.normals import suspect_normal_units
 from basinrain.infill.record_normals import NormalRatios, normals_from_record
@@ -33,6 +34,8 @@ class InfillChoice:
         The whole record and its gauges.
     options
         Method and numbers.
+    asked
+        The job's own numbers, from which a comparison may have chosen: what other methods are to be tried with.
     ratios
         Normals from the record, where the job asks for them.
     comparison
@@ -44,6 +47,7 @@ class InfillChoice:
     record: RainRecord
     network: GaugeNetwork
     options: InfillOptions
+    asked: InfillOptions
     ratios: NormalRatios | None
     comparison: Comparison | None
     notes: tuple[Note, ...]
@@ -55,8 +59,9 @@ class InfillChoice:
 
     @property
     def settings(self) -> dict[str, str | float]:
-        """The options in the words of a job, with what the method takes by default."""
+        """The options in the words of a job, with the method's defaults and without what it does not take."""
         options = self.options
+        normals = "given" if self.ratios is None else "record"
         given = {
             "method": options.method,
             "scale": options.scale,
@@ -66,7 +71,7 @@ class InfillChoice:
             "min_donors": options.donors_required,
             "elevation_limit": options.elevation_limit,
             "power": options.exponent,
-            "normals": "given" if self.ratios is None else "record",
+            "normals": normals if options.chosen_method.needs_normals else None,
         }
         return {key: value for key, value in given.items() if value is not None}
 
@@ -109,9 +114,14 @@ def choose_infill(
     Returns
     -------
     InfillChoice
+
+    Raises
+    ------
+    JobError
+        An option is given that the method does not take; all of them together.
     """
+    asked = options = infill_options(job)
     ratios, notes = _ratios(job, record, network)
-    options = infill_options(job)
     chosen = None
     if job.infill.method == LEAVE_ONE_OUT:
         if comparison is None:
@@ -124,7 +134,8 @@ def choose_infill(
         options = replace(options, scale="day")
     if options.chosen_method.needs_normals and ratios is None:
         notes = (*notes, *suspect_normal_units(network))
-    return InfillChoice(record, network, options, ratios, chosen, notes)
+    asked = replace(asked, scale=options.scale)
+    return InfillChoice(record, network, options, asked, ratios, chosen, notes)
 
 
 def _compared(
@@ -148,11 +159,35 @@ def _compared(
 
 
 def infill_options(job: Job) -> InfillOptions:
-    """Return what a job says of infilling; the default method stands for the one that a comparison is to find."""
+    """Return what a job says of infilling; the default method stands for the one that a comparison is to find.
+
+    Raises
+    ------
+    JobError
+        An option is given that the method does not take, or numbers do not fit together; all such problems together.
+    """
     given = job.infill.model_dump(exclude={"normals"})
-    if given["method"] == LEAVE_ONE_OUT:
+    named = given["method"]
+    if named == LEAVE_ONE_OUT:
         given["method"] = InfillOptions().method
-    return InfillOptions(**given)
+    wrong = []
+    if job.infill.normals == "record" and named != LEAVE_ONE_OUT and not METHODS[named].needs_normals:
+        needing = (method.name for method in METHODS.values() if method.needs_normals)
+        wrong.append(
+            Problem(
+                item="[infill] normals",
+                found=f"'record' beside method '{named}'",
+                expected=f"one of the methods that need normals: {', '.join((*needing, LEAVE_ONE_OUT))}",
+                remedy="remove normals, or choose one of these",
+            )
+        )
+    try:
+        options = InfillOptions(**given)
+    except JobError as error:
+        raise JobError([*error.problems, *wrong]) from None
+    if wrong:
+        raise JobError(wrong)
+    return options
 
 
 def _ratios(job: Job, record: RainRecord, network: GaugeNetwork) -> tuple[NormalRatios | None, tuple[Note, ...]]:

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
@@ -11,10 +11,12 @@ import numpy.typing as npt
 
 from basinrain.averaging import Weigher
 from basinrain.basin_depths import spread_across_methods
-from basinrain.errors import BasinRainError, DataError, MethodError, Problem
+from basinrain.completed_sums import CompletedSums, average_sums
+from basinrain.errors import BasinRainError, DataError, Problem
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import METHODS, Completed, InfillOptions, complete
 from basinrain.infill.gaps import gap_mask
+from basinrain.infill.relations import AT_LEAST
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 from basinrain.units import depth_factor
@@ -27,8 +29,6 @@ __all__ = ["InfillEffect", "InfillSpread", "infill_effect", "infill_spread_cauti
 
 _SPREAD_PERCENT: Final = 10.0
 _ROUNDING: Final = 1e-9
-_MOST_REBUILT: Final = 100
-"""Sets of gauges for which the weights may be rebuilt where a method leaves gaps that the job's own fills."""
 
 Floats = npt.NDArray[np.float64]
 
@@ -150,9 +150,11 @@ def infill_effect(
     weighers: Mapping[str, Weigher],
     *,
     options: InfillOptions,
+    asked: InfillOptions | None = None,
     long: npt.NDArray[np.bool_] | None = None,
     relations: Relations | None = None,
     ratios: NormalRatios | None = None,
+    progress: Callable[[str], None] | None = None,
 ) -> InfillEffect:
     """Return the basin means of a storm after every infill method that can run on it.
 
@@ -167,12 +169,17 @@ def infill_effect(
     weighers : mapping of str to Weigher
         The averaging methods, by name.
     options : InfillOptions
-        The job's own: the others share its scale, longest gap, radius, least number of donors and limit of elevation,
-        and its power where they have one; how many donors they take is their own default.
+        The job's own.
+    asked : InfillOptions, optional
+        What the job says, where a comparison chose its method; ``options`` where not given. The other methods share its
+        scale, longest gap, radius and limit of elevation, and those that take them its power and, where given, its
+        numbers of donors: the same numbers as in the comparison of the methods.
     long : array of bool, shape (n_steps, n_gauges), optional
         As for :func:`basinrain.infill.complete`.
     relations, ratios : Relations and NormalRatios, optional
         As for :func:`basinrain.infill.complete`; the methods that lack what they need are skipped.
+    progress : callable, optional
+        Called with the label of each method before it is run.
 
     Returns
     -------
@@ -214,29 +221,34 @@ def infill_effect(
     if not used <= {options.method}:
         found, expected = f"infilled by {', '.join(sorted(used))}", f"infilled by {options.method}, as the options say"
         raise DataError(Problem(item="completed record", found=found, expected=expected))
-    own, n_gaps, mine = options.label, _n_gaps(window), _Sums.of(completed.record)
+    own, n_gaps = options.label, int(np.count_nonzero(gap_mask(window)))
+    mine = CompletedSums.of(completed.record)
     # Sums only: the completed records of all methods together may be far larger than the job's own.
-    runs: dict[str, _Sums] = {}
+    runs: dict[str, CompletedSums] = {}
     skipped: dict[str, str] = {}
     for method in sorted(METHODS.values(), key=lambda method: method.order):
         if method.name == options.method:
             runs[own] = mine
             continue
-        candidate = replace(options, nearest=None).with_method(method.name)
+        candidate = (asked or options).with_method(method.name)
         label = candidate.label
+        if progress is not None:
+            progress(label)
         try:
-            other = complete(window, network, candidate, long=long, relations=relations, ratios=ratios).record
+            other = complete(
+                window, network, candidate, long=long, relations=relations, ratios=ratios, trace=False
+            ).record
         except BasinRainError as error:
             skipped[label] = _in_short(error)
             continue
-        sums = _Sums.of(other)
-        if reason := _unlike(sums, mine, n_gaps):
-            skipped[label] = reason
+        sums = CompletedSums.of(other)
+        if reason := sums.unlike(mine, n_gaps):
+            skipped[label] = reason + (_unrelated(relations) if method.needs_relations else "")
         else:
             runs[label] = sums
     totals, share, refused = {}, {}, {}
     for name, weigher in weighers.items():
-        totals[name], share[name], errors = _averaged(list(runs.values()), weigher, len(window))
+        totals[name], share[name], errors = average_sums(list(runs.values()), weigher, len(window))
         refused.update({(name, label): errors[k] for k, label in enumerate(runs) if k in errors})
     return InfillEffect(
         methods=tuple(runs),
@@ -249,92 +261,21 @@ def infill_effect(
     )
 
 
-def _n_gaps(record: RainRecord) -> int:
-    return int(np.count_nonzero(gap_mask(record)))
+def _unrelated(relations: Relations | None) -> str:
+    """Return that no two gauges have enough cases in common for a correlation, where that is so."""
+    if relations is None or len(relations.gauges) < 2:
+        return ""
+    most = int(relations.common[~np.eye(len(relations.gauges), dtype=bool)].max())
+    if most >= AT_LEAST:
+        return ""
+    return (
+        f"; a correlation needs {AT_LEAST} days, or longer steps, in common, and no two gauges have more than {most:,}"
+    )
 
 
 def _in_short(error: BasinRainError) -> str:
     first, more = error.problems[0], len(error.problems) - 1 + error.unlisted
     return f"{first.item}: found {first.found}; expected {first.expected}{f' (and {more:,} more)' if more else ''}"
-
-
-@dataclass(frozen=True, eq=False)
-class _Sums:
-    """The steps of a completed record, summed by the sets of gauges that have a depth.
-
-    Parameters
-    ----------
-    left
-        Gaps that are left.
-    parts
-        For every set, by its mask (n_gauges,) as bytes: of each gauge its depth, how much of that is infilled, and at
-        how many steps, shape (3, n_gauges).
-    """
-
-    left: int
-    parts: Mapping[bytes, Floats]
-
-    @classmethod
-    def of(cls, record: RainRecord) -> _Sums:
-        present = ~np.isnan(record.depth)
-        infilled = present & ~record.reporting
-        depth = np.where(present, record.depth, 0.0)
-        packed, first_seen, group = np.unique(
-            np.packbits(present, axis=1), axis=0, return_index=True, return_inverse=True
-        )
-        order = np.argsort(group.ravel(), kind="stable")
-        first = np.searchsorted(group.ravel()[order], np.arange(len(packed)))
-        summed = [
-            np.add.reduceat(part[order], first, dtype=float)
-            for part in (depth, np.where(infilled, depth, 0.0), infilled)
-        ]
-        keys = [present[step].tobytes() for step in first_seen]
-        return cls(_n_gaps(record), dict(zip(keys, np.stack(summed, axis=1), strict=True)))
-
-
-def _unlike(sums: _Sums, own: _Sums, n_gaps: int) -> str:
-    """Return why a completed record is not to be set beside the job's own: it infills nothing, or far less."""
-    if sums.left == n_gaps > 0:
-        return f"it can infill none of the {n_gaps:,} missing values"
-    rebuilt = len(sums.parts.keys() - own.parts.keys())
-    if rebuilt > _MOST_REBUILT:
-        return (
-            f"it leaves {sums.left:,} of {n_gaps:,} missing values without a depth, and the weights would have to be "
-            f"rebuilt for {rebuilt:,} sets of gauges, more than {_MOST_REBUILT}"
-        )
-    return ""
-
-
-def _averaged(runs: list[_Sums], weigher: Weigher, n_steps: int) -> tuple[Floats, Floats, dict[int, str]]:
-    """Return totals and shares infilled, (n_runs, n_basins), and by run why a number was refused."""
-    sums: dict[int, Floats] = {}
-    refused: dict[int, str] = {}
-    error: MethodError | None = None
-    # Each set once, in a fixed order, whichever runs have it.
-    for key in dict.fromkeys(key for run in runs for key in run.parts):
-        present = np.frombuffer(key, dtype=bool)
-        having = [k for k, run in enumerate(runs) if key in run.parts]
-        if not present.any():
-            refused.update(dict.fromkeys(having, "at some step no gauge has a depth"))
-            continue
-        try:
-            table = weigher(present)
-        except MethodError as caught:
-            error = caught
-            refused.update(dict.fromkeys(having, str(caught)))
-            continue
-        weight = table.weights.sum(axis=1)
-        for k in having:
-            # Run by run, since a product of more rows need not round like that of these three.
-            means = table.apply(np.where(present, runs[k].parts[key], np.nan))
-            means[2] /= np.where(weight == 0, np.nan, weight)
-            sums[k] = sums.get(k, 0.0) + means
-    if not sums:
-        raise error or MethodError(Problem(item="storm", found="no step with a depth", expected="one at least"))
-    nothing = np.full_like(next(iter(sums.values())), np.nan)
-    total, infilled, by_weight = np.stack([nothing if k in refused else sums[k] for k in range(len(runs))], axis=1)
-    by_depth = np.divide(infilled, total, out=np.full(total.shape, np.nan), where=total > 0)
-    return total, np.where(total == 0, by_weight / n_steps, by_depth), refused
 
 
 def infill_spread_cautions(

@@ -25,13 +25,13 @@ from basinrain.jobfile.tables import EditTable, RainfallTable, StormTable
 from basinrain.jobfile.times import edit_window_times, rainfall_day_start, storm_window_times
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
+from basinrain.reading.options import of_source
 from basinrain.screening import (
     Edit,
     Screening,
     ScreeningOptions,
     apply_edits,
     apply_rejections,
-    edit_rows,
     screen,
     spread_edits,
 )
@@ -124,7 +124,7 @@ def _read(
     """Read every file; the problems of all files are reported together."""
     problems = Problems()
     network = attempt(problems, partial(_read_gauges, job))
-    records = [attempt(problems, partial(_read_source, job, source)) for source in job.rainfall]
+    records = [attempt(problems, partial(_read_source, job, k, source)) for k, source in enumerate(job.rainfall, 1)]
     basins = attempt(problems, partial(_read_basins, job))
     # An option that the infill method does not take is told with the rest, not after it.
     attempt(problems, partial(infill_options, job))
@@ -133,7 +133,7 @@ def _read(
     network, (polygons, basin_notes) = cast("GaugeNetwork", network), cast("tuple[Basins, tuple[Note, ...]]", basins)
     sources = cast("list[RainRecord]", records)
     edits = _edits(job, sources)
-    edited = apply_edits(sources, edits)
+    edited, rows = apply_edits(sources, edits)
     excluded = set(job.gauges.exclude)
     timed = [source.zone for source in sources if not source.labels and not excluded.issuperset(source.gauges)]
     record, step_notes = reading.bring_to_step(
@@ -142,9 +142,9 @@ def _read(
         common=job.step.common,
         storm_times=_storm_times(job, timed[0] if timed else ""),
         exclude=job.gauges.exclude,
+        names=[source.paths[0] for source in job.rainfall],
     )
-    rows = tuple(edit_rows(sources, edits))
-    return network, record, polygons, edits, rows, (*basin_notes, *step_notes, *spread_edits(record, edits))
+    return network, record, polygons, edits, tuple(rows), (*basin_notes, *step_notes, *spread_edits(record, edits))
 
 
 def attempt(problems: Problems, work: Callable[[], _T]) -> _T | None:
@@ -171,9 +171,10 @@ def _read_gauges(job: Job) -> GaugeNetwork:
     )
 
 
-def _read_source(job: Job, table: RainfallTable) -> RainRecord:
+def _read_source(job: Job, number: int, table: RainfallTable) -> RainRecord:
     options = table.model_dump(exclude={"file", "files"})
-    return reading.read_rainfall([job.path(name) for name in table.paths], **options)
+    with of_source(number, table.paths[0]):
+        return reading.read_rainfall([job.path(name) for name in table.paths], **options)
 
 
 def _read_basins(job: Job) -> tuple[Basins, tuple[Note, ...]]:

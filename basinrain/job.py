@@ -98,7 +98,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
         _require_reporting(storm, window)
         completed = infill.complete(window, long=long[storm.first : storm.stop])
         result, found = _run_one(job, storm, completed, network, basins, weighers)
-        result, moved = _moved(job, result, window, infill, network, weighers, long[storm.first : storm.stop])
+        result, moved = _moved(job, result, window, infill, network, weighers, long[storm.first : storm.stop], say)
         found += moved
         results.append(result)
         notes += found
@@ -238,6 +238,7 @@ def _moved(  # noqa: PLR0917 - each room's product, in order
     network: GaugeNetwork,
     weighers: dict[str, Weigher],
     long: npt.NDArray[np.bool_],
+    say: Report,
 ) -> tuple[StormResult, tuple[Note, ...]]:
     """Return a storm's result with how far infilling moved it; nothing is said where nothing was infilled."""
     checks = series_check(result.completed.record, result.depths)
@@ -249,9 +250,11 @@ def _moved(  # noqa: PLR0917 - each room's product, in order
         result.completed,
         weighers,
         options=infill.options,
+        asked=infill.asked,
         long=long,
         relations=infill.relations,
         ratios=infill.ratios,
+        progress=lambda label: say(f"storm {result.storm.name} by {label}"),
     )
     ids = next(iter(result.depths.values())).table.basins
     notes = infill_spread_cautions(result.storm.name, ids, effect, depth_unit=job.job.depth_unit)

@@ -11,6 +11,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import DataError, Problems
+from basinrain.notes import Note
 
 __all__ = ["MEASURED", "REPORTING", "WITHOUT_DEPTH", "KnownTotal", "RainRecord", "Status"]
 
@@ -110,6 +111,9 @@ class RainRecord:
     recorders : frozenset of str
         Gauges that record at the record's own step or finer, whose values can give a pattern in time; all when not
         given.
+    notes : tuple of Note
+        What the reading of a source had to remark. They are the source's: records that are made from several do not
+        carry them on.
 
     Raises
     ------
@@ -146,6 +150,7 @@ class RainRecord:
     day_phase: int = field(default=0, kw_only=True)
     labels: tuple[str, ...] = field(default=(), kw_only=True)
     recorders: frozenset[str] = field(default=cast("frozenset[str]", None), kw_only=True)
+    notes: tuple[Note, ...] = field(default=(), kw_only=True)
 
     def __post_init__(self) -> None:
         given = cast("frozenset[str] | None", self.recorders)

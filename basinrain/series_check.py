@@ -26,6 +26,8 @@ __all__ = [
 Floats = npt.NDArray[np.float64]
 
 _ROUNDING: Final = 1e-9
+_BLOCK: Final = 1 << 20
+"""Values that are looked at together."""
 
 WET_DEPTH: Final = 0.1
 """mm; a step with at least this depth is wet."""
@@ -145,13 +147,16 @@ def series_check(completed: RainRecord, depths: Mapping[str, BasinDepths]) -> Se
     reporting gauges 2 1.0 2.5 0.5
     gauges, weighted 2 0.5 2.5 13.0
     """
-    gauges = _figures(np.where(completed.measured, completed.depth, np.nan))
+    if not depths:
+        return SeriesCheck(figures=())
+    weighted = np.any([(np.nan_to_num(d.table.weights) != 0).any(axis=0) for d in depths.values()], axis=0)
+    gauges = _figures(np.where(completed.measured[:, weighted], completed.depth[:, weighted], np.nan))
     rows: list[SeriesFigures] = []
     for method, result in depths.items():
         kinds = {
             COMPLETED: _figures(result.depth),
             REPORTING_GAUGES: _figures(result.reporting),
-            GAUGES: gauges.over_gauges(result.table.weights),
+            GAUGES: gauges.over_gauges(result.table.weights[:, weighted]),
         }
         rows += [
             figures.row(b, basin, method, series)
@@ -205,18 +210,33 @@ def _weighted(weights: Floats, values: Floats) -> Floats:
 
 def _figures(series: Floats) -> _Figures:
     """Return the figures of series (n_steps, n_series), steps without a number (NaN) left out."""
+    n_steps, n_series = series.shape
+    size = max(_BLOCK // max(n_steps, 1), 1)
+    # At least one block, if an empty one.
+    blocks = [_block(series[:, first : first + size]) for first in range(0, max(n_series, 1), size)]
+    return _Figures(*(np.concatenate(figures) for figures in zip(*blocks, strict=True)))
+
+
+def _top_sum(depth: Floats) -> float:
+    # Depths are never below 0, and finding the greatest among many zeros takes far longer than without them.
+    wet = depth[depth > 0]
+    return float(np.sort(np.partition(wet, -TOP)[-TOP:] if len(wet) > TOP else wet)[::-1].sum())
+
+
+def _block(columns: Floats) -> tuple[npt.NDArray[np.int64], Floats, Floats, Floats]:
+    """Return the figures of a few series, each in one piece of memory."""
+    series = np.ascontiguousarray(columns.T)
     known = ~np.isnan(series)
-    steps = known.sum(axis=0)
+    steps = known.sum(axis=1)
     some = np.maximum(steps, 1)
     depth = np.where(known, series, 0.0)
-    # Depths are never below 0, so the steps left out are the last to be taken.
-    top = np.sort(np.partition(depth, -TOP, axis=0)[-TOP:] if len(depth) > TOP else depth, axis=0)[::-1]
     top_n = np.minimum(steps, TOP)
-    top_sum = np.where(np.arange(len(top))[:, None] < top_n, top, 0.0).sum(axis=0)
-    apart = np.where(known, depth - depth.sum(axis=0) / some, 0.0)
-    return _Figures(
-        steps=steps.astype(np.int64),
-        wet_share=np.where(steps > 0, (known & (depth >= WET_DEPTH - _ROUNDING)).sum(axis=0) / some, np.nan),
-        top_mean=np.where(steps > 0, top_sum / np.maximum(top_n, 1), np.nan),
-        variance=np.where(steps > 1, (apart**2).sum(axis=0) / np.maximum(steps - 1, 1), np.nan),
+    top_sum = np.array([_top_sum(row) for row in depth])
+    apart = np.where(known, depth - (depth.sum(axis=1) / some)[:, None], 0.0)
+    wet = (known & (depth >= WET_DEPTH - _ROUNDING)).sum(axis=1)
+    return (
+        steps.astype(np.int64),
+        np.where(steps > 0, wet / some, np.nan),
+        np.where(steps > 0, top_sum / np.maximum(top_n, 1), np.nan),
+        np.where(steps > 1, (apart**2).sum(axis=1) / np.maximum(steps - 1, 1), np.nan),
     )

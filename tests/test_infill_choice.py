@@ -8,9 +8,9 @@ import numpy as np
 import pytest
 from tiny import JOB, write_tiny
 
-from basinrain.errors import DataError
+from basinrain.errors import DataError, JobError
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill_choice import choose_infill, compare
+from basinrain.infill_choice import choose_infill, compare, infill_options
 from basinrain.jobfile import Job, read_job
 from basinrain.rainfall import RainRecord, Status
 
@@ -51,8 +51,39 @@ def test_a_named_method_is_taken_without_comparing(tmp_path: Path) -> None:
         "nearest": 5,
         "min_donors": 2,
         "power": 1.0,
-        "normals": "given",
     }
+
+
+@pytest.mark.parametrize("normals", ["given", "record"])
+def test_the_source_of_normals_is_a_setting_where_normals_are_needed(tmp_path: Path, normals: str) -> None:
+    """Of the normal ratio, and of no method that needs none (above)."""
+    infill = choose_infill(job_with(tmp_path, "method=normal-ratio", f"normals={normals}"), RECORD, CROSS, quiet)
+    assert infill.settings["normals"] == normals
+
+
+def test_normals_from_the_record_beside_a_method_that_needs_none(tmp_path: Path) -> None:
+    """They are refused with all else that does not belong; beside a comparison, which may take one that does, not."""
+    wrong = job_with(tmp_path, "method=station-average", "normals=record", "power=2")
+    with pytest.raises(JobError, match=r"\[infill\] power: found it beside method 'station-average'") as caught:
+        choose_infill(wrong, RECORD, CROSS, quiet)
+    assert str(caught.value.problems[1]) == (
+        "[infill] normals: found 'record' beside method 'station-average'; expected one of the methods that need "
+        "normals: normal-ratio, ten-percent-rule, inverse-distance-ratios, ratio-regression, leave-one-out; remove "
+        "normals, or choose one of these"
+    )
+    infill_options(job_with(tmp_path, "method=ratio-regression", "normals=record"))
+    infill = choose_infill(job_with(tmp_path, "method=leave-one-out", "normals=record"), RECORD, CROSS, quiet)
+    assert infill.options.method == "regression"
+    assert infill.ratios is not None
+    assert "normals" not in infill.settings
+
+
+def test_what_the_job_asked_is_kept_beside_what_was_chosen(tmp_path: Path) -> None:
+    """Regression takes no power; other methods are to be tried with the job's."""
+    job = job_with(tmp_path, "method=leave-one-out", "power=3", "nearest=3")
+    infill = choose_infill(job, RECORD, CROSS, quiet, whole_record=True)
+    assert (infill.options.label, infill.options.power, infill.asked.power) == ("regression", None, 3)
+    assert (infill.asked.nearest, infill.asked.scale, infill.options.scale) == (3, "day", "day")
 
 
 def test_leave_one_out_takes_the_winner(tmp_path: Path) -> None:
@@ -137,7 +168,7 @@ def test_a_record_that_cannot_be_compared(tmp_path: Path, method: str, advice: s
 
 
 def test_normals_from_the_record_need_dates(tmp_path: Path) -> None:
-    """Asked for beside totals without times they are refused, whether or not the method uses them."""
+    """Asked for beside totals without times they are refused."""
     undated = np.full(3, "NaT", dtype="datetime64[s]")
     record = RainRecord(
         CROSS.ids, undated, undated, np.ones((3, 5)), np.full((3, 5), Status.OBSERVED, dtype=np.uint8), step="storm"

@@ -20,6 +20,7 @@ from basinrain.basins import Basins
 from basinrain.errors import DataError, MethodError, Problem
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import METHODS, InfillOptions, complete
+from basinrain.infill.leave_one_out import candidates_of
 from basinrain.infill.relations import relations_of
 from basinrain.infill_effect import InfillEffect, infill_effect, infill_spread_cautions
 from basinrain.rainfall import RainRecord, Status
@@ -72,7 +73,7 @@ def test_what_cannot_run_is_skipped_with_its_reason() -> None:
     assert {label.split(" (")[0] for label in effect.skipped} == lacking
     assert {label.split(" (")[0] for label in effect.methods} == set(METHODS) - lacking
     assert effect.skipped["normal-ratio"].startswith("gauges: found no normals; expected a normal above 0")
-    assert effect.skipped["regression"] == "it can infill none of the 1 missing values"
+    assert effect.skipped["regression"] == "it cannot infill the missing value"
     some = replace(NETWORK, normals=np.array([[1000.0], [NAN], [0.0]]))
     skipped = effect_of(hourly([[6, NAN, 12]]), InfillOptions(method="station-average"), some).skipped
     assert skipped["normal-ratio"].startswith("gauge B: found no normal for the year; expected")
@@ -114,18 +115,62 @@ def test_order_is_from_simple_to_complex() -> None:
     assert effect.own == "normal-ratio"
 
 
-def test_the_others_share_the_jobs_limits_but_have_their_own_donors() -> None:
-    """With nearest = 1 the job's own method takes A alone, 6 mm; the station average beside it keeps both donors, 9."""
+def test_the_others_share_the_jobs_limits_and_numbers_of_donors() -> None:
+    """With nearest = 1 inverse distance takes A alone, 6 mm, and so does the station average; not four-quadrant."""
     own = InfillOptions(method="inverse-distance", power=1, nearest=1, min_donors=1)
     effect = effect_of(hourly([[6, NAN, 12]]), own)
     totals = by_label(effect, effect.totals["thiessen"])
     own_label = "inverse-distance (power 1)"
     assert effect.own == own_label
     assert totals[own_label] == pytest.approx(8)
-    assert totals["station-average"] == pytest.approx(9)
+    assert totals["station-average"] == pytest.approx(8)
+    # A is in the west, C in the east, and the nearest of each quadrant donates.
+    assert totals["four-quadrant"] == pytest.approx(9)
     near = effect_of(hourly([[6, NAN, 12]]), replace(own, radius=9e3))
     assert (near.methods, near.left.tolist()) == ((own_label,), [1])
-    assert near.skipped["station-average"] == "it can infill none of the 1 missing values"
+    assert near.skipped["station-average"] == "it cannot infill the missing value"
+
+
+def test_what_the_job_says_holds_where_a_comparison_chose_the_method() -> None:
+    """The nearest gauge was chosen and takes no number of donors; nearest = 1 and the power hold for the others."""
+    record, own = hourly([[6, NAN, 12]]), InfillOptions(method="nearest-gauge")
+    asked = InfillOptions(nearest=1, min_donors=1, power=3)
+    completed, weighers = complete(record, NETWORK, own), {"toy": toy}
+    found = infill_effect(record, NETWORK, completed, weighers, options=own, asked=asked)
+    assert by_label(found, found.totals["toy"])["station-average"] == pytest.approx(8)
+    assert "inverse-distance (power 3)" in found.methods
+    alone = infill_effect(record, NETWORK, completed, weighers, options=own)
+    assert by_label(alone, alone.totals["toy"])["station-average"] == pytest.approx(9)
+
+
+def test_a_comparison_tries_the_others_with_the_same_numbers() -> None:
+    """Each candidate of the leave-one-out comparison is the effect's run of that label."""
+    asked = InfillOptions(nearest=3, min_donors=1, radius=5e4, power=2)
+    candidates = {candidate.label: candidate.options for candidate in candidates_of(asked)}
+    for method in METHODS:
+        other = asked.with_method(method)
+        assert candidates[other.label] == other
+
+
+def test_progress_names_every_other_method() -> None:
+    """The job's own is not run again."""
+    said: list[str] = []
+    record, own = hourly([[6, NAN, 12]]), InfillOptions(method="station-average")
+    infill_effect(record, NETWORK, complete(record, NETWORK, own), {"toy": toy}, options=own, progress=said.append)
+    assert [label.split(" (")[0] for label in said] == [name for name in METHODS if name != "station-average"]
+
+
+def test_a_record_too_short_for_correlations_says_so() -> None:
+    """Three days are too few, thirty would do."""
+    record, own = hourly([[6, NAN, 12]]), InfillOptions(method="station-average")
+    few, many = (relations_of(np.arange(3.0 * n).reshape(n, 3), NETWORK) for n in (3, 30))
+    completed = complete(record, NETWORK, own)
+    effect = infill_effect(record, NETWORK, completed, {"toy": toy}, options=own, relations=few)
+    assert effect.skipped["regression"] == (
+        "it cannot infill the missing value; a correlation needs 30 days, or longer steps, in common, and no two "
+        "gauges have more than 3"
+    )
+    assert "regression" in infill_effect(record, NETWORK, completed, {"toy": toy}, options=own, relations=many).methods
 
 
 def test_the_power_is_the_jobs_wherever_a_method_has_one() -> None:

@@ -63,3 +63,8 @@ def column(completed: Completed, gauge: str = "B") -> list[float]:
     """Return a gauge's completed depths."""
     depths: npt.NDArray[np.float64] = completed.record.depth[:, completed.record.gauges.index(gauge)]
     return [float(depth) for depth in depths]
+
+
+def codes(completed: Completed) -> list[str]:
+    """Return the codes of its notes."""
+    return [note.code for note in completed.notes]

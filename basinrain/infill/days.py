@@ -8,7 +8,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.infill.spans import cut_totals, month_of, span_starts
+from basinrain.infill.spans import cut_totals, month_of, own_totals, span_starts
 from basinrain.rainfall import RainRecord
 
 __all__ = ["Days", "day_totals"]
@@ -68,16 +68,12 @@ def day_totals(record: RainRecord) -> Days:
     (array(['2031-05-05T00:00:00'], dtype='datetime64[s]'), array([5]), array([[ 6., nan]]))
     """
     undated = bool(np.isnat(record.ends).any())
-    seconds = (record.ends - record.starts) / np.timedelta64(1, "s")
-    by_day = len(record) > 0 and not undated and bool(np.median(seconds) < _DAY)
+    length = (record.ends - record.starts) / np.timedelta64(1, "s")
+    by_day = len(record) > 0 and not undated and bool(np.median(length) < _DAY)
     first = span_starts(record, "day") if by_day else np.arange(len(record))
     stop = np.append(first[1:], len(record))[: len(first)]
-    own = np.where(record.reporting, record.depth, 0.0)
-    if not len(first):
-        nothing = np.empty(0, dtype="datetime64[s]")
-        return Days(nothing, nothing, np.empty(0, dtype=np.int64), np.empty((0, len(record.gauges))))
-    known = np.logical_and.reduceat(record.reporting, first, axis=0) & ~cut_totals(record, own, first, stop)
-    totals = np.where(known, np.add.reduceat(own, first, axis=0), np.nan)
+    totals, seconds = own_totals(record, first)
+    totals[cut_totals(record, np.where(record.reporting, record.depth, 0.0), first, stop)] = np.nan
     starts, ends = record.starts[first], record.ends[stop - 1]
-    whole = np.add.reduceat(seconds, first) >= _DAY - 0.5 if by_day else np.ones(len(first), dtype=bool)
+    whole = seconds >= _DAY - 0.5 if by_day else np.ones(len(first), dtype=bool)
     return Days(starts[whole], ends[whole], month_of(starts, ends)[whole], totals[whole])

@@ -7,8 +7,10 @@ from functools import cached_property
 
 import numpy as np
 
+from basinrain.infill.beyond import beyond_donors
 from basinrain.infill.completed import Estimate
 from basinrain.infill.gaps import steps_in_words
+from basinrain.infill.relations import AT_LEAST
 from basinrain.infill.spans import EXACT
 from basinrain.infill.window import Bools, Floats, Ints, Spans, Window
 from basinrain.notes import Note
@@ -80,6 +82,8 @@ class GaugeFilling:
         if not known.all():
             self._leave("reported at the step", steps[~known])
         self._depth[steps[known]] = depths[known]
+        if not window.trace:
+            return
         method, gauge = window.options.method, self._gauge
         self.estimates += [
             Estimate(gauge=gauge, first=s, stop=s + 1, scale="step", depth=d, method=method, donors=donors[r])
@@ -95,7 +99,8 @@ class GaugeFilling:
         totals = _weighted_sums(row_of, rows, spans.totals, chosen)
         known = (rows != 0).any(axis=1)[row_of]
         if not known.all():
-            what = f"have values of their own at every step of the {window.scale}"
+            own = "has values of its own" if window.options.donors_required == 1 else "have values of their own"
+            what = f"{own} at every step of the {window.scale}"
             beyond = ", totals that reach beyond it left out"
             cut = (spans.complete & spans.cut)[chosen].any(axis=1)
             for words, unknown in ((what, ~known & ~cut), (what + beyond, ~known & cut)):
@@ -111,11 +116,12 @@ class GaugeFilling:
         ):
             first, stop = int(spans.first[k]), int(spans.stop[k])
             self._spread(spans, k, max(total - seen, 0.0))
-            self.estimates.append(
-                Estimate(
-                    gauge=gauge, first=first, stop=stop, scale=scale, depth=total, method=method, donors=donors[row]
+            if window.trace:
+                self.estimates.append(
+                    Estimate(
+                        gauge=gauge, first=first, stop=stop, scale=scale, depth=total, method=method, donors=donors[row]
+                    )
                 )
-            )
         return np.concatenate(raised) if raised else np.empty(0, dtype=np.int64)
 
     def _missing(self, spans: Spans, k: int) -> Ints:
@@ -149,7 +155,10 @@ class GaugeFilling:
         return rank
 
     def _weigh(self, reporting: Bools, months: Ints) -> tuple[Ints, Floats, list[Mapping[str, float]]]:
-        """Return for cases of reporting gauges, (n, n_gauges), the row of each, the different rows, and these by id."""
+        """Return for cases of reporting gauges, (n, n_gauges), the row of each, the different rows, and these by id.
+
+        The last are empty where nothing is traced.
+        """
         window = self._window
         if not window.options.chosen_method.needs_normals:
             months = np.zeros_like(months)
@@ -167,6 +176,8 @@ class GaugeFilling:
                 relations=window.relations,
                 ratios=window.ratios,
             )
+        if not window.trace:
+            return row_of.ravel(), rows, []
         ids = window.network.ids
         donors: list[Mapping[str, float]] = [{} for _ in case]
         at, columns = np.nonzero(rows)
@@ -175,8 +186,9 @@ class GaugeFilling:
         return row_of.ravel(), rows, donors
 
     def _leave(self, what: str, steps: Ints) -> None:
-        options = self._window.options
-        reason = f"fewer than {options.donors_required} other gauges{self._limits} {what}"
+        required = self._window.options.donors_required
+        others = "no other gauge" if required == 1 else f"fewer than {required} other gauges"
+        reason = f"{others}{self._limits} {what}{self._unrelated}"
         self._left.setdefault(reason, []).append(steps)
 
     @property
@@ -195,6 +207,19 @@ class GaugeFilling:
         if method.needs_normals and self._window.ratios is not None:
             words.append("with normals of enough common years")
         return "".join(f" {part}" for part in words if part)
+
+    @cached_property
+    def _unrelated(self) -> str:
+        """Why correlations are not known, in words: too few cases in common."""
+        relations, required = self._window.relations, self._window.options.donors_required
+        if relations is None:
+            return ""
+        common = np.delete(relations.common[self._g], self._g)
+        related = int(np.count_nonzero(common >= AT_LEAST))
+        if related >= required:
+            return ""
+        shares = f"as many with {related} only" if related else f"{common.max(initial=0):,} at most with any other"
+        return f"; a correlation needs {AT_LEAST} days, or longer steps, in common, and {self._gauge} has {shares}"
 
     def notes(self) -> list[Note]:
         """Return what the user must know of this gauge's gaps."""
@@ -218,6 +243,7 @@ class GaugeFilling:
                     method=self._window.options.method,
                 )
             )
+        notes += beyond_donors(self._window, self._g, self.estimates)
         notes += [
             Note(
                 code="spread-evenly",

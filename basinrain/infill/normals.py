@@ -19,6 +19,10 @@ _NEIGHBOURS: Final = 5
 
 _CLOSE: Final = 0.12
 
+_DRIEST, _WETTEST = 10.0, 13000.0
+
+_LISTED: Final = 3
+
 _UNIT_RATIOS: Final = (
     (25.4, "mm where the others are inches"),
     (10.0, "mm where the others are cm"),
@@ -116,7 +120,7 @@ normal-ratio method; give it, leave the gauge out, or choose another infill meth
 
 
 def suspect_normal_units(network: GaugeNetwork) -> tuple[Note, ...]:
-    """Return a warning for every gauge whose normal looks as if it were in another unit than its neighbours'.
+    """Return warnings of normals that look as if they were in another unit than the neighbours', or than mm.
 
     Parameters
     ----------
@@ -128,6 +132,9 @@ def suspect_normal_units(network: GaugeNetwork) -> tuple[Note, ...]:
     tuple of Note
         ``normal-unit`` where the gauge's normal for the year over the median of those of its 5 nearest gauges is within
         12 % of 25.4, 10, 2.54 or the inverse of one of them. A doubt only: relief can do that, too.
+        ``normal-out-of-range``, one for all other gauges whose normal for the year is below 10 or above 13,000 mm: the
+        wettest place known, Mawsynram, has about 11,900 mm a year (from memory), and what is drier than 10 mm a year
+        is no country to take ratios in.
 
     Examples
     --------
@@ -145,8 +152,31 @@ inches where the others are mm.
     """
     normals = normals_of(network, None)
     known = np.flatnonzero(np.isfinite(normals) & (normals > 0))
-    if len(known) < 2:
-        return ()
+    notes = _unlike_neighbours(network, known, normals) if len(known) >= 2 else []
+    named = {note.gauge for note in notes}
+    outside = [
+        f"{network.ids[g]} {normals[g]:{',.0f' if normals[g] >= 100 else '.3g'}} mm"
+        for g in known.tolist()
+        if network.ids[g] not in named and not _DRIEST <= normals[g] <= _WETTEST
+    ]
+    if outside:
+        listed = ", ".join(outside[:_LISTED])
+        more = f" and {len(outside) - _LISTED:,} more" if len(outside) > _LISTED else ""
+        notes.append(
+            Note(
+                code="normal-out-of-range",
+                text=f"{'A normal' if len(outside) == 1 else 'Normals'} for the year below {_DRIEST:g} or above "
+                f"{_WETTEST:,.0f} mm (the wettest place known has about 11,900 mm): {listed}{more}; "
+                "check normal_unit, and that normals are those of the year or of its twelve months.",
+            )
+        )
+    return tuple(notes)
+
+
+def _unlike_neighbours(
+    network: GaugeNetwork, known: npt.NDArray[np.int64], normals: npt.NDArray[np.float64]
+) -> list[Note]:
+    """Return the warnings of gauges whose normals differ from their neighbours' by the ratio of two units."""
     part = network.subset(np.isin(np.arange(len(network)), known))
     # The gauge itself comes first or among its twins; it is taken out by its number.
     order = part.nearest_first(part.distances())
@@ -166,4 +196,4 @@ inches where the others are mm.
                         gauge=gauge,
                     )
                 )
-    return tuple(notes)
+    return notes

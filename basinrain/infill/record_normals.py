@@ -11,6 +11,7 @@ import numpy.typing as npt
 
 from basinrain.errors import DataError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
+from basinrain.infill.spans import own_totals
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 
@@ -23,6 +24,7 @@ STANDARD_YEARS: Final = 30
 """Years of a standard normal (WMO-No. 1203)."""
 
 _LISTED: Final = 3
+_DAY: Final = np.timedelta64(86400, "s")
 
 
 @dataclass(frozen=True, eq=False)
@@ -108,15 +110,16 @@ def normals_from_record(record: RainRecord, network: GaugeNetwork) -> tuple[Norm
     Parameters
     ----------
     record : RainRecord
-        The whole record, with dates and steps of a month at most; its columns in the network's order.
+        The whole record, with dates and steps of a day at most, or of calendar months; its columns in the network's
+        order.
     network : GaugeNetwork
         The gauges.
 
     Returns
     -------
     ratios : NormalRatios
-        A gauge's month counts where the record has all of it and the gauge its own value at every step; a step belongs
-        to the month that holds its middle. A pair needs 10 common years of a month.
+        A gauge's month counts where the record's steps are together as long as the month and the gauge has its own
+        value at each; a step belongs to the month that holds its middle. A pair needs 10 common years of a month.
     notes : tuple of Note
         ``normals-from-short-record`` where no gauge has the 30 years of a standard normal (WMO-No. 1203; from memory)
         in every month, and ``few-common-years``, which names pairs with fewer than 10. Unequal periods need no
@@ -125,7 +128,8 @@ def normals_from_record(record: RainRecord, network: GaugeNetwork) -> tuple[Norm
     Raises
     ------
     DataError
-        The columns are not the network's gauges, totals have no dates, or steps are longer than a month.
+        The columns are not the network's gauges, totals have no dates, or steps are longer than a day and not calendar
+        months.
 
     Examples
     --------
@@ -158,17 +162,27 @@ def normals_from_record(record: RainRecord, network: GaugeNetwork) -> tuple[Norm
 
 def _month_totals(record: RainRecord) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]:
     """Return the calendar month, 0 to 11, and every gauge's total, NaN where it is not whole, of the whole months."""
-    middle = record.starts + (record.ends - record.starts) // 2
-    held = middle.astype("datetime64[M]")
+    held = _months_held(record)
     first = np.concatenate([[0], np.flatnonzero(held[1:] != held[:-1]) + 1])
     months = held[first]
     length = ((months + 1).astype("datetime64[s]") - months.astype("datetime64[s]")) / np.timedelta64(1, "s")
-    seconds = (record.ends - record.starts) / np.timedelta64(1, "s")
-    whole = np.add.reduceat(seconds, first) >= length - 0.5
-    own = record.reporting
-    known = np.logical_and.reduceat(own, first, axis=0)
-    totals = np.where(known, np.add.reduceat(np.where(own, record.depth, 0.0), first, axis=0), np.nan)
+    totals, seconds = own_totals(record, first)
+    whole = np.abs(seconds - length) < 0.5
     return months.astype(np.int64)[whole] % 12, totals[whole]
+
+
+def _months_held(record: RainRecord) -> npt.NDArray[np.datetime64]:
+    """Return the month that holds the middle of every step."""
+    return (record.starts + (record.ends - record.starts) // 2).astype("datetime64[M]")
+
+
+def _divides_no_month(record: RainRecord) -> bool:
+    """Return whether a step is longer than a day and no calendar month, which may begin at the hour of a reading."""
+    long = record.ends - record.starts > _DAY
+    month = _months_held(record)
+    off = record.starts - month.astype("datetime64[s]")
+    late = record.ends - (month + 1).astype("datetime64[s]")
+    return bool((long & ((off != late) | (np.abs(off) > _DAY))).any())
 
 
 def _short(years: npt.NDArray[np.int64]) -> tuple[Note, ...]:
@@ -221,11 +235,11 @@ def _check(record: RainRecord, network: GaugeNetwork) -> None:
         problems.add(
             item="normals from the record", found="no dates", expected="a record of several years", remedy=remedy
         )
-    elif ((record.ends - record.starts) > np.timedelta64(31, "D")).any():
+    elif _divides_no_month(record):
         problems.add(
             item="normals from the record",
             found=f"steps of {record.step}",
-            expected="steps of a month at most",
+            expected="steps of a day at most, or of calendar months: normals are means of whole months",
             remedy=remedy,
         )
     problems.raise_as(DataError)

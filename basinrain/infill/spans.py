@@ -9,7 +9,7 @@ import numpy.typing as npt
 
 from basinrain.rainfall import RainRecord
 
-__all__ = ["EXACT", "cut_totals", "month_of", "span_starts"]
+__all__ = ["EXACT", "cut_totals", "month_of", "own_totals", "span_starts"]
 
 EXACT: Final = 1e-9
 """Depths this close to each other, relatively and in mm, are equal."""
@@ -66,6 +66,41 @@ def month_of(starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64
     middle = _middle(starts, ends)
     month = middle.astype("datetime64[M]").astype(np.int64) % 12 + 1
     return np.where(np.isnat(middle), 0, month)
+
+
+def own_totals(
+    record: RainRecord, first: npt.NDArray[np.int64]
+) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
+    """Return what every gauge measured over spans of a record, and how much of the time of each the record has.
+
+    Parameters
+    ----------
+    record : RainRecord
+        With times.
+    first : array of int, shape (n_spans,)
+        The first step of each span, rising from 0; every span ends where the next begins.
+
+    Returns
+    -------
+    totals : array of float, shape (n_spans, n_gauges)
+        mm; NaN unless the gauge has its own value at every step of the span.
+    seconds : array of float, shape (n_spans,)
+        The length of its steps together.
+
+    Examples
+    --------
+    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02", "2031-05-04T03"], dtype="datetime64[s]")
+    >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[1.0], [8.0], [np.nan]], step="1h")
+    >>> totals, seconds = own_totals(record, np.array([0, 2]))
+    >>> totals.ravel(), seconds
+    (array([ 9., nan]), array([7200., 3600.]))
+    """
+    if not len(first):
+        return np.empty((0, len(record.gauges))), np.empty(0)
+    own = record.reporting
+    known = np.logical_and.reduceat(own, first, axis=0)
+    totals = np.where(known, np.add.reduceat(np.where(own, record.depth, 0.0), first, axis=0), np.nan)
+    return totals, np.add.reduceat((record.ends - record.starts) / np.timedelta64(1, "s"), first)
 
 
 def cut_totals(

@@ -38,6 +38,8 @@ class Window:
         Relations between the gauges in the record, where the method needs them.
     ratios : NormalRatios, optional
         Normals from the record, where they are used.
+    trace : bool
+        Whether it is kept how every estimate came about.
 
     Examples
     --------
@@ -59,6 +61,7 @@ class Window:
     fillable: Bools
     relations: Relations | None = None
     ratios: NormalRatios | None = None
+    trace: bool = True
     _spans: dict[bytes, Spans] = field(init=False, repr=False, default_factory=dict)
 
     @cached_property

@@ -96,7 +96,7 @@ class RainfallTable(Table):
     end: Moment | None = None
     rollover: Positive | None = None
     jitter: Annotated[float, Field(ge=0)] = 0.0
-    reset: Annotated[str, one_of(("unknown", "at-reading"))] = "unknown"
+    reset: Annotated[str | int | None, BeforeValidator(clock_time)] = None
     columns: dict[str, str] = Field(default={})
 
     @field_validator("unit")

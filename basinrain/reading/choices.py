@@ -10,14 +10,13 @@ from basinrain.errors import JobError, Problem, Problems, nearest_name
 from basinrain.layouts import COLUMNS, GHCN, GHCN_UNIT, LAYOUTS, misplaced
 from basinrain.reading.intervals import DAY, FORMS, Interval, interval_of, parse_interval
 
-__all__ = ["check_choices", "check_numbers", "reading_hour", "source_interval"]
+__all__ = ["check_choices", "check_numbers", "reading_hour", "source_interval", "time_of_day"]
 
 _CHOICES: Final = {
     "layout": LAYOUTS,
     "stamp": ("end", "start"),
     "date_means": ("calendar-day", "ends", "starts"),
     "gaps": ("refuse", "missing"),
-    "reset": ("unknown", "at-reading"),
 }
 _NO_READINGS: Final = ("trace", "presumed-zero", "accumulated")
 _HOUR: Final = re.compile(r"(?P<hour>[01]?[0-9]|2[0-3])(?::(?P<minute>[0-5][0-9]))?")
@@ -189,9 +188,30 @@ def reading_hour(hour: str | int | None, date_means: str | None, step: Interval 
                 remedy="leave it out",
             )
         )
-    match = _HOUR.fullmatch(str(hour).strip())
+    return time_of_day(hour, item="read_hour")
+
+
+def time_of_day(value: str | int, *, item: str) -> int:
+    """Return a time of day in seconds after midnight.
+
+    Parameters
+    ----------
+    value
+        ``"08:00"``, or a whole hour.
+    item
+        The key that messages name.
+
+    Raises
+    ------
+    JobError
+        It is none.
+
+    Examples
+    --------
+    >>> time_of_day("06:30", item="reset"), time_of_day(0, item="reset")
+    (23400, 0)
+    """
+    match = _HOUR.fullmatch(str(value).strip())
     if not match:
-        raise JobError(
-            Problem(item="read_hour", found=f"'{hour}'", expected="a time of day, such as '08:00' or 8", remedy="")
-        )
+        raise JobError(Problem(item=item, found=f"'{value}'", expected="a time of day, such as '08:00' or 8"))
     return int(match["hour"]) * 3600 + int(match["minute"] or 0) * 60

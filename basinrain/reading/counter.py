@@ -7,67 +7,28 @@ invented for what a reset hides.
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
-from typing import Final
+from dataclasses import replace
 
 import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import JobError, Problem, Problems, ReadError
+from basinrain.notes import Note
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 from basinrain.reading.blocks import DEPTH_NAMES, GAUGE_NAMES, Block
+from basinrain.reading.clocks import clock_name
 from basinrain.reading.columns import find_column
+from basinrain.reading.counter_column import CounterColumn, counter_column
+from basinrain.reading.counter_rises import depth_rises
+from basinrain.reading.counter_rules import CounterRules
 from basinrain.reading.delimited import DelimitedTable
-from basinrain.reading.depths import DepthRules, greatest_depth
+from basinrain.reading.depths import DepthRules
+from basinrain.reading.intervals import DAY, parse_interval
 from basinrain.reading.long import read_long
 from basinrain.reading.stamps import StampRules
 from basinrain.reading.wide import read_wide
 
-__all__ = ["CounterRules", "counter_depths", "read_counter"]
-
-_LEAST: Final = 1e-6
-"""mm; differences below it are of the arithmetic, not of the gauge."""
-
-_RESET: Final = 0.5
-"""A reset takes away at least this share of the reading."""
-
-_DROPOUT: Final = 3
-_LEAP: Final = 0.1
-"""Low readings are faulty when they are so few, or the rise back is over this share of the greatest known depth."""
-
-_OFTEN: Final = 0.25
-_FEW: Final = 2
-"""A counter that falls at more than this share of its readings, and more than a few times, is none, or a noisy one."""
-
-
-@dataclass(frozen=True, kw_only=True)
-class CounterRules:
-    """What the readings of a counter can do beside rising.
-
-    Parameters
-    ----------
-    rollover
-        mm at which the counter starts again from 0; None: it does not.
-    jitter
-        mm by which a reading can fall without meaning, from noise or evaporation.
-    reset_at_reading
-        Whether the counter is only ever set to 0 just after a reading, as one of the rain since midnight is.
-
-    Raises
-    ------
-    JobError
-        The jitter is not below half the rollover value.
-    """
-
-    rollover: float | None = None
-    jitter: float = 0.0
-    reset_at_reading: bool = False
-
-    def __post_init__(self) -> None:
-        if self.rollover is not None and self.jitter >= self.rollover / 2:
-            raise JobError(
-                Problem(item="jitter", found="it as large as half of rollover or more", expected="a smaller jitter")
-            )
+__all__ = ["counter_depths", "read_counter"]
 
 
 def read_counter(
@@ -128,7 +89,7 @@ def counter_depths(readings: RainRecord, rules: CounterRules, *, file: str = "")
     readings
         Readings in mm in place of depths, each at the end of its step. What is not known has no depth.
     rules
-        Rollover and jitter.
+        Rollover, jitter, and when the counters are set to 0.
     file
         The file that they come from, for messages; ``""`` for several.
 
@@ -146,17 +107,27 @@ def counter_depths(readings: RainRecord, rules: CounterRules, *, file: str = "")
           more than has ever been measured in such a time. The wrapped rise is the depth.
         - Else a fall by at least half the reading is a reset, at an unknown time since the reading before: what fell
           in the meantime is not known, so that the steps since then are missing. The next depth counts from the new
-          reading. With ``reset_at_reading`` the new reading is what fell since.
-        - A fall that only undoes the last rise, or that the first rise after it makes good at once, is no reset: the
-          readings between the two were faulty, and all steps from the first of the two to the second are missing.
+          reading.
+        - Readings that leap away, by more than a tenth of what has ever fallen in such a time and 30 mm, and back at
+          once are faulty. They count as missing: what fell meanwhile is a known total.
+        - A smaller fall that only undoes the last rise, or that the first rise after it makes good at once, may be a
+          reset or a faulty reading: all steps from the first of the two to the second are missing.
 
-        A depth is ESTIMATED or ADJUSTED where one of its two readings is.
+        With ``rules.reset`` every day begins anew: right after the reading of that time the counter is at 0, whether or
+        not the next reading is lower, and whether or not there was one at that time. Where there was none, what fell
+        between the last reading before and the reset is not known. Falls at any other time are judged as above.
+
+        A depth is ESTIMATED or ADJUSTED where one of its two readings is. ``notes`` say what falls were taken for:
+        ``counter-reset``, ``counter-rollover``, ``counter-doubtful``, ``counter-leap``.
 
     Raises
     ------
+    JobError
+        The time of the reset is none at which the counters are read.
     ReadError
-        Fewer than two readings in all; readings that only fall, fall too often, or fall by less than half without
-        reaching 0, which a counter does not; readings above the rollover value; rises that have never been measured in
+        Fewer than two readings in all; readings that only fall, fall too often, fall to 0 after nearly every rise, or
+        fall by less than half without reaching 0, which a counter does not; readings that go on rising where the
+        counter is declared to be set to 0; readings above the rollover value; rises that have never been measured in
         such a time. All of them together.
 
     Examples
@@ -178,12 +149,13 @@ def counter_depths(readings: RainRecord, rules: CounterRules, *, file: str = "")
             expected="readings at two times or more",
         )
     problems.raise_as(ReadError)
+    _check_time(readings, rules, file)
     shape = (len(readings) - 1, len(readings.gauges))
     depth, status = np.full(shape, np.nan), np.full(shape, Status.MISSING, dtype=np.uint8)
     totals: list[KnownTotal] = []
+    notes: list[Note] = []
     for g in range(len(readings.gauges)):
-        column = _Column(readings, g, np.flatnonzero(~np.isnan(readings.depth[:, g])))
-        rises = _rises(column, rules, problems)
+        column, rises = depth_rises(counter_column(readings, g, rules.reset), rules, problems, notes)
         totals += _put(column, rises, depth[:, g], status[:, g])
     problems.raise_as(ReadError)
     return replace(
@@ -193,184 +165,39 @@ def counter_depths(readings: RainRecord, rules: CounterRules, *, file: str = "")
         depth=depth,
         status=status,
         totals=tuple(totals),
+        notes=(*readings.notes, *notes),
     )
 
 
-@dataclass(frozen=True, eq=False)
-class _Column:
-    """One gauge's readings: the record, the gauge's place, and the rows that have a reading."""
-
-    record: RainRecord
-    place: int
-    rows: npt.NDArray[np.int64]
-
-    @property
-    def gauge(self) -> str:
-        return self.record.gauges[self.place]
-
-    @property
-    def values(self) -> npt.NDArray[np.float64]:
-        return np.asarray(self.record.depth[self.rows, self.place])
-
-    def hours(self, readings: npt.NDArray[np.int64]) -> npt.NDArray[np.float64]:
-        """Return the hours from the reading before to each of these readings."""
-        ends = self.record.ends[self.rows].astype(np.int64)
-        return np.asarray((ends[readings] - ends[readings - 1]) / 3600.0)
-
-    def report(self, problems: Problems, reading: int, *, found: str, expected: str, remedy: str) -> None:
-        problems.add(
-            item=f"gauge {self.gauge}",
-            found=found,
-            expected=expected,
-            remedy=remedy,
-            gauge=self.gauge,
-            time=str(self.record.ends[self.rows[reading]]),
-        )
-
-    def said(self, reading: int) -> str:
-        """Return a fall in words."""
-        before, after = self.values[reading - 1 : reading + 1]
-        return f"from {before:g} mm to {after:g} mm at {self.record.ends[self.rows[reading]]}"
-
-
-def _rises(column: _Column, rules: CounterRules, problems: Problems) -> npt.NDArray[np.float64]:
-    """Return the depth since the reading before, for every reading; NaN where it is not known."""
-    values = column.values
-    rises = np.full(len(values), np.nan)
-    if rules.rollover is not None and (values > rules.rollover + _LEAST).any():
-        first = int(np.argmax(values > rules.rollover + _LEAST))
-        column.report(
-            problems,
-            first,
-            found=f"a reading of {values[first]:g} mm at {column.record.ends[column.rows[first]]}",
-            expected=f"none above rollover, {rules.rollover:g} mm",
-            remedy="correct rollover, which is in the source's unit",
-        )
-        return rises
-    start = 0
-    resets: list[tuple[int, float]] = []
-    noise: list[int] = []
-    while start < len(values):
-        stop, highest = _until_fall(values, start, rules.jitter)
-        # Depths count from the highest reading so far.
-        rises[start + 1 : stop] = np.diff(highest)
-        if stop == len(values):
-            break
-        wrap = _wrapped(column, stop, float(highest[-1]), rules)
-        if wrap is not None:
-            rises[stop] = wrap
-        elif highest[-1] - values[stop] >= _RESET * highest[-1]:
-            resets.append((stop, float(highest[-1])))
-        else:
-            noise.append(stop)
-        start = stop
-    rises = np.round(rises, 9)
-    _check_falls(column, rises, [reading for reading, _ in resets], noise, problems)
-    for reading, before in resets:
-        if rules.reset_at_reading:
-            rises[reading] = round(float(values[reading]), 9)
-            continue
-        _drop_faulty(column, rises, reading, before=before, jitter=rules.jitter + _LEAST)
-    _check_rises(column, rises, problems)
-    return rises
-
-
-def _until_fall(values: npt.NDArray[np.float64], start: int, jitter: float) -> tuple[int, npt.NDArray[np.float64]]:
-    """Return the first reading that falls by more than the jitter, and the highest reading so far until then."""
-    size = 256
-    while True:
-        part = values[start : start + size]
-        highest = np.maximum.accumulate(part)
-        falls = part < highest - jitter - _LEAST
-        if falls.any():
-            n = int(np.argmax(falls))
-            return start + n, highest[:n]
-        if start + size >= len(values):
-            return len(values), highest
-        size *= 2
-
-
-def _wrapped(column: _Column, reading: int, before: float, rules: CounterRules) -> float | None:
-    if rules.rollover is None:
-        return None
-    rise = rules.rollover - before + float(column.values[reading])
-    most = float(greatest_depth(column.hours(np.array([reading])))[0])
-    return max(0.0, rise) if rise < min(rules.rollover / 2, most) else None
-
-
-def _drop_faulty(
-    column: _Column, rises: npt.NDArray[np.float64], reading: int, *, before: float, jitter: float
-) -> None:
-    """Take out, in place, the rise and fall of readings that were faulty and not those of a reset."""
-    values = column.values
-    earlier = np.flatnonzero(rises[:reading] > 0)
-    if len(earlier):
-        rise = int(earlier[-1])
-        undone = values[reading] >= values[rise - 1] - jitter
-        # A fall to 0 undoes every first rise of the day: then only the reading just before it is in doubt.
-        if undone and (values[reading] > jitter or rise == reading - 1):
-            rises[rise:reading] = np.nan
-    later = np.flatnonzero(rises[reading + 1 :] > 0)
-    if len(later):
-        rise = reading + 1 + int(later[0])
-        leap = rises[rise] > _LEAP * greatest_depth(column.hours(np.array([rise])))[0]
-        if values[rise] >= before - jitter and (leap or rise - reading <= _DROPOUT):
-            rises[reading : rise + 1] = np.nan
-
-
-def _check_falls(
-    column: _Column,
-    rises: npt.NDArray[np.float64],
-    resets: list[int],
-    noise: list[int],
-    problems: Problems,
-) -> None:
-    falls = sorted(resets + noise)
-    n = len(column.rows)
-    if len(falls) >= _FEW and not (rises > 0).any():
-        column.report(
-            problems,
-            falls[0],
-            found=f"readings that only fall, {len(falls)} times, first {column.said(falls[0])}",
-            expected="readings that rise with the rain",
-            remedy="correct layout, or the column: a depth to water or a draining store is no counter",
-        )
-    elif noise or len(falls) > _FEW + _OFTEN * n:
-        shown = noise[0] if noise else falls[0]
-        greatest = max(float(column.values[k - 1] - column.values[k]) for k in (noise or falls))
-        column.report(
-            problems,
-            shown,
-            found=f"readings that fall {len(falls)} times among {n}, such as {column.said(shown)}",
-            expected="falls within the jitter, to the start after a reset, or past rollover",
-            remedy=f"declare jitter where they are noise (they fall by up to {greatest:g} mm), or rollover, or correct "
-            "the readings",
-        )
-
-
-def _check_rises(column: _Column, rises: npt.NDArray[np.float64], problems: Problems) -> None:
-    later = np.arange(1, len(rises))
-    most = np.full(len(rises), np.inf)
-    most[1:] = greatest_depth(column.hours(later))
-    beyond = np.flatnonzero(rises > most)
-    if len(beyond):
-        first = int(beyond[0])
-        more = f", and {len(beyond) - 1} more like it" if len(beyond) > 1 else ""
-        column.report(
-            problems,
-            first,
-            found=f"a rise of {rises[first]:g} mm until {column.record.ends[column.rows[first]]}{more}",
-            expected=f"at most {most[first]:.0f} mm, which hardly ever fell in such a time",
-            remedy="declare missing the readings that are none, or correct unit",
+def _check_time(readings: RainRecord, rules: CounterRules, file: str) -> None:
+    """Refuse a reset at a time at which no step ends: nothing would say what fell before it and what after."""
+    if rules.reset is None:
+        return
+    step = parse_interval(readings.step)
+    phase = int(readings.ends[0].astype(np.int64)) % DAY
+    if step.seconds is None or DAY % step.seconds or (rules.reset - phase) % step.seconds:
+        raise JobError(
+            Problem(
+                item="reset",
+                found=f"'{clock_name(rules.reset)[1:]}'",
+                expected=f"a time of day at which the counters are read, such as {clock_name(phase)[1:]}"
+                if step.seconds is not None and DAY % step.seconds == 0
+                else f"none, as readings of every {step.label} are not taken at the same times every day",
+                remedy="correct it, or leave it out",
+                file=file,
+            )
         )
 
 
 def _put(
-    column: _Column, rises: npt.NDArray[np.float64], depth: npt.NDArray[np.float64], status: npt.NDArray[np.uint8]
+    column: CounterColumn,
+    rises: npt.NDArray[np.float64],
+    depth: npt.NDArray[np.float64],
+    status: npt.NDArray[np.uint8],
 ) -> list[KnownTotal]:
     """Write a gauge's depths and statuses into the steps between readings; return its totals over several steps."""
     rows, record = column.rows, column.record
-    marks = record.status[rows, column.place]
+    marks = np.where(column.anew, Status.ZERO, record.status[rows, column.place])
     kind = np.where(rises > 0, Status.OBSERVED, Status.ZERO)
     for mark in (Status.ADJUSTED, Status.ESTIMATED):
         marked = marks == mark

@@ -2,21 +2,19 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import JobError, Problem, Problems
+from basinrain.errors import Problems
 from basinrain.notes import Note
+from basinrain.reading.counter_checks import check_falls, check_reset, check_rises, notes_of
 from basinrain.reading.counter_column import CounterColumn
+from basinrain.reading.counter_rules import LEAST, CounterRules, Falls
 from basinrain.reading.depths import greatest_depth
 
-__all__ = ["LEAST", "CounterRules", "Falls", "depth_rises"]
-
-LEAST: Final = 1e-6
-"""mm; differences below it are of the arithmetic, not of the gauge."""
+__all__ = ["depth_rises"]
 
 _RESET: Final = 0.5
 """A reset takes away at least this share of the reading."""
@@ -30,53 +28,6 @@ _LEAST_LEAP: Final = 30.0
 
 _FARTHEST: Final = 1000
 """So many readings are looked through for the end of a leap."""
-
-
-@dataclass(frozen=True, kw_only=True)
-class CounterRules:
-    """What the readings of a counter can do beside rising.
-
-    Parameters
-    ----------
-    rollover
-        mm at which the counter starts again from 0; None: it does not.
-    jitter
-        mm by which a reading can fall without meaning, from noise or evaporation.
-    reset
-        Seconds after midnight at which the counter is set to 0, right after its reading at that time; None: it is not
-        known when.
-
-    Raises
-    ------
-    JobError
-        The jitter is not below half the rollover value.
-    """
-
-    rollover: float | None = None
-    jitter: float = 0.0
-    reset: int | None = None
-
-    def __post_init__(self) -> None:
-        if self.rollover is not None and self.jitter >= self.rollover / 2:
-            raise JobError(
-                Problem(item="jitter", found="it as large as half of rollover or more", expected="a smaller jitter")
-            )
-
-    @property
-    def noise(self) -> float:
-        """The greatest fall in mm that means nothing."""
-        return self.jitter + LEAST
-
-
-@dataclass
-class Falls:
-    """What the falls of a column were taken for: positions of readings, those of resets with the highest before."""
-
-    resets: list[tuple[int, float]] = field(default_factory=list)
-    noise: list[int] = field(default_factory=list)
-    rollovers: list[int] = field(default_factory=list)
-    doubtful: list[int] = field(default_factory=list)
-    """Resets that may as well be faulty readings."""
 
 
 def depth_rises(
@@ -102,9 +53,6 @@ def depth_rises(
     rises : array of float, shape (n_readings,)
         mm; NaN where it is not known, and where the counter was set to 0.
     """
-    # The checks import the rules of this module.
-    from basinrain.reading.counter_checks import check_falls, check_reset, check_rises, notes_of  # noqa: PLC0415
-
     values = column.values
     if rules.rollover is not None and (values > rules.rollover + LEAST).any():
         first = int(np.argmax(values > rules.rollover + LEAST))

@@ -16,13 +16,19 @@ from basinrain.reading.files import read_bytes
 from basinrain.reading.ghcn_csv import csv_cells
 from basinrain.reading.ghcn_days import block_of_days
 from basinrain.reading.ghcn_dly import dly_cells
+from basinrain.reading.ghcn_hours import ObservationHours
 from basinrain.reading.stamps import StampRules
 
 __all__ = ["read_ghcn"]
 
 
 def read_ghcn(
-    path: Path, *, layout: Literal["ghcn-dly", "ghcn-csv"], stamps: StampRules, problems: Problems
+    path: Path,
+    *,
+    layout: Literal["ghcn-dly", "ghcn-csv"],
+    stamps: StampRules,
+    problems: Problems,
+    hours: ObservationHours | None = None,
 ) -> Block | None:
     r"""Read the precipitation of one GHCN-Daily file.
 
@@ -73,6 +79,8 @@ def read_ghcn(
     try:
         content = _content(path, file)
         cells = dly_cells(content, here) if layout == "ghcn-dly" else csv_cells(content, here)
+        if hours is not None:
+            hours.add(cells)
         return block_of_days(cells, file=file, stamps=stamps, problems=here)
     except ReadError as error:
         problems.extend(error)

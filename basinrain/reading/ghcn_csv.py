@@ -19,7 +19,7 @@ from basinrain.reading.ghcn_days import ELEMENTS, YEARS, DayCells, LineFault, is
 __all__ = ["csv_cells"]
 
 _COLUMNS: Final = ("station", "date", "element", "value", "mflag", "qflag", "sflag", "time of observation")
-_READ: Final = ("station", "date", "value", "mflag", "qflag")
+_READ: Final = ("station", "date", "value", "mflag", "qflag", "time of observation")
 _WANTED: Final = {name.encode(): place for place, name in enumerate(ELEMENTS)}
 _EPOCH: Final = dt.date(1970, 1, 1).toordinal()
 _REMEDY: Final = "check that the file is a CSV file of GHCN-Daily by station, and correct the row"
@@ -84,6 +84,8 @@ def csv_cells(content: bytes, problems: Problems) -> DayCells:
     value = column("value", _whole, "a whole number")
     mflag = column("mflag", _flag, "one character or none")
     qflag = column("qflag", _flag, "one character or none")
+    codes, found = pd.factorize(frame["time of observation"])
+    observed = np.array([_seconds(str(text).strip()) for text in found], dtype=np.int64)[codes]
     ids = tuple(names)
     key = (gauge * len(ELEMENTS) + element) * (YEARS[1] * 366) + day
     twice = sound & pd.Series(np.where(sound, key, -1 - np.arange(len(key)))).duplicated().to_numpy()
@@ -109,6 +111,7 @@ def csv_cells(content: bytes, problems: Problems) -> DayCells:
         mflag=mflag[kept].astype(np.uint8),
         qflag=qflag[kept].astype(np.uint8),
         line=numbers[kept],
+        observed=observed[kept],
     )
 
 
@@ -149,6 +152,12 @@ def _day(text: str) -> int | None:
         return dt.date(int(text[:4]), int(text[4:6]), int(text[6:])).toordinal() - _EPOCH
     except ValueError:
         return None
+
+
+def _seconds(text: str) -> int:
+    """Return a time of observation in seconds after midnight; -1 where there is none, as no value rests on it."""
+    match = re.fullmatch(r"([01][0-9]|2[0-4])([0-5][0-9])", text)
+    return int(match[1]) * 3600 + int(match[2]) * 60 if match else -1
 
 
 def _whole(text: str) -> int | None:

@@ -100,6 +100,8 @@ class DayCells:
         Measurement and quality flag, the code of the character; blank is 32.
     line
         Line of the file, from 1.
+    observed
+        Seconds after midnight at which the value was read, -1 where the file does not say; None where it never does.
     """
 
     gauges: tuple[str, ...]
@@ -110,6 +112,7 @@ class DayCells:
     mflag: npt.NDArray[np.uint8]
     qflag: npt.NDArray[np.uint8]
     line: Ints
+    observed: Ints | None = None
 
 
 def block_of_days(cells: DayCells, *, file: str, stamps: StampRules, problems: Problems) -> Block:

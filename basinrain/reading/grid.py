@@ -9,6 +9,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.notes import Note
 from basinrain.rainfall import WITHOUT_DEPTH, KnownTotal, Status
 from basinrain.reading.intervals import DAY, Interval
 
@@ -28,6 +29,9 @@ _RANK: Final = (
     Status.SPREAD,
     Status.INFILLED,
 )
+_MANY: Final = 3
+"""So many accumulations in one total are told: their own times are lost."""
+
 _EMPTY: Final = np.array([int(status) for status in WITHOUT_DEPTH], dtype=np.uint8)
 
 
@@ -67,12 +71,15 @@ class OnGrid:
         Status ACCUMULATED without depth in the steps of ``totals``, ABSENT where the source does not reach.
     totals
         Depths known over several steps of the grid.
+    notes
+        ``total-not-used`` and ``totals-joined``, where accumulations do not fit the grid.
     """
 
     first: int
     depth: npt.NDArray[np.float64]
     status: npt.NDArray[np.uint8]
     totals: tuple[KnownTotal, ...]
+    notes: tuple[Note, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -226,8 +233,8 @@ def _place_finer(source: Source, grid: Grid) -> OnGrid:
     at = steps - first
     depth[at], status_on[at] = np.where(lacking, np.nan, sums), kinds
     parts = _Parts(sums, np.add.reduceat(np.isnan(fine_depth), edges, axis=0, dtype=np.int64), complete, steps)
-    totals = _spanning_totals(source, grid, spanning, parts, depth=depth, status=status_on, first=first)
-    return OnGrid(first, depth, status_on, totals)
+    totals, notes = _spanning_totals(source, grid, spanning, parts, depth=depth, status=status_on, first=first)
+    return OnGrid(first, depth, status_on, totals, notes)
 
 
 @dataclass(frozen=True, eq=False)
@@ -274,28 +281,54 @@ def _spanning_totals(
     depth: npt.NDArray[np.float64],
     status: npt.NDArray[np.uint8],
     first: int,
-) -> tuple[KnownTotal, ...]:
+) -> tuple[tuple[KnownTotal, ...], tuple[Note, ...]]:
     """Return totals over several grid steps: what accumulated, and the known values beside it in these steps.
 
-    Accumulations that meet in one step make one total. Where anything else in the steps is unknown, they stay missing.
+    Accumulations that meet in one step make one total: nothing says how much of each fell in the step. For the same
+    reason all of them stay missing where anything else in one of their steps is unknown.
     """
     number, _ = grid.numbers(source.starts)
-    chains: list[list[float]] = []  # gauge, first and last grid step, mm accumulated, fine steps accumulated
-    for g, begin, stop, mm in spanning:
-        low, high = int(number[begin]), int(number[stop - 1])
-        if chains and chains[-1][0] == g and chains[-1][2] >= low:
-            chains[-1][2:] = [high, chains[-1][3] + mm, chains[-1][4] + stop - begin]
+    chains: list[list[tuple[int, int, int, float]]] = []
+    for total in spanning:
+        g, begin, _, _ = total
+        last = chains[-1][-1] if chains else None
+        if last is not None and last[0] == g and number[last[2] - 1] >= number[begin]:
+            chains[-1].append(total)
         else:
-            chains.append([g, low, high, mm, stop - begin])
-    totals = []
-    for gauge, low_step, high_step, mm, count in chains:
-        g, low, high = int(gauge), int(low_step), int(high_step)
+            chains.append([total])
+    totals, notes = [], []
+    for chain in chains:
+        g, begin, stop = chain[0][0], chain[0][1], chain[-1][2]
+        low, high = int(number[begin]), int(number[stop - 1])
+        mm = sum(total[3] for total in chain)
         rows = slice(int(np.searchsorted(parts.steps, low)), int(np.searchsorted(parts.steps, high)) + 1)
-        if not parts.complete[rows].all() or parts.unknown[rows, g].sum() != count:
+        accumulated = sum(last - first_of for _, first_of, last, _ in chain)
+        if not parts.complete[rows].all() or parts.unknown[rows, g].sum() != accumulated:
+            fell = KnownTotal(source.gauges[g], source.starts[begin], source.ends[stop - 1], mm)
+            notes.append(_not_used(fell, grid.interval))
             continue
-        known = float(parts.sums[rows, g].sum()) + mm
         bounds = grid.bounds(np.array([low, high + 1]))
-        totals.append(KnownTotal(source.gauges[g], bounds[0], bounds[1], known))
+        totals.append(KnownTotal(source.gauges[g], bounds[0], bounds[1], float(parts.sums[rows, g].sum()) + mm))
         depth[low - first : high - first + 1, g] = np.nan
         status[low - first : high - first + 1, g] = Status.ACCUMULATED
-    return tuple(totals)
+        if len(chain) >= _MANY:
+            notes.append(_joined(totals[-1], len(chain), grid.interval))
+    return tuple(totals), tuple(notes)
+
+
+def _not_used(fell: KnownTotal, step: Interval) -> Note:
+    return Note(
+        code="total-not-used",
+        text=f"Gauge {fell.gauge}: {fell.depth:.6g} mm that accumulated from {fell.start} to {fell.end} are not used: "
+        f"other values in the {step.label} steps that they reach into are not known, so that these steps are missing.",
+        gauge=fell.gauge,
+    )
+
+
+def _joined(total: KnownTotal, n: int, step: Interval) -> Note:
+    return Note(
+        code="totals-joined",
+        text=f"Gauge {total.gauge}: {n} accumulations meet within steps of {step.label}, and are one total of "
+        f"{total.depth:.6g} mm from {total.start} to {total.end}; a shorter common step would keep them apart.",
+        gauge=total.gauge,
+    )

@@ -8,7 +8,7 @@ from dataclasses import replace
 
 from basinrain.errors import JobError, Problems
 
-__all__ = ["of_file", "option_problems"]
+__all__ = ["of_file", "of_source", "option_problems"]
 
 
 @contextmanager
@@ -60,3 +60,31 @@ did you mean 'us-ft'?
     with option_problems(problems, file=file):
         yield
     problems.raise_as(JobError)
+
+
+@contextmanager
+def of_source(number: int, name: str) -> Iterator[None]:
+    """Name the table of the job in an option's problem, in place of the file that was read with the option.
+
+    Parameters
+    ----------
+    number
+        The ``[[rainfall]]`` table, from 1.
+    name
+        Its file, as the job names it.
+
+    Examples
+    --------
+    >>> from basinrain.errors import Problem
+    >>> with of_source(2, "daily.csv"):
+    ...     raise JobError(Problem(item="read_hour", found="'25'", expected="a time of day", file="/jobs/daily.csv"))
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.JobError: [[rainfall]] no. 2 (daily.csv) read_hour: found '25'; expected a time of day
+    """
+    try:
+        yield
+    except JobError as error:
+        head = f"[[rainfall]] no. {number} ({name})"
+        told = [replace(problem, file="", item=f"{head} {problem.item}") for problem in error.problems]
+        raise JobError(told, unlisted=error.unlisted) from None

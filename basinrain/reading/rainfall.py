@@ -3,21 +3,25 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import Literal, Protocol
 
 from basinrain.errors import JobError, Problems, ReadError
 from basinrain.layouts import GHCN, GHCN_UNIT
+from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 from basinrain.reading.axis import join_blocks
 from basinrain.reading.blocks import Block, problems_of
-from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval
+from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval, time_of_day
 from basinrain.reading.clocks import parse_zone
-from basinrain.reading.counter import CounterRules, counter_depths, read_counter
+from basinrain.reading.counter import counter_depths, read_counter
+from basinrain.reading.counter_rules import CounterRules
 from basinrain.reading.delimited import DelimitedTable, read_delimited
 from basinrain.reading.depths import DepthRules, depth_rules
 from basinrain.reading.files import report_repeated
 from basinrain.reading.ghcn import read_ghcn
+from basinrain.reading.ghcn_hours import ObservationHours
 from basinrain.reading.long import read_long
 from basinrain.reading.options import of_file, option_problems
 from basinrain.reading.stamps import StampRules, read_stamps
@@ -49,7 +53,7 @@ def read_rainfall(
     end: str | None = None,
     rollover: float | None = None,
     jitter: float = 0.0,
-    reset: Literal["unknown", "at-reading"] = "unknown",
+    reset: str | int | None = None,
     columns: Mapping[str, str] | None = None,
 ) -> RainRecord:
     r"""Read the files of one rainfall source.
@@ -92,21 +96,25 @@ def read_rainfall(
         Depth of one tip in the unit; needed where tips have no depth column, and only then.
     start, end
         The period ``(start, end]`` over which all loggers of a source of tips ran, ISO 8601: there, silence is zero. A
-        bare date or month names that whole day or month. None: from every gauge's first row, until its last.
+        bare date or month names that whole day or month. None: from every gauge's first row, until its last. Without
+        both, what lies between two files of a gauge is not known.
     rollover
         Reading, in the unit, at which a counter starts again from 0.
     jitter
         Depth, in the unit, by which a counter may fall without meaning.
     reset
-        ``"at-reading"``: a counter is set to 0 just after a reading, so that the next one is what fell since; else that
-        is not known.
+        Time of day, ``"00:00"``, in the record's clock, at which a counter is set to 0 right after its reading, so that
+        the next one is what fell since, lower or not; None: not known.
     columns
         Which column holds what, by ``time``, ``gauge``, ``depth``, ``flag``, ``steps``, ``storm``.
 
     Returns
     -------
     RainRecord
-        On a regular axis without gaps; depth in mm.
+        On a regular axis without gaps; depth in mm. Its ``notes`` say what the falls of counters were taken for
+        (``counter-reset``, ``counter-rollover``, ``counter-doubtful``, ``counter-leap``), where the log of a tipping
+        bucket does not show that it ran (``log-gap``, ``long-silence``, ``run-not-declared``), and that the times of
+        observation of a GHCN-Daily file are not those declared (``observation-hours``).
 
     Raises
     ------
@@ -148,18 +156,20 @@ def read_rainfall(
         "end": end,
         "rollover": rollover,
         "jitter": jitter or None,
-        "reset": None if reset == "unknown" else reset,
+        "reset": reset,
         "columns": columns or None,
     }
     check_choices(layout, given, problems)
     if not paths:
         problems.add(item="files", found="none", expected="at least one file")
     check_numbers(problems, above={"tip": tip, "rollover": rollover}, least={"jitter": jitter})
-    step, hour = None, None
+    step, hour, anew = None, None, None
     with option_problems(problems, file=first):
         step = source_interval(interval, layout)
     with option_problems(problems, file=first):
         hour = reading_hour(read_hour, date_means, step)
+    with option_problems(problems, file=first):
+        anew = None if reset is None else time_of_day(reset, item="reset")
     with option_problems(problems, file=first):
         _ = None if timezone is None else parse_zone(timezone)
 
@@ -195,23 +205,24 @@ def read_rainfall(
     )
     with of_file(first):
         tips = TipRules(interval=step, tip=_in_mm(tip, depths), start=start, end=end) if layout == "tips" else None
-        counter = CounterRules(
-            rollover=_in_mm(rollover, depths), jitter=jitter * depths.factor, reset_at_reading=reset == "at-reading"
-        )
+        counter = CounterRules(rollover=_in_mm(rollover, depths), jitter=jitter * depths.factor, reset=anew)
+    notes: list[Note] = []
     if layout == "ghcn-dly" or layout == "ghcn-csv":  # noqa: PLR1714 - a type checker follows this, not a set
-        blocks, zone = _read_ghcn(paths, layout, stamps, faults)
+        blocks, zone = _read_ghcn(paths, layout, stamps, faults, notes)
     else:
         tables = _tables(paths, faults)
         if tips is not None:
-            blocks, zone = read_tips(tables, depths, stamps, tips, columns=columns or {}, problems=faults)
+            blocks, zone = read_tips(tables, depths, stamps, tips, columns=columns or {}, problems=faults, notes=notes)
         else:
             read = {"wide": read_wide, "long": read_long, "counter": read_counter}[layout]
             blocks, zone = _read_blocks(read, tables, depths, stamps, columns=columns or {}, problems=faults)
     faults.raise_as(ReadError)
     # The days that a GHCN-Daily file leaves out are missing, by its format.
-    record = join_blocks(blocks, step, zone=zone, gaps="missing" if layout in GHCN else gaps)
+    joined = join_blocks(blocks, step, zone=zone, gaps="missing" if layout in GHCN else gaps)
+    record = replace(joined, notes=tuple(notes))
     if layout == "counter":
-        return counter_depths(record, counter, file=first if len(paths) == 1 else "")
+        with of_file(first):
+            return counter_depths(record, counter, file=first if len(paths) == 1 else "")
     return record
 
 
@@ -257,9 +268,15 @@ def _read_blocks(
 
 
 def _read_ghcn(
-    paths: Sequence[Path], layout: Literal["ghcn-dly", "ghcn-csv"], stamps: StampRules, problems: Problems
+    paths: Sequence[Path],
+    layout: Literal["ghcn-dly", "ghcn-csv"],
+    stamps: StampRules,
+    problems: Problems,
+    notes: list[Note],
 ) -> tuple[list[Block], str]:
-    read = [read_ghcn(path, layout=layout, stamps=stamps, problems=problems) for path in paths]
+    hours = ObservationHours()
+    read = [read_ghcn(path, layout=layout, stamps=stamps, problems=problems, hours=hours) for path in paths]
+    notes += hours.notes(stamps)
     blocks = [block for block in read if block is not None]
     # Dates have no clock of their own, so that the declared one is the record's.
     days = [str(block.ends[0])[:10] for block in blocks]

@@ -32,6 +32,7 @@ def bring_to_step(
     common: str | None = None,
     storm_times: Mapping[str, tuple[np.datetime64, np.datetime64]] | None = None,
     exclude: Collection[str] = (),
+    names: Sequence[str] = (),
 ) -> tuple[RainRecord, tuple[Note, ...]]:
     """Return the one record of all sources, at the common step.
 
@@ -48,6 +49,8 @@ def bring_to_step(
         beside sources with times.
     exclude
         Ids of gauges that are left out, as if the sources did not have them; a source of none but these counts as none.
+    names
+        What messages call each source besides its number, such as its file; none by default.
 
     Returns
     -------
@@ -58,6 +61,7 @@ def bring_to_step(
         (:func:`basinrain.spreading.spread_totals`); they stand in ``totals``. Outside a gauge's time of service nothing
         counts. Totals-only sources alone give a record of storm totals.
     notes : tuple of Note
+        The notes of the records, those of gauges that are left out excepted; ``total-not-used``, ``totals-joined``,
         ``value-out-of-service``, ``mixed-reading-hours``, ``spread-evenly``.
 
     Raises
@@ -88,11 +92,13 @@ def bring_to_step(
         problems.raise_as(JobError)
     used = without_gauges(dict(enumerate(records, 1)), exclude)
     check_membership(list(used.values()), network)
+    remarks = [note for record in used.values() for note in record.notes if note.gauge not in exclude]
+    labels = {number: _name(number, record, names) for number, record in used.items()}
     timed = {number: record for number, record in used.items() if record.step != "storm"}
     if not timed:
-        return merge_storm_totals(used, network), ()
-    zone = _one_clock(timed)
-    sources = _sources(used, zone, storm_times)
+        return merge_storm_totals(used, network), tuple(remarks)
+    zone = _one_clock(timed, labels)
+    sources = _sources(used, labels, zone, storm_times)
     step = parse_interval(common, item="[step] common") if common is not None else _finest(sources)
     grid = Grid(step, _phase(sources, step))
     _check_steps(sources, grid)
@@ -120,14 +126,16 @@ def bring_to_step(
         recorders=recorders,
     )
     record, evenly = spread_totals(record, network, totals)
-    return record, (*notes, *mixed, *evenly)
+    remarks += [note for part in placed for note in part.notes]
+    return record, (*remarks, *notes, *mixed, *evenly)
 
 
-def _name(number: int, record: RainRecord) -> str:
-    return f"source {number} ({record.step})"
+def _name(number: int, record: RainRecord, names: Sequence[str]) -> str:
+    beside = f", {names[number - 1]}" if names else ""
+    return f"source {number} ({record.step}{beside})"
 
 
-def _one_clock(timed: Mapping[int, RainRecord]) -> str:
+def _one_clock(timed: Mapping[int, RainRecord], labels: Mapping[int, str]) -> str:
     first = next(iter(timed))
     zone = timed[first].zone
     problems = Problems()
@@ -135,8 +143,7 @@ def _one_clock(timed: Mapping[int, RainRecord]) -> str:
         if bool(record.zone) != bool(zone):
             problems.add(
                 item="time zones",
-                found=f"{_clock_of(zone)} for {_name(first, timed[first])}, {_clock_of(record.zone)} for "
-                f"{_name(number, record)}",
+                found=f"{_clock_of(zone)} for {labels[first]}, {_clock_of(record.zone)} for {labels[number]}",
                 expected="a zone for every source, or for none",
                 remedy="declare timezone for each",
             )
@@ -150,6 +157,7 @@ def _clock_of(zone: str) -> str:
 
 def _sources(
     records: Mapping[int, RainRecord],
+    labels: Mapping[int, str],
     zone: str,
     storm_times: Mapping[str, tuple[np.datetime64, np.datetime64]] | None,
 ) -> list[Source]:
@@ -157,7 +165,7 @@ def _sources(
     sources = []
     problems = Problems()
     for number, record in records.items():
-        name = _name(number, record)
+        name = labels[number]
         if record.step == "storm":
             starts, ends = storm_bounds(record, storm_times or {}, name, problems)
             order = np.argsort(ends, kind="stable")

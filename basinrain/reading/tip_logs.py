@@ -5,7 +5,7 @@ from __future__ import annotations
 import itertools
 import re
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Final
 
@@ -44,12 +44,15 @@ class TipLog:
         mm; NaN where recording stops.
     lines : array of int, shape (n_rows,)
         Lines of the file.
+    joints : array of int, shape (n_files - 1,)
+        The first row of every file but the first.
     """
 
     file: str
     seconds: npt.NDArray[np.int64]
     depth: npt.NDArray[np.float64]
     lines: npt.NDArray[np.int64]
+    joints: npt.NDArray[np.int64] = field(default_factory=lambda: np.zeros(0, dtype=np.int64))
 
 
 def read_logs(
@@ -191,8 +194,8 @@ def _is_orderly(
         problems.add(
             item=f"gauge {gauge}",
             found=f"'{times.iloc[rows[place]]}' after a later time{more}",
-            expected="tips in order of time, each once",
-            remedy="sort the rows by time, and remove those that stand twice",
+            expected="tips in order of time",
+            remedy="sort the rows by time; rows of the same time are tips of their own, and stay",
             line=int(log.lines[place]),
             gauge=gauge,
             time=str(times.iloc[rows[place]]),
@@ -219,8 +222,9 @@ def join_logs(gauge: str, logs: list[TipLog], problems: Problems) -> TipLog:
     --------
     >>> one = TipLog("may.csv", np.array([60, 90]), np.array([0.2, 0.2]), np.array([2, 3]))
     >>> two = TipLog("june.csv", np.array([150]), np.array([0.2]), np.array([2]))
-    >>> join_logs("R07", [two, one], Problems()).seconds
-    array([ 60,  90, 150])
+    >>> log = join_logs("R07", [two, one], Problems())
+    >>> log.seconds, log.joints
+    (array([ 60,  90, 150]), array([2]))
     """
     ordered = sorted(logs, key=lambda log: (int(log.seconds[0]), int(log.seconds[-1])))
     for earlier, later in itertools.pairwise(ordered):
@@ -243,6 +247,7 @@ def join_logs(gauge: str, logs: list[TipLog], problems: Problems) -> TipLog:
         np.concatenate([log.seconds for log in ordered]),
         np.concatenate([log.depth for log in ordered]),
         np.concatenate([log.lines for log in ordered]),
+        np.cumsum([len(log.seconds) for log in ordered[:-1]]),
     )
 
 

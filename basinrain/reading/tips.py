@@ -1,8 +1,8 @@
 """Logs of tipping-bucket gauges: the times of the tips become depths per step.
 
 Silence is no rain, but only while the logger ran; a log cannot tell dry weather from a dead battery. So a gauge is
-taken to have run from its first row to its last, or over the period that the source declares, save after a row that
-says that recording stopped. Everything else is missing, not zero.
+taken to have run from the first row of a file to its last, or over the period that the source declares, save after a
+row that says that recording stopped, and over no silence of more than a year. Everything else is missing, not zero.
 """
 
 from __future__ import annotations
@@ -10,11 +10,13 @@ from __future__ import annotations
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import JobError, Problem, Problems
+from basinrain.notes import Note
 from basinrain.rainfall import Status
 from basinrain.reading.axis import check_length
 from basinrain.reading.blocks import Block, problems_of
@@ -26,6 +28,11 @@ from basinrain.reading.stamps import StampRules, read_stamps
 from basinrain.reading.tip_logs import TipLog, join_logs, moment, read_logs
 
 __all__ = ["TipRules", "read_tips"]
+
+_LONGEST_SILENCE: Final = 366 * DAY
+"""s; no rain for so long is presumed to be a clock or a logger that failed."""
+
+_LISTED: Final = 3
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -81,6 +88,7 @@ def read_tips(
     *,
     columns: Mapping[str, str],
     problems: Problems,
+    notes: list[Note],
 ) -> tuple[list[Block], str]:
     """Read the logs of a source: rows of gauge, time and depth, one a tip.
 
@@ -89,7 +97,8 @@ def read_tips(
     test does. A row without a depth (a blank cell or a missing code) says that recording stopped: from there to the
     gauge's next row nothing is known, and steps that reach into that time are missing as a whole. The steps of a
     gauge's first and last row count as recorded; before and after them the gauge is missing, unless ``start`` and
-    ``end`` say that its logger ran.
+    ``end`` say that its logger ran. So it is between the steps of the last row of a file and of the first one of the
+    next, and between rows that stand more than 366 days apart, unless both ``start`` and ``end`` are declared.
 
     Parameters
     ----------
@@ -104,6 +113,8 @@ def read_tips(
     problems
         Takes what is wrong with the files: rows of a gauge that are not in order of time, files of a gauge that overlap
         in time, every time of a gauge twice, rows outside the declared period.
+    notes
+        Takes ``log-gap`` and ``long-silence`` for what is missing between rows of a gauge, and ``run-not-declared``.
 
     Returns
     -------
@@ -119,7 +130,9 @@ def read_tips(
     >>> times = ["2031-05-04 10:00:00", "2031-05-04 10:04:59", "2031-05-04 10:05:00", "2031-05-04 10:12:00"]
     >>> table = DelimitedTable("R07.csv", ("time",), pd.DataFrame({"time": times}), np.arange(2, 6), ".")
     >>> rules = TipRules(interval=five, tip=0.2)
-    >>> [block], zone = read_tips([table], depths, StampRules(interval=five), rules, columns={}, problems=Problems())
+    >>> [block], zone = read_tips(
+    ...     [table], depths, StampRules(interval=five), rules, columns={}, problems=Problems(), notes=[]
+    ... )
     >>> block.gauges, block.depth[:, 0], str(block.ends[0])
     (('R07',), array([0.2, 0.4, 0. , 0.2]), '2031-05-04T10:00:00')
     """
@@ -148,6 +161,10 @@ def read_tips(
     if len(problems) > before:
         return [], zone or ""
     steps = {gauge: _binned(log, rules, start, end) for gauge, log in joined.items()}
+    if start is None or end is None:
+        notes.append(_NOT_DECLARED)
+        for gauge, log in joined.items():
+            notes += _take_out_silence(gauge, log, steps[gauge], step)
     first = min(part.first for part in steps.values())
     last = max(part.first + len(part.depth) for part in steps.values()) - 1
     depth = np.full((last - first + 1, len(steps)), np.nan)
@@ -158,6 +175,14 @@ def read_tips(
     file = files[0] if len(files) == 1 else ""
     lines = np.zeros(len(ends), dtype=np.int64)
     return [Block(file, tuple(steps), ends, lines, depth, status.astype(np.uint8), None, {})], zone or ""
+
+
+_NOT_DECLARED: Final = Note(
+    code="run-not-declared",
+    text="Nothing says how long the loggers of tips ran before their first row and after their last. The steps of "
+    "these rows count as recorded; at a longer common step they are missing. Give start and end where they are known.",
+    level="info",
+)
 
 
 def _period(rules: TipRules, stamps: StampRules, zone: str, file: str) -> tuple[int | None, int | None]:
@@ -217,6 +242,47 @@ def _check_period(gauge: str, log: TipLog, start: int | None, end: int | None, p
             gauge=gauge,
             time=moment(log.seconds[rows[0]]),
         )
+
+
+def _take_out_silence(gauge: str, log: TipLog, part: _Steps, step: int) -> list[Note]:
+    """Make missing, in place, the steps between rows of which nothing shows that the logger ran."""
+    number = -(-log.seconds // step)
+    first_of_file = np.zeros(len(number), dtype=bool)
+    first_of_file[log.joints] = True
+    silence = np.diff(log.seconds, prepend=log.seconds[0])
+    # The steps of both rows are known from these rows; where recording had stopped, the rest is missing already.
+    between = (np.diff(number, prepend=number[0]) > 1) & ~np.isnan(np.r_[np.nan, log.depth[:-1]])
+    long = between & (silence > _LONGEST_SILENCE)
+    joint = between & first_of_file & ~long
+    for row in np.flatnonzero(long | joint):
+        part.depth[number[row - 1] + 1 - part.first : number[row] - part.first] = np.nan
+    notes = []
+    if joint.any():
+        notes.append(
+            Note(
+                code="log-gap",
+                text=f"Gauge {gauge}: nothing shows that the logger ran between its files, {_stretches(log, joint)}; "
+                "this is missing, not dry. If it ran, give start and end.",
+                gauge=gauge,
+            )
+        )
+    if long.any():
+        notes.append(
+            Note(
+                code="long-silence",
+                text=f"Gauge {gauge}: rows that stand more than 366 days apart, {_stretches(log, long)}; so long a "
+                "silence is missing, not dry. Remove a row whose clock was wrong; if the logger ran, give start and "
+                "end.",
+                gauge=gauge,
+            )
+        )
+    return notes
+
+
+def _stretches(log: TipLog, where: npt.NDArray[np.bool_]) -> str:
+    rows = np.flatnonzero(where).tolist()
+    listed = ", ".join(f"{moment(log.seconds[row - 1])} to {moment(log.seconds[row])}" for row in rows[:_LISTED])
+    return listed + (f", and {len(rows) - _LISTED} more" if len(rows) > _LISTED else "")
 
 
 def _binned(log: TipLog, rules: TipRules, start: int | None, end: int | None) -> _Steps:

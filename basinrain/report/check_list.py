@@ -7,8 +7,14 @@ from typing import Final
 from basinrain.report.table import Table
 from basinrain.screening import CHECKS, Screening
 from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS
+from basinrain.screening.double_mass import PERSISTENCE
 
 __all__ = ["about", "check_tables"]
+
+_LIMITS: Final = {
+    DOUBLE_MASS_BREAK: f"{2 * PERSISTENCE} years, {PERSISTENCE} on either side of the break; probability 0.01.",
+    INHOMOGENEOUS: "20 years; two or more tests that reject at 1 %, doubtful; three or four, suspect.",
+}
 
 _CONSISTENCY: Final = {
     DOUBLE_MASS_BREAK: (
@@ -32,6 +38,10 @@ def about(name: str) -> str:
     return CHECKS[name].about if name in CHECKS else _CONSISTENCY.get(name, "")
 
 
+def _limits(name: str) -> str:
+    return CHECKS[name].limits if name in CHECKS else _LIMITS.get(name, "")
+
+
 def check_tables(screening: Screening) -> list[Table]:
     """Return the checks that were made with what they look for, and those that could not be, with why."""
     found: dict[str, int] = {}
@@ -42,10 +52,10 @@ def check_tables(screening: Screening) -> list[Table]:
         tables.append(
             Table(
                 caption="Checks made",
-                heads=("check", "what it looks for", "findings"),
-                align="ttn",
-                rows=[(name, about(name), str(found.get(name, 0))) for name in screening.checks_run],
-                notes=("How each works, its thresholds and how often it is right: docs/methods.md.",),
+                heads=("check", "what it looks for", "findings", "thresholds"),
+                align="ttnt",
+                rows=[(name, about(name), str(found.get(name, 0)), _limits(name)) for name in screening.checks_run],
+                notes=("How each works: docs/methods.md; how often it is right: docs/verification.md.",),
             )
         )
     if screening.checks_skipped:

@@ -6,7 +6,7 @@ from typing import Final
 
 import numpy as np
 
-from basinrain.infill import Completed
+from basinrain.infill import Completed, InfillOptions
 from basinrain.rainfall import Status
 from basinrain.report import comparison_list, completed_list, overview, provenance
 from basinrain.report.error_map_figure import error_map_picture
@@ -14,7 +14,7 @@ from basinrain.report.estimated_figure import estimated_picture
 from basinrain.report.fitness import fitness
 from basinrain.report.rendering import render_template
 from basinrain.report.scores_figure import scores_picture
-from basinrain.report.words import DASH, counted, percent_text
+from basinrain.report.words import counted, percent_text
 from basinrain.results import InfillRun
 
 __all__ = ["render_comparison"]
@@ -51,7 +51,7 @@ def render_comparison(run: InfillRun) -> str:
         run=run,
         caution=_CAUTION,
         reason=comparison.reason,
-        facts=[*comparison_list.comparison_facts(comparison), ("The job's method", _job_method(run))],
+        facts=[*comparison_list.comparison_facts(comparison), ("Infilled by", _infilled_by(run))],
         warnings=overview.note_groups(run.warnings),
         remarks=overview.note_groups(note for note in run.notes if note.level != "warning" and note.text not in told),
         pictures=[picture for picture in pictures if picture],
@@ -76,9 +76,9 @@ def render_comparison(run: InfillRun) -> str:
     )
 
 
-def _job_method(run: InfillRun) -> str:
-    named = str(run.settings.get("infill", {}).get("method", DASH))
-    return f"{named}, which takes the one above" if named == "leave-one-out" else named
+def _infilled_by(run: InfillRun) -> str:
+    settings = run.settings["infill"]
+    return InfillOptions(method=settings["method"], power=settings.get("power")).label
 
 
 def _filled(completed: Completed) -> str:

@@ -64,7 +64,7 @@ def double_mass_table(curves: Sequence[DoubleMass]) -> Table | None:
             )
         )
     notes = [
-        "Years: of 95 % or more of their days; sums are over the days that the gauge and three neighbours share.",
+        "Years: sums are over the days that the gauge and three neighbours share, 90 % or more of the year's.",
         "Fewest days: of the year with the fewest.",
         "Slopes: gauge over the mean of its neighbours, before and after the most likely break.",
         "Ratio: newer over older years, by which the older would be multiplied; the record is not changed by it.",
@@ -129,8 +129,8 @@ def homogeneity_table(tested: Sequence[Homogeneity]) -> Table | None:
         )
     notes = [
         "Statistic, and in brackets the critical value at 1 %; von Neumann's rejects below it, the others above.",
-        "Ratios: of annual totals to the neighbours' mean over the days that they share, 95 % or more of the year's.",
-        "Alone: the gauge's mean depths of a day, where it has no such neighbours.",
+        "Ratios: of annual totals to the neighbours' mean over the days that they share, 90 % or more of the year's.",
+        "Alone: the gauge's mean depths of a day, in years with 95 % of their days, where it has no such neighbours.",
         "Grade: none or one of the four rejects at 1 %, useful; two, doubtful; three or four, suspect.",
         "Grades after Wijngaard, Klein Tank and Können (2003). With fewer than 20 years there is none.",
     ]

@@ -18,7 +18,7 @@ def edit_table(rows: Sequence[Mapping[str, Any]], *, depth_unit: str) -> Table |
     Parameters
     ----------
     rows
-        As :func:`basinrain.screening.edits.edit_rows` gives them, depths in mm.
+        As :func:`basinrain.screening.apply_edits` gives them, depths in mm.
     depth_unit
         ``"mm"`` or ``"in"``.
     """

@@ -22,7 +22,7 @@ def needs_edit(finding: Finding) -> bool:
 
     Examples
     --------
-    >>> scale = Edit(gauge="A", action="scale", value=25.4, reason="inches", by="screening")
+    >>> scale = Edit(gauge="A", action="scale", value=25.4, reason="inches", by="J. Marrow", date="2031-06-01")
     >>> needs_edit(Finding(check="unit-mixup", gauge="A", evidence="Too little.", action="Scale it.", edit=scale))
     True
     >>> needs_edit(Finding(check="spatial-outlier", gauge="A", evidence="Too much.", action="Look at it."))
@@ -93,7 +93,7 @@ def edit_text(edit: Edit, record: RainRecord, *, depth_unit: str) -> str:
     --------
     >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
     >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[1.0], [2.0]], step="1h")
-    >>> edit = Edit(gauge="A", action="scale", value=0.1, reason="Ten times too much.", by="J. Marrow")
+    >>> edit = Edit(gauge="A", action="scale", value=0.1, reason="Too much.", by="J. Marrow", date="2031-06-01")
     >>> print(edit_text(edit, record, depth_unit="mm"))
     [[edit]]
     gauge = "A"
@@ -101,7 +101,7 @@ def edit_text(edit: Edit, record: RainRecord, *, depth_unit: str) -> str:
     to = 2031-05-04T02:00:00
     action = "scale"
     value = 0.1
-    reason = "Ten times too much."
+    reason = "Too much."
     by = ""
     date = ""
     """

@@ -14,6 +14,7 @@ from basinrain.infill.spans import span_starts
 from basinrain.rainfall import RainRecord
 
 __all__ = [
+    "COMPARED",
     "COMPLETE",
     "FEWEST_NEIGHBOURS",
     "Beside",
@@ -24,13 +25,18 @@ __all__ = [
 ]
 
 COMPLETE: Final = 0.95
-"""Share of a year's days that a year needs to count: all but eighteen of 365 (common practice)."""
+"""Share of a year's days with which it counts for a normal: there the rain of the days that are missing is lost, so
+that more of them than eighteen in 365 would make the year too dry (common practice)."""
+
+COMPARED: Final = 0.90
+"""Share of a year's days with which it counts beside the neighbours: both sums are over the same days, so that nothing
+is lost with the others, and years of breaks are left in records with gaps (measured: docs/verification.md)."""
 
 FEWEST_NEIGHBOURS: Final = 3
 """A mean of fewer gauges is no pattern: the fault of one of them would count for half of it."""
 
 _MOST_NEIGHBOURS: Final = 5
-_PRESENT: Final = 0.9
+_PRESENT: Final = 0.8
 """Share of a year's days on which a neighbour must report: less than of the gauge itself, since of five three will
 do."""
 _SHARES: Final = (0.8, 0.5, 0.0)
@@ -93,12 +99,17 @@ class CalendarYears:
 
     @cached_property
     def complete(self) -> npt.NDArray[np.bool_]:
-        """Whether the gauge has 95 % of the year's days, shape (n_years, n_gauges)."""
+        """Whether the gauge has 95 % of the year's days, as for a normal, shape (n_years, n_gauges)."""
         return self.covered >= COMPLETE * self.length[:, None]
 
     @cached_property
+    def compared(self) -> npt.NDArray[np.bool_]:
+        """Whether the gauge has 90 % of the year's days, as beside its neighbours, shape (n_years, n_gauges)."""
+        return self.covered >= COMPARED * self.length[:, None]
+
+    @cached_property
     def present(self) -> npt.NDArray[np.bool_]:
-        """Whether the gauge has 90 % of the year's days, as a neighbour must, shape (n_years, n_gauges)."""
+        """Whether the gauge has 80 % of the year's days, as a neighbour must, shape (n_years, n_gauges)."""
         return self.covered >= _PRESENT * self.length[:, None]
 
     @cached_property
@@ -116,7 +127,7 @@ class Beside:
     group : array of int
         Places of the neighbours in the network, the nearest first.
     totals, reference : array of float, shape (n_years,)
-        mm, sums of the gauge and of its neighbours' mean over the shared days; NaN where these are less than 95 % of
+        mm, sums of the gauge and of its neighbours' mean over the shared days; NaN where these are less than 90 % of
         the year.
     days : array of int, shape (n_years,)
         Days that they share.
@@ -153,8 +164,9 @@ def calendar_years(record: RainRecord) -> CalendarYears:
     -------
     CalendarYears
         A year is complete at a gauge that has its own value on 95 % of the year's days: 347 of 365. Of a record by
-        months that is all twelve, since the shortest is 7.7 % of a year; of one by weeks two may be missing. Storm
-        totals without times have no years.
+        months that is all twelve, since the shortest is 7.7 % of a year; of one by weeks two may be missing. Beside
+        neighbours 90 % will do: 329 days, eleven months, all but four or five weeks. Storm totals without times have no
+        years.
 
     Examples
     --------
@@ -218,10 +230,10 @@ def beside_neighbours(
     -------
     Beside or None
         Against three to five gauges; None where there are none such. They are taken nearest first. One is passed over
-        that never had rain, that has 90 % of the days in less than 80 % of the gauge's complete years, or that would
-        leave fewer than ten years in which all that are taken have as much. Where three are not found so, or less than
-        80 % of the gauge's years would count, 50 % will do, and then as few as ``at_least``. How days are shared:
-        :func:`_beside`.
+        that never had rain, that has 80 % of the days in less than 80 % of the years of which the gauge has 90 %, or
+        that would leave fewer than ten years in which all that are taken have as much. Where three are not found so, or
+        less than 80 % of the gauge's years would count, 50 % will do, and then as few as ``at_least``. How days are
+        shared: :func:`_beside`.
 
     Examples
     --------
@@ -235,7 +247,7 @@ def beside_neighbours(
     >>> beside_neighbours(years, network, 0, at_least=11, distances=network.distances()) is None
     True
     """
-    own = np.count_nonzero(years.complete[:, target])
+    own = np.count_nonzero(years.compared[:, target])
     order = network.nearest_first(distances[target])
     fit = np.nansum(years.depths, axis=0) > 0
     if trusted is not None:
@@ -254,8 +266,8 @@ def beside_neighbours(
 
 
 def _group(years: CalendarYears, target: int, order: npt.NDArray[np.int64], each: float, together: int) -> list[int]:
-    """Return the first gauges of the order, at most five, that are present in so many of the gauge's complete years."""
-    common = own = years.complete[:, target]
+    """Return the first gauges of the order, at most five, that are present in so many of the gauge's own years."""
+    common = own = years.compared[:, target]
     group: list[int] = []
     for gauge in order.tolist():
         there = years.present[:, gauge]
@@ -281,7 +293,7 @@ def _beside(years: CalendarYears, target: int, group: npt.NDArray[np.int64]) -> 
     shared = years.known[:, target] & (known.sum(axis=1) >= FEWEST_NEIGHBOURS) & (there > 0)
     reference = np.divide(depths.sum(axis=1) * levels.mean(), there, out=np.zeros(len(there)), where=shared)
     days = years.by_year(shared * years.days)
-    counts = days >= COMPLETE * years.length
+    counts = days >= COMPARED * years.length
     totals, beside = (
         np.where(counts, years.by_year(np.where(shared, daily, 0.0)), np.nan)
         for daily in (years.depths[:, target], reference)

@@ -11,7 +11,7 @@ import numpy.typing as npt
 from basinrain.gauges import GaugeNetwork
 from basinrain.rainfall import RainRecord
 from basinrain.screening.annual import (
-    COMPLETE,
+    COMPARED,
     FEWEST_NEIGHBOURS,
     Beside,
     CalendarYears,
@@ -36,7 +36,7 @@ DOUBLE_MASS_BREAK: Final = "double-mass-break"
 INHOMOGENEOUS: Final = "inhomogeneous"
 
 _YEARS: Final = {DOUBLE_MASS_BREAK: 2 * PERSISTENCE, INHOMOGENEOUS: 20}
-"""Complete years that each takes."""
+"""Years that each takes."""
 
 _LISTED: Final = 5
 
@@ -74,11 +74,11 @@ def consistency(record: RainRecord, network: GaugeNetwork) -> Consistency:
     -------
     Consistency
         The reference of a gauge is the mean of its three to five nearest neighbours with enough years in common (10 for
-        the curve, 20 for the tests). A year's totals of both are over the days that they share, 95 % or more of the
-        year's (:func:`basinrain.screening.annual.beside_neighbours`). A gauge with too few complete years for a curve,
-        or whose own curve breaks, is no neighbour to others: the clearest break is found first and its gauge left out
-        of all references, and so on until none is left. Homogeneity is tested on the ratios to the reference; where
-        there is none, on the gauge's mean depths of a day in its complete years.
+        the curve, 20 for the tests). A year's totals of both are over the days that they share, 90 % or more of the
+        year's (:func:`basinrain.screening.annual.beside_neighbours`). A gauge with too few years for a curve, or whose
+        own curve breaks, is no neighbour to others: the clearest break is found first and its gauge left out of all
+        references, and so on until none is left. Homogeneity is tested on the ratios to the reference; where there is
+        none, on the gauge's mean depths of a day in the years of which it has 95 % of the days.
 
     Examples
     --------
@@ -152,7 +152,7 @@ def _tests(
 ) -> dict[int, Homogeneity]:
     at_least = _YEARS[INHOMOGENEOUS]
     tested = {}
-    for target in np.flatnonzero(years.complete.sum(axis=0) >= at_least).tolist():
+    for target in np.flatnonzero(years.compared.sum(axis=0) >= at_least).tolist():
         beside = beside_neighbours(years, network, target, at_least=at_least, distances=distances, trusted=trusted)
         gauge = network.ids[target]
         if beside is None:
@@ -175,7 +175,7 @@ def _tests(
 
 def _judged(years: CalendarYears) -> npt.NDArray[np.bool_]:
     """Return which gauges have years enough for a curve of their own."""
-    return np.asarray(years.complete.sum(axis=0) >= _YEARS[DOUBLE_MASS_BREAK])
+    return np.asarray(years.compared.sum(axis=0) >= _YEARS[DOUBLE_MASS_BREAK])
 
 
 def _ids(network: GaugeNetwork, beside: Beside) -> tuple[str, ...]:
@@ -225,7 +225,7 @@ def _span(curve: DoubleMass, years: CalendarYears) -> str:
         named = ", ".join(map(str, left[:_LISTED])) + (
             f" and {len(left) - _LISTED} more" if len(left) > _LISTED else ""
         )
-        span += f" without {named}, of which they share less than {100 * COMPLETE:.0f} % of the days"
+        span += f" without {named}, of which they share less than {100 * COMPARED:.0f} % of the days"
     share = curve.days.sum() / years.length[np.isin(years.years, curve.years)].sum()
     if share < 1:
         # Cut, not rounded, so that some days missing are never told as 100 %.
@@ -258,15 +258,17 @@ def _probability(value: float) -> str:
 
 def _why(check: str, years: CalendarYears, gauges: list[int], trusted: npt.NDArray[np.bool_]) -> str:
     needed = _YEARS[check]
-    counts = years.complete.sum(axis=0)
+    counts = years.compared.sum(axis=0)
     short = [g for g in gauges if counts[g] < needed]
     alone = [g for g in gauges if counts[g] >= needed]
     parts = []
     if short:
         most = int(counts[short].max())
-        complete = f"{most or 'no'} complete calendar year{'' if most < 2 else 's'}"
         some = "at most " if len(short) > 1 and most else ""
-        parts.append(f"{_named(years, short)}: {some}{complete}; it takes {needed}")
+        parts.append(
+            f"{_named(years, short)}: {some}{most or 'no'} calendar year{'' if most < 2 else 's'} with "
+            f"{100 * COMPARED:.0f} % of the days; it takes {needed}"
+        )
     if alone and len(years.gauges) <= FEWEST_NEIGHBOURS:
         there = len(years.gauges) - 1
         parts.append(
@@ -277,7 +279,7 @@ def _why(check: str, years: CalendarYears, gauges: list[int], trusted: npt.NDArr
         without = f", not counting {_named(years, broken)} with a break of their own" if broken else ""
         parts.append(
             f"{_named(years, alone)}: fewer than {needed} years in which {FEWEST_NEIGHBOURS} neighbours report beside "
-            f"it on {100 * COMPLETE:.0f} % of the days{without}"
+            f"it on {100 * COMPARED:.0f} % of the days{without}"
         )
     return "; ".join(parts)
 

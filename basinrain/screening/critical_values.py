@@ -28,8 +28,9 @@ def critical_values(test: str, n: int) -> Mapping[float, float]:
         A test's name.
     n
         Values in the series. Between the lengths of the table they are interpolated linearly in n: Pettitt's K as
-        K/n^1.5, von Neumann's N as (2 - N) √n, which hardly vary, the others as they are. Beyond its longest, 100,
-        these quantities are held; below its shortest (10 for Buishand's tests, 20 for the others) there are none.
+        K/n^1.5, von Neumann's N as (2 - N) √n, which hardly vary, the others as they are. Beyond its longest, 300 (von
+        Neumann 100), these quantities are held; below its shortest (10 for Buishand's tests, 20 for the others) there
+        are none.
 
     Returns
     -------

@@ -16,7 +16,7 @@ from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.screening.editing import Outcome, carry_out
 
-__all__ = ["SUGGESTED", "Action", "Edit", "apply_edits", "edit_rows", "spread_edits"]
+__all__ = ["SUGGESTED", "Action", "Edit", "apply_edits", "spread_edits"]
 
 Action = Literal["reject", "set", "shift", "scale"]
 
@@ -37,8 +37,8 @@ class Edit:
     gauge
         The gauge's id.
     start, end
-        The stretch ``(start, end]`` in the record's clock; the steps that lie wholly in it are meant. NaT leaves that
-        side open: NaT in both is the gauge's whole record.
+        The stretch ``(start, end]`` in the record's clock; it takes whole steps, so that neither edge may lie within a
+        step that has a value. NaT leaves that side open: NaT in both is the gauge's whole record.
     action
         ``"reject"``: the values are no longer used. ``"set"``: the one step gets the depth ``value``. ``"shift"``: the
         values move by ``value`` in time. ``"scale"``: depths are multiplied by ``value``.
@@ -48,7 +48,7 @@ class Edit:
     reason, by
         Why, and who decided; neither may be empty, since an edit that nobody can explain cannot be defended.
     date
-        When it was decided, ``"2031-05-04"``; may be empty.
+        When it was decided, ``"2031-05-04"``; empty only in an edit that screening suggests, which nobody has decided.
     number
         Its place among the job's edits, from 1, for messages; 0 where it has none.
 
@@ -67,10 +67,11 @@ class Edit:
     ...     value=0.1,
     ...     reason="logger set to 0.1 mm, file in mm",
     ...     by="J. Marrow",
+    ...     date="2031-06-01",
     ... )
     >>> edit.item
     'edit (gauge W03)'
-    >>> Edit(gauge="W03", action="shift", reason="clock an hour slow", by="", number=2)
+    >>> Edit(gauge="W03", action="shift", reason="clock an hour slow", by="", date="2031-06-01", number=2)
     Traceback (most recent call last):
         ...
     basinrain.errors.JobError: [[edit]] 2 (gauge W03): value: found none; expected a duration such as "1h" (later) or \
@@ -110,8 +111,8 @@ class Edit:
             wrong("reason", "nothing", "why the values are changed")
         if not self.by.strip():
             wrong("by", "nothing", "who decided on it")
-        if self.date and not _is_date(self.date):
-            wrong("date", f"'{self.date}'", "a date such as 2031-05-04")
+        if not _is_date(self.date) and (self.date or self.by != SUGGESTED):
+            wrong("date", f"'{self.date}'" if self.date else "nothing", "a date such as 2031-05-04")
         problems.raise_as(JobError)
 
     @property
@@ -129,8 +130,10 @@ class Edit:
         return -length if match["sign"] == "-" else length
 
 
-def apply_edits(records: Sequence[RainRecord], edits: Sequence[Edit]) -> list[RainRecord]:
-    """Return the sources' records with the edits carried out.
+def apply_edits(
+    records: Sequence[RainRecord], edits: Sequence[Edit]
+) -> tuple[list[RainRecord], list[dict[str, str | float | int | None]]]:
+    """Return the sources' records with the edits carried out, and the edit log with what every edit did.
 
     Parameters
     ----------
@@ -143,63 +146,39 @@ def apply_edits(records: Sequence[RainRecord], edits: Sequence[Edit]) -> list[Ra
 
     Returns
     -------
-    list of RainRecord
+    records : list of RainRecord
         Rejected values have no depth and the status ``rejected``. What is set, shifted or scaled is ``adjusted``, but a
         zero stays a zero, and missing stays missing. Steps that a shift leaves are missing; where it reaches beyond the
-        record, steps are added. A total over several steps is rejected, shifted or scaled as a whole.
+        record, steps are added. A total over several steps is rejected, shifted or scaled as a whole. Storm totals
+        have no times: an edit without times is of all storms of its gauge.
+    rows : list of dict
+        One an edit, in their order: ``gauge``, ``from`` and ``to`` (empty where open), ``action``, ``value`` (mm, a
+        factor or a duration; None), ``reason``, ``by``, ``date``, ``steps_changed``, and the sum of the depths acted on
+        in mm, ``depth_before`` and ``depth_after``; None where nothing is known, as after a rejection.
 
     Raises
     ------
     JobError
         A gauge is in no source, an edit matches no step or no value, two edits of a gauge overlap, a step is to be set
         where there are several, a shift is no whole number of steps or ends on steps that have values of their own, a
-        total lies across the edge of an edit; all of it together.
+        total, or a step with a value, lies across the edge of an edit; all of it together.
 
     Examples
     --------
     >>> ends = np.datetime64("2031-05-04", "s") + np.arange(1, 5) * np.timedelta64(3600, "s")
     >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[2.0], [0.0], [4.0], [np.nan]], step="1h")
-    >>> edit = Edit(gauge="A", start=ends[0], end=ends[3], action="shift", value="1h", reason="slow clock", by="J. M.")
-    >>> edited = apply_edits([record], [edit])[0]
+    >>> log = {"reason": "slow clock", "by": "J. M.", "date": "2031-06-01"}
+    >>> edit = Edit(gauge="A", start=ends[0], end=ends[3], action="shift", value="1h", **log)
+    >>> (edited,), (row,) = apply_edits([record], [edit])
     >>> edited.depth[:, 0]
     array([ 2., nan,  0.,  4.])
     >>> record.depth[:, 0]
     array([ 2.,  0.,  4., nan])
-    """
-    return carry_out(records, _numbered(edits))[0]
-
-
-def edit_rows(records: Sequence[RainRecord], edits: Sequence[Edit]) -> list[dict[str, str | float | int | None]]:
-    """Return the edit log as rows of a table, with what every edit did.
-
-    Parameters
-    ----------
-    records, edits
-        As for :func:`apply_edits`: the records as read.
-
-    Returns
-    -------
-    list of dict
-        ``gauge``, ``from`` and ``to`` (empty where open), ``action``, ``value`` (mm, a factor or a duration; None),
-        ``reason``, ``by``, ``date``, ``steps_changed``, and the sum of the depths acted on in mm, ``depth_before`` and
-        ``depth_after``; None where nothing is known, as after a rejection.
-
-    Raises
-    ------
-    JobError
-        As :func:`apply_edits`.
-
-    Examples
-    --------
-    >>> ends = np.datetime64("2031-05-04", "s") + np.arange(1, 3) * np.timedelta64(3600, "s")
-    >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[2.0], [3.0]], step="1h")
-    >>> edit = Edit(gauge="A", action="scale", value=0.1, reason="wrong unit", by="J. M.", date="2031-06-01")
-    >>> row = edit_rows([record], [edit])[0]
     >>> row["steps_changed"], row["depth_before"], row["depth_after"]
-    (2, 5.0, 0.5)
+    (2, 4.0, 4.0)
     """
-    outcomes = carry_out(records, _numbered(edits))[1]
-    return [_row(edit, outcome) for edit, outcome in zip(edits, outcomes, strict=True)]
+    edited, outcomes = carry_out(records, _numbered(edits))
+    return edited, [_row(edit, outcome) for edit, outcome in zip(edits, outcomes, strict=True)]
 
 
 def spread_edits(record: RainRecord, edits: Sequence[Edit]) -> tuple[Note, ...]:
@@ -217,7 +196,8 @@ def spread_edits(record: RainRecord, edits: Sequence[Edit]) -> tuple[Note, ...]:
     >>> ends = np.datetime64("2031-05-04", "s") + np.arange(1, 3) * np.timedelta64(3600, "s")
     >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[2.0], [3.0]], step="1h")
     >>> record = replace(record, status=np.full((2, 1), np.uint8(Status.SPREAD)))
-    >>> edit = Edit(gauge="A", action="scale", value=0.1, reason="wrong unit", by="J. M.", number=1)
+    >>> log = {"reason": "wrong unit", "by": "J. M.", "date": "2031-06-01"}
+    >>> edit = Edit(gauge="A", action="scale", value=0.1, **log, number=1)
     >>> print(*spread_edits(record, [edit]))
     [[edit]] 1 (gauge A) changes totals over longer times than the step: their 2 steps of A read 'spread', not \
 'adjusted'.

@@ -188,7 +188,8 @@ def buishand_range(series: npt.ArrayLike) -> TestResult:
 def buishand_q(series: npt.ArrayLike) -> TestResult:
     """Return Buishand's test on the greatest cumulative deviation, Q/√n = max abs(S_k)/√n.
 
-    Buishand (1982), as for :func:`buishand_range`; critical values from memory, simulated within 0.016.
+    Buishand (1982), as for :func:`buishand_range`; critical values up to n = 100 from memory, simulated
+    within 0.016, beyond that simulated.
 
     Parameters
     ----------

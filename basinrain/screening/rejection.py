@@ -12,7 +12,7 @@ import numpy as np
 from basinrain.errors import JobError, Problems
 from basinrain.rainfall import RainRecord, Status
 from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS
-from basinrain.screening.findings import Finding
+from basinrain.screening.findings import Finding, State
 
 __all__ = ["apply_rejections", "rejected_findings", "settle_findings"]
 
@@ -39,14 +39,15 @@ def settle_findings(
     -------
     tuple of Finding
         In the same order, each ``"rejected"``, ``"accepted"`` or, where no entry names it, as it was. A finding whose
-        stretch lies wholly in what is rejected of its gauge is rejected with it, whatever else names it: its values are
-        gone.
+        stretch lies wholly in what is rejected of its gauge is rejected with it, also where an entry accepts it among
+        others: its values are gone.
 
     Raises
     ------
     JobError
-        An entry names no finding, a finding is both rejected and accepted, or one is to be rejected that has no values
-        of its own: about the network as a whole, or about years that do not go together; all of it together.
+        An entry names no finding, a finding is both rejected and accepted, an entry accepts only findings whose values
+        are gone, or a finding is to be rejected that has no values of its own: about the network as a whole, or about
+        years that do not go together; all of it together.
 
     Examples
     --------
@@ -94,11 +95,27 @@ finding or its leading words; the nearest: stuck-values W03, stuck-values W04
                 remedy=remedy,
                 gauge=findings[k].gauge,
             )
+    rejected = _with_rejected(findings, [k for k in named["reject"] if _unfit(findings[k]) is None])
+    for entry in dict.fromkeys(accept):
+        matched = [k for k, finding in enumerate(findings) if _names(entry, finding)]
+        # What is both rejected and accepted by name is told above.
+        if matched and not set(matched) & named["reject"].keys() and rejected.issuperset(matched):
+            only = f"'{findings[matched[0]].key}'" if len(matched) == 1 else f"{len(matched)} findings"
+            problems.add(
+                item=f"[screening] accept '{entry}'",
+                found=f"{only} wholly within what other findings reject of the gauge",
+                expected="a finding whose values are kept",
+                remedy="remove the entry, or reject less by naming gauge and time",
+                gauge=findings[matched[0]].gauge,
+            )
     problems.raise_as(JobError)
-    settled = [
-        replace(finding, state="accepted") if k in named["accept"] else finding for k, finding in enumerate(findings)
-    ]
-    return _with_rejected(settled, named["reject"])
+
+    def state(k: int) -> State:
+        if k in rejected:
+            return "rejected"
+        return "accepted" if k in named["accept"] else findings[k].state
+
+    return tuple(replace(finding, state=state(k)) for k, finding in enumerate(findings))
 
 
 def rejected_findings(findings: Sequence[Finding], reject: Sequence[str]) -> tuple[Finding, ...]:
@@ -149,8 +166,8 @@ def _unfit(finding: Finding) -> tuple[str, str] | None:
     return None
 
 
-def _with_rejected(findings: Sequence[Finding], rejected: Collection[int]) -> tuple[Finding, ...]:
-    """Return the findings with those rejected, and those of their gauges that lie wholly in their stretches."""
+def _with_rejected(findings: Sequence[Finding], rejected: Collection[int]) -> set[int]:
+    """Return the positions of those rejected, and of those of their gauges that lie wholly in their stretches."""
     gone: dict[str, list[tuple[np.datetime64, np.datetime64]]] = {}
     for start, end, k in sorted((*_stretch(findings[k]), k) for k in rejected):
         stretches = gone.setdefault(findings[k].gauge, [])
@@ -164,10 +181,7 @@ def _with_rejected(findings: Sequence[Finding], rejected: Collection[int]) -> tu
         within = any(start <= first and last <= end for start, end in gone.get(finding.gauge, ()))
         return within and _unfit(finding) is None
 
-    return tuple(
-        replace(finding, state="rejected") if k in rejected or lost(finding) else finding
-        for k, finding in enumerate(findings)
-    )
+    return {k for k, finding in enumerate(findings) if k in rejected or lost(finding)}
 
 
 def _stretch(finding: Finding) -> tuple[np.datetime64, np.datetime64]:

@@ -17,7 +17,20 @@ from basinrain.rainfall import RainRecord
 from basinrain.screening.findings import ScreeningOptions
 from basinrain.screening.wording import DepthUnit, depth_number, depth_text, steps_text
 
-__all__ = ["DAY", "DRY", "NORMAL", "WET_DAY", "Bools", "Floats", "Ints", "Screened", "Sheet", "Times", "runs_of"]
+__all__ = [
+    "DAY",
+    "DRY",
+    "NORMAL",
+    "WET_DAY",
+    "Bools",
+    "Floats",
+    "Ints",
+    "Screened",
+    "Sheet",
+    "Times",
+    "ranked_median",
+    "runs_of",
+]
 
 Ints = npt.NDArray[np.int64]
 Floats = npt.NDArray[np.float64]
@@ -233,12 +246,12 @@ class Screened:
             ranked = np.sort(depths * self.climate[g, near], axis=1)
             count = np.isfinite(ranked).sum(axis=1)
             around.count[:, g] = count
-            around.middle[:, g] = _median(ranked, count)
+            around.middle[:, g] = ranked_median(ranked, count)
             around.least_measured[:, g] = np.fmin.reduce(depths, axis=1)
             around.greatest[:, g] = np.fmax.reduce(ranked, axis=1)
             around.greatest_measured[:, g] = np.fmax.reduce(depths, axis=1)
             apart = np.sort(np.abs(np.sqrt(ranked) - np.sqrt(around.middle[:, [g]])), axis=1)
-            around.spread[:, g] = _median(apart, count)
+            around.spread[:, g] = ranked_median(apart, count)
         return around
 
     @property
@@ -350,8 +363,14 @@ def _scatter(away: Floats, otherwise: Floats) -> Floats:
     return np.where(enough, np.maximum(NORMAL * middle, LEAST_SCATTER), otherwise)
 
 
-def _median(ranked: Floats, count: Ints) -> Floats:
-    """Return the median of each row's first ``count`` values, NaN where there are none."""
+def ranked_median(ranked: Floats, count: Ints) -> Floats:
+    """Return the median of each row's first ``count`` values, which rise; NaN where there are none.
+
+    Examples
+    --------
+    >>> ranked_median(np.array([[1.0, 2.0, np.nan], [np.nan, np.nan, np.nan]]), np.array([2, 0]))
+    array([1.5, nan])
+    """
     rows = np.arange(len(ranked))
     low, high = np.maximum(count - 1, 0) // 2, count // 2
     return np.where(count > 0, (ranked[rows, low] + ranked[rows, np.minimum(high, ranked.shape[1] - 1)]) / 2, np.nan)

@@ -71,7 +71,7 @@ def time_text(time: np.datetime64) -> str:
 
 
 def stamp_text(start: np.datetime64, end: np.datetime64) -> str:
-    """Return what a file would call an interval: its end to the minute, of a day from midnight the date.
+    """Return what a file would call an interval: its end to the minute, of a day from midnight or a month its date.
 
     Examples
     --------
@@ -79,16 +79,25 @@ def stamp_text(start: np.datetime64, end: np.datetime64) -> str:
     '2030-07-29 08:00'
     >>> stamp_text(np.datetime64("2030-07-28T00:00:00"), np.datetime64("2030-07-29T00:00:00"))
     '2030-07-28'
+    >>> stamp_text(np.datetime64("2030-07-01T00:00:00"), np.datetime64("2030-08-01T00:00:00"))
+    '2030-07'
     """
-    return str(np.datetime_as_string(start, unit="D")) if _is_date(start, end) else time_text(end)
+    calendar = _calendar_unit(start, end)
+    return str(np.datetime_as_string(start, unit=calendar)) if calendar else time_text(end)
 
 
-def _is_date(start: np.datetime64, end: np.datetime64) -> bool:
-    return bool(start == start.astype("datetime64[D]") and end - start == np.timedelta64(_DAY, "s"))
+def _calendar_unit(start: np.datetime64, end: np.datetime64) -> Literal["D", "M", ""]:
+    """Return of which unit of the calendar the interval is one; nothing where of none."""
+    units: tuple[Literal["D", "M"], ...] = ("D", "M")
+    for unit in units:
+        first = start.astype(f"datetime64[{unit}]")
+        if start == first and end == first + 1:
+            return unit
+    return ""
 
 
 def steps_text(starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> str:
-    """Return in words which intervals are meant: by their ends, days from midnight by their dates.
+    """Return in words which intervals are meant: by their ends, days from midnight and months by their dates.
 
     Parameters
     ----------
@@ -106,11 +115,13 @@ def steps_text(starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime
     'the 3 days 2030-07-28 to 2030-07-30'
     """
     n = len(ends)
+    timed = not np.isnat(ends).any()
+    calendar = _calendar_unit(starts[0], ends[0]) if timed else ""
     lengths = np.unique((ends - starts).astype(np.int64))
-    name = (_NAMES.get(int(lengths[0])) if len(lengths) == 1 else None) or "step"
+    name = "month" if calendar == "M" else (_NAMES.get(int(lengths[0])) if len(lengths) == 1 else None) or "step"
     words = f"the {n} {name}s" if n > 1 else f"the {name}"
-    if np.isnat(ends).any():
+    if not timed:
         return words
-    that = "" if _is_date(starts[0], ends[0]) else " that end" if n > 1 else " that ends"
+    that = "" if calendar else " that end" if n > 1 else " that ends"
     stamps = [stamp_text(starts[k], ends[k]) for k in ((0, -1) if n > 1 else (0,))]
     return f"{words}{that} {' to '.join(stamps)}"

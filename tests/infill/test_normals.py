@@ -110,16 +110,33 @@ def test_a_normal_in_another_unit_is_doubted(factor: float, words: str, off: flo
 
 
 def test_relief_alone_is_not_doubted() -> None:
-    """Twice, three and five times the neighbours' normal are none of the units' ratios."""
-    for factor in (0.5, 1.5, 2, 3, 5, 40):
+    """Twice, three and five times the neighbours' normal are none of the units' ratios, nor are 14 times."""
+    for factor in (0.5, 1.5, 2, 3, 5, 14):
         assert suspect_normal_units(row(800, 850, 900, 870 * factor, 870, 880, 900)) == ()
 
 
 def test_of_two_gauges_either_may_be_the_wrong_one() -> None:
     """With one neighbour each both are named; gauges without a normal count for nothing; one gauge has no neighbour."""
     assert [note.gauge for note in suspect_normal_units(row(800, 31.5, np.nan, 0))] == ["A", "B"]
+    # A normal that its neighbours make doubtful is not doubted twice.
+    assert [note.code for note in suspect_normal_units(row(800 * 25.4, 800))] == ["normal-unit"] * 2
     assert suspect_normal_units(row(800, np.nan)) == ()
     assert suspect_normal_units(network(None)) == ()
+
+
+def test_normals_that_no_place_has_are_doubted() -> None:
+    """All read as inches, 20 to 25 m a year: 11.9 m at Mawsynram, the wettest place known (from memory), are not."""
+    (note,) = suspect_normal_units(row(*(25.4 * np.array([800.0, 850, 900, 950, 1000]))))
+    assert (note.code, note.gauge, note.level) == ("normal-out-of-range", "", "warning")
+    assert note.text == (
+        "Normals for the year below 10 or above 13,000 mm (the wettest place known has about 11,900 mm): A 20,320 mm, "
+        "B 21,590 mm, C 22,860 mm and 2 more; check normal_unit, and that normals are those of the year or of its "
+        "twelve months."
+    )
+    assert suspect_normal_units(row(11900, 12000, 10)) == ()
+    (lone,) = suspect_normal_units(row(9.9))
+    assert lone.text.startswith("A normal for the year below 10 or above 13,000 mm")
+    assert "A 9.9 mm; check" in lone.text
 
 
 def test_monthly_normals_are_doubted_by_their_sum() -> None:

@@ -98,6 +98,48 @@ def test_months_of_days(hour: int) -> None:
     assert ratios.means[1, 0, 1] == pytest.approx((28 * 11 + 2) / 11)
 
 
+@pytest.mark.parametrize("days", [2, 7, 10])
+def test_steps_that_divide_no_month_are_refused(days: int) -> None:
+    """Four weeks are no month but in February, and steps of two days only where the month has an even number."""
+    step = np.timedelta64(days, "D")
+    ends = np.datetime64("2001-01-01", "s") + np.arange(1, 15 * 365 // days) * step
+    record = RainRecord.from_depths(("X", "A"), ends - step, ends, np.ones((len(ends), 2)), step=f"{days}d")
+    with pytest.raises(
+        DataError, match=f"found steps of {days}d; expected steps of a day at most, or of calendar months: normals are"
+    ):
+        normals_from_record(record, line(2))
+
+
+@pytest.mark.parametrize(("begin", "refused"), [("01T08", False), ("15T00", True)])
+def test_months_may_begin_at_the_hour_of_the_reading_and_no_later(begin: str, *, refused: bool) -> None:
+    """Months from 08:00 on the first are months; from the 15th to the 15th are not."""
+    months = [f"{2001 + k // 12}-{k % 12 + 1:02d}-{begin}" for k in range(241)]
+    bounds = np.array(months, dtype="datetime64[s]")
+    record = RainRecord.from_depths(("X", "A"), bounds[:-1], bounds[1:], np.full((240, 2), 40.0), step="1mo")
+    if refused:
+        with pytest.raises(DataError, match="found steps of 1mo; expected steps of a day at most, or of calendar"):
+            normals_from_record(record, line(2))
+    else:
+        assert (normals_from_record(record, line(2))[0].years == 20).all()
+
+
+def test_hours_and_their_days_have_the_same_months() -> None:
+    """A month of hours is the sum of its days, and counts where all of them are there."""
+    rng = np.random.default_rng(2)
+    depth = rng.gamma(0.1, 5.0, (365 * 10 + 60, 1)) * np.ones(2)
+    days = daily("2001-01-01", len(depth), 0.0)
+    ends = days.starts[0] + np.arange(1, 4 * len(depth) + 1) * np.timedelta64(6, "h")
+    quarters = RainRecord.from_depths(
+        ("X", "A"), ends - np.timedelta64(6, "h"), ends, np.repeat(depth / 4, 4, axis=0), step="6h"
+    )
+    one, other = (
+        normals_from_record(record, line(2))[0]
+        for record in (RainRecord.from_depths(("X", "A"), days.starts, days.ends, depth, step="1d"), quarters)
+    )
+    assert np.array_equal(one.years, other.years)
+    np.testing.assert_allclose(one.means, other.means, rtol=1e-12)
+
+
 def test_a_month_counts_only_whole() -> None:
     """One missing day takes X's January of that year; A keeps it."""
     record = daily("2001-01-01", 365 * 11 + 2, 1.0)
@@ -167,9 +209,7 @@ def test_records_that_have_no_months() -> None:
         normals_from_record(undated, line(2))
     starts, ends = (np.array([f"{year}-01-01"], dtype="datetime64[s]") for year in (2031, 2032))
     yearly = RainRecord.from_depths(("X", "A"), starts, ends, [[900.0, 800.0]], step="1y")
-    with pytest.raises(
-        DataError, match="normals from the record: found steps of 1y; expected steps of a month at most"
-    ):
+    with pytest.raises(DataError, match="normals from the record: found steps of 1y; expected steps of a day at most"):
         normals_from_record(yearly, line(2))
     with pytest.raises(DataError, match="rain record: found columns that are not the network's gauges"):
         normals_from_record(daily("2001-01-01", 3, 1.0), line(3))

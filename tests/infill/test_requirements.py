@@ -9,7 +9,7 @@ import pytest
 from windows import hourly, network, with_status
 
 from basinrain.errors import DataError
-from basinrain.infill import InfillOptions, complete
+from basinrain.infill import InfillOptions, complete, relations_of
 from basinrain.rainfall import RainRecord, Status
 
 NAN = float("nan")
@@ -69,8 +69,37 @@ def test_correlations_are_named() -> None:
     options = InfillOptions(method="correlation-weighting")
     assert not_infilled(hourly([1, 2], [NAN, NAN], [3, 1]), options) == (
         "fewer than 2 other gauges with a known correlation above 0 have values of their own at every step of the "
-        "storm."
+        "storm; a correlation needs 30 days, or longer steps, in common, and B has 0 at most with any other."
     )
+
+
+@pytest.mark.parametrize(
+    ("alike", "words"),
+    [
+        (20, "A has 20 at most with any other."),
+        (30, "A has as many with 1 only."),
+    ],
+)
+def test_a_record_too_short_for_correlations_says_so(alike: int, words: str) -> None:
+    """A has some days in common with B, and none with C, which the method would need too."""
+    days = np.random.default_rng(3).gamma(1.0, 5.0, (40, 3))
+    days[alike:, 1] = days[:, 2] = NAN
+    relations = relations_of(days, network(3))
+    options = InfillOptions(method="regression", scale="step")
+    completed = complete(hourly([NAN, 1], [2, 1], [3, 1]), network(3), options, relations=relations)
+    (note,) = [note for note in completed.notes if note.code == "not-infilled"]
+    assert note.text.endswith(
+        f"reported at the step; a correlation needs 30 days, or longer steps, in common, and {words}"
+    )
+
+
+def test_a_correlation_that_is_known_needs_no_word() -> None:
+    """A goes against B and C, so neither donates, long as the record is."""
+    days = np.column_stack([np.arange(40.0), 40 - np.arange(40.0), 40 - np.arange(40.0)])
+    options = InfillOptions(method="regression", scale="step")
+    record = hourly([NAN, 1], [2, 1], [3, 1])
+    completed = complete(record, network(3), options, relations=relations_of(days, network(3)))
+    assert completed.notes[-1].text.endswith("with a known correlation above 0 reported at the step.")
 
 
 def test_elevation_decides_who_donates() -> None:

@@ -8,12 +8,13 @@ import pytest
 
 from basinrain.errors import JobError, Problems
 from basinrain.layouts import GHCN, LAYOUTS, TAKEN_BY
-from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval
+from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval, time_of_day
 from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.rainfall import read_rainfall
 
 GIVEN: dict[str, Any] = {
-    "tip": 0.2, "start": "2031-05-04", "end": "2031-05-04", "rollover": 100.0, "jitter": 0.1, "stamp": "start",
+    "tip": 0.2, "start": "2031-05-04", "end": "2031-05-04", "rollover": 100.0, "jitter": 0.1, "reset": "00:00",
+    "stamp": "start",
     "read_hour": 8, "date_means": "ends", "missing": ["-9"], "trace": ["Tr"], "flags": {"estimated": ["E"]},
     "accumulated": "A", "gaps": "missing", "time_format": "%Y", "columns": {"time": "when"},
 }  # fmt: skip
@@ -50,6 +51,13 @@ def test_reading_hours() -> None:
         28800, 28800, 28800, 1800, 86340, 0,
     ]  # fmt: skip
     assert reading_hour(None, None, day) is None
+
+
+def test_times_of_day() -> None:
+    """A time of day is said as text or as a whole hour; what is none names its key."""
+    assert [time_of_day(value, item="reset") for value in ("00:00", 0, "9:30", "23")] == [0, 0, 34200, 82800]
+    with pytest.raises(JobError, match=r"^reset: found 'at-reading'; expected a time of day, such as '08:00' or 8$"):
+        time_of_day("at-reading", item="reset")
 
 
 @pytest.mark.parametrize("layout", GHCN)

@@ -143,6 +143,16 @@ def test_accumulation_across_steps() -> None:
     fine = source([1, np.nan, np.nan, np.nan], status=status, totals=(hours(1, 3, 5.0),))
     part = place(fine, Grid(parse_interval("2h"), 0))
     assert (part.status[:, 0].tolist(), part.totals) == ([Status.MISSING] * 2, ())
+    assert [(note.code, note.gauge, note.text) for note in part.notes] == [
+        (
+            "total-not-used",
+            "A",
+            (
+                "Gauge A: 5 mm that accumulated from 2031-05-04T01:00:00 to 2031-05-04T03:00:00 are not used: other "
+                "values in the 2h steps that they reach into are not known, so that these steps are missing."
+            ),
+        )
+    ]
 
 
 def test_accumulations_that_meet_in_a_step() -> None:
@@ -155,6 +165,27 @@ def test_accumulations_that_meet_in_a_step() -> None:
     )
     part = place(fine, Grid(parse_interval("2h"), 0))
     assert (part.status[:, 0].tolist(), part.totals) == ([lost] * 3, (hours(0, 6, 15.0),))
+    assert part.notes == ()
+
+
+def test_accumulations_that_chain() -> None:
+    """Totals that meet from step to step are one, and it is said; where the first step is not whole, none is left."""
+    lost = Status.ACCUMULATED
+    chain = tuple(hours(first, first + 2, 1.0) for first in (1, 3, 5))
+    status = [Status.OBSERVED, *[lost] * 6, Status.OBSERVED]
+    whole = place(source([1, *[np.nan] * 6, 2], status=status, totals=chain), Grid(parse_interval("2h"), 0))
+    assert (whole.totals, whole.status[:, 0].tolist()) == ((hours(0, 8, 6.0),), [lost] * 4)
+    assert [note.text for note in whole.notes] == [
+        (
+            "Gauge A: 3 accumulations meet within steps of 2h, and are one total of 6 mm from 2031-05-04T00:00:00 to "
+            "2031-05-04T08:00:00; a shorter common step would keep them apart."
+        )
+    ]
+    late = START + np.timedelta64(1, "h")
+    cut = place(source([*[np.nan] * 6, 2], start=late, status=status[1:], totals=chain), Grid(parse_interval("2h"), 0))
+    assert (cut.totals, cut.status[:, 0].tolist()) == ((), [Status.MISSING] * 4)
+    assert [note.code for note in cut.notes] == ["total-not-used"]
+    assert "3 mm that accumulated from 2031-05-04T01:00:00 to 2031-05-04T07:00:00" in cut.notes[0].text
 
 
 def test_gaps_of_a_source_are_absent() -> None:

@@ -3,7 +3,7 @@
 import pytest
 
 from basinrain.errors import JobError, Problem, Problems
-from basinrain.reading.options import option_problems
+from basinrain.reading.options import of_source, option_problems
 
 
 def fail(*problems: Problem, unlisted: int = 0) -> None:
@@ -25,4 +25,15 @@ def test_what_a_problem_says_itself_is_kept() -> None:
         "rain.csv: b: found 2",
         "[x] c: found 3",
         "3 more problems: found but not listed",
+    ]
+
+
+def test_the_table_of_an_option() -> None:
+    """Every problem of a source's options names its table and file, and those that are not listed still count."""
+    with pytest.raises(JobError) as caught, of_source(3, "rain.csv"):
+        fail(Problem(item="tip", found="0", file="/jobs/rain.csv"), Problem(item="unit", found="'m'"), unlisted=1)
+    assert str(caught.value).splitlines() == [
+        "[[rainfall]] no. 3 (rain.csv) tip: found 0",
+        "[[rainfall]] no. 3 (rain.csv) unit: found 'm'",
+        "1 more problem: found but not listed",
     ]

@@ -141,3 +141,10 @@ def test_every_file_of_a_source_is_judged(tmp_path: Path) -> None:
     with pytest.raises(ReadError, match=r"(?s)^.*coarse\.csv: interval: found rows 2h apart; .*\n.*good\.csv:4: ") as e:
         read_rainfall([good, coarse], layout="wide", unit="mm", interval="1h", gaps="missing")
     assert len(e.value.problems) == 2
+
+
+def test_blank_rows_are_rows(tmp_path: Path) -> None:
+    """A daily gauge that reports every second day, with blank cells between, has the interval of its rows."""
+    rows = "".join(f"A,2031-05-{day:02d},{day % 2 or ''}\n" for day in range(1, 21))
+    record = read(tmp_path, "gauge,date,depth\n" + rows, layout="long", interval="1d", gaps="missing")
+    assert labels(record) == [["observed"], ["missing"]] * 10

@@ -16,6 +16,7 @@ from strategies import networks
 
 from basinrain.errors import DataError, JobError
 from basinrain.gauges import GaugeNetwork
+from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.reading.intervals import parse_interval
 from basinrain.reading.step import bring_to_step
@@ -244,6 +245,26 @@ def test_zones_given_and_not_given() -> None:
             "source, or for none; declare timezone for each"
         )
     ]
+
+
+def test_sources_are_called_by_their_files() -> None:
+    """Messages name the file of a source beside its number."""
+    with pytest.raises(
+        DataError, match=r"found \+02:00 for source 1 \(1h, a\.csv\), no zone for source 2 \(1h, b\.csv\)"
+    ):
+        bring_to_step(
+            [record("A", [1.0], zone="+02:00"), record("B", [1.0])], network("A", "B"), names=["a.csv", "b.csv"]
+        )
+
+
+def test_notes_of_the_sources() -> None:
+    """What the reading of every source had to remark comes once, without that of gauges that are left out."""
+    told = [Note(code="x", text=f"Gauge {gauge}.", gauge=gauge) for gauge in "ABC"] + [Note(code="y", text="All.")]
+    sources = [replace(record("AB", [[1, 1]]), notes=tuple(told[:2])), replace(record("C", [1]), notes=tuple(told[2:]))]
+    result, notes = bring_to_step(sources, network("A", "C"), exclude=["B"])
+    assert (notes, result.notes) == ((told[0], told[2], told[3]), ())
+    totals = replace(storm_totals("C", [[8]], "May"), notes=(told[2],))
+    assert bring_to_step([totals], network("C"))[1] == (told[2],)
 
 
 def test_steps_that_do_not_fit() -> None:

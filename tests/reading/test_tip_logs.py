@@ -28,7 +28,7 @@ def test_tips_out_of_order(tmp_path: Path) -> None:
     path = tmp_path / "rain.csv"
     with pytest.raises(ReadError) as caught:
         read(tmp_path, text, **TIPS, tip=0.2)
-    end = "expected tips in order of time, each once; sort the rows by time, and remove those that stand twice"
+    end = "expected tips in order of time; sort the rows by time; rows of the same time are tips of their own, and stay"
     assert str(caught.value).splitlines() == [
         f"{path}:6: gauge A: found '2031-05-04 10:05' after a later time, and 1 more like it; {end}",
         f"{path}:8: gauge B: found '2031-05-04 09:20' after a later time; {end}",

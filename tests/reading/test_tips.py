@@ -193,7 +193,59 @@ def test_several_files_of_several_gauges(tmp_path: Path) -> None:
     ]
     record = read_rainfall(files, layout="tips", unit="0.1 mm", tip=2, interval="10min")
     assert record.gauges == ("R07", "R08")
-    np.testing.assert_allclose(record.depth, [[0.4, 0.2], [0, np.nan], [0.2, np.nan]], rtol=1e-12)
+    np.testing.assert_allclose(record.depth, [[0.4, 0.2], [np.nan, np.nan], [0.2, np.nan]], rtol=1e-12)
+
+
+def test_a_gap_between_two_files_is_not_dry(tmp_path: Path) -> None:
+    """From the step of a file's last row to that of the next file's first nothing shows that the logger ran."""
+    files = [
+        written(tmp_path, log(["10:02:00", "10:08:00"]), "may/R07.csv"),
+        written(tmp_path, log(["10:21:00", "10:34:00"]), "june/R07.csv"),
+        written(tmp_path, log(["10:36:00"]), "july/R07.csv"),
+    ]
+    options: dict[str, Any] = {"layout": "tips", "unit": "mm", "tip": 0.2, "interval": "5min"}
+    record = read_rainfall(files, **options)
+    np.testing.assert_array_equal(record.depth[:, 0], [0.2, 0.2, np.nan, np.nan, 0.2, 0, 0.2, 0.2])
+    assert [(note.code, note.level, note.gauge) for note in record.notes] == [
+        ("run-not-declared", "info", ""),
+        ("log-gap", "warning", "R07"),
+    ]
+    assert record.notes[1].text == (
+        "Gauge R07: nothing shows that the logger ran between its files, 2031-05-04T10:08:00 to 2031-05-04T10:21:00; "
+        "this is missing, not dry. If it ran, give start and end."
+    )
+    half = read_rainfall(files, start="2031-05-04T10:00", **options)
+    np.testing.assert_array_equal(half.depth, record.depth)
+    told = read_rainfall(files, start="2031-05-04T10:00", end="2031-05-04T10:40", **options)
+    np.testing.assert_array_equal(told.depth[:, 0], [0.2, 0.2, 0, 0, 0.2, 0, 0.2, 0.2])
+    assert told.notes == ()
+
+
+def test_a_stop_at_the_end_of_a_file_needs_no_note(tmp_path: Path) -> None:
+    """Where the file itself says that recording stopped, the gap is missing without another word."""
+    files = [
+        written(tmp_path, log(["10:02:00", "10:08:00"], depths=["0.2", ""]), "may/R07.csv"),
+        written(tmp_path, log(["10:21:00"], depths=["0.2"]), "june/R07.csv"),
+    ]
+    record = read_rainfall(files, layout="tips", unit="mm", interval="5min")
+    np.testing.assert_array_equal(record.depth[:, 0], [0.2, np.nan, np.nan, np.nan, np.nan])
+    assert [note.code for note in record.notes] == ["run-not-declared"]
+
+
+def test_a_silence_of_years_is_not_dry(tmp_path: Path) -> None:
+    """A row of a clock that went back to 2000 makes no years of zeros; a year without rain may be one."""
+    text = "time\n2000-01-01 00:00:05\n2031-05-03 23:50\n2031-05-04 00:10\n"
+    record = tips(tmp_path, text, interval="1h")
+    assert np.flatnonzero(~np.isnan(record.depth[:, 0])).tolist() == [0, len(record) - 2, len(record) - 1]
+    assert [note.code for note in record.notes] == ["run-not-declared", "long-silence"]
+    assert record.notes[1].text == (
+        "Gauge rain: rows that stand more than 366 days apart, 2000-01-01T00:00:05 to 2031-05-03T23:50:00; so long a "
+        "silence is missing, not dry. Remove a row whose clock was wrong; if the logger ran, give start and end."
+    )
+    told = tips(tmp_path, text, interval="1h", start="2000-01-01", end="2031-05-04")
+    assert (not np.isnan(told.depth).any(), told.notes) == (True, ())
+    year = tips(tmp_path, "time\n2030-05-04 10:00\n2031-05-05 10:00\n", interval="1h")
+    assert not np.isnan(year.depth).any()
 
 
 def test_bins_of_another_library(tmp_path: Path) -> None:
@@ -215,7 +267,7 @@ def test_hourly_common_step(tmp_path: Path) -> None:
     assert [end for _, end in times(common)] == [f"2031-05-04T{hour:02d}:00" for hour in range(9, 13)]
     np.testing.assert_allclose(common.depth[:, 0], [0, 0.6, np.nan, 0.2], rtol=1e-12)
     assert labels(common) == [["zero"], ["observed"], ["missing"], ["observed"]]
-    assert (notes, common.recorders) == ((), frozenset({"rain"}))
+    assert ([note.code for note in notes], common.recorders) == (["run-not-declared"], frozenset({"rain"}))
 
 
 @given(

@@ -17,7 +17,7 @@ from basinrain.rainfall import RainRecord, Status
 from basinrain.results import ScreenRun
 from basinrain.screening import Finding, Screening, screen
 from basinrain.screening.consistency import consistency
-from basinrain.screening.edits import Edit
+from basinrain.screening.edits import SUGGESTED, Edit
 
 IDS = ("A", "B", "C", "D", "E", "F")
 
@@ -79,7 +79,7 @@ def make_monthly(ids: Sequence[str] = IDS, *, years: int = 30, seed: int = 5) ->
 def make_findings() -> tuple[Finding, ...]:
     """Return findings of every severity and state, one with an edit and one about the network."""
     may = [np.datetime64(f"2004-05-{day:02d}", "s") for day in range(1, 9)]
-    slow = Edit(gauge="B", start=may[0], end=may[3], action="shift", value="1h", reason="Slow clock.", by="screening")
+    slow = Edit(gauge="B", start=may[0], end=may[3], action="shift", value="1h", reason="Slow clock.", by=SUGGESTED)
     return (
         Finding(
             check="missing-code",

@@ -15,6 +15,7 @@ def test_checks_made_and_not_made() -> None:
     made, skipped = check_tables(screening)
     assert [(row[0], row[2]) for row in made.rows] == [("missing-code", "0"), ("stuck-values", "2")]
     assert all(row[1].endswith(".") for row in made.rows)
+    assert [row[3] for row in made.rows] == [CHECKS[name].limits for name in ("missing-code", "stuck-values")]
     assert skipped.rows[0][::2] == ("cold-season", "why")
     assert check_tables(Screening()) == []
 
@@ -22,7 +23,9 @@ def test_checks_made_and_not_made() -> None:
 @pytest.mark.parametrize("name", ["double-mass-break", "inhomogeneous"])
 def test_the_checks_of_consistency_are_described_too(name: str) -> None:
     """They are no part of the registry of single checks."""
-    assert len(check_tables(Screening(checks_run=(name,)))[0].rows[0][1]) > 40
+    row = check_tables(Screening(checks_run=(name,)))[0].rows[0]
+    assert len(row[1]) > 40
+    assert "years" in row[3]
 
 
 def test_every_check_says_what_it_looks_for() -> None:

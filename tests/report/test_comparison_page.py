@@ -94,11 +94,17 @@ def test_warnings_stand_apart_from_the_rules() -> None:
     assert text.count("Gauge sites are not the basin.") == 1
 
 
-def test_the_winner_taken_by_the_job_is_said() -> None:
-    """A job that asks for leave-one-out uses what the comparison takes."""
-    run = make_infill_run()
-    html = render_comparison(replace(run, settings={"infill": {"method": "leave-one-out"}}))
-    assert "leave-one-out, which takes the one above" in html
+@pytest.mark.parametrize(
+    ("settings", "label"),
+    [
+        ({"method": "inverse-distance", "power": 1.0}, "inverse-distance (power 1)"),
+        ({"method": "nearest-gauge"}, "nearest-gauge"),
+    ],
+)
+def test_the_method_that_infilled_is_called_as_in_the_tables(settings: dict[str, object], label: str) -> None:
+    """With its power, which tells it from the candidate of another power."""
+    page = Page(render_comparison(replace(make_infill_run(), settings={"infill": settings})))
+    assert f"Infilled by {label}" in page.text
 
 
 def test_inches() -> None:

@@ -10,15 +10,13 @@ from report.screen_pieces import make_findings, make_monthly
 
 from basinrain.report.job_lines import edit_text, needs_edit, screening_text
 from basinrain.screening import Finding, settle_findings
-from basinrain.screening.edits import Edit
+from basinrain.screening.edits import SUGGESTED, Edit
 
 RECORD = make_monthly()
 
 
 def _with_reject(finding: Finding) -> Finding:
-    edit = Edit(
-        gauge=finding.gauge, start=finding.start, end=finding.end, action="reject", reason="No.", by="screening"
-    )
+    edit = Edit(gauge=finding.gauge, start=finding.start, end=finding.end, action="reject", reason="No.", by=SUGGESTED)
     return replace(finding, edit=edit)
 
 
@@ -78,7 +76,7 @@ def test_an_edit_is_pasted_whole_and_leaves_author_and_date_to_write() -> None:
 
 def test_an_edit_of_the_whole_record_has_the_records_ends() -> None:
     """A job's edit needs both sides."""
-    edit = Edit(gauge="A", action="scale", value=25.4, reason="inches", by="screening")
+    edit = Edit(gauge="A", action="scale", value=25.4, reason="inches", by=SUGGESTED)
     read = tomllib.loads(edit_text(edit, RECORD, depth_unit="in"))["edit"][0]
     assert (read["from"].isoformat(), read["to"].isoformat()) == ("2001-01-01T00:00:00", "2031-01-01T00:00:00")
     assert read["value"] == 25.4
@@ -86,6 +84,7 @@ def test_an_edit_of_the_whole_record_has_the_records_ends() -> None:
 
 def test_a_depth_to_set_is_in_the_jobs_unit() -> None:
     """50.8 mm are 2 in; without a value there is no line for it."""
-    edit = Edit(gauge="A", action="set", value=50.8, reason="chart", by="screening")
+    edit = Edit(gauge="A", action="set", value=50.8, reason="chart", by=SUGGESTED)
     assert tomllib.loads(edit_text(edit, RECORD, depth_unit="in"))["edit"][0]["value"] == pytest.approx(2)
-    assert "value" not in edit_text(Edit(gauge="A", action="reject", reason="ice", by="J."), RECORD, depth_unit="in")
+    reject = Edit(gauge="A", action="reject", reason="ice", by=SUGGESTED)
+    assert "value" not in edit_text(reject, RECORD, depth_unit="in")

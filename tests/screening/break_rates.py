@@ -92,7 +92,7 @@ def table() -> str:
     lines = [f"| {' | '.join(heads)} |", "|---" * len(heads) + "|"]
     for noise, spread in NOISE.items():
         for factor in (0.8, 0.9):
-            for gaps in (0.0, 0.02, 0.05):
+            for gaps in (0.0, 0.02, 0.05, 0.08):
                 rate = planted_breaks(noise, factor, gaps)
                 lines.append(
                     f"| {spread} % | {factor} | {100 * gaps:.0f} % | {rate.years:.1f} of 30 "

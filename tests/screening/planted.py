@@ -8,6 +8,7 @@ from functools import cache
 
 import numpy as np
 import numpy.typing as npt
+from scipy.signal import lfilter
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.rainfall import RainRecord
@@ -84,11 +85,9 @@ def rain(rng: Generator, network: GaugeNetwork, weather: Weather, n: int, wetnes
     covariance = (1 - weather.nugget) * np.exp(-distances / weather.reach) + weather.nugget * np.eye(len(network))
     more = int(late.max())
     noise = rng.standard_normal((n + more, len(network))) @ np.linalg.cholesky(covariance).T
-    field = np.empty_like(noise)
-    field[0] = noise[0]
     innovation = np.sqrt(1 - weather.memory**2)
-    for t in range(1, len(noise)):
-        field[t] = weather.memory * field[t - 1] + innovation * noise[t]
+    # The first step is the noise itself, then each is memory times the one before and innovation times the noise.
+    field, _ = lfilter([innovation], [1, -weather.memory], noise, axis=0, zi=(1 - innovation) * noise[:1])
     field = np.stack([field[more - late[g] : more - late[g] + n, g] for g in range(len(network))], axis=1)
     above = np.maximum(field - np.sqrt(2) * _inverse_erf(1 - 2 * weather.wet), 0)
     depths: Floats = np.round(weather.scale * wetness * above**weather.power / weather.resolution) * weather.resolution

@@ -7,9 +7,11 @@ of Buishand's Q and for n = 10 from memory; the simulated ones beside them are d
 from __future__ import annotations
 
 import csv
+from functools import cache
 from pathlib import Path
 
 import pytest
+from screening import long_critical_values
 
 from basinrain.screening.critical_values import critical_values
 
@@ -69,9 +71,9 @@ def test_pettitt(test: str, n: int, row: dict[str, str]) -> None:
 def test_between_and_beyond(test: str) -> None:
     """Values change steadily with the length, and the 1 % point is the more extreme one everywhere."""
     for level in (0.05, 0.01):
-        values = [critical_values(test, n)[level] for n in range(20, 131)]
+        values = [critical_values(test, n)[level] for n in range(20, 331)]
         assert values == sorted(values)
-    for n in range(20, 131):
+    for n in range(20, 331):
         ours = critical_values(test, n)
         assert (ours[0.01] < ours[0.05]) == (test == "von-neumann")
 
@@ -83,8 +85,25 @@ def test_below_the_table(test: str, shortest: int) -> None:
     assert not critical_values(test, shortest - 1)
 
 
+@pytest.mark.parametrize("test", [*long_critical_values.TESTS])
+def test_long_series(test: str) -> None:
+    """Beyond the printed tables the values are those of the program that simulates them, here on a tenth as many."""
+    for n in long_critical_values.LENGTHS:
+        five, one = simulated(n)[test]
+        ours = critical_values(test, n)
+        # Three standard errors of a quantile of 40 000 series.
+        assert ours[0.05] == pytest.approx(five, rel=0.012)
+        assert ours[0.01] == pytest.approx(one, rel=0.025)
+
+
+@cache
+def simulated(n: int) -> dict[str, tuple[float, float]]:
+    """Return the values of a tenth of the series."""
+    return long_critical_values.simulated(n, series=long_critical_values.SERIES // 10)
+
+
 def test_beyond_the_table() -> None:
-    """Held at the value for 100, as K/n^1.5 for Pettitt and (2 - N) √n for von Neumann."""
-    assert critical_values("snht", 150)[0.05] == 9.196
-    assert critical_values("pettitt", 400)[0.05] == pytest.approx(755 * 8)
+    """Held at the value for 300, as K/n^1.5 for Pettitt; at that for 100 as (2 - N) √n for von Neumann."""
+    assert critical_values("snht", 500) == critical_values("snht", 300) == {0.05: 10.018, 0.01: 13.348}
+    assert critical_values("pettitt", 1200)[0.05] == pytest.approx(3981 * 8)
     assert critical_values("von-neumann", 400)[0.01] == pytest.approx(2 - 0.46 / 2)

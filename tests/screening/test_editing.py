@@ -19,8 +19,9 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from basinrain.errors import JobError
+from basinrain.errors import JobError, Problem, Problems
 from basinrain.rainfall import KnownTotal, RainRecord, Status
+from basinrain.screening.editing import _report_overlaps
 from basinrain.screening.edits import Edit, apply_edits
 
 HOUR = np.timedelta64(3600, "s")
@@ -45,14 +46,15 @@ def drawn(**fields: Any) -> RainRecord:  # noqa: ANN401 - any field
 def edit(gauge: str, first: int | None, last: int | None, action: str, value: float | str | None = None) -> Edit:
     """Return the edit of a gauge from the end of one hour to the end of another; None leaves a side open."""
     start, end = (np.datetime64("NaT", "s") if hour is None else at(hour) for hour in (first, last))
-    return Edit(gauge=gauge, start=start, end=end, action=action, value=value, reason="seen", by="J. Marrow")  # type: ignore[arg-type]
+    log = {"reason": "seen", "by": "J. Marrow", "date": "2031-06-01"}
+    return Edit(gauge=gauge, start=start, end=end, action=action, value=value, **log)  # type: ignore[arg-type]
 
 
 def edited(*edits: Edit) -> RainRecord:
     """Return the drawn record after the edits; the drawn one stays as it is."""
     record = drawn()
     before = record.depth.copy(), record.status.copy()
-    result = apply_edits([record], edits)[0]
+    result = apply_edits([record], edits)[0][0]
     np.testing.assert_array_equal(record.depth, before[0])
     np.testing.assert_array_equal(record.status, before[1])
     return result
@@ -74,7 +76,7 @@ def same(found: list[float], expected: list[float]) -> bool:
 def test_nothing_to_do() -> None:
     """Without edits the record is as it was."""
     assert same(column(edited(), "A"), column(drawn(), "A"))
-    assert apply_edits([], []) == []
+    assert apply_edits([], []) == ([], [])
 
 
 def test_reject() -> None:
@@ -112,7 +114,7 @@ def test_set_an_accumulation_of_one_step() -> None:
     record = drawn()
     record.status[4, 0] = Status.ACCUMULATED
     record = replace(record, totals=(*record.totals, KnownTotal("A", at(4), at(5), 6.0)))
-    result = apply_edits([record], [edit("A", 4, 5, "set", 2.0)])[0]
+    result = apply_edits([record], [edit("A", 4, 5, "set", 2.0)])[0][0]
     assert column(result, "A")[4] == 2.0
     assert [total.gauge for total in result.totals] == ["B"]
 
@@ -174,7 +176,7 @@ def test_two_sources() -> None:
     """An edit meets a gauge in every source that has it; the other sources stay as they are."""
     daily = RainRecord.from_depths(("A",), [at(8), at(32)], [at(32), at(56)], [[20.0], [30.0]], step="1d")  # type: ignore[arg-type]
     other = RainRecord.from_depths(("C",), [at(0)], [at(24)], [[5.0]], step="1d")  # type: ignore[arg-type]
-    first, second, third = apply_edits([drawn(), daily, other], [edit("A", 6, 32, "scale", 10.0)])
+    (first, second, third), _ = apply_edits([drawn(), daily, other], [edit("A", 6, 32, "scale", 10.0)])
     assert same(column(first, "A"), [1, 2, 0, 4, NAN, NAN, 70, 80])
     assert column(second, "A") == [200, 30]
     assert column(third, "C") == [5]
@@ -184,7 +186,7 @@ def test_clock_of_the_first_source() -> None:
     """Times are in the first source's clock: 03:00 there is 02:00 an hour west of it."""
     east, west = drawn(zone="+02:00"), drawn(zone="+01:00")
     east, west = replace(east, gauges=("C", "D"), totals=(), recorders=None), replace(west)  # type: ignore[arg-type]
-    result = apply_edits([east, west], [edit("A", 2, 3, "set", 9.0)])[1]
+    result = apply_edits([east, west], [edit("A", 2, 3, "set", 9.0)])[0][1]
     assert same(column(result, "A"), [1, 9, 0, 4, NAN, NAN, 7, 8])
 
 
@@ -192,14 +194,30 @@ def test_storm_totals_without_times() -> None:
     """An edit without times meets them; one with times does not."""
     nat = np.full(2, "NaT", dtype="datetime64[s]")
     storms = RainRecord.from_depths(("A",), nat, nat, [[10.0], [20.0]], step="storm")
-    assert column(apply_edits([storms], [edit("A", None, None, "scale", 2.0)])[0], "A") == [20, 40]
-    text = r"found no step .* expected source 1 without times, which an edit without from and to meets"
-    with pytest.raises(JobError, match=text):
-        apply_edits([storms], [edit("A", 0, 8, "scale", 2.0)])
-    with pytest.raises(JobError, match=text):
-        apply_edits([storms], [edit("A", None, 8, "reject")])
-    with pytest.raises(JobError, match=r"a shift by 1h of a record with steps of storm; expected a whole number"):
-        apply_edits([storms], [edit("A", None, None, "shift", "1h")])
+    assert column(apply_edits([storms], [edit("A", None, None, "scale", 2.0)])[0][0], "A") == [20, 40]
+    of_all = r"scale and reject act on all storms of the gauge; correct a single total in the file"
+    for wrong, text in (
+        (
+            edit("A", 0, 8, "scale", 2.0),
+            rf"found times, {at(0)} to {at(8)}, for a gauge of storm totals, which have none",
+        ),
+        (edit("A", None, 8, "reject"), r"found times, the beginning to .*; expected no from and to; " + of_all),
+        (
+            edit("A", None, None, "set", 5.0),
+            rf"found 2 storm totals of .* in the whole record; expected one .*; {of_all}",
+        ),
+        (
+            edit("A", None, None, "shift", "1h"),
+            r"a shift by 1h of a record with steps of storm; expected a whole number .*; remove the edit: storm totals",
+        ),
+    ):
+        with pytest.raises(JobError, match=text):
+            apply_edits([storms], [wrong])
+    # Where another source has the gauge by hours, times are meant for that.
+    (hours, left), _ = apply_edits([drawn(), storms], [edit("A", 0, 1, "scale", 2.0)])
+    assert (column(hours, "A")[0], column(left, "A")) == (2, [10, 20])
+    one = storms.window(0, 1)
+    assert column(apply_edits([one], [edit("A", None, None, "set", 5.0)])[0][0], "A") == [5]
 
 
 hourly = st.lists(st.one_of(st.none(), st.integers(0, 300)), min_size=12, max_size=12).filter(
@@ -217,9 +235,9 @@ def of(values: list[int | None]) -> RainRecord:
 def test_a_shift_and_its_reverse(values: list[int | None], by: int) -> None:
     """Depths of a whole record come back with the reverse shift, on their own steps; their sum is kept throughout."""
     record = of(values)
-    there = apply_edits([record], [edit("A", None, None, "shift", f"{by}h")])[0]
+    there = apply_edits([record], [edit("A", None, None, "shift", f"{by}h")])[0][0]
     assert np.nansum(there.depth) == pytest.approx(np.nansum(record.depth), rel=1e-12)
-    back = apply_edits([there], [edit("A", None, None, "shift", f"{-by}h")])[0]
+    back = apply_edits([there], [edit("A", None, None, "shift", f"{-by}h")])[0][0]
     on = np.isin(back.ends, record.ends)
     assert np.array_equal(back.depth[on], record.depth, equal_nan=True)
     assert np.isnan(back.depth[~on]).all()
@@ -229,8 +247,8 @@ def test_a_shift_and_its_reverse(values: list[int | None], by: int) -> None:
 def test_a_scale_and_its_reverse(values: list[int | None], factor: float) -> None:
     """By a factor and by its inverse is nothing, and which steps have values never changes."""
     record = of(values)
-    once = apply_edits([record], [edit("A", 3, 9, "scale", factor)])[0]
-    twice = apply_edits([once], [edit("A", 3, 9, "scale", 1 / factor)])[0]
+    once = apply_edits([record], [edit("A", 3, 9, "scale", factor)])[0][0]
+    twice = apply_edits([once], [edit("A", 3, 9, "scale", 1 / factor)])[0][0]
     assert twice.depth == pytest.approx(record.depth, rel=1e-12, nan_ok=True)
     assert np.array_equal(once.measured, record.measured)
     outside = np.r_[0:3, 9:12]
@@ -247,8 +265,8 @@ def test_order_does_not_matter(values: list[int | None], order: list[int]) -> No
         edit("A", 1, 3, "shift", "20h"),
     ]
     record = of([7, 8, 9, *values[3:11], 6])
-    expected = apply_edits([record], edits)[0]
-    found = apply_edits([record], [edits[k] for k in order])[0]
+    expected = apply_edits([record], edits)[0][0]
+    found = apply_edits([record], [edits[k] for k in order])[0][0]
     assert np.array_equal(found.depth, expected.depth, equal_nan=True)
     assert np.array_equal(found.status, expected.status)
 
@@ -266,8 +284,23 @@ WRONG: list[tuple[list[Edit], str]] = [
         ),
     ),
     (
-        [replace(edit("A", 0, 8, "reject"), start=at(1) + 60, end=at(2) + 60)],
-        "found no step of the gauge that lies wholly in 2031-05-04T01:01:00 to 2031-05-04T02:01:00",
+        [replace(edit("A", 0, 8, "reject"), start=at(1) + 60, end=at(4))],
+        (
+            "1 (gauge A): found the step <01> to <02>, which has a value and lies across the edge of "
+            "2031-05-04T01:01:00 to <04>; expected steps wholly inside or outside; move that edge to <01> or <02>"
+        ),
+    ),
+    (
+        [replace(edit("A", 0, 8, "reject"), start=at(1), end=at(2) + 60)],
+        "found the step <02> to <03>, which has a value and lies across the edge of <01> to 2031-05-04T02:01:00",
+    ),
+    (
+        [replace(edit("A", 0, 8, "set", 2.0), start=at(1) + 60, end=at(2) - 60)],
+        "found the step <01> to <02>, which has a value and lies across the edge of 2031-05-04T01:01:00 to",
+    ),
+    (
+        [replace(edit("A", 0, 8, "reject"), start=at(4) + 60, end=at(5) + 60)],
+        "found no step of the gauge that lies wholly in 2031-05-04T04:01:00 to 2031-05-04T05:01:00",
     ),
     (
         [edit("A", 4, 6, "scale", 2.0)],
@@ -293,7 +326,10 @@ WRONG: list[tuple[list[Edit], str]] = [
     ),
     (
         [edit("A", 0, 4, "shift", "30min")],
-        "1 (gauge A): found a shift by 30min of a record with steps of 1h; expected a whole number of its steps",
+        (
+            "1 (gauge A): found a shift by 30min of a record with steps of 1h; expected a whole number of its steps, "
+            "all of one length; shift by a multiple of 1h, or correct the times in the file"
+        ),
     ),
     (
         [edit("A", 0, 4, "shift", "3h")],
@@ -341,8 +377,58 @@ def test_all_together() -> None:
 
 
 def test_months_have_no_length() -> None:
-    """A record of months cannot be shifted by a duration."""
+    """A record of months, whose lengths differ, cannot be shifted by a duration."""
     bounds: npt.NDArray[np.datetime64] = np.arange("2031-01", "2031-04", dtype="datetime64[M]").astype("datetime64[s]")
     record = RainRecord.from_depths(("A",), bounds[:-1], bounds[1:], [[30.0], [40.0]], step="1mo")
-    with pytest.raises(JobError, match=r"a shift by 31d of a record with steps of 1mo; expected a whole number of its"):
+    text = r"a shift by 31d of a record with steps of 1mo; expected a whole .*; correct the times in the file, whose "
+    with pytest.raises(JobError, match=text):
         apply_edits([record], [edit("A", None, None, "shift", "31d")])
+
+
+def test_a_cut_step_without_a_value_does_not_matter() -> None:
+    """Hours 5 and 6 of A are missing: an edge may lie in either."""
+    early = replace(edit("A", 0, 8, "scale", 2.0), end=at(4) + 1800)
+    late = replace(edit("A", 0, 8, "reject"), start=at(5) + 1800)
+    assert same(column(edited(early, late), "A"), [2, 4, 0, 8, NAN, NAN, NAN, NAN])
+
+
+def test_edges_beyond_the_record() -> None:
+    """Edges before the first step and after the last cut none."""
+    assert same(column(edited(edit("A", -2, 30, "reject")), "A"), [NAN] * 8)
+
+
+@given(
+    stretches=st.lists(
+        st.tuples(st.sampled_from("AB"), st.integers(0, 9), st.integers(1, 5), st.booleans(), st.booleans()), max_size=7
+    )
+)
+def test_overlaps_against_all_pairs(stretches: list[tuple[str, int, int, bool, bool]]) -> None:
+    """Of the edits that overlap any other of their gauge all are named, and only those."""
+    edits = [
+        edit(gauge, None if open_start else first, None if open_end else first + length, "reject")
+        for gauge, first, length, open_start, open_end in stretches
+    ]
+    numbered = [replace(one, number=k) for k, one in enumerate(edits, 1)]
+    pairs = [
+        (one.number, two.number)
+        for two in numbered
+        for one in numbered[: two.number - 1]
+        if one.gauge == two.gauge and not (one.start >= two.end or two.start >= one.end)
+    ]
+    problems = Problems()
+    _report_overlaps(numbered, problems)
+    told = [
+        tuple(sorted(int(number) for number in re.findall(r"\[\[edit\]\] (\d+)", str(problem))))
+        for problem in problems_of(problems)
+    ]
+    assert set(told) <= set(pairs)
+    assert {number for pair in told for number in pair} == {number for pair in pairs for number in pair}
+
+
+def problems_of(problems: Problems) -> tuple[Problem, ...]:
+    """Return what was collected."""
+    try:
+        problems.raise_as(JobError)
+    except JobError as error:
+        return error.problems
+    return ()

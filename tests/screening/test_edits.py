@@ -9,12 +9,13 @@ import pytest
 
 from basinrain.errors import JobError
 from basinrain.rainfall import RainRecord
-from basinrain.screening.edits import SUGGESTED, Edit, edit_rows
+from basinrain.screening.edits import SUGGESTED, Edit, apply_edits
 
 
 def edit(**changes: Any) -> Edit:  # noqa: ANN401 - any field
     """Return a right edit, scaled by 2, with fields changed."""
     fields: dict[str, Any] = {"gauge": "W03", "action": "scale", "value": 2.0, "reason": "unit", "by": "J. Marrow"}
+    fields["date"] = "2031-06-01"
     return Edit(**(fields | changes))
 
 
@@ -71,6 +72,7 @@ def test_zero_may_be_set() -> None:
         ({"reason": " "}, r"edit \(gauge W03\): reason: found nothing; expected why the values are changed"),
         ({"by": ""}, r"edit \(gauge W03\): by: found nothing; expected who decided on it"),
         ({"date": "4 May"}, r"date: found '4 May'; expected a date such as 2031-05-04"),
+        ({"date": ""}, r"date: found nothing; expected a date such as 2031-05-04"),
         (
             {"start": np.datetime64("2031-05-04"), "end": np.datetime64("2031-05-04")},
             r"from, to: found 2031-05-04T00:00:00 to 2031-05-04T00:00:00; expected a start before the end",
@@ -78,7 +80,7 @@ def test_zero_may_be_set() -> None:
     ],
 )
 def test_fields_that_do_not_fit(changes: dict[str, Any], text: str) -> None:
-    """Gauge, reason and author are required; times and date must make sense."""
+    """Gauge, reason, author and date are required; times and date must make sense."""
     with pytest.raises(JobError, match=text):
         edit(**changes)
 
@@ -97,10 +99,19 @@ def test_rows() -> None:
     record = RainRecord.from_depths(("A", "B"), ends - 3600, ends, depths, step="1h")
     edits = [
         Edit(gauge="A", end=ends[2], action="scale", value=0.5, reason="unit", by="J. M.", date="2031-06-01"),
-        Edit(gauge="B", start=ends[0], end=ends[1], action="set", value=2.5, reason="paper form", by="J. M."),
-        Edit(gauge="B", start=ends[1], action="reject", reason="stuck", by="A. K."),
+        Edit(
+            gauge="B",
+            start=ends[0],
+            end=ends[1],
+            action="set",
+            value=2.5,
+            reason="chart",
+            by="J. M.",
+            date="2031-06-02",
+        ),
+        Edit(gauge="B", start=ends[1], action="reject", reason="stuck", by="A. K.", date="2031-06-02"),
     ]
-    rows = edit_rows([record], edits)
+    rows = apply_edits([record], edits)[1]
     assert rows[0] == {
         "gauge": "A",
         "from": "",
@@ -123,10 +134,11 @@ def test_rows_of_a_shift() -> None:
     """A shift keeps the depths that it moves."""
     ends = np.datetime64("2031-05-04", "s") + np.arange(1, 5) * np.timedelta64(3600, "s")
     record = RainRecord.from_depths(("A",), ends - 3600, ends, [[2.0], [0.0], [np.nan], [4.0]], step="1h")
-    row = edit_rows([record], [Edit(gauge="A", action="shift", value="-2h", reason="clock", by="J. M.")])[0]
+    (row,) = apply_edits([record], [edit(gauge="A", action="shift", value="-2h")])[1]
     assert (row["steps_changed"], row["depth_before"], row["depth_after"]) == (3, 6.0, 6.0)
 
 
 def test_suggested_edits_are_signed_as_such() -> None:
-    """An edit that a finding suggests names no person."""
-    assert edit(by=SUGGESTED).by == "suggested by screening"
+    """An edit that a finding suggests names no person, and no date, since nobody has decided."""
+    suggested = edit(by=SUGGESTED, date="")
+    assert (suggested.by, suggested.date) == ("suggested by screening", "")

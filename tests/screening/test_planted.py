@@ -18,6 +18,8 @@ LEAST: Final = {
     ("inches as mm throughout", "hour"): 0.93,
     ("tenths as mm for 3 to 12 months", "day"): 0.88,
     ("tenths as mm for 3 to 12 months", "hour"): 0.58,
+    ("tenths as mm for 1 or 2 months", "day"): 0.40,
+    ("tenths as mm for 1 or 2 months", "hour"): 0.10,
     ("2.54 times for 6 to 18 months", "day"): 0.75,
     ("5 to 12 hours late throughout", "hour"): 0.91,
     ("accumulation", "day"): 0.58,

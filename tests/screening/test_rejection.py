@@ -95,8 +95,35 @@ def test_rejected_stretches_that_adjoin() -> None:
 
 
 def test_a_rejected_whole_record() -> None:
-    """With the whole record all of the gauge's stretches are gone, also one that another entry accepts."""
-    assert within(reject=["short-record A"], accept=["stuck-values A"]) == "rrrrroro"
+    """With the whole record all of the gauge's stretches are gone, also those that an entry accepts among others."""
+    assert within(reject=["short-record A"]) == "rrrrroro"
+    assert within(reject=["short-record A"], accept=["zero-among-wet"]) == "rrrrraro"
+    assert within(reject=["zero-run"], accept=["zero-among-wet", "spatial-outlier"]) == "rrraoaoo"
+
+
+@pytest.mark.parametrize(
+    ("reject", "accept", "text"),
+    [
+        (
+            "zero-run",
+            "zero-among-wet A",
+            (
+                "accept 'zero-among-wet A': found 2 findings wholly within what other findings reject of the gauge; "
+                "expected a finding whose values are kept; remove the entry, or reject less by naming gauge and time"
+            ),
+        ),
+        (
+            "short-record A",
+            "stuck-values",
+            "accept 'stuck-values': found 'stuck-values A 2031-05-04T06:00' wholly within what other findings reject",
+        ),
+    ],
+)
+def test_accepting_only_what_is_gone(reject: str, accept: str, text: str) -> None:
+    """An entry that accepts nothing but findings whose values another rejects would mislead."""
+    with pytest.raises(JobError, match=re.escape(text)) as caught:
+        within(reject=[reject], accept=[accept, accept])
+    assert len(caught.value.problems) == 1
 
 
 def test_gathered_stretches_between() -> None:

@@ -23,7 +23,6 @@ from basinrain.infill.leave_one_out.scoring import ScoreSums
 from basinrain.infill.leave_one_out.wording import notes_of, reason_of
 from basinrain.infill.options import InfillOptions
 from basinrain.infill.record_normals import FEWEST_YEARS, NormalRatios
-from basinrain.infill.registry import InfillMethod
 from basinrain.infill.relations import AT_LEAST
 from basinrain.rainfall import RainRecord
 from basinrain.units import depth_factor
@@ -34,7 +33,7 @@ SEED: Final = 1
 """Of the bootstrap, so that a repeat gives the same interval."""
 
 ENOUGH: Final = 0.8
-"""A method that can estimate a smaller part than this of what others can is left out, lest it choose the cases."""
+"""A method that can estimate a smaller part than this of what is usual is left out, lest it choose the cases."""
 
 _KEPT: Final = 1 << 24
 """Estimates that are kept in memory; where there are more, they are made again when they are needed again."""
@@ -97,7 +96,8 @@ def compare_infill(
     -----
     A case is a gauge's total of a rainfall day, or its depth at a step where steps are longer. Days count on which the
     mean over the gauges that know their total is at least 1 mm (longer steps: above 0); and gauges which every
-    candidate can estimate. The estimate is the weighted sum of the totals of donors that know theirs; no infilled value
+    candidate can estimate. A candidate that can estimate under 80 % of what those that rest on positions alone can, in
+    the median, is skipped. The estimate is the weighted sum of the totals of donors that know theirs; no infilled value
     takes part. Where steps are shorter than a day, the steps of these days that every candidate can estimate are scored
     beside, dry ones too.
 
@@ -225,7 +225,12 @@ def _check(record: RainRecord, network: GaugeNetwork, instead: str) -> None:
 def _able(
     given: tuple[Candidate, ...], fit: CrossFit, cases: Cases, progress: Progress, instead: str
 ) -> tuple[list[_Runner], dict[str, str], int]:
-    """Return the candidates that can estimate enough, why others are skipped, and how many values the ablest can."""
+    """Return the candidates that can estimate enough, why others are skipped, and how many values the ablest can.
+
+    Enough is measured on the median of the candidates that rest on positions alone. Not on the most able one, the
+    nearest gauge: a single donor is nearly always there, and in a gappy network nothing else would be compared. Nor on
+    all: a record that teaches little would let the methods that learn from it choose the cases.
+    """
     skipped: dict[str, str] = {}
     distances = fit.network.distances()
     keep = len(given) * len(cases) * len(fit.network) <= _KEPT
@@ -251,29 +256,41 @@ def _able(
     most = max(counts, default=0)
     if not most:
         _no_case(cases, skipped, instead)
+    able = [(runner.options.chosen_method, count) for runner, count in zip(runners, counts, strict=True) if count]
+    by_position = [count for method, count in able if not (method.needs_normals or method.needs_relations)]
+    usual = int(np.median(by_position or [count for _, count in able]))
     kept = []
     for runner, count in zip(runners, counts, strict=True):
-        if count >= ENOUGH * most:
+        if count >= ENOUGH * usual:
             kept.append(runner)
         else:
-            skipped[runner.label] = _too_few(runner.options.chosen_method, count, most, ratios=fit.ratios is not None)
+            skipped[runner.label] = _too_few(runner.options, count, usual, fit)
     return kept, skipped, most
 
 
-def _too_few(method: InfillMethod, count: int, most: int, *, ratios: bool) -> str:
-    """Return why a method that can estimate some values is skipped."""
-    why = [f"it can estimate {count:,} of the {most:,} values that others can"]
-    if method.needs_normals and ratios:
+def _too_few(options: InfillOptions, count: int, usual: int, fit: CrossFit) -> str:
+    """Return why a method that can estimate too few values is skipped."""
+    method = options.chosen_method
+    values = f"{count:,} value{'' if count == 1 else 's'}" if count else "no value"
+    why = [f"it can estimate {values}, under {100 * ENOUGH:.0f} % of the {usual:,} that are usual for this record"]
+    if options.donors_required > 1:
+        why.append(f"it needs {options.donors_required} donors")
+    if method.needs_normals and fit.ratios is not None:
         why.append(f"normals from the record need {FEWEST_YEARS} years in common")
     if method.needs_relations:
-        why.append(f"relations need {AT_LEAST} days or steps in common, besides the fifth of the record estimated")
+        n = len(fit.days.ends)
+        why.append(
+            f"relations need {AT_LEAST} days or longer steps in common, besides the fifth of the record estimated, and "
+            f"the record has {n:,}"
+        )
     return "; ".join(why)
 
 
 def _no_case(cases: Cases, skipped: dict[str, str], instead: str, *, by: str = "") -> NoReturn:
     what = cases.noun
     why = "".join(f"; {label}: {reason}" for label, reason in skipped.items())
-    found = f"no gauge that could be estimated from others{by} on any of {len(cases):,} wet {what}s{why}"
+    on = f"any of {len(cases):,} wet {what}s" if len(cases) > 1 else f"the one wet {what}"
+    found = f"no gauge that could be estimated from others{by} on {on}{why}"
     raise DataError(
         Problem(
             item="leave-one-out comparison",

@@ -99,6 +99,8 @@ class CrossFit:
         for k in np.unique(part):
             mine = np.flatnonzero(part == k)
             rest = (self.record.ends <= self.days.starts[mine[0]]) | (self.record.starts >= self.days.ends[mine[-1]])
+            if not rest.any():
+                return None
             ratios, _ = normals_from_record(_steps(self.record, rest), self.network)
             if (known & ~np.isfinite(ratios.means)).sum() > _LOST * known.sum():
                 return None

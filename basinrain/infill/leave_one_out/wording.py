@@ -76,17 +76,22 @@ def reason_of(  # noqa: PLR0917 - what a comparison found, in order
     >>> one = np.ones(3, dtype=np.int64)
     >>> cases = Cases("day", 1.0, days, one, one, one, lambda chunk: np.ones((3, 3))[chunk], 3)
     >>> reason_of([score], [best], "a", cases, 9, "case")
-    'a has the least RMSE, 2.00 mm over 9 cases (few), and is the only method that could be compared, so it is taken.'
+    'Nothing could be compared: a alone can estimate enough of the values, with an RMSE of 2.00 mm over 9 cases (few), \
+and is taken for want of another.'
     """
     best = differences[0].best
     rmse = next(score.rmse for score in scores if score.candidate == best and not score.gauge)
     few = " (few)" if n < FEW_CASES else ""
     depth = _Depths(depth_unit)
-    head = f"{best} has the least RMSE, {depth.error(rmse)} over {n:,} case{'' if n == 1 else 's'}{few}"
+    over = f"{depth.error(rmse)} over {n:,} case{'' if n == 1 else 's'}{few}"
+    if len(differences) == 1:
+        return (
+            f"Nothing could be compared: {best} alone can estimate enough of the values, with an RMSE of {over}, and "
+            "is taken for want of another."
+        )
+    head = f"{best} has the least RMSE, {over}"
     mine = next(found for found in differences if found.candidate == chosen)
     if chosen == best:
-        if len(differences) == 1:
-            return f"{head}, and is the only method that could be compared, so it is taken."
         if not drawn:
             return f"{head}; with fewer than {FEWEST} cases nothing can be told apart, so it is taken for that alone."
         if differences[0].candidate == best:
@@ -174,7 +179,8 @@ def notes_of(
             Note(
                 code="cases-left-out",
                 level="info",
-                text=f"{left_out:,} values that some method can estimate were left out, since not all of them can.",
+                text=f"{left_out:,} value{'s' if left_out > 1 else ''} that some method can estimate "
+                f"{'were' if left_out > 1 else 'was'} left out, since not all methods can.",
             )
         )
     if learned:

@@ -48,8 +48,8 @@ _WEEK: Final = ("Thursday", "Friday", "Saturday", "Sunday", "Monday", "Tuesday",
 
 
 ACCUMULATION_LIMITS: Final = (
-    f"Up to {LONGEST} days without rain or reading on which the neighbours had {MISSED:g} mm, {MISSED_DAY:g} mm on one of "
-    f"them; the reading within {SUM_FITS:g} standard deviations of the neighbours' sum and {DAY_OFF:g} above their day."
+    f"Up to {LONGEST} days without rain or reading while the neighbours had {MISSED:g} mm, {MISSED_DAY:g} mm on one "
+    f"day; the reading within {SUM_FITS:g} standard deviations of the neighbours' sum and {DAY_OFF:g} above their day."
 )
 
 
@@ -79,9 +79,9 @@ def unflagged_accumulations(view: Screened) -> Iterator[Finding]:
                 end=end,
                 evidence=f"{view.depth(reading)} in {cases.words(stop - 1, stop)}, after {days} day"
                 f"{'s' if days > 1 else ''} {what}; the neighbours' medians, in this gauge's climate, are "
-                f"{view.depth(missed)} over {'those days' if days > 1 else 'that day'} and {view.depth(own_day)} on the "
-                f"day itself. Neighbours as measured, over all of it: {view.beside(g, first, stop)}.",
-                action="Declare the stretch accumulated, so that its total is spread; or reject its days without rain.",
+                f"{view.depth(missed)} over {'those days' if days > 1 else 'that day'} and {view.depth(own_day)} on "
+                f"the day itself. Neighbours as measured, over all of it: {view.beside(g, first, stop)}.",
+                action="Declare the stretch accumulated, so that its total is spread; or reject it, the reading too.",
                 others=view.ids(near),
                 edit=Edit(
                     gauge=view.network.ids[g],

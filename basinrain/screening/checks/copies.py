@@ -232,7 +232,7 @@ def _shared_whole(view: Screened, sheet: Sheet, pair: tuple[int, int], equal: in
 
 
 def _shared_stretch(view: Screened, sheet: Sheet, pair: tuple[int, int], steps: tuple[int, int], n: int) -> Finding:
-    """Return the finding at the gauge whose they are not, by the other gauges; at the later id where these are undecided."""
+    """Return the finding at the gauge whose they are not, by the other gauges; where these differ, at the later id."""
     start, end = sheet.starts[steps[0]], sheet.ends[steps[1] - 1]
     sure = better_fit(view, pair, start, end)
     right, wrong = pair if sure > -TELLING else pair[::-1]

@@ -24,6 +24,12 @@ STANDARD_YEARS: Final = 30
 _LISTED: Final = 40
 """Gauges that the remark names with their years."""
 
+_ADVICE: Final = (
+    "Say that normals from this record are of a period of its own.",
+    f"Say that normals from this record are of a period of its own; where years are under {LEAST_YEARS}, give others.",
+    "Give normals from elsewhere, or use a method without normals.",
+)
+
 _MONTHS: Final = (
     "",
     "January",
@@ -69,18 +75,19 @@ def short_records(view: Screened) -> Iterator[Finding]:
     if not short:
         return
     few = sum(n < LEAST_YEARS for n, _ in short)
+    standard = f"the {STANDARD_YEARS} complete years of a standard normal"
+    normals = f"the {LEAST_YEARS} complete years that normals take"
+    some = f"{standard}, {few} of them fewer than {normals}" if few else standard
+    what = normals if few == len(short) else some
     listed = ", ".join(f"{gauge} {n}" for n, gauge in short[:_LISTED])
     more = f" and {len(short) - _LISTED} more" if len(short) > _LISTED else ""
     yield Finding(
         check="short-record",
         gauge="",
         severity="remark",
-        evidence=f"{len(short)} gauge{' has' if len(short) == 1 else 's have'} fewer than the {STANDARD_YEARS} "
-        f"complete years of a standard normal ({100 * COMPLETE:.0f} % of the days of each)"
-        + (f", {few} of them fewer than the {LEAST_YEARS} that normals take" if few else "")
-        + f": {listed}{more}.",
-        action="Say that normals from this record are of a period of its own"
-        + (f"; where there are fewer than {LEAST_YEARS} years, give them from elsewhere." if few else "."),
+        evidence=f"{len(short)} gauge{' has' if len(short) == 1 else 's have'} fewer than {what} "
+        f"({100 * COMPLETE:.0f} % of the days of each): {listed}{more}.",
+        action=_ADVICE[min(few, 1) + (few == len(short))],
         others=tuple(sorted(gauge for _, gauge in short)),
     )
 

@@ -82,9 +82,10 @@ def far_from_neighbours(view: Screened) -> Iterator[Finding]:
                 gauge=view.network.ids[g],
                 start=cases.starts[first],
                 end=cases.ends[stop - 1],
-                evidence=f"{view.depth(depth)} in {cases.words(first, stop)}, against a median of {view.depth(middle)} "
-                f"at {int(view.reporting[first, g])} neighbours in this gauge's climate, {away[first:stop, g].max():.1f} "
-                f"standard deviations of root depths away. Neighbours as measured: {view.beside(g, first, stop)}.",
+                evidence=f"{view.depth(depth)} in {cases.words(first, stop)}, against a median of "
+                f"{view.depth(middle)} at {int(view.reporting[first, g])} neighbours in this gauge's climate, "
+                f"{away[first:stop, g].max():.1f} standard deviations of root depths away. Neighbours as measured: "
+                f"{view.beside(g, first, stop)}.",
                 action="Look at the original: a local storm, a misplaced decimal point, another day's depth.",
                 others=view.ids(view.neighbours[g]),
             )
@@ -153,8 +154,9 @@ def long_dry_runs(view: Screened) -> Iterator[Finding]:
                 start=start,
                 end=end,
                 severity="erroneous" if middle > 4 * LOST else "doubtful",
-                evidence=f"No rain in {cases.words(first, stop)}, while the neighbours' median was {view.depth(middle)} "
-                f"on {len(wet)} wet {cases.unit}s. Neighbours as measured: {view.beside(g, first, stop)}.",
+                evidence=f"No rain in {cases.words(first, stop)}, while the neighbours' median was "
+                f"{view.depth(middle)} on {len(wet)} wet {cases.unit}s. Neighbours as measured: "
+                f"{view.beside(g, first, stop)}.",
                 action="Reject the run: a blocked funnel, a stopped logger, or zeros for missing values.",
                 others=view.ids(near),
                 edit=Edit(

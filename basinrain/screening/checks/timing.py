@@ -44,7 +44,7 @@ move at 20 to 60 km/h)."""
 AGREEING: Final = 0.7
 """Share of the seasons that must agree on a lag before it is said of the whole record."""
 
-MOST_TOLD: Final = 4.0
+MOST_TOLD: Final = 3.0
 """The most, a natural logarithm, that one day or hour may say for or against the lag where the ends of a stretch are
 looked for: showers are wilder than the normal law."""
 
@@ -60,7 +60,8 @@ _LEAST_SCATTER: Final = 0.3
 
 SHIFT_LIMITS: Final = (
     f"Up to {FURTHEST_DAYS} days, or {FURTHEST} h of finer steps; the correlation of root depths {CORRELATED:g} or "
-    f"more and higher by {GAIN:g} over the record, by {GAIN_BLOCK:g} over {BLOCK_DAYS} days; up to {TRAVEL} h are weather."
+    f"more, and higher by {GAIN:g} over the record or by {GAIN_BLOCK:g} over {BLOCK_DAYS} days; up to {TRAVEL} h are "
+    "weather."
 )
 
 
@@ -203,6 +204,12 @@ def _shifted(view: Screened, g: int, lags: Lags) -> Iterator[Finding]:
     if whole and (len(seasons) == 1 or sum(lag == whole for lag in told) >= AGREEING * len(told)):
         yield _finding(view, g, lags, whole, None)
         return
+    # A season between two of one lag that leans to it is not another stretch.
+    for k in range(1, len(seasons) - 1):
+        lag = seasons[k - 1]
+        if seasons[k] == 0 and lag and seasons[k + 1] == lag:
+            fit = lags.correlation(slice(k, k + 1))
+            seasons[k] = lag if fit[lag + len(fit) // 2] > fit[len(fit) // 2] else 0
     # Seasons that tell nothing neither end a stretch nor begin one.
     telling = np.flatnonzero([season is not None for season in seasons])
     runs = sorted(

@@ -27,7 +27,7 @@ MOST_TOLD: Final = 4.0
 CLOSE: Final = 0.5
 """Natural logarithm: how near the median ratio of the days must come to the factor."""
 
-TIGHT: Final = 2.0
+TIGHT: Final = 1.5
 """Times the gauge's usual scatter that the ratios may scatter in the stretch; cloudbursts scatter more."""
 
 LEAST_SCATTER: Final = 0.3

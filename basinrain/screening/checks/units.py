@@ -11,7 +11,7 @@ import numpy as np
 from basinrain.screening.checks.unit_days import DAY_SURE, LEAST_DAYS, days_in_unit
 from basinrain.screening.edits import SUGGESTED, Edit
 from basinrain.screening.findings import Finding
-from basinrain.screening.screened import DAY, Bools, Floats, Ints, Screened
+from basinrain.screening.screened import DAY, Bools, Floats, Ints, Screened, ranked_median
 
 __all__ = ["NAME", "UNIT_LIMITS", "unit_mixups"]
 
@@ -201,17 +201,14 @@ def _usual_ratios(ratios: Floats, calendar: _Calendar) -> Floats:
 
     Mountains and plains differ in summer otherwise than in winter, every year.
     """
-    usual = np.empty_like(ratios)
-    for j, column in enumerate(ratios.T):
-        known = np.isfinite(column)
-        lasting, parted = _usual(column[known])
-        usual[:, j] = lasting
-        if parted:
-            continue
-        for season, named in zip(calendar.seasons, calendar.named, strict=True):
-            told = column[season & known]
-            if len(told) >= LEAST_SEASON:
-                usual[named, j] = np.median(told)
+    lasting, parted = zip(*(_usual(column[np.isfinite(column)]) for column in ratios.T), strict=True)
+    usual = np.tile(np.array(lasting), (len(ratios), 1))
+    for season, named in zip(calendar.seasons, calendar.named, strict=True):
+        ranked = np.sort(ratios[season], axis=0).T
+        told = np.isfinite(ranked).sum(axis=1)
+        enough = (told >= LEAST_SEASON) & ~np.array(parted)
+        if enough.any():
+            usual[np.ix_(named, enough)] = ranked_median(ranked, told)[enough]
     return usual
 
 

@@ -66,8 +66,8 @@ def stuck_values(view: Screened) -> Iterator[Finding]:
                     gauge=gauge,
                     start=start,
                     end=end,
-                    evidence=f"{depth} stands at {stop - first} {sheet.unit}s on end, {sheet.words(first, stop)}; by "
-                    f"the gauge's own habit {max(expected, 1e-9):.1g} such runs would be expected in the record."
+                    evidence=f"{depth} in each of {sheet.words(first, stop)}; by the gauge's own habit "
+                    f"{max(expected, 1e-9):.1g} such runs would be expected in the record."
                     + (f" Neighbours over the same day or days: {beside}." if beside else ""),
                     action="Reject the run: a stuck float or register, or one value copied down.",
                     others=view.ids(view.neighbours[g][:4]),
@@ -176,8 +176,8 @@ def _codes(view: Screened, sheet: Sheet, column: int, code: _Code) -> Iterator[F
             start=start,
             end=end,
             severity="erroneous",
-            evidence=f"{depth} on {sheet.words(known[a], known[b - 1] + 1)}, and on {count} {sheet.unit}s of the "
-            f"record; the gauge's greatest other depth is {view.depth(code.above)}, and {code.what}.",
+            evidence=f"{depth} in {sheet.words(known[a], known[b - 1] + 1)}, and in {count} {sheet.unit}s of the "
+            f"record in all. The gauge's greatest other depth is {view.depth(code.above)}, and {code.what}.",
             action="Declare the code under missing, as it stands in the file, or reject the values.",
             edit=Edit(
                 gauge=gauge,

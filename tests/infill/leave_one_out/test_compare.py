@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from itertools import combinations
 
 import numpy as np
 import pytest
@@ -165,9 +166,10 @@ def test_a_record_too_short_for_relations(network: GaugeNetwork) -> None:
     """35 days leave 28 outside each fifth, which are too few for a correlation."""
     found = compare_infill(daily_record(network, small_depths(35, 6, missing=0.0)), network, options=ANY_DONOR)
     assert set(found.skipped) == {"correlation-weighting", "regression", "ratio-regression"}
-    assert "it can estimate 0 of the" in found.skipped["regression"]
-    assert "relations need 30 days or steps in common, besides the fifth of the record estimated" in str(
-        found.skipped["regression"]
+    assert found.skipped["regression"] == (
+        f"it can estimate no value, under 80 % of the {found.score('nearest-gauge').n} that are usual for this record; "
+        "relations need 30 days or longer steps in common, besides the fifth of the record estimated, and the record "
+        "has 35"
     )
 
 
@@ -186,8 +188,52 @@ def test_a_method_that_can_estimate_little_does_not_choose_the_cases(record: Rai
     both = compare_infill(record, network, options=InfillOptions(), candidates=[*common, picky])
     assert both.score("mean") == alone.score("mean")
     assert list(both.skipped) == ["picky"]
-    assert "that others can" in both.skipped["picky"]
-    assert "only method that could be compared" in both.reason
+    assert both.skipped["picky"].endswith("that are usual for this record; it needs 5 donors")
+    assert both.reason.startswith("Nothing could be compared: mean alone")
+
+
+@pytest.mark.parametrize("missing", [0.05, 0.14, 0.3])
+def test_a_small_network_with_gaps_is_compared(missing: float) -> None:
+    """Of three gauges the nearest is there far more often than both: the methods of two donors still take part."""
+    network = GaugeNetwork(ids=("A", "B", "C"), x=np.array([0.0, 4e3, 8e3]), y=np.array([0.0, 1e3, 0.0]), crs="local")
+    depth = small_depths(900, 3, missing=missing)
+    found = compare_infill(daily_record(network, depth), network, options=InfillOptions())
+    assert {"nearest-gauge", "station-average", "inverse-distance (power 2)", "regression"} <= set(found.candidates)
+    # The cases are those of two donors: wet days on which all three report.
+    whole = ~np.isnan(depth).any(axis=1) & (depth.mean(axis=1) >= 1)
+    assert found.score("nearest-gauge").n == 3 * whole.sum()
+
+
+def test_methods_that_learn_little_do_not_choose_the_cases() -> None:
+    """Every pair of eight gauges has 25 days, one has 100 more: relations of that pair alone count for nothing."""
+    network, pairs = replace(small_network(8), normals=None), list(combinations(range(8), 2))
+    depth = small_depths(25 * len(pairs) + 100, 8, missing=0.0)
+    for day, row in enumerate(depth):
+        row[[g for g in range(8) if g not in (pairs[day % 28] if day < 700 else (0, 1))]] = np.nan
+    record = daily_record(network, depth)
+    found = compare_infill(record, network, options=ANY_DONOR)
+    assert {"correlation-weighting", "regression"} <= set(found.skipped)
+    assert found.score("station-average").n == 2 * (np.nanmean(depth, axis=1) >= 1).sum()
+
+
+def test_two_gauges_have_the_nearest_only() -> None:
+    """Two donors are not to be had, so nothing is compared, and it is said."""
+    network = GaugeNetwork(ids=("A", "B"), x=np.array([0.0, 4e3]), y=np.zeros(2), crs="local")
+    found = compare_infill(daily_record(network, small_depths(90, 2, missing=0.0)), network, options=InfillOptions())
+    assert found.candidates == ("nearest-gauge",)
+    assert found.reason.startswith("Nothing could be compared: nearest-gauge alone can estimate enough of the values")
+    assert found.skipped["station-average"].endswith("that are usual for this record; it needs 2 donors")
+
+
+def test_one_day_has_no_normals_without_itself() -> None:
+    """Normals asked from a record of a day leave every method that needs none."""
+    network = replace(small_network(3), normals=None)
+    record = daily_record(network, np.array([[5.0, 6.0, 7.0]]))
+    ratios, _ = normals_from_record(record, network)
+    with_normals = compare_infill(record, network, options=InfillOptions(), ratios=ratios)
+    without = compare_infill(record, network, options=InfillOptions())
+    assert with_normals.chosen == without.chosen
+    assert "normals from the record need 10 years in common" in with_normals.skipped["normal-ratio"]
 
 
 def test_estimates_made_again_are_the_same(
@@ -246,6 +292,10 @@ def test_no_case(network: GaugeNetwork) -> None:
     lonely = np.where(np.arange(60)[:, None] % 6 == np.arange(6), 5.0, np.nan)
     with pytest.raises(DataError, match="found no gauge that could be estimated from others on any of 60 wet days"):
         compare_infill(daily_record(network, lonely), network, options=ANY_DONOR)
+    with pytest.raises(
+        DataError, match="found no gauge that could be estimated from others on the one wet day; expected"
+    ):
+        compare_infill(daily_record(network, lonely[:1]), network, options=ANY_DONOR)
 
 
 def test_no_case_in_common(record: RainRecord, network: GaugeNetwork, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -67,13 +67,6 @@ HEAD = "b has the least RMSE, 3.21 mm over "
             "20 cases, and none is simpler, so it is taken.",
         ),
         (
-            [difference("b", 0, 0, 0)],
-            "b",
-            1,
-            "",
-            "1 case (few), and is the only method that could be compared, so it is taken.",
-        ),
-        (
             [difference("a", 0.5, NAN, NAN), difference("b", 0, NAN, NAN)],
             "b",
             4,
@@ -93,6 +86,14 @@ HEAD = "b has the least RMSE, 3.21 mm over "
 def test_why_a_method_is_taken(differences: list[Difference], chosen: str, n: int, drawn: str, expected: str) -> None:
     """One sentence with its numbers."""
     assert reason_of([score("a", 9.0), score("b")], differences, chosen, cases(), n, drawn) == HEAD + expected
+
+
+def test_one_method_alone_is_no_comparison() -> None:
+    """It is said first, and plainly."""
+    assert reason_of([score("b")], [difference("b", 0, 0, 0)], "b", cases(), 1, "") == (
+        "Nothing could be compared: b alone can estimate enough of the values, with an RMSE of 3.21 mm over 1 case "
+        "(few), and is taken for want of another."
+    )
 
 
 def test_why_in_inches() -> None:
@@ -191,7 +192,9 @@ def test_what_is_said_where_it_applies() -> None:
     assert "compared on 19 cases only" in str(found["few-cases"])
     assert "its 20 largest estimates are 66 % of the 20 largest depths observed" in str(found["chosen-flattens-storms"])
     assert "its bias is -0.50 mm" in str(found["chosen-flattens-storms"])
-    assert str(found["cases-left-out"]).startswith("1,234 values")
+    assert str(found["cases-left-out"]).startswith("1,234 values that some method can estimate were left out")
+    one = notes(n=19, left_out=1)["cases-left-out"]
+    assert str(one) == "1 value that some method can estimate was left out, since not all methods can."
     assert "for each of 5 parts of the record from the others" in str(found["learned-without-the-case"])
     assert "taken as they are given" in str(found["normals-as-given"])
     assert {code for code, note in found.items() if note.level == "warning"} == {"few-cases", "chosen-flattens-storms"}

@@ -23,7 +23,7 @@ def test_a_reading_over_four_days_is_found(blank: float, words: str) -> None:
     (finding,) = found("unflagged-accumulation", record_of(depths))
     assert finding.gauge == "A"
     assert (str(finding.start)[:10], str(finding.end)[:10]) == ("2031-07-20", "2031-07-24")
-    assert f"30.0 mm after 3 days {words}" in finding.evidence
+    assert f"30.0 mm in the day 2031-07-23, after 3 days {words}" in finding.evidence
     assert "mm on the day itself" in finding.evidence
 
 

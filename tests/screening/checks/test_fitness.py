@@ -15,11 +15,15 @@ def test_years_are_complete_with_ninety_five_percent_of_their_days() -> None:
     depths[100:118, 1] = np.nan
     depths[500:519, 1] = np.nan
     depths[: 3 * 365 + 1, 2] = np.nan
-    findings = {finding.gauge: finding for finding in found("short-record", record_of(depths))}
-    assert "It has 12 complete years (95 % of the days), fewer than the 30" in findings["A"].evidence
-    assert "It has 11 complete years" in findings["B"].evidence
-    assert "It has 9 complete years (95 % of the days), fewer than the 10 that normals take" in findings["C"].evidence
-    assert {finding.severity for finding in findings.values()} == {"remark"}
+    (finding,) = found("short-record", record_of(depths))
+    assert finding.evidence == (
+        "3 gauges have fewer than the 30 complete years of a standard normal, 1 of them fewer than the 10 complete "
+        "years that normals take (95 % of the days of each): C 9, B 11, A 12."
+    )
+    assert (finding.key, finding.severity, finding.others) == ("short-record", "remark", ("A", "B", "C"))
+    (finding,) = found("short-record", record_of(depths[:, 2:]))
+    assert finding.evidence.startswith("1 gauge has fewer than the 10 complete years that normals take")
+    assert finding.action == "Give normals from elsewhere, or use a method without normals."
 
 
 def test_thirty_years_are_enough() -> None:
@@ -40,7 +44,7 @@ def test_unheated_gauges_are_remarked_on_with_their_share() -> None:
     options = ScreeningOptions(unheated=("B",), cold_months=(1, 12))
     (finding,) = found("cold-season", record_of(depths), options=options)
     assert finding.gauge == "B"
-    assert "January, December: 31 of 149 mm (21 %), on 31 of 90 wet days" in finding.evidence
+    assert "January, December: 31.0 of 149.0 mm (21 %), on 31 of 90 wet days" in finding.evidence
     assert finding.severity == "remark"
     assert found("cold-season", record_of(depths), options=ScreeningOptions(unheated=("B",), cold_months=(7,))) == []
 

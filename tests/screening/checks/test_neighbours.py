@@ -10,7 +10,7 @@ def test_a_day_far_above_all_neighbours_is_an_outlier() -> None:
     """120 mm where four others have 9 to 12: (sqrt(120) - sqrt(10.5)) / 1.2 = 6.4 standard deviations, over 4.5."""
     (finding,) = found("spatial-outlier", record_of([[120.0, 9.0, 10.0, 11.0, 12.0]]))
     assert finding.key == "spatial-outlier A 2031-01-01T00:00"
-    assert "120.0 mm against a median of 10.5 mm at 4 neighbours" in finding.evidence
+    assert "120.0 mm in the day 2031-01-01, against a median of 10.5 mm at 4 neighbours" in finding.evidence
     assert "6.4 standard deviations" in finding.evidence
     assert finding.others == ("B", "C", "D", "E")
 
@@ -36,7 +36,10 @@ def test_a_dry_gauge_among_wet_ones_is_found() -> None:
     """Zero where the others have 20 to 26 mm: sqrt(23) / 1.2 = 4.0 standard deviations, over 3."""
     (finding,) = found("zero-among-wet", record_of([[0.0, 20.0, 22.0, 24.0, 26.0]]))
     assert finding.gauge == "A"
-    assert "the driest 20.0 mm, their median, in this gauge's climate, 23.0 mm" in finding.evidence
+    assert finding.evidence.startswith(
+        "No rain in the day 2031-01-01. All 4 neighbours were wet: the driest had 20.0 mm, and their median is 23.0 mm "
+        "in this gauge's climate."
+    )
     assert finding.edit is not None
     assert finding.edit.action == "reject"
 

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from screening.drawn_records import found, line_of, rain_of, record_of
 
-from basinrain.screening import ScreeningOptions
+from basinrain.screening import ScreeningOptions, apply_edits
 from basinrain.screening.checks.timing import lags_by_gauge
 from basinrain.screening.screened import Screened
 
@@ -29,10 +29,27 @@ def test_a_year_a_day_late_is_found_by_its_seasons() -> None:
     depths[364:728, 4] = np.roll(depths[364:728, 4], 1)
     (finding,) = found("shifted-record", record_of(depths))
     assert finding.gauge == "E"
+    # Its first day holds the last one's depth; what is dry at its end may stay.
     assert finding.start == np.datetime64("2031-01-01") + 364
-    assert finding.end == np.datetime64("2031-01-01") + 728
+    assert depths[726:728, 4].tolist() == [0, 0]
+    assert finding.end == np.datetime64("2031-01-01") + 726
     assert finding.edit is None
-    assert "shift the stretch by -1d, after rejecting" in finding.action
+    assert "reject the day 2031-12-30 by an edit, since the shift moves there, and shift the 362 days" in finding.action
+
+
+def test_a_stretch_that_leaves_a_date_empty_is_mended_by_the_edit() -> None:
+    """From day 400 to 550 every depth is a day late, and day 400 has none: the edit brings all but the last back."""
+    clean = rain_of(4 * 364, 5)
+    depths = clean.copy()
+    depths[401:551, 2], depths[400, 2] = clean[400:550, 2], np.nan
+    record = record_of(depths)
+    (finding,) = found("shifted-record", record)
+    assert finding.edit is not None
+    (mended,), _ = apply_edits([record], [finding.edit])
+    differ = np.flatnonzero(~(np.nan_to_num(mended.depth[:, 2]) == clean[:, 2]))
+    assert set(differ) <= {549, 550}
+    assert "(possible: " in finding.evidence
+    assert f"by {finding.edit.value}" in finding.action
 
 
 @pytest.mark.parametrize("step", ["1h", "10min"])

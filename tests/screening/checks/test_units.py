@@ -19,7 +19,7 @@ def test_a_whole_record_in_another_unit_is_named_with_its_factor(factor: float, 
     assert (finding.gauge, finding.whole_record) == ("D", True)
     assert f"near {words}," in finding.evidence
     assert finding.edit is not None
-    (mended,) = apply_edits([record], [finding.edit])
+    (mended,), _ = apply_edits([record], [finding.edit])
     assert mended.depth[:, 3] == pytest.approx(clean[:, 3])
 
 

@@ -14,7 +14,7 @@ def test_a_depth_that_stands_still_is_found() -> None:
     (finding,) = found("stuck-values", record_of(depths))
     assert finding.key == "stuck-values B 2031-04-11T00:00"
     assert str(finding.end) == "2031-04-20T00:00:00"
-    assert "3.7 mm stands at 9 days on end" in finding.evidence
+    assert "3.7 mm in each of the 9 days 2031-04-11 to 2031-04-19;" in finding.evidence
 
 
 def test_a_coarse_gauge_may_repeat_its_least_depth() -> None:
@@ -42,8 +42,17 @@ def test_a_code_that_repeats_far_above_all_else_is_named(depth: float, name: str
     depths[50, 0] = depths[51, 0] = depth
     (finding,) = found("missing-code", record_of(depths))
     assert (finding.gauge, finding.severity) == ("A", "erroneous")
-    assert f"{name} is a usual code" in finding.evidence
+    assert f"{name} is a usual code for a missing value" in finding.evidence
     assert finding.edit is not None
+
+
+def test_a_loggers_full_scale_is_named_as_such() -> None:
+    """3276.7 mm, the greatest tenths of a signed register of two bytes."""
+    depths = np.minimum(rain_of(300, 3), 40)
+    depths[50, 0] = depths[90, 0] = 3276.7
+    first, _ = found("missing-code", record_of(depths))
+    assert first.evidence.startswith("3276.7 mm in the day 2031-02-20, and in 2 days of the record in all.")
+    assert "3276.7 mm is the full scale of a logger's register, which it writes when it fails" in first.evidence
 
 
 def test_codes_apart_are_stretches_and_codes_around_a_gap_are_one() -> None:
