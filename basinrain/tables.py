@@ -309,14 +309,17 @@ def infilled(run: StormRun) -> pd.DataFrame:
 
     frames = []
     for result in run.storms:
-        frame = estimates(result.completed, run.depth_unit)
+        frame = estimates(result.completed, run.depth_unit).drop(columns="storm", errors="ignore")
         frame.insert(0, "storm", result.storm.name)
         frames.append(frame)
     return pd.concat(frames, ignore_index=True)
 
 
 def estimates(completed: Completed, depth_unit: str) -> pd.DataFrame:
-    """Return one row per estimate; the time is the end of the step or day, blank for a storm's total."""
+    """Return one row per estimate; the time is the end of the step or day, blank for a storm's total.
+
+    In a record of storm totals the storm's name comes first.
+    """
     mm = depth_factor(depth_unit)
     record = completed.record
     rows = []
@@ -333,7 +336,10 @@ def estimates(completed: Completed, depth_unit: str) -> pd.DataFrame:
                 " ".join(f"{donor}:{weight:.6g}" for donor, weight in sorted(estimate.donors.items())),
             )
         )
-    return _frame(rows, "gauge time scale depth depth_unit method donors")
+    frame = _frame(rows, "gauge time scale depth depth_unit method donors")
+    if record.labels:
+        frame.insert(0, "storm", [record.labels[estimate.first] for estimate in completed.estimates])
+    return frame
 
 
 def hyetographs(run: StormRun) -> pd.DataFrame:

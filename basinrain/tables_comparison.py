@@ -118,12 +118,12 @@ def infill_cases(comparison: Comparison, zone: str, depth_unit: str) -> pd.DataF
 def completed_depths(record: RainRecord, depth_unit: str) -> pd.DataFrame:
     """Return ``completed_<unit>``: a row per time and a column per gauge, NaN where nothing is known even now.
 
-    It is a table that the layout ``wide`` reads.
+    It is a table that the layout ``wide`` reads. A record of storm totals has a row per storm, by its name.
     """
     import pandas as pd
 
     frame = pd.DataFrame(record.depth / depth_factor(depth_unit), columns=list(record.gauges))
-    frame.insert(0, "time", [time_text(end, record.zone) for end in record.ends])
+    frame.insert(0, *_row_names(record))
     return frame
 
 
@@ -134,9 +134,16 @@ def completed_status(record: RainRecord) -> pd.DataFrame:
     labels = [status.label for status in Status]
     # Categories: as text a long record would take many times its size.
     columns = {
-        gauge: pd.Categorical.from_codes(record.status[:, g], categories=labels)
+        gauge: pd.Categorical.from_codes(record.status[:, g], categories=pd.Index(labels))
         for g, gauge in enumerate(record.gauges)
     }
     frame = pd.DataFrame(columns)
-    frame.insert(0, "time", [time_text(end, record.zone) for end in record.ends])
+    frame.insert(0, *_row_names(record))
     return frame
+
+
+def _row_names(record: RainRecord) -> tuple[str, list[str]]:
+    """Return what names the rows of a record: the heading and a text a row."""
+    if record.labels:
+        return "storm", list(record.labels)
+    return "time", [time_text(end, record.zone) for end in record.ends]

@@ -185,3 +185,16 @@ def test_figures_equal_a_loop_over_steps_and_gauges() -> None:
     assert rows[GAUGES].top_mean == pytest.approx(sum(sum(sorted(g)[-20:]) / 20 for g in gauges) / 3)
     assert rows[GAUGES].variance == pytest.approx(sum(np.var(g, ddof=1) for g in gauges) / 3)
     assert rows[GAUGES].wet_share == pytest.approx(sum(np.mean(np.array(g) >= 0.1) for g in gauges) / 3)
+
+
+def test_gauges_without_weight_and_methods_that_were_not_run_have_no_figures() -> None:
+    """B weighs nothing and was silent for an hour, which does not count; nothing averaged is nothing checked."""
+    record = hourly([[4, 90, 2], [4, NAN, 2]])
+
+    def outer(present: npt.NDArray[np.bool_]) -> WeightTable:
+        return WeightTable("outer", ("all",), NETWORK.ids, np.array([[0.5, 0.0, 0.5]]))
+
+    rows = series_check(record, {"outer": average_storm(Completed(record, (), ()), outer)}).figures
+    gauges = next(row for row in rows if row.series == GAUGES)
+    assert (gauges.steps, gauges.top_mean) == (2, 3)
+    assert series_check(record, {}).figures == ()

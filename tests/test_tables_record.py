@@ -53,7 +53,7 @@ def test_completeness_counts_every_step_once(tmp_path: Path) -> None:
     assert table["share"].tolist() == [1.0, 0.5, 1.0]
     kinds = ["observed", "zero", "trace", "missing", "adjusted", "rejected", "not_installed"]
     assert table[kinds].values.tolist() == [[2, 1, 0, 0, 1, 0, 0], [2, 0, 0, 1, 0, 1, 0], [0, 2, 1, 0, 0, 0, 1]]
-    everything = table.loc[:, "observed":]  # type: ignore[misc]
+    everything = table.loc[:, "observed":]
     assert (everything.sum(axis=1) == table["steps"]).all()
 
 

@@ -92,7 +92,7 @@ def choose_donors(
     )
     chosen = np.asarray(reporting, dtype=bool)[..., order]
     if nearest != ALL:
-        chosen &= chosen.cumsum(axis=-1) <= nearest
+        chosen &= chosen.cumsum(axis=-1, dtype=np.int32) <= nearest
     chosen &= chosen.sum(axis=-1, keepdims=True) >= min_donors
     donors = np.zeros(np.shape(reporting), dtype=bool)
     donors[..., order] = chosen

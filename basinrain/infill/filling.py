@@ -163,7 +163,9 @@ class GaugeFilling:
         if not window.options.chosen_method.needs_normals:
             months = np.zeros_like(months)
         keys = np.column_stack([np.packbits(reporting, axis=1), months.astype(np.uint8)])
-        _, case, row_of = np.unique(keys, axis=0, return_index=True, return_inverse=True)
+        # Rows as single values of so many bytes, which compare many times as fast as rows do.
+        whole = np.ascontiguousarray(keys).view(np.dtype((np.void, keys.shape[1])))
+        _, case, row_of = np.unique(whole.ravel(), return_index=True, return_inverse=True)
         rows = np.zeros((len(case), len(window.network)))
         for month in np.unique(months[case]):
             mine = months[case] == month

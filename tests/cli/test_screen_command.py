@@ -267,6 +267,17 @@ def test_an_edit_without_times_changes_the_whole_record(tmp_path: Path) -> None:
         assert run.edit_table["steps_changed"].sum() == 48
 
 
+def test_an_edge_within_a_step_is_refused(tmp_path: Path) -> None:
+    """From half past two on would leave the third hour as it is: the step and both of its ends are named."""
+    job = write_tiny(tmp_path, gauges=FOUR, rain=hourly(), job=JOB + EDIT.replace("T00:00:00", "T02:30:00"))
+    text = (
+        r"\[\[edit\]\] 1 \(gauge B\): found the step 2031-05-04T02:00:00 to 2031-05-04T03:00:00, which has a value and "
+        r"lies .*; move that edge to 2031-05-04T02:00:00 or 2031-05-04T03:00:00"
+    )
+    with pytest.raises(JobError, match=text):
+        run_screen(job)
+
+
 def test_an_edit_of_a_daily_total_is_remarked_on_where_it_is_spread(tmp_path: Path) -> None:
     """D's 9 mm of a day are halved; in hours they are spread, and a remark says that they were changed."""
     daily = '[[rainfall]]\nfile = "daily.csv"\nlayout = "long"\nunit = "mm"\ninterval = "1d"\n'

@@ -251,10 +251,10 @@ def test_planted_breaks(noise: float, factor: float, least: float, most_false: f
 @pytest.mark.parametrize(
     ("gaps", "curve", "tests"),
     # Of 200; the table of docs/verification.md less three standard errors.
-    [(0.0, 0.98, 0.98), (0.02, 0.98, 0.98), (0.05, 0.98, 0.98)],
+    [(0.0, 0.98, 0.98), (0.05, 0.98, 0.98), (0.08, 0.93, 0.56)],
 )
 def test_planted_breaks_with_gaps(gaps: float, curve: float, tests: float) -> None:
-    """In daily records with outages of up to 5 % breaks of 10 % are found, hardly any where none is."""
+    """In daily records with outages breaks of 10 % are found where years enough are left, hardly any where none is."""
     rates = planted_breaks(0.22, 0.9, gaps)
     assert rates.share(DOUBLE_MASS_BREAK) >= curve
     assert rates.share(INHOMOGENEOUS) >= tests
