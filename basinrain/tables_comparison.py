@@ -93,10 +93,14 @@ def infill_differences(comparison: Comparison, depth_unit: str) -> pd.DataFrame:
 
 
 def infill_cases(comparison: Comparison, zone: str, depth_unit: str) -> pd.DataFrame:
-    """Return ``infill_cases``: one row per gauge and case, with what the chosen method makes of it from the others."""
+    """Return ``infill_cases``: one row per gauge and case, with what the chosen method makes of it from the others.
+
+    Storm totals have their storm in place of the time.
+    """
     import pandas as pd
 
     mm = depth_factor(depth_unit)
+    names = comparison.storms or [time_text(end, zone) for end in comparison.ends]
     frames = []
     for g, gauge in enumerate(comparison.gauges):
         rows = np.flatnonzero(~np.isnan(comparison.observed[:, g]))
@@ -104,7 +108,7 @@ def infill_cases(comparison: Comparison, zone: str, depth_unit: str) -> pd.DataF
             pd.DataFrame(
                 {
                     "gauge": gauge,
-                    "time": [time_text(end, zone) for end in comparison.ends[rows]],
+                    "storm" if comparison.storms else "time": [names[row] for row in rows],
                     "observed": comparison.observed[rows, g] / mm,
                     "estimated": comparison.estimated[rows, g] / mm,
                     "depth_unit": depth_unit,

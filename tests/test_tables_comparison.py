@@ -129,9 +129,13 @@ def test_cases() -> None:
 
 
 def test_cases_without_times() -> None:
-    """Storm totals have a blank time."""
-    undated = replace(comparison(), ends=np.full(2, "NaT", dtype="datetime64[s]"))
-    assert set(infill_cases(undated, "", "mm")["time"]) == {""}
+    """Storm totals have their storm's name in place of a time."""
+    undated = replace(comparison(), ends=np.full(2, "NaT", dtype="datetime64[s]"), storms=("Quill", "Reed"))
+    assert infill_cases(undated, "", "mm")[["gauge", "storm"]].values.tolist() == [
+        ["A", "Quill"],
+        ["B", "Quill"],
+        ["B", "Reed"],
+    ]
 
 
 def test_the_completed_record() -> None:

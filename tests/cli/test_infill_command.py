@@ -319,3 +319,21 @@ def test_storm_totals_without_dates(tmp_path: Path) -> None:
     # The mean of four donors has the least error; the nearest gauge is worse at every arm.
     assert run.comparison.chosen == "station-average"
     assert run.infilled[["gauge", "depth"]].to_numpy().tolist() == [["S", pytest.approx((22 + 3 * 11) / 4)]]
+
+
+def test_storm_totals_keep_their_names(tmp_path: Path) -> None:
+    """Two storms without dates: every table says which is which; in Quill too few gauges are left to be compared."""
+    rain = "storm,gauge,depth\nQuill,A,10\nQuill,B,\nQuill,C,30\nReed,A,4\nReed,B,6\nReed,C,8\n"
+    job = write_tiny(tmp_path, job=JOB.replace('interval = "1h"', 'layout = "totals"'), rain=rain)
+    done = basinrain("infill", job, "--set", "infill.method=station-average")
+    assert (done.returncode, done.stderr) == (0, "")
+    folder = tmp_path / "output" / "infill"
+    assert (folder / "completed_mm.csv").read_text(
+        encoding="utf-8"
+    ) == "storm,A,B,C\nQuill,10.0,20.0,30.0\nReed,4.0,6.0,8.0\n"
+    assert (folder / "completed_status.csv").read_text(encoding="utf-8").splitlines()[
+        1
+    ] == "Quill,observed,infilled,observed"
+    assert (folder / "infilled.csv").read_text(encoding="utf-8").splitlines()[1].startswith("Quill,B,,storm,20.0,mm,")
+    cases = (folder / "infill_cases.csv").read_text(encoding="utf-8").splitlines()
+    assert [line.split(",")[1] for line in cases] == ["storm", "Reed", "Reed", "Reed"]

@@ -47,6 +47,8 @@ class Cases:
     depth
         Gives the depths of some cases, shape (n, n_gauges) in mm, NaN where the gauge has no value.
     n_gauges : int
+    storms : tuple of str
+        The storm of every case, in a record of storm totals; else empty.
 
     Examples
     --------
@@ -61,6 +63,7 @@ class Cases:
     week: Ints | None
     depth: Callable[[slice], Floats]
     n_gauges: int
+    storms: tuple[str, ...] = ()
 
     @property
     def noun(self) -> str:
@@ -129,6 +132,7 @@ def cases_of(record: RainRecord, days: Days) -> tuple[Cases, bool]:
         week=_weeks(days.ends[wet], record.ends[0]) if by_day else None,
         depth=lambda chunk: totals[wet[chunk]],
         n_gauges=totals.shape[1],
+        storms=tuple(record.labels[row] for row in wet) if record.labels else (),
     )
     return cases, finer
 

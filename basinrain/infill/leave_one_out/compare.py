@@ -148,6 +148,7 @@ def compare_infill(
         scale=cases.scale,
         gauges=record.gauges,
         ends=compared.ends,
+        storms=compared.storms,
         observed=observed,
         estimated=estimated,
         scores=tuple(scores),
@@ -359,6 +360,7 @@ def _only(cases: Cases, rows: npt.NDArray[np.int64]) -> Cases:
         part=cases.part[rows],
         week=None if cases.week is None else cases.week[rows],
         depth=lambda chunk: cases.depth(slice(None))[rows[chunk]],
+        storms=tuple(cases.storms[row] for row in rows) if cases.storms else (),
     )
 
 

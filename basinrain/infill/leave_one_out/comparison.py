@@ -148,6 +148,8 @@ class Comparison:
         Gauge ids, the columns.
     ends : array of datetime64[s], shape (n_cases,)
         The ends of the days or steps compared; NaT for totals without times.
+    storms : tuple of str
+        The storm of every case, in a record of storm totals; else empty.
     observed : array of float, shape (n_cases, n_gauges)
         mm; NaN where the gauge takes no part.
     estimated : array of float, shape (n_cases, n_gauges)
@@ -189,6 +191,7 @@ class Comparison:
     chosen_options: InfillOptions
     reason: str
     notes: tuple[Note, ...]
+    storms: tuple[str, ...] = ()
 
     def score(self, candidate: str, *, gauge: str = "", scale: str = "") -> Score:
         """Return one score.
