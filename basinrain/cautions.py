@@ -165,8 +165,8 @@ def storm_cautions(
         gauges = ", ".join(f"{network.ids[g]} ({without[g]})" for g in np.flatnonzero(without))
         yield Note(
             code="weights-rebuilt",
-            text=f"Gauges without a value even after infill (steps): {gauges}; the weights were rebuilt from the "
-            "others there.",
+            text=f"Gauges without a value even after infill (steps): {gauges}; where others have one, the "
+            "weights were rebuilt from them.",
             storm=storm,
         )
 

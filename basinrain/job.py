@@ -212,17 +212,24 @@ def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
     infill = choose_infill(job, given.record, given.network, say, comparison=comparison, whole_record=True)
     say("completing")
     completed = infill.complete(given.record)
-    record = given.record
-    whole = Storm("", 0, len(record), record.starts[0], record.ends[-1])
+    record, n_basins = given.record, len(given.basins)
+    whole = Storm("whole record", 0, len(record), record.starts[0], record.ends[-1])
+    say("weights")
+    weighers = _weighers(job, given.network, given.basins)
+    depths = {name: average_storm(completed, weigher) for name, weigher in weighers.items()}
+    result = StormResult(whole, completed, depths, (("mean", None),) * n_basins)
+    long = longer_than(record, gap_mask(record), infill.options.longest_gap)
+    result, moved = _moved(job, result, record, infill, given.network, weighers, long, say)
     notes = (
         *given.notes,
         *infill.notes,
         *completed.notes,
         *record_cautions(record),
-        *screening_cautions(given.screening, [whole]),
+        *(replace(note, storm="") for note in (*moved, *screening_cautions(given.screening, [whole]))),
     )
     return InfillRun(
         **_common(job, given, infill),
+        storms=(result,),
         comparison=comparison,
         completed=completed,
         notes=once(notes, ()),

@@ -29,7 +29,7 @@ if TYPE_CHECKING:
     import geopandas as gpd
     import pandas as pd
 
-__all__ = ["CAUTION", "InfillRun", "Run", "ScreenRun", "StormResult", "StormRun"]
+__all__ = ["CAUTION", "AveragedRun", "InfillRun", "Run", "ScreenRun", "StormResult", "StormRun"]
 
 CAUTION = (
     "Basin rainfall estimated from point gauges, for use by a qualified hydrologist or engineer. Gauge density, "
@@ -155,7 +155,48 @@ class StormResult:
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
-class StormRun(Run):
+class AveragedRun(Run):
+    """A run with basin means: of its storms, or of the whole record.
+
+    Parameters
+    ----------
+    storms
+        The storms, in the job's order; one, the whole record, in a comparison of infill methods.
+    name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, inputs, \
+versions, facts
+        As for :class:`Run`.
+    """
+
+    storms: tuple[StormResult, ...]
+
+    @property
+    def methods(self) -> tuple[str, ...]:
+        """Names of the averaging methods that were run."""
+        return tuple(self.storms[0].depths)
+
+    @cached_property
+    def infill_effect(self) -> pd.DataFrame:
+        """Basin means by every infill method: one row per storm, basin, method and infill method."""
+        frames = [
+            tables_infill.effect_frame(result.storm.name, self.basins.ids, result.effect, self.depth_unit)
+            for result in self.storms
+            if result.effect is not None
+        ]
+        return tables.by_storm(frames, tables_infill.EFFECT)
+
+    @cached_property
+    def series_check(self) -> pd.DataFrame:
+        """Wet steps, largest depths and variance before and after infill: three rows per storm, basin and method."""
+        frames = [
+            tables_infill.series_frame(result.storm.name, result.checks, self.depth_unit)
+            for result in self.storms
+            if result.checks is not None
+        ]
+        return tables.by_storm(frames, tables_infill.SERIES)
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class StormRun(AveragedRun):
     """All storms of a job, with the tables that go to files, reports and notebooks.
 
     Depths inside are mm, areas m²; the tables (data frames) are in the job's units, each quantity beside its unit. They
@@ -167,26 +208,18 @@ class StormRun(Run):
 
     Parameters
     ----------
-    storms
-        The storms, in the job's order.
     comparison
         The comparison of infill methods, where the job asks for its winner.
-    name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, inputs, \
-versions, facts
-        As for :class:`Run`.
+    storms, name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, \
+inputs, versions, facts
+        As for :class:`AveragedRun`.
 
     Examples
     --------
     See :func:`basinrain.run_storm`, which makes one from a job: ``run.basin_means[["basin", "method", "depth"]]``.
     """
 
-    storms: tuple[StormResult, ...]
     comparison: Comparison | None = None
-
-    @property
-    def methods(self) -> tuple[str, ...]:
-        """Names of the averaging methods that were run."""
-        return tuple(self.storms[0].depths)
 
     @cached_property
     def basin_means(self) -> pd.DataFrame:
@@ -234,29 +267,14 @@ versions, facts
         return tables.hyetographs(self)
 
     @cached_property
-    def infill_effect(self) -> pd.DataFrame:
-        """Basin means by every infill method: one row per storm, basin, method and infill method."""
-        frames = [
-            tables_infill.effect_frame(result.storm.name, self.basins.ids, result.effect, self.depth_unit)
-            for result in self.storms
-            if result.effect is not None
-        ]
-        return tables.by_storm(frames, tables_infill.EFFECT)
-
-    @cached_property
-    def series_check(self) -> pd.DataFrame:
-        """Wet steps, largest depths and variance before and after infill: three rows per storm, basin and method."""
-        frames = [
-            tables_infill.series_frame(result.storm.name, result.checks, self.depth_unit)
-            for result in self.storms
-            if result.checks is not None
-        ]
-        return tables.by_storm(frames, tables_infill.SERIES)
-
-    @cached_property
     def infill_scores(self) -> pd.DataFrame:
         """How the infill methods compare, where the job asks for the winner; else no row."""
         return tables_comparison.infill_scores(self.comparison, self.depth_unit)
+
+    @cached_property
+    def infill_differences(self) -> pd.DataFrame:
+        """How much worse than the best each infill method is, where the job asks for the winner; else no row."""
+        return tables_comparison.infill_differences(self.comparison, self.depth_unit)
 
     @cached_property
     def thiessen(self) -> gpd.GeoDataFrame:
@@ -335,11 +353,12 @@ versions, facts
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
-class InfillRun(Run):
+class InfillRun(AveragedRun):
     """A comparison of infill methods and the completed record, with the tables that go to files, reports, notebooks.
 
     They are :attr:`infill_scores`, :attr:`infill_differences`, :attr:`infill_cases`, :attr:`infilled`,
-    :attr:`completed_depths`, :attr:`completed_status`, :attr:`findings` and :attr:`edit_table`.
+    :attr:`completed_depths`, :attr:`completed_status`, :attr:`infill_effect`, :attr:`series_check`, :attr:`findings`
+    and :attr:`edit_table`.
 
     Parameters
     ----------
@@ -347,9 +366,9 @@ class InfillRun(Run):
         Every method scored on the same cases.
     completed
         The whole record infilled by the method that the job names, or by the one that the comparison takes.
-    name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, inputs, \
-versions, facts
-        As for :class:`Run`.
+    storms, name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, \
+inputs, versions, facts
+        As for :class:`AveragedRun`.
 
     Examples
     --------

@@ -24,6 +24,7 @@ _SCORES = (
     "scale", "gauge", "infill_method", "cases", "rmse", "mae", "bias", "depth_unit", "correlation", "hits", "misses",
     "false_alarms", "dry_hits", "top20_ratio", "chosen",
 )  # fmt: skip
+_DIFFERENCES = "infill_method best difference low high depth_unit distinguishable chosen skipped_because"
 
 
 def infill_scores(comparison: Comparison | None, depth_unit: str) -> pd.DataFrame:
@@ -61,14 +62,19 @@ def infill_scores(comparison: Comparison | None, depth_unit: str) -> pd.DataFram
     )
 
 
-def infill_differences(comparison: Comparison, depth_unit: str) -> pd.DataFrame:
+def infill_differences(comparison: Comparison | None, depth_unit: str) -> pd.DataFrame:
     """Return ``infill_differences``: one row per method compared, and one per method that could not be, with why.
+
+    None without a comparison.
 
     ``difference`` is the method's root-mean-square error less the best one's, ``low`` to ``high`` its 95 % bootstrap
     interval; NaN for a method that was skipped.
     """
     import pandas as pd
 
+    columns = _DIFFERENCES.split()
+    if comparison is None:
+        return pd.DataFrame(columns=columns)
     mm = depth_factor(depth_unit)
     rows: list[tuple[Any, ...]] = [
         (
@@ -88,8 +94,7 @@ def infill_differences(comparison: Comparison, depth_unit: str) -> pd.DataFrame:
         (label, comparison.best, np.nan, np.nan, np.nan, depth_unit, None, False, reason)
         for label, reason in comparison.skipped.items()
     ]
-    columns = "infill_method best difference low high depth_unit distinguishable chosen skipped_because"
-    return pd.DataFrame(rows, columns=columns.split())
+    return pd.DataFrame(rows, columns=columns)
 
 
 def infill_cases(comparison: Comparison, zone: str, depth_unit: str) -> pd.DataFrame:

@@ -33,6 +33,7 @@ def run_tables(run: Run) -> dict[str, pd.DataFrame]:
         }
         if run.comparison is not None:
             own["infill_scores"] = run.infill_scores
+            own["infill_differences"] = run.infill_differences
     elif isinstance(run, ScreenRun):
         own = {
             "completeness": run.completeness,
@@ -44,6 +45,8 @@ def run_tables(run: Run) -> dict[str, pd.DataFrame]:
             "infill_scores": run.infill_scores,
             "infill_differences": run.infill_differences,
             "infilled": run.infilled,
+            "infill_effect": run.infill_effect,
+            "series_check": run.series_check,
         }
     return {**own, "findings": run.findings, "edits": run.edit_table}
 
