@@ -132,7 +132,8 @@ def choose_infill(
         notes = (*notes, *comparison.notes)
     if whole_record and options.scale is None and not record.labels:
         options = replace(options, scale="day")
-    if options.chosen_method.needs_normals and ratios is None:
+    # Whatever the method: the others, which need normals, are set beside it.
+    if network.normals is not None and ratios is None:
         notes = (*notes, *suspect_normal_units(network))
     asked = replace(asked, scale=options.scale)
     return InfillChoice(record, network, options, asked, ratios, chosen, notes)

@@ -135,7 +135,7 @@ def test_weights_rebuilt_is_said() -> None:
     depths = average_storm(completed, averaging_method("thiessen")(network, square()))
     notes = list(storm_cautions("Q", network, square(), {"thiessen": depths}))
     assert [note.code for note in notes] == ["weights-rebuilt"]
-    assert notes[0].text.startswith("Gauges without a value even after infill (steps): B (1); the weights were rebuilt")
+    assert notes[0].text.startswith("Gauges without a value even after infill (steps): B (1); where others have")
 
 
 def test_a_basin_without_a_number_raises_no_false_warning() -> None:

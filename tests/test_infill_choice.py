@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -143,6 +144,22 @@ def test_a_whole_record_is_filled_day_by_day_unless_the_job_says(
     """The total of a record is no storm's."""
     job = job_with(tmp_path, f"method={method}", *([] if given is None else [f"scale={given}"]))
     assert choose_infill(job, RECORD, CROSS, quiet, whole_record=whole).options.scale == scale
+
+
+@pytest.mark.parametrize(
+    ("settings", "doubted"),
+    [
+        (["method=normal-ratio"], ["E"]),
+        (["method=station-average"], ["E"]),
+        (["method=leave-one-out"], ["E"]),
+        (["method=normal-ratio", "normals=record"], []),
+    ],
+)
+def test_given_normals_are_doubted_whatever_the_method(tmp_path: Path, settings: list[str], doubted: list[str]) -> None:
+    """Methods that need normals are compared with the job's own; not where normals come from the record."""
+    network = replace(CROSS, normals=np.array([[900.0], [950.0], [36.0], [1000.0], [920.0]]))
+    notes = choose_infill(job_with(tmp_path, *settings), RECORD, network, quiet).notes
+    assert [note.gauge for note in notes if note.code == "normal-unit"] == doubted
 
 
 def test_relations_are_those_of_the_whole_record(tmp_path: Path) -> None:

@@ -24,7 +24,8 @@ from basinrain.rainfall import RainRecord, Status
 
 __all__ = ["complete"]
 
-_YEAR: Final = np.timedelta64(365 * 86400, "s")
+_DAY: Final = np.timedelta64(86400, "s")
+_YEAR: Final = 365 * _DAY
 
 
 def complete(
@@ -158,6 +159,9 @@ def _scale(record: RainRecord, options: InfillOptions) -> str:
         return "storm"
     if options.scale is not None:
         return options.scale
+    # Where steps are a day or longer, each is the span of its own day.
+    if len(record) and np.median((record.ends - record.starts).astype(np.int64)) >= _DAY.astype(np.int64):
+        return "day"
     daily = not record.recorders.issuperset(record.gauges) or bool((record.status == Status.SPREAD).any())
     return "day" if daily else "storm"
 

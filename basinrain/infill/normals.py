@@ -11,6 +11,7 @@ import numpy.typing as npt
 
 from basinrain.errors import DataError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
+from basinrain.infill.spans import EXACT
 from basinrain.notes import Note
 
 __all__ = ["normals_of", "require_normals", "suspect_normal_units"]
@@ -18,6 +19,8 @@ __all__ = ["normals_of", "require_normals", "suspect_normal_units"]
 _NEIGHBOURS: Final = 5
 
 _CLOSE: Final = 0.12
+# For a gauge that stands out so much that another looks wrong beside it.
+_NEAR: Final = 0.3
 
 _DRIEST, _WETTEST = 10.0, 13000.0
 
@@ -131,7 +134,9 @@ def suspect_normal_units(network: GaugeNetwork) -> tuple[Note, ...]:
     -------
     tuple of Note
         ``normal-unit`` where the gauge's normal for the year over the median of those of its 5 nearest gauges is within
-        12 % of 25.4, 10, 2.54 or the inverse of one of them. A doubt only: relief can do that, too.
+        12 % of 25.4, 10, 2.54 or the inverse of one of them. The farthest from its neighbours comes first, and the
+        others are judged without it. Where a neighbour stands out more than a gauge in doubt, that neighbour is left
+        out, and named if within 30 %. Of two gauges alone both are named. A doubt only: relief can do that, too.
         ``normal-out-of-range``, one for all other gauges whose normal for the year is below 10 or above 13,000 mm: the
         wettest place known, Mawsynram, has about 11,900 mm a year (from memory), and what is drier than 10 mm a year
         is no country to take ratios in.
@@ -176,24 +181,53 @@ inches where the others are mm.
 def _unlike_neighbours(
     network: GaugeNetwork, known: npt.NDArray[np.int64], normals: npt.NDArray[np.float64]
 ) -> list[Note]:
-    """Return the warnings of gauges whose normals differ from their neighbours' by the ratio of two units."""
+    """Return the warnings of gauges whose normals differ from their neighbours' by the ratio of two units.
+
+    A wrong normal makes those around it look wrong, too, where they have few other neighbours. So the farthest from its
+    neighbours is judged first, and no further gauge is judged by it.
+    """
     part = network.subset(np.isin(np.arange(len(network)), known))
+    n = len(part)
     # The gauge itself comes first or among its twins; it is taken out by its number.
     order = part.nearest_first(part.distances())
-    others = order[order != np.arange(len(part))[:, None]].reshape(len(part), -1)[:, :_NEIGHBOURS]
-    mine = normals[known]
+    order = order[order != np.arange(n)[:, None]].reshape(n, -1)
+    mine, logs = normals[known], np.log(normals[known])
+    left = np.ones(n, dtype=bool)
+    near = list(order[:, :_NEIGHBOURS])
+    # Row k: the gauges that k is judged by.
+    judged_by = np.zeros((n, n), dtype=bool)
+    judged_by[np.arange(n)[:, None], order[:, :_NEIGHBOURS]] = True
     # Middle of the logarithms, so that a factor weighs the same up and down.
-    median = np.exp(np.median(np.log(mine[others]), axis=1))
-    notes = []
-    for k, (gauge, ratio) in enumerate(zip(part.ids, (mine / median).tolist(), strict=True)):
-        for factor, words in _UNIT_RATIOS:
-            if abs(ratio / factor - 1) <= _CLOSE:
-                notes.append(
-                    Note(
-                        code="normal-unit",
-                        text=f"Gauge {gauge}: its normal of {mine[k]:g} mm is {ratio:.2g} times the median of its "
-                        f"{others.shape[1]} nearest gauges' ({median[k]:.4g} mm), as if it were in {words}.",
-                        gauge=gauge,
-                    )
+    off = logs - np.median(logs[order[:, :_NEIGHBOURS]], axis=1)
+    factors = np.array([factor for factor, _ in _UNIT_RATIOS])
+    notes: dict[int, Note] = {}
+    while True:
+        suspected = np.flatnonzero(left & (np.abs(np.exp(off)[:, None] / factors - 1) <= _CLOSE).any(axis=1))
+        if not len(suspected):
+            break
+        farness = np.abs(off)
+        # Of two gauges alone either may be the wrong one: both are as far.
+        farthest = suspected[farness[suspected] >= farness[suspected].max() - EXACT]
+        around = np.unique(np.concatenate([near[k] for k in farthest.tolist()]))
+        farther = around[farness[around] > farness[farthest].max() + EXACT]
+        # What stands out more than the gauge that it makes suspect is the likelier culprit, if less near a ratio.
+        wrong = farther[[np.argmax(farness[farther])]] if len(farther) else farthest
+        for k in wrong.tolist():
+            ratio = float(np.exp(off[k]))
+            words = next((words for factor, words in _UNIT_RATIOS if abs(ratio / factor - 1) <= _NEAR), None)
+            if words is not None:
+                beside = "" if np.array_equal(near[k], order[k, : len(near[k])]) else " that are not in doubt"
+                notes[k] = Note(
+                    code="normal-unit",
+                    text=f"Gauge {part.ids[k]}: its normal of {mine[k]:g} mm is {ratio:.2g} times the median "
+                    f"of its {len(near[k])} nearest gauges'{beside} ({mine[k] / ratio:.4g} mm), as if it were "
+                    f"in {words}.",
+                    gauge=part.ids[k],
                 )
-    return notes
+        left[wrong] = False
+        for k in np.flatnonzero(left & judged_by[:, wrong].any(axis=1)).tolist():
+            near[k] = order[k][left[order[k]]][:_NEIGHBOURS]
+            judged_by[k, near[k]] = True
+            # The last one left has none to be judged by.
+            off[k] = logs[k] - np.median(logs[near[k]]) if len(near[k]) else 0.0
+    return [notes[k] for k in sorted(notes)]

@@ -37,7 +37,8 @@ class InfillOptions:
     method
         A registered method's name.
     scale
-        ``"step"``, ``"day"`` or ``"storm"``; None: day where a daily gauge takes part, else storm.
+        ``"step"``, ``"day"`` or ``"storm"``; None: day where a daily gauge takes part or steps are a day or longer,
+        else storm.
     longest_gap
         Days; longer gaps are left missing.
     nearest

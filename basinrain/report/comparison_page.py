@@ -8,7 +8,7 @@ import numpy as np
 
 from basinrain.infill import Completed, InfillOptions
 from basinrain.rainfall import Status
-from basinrain.report import comparison_list, completed_list, overview, provenance
+from basinrain.report import comparison_list, completed_list, effect_list, infill_list, overview, provenance
 from basinrain.report.error_map_figure import error_map_picture
 from basinrain.report.estimated_figure import estimated_picture
 from basinrain.report.fitness import fitness
@@ -69,6 +69,8 @@ def render_comparison(run: InfillRun) -> str:
             )
             if table
         ],
+        infilled=infill_list.infilled_shares(run),
+        effects=effect_list.storm_effects(run),
         fitness=fitness(run),
         inputs=provenance.inputs_table(run),
         versions=provenance.versions_table(run),

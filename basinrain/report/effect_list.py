@@ -13,7 +13,7 @@ from basinrain.report.figures import Picture
 from basinrain.report.hyetograph_figure import lead_method
 from basinrain.report.table import Row, Table
 from basinrain.report.words import DASH, counted, depth_text, number_text, percent_text, unit_text, unit_word
-from basinrain.results import StormResult, StormRun
+from basinrain.results import AveragedRun, StormResult
 from basinrain.series_check import COMPLETED, GAUGES, REPORTING_GAUGES, WET_DEPTH, SeriesCheck, SeriesFigures
 from basinrain.units import depth_factor
 
@@ -33,12 +33,12 @@ class StormEffect:
     tables: tuple[Table, ...]
 
 
-def storm_effects(run: StormRun) -> list[StormEffect]:
+def storm_effects(run: AveragedRun) -> list[StormEffect]:
     """Return the effect of the infill method in the first few storms."""
     return [_storm(run, result, k) for k, result in enumerate(limits.drawn_storms(run), start=1)]
 
 
-def _storm(run: StormRun, result: StormResult, number: int) -> StormEffect:
+def _storm(run: AveragedRun, result: StormResult, number: int) -> StormEffect:
     storm = result.storm.name
     basins = [(b, run.basins.ids[b]) for b in limits.drawn_basins(run)]
     tables: list[Table] = []

@@ -9,7 +9,6 @@ from typing import Final
 
 from markupsafe import Markup
 
-from basinrain.rainfall import RainRecord
 from basinrain.report.check_list import about
 from basinrain.report.job_lines import edit_text, needs_edit, screening_text
 from basinrain.report.table import Row, Table
@@ -82,15 +81,13 @@ def check_counts(findings: Sequence[Finding]) -> Table:
     )
 
 
-def finding_sections(findings: Sequence[Finding], record: RainRecord, *, depth_unit: str) -> list[FoundSection]:
+def finding_sections(findings: Sequence[Finding], *, depth_unit: str) -> list[FoundSection]:
     """Return one section a severity of which any finding is open, the heaviest first.
 
     Parameters
     ----------
     findings
         With their states.
-    record
-        The record that was screened: its span is that of edits that leave a side open.
     depth_unit
         The job's, in which it says the depth of an edit.
     """
@@ -109,9 +106,7 @@ def finding_sections(findings: Sequence[Finding], record: RainRecord, *, depth_u
         whole = {f.check for f in still} - {f.check for f in findings if f.state != "open" or f.severity != "remark"}
         printed = set(map(id, shown))
         listed = [f for _, ours in by_check for f in ours if f.check in whole or id(f) in printed]
-        edits = [
-            edit_text(f.edit, record, depth_unit=depth_unit) for f in shown if f.edit is not None and needs_edit(f)
-        ]
+        edits = [edit_text(f.edit, depth_unit=depth_unit) for f in shown if f.edit is not None and needs_edit(f)]
         more = len(still) - len(listed)
         sections.append(
             FoundSection(

@@ -10,7 +10,7 @@ from basinrain.infill.completed import Estimate
 from basinrain.report import limits
 from basinrain.report.table import Row, Table
 from basinrain.report.words import DASH, depth_text, percent_text, unit_word, weight_text, when_text, zone_text
-from basinrain.results import StormResult, StormRun
+from basinrain.results import AveragedRun, StormResult, StormRun
 from basinrain.tables import share_infilled
 from basinrain.units import depth_factor
 
@@ -112,7 +112,7 @@ def _donor_ranges(estimates: Sequence[Estimate]) -> str:
     return ", ".join(texts)
 
 
-def infilled_shares(run: StormRun) -> Table | None:
+def infilled_shares(run: AveragedRun) -> Table | None:
     """Return the share of the basin means that rests on estimates, where there is any; None where there is none."""
     rows: list[Row] = []
     for result in run.storms:

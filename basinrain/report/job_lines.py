@@ -7,8 +7,8 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from basinrain.rainfall import RainRecord
 from basinrain.screening import Finding
+from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS
 from basinrain.screening.edits import Edit
 from basinrain.units import depth_factor
 
@@ -67,9 +67,19 @@ def screening_text(findings: Sequence[Finding], whole: Sequence[str] = ()) -> st
     accept = [
         "short-record",
     ]
+    >>> years = Finding(check="inhomogeneous", gauge="A", evidence="4 of 4 tests.", action="Compare.")
+    >>> print(screening_text([years]))
+    [screening]
+    accept = [
+        # Look at these first, then accept them:
+        # "inhomogeneous A",
+    ]
     """
     accepted = [f for f in findings if not f.gauge or f.severity == "remark"]
-    rest = [f for f in findings if f.gauge and f.severity != "remark" and not needs_edit(f)]
+    decided = [f for f in findings if f.gauge and f.severity != "remark" and not needs_edit(f)]
+    # Of decades that do not fit, no entry can take the values away.
+    years = [f for f in decided if f.check in {DOUBLE_MASS_BREAK, INHOMOGENEOUS}]
+    rest = [f for f in decided if f not in years]
     lines: list[str] = []
     if rest:
         looked = [f for f in rest if not _rejects_it(f)]
@@ -78,40 +88,38 @@ def screening_text(findings: Sequence[Finding], whole: Sequence[str] = ()) -> st
             lines.append("    # Look at these first, then reject or accept them:")
             lines += [f"    # {_text(f.key)}," for f in looked]
         lines.append("]")
-    if accepted:
+    if accepted or years:
         entries = dict.fromkeys(f.check if f.check in whole else f.key for f in accepted)
-        lines += ["accept = [", *(f"    {_text(entry)}," for entry in entries), "]"]
+        lines += ["accept = [", *(f"    {_text(entry)}," for entry in entries)]
+        if years:
+            lines.append("    # Look at these first, then accept them:")
+            lines += [f"    # {_text(f.key)}," for f in years]
+        lines.append("]")
     return "\n".join(["[screening]", *lines]) if lines else ""
 
 
-def edit_text(edit: Edit, record: RainRecord, *, depth_unit: str) -> str:
-    """Return an edit as a job file says it; a side that it leaves open is the record's.
+def edit_text(edit: Edit, *, depth_unit: str) -> str:
+    """Return an edit as a job file says it; a side that it leaves open is left out.
 
     Who decides on it, and when, is left for that person to write.
 
     Examples
     --------
-    >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
-    >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[1.0], [2.0]], step="1h")
     >>> edit = Edit(gauge="A", action="scale", value=0.1, reason="Too much.", by="J. Marrow", date="2031-06-01")
-    >>> print(edit_text(edit, record, depth_unit="mm"))
+    >>> print(edit_text(edit, depth_unit="mm"))
     [[edit]]
     gauge = "A"
-    from = 2031-05-04T00:00:00
-    to = 2031-05-04T02:00:00
     action = "scale"
     value = 0.1
     reason = "Too much."
     by = ""
     date = ""
     """
-    start = record.starts[0] if np.isnat(edit.start) and len(record) else edit.start
-    end = record.ends[-1] if np.isnat(edit.end) and len(record) else edit.end
+    sides = [("from", edit.start), ("to", edit.end)]
     lines = [
         "[[edit]]",
         f"gauge = {_text(edit.gauge)}",
-        f"from = {start}",
-        f"to = {end}",
+        *(f"{key} = {time}" for key, time in sides if not np.isnat(time)),
         f"action = {_text(edit.action)}",
     ]
     value = edit.value

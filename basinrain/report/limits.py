@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.basins import UNION
-from basinrain.results import StormResult, StormRun
+from basinrain.results import AveragedRun, StormResult, StormRun
 
 __all__ = [
     "BASINS",
@@ -44,13 +44,13 @@ GAUGES: Final = 60
 """Networks up to this size are listed whole."""
 
 
-def drawn_basins(run: StormRun) -> list[int]:
+def drawn_basins(run: AveragedRun) -> list[int]:
     """Return the rows of the first dozen basins and of the union."""
     union = [b for b, basin in enumerate(run.basins.ids) if basin == UNION]
     return [b for b in range(len(run.basins)) if b not in union][:BASINS] + union
 
 
-def drawn_storms(run: StormRun) -> tuple[StormResult, ...]:
+def drawn_storms(run: AveragedRun) -> tuple[StormResult, ...]:
     """Return the first few storms."""
     return run.storms[:STORMS]
 

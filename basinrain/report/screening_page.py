@@ -48,7 +48,7 @@ def render_screening(run: ScreenRun) -> str:
         # With what was rejected shown as such.
         availability=availability_picture(run.record),
         completeness=screened_list.completeness_table(run.record),
-        found=findings_list.finding_sections(screening.findings, record, depth_unit=run.depth_unit),
+        found=findings_list.finding_sections(screening.findings, depth_unit=run.depth_unit),
         settled=findings_list.settled_table(screening.findings),
         clock=zone_text(record.zone),
         edits=edit_table(run.edit_rows, depth_unit=run.depth_unit),

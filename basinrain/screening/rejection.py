@@ -45,7 +45,8 @@ def settle_findings(
     Raises
     ------
     JobError
-        An entry names no finding, a finding is both rejected and accepted, an entry accepts only findings whose values
+        An entry names no finding, or none but those of another entry of its list, a finding is both rejected and
+        accepted, an entry accepts only findings whose values
         are gone, or a finding is to be rejected that has no values of its own: about the network as a whole, or about
         years that do not go together; all of it together.
 
@@ -66,8 +67,15 @@ finding or its leading words; the nearest: stuck-values W03, stuck-values W04
     problems = Problems()
     named: dict[str, dict[int, str]] = {"reject": {}, "accept": {}}
     for option, entries in (("reject", reject), ("accept", accept)):
-        for entry in entries:
-            matched = [k for k, finding in enumerate(findings) if _names(entry, finding)]
+        of_entries = [[k for k, finding in enumerate(findings) if _names(entry, finding)] for entry in entries]
+        for e, f in _covered(entries, of_entries):
+            problems.add(
+                item=f"[screening] {option} '{entries[e]}'",
+                found=f"only findings that '{entries[f]}' in the same list names",
+                expected="entries that do not overlap",
+                remedy="remove one of the two",
+            )
+        for entry, matched in zip(entries, of_entries, strict=True):
             if not matched:
                 problems.add(
                     item=f"[screening] {option} '{entry}'",
@@ -147,6 +155,21 @@ def _names(entry: str, finding: Finding) -> bool:
         return True
     of_time = len(words) == len(key) and not finding.whole_record
     return of_time and whole.startswith(last) and whole[len(last)] in "-T:"
+
+
+def _covered(entries: Sequence[str], named: Sequence[Sequence[int]]) -> list[tuple[int, int]]:
+    """Return the positions of entries all of whose findings another names, and of the first that does.
+
+    Of two that name the same findings the one with more words counts as covered, of equal ones the later.
+    """
+    # The widest first: only what comes before an entry can cover it.
+    ranked = sorted(range(len(entries)), key=lambda e: (-len(named[e]), len(entries[e].split()), e))
+    covered = []
+    for n, e in enumerate(ranked):
+        by = next((f for f in ranked[:n] if named[e] and set(named[e]) <= set(named[f])), None)
+        if by is not None:
+            covered.append((e, by))
+    return sorted(covered)
 
 
 def _unfit(finding: Finding) -> tuple[str, str] | None:

@@ -158,10 +158,12 @@ def test_the_files_are_these_and_the_record_keeps_its_schema(tmp_path: Path) -> 
         "findings.csv",
         "infill_cases.csv",
         "infill_differences.csv",
+        "infill_effect.csv",
         "infill_scores.csv",
         "infilled.csv",
         "record.json",
         "report.html",
+        "series_check.csv",
     ]
     (mean,) = [
         score
@@ -188,7 +190,8 @@ def test_the_winner_by_name_gives_the_same_storm(tmp_path: Path) -> None:
         for folder in (scored, tmp_path / "named")
     ]
     assert len(files[0].pop("infill_scores.csv").splitlines()) > 20
-    assert "infill_scores.csv" not in files[1]
+    assert len(files[0].pop("infill_differences.csv").splitlines()) > 5
+    assert not {"infill_scores.csv", "infill_differences.csv"} & set(files[1])
     assert files[0] == files[1]
     assert len(pd.read_csv(scored / "storm" / "infilled.csv")) > 5
 

@@ -158,6 +158,16 @@ class TestScale:
         assert self.used(with_status(record, "C", slice(None), Status.SPREAD)) == "day"
         assert self.used(replace(record, recorders=frozenset("AB"))) == "day"
 
+    @pytest.mark.parametrize(("hours", "scale"), [(12, "storm"), (24, "day"), (48, "day")])
+    def test_day_where_steps_are_a_day_or_longer(self, hours: int, scale: str) -> None:
+        """All gauges have these steps; from a day on each is filled by itself, so the two gaps are two estimates."""
+        length = np.timedelta64(hours, "h")
+        ends = np.datetime64("2031-05-04", "s") + np.arange(1, 3) * length
+        depths = np.column_stack(self.SILENT)
+        record = RainRecord.from_depths(("A", "B", "C"), ends - length, ends, depths, step=f"{hours}h")
+        estimates = complete(record, network(3), InfillOptions()).estimates
+        assert [estimate.scale for estimate in estimates] == [scale] * (1 if scale == "storm" else 2)
+
 
 class TestTotals:
     """Records of storm totals without times."""

@@ -124,6 +124,29 @@ def test_of_two_gauges_either_may_be_the_wrong_one() -> None:
     assert suspect_normal_units(network(None)) == ()
 
 
+def test_of_three_gauges_the_wrong_one_is_named() -> None:
+    """C has 1,200 mm in cm: beside it A is 2.6 times the middle of B and C, yet C stands out more, and A fits B."""
+    (note,) = suspect_normal_units(row(900, 1000, 120))
+    assert note.text == (
+        "Gauge C: its normal of 120 mm is 0.13 times the median of its 2 nearest gauges' (948.7 mm), "
+        "as if it were in cm where the others are mm."
+    )
+
+
+def test_gauges_are_judged_without_those_in_doubt() -> None:
+    """C and E are in inches; E, nearer its neighbours by little, is then judged by the others alone."""
+    first, second = suspect_normal_units(row(800, 850, 33.1, 900, 35, 870, 850, 860))
+    assert (first.gauge, second.gauge) == ("C", "E")
+    assert "its 5 nearest gauges' (850 mm), as if it were in inches" in first.text
+    assert "its 5 nearest gauges' that are not in doubt (860 mm), as if it were in inches" in second.text
+
+
+def test_a_neighbour_on_a_mountain_is_left_out_unnamed() -> None:
+    """E has five times as much, no ratio of units; D in cm among inches is named though E stands out more."""
+    (note,) = suspect_normal_units(row(800, 850, 900, 2200, 4350, 870, 880))
+    assert (note.gauge, note.code) == ("D", "normal-unit")
+
+
 def test_normals_that_no_place_has_are_doubted() -> None:
     """All read as inches, 20 to 25 m a year: 11.9 m at Mawsynram, the wettest place known (from memory), are not."""
     (note,) = suspect_normal_units(row(*(25.4 * np.array([800.0, 850, 900, 950, 1000]))))

@@ -33,6 +33,7 @@ def make_infill_run(
         basins=base.basins,
         plane=base.plane,
         record=base.record,
+        storms=base.storms[:1],
         comparison=comparison,
         completed=replace(completed, notes=(left,)),
         notes=notes,

@@ -6,7 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from report.screen_pieces import make_findings, make_monthly
+from report.screen_pieces import make_findings
 
 from basinrain.report import findings_list
 from basinrain.report.findings_list import (
@@ -18,11 +18,9 @@ from basinrain.report.findings_list import (
 )
 from basinrain.screening import Finding
 
-RECORD = make_monthly()
-
 
 def _sections(*findings: Finding) -> list[FoundSection]:
-    return finding_sections(findings or make_findings(), RECORD, depth_unit="mm")
+    return finding_sections(findings or make_findings(), depth_unit="mm")
 
 
 def _plain(cell: str) -> str:

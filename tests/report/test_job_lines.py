@@ -6,13 +6,11 @@ from typing import Any
 
 import numpy as np
 import pytest
-from report.screen_pieces import make_findings, make_monthly
+from report.screen_pieces import make_findings
 
 from basinrain.report.job_lines import edit_text, needs_edit, screening_text
 from basinrain.screening import Finding, settle_findings
 from basinrain.screening.edits import SUGGESTED, Edit
-
-RECORD = make_monthly()
 
 
 def _with_reject(finding: Finding) -> Finding:
@@ -68,23 +66,23 @@ def test_an_edit_is_pasted_whole_and_leaves_author_and_date_to_write() -> None:
     """Times are TOML's own; nobody's name is put under it."""
     edit = make_findings()[1].edit
     assert edit is not None
-    read = tomllib.loads(edit_text(edit, RECORD, depth_unit="mm"))["edit"][0]
+    read = tomllib.loads(edit_text(edit, depth_unit="mm"))["edit"][0]
     assert (read["gauge"], read["action"], read["value"]) == ("B", "shift", "1h")
     assert read["from"].isoformat() == "2004-05-01T00:00:00"
     assert (read["by"], read["date"]) == ("", "")
 
 
-def test_an_edit_of_the_whole_record_has_the_records_ends() -> None:
-    """A job's edit needs both sides."""
+def test_an_edit_of_the_whole_record_leaves_both_sides_open() -> None:
+    """A side that is left out is the record's own."""
     edit = Edit(gauge="A", action="scale", value=25.4, reason="inches", by=SUGGESTED)
-    read = tomllib.loads(edit_text(edit, RECORD, depth_unit="in"))["edit"][0]
-    assert (read["from"].isoformat(), read["to"].isoformat()) == ("2001-01-01T00:00:00", "2031-01-01T00:00:00")
+    read = tomllib.loads(edit_text(edit, depth_unit="in"))["edit"][0]
+    assert not {"from", "to"} & set(read)
     assert read["value"] == 25.4
 
 
 def test_a_depth_to_set_is_in_the_jobs_unit() -> None:
     """50.8 mm are 2 in; without a value there is no line for it."""
     edit = Edit(gauge="A", action="set", value=50.8, reason="chart", by=SUGGESTED)
-    assert tomllib.loads(edit_text(edit, RECORD, depth_unit="in"))["edit"][0]["value"] == pytest.approx(2)
+    assert tomllib.loads(edit_text(edit, depth_unit="in"))["edit"][0]["value"] == pytest.approx(2)
     reject = Edit(gauge="A", action="reject", reason="ice", by=SUGGESTED)
-    assert "value" not in edit_text(reject, RECORD, depth_unit="in")
+    assert "value" not in edit_text(reject, depth_unit="in")

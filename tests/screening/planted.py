@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cache
 
 import numpy as np
@@ -12,23 +12,31 @@ from scipy.signal import lfilter
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.rainfall import RainRecord
+from basinrain.screening import ScreeningOptions
+from basinrain.screening.envelope import envelope_depth, world_depth
 
 Floats = npt.NDArray[np.float64]
 Generator = np.random.Generator
 
 DAY = 86400
 N_GAUGES = 12
+REGION = ((1.0, 90.0), (24.0, 260.0), (72.0, 420.0), (720.0, 1100.0))
+"""Hours and mm of an invented region's greatest depths, above all that falls in the clean records."""
 
 
 @dataclass(frozen=True, eq=False)
 class Planted:
-    """A record with one fault: whose it is and where it stands, as steps ``first`` to ``stop`` (not included)."""
+    """A record with one fault: whose it is and where it stands, as steps ``first`` to ``stop`` (not included).
+
+    ``options`` is what the user says of the record.
+    """
 
     record: RainRecord
     network: GaugeNetwork
     gauge: str
     first: int
     stop: int
+    options: ScreeningOptions = field(default_factory=ScreeningOptions)
 
     @property
     def start(self) -> np.datetime64:
@@ -149,6 +157,15 @@ def clean_hours(seed: int, days: int = 365) -> tuple[GaugeNetwork, Floats]:
     return network, _gaps(rng, rain(rng, network, HOURS, 24 * days, wetness), 0.01, 30)
 
 
+@cache
+def thirty_years(seed: int) -> tuple[GaugeNetwork, Floats]:
+    """Return a network and thirty calendar years of clean days from 2021, none missing."""
+    rng = np.random.default_rng([seed, 4])
+    network = drawn_network(rng)
+    n = int((np.datetime64("2051-01-01") - np.datetime64("2021-01-01")).astype(np.int64))
+    return network, rain(rng, network, FRONTS, n, rng.uniform(0.75, 1.35, len(network)))
+
+
 def _wet_places(depths: Floats, gauge: int, length: int, least: float) -> npt.NDArray[np.int64]:
     """Return where stretches begin with so much or more by the mean of the gauges, over which the gauge reports."""
     middle = np.nan_to_num(np.nanmean(depths, axis=1))
@@ -169,6 +186,44 @@ def _impossible(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, 
     first = int(rng.integers(len(depths)))
     depths[first, g] = rng.uniform(450, 900) if per == 24 else rng.uniform(1900, 4000)
     return first, first + 1
+
+
+def _implausible(limit: Callable[[float], float]) -> Fault:
+    """Return the planting of 1.02 to 1.8 times the limit over one or three steps, the rain unevenly among them."""
+
+    def plant(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+        length = int(rng.choice([1, 3]))
+        first = int(rng.integers(len(depths) - length + 1))
+        total = limit(length * 24 / per) * rng.uniform(1.02, 1.8)
+        depths[first : first + length, g] = total * rng.dirichlet(np.full(length, 5.0))
+        return first, first + length
+
+    return plant
+
+
+def _decimal_hour(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Make the depth of an hour with 4 mm or more ten times too great."""
+    first = int(rng.choice(np.flatnonzero(depths[:, g] >= 4)))
+    depths[first, g] *= 10
+    return first, first + 1
+
+
+def _cloudburst(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Add 40 to 120 mm to an hour, whatever the weather."""
+    first = int(rng.choice(np.flatnonzero(np.isfinite(depths[:, g]))))
+    depths[first, g] += rng.uniform(40, 120)
+    return first, first + 1
+
+
+def _zero_hours(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Put zeros over a day on which all gauges but one have 1 mm or more and together 12 mm or more on average."""
+    days = depths.reshape(-1, per, depths.shape[1]).sum(axis=1)
+    told = np.isfinite(days[:, g]) & (np.isfinite(days).sum(axis=1) > days.shape[1] // 2)
+    places = np.flatnonzero(told)
+    kept = (np.sort(days[places], axis=1)[:, 1] >= 1) & (np.nanmean(days[places], axis=1) >= 12)
+    first = int(rng.choice(places[kept])) * per
+    depths[first : first + per, g] = 0
+    return first, first + per
 
 
 def _zero_day(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
@@ -279,26 +334,81 @@ def _other_hours(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int,
     return 0, len(depths)
 
 
+def _complete(years: int) -> Fault:
+    """Return the planting that leaves so many years complete, less up to 18 days, and takes 19 or more from others."""
+
+    def plant(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+        year = (np.datetime64("2021-01-01") + np.arange(len(depths))).astype("datetime64[Y]").astype(np.int64)
+        kept = rng.choice(np.unique(year), years, replace=False)
+        for one in np.unique(year):
+            days = np.flatnonzero(year == one)
+            # 95 % of 365 or 366 days are all but 18.25 or 18.3.
+            lost = int(rng.integers(0, 19) if one in kept else rng.choice([19, int(rng.integers(19, 366)), len(days)]))
+            depths[rng.choice(days, lost, replace=False), g] = np.nan
+        return 0, len(depths)
+
+    return plant
+
+
+def _nothing(rng: Generator, depths: Floats, g: int, per: int) -> tuple[int, int]:
+    """Change nothing: the fault is what the user says of the gauge."""
+    return 0, len(depths)
+
+
+def _third_of_world(hours: float) -> float:
+    return world_depth(hours) / 3
+
+
+def _of_region(hours: float) -> float:
+    return envelope_depth(REGION, hours)
+
+
+def _no_words(gauge: str) -> ScreeningOptions:
+    return ScreeningOptions()
+
+
+def _regional(gauge: str) -> ScreeningOptions:
+    return ScreeningOptions(envelope=REGION)
+
+
+def _unheated(gauge: str) -> ScreeningOptions:
+    return ScreeningOptions(unheated=(gauge,), cold_months=(12, 1, 2))
+
+
 @dataclass(frozen=True)
 class Kind:
-    """One kind of fault: the check that should find it, what is planted, and in which records."""
+    """One kind of fault: the check that should find it, what is planted, and in which records.
+
+    ``says`` gives the user's options from the gauge; ``severity``, where given, is the one that the finding must have;
+    ``evidence`` are words that must stand in it, ``{gauge}`` for the gauge.
+    """
 
     name: str
     check: str
     plant: Fault
     scales: tuple[str, ...] = ("day", "hour")
+    says: Callable[[str], ScreeningOptions] = _no_words
+    severity: str = ""
+    evidence: str = ""
 
 
 KINDS = (
     Kind("impossible depth", "greatest-depths", _impossible),
+    Kind("over a third of the world's", "greatest-depths", _implausible(_third_of_world), severity="doubtful"),
+    Kind("over the region's", "greatest-depths", _implausible(_of_region), says=_regional, severity="doubtful"),
     Kind("decimal point", "spatial-outlier", _decimal_point, ("day",)),
+    Kind("decimal point in an hour", "spatial-outlier", _decimal_hour, ("hour",)),
+    Kind("40 to 120 mm too much in an hour", "spatial-outlier", _cloudburst, ("hour",)),
     Kind("zero among wet", "zero-among-wet", _zero_day, ("day",)),
+    Kind("a day of zeros among wet", "zero-among-wet", _zero_hours, ("hour",)),
     Kind("zeros for 30 to 90 days", "zero-run", _zeros),
     Kind("stuck value", "stuck-values", _stuck),
     Kind("missing code", "missing-code", _code),
     Kind("inches as mm throughout", "unit-mixup", _unit(1 / 25.4, (999, 999))),
     Kind("tenths as mm for 3 to 12 months", "unit-mixup", _unit(10.0, (3, 12))),
     Kind("tenths as mm for 1 or 2 months", "unit-mixup", _unit(10.0, (1, 2))),
+    Kind("25.4 times for 3 to 12 months", "unit-mixup", _unit(25.4, (3, 12))),
+    Kind("25.4 times for 1 or 2 months", "unit-mixup", _unit(25.4, (1, 2))),
     Kind("2.54 times for 6 to 18 months", "unit-mixup", _unit(2.54, (6, 18)), ("day",)),
     Kind("a day late throughout", "shifted-record", _shift((-1, 1), 9999), ("day",)),
     Kind("a day late for a year", "shifted-record", _shift((-1, 1), 365), ("day",)),
@@ -308,6 +418,23 @@ KINDS = (
     Kind("accumulation", "unflagged-accumulation", _accumulated, ("day",)),
     Kind("Monday readings", "unflagged-accumulation", _mondays, ("day",)),
     Kind("days that end at another hour", "reading-hours", _other_hours, ("day",)),
+    Kind(
+        "4 complete years of 30",
+        "short-record",
+        _complete(4),
+        ("thirty years",),
+        evidence="1 gauge has fewer than the 10 complete years that normals take (95 % of the days of each): "
+        "{gauge} 4.",
+    ),
+    Kind(
+        "12 complete years of 30",
+        "short-record",
+        _complete(12),
+        ("thirty years",),
+        evidence="1 gauge has fewer than the 30 complete years of a standard normal (95 % of the days of each): "
+        "{gauge} 12.",
+    ),
+    Kind("unheated in cold months", "cold-season", _nothing, says=_unheated, severity="remark"),
 )
 
 
@@ -317,9 +444,11 @@ def planted(kind: Kind, scale: str, seed: int) -> Planted:
     No threshold was chosen by these records.
     """
     rng = np.random.default_rng([seed, 3, sum(kind.name.encode())])
-    network, clean = clean_days(100 + seed % 20) if scale == "day" else clean_hours(100 + seed % 20)
+    source = {"day": clean_days, "hour": clean_hours, "thirty years": thirty_years}[scale]
+    network, clean = source(100 + seed % 20)
     depths = clean.copy()
     g = int(rng.integers(len(network)))
-    seconds = DAY if scale == "day" else 3600
+    seconds = 3600 if scale == "hour" else DAY
     first, stop = kind.plant(rng, depths, g, DAY // seconds)
-    return Planted(record_of(network, depths, seconds), network, network.ids[g], first, stop)
+    gauge = network.ids[g]
+    return Planted(record_of(network, depths, seconds), network, gauge, first, stop, kind.says(gauge))

@@ -9,11 +9,14 @@ from functools import cache
 
 from screening.planted import DAY, KINDS, Kind, clean_days, clean_hours, planted, record_of
 
-from basinrain.screening import CHECKS, Finding, ScreeningOptions, screen
+from basinrain.screening import CHECKS, Finding, screen
 from basinrain.screening.screened import Screened
 
 PLANTINGS = 200
 CLEAN = 50
+
+_OF_OTHERS = ("one-record-two-gauges", "short-record")
+"""Checks whose findings name the gauge among others."""
 
 
 @dataclass(frozen=True)
@@ -45,12 +48,13 @@ class Alarms:
 def hits(kind: Kind, scale: str, seed: int) -> bool:
     """Return whether the check finds the fault of this seed: at its gauge and in its stretch."""
     fault = planted(kind, scale, seed)
-    view = Screened(fault.record, fault.network, ScreeningOptions())
+    view = Screened(fault.record, fault.network, fault.options)
 
     def meant(finding: Finding) -> bool:
-        twins = (finding.gauge, *finding.others) if kind.check == "one-record-two-gauges" else (finding.gauge,)
+        concerned = (finding.gauge, *finding.others) if kind.check in _OF_OTHERS else (finding.gauge,)
         there = finding.whole_record or (finding.start < fault.end and finding.end > fault.start)
-        return bool(fault.gauge in twins and there)
+        told = kind.severity in ("", finding.severity) and kind.evidence.format(gauge=fault.gauge) in finding.evidence
+        return bool(fault.gauge in concerned and there and told)
 
     return any(meant(finding) for finding in CHECKS[kind.check].run(view))
 

@@ -122,7 +122,7 @@ def test_a_rejected_whole_record() -> None:
 def test_accepting_only_what_is_gone(reject: str, accept: str, text: str) -> None:
     """An entry that accepts nothing but findings whose values another rejects would mislead."""
     with pytest.raises(JobError, match=re.escape(text)) as caught:
-        within(reject=[reject], accept=[accept, accept])
+        within(reject=[reject], accept=[accept])
     assert len(caught.value.problems) == 1
 
 
@@ -132,8 +132,8 @@ def test_gathered_stretches_between() -> None:
 
 
 def test_both_lists() -> None:
-    """What is neither rejected nor accepted stays as it was; an entry may be given twice."""
-    assert states(reject=["stuck-values", "stuck-values"], accept=["unit-mixup W03", "reading-hours"]) == "aorra"
+    """What is neither rejected nor accepted stays as it was."""
+    assert states(reject=["stuck-values"], accept=["unit-mixup W03", "reading-hours"]) == "aorra"
     assert states() == "ooooo"
     assert settle_findings(()) == ()
 
@@ -194,6 +194,38 @@ def test_decades_are_not_rejected_by_a_word(check: str, text: str) -> None:
     assert rejected_findings([finding], [check]) == ()
     with pytest.raises(JobError, match=rf"reject '{check} A': found a .*{re.escape(text)}"):
         settle_findings([finding], reject=[f"{check} A"])
+
+
+@pytest.mark.parametrize("option", ["reject", "accept"])
+@pytest.mark.parametrize(
+    ("entries", "told"),
+    [
+        (["unit-mixup W04", "unit-mixup"], [("unit-mixup W04", "unit-mixup")]),
+        (["unit-mixup", "unit-mixup W04"], [("unit-mixup W04", "unit-mixup")]),
+        # The same findings: the longer of the two, and the later of equal ones.
+        (["stuck-values W03", "stuck-values"], [("stuck-values W03", "stuck-values")]),
+        (["stuck-values", "stuck-values"], [("stuck-values", "stuck-values")]),
+        (
+            ["stuck-values W03 2031", "unit-mixup W03", "unit-mixup", "stuck-values"],
+            [("stuck-values W03 2031", "stuck-values"), ("unit-mixup W03", "unit-mixup")],
+        ),
+    ],
+)
+def test_entries_that_overlap(option: str, entries: list[str], told: list[tuple[str, str]]) -> None:
+    """An entry all of whose findings another of its list names is refused, and that other is named."""
+    with pytest.raises(JobError, match="expected entries that do not overlap; remove one of the two") as caught:
+        states(**{option: entries})
+    assert [(problem.item, problem.found) for problem in caught.value.problems] == [
+        (f"[screening] {option} '{entry}'", f"only findings that '{by}' in the same list names") for entry, by in told
+    ]
+
+
+def test_entries_side_by_side() -> None:
+    """Entries that name different findings do not overlap, nor do those that name nothing."""
+    assert states(accept=["unit-mixup W03", "unit-mixup W04", "stuck-values W03"]) == "aaaao"
+    with pytest.raises(JobError, match="found no such finding") as caught:
+        states(reject=["unit-mixup", "unit-mixup W05"])
+    assert len(caught.value.problems) == 1
 
 
 def test_nothing_found() -> None:

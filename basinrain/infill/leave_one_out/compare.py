@@ -131,7 +131,13 @@ def compare_infill(
     runners, skipped, able = _able(given, fit, cases, progress or (lambda _: None), instead)
     result = _scored(runners, cases, network)
     if not len(result.compared):
-        _no_case(cases, skipped, instead, by=f" by each of {', '.join(runner.label for runner in runners)}")
+        _no_case(
+            cases,
+            skipped,
+            instead,
+            days=len(days.ends),
+            by=f" by each of {', '.join(runner.label for runner in runners)}",
+        )
     scores = list(result.scores)
     if finer:
         scores += _scored(runners, steps_of_cases(record, days, cases), network).scores
@@ -256,7 +262,7 @@ def _able(
         counts.append(count)
     most = max(counts, default=0)
     if not most:
-        _no_case(cases, skipped, instead)
+        _no_case(cases, skipped, instead, days=len(fit.days.ends))
     able = [(runner.options.chosen_method, count) for runner, count in zip(runners, counts, strict=True) if count]
     by_position = [count for method, count in able if not (method.needs_normals or method.needs_relations)]
     usual = int(np.median(by_position or [count for _, count in able]))
@@ -287,15 +293,16 @@ def _too_few(options: InfillOptions, count: int, usual: int, fit: CrossFit) -> s
     return "; ".join(why)
 
 
-def _no_case(cases: Cases, skipped: dict[str, str], instead: str, *, by: str = "") -> NoReturn:
+def _no_case(cases: Cases, skipped: dict[str, str], instead: str, *, days: int, by: str = "") -> NoReturn:
     what = cases.noun
+    none = "no whole rainfall day" if what == "day" and not days else f"no wet {what}"
     why = "".join(f"; {label}: {reason}" for label, reason in skipped.items())
     on = f"any of {len(cases):,} wet {what}s" if len(cases) > 1 else f"the one wet {what}"
     found = f"no gauge that could be estimated from others{by} on {on}{why}"
     raise DataError(
         Problem(
             item="leave-one-out comparison",
-            found=found if len(cases) else f"no wet {what}",
+            found=found if len(cases) else none,
             expected=f"wet {what}s on which several gauges have values",
             remedy="give a longer record, "
             + ("loosen radius, elevation_limit or min_donors, " if len(cases) else "")

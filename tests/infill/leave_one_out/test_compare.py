@@ -298,6 +298,18 @@ def test_no_case(network: GaugeNetwork) -> None:
         compare_infill(daily_record(network, lonely[:1]), network, options=ANY_DONOR)
 
 
+@pytest.mark.parametrize(("hours", "found"), [(23, "no whole rainfall day"), (24, "no wet day")])
+def test_no_whole_day(network: GaugeNetwork, hours: int, found: str) -> None:
+    """It rains throughout, but the day lacks an hour; a whole day without rain is another matter."""
+    ends = np.datetime64("2031-05-04", "s") + np.arange(1, hours + 1) * np.timedelta64(3600, "s")
+    depths = np.full((hours, 6), 5.0 if hours < 24 else 0.0)
+    record = RainRecord.from_depths(network.ids, ends - 3600, ends, depths, step="1h")
+    with pytest.raises(
+        DataError, match=rf"found {found}; expected wet days on which several gauges have values; give a"
+    ):
+        compare_infill(record, network, options=ANY_DONOR)
+
+
 def test_no_case_in_common(record: RainRecord, network: GaugeNetwork, monkeypatch: pytest.MonkeyPatch) -> None:
     """Candidates that can estimate different gauges only cannot be compared, and are named."""
     nearby = Candidate(label="nearby", options=InfillOptions(method="nearest-gauge", radius=5e3))
