@@ -13,7 +13,7 @@ from basinrain.report.figures import Picture
 from basinrain.report.hyetograph_figure import lead_method
 from basinrain.report.table import Row, Table
 from basinrain.report.words import DASH, counted, depth_text, number_text, percent_text, unit_text, unit_word
-from basinrain.results import AveragedRun, StormResult
+from basinrain.results import AveragedRun, InfillRun, StormResult
 from basinrain.series_check import COMPLETED, GAUGES, REPORTING_GAUGES, WET_DEPTH, SeriesCheck, SeriesFigures
 from basinrain.units import depth_factor
 
@@ -34,26 +34,27 @@ class StormEffect:
 
 
 def storm_effects(run: AveragedRun) -> list[StormEffect]:
-    """Return the effect of the infill method in the first few storms."""
+    """Return the effect of the infill method in the first few storms, or in the whole record of a comparison."""
     return [_storm(run, result, k) for k, result in enumerate(limits.drawn_storms(run), start=1)]
 
 
 def _storm(run: AveragedRun, result: StormResult, number: int) -> StormEffect:
-    storm = result.storm.name
+    whole = isinstance(run, InfillRun)
+    storm = result.storm.name.capitalize() if whole else result.storm.name
     basins = [(b, run.basins.ids[b]) for b in limits.drawn_basins(run)]
     tables: list[Table] = []
     pictures: list[Picture] = []
     sentences: list[str] = []
     effect = result.effect
     if effect is None:
-        sentences.append("Nothing was infilled in this storm, so no infill method moves its means.")
+        where = "the record" if whole else "this storm"
+        sentences.append(f"Nothing was infilled in {where}, so no infill method moves its means.")
     else:
         lead = lead_method(result)
         picture = effect_picture(effect, lead, basins, depth_unit=run.depth_unit, name=f"effect-{number}", storm=storm)
         pictures += [picture] if picture else []
-        sentences.append(
-            f"The storm was completed anew by {counted(len(effect.methods), 'infill method')}, and averaged each time."
-        )
+        what, methods = "record" if whole else "storm", counted(len(effect.methods), "infill method")
+        sentences.append(f"The {what} was completed anew by {methods}, and averaged each time.")
         sentences += _skipped(effect)
         tables += [
             spread_table(effect, basins, depth_unit=run.depth_unit, storm=storm),

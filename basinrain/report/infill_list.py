@@ -10,7 +10,7 @@ from basinrain.infill.completed import Estimate
 from basinrain.report import limits
 from basinrain.report.table import Row, Table
 from basinrain.report.words import DASH, depth_text, percent_text, unit_word, weight_text, when_text, zone_text
-from basinrain.results import AveragedRun, StormResult, StormRun
+from basinrain.results import AveragedRun, InfillRun, StormResult, StormRun
 from basinrain.tables import share_infilled
 from basinrain.units import depth_factor
 
@@ -113,22 +113,28 @@ def _donor_ranges(estimates: Sequence[Estimate]) -> str:
 
 
 def infilled_shares(run: AveragedRun) -> Table | None:
-    """Return the share of the basin means that rests on estimates, where there is any; None where there is none."""
+    """Return the share of the basin means that rests on estimates, where there is any; None where there is none.
+
+    The whole record of a comparison is not named in its lines, since there is no other.
+    """
+    whole = isinstance(run, InfillRun)
     rows: list[Row] = []
     for result in run.storms:
         share = np.array([share_infilled(result, method) for method in result.depths])
+        storm = () if whole else (result.storm.name,)
         rows += [
-            (result.storm.name, run.basins.ids[b], *(percent_text(float(s)) for s in share[:, b]))
+            (*storm, run.basins.ids[b], *(percent_text(float(s)) for s in share[:, b]))
             for b in limits.drawn_basins(run)
             if (np.nan_to_num(share[:, b]) > 0).any()
         ]
     if not rows:
         return None
-    n = len(run.methods)
+    heads = ("basin",) if whole else ("storm", "basin")
+    file = "infill_effect.csv" if whole else "basin_means.csv"
     return Table(
         caption="Share of the basin means that rests on infilled values",
-        heads=("storm", "basin", *run.methods),
-        align="tt" + "n" * n,
+        heads=(*heads, *run.methods),
+        align="t" * len(heads) + "n" * len(run.methods),
         rows=rows,
-        notes=("Basins without any are left out. All shares are in basin_means.csv.",),
+        notes=(f"Basins without any are left out. All shares are in {file}.",),
     )

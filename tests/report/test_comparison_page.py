@@ -2,11 +2,13 @@ from __future__ import annotations
 
 import time
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
+import pandas as pd
 import pytest
 from report.comparison_pieces import make_comparison, make_network
-from report.infill_pieces import make_infill_run
+from report.infill_pieces import make_infill_run, run_three_gauges
 from report.markup import Page, check_page
 
 from basinrain.infill import InfillOptions
@@ -14,6 +16,7 @@ from basinrain.infill.leave_one_out import compare_infill
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 from basinrain.report import render_comparison
+from basinrain.report.words import NARROW_SPACE
 
 SCRIPT = "<script>alert(1)</script>"
 
@@ -123,6 +126,47 @@ def test_nothing_infilled_is_said() -> None:
     html = render_comparison(replace(run, completed=replace(run.completed, record=full, estimates=(), notes=())))
     assert "Nothing was infilled." in html
     assert "Left without a depth" not in html
+
+
+def _rests(html: str) -> str:
+    text = Page(html).text.replace(NARROW_SPACE, " ")
+    begin = text.rindex("5 How much rests on infill")
+    return text[begin : text.index("6 Is the record fit to use", begin)]
+
+
+def test_how_much_rests_on_infill(tmp_path: Path) -> None:
+    """By hand: the mean of A's 26 and B's 28 mm is 27; 3 mm of it, 11.1 %, are half of B's estimate of 6 mm.
+
+    By the nearest gauge B has A's 5 mm, and the mean is 26.5 mm. The rest are the numbers of infill_effect.csv.
+    """
+    run = run_three_gauges(tmp_path, gap=True)
+    section = _rests(render_comparison(run))
+    assert "All shares are in infill_effect.csv." in section
+    assert "The record was completed anew by" in section
+    assert "storm" not in section
+    frame = pd.read_csv(run.write(tmp_path / "output") / "infill_effect.csv")
+    means = frame[frame["method"] == "arithmetic"].set_index("infill_method")
+    assert means.loc["station-average", "depth"] == pytest.approx(27)
+    assert means.loc["nearest-gauge", "depth"] == pytest.approx(26.5)
+    share = frame[frame["infill_method"] == "station-average"].set_index("method")["share_infilled"]
+    printed = " ".join(f"{100 * share[method]:.1f} %" for method in run.methods)
+    assert printed.startswith("11.1 %")
+    basin = run.basins.ids[0]
+    assert f"{basin} {printed}" in section
+    for method, row in means.iterrows():
+        own = "the job's own " if method == "station-average" else ""
+        assert f" {method} {own}{row['depth']:.1f} {row['gaps_left']}" in section
+    for method, rows in frame.groupby("method"):
+        assert f"{rows['depth'].min():.1f}" in section, method
+        assert f"{rows['depth'].max():.1f}" in section, method
+
+
+def test_a_record_without_gaps_rests_on_no_infill(tmp_path: Path) -> None:
+    """Said in two sentences; no figure or table of other infill methods."""
+    section = _rests(render_comparison(run_three_gauges(tmp_path, gap=False)))
+    assert "No basin mean rests on infilled values." in section
+    assert "Nothing was infilled in the record, so no infill method moves its means." in section
+    assert "by infill method" not in section
 
 
 def test_a_real_comparison_of_forty_gauges() -> None:

@@ -10,6 +10,7 @@ from report.screen_pieces import make_findings
 
 from basinrain.report.job_lines import edit_text, needs_edit, screening_text
 from basinrain.screening import Finding, settle_findings
+from basinrain.screening.consistency import DOUBLE_MASS_BREAK, INHOMOGENEOUS
 from basinrain.screening.edits import SUGGESTED, Edit
 
 
@@ -42,6 +43,18 @@ def test_a_remark_and_the_network_are_accepted_not_rejected() -> None:
     assert tomllib.loads(screening_text([remark, network])) == {
         "screening": {"accept": ["short-record A", "reading-hours"]}
     }
+
+
+@pytest.mark.parametrize("check", [DOUBLE_MASS_BREAK, INHOMOGENEOUS])
+def test_what_cannot_be_rejected_stands_among_what_to_accept(check: str) -> None:
+    """Rejecting such a finding is refused, so its key is a comment of ``accept``; uncommented, it settles."""
+    finding = Finding(check=check, gauge="A", evidence="The slope changes.", action="Compare.")
+    text = screening_text([finding])
+    assert tomllib.loads(text) == {"screening": {"accept": []}}
+    read = tomllib.loads(text.replace('# "', '"'))
+    assert read == {"screening": {"accept": [finding.key]}}
+    (settled,) = settle_findings([finding], accept=read["screening"]["accept"])
+    assert settled.state == "accepted"
 
 
 @pytest.mark.parametrize(
@@ -78,6 +91,16 @@ def test_an_edit_of_the_whole_record_leaves_both_sides_open() -> None:
     read = tomllib.loads(edit_text(edit, depth_unit="in"))["edit"][0]
     assert not {"from", "to"} & set(read)
     assert read["value"] == 25.4
+
+
+@pytest.mark.parametrize(("side", "key", "other"), [("start", "from", "to"), ("end", "to", "from")])
+def test_only_the_open_side_is_left_out(side: str, key: str, other: str) -> None:
+    """The part before a break has an end and no beginning, that after it the reverse."""
+    given: dict[str, Any] = {side: np.datetime64("2021-01-01T08", "s")}
+    edit = Edit(gauge="A", action="scale", value=1.26, reason="moved", by=SUGGESTED, **given)
+    read = tomllib.loads(edit_text(edit, depth_unit="mm"))["edit"][0]
+    assert read[key].isoformat() == "2021-01-01T08:00:00"
+    assert other not in read
 
 
 def test_a_depth_to_set_is_in_the_jobs_unit() -> None:
