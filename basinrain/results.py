@@ -104,6 +104,33 @@ class Run:
         """The job's changes of the record and what each did: one row per edit."""
         return tables_record.edit_table(self)
 
+    def write(self, folder: str | Path) -> Path:
+        """Write every table, the record of the run and the report into a folder.
+
+        Parameters
+        ----------
+        folder
+            Made where it does not exist, its parents too; an earlier output there is replaced as a whole, once every
+            file of the new one is complete.
+
+        Returns
+        -------
+        Path
+            The folder.
+
+        Raises
+        ------
+        WriteError
+            It is a file, holds something that no earlier run wrote, or cannot be written.
+
+        See Also
+        --------
+        basinrain.writing.write_run : the same as a function.
+        """
+        from basinrain.writing import write_run
+
+        return write_run(self, folder)
+
 
 @dataclass(frozen=True, eq=False)
 class StormResult:
@@ -182,7 +209,7 @@ versions, facts
             for result in self.storms
             if result.effect is not None
         ]
-        return tables.by_storm(frames, tables_infill.EFFECT)
+        return tables_infill.by_storm(frames, tables_infill.EFFECT)
 
     @cached_property
     def series_check(self) -> pd.DataFrame:
@@ -192,7 +219,7 @@ versions, facts
             for result in self.storms
             if result.checks is not None
         ]
-        return tables.by_storm(frames, tables_infill.SERIES)
+        return tables_infill.by_storm(frames, tables_infill.SERIES)
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -281,33 +308,6 @@ inputs, versions, facts
         """Thiessen polygons cut to the basins, all gauges present, in degrees: one row per basin and gauge."""
         return tables.thiessen(self)
 
-    def write(self, folder: str | Path) -> Path:
-        """Write every table, the record of the run and the report into a folder.
-
-        Parameters
-        ----------
-        folder
-            Made where it does not exist, its parents too; an earlier output there is replaced as a whole, once every
-            file of the new one is complete.
-
-        Returns
-        -------
-        Path
-            The folder.
-
-        Raises
-        ------
-        WriteError
-            It is a file, holds something that no earlier run wrote, or cannot be written.
-
-        See Also
-        --------
-        basinrain.writing.write_run : the same as a function.
-        """
-        from basinrain.writing import write_run
-
-        return write_run(self, folder)
-
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class ScreenRun(Run):
@@ -344,12 +344,6 @@ versions, facts
     def homogeneity(self) -> pd.DataFrame:
         """Tests of homogeneity: one row per gauge and test."""
         return tables_record.homogeneity(self)
-
-    def write(self, folder: str | Path) -> Path:
-        """Write every table, the record of the run and the report into a folder, as :meth:`StormRun.write` does."""
-        from basinrain.writing import write_run
-
-        return write_run(self, folder)
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -407,9 +401,3 @@ inputs, versions, facts
     def completed_status(self) -> pd.DataFrame:
         """Where every value of the completed record comes from, in the same shape."""
         return tables_comparison.completed_status(self.completed.record)
-
-    def write(self, folder: str | Path) -> Path:
-        """Write every table, the record of the run and the report into a folder, as :meth:`StormRun.write` does."""
-        from basinrain.writing import write_run
-
-        return write_run(self, folder)

@@ -5,7 +5,7 @@ Columns and their order are those of the CSV files; ``docs/outputs.md`` describe
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterator
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -27,7 +27,6 @@ if TYPE_CHECKING:
 
 __all__ = [
     "basin_means",
-    "by_storm",
     "estimates",
     "gauge_depths",
     "gauge_totals",
@@ -69,14 +68,6 @@ def _frame(rows: list[tuple[Any, ...]], columns: str) -> pd.DataFrame:
     import pandas as pd
 
     return pd.DataFrame(rows, columns=columns.split())
-
-
-def by_storm(frames: Iterable[pd.DataFrame], columns: str) -> pd.DataFrame:
-    """Return the tables of several storms as one; only the header where there is none."""
-    import pandas as pd
-
-    given = list(frames)
-    return pd.concat(given, ignore_index=True) if given else pd.DataFrame(columns=columns.split())
 
 
 def _quotient(part: npt.NDArray[np.float64], whole: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING
 
 from basinrain.infill_effect import InfillEffect
@@ -12,12 +12,20 @@ from basinrain.units import depth_factor
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["EFFECT", "SERIES", "effect_frame", "effect_spread_frame", "series_frame"]
+__all__ = ["EFFECT", "SERIES", "by_storm", "effect_frame", "effect_spread_frame", "series_frame"]
 
 EFFECT = "storm basin method infill_method depth depth_unit difference share_infilled gaps_left"
 _SPREAD = "storm basin method least greatest depth_unit spread_percent least_by greatest_by"
 SERIES = "storm basin method series steps wet_share wet_from top20_mean top_n depth_unit variance variance_unit"
 """Columns of the tables, in their order."""
+
+
+def by_storm(frames: Iterable[pd.DataFrame], columns: str) -> pd.DataFrame:
+    """Return the tables of several storms as one; only the header where there is none."""
+    import pandas as pd
+
+    given = list(frames)
+    return pd.concat(given, ignore_index=True) if given else pd.DataFrame(columns=columns.split())
 
 
 def effect_frame(storm: str, basins: Sequence[str], effect: InfillEffect, depth_unit: str) -> pd.DataFrame:
