@@ -19,6 +19,8 @@ from __future__ import annotations
 import difflib
 from collections.abc import Iterable
 from dataclasses import dataclass
+from functools import partial
+from typing import Any
 
 __all__ = [
     "BasinRainError",
@@ -120,6 +122,10 @@ class BasinRainError(Exception):
         if unlisted:
             lines.append(f"{unlisted} more {'problem' if unlisted == 1 else 'problems'}: found but not listed")
         super().__init__("\n".join(lines))
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        # By its problems and not by its text, so that it arrives whole from another process.
+        return partial(type(self), unlisted=self.unlisted), (self.problems,)
 
 
 class JobError(BasinRainError):

@@ -5,12 +5,10 @@ inputs (reading → edits → screening) → infill → averaging → storms →
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import replace
 from functools import partial
-from importlib.metadata import version
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -23,11 +21,11 @@ from basinrain.errors import DataError, JobError, MethodError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import Completed
 from basinrain.infill.gaps import gap_mask, longer_than
-from basinrain.infill.leave_one_out import Comparison
 from basinrain.infill_choice import InfillChoice, choose_infill, compare
 from basinrain.infill_effect import infill_effect, infill_spread_cautions
-from basinrain.inputs import Inputs, attempt, input_digests, read_inputs, window_of
-from basinrain.jobfile import Job, read_job
+from basinrain.inputs import attempt, read_inputs, window_of
+from basinrain.job_parts import Report, choice_fact, common_fields, resolved
+from basinrain.jobfile import Job
 from basinrain.jobfile.tables import StormTable
 from basinrain.notes import Note, once
 from basinrain.rainfall import RainRecord, Status
@@ -36,8 +34,6 @@ from basinrain.series_check import series_check
 from basinrain.storms import Storm, borrowed_times, hyetograph_shape, storm_window
 
 __all__ = ["run_infill", "run_screen", "run_storm"]
-
-Report = Callable[[str], None]
 
 
 def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> StormRun:
@@ -80,7 +76,7 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     >>> run.basin_means[["basin", "method", "depth"]].values.tolist()
     [['1', 'arithmetic', 20.0], ['1', 'thiessen', 25.25]]
     """
-    job, say = _resolve(job, settings), progress or (lambda _: None)
+    job, say = resolved(job, settings), progress or (lambda _: None)
     given = read_inputs(job, say)
     network, record, basins = given.network, given.record, given.basins
     storms, window_notes = _storms(job, record)
@@ -106,11 +102,11 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     notes += (*network_cautions(network.subset(in_use), basins), *record_cautions(record))
     notes += screening_cautions(given.screening, storms)
     return StormRun(
-        **_common(job, given, infill),
+        **common_fields(job, given, infill),
         storms=tuple(results),
         comparison=infill.comparison,
         notes=once(notes, [storm.name for storm in storms]),
-        facts={**_facts(job, results[0]), **_choice(infill.comparison)},
+        facts={**_facts(job, results[0]), **choice_fact(infill.comparison)},
     )
 
 
@@ -155,10 +151,10 @@ def run_screen(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
     >>> run.findings["state"].tolist(), run.record.depth[0]
     (['rejected'], array([ 8., nan,  6.]))
     """
-    job, say = _resolve(job, settings), progress or (lambda _: None)
+    job, say = resolved(job, settings), progress or (lambda _: None)
     given = read_inputs(job, say)
     notes = (*given.notes, *record_cautions(given.record))
-    return ScreenRun(**_common(job, given), raw=given.raw, notes=once(notes, ()))
+    return ScreenRun(**common_fields(job, given), raw=given.raw, notes=once(notes, ()))
 
 
 def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress: Report | None = None) -> InfillRun:
@@ -205,7 +201,7 @@ def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
     >>> run.infilled[["gauge", "depth", "donors"]].values.tolist()
     [['B', 6.0, 'A:0.5 C:0.5']]
     """
-    job, say = _resolve(job, settings), progress or (lambda _: None)
+    job, say = resolved(job, settings), progress or (lambda _: None)
     given = read_inputs(job, say)
     say("comparing")
     comparison = compare(job, given.record, given.network, say)
@@ -228,12 +224,12 @@ def run_infill(job: Job | str | Path, settings: Sequence[str] = (), *, progress:
         *(replace(note, storm="") for note in (*moved, *screening_cautions(given.screening, [whole]))),
     )
     return InfillRun(
-        **_common(job, given, infill),
+        **common_fields(job, given, infill),
         storms=(result,),
         comparison=comparison,
         completed=completed,
         notes=once(notes, ()),
-        facts=_choice(comparison),
+        facts=choice_fact(comparison),
     )
 
 
@@ -266,41 +262,6 @@ def _moved(  # noqa: PLR0917 - each room's product, in order
     ids = next(iter(result.depths.values())).table.basins
     notes = infill_spread_cautions(result.storm.name, ids, effect, depth_unit=job.job.depth_unit)
     return replace(result, effect=effect, checks=checks), tuple(notes)
-
-
-def _resolve(job: Job | str | Path, settings: Sequence[str]) -> Job:
-    if not isinstance(job, Job):
-        return read_job(job, settings)
-    if settings:
-        raise JobError(
-            Problem(
-                item="settings",
-                found="settings beside a job that is already resolved",
-                expected="settings with the path of a job file",
-                remedy="give them to read_job",
-            )
-        )
-    return job
-
-
-def _common(job: Job, given: Inputs, infill: InfillChoice | None = None) -> dict[str, Any]:
-    """Return what every run has."""
-    settings = job.model_dump(mode="json", exclude_none=True, by_alias=True)
-    return {
-        "name": job.job.name,
-        "settings": settings if infill is None else {**settings, "infill": infill.settings},
-        "depth_unit": job.job.depth_unit,
-        "area_unit": job.job.area_unit,
-        "network": given.network,
-        "basins": given.basins,
-        "plane": given.plane,
-        "record": given.record,
-        "screening": given.screening,
-        "edits": given.edits,
-        "edit_rows": given.edit_rows,
-        "inputs": input_digests(job),
-        "versions": {name: version(name) for name in ("basinrain", "numpy", "scipy", "shapely", "pyproj", "pandas")},
-    }
 
 
 def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]]:
@@ -342,10 +303,6 @@ def _facts(job: Job, result: StormResult) -> dict[str, str]:
     if job.gauges.catch_factor:
         facts["catch"] = "Catch factors applied to: " + ", ".join(sorted(job.gauges.catch_factor)) + "."
     return facts
-
-
-def _choice(comparison: Comparison | None) -> dict[str, str]:
-    return {} if comparison is None else {"infill-method": comparison.reason}
 
 
 def _require_reporting(storm: Storm, window: RainRecord) -> None:

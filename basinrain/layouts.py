@@ -3,10 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from pathlib import PurePath
 from types import MappingProxyType
 from typing import Final
 
-__all__ = ["COLUMNS", "GHCN", "GHCN_UNIT", "LAYOUTS", "TAKEN_BY", "misplaced"]
+__all__ = [
+    "COLUMNS",
+    "FORMAT_LAYOUTS",
+    "FORMAT_NAMES",
+    "GHCN",
+    "GHCN_UNIT",
+    "LAYOUTS",
+    "NETCDF_COLUMNS",
+    "NOT_IN_NETCDF",
+    "TAKEN_BY",
+    "file_format",
+    "misplaced",
+]
 
 LAYOUTS: Final = ("wide", "long", "totals", "tips", "counter", "ghcn-dly", "ghcn-csv")
 
@@ -51,6 +64,35 @@ TAKEN_BY: Final[Mapping[str, tuple[str, ...]]] = MappingProxyType(
     }
 )
 """The keys that not every layout takes, each with the layouts that do."""
+
+_SUFFIXES: Final[Mapping[str, str]] = MappingProxyType(
+    {".parquet": "parquet", ".pq": "parquet", ".nc": "netcdf", ".nc4": "netcdf"}
+)
+
+FORMAT_NAMES: Final[Mapping[str, str]] = MappingProxyType({"text": "text", "parquet": "Parquet", "netcdf": "NetCDF"})
+"""What messages call the formats of files."""
+
+FORMAT_LAYOUTS: Final[Mapping[str, tuple[str, ...]]] = MappingProxyType(
+    {"text": LAYOUTS, "parquet": ("wide", "long"), "netcdf": ("wide",)}
+)
+"""The layouts that a file of each format can have."""
+
+NETCDF_COLUMNS: Final = ("time", "gauge", "depth")
+"""Which variables can be named for a NetCDF file."""
+
+NOT_IN_NETCDF: Final = ("flags", "accumulated", "trace", "time_format", "read_hour", "date_means")
+"""Keys that speak of the text of cells and of bare dates, which a NetCDF file does not have."""
+
+
+def file_format(name: str) -> str:
+    """Return the format that a file's suffix stands for: ``"parquet"``, ``"netcdf"``, else ``"text"``.
+
+    Examples
+    --------
+    >>> file_format("rain.pq"), file_format("RAIN.NC"), file_format("rain.csv")
+    ('parquet', 'netcdf', 'text')
+    """
+    return _SUFFIXES.get(PurePath(name).suffix.lower(), "text")
 
 
 def misplaced(key: str, layout: str) -> str:

@@ -89,3 +89,16 @@ def cases(draw: st.DrawFn, basins: st.SearchStrategy[Basins] | None = None, *, a
     present = np.array(draw(st.lists(st.booleans(), min_size=n, max_size=n)))
     present[draw(st.integers(0, n - 1))] = True
     return Case(network, draw(any_basins() if basins is None else basins), depths, present)
+
+
+@st.composite
+def broken_records(draw: st.DrawFn, n_gauges: int, *, at_most: int = 14) -> npt.NDArray[np.float64]:
+    """Draw depths (n_steps, n_gauges) of up to 20 mm, NaN where a gauge does not report; often as at the step before."""
+    n_steps = draw(st.integers(0, at_most))
+    one_set = st.lists(st.booleans(), min_size=n_gauges, max_size=n_gauges)
+    different = draw(st.lists(one_set, min_size=1, max_size=6))
+    order = draw(st.lists(st.integers(0, len(different) - 1), min_size=n_steps, max_size=n_steps))
+    seed = draw(st.integers(0, 2**32 - 1))
+    depth = np.random.default_rng(seed).integers(0, 201, (n_steps, n_gauges)) / 10
+    depth[~np.array(different, dtype=bool)[order]] = np.nan
+    return depth

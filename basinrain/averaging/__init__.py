@@ -6,9 +6,14 @@ from collections.abc import Mapping
 from types import MappingProxyType
 from typing import Final
 
-from basinrain.averaging.arithmetic import arithmetic_weights, prepare_arithmetic
+from basinrain.averaging.arithmetic import (
+    arithmetic_weights,
+    prepare_arithmetic,
+    prepare_arithmetic_reweigher,
+)
 from basinrain.averaging.grid import Grid, make_grid
 from basinrain.averaging.idw import choose_grid, idw_weights, prepare_idw
+from basinrain.averaging.idw_reweighing import prepare_idw_reweigher
 from basinrain.averaging.registry import AveragingMethod, Weigher
 from basinrain.averaging.thiessen import (
     ThiessenPieces,
@@ -39,9 +44,11 @@ METHODS: Final[Mapping[str, AveragingMethod]] = MappingProxyType(
     {
         method.name: method
         for method in (
-            AveragingMethod("arithmetic", prepare_arithmetic),
+            AveragingMethod("arithmetic", prepare_arithmetic, prepare_reweigher=prepare_arithmetic_reweigher),
             AveragingMethod("thiessen", prepare_thiessen, partition=True),
-            AveragingMethod("idw", prepare_idw, partition=True, lengths=("cell", "radius")),
+            AveragingMethod(
+                "idw", prepare_idw, partition=True, lengths=("cell", "radius"), prepare_reweigher=prepare_idw_reweigher
+            ),
         )
     }
 )

@@ -8,18 +8,23 @@ from typing import Any, Final
 import numpy as np
 import numpy.typing as npt
 import shapely
+from scipy import sparse
 
 from basinrain.averaging.inputs import presence, require_one_plane
-from basinrain.averaging.registry import Weigher
+from basinrain.averaging.registry import Reweigher, Weigher
+from basinrain.averaging.reporting import ReportingRuns
 from basinrain.basins import Basins
 from basinrain.errors import JobError, Problem, nearest_name
 from basinrain.gauges import GaugeNetwork
 from basinrain.weights import WeightTable
 
-__all__ = ["arithmetic_weights", "prepare_arithmetic"]
+__all__ = ["arithmetic_weights", "prepare_arithmetic", "prepare_arithmetic_reweigher"]
 
 _BOUNDARY: Final = 1e-3
 """A gauge this close to a polygon, in m, counts as on its boundary: projecting moves positions by less."""
+
+_STEPS: Final = 4096
+"""Steps that are summed together."""
 
 
 def arithmetic_weights(
@@ -77,13 +82,7 @@ def prepare_arithmetic(
     network: GaugeNetwork, basins: Basins, *, gauges: str | Mapping[str, float] = "inside"
 ) -> Weigher:
     """Find which gauges take part in which basin, once; options and errors as in :func:`arithmetic_weights`."""
-    reach = _reach(gauges)
-    require_one_plane(network, basins)
-    takes_part = np.ones((len(basins), len(network)), dtype=bool)
-    if reach is not None:
-        takes_part[:] = False
-        positions = shapely.STRtree(np.asarray(shapely.points(network.x, network.y), dtype=object))
-        takes_part[tuple(positions.query(basins.polygons, predicate="dwithin", distance=reach))] = True
+    takes_part = _takes_part(network, basins, gauges)
 
     def weigh(present: npt.NDArray[np.bool_]) -> WeightTable:
         counted = takes_part & presence(network, present)[None, :]
@@ -92,6 +91,53 @@ def prepare_arithmetic(
         return WeightTable("arithmetic", basins.ids, network.ids, weights, covered=(number > 0).astype(float))
 
     return weigh
+
+
+def prepare_arithmetic_reweigher(
+    network: GaugeNetwork, basins: Basins, *, gauges: str | Mapping[str, float] = "inside"
+) -> Reweigher:
+    """Return what averages many steps: the depths that take part and report, summed, over their number.
+
+    Options and errors are those of :func:`arithmetic_weights`. A basin is NaN at steps at which none of its gauges
+    reports.
+
+    Examples
+    --------
+    >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[1.0, 4.0, 8.0], y=[5.0] * 3, crs="local")
+    >>> west_east = [shapely.box(0, 0, 5, 10), shapely.box(5, 0, 10, 10)]
+    >>> basins = Basins(ids=("west", "east"), polygons=west_east, crs="local")
+    >>> depth = np.array([[2.0, 4.0, 9.0], [2.0, np.nan, np.nan]])
+    >>> prepare_arithmetic_reweigher(network, basins)(depth, ReportingRuns.of(~np.isnan(depth)))
+    array([[ 3.,  9.],
+           [ 2., nan]])
+    """
+    table = sparse.csr_array(_takes_part(network, basins, gauges).astype(float).T)
+
+    def means(depth: npt.NDArray[np.float64], runs: ReportingRuns) -> npt.NDArray[np.float64]:
+        number = runs.present @ table
+        number[number == 0] = np.nan
+        run_of_step = np.repeat(np.arange(len(runs)), runs.lengths)
+        result = np.empty((runs.n_steps, len(basins)))
+        for first in range(0, runs.n_steps, _STEPS):
+            rows = slice(first, first + _STEPS)
+            which = run_of_step[rows]
+            result[rows] = np.where(runs.present[which], depth[rows], 0.0) @ table
+            result[rows] /= number[which]
+        return result
+
+    return means
+
+
+def _takes_part(network: GaugeNetwork, basins: Basins, gauges: str | Mapping[str, float]) -> npt.NDArray[np.bool_]:
+    """Return which gauges count in which basin when they are present, shape (n_basins, n_gauges)."""
+    reach = _reach(gauges)
+    require_one_plane(network, basins)
+    if reach is None:
+        return np.ones((len(basins), len(network)), dtype=bool)
+    takes_part = np.zeros((len(basins), len(network)), dtype=bool)
+    positions = shapely.STRtree(np.asarray(shapely.points(network.x, network.y), dtype=object))
+    takes_part[tuple(positions.query(basins.polygons, predicate="dwithin", distance=reach))] = True
+    return takes_part
 
 
 def _reach(gauges: Any) -> float | None:  # noqa: ANN401 - whatever a job file holds

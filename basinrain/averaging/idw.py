@@ -22,7 +22,7 @@ from basinrain.gauges import GaugeNetwork
 from basinrain.notes import Note
 from basinrain.weights import WeightTable
 
-__all__ = ["choose_grid", "idw_weights", "prepare_idw"]
+__all__ = ["ON_GAUGE", "choose_grid", "idw_weights", "prepare_idw"]
 
 _BLOCK: Final = 500_000
 """Distances held at a time; few enough to stay in a processor's cache, so that memory does not grow with the grid."""
@@ -33,7 +33,7 @@ _FEWEST_CELLS: Final = 100
 _OTHER: Final = 0.4
 """Another size, as a share of the cell, that must give the same weights; its lines fall elsewhere than the halves'."""
 
-_ON_GAUGE: Final = 1e-6
+ON_GAUGE: Final = 1e-6
 """A centre this close to a gauge, as a share of the cell, is on it."""
 
 _TIE: Final = 1e-9
@@ -334,7 +334,7 @@ def _basin_weights(
         n = max(1, _BLOCK // len(at))
         part = np.zeros((len(grid.basins), len(at)))
         for first in range(0, grid.n_cells, n):
-            lent = surface.weights(grid.centres[first : first + n], gauges, _ON_GAUGE * grid.cell)
+            lent = surface.weights(grid.centres[first : first + n], gauges, ON_GAUGE * grid.cell)
             held = by_cell[first : first + n].T
             part += held @ lent
             covered += held @ (lent.sum(axis=1) > 0.5).astype(float)

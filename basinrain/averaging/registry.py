@@ -4,19 +4,41 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Protocol
 
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.averaging.reporting import ReportingRuns
+from basinrain.averaging.reweighing import reweigh_by_sets
 from basinrain.basins import Basins
 from basinrain.gauges import GaugeNetwork
 from basinrain.weights import WeightTable
 
-__all__ = ["AveragingMethod", "Weigher"]
+__all__ = ["AveragingMethod", "Reweigher", "Weigher"]
 
 Weigher = Callable[[npt.NDArray[np.bool_]], WeightTable]
 """Makes the weight table of the gauges that are present, given as a mask of shape (n_gauges,); others get weight 0."""
+
+
+class Reweigher(Protocol):
+    """Basin means of many steps, every step with the weights of the gauges that report at it."""
+
+    def __call__(self, depth: npt.NDArray[np.float64], runs: ReportingRuns, /) -> npt.NDArray[np.float64]:
+        """Return basin means in mm, shape (n_steps, n_basins).
+
+        Parameters
+        ----------
+        depth : array of float, shape (n_steps, n_gauges)
+            mm. What stands at gauges that do not report, NaN or a number, does not count. It is not changed.
+        runs
+            Which gauges report at every step.
+
+        Returns
+        -------
+        array of float, shape (n_steps, n_basins)
+            NaN where no gauge reports, or where the method has no number with those that do.
+        """
 
 
 @dataclass(frozen=True)
@@ -34,6 +56,9 @@ class AveragingMethod:
         The laws it promises: rows sum to 1; no weight below 0; adjoining basins add up by area to their union.
     lengths
         The options that are lengths in m: when the plane is drawn at another scale they scale with it.
+    prepare_reweigher
+        ``prepare_reweigher(network, basins, **options)`` returns a :class:`Reweigher`, for methods that have a faster
+        way than a table of weights for every set of reporting gauges; None for the others.
 
     Examples
     --------
@@ -60,7 +85,14 @@ class AveragingMethod:
     non_negative: bool = True
     partition: bool = False
     lengths: tuple[str, ...] = ()
+    prepare_reweigher: Callable[..., Reweigher] | None = None
 
     def __call__(self, network: GaugeNetwork, basins: Basins, options: Mapping[str, Any] | None = None) -> Weigher:
         """Prepare the method for a network and its basins."""
         return self.prepare(network, basins, **(options or {}))
+
+    def reweigher(self, network: GaugeNetwork, basins: Basins, options: Mapping[str, Any] | None = None) -> Reweigher:
+        """Prepare the method for a record whose gauges come and go."""
+        if self.prepare_reweigher is not None:
+            return self.prepare_reweigher(network, basins, **(options or {}))
+        return reweigh_by_sets(self(network, basins, options), len(basins))

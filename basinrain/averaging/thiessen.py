@@ -17,7 +17,15 @@ from basinrain.errors import DataError, MethodError, Problems
 from basinrain.gauges import ONE_PLACE, GaugeNetwork
 from basinrain.weights import WeightTable
 
-__all__ = ["ThiessenPieces", "prepare_thiessen", "thiessen_cells", "thiessen_pieces", "thiessen_weights"]
+__all__ = [
+    "ThiessenPieces",
+    "clip_basins",
+    "prepare_thiessen",
+    "thiessen_cells",
+    "thiessen_pieces",
+    "thiessen_weights",
+    "with_far_points",
+]
 
 _FAR_POINTS: Final = 16
 _FAR_RADII: Final = 10.0
@@ -101,7 +109,7 @@ def prepare_thiessen(network: GaugeNetwork, basins: Basins) -> Weigher:
         mask = presence(network, present)
         weights = np.full((len(basins), len(network)), np.nan)
         if mask.any():
-            pieces = _pieces(network, basins, mask, n_clipped)
+            pieces = clip_basins(network, basins, mask, n_clipped)
             weights[:] = 0.0
             weights[pieces.basin, pieces.gauge] = pieces.area
             if added:
@@ -152,14 +160,9 @@ def thiessen_cells(
         return cells
     xy = np.column_stack((network.x[at], network.y[at]))
     _refuse_same_place(network, at, xy)
-    corners = xy if around is None else np.vstack((xy, np.reshape(around, (2, 2))))
-    low, high = corners.min(axis=0), corners.max(axis=0)
-    centre = (low + high) / 2
-    radius = max(float(np.hypot(*(high - low))) / 2, 1.0)
-    scaled = (xy - centre) / radius
-    turn = np.arange(_FAR_POINTS) * (2 * np.pi / _FAR_POINTS)
-    helpers = _FAR_RADII * np.column_stack((np.cos(turn), np.sin(turn)))
-    diagram = Voronoi(np.vstack((scaled, helpers)))
+    points, centre, radius = with_far_points(xy, around)
+    scaled = points[: len(at)]
+    diagram = Voronoi(points)
     regions = [diagram.regions[k] for k in diagram.point_region[: len(at)]]
     without = Problems()
     for gauge, region in zip(at, regions, strict=True):
@@ -199,7 +202,23 @@ def thiessen_pieces(
     if not mask.any():
         none = np.empty(0, dtype=np.int64)
         return ThiessenPieces(none, none, np.empty(0, dtype=object), np.empty(0))
-    return _pieces(network, basins, mask, len(basins))
+    return clip_basins(network, basins, mask, len(basins))
+
+
+def with_far_points(
+    xy: npt.NDArray[np.float64], around: tuple[float, float, float, float] | None
+) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64], float]:
+    """Return positions, shape (n, 2), and far points after them, centred and scaled; the centre; the radius in m.
+
+    The circle of this radius about the centre holds the positions, and the box ``around`` where one is given.
+    """
+    corners = xy if around is None else np.vstack((xy, np.reshape(around, (2, 2))))
+    low, high = corners.min(axis=0), corners.max(axis=0)
+    centre = (low + high) / 2
+    radius = max(float(np.hypot(*(high - low))) / 2, 1.0)
+    turn = np.arange(_FAR_POINTS) * (2 * np.pi / _FAR_POINTS)
+    helpers = _FAR_RADII * np.column_stack((np.cos(turn), np.sin(turn)))
+    return np.vstack(((xy - centre) / radius, helpers)), centre, radius
 
 
 def _refuse_same_place(network: GaugeNetwork, at: npt.NDArray[np.int64], xy: npt.NDArray[np.float64]) -> None:
@@ -238,7 +257,7 @@ def _rings(
     return np.asarray(shapely.polygons(rings), dtype=object)
 
 
-def _pieces(network: GaugeNetwork, basins: Basins, mask: npt.NDArray[np.bool_], n_clipped: int) -> ThiessenPieces:
+def clip_basins(network: GaugeNetwork, basins: Basins, mask: npt.NDArray[np.bool_], n_clipped: int) -> ThiessenPieces:
     """Cut the first ``n_clipped`` basins by the cells of the present gauges; prove that nothing is lost or doubled."""
     cells = thiessen_cells(network, mask, around=basins.bounds)
     polygons, areas = basins.polygons[:n_clipped], basins.areas[:n_clipped]

@@ -10,6 +10,7 @@ from typing import TypeVar
 import click
 from rich.console import Console
 
+from basinrain.cli.progress import Progress
 from basinrain.jobfile import read_job
 from basinrain.notes import Note
 from basinrain.results import Run
@@ -34,6 +35,7 @@ def run_command(
     settings: tuple[str, ...],
     as_json: bool,
     quiet: bool,
+    counted: bool = False,
 ) -> None:
     """Run a command on a job; nothing is written unless everything worked.
 
@@ -47,16 +49,14 @@ def run_command(
         Prints the run's main figures.
     job_file, output, settings, as_json, quiet
         As the command line has them.
+    counted
+        Whether ``compute`` takes ``counted``, which it tells of the steps that are done.
     """
     job = read_job(job_file, settings)
     folder = (output if output is not None else job.path(job.job.output)) / command
     check_folder(folder, [job_file, *job.inputs])
-    progress = Console(stderr=True)
-    if progress.is_terminal and not quiet:
-        with progress.status("reading") as status:
-            run = compute(job, progress=status.update)
-    else:
-        run = compute(job)
+    with Progress(quiet=quiet) as progress:
+        run = compute(job, progress=progress, **({"counted": progress.steps} if counted else {}))
     write_run(run, folder)
     if as_json:
         files = sorted(path.name for path in folder.iterdir() if path.name != RECORD)

@@ -50,18 +50,18 @@ def longer_than(record: RainRecord, gaps: npt.NDArray[np.bool_], days: float) ->
            [ True, False],
            [False, False]])
     """
-    n_steps, n_gauges = gaps.shape
-    edge = np.zeros((1, n_gauges), dtype=bool)
+    edge = np.zeros((1, gaps.shape[1]), dtype=bool)
     change = np.diff(np.concatenate([edge, gaps, edge]).astype(np.int8), axis=0)
-    # Transposed, so that the k-th begin and the k-th end belong to one gap of one gauge.
-    gauge, begin = np.nonzero(change.T == 1)
-    _, end = np.nonzero(change.T == -1)
+    begin, gauge = np.nonzero(change == 1)
+    end, gauge_of_end = np.nonzero(change == -1)
+    # By gauge, so that the k-th begin and the k-th end belong to one gap of one gauge.
+    order = np.argsort(gauge, kind="stable")
+    begin, gauge, end = begin[order], gauge[order], end[np.argsort(gauge_of_end, kind="stable")]
     seconds = (record.ends[end - 1] - record.starts[begin]) / np.timedelta64(1, "s")
-    long = seconds > days * 86400
-    level = np.zeros((n_steps + 1, n_gauges), dtype=np.int64)
-    level[begin[long], gauge[long]] += 1
-    level[end[long], gauge[long]] -= 1
-    return np.asarray(level.cumsum(axis=0)[:-1] > 0)
+    result = np.zeros_like(gaps)
+    for k in np.flatnonzero(seconds > days * 86400).tolist():
+        result[begin[k] : end[k], gauge[k]] = True
+    return result
 
 
 def over_peak(record: RainRecord, gaps: npt.NDArray[np.bool_], completed: npt.NDArray[np.float64]) -> list[Note]:

@@ -49,6 +49,11 @@ class InfillMethod:
         What it rests on besides positions: normals; the relations between gauges in the record.
     takes
         Options of :class:`~basinrain.infill.options.InfillOptions` that it takes besides those of every method.
+    share_factors
+        Given where, with all reporting gauges as donors, weights are shares in a fixed proportion, whoever reports,
+        times something that each donor has by itself; names what that is the product of: ``"normals"`` (the target's
+        over the donor's), ``"slope"`` (of the target on the donor), ``"slope of ratios"``. Estimates at many steps then
+        need no weights of their own. None where weights are not of that form.
     donors_are
         What donors must be besides reporting, in words that follow "gauges"; empty where that is all.
     order
@@ -73,6 +78,7 @@ class InfillMethod:
     needs_normals: bool = False
     needs_relations: bool = False
     takes: tuple[str, ...] = ("nearest", "min_donors")
+    share_factors: tuple[str, ...] | None = None
     donors_are: str = ""
     order: int = 0
 
@@ -85,8 +91,8 @@ METHODS: Final[Mapping[str, InfillMethod]] = MappingProxyType(
         method.name: method
         for method in (
             InfillMethod("nearest-gauge", nearest_gauge_weights, nearest=1, min_donors=1, takes=(), order=1),
-            InfillMethod("station-average", station_average_weights, order=2),
-            InfillMethod("inverse-distance", inverse_distance_weights, takes=_POWERED, order=3),
+            InfillMethod("station-average", station_average_weights, share_factors=(), order=2),
+            InfillMethod("inverse-distance", inverse_distance_weights, takes=_POWERED, share_factors=(), order=3),
             InfillMethod(
                 "four-quadrant",
                 four_quadrant_weights,
@@ -102,6 +108,7 @@ METHODS: Final[Mapping[str, InfillMethod]] = MappingProxyType(
                 sums_to_one=False,
                 keeps_normals=True,
                 needs_normals=True,
+                share_factors=("normals",),
                 order=5,
             ),
             InfillMethod(
@@ -119,10 +126,16 @@ METHODS: Final[Mapping[str, InfillMethod]] = MappingProxyType(
                 keeps_normals=True,
                 needs_normals=True,
                 takes=_POWERED,
+                share_factors=("normals",),
                 order=7,
             ),
             InfillMethod(
-                "correlation-weighting", correlation_weights, needs_relations=True, donors_are=_CORRELATED, order=8
+                "correlation-weighting",
+                correlation_weights,
+                needs_relations=True,
+                share_factors=(),
+                donors_are=_CORRELATED,
+                order=8,
             ),
             InfillMethod(
                 "regression",
@@ -130,6 +143,7 @@ METHODS: Final[Mapping[str, InfillMethod]] = MappingProxyType(
                 nearest=4,
                 sums_to_one=False,
                 needs_relations=True,
+                share_factors=("slope",),
                 donors_are=_CORRELATED,
                 order=9,
             ),
@@ -140,6 +154,7 @@ METHODS: Final[Mapping[str, InfillMethod]] = MappingProxyType(
                 sums_to_one=False,
                 needs_normals=True,
                 needs_relations=True,
+                share_factors=("normals", "slope of ratios"),
                 donors_are=_CORRELATED,
                 order=10,
             ),

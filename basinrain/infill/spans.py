@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -9,7 +10,7 @@ import numpy.typing as npt
 
 from basinrain.rainfall import RainRecord
 
-__all__ = ["EXACT", "cut_totals", "month_of", "own_totals", "span_starts"]
+__all__ = ["EXACT", "KnownTotals", "cut_totals", "month_of", "own_totals", "span_starts"]
 
 EXACT: Final = 1e-9
 """Depths this close to each other, relatively and in mm, are equal."""
@@ -137,28 +138,80 @@ def cut_totals(
     >>> cut_totals(record, depth, np.array([0]), np.array([2])).ravel()
     array([False])
     """
-    cut = np.zeros((len(first), len(record.gauges)), dtype=bool)
-    column = {gauge: g for g, gauge in enumerate(record.gauges)}
-    # A record of some of the gauges keeps the totals of all.
-    totals = [total for total in record.totals if total.gauge in column]
-    begin, end = record.steps_of(totals)
-    inside = np.flatnonzero(begin < end)
-    begin, end = begin[inside], end[inside]
-    gauge = np.array([column[totals[k].gauge] for k in inside], dtype=np.int64)
-    depth = np.array([totals[k].depth for k in inside])
-    # Every total with every span that it reaches.
-    first_span = np.searchsorted(stop, begin, "right")
-    reached = np.searchsorted(first, end) - first_span
-    total = np.repeat(np.arange(len(inside)), reached)
-    span = np.arange(len(total)) - np.repeat(np.cumsum(reached) - reached - first_span, reached)
-    through = np.concatenate([np.zeros((1, len(record.gauges))), own.cumsum(axis=0)])
-    held = (
-        through[np.minimum(end[total], stop[span]), gauge[total]]
-        - through[np.maximum(begin[total], first[span]), gauge[total]]
-    )
-    lost = np.abs(held - depth[total]) > EXACT * np.maximum(depth[total], 1)
-    cut[span[lost], gauge[total[lost]]] = True
-    return cut
+    return KnownTotals.of(record).cut(own, first, stop)
+
+
+@dataclass(frozen=True, eq=False)
+class KnownTotals:
+    """The totals of a record that lie in it at least in part: what ``record.totals`` holds, as arrays.
+
+    Parameters
+    ----------
+    begin, end, gauge : array of int, shape (n_totals,)
+        The whole steps of each interval, ``end`` not included, and the gauge's column.
+    depth : array of float, shape (n_totals,)
+        mm.
+
+    Examples
+    --------
+    See :func:`cut_totals`.
+    """
+
+    begin: npt.NDArray[np.int64]
+    end: npt.NDArray[np.int64]
+    gauge: npt.NDArray[np.int64]
+    depth: npt.NDArray[np.float64]
+
+    @classmethod
+    def of(cls, record: RainRecord) -> KnownTotals:
+        """Return the totals of a record's gauges; a record of some of the gauges keeps the totals of all."""
+        column = {gauge: g for g, gauge in enumerate(record.gauges)}
+        totals = [total for total in record.totals if total.gauge in column]
+        begin, end = record.steps_of(totals)
+        inside = np.flatnonzero(begin < end)
+        return cls(
+            begin[inside],
+            end[inside],
+            np.array([column[totals[k].gauge] for k in inside], dtype=np.int64),
+            np.array([totals[k].depth for k in inside], dtype=float),
+        )
+
+    def within(self, first: int, stop: int) -> KnownTotals:
+        """Return those that reach into some steps, with steps counted from ``first``."""
+        held = (self.begin < stop) & (self.end > first)
+        return KnownTotals(self.begin[held] - first, self.end[held] - first, self.gauge[held], self.depth[held])
+
+    def cut(
+        self, own: npt.NDArray[np.float64], first: npt.NDArray[np.int64], stop: npt.NDArray[np.int64]
+    ) -> npt.NDArray[np.bool_]:
+        """Return where a span holds part of a total's interval, but not all of its depth.
+
+        Parameters
+        ----------
+        own, first, stop
+            As for :func:`cut_totals`.
+
+        Returns
+        -------
+        array of bool, shape (n_spans, n_gauges)
+        """
+        cut = np.zeros((len(first), own.shape[1]), dtype=bool)
+        if not len(self.begin):
+            return cut
+        # Every total with every span that it reaches.
+        first_span = np.searchsorted(stop, self.begin, "right")
+        reached = np.searchsorted(first, self.end) - first_span
+        total = np.repeat(np.arange(len(self.begin)), reached)
+        span = np.arange(len(total)) - np.repeat(np.cumsum(reached) - reached - first_span, reached)
+        gauge, depth = self.gauge[total], self.depth[total]
+        through = np.concatenate([np.zeros((1, own.shape[1])), own.cumsum(axis=0)])
+        held = (
+            through[np.minimum(self.end[total], stop[span]), gauge]
+            - through[np.maximum(self.begin[total], first[span]), gauge]
+        )
+        lost = np.abs(held - depth) > EXACT * np.maximum(depth, 1)
+        cut[span[lost], gauge[lost]] = True
+        return cut
 
 
 def _middle(starts: npt.NDArray[np.datetime64], ends: npt.NDArray[np.datetime64]) -> npt.NDArray[np.datetime64]:

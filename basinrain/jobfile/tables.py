@@ -27,6 +27,7 @@ from basinrain.jobfile.fields import (
     names,
     one_of,
 )
+from basinrain.jobfile.series_tables import SeriesTable, StormsTable
 from basinrain.units import AREA_UNITS
 
 __all__ = [
@@ -292,6 +293,10 @@ class Job(Table):
         ``[infill]``: how gaps are filled.
     averaging : AveragingTable
         ``[averaging]``: the methods that are run and compared, and their options.
+    series : SeriesTable
+        ``[series]``: what is done with the whole record.
+    storms : StormsTable or None
+        ``[storms]``: storms that are found in the record, run beside those of ``[[storm]]``.
     folder : Path
         Where relative paths start, the job file's own folder; not a key of the file.
 
@@ -323,6 +328,8 @@ class Job(Table):
     storm: Annotated[tuple[StormTable, ...], BeforeValidator(as_list)] = ()
     infill: InfillTable = InfillTable()
     averaging: AveragingTable = AveragingTable()
+    series: SeriesTable = SeriesTable()
+    storms: StormsTable | None = None
     folder: Annotated[Path, Field(exclude=True)] = Path()
 
     def path(self, name: str) -> Path:

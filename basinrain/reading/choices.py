@@ -3,11 +3,21 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping, Sequence
 from typing import Final
 
 from basinrain.errors import JobError, Problem, Problems, nearest_name
-from basinrain.layouts import COLUMNS, GHCN, GHCN_UNIT, LAYOUTS, misplaced
+from basinrain.layouts import (
+    COLUMNS,
+    FORMAT_LAYOUTS,
+    FORMAT_NAMES,
+    GHCN,
+    GHCN_UNIT,
+    LAYOUTS,
+    NETCDF_COLUMNS,
+    NOT_IN_NETCDF,
+    misplaced,
+)
 from basinrain.reading.intervals import DAY, FORMS, Interval, interval_of, parse_interval
 
 __all__ = ["check_choices", "check_numbers", "reading_hour", "source_interval", "time_of_day"]
@@ -22,8 +32,10 @@ _NO_READINGS: Final = ("trace", "presumed-zero", "accumulated")
 _HOUR: Final = re.compile(r"(?P<hour>[01]?[0-9]|2[0-3])(?::(?P<minute>[0-5][0-9]))?")
 
 
-def check_choices(layout: str, given: Mapping[str, object], problems: Problems) -> None:
-    """Report options that are none of their choices, or that the layout does not take.
+def check_choices(
+    layout: str, given: Mapping[str, object], problems: Problems, *, formats: Collection[str] = ("text",)
+) -> None:
+    """Report options that are none of their choices, or that the layout or the format of a file does not take.
 
     Parameters
     ----------
@@ -33,6 +45,8 @@ def check_choices(layout: str, given: Mapping[str, object], problems: Problems) 
         The options that were given, by key; None for one that has its default.
     problems
         Takes what is wrong.
+    formats
+        Those of the source's files, as of :func:`basinrain.layouts.file_format`.
 
     Examples
     --------
@@ -71,8 +85,9 @@ def check_choices(layout: str, given: Mapping[str, object], problems: Problems) 
                 expected="another meaning, as a counter has readings and no depths",
                 remedy="declare it 'missing' where the reading does not count",
             )
+    _check_formats(layout, given, sorted(formats), problems)
     columns = given.get("columns")
-    accepted = COLUMNS.get(layout)
+    accepted = NETCDF_COLUMNS if "netcdf" in formats and layout == "wide" else COLUMNS.get(layout)
     for key in columns if accepted and isinstance(columns, Mapping) else ():
         if accepted and key not in accepted:
             problems.add(
@@ -80,6 +95,25 @@ def check_choices(layout: str, given: Mapping[str, object], problems: Problems) 
                 found=f"'{key}'",
                 expected=f"for layout '{layout}' one of: " + ", ".join(accepted),
                 remedy=nearest_name(key, accepted),
+            )
+
+
+def _check_formats(layout: str, given: Mapping[str, object], formats: Sequence[str], problems: Problems) -> None:
+    for name in formats:
+        if layout in LAYOUTS and layout not in FORMAT_LAYOUTS[name]:
+            problems.add(
+                item="layout",
+                found=f"'{layout}' with a {FORMAT_NAMES[name]} file",
+                expected=" or ".join(f"'{known}'" for known in FORMAT_LAYOUTS[name]),
+                remedy="leave it out" if name == "netcdf" and layout == "long" else "give such data as text",
+            )
+    for key in NOT_IN_NETCDF if "netcdf" in formats else ():
+        if given.get(key) is not None:
+            problems.add(
+                item=key,
+                found=f"{given[key]!r}",
+                expected="none with a NetCDF file, whose times and depths are numbers",
+                remedy="leave it out",
             )
 
 

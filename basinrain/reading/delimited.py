@@ -13,7 +13,7 @@ from collections import Counter
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Final
+from typing import Final, NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -22,7 +22,17 @@ import pandas as pd
 from basinrain.errors import Problem, Problems, ReadError
 from basinrain.reading.files import read_bytes
 
-__all__ = ["DelimitedTable", "read_delimited"]
+__all__ = [
+    "DelimitedTable",
+    "Header",
+    "decimal_signs",
+    "decode_text",
+    "has_spaces_at_cell_ends",
+    "header_of",
+    "read_delimited",
+    "report_uneven",
+    "table_of_rows",
+]
 
 _SEPARATORS: Final = ("\t", ";", ",")
 
@@ -51,6 +61,14 @@ class DelimitedTable:
     frame: pd.DataFrame
     lines: npt.NDArray[np.int64]
     decimal: str
+
+
+class Header(NamedTuple):
+    """The names of a file's columns (``""`` where there is none), what separates its cells, and the header's line."""
+
+    names: tuple[str, ...]
+    separator: str
+    line: int
 
 
 def read_delimited(path: Path) -> DelimitedTable:
@@ -85,51 +103,41 @@ def read_delimited(path: Path) -> DelimitedTable:
     (('time', 'W01', 'W02'), ',', [3], [['2031-05-01', '1,5', '']])
     """
     file = str(path)
-    text = _text(path, file)
-    if "\r" in text:
-        text = text.replace("\r\n", "\n").replace("\r", "\n")
+    text = decode_text(read_bytes(path), file)
     lines = text.split("\n")
     kept = [number for number, line in enumerate(lines) if line and not line.isspace()]
     if not kept:
         raise ReadError(Problem(item="the file", found="nothing in it", expected="a header and rows", file=file))
-    separator = _separator(lines[kept[0]])
+    header = header_of(lines[kept[0]], kept[0] + 1)
     cells: Sequence[str] | Sequence[list[str]]
     if '"' in text and any(line.count('"') % 2 for line in lines):
-        header, cells, numbers_of_lines = _records(text, separator, file)
+        names, cells, numbers_of_lines = _records(text, header.separator, file)
+        header = header._replace(names=_names(names))
     else:
-        header = next(csv.reader([lines[kept[0]]], delimiter=separator, skipinitialspace=True))
         cells = [lines[number] for number in kept[1:]]
         numbers_of_lines = np.asarray(kept[1:], dtype=np.int64) + 1
-    columns = [name.strip() for name in header]
-    while columns and not columns[-1]:
-        columns.pop()
-    problems = Problems(file=file)
-    frame = _frame(cells, numbers_of_lines, len(columns), separator, problems)
-    _check_names(columns, frame, problems, line=kept[0] + 1)
-    problems.raise_as(ReadError)
-
-    if _has_spaces_at_cell_ends(text, separator):
-        frame = frame.apply(lambda column: column.str.strip())
-    filled = (frame != "").to_numpy()
-    rows = filled.any(axis=1)
-    if not rows.any():
-        raise ReadError(Problem(item="the file", found="a header and nothing below it", expected="rows", file=file))
-    if not rows.all():
-        frame, numbers_of_lines = frame.iloc[np.flatnonzero(rows)], numbers_of_lines[rows]
-    named = [place for place, name in enumerate(columns) if name]
-    frame = frame.iloc[:, named]
-    frame.columns = pd.Index([columns[place] for place in named])
-    return DelimitedTable(
-        file=file,
-        columns=tuple(frame.columns),
-        frame=frame.reset_index(drop=True),
-        lines=numbers_of_lines,
-        decimal=_decimal(text, separator),
+    decimal = "," if decimal_signs(text, header.separator) == {","} else "."
+    table = table_of_rows(
+        cells, numbers_of_lines, header, file, decimal=decimal, spaced=has_spaces_at_cell_ends(text, header.separator)
     )
+    if not len(table.lines):
+        raise ReadError(Problem(item="the file", found="a header and nothing below it", expected="rows", file=file))
+    return table
 
 
-def _text(path: Path, file: str) -> str:
-    content = read_bytes(path)
+def decode_text(content: bytes, file: str, *, first_line: int = 1) -> str:
+    r"""Return the text of a file, or of whole lines from its line ``first_line`` on, its line ends all ``\n``.
+
+    Raises
+    ------
+    ReadError
+        It is binary, or not UTF-8.
+
+    Examples
+    --------
+    >>> decode_text(b"time,A\r\n", "rain.csv")
+    'time,A\n'
+    """
     if b"\0" in content:
         raise ReadError(
             Problem(
@@ -141,7 +149,7 @@ def _text(path: Path, file: str) -> str:
             )
         )
     try:
-        return content.decode("utf-8-sig")
+        text = content.decode("utf-8-sig" if first_line == 1 else "utf-8")
     except UnicodeDecodeError as error:
         # With a byte-order mark, the position counts from behind it.
         raise ReadError(
@@ -151,9 +159,77 @@ def _text(path: Path, file: str) -> str:
                 expected="text in UTF-8",
                 remedy="save it as UTF-8",
                 file=file,
-                line=error.object.count(b"\n", 0, error.start) + 1,
+                line=error.object.count(b"\n", 0, error.start) + first_line,
             )
         ) from None
+    return text.replace("\r\n", "\n").replace("\r", "\n") if "\r" in text else text
+
+
+def header_of(text: str, line: int) -> Header:
+    """Return what the header line of a file says.
+
+    Examples
+    --------
+    >>> header_of("time;W01 ;W02;", 1)
+    Header(names=('time', 'W01', 'W02'), separator=';', line=1)
+    """
+    separator = _separator(text)
+    return Header(_names(next(csv.reader([text], delimiter=separator, skipinitialspace=True))), separator, line)
+
+
+def _names(cells: Sequence[str]) -> tuple[str, ...]:
+    names = [name.strip() for name in cells]
+    while names and not names[-1]:
+        names.pop()
+    return tuple(names)
+
+
+def table_of_rows(
+    rows: Sequence[str] | Sequence[list[str]],
+    lines: npt.NDArray[np.int64],
+    header: Header,
+    file: str,
+    *,
+    decimal: str,
+    spaced: bool,
+) -> DelimitedTable:
+    """Return the table of some rows of a file; rows of empty cells are left out.
+
+    Parameters
+    ----------
+    rows
+        Lines, or lists of cells.
+    lines
+        The line of the file on which each begins.
+    header, file, decimal
+        As for the whole file.
+    spaced
+        Whether cells may have spaces around them.
+
+    Raises
+    ------
+    ReadError
+        Columns are unnamed or named twice; rows have more cells than the header, or fewer.
+
+    Examples
+    --------
+    >>> header = header_of("time,W01", 1)
+    >>> table_of_rows(["2031-05-04,1.5"], np.array([7]), header, "rain.csv", decimal=".", spaced=False).frame["W01"][0]
+    '1.5'
+    """
+    problems = Problems(file=file)
+    frame = _frame(rows, lines, len(header.names), header.separator, problems)
+    _check_names(header.names, frame, problems, line=header.line)
+    problems.raise_as(ReadError)
+    if spaced:
+        frame = frame.apply(lambda column: column.str.strip())
+    full = (frame != "").to_numpy().any(axis=1)
+    if not full.all():
+        frame, lines = frame.iloc[np.flatnonzero(full)], lines[full]
+    named = [place for place, name in enumerate(header.names) if name]
+    frame = frame.iloc[:, named]
+    frame.columns = pd.Index([header.names[place] for place in named])
+    return DelimitedTable(file, tuple(frame.columns), frame.reset_index(drop=True), lines, decimal)
 
 
 def _separator(header: str) -> str:
@@ -161,7 +237,7 @@ def _separator(header: str) -> str:
     return max(_SEPARATORS, key=lambda separator: (bare.count(separator), separator == ","))
 
 
-def _has_spaces_at_cell_ends(text: str, separator: str) -> bool:
+def has_spaces_at_cell_ends(text: str, separator: str) -> bool:
     """Return whether cells may need stripping; it is slow on a million rows, and times have spaces inside."""
     marks = (f" {separator}", f"{separator} ", " \n", "\n ", '" ', ' "')
     return (
@@ -197,16 +273,27 @@ def _records(text: str, separator: str, file: str) -> tuple[list[str], list[list
     return records[0], records[1:], np.asarray(starts[1:], dtype=np.int64)
 
 
-def _frame(
+def report_uneven(
     rows: Sequence[str] | Sequence[list[str]],
     lines: npt.NDArray[np.int64],
     n_columns: int,
     separator: str,
     problems: Problems,
-) -> pd.DataFrame:
-    """Cells of the rows, n_columns across; rows with more cells or fewer are problems."""
+) -> list[str | list[str]]:
+    """Return rows without empty cells behind the last column; rows with more cells than columns or fewer are problems.
+
+    Examples
+    --------
+    >>> problems = Problems(file="rain.csv")
+    >>> report_uneven(["8:00,1,,", "9:00"], np.array([2, 3]), 2, ",", problems)
+    ['8:00,1', '9:00']
+    >>> problems.raise_as(ReadError)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.ReadError: rain.csv:3: a row: found 1 cell; expected 2, as the header has; give every cell, an \
+empty one where there is no value
+    """
     cut: list[str | list[str]] = list(rows)
-    whole_lines = bool(rows) and isinstance(rows[0], str)
     for place, cells in _uneven(rows, n_columns, separator):
         # Cells after the last named column, and those of a row that has none filled, are a spreadsheet's leavings.
         if any(cell.strip() for cell in (cells[n_columns:] if len(cells) > n_columns else cells)):
@@ -217,8 +304,20 @@ def _frame(
                 remedy=_uneven_remedy(separator, more=len(cells) > n_columns),
                 line=int(lines[place]),
             )
-        cut[place] = _joined(cells[:n_columns], separator) if whole_lines else cells[:n_columns]
-    if not whole_lines:
+        cut[place] = _joined(cells[:n_columns], separator) if isinstance(rows[0], str) else cells[:n_columns]
+    return cut
+
+
+def _frame(
+    rows: Sequence[str] | Sequence[list[str]],
+    lines: npt.NDArray[np.int64],
+    n_columns: int,
+    separator: str,
+    problems: Problems,
+) -> pd.DataFrame:
+    """Cells of the rows, n_columns across; rows with more cells or fewer are problems."""
+    cut = report_uneven(rows, lines, n_columns, separator, problems)
+    if not rows or not isinstance(rows[0], str):
         padded = [[*row, *[""] * (n_columns - len(row))] for row in cut]
         return pd.DataFrame(padded, columns=range(n_columns), dtype=str)
     return pd.read_csv(
@@ -288,13 +387,21 @@ def _check_names(columns: Sequence[str], frame: pd.DataFrame, problems: Problems
             )
 
 
-def _decimal(text: str, separator: str) -> str:
-    """Return a comma where whole cells are numbers with a comma and none is a number with a point."""
+def decimal_signs(text: str, separator: str) -> frozenset[str]:
+    r"""Return the signs, of comma and point, that stand in whole cells which are numbers with a decimal sign.
+
+    A comma is the file's decimal sign where no cell has a point.
+
+    Examples
+    --------
+    >>> sorted(decimal_signs("8:00;1,5\n9:00;0.5", ";")), sorted(decimal_signs("1,5", ","))
+    ([',', '.'], [])
+    """
     if separator == ",":
-        return "."
+        return frozenset()
 
     def has(sign: str) -> bool:
         cell = rf'(?:^|{separator})[ "]*[+-]?[0-9]*{sign}[0-9]+(?:[eE][+-]?[0-9]+)?[ "]*(?:{separator}|$)'
         return re.search(cell, text, re.MULTILINE) is not None
 
-    return "," if has(",") and not has(r"\.") else "."
+    return frozenset(sign for sign, form in ((",", ","), (".", r"\.")) if has(form))

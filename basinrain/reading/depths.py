@@ -8,7 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from types import MappingProxyType
-from typing import Final, NamedTuple
+from typing import Any, Final, NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -21,7 +21,7 @@ from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.intervals import DAY, Interval
 from basinrain.units import depth_factor
 
-__all__ = ["MARKED", "DepthCells", "DepthRules", "Fault", "depth_rules", "greatest_depth"]
+__all__ = ["MARKED", "DepthCells", "DepthRules", "Fault", "depth_rules", "greatest_depth", "number_depths"]
 
 MARKED: Final[Mapping[str, Status]] = MappingProxyType(
     {
@@ -250,7 +250,12 @@ class DepthCells:
             An accumulated total keeps its depth beside status ACCUMULATED.
         faults : list of (row, Fault)
         """
-        codes, texts = pd.factorize(self._table.frame[column])
+        cells_of = self._table.frame[column]
+        if pd.api.types.is_numeric_dtype(cells_of):
+            return number_depths(
+                cells_of.to_numpy(), self._rules, marks=None if flag is None else self._table.frame[flag]
+            )
+        codes, texts = pd.factorize(cells_of)
         keys = [(str(text), "") for text in texts]
         if flag is not None:
             flag_codes, marks = pd.factorize(self._table.frame[flag])
@@ -308,6 +313,60 @@ class DepthCells:
                     f"'{text}'", f"{_EXPECTED}; it looks like a missing code", f"if it is one, add '{text}' to missing"
                 )
         return _marked(text, mark, meaning, value * rules.factor)
+
+
+def number_depths(
+    values: npt.NDArray[Any], rules: DepthRules, *, marks: pd.Series[str] | None = None
+) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8], list[tuple[int, Fault]]]:
+    """Return depths and statuses of numbers as of cells with the same text; and the faulty ones by flat position.
+
+    Parameters
+    ----------
+    values : array of numbers, any shape
+        In the rules' unit; NaN is missing. Codes are compared in the numbers' own precision.
+    rules
+        How to understand them.
+    marks : series of text, shape (n_values,), or None
+        The mark of each value, ``""`` for none.
+
+    Returns
+    -------
+    depth, status : arrays of the shape of ``values``
+        As of :meth:`DepthCells.column`.
+    faults : list of (flat position, Fault)
+
+    Examples
+    --------
+    >>> rules = depth_rules(unit="in", interval=None, missing=[-9], trace=[], flags={}, accumulated=None)
+    >>> number_depths(np.array([[1.0, 0.0], [np.nan, -9.0]]), rules)
+    (array([[25.4,  0. ],
+           [ nan,  nan]]), array([[0, 1],
+           [3, 3]], dtype=uint8), [])
+    """
+    depth = np.asarray(values, dtype=np.float64) * rules.factor
+    status = (depth == 0).astype(np.uint8)  # ZERO, else OBSERVED
+    blank = np.isnan(depth)
+    status[blank] = Status.MISSING
+    # Whatever may be no plain depth is judged by its text; a comparison is much cheaper than a membership.
+    doubtful = (depth < 0) | np.isinf(depth)
+    likely = np.flatnonzero(values >= min(_CODES))
+    if len(likely):
+        doubtful.flat[likely] |= np.isin(values.flat[likely], np.array(sorted(_CODES)).astype(values.dtype))
+    for code in {*rules.missing_numbers, *filter(np.isfinite, map(_number, rules.marks))}:
+        doubtful |= values == np.array(code).astype(values.dtype)
+    if marks is not None:
+        doubtful |= (marks != "").to_numpy()
+    rows = np.flatnonzero(doubtful)
+    if not len(rows):
+        return depth, status, []
+    kinds, codes = np.unique(values.flat[rows], return_inverse=True)
+    shown = np.array(["" if np.isnan(v) else np.format_float_positional(v, trim="-") for v in kinds], dtype=object)
+    frame = pd.DataFrame({"depth": pd.Series(shown[codes], dtype=str)})
+    # Without marks of their own, numbers must not be split into number and mark.
+    frame["mark"] = "" if marks is None else marks.to_numpy()[rows]
+    table = DelimitedTable("", ("depth", "mark"), frame, rows, ".")
+    depth.flat[rows], status.flat[rows], faults = DepthCells(table, rules).column("depth", flag="mark")
+    return depth, status, [(int(rows[row]), fault) for row, fault in faults]
 
 
 def _marked(text: str, mark: str, meaning: Status, depth: float) -> _Cell:

@@ -88,7 +88,8 @@ def report_repeated(paths: Sequence[Path], problems: Problems) -> None:
     for alike in sizes.values():
         kept: list[tuple[Path, bytes]] = []
         for path in alike if len(alike) > 1 else ():
-            content = hashlib.sha256(path.read_bytes()).digest()
+            with path.open("rb") as stream:
+                content = hashlib.file_digest(stream, "sha256").digest()
             first = next((other for other, its in kept if its == content), None)
             if first is not None:
                 problems.add(

@@ -5,27 +5,27 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
-from typing import Literal, Protocol
+from typing import Final, Literal, Protocol
 
-from basinrain.errors import JobError, Problems, ReadError
-from basinrain.layouts import GHCN, GHCN_UNIT
+from basinrain.errors import Problems, ReadError
+from basinrain.layouts import GHCN, file_format
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 from basinrain.reading.axis import join_blocks
 from basinrain.reading.blocks import Block, problems_of
-from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval, time_of_day
-from basinrain.reading.clocks import parse_zone
 from basinrain.reading.counter import counter_depths, read_counter
-from basinrain.reading.counter_rules import CounterRules
 from basinrain.reading.delimited import DelimitedTable, read_delimited
-from basinrain.reading.depths import DepthRules, depth_rules
+from basinrain.reading.depths import DepthRules
 from basinrain.reading.files import report_repeated
 from basinrain.reading.ghcn import read_ghcn
 from basinrain.reading.ghcn_hours import ObservationHours
 from basinrain.reading.long import read_long
-from basinrain.reading.options import of_file, option_problems
+from basinrain.reading.netcdf import read_netcdf
+from basinrain.reading.options import of_file
+from basinrain.reading.parquet import read_parquet
+from basinrain.reading.source_rules import SourceRules, source_rules
 from basinrain.reading.stamps import StampRules, read_stamps
-from basinrain.reading.tips import TipRules, read_tips
+from basinrain.reading.tips import read_tips
 from basinrain.reading.totals import read_totals
 from basinrain.reading.wide import read_wide
 
@@ -61,7 +61,8 @@ def read_rainfall(
     Parameters
     ----------
     files
-        One path or several; several files are joined in time, in gauges, or both. No file may come twice.
+        One path or several; several files are joined in time, in gauges, or both. No file may come twice. By their
+        suffix they are Parquet (``.parquet``, ``.pq``), NetCDF (``.nc``, ``.nc4``), or delimited text.
     layout
         ``"wide"``: a column of times and a column for every gauge. ``"long"``: columns gauge, time, depth, and where
         there are such, flag and steps. ``"totals"``: columns gauge, depth, and where there is one, storm.
@@ -106,7 +107,8 @@ def read_rainfall(
         Time of day, ``"00:00"``, in the record's clock, at which a counter is set to 0 right after its reading, so that
         the next one is what fell since, lower or not; None: not known.
     columns
-        Which column holds what, by ``time``, ``gauge``, ``depth``, ``flag``, ``steps``, ``storm``.
+        Which column, or variable of a NetCDF file, holds what, by ``time``, ``gauge``, ``depth``, ``flag``, ``steps``,
+        ``storm``.
 
     Returns
     -------
@@ -121,7 +123,8 @@ def read_rainfall(
     JobError
         The options cannot be; all such problems together.
     ReadError
-        The files are not as the options say; all problems together, by file, line and column.
+        The files are not as the options say; all problems together, by file, line and column. In a Parquet file, and
+        along the time of a NetCDF file, rows are counted from 1 in place of lines.
 
     Examples
     --------
@@ -136,93 +139,58 @@ def read_rainfall(
     (array([[0, 2],
            [3, 7]], dtype=uint8), '2031-05-04T07:00:00')
     """
-    paths = [Path(files)] if isinstance(files, str | Path) else [Path(file) for file in files]
-    # A job may have many sources; their first file tells them apart.
-    first = str(paths[0]) if paths else ""
-    problems = Problems(file=first)
-    given: dict[str, object] = {
-        "stamp": None if stamp == "end" else stamp,
-        "date_means": date_means,
-        "gaps": None if gaps == "refuse" else gaps,
-        "unit": unit,
-        "read_hour": read_hour,
-        "missing": missing or None,
-        "trace": None if tuple(trace) == ("T",) else trace,
-        "flags": flags or None,
-        "accumulated": accumulated,
-        "time_format": time_format,
-        "tip": tip,
-        "start": start,
-        "end": end,
-        "rollover": rollover,
-        "jitter": jitter or None,
-        "reset": reset,
-        "columns": columns or None,
-    }
-    check_choices(layout, given, problems)
-    if not paths:
-        problems.add(item="files", found="none", expected="at least one file")
-    check_numbers(problems, above={"tip": tip, "rollover": rollover}, least={"jitter": jitter})
-    step, hour, anew = None, None, None
-    with option_problems(problems, file=first):
-        step = source_interval(interval, layout)
-    with option_problems(problems, file=first):
-        hour = reading_hour(read_hour, date_means, step)
-    with option_problems(problems, file=first):
-        anew = None if reset is None else time_of_day(reset, item="reset")
-    with option_problems(problems, file=first):
-        _ = None if timezone is None else parse_zone(timezone)
-
-    def rules_of_depths() -> DepthRules:
-        return depth_rules(
-            unit=GHCN_UNIT if layout in GHCN else unit or "",
-            interval=None if layout == "counter" else step,  # a reading may be of any size
-            missing=missing,
-            trace=() if layout in {"tips", "counter"} else trace,
-            flags=flags or {},
-            accumulated=accumulated,
-            least=-jitter if layout == "counter" else 0.0,
-        )
-
-    with option_problems(problems, file=first):
-        rules_of_depths()
-    problems.raise_as(JobError)
-    depths = rules_of_depths()
-    faults = Problems()
-    report_repeated(paths, faults)
-    faults.raise_as(ReadError)
-    if step is None:
-        tables = _tables(paths, faults)
-        faults.raise_as(ReadError)
-        return read_totals(tables, depths, columns=columns or {}, problems=faults)
-    stamps = StampRules(
-        interval=step,
+    rules = source_rules(
+        files,
+        layout=layout,
+        unit=unit,
+        interval=interval,
         stamp=stamp,
         timezone=timezone,
-        read_hour=hour,
-        date_means=date_means or "calendar-day",
+        read_hour=read_hour,
+        date_means=date_means,
+        missing=missing,
+        trace=trace,
+        flags=flags,
+        accumulated=accumulated,
+        gaps=gaps,
         time_format=time_format,
+        tip=tip,
+        start=start,
+        end=end,
+        rollover=rollover,
+        jitter=jitter,
+        reset=reset,
+        columns=columns,
     )
-    with of_file(first):
-        tips = TipRules(interval=step, tip=_in_mm(tip, depths), start=start, end=end) if layout == "tips" else None
-        counter = CounterRules(rollover=_in_mm(rollover, depths), jitter=jitter * depths.factor, reset=anew)
+    faults = Problems()
+    report_repeated(rules.paths, faults)
+    faults.raise_as(ReadError)
+    if rules.stamps is None:
+        tables = _tables(rules, faults)
+        faults.raise_as(ReadError)
+        return read_totals(tables, rules.depths, columns=rules.columns, problems=faults)
     notes: list[Note] = []
     if layout == "ghcn-dly" or layout == "ghcn-csv":  # noqa: PLR1714 - a type checker follows this, not a set
-        blocks, zone = _read_ghcn(paths, layout, stamps, faults, notes)
+        blocks, zone = _read_ghcn(rules.paths, layout, rules.stamps, faults, notes)
+    elif rules.tips is not None:
+        blocks, zone = read_tips(
+            _tables(rules, faults),
+            rules.depths,
+            rules.stamps,
+            rules.tips,
+            columns=rules.columns,
+            problems=faults,
+            notes=notes,
+        )
     else:
-        tables = _tables(paths, faults)
-        if tips is not None:
-            blocks, zone = read_tips(tables, depths, stamps, tips, columns=columns or {}, problems=faults, notes=notes)
-        else:
-            read = {"wide": read_wide, "long": read_long, "counter": read_counter}[layout]
-            blocks, zone = _read_blocks(read, tables, depths, stamps, columns=columns or {}, problems=faults)
+        blocks, zone = _read_blocks(rules, rules.stamps, faults)
     faults.raise_as(ReadError)
     # The days that a GHCN-Daily file leaves out are missing, by its format.
-    joined = join_blocks(blocks, step, zone=zone, gaps="missing" if layout in GHCN else gaps)
+    joined = join_blocks(blocks, rules.interval, zone=zone, gaps="missing" if layout in GHCN else gaps)
     record = replace(joined, notes=tuple(notes))
-    if layout == "counter":
-        with of_file(first):
-            return counter_depths(record, counter, file=first if len(paths) == 1 else "")
+    if rules.counter is not None:
+        with of_file(str(rules.paths[0])):
+            return counter_depths(record, rules.counter, file=str(rules.paths[0]) if len(rules.paths) == 1 else "")
     return record
 
 
@@ -239,32 +207,38 @@ class _Reader(Protocol):
     ) -> tuple[Block | None, str | None]: ...
 
 
-def _tables(paths: Sequence[Path], problems: Problems) -> list[DelimitedTable]:
+_READERS: Final[Mapping[str, _Reader]] = {"wide": read_wide, "long": read_long, "counter": read_counter}
+
+
+def _tables(rules: SourceRules, problems: Problems) -> list[DelimitedTable]:
     tables = []
-    for path in paths:
+    for path in rules.paths:
         with problems_of(str(path), problems):
             tables.append(read_delimited(path))
     return tables
 
 
-def _read_blocks(
-    read: _Reader,
-    tables: list[DelimitedTable],
-    depths: DepthRules,
-    stamps: StampRules,
-    *,
-    columns: Mapping[str, str],
-    problems: Problems,
-) -> tuple[list[Block], str]:
+def _read_blocks(rules: SourceRules, stamps: StampRules, problems: Problems) -> tuple[list[Block], str]:
+    """Read the files one after the other, so that the text of one is gone before that of the next comes."""
     zone: str | None = None
     blocks = []
-    while tables:
-        table = tables.pop(0)  # let go of the text as soon as it is numbers
-        with of_file(table.file), problems_of(table.file, problems) as here:
-            block, zone = read(table, depths, stamps, columns=columns, zone=zone, problems=here)
+    for path in rules.paths:
+        with of_file(str(path)), problems_of(str(path), problems) as here:
+            if file_format(path.name) == "netcdf":
+                block, zone = read_netcdf(path, rules.depths, stamps, columns=rules.columns, zone=zone, problems=here)
+            else:
+                block, zone = _READERS[rules.layout](
+                    _table(path, rules), rules.depths, stamps, columns=rules.columns, zone=zone, problems=here
+                )
             if block is not None:
                 blocks.append(block)
     return blocks, zone or ""
+
+
+def _table(path: Path, rules: SourceRules) -> DelimitedTable:
+    if file_format(path.name) == "parquet":
+        return read_parquet(path, layout=rules.layout, columns=rules.columns)
+    return read_delimited(path)
 
 
 def _read_ghcn(
@@ -281,7 +255,3 @@ def _read_ghcn(
     # Dates have no clock of their own, so that the declared one is the record's.
     days = [str(block.ends[0])[:10] for block in blocks]
     return blocks, read_stamps(days[:1], stamps).zone
-
-
-def _in_mm(depth: float | None, rules: DepthRules) -> float | None:
-    return None if depth is None else depth * rules.factor

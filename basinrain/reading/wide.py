@@ -5,13 +5,13 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 import numpy as np
-import numpy.typing as npt
 
 from basinrain.errors import Problems
 from basinrain.reading.blocks import TIME_NAMES, Block
 from basinrain.reading.columns import find_column
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules
+from basinrain.reading.order import check_order
 from basinrain.reading.stamps import StampRules, read_stamps
 
 __all__ = ["read_wide"]
@@ -80,7 +80,7 @@ def read_wide(
             line=int(table.lines[fault.row]),
             time=cells[fault.row],
         )
-    _check_order(ends, cells, table, time, problems)
+    check_order(ends, cells, table.lines, item=f"column {time}", problems=problems)
     depth = np.empty((len(cells), len(gauges)))
     status = np.empty((len(cells), len(gauges)), dtype=np.uint8)
     reader = DepthCells(table, depths)
@@ -101,30 +101,3 @@ def read_wide(
         return None, zone
     block = Block(table.file, gauges, ends, table.lines, depth, status, None, {})
     return block, zone
-
-
-def _check_order(
-    ends: npt.NDArray[np.datetime64], cells: list[str], table: DelimitedTable, time: str, problems: Problems
-) -> None:
-    known = np.flatnonzero(~np.isnat(ends))
-    seconds = ends[known].astype(np.int64)
-    if len(seconds) < 2 or (np.diff(seconds) > 0).all():
-        return
-    _, first, place = np.unique(seconds, return_index=True, return_inverse=True)
-    twice = first[place] != np.arange(len(seconds))
-    latest = np.maximum.accumulate(seconds)
-    back = np.r_[False, seconds[1:] < latest[:-1]] & ~twice
-    for k in np.flatnonzero(twice | back):
-        row = int(known[k])
-        if twice[k]:
-            found, expected = f"'{cells[row]}', as in line {table.lines[known[first[place[k]]]]}", "each time once"
-        else:
-            found, expected = f"'{cells[row]}' after a later time", "times in order"
-        problems.add(
-            item=f"column {time}",
-            found=found,
-            expected=expected,
-            remedy="remove one of the rows" if twice[k] else "sort the rows by time",
-            line=int(table.lines[row]),
-            time=cells[row],
-        )

@@ -10,7 +10,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill.leave_one_out.substitutes import Pairs, Substitutes
+from basinrain.infill.substitutes import Pairs, Substitutes, sum_donors
 from basinrain.infill.options import InfillOptions
 
 __all__ = ["Estimator", "Piece"]
@@ -189,7 +189,7 @@ class Estimator:
                 self._row_by_row(p, e, valid, month)
             else:
                 np.matmul(p, substitutes.base, out=e)
-                without = ~substitutes.estimable[:n]
+                without = ~substitutes.estimable(np.arange(n))
                 if without.any():
                     valid[:, without] = False
                 _correct(piece, substitutes, pairs, run, first)
@@ -218,7 +218,7 @@ def _runs(silent: Bools) -> Ints:
 def _correct(piece: Piece, substitutes: Substitutes, pairs: Pairs, run: Ints, first: int) -> None:
     """Estimate anew where a donor is silent, over the rows ``first`` and on."""
     p, e, valid = piece.observed, piece.estimated, piece.valid
-    stop, n = first + len(p), p.shape[1]
+    stop = first + len(p)
     runs = np.searchsorted(run, [first, stop], side="right") - 1
     lo, hi = np.searchsorted(pairs.row, [runs[0], runs[1] + (run[runs[1]] < stop)])
     if lo == hi:
@@ -226,22 +226,9 @@ def _correct(piece: Piece, substitutes: Substitutes, pairs: Pairs, run: Ints, fi
     row, target, node = pairs.row[lo:hi], pairs.target[lo:hi], pairs.node[lo:hi]
     begin = np.maximum(run[row], first) - first
     length = np.minimum(run[row + 1], stop) - first - begin
-    total = int(length.sum())
-    # The flat position of the first gauge of every row of every pair.
-    at = np.repeat(begin - (np.cumsum(length) - length), length)
-    at += np.arange(total)
-    at *= n
-    flat = p.ravel()
-    donors, weights = substitutes.donors[node], substitutes.weights[node]
-    sums = np.zeros(total)
-    for k in range(donors.shape[1]):
-        index = np.repeat(donors[:, k], length)
-        index += at
-        values = flat.take(index)
-        values *= np.repeat(weights[:, k], length)
-        sums += values
+    at, sums = sum_donors(p, begin, length, *substitutes.donors(node))
     at += np.repeat(target, length)
     e.ravel()[at] = sums
-    lost = ~substitutes.estimable[node]
+    lost = ~substitutes.estimable(node)
     if lost.any():
         valid.ravel()[at[np.repeat(lost, length)]] = False

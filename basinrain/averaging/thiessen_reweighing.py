@@ -1,0 +1,236 @@
+"""Thiessen basin means of long records while gauges come and go, without a tessellation for every set of gauges."""
+
+from __future__ import annotations
+
+from collections import OrderedDict
+from collections.abc import Iterator, Sequence
+from typing import Final, NamedTuple
+
+import numpy as np
+import numpy.typing as npt
+from scipy.sparse import csr_array
+
+from basinrain.averaging.inputs import require_one_plane, union_is_sum
+from basinrain.averaging.registry import Reweigher
+from basinrain.averaging.reporting import ReportingRuns
+from basinrain.averaging.reweighing import reweigh_by_sets
+from basinrain.averaging.thiessen import prepare_thiessen
+from basinrain.averaging.thiessen_epochs import Epoch, epochs_of
+from basinrain.averaging.thiessen_removal import Removal, Removals
+from basinrain.averaging.thiessen_tessellation import Tessellation, edges_among, whole_tessellation
+from basinrain.basins import Basins
+from basinrain.errors import DataError, MethodError
+from basinrain.gauges import GaugeNetwork
+
+__all__ = ["ThiessenReweigher", "prepare_thiessen_reweigher"]
+
+Ints = npt.NDArray[np.int64]
+Floats = npt.NDArray[np.float64]
+Bools = npt.NDArray[np.bool_]
+Weights = csr_array | Floats
+
+CACHE_BYTES: Final = 128 << 20
+"""What is kept between calls is cut down to this."""
+
+_RUNS: Final = 8192
+"""Runs whose removals are held together."""
+
+_BUFFER: Final = 1 << 20
+"""Depths and means of a chunk of steps together, 8 MiB, so that they stay near the processor."""
+
+_DENSE: Final = 0.2
+"""A table with at least this share of its places taken is multiplied whole."""
+
+_LONG: Final = 24
+"""Corrections over fewer steps than this are gathered; longer ones are products of their own."""
+
+_BITS_AT_ONCE: Final = 1 << 24
+
+
+class _Spans(NamedTuple):
+    """Stretches of steps, ``stop`` not included, each of something given by its place in a list."""
+
+    of: Ints
+    first: Ints
+    stop: Ints
+
+    def within(self, first: int, stop: int) -> _Spans:
+        """Return what lies in some steps, counted from the first of these."""
+        at = np.flatnonzero((self.first < stop) & (self.stop > first))
+        begins = np.maximum(self.first[at], first) - first
+        return _Spans(self.of[at], begins, np.minimum(self.stop[at], stop) - first)
+
+    def choose(self, which: Bools) -> _Spans:
+        return _Spans(self.of[which], self.first[which], self.stop[which])
+
+    @property
+    def lengths(self) -> Ints:
+        return self.stop - self.first
+
+
+class _Kept(NamedTuple):
+    """A tessellation and what was learned of its removals."""
+
+    tessellation: Tessellation
+    removals: Removals
+
+
+def prepare_thiessen_reweigher(network: GaugeNetwork, basins: Basins) -> Reweigher:
+    """Check network and basins once and return what averages records over them, gauges coming and going.
+
+    Means are those of :func:`basinrain.averaging.thiessen_weights` for the gauges that report at every step, to 1e-9.
+
+    Raises
+    ------
+    DataError
+        Gauges and basins are not in one plane. When it is called: two gauges that report together stand at one place.
+    MethodError
+        When it is called: the pieces of a basin do not sum to its area.
+
+    Examples
+    --------
+    Three gauges in a row, the square between x = 0 and 10: with B silent, A and C share it at x = 6.
+
+    >>> import shapely
+    >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[1.0, 5.0, 11.0], y=[5.0] * 3, crs="local")
+    >>> square = Basins(ids=("square",), polygons=[shapely.box(0, 0, 10, 10)], crs="local")
+    >>> depth = np.array([[10.0, 20.0, 30.0], [10.0, np.nan, 30.0], [np.nan, np.nan, np.nan]])
+    >>> reweigh = prepare_thiessen_reweigher(network, square)
+    >>> reweigh(depth, ReportingRuns.of(~np.isnan(depth))).round(9)
+    array([[19.],
+           [18.],
+           [nan]])
+    """
+    require_one_plane(network, basins)
+    present = np.ones(len(network), dtype=bool)
+    try:
+        whole = whole_tessellation(network, basins, present, len(basins) - union_is_sum(basins))
+    except (DataError, MethodError):
+        # Gauges that cannot stand together may never report together.
+        return reweigh_by_sets(prepare_thiessen(network, basins))
+    return ThiessenReweigher(network, basins, whole)
+
+
+class ThiessenReweigher:
+    """Averages records by Thiessen weights of the gauges that report at each step.
+
+    Parameters
+    ----------
+    network, basins
+        In one plane.
+    whole
+        The tessellation of all gauges; the union is not cut where the other basins sum to it.
+
+    Notes
+    -----
+    Cells are cut from the basins' outlines once. Where gauges are silent, only their own cells are shared anew among
+    neighbours, and what is computed for a set of silent neighbours serves every step at which they are silent. Gauges
+    absent over a long stretch are left out of that stretch's tessellation; more than six neighbours silent together
+    have their cells shared all at once. Whatever does not sum to the part that is shared is given up for a tessellation
+    of its own. What is kept between calls changes their time, never a bit of what they return.
+    """
+
+    def __init__(self, network: GaugeNetwork, basins: Basins, whole: Tessellation) -> None:
+        self._network, self._basins, self._whole = network, basins, whole
+        self._n_cut = len(whole.ground.areas)
+        self._weigh = prepare_thiessen(network, basins)
+        nobody = np.zeros(len(network), dtype=bool)
+        self._kept: OrderedDict[bytes, _Kept] = OrderedDict({nobody.tobytes(): _Kept(whole, Removals(whole))})
+        self._single: OrderedDict[bytes, Weights] = OrderedDict()
+
+    def __call__(self, depth: Floats, runs: ReportingRuns, /) -> Floats:
+        """Return basin means in mm, shape (n_steps, n_basins); NaN where no gauge reports.
+
+        Parameters
+        ----------
+        depth : array of float, shape (n_steps, n_gauges)
+            mm; finite where a gauge reports. It is not changed.
+        runs
+            Which gauges report at every step.
+
+        Raises
+        ------
+        MethodError
+            A tessellation of its own, where one is needed, does not sum to the basins.
+        """
+        result = np.empty((runs.n_steps, len(self._basins)))
+        for epoch in epochs_of(runs.present, self._edges_without):
+            kept = self._without(epoch.absent)
+            for first in range(epoch.first, epoch.stop, _RUNS):
+                self._average(depth, runs, epoch, kept, slice(first, min(first + _RUNS, epoch.stop)), result)
+            self._cut_down()
+        nobody = np.flatnonzero(~runs.present.any(axis=1))
+        for run in nobody.tolist():
+            result[runs.first[run] : runs.first[run] + runs.lengths[run]] = np.nan
+        return result
+
+    def _edges_without(self, absent: Bools) -> Ints:
+        if not absent.any():
+            return self._whole.edges
+        key = absent.tobytes()
+        if key in self._kept:
+            return self._kept[key].tessellation.edges
+        return edges_among(self._whole.ground, ~absent)
+
+    def _without(self, absent: Bools) -> _Kept:
+        key = absent.tobytes()
+        if key not in self._kept:
+            made = self._whole.without(absent)
+            if made is None:
+                made = whole_tessellation(self._network, self._basins, ~absent, self._n_cut, self._whole.ground)
+            self._kept[key] = _Kept(made, Removals(made))
+        self._kept.move_to_end(key)
+        return self._kept[key]
+
+    def _cut_down(self) -> None:
+        """Forget what was used longest ago, and at last what was learned of the whole tessellation."""
+        nobody = np.zeros(len(self._network), dtype=bool).tobytes()
+        while self._nbytes > CACHE_BYTES:
+            oldest = next((key for key in self._kept if key != nobody), None)
+            if oldest is None:
+                self._kept[nobody] = _Kept(self._whole, Removals(self._whole))
+                break
+            del self._kept[oldest]
+
+    @property
+    def _nbytes(self) -> int:
+        return sum(kept.tessellation.nbytes + kept.removals.nbytes for kept in self._kept.values())
+
+    def _average(
+        self, depth: Floats, runs: ReportingRuns, epoch: Epoch, kept: _Kept, some: slice, result: Floats
+    ) -> None:
+        """Fill in the means of some runs of an epoch."""
+        present = runs.present[some]
+        borders = np.append(runs.first[some], runs.n_steps if some.stop == len(runs) else runs.first[some.stop])
+        silent = _spans_of(~present.T, borders)
+        missing = ~present & ~epoch.absent & present.any(axis=1)[:, None]
+        plan = _Plan(self, kept, epoch, missing, some, borders)
+        tables = [_table_for(kept.tessellation.weights)]
+        own = [self._weights_of(present[run]) for run in plan.own]
+        tables += own
+        n_gauges = depth.shape[1]
+        chunk = max(_BUFFER // (n_gauges + self._n_cut), 16)
+        store = np.empty(chunk * n_gauges)
+        shares = self._whole.ground.areas / self._whole.ground.areas.sum()
+        for first in range(int(borders[0]), int(borders[-1]), chunk):
+            stop = min(first + chunk, int(borders[-1]))
+            known = store[: n_gauges * (stop - first)].reshape(n_gauges, stop - first)
+            known[...] = depth[first:stop].T
+            _silence(known, silent.within(first, stop))
+            means = np.asarray(tables[0] @ known)
+            plan.correct(means, known, first, stop)
+            for k, begin, end in zip(*(a.tolist() for a in plan.own_spans.within(first, stop)), strict=True):
+                means[:, begin:end] = own[k] @ known[:, begin:end]
+            result[first:stop, : self._n_cut] = means.T
+            if len(self._basins) > self._n_cut:
+                result[first:stop, -1] = shares @ means
+
+    def _weights_of(self, present: Bools) -> Weights:
+        """Return the weights of a tessellation of its own, the union's row left out where it is a sum."""
+        key = present.tobytes()
+        if key not in self._single:
+            weights = self._weigh(present).weights[: self._n_cut]
+            self._single[key] = csr_array(weights)
+            while sum(table.data.nbytes for table in self._single.values()) > CACHE_BYTES // 4:
+                self._single.popitem(last=False)
+        return self._single[key]

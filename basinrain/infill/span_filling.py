@@ -1,0 +1,394 @@
+"""Days, or a storm, of which a gauge misses more than half: their totals estimated and given to the missing steps."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from enum import IntEnum
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.infill.donor_sums import DonorSums
+from basinrain.infill.spans import EXACT, KnownTotals
+
+__all__ = ["Block", "Fate", "Intervals", "SpanCells", "fill_spans", "intervals_of", "span_sums"]
+
+Bools = npt.NDArray[np.bool_]
+Floats = npt.NDArray[np.float64]
+Ints = npt.NDArray[np.int64]
+
+NearOrder = Callable[[Ints, int], Ints]
+"""``near(gauges, k)`` gives the gauge that is the k-th nearest to each of some gauges, itself the first as a rule."""
+
+
+class Fate(IntEnum):
+    """What became of a span of which a gauge misses more than half."""
+
+    LONG = 0
+    UNKNOWN = 1
+    UNKNOWN_CUT = 2
+    RAISED = 3
+    SPREAD = 4
+    EVEN_NONE_COMPLETE = 5
+    EVEN_NONE_WET = 6
+
+
+@dataclass(frozen=True, eq=False)
+class Block:
+    """Some steps of a record that hold whole spans, and what there is at them.
+
+    Parameters
+    ----------
+    depth : array of float, shape (n_steps, n_gauges)
+        mm, NaN where there is none.
+    measured, own, fillable, long, absent : array of bool, shape (n_steps, n_gauges)
+        Where a value was measured at the step, is the gauge's own, is to be infilled, is missing for too long to be
+        infilled, and where the gauge is not in service.
+    """
+
+    depth: Floats
+    measured: Bools
+    own: Bools
+    fillable: Bools
+    long: Bools
+    absent: Bools
+
+
+@dataclass(frozen=True, eq=False)
+class Intervals:
+    """The spans of a block: those of most gauges, and parts of them for gauges that come or go within one.
+
+    Parameters
+    ----------
+    first, stop : array of int, shape (n_rows,)
+        The steps of each, ``stop`` not included; the first ``n_spans`` follow each other without a break.
+    n_spans : int
+        How many of them are spans of the block; the others are parts.
+    row, gauge, span : array of int, shape (n_parts,)
+        A part, the gauge that has it, and the span that it is part of.
+    """
+
+    first: Ints
+    stop: Ints
+    n_spans: int
+    row: Ints
+    gauge: Ints
+    span: Ints
+
+
+@dataclass(frozen=True, eq=False)
+class SpanCells:
+    """Spans of which a gauge misses more than half, and what became of each.
+
+    Parameters
+    ----------
+    gauge, first, stop : array of int, shape (n,)
+        The gauge's column, and the steps of the record.
+    month : array of int, shape (n,)
+        The month that holds the middle, 0 without times.
+    total : array of float, shape (n,)
+        The span's total as it was estimated, mm; NaN where there is none.
+    fate : array of uint8, shape (n,)
+        A :class:`Fate` for each.
+    donating : array of bool, shape (n, n_gauges)
+        Which gauges know their total over the span.
+    """
+
+    gauge: Ints
+    first: Ints
+    stop: Ints
+    month: Ints
+    total: Floats
+    fate: npt.NDArray[np.uint8]
+    donating: Bools
+
+
+def intervals_of(first: Ints, absent: Bools) -> Intervals:
+    """Return the spans of a block, those of gauges that come into service or leave it within one cut there.
+
+    Parameters
+    ----------
+    first : array of int, shape (n_spans,)
+        The first step of each, rising from 0; each ends where the next begins.
+    absent : array of bool, shape (n_steps, n_gauges)
+        Where gauges are not in service.
+
+    Examples
+    --------
+    The second gauge comes into service in the middle of the second span.
+
+    >>> absent = np.array([[False, True]] * 3 + [[False, False]])
+    >>> found = intervals_of(np.array([0, 2]), absent)
+    >>> found.first, found.stop, found.n_spans
+    (array([0, 2, 2, 3]), array([2, 4, 3, 4]), 2)
+    >>> found.row, found.gauge, found.span
+    (array([2, 3]), array([1, 1]), array([1, 1]))
+    """
+    stop = np.append(first[1:], len(absent))
+    none = np.empty(0, dtype=np.int64)
+    if not absent.any():
+        return Intervals(first, stop, len(first), none, none, none)
+    before, gauge = np.nonzero(absent[1:] != absent[:-1])
+    at = before + 1
+    span = np.searchsorted(first, at, "right") - 1
+    within = first[span] != at
+    order = np.lexsort((at[within], gauge[within], span[within]))
+    at, gauge, span = at[within][order], gauge[within][order], span[within][order]
+    parts: dict[tuple[int, int], int] = {}
+    rows: list[tuple[int, int, int]] = []
+    for k, (t, g, s) in enumerate(zip(at.tolist(), gauge.tolist(), span.tolist(), strict=True)):
+        if k == 0 or (gauge[k - 1], span[k - 1]) != (g, s):
+            begin = int(first[s])
+        last = k + 1 == len(at) or (gauge[k + 1], span[k + 1]) != (g, s)
+        for bounds in ((begin, t), (t, int(stop[s])))[: 2 if last else 1]:
+            rows.append((parts.setdefault(bounds, len(first) + len(parts)), g, s))
+        begin = t
+    bounds_of = np.array(list(parts), dtype=np.int64).reshape(-1, 2)
+    row_of, gauge_of, span_of = np.array(rows, dtype=np.int64).reshape(-1, 3).T
+    return Intervals(
+        np.concatenate([first, bounds_of[:, 0]]),
+        np.concatenate([stop, bounds_of[:, 1]]),
+        len(first),
+        row_of,
+        gauge_of,
+        span_of,
+    )
+
+
+def span_sums(values: Floats | Bools, intervals: Intervals, *, every: bool = False) -> npt.NDArray[np.generic]:
+    """Return the sum of values over every interval, or whether they are true at every step of it.
+
+    Parameters
+    ----------
+    values : array of float or bool, shape (n_steps, n_gauges)
+    intervals
+        The intervals.
+    every
+        Whether to ask for every step instead of summing; of true and false the sum is how many are true.
+
+    Returns
+    -------
+    array, shape (n_rows, n_gauges)
+
+    Examples
+    --------
+    >>> intervals = intervals_of(np.array([0, 2]), np.zeros((4, 1), dtype=bool))
+    >>> span_sums(np.array([[1.0], [2.0], [3.0], [4.0]]), intervals).ravel()
+    array([3., 7.])
+    >>> span_sums(np.array([[True], [False], [True], [True]]), intervals, every=True).ravel()
+    array([False,  True])
+    """
+    operation: np.ufunc = np.logical_and if every else np.add
+    counted = values.dtype == np.bool_ and not every
+    kind = {"dtype": np.int32} if counted else {}
+    first, stop = intervals.first[: intervals.n_spans], intervals.stop[: intervals.n_spans]
+    length = np.unique(stop - first)
+    if len(length) == 1:
+        # As long as each other: an axis of its own is far quicker to sum over.
+        whole = values.reshape(len(first), int(length[0]), values.shape[1])
+        if counted and length[0] < 256:
+            whole, kind = whole.view(np.uint8), {"dtype": np.uint8}
+        of_spans = operation.reduce(whole, axis=1, **kind)
+    else:
+        of_spans = operation.reduceat(values, first, axis=0, **kind)
+    if counted:
+        of_spans = of_spans.astype(np.int32, copy=False)
+    parts = zip(intervals.first[len(first) :].tolist(), intervals.stop[len(first) :].tolist(), strict=True)
+    of_parts = [operation.reduce(values[begin:end], axis=0, **kind) for begin, end in parts]
+    return np.concatenate([of_spans, np.stack(of_parts)]) if of_parts else np.asarray(of_spans)
+
+
+def fill_spans(
+    block: Block,
+    intervals: Intervals,
+    months: Ints,
+    totals: KnownTotals,
+    sums: DonorSums,
+    *,
+    recorders: Bools,
+    near: NearOrder,
+    out: Floats,
+) -> tuple[Bools, SpanCells]:
+    """Infill what a block's gauges miss of spans that they miss more than half of.
+
+    Parameters
+    ----------
+    block
+        The block.
+    intervals, months
+        Its spans, and the month of each.
+    totals
+        Totals that reach into it.
+    sums
+        Gives the estimates.
+    recorders : array of bool, shape (n_gauges,)
+        The gauges whose values can give a pattern in time.
+    near
+        Gives the order in which they are looked at.
+    out : array of float, shape (n_steps, n_gauges)
+        Where the depths are written.
+
+    Returns
+    -------
+    by_step : array of bool, shape (n_steps, n_gauges)
+        What is left to be infilled step by step.
+    cells : SpanCells
+        Their steps are counted from the block's first.
+
+    Examples
+    --------
+    See :class:`basinrain.infill.RecordFiller`, which does this block by block.
+    """
+    n_spans, length = intervals.n_spans, intervals.stop - intervals.first
+    spans = np.repeat(np.arange(n_spans), length[:n_spans])
+    missing = span_sums(block.fillable, intervals)
+    whole = (missing > 0) & (2 * span_sums(block.own, intervals) < length[:, None])
+    # A gauge that comes or goes within a span has its parts instead, which nobody else has.
+    mine = np.zeros_like(whole)
+    mine[:n_spans] = True
+    mine[intervals.span, intervals.gauge] = False
+    mine[intervals.row, intervals.gauge] = True
+    whole &= mine
+    by_step = block.fillable & ~whole[spans]
+    for row, g in zip(intervals.row.tolist(), intervals.gauge.tolist(), strict=True):
+        steps = slice(intervals.first[row], intervals.stop[row])
+        by_step[steps, g] = block.fillable[steps, g] & ~whole[row, g]
+    row, gauge = np.nonzero(whole)
+    if not len(row):
+        return by_step, _no_cells(block)
+    depth = np.where(block.own, block.depth, 0.0)
+    own_totals = np.asarray(span_sums(depth, intervals), dtype=float)
+    complete = span_sums(block.own, intervals, every=True)
+    measured = complete if block.measured is block.own else span_sums(block.measured, intervals, every=True)
+    cut = _cut(totals, depth, intervals)
+    donating = np.asarray(complete & ~cut)
+    long = span_sums(block.long, intervals)[row, gauge] > 0 if block.long.any() else np.zeros(len(row), dtype=bool)
+    chosen = whole.copy()
+    chosen[row[long], gauge[long]] = False
+    estimated = np.full(whole.shape, np.nan)
+    sums.put(own_totals, donating, chosen, months, estimated)
+
+    total, observed = estimated[row, gauge], own_totals[row, gauge]
+    known = ~np.isnan(total)
+    raised = known & (total < observed - EXACT * np.maximum(observed, 1))
+    fate = np.full(len(row), Fate.SPREAD, dtype=np.uint8)
+    fate[~known] = np.where((complete & cut)[row].any(axis=1), Fate.UNKNOWN_CUT, Fate.UNKNOWN)[~known]
+    fate[long] = Fate.LONG
+    fate[raised] = Fate.RAISED
+
+    given = np.flatnonzero(known & ~raised)
+    rest = np.maximum(total - observed, 0.0)
+    donor = np.full(len(row), -1)
+    searched = given[(rest[given] > 0) & (missing[row[given], gauge[given]] > 1)]
+    wet = recorders & measured & (own_totals > 0)
+    cells = _Steps.of(block.fillable, intervals, row, gauge)
+    donor[searched] = _patterns(depth, wet, cells, row, gauge, searched, length[row] > missing[row, gauge], near)
+    even = searched[donor[searched] < 0]
+    any_complete = (recorders & measured)[row[even]].any(axis=1)
+    fate[even] = np.where(any_complete, Fate.EVEN_NONE_WET, Fate.EVEN_NONE_COMPLETE)
+    back = cells.among(raised)
+    by_step[back.step, gauge[back.cell]] = True
+    _share_out(depth, cells.among(known & ~raised), gauge, donor, rest, out)
+    return by_step, SpanCells(
+        gauge, intervals.first[row], intervals.stop[row], months[row], total, fate, donating[row]
+    )
+
+
+@dataclass(frozen=True, eq=False)
+class _Steps:
+    """The missing steps of spans, in order: of each, the cell (a span of a gauge) and the step."""
+
+    cell: Ints
+    step: Ints
+
+    @classmethod
+    def of(cls, fillable: Bools, intervals: Intervals, row: Ints, gauge: Ints) -> _Steps:
+        length = (intervals.stop - intervals.first)[row]
+        cell = np.repeat(np.arange(len(row)), length)
+        step = np.arange(len(cell)) + np.repeat(intervals.first[row] - (np.cumsum(length) - length), length)
+        held = fillable[step, gauge[cell]]
+        return cls(cell[held], step[held])
+
+    def among(self, cells: Bools) -> _Steps:
+        held = cells[self.cell]
+        return self if held.all() else _Steps(self.cell[held], self.step[held])
+
+    @property
+    def first(self) -> Ints:
+        """Where each cell begins."""
+        return np.flatnonzero(np.diff(self.cell, prepend=-1))
+
+
+def _patterns(
+    depth: Floats,
+    wet: Bools,
+    cells: _Steps,
+    row: Ints,
+    gauge: Ints,
+    searched: Ints,
+    partial: Bools,
+    near: NearOrder,
+) -> Ints:
+    """Return the nearest gauge that is ``wet`` over each cell's span, and at its missing steps; -1 where none is."""
+    found = np.full(len(row), -1)
+    open_ = searched[wet[row[searched]].any(axis=1)]
+    for k in range(depth.shape[1]):
+        if not len(open_):
+            break
+        candidate = near(gauge[open_], k)
+        right = wet[row[open_], candidate]
+        # Where the gauge has some steps itself, the rain must have fallen in the others.
+        doubtful = right & partial[open_]
+        if doubtful.any():
+            asked = np.zeros(len(row), dtype=bool)
+            asked[open_[doubtful]] = True
+            found[open_[doubtful]] = candidate[doubtful]
+            steps = cells.among(asked)
+            caught = np.add.reduceat(depth[steps.step, found[steps.cell]], steps.first)
+            found[open_[doubtful]] = -1
+            right[doubtful] = caught > 0
+        found[open_[right]] = candidate[right]
+        open_ = open_[~right]
+    return found[searched]
+
+
+def _share_out(depth: Floats, steps: _Steps, gauge: Ints, donor: Ints, rest: Floats, out: Floats) -> None:
+    """Give each cell's rest to its steps in the donor's pattern, evenly without one; the sum is kept."""
+    if not len(steps.cell):
+        return
+    first = steps.first
+    length = np.diff(first, append=len(steps.cell))
+    cell = steps.cell[first]
+    shares = np.where(donor[steps.cell] >= 0, depth[steps.step, np.maximum(donor[steps.cell], 0)], 1.0)
+    shares /= np.repeat(np.add.reduceat(shares, first), length)
+    parts = shares * np.repeat(rest[cell], length)
+    # Rounding goes to the last of the largest: it is wet, and large enough never to be pushed below zero.
+    largest = shares == np.repeat(np.maximum.reduceat(shares, first), length)
+    last = np.maximum.reduceat(np.where(largest, np.arange(len(shares)), -1), first)
+    parts[last] += rest[cell] - np.add.reduceat(parts, first)
+    out[steps.step, gauge[steps.cell]] = parts
+
+
+def _cut(totals: KnownTotals, depth: Floats, intervals: Intervals) -> Bools:
+    n = intervals.n_spans
+    of_spans = totals.cut(depth, intervals.first[:n], intervals.stop[:n])
+    of_parts = [
+        totals.within(first, stop).cut(depth[first:stop], np.array([0]), np.array([stop - first]))
+        for first, stop in zip(intervals.first[n:].tolist(), intervals.stop[n:].tolist(), strict=True)
+    ]
+    return np.concatenate([of_spans, *of_parts])
+
+
+def _no_cells(block: Block) -> SpanCells:
+    none = np.empty(0, dtype=np.int64)
+    return SpanCells(
+        none,
+        none,
+        none,
+        none,
+        np.empty(0),
+        np.empty(0, dtype=np.uint8),
+        np.empty((0, block.depth.shape[1]), dtype=bool),
+    )
