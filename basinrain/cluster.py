@@ -8,6 +8,7 @@ import os
 import pickle
 import platform
 import queue
+import signal
 import tempfile
 import threading
 import time
@@ -128,6 +129,11 @@ def compute_chunk(setup: SeriesSetup, digest: str, load: LoadChunk, versions: di
 def forget_engines() -> None:
     """Free what this process has prepared."""
     _engines.clear()
+
+
+def dask_setup(_: Any) -> None:  # noqa: ANN401 - Dask hands over the worker
+    """Leave Ctrl-C to the process that started this worker; Dask calls this when a worker process starts."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
 
 
 def _versions() -> dict[str, str]:
@@ -275,6 +281,7 @@ def _connected(on: str, workers: int | None) -> Iterator[Client]:
     with (
         tempfile.TemporaryDirectory(prefix="basinrain-") as scratch,
         LocalCluster(
+            **({"preload": [__name__]} if on == "processes" else {}),
             n_workers=processes,
             threads_per_worker=threads,
             processes=on == "processes",

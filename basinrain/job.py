@@ -23,7 +23,7 @@ from basinrain.infill import Completed
 from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.infill_choice import InfillChoice, choose_infill, compare
 from basinrain.infill_effect import infill_effect, infill_spread_cautions
-from basinrain.inputs import attempt, read_inputs, window_of
+from basinrain.inputs import Inputs, attempt, read_inputs, window_of
 from basinrain.job_parts import Report, choice_fact, common_fields, resolved
 from basinrain.jobfile import Job
 from basinrain.jobfile.tables import StormTable
@@ -31,6 +31,7 @@ from basinrain.notes import Note, once
 from basinrain.rainfall import RainRecord, Status
 from basinrain.results import InfillRun, ScreenRun, StormResult, StormRun
 from basinrain.series_check import series_check
+from basinrain.series_job import largest_storms
 from basinrain.storms import Storm, borrowed_times, hyetograph_shape, storm_window
 
 __all__ = ["run_infill", "run_screen", "run_storm"]
@@ -84,6 +85,9 @@ def run_storm(job: Job | str | Path, settings: Sequence[str] = (), *, progress: 
     say("weights")
     weighers = _weighers(job, network, basins)
     infill = choose_infill(job, record, network, say)
+    if job.storms is not None:
+        chosen, chosen_notes = _chosen_storms(job, given, infill, say)
+        storms, window_notes = [*storms, *chosen], (*window_notes, *chosen_notes)
     # Of the whole record, since a gap may be longer than the storm.
     long = longer_than(record, gap_mask(record), infill.options.longest_gap)
     results = []
@@ -265,8 +269,10 @@ def _moved(  # noqa: PLR0917 - each room's product, in order
 
 
 def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]]:
-    """Return the job's storms; without any the whole record is the storm, or each storm of a file of totals."""
-    tables = job.storm or tuple(StormTable(name=name) for name in (record.labels or ("whole record",)))
+    """Return the storms that the job names; where it neither names nor seeks any, the record, or each of its totals."""
+    tables = job.storm
+    if not tables and job.storms is None:
+        tables = tuple(StormTable(name=name) for name in (record.labels or ("whole record",)))
     problems = Problems()
     names = [table.name for table in tables]
     for name in sorted({name for name in names if names.count(name) > 1}):
@@ -280,6 +286,28 @@ def _storms(job: Job, record: RainRecord) -> tuple[list[Storm], tuple[Note, ...]
             notes += found[1]
     problems.raise_as(JobError)
     return storms, tuple(notes)
+
+
+def _chosen_storms(job: Job, given: Inputs, infill: InfillChoice, say: Report) -> tuple[list[Storm], tuple[Note, ...]]:
+    """Return the largest storms of the record, each with its rank and day for a name."""
+    found = largest_storms(job, given, say, comparison=infill.comparison)
+    if not found.taken:
+        raise DataError(
+            Problem(
+                item="[storms]",
+                found=f"no storm in the series of {found.basin} whose steps all have a number",
+                expected="one at least",
+                remedy="name the storms in [[storm]], or lower wet_depth",
+            )
+        )
+    pattern = "mean" if job.storms is None else job.storms.pattern
+    storms = []
+    for ranked in found.taken:
+        event = ranked.event
+        name = f"No. {ranked.rank}, {event.start.astype('datetime64[D]')}"
+        storm, _ = storm_window(given.record, name, start=event.start, end=event.end, pattern=pattern)
+        storms.append(storm)
+    return storms, found.notes
 
 
 def _storm(job: Job, table: StormTable, record: RainRecord) -> tuple[Storm, tuple[Note, ...]]:

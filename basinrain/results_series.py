@@ -74,6 +74,11 @@ versions, facts
     changes: tuple[NetworkChange, ...]
 
     @property
+    def formats(self) -> tuple[str, ...]:
+        """The kinds of files that the series are written to."""
+        return tuple(self.settings["series"]["formats"])
+
+    @property
     def series(self) -> pd.DataFrame:
         """The series at the step and in the clock asked for: one row per policy, method, basin and step."""
         return tables_series.series(self)

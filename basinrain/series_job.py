@@ -18,6 +18,7 @@ from basinrain.basins import UNION
 from basinrain.cautions import network_cautions
 from basinrain.errors import JobError, Problem, Problems, nearest_name
 from basinrain.infill import InfillOptions
+from basinrain.infill.leave_one_out import Comparison
 from basinrain.infill.spans import span_starts
 from basinrain.infill_choice import InfillChoice, choose_infill, infill_options
 from basinrain.inputs import Inputs, attempt, input_digests, read_inputs
@@ -44,10 +45,13 @@ from basinrain.series_inputs import SeriesInputs, borders_of, held_inputs
 from basinrain.series_store import SeriesStore
 from basinrain.units import depth_factor
 
-__all__ = ["run_series", "series_setup", "storms_of_series"]
+__all__ = ["WET_DAY", "largest_storms", "run_series", "series_setup", "storms_of_series"]
 
 Counted = Callable[[int, int], None]
 """Is called with the steps that are done and all steps."""
+
+WET_DAY: Final = 1.0
+"""mm; a day with at least this depth is wet, as in the indices of climate change (ETCCDI; from memory)."""
 
 _DURATIONS: Final = ("5min", "10min", "15min", "30min", "1h", "2h", "3h", "6h", "12h", "1d", "2d", "3d", "5d", "10d")
 """Of the greatest depths, as far as the record's step divides them, where the job names none."""
@@ -177,7 +181,7 @@ def run_series(
 
 
 def series_setup(
-    job: Job, given: Inputs, say: Report
+    job: Job, given: Inputs, say: Report, *, comparison: Comparison | None = None
 ) -> tuple[SeriesSetup, InfillChoice | None, dict[str, str], tuple[Note, ...]]:
     """Return what a job's series rest on, the infill that was chosen, facts for the report, and what is to be remarked.
 
@@ -187,7 +191,7 @@ def series_setup(
     options = infill_options(job)
     notes: tuple[Note, ...] = ()
     if set(job.series.gaps) != {REWEIGHT}:
-        infill = choose_infill(job, given.record, given.network, say, whole_record=True)
+        infill = choose_infill(job, given.record, given.network, say, comparison=comparison, whole_record=True)
         options, notes = infill.options, infill.notes
     options, scale_notes = _scale_of_series(options)
     say("weights")
@@ -234,10 +238,34 @@ def storms_of_series(job: Job, inputs: SeriesInputs, setup: SeriesSetup, store: 
         method=method,
         count=table.count,
         dry_gap=None if table.dry_gap == ESTIMATED_GAP else _length(table.dry_gap),
-        wet_depth=WET_DEPTH if table.wet_depth is None else table.wet_depth * depth_factor(job.job.depth_unit),
+        wet_depth=_wet_depth(inputs) if table.wet_depth is None else table.wet_depth * depth_factor(job.job.depth_unit),
         rank="total" if table.rank == TOTAL else _length(table.rank),
         recession=table.antecedent.recession,
     )
+
+
+def largest_storms(job: Job, given: Inputs, say: Report, *, comparison: Comparison | None = None) -> FoundStorms:
+    """Return the storms that ``[storms]`` chooses from a job's record, by its first policy and averaging method.
+
+    ``comparison`` is that of the infill methods, where it has been made.
+    """
+    inputs = held_inputs(given, infill_options(job).longest_gap)
+    _checked(job, inputs)
+    setup, *_ = series_setup(job, given, say, comparison=comparison)
+    first = replace(setup, gaps=setup.gaps[:1], methods=dict(list(setup.methods.items())[:1]))
+    borders = borders_of(inputs, first, job.series.memory)
+    with SeriesStore.open(
+        None, key="", n_steps=len(inputs.starts), n_basins=len(setup.basins), series=first.series, borders=borders
+    ) as store:
+        say("looking for storms")
+        run_chunks(first, inputs.chunks(borders), store)
+        return storms_of_series(job, inputs, first, store)
+
+
+def _wet_depth(inputs: SeriesInputs) -> float:
+    """Return the depth in mm from which a step is wet where the job names none; a day needs more than an hour."""
+    daily = (inputs.ends[0] - inputs.starts[0]) >= np.timedelta64(1, "D")
+    return WET_DAY if daily else WET_DEPTH
 
 
 def _checked(job: Job, inputs: SeriesInputs) -> tuple[Regrouping, tuple[np.timedelta64, ...]]:

@@ -1,7 +1,7 @@
 """The real networks of tests/data, each with results that were computed independently of this package.
 
-Rules, sources and licences stand in the README of every folder. Gauges' x, y and the polygon are used as they are, in their
-own plane: nothing is projected.
+Rules, sources and licences stand in the README of every folder. Gauges' x, y and the polygon are used as they are, in
+their own plane: nothing is projected.
 """
 
 from __future__ import annotations

@@ -27,24 +27,29 @@ class Kept:
 
     @property
     def n_steps(self) -> int:
+        """Steps of every series."""
         return len(next(iter(self.arrays.values()))[0])
 
     @property
     def series(self) -> tuple[tuple[str, str], ...]:
+        """Policy and method of every series."""
         return tuple(self.arrays)
 
     def depth(self, gaps: str, method: str, /) -> npt.NDArray[Any]:
+        """Return the depths, mm."""
         return self.arrays[gaps, method][0]
 
     def observed_share(self, gaps: str, method: str, /) -> npt.NDArray[Any]:
+        """Return the shares."""
         return self.arrays[gaps, method][1]
 
     def flags(self, gaps: str, method: str, /) -> npt.NDArray[Any]:
+        """Return the marks."""
         return self.arrays[gaps, method][2]
 
 
 def hours(n: int, first: str = "2031-05-04T00:00:00") -> tuple[npt.NDArray[np.datetime64], npt.NDArray[np.datetime64]]:
-    """Starts and ends of some hours."""
+    """Return starts and ends of some hours."""
     ends = np.datetime64(first, "s") + 3600 * np.arange(1, n + 1)
     return ends - np.timedelta64(3600, "s"), ends
 
@@ -64,10 +69,10 @@ def drawn(n_steps: int, n_basins: int, series: tuple[tuple[str, str], ...] = SER
     return Kept(arrays)
 
 
-def small_content(n_steps: int = 50, source: SeriesSource | None = None, **changed: Any) -> SeriesContent:
-    """Some hours of four basins by two methods, in mm, in a clock two hours ahead of UTC."""
+def small_content(n_steps: int = 50, source: SeriesSource | None = None, **changed: object) -> SeriesContent:
+    """Return some hours of four basins by two methods, in mm, in a clock two hours ahead of UTC."""
     starts, ends = hours(n_steps)
-    given: dict[str, Any] = {
+    given: dict[str, object] = {
         "source": source or drawn(n_steps, len(BASINS)),
         "starts": starts,
         "ends": ends,
@@ -81,4 +86,4 @@ def small_content(n_steps: int = 50, source: SeriesSource | None = None, **chang
         "plane": "an equal-area plane about the basins",
         "version": "0.1.0",
     }
-    return SeriesContent(**{**given, **changed})
+    return SeriesContent(**{**given, **changed})  # type: ignore[arg-type]

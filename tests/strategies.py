@@ -93,7 +93,7 @@ def cases(draw: st.DrawFn, basins: st.SearchStrategy[Basins] | None = None, *, a
 
 @st.composite
 def broken_records(draw: st.DrawFn, n_gauges: int, *, at_most: int = 14) -> npt.NDArray[np.float64]:
-    """Draw depths (n_steps, n_gauges) of up to 20 mm, NaN where a gauge does not report; often as at the step before."""
+    """Draw depths (n_steps, n_gauges) of up to 20 mm, NaN where a gauge does not report; few sets of gauges that do."""
     n_steps = draw(st.integers(0, at_most))
     one_set = st.lists(st.booleans(), min_size=n_gauges, max_size=n_gauges)
     different = draw(st.lists(one_set, min_size=1, max_size=6))

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from functools import cached_property
+from itertools import pairwise
 from typing import Final
 
 import numpy as np
@@ -31,23 +31,33 @@ class Removal:
         By basin, then gauge.
     share : array of float, shape (n_entries,)
         The share of the basin that the gauge takes over.
+    basins, gauges : array of int, shape (n_basins,) and (n_gauges,)
+        Those that have entries, rising.
+    place : array of int, shape (n_entries,)
+        Where each entry stands in the full table of them.
     lost : bool
         Whether shares fail to sum to the part, so that the removal must not be used.
     """
 
-    __slots__ = ("__dict__", "basin", "gauge", "lost", "receivers", "share")
+    __slots__ = ("_table", "basin", "basins", "gauge", "gauges", "lost", "place", "receivers", "share")
 
-    def __init__(self, basin: Ints, gauge: Ints, share: Floats, *, lost: bool) -> None:
-        self.basin, self.gauge, self.share, self.lost = basin, gauge, share, lost
+    def __init__(
+        self, entries: tuple[Ints, Ints, Floats], sides: tuple[Ints, Ints], place: Ints, *, lost: bool
+    ) -> None:
+        self.basin, self.gauge, self.share = entries
+        self.basins, self.gauges = sides
+        self.place, self.lost = place, lost
         self.receivers: Ints = np.empty(0, dtype=np.int64)
+        self._table: Floats | None = None
 
-    @cached_property
-    def table(self) -> tuple[Ints, Ints, Floats]:
-        """The basins and gauges that have entries, and the shares as a full table of them."""
-        basins, gauges = np.unique(self.basin), np.unique(self.gauge)
-        table = np.zeros((len(basins), len(gauges)))
-        table[np.searchsorted(basins, self.basin), np.searchsorted(gauges, self.gauge)] = self.share
-        return basins, gauges, table
+    @property
+    def table(self) -> Floats:
+        """The shares as a full table, shape (n_basins, n_gauges)."""
+        if self._table is None:
+            flat = np.zeros(len(self.basins) * len(self.gauges))
+            flat[self.place] = self.share
+            self._table = flat.reshape(len(self.basins), len(self.gauges))
+        return self._table
 
 
 class Removals:
@@ -56,8 +66,8 @@ class Removals:
     The part of the basins to which the gauges of a set S, in any order, are the nearest ones is shared among the gauges
     that come next. With missing depths set to 0, basin means are the tessellation's weights times the depths, plus for
     every such S whose gauges are all missing its shares times the depths: at a point whose nearest k gauges are missing
-    the first k of these sums meet zeros, and the next one the gauge that counts.
-    (Okabe, Boots, Sugihara and Chiu, 2000, *Spatial Tessellations*, 2nd ed., Wiley, section 3.2, on ordered tessellations of higher order; from memory.)
+    the first k of these sums meet zeros, and the next one the gauge that counts. On such tessellations of higher order:
+    Okabe, Boots, Sugihara and Chiu (2000), *Spatial Tessellations*, 2nd ed., Wiley, section 3.2 (from memory).
 
     Parameters
     ----------
@@ -157,12 +167,21 @@ class Removals:
         row, gauge = np.divmod(entries, n_gauges)
         row, at_basin = np.divmod(row, n_basins)
         share: Floats = area / ground.areas[at_basin]
+        basins, basin_place, basin_first = _sides(row * n_basins + at_basin, row, n_basins, len(keys))
+        gauges, gauge_place, gauge_first = _sides(row * n_gauges + gauge, row, n_gauges, len(keys))
+        place = basin_place * np.diff(gauge_first)[row] + gauge_place
         first = np.searchsorted(row, np.arange(len(keys) + 1)).tolist()
+        basin_ends, gauge_ends = basin_first.tolist(), gauge_first.tolist()
         made = [
-            Removal(at_basin[a:b], gauge[a:b], share[a:b], lost=lost_one)
-            for a, b, lost_one in zip(first, first[1:], lost.tolist(), strict=False)
+            Removal(
+                (at_basin[a:b], gauge[a:b], share[a:b]),
+                (basins[basin_ends[k] : basin_ends[k + 1]], gauges[gauge_ends[k] : gauge_ends[k + 1]]),
+                place[a:b],
+                lost=bool(lost[k]),
+            )
+            for k, (a, b) in enumerate(pairwise(first))
         ]
-        self.nbytes += 24 * len(entries) + 600 * len(keys)
+        self.nbytes += 64 * len(entries) + 1000 * len(keys)
         return made, shared, (of, in_basin)
 
     def _hand_on(self, keys: Sequence[Key], shared: SharedRings, of: tuple[Ints, Ints]) -> None:
@@ -172,7 +191,7 @@ class Removals:
         removal, basin, gauge = removal[order], basin[order], shared.gauge[order]
         rings = take_rings(shared.rings, order)
         begins = np.flatnonzero((np.diff(removal, prepend=-1) != 0) | (np.diff(gauge, prepend=-1) != 0))
-        ends = np.append(begins[1:], len(removal))
+        ends = np.append(begins[1:], len(removal))[: len(begins)]
         for a, b, k, g in zip(
             begins.tolist(), ends.tolist(), removal[begins].tolist(), gauge[begins].tolist(), strict=True
         ):
@@ -184,6 +203,14 @@ class Removals:
         for key, a, b in zip(keys, first, first[1:], strict=False):
             self._made[key].receivers = receivers[a:b]
         self.nbytes += 16 * len(rings.x) + 8 * len(basin) + 400 * len(begins)
+
+
+def _sides(code: Ints, row: Ints, n: int, n_rows: int) -> tuple[Ints, Ints, Ints]:
+    """Return the different things, below ``n``, of every row; where each entry's stands in its row; where rows begin."""
+    different, which = np.unique(code, return_inverse=True)
+    rows, things = np.divmod(different, n)
+    first = np.searchsorted(rows, np.arange(n_rows + 1))
+    return things, which - first[row], first
 
 
 def _lots(weights: Sequence[int]) -> Iterator[slice]:

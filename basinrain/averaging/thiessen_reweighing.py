@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import OrderedDict
-from collections.abc import Iterator, Sequence
+from threading import RLock
 from typing import Final, NamedTuple
 
 import numpy as np
@@ -15,8 +15,9 @@ from basinrain.averaging.registry import Reweigher
 from basinrain.averaging.reporting import ReportingRuns
 from basinrain.averaging.reweighing import reweigh_by_sets
 from basinrain.averaging.thiessen import prepare_thiessen
-from basinrain.averaging.thiessen_epochs import Epoch, epochs_of
-from basinrain.averaging.thiessen_removal import Removal, Removals
+from basinrain.averaging.thiessen_corrections import Corrections, Spans
+from basinrain.averaging.thiessen_epochs import Epoch, Holes, epochs_of
+from basinrain.averaging.thiessen_removal import Removals
 from basinrain.averaging.thiessen_tessellation import Tessellation, edges_among, whole_tessellation
 from basinrain.basins import Basins
 from basinrain.errors import DataError, MethodError
@@ -27,7 +28,6 @@ __all__ = ["ThiessenReweigher", "prepare_thiessen_reweigher"]
 Ints = npt.NDArray[np.int64]
 Floats = npt.NDArray[np.float64]
 Bools = npt.NDArray[np.bool_]
-Weights = csr_array | Floats
 
 CACHE_BYTES: Final = 128 << 20
 """What is kept between calls is cut down to this."""
@@ -38,34 +38,11 @@ _RUNS: Final = 8192
 _BUFFER: Final = 1 << 20
 """Depths and means of a chunk of steps together, 8 MiB, so that they stay near the processor."""
 
+_LONG: Final = 24
+"""Over at least so many steps a silence is set at once; shorter ones are gathered."""
+
 _DENSE: Final = 0.2
 """A table with at least this share of its places taken is multiplied whole."""
-
-_LONG: Final = 24
-"""Corrections over fewer steps than this are gathered; longer ones are products of their own."""
-
-_BITS_AT_ONCE: Final = 1 << 24
-
-
-class _Spans(NamedTuple):
-    """Stretches of steps, ``stop`` not included, each of something given by its place in a list."""
-
-    of: Ints
-    first: Ints
-    stop: Ints
-
-    def within(self, first: int, stop: int) -> _Spans:
-        """Return what lies in some steps, counted from the first of these."""
-        at = np.flatnonzero((self.first < stop) & (self.stop > first))
-        begins = np.maximum(self.first[at], first) - first
-        return _Spans(self.of[at], begins, np.minimum(self.stop[at], stop) - first)
-
-    def choose(self, which: Bools) -> _Spans:
-        return _Spans(self.of[which], self.first[which], self.stop[which])
-
-    @property
-    def lengths(self) -> Ints:
-        return self.stop - self.first
 
 
 class _Kept(NamedTuple):
@@ -107,7 +84,7 @@ def prepare_thiessen_reweigher(network: GaugeNetwork, basins: Basins) -> Reweigh
         whole = whole_tessellation(network, basins, present, len(basins) - union_is_sum(basins))
     except (DataError, MethodError):
         # Gauges that cannot stand together may never report together.
-        return reweigh_by_sets(prepare_thiessen(network, basins))
+        return reweigh_by_sets(prepare_thiessen(network, basins), len(basins))
     return ThiessenReweigher(network, basins, whole)
 
 
@@ -136,7 +113,9 @@ class ThiessenReweigher:
         self._weigh = prepare_thiessen(network, basins)
         nobody = np.zeros(len(network), dtype=bool)
         self._kept: OrderedDict[bytes, _Kept] = OrderedDict({nobody.tobytes(): _Kept(whole, Removals(whole))})
-        self._single: OrderedDict[bytes, Weights] = OrderedDict()
+        self._own: dict[bytes, csr_array] = {}
+        self._own_bytes = 0
+        self._lock = RLock()
 
     def __call__(self, depth: Floats, runs: ReportingRuns, /) -> Floats:
         """Return basin means in mm, shape (n_steps, n_basins); NaN where no gauge reports.
@@ -155,10 +134,8 @@ class ThiessenReweigher:
         """
         result = np.empty((runs.n_steps, len(self._basins)))
         for epoch in epochs_of(runs.present, self._edges_without):
-            kept = self._without(epoch.absent)
             for first in range(epoch.first, epoch.stop, _RUNS):
-                self._average(depth, runs, epoch, kept, slice(first, min(first + _RUNS, epoch.stop)), result)
-            self._cut_down()
+                self._average(depth, runs, epoch, slice(first, min(first + _RUNS, epoch.stop)), result)
         nobody = np.flatnonzero(~runs.present.any(axis=1))
         for run in nobody.tolist():
             result[runs.first[run] : runs.first[run] + runs.lengths[run]] = np.nan
@@ -167,10 +144,8 @@ class ThiessenReweigher:
     def _edges_without(self, absent: Bools) -> Ints:
         if not absent.any():
             return self._whole.edges
-        key = absent.tobytes()
-        if key in self._kept:
-            return self._kept[key].tessellation.edges
-        return edges_among(self._whole.ground, ~absent)
+        kept = self._kept.get(absent.tobytes())
+        return kept.tessellation.edges if kept else edges_among(self._whole.ground, ~absent)
 
     def _without(self, absent: Bools) -> _Kept:
         key = absent.tobytes()
@@ -196,41 +171,65 @@ class ThiessenReweigher:
     def _nbytes(self) -> int:
         return sum(kept.tessellation.nbytes + kept.removals.nbytes for kept in self._kept.values())
 
-    def _average(
-        self, depth: Floats, runs: ReportingRuns, epoch: Epoch, kept: _Kept, some: slice, result: Floats
-    ) -> None:
+    def _average(self, depth: Floats, runs: ReportingRuns, epoch: Epoch, some: slice, result: Floats) -> None:
         """Fill in the means of some runs of an epoch."""
         present = runs.present[some]
-        borders = np.append(runs.first[some], runs.n_steps if some.stop == len(runs) else runs.first[some.stop])
-        silent = _spans_of(~present.T, borders)
-        missing = ~present & ~epoch.absent & present.any(axis=1)[:, None]
-        plan = _Plan(self, kept, epoch, missing, some, borders)
-        tables = [_table_for(kept.tessellation.weights)]
-        own = [self._weights_of(present[run]) for run in plan.own]
-        tables += own
+        end = runs.n_steps if some.stop == len(runs) else int(runs.first[some.stop])
+        borders = np.append(runs.first[some], end)
+        silent = Spans.where(~present.T, borders)
+        missing = ~present & ~epoch.absent & present.any(axis=1, keepdims=True)
+        with self._lock:
+            kept = self._without(epoch.absent)
+            corrections = Corrections(kept.tessellation, kept.removals, missing, _holes_in(epoch, some), borders)
+            self._cut_down()
+        own = Spans(corrections.own, borders[corrections.own], borders[corrections.own + 1])
+        weights = _quicker(kept.tessellation.weights)
         n_gauges = depth.shape[1]
         chunk = max(_BUFFER // (n_gauges + self._n_cut), 16)
         store = np.empty(chunk * n_gauges)
         shares = self._whole.ground.areas / self._whole.ground.areas.sum()
-        for first in range(int(borders[0]), int(borders[-1]), chunk):
-            stop = min(first + chunk, int(borders[-1]))
+        for first in range(int(borders[0]), end, chunk):
+            stop = min(first + chunk, end)
             known = store[: n_gauges * (stop - first)].reshape(n_gauges, stop - first)
             known[...] = depth[first:stop].T
             _silence(known, silent.within(first, stop))
-            means = np.asarray(tables[0] @ known)
-            plan.correct(means, known, first, stop)
-            for k, begin, end in zip(*(a.tolist() for a in plan.own_spans.within(first, stop)), strict=True):
-                means[:, begin:end] = own[k] @ known[:, begin:end]
+            means = np.ascontiguousarray(weights @ known)
+            corrections.add_to(means, known, first, stop)
+            for run, a, b in zip(*(ints.tolist() for ints in own.within(first, stop)), strict=True):
+                means[:, a:b] = self._weights_of(present[run]) @ known[:, a:b]
             result[first:stop, : self._n_cut] = means.T
             if len(self._basins) > self._n_cut:
                 result[first:stop, -1] = shares @ means
 
-    def _weights_of(self, present: Bools) -> Weights:
+    def _weights_of(self, present: Bools) -> csr_array:
         """Return the weights of a tessellation of its own, the union's row left out where it is a sum."""
         key = present.tobytes()
-        if key not in self._single:
-            weights = self._weigh(present).weights[: self._n_cut]
-            self._single[key] = csr_array(weights)
-            while sum(table.data.nbytes for table in self._single.values()) > CACHE_BYTES // 4:
-                self._single.popitem(last=False)
-        return self._single[key]
+        with self._lock:
+            if key not in self._own:
+                weights = csr_array(self._weigh(present).weights[: self._n_cut])
+                self._own[key] = weights
+                self._own_bytes += 2 * weights.data.nbytes
+                while self._own_bytes > CACHE_BYTES // 4 and len(self._own) > 1:
+                    self._own_bytes -= 2 * self._own.pop(next(iter(self._own))).data.nbytes
+            return self._own[key]
+
+
+def _holes_in(epoch: Epoch, some: slice) -> Holes:
+    """Return the holes of some runs, counted from the first of these."""
+    first, stop = np.searchsorted(epoch.holes.run, [some.start - epoch.first, some.stop - epoch.first])
+    return Holes(epoch.holes.run[first:stop] + epoch.first - some.start, epoch.holes.gauges[first:stop])
+
+
+def _quicker(weights: csr_array) -> csr_array | Floats:
+    """Return weights in the form that is multiplied sooner."""
+    whole = weights.nnz >= _DENSE * weights.shape[0] * weights.shape[1]
+    return np.asarray(weights.toarray()) if whole else weights
+
+
+def _silence(known: Floats, silent: Spans) -> None:
+    """Set depths, shape (n_gauges, n_steps), to 0 where their gauge does not report."""
+    long = silent.lengths >= _LONG
+    for gauge, first, stop in zip(*(ints.tolist() for ints in silent.chosen(long)), strict=True):
+        known[gauge, first:stop] = 0.0
+    short = silent.chosen(~long)
+    known.reshape(-1)[np.repeat(short.of * known.shape[1], short.lengths) + short.steps()] = 0.0

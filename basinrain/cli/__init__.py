@@ -103,6 +103,18 @@ def infill(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes wh
 
 
 @main.command()
+@_of_job
+@_clear_errors
+def series(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
+    """The whole record of JOB, basin by basin and step by step, while gauges come and go."""
+    from basinrain.cli.running import run_command
+    from basinrain.cli.series import show
+    from basinrain.series_job import run_series
+
+    run_command("series", run_series, show, job, counted=True, **options)
+
+
+@main.command()
 @click.argument("folder", type=click.Path(path_type=Path))
 @_clear_errors
 def start(folder: Path) -> None:

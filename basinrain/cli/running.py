@@ -5,7 +5,7 @@ from __future__ import annotations
 import sys
 from collections.abc import Callable, Iterable
 from pathlib import Path
-from typing import TypeVar
+from typing import Any, TypeVar
 
 import click
 from rich.console import Console
@@ -14,6 +14,7 @@ from basinrain.cli.progress import Progress
 from basinrain.jobfile import read_job
 from basinrain.notes import Note
 from basinrain.results import Run
+from basinrain.results_series import SeriesRun
 from basinrain.writing import check_folder, record_text, write_run
 from basinrain.writing.folder import RECORD
 
@@ -50,20 +51,33 @@ def run_command(
     job_file, output, settings, as_json, quiet
         As the command line has them.
     counted
-        Whether ``compute`` takes ``counted``, which it tells of the steps that are done.
+        Whether ``compute`` takes ``counted``, which it tells of the steps that are done, and ``work``, the folder for
+        what is finished of an interrupted run.
     """
     job = read_job(job_file, settings)
     folder = (output if output is not None else job.path(job.job.output)) / command
     check_folder(folder, [job_file, *job.inputs])
+    further: dict[str, Any] = {}
     with Progress(quiet=quiet) as progress:
-        run = compute(job, progress=progress, **({"counted": progress.steps} if counted else {}))
-    write_run(run, folder)
+        if counted:
+            further = {"counted": progress.steps, "work": folder.with_name(f".{command}.unfinished")}
+        try:
+            run = compute(job, progress=progress, **further)
+            progress("writing")
+            write_run(run, folder)
+        except KeyboardInterrupt:
+            if not counted:
+                raise
+            click.echo("Stopped; the parts that are finished are kept: run it again to go on from them.", err=True)
+            sys.exit(130)
     if as_json:
         files = sorted(path.name for path in folder.iterdir() if path.name != RECORD)
         sys.stdout.write(record_text(run, files))
     elif not quiet:
         show(run)
         show_end(folder)
+    if isinstance(run, SeriesRun):
+        run.store.remove()
 
 
 def console() -> Console:

@@ -14,7 +14,16 @@ from basinrain.reading.blocks import Block
 from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.spacing import check_spacing
 
-__all__ = ["check_length", "join_blocks"]
+__all__ = [
+    "absent_steps",
+    "check_length",
+    "check_phase",
+    "interval_end",
+    "join_blocks",
+    "join_cells",
+    "positions",
+    "unit_of",
+]
 
 _LISTED: Final = 3
 _MOST_STEPS: Final = 20_000_000
@@ -57,27 +66,30 @@ def join_blocks(
     array([ 1., nan,  2.])
     """
     problems = Problems()
-    steps = [_positions(block.ends, interval) for block in blocks]
+    steps = [positions(block.ends, interval) for block in blocks]
     # A file of another interval would be off the axis line by line, or full of gaps.
     fitting = [block for block in blocks if check_spacing(block, interval, problems)]
-    _check_phase(fitting, interval, problems)
+    check_phase(fitting, interval, problems)
     problems.raise_as(ReadError)
     times = np.unique(np.concatenate(steps))
     gauges = tuple(dict.fromkeys(gauge for block in blocks for gauge in block.gauges))
     column = {gauge: g for g, gauge in enumerate(gauges)}
-    depth, status, present = _joined(blocks, steps, times, column, interval=interval, problems=problems)
+    if len(blocks) == 1:
+        depth, status, present = blocks[0].depth, blocks[0].status, blocks[0].present
+    else:
+        depth, status, present = join_cells(blocks, steps, times, column, interval=interval, problems=problems)
     if gaps == "refuse":
         _check_gaps(times, present, gauges, blocks=blocks, interval=interval, problems=problems)
     n = check_length(int(times[0]), int(times[-1]), interval, problems)
     problems.raise_as(ReadError)
     if n > len(times):
-        place = (times - times[0]) // _unit(interval)
+        place = (times - times[0]) // unit_of(interval)
         sparse_depth, sparse_status = depth, status
         depth, status = np.full((n, len(gauges)), np.nan), np.full((n, len(gauges)), Status.MISSING, dtype=np.uint8)
         depth[place], status[place] = sparse_depth, sparse_status
-    axis = times[0] + np.arange(n) * _unit(interval)
-    ends = _end(axis, interval)
-    starts = _end(axis - _unit(interval), interval)
+    axis = times[0] + np.arange(n) * unit_of(interval)
+    ends = interval_end(axis, interval)
+    starts = interval_end(axis - unit_of(interval), interval)
     spans = {key: span for block in blocks for key, span in block.spans.items()}
     totals = _accumulations(depth, status, starts, ends, gauges, spans=spans, problems=problems, file=_files(blocks))
     problems.raise_as(ReadError)
@@ -112,9 +124,9 @@ def check_length(first: int, last: int, interval: Interval, problems: Problems) 
     >>> check_length(3600, 7200, Interval("1h", 3600), problems), len(problems)
     (2, 0)
     """
-    n = (last - first) // _unit(interval) + 1
+    n = (last - first) // unit_of(interval) + 1
     if n > _MOST_STEPS:
-        bounds = _end(np.array([first, last]), interval)
+        bounds = interval_end(np.array([first, last]), interval)
         problems.add(
             item="time axis",
             found=f"{n} steps of {interval.label} from {bounds[0]} to {bounds[1]}",
@@ -124,16 +136,18 @@ def check_length(first: int, last: int, interval: Interval, problems: Problems) 
     return n
 
 
-def _unit(interval: Interval) -> int:
+def unit_of(interval: Interval) -> int:
+    """Return how far apart the positions of two steps are: seconds, or 1 for months."""
     return interval.seconds or 1
 
 
-def _positions(ends: npt.NDArray[np.datetime64], interval: Interval) -> npt.NDArray[np.int64]:
+def positions(ends: npt.NDArray[np.datetime64], interval: Interval) -> npt.NDArray[np.int64]:
     """Return seconds since 1970, or months since then for monthly values."""
     return ends.astype("datetime64[M]" if interval.seconds is None else "datetime64[s]").astype(np.int64)
 
 
-def _end(position: npt.NDArray[np.int64], interval: Interval) -> npt.NDArray[np.datetime64]:
+def interval_end(position: npt.NDArray[np.int64], interval: Interval) -> npt.NDArray[np.datetime64]:
+    """Return the time of positions; the reverse of :func:`positions`."""
     kind = "datetime64[M]" if interval.seconds is None else "datetime64[s]"
     return np.asarray(position).astype(kind).astype("datetime64[s]")
 
@@ -142,7 +156,8 @@ def _files(blocks: Sequence[Block]) -> str:
     return blocks[0].file if len(blocks) == 1 else ""
 
 
-def _check_phase(blocks: Sequence[Block], interval: Interval, problems: Problems) -> None:
+def check_phase(blocks: Sequence[Block], interval: Interval, problems: Problems) -> None:
+    """Report rows whose interval ends off the axis on which most of them do."""
     if interval.seconds is None or not blocks:
         return  # months begin where the calendar says
     phases = [block.ends.astype(np.int64) % interval.seconds for block in blocks]
@@ -164,7 +179,7 @@ def _check_phase(blocks: Sequence[Block], interval: Interval, problems: Problems
             )
 
 
-def _joined(
+def join_cells(
     blocks: Sequence[Block],
     steps: Sequence[npt.NDArray[np.int64]],
     times: npt.NDArray[np.int64],
@@ -172,11 +187,22 @@ def _joined(
     *,
     interval: Interval,
     problems: Problems,
-) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8], npt.NDArray[np.bool_] | None]:
-    """Return depth, status and presence on the union of the times; presence None where every cell is there."""
-    if len(blocks) == 1:
-        only = blocks[0]
-        return only.depth, only.status, only.present
+) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8], npt.NDArray[np.bool_]]:
+    """Return depth, status and presence of all files on one axis; a gauge and time in two files is a problem.
+
+    Parameters
+    ----------
+    blocks, steps
+        The files, and the positions of their rows: seconds since 1970, or months.
+    times
+        The positions of the axis.
+    column
+        The column of each gauge.
+    interval
+        The step, for messages.
+    problems
+        Takes the problems, each with file and line.
+    """
     shape = (len(times), len(column))
     depth, status = np.full(shape, np.nan), np.full(shape, Status.MISSING, dtype=np.uint8)
     present = np.zeros(shape, dtype=bool)
@@ -215,7 +241,7 @@ def _check_gaps(
     interval: Interval,
     problems: Problems,
 ) -> None:
-    unit = _unit(interval)
+    unit = unit_of(interval)
     remedy = "complete the file, or declare gaps = 'missing'"
     before = np.flatnonzero(np.diff(times) > unit)
     if present is not None:
@@ -233,7 +259,7 @@ def _check_gaps(
         lines = dict(zip(times.tolist(), blocks[0].lines.tolist(), strict=True)) if len(blocks) == 1 else {}
         problems.add(
             item="time axis",
-            found=_absent(np.array(absent), count, interval),
+            found=absent_steps(np.array(absent), count, interval),
             expected="every step once",
             remedy=remedy,
             file=_files(blocks),
@@ -248,7 +274,7 @@ def _check_gaps(
         where = times[lacking[:, g]]
         problems.add(
             item=f"gauge {gauges[g]}",
-            found=_absent(where, len(where), interval),
+            found=absent_steps(where, len(where), interval),
             expected="every step once between its first and last",
             remedy=remedy,
             file=_files(blocks),
@@ -256,8 +282,9 @@ def _check_gaps(
         )
 
 
-def _absent(positions: npt.NDArray[np.int64], count: int, interval: Interval) -> str:
-    listed = ", ".join(str(end) for end in _end(positions[:_LISTED], interval))
+def absent_steps(positions: npt.NDArray[np.int64], count: int, interval: Interval) -> str:
+    """Return in words which steps have no row: their ``count``, and the first few of their ``positions``."""
+    listed = ", ".join(str(end) for end in interval_end(positions[:_LISTED], interval))
     more = ", ..." if count > min(_LISTED, len(positions)) else ""
     return f"no {'row' if count == 1 else 'rows'} for {count} of the {interval.label} steps, ending at {listed}{more}"
 

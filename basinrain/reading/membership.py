@@ -5,12 +5,21 @@ from __future__ import annotations
 import re
 from collections.abc import Collection, Mapping, Sequence
 from dataclasses import replace
+from typing import Protocol
 
 from basinrain.errors import DataError, Problems, nearest_name
 from basinrain.gauges import GaugeNetwork
 from basinrain.rainfall import RainRecord
 
-__all__ = ["check_membership", "without_gauges"]
+__all__ = ["HasGauges", "check_membership", "without_gauges"]
+
+
+class HasGauges(Protocol):
+    """A source's record, or what stands for one."""
+
+    @property
+    def gauges(self) -> tuple[str, ...]:
+        """The gauges' ids."""
 
 
 def without_gauges(records: Mapping[int, RainRecord], exclude: Collection[str]) -> dict[int, RainRecord]:
@@ -45,7 +54,7 @@ def without_gauges(records: Mapping[int, RainRecord], exclude: Collection[str]) 
     return left
 
 
-def check_membership(records: Sequence[RainRecord], network: GaugeNetwork) -> None:
+def check_membership(records: Sequence[HasGauges], network: GaugeNetwork) -> None:
     """Refuse gauges with rain values and no position, and gauges of the network without rain values.
 
     Parameters

@@ -164,7 +164,9 @@ def open_netcdf(
         )
     if times is not None:
         zone = times.zone
-        check_order(times.ends, times.shown, np.arange(1, len(times.ends) + 1), item=times.item, problems=problems)
+        check_order(
+            times.ends, times.shown.__getitem__, np.arange(1, len(times.ends) + 1), item=times.item, problems=problems
+        )
     if chosen is None or times is None or len(problems) > before:
         return None, zone
     return NetcdfRows(path, chosen.gauges, times.ends, chosen.depth, chosen.time_first), zone

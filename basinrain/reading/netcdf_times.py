@@ -89,7 +89,7 @@ def _decoded(
     problems: Problems,
 ) -> tuple[npt.NDArray[np.datetime64], int | None] | None:
     """Return times in their own clock, NaT where blank, and how many seconds it is ahead of UTC where that is said."""
-    import cftime
+    import netCDF4
 
     units = str(getattr(described, "units", ""))
     calendar = str(getattr(described, "calendar", "standard")).lower()
@@ -105,7 +105,7 @@ def _decoded(
     numbers = np.ma.masked_invalid(values[:])
     blank = np.ma.getmaskarray(numbers)
     try:
-        dates = cftime.num2date(
+        dates = netCDF4.num2date(
             numbers.filled(0), units, calendar, only_use_cftime_datetimes=False, only_use_python_datetimes=True
         )
     except (ValueError, OverflowError, TypeError) as error:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable
 
 import numpy as np
 import numpy.typing as npt
@@ -14,7 +14,7 @@ __all__ = ["check_order"]
 
 def check_order(
     ends: npt.NDArray[np.datetime64],
-    shown: Sequence[str],
+    shown: Callable[[int], str],
     lines: npt.NDArray[np.int64],
     *,
     item: str,
@@ -27,7 +27,7 @@ def check_order(
     ends : array of datetime64[s], shape (n_rows,)
         Interval ends; NaT, which is faulty in another way, is passed over.
     shown
-        The times as the file has them.
+        Gives a row's time as the file has it.
     lines
         Where they stand, from 1.
     item
@@ -39,7 +39,8 @@ def check_order(
     --------
     >>> problems = Problems()
     >>> ends = np.array(["2031-05-05", "2031-05-04", "2031-05-05"], dtype="datetime64[s]")
-    >>> check_order(ends, ["5 May", "4 May", "5.5."], np.array([2, 3, 4]), item="column day", problems=problems)
+    >>> days = ["5 May", "4 May", "5.5."]
+    >>> check_order(ends, days.__getitem__, np.array([2, 3, 4]), item="column day", problems=problems)
     >>> from basinrain.errors import ReadError
     >>> problems.raise_as(ReadError)
     Traceback (most recent call last):
@@ -59,14 +60,14 @@ the rows by time
     for k in np.flatnonzero(twice | back):
         row = int(known[k])
         if twice[k]:
-            found, expected = f"'{shown[row]}', as in line {lines[known[first[place[k]]]]}", "each time once"
+            found, expected = f"'{shown(row)}', as in line {lines[known[first[place[k]]]]}", "each time once"
         else:
-            found, expected = f"'{shown[row]}' after a later time", "times in order"
+            found, expected = f"'{shown(row)}' after a later time", "times in order"
         problems.add(
             item=item,
             found=found,
             expected=expected,
             remedy="remove one of the rows" if twice[k] else "sort the rows by time",
             line=int(lines[row]),
-            time=shown[row],
+            time=shown(row),
         )

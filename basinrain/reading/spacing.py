@@ -16,7 +16,7 @@ from basinrain.rainfall import Status
 from basinrain.reading.blocks import Block
 from basinrain.reading.intervals import DAY, Interval, interval_of
 
-__all__ = ["check_spacing"]
+__all__ = ["check_gauge_spacing", "check_spacing"]
 
 _SHARE: Final = 0.9
 """A spacing of so many rows is the file's rule."""
@@ -82,18 +82,25 @@ def check_spacing(block: Block, interval: Interval, problems: Problems) -> bool:
     for g, gauge in enumerate(block.gauges):
         rows = np.flatnonzero(block.present[:, g])
         spacings = np.diff(times[rows])[~accumulated[rows[1:], g]]
-        wider = _wider(spacings, interval, fewest=_FEWEST_OF_GAUGE)
-        if wider:
-            fits = False
-            problems.add(
-                item=f"gauge {gauge}",
-                found=f"rows {wider} apart",
-                expected=f"{interval.label}, as declared",
-                remedy="correct interval, or put the gauge into a source of its own",
-                file=block.file,
-                gauge=gauge,
-            )
+        fits &= check_gauge_spacing(gauge, spacings, interval, block.file, problems)
     return fits
+
+
+def check_gauge_spacing(
+    gauge: str, spacings: npt.NDArray[np.int64], interval: Interval, file: str, problems: Problems
+) -> bool:
+    """Report a gauge whose rows in a long file stand farther apart than the interval; return whether they fit."""
+    wider = _wider(spacings, interval, fewest=_FEWEST_OF_GAUGE)
+    if wider:
+        problems.add(
+            item=f"gauge {gauge}",
+            found=f"rows {wider} apart",
+            expected=f"{interval.label}, as declared",
+            remedy="correct interval, or put the gauge into a source of its own",
+            file=file,
+            gauge=gauge,
+        )
+    return not wider
 
 
 def _wider(spacings: npt.NDArray[np.int64], interval: Interval, *, fewest: int) -> str:

@@ -4,25 +4,23 @@ from __future__ import annotations
 
 from collections.abc import Collection, Mapping, Sequence
 from dataclasses import replace
-from typing import Final
 
 import numpy as np
-import numpy.typing as npt
 
 from basinrain.errors import DataError, JobError, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.notes import Note
-from basinrain.rainfall import KnownTotal, RainRecord, Status
+from basinrain.rainfall import RainRecord, Status
 from basinrain.reading.clocks import clock_name, clock_seconds
-from basinrain.reading.grid import ABSENT, Grid, OnGrid, Source, off_bounds, place, relation
-from basinrain.reading.intervals import DAY, Interval, interval_of, parse_interval
+from basinrain.reading.common_grid import common_grid, reading_hours
+from basinrain.reading.grid import ABSENT, Grid, Source, place, relation
+from basinrain.reading.intervals import DAY, Interval, parse_interval
 from basinrain.reading.membership import check_membership, without_gauges
+from basinrain.reading.merging import merge_sources, take_out_of_service, unused_values
 from basinrain.reading.storm_totals import merge_storm_totals, storm_bounds
 from basinrain.spreading import spread_totals
 
 __all__ = ["bring_to_step"]
-
-_NOTHING: Final = np.array([ABSENT, Status.MISSING], dtype=np.uint8)
 
 
 def bring_to_step(
@@ -99,17 +97,16 @@ def bring_to_step(
         return merge_storm_totals(used, network), tuple(remarks)
     zone = _one_clock(timed, labels)
     sources = _sources(used, labels, zone, storm_times)
-    step = parse_interval(common, item="[step] common") if common is not None else _finest(sources)
-    grid = Grid(step, _phase(sources, step))
-    _check_steps(sources, grid)
+    grid = common_grid(sources, common)
+    step = grid.interval
     placed = [place(source, grid) for source in sources]
     first = min(part.first for part in placed)
     n = max(part.first + len(part.depth) for part in placed) - first
     bounds = grid.bounds(first + np.arange(n + 1))
-    depth, status = _merged(sources, placed, network.ids, first, bounds)
+    depth, status = merge_sources(sources, placed, network.ids, first, bounds)
     status[status == ABSENT] = Status.MISSING
     totals = [total for part in placed for total in part.totals]
-    notes = _take_out_of_service(network, depth, status, bounds, totals)
+    notes = unused_values(network, take_out_of_service(network, depth, status, bounds, totals))
     day_phase, mixed = _day_phase(sources, step, grid)
     recorders = frozenset(
         gauge for source in sources if relation(source.interval, step) == "finer" for gauge in source.gauges
@@ -193,144 +190,13 @@ def _sources(
     return sources
 
 
-def _finest(sources: Sequence[Source]) -> Interval:
-    steps = [source.interval for source in sources if source.interval is not None]
-    return min(steps, key=lambda step: step.seconds or np.inf)
-
-
-def _phase(sources: Sequence[Source], step: Interval) -> int:
-    length = step.seconds or DAY
-    same = [source for source in sources if source.interval == step]
-    if same:
-        return int(same[0].ends[0].astype(np.int64)) % length
-    hours = {hour for source in sources for hour in _reading_hours(source)}
-    return hours.pop() if length % DAY == 0 and len(hours) == 1 else 0
-
-
-def _reading_hours(source: Source) -> set[int]:
-    if source.interval is None or not source.interval.whole_days:
-        return set()
-    return {int(source.ends[0].astype(np.int64)) % DAY}
-
-
-def _check_steps(sources: Sequence[Source], grid: Grid) -> None:
-    problems = Problems()
-    step = grid.interval
-    for source in sources:
-        if source.interval is not None and not relation(source.interval, step):
-            problems.add(
-                item=source.name,
-                found=f"steps of {source.interval.label} beside the common step {step.label}",
-                expected="a common step that divides it or is a multiple of it",
-                remedy=f"set [step] common to one that fits every source, such as '{_fitting(sources, 0)}'",
-            )
-            continue
-        off = off_bounds(source, grid)
-        if len(off):
-            row = off[0]
-            problems.add(
-                item=source.name,
-                found=f"an interval from {source.starts[row]} to {source.ends[row]}",
-                expected=f"intervals that begin and end on bounds of the common step {step.label}, such as "
-                f"{grid.bounds(grid.numbers(source.ends[row : row + 1])[0])[0]}",
-                remedy=f"set [step] common = '{_fitting(sources, grid.phase)}', or correct the source's times",
-                time=str(source.ends[row]),
-            )
-    problems.raise_as(DataError)
-
-
-def _fitting(sources: Sequence[Source], phase: int) -> str:
-    """Return the longest step, of a day at most, whose bounds all sources share."""
-    seconds = DAY
-    for source in sources:
-        seconds = int(np.gcd(seconds, (source.interval.seconds if source.interval else None) or DAY))
-        for times in (source.starts, source.ends):
-            seconds = int(np.gcd.reduce(np.r_[seconds, np.abs(times.astype(np.int64) - phase)]))
-    return interval_of(seconds).label if seconds % 60 == 0 else "1min"
-
-
-def _merged(
-    sources: Sequence[Source],
-    placed: Sequence[OnGrid],
-    gauges: tuple[str, ...],
-    first: int,
-    bounds: npt.NDArray[np.datetime64],
-) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8]]:
-    """Return depth and status of all sources on one grid; two values of a gauge at one time are problems."""
-    shape = (len(bounds) - 1, len(gauges))
-    depth, status = np.full(shape, np.nan), np.full(shape, ABSENT, dtype=np.uint8)
-    owner = np.zeros(shape, dtype=np.int16)
-    column = {gauge: g for g, gauge in enumerate(gauges)}
-    problems = Problems()
-    for number, (source, part) in enumerate(zip(sources, placed, strict=True)):
-        columns = np.array([column[gauge] for gauge in source.gauges])
-        at = np.ix_(np.arange(len(part.depth)) + part.first - first, columns)
-        free = np.isin(status[at], _NOTHING)
-        both = ~free & ~np.isin(part.status, _NOTHING)
-        for g in np.flatnonzero(both.any(axis=0)):
-            rows = np.flatnonzero(both[:, g])
-            row = int(rows[0]) + part.first - first
-            other = sources[owner[row, columns[g]]].name
-            problems.add(
-                item=f"gauge {source.gauges[g]}",
-                found=f"values in {other} and in {source.name} for {len(rows)} of the same steps, the first ending at "
-                f"{bounds[row + 1]}",
-                expected="one source for a gauge and time",
-                remedy="remove it from one of them",
-                gauge=source.gauges[g],
-                time=str(bounds[row + 1]),
-            )
-        take = free & (part.status != ABSENT) & ~((part.status == Status.MISSING) & (status[at] != ABSENT))
-        depth[at] = np.where(take, part.depth, depth[at])
-        status[at] = np.where(take, part.status, status[at])
-        owner[at] = np.where(take, number, owner[at])
-    problems.raise_as(DataError)
-    return depth, status
-
-
-def _take_out_of_service(
-    network: GaugeNetwork,
-    depth: npt.NDArray[np.float64],
-    status: npt.NDArray[np.uint8],
-    bounds: npt.NDArray[np.datetime64],
-    totals: list[KnownTotal],
-) -> list[Note]:
-    """Mark, in place, what lies outside the gauges' time of service; drop totals that reach into it."""
-    out = ~network.in_service(bounds[:-1], bounds[1:])
-    if not out.any():
-        return []
-    notes = []
-    unused = out & ~np.isin(status, [int(Status.MISSING), int(Status.NOT_INSTALLED)])
-    for g in np.flatnonzero(unused.any(axis=0)):
-        rows = np.flatnonzero(unused[:, g])
-        notes.append(
-            Note(
-                code="value-out-of-service",
-                text=f"Gauge {network.ids[g]} has values for {len(rows)} steps outside its time of service, the first "
-                f"ending at {bounds[rows[0] + 1]}; they are not used.",
-                gauge=network.ids[g],
-            )
-        )
-    kept = []
-    for total in totals:
-        place_of = network.position(total.gauge)
-        rows_of = slice(*np.searchsorted(bounds, np.array([total.start, total.end])))
-        if out[rows_of, place_of].any():
-            status[rows_of, place_of] = Status.MISSING
-        else:
-            kept.append(total)
-    totals[:] = kept
-    depth[out], status[out] = np.nan, Status.NOT_INSTALLED
-    return notes
-
-
 def _day_phase(sources: Sequence[Source], step: Interval, grid: Grid) -> tuple[int, list[Note]]:
     """Return the second at which the rainfall day begins, and a note where the daily gauges do not agree on it."""
     if step.whole_days:
         return grid.phase % DAY, []
     gauges: dict[int, dict[str, None]] = {}
     for source in sources:
-        for hour in _reading_hours(source):
+        for hour in reading_hours(source):
             gauges.setdefault(hour, {}).update(dict.fromkeys(source.gauges))
     if len(gauges) < 2:
         return next(iter(gauges), 0), []

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 import numpy as np
+import numpy.typing as npt
 
 from basinrain.errors import Problems
 from basinrain.reading.blocks import TIME_NAMES, Block
@@ -14,7 +15,7 @@ from basinrain.reading.depths import DepthCells, DepthRules
 from basinrain.reading.order import check_order
 from basinrain.reading.stamps import StampRules, read_stamps
 
-__all__ = ["read_wide"]
+__all__ = ["read_wide", "wide_cells"]
 
 
 def read_wide(
@@ -80,10 +81,21 @@ def read_wide(
             line=int(table.lines[fault.row]),
             time=cells[fault.row],
         )
-    check_order(ends, cells, table.lines, item=f"column {time}", problems=problems)
-    depth = np.empty((len(cells), len(gauges)))
-    status = np.empty((len(cells), len(gauges)), dtype=np.uint8)
-    reader = DepthCells(table, depths)
+    check_order(ends, cells.__getitem__, table.lines, item=f"column {time}", problems=problems)
+    depth, status = wide_cells(table, gauges, time, depths, problems)
+    if faults:
+        return None, zone
+    block = Block(table.file, gauges, ends, table.lines, depth, status, None, {})
+    return block, zone
+
+
+def wide_cells(
+    table: DelimitedTable, gauges: Sequence[str], time: str, rules: DepthRules, problems: Problems
+) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8]]:
+    """Return depth and status of the gauges' columns, their faulty cells reported by gauge, line and time."""
+    depth = np.empty((len(table.lines), len(gauges)))
+    status = np.empty((len(table.lines), len(gauges)), dtype=np.uint8)
+    reader = DepthCells(table, rules)
     for place, gauge in enumerate(gauges):
         depth[:, place], status[:, place], wrong = reader.column(gauge)
         for row, cell in wrong:
@@ -95,9 +107,6 @@ def read_wide(
                 line=int(table.lines[row]),
                 column=gauge,
                 gauge=gauge,
-                time=cells[row],
+                time=str(table.frame[time].iloc[row]),
             )
-    if faults:
-        return None, zone
-    block = Block(table.file, gauges, ends, table.lines, depth, status, None, {})
-    return block, zone
+    return depth, status

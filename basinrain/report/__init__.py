@@ -3,5 +3,6 @@
 from basinrain.report.comparison_page import render_comparison
 from basinrain.report.page import render_report
 from basinrain.report.screening_page import render_screening
+from basinrain.report.series_page import render_series
 
-__all__ = ["render_comparison", "render_report", "render_screening"]
+__all__ = ["render_comparison", "render_report", "render_screening", "render_series"]

@@ -46,7 +46,7 @@ class Event:
         mm, the greatest depth of one step among those that have a number, and the end of that step, the first where
         several are equal.
     missing_inside
-        Steps of the event without a number.
+        Steps of the event without a number. Had they been dry, it might have been several storms.
     missing_beside
         Steps without a number outside, but nearer to the event than the dry gap: rain in them would be of this event.
     cut
@@ -214,7 +214,8 @@ class RankedEvent:
     depth
         mm, the total or the greatest depth in the duration; NaN where the event is incomplete.
     present
-        mm, the same of what is there: equal to ``depth`` where the event is complete, else the least that it can be.
+        mm, the same of what is there: equal to ``depth`` where the event is complete. Else more may have fallen, and
+        with missing steps inside it may have been several storms.
     start, end
         The window ``(start, end]`` in which ``present`` fell, the event itself where it is compared by its total.
     """

@@ -148,7 +148,8 @@ def greatest_depths(
     DataError
         The series is none.
     JobError
-        Durations that are no whole number of steps, all of them together, or none; steps that do not begin with the day.
+        No durations, or ones that are no whole number of steps, all of them together; steps that do not begin with the
+        day.
     MethodError
         Steps differ in length.
 

@@ -12,7 +12,7 @@ import numpy.typing as npt
 from basinrain.rainfall import RainRecord, Status
 from basinrain.series.engine import SeriesEngine, SeriesSetup
 from basinrain.series.flags import Flag
-from basinrain.series.regrouping import SeriesSource
+from basinrain.series.series_source import SeriesSource
 
 __all__ = ["LeftOut", "LongTerm", "gauges_to_leave_out", "left_out", "long_term"]
 

@@ -168,7 +168,8 @@ record whose clock is known; give the timezone of the [[rainfall]], or leave thi
         )
     own = int(lengths[0])
     begin, end = starts.astype(np.int64) + shift, ends.astype(np.int64) + shift
-    origin = _origin(int(begin[0]), seconds, day_phase + shift if day_phase or own >= DAY else 0)
+    phase = int(begin[0]) if own % DAY == 0 else day_phase + shift if day_phase else 0
+    origin = _origin(int(begin[0]), seconds, phase)
     return _grouped(begin - origin, end - origin, origin, seconds=seconds, own=own, zone=written)
 
 

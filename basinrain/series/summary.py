@@ -12,7 +12,7 @@ import numpy.typing as npt
 from basinrain.series.greatest_depths import Greatest, GreatestDepths, greatest_depths
 from basinrain.series.long_term import LongTerm, long_term
 from basinrain.series.period_totals import MeanAnnual, PeriodTotals, mean_annual, period_totals
-from basinrain.series.regrouping import SeriesSource
+from basinrain.series.series_source import SeriesSource
 
 __all__ = ["LARGEST", "SeriesSummary", "summarise"]
 

@@ -7,6 +7,7 @@ import math
 from typing import TYPE_CHECKING, Any
 
 from basinrain.results import CAUTION, InfillRun, Run, ScreenRun, StormRun
+from basinrain.results_series import SeriesRun
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -48,11 +49,21 @@ def run_tables(run: Run) -> dict[str, pd.DataFrame]:
             "infill_effect": run.infill_effect,
             "series_check": run.series_check,
         }
+    elif isinstance(run, SeriesRun):
+        own = {
+            "series_means": run.series_means,
+            "left_out_means": run.left_out_means,
+            "network_changes": run.network_changes,
+            "greatest_depths": run.greatest_depths,
+            "storms_found": run.storms_found,
+        }
     return {**own, "findings": run.findings, "edits": run.edit_table}
 
 
 def long_tables(run: Run) -> dict[str, pd.DataFrame]:
     """Return the tables that go to files only: of a long record they would make the JSON too large to read."""
+    if isinstance(run, SeriesRun):
+        return {"period_totals": run.period_totals}
     if not isinstance(run, InfillRun):
         return {}
     return {

@@ -7,10 +7,14 @@ from pathlib import Path
 from typing import cast
 
 from basinrain.ground import LOCAL
-from basinrain.report import render_comparison, render_report, render_screening
-from basinrain.results import InfillRun, Run, ScreenRun, StormRun
+from basinrain.report import render_comparison, render_report, render_screening, render_series
+from basinrain.results import CAUTION, InfillRun, Run, ScreenRun, StormRun
+from basinrain.results_series import SeriesRun
 from basinrain.writing.folder import RECORD, whole_folder
 from basinrain.writing.record import long_tables, record_text, run_tables
+from basinrain.writing.series_content import SeriesContent
+from basinrain.writing.series_files import write_series_files
+from basinrain.writing.series_points import points_inside
 
 __all__ = ["write_run"]
 
@@ -41,6 +45,8 @@ def write_run(run: Run, folder: str | Path) -> Path:
             frame.to_csv(built / f"{name}.csv", index=False, encoding="utf-8", lineterminator="\n")
         if isinstance(run, StormRun):
             (built / "thiessen.geojson").write_text(thiessen_text(run), encoding="utf-8")
+        if isinstance(run, SeriesRun):
+            write_series_files(built, series_content(run), formats=run.formats)
         (built / "report.html").write_text(_report(run), encoding="utf-8")
         files = sorted(path.name for path in built.iterdir())
         (built / RECORD).write_text(record_text(run, files), encoding="utf-8")
@@ -50,9 +56,31 @@ def write_run(run: Run, folder: str | Path) -> Path:
 def _report(run: Run) -> str:
     if isinstance(run, ScreenRun):
         return render_screening(run)
+    if isinstance(run, SeriesRun):
+        return render_series(run)
     if isinstance(run, InfillRun):
         return render_comparison(run)
     return render_report(cast("StormRun", run))
+
+
+def series_content(run: SeriesRun) -> SeriesContent:
+    """Return a run's series at the step and in the clock asked for, with what files say beside the numbers."""
+    grouping = run.grouping
+    return SeriesContent(
+        source=grouping.source(run.store),
+        starts=grouping.starts,
+        ends=grouping.ends,
+        zone=grouping.zone,
+        basins=run.basins.ids,
+        areas=run.basins.areas,
+        points=points_inside(run.basins),
+        depth_unit=run.depth_unit,
+        area_unit=run.area_unit,
+        job=run.name,
+        caution=CAUTION,
+        plane=run.plane.name,
+        version=run.versions.get("basinrain", ""),
+    )
 
 
 def thiessen_text(run: StormRun) -> str:

@@ -25,6 +25,7 @@ class Even:
         self.asked: list[str] = []
 
     def __call__(self, present: npt.NDArray[np.bool_]) -> WeightTable:
+        """Return the table and remember who was asked for."""
         ids = "".join(np.array(["A", "B", "C"])[present])
         self.asked.append(ids)
         if ids == "C":

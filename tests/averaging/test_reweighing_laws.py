@@ -150,18 +150,19 @@ def test_what_stands_at_a_gauge_that_does_not_report_does_not_count(name: str, g
 @pytest.mark.parametrize(
     ("name", "expected"),
     [
-        ("arithmetic", [[20.0, 35.0], [20.0, 40.0], [20.0, np.nan], [np.nan, 40.0], [np.nan, np.nan]]),
-        ("thiessen", [[20.0, 35.0], [20.0, 40.0], [20.0, 20.0], [40.0, 40.0], [np.nan, np.nan]]),
+        ("arithmetic", [[20.0, 45.0], [20.0, 60.0], [20.0, np.nan], [np.nan, 60.0], [np.nan, np.nan]]),
+        ("thiessen", [[20.0, 45.0], [20.0, 50.0], [20.0, 20.0], [60.0, 60.0], [np.nan, np.nan]]),
     ],
 )
-def test_two_squares_by_hand(name: str, expected: list[list[float]]) -> None:
-    """A stands in the west square, B and C in the east one with half of it each: (30 + 40) / 2, then C alone, A alone.
+def test_three_gauges_in_a_row_by_hand(name: str, expected: list[list[float]]) -> None:
+    """A in the west; B and C in the east with half of it each: (30 + 60) / 2 = 45.
 
-    Where only C reports it has both squares; by the arithmetic mean the west has no number then.
+    Without B the border of A and C lies at 15: a quarter of the east is A's, 20 / 4 + 60 x 3/4 = 50. A gauge alone has
+    both basins; by the arithmetic mean a basin without a gauge of its own has no number.
     """
-    network = gauges_at((5, 5), (15, 2.5), (15, 7.5))
-    basins = basins_of(west=shapely.box(0, 0, 10, 10), east=shapely.box(10, 0, 20, 10))
+    network = gauges_at((5, 5), (15, 5), (25, 5))
+    basins = basins_of(west=shapely.box(0, 0, 10, 10), east=shapely.box(10, 0, 30, 10))
     nan = np.nan
-    depth = np.array([[20.0, 30.0, 40.0], [20.0, nan, 40.0], [20.0, nan, nan], [nan, nan, 40.0], [nan, nan, nan]])
+    depth = np.array([[20.0, 30.0, 60.0], [20.0, nan, 60.0], [20.0, nan, nan], [nan, nan, 60.0], [nan, nan, nan]])
     found = METHODS[name].reweigher(network, basins)(depth, ReportingRuns.of(~np.isnan(depth)))
     np.testing.assert_allclose(found, expected, rtol=1e-12)

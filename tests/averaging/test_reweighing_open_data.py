@@ -1,7 +1,7 @@
 """Real records whose gauges come and go, beside basin means that were computed independently of this package.
 
-The reference rebuilds its weights from the gauges that report at every step; its Thiessen and inverse-distance weights are
-those of a raster of whole cells.
+The reference rebuilds its weights from the gauges that report at every step; its Thiessen and inverse-distance weights
+are those of a raster of whole cells.
 """
 
 from __future__ import annotations
@@ -27,7 +27,7 @@ def options_of(method: str, data: Reference) -> dict[str, Any]:
     [("arithmetic", "arithmetic_inside", 1e-3), ("thiessen", "thiessen_grid", 0.1), ("idw", "idw2_grid", 0.1)],
 )
 def test_every_step_is_the_reference_s(name: str, method: str, column: str, tolerance: float) -> None:
-    """All steps are the reference's to the tolerance in mm (its figures have four decimals, or three), none left out."""
+    """All steps are the reference's to the tolerance in mm, none left out; its figures have three or four decimals."""
     data = Reference(name)
     depth = data.depth
     reweigh = METHODS[method].reweigher(data.network, data.basins, options_of(method, data))
@@ -49,7 +49,6 @@ def test_every_step_is_that_of_its_own_weights(name: str, method: str) -> None:
         options = {"grid": choose_grid(data.network, data.basins, **options)}
     weigh = METHODS[method](data.network, data.basins, options)
     means = METHODS[method].reweigher(data.network, data.basins, options)(depth, ReportingRuns.of(reporting))
-    # Hours of a short step repeat: one table serves the steps of equal gauges that follow each other.
     weights = weigh(reporting[0]).weights
     for t, present in enumerate(reporting):
         if t and (present != reporting[t - 1]).any():

@@ -97,9 +97,7 @@ def test_marks_of_what_values_rest_on() -> None:
 
 def test_ratios_to_normals_by_hand() -> None:
     """A's half has a normal of 500 mm, B's of 1,500: while B is out, A and C give the ratio, the basin the depth."""
-    network = GaugeNetwork(
-        ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=[[500.0], [1500.0], [1000.0]]
-    )
+    network = GaugeNetwork(ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=[[500.0], [1500.0], [1000.0]])
     record = daily(network, [[5, 15, 10], [5, N, 20], [N, N, N]])
     setup = setup_of(network, SQUARE, gaps=(REWEIGHT,), ratios=True)
     part = SeriesEngine(setup).compute(record)[REWEIGHT, "thiessen"]

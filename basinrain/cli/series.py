@@ -1,0 +1,81 @@
+"""``basinrain series``: the whole record per basin and step, its means, storms and warnings."""
+
+from __future__ import annotations
+
+import numpy as np
+from rich.table import Table
+
+from basinrain.cli.running import console, show_warnings
+from basinrain.report.words import depth_decimals, number_text
+from basinrain.results_series import SeriesRun
+from basinrain.tables import time_text
+from basinrain.units import depth_factor
+
+__all__ = ["show"]
+
+_ROWS = 16
+"""More rows than this are printed for the union, or the last basin, alone; the files have all."""
+
+
+def show(run: SeriesRun) -> None:
+    """Print the means by policy and method, the largest storms and the warnings."""
+    page = console()
+    digits, mm = depth_decimals(run.depth_unit), depth_factor(run.depth_unit)
+    zone = run.record.zone
+    page.print(
+        f"{len(run.starts):,} steps of {run.record.step}, {time_text(run.starts[0], zone)} to "
+        f"{time_text(run.ends[-1], zone)}: mean annual depth in {run.depth_unit}"
+    )
+    table = Table(show_edge=False, pad_edge=False)
+    for heading in ("basin", "method", "gaps"):
+        table.add_column(heading, no_wrap=True)
+    for heading in ("of years", "years", "of steps", "differs %", "observed %", "missing"):
+        table.add_column(heading, justify="right")
+    shown = set(run.basins.ids[-1:] if len(run.series_means) > _ROWS else run.basins.ids)
+    for row in run.series_means.itertuples():
+        if row.basin in shown:
+            table.add_row(
+                row.basin,
+                row.method,
+                row.gaps,
+                number_text(row.mean_annual, digits),
+                str(row.years),
+                number_text(row.mean_annual_of_steps, digits),
+                number_text(row.difference_percent, 1),
+                number_text(100 * row.observed_share, 0),
+                f"{row.steps_missing:,}",
+            )
+    page.print(table)
+    if len(shown) < len(run.basins):
+        page.print(f"{len(run.basins) - len(shown)} more basins stand in series_means.csv")
+    page.print()
+    _show_storms(run, digits, mm)
+    show_warnings(page, run.warnings)
+
+
+def _show_storms(run: SeriesRun, digits: int, mm: float) -> None:
+    page, found = console(), run.storms
+    if not found.taken:
+        return
+    gap = found.dry_gap / np.timedelta64(1, "h")
+    page.print(
+        f"Largest storms of {found.basin} by {found.ranking.by} ({found.method}, {found.gaps}; dry gap {gap:g} h)"
+    )
+    table = Table(show_edge=False, pad_edge=False)
+    for heading in ("", "start", "end"):
+        table.add_column(heading, no_wrap=True)
+    for heading in (f"depth {run.depth_unit}", "greatest step", "5 days before", "30 days before"):
+        table.add_column(heading, justify="right")
+    for k, ranked in enumerate(found.taken):
+        before = [np.nan] * 3 if found.before is None else (found.before.depth[k] / mm).tolist()
+        table.add_row(
+            str(ranked.rank),
+            time_text(ranked.event.start, run.record.zone),
+            time_text(ranked.event.end, run.record.zone),
+            number_text(ranked.event.total / mm, digits),
+            number_text(ranked.event.peak / mm, digits),
+            number_text(before[0], digits),
+            number_text(before[2], digits),
+        )
+    page.print(table)
+    page.print()

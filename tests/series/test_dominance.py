@@ -1,0 +1,48 @@
+"""Large depths that hang on one gauge."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from series.test_long_term import daily, strip
+
+from basinrain.rainfall import RainRecord
+from basinrain.series.dominance import Dominance, dominances
+from basinrain.series.engine import SeriesSetup
+from basinrain.series.policies import INFILL, REWEIGHT
+
+N = np.nan
+RECORD = daily([[3, 9, 6], [30, N, N], [6, N, 3]], ("A", "B", "C"))
+
+
+def looked_at(setup: SeriesSetup, steps: dict[tuple[str, str], list[list[int]]], **given: float) -> list[Dominance]:
+    def load(step: int) -> tuple[RainRecord, None, int]:
+        return RECORD.window(step, step + 1), None, 0
+
+    return list(dominances(setup, {series: np.array(rows) for series, rows in steps.items()}, load, **given))
+
+
+def test_weights_at_the_step_itself() -> None:
+    """With all there no gauge has over half of the strip; A alone has all of it; with C, A has half, which is not over."""
+    setup = strip(gaps=(INFILL, REWEIGHT))
+    series = (REWEIGHT, "thiessen")
+    assert looked_at(setup, {series: [[0, -1]]}) == []
+    assert looked_at(setup, {series: [[2, -1]]}) == []
+    (found,) = looked_at(setup, {series: [[1, -1]]})
+    assert (found.basin, found.gauge, found.step) == ("strip", "A", 1)
+    assert found.weight == pytest.approx(1)
+
+
+def test_infilled_gauges_keep_their_weight() -> None:
+    """On the third day B is infilled from A and C, so that nobody has over half of the strip."""
+    setup = strip(gaps=(INFILL, REWEIGHT))
+    assert looked_at(setup, {(INFILL, "thiessen"): [[2, -1]]}, above=0.49) == []
+    found = looked_at(setup, {(REWEIGHT, "thiessen"): [[2, -1]]}, above=0.49)
+    assert [one.gauge for one in found] == ["A"]
+
+
+def test_only_the_basins_whose_step_it_is() -> None:
+    """The western third is A's at every step; it is told of for its own largest steps alone."""
+    setup = strip(gaps=(REWEIGHT,))
+    found = looked_at(setup, {(REWEIGHT, "thiessen"): [[-1, 0], [-1, 2]]})
+    assert [(one.basin, one.step) for one in found] == [("west", 0), ("west", 2)]
