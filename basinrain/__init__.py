@@ -19,6 +19,8 @@ if TYPE_CHECKING:
     from basinrain.rainfall import RainRecord, Status
     from basinrain.reading import bring_to_step, read_basins, read_gauges, read_rainfall, settle
     from basinrain.results import InfillRun, ScreenRun, StormRun
+    from basinrain.results_series import SeriesRun
+    from basinrain.series_job import run_series
     from basinrain.weights import WeightTable, compare
 
 __all__ = [
@@ -30,6 +32,7 @@ __all__ = [
     "Job",
     "RainRecord",
     "ScreenRun",
+    "SeriesRun",
     "Status",
     "StormRun",
     "WeightTable",
@@ -45,6 +48,7 @@ __all__ = [
     "read_rainfall",
     "run_infill",
     "run_screen",
+    "run_series",
     "run_storm",
     "settle",
     "thiessen_weights",
@@ -59,6 +63,7 @@ _ROOMS = {
     "Job": "jobfile",
     "RainRecord": "rainfall",
     "ScreenRun": "results",
+    "SeriesRun": "results_series",
     "Status": "rainfall",
     "StormRun": "results",
     "WeightTable": "weights",
@@ -74,6 +79,7 @@ _ROOMS = {
     "read_rainfall": "reading",
     "run_infill": "job",
     "run_screen": "job",
+    "run_series": "series_job",
     "run_storm": "job",
     "settle": "reading",
     "thiessen_weights": "averaging",

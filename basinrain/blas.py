@@ -5,15 +5,10 @@ from __future__ import annotations
 from collections.abc import Iterator
 from contextlib import contextmanager
 from importlib import import_module
-from threading import Lock
 
 from threadpoolctl import threadpool_limits
 
-__all__ = ["one_blas_thread"]
-
-_lock = Lock()
-_limits: list[threadpool_limits] = []
-_users = 0
+__all__ = ["hold_to_one_blas_thread", "one_blas_thread"]
 
 
 @contextmanager
@@ -24,9 +19,6 @@ def one_blas_thread() -> Iterator[None]:
     the numbers of a (720, 2000) by (2000, 1000) product differ in the last digit. With one thread it does not matter
     where a chunk is computed, on how many cores and beside how many others.
 
-    The limit is the process's. Blocks of several threads may overlap; the earlier number of threads is back when the
-    last of them ends.
-
     Examples
     --------
     >>> from threadpoolctl import threadpool_info
@@ -34,17 +26,25 @@ def one_blas_thread() -> Iterator[None]:
     ...     {pool["num_threads"] for pool in threadpool_info() if pool["user_api"] == "blas"}
     {1}
     """
-    global _users  # noqa: PLW0603 - what it counts is the process's too
-    with _lock:
-        if not _users:
-            # scipy has a linear algebra of its own, which must be there to be held.
-            import_module("scipy.linalg")
-            _limits.append(threadpool_limits(limits=1))
-        _users += 1
-    try:
+    _load()
+    with threadpool_limits(limits=1):
         yield
-    finally:
-        with _lock:
-            _users -= 1
-            if not _users:
-                _limits.pop().restore_original_limits()
+
+
+def hold_to_one_blas_thread() -> None:
+    """Hold the linear algebra of this thread to one thread, for good: for threads that compute nothing else.
+
+    Libraries that have one limit for the whole process keep it as well. Blocks of :func:`one_blas_thread` in several
+    threads would take it from each other.
+
+    Examples
+    --------
+    See :func:`basinrain.cluster.compute_chunk`, which runs in workers.
+    """
+    _load()
+    threadpool_limits(limits=1)
+
+
+def _load() -> None:
+    # scipy has a linear algebra of its own, which must be there to be held.
+    import_module("scipy.linalg")

@@ -19,7 +19,7 @@ from contextlib import ExitStack, contextmanager, suppress
 from importlib.metadata import PackageNotFoundError, version
 from typing import TYPE_CHECKING, Any, Final
 
-from basinrain.blas import one_blas_thread
+from basinrain.blas import hold_to_one_blas_thread, one_blas_thread
 from basinrain.errors import BasinRainError, JobError, Problem
 from basinrain.series.chunks import ChunkSource, LoadChunk
 from basinrain.series.engine import SeriesEngine, SeriesPart, SeriesSetup
@@ -96,7 +96,7 @@ def run_on_cluster(
         stack.enter_context(_prepared())
         client = stack.enter_context(_connected(on, workers))
         if on == "threads":
-            # Over the whole run, so that no thread meets the others' limit half set.
+            # In this process the limit ends with the run.
             stack.enter_context(one_blas_thread())
         _Run(client, on, workers, setup, source).run(chunks, take)
 
@@ -118,12 +118,12 @@ def compute_chunk(setup: SeriesSetup, digest: str, load: LoadChunk, versions: di
             remedy="give scheduler and workers the versions of this run, for results do not depend on the worker then",
         )
     thread = threading.get_ident()
-    with one_blas_thread():
-        known, engine = _engines.get(thread, ("", None))
-        if engine is None or known != digest:
-            engine = SeriesEngine(setup)
-            _engines[thread] = digest, engine
-        return engine.compute(*load())
+    hold_to_one_blas_thread()
+    known, engine = _engines.get(thread, ("", None))
+    if engine is None or known != digest:
+        engine = SeriesEngine(setup)
+        _engines[thread] = digest, engine
+    return engine.compute(*load())
 
 
 def forget_engines() -> None:
@@ -247,7 +247,10 @@ def _prepared() -> Iterator[None]:
             expected="the packages dask and distributed",
             remedy="pip install 'basinrain[cluster]', or on = \"here\"",
         ) from None
-    names = ["distributed", *(name for name in logging.root.manager.loggerDict if name.startswith(("distributed.", "tornado")))]
+    names = [
+        "distributed",
+        *(name for name in logging.root.manager.loggerDict if name.startswith(("distributed.", "tornado"))),
+    ]
     levels = {name: logging.getLogger(name).level for name in names}
     for name in levels:
         logging.getLogger(name).setLevel(logging.CRITICAL + 1)
@@ -270,7 +273,7 @@ def _connected(on: str, workers: int | None) -> Iterator[Client]:
             raise _refused(
                 f"no scheduler that answers at {on} within {REACH_SECONDS:.0f} s",
                 expected="the address of a running one",
-                remedy="start it with `dask scheduler`, or on = \"here\"",
+                remedy='start it with `dask scheduler`, or on = "here"',
             ) from None
         with client:
             _require_package(client)
@@ -314,4 +317,6 @@ def _require_package(client: Client) -> None:
 
 
 def _refused(found: str, *, expected: str, remedy: str) -> JobError:
-    return JobError(Problem(item="[series] on", found=found, expected=expected, remedy=f"{remedy}; finished chunks stay"))
+    return JobError(
+        Problem(item="[series] on", found=found, expected=expected, remedy=f"{remedy}; finished chunks stay")
+    )

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import io
 import json
-import os
 import re
 import shutil
 import zlib
@@ -159,7 +158,7 @@ class SeriesFolder:
                 raise
 
     def put(self, k: int, parts: Mapping[Series, SeriesPart]) -> None:
-        """Write a chunk through to the disk, then its mark."""
+        """Write a chunk, then its mark."""
         with self._clear_errors():
             checks = []
             for name, kind, path in self._files:
@@ -294,11 +293,10 @@ def _head(kind: str, layout: StoreLayout) -> bytes:
 
 
 def _write(file: io.RawIOBase | BinaryIO, data: memoryview) -> None:
-    """Write all of it through to the disk; a full disk is an error here and not later."""
+    """Write all of it; a full disk is an error here, or where the file is closed, and not later."""
     while len(data):
         written = file.write(data)
         data = data[written or 0 :]
-    os.fsync(file.fileno())
 
 
 def _write_whole(path: Path, content: object) -> None:

@@ -19,9 +19,10 @@ __all__ = ["SeriesStore"]
 class SeriesStore:
     """Arrays of all series, (n_steps, n_basins), that are put together chunk by chunk.
 
-    In a folder each array is an ordinary ``.npy`` file. A chunk is finished when all its values are written through to
-    the disk and a mark with their checksums is in place; a run that was killed at any moment goes on from its finished
-    chunks. Values are written, never mapped: a full disk is an error where it happens, and what is finished stays.
+    In a folder each array is an ordinary ``.npy`` file. A chunk is finished when all its values are written and a mark
+    with their checksums is in place; a run that was killed at any moment goes on from its finished chunks, once their
+    values have been read and their checksums found true. Values are written, never mapped: a full disk is an error where
+    it happens, and what is finished stays.
 
     Make one with :meth:`open`, and close it, or use it in a ``with`` statement.
 

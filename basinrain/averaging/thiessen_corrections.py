@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from typing import Final, NamedTuple
 
 import numpy as np
@@ -9,7 +10,7 @@ import numpy.typing as npt
 
 from basinrain.averaging.thiessen_epochs import Holes
 from basinrain.averaging.thiessen_removal import Removal, Removals
-from basinrain.averaging.thiessen_tessellation import Tessellation
+from basinrain.averaging.thiessen_tessellation import DEAR, Tessellation
 
 __all__ = ["Corrections", "Spans"]
 
@@ -97,9 +98,11 @@ class Corrections:
     ) -> None:
         self._removals: list[Removal] = []
         lots: list[Spans] = []
-        own = np.zeros(len(missing), dtype=bool)
-        dear = {group: tessellation.is_dear(group) for group in set(holes.gauges)}
-        own[[run for run, group in zip(holes.run.tolist(), holes.gauges, strict=True) if dear[group]]] = True
+        # A hole that comes in many runs is shared once for all of them.
+        often = Counter(holes.gauges)
+        burden = {group: tessellation.burden_of(group) / n for group, n in often.items()}
+        burdens = np.bincount(holes.run, [burden[group] for group in holes.gauges], minlength=len(missing))
+        own: Bools = np.asarray(burdens > DEAR)
         missing[own] = False
         shared = [(run, group) for run, group in zip(holes.run.tolist(), holes.gauges, strict=True) if not own[run]]
         for run, group in shared:

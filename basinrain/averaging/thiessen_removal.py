@@ -206,7 +206,7 @@ class Removals:
 
 
 def _sides(code: Ints, row: Ints, n: int, n_rows: int) -> tuple[Ints, Ints, Ints]:
-    """Return the different things, below ``n``, of every row; where each entry's stands in its row; where rows begin."""
+    """Return the different things, below ``n``, of every row; each entry's place in its row; where rows begin."""
     different, which = np.unique(code, return_inverse=True)
     rows, things = np.divmod(different, n)
     first = np.searchsorted(rows, np.arange(n_rows + 1))

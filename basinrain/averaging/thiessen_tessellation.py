@@ -18,14 +18,14 @@ from basinrain.averaging.thiessen_clipping import Rings, join_rings, ring_areas,
 from basinrain.basins import Basins
 from basinrain.gauges import GaugeNetwork
 
-__all__ = ["Ground", "Tessellation", "candidates_of", "edges_among", "groups_of", "whole_tessellation"]
+__all__ = ["DEAR", "Ground", "Tessellation", "candidates_of", "edges_among", "groups_of", "whole_tessellation"]
 
 Ints = npt.NDArray[np.int64]
 Floats = npt.NDArray[np.float64]
 Bools = npt.NDArray[np.bool_]
 
-_DEARER: Final = 40
-"""Comparisons of a corner with a gauge that cost as much as one corner of a tessellation from the basins' outlines."""
+DEAR: Final = 12.0
+"""A burden (:meth:`Tessellation.burden_of`) above which a tessellation from the basins' outlines costs less."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -115,12 +115,10 @@ class Tessellation:
         """Memory in bytes of the rings and what belongs to each."""
         return 16 * len(self.rings.x) + 40 * len(self.basin)
 
-    def is_dear(self, group: Sequence[int]) -> bool:
-        """Return whether sharing out the cells of a group costs more than a tessellation from the outlines."""
-        taken = frozenset(group)
-        around = frozenset().union(*(self.neighbours[g] for g in group)) - taken
-        burden = int(self.corners_of_gauge[list(group)].sum()) * len(around)
-        return burden > _DEARER * len(self.rings.x)
+    def burden_of(self, group: Sequence[int]) -> float:
+        """Return what sharing out a group's cells costs: comparisons of a corner and a gauge, by corner of all rings."""
+        around = frozenset().union(*(self.neighbours[g] for g in group)).difference(group)
+        return float(self.corners_of_gauge[list(group)].sum()) * len(around) / max(len(self.rings.x), 1)
 
     def without(self, absent: Bools) -> Tessellation | None:
         """Return the tessellation with more gauges absent: their cells are shared among their neighbours.
@@ -140,7 +138,7 @@ class Tessellation:
         if not present.any():
             return None
         groups = groups_of(self.edges, out)
-        if any(self.is_dear(group) for group in groups):
+        if sum(map(self.burden_of, groups)) > DEAR:
             return None
         lots = [self.parts_of(group) for group in groups]
         moved = np.concatenate([np.empty(0, dtype=np.int64), *lots])

@@ -189,13 +189,17 @@ class DonorSums:
     def _from_all(self, part: _Part, month: int) -> None:
         targets = np.flatnonzero(part.wanted.any(axis=0))
         numerators, strengths = self._shares.of(month).of(targets)
-        sums = np.where(part.donating, part.values, 0.0) @ numerators
+        rows = np.flatnonzero(part.wanted.any(axis=1))
+        # Where most rows are needed they are read in place, not gathered.
+        some: Ints | slice = rows if 2 * len(rows) < len(part.wanted) else slice(None)
+        sums = np.where(part.donating[some], part.values[some], 0.0) @ numerators
         present = part.donating[part.run[:-1]].astype(float)
         total = present @ strengths
         enough = present @ (strengths > 0) > self._options.donors_required - 0.5
         total[~enough] = np.nan
-        row, k = np.nonzero(part.wanted[:, targets])
-        part.out[row, targets[k]] = sums[row, k] / total[part.run_of_row[row], k]
+        at, k = np.nonzero(part.wanted[some][:, targets])
+        row = rows[at] if isinstance(some, np.ndarray) else at
+        part.out[row, targets[k]] = sums[at, k] / total[part.run_of_row[row], k]
 
     def _by_sets(self, part: _Part, month: int) -> None:
         values = np.where(part.donating, part.values, 0.0)

@@ -104,8 +104,7 @@ class RecordFiller:
     ) -> None:
         self._network, self._options, self._ratios = network, options, ratios
         self._sums = DonorSums(network, options, relations=relations, ratios=ratios)
-        self._near: Ints | None = None
-        self._near_known = np.zeros(len(network), dtype=bool)
+        self._near = _Near(network)
 
     def fill(self, record: RainRecord, long: Bools | None = None, *, trace: bool = False) -> Filled:
         """Return a record's depths with its gaps infilled.
@@ -157,7 +156,7 @@ class RecordFiller:
                     totals.within(begin, stop),
                     self._sums,
                     recorders=recorders,
-                    near=self._nearest,
+                    near=self._near,
                     out=depth[steps],
                 )
                 if trace:
@@ -178,22 +177,6 @@ class RecordFiller:
             yield int(first[k]), stop, first[k:after] - first[k]
             k = after
 
-    def _nearest(self, gauges: Ints, k: int) -> Ints:
-        """Return the k-th nearest gauge of each of some gauges."""
-        n = len(self._network)
-        if k >= _NEAR:
-            each, which = np.unique(gauges, return_inverse=True)
-            return np.array([self._order_from(g)[k] for g in each.tolist()], dtype=np.int64)[which]
-        if self._near is None:
-            self._near = np.zeros((n, min(n, _NEAR)), dtype=np.int64)
-        for g in np.unique(gauges[~self._near_known[gauges]]).tolist():
-            self._near[g] = self._order_from(g)[:_NEAR]
-            self._near_known[g] = True
-        return np.asarray(self._near[gauges, k])
-
-    def _order_from(self, g: int) -> Ints:
-        return self._network.nearest_first(distances_from(self._network, g))
-
     def _check(self, record: RainRecord) -> None:
         problems = Problems()
         if record.gauges != self._network.ids:
@@ -203,7 +186,8 @@ class RecordFiller:
                 expected=", ".join(self._network.ids),
                 remedy="bring them in order first",
             )
-        for g in np.flatnonzero((record.status == Status.INFILLED).any(axis=0)):
+        infilled = record.status == Status.INFILLED
+        for g in np.flatnonzero(infilled.any(axis=0)) if infilled.any() else ():
             problems.add(
                 item=f"gauge {record.gauges[g]}",
                 found="infilled values",
@@ -236,6 +220,24 @@ class RecordFiller:
         except DataError as error:
             problems.extend(error)
         problems.raise_as(DataError)
+
+
+class _Near:
+    """The gauges around each gauge, those at hand asked for once."""
+
+    def __init__(self, network: GaugeNetwork) -> None:
+        self._network, self.n_first = network, min(len(network), _NEAR)
+        self._first = np.zeros((len(network), self.n_first), dtype=np.int64)
+        self._known = np.zeros(len(network), dtype=bool)
+
+    def first(self, gauges: Ints, k: int, /) -> Ints:
+        for g in np.unique(gauges[~self._known[gauges]]).tolist():
+            self._first[g] = self.all(g)[: self.n_first]
+            self._known[g] = True
+        return np.asarray(self._first[gauges, k])
+
+    def all(self, gauge: int, /) -> Ints:
+        return self._network.nearest_first(distances_from(self._network, gauge))
 
 
 def scale_of(record: RainRecord, options: InfillOptions) -> str:

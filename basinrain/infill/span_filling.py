@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 from enum import IntEnum
-from typing import Final
+from typing import Final, Protocol
 
 import numpy as np
 import numpy.typing as npt
@@ -19,8 +18,22 @@ Bools = npt.NDArray[np.bool_]
 Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.int64]
 
-NearOrder = Callable[[Ints, int], Ints]
-"""``near(gauges, k)`` gives the gauge that is the k-th nearest to each of some gauges, itself the first as a rule."""
+_TOGETHER: Final = 1 << 20
+"""Values at missing steps that are looked at together."""
+
+
+class NearGauges(Protocol):
+    """The order in which gauges lie around each other."""
+
+    @property
+    def n_first(self) -> int:
+        """How many of the nearest of each gauge are at hand."""
+
+    def first(self, gauges: Ints, k: int, /) -> Ints:
+        """Return the k-th nearest gauge of each of some gauges, itself the first as a rule; k below ``n_first``."""
+
+    def all(self, gauge: int, /) -> Ints:
+        """Return all gauges by their distance from one."""
 
 
 class Fate(IntEnum):
@@ -208,7 +221,7 @@ def fill_spans(
     sums: DonorSums,
     *,
     recorders: Bools,
-    near: NearOrder,
+    near: NearGauges,
     out: Floats,
 ) -> tuple[Bools, SpanCells]:
     """Infill what a block's gauges miss of spans that they miss more than half of.
@@ -284,7 +297,11 @@ def fill_spans(
     searched = given[(rest[given] > 0) & (missing[row[given], gauge[given]] > 1)]
     wet = recorders & measured & (own_totals > 0)
     cells = _Steps.of(block.fillable, intervals, row, gauge)
-    donor[searched] = _patterns(depth, wet, cells, row, gauge, searched, length[row] > missing[row, gauge], near)
+    pattern = wet[row[searched]]
+    part = np.flatnonzero(missing[row[searched], gauge[searched]] < length[row[searched]])
+    # Where the gauge has some steps itself, the rain must have fallen in the others.
+    pattern[part] = _wet_at_steps(depth, wet[row], cells, searched[part])
+    donor[searched] = _nearest(pattern, gauge[searched], near)
     even = searched[donor[searched] < 0]
     any_complete = (recorders & measured)[row[even]].any(axis=1)
     fate[even] = np.where(any_complete, Fate.EVEN_NONE_WET, Fate.EVEN_NONE_COMPLETE)
@@ -321,37 +338,42 @@ class _Steps:
         return np.flatnonzero(np.diff(self.cell, prepend=-1))
 
 
-def _patterns(
-    depth: Floats,
-    wet: Bools,
-    cells: _Steps,
-    row: Ints,
-    gauge: Ints,
-    searched: Ints,
-    partial: Bools,
-    near: NearOrder,
-) -> Ints:
-    """Return the nearest gauge that is ``wet`` over each cell's span, and at its missing steps; -1 where none is."""
-    found = np.full(len(row), -1)
-    open_ = searched[wet[row[searched]].any(axis=1)]
-    for k in range(depth.shape[1]):
+def _wet_at_steps(depth: Floats, wet: Bools, cells: _Steps, chosen: Ints) -> Bools:
+    """Return which of the gauges that are ``wet`` over each chosen cell's span are so at its missing steps."""
+    result = np.zeros((len(chosen), depth.shape[1]), dtype=bool)
+    some = chosen[wet[chosen].any(axis=1)]
+    asked = np.zeros(len(wet), dtype=bool)
+    asked[some] = True
+    steps = cells.among(asked)
+    borders = np.append(steps.first, len(steps.cell))
+    most = max(_TOGETHER // max(depth.shape[1], 1), 1)
+    k = 0
+    found = np.zeros((len(some), depth.shape[1]), dtype=bool)
+    while k < len(some):
+        after = max(int(np.searchsorted(borders, borders[k] + most, "right")) - 1, k + 1)
+        mine = slice(borders[k], borders[after])
+        rain = depth[steps.step[mine]] > 0
+        found[k:after] = np.logical_or.reduceat(rain, borders[k:after] - borders[k], axis=0)
+        k = after
+    result[np.searchsorted(chosen, some)] = found & wet[some]
+    return result
+
+
+def _nearest(usable: Bools, gauge: Ints, near: NearGauges) -> Ints:
+    """Return of each row's usable gauges, (n, n_gauges), the one that is nearest to the row's gauge; -1 without any."""
+    found = np.full(len(gauge), -1)
+    open_ = np.flatnonzero(usable.any(axis=1))
+    for k in range(near.n_first):
         if not len(open_):
-            break
-        candidate = near(gauge[open_], k)
-        right = wet[row[open_], candidate]
-        # Where the gauge has some steps itself, the rain must have fallen in the others.
-        doubtful = right & partial[open_]
-        if doubtful.any():
-            asked = np.zeros(len(row), dtype=bool)
-            asked[open_[doubtful]] = True
-            found[open_[doubtful]] = candidate[doubtful]
-            steps = cells.among(asked)
-            caught = np.add.reduceat(depth[steps.step, found[steps.cell]], steps.first)
-            found[open_[doubtful]] = -1
-            right[doubtful] = caught > 0
+            return found
+        candidate = near.first(gauge[open_], k)
+        right = usable[open_, candidate]
         found[open_[right]] = candidate[right]
         open_ = open_[~right]
-    return found[searched]
+    for g in np.unique(gauge[open_]).tolist():
+        mine, order = open_[gauge[open_] == g], near.all(g)
+        found[mine] = order[usable[np.ix_(mine, order)].argmax(axis=1)]
+    return found
 
 
 def _share_out(depth: Floats, steps: _Steps, gauge: Ints, donor: Ints, rest: Floats, out: Floats) -> None:

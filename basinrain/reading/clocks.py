@@ -5,14 +5,15 @@ from __future__ import annotations
 import datetime as dt
 import re
 import zoneinfo
+from collections.abc import Mapping
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import DataError, JobError, Problem, Problems, nearest_name
 
-__all__ = ["clock_name", "clock_seconds", "parse_zone", "standard_offset"]
+__all__ = ["clock_name", "clock_seconds", "one_clock", "parse_zone", "standard_offset"]
 
 _OFFSET: Final = re.compile(r"(?P<sign>[+-])(?P<hours>[01][0-9]):?(?P<minutes>[0-5][0-9])")
 
@@ -89,6 +90,40 @@ def standard_offset(zone: zoneinfo.ZoneInfo, times: npt.NDArray[np.datetime64]) 
     winter = dt.datetime(year, 1, 1, tzinfo=zone)
     ahead, saving = winter.utcoffset() or dt.timedelta(0), winter.dst() or dt.timedelta(0)
     return int((ahead - saving).total_seconds())
+
+
+def one_clock(zones: Mapping[int, str], labels: Mapping[int, str]) -> str:
+    """Return the clock of the first of several sources, which all must have one or none.
+
+    Parameters
+    ----------
+    zones
+        Clocks by the source's number, ``""`` for none.
+    labels
+        What messages call the sources.
+
+    Raises
+    ------
+    DataError
+        Some have a clock and others none.
+
+    Examples
+    --------
+    >>> one_clock({1: "+02:00", 2: "+00:00"}, {1: "source 1", 2: "source 2"})
+    '+02:00'
+    """
+    first = next(iter(zones))
+    problems = Problems()
+    for number, zone in zones.items():
+        if bool(zone) != bool(zones[first]):
+            problems.add(
+                item="time zones",
+                found=f"{zones[first] or 'no zone'} for {labels[first]}, {zone or 'no zone'} for {labels[number]}",
+                expected="a zone for every source, or for none",
+                remedy="declare timezone for each",
+            )
+    problems.raise_as(DataError)
+    return zones[first]
 
 
 def _near_zone(timezone: str) -> str:

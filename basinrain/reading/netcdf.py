@@ -23,6 +23,7 @@ from basinrain.reading.netcdf_times import interval_ends
 from basinrain.reading.netcdf_variables import choose_variables
 from basinrain.reading.order import check_order
 from basinrain.reading.stamps import StampRules
+from basinrain.reading.stream_mark import FileMark
 
 __all__ = ["NetcdfRows", "open_netcdf", "read_netcdf"]
 
@@ -103,8 +104,8 @@ class NetcdfRows:
 
     Parameters
     ----------
-    path
-        The file.
+    mark
+        The file as it was.
     gauges
         Their ids.
     ends : array of datetime64[s], shape (n_times,)
@@ -115,7 +116,7 @@ class NetcdfRows:
         Whether its first dimension is time.
     """
 
-    path: Path
+    mark: FileMark
     gauges: tuple[str, ...]
     ends: npt.NDArray[np.datetime64]
     variable: str
@@ -125,7 +126,8 @@ class NetcdfRows:
         self, first: int, stop: int, rules: DepthRules, problems: Problems
     ) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8]]:
         """Return depth and status of the times ``first`` to ``stop`` (exclusive), shape (stop - first, n_gauges)."""
-        with _opened(self.path) as file:
+        self.mark.check()
+        with _opened(self.mark.path) as file:
             variable = file[self.variable]
             part = variable[first:stop] if self.time_first else variable[:, first:stop].T
         values = np.ma.filled(part.astype(np.result_type(part.dtype, np.float32), copy=False), np.nan)
@@ -169,7 +171,7 @@ def open_netcdf(
         )
     if chosen is None or times is None or len(problems) > before:
         return None, zone
-    return NetcdfRows(path, chosen.gauges, times.ends, chosen.depth, chosen.time_first), zone
+    return NetcdfRows(FileMark.of(path), chosen.gauges, times.ends, chosen.depth, chosen.time_first), zone
 
 
 @contextmanager

@@ -19,6 +19,7 @@ from basinrain.reading.clocks import clock_name, parse_zone, standard_offset
 from basinrain.reading.columns import find_column
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.files import read_bytes
+from basinrain.reading.stream_mark import FileMark
 
 __all__ = ["ParquetRows", "open_parquet", "read_parquet"]
 
@@ -90,8 +91,8 @@ class ParquetRows:
 
     Parameters
     ----------
-    path
-        The file.
+    mark
+        The file as it was.
     columns
         All columns, that of times first in a wide file.
     roles
@@ -102,7 +103,7 @@ class ParquetRows:
         Of numbers in text.
     """
 
-    path: Path
+    mark: FileMark
     columns: tuple[str, ...]
     roles: Mapping[str, _Role]
     group_starts: npt.NDArray[np.int64]
@@ -126,13 +127,19 @@ class ParquetRows:
             Rows from 0.
         only
             The columns to read; the others are blank. All by default.
+
+        Raises
+        ------
+        ReadError
+            The file is gone, has changed, or is damaged.
         """
         names = list(self.roles) if only is None else [name for name in self.roles if name in only]
         begin = int(np.searchsorted(self.group_starts, first, "right")) - 1
         end = int(np.searchsorted(self.group_starts, stop, "left"))
         row = int(self.group_starts[begin])
         size = max(1, _CELLS // max(len(names), 1))
-        with _opened(self.path) as file:
+        self.mark.check()
+        with _opened(self.mark.path) as file:
             for batch in file.iter_batches(size, row_groups=list(range(begin, end)), columns=names):
                 low, high = max(first - row, 0), min(stop - row, batch.num_rows)
                 if low < high:
@@ -143,7 +150,7 @@ class ParquetRows:
         """Return a table or batch of pyarrow as text and numbers; ``first`` is its first row."""
         n = content.num_rows
         blank = pd.Series(np.full(n, "", dtype=object), dtype=str)
-        series, problems = {}, Problems(file=str(self.path))
+        series, problems = {}, Problems(file=str(self.mark.path))
         for name in self.columns:
             series[name] = blank
             if name in self.roles and name in content.schema.names:
@@ -154,7 +161,7 @@ class ParquetRows:
                     problems.add(item=f"column {name}", found=f"times of zone {found.found}", expected=found.expected)
         problems.raise_as(ReadError)
         return DelimitedTable(
-            str(self.path), self.columns, pd.DataFrame(series), np.arange(first + 1, first + 1 + n), self.decimal
+            str(self.mark.path), self.columns, pd.DataFrame(series), np.arange(first + 1, first + 1 + n), self.decimal
         )
 
 
@@ -199,7 +206,7 @@ def open_parquet(path: Path, *, layout: str, columns: Mapping[str, str]) -> Parq
                 column=name,
             )
     problems.raise_as(ReadError)
-    return ParquetRows(path, tuple(names), roles, np.cumsum([0, *sizes], dtype=np.int64))
+    return ParquetRows(FileMark.of(path), tuple(names), roles, np.cumsum([0, *sizes], dtype=np.int64))
 
 
 def _roles(

@@ -7,11 +7,11 @@ from dataclasses import replace
 
 import numpy as np
 
-from basinrain.errors import DataError, JobError, Problems
+from basinrain.errors import JobError, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
-from basinrain.reading.clocks import clock_name, clock_seconds
+from basinrain.reading.clocks import clock_name, clock_seconds, one_clock
 from basinrain.reading.common_grid import common_grid, reading_hours
 from basinrain.reading.grid import ABSENT, Grid, Source, place, relation
 from basinrain.reading.intervals import DAY, Interval, parse_interval
@@ -95,7 +95,7 @@ def bring_to_step(
     timed = {number: record for number, record in used.items() if record.step != "storm"}
     if not timed:
         return merge_storm_totals(used, network), tuple(remarks)
-    zone = _one_clock(timed, labels)
+    zone = one_clock({number: record.zone for number, record in timed.items()}, labels)
     sources = _sources(used, labels, zone, storm_times)
     grid = common_grid(sources, common)
     step = grid.interval
@@ -130,26 +130,6 @@ def bring_to_step(
 def _name(number: int, record: RainRecord, names: Sequence[str]) -> str:
     beside = f", {names[number - 1]}" if names else ""
     return f"source {number} ({record.step}{beside})"
-
-
-def _one_clock(timed: Mapping[int, RainRecord], labels: Mapping[int, str]) -> str:
-    first = next(iter(timed))
-    zone = timed[first].zone
-    problems = Problems()
-    for number, record in timed.items():
-        if bool(record.zone) != bool(zone):
-            problems.add(
-                item="time zones",
-                found=f"{_clock_of(zone)} for {labels[first]}, {_clock_of(record.zone)} for {labels[number]}",
-                expected="a zone for every source, or for none",
-                remedy="declare timezone for each",
-            )
-    problems.raise_as(DataError)
-    return zone
-
-
-def _clock_of(zone: str) -> str:
-    return zone or "no zone"
 
 
 def _sources(

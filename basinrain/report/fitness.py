@@ -1,16 +1,23 @@
-"""The section of the storm report on whether the record is fit to use, in short."""
+"""The section of a report on whether the record is fit to use, in short."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Final
 
 from basinrain.report.edit_list import edit_table
 from basinrain.report.findings_list import check_counts, settled_table
 from basinrain.report.table import Table
 from basinrain.report.words import counted, zone_text
 from basinrain.results import Run
+from basinrain.results_series import SeriesRun
 
 __all__ = ["Fitness", "fitness"]
+
+_NOT_SCREENED: Final = (
+    "The record was not screened: it was read chunk by chunk, and the checks look at a record as a whole. Screen it with "
+    "basinrain screen, some years at a time where it is too large."
+)
 
 
 @dataclass(frozen=True)
@@ -36,9 +43,17 @@ def fitness(run: Run) -> Fitness:
         f"{made} made, {len(screening.checks_skipped)} could not be; basinrain screen tells of them at length."
     ]
     tables: list[Table] = []
-    if found:
+    if isinstance(run, SeriesRun) and not len(run.record):
+        sentences = [_NOT_SCREENED]
+    elif found:
         weighty = [f for f in found if f.severity != "remark"]
-        if any(f.state == "open" for f in weighty):
+        still = sum(f.state == "open" for f in weighty)
+        if still and isinstance(run, SeriesRun):
+            sentences.append(
+                f"{counted(still, 'open finding')} that may matter {'is' if still == 1 else 'are'} in the record that "
+                "was averaged: findings.csv has the evidence."
+            )
+        elif still:
             sentences.append("Open findings that touch what was computed stand under Warnings, with their evidence.")
         tables.append(check_counts(found))
         settled = settled_table(weighty)

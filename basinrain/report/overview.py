@@ -13,11 +13,11 @@ from basinrain.basins import UNION
 from basinrain.notes import Note
 from basinrain.report.table import Table
 from basinrain.report.words import area_text, counted, step_text, unit_text, unit_word, when_text, zone_text
-from basinrain.results import StormRun
+from basinrain.results import Run, StormRun
 from basinrain.storms import MEAN, NEAREST_RECORDER
 from basinrain.units import area_factor, volume_unit_for
 
-__all__ = ["NoteGroup", "note_groups", "storms_asked", "what_was_asked"]
+__all__ = ["NoteGroup", "note_groups", "storms_asked", "units_asked", "what_was_asked", "where_asked"]
 
 _LISTED: Final = 6
 _NAMED: Final = 40
@@ -79,6 +79,18 @@ def _rest(notes: list[Note]) -> str:
 
 def what_was_asked(run: StormRun) -> list[tuple[str, str]]:
     """Return the job in a few lines, each a name and a text."""
+    lines = [*where_asked(run), ("Averages", ", ".join(run.methods))]
+    infill = run.settings.get("infill", {})
+    if "method" in infill:
+        scale = infill.get("scale")
+        lines.append(("Infill", str(infill["method"]) + (f" at the scale of the {scale}" if scale else "")))
+    lines.append(("Units", units_asked(run)))
+    lines.append(("Step", "storm totals only" if run.record.step == "storm" else step_text(run.record.step)))
+    return lines
+
+
+def where_asked(run: Run) -> list[tuple[str, str]]:
+    """Return basins and gauges in two lines, each a name and a text."""
     basins = [b for b, basin in enumerate(run.basins.ids) if basin != UNION]
     union = (
         shapely.union_all(run.basins.polygons[basins]) if len(basins) == len(run.basins) else run.basins.polygons[-1]
@@ -86,20 +98,16 @@ def what_was_asked(run: StormRun) -> list[tuple[str, str]]:
     area = union.area / area_factor(run.area_unit)
     inside = int(np.count_nonzero(shapely.dwithin(shapely.points(run.network.x, run.network.y), union, _TOUCH)))
     union_words = ", and their union" if UNION in run.basins.ids else ""
-    lines = [
+    return [
         ("Basins", f"{counted(len(basins), 'basin')}{union_words}; {area_text(area)} {unit_text(run.area_unit)}"),
         ("Gauges", f"{len(run.network)}, of which {inside} inside the {'basins' if len(basins) > 1 else 'basin'}"),
-        ("Averages", ", ".join(run.methods)),
     ]
-    infill = run.settings.get("infill", {})
-    if "method" in infill:
-        scale = infill.get("scale")
-        lines.append(("Infill", str(infill["method"]) + (f" at the scale of the {scale}" if scale else "")))
+
+
+def units_asked(run: Run) -> str:
+    """Return the units of depths, areas and volumes."""
     volume_unit = unit_text(volume_unit_for(run.depth_unit))
-    units = f"depths in {unit_word(run.depth_unit)}, areas in {unit_text(run.area_unit)}, volumes in {volume_unit}"
-    lines.append(("Units", units))
-    lines.append(("Step", "storm totals only" if run.record.step == "storm" else step_text(run.record.step)))
-    return lines
+    return f"depths in {unit_word(run.depth_unit)}, areas in {unit_text(run.area_unit)}, volumes in {volume_unit}"
 
 
 def storms_asked(run: StormRun) -> Table:

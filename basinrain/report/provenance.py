@@ -15,7 +15,16 @@ from basinrain.report.table import Table
 from basinrain.report.words import NARROW_SPACE
 from basinrain.results import Run, StormRun
 
-__all__ = ["Formula", "formulas", "ground_facts", "infill_formulas", "inputs_table", "settings_text", "versions_table"]
+__all__ = [
+    "Formula",
+    "formulas",
+    "ground_facts",
+    "infill_formulas",
+    "inputs_table",
+    "mean_formulas",
+    "settings_text",
+    "versions_table",
+]
 
 
 @dataclass(frozen=True)
@@ -126,7 +135,12 @@ _INFILLS: Final = {
 def formulas(run: StormRun) -> list[Formula]:
     """Return the formulas of the methods used, averages first; a method without a short one is left out."""
     used = dict.fromkeys(e.method for result in run.storms for e in result.completed.estimates)
-    return [_MEANS[m] for m in run.methods if m in _MEANS] + [_INFILLS[m] for m in used if m in _INFILLS]
+    return mean_formulas(run.methods) + infill_formulas(used)
+
+
+def mean_formulas(methods: Iterable[str]) -> list[Formula]:
+    """Return the formulas of averaging methods by name, in their order; one without a short formula is left out."""
+    return [_MEANS[method] for method in methods if method in _MEANS]
 
 
 def infill_formulas(methods: Iterable[str]) -> list[Formula]:
@@ -134,7 +148,7 @@ def infill_formulas(methods: Iterable[str]) -> list[Formula]:
     return [_INFILLS[method] for method in methods if method in _INFILLS]
 
 
-def ground_facts(run: StormRun) -> list[tuple[str, str]]:
+def ground_facts(run: Run) -> list[tuple[str, str]]:
     """Return what is to be known of plane, distances, normals and catch, each a name and a sentence."""
     plane = run.plane
     if plane.crs == LOCAL:

@@ -94,14 +94,14 @@ def by_recursion(daily: Floats, recession: float) -> tuple[list[float], list[int
     return found, counts
 
 
-@given(depths(), st.sampled_from([0.5, 0.85, 0.9, 0.98]))
+@given(depths(at_most=50), st.sampled_from([0.5, 0.85, 0.9, 0.98]))
 def test_equal_to_the_recursion(daily: Floats, recession: float) -> None:
     """At the end of every day the index is ``k`` times that of the day before and what fell."""
     starts, ends = steps(len(daily), step=DAY)
     found = antecedent_index(starts, ends, daily, at=ends, recession=recession)
     index, days = by_recursion(daily, recession)
     np.testing.assert_allclose(found.from_zero, index, atol=1e-12)
-    np.testing.assert_array_equal(found.days, np.minimum(days, max(days)))
+    np.testing.assert_array_equal(found.days, days)
     np.testing.assert_array_equal(np.isnan(found.index), np.array(days) < found.days_needed)
     np.testing.assert_allclose(
         antecedent_index(starts, ends, daily * 8, at=ends, recession=recession).from_zero, 8 * found.from_zero
@@ -141,12 +141,12 @@ def test_no_storm_no_figure() -> None:
 
 
 def test_bad_options_and_series_are_refused() -> None:
-    """Days below one, a recession of one, starts within a step or outside, all together; steps that are no part of a day."""
+    """Days below one, a recession of one, starts within a step or outside, all together; steps that divide no day."""
     starts, ends = steps(5)
     with pytest.raises(JobError, match=r"days before a storm: found 0; expected 1 or more\ndays before .* found -3"):
         antecedent_depths(starts, ends, np.zeros(5), at=starts[:1], days=(0, 5, -3))
     for recession in (0.0, 1.0):
-        with pytest.raises(JobError, match="recession: found .; expected a number above 0 and below 1"):
+        with pytest.raises(JobError, match=r"recession: found [01]; expected a number above 0 and below 1"):
             antecedent_index(starts, ends, np.zeros(5), at=starts[:1], recession=int(recession))
     late = np.array([starts[1] + hours(0.5), ends[4] + HOUR, starts[2]])
     with pytest.raises(JobError, match="start of a storm: found 2031-05-04T01:30:00; expected the start") as caught:

@@ -15,7 +15,6 @@ from basinrain.errors import DataError, JobError, MethodError
 from basinrain.series.greatest_depths import GreatestDepths, annual_maxima, greatest_depths
 
 NAN = float("nan")
-NOT = np.datetime64("NaT", "s")
 
 
 def found(depth: list[float] | Floats, *durations: float, phase: int = 0) -> GreatestDepths:
@@ -58,7 +57,8 @@ def test_the_earliest_of_equal_depths() -> None:
     """0.1 + 0.2 + 0.3 mm and the same the other way round are one depth; the earlier window has it."""
     both = found([0.1, 0.2, 0.3, 0, 0.3, 0.2, 0.1], 3)
     assert both.sliding.ends[0] == steps(7)[1][2]
-    assert (found([0, 0, 0], 2).sliding.depth, found([0, 0, 0], 2).sliding.ends[0]) == (0, steps(3)[1][1])
+    dry = found([0, 0, 0], 2).sliding
+    assert (dry.depth[0], dry.ends[0]) == (0, steps(3)[1][1])
 
 
 def test_windows_of_the_clock_begin_with_the_day() -> None:
@@ -75,7 +75,10 @@ def test_windows_of_the_clock_begin_with_the_day() -> None:
 
 
 def test_windows_of_days_follow_the_first_day_of_the_series() -> None:
-    """Two days from a series that begins at 5:00 of the fourth: they would begin on the fourth, so the sixth is first."""
+    """Two days of a series from 5:00 of the fourth: the first would begin on the fourth, so the sixth is first.
+
+    So do five hours, which do not divide the day: they run on from 0:00, 5:00 ... 20:00 to 1:00, 6:00.
+    """
     starts, ends = steps(24 * 6, start=np.datetime64("2031-05-04T05:00:00"))
     both = greatest_depths(starts, ends, np.arange(144.0), durations=[2 * DAY, DAY])
     np.testing.assert_array_equal(both.aligned.windows, [2, 5])
@@ -83,11 +86,15 @@ def test_windows_of_days_follow_the_first_day_of_the_series() -> None:
     morning = steps(9, step=DAY, start=np.datetime64("2031-05-04T08:00:00"))
     daily = greatest_depths(*morning, np.ones(9), durations=[2 * DAY], day_phase=8 * 3600)
     assert (daily.aligned.depth[0], daily.aligned.windows[0]) == (2, 4)
+    depth = np.zeros(50)
+    depth[20:25] = 1.0
+    five = found(depth, 5).aligned
+    assert (five.depth[0], str(five.ends[0]), five.windows[0]) == (5, "2031-05-05T01:00:00", 10)
 
 
 @given(depths(at_least=2, missing=False), st.lists(st.integers(1, 30), min_size=1, max_size=4))
 def test_laws_of_a_whole_series(depth: Floats, counts: list[int]) -> None:
-    """Sliding is at least the clock's, rises with the duration, and is at most the sum; 2n hours have at most twice n."""
+    """Sliding is at least the clock's, rises with the duration, is at most the sum; 2n hours have at most twice n."""
     ordered = sorted(count for count in {*counts, *(2 * count for count in counts)} if count <= len(depth))
     if not ordered:
         return
@@ -127,7 +134,7 @@ def test_equal_to_pandas() -> None:
         fixed = frame.resample(f"{count}h", closed="right", label="right", origin="start_day").sum(min_count=count)
         np.testing.assert_allclose(both.aligned.depth[d], fixed.max().to_numpy(), rtol=1e-9)
         for b in range(3):
-            assert both.aligned.ends[d, b] == np.datetime64(fixed[b].round(9).idxmax(), "s")
+            assert both.aligned.ends[d, b] == fixed.index.to_numpy()[fixed[b].round(9).argmax()]
             window = (ends > both.sliding.ends[d, b] - hours(count)) & (ends <= both.sliding.ends[d, b])
             assert depth[window, b].sum() == pytest.approx(both.sliding.depth[d, b])
     one = greatest_depths(starts, ends, depth[:, 2], durations=[hours(6)])
@@ -221,7 +228,7 @@ def test_years_part_the_windows(water_year: int) -> None:
     for kind, of_all in ((annual.sliding, whole.sliding), (annual.aligned, whole.aligned)):
         np.testing.assert_array_equal(np.nanmax(kind.present, axis=1), of_all.depth)
     for d, length in enumerate(durations):
-        sums = pd.DataFrame(depth).rolling(length // hours(6)).sum().to_numpy()
+        sums = pd.DataFrame(depth).rolling(int(length // hours(6))).sum().to_numpy()
         middle = pd.DatetimeIndex(ends - length // 2)
         year = middle.year + (water_year > 1) * (middle.month >= water_year)
         for y, b in itertools.product(range(len(annual.years)), range(2)):

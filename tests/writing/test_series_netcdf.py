@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import json
-import subprocess
-import sys
+import warnings
 from pathlib import Path
 from typing import Any
 
@@ -22,20 +21,26 @@ from basinrain.writing.series_netcdf import write_netcdf
 
 def complaints(path: Path, out: Path) -> list[str]:
     """Return what the public checker of CF-1.11 finds, warnings included, with the tables that it brings."""
-    run = subprocess.run(
-        [sys.executable, "-m", "cchecker", "--test=cf:1.11", "-c", "strict", "-f", "json", "-o", out, path],
-        capture_output=True,
-        text=True,
-        check=False,
-    )
+    with warnings.catch_warnings():
+        # Those of the checker's own code, not of the file.
+        warnings.simplefilter("ignore")
+        from compliance_checker.runner import CheckSuite, ComplianceChecker
+
+        CheckSuite.load_all_available_checkers()
+        passed, broken = ComplianceChecker.run_checker(
+            str(path), ["cf:1.11"], 0, "strict", output_filename=str(out), output_format="json"
+        )
     report = json.loads(out.read_text())["cf:1.11"]
     found = [
         f"{priority}: {message}"
         for priority in ("high_priorities", "medium_priorities", "low_priorities")
         for result in report[priority]
         for message in result["msgs"]
+        # A check that is passed in full may have a remark: that the calendar's reform is not crossed.
+        if result["value"][0] < result["value"][1]
     ]
-    assert (run.returncode == 0) == (not found), run.stdout + run.stderr
+    assert not broken
+    assert passed == (not found)
     # The report counts what it looked at: an empty file would have nothing to complain of.
     assert report["possible_points"] > 50
     return found
@@ -74,7 +79,7 @@ def test_the_checker_would_say_so(tmp_path: Path) -> None:
 def check_numbers(path: Path, content: SeriesContent) -> None:
     """Compare every number with the arrays, read by netCDF4 without its own masks and scales."""
     with netCDF4.Dataset(path) as file:
-        file.set_auto_maskandscale(False)  # noqa: FBT003 - the library's own
+        file.set_auto_maskandscale(False)
         for one in SERIES:
             name, block = series_name(*one), content.block(*one, slice(0, content.n_steps))
             np.testing.assert_array_equal(file[f"depth_{name}"][:], block.depth.T)

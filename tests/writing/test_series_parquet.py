@@ -56,7 +56,7 @@ def test_columns_are_typed_and_say_their_unit(tmp_path: Path) -> None:
     """Unit, caution and basins stand in the schema, so that no file of their own is needed."""
     write_parquet(tmp_path, small_content())
     schema = pq.read_schema(tmp_path / "series.parquet")
-    assert schema.names == "basin method gaps time depth depth_unit observed_share flags".split()
+    assert schema.names == ["basin", "method", "gaps", "time", "depth", "depth_unit", "observed_share", "flags"]
     kinds = [schema.field(name).type for name in ("time", "depth", "observed_share")]
     assert kinds == [pa.timestamp("ms", tz="+02:00"), pa.float64(), pa.float32()]
     assert all(pa.types.is_dictionary(schema.field(name).type) for name in ("basin", "method", "gaps", "flags"))
