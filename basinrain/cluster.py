@@ -20,14 +20,14 @@ from importlib.metadata import PackageNotFoundError, version
 from typing import TYPE_CHECKING, Any, Final
 
 from basinrain.blas import hold_to_one_blas_thread, one_blas_thread
-from basinrain.errors import BasinRainError, JobError, Problem
+from basinrain.errors import JobError, Problem
 from basinrain.series.chunks import ChunkSource, LoadChunk
 from basinrain.series.engine import SeriesEngine, SeriesPart, SeriesSetup
 
 if TYPE_CHECKING:
     from distributed import Client, Future
 
-__all__ = ["run_on_cluster"]
+__all__ = ["REACH_SECONDS", "WORKER_SECONDS", "compute_chunk", "dask_setup", "forget_engines", "run_on_cluster"]
 
 Parts = dict[tuple[str, str], SeriesPart]
 
@@ -247,11 +247,10 @@ def _prepared() -> Iterator[None]:
             expected="the packages dask and distributed",
             remedy="pip install 'basinrain[cluster]', or on = \"here\"",
         ) from None
-    names = [
-        "distributed",
-        *(name for name in logging.root.manager.loggerDict if name.startswith(("distributed.", "tornado"))),
-    ]
-    levels = {name: logging.getLogger(name).level for name in names}
+    talkers = ("distributed", "tornado")
+    levels = {
+        name: logging.getLogger(name).level for name in logging.root.manager.loggerDict if name.startswith(talkers)
+    }
     for name in levels:
         logging.getLogger(name).setLevel(logging.CRITICAL + 1)
     try:
@@ -317,6 +316,5 @@ def _require_package(client: Client) -> None:
 
 
 def _refused(found: str, *, expected: str, remedy: str) -> JobError:
-    return JobError(
-        Problem(item="[series] on", found=found, expected=expected, remedy=f"{remedy}; finished chunks stay")
-    )
+    remedy += "; finished chunks stay"
+    return JobError(Problem(item="[series] on", found=found, expected=expected, remedy=remedy))

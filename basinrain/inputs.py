@@ -39,7 +39,17 @@ from basinrain.screening.edits import Action
 from basinrain.spreading import spread_totals
 from basinrain.units import depth_factor
 
-__all__ = ["Inputs", "attempt", "input_digests", "read_inputs", "window_of"]
+__all__ = [
+    "Inputs",
+    "attempt",
+    "catch_factors",
+    "edits_of",
+    "input_digests",
+    "read_basins_of",
+    "read_gauges_of",
+    "read_inputs",
+    "window_of",
+]
 
 _SHAPEFILE_PARTS = frozenset({".shp", ".shx", ".dbf", ".prj", ".cpg"})
 
@@ -109,7 +119,7 @@ def read_inputs(job: Job, say: Callable[[str], None]) -> Inputs:
         record, spread_notes = spread_totals(replace(record, totals=()), network, record.totals)
         notes = (*(note for note in notes if note.code != "spread-evenly"), *spread_notes)
     # Each gauge has a catch of its own, so it is corrected before gauges at one place are merged.
-    record = correct_catch(record, _catch_factors(job, network))
+    record = correct_catch(record, catch_factors(job, network))
     if job.gauges.colocated == "mean":
         network, record, merged = merge_colocated(network, record)
         notes += merged
@@ -123,16 +133,17 @@ def _read(
 ) -> tuple[GaugeNetwork, RainRecord, Basins, tuple[Edit, ...], tuple[dict[str, Any], ...], tuple[Note, ...]]:
     """Read every file; the problems of all files are reported together."""
     problems = Problems()
-    network = attempt(problems, partial(_read_gauges, job))
+    network = attempt(problems, partial(read_gauges_of, job))
     records = [attempt(problems, partial(_read_source, job, k, source)) for k, source in enumerate(job.rainfall, 1)]
-    basins = attempt(problems, partial(_read_basins, job))
+    basins = attempt(problems, partial(read_basins_of, job))
     # An option that the infill method does not take is told with the rest, not after it.
     attempt(problems, partial(infill_options, job))
     problems.raise_as(ReadError)
     # A reader that gave nothing has left a problem, so from here on everything is there.
     network, (polygons, basin_notes) = cast("GaugeNetwork", network), cast("tuple[Basins, tuple[Note, ...]]", basins)
     sources = cast("list[RainRecord]", records)
-    edits = _edits(job, sources)
+    zone = next((source.zone for source in sources if not np.isnat(source.ends).any()), "")
+    edits = edits_of(job, zone, [source.gauges for source in sources])
     edited, rows = apply_edits(sources, edits)
     excluded = set(job.gauges.exclude)
     timed = [source.zone for source in sources if not source.labels and not excluded.issuperset(source.gauges)]
@@ -156,7 +167,8 @@ def attempt(problems: Problems, work: Callable[[], _T]) -> _T | None:
         return None
 
 
-def _read_gauges(job: Job) -> GaugeNetwork:
+def read_gauges_of(job: Job) -> GaugeNetwork:
+    """Return a job's gauges as their file has them."""
     table = job.gauges
     return reading.read_gauges(
         job.path(table.file),
@@ -177,26 +189,29 @@ def _read_source(job: Job, number: int, table: RainfallTable) -> RainRecord:
         return reading.read_rainfall([job.path(name) for name in table.paths], **options)
 
 
-def _read_basins(job: Job) -> tuple[Basins, tuple[Note, ...]]:
+def read_basins_of(job: Job) -> tuple[Basins, tuple[Note, ...]]:
+    """Return a job's basins as their file has them, and what was remarked."""
     table = job.basins
     return reading.read_basins(job.path(table.file), **table.model_dump(exclude={"file"}))
 
 
-def _edits(job: Job, sources: Sequence[RainRecord]) -> tuple[Edit, ...]:
-    """Return the job's edits with their times in the clock of the first source that has one."""
+def edits_of(job: Job, zone: str, gauges: Sequence[Sequence[str]]) -> tuple[Edit, ...]:
+    """Return the job's edits with their times in a clock, that of the first source that has one.
+
+    ``gauges`` are the gauges of every source, by which the day is known that a bare date names.
+    """
     problems = Problems()
     edits = []
     for number, table in enumerate(job.edit, start=1):
-        edit = attempt(problems, partial(_edit, job, table, number, sources))
+        edit = attempt(problems, partial(_edit, job, table, number, zone, gauges))
         if edit is not None:
             edits.append(edit)
     problems.raise_as(JobError)
     return tuple(edits)
 
 
-def _edit(job: Job, table: EditTable, number: int, sources: Sequence[RainRecord]) -> Edit:
-    zone = next((source.zone for source in sources if not np.isnat(source.ends).any()), "")
-    mine = [job.rainfall[k] for k, source in enumerate(sources) if table.gauge in source.gauges] or job.rainfall
+def _edit(job: Job, table: EditTable, number: int, zone: str, gauges: Sequence[Sequence[str]]) -> Edit:
+    mine = [job.rainfall[k] for k, ids in enumerate(gauges) if table.gauge in ids] or job.rainfall
     days = {rainfall_day_start([source]) for source in mine}
     dated = any(text is not None and len(text) <= len("2031-05-04") for text in (table.start, table.end))
     if dated and len(days) > 1:
@@ -271,7 +286,8 @@ def _storm_times(job: Job, zone: str) -> dict[str, tuple[np.datetime64, np.datet
     return {name: (start, end) for name, (start, end) in windows.items() if start is not None and end is not None}
 
 
-def _catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.float64]]:
+def catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.float64]]:
+    """Return the twelve catch factors of every gauge that has any, by its id."""
     problems = Problems()
     factors = {}
     for gauge, value in job.gauges.catch_factor.items():

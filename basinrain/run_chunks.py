@@ -89,8 +89,8 @@ def run_chunks(
     Raises
     ------
     JobError
-        ``on`` is no such place, its packages are not installed, its scheduler does not answer, or workers are lost. What
-        was finished stays in the store.
+        ``on`` is no such place, its packages are not installed, its scheduler does not answer, or workers are lost.
+        What was finished stays in the store.
     WriteError
         The store's folder cannot be written.
     ValueError

@@ -42,6 +42,7 @@ from basinrain.series.summary import summarise
 from basinrain.series_cautions import series_cautions
 from basinrain.series_check import WET_DEPTH
 from basinrain.series_inputs import SeriesInputs, borders_of, held_inputs
+from basinrain.series_parts import needs_parts, parted_inputs
 from basinrain.series_store import SeriesStore
 from basinrain.units import depth_factor
 
@@ -113,8 +114,8 @@ def run_series(
     [['reweight', 12.0, 0, 1], ['infill', 11.0, 1, 0]]
     """
     job, say = resolved(job, settings), progress or (lambda _: None)
-    given = read_inputs(job, say)
-    inputs = held_inputs(given, infill_options(job).longest_gap)
+    inputs = parted_inputs(job, say) if needs_parts(job) else held_inputs(read_inputs(job, say), _longest_gap(job))
+    given = inputs.given
     grouping, durations = _checked(job, inputs)
     setup, infill, facts, notes = series_setup(job, given, say)
     borders = borders_of(inputs, setup, job.series.memory)
@@ -249,7 +250,7 @@ def largest_storms(job: Job, given: Inputs, say: Report, *, comparison: Comparis
 
     ``comparison`` is that of the infill methods, where it has been made.
     """
-    inputs = held_inputs(given, infill_options(job).longest_gap)
+    inputs = held_inputs(given, _longest_gap(job))
     _checked(job, inputs)
     setup, *_ = series_setup(job, given, say, comparison=comparison)
     first = replace(setup, gaps=setup.gaps[:1], methods=dict(list(setup.methods.items())[:1]))
@@ -260,6 +261,10 @@ def largest_storms(job: Job, given: Inputs, say: Report, *, comparison: Comparis
         say("looking for storms")
         run_chunks(first, inputs.chunks(borders), store)
         return storms_of_series(job, inputs, first, store)
+
+
+def _longest_gap(job: Job) -> float:
+    return infill_options(job).longest_gap
 
 
 def _wet_depth(inputs: SeriesInputs) -> float:

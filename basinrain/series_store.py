@@ -21,8 +21,8 @@ class SeriesStore:
 
     In a folder each array is an ordinary ``.npy`` file. A chunk is finished when all its values are written and a mark
     with their checksums is in place; a run that was killed at any moment goes on from its finished chunks, once their
-    values have been read and their checksums found true. Values are written, never mapped: a full disk is an error where
-    it happens, and what is finished stays.
+    values have been read and their checksums found true. Values are written, never mapped: a full disk is an error
+    where it happens, and what is finished stays.
 
     Make one with :meth:`open`, and close it, or use it in a ``with`` statement.
 

@@ -34,7 +34,7 @@ def small_setup() -> SeriesSetup:
         y=rng.uniform(0, 9000, GAUGES),
         crs="local",
     )
-    strips = [shapely.box(3000 * n, 0, 3000 * (n + 1), 9000) for n in range(BASINS)]
+    strips = np.array([shapely.box(3000 * n, 0, 3000 * (n + 1), 9000) for n in range(BASINS)])
     return SeriesSetup(
         network=network,
         basins=Basins(ids=("west", "middle", "east"), polygons=strips, crs="local"),

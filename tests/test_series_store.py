@@ -26,11 +26,10 @@ def parts_of(k: int) -> dict[tuple[str, str], SeriesPart]:
     parts = {}
     for n, name in enumerate(SERIES):
         shape = (DAY, BASINS)
-        depth = np.full(shape, 100.0 * k + n) + np.arange(BASINS)
+        depth = np.full(shape, 100.0 * k + n) + np.arange(BASINS, dtype=float)
         depth[0, 0] = np.nan
-        parts[name] = SeriesPart(
-            depth, np.full(shape, 1 / (1 + n + k), np.float32), np.full(shape, n + k, dtype=np.uint8)
-        )
+        share = np.full(shape, 1 / (1 + n + k), dtype=np.float32)
+        parts[name] = SeriesPart(depth, share, np.full(shape, n + k, dtype=np.uint8))
     return parts
 
 
@@ -43,13 +42,13 @@ def fill(store: SeriesStore) -> bytes:
 
 @pytest.fixture
 def work(tmp_path: Path) -> Path:
-    """A folder for the series, not there yet."""
+    """Return a folder for the series, not there yet."""
     return tmp_path / "deep" / "work"
 
 
 @pytest.fixture
 def whole(work: Path) -> bytes:
-    """The bytes of a store that was completed in the folder and closed."""
+    """Complete a store in the folder, close it, and return its bytes."""
     with small_store(work) as store:
         return fill(store)
 
@@ -330,7 +329,7 @@ def test_a_folder_that_goes_away_is_an_error_at_the_chunk(work: Path) -> None:
     with small_store(work) as store:
         store.put(0, parts_of(0))
         work.rename(work.parent / "moved")
-        with pytest.raises(WriteError, match="found the folder or a file in it gone; run again; 1 of 12"):
+        with pytest.raises(WriteError, match=r"found the folder or a file in it gone; run again; 1 of 12"):
             store.put(1, parts_of(1))
         assert not work.exists()
     with small_store(work.parent / "moved") as store:
@@ -342,7 +341,7 @@ def test_an_array_that_was_cut_after_the_last_chunk_is_not_read(work: Path) -> N
     with small_store(work) as store:
         fill(store)
         os.truncate(work / "series-0.depth.npy", 500)
-        with pytest.raises(WriteError, match="found series-0.depth.npy cut short; run again; 12 of 12"):
+        with pytest.raises(WriteError, match=r"found series-0\.depth\.npy cut short; run again; 12 of 12"):
             store.depth(*SERIES[0])
 
 
@@ -352,7 +351,7 @@ def test_a_folder_that_cannot_be_made_is_said(tmp_path: Path, what: str) -> None
     (tmp_path / "file").touch()
     folder = tmp_path / "file" if what == "file" else tmp_path / "file" / "work"
     with pytest.raises(
-        WriteError, match="series under way: found (file exists|not a directory); expected a folder that"
+        WriteError, match=r"series under way: found (file exists|not a directory); expected a folder that"
     ):
         small_store(folder)
 

@@ -22,6 +22,7 @@ from basinrain.averaging.thiessen import (
     thiessen_pieces,
     thiessen_weights,
 )
+from basinrain.averaging.thiessen_reweighing import prepare_thiessen_reweigher
 from basinrain.errors import JobError, Problem, nearest_name
 
 __all__ = [
@@ -45,7 +46,7 @@ METHODS: Final[Mapping[str, AveragingMethod]] = MappingProxyType(
         method.name: method
         for method in (
             AveragingMethod("arithmetic", prepare_arithmetic, prepare_reweigher=prepare_arithmetic_reweigher),
-            AveragingMethod("thiessen", prepare_thiessen, partition=True),
+            AveragingMethod("thiessen", prepare_thiessen, partition=True, prepare_reweigher=prepare_thiessen_reweigher),
             AveragingMethod(
                 "idw", prepare_idw, partition=True, lengths=("cell", "radius"), prepare_reweigher=prepare_idw_reweigher
             ),

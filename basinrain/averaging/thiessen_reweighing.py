@@ -20,7 +20,7 @@ from basinrain.averaging.thiessen_epochs import Epoch, Holes, epochs_of
 from basinrain.averaging.thiessen_removal import Removals
 from basinrain.averaging.thiessen_tessellation import Tessellation, edges_among, whole_tessellation
 from basinrain.basins import Basins
-from basinrain.errors import DataError, MethodError
+from basinrain.errors import DataError
 from basinrain.gauges import GaugeNetwork
 
 __all__ = ["ThiessenReweigher", "prepare_thiessen_reweigher"]
@@ -62,7 +62,7 @@ def prepare_thiessen_reweigher(network: GaugeNetwork, basins: Basins) -> Reweigh
     DataError
         Gauges and basins are not in one plane. When it is called: two gauges that report together stand at one place.
     MethodError
-        When it is called: the pieces of a basin do not sum to its area.
+        The pieces of a basin do not sum to its area.
 
     Examples
     --------
@@ -82,8 +82,8 @@ def prepare_thiessen_reweigher(network: GaugeNetwork, basins: Basins) -> Reweigh
     present = np.ones(len(network), dtype=bool)
     try:
         whole = whole_tessellation(network, basins, present, len(basins) - union_is_sum(basins))
-    except (DataError, MethodError):
-        # Gauges that cannot stand together may never report together.
+    except DataError:
+        # Two gauges at one place may never report together.
         return reweigh_by_sets(prepare_thiessen(network, basins), len(basins))
     return ThiessenReweigher(network, basins, whole)
 
@@ -158,14 +158,14 @@ class ThiessenReweigher:
         return self._kept[key]
 
     def _cut_down(self) -> None:
-        """Forget what was used longest ago, and at last what was learned of the whole tessellation."""
-        nobody = np.zeros(len(self._network), dtype=bool).tobytes()
-        while self._nbytes > CACHE_BYTES:
-            oldest = next((key for key in self._kept if key != nobody), None)
-            if oldest is None:
-                self._kept[nobody] = _Kept(self._whole, Removals(self._whole))
+        """Forget what was used longest ago, and at last what was learned of the tessellation in use."""
+        for key, kept in list(self._kept.items()):
+            if self._nbytes <= CACHE_BYTES:
                 break
-            del self._kept[oldest]
+            if kept.tessellation is self._whole or key == next(reversed(self._kept)):
+                self._kept[key] = _Kept(kept.tessellation, Removals(kept.tessellation))
+            else:
+                del self._kept[key]
 
     @property
     def _nbytes(self) -> int:

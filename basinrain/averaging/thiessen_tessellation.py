@@ -28,6 +28,10 @@ DEAR: Final = 12.0
 """A burden (:meth:`Tessellation.burden_of`) above which a tessellation from the basins' outlines costs less."""
 
 
+_ROUNDING: Final = 1e-9
+"""How far inside a circle, as a share of the terms, a point on it may seem to be."""
+
+
 @dataclass(frozen=True, eq=False)
 class Ground:
     """What stays the same whichever gauges report.
@@ -116,7 +120,7 @@ class Tessellation:
         return 16 * len(self.rings.x) + 40 * len(self.basin)
 
     def burden_of(self, group: Sequence[int]) -> float:
-        """Return what sharing out a group's cells costs: comparisons of a corner and a gauge, by corner of all rings."""
+        """Return what sharing out a group's cells costs: comparisons with a gauge, by corner of the tessellation."""
         around = frozenset().union(*(self.neighbours[g] for g in group)).difference(group)
         return float(self.corners_of_gauge[list(group)].sum()) * len(around) / max(len(self.rings.x), 1)
 
@@ -168,15 +172,39 @@ def edges_among(ground: Ground, present: Bools) -> Ints:
     """Return the pairs of present gauges that are neighbours, shape (n_edges, 2), the lower first.
 
     The next nearest gauge after those of a connected group, at a point of the group's cells, is a neighbour of it.
+    Where the triangulation cannot be shown to be right, all gauges are neighbours: slow, and never wrong.
     """
     at = np.flatnonzero(present)
     if len(at) < 2:
         return np.empty((0, 2), dtype=np.int64)
     points, _, _ = with_far_points(np.column_stack((ground.x[at], ground.y[at])), ground.around)
-    corners = Delaunay(points).simplices.astype(np.int64)
+    triangles = Delaunay(points)
+    if not _is_delaunay(points, triangles):
+        return np.column_stack([at[side] for side in np.triu_indices(len(at), 1)])
+    corners = triangles.simplices.astype(np.int64)
     pairs = np.sort(np.concatenate([corners[:, [0, 1]], corners[:, [1, 2]], corners[:, [2, 0]]]), axis=1)
     pairs = np.unique(pairs[pairs[:, 1] < len(at)], axis=0)
     return np.asarray(at[pairs])
+
+
+def _is_delaunay(points: Floats, triangles: Delaunay) -> bool:
+    """Return whether all points are corners, and no triangle's circle holds the corner beyond any of its sides."""
+    corners, beyond = triangles.simplices, triangles.neighbors
+    if len(np.unique(corners)) < len(points):
+        return False
+    one, side = np.nonzero(beyond >= 0)
+    other = beyond[one, side]
+    opposite = corners[other, np.argmax(beyond[other] == one[:, None], axis=1)]
+    # The determinant of Guibas and Stolfi (1985), positive inside the circle of a triangle that turns to the left.
+    arm = points[corners[one]] - points[opposite][:, None, :]
+    square = (arm**2).sum(axis=2)
+    ahead, behind = np.roll(arm, -1, axis=1), np.roll(arm, -2, axis=1)
+    plus, minus = ahead[:, :, 0] * behind[:, :, 1], ahead[:, :, 1] * behind[:, :, 0]
+    inside = (square * (plus - minus)).sum(axis=1)
+    first, second = points[corners[one, 1]] - points[corners[one, 0]], points[corners[one, 2]] - points[corners[one, 0]]
+    turn = np.sign(first[:, 0] * second[:, 1] - first[:, 1] * second[:, 0])
+    size = (square * (np.abs(plus) + np.abs(minus))).sum(axis=1)
+    return bool((inside * turn <= _ROUNDING * size).all())
 
 
 def groups_of(edges: Ints, gauges: Ints) -> list[list[int]]:

@@ -106,12 +106,11 @@ def infill(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes wh
 @_of_job
 @_clear_errors
 def series(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
-    """The whole record of JOB, basin by basin and step by step, while gauges come and go."""
+    """Average the whole record of JOB over its basins, step by step, while gauges come and go."""
     from basinrain.cli.running import run_command
-    from basinrain.cli.series import show
-    from basinrain.series_job import run_series
+    from basinrain.cli.series import compute, show
 
-    run_command("series", run_series, show, job, counted=True, **options)
+    run_command("series", compute, show, job, counted=True, **options)
 
 
 @main.command()

@@ -2,19 +2,30 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 from rich.table import Table
 
 from basinrain.cli.running import console, show_warnings
+from basinrain.jobfile import Job
 from basinrain.report.words import depth_decimals, number_text
 from basinrain.results_series import SeriesRun
+from basinrain.series_job import run_series
 from basinrain.tables import time_text
 from basinrain.units import depth_factor
+from basinrain.writing.series_files import check_formats
 
-__all__ = ["show"]
+__all__ = ["compute", "show"]
 
 _ROWS = 16
 """More rows than this are printed for the union, or the last basin, alone; the files have all."""
+
+
+def compute(job: Job, **options: Any) -> SeriesRun:  # noqa: ANN401 - as run_series takes them
+    """Run the job, once it is known that its series can be written."""
+    check_formats(job.series.formats)
+    return run_series(job, **options)
 
 
 def show(run: SeriesRun) -> None:
@@ -32,18 +43,18 @@ def show(run: SeriesRun) -> None:
     for heading in ("of years", "years", "of steps", "differs %", "observed %", "missing"):
         table.add_column(heading, justify="right")
     shown = set(run.basins.ids[-1:] if len(run.series_means) > _ROWS else run.basins.ids)
-    for row in run.series_means.itertuples():
-        if row.basin in shown:
+    for row in run.series_means.to_dict("records"):
+        if row["basin"] in shown:
             table.add_row(
-                row.basin,
-                row.method,
-                row.gaps,
-                number_text(row.mean_annual, digits),
-                str(row.years),
-                number_text(row.mean_annual_of_steps, digits),
-                number_text(row.difference_percent, 1),
-                number_text(100 * row.observed_share, 0),
-                f"{row.steps_missing:,}",
+                row["basin"],
+                row["method"],
+                row["gaps"],
+                number_text(row["mean_annual"], digits),
+                str(row["years"]),
+                number_text(row["mean_annual_of_steps"], digits),
+                number_text(row["difference_percent"], 1),
+                number_text(100 * row["observed_share"], 0),
+                f"{row['steps_missing']:,}",
             )
     page.print(table)
     if len(shown) < len(run.basins):

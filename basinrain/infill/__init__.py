@@ -12,6 +12,7 @@ from basinrain.infill.normal_ratio import normal_ratio_weights
 from basinrain.infill.normals import suspect_normal_units
 from basinrain.infill.options import SCALES, InfillOptions
 from basinrain.infill.ratio_regression import ratio_regression_weights
+from basinrain.infill.record_filling import Filled, RecordFiller
 from basinrain.infill.record_normals import NormalRatios, normals_from_record
 from basinrain.infill.registry import METHODS, InfillMethod, infill_method
 from basinrain.infill.regression import regression_weights
@@ -25,9 +26,11 @@ __all__ = [
     "Completed",
     "Days",
     "Estimate",
+    "Filled",
     "InfillMethod",
     "InfillOptions",
     "NormalRatios",
+    "RecordFiller",
     "Relations",
     "complete",
     "correlation_weights",

@@ -8,14 +8,12 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import DataError, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.completed import Completed, Estimate
-from basinrain.infill.donors import require_elevations
 from basinrain.infill.filling import GaugeFilling
 from basinrain.infill.gaps import gap_mask, longer_than, over_peak
-from basinrain.infill.normals import require_normals
 from basinrain.infill.options import InfillOptions
+from basinrain.infill.record_filling import RecordFiller, scale_of
 from basinrain.infill.record_normals import NormalRatios
 from basinrain.infill.relations import Relations, relations_of_record
 from basinrain.infill.window import Window
@@ -24,8 +22,7 @@ from basinrain.rainfall import RainRecord, Status
 
 __all__ = ["complete"]
 
-_DAY: Final = np.timedelta64(86400, "s")
-_YEAR: Final = 365 * _DAY
+_YEAR: Final = np.timedelta64(365, "D")
 
 
 def complete(
@@ -59,8 +56,8 @@ def complete(
     ratios : NormalRatios, optional
         Normals from the whole record (:func:`basinrain.infill.normals_from_record`), used instead of the network's.
     trace : bool
-        Whether to keep how every estimate came about. Without, the record is the same, in half the time; estimates and
-        notes are empty.
+        Whether to keep how every estimate came about. Without, the record is the same, in a small part of the time;
+        estimates and notes are empty.
 
     Returns
     -------
@@ -75,6 +72,10 @@ def complete(
         The columns are not the network's gauges, the record was infilled before; normals are missing or not above 0, or
         elevations missing, at a gauge that takes part and needs them; all such problems together, before anything is
         computed.
+
+    See Also
+    --------
+    basinrain.infill.RecordFiller : The same depths for one stretch of a record after the other.
 
     Notes
     -----
@@ -110,70 +111,28 @@ def complete(
     >>> [note.code for note in completed.notes]
     ['gap-over-peak']
     """
-    _check(record, network)
     gaps = gap_mask(record)
     long = longer_than(record, gaps, options.longest_gap) if long is None else gaps & long
     fillable = gaps & ~long
-    needed = options.chosen_method.needs_relations and bool(fillable.any())
-    if needed and relations is None:
+    if relations is None and options.chosen_method.needs_relations and record.gauges == network.ids and fillable.any():
         relations = relations_of_record(record, network, ratios=ratios)
-    window = Window(record, network, options, _scale(record, options), fillable, relations, ratios, trace)
-    _require(window)
-    depth, status = record.depth.copy(), record.status.copy()
+    filler = RecordFiller(network, options, relations=relations, ratios=ratios)
+    filled = filler.fill(record, long, trace=trace)
+    status = record.status.copy()
+    status[filled.filled] = Status.INFILLED
+    completed = replace(record, depth=filled.depth, status=status)
+    if not trace:
+        return Completed(completed, (), ())
+    window = Window(record, network, options, scale_of(record, options), fillable, relations, ratios)
     estimates: list[Estimate] = []
     notes: list[Note] = []
     for g in np.flatnonzero(gaps.any(axis=0)).tolist():
-        filling = GaugeFilling(window, g, long[:, g], depth[:, g])
-        filling.infill()
-        status[gaps[:, g] & ~np.isnan(depth[:, g]), g] = Status.INFILLED
-        estimates += sorted(filling.estimates, key=lambda estimate: estimate.first)
-        notes += filling.notes() if trace else []
-    if trace:
-        notes = [*over_peak(record, gaps, depth), *notes, *_annual_normals(window, estimates)]
-    return Completed(replace(record, depth=depth, status=status), tuple(estimates), tuple(notes))
-
-
-def _require(window: Window) -> None:
-    """Raise one error for all gauges of which the method, or an option, needs to know more."""
-    if not window.fillable.any():
-        return
-    network, options = window.network, window.options
-    taking_part = np.asarray(window.reporting.any(axis=0) | window.fillable.any(axis=0))
-    problems = Problems()
-    try:
-        if options.chosen_method.needs_normals and window.ratios is None:
-            require_normals(network, taking_part, [month or None for month in _months(window)], method=options.method)
-    except DataError as error:
-        problems.extend(error)
-    try:
-        if options.elevation_limit is not None:
-            require_elevations(network, taking_part)
-    except DataError as error:
-        problems.extend(error)
-    problems.raise_as(DataError)
-
-
-def _scale(record: RainRecord, options: InfillOptions) -> str:
-    # A total without times is a storm's, whatever else is asked for.
-    if np.isnat(record.ends).any():
-        return "storm"
-    if options.scale is not None:
-        return options.scale
-    # Where steps are a day or longer, each is the span of its own day.
-    if len(record) and np.median((record.ends - record.starts).astype(np.int64)) >= _DAY.astype(np.int64):
-        return "day"
-    daily = not record.recorders.issuperset(record.gauges) or bool((record.status == Status.SPREAD).any())
-    return "day" if daily else "storm"
-
-
-def _months(window: Window) -> list[int]:
-    """Return the months of the steps and spans that have something to infill, 0 for those without times."""
-    months = set(window.months[window.fillable.any(axis=1)].tolist())
-    if window.scale != "step":
-        for g in np.flatnonzero(window.fillable.any(axis=0)).tolist():
-            spans = window.spans_of(g)
-            months |= set(spans.months[np.logical_or.reduceat(window.fillable[:, g], spans.first)].tolist())
-    return sorted(months)
+        spans = [found.of_gauge(g) for found in filled.spans]
+        told = GaugeFilling(window, g, long[:, g], filled.depth[:, g], spans)
+        estimates += told.estimates
+        notes += told.notes()
+    notes = [*over_peak(record, gaps, filled.depth), *notes, *_annual_normals(window, estimates)]
+    return Completed(completed, tuple(estimates), tuple(notes))
 
 
 def _annual_normals(window: Window, estimates: list[Estimate]) -> list[Note]:
@@ -196,23 +155,3 @@ def _annual_normals(window: Window, estimates: list[Estimate]) -> list[Note]:
             method=window.options.method,
         )
     ]
-
-
-def _check(record: RainRecord, network: GaugeNetwork) -> None:
-    problems = Problems()
-    if record.gauges != network.ids:
-        problems.add(
-            item="rain record",
-            found="columns that are not the network's gauges in their order",
-            expected=", ".join(network.ids),
-            remedy="bring them in order first",
-        )
-    for g in np.flatnonzero((record.status == Status.INFILLED).any(axis=0)):
-        problems.add(
-            item=f"gauge {record.gauges[g]}",
-            found="infilled values",
-            expected="a record as it was observed",
-            remedy="infill from the record as it was read: an infilled value is never a donor",
-            gauge=record.gauges[g],
-        )
-    problems.raise_as(DataError)

@@ -1,9 +1,10 @@
-"""The gaps of one gauge, being infilled."""
+"""How the gaps of one gauge were infilled: every estimate with its donors, and what is to be said of the rest."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from functools import cached_property
+from typing import Final
 
 import numpy as np
 
@@ -11,17 +12,19 @@ from basinrain.infill.beyond import beyond_donors
 from basinrain.infill.completed import Estimate
 from basinrain.infill.gaps import steps_in_words
 from basinrain.infill.relations import AT_LEAST
-from basinrain.infill.spans import EXACT
-from basinrain.infill.window import Bools, Floats, Ints, Spans, Window
+from basinrain.infill.span_filling import Fate, SpanCells
+from basinrain.infill.window import Bools, Floats, Ints, Window
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
-from basinrain.spreading import pattern_shares, share_out
 
 __all__ = ["GaugeFilling"]
 
+_ASKED: Final = 1 << 18
+"""Weights that are asked for together."""
+
 
 class GaugeFilling:
-    """The gaps of one gauge of a window while they are being infilled.
+    """How the gaps of one gauge of a window were infilled.
 
     Parameters
     ----------
@@ -32,160 +35,120 @@ class GaugeFilling:
     long : array of bool, shape (n_steps,)
         Where its gaps are too long to be infilled.
     depth : array of float, shape (n_steps,)
-        Its depths in mm, NaN in the gaps; :meth:`infill` writes into it.
+        Its depths in mm after infill.
+    spans
+        What became of the days, or of the storm, of which it misses more than half.
 
     Examples
     --------
     See :func:`basinrain.infill.complete`, which makes one for every gauge with a gap.
     """
 
-    def __init__(self, window: Window, g: int, long: Bools, depth: Floats) -> None:
+    def __init__(self, window: Window, g: int, long: Bools, depth: Floats, spans: Sequence[SpanCells]) -> None:
         self.estimates: list[Estimate] = []
-        self._window, self._g, self._long, self._depth = window, g, long, depth
+        """Every estimate, by time."""
+        self._window, self._g, self._depth = window, g, depth
         self._gauge = window.record.gauges[g]
         # Steps by what is to be said of them.
         self._left: dict[str, list[Ints]] = {}
         self._raised: list[Ints] = []
         self._evenly: dict[str, list[Ints]] = {}
+        limit = f"longer than {window.options.longest_gap:g} days (longest_gap)"
+        if long.any():
+            self._left[f"the gap is {limit}"] = [np.flatnonzero(long)]
+        by_step = window.fillable[:, g].copy()
+        for cells in spans:
+            self._tell_spans(cells, by_step, limit)
+        self._tell_steps(np.flatnonzero(by_step))
+        self.estimates.sort(key=lambda estimate: estimate.first)
 
-    def infill(self) -> None:
-        """Infill what can be infilled."""
-        limit = f"longer than {self._window.options.longest_gap:g} days (longest_gap)"
-        if self._long.any():
-            self._left[f"the gap is {limit}"] = [np.flatnonzero(self._long)]
-        fillable = self._window.fillable[:, self._g]
-        if not fillable.any():
-            return
-        if self._window.scale == "step":
-            self._infill_steps(np.flatnonzero(fillable))
-            return
-        spans = self._window.spans_of(self._g)
-        length = spans.stop - spans.first
-        missing = np.add.reduceat(fillable.astype(np.int64), spans.first)
-        reported = np.add.reduceat(self._window.reporting[:, self._g].astype(np.int64), spans.first)
-        whole = (missing > 0) & (2 * reported < length)
-        broken = whole & np.logical_or.reduceat(self._long, spans.first)
-        in_broken = np.flatnonzero(fillable & np.repeat(broken, length))
-        if len(in_broken):
-            self._left[f"most of the {self._window.scale} is missing, in part by a gap {limit}"] = [in_broken]
-        by_step = np.flatnonzero(fillable & np.repeat(~whole, length))
-        raised = self._infill_spans(spans, np.flatnonzero(whole & ~broken))
-        self._infill_steps(np.sort(np.concatenate([by_step, raised])))
-
-    def _infill_steps(self, steps: Ints) -> None:
+    def _tell_steps(self, steps: Ints) -> None:
         if not len(steps):
             return
         window = self._window
-        row_of, rows, donors = self._weigh(window.measured[steps], window.months[steps])
-        depths = _weighted_sums(row_of, rows, window.own, steps)
-        known = (rows != 0).any(axis=1)[row_of]
+        known = ~np.isnan(self._depth[steps])
         if not known.all():
             self._leave("reported at the step", steps[~known])
-        self._depth[steps[known]] = depths[known]
-        if not window.trace:
-            return
+        steps = steps[known]
+        donors = self._donors(window.measured[steps], window.months[steps])
         method, gauge = window.options.method, self._gauge
         self.estimates += [
-            Estimate(gauge=gauge, first=s, stop=s + 1, scale="step", depth=d, method=method, donors=donors[r])
-            for s, d, r in zip(steps[known].tolist(), depths[known].tolist(), row_of[known].tolist(), strict=True)
+            Estimate(gauge=gauge, first=s, stop=s + 1, scale="step", depth=d, method=method, donors=weights)
+            for s, d, weights in zip(steps.tolist(), self._depth[steps].tolist(), donors, strict=True)
         ]
 
-    def _infill_spans(self, spans: Spans, chosen: Ints) -> Ints:
-        """Infill the totals of spans; return the steps of those whose total is below what was observed."""
-        if not len(chosen):
-            return np.empty(0, dtype=np.int64)
+    def _tell_spans(self, cells: SpanCells, by_step: Bools, limit: str) -> None:
+        """Tell of some spans, and take those steps from ``by_step`` that were not infilled step by step."""
+        window, fate = self._window, cells.fate
+        unknown = "has values of its own" if window.options.donors_required == 1 else "have values of their own"
+        unknown += f" at every step of the {window.scale}"
+        left = {Fate.UNKNOWN: unknown, Fate.UNKNOWN_CUT: f"{unknown}, totals that reach beyond it left out"}
+        why = {Fate.EVEN_NONE_COMPLETE: f"is complete over the {window.scale}", Fate.EVEN_NONE_WET: "is wet in them"}
+        for k, kind in enumerate(fate.tolist()):
+            missing = self._missing(cells, k)
+            if kind == Fate.RAISED:
+                self._raised.append(missing)
+                continue
+            by_step[missing] = False
+            if kind == Fate.LONG:
+                reason = f"most of the {window.scale} is missing, in part by a gap {limit}"
+                self._left.setdefault(reason, []).append(missing)
+            elif kind in left:
+                self._leave(left[Fate(kind)], missing)
+            elif kind in why:
+                self._evenly.setdefault(f"no recording gauge {why[Fate(kind)]}", []).append(missing)
+        known = fate >= Fate.SPREAD
+        donors = self._donors(cells.donating[known], cells.month[known])
+        self.estimates += [
+            Estimate(
+                gauge=self._gauge,
+                first=first,
+                stop=stop,
+                scale=window.scale,
+                depth=total,
+                method=window.options.method,
+                donors=weights,
+            )
+            for first, stop, total, weights in zip(
+                *(values[known].tolist() for values in (cells.first, cells.stop, cells.total)), donors, strict=True
+            )
+        ]
+
+    def _missing(self, cells: SpanCells, k: int) -> Ints:
+        first = int(cells.first[k])
+        return np.flatnonzero(self._window.fillable[first : cells.stop[k], self._g]) + first
+
+    def _donors(self, reporting: Bools, months: Ints) -> list[Mapping[str, float]]:
+        """Return the donor weights, by gauge id, of cases of reporting gauges; cases that are alike share a mapping."""
         window = self._window
-        row_of, rows, donors = self._weigh(spans.donating[chosen], spans.months[chosen])
-        totals = _weighted_sums(row_of, rows, spans.totals, chosen)
-        known = (rows != 0).any(axis=1)[row_of]
-        if not known.all():
-            own = "has values of its own" if window.options.donors_required == 1 else "have values of their own"
-            what = f"{own} at every step of the {window.scale}"
-            beyond = ", totals that reach beyond it left out"
-            cut = (spans.complete & spans.cut)[chosen].any(axis=1)
-            for words, unknown in ((what, ~known & ~cut), (what + beyond, ~known & cut)):
-                if unknown.any():
-                    self._leave(words, np.concatenate([self._missing(spans, k) for k in chosen[unknown].tolist()]))
-        observed = spans.totals[chosen, self._g]
-        low = known & (totals < observed - EXACT * np.maximum(observed, 1))
-        raised = [self._missing(spans, k) for k in chosen[low].tolist()]
-        self._raised += raised
-        method, gauge, scale = window.options.method, self._gauge, window.scale
-        for k, total, seen, row in zip(
-            *(a[known & ~low].tolist() for a in (chosen, totals, observed, row_of)), strict=True
-        ):
-            first, stop = int(spans.first[k]), int(spans.stop[k])
-            self._spread(spans, k, max(total - seen, 0.0))
-            if window.trace:
-                self.estimates.append(
-                    Estimate(
-                        gauge=gauge, first=first, stop=stop, scale=scale, depth=total, method=method, donors=donors[row]
-                    )
-                )
-        return np.concatenate(raised) if raised else np.empty(0, dtype=np.int64)
-
-    def _missing(self, spans: Spans, k: int) -> Ints:
-        first = int(spans.first[k])
-        return np.flatnonzero(self._window.fillable[first : spans.stop[k], self._g]) + first
-
-    def _spread(self, spans: Spans, k: int, rest: float) -> None:
-        """Give ``rest`` mm to the missing steps of span ``k``, in one recorder's pattern."""
-        if spans.stop[k] - spans.first[k] == 1:
-            self._depth[spans.first[k]] = rest
-            return
-        missing = self._missing(spans, k)
-        complete_recorders = np.flatnonzero(self._window.recorders & spans.measured[k])
-        wet = complete_recorders[self._window.own[np.ix_(missing, complete_recorders)].sum(axis=0) > 0]
-        shares = None
-        if len(wet):
-            nearest = min(wet.tolist(), key=self._near_rank.__getitem__)
-            shares = pattern_shares(self._window.own[missing][:, [nearest]], np.ones(1))
-        elif rest > 0 and len(missing) > 1:
-            why = "is wet in them" if len(complete_recorders) else f"is complete over the {self._window.scale}"
-            self._evenly.setdefault(f"no recording gauge {why}", []).append(missing)
-        even = np.full(len(missing), 1 / len(missing))
-        self._depth[missing] = share_out(rest, even if shares is None else shares)
-
-    @cached_property
-    def _near_rank(self) -> Ints:
-        """The rank of every gauge by nearness."""
-        order = self._window.network.nearest_first(self._window.distances[self._g])
-        rank = np.empty(len(order), dtype=np.int64)
-        rank[order] = np.arange(len(order))
-        return rank
-
-    def _weigh(self, reporting: Bools, months: Ints) -> tuple[Ints, Floats, list[Mapping[str, float]]]:
-        """Return for cases of reporting gauges, (n, n_gauges), the row of each, the different rows, and these by id.
-
-        The last are empty where nothing is traced.
-        """
-        window = self._window
+        if not len(reporting):
+            return []
         if not window.options.chosen_method.needs_normals:
             months = np.zeros_like(months)
         keys = np.column_stack([np.packbits(reporting, axis=1), months.astype(np.uint8)])
         # Rows as single values of so many bytes, which compare many times as fast as rows do.
         whole = np.ascontiguousarray(keys).view(np.dtype((np.void, keys.shape[1])))
-        _, case, row_of = np.unique(whole.ravel(), return_index=True, return_inverse=True)
-        rows = np.zeros((len(case), len(window.network)))
-        for month in np.unique(months[case]):
-            mine = months[case] == month
-            rows[mine] = window.options.weights(
-                window.network,
-                self._g,
-                reporting[case[mine]],
-                month=int(month) or None,
-                distances=window.distances[self._g],
-                relations=window.relations,
-                ratios=window.ratios,
-            )
-        if not window.trace:
-            return row_of.ravel(), rows, []
+        _, case, which = np.unique(whole.ravel(), return_index=True, return_inverse=True)
         ids = window.network.ids
-        donors: list[Mapping[str, float]] = [{} for _ in case]
-        at, columns = np.nonzero(rows)
-        for row, column, weight in zip(at.tolist(), columns.tolist(), rows[at, columns].tolist(), strict=True):
-            donors[row][ids[column]] = weight  # type: ignore[index]
-        return row_of.ravel(), rows, donors
+        different: list[dict[str, float]] = [{} for _ in case]
+        for month in np.unique(months[case]):
+            mine = np.flatnonzero(months[case] == month)
+            for begin in range(0, len(mine), max(_ASKED // len(ids), 1)):
+                some = mine[begin : begin + max(_ASKED // len(ids), 1)]
+                rows = window.options.weights(
+                    window.network,
+                    self._g,
+                    reporting[case[some]],
+                    month=int(month) or None,
+                    distances=window.distances[self._g],
+                    relations=window.relations,
+                    ratios=window.ratios,
+                )
+                at, columns = np.nonzero(rows)
+                found = zip(some[at].tolist(), columns.tolist(), rows[at, columns].tolist(), strict=True)
+                for row, column, weight in found:
+                    different[row][ids[column]] = weight
+        return [different[k] for k in which.ravel().tolist()]
 
     def _leave(self, what: str, steps: Ints) -> None:
         required = self._window.options.donors_required
@@ -257,12 +220,6 @@ class GaugeFilling:
             for reason, steps in self._evenly.items()
         ]
         return notes
-
-
-def _weighted_sums(row_of: Ints, rows: Floats, depths: Floats, at: Ints) -> Floats:
-    """Return ``Σ_i rows[row_of, i] depths[at, i]``, shape (n,), over the columns that have any weight."""
-    used = np.flatnonzero((rows != 0).any(axis=0))
-    return np.asarray((rows[:, used][row_of] * depths[np.ix_(at, used)]).sum(axis=1), dtype=float)
 
 
 def _words(record: RainRecord, steps: list[Ints]) -> str:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from enum import IntEnum
 from typing import Final, Protocol
 
@@ -116,6 +116,18 @@ class SpanCells:
     total: Floats
     fate: npt.NDArray[np.uint8]
     donating: Bools
+
+    def of_gauge(self, g: int) -> SpanCells:
+        """Return those of one gauge."""
+        mine = self.gauge == g
+        return SpanCells(*(getattr(self, field.name)[mine] for field in fields(self)))
+
+    @classmethod
+    def none(cls, n_gauges: int) -> SpanCells:
+        """Return that there is none."""
+        empty = np.empty(0, dtype=np.int64)
+        fate, donating = np.empty(0, dtype=np.uint8), np.empty((0, n_gauges), dtype=bool)
+        return cls(empty, empty, empty, empty, np.empty(0), fate, donating)
 
 
 def intervals_of(first: Ints, absent: Bools) -> Intervals:
@@ -270,7 +282,7 @@ def fill_spans(
         by_step[steps, g] = block.fillable[steps, g] & ~whole[row, g]
     row, gauge = np.nonzero(whole)
     if not len(row):
-        return by_step, _no_cells(block)
+        return by_step, SpanCells.none(block.depth.shape[1])
     depth = np.where(block.own, block.depth, 0.0)
     own_totals = np.asarray(span_sums(depth, intervals), dtype=float)
     complete = span_sums(block.own, intervals, every=True)
@@ -308,9 +320,7 @@ def fill_spans(
     back = cells.among(raised)
     by_step[back.step, gauge[back.cell]] = True
     _share_out(depth, cells.among(known & ~raised), gauge, donor, rest, out)
-    return by_step, SpanCells(
-        gauge, intervals.first[row], intervals.stop[row], months[row], total, fate, donating[row]
-    )
+    return by_step, SpanCells(gauge, intervals.first[row], intervals.stop[row], months[row], total, fate, donating[row])
 
 
 @dataclass(frozen=True, eq=False)
@@ -401,16 +411,3 @@ def _cut(totals: KnownTotals, depth: Floats, intervals: Intervals) -> Bools:
         for first, stop in zip(intervals.first[n:].tolist(), intervals.stop[n:].tolist(), strict=True)
     ]
     return np.concatenate([of_spans, *of_parts])
-
-
-def _no_cells(block: Block) -> SpanCells:
-    none = np.empty(0, dtype=np.int64)
-    return SpanCells(
-        none,
-        none,
-        none,
-        none,
-        np.empty(0),
-        np.empty(0, dtype=np.uint8),
-        np.empty((0, block.depth.shape[1]), dtype=bool),
-    )

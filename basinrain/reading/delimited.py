@@ -319,14 +319,14 @@ def _frame(
     cut = report_uneven(rows, lines, n_columns, separator, problems)
     if not rows or not isinstance(rows[0], str):
         padded = [[*row, *[""] * (n_columns - len(row))] for row in cut]
-        return pd.DataFrame(padded, columns=range(n_columns), dtype=str)
+        return pd.DataFrame(padded, columns=range(n_columns), dtype=object)
     return pd.read_csv(
         io.StringIO("\n".join(str(row) for row in cut)),
         sep=separator,
         header=None,
         names=list(range(n_columns)),
         index_col=False,
-        dtype=str,
+        dtype=object,  # plain strings: three times as fast as strings of Arrow
         na_filter=False,
         skip_blank_lines=False,
         skipinitialspace=True,

@@ -8,7 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from types import MappingProxyType
-from typing import Any, Final, NamedTuple
+from typing import Any, Final, NamedTuple, TypeAlias
 
 import numpy as np
 import numpy.typing as npt
@@ -21,7 +21,7 @@ from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.intervals import DAY, Interval
 from basinrain.units import depth_factor
 
-__all__ = ["MARKED", "DepthCells", "DepthRules", "Fault", "depth_rules", "greatest_depth", "number_depths"]
+__all__ = ["MARKED", "DepthCells", "DepthRules", "Fault", "Judged", "depth_rules", "greatest_depth", "number_depths"]
 
 MARKED: Final[Mapping[str, Status]] = MappingProxyType(
     {
@@ -56,6 +56,9 @@ class _Cell(NamedTuple):
     status: Status
     fault: Fault | None = None
 
+
+Judged: TypeAlias = dict[tuple[str, str], _Cell]
+"""Texts and marks of cells, and what they are."""
 
 _MISSING: Final = _Cell(np.nan, Status.MISSING)
 
@@ -168,7 +171,7 @@ def depth_rules(
         factor=factor,
         missing_texts=texts,
         missing_numbers=frozenset(filter(np.isfinite, map(_number, texts))),
-        marks=MappingProxyType(marks),
+        marks=marks,
         implausible=_implausible(interval),
         least=least * factor,
     )
@@ -209,6 +212,15 @@ def _implausible(interval: Interval | None) -> float:
 class DepthCells:
     """Reads the depth cells of one file; remembers every text that it has judged.
 
+    Parameters
+    ----------
+    table
+        The file's cells, or some of its rows.
+    rules
+        How to understand them.
+    judged
+        What was judged in other rows of the file; it takes what is judged here.
+
     Examples
     --------
     >>> rules = depth_rules(
@@ -223,10 +235,10 @@ class DepthCells:
     (5, "'wet'")
     """
 
-    def __init__(self, table: DelimitedTable, rules: DepthRules) -> None:
+    def __init__(self, table: DelimitedTable, rules: DepthRules, *, judged: Judged | None = None) -> None:
         self._table = table
         self._rules = rules
-        self._judged: dict[tuple[str, str], _Cell] = {}
+        self._judged: Judged = {} if judged is None else judged
         # The longest mark first: "EE" is not "E" after an E. A figure behind a number belongs to the number.
         self._suffixes = sorted((m for m in rules.marks if not m[0].isdigit()), key=lambda mark: (-len(mark), mark))
 
@@ -273,6 +285,8 @@ class DepthCells:
         return depth[codes], status[codes], faults
 
     def _judge(self, keys: list[tuple[str, str]], *, suffixed: bool) -> None:
+        if not keys:
+            return
         parts = [self._split(text) if suffixed else (text, mark) for text, mark in keys]
         frame = pd.DataFrame({"depth": pd.Series([text for text, _ in parts], dtype=str)})
         values, bad = numbers(replace(self._table, columns=("depth",), frame=frame), "depth")

@@ -32,6 +32,8 @@ _BUFFER: Final = 1 << 16
 
 _Role = Literal["time", "depth", "label"]
 
+_FLOATS: Final = {"float": "float32", "double": "float64"}
+
 _LONG: Final[Mapping[str, tuple[tuple[str, ...], _Role]]] = {
     "gauge": (GAUGE_NAMES, "label"),
     "time": (TIME_NAMES, "time"),
@@ -99,6 +101,8 @@ class ParquetRows:
         What the columns in use hold.
     group_starts : array of int, shape (n_groups + 1,)
         The first row of every row group, and the number of rows.
+    numbers_of
+        The columns of floating numbers, ``"float32"`` or ``"float64"``.
     decimal
         Of numbers in text.
     """
@@ -107,6 +111,7 @@ class ParquetRows:
     columns: tuple[str, ...]
     roles: Mapping[str, _Role]
     group_starts: npt.NDArray[np.int64]
+    numbers_of: Mapping[str, str]
     decimal: str = "."
 
     @property
@@ -134,6 +139,22 @@ class ParquetRows:
             The file is gone, has changed, or is damaged.
         """
         names = list(self.roles) if only is None else [name for name in self.roles if name in only]
+        for row, batch in self._batches(first, stop, names):
+            yield row, self.as_table(batch, row)
+
+    def all_numbers(self, names: Sequence[str]) -> bool:
+        """Return whether columns hold numbers of the same size, so that :meth:`numbers` can read them."""
+        return len({self.numbers_of.get(name, "") for name in names}) == 1 and names[0] in self.numbers_of
+
+    def numbers(self, first: int, stop: int, names: Sequence[str]) -> Iterator[tuple[int, npt.NDArray[Any]]]:
+        """Yield the numbers of columns, NaN where there is none, as :meth:`tables` yields tables."""
+        for row, batch in self._batches(first, stop, list(names)):
+            values = np.empty((batch.num_rows, len(names)), dtype=self.numbers_of[names[0]])
+            for k, name in enumerate(names):
+                values[:, k] = batch.column(name).to_numpy(zero_copy_only=False)
+            yield row, values
+
+    def _batches(self, first: int, stop: int, names: list[str]) -> Iterator[tuple[int, Any]]:
         begin = int(np.searchsorted(self.group_starts, first, "right")) - 1
         end = int(np.searchsorted(self.group_starts, stop, "left"))
         row = int(self.group_starts[begin])
@@ -143,7 +164,7 @@ class ParquetRows:
             for batch in file.iter_batches(size, row_groups=list(range(begin, end)), columns=names):
                 low, high = max(first - row, 0), min(stop - row, batch.num_rows)
                 if low < high:
-                    yield row + low, self.as_table(batch.slice(low, high - low), row + low)
+                    yield row + low, batch.slice(low, high - low)
                 row += batch.num_rows
 
     def as_table(self, content: Any, first: int) -> DelimitedTable:  # noqa: ANN401 - pyarrow has no types
@@ -206,7 +227,8 @@ def open_parquet(path: Path, *, layout: str, columns: Mapping[str, str]) -> Parq
                 column=name,
             )
     problems.raise_as(ReadError)
-    return ParquetRows(FileMark.of(path), tuple(names), roles, np.cumsum([0, *sizes], dtype=np.int64))
+    floats = {name: _FLOATS[kind] for name in roles if (kind := str(schema.field(name).type)) in _FLOATS}
+    return ParquetRows(FileMark.of(path), tuple(names), roles, np.cumsum([0, *sizes], dtype=np.int64), floats)
 
 
 def _roles(

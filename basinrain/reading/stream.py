@@ -147,7 +147,11 @@ class RecordStream:
         bounds = self.grid.bounds(numbers)
         sources = [part for source in self.sources if (part := source.within(bounds[0], bounds[-1])) is not None]
         placed = [place(source, self.grid) for source in sources]
-        depth, status = merge_sources(sources, placed, self.network.ids, int(numbers[0]), bounds)
+        whole = len(placed) == 1 and len(placed[0].depth) == len(numbers) - 1
+        if whole and sources[0].gauges == self.network.ids:
+            depth, status = placed[0].depth, placed[0].status
+        else:
+            depth, status = merge_sources(sources, placed, self.network.ids, int(numbers[0]), bounds)
         status[status == ABSENT] = Status.MISSING
         unused = take_out_of_service(self.network, depth, status, bounds, [])
         record = RainRecord(

@@ -13,9 +13,10 @@ from basinrain.errors import Problems
 from basinrain.rainfall import Status
 from basinrain.reading.blocks import Block
 from basinrain.reading.delimited import DelimitedTable
-from basinrain.reading.depths import DepthRules
+from basinrain.reading.depths import DepthRules, Judged, number_depths
 from basinrain.reading.long import depth_column
 from basinrain.reading.netcdf import NetcdfRows
+from basinrain.reading.parquet import ParquetRows
 from basinrain.reading.wide import wide_cells
 
 __all__ = ["LongFile", "NetcdfFile", "Presence", "Rows", "StreamFile", "WideFile"]
@@ -115,9 +116,27 @@ class WideFile:
     def read(self, first: int, stop: int, problems: Problems) -> Block:
         """Return the depths of some times."""
         depth, status = _blank(stop - first, len(self.gauges))
-        for row, table in self.rows.tables(first, stop, only=(self.time, *self.gauges)):
-            at = slice(row - first, row - first + len(table.lines))
-            depth[at], status[at] = wide_cells(table, self.gauges, self.time, self.depths, problems)
+        judged: Judged = {}
+        if isinstance(self.rows, ParquetRows) and self.rows.all_numbers(self.gauges):
+            for row, values in self.rows.numbers(first, stop, self.gauges):
+                at = slice(row - first, row - first + len(values))
+                depth[at], status[at], faults = number_depths(values, self.depths)
+                for flat, cell in faults:
+                    step, g = divmod(flat, len(self.gauges))
+                    problems.add(
+                        item=f"gauge {self.gauges[g]}",
+                        found=cell.found,
+                        expected=cell.expected,
+                        remedy=cell.remedy,
+                        line=row + step + 1,
+                        column=self.gauges[g],
+                        gauge=self.gauges[g],
+                        time=str(self.ends[row + step]),
+                    )
+        else:
+            for row, table in self.rows.tables(first, stop, only=(self.time, *self.gauges)):
+                at = slice(row - first, row - first + len(table.lines))
+                depth[at], status[at] = wide_cells(table, self.gauges, self.time, self.depths, problems, judged=judged)
         return Block(self.file, self.gauges, self.ends[first:stop], self.lines[first:stop], depth, status, None, {})
 
 

@@ -11,7 +11,7 @@ from basinrain.errors import Problems
 from basinrain.reading.blocks import TIME_NAMES, Block
 from basinrain.reading.columns import find_column
 from basinrain.reading.delimited import DelimitedTable
-from basinrain.reading.depths import DepthCells, DepthRules
+from basinrain.reading.depths import DepthCells, DepthRules, Judged
 from basinrain.reading.order import check_order
 from basinrain.reading.stamps import StampRules, read_stamps
 
@@ -90,12 +90,21 @@ def read_wide(
 
 
 def wide_cells(
-    table: DelimitedTable, gauges: Sequence[str], time: str, rules: DepthRules, problems: Problems
+    table: DelimitedTable,
+    gauges: Sequence[str],
+    time: str,
+    rules: DepthRules,
+    problems: Problems,
+    *,
+    judged: Judged | None = None,
 ) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.uint8]]:
-    """Return depth and status of the gauges' columns, their faulty cells reported by gauge, line and time."""
+    """Return depth and status of the gauges' columns, their faulty cells reported by gauge, line and time.
+
+    ``judged`` takes and gives what is known of the texts of other rows of the file.
+    """
     depth = np.empty((len(table.lines), len(gauges)))
     status = np.empty((len(table.lines), len(gauges)), dtype=np.uint8)
-    reader = DepthCells(table, rules)
+    reader = DepthCells(table, rules, judged=judged)
     for place, gauge in enumerate(gauges):
         depth[:, place], status[:, place], wrong = reader.column(gauge)
         for row, cell in wrong:

@@ -10,7 +10,7 @@ from matplotlib.figure import Figure
 from matplotlib.ticker import FixedLocator, FuncFormatter, LogLocator, NullFormatter, NullLocator
 
 from basinrain.report import series_names
-from basinrain.report.figures import HALF_WIDTH, LINES, Picture, figure_style, to_svg
+from basinrain.report.figures import HALF_WIDTH, LINES, MARKS, Picture, figure_style, to_svg
 from basinrain.report.greatest_list import duration_words
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.results_series import SeriesRun
@@ -21,8 +21,8 @@ __all__ = ["duration_pictures"]
 _HEIGHT, _LEFT, _RIGHT, _FOOT = 2.9, 0.52, 0.14, 0.44  # inches
 _APART: Final = 17.0  # points between labels of the axis
 _LINE: Final = 0.145
-_GREYS: Final = ("black", "#7b848a", "#4a545b")
-_MARKS: Final = ("o", "s", "^")
+_GREYS: Final = ("black", "#5a6268", "#7b848a", "black")
+_CURVES: Final = 4
 
 Floats = npt.NDArray[np.float64]
 
@@ -35,7 +35,10 @@ def duration_pictures(run: SeriesRun) -> list[Picture]:
     b, mm = series_names.lead_basin(run), depth_factor(run.depth_unit)
     seconds = first.durations.astype("timedelta64[s]").astype(float)
     kinds = {
-        "sliding": (first.sliding.depth[:, b] / mm, {"linestyle": "-", "color": "black", "marker": "o", "markersize": 4.2, "markerfacecolor": "white"}),
+        "sliding": (
+            first.sliding.depth[:, b] / mm,
+            {"linestyle": "-", "color": "black", "marker": "o", "markersize": 4.2, "markerfacecolor": "white"},
+        ),
         "tied to the clock": (
             first.aligned.depth[:, b] / mm,
             {"linestyle": LINES[1], "color": "#5a6268", "marker": "s", "markersize": 3.2, "markerfacecolor": "black"},
@@ -57,29 +60,38 @@ def duration_pictures(run: SeriesRun) -> list[Picture]:
             caption=f"Basin {basin}: greatest depths by {one}, both axes logarithmic.",
         )
     ]
-    if len(run.setup.series) > 1:
-        names = series_names.names(run)
-        several: dict[str, tuple[Floats, dict[str, Any]]] = {}
-        methods = list(run.setup.methods)
-        for series in series_names.listed(run):
+    several = _beside(run)
+    if len(several) > 1:
+        gaps = run.setup.gaps[0]
+        curves: dict[str, tuple[Floats, dict[str, Any]]] = {}
+        for k, (label, series) in enumerate(several.items()):
             found = run.summaries[series].greatest
             if found is not None:
-                p, m = run.setup.gaps.index(series[0]), methods.index(series[1])
-                look = {"linestyle": LINES[m % len(LINES)], "color": _GREYS[p % 3], "marker": _MARKS[p % 3]}
-                look |= {"markersize": 3.2, "markerfacecolor": "white", "linewidth": 0.9}
-                several[names[series]] = (found.sliding.depth[:, b] / mm, look)
+                look = {"linestyle": LINES[k % len(LINES)], "color": _GREYS[k % len(_GREYS)], "linewidth": 1.0}
+                curves[label] = (found.sliding.depth[:, b] / mm, {**look, **MARKS[k % len(MARKS)], "markersize": 3.4})
+        every = (
+            "policy" if len(run.setup.methods) == 1 else "method" + (f" ('{gaps}')" if len(run.setup.gaps) > 1 else "")
+        )
         pictures.append(
             _picture(
                 run,
                 words,
                 seconds,
-                several,
+                curves,
                 name="duration-series",
-                title=f"Greatest depths of basin {basin} by duration and series",
-                caption=f"Basin {basin}: greatest depths in sliding windows by every series.",
+                title=f"Greatest depths of basin {basin} by duration and {every}",
+                caption=f"Basin {basin}: greatest depths in sliding windows by every {every}.",
             )
         )
     return pictures
+
+
+def _beside(run: SeriesRun) -> dict[str, series_names.Series]:
+    """Return the series that are drawn side by side: the methods by the first policy, or the only one's policies."""
+    methods, gaps = list(run.setup.methods), run.setup.gaps
+    if len(methods) > 1:
+        return {inline(method, 24): (gaps[0], method) for method in methods[:_CURVES]}
+    return {policy: (policy, methods[0]) for policy in gaps}
 
 
 def _picture(
@@ -92,12 +104,14 @@ def _picture(
     title: str,
     caption: str,
 ) -> Picture:
-    columns = 2 if max(map(len, curves)) < 24 else 1
-    head = 0.12 + _LINE * -(-len(curves) // columns)
-    total = _HEIGHT + max(0.0, head - 0.4)
-    figure_size = (HALF_WIDTH, total)
+    head = 0.12 + 2 * _LINE
+    # Durations longer than the record have no depth.
+    last = 1 + max(int(np.flatnonzero(depth > 0)[-1]) for depth, _ in curves.values() if (depth > 0).any())
+    words, seconds = words[:last], seconds[:last]
+    curves = {label: (depth[:last], look) for label, (depth, look) in curves.items()}
+    total = _HEIGHT
     with figure_style():
-        figure = Figure(figsize=figure_size)
+        figure = Figure(figsize=(HALF_WIDTH, total))
         axes = figure.add_axes(
             (_LEFT / HALF_WIDTH, _FOOT / total, 1 - (_LEFT + _RIGHT) / HALF_WIDTH, 1 - (_FOOT + head) / total)
         )
@@ -123,7 +137,7 @@ def _picture(
         figure.legend(
             loc="upper left",
             bbox_to_anchor=(0.02, 1 - 0.04 / total),
-            ncols=columns,
+            ncols=2,
             columnspacing=1.3,
             handletextpad=0.5,
             handlelength=3.2,

@@ -37,7 +37,7 @@ def edit_table(rows: Sequence[Mapping[str, Any]], *, depth_unit: str) -> Table |
                 str(row["reason"]),
                 str(row["by"]),
                 _time(row["date"]),
-                str(row["steps_changed"]),
+                DASH if row["steps_changed"] is None else str(row["steps_changed"]),
                 _depth(row["depth_before"], mm, depth_unit),
                 _depth(row["depth_after"], mm, depth_unit),
             )

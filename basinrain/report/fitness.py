@@ -15,8 +15,8 @@ from basinrain.results_series import SeriesRun
 __all__ = ["Fitness", "fitness"]
 
 _NOT_SCREENED: Final = (
-    "The record was not screened: it was read chunk by chunk, and the checks look at a record as a whole. Screen it with "
-    "basinrain screen, some years at a time where it is too large."
+    "The record was not screened: it was read chunk by chunk, and the checks look at a record as a whole. Screen it "
+    "with basinrain screen, some years at a time where it is too large."
 )
 
 

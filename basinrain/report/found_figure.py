@@ -91,16 +91,19 @@ def _picture(run: SeriesRun, ranked: RankedEvent, depth: Floats, share: Floats, 
             fontsize=8,
             fontweight="bold",
         )
-        peak = f"{depth_text(event.peak / depth_factor(run.depth_unit), run.depth_unit)}, ending {when_text(event.peak_end)}"
+        peak = depth_text(event.peak / depth_factor(run.depth_unit), run.depth_unit)
         svg = to_svg(
             figure,
             f"found-{ranked.rank}",
             inline(f"Storm {ranked.rank} of basin {found.basin}"),
-            inline(f"From {when_text(event.start)} to {when_text(event.end)}, {total}; greatest step {peak}."),
+            inline(
+                f"From {when_text(event.start)} to {when_text(event.end)}, {total}; greatest step {peak}, ending "
+                f"{when_text(event.peak_end)}."
+            ),
         )
     caption = (
-        f"Storm {ranked.rank} of basin {found.basin} by {series_names.series_word((found.gaps, found.method))}; below, the "
-        "share of the weight on gauges that report."
+        f"Storm {ranked.rank} of basin {found.basin} by {series_names.series_word((found.gaps, found.method))}; below, "
+        "the share of the weight on gauges that report."
     )
     if together > 1:
         caption += f" A bar adds up {together} steps."

@@ -25,7 +25,6 @@ from basinrain.report.words import (
 from basinrain.results_series import SeriesRun
 from basinrain.series.dry_gap import DryGap
 from basinrain.series.events import TOTAL, RankedEvent
-from basinrain.series.steps import in_words
 from basinrain.units import depth_factor
 
 __all__ = ["LISTED", "found_sentences", "found_tables", "incomplete_table"]
@@ -41,12 +40,11 @@ def found_sentences(run: SeriesRun) -> list[str]:
     found = run.storms
     if np.isnat(found.dry_gap) or any(note.code == "storms-not-sought" for note in found.notes):
         return ["No storms were sought: the record's steps are not of one length that divides a day."]
-    wet = depth_text(found.wet_depth / depth_factor(run.depth_unit), run.depth_unit)
-    if found.wet_depth / depth_factor(run.depth_unit) < 10.0 ** -(2 if run.depth_unit == "in" else 1):
-        wet = f"{found.wet_depth / depth_factor(run.depth_unit):.3g}"
-    gap = _length(found.dry_gap)
+    wet = f"{found.wet_depth / depth_factor(run.depth_unit):.3g}"
+    gap = series_names.length_text(found.dry_gap)
+    series = series_names.series_word((found.gaps, found.method))
     sentences = [
-        f"Storms were sought in the series of basin {found.basin} by {series_names.series_word((found.gaps, found.method))}. "
+        f"Storms were sought in the series of basin {found.basin} by {series}. "
         f"A step is wet from {wet} {unit_text(run.depth_unit)} on; storms are separated by a dry time of {gap} or more"
         + ("." if found.test is None else ", which was found by a test.")
     ]
@@ -55,14 +53,16 @@ def found_sentences(run: SeriesRun) -> list[str]:
         sentences.append(_test(found.test))
     elif found.dry_gap < step:
         sentences.append(
-            f"The record's step of {_length(step)} is longer than that: any dry step separates, and shorter dry times "
-            "are not seen."
+            f"The record's step of {series_names.length_text(step)} is longer than that: any dry step separates, and "
+            "shorter dry times are not seen."
         )
     number = len(found.ranking.complete) + len(found.ranking.incomplete)
     if not number:
         sentences.append("No step of the series is wet: there is no storm.")
         return sentences
-    by = "all that fell in them" if found.ranking.by == TOTAL else f"the greatest depth in {step_text(found.ranking.by)}"
+    by = (
+        "all that fell in them" if found.ranking.by == TOTAL else f"the greatest depth in {step_text(found.ranking.by)}"
+    )
     sentences.append(
         f"{counted(number, 'storm was', 'storms were')} found; ranked by {by}. "
         + (
@@ -75,19 +75,17 @@ def found_sentences(run: SeriesRun) -> list[str]:
     return sentences
 
 
-def _length(length: np.timedelta64) -> str:
-    return step_text(in_words(int(length / np.timedelta64(1, "s"))))
-
-
 def _test(test: DryGap) -> str:
     k = int(np.flatnonzero(test.candidates == test.gap)[0])
+    spells = number_text(int(test.spells[k]), 0, grouped=True)
     text = (
         "It is the shortest for which the dry times between storms may be exponential (Restrepo-Posada and Eagleson "
-        f"1982): the coefficient of variation of the {number_text(int(test.spells[k]), 0, grouped=True)} dry spells of at "
-        f"least {_length(test.gap)} is {number_text(float(test.cv[k]), 2)}"
+        f"1982): the coefficient of variation of the {spells} dry spells of at least "
+        f"{series_names.length_text(test.gap)} is {number_text(float(test.cv[k]), 2)}"
     )
     if k:
-        text += f", of those of at least {_length(test.candidates[k - 1])} {number_text(float(test.cv[k - 1]), 2)}"
+        shorter = series_names.length_text(test.candidates[k - 1])
+        text += f", of those of at least {shorter} {number_text(float(test.cv[k - 1]), 2)}"
     text += f"; {counted(test.left_out, 'spell is', 'spells are')} left out since their length is not known."
     if test.at_step:
         text += " That is the record's step already: the gap may be shorter than the steps can show."
@@ -137,14 +135,17 @@ def _ranked(run: SeriesRun) -> Table:
             )
         )
     notes = [
-        f"Times are in {zone_text(run.record.zone)}. Observed: mean share of the weight on gauges that report. Before: "
-        f"depth in the 5, 10 and 30 days that end with the storm's start; {DASH} where a step in them has no number or "
-        "lies before the record."
+        f"Times are in {zone_text(run.record.zone)}.",
+        "Observed: mean share of the weight on gauges that report.",
+        (
+            "Before the storm: depth in the 5, 10 and 30 days that end with its start; "
+            f"{DASH} where a step in them has no number or lies before the record."
+        ),
     ]
     if index is not None:
         notes.append(
-            f"Index: antecedent precipitation index, day by day {index.recession:g} of what it was and what fell, up to the "
-            "storm's start (Kohler and Linsley 1951)."
+            f"Index: antecedent precipitation index, day by day {index.recession:g} of what it was and what fell, up "
+            "to the storm's start (Kohler and Linsley 1951)."
         )
     if young and index is not None:
         notes.append(
@@ -160,7 +161,17 @@ def _ranked(run: SeriesRun) -> Table:
         caption=f"Largest storms of basin {found.basin} by {series_names.series_word((found.gaps, found.method))}, "
         f"{unit_word(unit)}",
         heads=(
-            "rank", "start", "end", "hours", *ranked_head, "depth", "greatest step", "observed", "5 d", "10 d", "30 d",
+            "rank",
+            "start",
+            "end",
+            "hours",
+            *ranked_head,
+            "depth",
+            "greatest step",
+            "observed",
+            "5 d",
+            "10 d",
+            "30 d",
             "index",
         ),
         over=(("", 7 + len(ranked_head)), ("before the storm", 4)),
@@ -208,12 +219,10 @@ def incomplete_table(run: SeriesRun) -> Table | None:
         return None
     complete = np.array([ranked.depth for ranked in found.ranking.complete])
     notes = [
-        "Would rank: at what is there. More may have fallen; and with missing steps inside it may have been several storms."
+        "Would rank: by what is there. More may have fallen, and with missing steps inside it may have been several."
     ]
     if len(shown) < len(found.ranking.incomplete):
-        notes.append(
-            f"Shown: {len(shown)} of {len(found.ranking.incomplete)}. All are in storms_found.csv."
-        )
+        notes.append(f"Shown: {len(shown)} of {len(found.ranking.incomplete)}. All are in storms_found.csv.")
     return Table(
         caption=f"Storms of basin {found.basin} that are not complete, {unit_word(unit)}",
         heads=("start", "end", "what is there", "greatest step", "missing inside", "missing near", "would rank"),

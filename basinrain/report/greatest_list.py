@@ -9,10 +9,17 @@ import numpy as np
 from basinrain.basins import UNION
 from basinrain.report import limits, series_names
 from basinrain.report.table import Row, Table
-from basinrain.report.words import counted, depth_text, number_text, step_text, unbroken, unit_word, when_text, zone_text
+from basinrain.report.words import (
+    counted,
+    depth_text,
+    number_text,
+    unbroken,
+    unit_word,
+    when_text,
+    zone_text,
+)
 from basinrain.results_series import SeriesRun
 from basinrain.series.greatest_depths import GreatestDepths
-from basinrain.series.steps import in_words
 from basinrain.units import depth_factor
 
 __all__ = ["duration_words", "greatest_sentence", "greatest_tables"]
@@ -27,8 +34,8 @@ def greatest_sentence(run: SeriesRun) -> str:
     return (
         "Sliding windows begin at any step; those tied to the clock begin at whole multiples of the duration from the "
         "start of the record's first day, as depths read at fixed hours do, and their greatest is never the greater. "
-        "Both are as they were found: none is multiplied to make up for the clock, or for the record's step. Windows in "
-        "which a step has no number do not count."
+        "Both are as they were found: none is multiplied to make up for the clock, or for the record's step. Windows "
+        "in which a step has no number do not count."
     )
 
 
@@ -51,7 +58,7 @@ def _first(run: SeriesRun) -> GreatestDepths | None:
 
 def duration_words(found: GreatestDepths) -> list[str]:
     """Return the durations as they are printed."""
-    return [step_text(in_words(int(duration / np.timedelta64(1, "s")))) for duration in found.durations]
+    return [series_names.length_text(duration) for duration in found.durations]
 
 
 def _by_kind(run: SeriesRun, found: GreatestDepths) -> Table:
@@ -76,8 +83,8 @@ def _by_kind(run: SeriesRun, found: GreatestDepths) -> Table:
         align="t" + "ntnn" * 2,
         rows=rows,
         notes=(
-            f"Times are in {zone_text(run.record.zone)}; of equal depths the first. Left out: windows in which a step "
-            "has no number.",
+            f"Times are in {zone_text(run.record.zone)}; of equal depths the first.",
+            "Left out: windows in which a step has no number.",
         ),
     )
 
@@ -87,7 +94,10 @@ def _by_series(run: SeriesRun, found: GreatestDepths) -> Table:
     heads, over = series_names.heads(run)
     greatest = [run.summaries[series].greatest for series in series_names.listed(run)]
     rows: list[Row] = [
-        (words, *(depth_text(float(one.sliding.depth[d, b]) / mm, run.depth_unit) for one in greatest if one is not None))
+        (
+            words,
+            *(depth_text(float(one.sliding.depth[d, b]) / mm, run.depth_unit) for one in greatest if one is not None),
+        )
         for d, words in enumerate(duration_words(found))
     ]
     return Table(

@@ -18,14 +18,15 @@ from basinrain.results_series import SeriesRun
 __all__ = ["POLICY_MARKS", "left_out_picture"]
 
 POLICY_MARKS: Final[tuple[dict[str, Any], ...]] = (
-    {"marker": "s", "markersize": 4.6, "markerfacecolor": "black"},
-    {"marker": "o", "markersize": 4.8, "markerfacecolor": "white"},
-    {"marker": "x", "markersize": 4.4, "markerfacecolor": "black", "markeredgewidth": 1.0},
+    {"marker": "s", "markersize": 3.2, "markerfacecolor": "black"},
+    {"marker": "o", "markersize": 3.7, "markerfacecolor": "white"},
+    {"marker": "x", "markersize": 3.6, "markerfacecolor": "black", "markeredgewidth": 1.0},
 )
 """One a policy, told apart without colour where they fall on each other."""
 
-_ROW, _HEAD, _FOOT, _GAP = 0.17, 0.55, 0.42, 0.22  # inches
+_ROW, _HEAD, _FOOT, _GAP = 0.2, 0.55, 0.42, 0.22  # inches
 _PANELS: Final = 4
+_APART: Final = 0.27  # of a row
 
 
 def left_out_picture(run: SeriesRun) -> Picture | None:
@@ -45,24 +46,37 @@ def left_out_picture(run: SeriesRun) -> Picture | None:
         figure = Figure(figsize=(PAGE_WIDTH, height))
         for k, method in enumerate(methods):
             axes = figure.add_axes(
-                ((left + k * (wide + _GAP)) / PAGE_WIDTH, _FOOT / height, wide / PAGE_WIDTH, 1 - (_HEAD + _FOOT) / height)
+                (
+                    (left + k * (wide + _GAP)) / PAGE_WIDTH,
+                    _FOOT / height,
+                    wide / PAGE_WIDTH,
+                    1 - (_HEAD + _FOOT) / height,
+                )
             )
             axes.set_xlim(-half, half)
             axes.set_ylim(len(labels) - 0.5, -0.5)
             axes.axvline(0, color=INK, linewidth=0.7)
             axes.hlines(
-                np.arange(len(labels)), 0, 1, transform=axes.get_yaxis_transform(), color="#dfe3e5", linewidth=0.5, zorder=0
+                np.arange(len(labels)),
+                0,
+                1,
+                transform=axes.get_yaxis_transform(),
+                color="#dfe3e5",
+                linewidth=0.5,
+                zorder=0,
             )
             for p, policy in enumerate(run.setup.gaps):
                 values = np.array([_percent(found, (policy, method), b) for found in gauges.values()])
-                axes.plot(
-                    values, np.arange(len(labels)), linestyle="none", color="black", zorder=3, **POLICY_MARKS[p]
-                )
+                # One above the other, so that equal values do not hide each other.
+                rows = np.arange(len(labels)) + (p - (len(run.setup.gaps) - 1) / 2) * _APART
+                axes.plot(values, rows, linestyle="none", color="black", zorder=3, **POLICY_MARKS[p])
             for row, found in enumerate(gauges.values()):
                 if all(np.isnan(_percent(found, (policy, method), b)) for policy in run.setup.gaps):
                     axes.text(half * 0.04, row, "no number", va="center", fontsize=6)
             axes.xaxis.set_major_locator(MaxNLocator(4, symmetric=True))
-            axes.xaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:+g}".replace("-", "−") if value else "0"))
+            axes.xaxis.set_major_formatter(
+                FuncFormatter(lambda value, _: f"{value:+g}".replace("-", "−") if value else "0")
+            )
             axes.set_yticks(np.arange(len(labels)), labels if k == 0 else [""] * len(labels))
             axes.tick_params(axis="y", length=0, pad=5)
             axes.set_title(inline(method, 24), pad=4)
@@ -88,7 +102,10 @@ def left_out_picture(run: SeriesRun) -> Picture | None:
         )
         described = "; ".join(
             f"{gauge}: "
-            + ", ".join(f"{number_text(float(one.percent[b]), 1)} % by {method} ({gaps})" for (gaps, method), one in found.items())
+            + ", ".join(
+                f"{number_text(float(one.percent[b]), 1)} % by {method} ({gaps})"
+                for (gaps, method), one in found.items()
+            )
             for gauge, found in gauges.items()
         )
         basin = run.basins.ids[b]

@@ -10,7 +10,7 @@ import numpy.typing as npt
 from basinrain.basins import UNION
 from basinrain.report import limits, series_names
 from basinrain.report.table import Row, Table
-from basinrain.report.words import DASH, counted, depth_text, number_text, percent_text, unit_word
+from basinrain.report.words import DASH, NARROW_SPACE, counted, depth_text, number_text, percent_text, unit_word
 from basinrain.results_series import SeriesRun
 from basinrain.series.long_term import LeftOut
 from basinrain.units import depth_factor
@@ -60,8 +60,8 @@ def year_rule(run: SeriesRun) -> str:
     settings = run.settings["series"]
     return (
         f"A water year begins with {MONTHS[settings['water_year'] - 1]} and has the name of the year in which it ends; "
-        f"its total counts if {number_text(100 * settings['complete'], 0)}\u202f% of its time or more has a number, and "
-        "is not scaled up for the rest."
+        f"its total counts if {settings['complete'] * 100:g}{NARROW_SPACE}% of its time or more has a number, and is "
+        "not scaled up for the rest."
     )
 
 
@@ -93,7 +93,7 @@ def means_table(run: SeriesRun) -> Table:
     notes = [
         "Depths: means of the complete water years. Years: how many they are."
         if annual
-        else "No water year is complete: depths are the sums of the steps that have a number. Steps: how many they are.",
+        else "No water year is complete: depths are sums of the steps that have a number. Steps: how many they are.",
     ]
     if n > 1:
         notes.append(
@@ -179,13 +179,13 @@ def rests_table(run: SeriesRun) -> Table:
             )
         )
     notes = [
-        "Infilled: steps whose value rests in part on infilled depths. Reweighted: steps at which a gauge in service "
-        "that has weight had no depth, so that the others have more. Missing: steps without a number, which are not "
-        "zero."
+        "Missing: steps without a number, which are not zero.",
+        "Infilled: steps whose value rests in part on infilled depths.",
+        "Reweighted: steps at which a gauge in service that has weight had no depth, so that the others have more.",
     ]
     if long:
         notes.append(
-            "Mean of all steps: scaled to a year of 365.2425 days. Where gaps favour a season it is no mean annual depth."
+            "Mean of all steps: scaled to a year of 365.2425 days; where gaps favour a season, no mean annual depth."
         )
     return Table(
         caption=f"What the series of basin {run.basins.ids[b]} rest on",

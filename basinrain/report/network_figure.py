@@ -87,7 +87,7 @@ def network_picture(run: SeriesRun) -> Picture | None:
     caption = (
         "Gauges in service, and how many of them report, mean of the steps of each stretch."
         if held
-        else "Gauges in service and not silent for longer than may be infilled; the record was read chunk by chunk, and "
+        else "Gauges in service and not silent for longer than may be infilled. The record was read chunk by chunk: "
         "how many reported at every step was not counted."
     )
     if run.changes:
@@ -135,7 +135,9 @@ def _marks(axes: Any, changes: tuple[NetworkChange, ...], rows: list[tuple[str, 
     for row, (word, look) in enumerate(rows):
         # Marks on the same spot of the paper are one mark.
         times = np.unique(np.round([_number(change.time) for change in changes if change.change == word], 2))
-        axes.plot(times, np.full(len(times), row), linestyle="none", color="black", markersize=4.2, clip_on=False, **look)
+        axes.plot(
+            times, np.full(len(times), row), linestyle="none", color="black", markersize=4.2, clip_on=False, **look
+        )
 
 
 def _description(run: SeriesRun) -> str:
@@ -146,6 +148,4 @@ def _description(run: SeriesRun) -> str:
             f"In service {number_text(in_service.min(), 0)} to {number_text(in_service.max(), 0)} gauges, reporting "
             f"{number_text(reporting.min(), 0)} to {number_text(reporting.max(), 0)}. "
         )
-    return text + "; ".join(
-        f"{word}: {sum(change.change == word for change in run.changes)}" for word, _ in _ROWS
-    )
+    return text + "; ".join(f"{word}: {sum(change.change == word for change in run.changes)}" for word, _ in _ROWS)

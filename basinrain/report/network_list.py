@@ -2,16 +2,19 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass, replace
 from typing import Final
 
+import numpy as np
+
 from basinrain.report.table import Table
-from basinrain.report.words import counted, when_text, zone_text
+from basinrain.report.words import DASH, counted, unbroken, when_text, zone_text
 from basinrain.results_series import SeriesRun
-from basinrain.series.network_changes import CLOSES, OPENS
+from basinrain.series.network_changes import CLOSES, OPENS, RETURNS, SILENT
 
 __all__ = ["CHANGES", "changes_sentence", "changes_table"]
 
-CHANGES: Final = 40
+CHANGES: Final = 30
 """Changes of a network that are listed."""
 
 
@@ -26,8 +29,8 @@ def changes_sentence(run: SeriesRun) -> str:
     silent = len({change.gauge for change in run.changes if change.change not in (OPENS, CLOSES)})
     return (
         f"Gauges came into service {_times(opened)} and went out of it {_times(closed)} within the record; "
-        f"{counted(silent, 'gauge was', 'gauges were')} silent for longer than may be infilled ({_longest(run)}). Means "
-        "before and after a change are not of the same gauges."
+        f"{counted(silent, 'gauge was', 'gauges were')} silent for longer than may be infilled ({_longest(run)}). "
+        "Means before and after a change are not of the same gauges."
     )
 
 
@@ -41,22 +44,64 @@ def _longest(run: SeriesRun) -> str:
 
 
 def changes_table(run: SeriesRun) -> Table | None:
-    """Return the changes in time, of many those that last before silences; None where there is none."""
+    """Return the changes in time, a silence in one line; of many those that last before silences. None without any."""
     if not run.changes:
         return None
-    order = sorted(range(len(run.changes)), key=lambda k: (run.changes[k].change not in (OPENS, CLOSES), k))
-    shown = [run.changes[k] for k in sorted(order[:CHANGES])]
+    stretches = _stretches(run)
+    order = sorted(range(len(stretches)), key=lambda k: (stretches[k].change == SILENT, k))
+    shown = [stretches[k] for k in sorted(order[:CHANGES])]
     notes = [f"Times are in {zone_text(run.record.zone)}."]
     notes.append("Gauges from then on: in service, and not silent for longer than may be infilled.")
-    if len(shown) < len(run.changes):
+    if len(shown) < len(stretches):
         notes.append(
-            f"Shown: {len(shown)} of {len(run.changes)}, gauges that come into service or go out of it first. All are "
+            f"Shown: {len(shown)} of {len(stretches)}, gauges that come into service or go out of it first. All are "
             "in network_changes.csv."
         )
     return Table(
         caption="Changes of the network",
-        heads=("time", "gauge", "change", "gauges from then on"),
-        align="tttn",
-        rows=[(when_text(one.time), one.gauge, one.change, str(one.gauges)) for one in shown],
+        heads=("from", "until", "gauge", "change", "gauges from then on"),
+        align="ttttn",
+        rows=[
+            (
+                unbroken(when_text(one.start)),
+                unbroken(when_text(one.end)),
+                one.gauge,
+                "silent for long" if one.change == SILENT else one.change,
+                str(one.gauges) if one.gauges is not None else DASH,
+            )
+            for one in shown
+        ],
         notes=tuple(notes),
     )
+
+
+@dataclass(frozen=True)
+class _Stretch:
+    """A change that lasts, or a silence with its end, NaT where it lasts or is not known."""
+
+    start: np.datetime64
+    end: np.datetime64
+    gauge: str
+    change: str
+    gauges: int | None
+
+
+def _stretches(run: SeriesRun) -> list[_Stretch]:
+    """Return the changes in time, each silence with the change that ends it."""
+    never = np.datetime64("NaT", "s")
+    found: list[_Stretch] = []
+    silent: dict[str, int] = {}
+    for one in run.changes:
+        if one.change != SILENT and one.gauge in silent:
+            k = silent.pop(one.gauge)
+            found[k] = replace(found[k], end=one.time)
+            if one.change == RETURNS:
+                continue
+        if one.change == RETURNS:
+            # Silent since the record began, or since it came into service.
+            found.append(_Stretch(never, one.time, one.gauge, SILENT, None))
+            continue
+        if one.change == SILENT:
+            silent[one.gauge] = len(found)
+        found.append(_Stretch(one.time, never, one.gauge, one.change, one.gauges))
+    return found

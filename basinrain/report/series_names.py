@@ -4,11 +4,15 @@ from __future__ import annotations
 
 from typing import Final
 
+import numpy as np
+
 from basinrain.basins import UNION
 from basinrain.report.table import Row
+from basinrain.report.words import step_text
 from basinrain.results_series import SeriesRun
+from basinrain.series.steps import in_words
 
-__all__ = ["MOST_SERIES", "Series", "heads", "lead_basin", "left_out", "listed", "names", "series_word"]
+__all__ = ["MOST_SERIES", "Series", "heads", "lead_basin", "left_out", "length_text", "listed", "names", "series_word"]
 
 MOST_SERIES: Final = 9
 """Series that stand side by side in a table."""
@@ -52,6 +56,18 @@ def names(run: SeriesRun) -> dict[Series, str]:
     if len(methods) == 1 and len(policies) > 1:
         return {one: one[0] for one in series}
     return {one: one[1] if len(policies) == 1 else f"{one[1]}, {one[0]}" for one in series}
+
+
+def length_text(length: np.timedelta64) -> str:
+    """Return a length of time in words.
+
+    Examples
+    --------
+    >>> length_text(np.timedelta64(90, "m")), length_text(np.timedelta64(1, "D")), length_text(np.timedelta64(48, "h"))
+    ('90 min', '1 day', '2 days')
+    """
+    text = step_text(in_words(int(length / np.timedelta64(1, "s"))))
+    return f"{text}s" if text.endswith(" day") and text != "1 day" else text
 
 
 def series_word(series: Series) -> str:

@@ -87,15 +87,19 @@ def _panel(axes: Any, years: npt.NDArray[np.int64], totals: list[Floats]) -> Non
     blank = np.isnan(totals).any(axis=0)
     for year in years[blank]:
         axes.axvspan(
-            year - _WIDE / 2, year + _WIDE / 2, facecolor="white", hatch="//////", edgecolor=_NO_TOTAL, linewidth=0, zorder=0
+            year - _WIDE / 2,
+            year + _WIDE / 2,
+            facecolor="white",
+            hatch="//////",
+            edgecolor=_NO_TOTAL,
+            linewidth=0,
+            zorder=0,
         )
     first = totals[0]
     known = ~np.isnan(first)
     left, right, zero = years[known] - _WIDE / 2, years[known] + _WIDE / 2, np.zeros(known.sum())
     corners = np.array([[left, zero], [left, first[known]], [right, first[known]], [right, zero]]).transpose(2, 0, 1)
-    axes.add_collection(
-        PolyCollection(list(corners), facecolors="#b9c0c5", edgecolors=INK, linewidths=0.4, zorder=2)
-    )
+    axes.add_collection(PolyCollection(list(corners), facecolors="#b9c0c5", edgecolors=INK, linewidths=0.4, zorder=2))
     for p, values in enumerate(totals[1:], start=1):
         axes.plot(years, values, linestyle="none", color="black", zorder=3, **_mark(p))
     if known.any():
@@ -120,7 +124,5 @@ def _handles(gaps: tuple[str, ...], *, blank: bool) -> list[Any]:
     ]
     handles.append(Line2D([], [], color=INK, linewidth=0.8, linestyle=LINES[1], label="mean"))
     if blank:
-        handles.append(
-            Patch(facecolor="white", hatch="//////", edgecolor=_NO_TOTAL, linewidth=0, label="not complete")
-        )
+        handles.append(Patch(facecolor="white", hatch="//////", edgecolor=_NO_TOTAL, linewidth=0, label="not complete"))
     return handles

@@ -16,7 +16,7 @@ from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.screening.editing import Outcome, carry_out
 
-__all__ = ["SUGGESTED", "Action", "Edit", "apply_edits", "spread_edits"]
+__all__ = ["SUGGESTED", "Action", "Edit", "apply_edits", "edit_row", "spread_edits"]
 
 Action = Literal["reject", "set", "shift", "scale"]
 
@@ -178,7 +178,7 @@ def apply_edits(
     (2, 4.0, 4.0)
     """
     edited, outcomes = carry_out(records, _numbered(edits))
-    return edited, [_row(edit, outcome) for edit, outcome in zip(edits, outcomes, strict=True)]
+    return edited, [edit_row(edit, outcome) for edit, outcome in zip(edits, outcomes, strict=True)]
 
 
 def spread_edits(record: RainRecord, edits: Sequence[Edit]) -> tuple[Note, ...]:
@@ -223,7 +223,8 @@ def _numbered(edits: Sequence[Edit]) -> list[Edit]:
     return [replace(edit, number=edit.number or place) for place, edit in enumerate(edits, 1)]
 
 
-def _row(edit: Edit, outcome: Outcome) -> dict[str, str | float | int | None]:
+def edit_row(edit: Edit, outcome: Outcome | None = None) -> dict[str, str | float | int | None]:
+    """Return an edit and what it did as plain values; what it did is None where that was not counted."""
     start, end = ("" if np.isnat(time) else str(time) for time in (edit.start, edit.end))
     return {
         "gauge": edit.gauge,
@@ -234,9 +235,9 @@ def _row(edit: Edit, outcome: Outcome) -> dict[str, str | float | int | None]:
         "reason": edit.reason,
         "by": edit.by,
         "date": edit.date,
-        "steps_changed": outcome.steps,
-        "depth_before": outcome.before,
-        "depth_after": outcome.after,
+        "steps_changed": None if outcome is None else outcome.steps,
+        "depth_before": None if outcome is None else outcome.before,
+        "depth_after": None if outcome is None else outcome.after,
     }
 
 

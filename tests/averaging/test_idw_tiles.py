@@ -27,7 +27,8 @@ def by_plain_sums(tile: Tile, reporting: npt.NDArray[np.bool_]) -> Floats:
     """Return weights (n_sets, n_gauges) as the definition has them, cell by cell in double precision."""
     distance = np.hypot(*(tile.centres[:, None, :] - tile.gauges[None, :, :]).transpose(2, 0, 1))
     lent = distance**-tile.power * reporting[:, None, :]
-    return np.einsum("c,scg->sg", tile.held, lent / lent.sum(axis=2, keepdims=True))
+    sums: Floats = np.einsum("c,scg->sg", tile.held, lent / lent.sum(axis=2, keepdims=True))
+    return sums
 
 
 @pytest.mark.parametrize("power", [0.5, 1.0, 2.0, 3.0, 4.5])

@@ -1,7 +1,7 @@
 """Run in a process of its own: series by inverse distance and by the arithmetic mean beside one plain product.
 
-Prints one JSON object. ``speed`` measures the times, ``memory FILE`` the growth of memory with the record in that file. BLAS
-is to be held to one thread outside.
+Prints one JSON object. ``speed`` measures the times, ``memory FILE`` the growth of memory with the record in that file.
+BLAS is to be held to one thread outside.
 """
 
 from __future__ import annotations
@@ -38,7 +38,7 @@ def series(network: GaugeNetwork, basins: Basins, depth: Floats, method: str) ->
 
 
 def error(network: GaugeNetwork, basins: Basins, grid: Grid, depth: Floats, found: Floats) -> float:
-    """Return how far, relatively, means of some wet steps are from those of weights made for each in double precision."""
+    """Return how far, relatively, means of some wet steps are from those of weights made for each."""
     worst = 0.0
     wet = np.flatnonzero(np.nansum(depth, axis=1) > 0)
     for t in np.random.default_rng(3).choice(wet, SAMPLE):
@@ -55,40 +55,51 @@ def users_loop(network: GaugeNetwork, grid: Grid, present: npt.NDArray[np.bool_]
     return sums
 
 
+def by_record(network: GaugeNetwork, basins: Basins, grid: Grid, depth: Floats, *, best_of: int) -> dict[str, object]:
+    """Return the figures of one record."""
+    plain = product_of(depth, len(basins))
+    runs = ReportingRuns.of(~np.isnan(depth))
+    ready = METHODS["idw"].reweigher(network, basins, {"grid": grid})
+    return {
+        "sets": len(runs.sets),
+        "error": error(network, basins, grid, depth, ready(depth, runs)),
+        "idw": ratios(lambda: series(network, basins, depth, "idw"), plain, best_of=best_of).figures(),
+        "idw, tiles at hand": ratios(lambda: ready(depth, runs), plain, rounds=3, best_of=1).figures(),
+        "arithmetic": ratios(lambda: series(network, basins, depth, "arithmetic"), plain).figures(),
+    }
+
+
+def set_by_set(network: GaugeNetwork, basins: Basins, grid: Grid, depth: Floats) -> dict[str, object]:
+    """Return what ways without anything prepared for sets cost: the package's own general way, and a user's loop."""
+    plain = product_of(depth, len(basins))
+    runs = ReportingRuns.of(~np.isnan(depth))
+    sample = runs.sets[np.random.default_rng(4).choice(len(runs.sets), SAMPLE, replace=False)]
+    expected = idw_weights(network, basins, sample[0], grid=grid).weights[:, sample[0]]
+    np.testing.assert_allclose(users_loop(network, grid, sample[0]), expected, rtol=1e-9)
+    even = METHODS["arithmetic"](network, basins)
+    figures: dict[str, object] = {
+        "a user's loop, s a set": min(seconds(lambda: users_loop(network, grid, sample[0])) for _ in range(SAMPLE)),
+        "arithmetic": ratios(
+            lambda: reweigh_by_sets(even, len(basins))(depth, runs), plain, rounds=3, best_of=1
+        ).figures(),
+    }
+    for method, options in (("idw", {"grid": grid, "max_gauges": 5}), ("thiessen", {})):
+        weigh = METHODS[method](network, basins, options)
+        figures[f"{method}, s a set"] = seconds(lambda: [weigh(present) for present in sample]) / SAMPLE  # noqa: B023 - called at once
+    return figures
+
+
 def speed() -> dict[str, object]:
+    """Return all times."""
     network, basins = network_and_basins()
     grid = choose_grid(network, basins, cell=CELL)
-    found: dict[str, object] = {"cells": grid.n_cells}
-    for name, make, best_of in (("R1", record_one, 3), ("R2", record_two, 1)):
-        depth = make(network)
-        plain = product_of(depth, len(basins))
-        runs = ReportingRuns.of(~np.isnan(depth))
-        ready = METHODS["idw"].reweigher(network, basins, {"grid": grid})
-        figures = {
-            "sets": len(runs.sets),
-            "error": error(network, basins, grid, depth, ready(depth, runs)),
-            "idw": ratios(lambda: series(network, basins, depth, "idw"), plain, best_of=best_of).figures(),  # noqa: B023 - at once
-            "idw, grid and tiles at hand": ratios(lambda: ready(depth, runs), plain, rounds=5, best_of=1).figures(),  # noqa: B023 - at once
-            "arithmetic": ratios(lambda: series(network, basins, depth, "arithmetic"), plain).figures(),  # noqa: B023 - at once
-        }
-        found[name] = figures
-        if name == "R1":
-            sample = runs.sets[np.random.default_rng(4).choice(len(runs.sets), SAMPLE, replace=False)]
-            theirs = min(seconds(lambda: users_loop(network, grid, sample[0])) for _ in range(SAMPLE))  # noqa: B023 - at once
-            expected = idw_weights(network, basins, sample[0], grid=grid).weights[:, sample[0]]
-            np.testing.assert_allclose(users_loop(network, grid, sample[0]), expected, rtol=1e-9)
-            figures["a user's loop, s a set"] = theirs
-            weigh = METHODS["arithmetic"](network, basins)
-            figures["arithmetic set by set"] = ratios(
-                lambda: reweigh_by_sets(weigh, len(basins))(depth, runs),
-                plain,
-                best_of=1,  # noqa: B023 - at once
-            ).figures()
-            for method, options in (("idw", {"grid": grid, "max_gauges": 5}), ("thiessen", {})):
-                weigh_set = METHODS[method](network, basins, options)
-                took = [seconds(lambda: weigh_set(present)) for present in sample]  # noqa: B023 - at once
-                figures[f"{method} set by set, s a set"] = sum(took) / SAMPLE
-    return found
+    first, second = record_one(network), record_two(network)
+    return {
+        "cells": grid.n_cells,
+        "R1": by_record(network, basins, grid, first, best_of=3),
+        "R2": by_record(network, basins, grid, second, best_of=1),
+        "set by set": set_by_set(network, basins, grid, first),
+    }
 
 
 def memory(file: Path) -> dict[str, float]:

@@ -21,10 +21,10 @@ def test_100000_cells_300_gauges_200_basins_ten_years() -> None:
     """The whole series costs at most 60 products, and means are right to 1e-5; every figure of the docs is printed."""
     found = run_child("idw_series_timing.py", "speed")
     print("\ncells", found["cells"])  # noqa: T201
-    for record in ("R1", "R2"):
-        for name, figure in found[record].items():
-            print(record, name, figure)  # noqa: T201
-        assert found[record]["error"] < 1e-5
+    for part in ("R1", "R2", "set by set"):
+        for name, figure in found[part].items():
+            print(part, name, figure)  # noqa: T201
+    assert max(found["R1"]["error"], found["R2"]["error"]) < 1e-5
     assert found["R1"]["idw"]["median"] <= HELD_TO
 
 

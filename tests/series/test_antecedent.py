@@ -41,6 +41,16 @@ def test_missing_days_and_days_before_the_series() -> None:
     np.testing.assert_array_equal(at_start.share, [[[0, 0]]])
 
 
+def test_one_missing_day_of_thirty_is_enough() -> None:
+    """29 days of 30 are no sum of 30 days."""
+    starts, ends = steps(31, step=DAY)
+    depth = np.ones(31)
+    depth[4] = NAN
+    found = antecedent_depths(starts, ends, depth, at=starts[30:])
+    np.testing.assert_array_equal(found.depth, [[5, 10, NAN]])
+    np.testing.assert_array_equal(found.present, [[5, 10, 29]])
+
+
 def test_hours_before_a_storm_count_to_its_start() -> None:
     """Hourly, a storm from 17:00: the hour to 17:00 counts, the hour from 17:00 does not, nor one 24 hours older."""
     starts, ends = steps(48)

@@ -23,11 +23,11 @@ from basinrain.series.chunks import RecordSource, chunk_borders, chunk_steps_wit
 def test_borders_lie_on_days_and_chunks_are_within_bounds(
     n_steps: int, steps_per_day: int, chunk_steps: int, head: int
 ) -> None:
-    """Borders rise from 0 to the end, lie whole days behind the first day, and no chunk exceeds its size but for a day."""
+    """Borders rise from 0 to the end and lie whole days behind the first; no chunk exceeds its size but for a day."""
     head %= steps_per_day
     borders = chunk_borders(n_steps, steps_per_day=steps_per_day, chunk_steps=chunk_steps, head=head)
     lengths = np.diff(borders)
-    assert (borders[0], borders[-1], borders.dtype) == (0, n_steps, np.int64)
+    assert (borders.dtype, int(borders[0]), int(borders[-1])) == (np.dtype(np.int64), 0, n_steps)
     assert (lengths > 0).all()
     assert ((borders[1:-1] - head) % steps_per_day == 0).all()
     assert lengths.max(initial=0) <= max(chunk_steps, steps_per_day)

@@ -259,6 +259,9 @@ def test_what_is_said_of_storms_that_are_not_ranked() -> None:
     assert (note.code, note.level) == ("incomplete-storms", "warning")
     assert "1 of 4 storms" in note.text
     assert "among the 1 largest: 2031-05-04T13:00 to 2031-05-04T16:00." in note.text
+    equal = np.where(FOUR == 6, 5.0, FOUR)  # 1 + 5 mm, as the largest
+    (note,) = rank_events(found(equal), starts, ends, equal).notes(1)
+    assert note.level == "warning"
     small = np.where(FOUR == 6, 0.5, FOUR)
     (note,) = rank_events(found(small), starts, ends, small).notes(2)
     assert (note.code, note.level) == ("incomplete-storms", "info")

@@ -54,8 +54,8 @@ def test_windows_with_a_missing_hour_do_not_count() -> None:
 
 
 def test_the_earliest_of_equal_depths() -> None:
-    """0.1 + 0.2 + 0.3 mm and the same the other way round are one depth; the earlier window has it."""
-    both = found([0.1, 0.2, 0.3, 0, 0.3, 0.2, 0.1], 3)
+    """0.3 + 0.2 + 0.1 mm and the same the other way round are one depth; the earlier window has it."""
+    both = found([0.3, 0.2, 0.1, 0, 0.1, 0.2, 0.3], 3)
     assert both.sliding.ends[0] == steps(7)[1][2]
     dry = found([0, 0, 0], 2).sliding
     assert (dry.depth[0], dry.ends[0]) == (0, steps(3)[1][1])
@@ -201,7 +201,7 @@ def test_annual_maxima_by_hand() -> None:
 
 
 def test_a_year_with_gaps_has_no_maximum_but_what_is_present() -> None:
-    """30 days of 365 are missing: under 0.95 of the windows, at 0.9 enough; a year without any is missing."""
+    """30 days of 365 are missing: too many at 0.95, enough where 335 are asked for; a year without any is missing."""
     starts, ends = steps(730, step=DAY, start=np.datetime64("2031-01-01T00:00:00"))
     depth = np.ones((730, 1))
     depth[:30] = NAN
@@ -211,7 +211,7 @@ def test_a_year_with_gaps_has_no_maximum_but_what_is_present() -> None:
     np.testing.assert_array_equal(annual.sliding.present, [[[1], [NAN]]])
     assert annual.sliding.share.ravel() == pytest.approx([335 / 365, 0])
     assert np.isnat(annual.sliding.ends[0, 1, 0])
-    loose = annual_maxima(starts, ends, depth, durations=[DAY], water_year=1, complete=0.9)
+    loose = annual_maxima(starts, ends, depth, durations=[DAY], water_year=1, complete=335 / 365)
     np.testing.assert_array_equal(loose.sliding.depth, [[[1], [NAN]]])
 
 
@@ -237,6 +237,16 @@ def test_years_part_the_windows(water_year: int) -> None:
             assert year[ends == annual.sliding.ends[d, y, b]] == annual.years[y]
             if 0 < y < len(annual.years) - 1:
                 assert annual.sliding.share[d, y, b] == pytest.approx(np.isfinite(part).sum() / len(part))
+
+
+@given(st.integers(0, 30), st.integers(1, 13))
+def test_a_whole_year_has_all_its_windows(late: int, count: int) -> None:
+    """Whatever the day on which the series begins, years within it have a share of just 1, tied to the clock or not."""
+    starts, ends = steps(1400, step=DAY, start=np.datetime64("2030-05-01T00:00:00") + late * DAY)
+    annual = annual_maxima(starts, ends, np.ones(1400), durations=[count * DAY], complete=1)
+    for kind in (annual.sliding, annual.aligned):
+        np.testing.assert_array_equal(kind.share[:, 1:-1], 1)
+        np.testing.assert_array_equal(kind.depth[:, 1:-1], count)
 
 
 def test_no_window_for_a_duration_longer_than_the_series() -> None:
