@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.averager import Averager
 from basinrain.averaging import Weigher
+from basinrain.averaging.reporting import ReportingRuns
+from basinrain.averaging.reweighing import steps_of_sets
 from basinrain.errors import MethodError
 from basinrain.infill import Completed
 from basinrain.rainfall import RainRecord, Status
@@ -73,7 +76,7 @@ class BasinDepths:
         return np.asarray(self.depth.sum(axis=0))
 
 
-def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
+def average_storm(completed: Completed, weigher: Weigher | Averager) -> BasinDepths:
     """Average a completed storm over the basins by one method.
 
     Parameters
@@ -81,7 +84,8 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     completed
         The storm's window after infill.
     weigher
-        Makes the method's weights for any set of gauges that are present.
+        Makes the method's weights for any set of gauges that are present; of a long record, whose gauges come and go
+        very often, an :class:`~basinrain.averager.Averager` makes them faster.
 
     Returns
     -------
@@ -113,90 +117,51 @@ def average_storm(completed: Completed, weigher: Weigher) -> BasinDepths:
     record = completed.record
     has_depth = ~np.isnan(record.depth)
     reporting = record.reporting
+    averager = weigher if isinstance(weigher, Averager) else Averager(weigher)
     anywhere: npt.NDArray[np.bool_] = np.asarray(has_depth.any(axis=0))
-    table = weigher(anywhere)
+    table = averager.weigher(anywhere)
     n_steps, (n_basins, n_gauges) = len(record), table.weights.shape
-    weigh = _Remembered(weigher)
     depth = np.full((n_steps, n_basins), np.nan)
     observed_share = np.full((n_steps, n_basins), np.nan)
     infilled = np.zeros(n_basins)
     contribution = np.zeros((n_basins, n_gauges))
     least, most = np.full((n_basins, n_gauges), np.inf), np.full((n_basins, n_gauges), -np.inf)
-    for steps, donors in completed.donor_tables():
-        present = has_depth[steps[0]]
-        if not present.any():
-            contribution[:] = np.nan
-            infilled[:] = np.nan
-            continue
-        here = weigh(present)
+    runs = ReportingRuns.of(has_depth)
+    known = runs.sets.any(axis=1)
+    if not known.all():
+        contribution[:] = np.nan
+        infilled[:] = np.nan
+    some = (steps for steps, held in zip(steps_of_sets(runs), known, strict=True) if held)
+    for steps, present, weights in zip(some, runs.sets[known], averager.weights(runs.sets[known]), strict=True):
+        if isinstance(weights, MethodError):
+            raise weights
+        here = replace(table, weights=weights)
         depth[steps] = here.apply(np.where(present, record.depth[steps], np.nan))
-        influence = here.weights @ donors
-        contribution += here.weights @ completed.sources(steps)
-        least, most = np.minimum(least, influence), np.maximum(most, influence)
-        estimated = np.where(present & ~reporting[steps[0]], record.depth[steps], 0.0).sum(axis=0)
-        infilled += here.weights @ estimated
-        weight_sum = here.weights.sum(axis=1)
+        contribution += weights @ completed.sources(steps)
+        low, high = completed.influence(weights, steps)
+        least, most = np.minimum(least, low), np.maximum(most, high)
+        estimated = np.where(present & ~reporting[steps], record.depth[steps], 0.0).sum(axis=0)
+        infilled += weights @ estimated
+        weight_sum = weights.sum(axis=1)
         observed_share[steps] = np.divide(
-            here.weights @ reporting[steps[0]].astype(float),
+            reporting[steps].astype(float) @ weights.T,
             weight_sum,
-            out=np.full(n_basins, np.nan),
+            out=np.full((len(depth[steps]), n_basins), np.nan),
             where=weight_sum != 0,
         )
-    means, reporting_only = _reporting(record, weigh, n_basins)
+    means = averager.means(record.depth, reporting, n_basins)
     return BasinDepths(
         table=table,
         depth=depth,
         infilled=infilled,
         reporting=means,
-        reporting_only=reporting_only,
+        reporting_only=np.asarray(means.sum(axis=0)),
         contribution=contribution,
         least=np.where(np.isinf(least), np.nan, least),
         most=np.where(np.isinf(most), np.nan, most),
         observed_share=observed_share,
         without_depth=np.asarray((~has_depth & (record.status != Status.NOT_INSTALLED)).sum(axis=0)),
     )
-
-
-def _reporting(
-    record: RainRecord, weigh: _Remembered, n_basins: int
-) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
-    """Return the means of the reporting gauges, (n_steps, n_basins), and their totals."""
-    patterns, group = np.unique(record.reporting, axis=0, return_inverse=True)
-    order = np.argsort(group.ravel(), kind="stable")
-    split = np.searchsorted(group.ravel()[order], np.arange(1, len(patterns)))
-    means = np.full((len(record), n_basins), np.nan)
-    total = np.zeros(n_basins)
-    for pattern, steps in zip(patterns, np.split(order, split), strict=True):
-        try:
-            table = weigh.seldom(pattern) if pattern.any() else None
-        except MethodError:
-            # The gauges that happen to report do not reach the basin: this one figure has no number, the run goes on.
-            table = None
-        if table is None:
-            total[:] = np.nan
-            continue
-        depth = np.where(pattern, record.depth[steps], np.nan)
-        means[steps] = table.apply(depth)
-        total += table.apply(depth.sum(axis=0))
-    return means, total
-
-
-class _Remembered:
-    """Keeps the tables that were made, since few sets of present gauges recur at many steps."""
-
-    def __init__(self, weigher: Weigher) -> None:
-        self._weigher = weigher
-        self._tables: dict[bytes, WeightTable] = {}
-
-    def __call__(self, present: npt.NDArray[np.bool_]) -> WeightTable:
-        key = present.tobytes()
-        if key not in self._tables:
-            self._tables[key] = self._weigher(present)
-        return self._tables[key]
-
-    def seldom(self, present: npt.NDArray[np.bool_]) -> WeightTable:
-        """Return the table without keeping it: a long record has as many sets of reporting gauges as it has gaps."""
-        return self._tables.get(present.tobytes()) or self._weigher(present)
 
 
 def spread_across_methods(totals: Mapping[str, float] | Sequence[float]) -> tuple[float, float, float, float]:

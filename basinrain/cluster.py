@@ -192,9 +192,11 @@ class _Run:
             try:
                 parts: Parts = self._under_way[k].result(timeout=_GATHER_SECONDS)
             except KilledWorker:
-                first, stop = (int(border) for border in self._source.borders[k : k + 2])
+                # Which of the chunks that the dead workers had brought them down is not known.
+                first, last = min(self._under_way), max(self._under_way)
+                steps = f"{self._source.borders[first] + 1} to {self._source.borders[last + 1]}"
                 raise _refused(
-                    f"one worker after the other lost over the same chunk (steps {first + 1} to {stop})",
+                    f"one worker after the other lost while they computed steps {steps}",
                     expected="workers that live through a chunk",
                     remedy="give them more memory or ask for less with [series] memory",
                 ) from None
@@ -222,7 +224,7 @@ class _Run:
         self._alone_since = self._alone_since or now
         if now - self._alone_since > WORKER_SECONDS:
             raise _refused(
-                f"no worker for {WORKER_SECONDS:.0f} s",
+                f"no worker for {WORKER_SECONDS:g} s",
                 expected=f"workers of {self._on}",
                 remedy="start workers and run again",
             )
@@ -270,7 +272,7 @@ def _connected(on: str, workers: int | None) -> Iterator[Client]:
             client = Client(on, timeout=REACH_SECONDS, set_as_default=False)
         except (OSError, TimeoutError, ValueError):
             raise _refused(
-                f"no scheduler that answers at {on} within {REACH_SECONDS:.0f} s",
+                f"no scheduler that answers at {on} within {REACH_SECONDS:g} s",
                 expected="the address of a running one",
                 remedy='start it with `dask scheduler`, or on = "here"',
             ) from None
@@ -304,15 +306,17 @@ def _connected(on: str, workers: int | None) -> Iterator[Client]:
 
 def _require_package(client: Client) -> None:
     """Fail where scheduler or workers lack this package, without which they cannot even read what is sent."""
+    own = version("basinrain")
     try:
-        client.run_on_scheduler(version, "basinrain")
-        client.run(version, "basinrain")
+        found = {client.run_on_scheduler(version, "basinrain"), *client.run(version, "basinrain").values()}
     except PackageNotFoundError:
+        found = {"of no version"}
+    if found != {own}:
         raise _refused(
-            "a scheduler or worker without the package basinrain",
-            expected="the package, in the version of this run, wherever it runs",
-            remedy="pip install 'basinrain[cluster]' there",
-        ) from None
+            f"a scheduler or worker with the package basinrain {', '.join(sorted(found - {own}))}",
+            expected=f"version {own}, as here",
+            remedy=f"pip install 'basinrain[cluster]=={own}' there",
+        )
 
 
 def _refused(found: str, *, expected: str, remedy: str) -> JobError:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import builtins
+import json
 import logging
 import os
 import re
@@ -11,10 +12,11 @@ import subprocess
 import sys
 import time
 from collections.abc import Callable, Iterator
+from contextlib import ExitStack
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
-import dask
 import psutil
 import pytest
 from chunked import (
@@ -30,7 +32,6 @@ from chunked import (
     small_store,
     stored_bytes,
 )
-from distributed import LocalCluster
 from threadpoolctl import threadpool_info
 
 from basinrain import cluster
@@ -55,26 +56,52 @@ def _quiet(capfd: pytest.CaptureFixture[str]) -> Iterator[None]:
     assert capfd.readouterr() == ("", "")
 
 
+ENVIRONMENT = os.environ | {"PYTHONPATH": str(Path(__file__).parent)}
+
+
+@dataclass(frozen=True)
+class Others:
+    """A scheduler and workers that somebody else has started, each a process of its own."""
+
+    address: str
+    scheduler: subprocess.Popen[bytes]
+    workers: tuple[subprocess.Popen[bytes], ...] = ()
+
+
+def started(stack: ExitStack, *words: str) -> subprocess.Popen[bytes]:
+    """Start a program of Dask; it is killed and waited for at the end."""
+    process = subprocess.Popen(
+        [sys.executable, "-m", *words, "--no-dashboard", "--dashboard-address", "127.0.0.1:0"],
+        stdout=subprocess.DEVNULL,
+        stderr=subprocess.DEVNULL,
+        env=ENVIRONMENT,
+    )
+    stack.callback(process.wait)
+    stack.callback(process.kill)
+    return process
+
+
 @pytest.fixture
-def strangers() -> Iterator[LocalCluster]:
-    """Start two worker processes and a scheduler that somebody else looks after; a worker that dies stays dead."""
-    with (
-        dask.config.set({"distributed.scheduler.http.routes": [], "distributed.worker.http.routes": []}),
-        LocalCluster(
-            n_workers=2,
-            threads_per_worker=1,
-            processes=True,
-            dashboard_address="127.0.0.1:0",
-            scheduler_kwargs={"dashboard": False},
-            silence_logs=logging.CRITICAL + 1,
-            memory_limit=0,
-            # The nanny lets a dead worker be.
-            env={},
-        ) as other,
-    ):
-        for worker in other.workers.values():
-            worker.auto_restart = False
-        yield other
+def lone_scheduler(tmp_path: Path) -> Iterator[Others]:
+    """Start a scheduler without workers."""
+    noted = tmp_path / "scheduler.json"
+    with ExitStack() as stack:
+        words = ("--host", "127.0.0.1", "--port", "0", "--scheduler-file", str(noted))
+        process = started(stack, "distributed.cli.dask_scheduler", *words)
+        until = time.monotonic() + 60
+        while not (noted.exists() and '"address"' in noted.read_text()):
+            assert time.monotonic() < until
+            time.sleep(0.05)
+        yield Others(json.loads(noted.read_text())["address"], process)
+
+
+@pytest.fixture
+def strangers(lone_scheduler: Others, tmp_path: Path) -> Iterator[Others]:
+    """Start a scheduler with two worker processes; one that dies stays dead."""
+    with ExitStack() as stack:
+        words = ("--nthreads", "1", "--no-nanny", "--host", "127.0.0.1", "--local-directory", str(tmp_path / "scratch"))
+        two = [started(stack, "distributed.cli.dask_worker", lone_scheduler.address, *words) for _ in range(2)]
+        yield replace(lone_scheduler, workers=tuple(two))
 
 
 def workers_of(process: psutil.Process) -> list[psutil.Process]:
@@ -97,9 +124,7 @@ def test_threads_and_processes_give_the_same_bytes(undisturbed: bytes, on: str, 
     before = [pool["num_threads"] for pool in threadpool_info()]
     told: list[tuple[int, int]] = []
     with small_store() as store:
-        run_chunks(
-            small_setup(), small_source(), store, on=on, workers=workers, progress=lambda *now: told.append(now)
-        )
+        run_chunks(small_setup(), small_source(), store, on=on, workers=workers, progress=lambda *now: told.append(now))
         assert stored_bytes(store) == undisturbed
     assert told == [(DAY * k, STEPS) for k in range(CHUNKS + 1)]
     assert [pool["num_threads"] for pool in threadpool_info()] == before
@@ -125,11 +150,11 @@ def test_a_worker_process_that_is_killed_changes_nothing(tmp_path: Path, undistu
 
 
 def test_a_chunk_that_kills_every_worker_ends_the_run(tmp_path: Path) -> None:
-    """After four deaths over the same chunk the run ends with its steps; finished chunks stay and the rest goes on."""
+    """After four deaths over the same chunk the run ends in a line with the steps under way; finished chunks stay."""
     (tmp_path / "deaths").mkdir()
     with small_store(tmp_path / "work") as store:
         source = SourceWith(Deadly(tmp_path / "deaths", chunk=1, times=99))
-        with pytest.raises(JobError, match=re.escape("over the same chunk (steps 25 to 48); expected workers that live")):
+        with pytest.raises(JobError, match=re.escape("lost while they computed steps 25 to 72; expected")):
             run_chunks(small_setup(), source, store, on="processes", workers=1)
         finished = set(range(CHUNKS)) - set(store.missing_chunks)
         assert 1 not in finished
@@ -178,95 +203,66 @@ def test_local_workers_listen_on_the_loopback_address_only() -> None:
         assert heard == {"127.0.0.1"}
 
 
-def test_a_scheduler_of_others_gives_the_same_bytes(strangers: LocalCluster, undisturbed: bytes) -> None:
+def test_a_scheduler_of_others_gives_the_same_bytes(strangers: Others, undisturbed: bytes) -> None:
     """By its address, twice in a row, with engines freed in between."""
     for workers in (None, 1):
         with small_store() as store:
-            run_chunks(small_setup(), small_source(), store, on=strangers.scheduler_address, workers=workers)
+            run_chunks(small_setup(), small_source(), store, on=strangers.address, workers=workers)
             assert stored_bytes(store) == undisturbed
 
 
 def test_a_scheduler_that_loses_one_of_two_workers_goes_on(
-    strangers: LocalCluster, tmp_path: Path, undisturbed: bytes
+    strangers: Others, tmp_path: Path, undisturbed: bytes
 ) -> None:
     """A worker that is killed for good leaves its chunks to the other."""
     (tmp_path / "deaths").mkdir()
     with small_store() as store:
         source = SourceWith(Deadly(tmp_path / "deaths", chunk=4, times=1))
-        run_chunks(small_setup(), source, store, on=strangers.scheduler_address)
+        run_chunks(small_setup(), source, store, on=strangers.address)
         assert stored_bytes(store) == undisturbed
     assert len(list((tmp_path / "deaths").iterdir())) == 1
 
 
 def test_a_scheduler_that_loses_all_workers_is_waited_for_and_then_given_up(
-    strangers: LocalCluster, monkeypatch: pytest.MonkeyPatch
+    strangers: Others, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """The line says how long there was no worker."""
     monkeypatch.setattr(cluster, "WORKER_SECONDS", 2.0)
 
     def kill_all(done: int, _: int) -> None:
         if done == 2 * DAY:
-            for worker in workers_of(psutil.Process()):
+            for worker in strangers.workers:
                 worker.kill()
 
-    line = refused(strangers.scheduler_address, SourceWith(Slow(0.05)), kill_all)
+    line = refused(strangers.address, SourceWith(Slow(0.05)), kill_all)
     assert line == (
-        f"[series] on: found no worker for 2 s; expected workers of {strangers.scheduler_address}; "
+        f"[series] on: found no worker for 2 s; expected workers of {strangers.address}; "
         "start workers and run again; finished chunks stay"
     )
 
 
-SCHEDULER = ["-m", "distributed.cli.dask_scheduler", "--host", "127.0.0.1", "--port", "0", "--no-dashboard"]
-
-
-@pytest.fixture
-def lone_scheduler(tmp_path: Path) -> Iterator[tuple[str, subprocess.Popen[bytes]]]:
-    """Start a scheduler in a process of its own, without workers; give its address and its process."""
-    noted = tmp_path / "scheduler.json"
-    command = [sys.executable, *SCHEDULER, "--dashboard-address", "127.0.0.1:0", "--scheduler-file", str(noted)]
-    with subprocess.Popen(command, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL, cwd=tmp_path) as process:
-        until = time.monotonic() + 60
-        while not (noted.exists() and '"address"' in noted.read_text()):
-            assert time.monotonic() < until
-            time.sleep(0.05)
-        address = re.findall(r'"address": "([^"]+)"', noted.read_text())[0]
-        yield address, process
-        process.kill()
-
-
-def test_a_scheduler_without_workers_is_given_up(
-    lone_scheduler: tuple[str, subprocess.Popen[bytes]], monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_a_scheduler_without_workers_is_given_up(lone_scheduler: Others, monkeypatch: pytest.MonkeyPatch) -> None:
     """When no worker comes within the time for it, the line says so."""
     monkeypatch.setattr(cluster, "WORKER_SECONDS", 1.0)
-    address, _ = lone_scheduler
-    assert refused(address).startswith(f"[series] on: found no worker for 1 s; expected workers of {address}; start")
+    line = refused(lone_scheduler.address)
+    assert line.startswith(f"[series] on: found no worker for 1 s; expected workers of {lone_scheduler.address}; start")
 
 
 def test_a_scheduler_that_ends_amid_the_run_is_one_line(
-    lone_scheduler: tuple[str, subprocess.Popen[bytes]], tmp_path: Path, undisturbed: bytes, monkeypatch: pytest.MonkeyPatch
+    strangers: Others, tmp_path: Path, undisturbed: bytes, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """A scheduler that is killed ends the run; finished chunks stay, and another run completes them."""
     monkeypatch.setattr(cluster, "REACH_SECONDS", 2.0)
-    address, process = lone_scheduler
-    worker = [sys.executable, "-m", "distributed.cli.dask_worker", address, "--nthreads", "1", "--no-dashboard"]
-    environment = os.environ | {"PYTHONPATH": str(Path(__file__).parent)}
 
     def kill(done: int, _: int) -> None:
         if done == 2 * DAY:
-            process.kill()
+            strangers.scheduler.kill()
 
-    with subprocess.Popen(
-        worker, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL, cwd=tmp_path, env=environment
-    ) as working:
-        try:
-            with small_store(tmp_path / "work") as store:
-                with pytest.raises(JobError, match=rf"found the scheduler at {address} gone; .*; finished chunks stay"):
-                    run_chunks(small_setup(), SourceWith(Slow(0.1)), store, on=address, progress=kill)
-                assert store.missing_chunks[-1] == CHUNKS - 1
-                assert len(store.missing_chunks) <= CHUNKS - 2
-        finally:
-            working.terminate()
+    gone = rf"found the scheduler at {strangers.address} gone; expected .*; finished chunks stay"
+    with small_store(tmp_path / "work") as store:
+        with pytest.raises(JobError, match=gone):
+            run_chunks(small_setup(), SourceWith(Slow(0.1)), store, on=strangers.address, progress=kill)
+        assert 0 < len(store.missing_chunks) <= CHUNKS - 2
     with small_store(tmp_path / "work") as store:
         run_chunks(small_setup(), small_source(), store)
         assert stored_bytes(store) == undisturbed
@@ -282,11 +278,11 @@ def test_a_scheduler_that_cannot_be_reached_is_one_line(address: str, monkeypatc
     )
 
 
-def test_a_worker_of_other_versions_is_refused(strangers: LocalCluster, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_a_worker_of_other_versions_is_refused(strangers: Others, monkeypatch: pytest.MonkeyPatch) -> None:
     """A worker computes only with the versions of the run; the line names what differs."""
     own = cluster._versions()
     monkeypatch.setattr(cluster, "_versions", lambda: own | {"numpy": "1.0"})
-    line = refused(strangers.scheduler_address)
+    line = refused(strangers.address)
     assert re.search(rf"found a worker on \S+ with numpy {re.escape(own['numpy'])}; expected numpy 1.0; give ", line)
 
 

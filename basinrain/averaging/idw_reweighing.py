@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from functools import cache
 from typing import Any, Final
 
@@ -104,7 +105,8 @@ def prepare_idw_reweigher(
         result = np.full((runs.n_steps, len(basins)), np.nan)
         size = min(len(sets), _SETS)
         together = max(1, _BLOCK_BYTES // (4 * size * len(network)))
-        for group in _groups(tiles, together):
+        for some_tiles in _groups(tiles, together):
+            group = _with_tables(some_tiles)
             for first in range(0, len(sets), size):
                 block = slice(first, first + size)
                 _average(group, sets[block], steps[block], depth, result)
@@ -121,6 +123,17 @@ def _groups(tiles: Sequence[Tile], n_basins: int) -> list[list[Tile]]:
     for tile in tiles:
         groups[tile.basin // n_basins].append(tile)
     return groups
+
+
+def _with_tables(tiles: Sequence[Tile]) -> list[Tile]:
+    """Return the tiles with what gauges lend to them at hand for all sets, as far as there is room."""
+    room = _BLOCK_BYTES
+    result = []
+    for tile in tiles:
+        size = 0 if tile.kept is not None else 4 * len(tile.centres) * len(tile.gauges)
+        result.append(replace(tile, kept=tile.table()) if 0 < size <= room else tile)
+        room -= size if size <= room else 0
+    return result
 
 
 def _average(

@@ -133,11 +133,15 @@ class Tile:
         array of float32, shape (n_sets, n_gauges)
             Weights of the reporting gauges. What stands at the others is not to be used.
         """
-        lent = self.kept or Lent(self.exactly().astype(np.float32).T, None)
+        lent = self.kept or self.table()
         # All are positive, so that no sum cancels, as taking the silent ones from the whole would.
         sums = lent.sums(reporting)
         np.divide(self.held.astype(np.float32), sums, out=sums)
         return lent.weigh(sums)
+
+    def table(self) -> Lent:
+        """Return what every gauge lends as a table."""
+        return Lent(np.ascontiguousarray(self.exactly().T, dtype=np.float32), None)
 
     @property
     def _half_breadth(self) -> float:

@@ -104,6 +104,37 @@ class Completed:
         table[estimated] = self._donor_rows[1][kinds[estimated] - _DONATED]
         return table
 
+    def influence(
+        self, weights: npt.NDArray[np.float64], steps: npt.NDArray[np.int64] | slice
+    ) -> tuple[npt.NDArray[np.float64], npt.NDArray[np.float64]]:
+        """Return the least and the greatest weight of every gauge's own values over some steps, infill included.
+
+        Parameters
+        ----------
+        weights : array of float, shape (n_basins, n_gauges)
+            Of the gauges that have a depth at these steps.
+        steps : array of int or slice
+            One step at least.
+
+        Returns
+        -------
+        least, most : array of float, shape (n_basins, n_gauges)
+            Over ``weights @ donor_table(step)``.
+        """
+        kinds = self._kinds[steps]
+        kinds = kinds[np.concatenate([[True], (kinds[1:] != kinds[:-1]).any(axis=1)])]
+        # Rows as single values of so many bytes, which compare many times as fast as rows do.
+        whole = np.ascontiguousarray(kinds).view(np.dtype((np.void, kinds.shape[1] * kinds.itemsize)))
+        kinds = kinds[np.unique(whole.ravel(), return_index=True)[1]]
+        least, most = np.full(weights.shape, np.inf), np.full(weights.shape, -np.inf)
+        for row in kinds:
+            estimated = np.flatnonzero(row >= _DONATED)
+            share = np.where(row == _OWN, weights, 0.0)
+            share += weights[:, estimated] @ self._donor_rows[1][row[estimated] - _DONATED]
+            np.minimum(least, share, out=least)
+            np.maximum(most, share, out=most)
+        return least, most
+
     def donor_tables(self) -> Iterator[tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]]:
         """Yield the steps that share one donor table and the same reporting gauges, with that table.
 
@@ -113,12 +144,12 @@ class Completed:
         for steps in self._groups:
             yield steps, self.donor_table(int(steps[0]))
 
-    def sources(self, steps: npt.NDArray[np.int64] | None = None) -> npt.NDArray[np.float64]:
+    def sources(self, steps: npt.NDArray[np.int64] | slice | None = None) -> npt.NDArray[np.float64]:
         """Return the depth in every gauge's total that comes from each gauge's own values.
 
         Parameters
         ----------
-        steps : array of int, shape (n,), optional
+        steps : array of int, shape (n,), or slice, optional
             Positions of the steps to total, each once; all where not given.
 
         Returns
@@ -145,7 +176,9 @@ class Completed:
         array([[0. , 0. ],
                [2.5, 0. ]])
         """
-        chosen = np.arange(len(self.record)) if steps is None else np.asarray(steps, dtype=np.int64)
+        chosen = np.arange(len(self.record))
+        if steps is not None:
+            chosen = chosen[steps] if isinstance(steps, slice) else np.asarray(steps, dtype=np.int64)
         kinds, own = self._kinds[chosen], self._own[chosen]
         n = len(self.record.gauges)
         result = np.zeros((n, n))
@@ -155,7 +188,7 @@ class Completed:
             result[g] += self._donated(int(g), chosen[at], kinds[at, g] - _DONATED)
         return result
 
-    def _donated(self, g: int, steps: npt.NDArray[np.int64], rows: npt.NDArray[np.int64]) -> npt.NDArray[np.float64]:
+    def _donated(self, g: int, steps: npt.NDArray[np.int64], rows: npt.NDArray[np.int32]) -> npt.NDArray[np.float64]:
         """Return what every gauge put into the estimated depths of gauge g at these steps, shape (n_gauges,)."""
         weights = self._donor_rows[1]
         columns = np.flatnonzero((weights[np.unique(rows)] != 0).any(axis=0))
@@ -164,13 +197,14 @@ class Completed:
         single = self._lengths[which] == 1
         put = np.zeros(len(self.record.gauges))
         put[columns] = (used[single] * self._own[np.ix_(steps[single], columns)]).sum(axis=0)
-        for k in np.unique(which[~single]):
+        spread = np.flatnonzero(~single)
+        several, first, group = np.unique(which[spread], return_index=True, return_inverse=True)
+        given = np.bincount(group.ravel(), weights=self.record.depth[steps[spread], g])
+        for k, at, depth in zip(several.tolist(), spread[first].tolist(), given.tolist(), strict=True):
             estimate = self.estimates[k]
             if estimate.depth > 0:
-                mine = which == k
-                share = self.record.depth[steps[mine], g].sum() / estimate.depth
                 totals = self._own[estimate.first : estimate.stop, columns].sum(axis=0)
-                put[columns] += share * used[mine][0] * totals
+                put[columns] += depth / estimate.depth * used[at] * totals
         return put
 
     @cached_property
@@ -178,9 +212,9 @@ class Completed:
         return np.where(self.record.reporting, self.record.depth, 0.0)
 
     @cached_property
-    def _estimate_at(self) -> npt.NDArray[np.int64]:
+    def _estimate_at(self) -> npt.NDArray[np.int32]:
         """The position in ``estimates`` of what each depth belongs to, -1 where it is nothing but the gauge's own."""
-        at = np.full(self.record.depth.shape, -1, dtype=np.int64)
+        at = np.full(self.record.depth.shape, -1, dtype=np.int32)
         column = {gauge: g for g, gauge in enumerate(self.record.gauges)}
         for k, estimate in enumerate(self.estimates):
             at[estimate.first : estimate.stop, column[estimate.gauge]] = k
@@ -211,9 +245,9 @@ class Completed:
         return row_of, rows
 
     @cached_property
-    def _kinds(self) -> npt.NDArray[np.int64]:
+    def _kinds(self) -> npt.NDArray[np.int32]:
         """0 without a depth, 1 the gauge's own value, from 2 on the donor row that the depth rests on."""
-        kinds = np.where(self.record.reporting, _OWN, 0)
+        kinds = self.record.reporting.astype(np.int32)
         estimated = self._estimate_at >= 0
         kinds[estimated] = self._donor_rows[0][self._estimate_at[estimated]] + _DONATED
         return kinds

@@ -121,14 +121,13 @@ def complete(
     status = record.status.copy()
     status[filled.filled] = Status.INFILLED
     completed = replace(record, depth=filled.depth, status=status)
-    if not trace:
+    if filled.spans is None:
         return Completed(completed, (), ())
     window = Window(record, network, options, scale_of(record, options), fillable, relations, ratios)
     estimates: list[Estimate] = []
     notes: list[Note] = []
     for g in np.flatnonzero(gaps.any(axis=0)).tolist():
-        spans = [found.of_gauge(g) for found in filled.spans]
-        told = GaugeFilling(window, g, long[:, g], filled.depth[:, g], spans)
+        told = GaugeFilling(window, g, long[:, g], filled.depth[:, g], filled.spans.of_gauge(g))
         estimates += told.estimates
         notes += told.notes()
     notes = [*over_peak(record, gaps, filled.depth), *notes, *_annual_normals(window, estimates)]

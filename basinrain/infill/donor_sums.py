@@ -12,6 +12,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from functools import partial
+from itertools import pairwise
 from typing import Final, Generic, Protocol, TypeVar
 
 import numpy as np
@@ -124,7 +125,7 @@ class DonorSums:
             yield 0, slice(0, len(months))
             return
         first = np.concatenate([[0], np.flatnonzero(np.diff(months)) + 1, [len(months)]]).tolist()
-        for begin, stop in zip(first[:-1], first[1:], strict=True):
+        for begin, stop in pairwise(first):
             yield int(months[begin]), slice(begin, stop)
 
     def _weights(self, month: int, target: int, reporting: Bools, /) -> Floats:

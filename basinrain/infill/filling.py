@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from functools import cached_property
 from typing import Final
 
@@ -44,7 +44,7 @@ class GaugeFilling:
     See :func:`basinrain.infill.complete`, which makes one for every gauge with a gap.
     """
 
-    def __init__(self, window: Window, g: int, long: Bools, depth: Floats, spans: Sequence[SpanCells]) -> None:
+    def __init__(self, window: Window, g: int, long: Bools, depth: Floats, spans: SpanCells) -> None:
         self.estimates: list[Estimate] = []
         """Every estimate, by time."""
         self._window, self._g, self._depth = window, g, depth
@@ -57,8 +57,7 @@ class GaugeFilling:
         if long.any():
             self._left[f"the gap is {limit}"] = [np.flatnonzero(long)]
         by_step = window.fillable[:, g].copy()
-        for cells in spans:
-            self._tell_spans(cells, by_step, limit)
+        self._tell_spans(spans, by_step, limit)
         self._tell_steps(np.flatnonzero(by_step))
         self.estimates.sort(key=lambda estimate: estimate.first)
 

@@ -52,7 +52,7 @@ class Filled:
         mm; NaN where there is no depth.
     filled : array of bool, shape (n_steps, n_gauges)
         Which of them were infilled.
-    spans : tuple of SpanCells
+    spans : SpanCells, optional
         What became of days, or of the storm, of which a gauge misses more than half, where that is asked for.
 
     Examples
@@ -62,7 +62,7 @@ class Filled:
 
     depth: Floats
     filled: Bools
-    spans: tuple[SpanCells, ...] = ()
+    spans: SpanCells | None = None
 
 
 class RecordFiller:
@@ -135,7 +135,7 @@ class RecordFiller:
         self._require(record, long, scale, first)
         depth = np.array(record.depth, order="C")
         filled = np.zeros(depth.shape, dtype=bool)
-        cells: list[SpanCells] = []
+        cells: list[tuple[int, SpanCells]] = []
         months = month_of(record.starts, record.ends)
         totals = KnownTotals.of(record) if scale != "step" else None
         recorders = np.array([gauge in record.recorders for gauge in record.gauges], dtype=bool)
@@ -160,10 +160,10 @@ class RecordFiller:
                     out=depth[steps],
                 )
                 if trace:
-                    cells.append(_moved(found, begin))
+                    cells.append((begin, found))
             self._sums.put(block.depth, block.measured, by_step, months[steps], depth[steps])
             np.greater(block.fillable, np.isnan(depth[steps]), out=filled[steps])
-        return Filled(depth, filled, tuple(cells))
+        return Filled(depth, filled, SpanCells.joined(cells, depth.shape[1]) if trace else None)
 
     def _blocks(self, first: Ints, n_steps: int) -> Iterator[tuple[int, int, Ints]]:
         """Yield the first step, the step after the last, and the spans' first steps, of blocks of whole spans."""
@@ -294,10 +294,4 @@ def _block_of(record: RainRecord, steps: slice, long: Bools) -> Block:
         fillable=gaps & ~long[steps],
         long=gaps & long[steps],
         absent=(kinds & _ABSENT) != 0,
-    )
-
-
-def _moved(cells: SpanCells, by: int) -> SpanCells:
-    return SpanCells(
-        cells.gauge, cells.first + by, cells.stop + by, cells.month, cells.total, cells.fate, cells.donating
     )

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from collections.abc import Sequence
+from dataclasses import dataclass, fields, replace
 from enum import IntEnum
 from typing import Final, Protocol
 
@@ -123,6 +124,15 @@ class SpanCells:
         return SpanCells(*(getattr(self, field.name)[mine] for field in fields(self)))
 
     @classmethod
+    def joined(cls, parts: Sequence[tuple[int, SpanCells]], n_gauges: int) -> SpanCells:
+        """Return those of several blocks, each given with the record's step that it begins at."""
+        moved = [
+            replace(cells, first=cells.first + begin, stop=cells.stop + begin)
+            for begin, cells in ((0, cls.none(n_gauges)), *parts)
+        ]
+        return cls(*(np.concatenate([getattr(cells, field.name) for cells in moved]) for field in fields(cls)))
+
+    @classmethod
     def none(cls, n_gauges: int) -> SpanCells:
         """Return that there is none."""
         empty = np.empty(0, dtype=np.int64)
@@ -161,68 +171,57 @@ def intervals_of(first: Ints, absent: Bools) -> Intervals:
     within = first[span] != at
     order = np.lexsort((at[within], gauge[within], span[within]))
     at, gauge, span = at[within][order], gauge[within][order], span[within][order]
-    parts: dict[tuple[int, int], int] = {}
-    rows: list[tuple[int, int, int]] = []
-    for k, (t, g, s) in enumerate(zip(at.tolist(), gauge.tolist(), span.tolist(), strict=True)):
-        if k == 0 or (gauge[k - 1], span[k - 1]) != (g, s):
-            begin = int(first[s])
-        last = k + 1 == len(at) or (gauge[k + 1], span[k + 1]) != (g, s)
-        for bounds in ((begin, t), (t, int(stop[s])))[: 2 if last else 1]:
-            rows.append((parts.setdefault(bounds, len(first) + len(parts)), g, s))
-        begin = t
-    bounds_of = np.array(list(parts), dtype=np.int64).reshape(-1, 2)
-    row_of, gauge_of, span_of = np.array(rows, dtype=np.int64).reshape(-1, 3).T
+    # What comes between the borders of one gauge in one span.
+    opens = np.concatenate([[True], (np.diff(gauge) != 0) | (np.diff(span) != 0)])[: len(at)]
+    closes = np.append(opens[1:], np.ones(1, dtype=bool))[: len(at)]
+    begin = np.where(opens, first[span], np.roll(at, 1))
+    bounds = np.concatenate([np.column_stack([begin, at]), np.column_stack([at, stop[span]])[closes]])
+    bounds_of, row = np.unique(bounds, axis=0, return_inverse=True)
     return Intervals(
         np.concatenate([first, bounds_of[:, 0]]),
         np.concatenate([stop, bounds_of[:, 1]]),
         len(first),
-        row_of,
-        gauge_of,
-        span_of,
+        row.ravel() + len(first),
+        np.concatenate([gauge, gauge[closes]]),
+        np.concatenate([span, span[closes]]),
     )
 
 
-def span_sums(values: Floats | Bools, intervals: Intervals, *, every: bool = False) -> npt.NDArray[np.generic]:
-    """Return the sum of values over every interval, or whether they are true at every step of it.
+def span_sums(values: Floats | Bools, intervals: Intervals) -> Floats:
+    """Return the sum of values over every interval; of true and false, how many are true.
 
     Parameters
     ----------
     values : array of float or bool, shape (n_steps, n_gauges)
     intervals
         The intervals.
-    every
-        Whether to ask for every step instead of summing; of true and false the sum is how many are true.
 
     Returns
     -------
-    array, shape (n_rows, n_gauges)
+    array of float, shape (n_rows, n_gauges)
 
     Examples
     --------
     >>> intervals = intervals_of(np.array([0, 2]), np.zeros((4, 1), dtype=bool))
     >>> span_sums(np.array([[1.0], [2.0], [3.0], [4.0]]), intervals).ravel()
     array([3., 7.])
-    >>> span_sums(np.array([[True], [False], [True], [True]]), intervals, every=True).ravel()
-    array([False,  True])
+    >>> span_sums(np.array([[True], [False], [True], [True]]), intervals).ravel()
+    array([1., 2.])
     """
-    operation: np.ufunc = np.logical_and if every else np.add
-    counted = values.dtype == np.bool_ and not every
-    kind = {"dtype": np.int32} if counted else {}
     first, stop = intervals.first[: intervals.n_spans], intervals.stop[: intervals.n_spans]
     length = np.unique(stop - first)
+    counted = values.dtype == np.bool_
+    of_spans: npt.NDArray[np.generic]
     if len(length) == 1:
         # As long as each other: an axis of its own is far quicker to sum over.
         whole = values.reshape(len(first), int(length[0]), values.shape[1])
-        if counted and length[0] < 256:
-            whole, kind = whole.view(np.uint8), {"dtype": np.uint8}
-        of_spans = operation.reduce(whole, axis=1, **kind)
+        small = counted and int(length[0]) < 256
+        of_spans = whole.view(np.uint8).sum(axis=1, dtype=np.uint8) if small else whole.sum(axis=1)
     else:
-        of_spans = operation.reduceat(values, first, axis=0, **kind)
-    if counted:
-        of_spans = of_spans.astype(np.int32, copy=False)
+        of_spans = np.add.reduceat(values.astype(np.int32) if counted else values, first, axis=0)
     parts = zip(intervals.first[len(first) :].tolist(), intervals.stop[len(first) :].tolist(), strict=True)
-    of_parts = [operation.reduce(values[begin:end], axis=0, **kind) for begin, end in parts]
-    return np.concatenate([of_spans, np.stack(of_parts)]) if of_parts else np.asarray(of_spans)
+    of_parts = [values[begin:end].sum(axis=0) for begin, end in parts]
+    return np.concatenate([of_spans.astype(float), *(part[None, :] for part in of_parts)])
 
 
 def fill_spans(
@@ -269,7 +268,8 @@ def fill_spans(
     n_spans, length = intervals.n_spans, intervals.stop - intervals.first
     spans = np.repeat(np.arange(n_spans), length[:n_spans])
     missing = span_sums(block.fillable, intervals)
-    whole = (missing > 0) & (2 * span_sums(block.own, intervals) < length[:, None])
+    reported = span_sums(block.own, intervals)
+    whole = (missing > 0) & (2 * reported < length[:, None])
     # A gauge that comes or goes within a span has its parts instead, which nobody else has.
     mine = np.zeros_like(whole)
     mine[:n_spans] = True
@@ -284,9 +284,10 @@ def fill_spans(
     if not len(row):
         return by_step, SpanCells.none(block.depth.shape[1])
     depth = np.where(block.own, block.depth, 0.0)
-    own_totals = np.asarray(span_sums(depth, intervals), dtype=float)
-    complete = span_sums(block.own, intervals, every=True)
-    measured = complete if block.measured is block.own else span_sums(block.measured, intervals, every=True)
+    own_totals = span_sums(depth, intervals)
+    complete = np.asarray(reported == length[:, None])
+    all_measured = block.measured is block.own
+    measured = complete if all_measured else np.asarray(span_sums(block.measured, intervals) == length[:, None])
     cut = _cut(totals, depth, intervals)
     donating = np.asarray(complete & ~cut)
     long = span_sums(block.long, intervals)[row, gauge] > 0 if block.long.any() else np.zeros(len(row), dtype=bool)
@@ -386,7 +387,9 @@ def _nearest(usable: Bools, gauge: Ints, near: NearGauges) -> Ints:
     return found
 
 
-def _share_out(depth: Floats, steps: _Steps, gauge: Ints, donor: Ints, rest: Floats, out: Floats) -> None:
+def _share_out(  # noqa: PLR0917 - each cell's donor and rest, by its place
+    depth: Floats, steps: _Steps, gauge: Ints, donor: Ints, rest: Floats, out: Floats
+) -> None:
     """Give each cell's rest to its steps in the donor's pattern, evenly without one; the sum is kept."""
     if not len(steps.cell):
         return

@@ -132,13 +132,13 @@ class Substitutes:
         return np.asarray(self._places[node, 0] < self._n)
 
     def __len__(self) -> int:
-        """The number of nodes."""
+        """Return the number of nodes."""
         return len(self._target)
 
     @property
     def n_bytes(self) -> int:
         """About how much memory the donors of all nodes take."""
-        return len(self._target) * (_NODE + self._silent.shape[1] + 16 * self._places.shape[1])
+        return int(len(self) * (_NODE + self._silent.shape[1] + 16 * self._places.shape[1]))
 
     def of(self, silent: Bools) -> Pairs | None:
         """Return which gauges need other donors than in the full network, and their nodes.
@@ -180,7 +180,7 @@ class Substitutes:
         Returns
         -------
         array of int, shape (n_pairs,)
-            As :meth:`donors` takes them, until more are looked up; not :meth:`estimable` where there are too few donors.
+            As :meth:`donors` takes them, until more are looked up; not :meth:`estimable` where donors are too few.
 
         Raises
         ------
@@ -194,7 +194,7 @@ class Substitutes:
     def _in_full(self, g: int) -> Floats:
         everyone = self._reporting.copy()
         everyone[g] = False
-        return self._ask(g, everyone[None, :])[0]
+        return np.asarray(self._ask(g, everyone[None, :])[0])
 
     def _begin(self, targets: Ints) -> None:
         """Make room for the next look-ups, and ask for the donors of gauges that were not looked up before."""
@@ -203,10 +203,8 @@ class Substitutes:
         new = targets[~self._asked[targets]]
         if not len(new):
             return
-        if "base" in self.__dict__:
-            rows = self.base.T[new]
-        else:
-            rows = np.stack([self._in_full(int(g)) for g in new])
+        known = "base" in vars(self)
+        rows = self.base.T[new] if known else np.stack([self._in_full(int(g)) for g in new])
         width = int((rows != 0).sum(axis=1).max(initial=1))
         if width > MOST_DONORS:
             msg = f"gauges with more than {MOST_DONORS} donors are not looked up by sets of silent donors"

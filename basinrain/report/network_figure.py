@@ -87,7 +87,7 @@ def network_picture(run: SeriesRun) -> Picture | None:
     caption = (
         "Gauges in service, and how many of them report, mean of the steps of each stretch."
         if held
-        else "Gauges in service and not silent for longer than may be infilled. The record was read chunk by chunk: "
+        else "Gauges in service and not silent for long. The record was read chunk by chunk: "
         "how many reported at every step was not counted."
     )
     if run.changes:

@@ -20,16 +20,15 @@ CHANGES: Final = 30
 
 def changes_sentence(run: SeriesRun) -> str:
     """Return how often gauges came and went."""
+    silence = _silence(run)
     if not run.changes:
-        return (
-            "No gauge came into service, went out of it, or fell silent for longer than may be infilled "
-            f"({_longest(run)}), during the record."
-        )
+        silent = f", or was silent for {silence}," if silence else ""
+        return f"No gauge came into service or went out of it{silent} during the record."
     opened, closed = (sum(change.change == word for change in run.changes) for word in (OPENS, CLOSES))
-    silent = len({change.gauge for change in run.changes if change.change not in (OPENS, CLOSES)})
+    gauges = len({change.gauge for change in run.changes if change.change not in (OPENS, CLOSES)})
+    silent = f"; {counted(gauges, 'gauge was', 'gauges were')} silent for {silence}" if silence else ""
     return (
-        f"Gauges came into service {_times(opened)} and went out of it {_times(closed)} within the record; "
-        f"{counted(silent, 'gauge was', 'gauges were')} silent for longer than may be infilled ({_longest(run)}). "
+        f"Gauges came into service {_times(opened)} and went out of it {_times(closed)} within the record{silent}. "
         "Means before and after a change are not of the same gauges."
     )
 
@@ -38,9 +37,10 @@ def _times(n: int) -> str:
     return "once" if n == 1 else "never" if n == 0 else f"{n} times"
 
 
-def _longest(run: SeriesRun) -> str:
+def _silence(run: SeriesRun) -> str:
+    """Return how long a silence is that counts as a change; empty where none does."""
     longest = run.setup.infill.longest_gap
-    return "a gap of any length" if longest == float("inf") else f"{longest:g} day{'' if longest == 1 else 's'}"
+    return "" if longest == float("inf") else f"more than {longest:g} day{'' if longest == 1 else 's'}"
 
 
 def changes_table(run: SeriesRun) -> Table | None:
@@ -51,7 +51,8 @@ def changes_table(run: SeriesRun) -> Table | None:
     order = sorted(range(len(stretches)), key=lambda k: (stretches[k].change == SILENT, k))
     shown = [stretches[k] for k in sorted(order[:CHANGES])]
     notes = [f"Times are in {zone_text(run.record.zone)}."]
-    notes.append("Gauges from then on: in service, and not silent for longer than may be infilled.")
+    silence = _silence(run)
+    notes.append(f"Gauges from then on: in service{f', and not silent for {silence}' if silence else ''}.")
     if len(shown) < len(stretches):
         notes.append(
             f"Shown: {len(shown)} of {len(stretches)}, gauges that come into service or go out of it first. All are "

@@ -7,7 +7,6 @@ import numpy.typing as npt
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
-
 from thiessen_rounds import scattered
 
 from basinrain.averaging import thiessen_corrections
@@ -18,7 +17,7 @@ from basinrain.averaging.thiessen_removal import Removals
 
 @given(st.lists(st.lists(st.booleans(), min_size=6, max_size=6), min_size=1, max_size=5))
 def test_spans_cover_what_the_mask_says(rows: list[list[bool]]) -> None:
-    """Steps of all spans, painted, are the mask with every run as long as it is; runs next to each other are one span."""
+    """Steps of all spans are the mask's, with every run as long as it is; runs next to each other are one span."""
     mask, borders = np.array(rows), np.array([3, 4, 6, 7, 10, 11, 15])
     spans = Spans.where(mask, borders)
     painted = np.zeros((len(mask), 15), dtype=int)

@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import fields, is_dataclass, replace
+from functools import cache
 from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import Any
 
 import numpy as np
@@ -179,3 +181,22 @@ def widened(run: SeriesRun, n: int) -> SeriesRun:
         left_out=tuple(wide(found) for found in run.left_out),
         store=Wide(run.store, columns),  # type: ignore[arg-type]
     )
+
+
+@cache
+def four_years() -> SeriesRun:
+    """Return four years of days, all policies, two methods; C comes into service on 2028-05-01."""
+    with TemporaryDirectory() as folder:
+        return make_series_run(Path(folder), opened="2028-05-01")
+
+
+@cache
+def four_days() -> SeriesRun:
+    """Return four days that can be reckoned by hand: rain on the first and the third, when B is silent.
+
+    By Thiessen the square is A's for .5, B's for .425, C's for .075; without B A's for .675 and C's for .325. B gets
+    the mean of A and C, 30. So the depths are 15 and 25.75 by infill, 15 and 26.5 by reweighting.
+    """
+    depth = [[10, 20, 20], [0, 0, 0], [20, N, 40], [0, 0, 0]]
+    with TemporaryDirectory() as folder:
+        return make_series_run(Path(folder), depth, gaps=["infill", "reweight"], methods=["thiessen"])

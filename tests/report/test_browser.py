@@ -7,17 +7,19 @@ import subprocess
 from collections.abc import Callable, Iterator
 from dataclasses import replace
 from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import Any
 
 import pytest
 from report.comparison_pieces import make_comparison, make_network
 from report.infill_pieces import make_infill_run
 from report.screen_pieces import make_monthly, make_screen_run
+from report.series_run import four_years, make_series_run, widened
 from report.small_run import make_run
 from report.test_effect_figure import make_effect
 
 from basinrain.notes import Note
-from basinrain.report import render_comparison, render_report, render_screening
+from basinrain.report import render_comparison, render_report, render_screening, render_series
 
 CHROMIUM = Path("/usr/bin/chromium")
 
@@ -42,6 +44,18 @@ def _report() -> str:
     return render_report(replace(run, storms=storms, screening=screened.screening, edit_rows=screened.edit_rows))
 
 
+def _series() -> str:
+    with TemporaryDirectory() as folder:
+        run = make_series_run(
+            Path(folder),
+            methods=("arithmetic", "thiessen", "idw"),
+            opened="2028-05-01",
+            names=("A<script>alert(1)</script>", LONG[0], LONG[1]),
+        )
+    basins = replace(run.basins, ids=("Upper Wintermill above the weir at the old ford", "B&B", "union"))
+    return render_series(replace(run, basins=basins, setup=replace(run.setup, basins=basins)))
+
+
 PAGES: dict[str, Callable[[], str]] = {
     "report": _report,
     "screening": lambda: render_screening(make_screen_run(notes=(NOTE,))),
@@ -50,6 +64,8 @@ PAGES: dict[str, Callable[[], str]] = {
     "comparison of forty": lambda: render_comparison(
         replace(make_infill_run(make_comparison(LONG, cases=200)), network=make_network(LONG))
     ),
+    "series": _series,
+    "series of a thousand": lambda: render_series(widened(four_years(), 1000)),
 }
 
 

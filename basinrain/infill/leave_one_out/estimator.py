@@ -10,8 +10,8 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill.substitutes import Pairs, Substitutes, sum_donors
 from basinrain.infill.options import InfillOptions
+from basinrain.infill.substitutes import Pairs, Substitutes, sum_donors
 
 __all__ = ["Estimator", "Piece"]
 
