@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
@@ -14,10 +15,14 @@ from basinrain.averaging.reporting import ReportingRuns
 from basinrain.averaging.reweighing import steps_of_sets
 from basinrain.errors import MethodError
 from basinrain.infill import Completed
-from basinrain.rainfall import RainRecord, Status
+from basinrain.rainfall import Status
 from basinrain.weights import WeightTable
 
 __all__ = ["BasinDepths", "average_storm", "spread_across_methods"]
+
+
+_BLOCK: Final = 1 << 20
+"""Values of the record that are looked at together."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,6 +55,7 @@ class BasinDepths:
     --------
     Made by :func:`average_storm`. A step without any gauge makes the total missing, never the sum of what is left.
 
+    >>> from basinrain.rainfall import RainRecord
     >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
     >>> record = RainRecord.from_depths(("A",), ends - 3600, ends, [[3.0], [np.nan]], step="1h")
     >>> def whole(present):
@@ -101,6 +107,7 @@ def average_storm(completed: Completed, weigher: Weigher | Averager) -> BasinDep
     Examples
     --------
     >>> from basinrain.infill import InfillOptions, complete
+    >>> from basinrain.rainfall import RainRecord
     >>> from basinrain.gauges import GaugeNetwork
     >>> network = GaugeNetwork(ids=("A", "B", "C"), x=[0.0, 5000.0, 9000.0], y=[0.0] * 3, crs="local")
     >>> ends = np.array(["2031-05-04T01", "2031-05-04T02"], dtype="datetime64[s]")
@@ -127,28 +134,23 @@ def average_storm(completed: Completed, weigher: Weigher | Averager) -> BasinDep
     contribution = np.zeros((n_basins, n_gauges))
     least, most = np.full((n_basins, n_gauges), np.inf), np.full((n_basins, n_gauges), -np.inf)
     runs = ReportingRuns.of(has_depth)
-    known = runs.sets.any(axis=1)
+    known: npt.NDArray[np.bool_] = np.asarray(runs.sets.any(axis=1))
     if not known.all():
         contribution[:] = np.nan
         infilled[:] = np.nan
-    some = (steps for steps, held in zip(steps_of_sets(runs), known, strict=True) if held)
-    for steps, present, weights in zip(some, runs.sets[known], averager.weights(runs.sets[known]), strict=True):
+    some = (steps for steps, held in zip(steps_of_sets(runs), known.tolist(), strict=True) if held)
+    for of_set, weights in zip(some, averager.weights(runs.sets[known]), strict=True):
         if isinstance(weights, MethodError):
             raise weights
-        here = replace(table, weights=weights)
-        depth[steps] = here.apply(np.where(present, record.depth[steps], np.nan))
-        contribution += weights @ completed.sources(steps)
-        low, high = completed.influence(weights, steps)
-        least, most = np.minimum(least, low), np.maximum(most, high)
-        estimated = np.where(present & ~reporting[steps], record.depth[steps], 0.0).sum(axis=0)
-        infilled += weights @ estimated
-        weight_sum = weights.sum(axis=1)
-        observed_share[steps] = np.divide(
-            reporting[steps].astype(float) @ weights.T,
-            weight_sum,
-            out=np.full((len(depth[steps]), n_basins), np.nan),
-            where=weight_sum != 0,
-        )
+        here, weight_sum = replace(table, weights=weights), weights.sum(axis=1)
+        observed = weights.T / np.where(weight_sum == 0, np.nan, weight_sum)
+        for steps in _in_blocks(of_set, n_gauges):
+            depth[steps] = here.apply(record.depth[steps])
+            contribution += weights @ completed.sources(steps)
+            low, high = completed.influence(weights, steps)
+            least, most = np.minimum(least, low), np.maximum(most, high)
+            infilled += weights @ np.where(has_depth[steps] & ~reporting[steps], record.depth[steps], 0.0).sum(axis=0)
+            observed_share[steps] = reporting[steps].astype(float) @ observed
     means = averager.means(record.depth, reporting, n_basins)
     return BasinDepths(
         table=table,
@@ -162,6 +164,15 @@ def average_storm(completed: Completed, weigher: Weigher | Averager) -> BasinDep
         observed_share=observed_share,
         without_depth=np.asarray((~has_depth & (record.status != Status.NOT_INSTALLED)).sum(axis=0)),
     )
+
+
+def _in_blocks(steps: slice | npt.NDArray[np.int64], n_gauges: int) -> Iterator[slice | npt.NDArray[np.int64]]:
+    """Yield steps some at a time, so that what is made of their values stays small."""
+    most = max(_BLOCK // max(n_gauges, 1), 1)
+    if isinstance(steps, slice):
+        yield from (slice(k, min(k + most, steps.stop)) for k in range(steps.start, steps.stop, most))
+    else:
+        yield from (steps[k : k + most] for k in range(0, len(steps), most))
 
 
 def spread_across_methods(totals: Mapping[str, float] | Sequence[float]) -> tuple[float, float, float, float]:

@@ -270,7 +270,7 @@ def _connected(on: str, workers: int | None) -> Iterator[Client]:
     if on not in {"threads", "processes"}:
         try:
             client = Client(on, timeout=REACH_SECONDS, set_as_default=False)
-        except (OSError, TimeoutError, ValueError):
+        except OSError:
             raise _refused(
                 f"no scheduler that answers at {on} within {REACH_SECONDS:g} s",
                 expected="the address of a running one",

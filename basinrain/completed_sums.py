@@ -9,16 +9,22 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.averager import Averager
 from basinrain.averaging import Weigher
+from basinrain.averaging.reporting import ReportingRuns
 from basinrain.errors import MethodError, Problem
 from basinrain.infill.gaps import gap_mask
-from basinrain.rainfall import RainRecord
+from basinrain.rainfall import RainRecord, Status
 
 __all__ = ["CompletedSums", "average_sums"]
 
 _MOST_REBUILT: Final = 100
 """Sets of gauges for which the weights may be rebuilt where a method leaves gaps that the job's own fills."""
 
+_BLOCK: Final = 1 << 20
+"""Values of the record that are looked at together."""
+
+Bools = npt.NDArray[np.bool_]
 Floats = npt.NDArray[np.float64]
 
 
@@ -42,7 +48,7 @@ class CompletedSums:
     ... )
     >>> sums = CompletedSums.of(record)
     >>> sums.left, [part[0].tolist() for part in sums.parts.values()]
-    (1, [[6.0, 0.0], [5.0, 3.0]])
+    (1, [[5.0, 3.0], [6.0, 0.0]])
     """
 
     left: int
@@ -51,21 +57,33 @@ class CompletedSums:
     @classmethod
     def of(cls, record: RainRecord) -> CompletedSums:
         """Return the sums of a record after infill, or before it."""
-        present = ~np.isnan(record.depth)
-        infilled = present & ~record.reporting
-        depth = np.where(present, record.depth, 0.0)
-        packed, first_seen, group = np.unique(
-            np.packbits(present, axis=1), axis=0, return_index=True, return_inverse=True
-        )
-        order = np.argsort(group.ravel(), kind="stable")
-        first = np.searchsorted(group.ravel()[order], np.arange(len(packed)))
-        summed = [
-            np.add.reduceat(part[order], first, dtype=float)
-            for part in (depth, np.where(infilled, depth, 0.0), infilled)
-        ]
-        keys = [present[step].tobytes() for step in first_seen]
-        left = int(np.count_nonzero(gap_mask(record)))
-        return cls(left, dict(zip(keys, np.stack(summed, axis=1), strict=True)))
+        return cls.of_depths(record.depth, record.status == Status.INFILLED, gap_mask(record))
+
+    @classmethod
+    def of_depths(cls, depth: Floats, infilled: Bools, gaps: Bools) -> CompletedSums:
+        """Return the sums of completed depths.
+
+        Parameters
+        ----------
+        depth : array of float, shape (n_steps, n_gauges)
+            mm; NaN where there is none.
+        infilled : array of bool, shape (n_steps, n_gauges)
+            Which of them are infilled.
+        gaps : array of bool, shape (n_steps, n_gauges)
+            Where a gauge in service had no depth before infill.
+        """
+        runs = ReportingRuns.of(~np.isnan(depth))
+        left, n_gauges = 0, depth.shape[1]
+        parts = np.zeros((len(runs.sets), 3, n_gauges))
+        most = max(_BLOCK // max(n_gauges, 1), 1)
+        bounds = zip(runs.first.tolist(), runs.lengths.tolist(), runs.set_of_run.tolist(), strict=True)
+        for first, length, k in bounds:
+            for begin in range(first, first + length, most):
+                steps = slice(begin, min(begin + most, first + length))
+                there = np.where(runs.sets[k], depth[steps], 0.0)
+                parts[k] += there.sum(axis=0), (there * infilled[steps]).sum(axis=0), infilled[steps].sum(axis=0)
+            left += int(np.count_nonzero(gaps[first : first + length] & ~runs.sets[k]))
+        return cls(left, {present.tobytes(): part for present, part in zip(runs.sets, parts, strict=True)})
 
     def unlike(self, own: CompletedSums, n_gaps: int) -> str:
         """Return why a completed record is not to be set beside the job's own: it infills nothing, or far less.
@@ -94,7 +112,7 @@ class CompletedSums:
 
 
 def average_sums(
-    runs: Sequence[CompletedSums], weigher: Weigher, n_steps: int
+    runs: Sequence[CompletedSums], weigher: Weigher | Averager, n_steps: int
 ) -> tuple[Floats, Floats, dict[int, str]]:
     """Return the basin means of several completed records of one storm by one averaging method.
 
@@ -103,7 +121,7 @@ def average_sums(
     runs
         Their sums.
     weigher
-        Makes the method's weights for any set of gauges that are present.
+        Makes the method's weights for any set of gauges that are present, or does so faster for many.
     n_steps
         Steps of the storm.
 
@@ -135,22 +153,22 @@ def average_sums(
     refused: dict[int, str] = {}
     error: MethodError | None = None
     # Each set once, in a fixed order, whichever runs have it.
-    for key in dict.fromkeys(key for run in runs for key in run.parts):
-        present = np.frombuffer(key, dtype=bool)
-        having = [k for k, run in enumerate(runs) if key in run.parts]
-        if not present.any():
-            refused.update(dict.fromkeys(having, "at some step no gauge has a depth"))
+    keys = list(dict.fromkeys(key for run in runs for key in run.parts))
+    having = {key: [k for k, run in enumerate(runs) if key in run.parts] for key in keys}
+    empty = [key for key in keys if not any(key)]
+    refused.update(dict.fromkeys((k for key in empty for k in having[key]), "at some step no gauge has a depth"))
+    keys = [key for key in keys if any(key)]
+    averager = weigher if isinstance(weigher, Averager) else Averager(weigher)
+    sets = np.array([np.frombuffer(key, dtype=bool) for key in keys])
+    for key, weights in zip(keys, averager.weights(sets) if keys else (), strict=True):
+        if isinstance(weights, MethodError):
+            error = weights
+            refused.update(dict.fromkeys(having[key], str(weights)))
             continue
-        try:
-            table = weigher(present)
-        except MethodError as caught:
-            error = caught
-            refused.update(dict.fromkeys(having, str(caught)))
-            continue
-        weight = table.weights.sum(axis=1)
-        for k in having:
+        weight = weights.sum(axis=1)
+        for k in having[key]:
             # Run by run, since a product of more rows need not round like that of these three.
-            means = table.apply(np.where(present, runs[k].parts[key], np.nan))
+            means = runs[k].parts[key] @ weights.T
             means[2] /= np.where(weight == 0, np.nan, weight)
             sums[k] = sums.get(k, 0.0) + means
     if not sums:

@@ -9,13 +9,14 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.averager import Averager
 from basinrain.averaging import Weigher
 from basinrain.basin_depths import spread_across_methods
 from basinrain.completed_sums import CompletedSums, average_sums
 from basinrain.errors import BasinRainError, DataError, Problem
 from basinrain.gauges import GaugeNetwork
-from basinrain.infill import METHODS, Completed, InfillOptions, complete
-from basinrain.infill.gaps import gap_mask
+from basinrain.infill import METHODS, Completed, InfillOptions, RecordFiller, relations_of_record
+from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.infill.relations import AT_LEAST
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
@@ -147,7 +148,7 @@ def infill_effect(
     window: RainRecord,
     network: GaugeNetwork,
     completed: Completed,
-    weighers: Mapping[str, Weigher],
+    weighers: Mapping[str, Weigher | Averager],
     *,
     options: InfillOptions,
     asked: InfillOptions | None = None,
@@ -166,8 +167,8 @@ def infill_effect(
         The gauges, in the window's order.
     completed : Completed
         The window after the job's own infill, so that it need not be made twice.
-    weighers : mapping of str to Weigher
-        The averaging methods, by name.
+    weighers : mapping of str to Weigher or Averager
+        The averaging methods, by name; an averager is faster where the sets of gauges that have a depth are many.
     options : InfillOptions
         The job's own.
     asked : InfillOptions, optional
@@ -209,6 +210,7 @@ def infill_effect(
     >>> from basinrain.weights import WeightTable
     >>> def thirds(present):
     ...     return WeightTable("thirds", ("all",), network.ids, np.where(present, 1 / present.sum(), 0.0)[None, :])
+    >>> from basinrain.infill import complete
     >>> own = InfillOptions(method="station-average")
     >>> effect = infill_effect(window, network, complete(window, network, own), {"thirds": thirds}, options=own)
     >>> totals = dict(zip(effect.methods, effect.totals["thirds"][:, 0].round(2).tolist(), strict=True))
@@ -221,7 +223,9 @@ def infill_effect(
     if not used <= {options.method}:
         found, expected = f"infilled by {', '.join(sorted(used))}", f"infilled by {options.method}, as the options say"
         raise DataError(Problem(item="completed record", found=found, expected=expected))
-    own, n_gaps = options.label, int(np.count_nonzero(gap_mask(window)))
+    gaps = gap_mask(window)
+    long = longer_than(window, gaps, options.longest_gap) if long is None else long
+    own, n_gaps = options.label, int(np.count_nonzero(gaps))
     mine = CompletedSums.of(completed.record)
     # Sums only: the completed records of all methods together may be far larger than the job's own.
     runs: dict[str, CompletedSums] = {}
@@ -235,13 +239,13 @@ def infill_effect(
         if progress is not None:
             progress(label)
         try:
-            other = complete(
-                window, network, candidate, long=long, relations=relations, ratios=ratios, trace=False
-            ).record
+            known = _relations(candidate, window, network, relations, ratios) if n_gaps else None
+            filler = RecordFiller(network, candidate, relations=known, ratios=ratios)
+            filled = filler.fill(window, long)
         except BasinRainError as error:
             skipped[label] = _in_short(error)
             continue
-        sums = CompletedSums.of(other)
+        sums = CompletedSums.of_depths(filled.depth, filled.filled, gaps)
         if reason := sums.unlike(mine, n_gaps):
             skipped[label] = reason + (_unrelated(relations) if method.needs_relations else "")
         else:
@@ -259,6 +263,18 @@ def infill_effect(
         skipped=skipped,
         refused=refused,
     )
+
+
+def _relations(
+    options: InfillOptions,
+    window: RainRecord,
+    network: GaugeNetwork,
+    relations: Relations | None,
+    ratios: NormalRatios | None,
+) -> Relations | None:
+    if relations is not None or not options.chosen_method.needs_relations:
+        return relations
+    return relations_of_record(window, network, ratios=ratios)
 
 
 def _unrelated(relations: Relations | None) -> str:

@@ -13,7 +13,8 @@ from pathlib import Path
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.averaging import Weigher, averaging_method
+from basinrain.averager import Averager
+from basinrain.averaging import averaging_method
 from basinrain.basin_depths import average_storm
 from basinrain.basins import Basins
 from basinrain.cautions import network_cautions, record_cautions, screening_cautions, storm_cautions
@@ -243,7 +244,7 @@ def _moved(  # noqa: PLR0917 - each room's product, in order
     window: RainRecord,
     infill: InfillChoice,
     network: GaugeNetwork,
-    weighers: dict[str, Weigher],
+    weighers: dict[str, Averager],
     long: npt.NDArray[np.bool_],
     say: Report,
 ) -> tuple[StormResult, tuple[Note, ...]]:
@@ -315,10 +316,12 @@ def _storm(job: Job, table: StormTable, record: RainRecord) -> tuple[Storm, tupl
     return storm_window(record, table.name, start=start, end=end, pattern=table.pattern)
 
 
-def _weighers(job: Job, network: GaugeNetwork, basins: Basins) -> dict[str, Weigher]:
+def _weighers(job: Job, network: GaugeNetwork, basins: Basins) -> dict[str, Averager]:
     """Prepare every averaging method once, on the full network."""
+    methods = [(averaging_method(name), job.averaging.options(name)) for name in job.averaging.methods]
     return {
-        name: averaging_method(name)(network, basins, job.averaging.options(name)) for name in job.averaging.methods
+        method.name: Averager(method(network, basins, options), partial(method.reweigher, network, basins, options))
+        for method, options in methods
     }
 
 
@@ -351,7 +354,7 @@ def _run_one(  # noqa: PLR0917 - each room's product, in order
     completed: Completed,
     network: GaugeNetwork,
     basins: Basins,
-    weighers: dict[str, Weigher],
+    weighers: dict[str, Averager],
 ) -> tuple[StormResult, tuple[Note, ...]]:
     depths = {name: average_storm(completed, weigher) for name, weigher in weighers.items()}
     shapes = hyetograph_shape(completed, storm, network, basins)

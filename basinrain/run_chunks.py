@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable
 from typing import Final
 
@@ -19,7 +20,7 @@ HERE: Final = "here"
 PLACES: Final = (HERE, "threads", "processes")
 """Where chunks are computed, besides the address of a scheduler."""
 
-_ADDRESSES: Final = ("tcp://", "tls://")
+_ADDRESS: Final = re.compile(r"(?:tcp|tls)://[^\s/]+:\d+")
 
 ChunkProgress = Callable[[int, int], None]
 """Is called with the steps that are done and the steps there are: at the start, and after every chunk."""
@@ -42,7 +43,7 @@ def check_place(on: str) -> None:
         ...
     basinrain.errors.JobError: [series] on: found 'proceses'; expected here, ...; did you mean 'processes'?
     """
-    if on in PLACES or any(on.startswith(head) and len(on) > len(head) for head in _ADDRESSES):
+    if on in PLACES or _ADDRESS.fullmatch(on):
         return
     raise JobError(
         Problem(

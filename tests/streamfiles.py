@@ -26,7 +26,9 @@ def hours(n: int, start: str = "2031-05-04T01:00:00", *, minutes: int = 60) -> n
 
 def network_of(*ids: str, **options: Any) -> GaugeNetwork:  # noqa: ANN401 - any option of a network
     """Return gauges a kilometre apart in a line."""
-    return GaugeNetwork(ids=ids, x=[1000.0 * k for k in range(len(ids))], y=[0.0] * len(ids), crs="local", **options)
+    return GaugeNetwork(
+        ids=ids, x=np.linspace(0.0, 9000.0, len(ids)), y=np.linspace(0.0, 1.0, len(ids)), crs="local", **options
+    )
 
 
 def wide_csv(

@@ -57,6 +57,6 @@ def test_every_dependency_has_its_reason() -> None:
     """docs/dependencies.md names every package of pyproject.toml."""
     project = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))["project"]
     listed = [*project["dependencies"], *(p for extra in project["optional-dependencies"].values() for p in extra)]
-    names = {re.split(r"[<>=~ ]", requirement)[0] for requirement in listed}
+    names = {re.split(r"[<>=~ \[]", requirement)[0] for requirement in listed}
     text = (ROOT / "docs" / "dependencies.md").read_text(encoding="utf-8").lower()
     assert {name for name in names if f"`{name.lower()}`" not in text and name.lower() not in text} == set()

@@ -118,6 +118,7 @@ def test_a_stopped_run_goes_on_with_the_same_bytes(tmp_path: Path, undisturbed: 
         ("proceses", "did you mean 'processes'?"),
         ("", "one of: here, threads, processes"),
         ("tcp://", "one of: here, threads, processes"),
+        ("tcp://10.0.0.5", "one of: here, threads, processes"),
         ("10.0.0.5:8786", "one of: here, threads, processes"),
     ],
 )
@@ -132,8 +133,8 @@ def test_a_place_that_is_none_is_refused(on: str, advice: str) -> None:
 def test_a_store_of_other_borders_is_refused() -> None:
     """Chunks are not put where others belong."""
     layout = {"key": "a job", "n_steps": STEPS, "n_basins": 3, "series": small_setup().series}
-    with SeriesStore.open(None, borders=[0, STEPS], **layout) as store:  # type: ignore[arg-type]
-        with pytest.raises(ValueError, match=r"the source has the borders .* the store \(0, 288\)"):
-            run_chunks(small_setup(), small_source(), store)
+    one = SeriesStore.open(None, borders=[0, STEPS], **layout)  # type: ignore[arg-type]
+    with one as store, pytest.raises(ValueError, match=r"the source has the borders .* the store \(0, 288\)"):
+        run_chunks(small_setup(), small_source(), store)
     with small_store() as store, pytest.raises(ValueError, match="found 0 workers; expected 1 or more"):
         run_chunks(small_setup(), small_source(), store, workers=0)

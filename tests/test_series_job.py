@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import os
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -21,7 +20,7 @@ DATA = Path(__file__).parent / "data"
 N = np.nan
 
 
-def open_job(folder: Path, gauges: Path, *, interval: str, cell: float, **tables: Any) -> Job:
+def open_job(folder: Path, gauges: Path, *, interval: str, cell: float, **tables: object) -> Job:
     """Return a job over an open dataset in its own plane, by all methods, reweighted."""
     return parse_job(
         {
@@ -103,7 +102,9 @@ def oahu(tmp_path_factory: pytest.TempPathFactory) -> dict[str, SeriesRun]:
         infill = {"method": method, "scale": "step", "nearest": "all", "min_donors": 1}
         job = open_job(folder, gauges, interval="1d", cell=500.0, infill=infill, averaging={"methods": "thiessen"})
         series = {"gaps": ["infill", "reweight"], "leave_out": ["USC00518838"]}
-        runs[method] = run_series(parse_job({**job.model_dump(exclude={"folder"}, exclude_none=True), "series": series}))
+        runs[method] = run_series(
+            parse_job({**job.model_dump(exclude={"folder"}, exclude_none=True), "series": series})
+        )
     return runs
 
 
@@ -209,8 +210,14 @@ def test_a_record_in_parts_is_the_same(tmp_path: Path, monkeypatch: pytest.Monke
     ("setting", "message"),
     [
         ("infill.method=leave-one-out", r"\[infill\] method: found 'leave-one-out'; expected a method by name where"),
-        ("infill.method=regression", r"\[infill\] method: found 'regression', which rests on correlations in the whole"),
-        ("screening.reject=['stuck-values A']", r"\[screening\] reject: found it; expected none where a record is read"),
+        (
+            "infill.method=regression",
+            r"\[infill\] method: found 'regression', which rests on correlations in the whole",
+        ),
+        (
+            "screening.reject=['stuck-values A']",
+            r"\[screening\] reject: found it; expected none where a record is read",
+        ),
         ("gauges.colocated=mean", r"\[gauges\] colocated: found it; expected none where a record is read in parts"),
     ],
 )

@@ -191,14 +191,17 @@ def _nearness(rings: Rings, places: _Places) -> Floats:
     return result
 
 
-def _cut_out(rings: Rings, places: _Places, near: Floats, ring: Ints, own: Ints) -> tuple[Rings, Ints]:
+def _cut_out(rings: Rings, places: _Places, ring: Ints, own: Ints) -> tuple[Rings, Ints]:
     """Cut for every pair of ring and one of its gauges what is nearest to it; return the parts and their pairs."""
-    at, first = _corners(rings, ring)
-    own_near = near[np.repeat(own, np.diff(first)), at]
-    depth = np.empty((len(ring), len(near)))
-    for j in range(len(near)):
-        np.minimum.reduceat(near[j, at] - own_near, first[:-1], out=depth[:, j])
-    # Only the bisectors that cut the ring, those that cut deepest first; pairs with most of them first, so that the
+    begin = rings.first[:-1]
+    # How far a ring's box reaches beyond each bisector.
+    depth = places.square[ring] - places.square[ring, own][:, None]
+    for corner, place in ((rings.x, places.x), (rings.y, places.y)):
+        low, high = np.minimum.reduceat(corner, begin)[ring], np.maximum.reduceat(corner, begin)[ring]
+        slope = 2.0 * (place[ring, own][:, None] - place[ring])
+        depth += np.minimum(slope * low[:, None], slope * high[:, None])
+    depth[np.arange(len(ring)), own] = 0.0
+    # Only the bisectors that cut the box, those that cut deepest first; pairs with most of them first, so that the
     # ones still to be cut are always the leading ones.
     others = np.argsort(depth, axis=1, kind="stable")
     needed = (depth < 0).sum(axis=1)
@@ -248,17 +251,17 @@ def _share_some(rings: Rings, gauges: Ints, places: _Places, unit: Floats) -> tu
     if len(crossed):
         at, first = _corners(rings, crossed)
         cut = Rings(rings.x[at], rings.y[at], first)
-        some, near = places.rows(crossed), near[:, at]
+        some = places.rows(crossed)
         seen = np.zeros((len(crossed), len(near)), dtype=bool)
         seen[np.repeat(np.arange(len(crossed)), cut.counts), label[at]] = True
         # First only the gauges to which a corner is nearest: whether that was all, the sum of areas tells.
         ring, own = np.nonzero(seen)
-        parts, pair = _cut_out(cut, some, near, ring, own)
+        parts, pair = _cut_out(cut, some, ring, own)
         short = _short(ring_areas(parts), ring[pair], areas[crossed], EXACT * unit[crossed])
         if short.any():
             kept = np.flatnonzero(~short[ring[pair]])
             ring_again, own_again = np.nonzero(np.isfinite(some.square) & short[:, None])
-            again, pair_again = _cut_out(cut, some, near, ring_again, own_again)
+            again, pair_again = _cut_out(cut, some, ring_again, own_again)
             parts = join_rings([take_rings(parts, kept), again])
             ring_of = np.concatenate([ring[pair[kept]], ring_again[pair_again]])
             own_of = np.concatenate([own[pair[kept]], own_again[pair_again]])

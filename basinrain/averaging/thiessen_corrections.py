@@ -75,7 +75,8 @@ class Spans(NamedTuple):
         """Return the steps of all of them, one after another."""
         lengths = self.lengths
         begins = np.cumsum(lengths) - lengths
-        return np.arange(lengths.sum()) + np.repeat(self.first - begins, lengths)
+        steps: Ints = np.arange(lengths.sum()) + np.repeat(self.first - begins, lengths)
+        return steps
 
 
 class Corrections:

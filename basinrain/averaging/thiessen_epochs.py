@@ -141,8 +141,8 @@ def epochs_of(present: Bools, edges_without: Callable[[Bools], Ints]) -> Iterato
         holes = large_holes(missing, edges_without(nobody))
         absent = nobody
         if _many(holes):
-            throughout = some[first:stop].any() & ~inside.any(axis=0)
-            if throughout.any():
+            throughout: Bools = np.asarray(~inside.any(axis=0))
+            if throughout.any() and not throughout.all():
                 absent = throughout
                 holes = large_holes(missing & ~absent, edges_without(absent))
         if _many(holes) and stop - first >= _SHORT:

@@ -18,8 +18,12 @@ from basinrain.reading.stamps import StampRules, read_stamps
 __all__ = ["NetcdfTimes", "interval_ends"]
 
 _STANDARD: Final = ("standard", "gregorian", "proleptic_gregorian")
-_OFFSET: Final = re.compile(r"(?:(?P<utc>Z|UTC|GMT)|(?P<sign>[+-])(?P<hours>[0-9]{1,2}):?(?P<minutes>[0-5][0-9])?)\s*$")
-_CLOCK: Final = re.compile(r"since\s+[0-9+-]+-[0-9]+-[0-9]+(?:[T ]\s*[0-9]{1,2}(?::[0-9]{1,2}(?::[0-9.]+)?)?)?")
+_UNITS: Final = re.compile(
+    r"\s*(?P<base>\w+\s+since\s+[0-9]{1,4}-[0-9]{1,2}-[0-9]{1,2}"
+    r"(?:(?:T|\s+)[0-9]{1,2}(?::[0-9]{1,2}(?::[0-9]{1,2}(?:\.[0-9]*)?)?)?)?)"
+    r"\s*(?:(?P<utc>Z|UTC|GMT)|(?P<sign>[+-])(?P<hours>[0-9]{1,2})(?::?(?P<minutes>[0-9]{2}))?)?\s*",
+    re.IGNORECASE,
+)
 
 
 @dataclass(frozen=True, eq=False)
@@ -102,33 +106,34 @@ def _decoded(
             remedy="convert the times",
         )
         return None
+    match = _UNITS.fullmatch(units)
+    if match is None:
+        problems.add(item=item, found=f"units '{units}'", expected=expected, remedy="correct the attribute")
+        return None
     numbers = np.ma.masked_invalid(values[:])
     blank = np.ma.getmaskarray(numbers)
     try:
         dates = netCDF4.num2date(
-            numbers.filled(0), units, calendar, only_use_cftime_datetimes=False, only_use_python_datetimes=True
+            numbers.filled(0), match["base"], calendar, only_use_cftime_datetimes=False, only_use_python_datetimes=True
         )
     except (ValueError, OverflowError, TypeError) as error:
         problems.add(item=item, found=f"units '{units}' ({error})", expected=expected, remedy="correct the attribute")
         return None
     # Numbers of days in floating point are seldom whole seconds.
     exact = np.asarray(dates, dtype="datetime64[us]") + np.timedelta64(500_000, "us")
-    ahead = _offset(units)
-    times = np.asarray(exact + np.timedelta64(ahead or 0, "s"), dtype="datetime64[s]")
+    times = np.asarray(exact, dtype="datetime64[s]")
     times[blank] = np.datetime64("NaT")
-    return times, ahead
+    return times, _offset(match)
 
 
-def _offset(units: str) -> int | None:
+def _offset(units: re.Match[str]) -> int | None:
     """Return the seconds ahead of UTC that the units of a time name; None where they do not."""
-    rest = _CLOCK.sub("", units, count=1)
-    match = _OFFSET.search(rest)
-    if match is None:
-        return None
-    if match["utc"]:
+    if units["utc"]:
         return 0
-    seconds = int(match["hours"]) * 3600 + int(match["minutes"] or 0) * 60
-    return -seconds if match["sign"] == "-" else seconds
+    if not units["sign"]:
+        return None
+    seconds = int(units["hours"]) * 3600 + int(units["minutes"] or 0) * 60
+    return -seconds if units["sign"] == "-" else seconds
 
 
 def _bounds(

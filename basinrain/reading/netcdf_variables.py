@@ -148,7 +148,6 @@ def _check_unit(variable: Any, name: str, depths: DepthRules, problems: Problems
             found=f"units '{unit}'",
             expected=f"a depth in '{depths.unit}', as unit declares",
             remedy="correct unit" if factor is not None else "give depths; a rate must be multiplied by its time",
-            column=name,
         )
 
 
@@ -172,7 +171,7 @@ def _gauges(
     ids = _texts(file[name])
     if ids is None:
         expected = "text or whole numbers, one for each gauge"
-        problems.add(item=f"variable {name}", found=_shape(file, name), expected=expected, column=name)
+        problems.add(item=f"variable {name}", found=_shape(file, name), expected=expected)
         return ()
     for gauge, count in Counter(ids).items():
         if count > 1 or not gauge:
@@ -180,7 +179,6 @@ def _gauges(
                 item=f"variable {name}",
                 found=f"{count} gauges named '{gauge}'" if gauge else "a gauge without an id",
                 expected="every gauge once" if gauge else "an id for every gauge",
-                column=name,
                 gauge=gauge,
             )
     return tuple(ids)

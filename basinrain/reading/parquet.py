@@ -224,7 +224,6 @@ def open_parquet(path: Path, *, layout: str, columns: Mapping[str, str]) -> Parq
                 found=f"values of the type {schema.field(name).type}",
                 expected=_EXPECTED[role],
                 remedy="convert the column, or remove it" if layout == "wide" else "convert the column",
-                column=name,
             )
     problems.raise_as(ReadError)
     floats = {name: _FLOATS[kind] for name in roles if (kind := str(schema.field(name).type)) in _FLOATS}

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Collection, Sequence
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
@@ -23,7 +24,7 @@ from basinrain.reading.stream_times import read_texts
 
 __all__ = ["LongPass"]
 
-_LISTED = 3
+_LISTED: Final = 3
 
 
 class LongPass:
@@ -51,6 +52,7 @@ class LongPass:
         self._lines: list[npt.NDArray[np.int64]] = []
         self._first_rows: list[npt.NDArray[np.int64]] = []
         self._n_rows = self._n_times = 0
+        self._last = np.array(["NaT"], dtype="datetime64[s]")
         self._code: dict[str, int] = {}
         # Of every gauge: the time (counted, and on the axis) and the line of its latest row, its first time, its rows,
         # and how many of its spacings are one step.
@@ -156,8 +158,7 @@ class LongPass:
             )
 
     def _check_order(self, rows: npt.NDArray[np.datetime64], table: DelimitedTable) -> None:
-        latest = self._ends[-1][-1] if self._ends else rows[0]
-        back = np.flatnonzero(np.diff(np.r_[latest, rows]) < np.timedelta64(0, "s"))
+        back = np.flatnonzero(np.diff(np.r_[self._last, rows]) < np.timedelta64(0, "s"))
         if not len(back):
             return
         row = int(back[0])
@@ -173,12 +174,12 @@ class LongPass:
 
     def _note(self, rows: npt.NDArray[np.datetime64], table: DelimitedTable) -> None:
         """Remember new times, and which gauges have rows at them."""
-        latest = self._ends[-1][-1:] if self._ends else np.array(["NaT"], dtype="datetime64[s]")
-        new = np.r_[latest, rows[:-1]] != rows
+        new = np.r_[self._last, rows[:-1]] != rows
         counted = self._n_times - 1 + np.cumsum(new)
         self._ends.append(rows[new])
         self._lines.append(table.lines[new])
         self._first_rows.append(self._n_rows + np.flatnonzero(new))
+        self._last = rows[-1:]
         self._n_rows, self._n_times = self._n_rows + len(rows), self._n_times + int(new.sum())
 
         codes = self._codes(table)

@@ -72,6 +72,7 @@ def means_table(run: SeriesRun) -> Table:
     """
     gaps, mm, annual = run.setup.gaps, depth_factor(run.depth_unit), has_years(run)
     basins = _listed_basins(run)
+    n = len(gaps)
     rows: list[Row] = []
     for b in basins:
         for method in run.setup.methods:
@@ -88,7 +89,7 @@ def means_table(run: SeriesRun) -> Table:
                     percent_text(float(found[0].terms.observed_share[b])),
                 )
             )
-    n, unit = len(gaps), unit_word(run.depth_unit)
+    unit = unit_word(run.depth_unit)
     what = f"mean annual depth, {unit}" if annual else f"depth of the record, {unit}"
     notes = [
         "Depths: means of the complete water years. Years: how many they are."
@@ -103,6 +104,11 @@ def means_table(run: SeriesRun) -> Table:
         "Observed share: with the weights of all gauges in service, the share that lay on gauges that report, mean of "
         f"the steps{f' by {gaps[0]!r}' if n > 1 else ''}."
     )
+    if any(DASH in row[n + 2] for row in rows):
+        notes.append(
+            f"Where {'years' if annual else 'steps'} differ between policies, the depths are not of the same "
+            f"{'years' if annual else 'steps'}."
+        )
     others = len(run.basins) - len(basins)
     if others:
         by = "whose means differ most between policies" if n > 1 else "with the smallest observed shares"

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from itertools import groupby
 from typing import Any, Final
 
 import numpy as np
@@ -23,6 +22,7 @@ from basinrain.series.network_changes import CLOSES, OPENS, RETURNS, SILENT, Net
 __all__ = ["network_picture"]
 
 _BINS: Final = 240
+_POINTS: Final = 400  # marks in a row, steps of a line
 _BLOCK: Final = 1 << 24
 _HEIGHT, _LEFT, _RIGHT, _HEAD, _FOOT, _ROW = 2.7, 0.62, 0.12, 0.3, 0.42, 0.13  # inches
 
@@ -69,8 +69,7 @@ def network_picture(run: SeriesRun) -> Picture | None:
             above = figure.add_axes(
                 (_LEFT / PAGE_WIDTH, _FOOT / _HEIGHT + tall + 0.05 / _HEIGHT, wide, strip / _HEIGHT)
             )
-            _marks(above, run.changes, present)
-            above.set_xlim(*span)
+            _marks(above, run.changes, present, span)
             handles += [
                 Line2D([], [], linestyle="none", color="black", markersize=4.2, label=word, **look)
                 for word, look in present
@@ -123,20 +122,43 @@ def _counts(record: RainRecord) -> tuple[Floats, Floats]:
 
 
 def _from_changes(axes: Any, run: SeriesRun) -> list[Any]:  # noqa: ANN401 - matplotlib's axes
-    groups = [(time, list(changes)) for time, changes in groupby(run.changes, key=lambda change: change.time)]
-    times = [_number(time) for time, _ in groups] + [_number(run.ends[-1])]
-    axes.stairs([changes[-1].gauges for _, changes in groups], times, baseline=None, color=INK, linewidth=1.1)
+    last = {change.time: change.gauges for change in run.changes}
+    times = _numbers(list(last))
+    counts = np.array(list(last.values()))
+    edges = np.append(times, _number(run.ends[-1]))
+    if len(counts) > _POINTS:
+        edges = np.linspace(edges[0], edges[-1], _POINTS + 1)
+        counts = counts[np.searchsorted(times, edges[:-1], side="right") - 1]
+    axes.stairs(counts, edges, baseline=None, color=INK, linewidth=1.1)
     return [Line2D([], [], color=INK, linewidth=1.1, label="in service, not silent for long, from the first change")]
 
 
-def _marks(axes: Any, changes: tuple[NetworkChange, ...], rows: list[tuple[str, dict[str, Any]]]) -> None:  # noqa: ANN401 - matplotlib's axes
+def _numbers(times: list[np.datetime64]) -> Floats:
+    return np.asarray(date2num(np.array(times, dtype="datetime64[s]")), dtype=np.float64)  # type: ignore[no-untyped-call]
+
+
+def _marks(
+    axes: Any,  # noqa: ANN401 - matplotlib's axes
+    changes: tuple[NetworkChange, ...],
+    rows: list[tuple[str, dict[str, Any]]],
+    span: tuple[float, float],
+) -> None:
+    axes.set_xlim(*span)
     axes.set_ylim(len(rows) - 0.5, -0.5)
     axes.axis("off")
+    grain = (span[1] - span[0]) / _POINTS
     for row, (word, look) in enumerate(rows):
+        times = _numbers([change.time for change in changes if change.change == word])
         # Marks on the same spot of the paper are one mark.
-        times = np.unique(np.round([_number(change.time) for change in changes if change.change == word], 2))
+        _, first = np.unique(np.floor((times - span[0]) / grain), return_index=True)
         axes.plot(
-            times, np.full(len(times), row), linestyle="none", color="black", markersize=4.2, clip_on=False, **look
+            times[first],
+            np.full(len(first), row),
+            linestyle="none",
+            color="black",
+            markersize=4.2,
+            clip_on=False,
+            **look,
         )
 
 

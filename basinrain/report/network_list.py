@@ -15,7 +15,10 @@ from basinrain.series.network_changes import CLOSES, OPENS, RETURNS, SILENT
 __all__ = ["CHANGES", "changes_sentence", "changes_table"]
 
 CHANGES: Final = 30
-"""Changes of a network that are listed."""
+"""Lines of changes."""
+
+_NAMED: Final = 6
+"""Gauges that are named where several change together."""
 
 
 def changes_sentence(run: SeriesRun) -> str:
@@ -44,10 +47,13 @@ def _silence(run: SeriesRun) -> str:
 
 
 def changes_table(run: SeriesRun) -> Table | None:
-    """Return the changes in time, a silence in one line; of many those that last before silences. None without any."""
+    """Return the changes in time, a silence in one line, gauges that changed together in one; None without any.
+
+    Of many lines those that last stand before silences.
+    """
     if not run.changes:
         return None
-    stretches = _stretches(run)
+    stretches = _together(_stretches(run))
     order = sorted(range(len(stretches)), key=lambda k: (stretches[k].change == SILENT, k))
     shown = [stretches[k] for k in sorted(order[:CHANGES])]
     notes = [f"Times are in {zone_text(run.record.zone)}."]
@@ -55,12 +61,12 @@ def changes_table(run: SeriesRun) -> Table | None:
     notes.append(f"Gauges from then on: in service{f', and not silent for {silence}' if silence else ''}.")
     if len(shown) < len(stretches):
         notes.append(
-            f"Shown: {len(shown)} of {len(stretches)}, gauges that come into service or go out of it first. All are "
-            "in network_changes.csv."
+            f"Shown: {len(shown)} of {len(stretches)} lines, gauges that come into service or go out of it first. All "
+            "are in network_changes.csv."
         )
     return Table(
         caption="Changes of the network",
-        heads=("from", "until", "gauge", "change", "gauges from then on"),
+        heads=("from", "until", "gauges", "change", "gauges from then on"),
         align="ttttn",
         rows=[
             (
@@ -106,3 +112,16 @@ def _stretches(run: SeriesRun) -> list[_Stretch]:
             silent[one.gauge] = len(found)
         found.append(_Stretch(one.time, never, one.gauge, one.change, one.gauges))
     return found
+
+
+def _together(stretches: list[_Stretch]) -> list[_Stretch]:
+    """Return the stretches with those that are alike in one, whose gauge names some of them."""
+    alike: dict[tuple[str, str, str], list[_Stretch]] = {}
+    for one in stretches:
+        alike.setdefault((str(one.start), str(one.end), one.change), []).append(one)
+    joined = []
+    for several in alike.values():
+        named = ", ".join(one.gauge for one in several[:_NAMED])
+        more = len(several) - _NAMED
+        joined.append(replace(several[0], gauge=f"{named} and {more} more" if more > 0 else named))
+    return joined

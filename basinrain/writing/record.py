@@ -113,7 +113,9 @@ def _rows(frame: pd.DataFrame) -> list[dict[str, Any]]:
 
 
 def _plain(value: Any) -> Any:  # noqa: ANN401 - a cell
-    return None if isinstance(value, float) and not math.isfinite(value) else value
+    import pandas as pd
+
+    return None if value is pd.NA or (isinstance(value, float) and not math.isfinite(value)) else value
 
 
 def record_text(run: Run, files: list[str]) -> str:

@@ -25,9 +25,11 @@ def shares(shape: shapely.Geometry, places: npt.NDArray[np.float64]) -> npt.NDAr
     rings, _ = rings_of(polygons(shape), (0.0, 0.0))
     n = len(rings.first) - 1
     x, y = places.T
-    shared = share_rings(rings, np.tile(np.arange(len(places)), (n, 1)), x, y, np.full(n, shape.area))
+    shared = share_rings(rings, np.tile(np.arange(len(places)), (n, 1)), x, y, np.full(n, shapely.area(shape)))
     assert not shared.lost.any()
-    return np.bincount(shared.gauge, shared.area, minlength=len(places))
+    taken: npt.NDArray[np.float64] = np.zeros(len(places))
+    np.add.at(taken, shared.gauge, shared.area)
+    return taken
 
 
 def test_rings_turn_by_what_they_are() -> None:

@@ -90,7 +90,7 @@ def test_dear_holes_and_lost_removals_ask_for_weights_of_their_own(monkeypatch: 
     borders = np.arange(7)
 
     def own(removals: Removals) -> list[int]:
-        return Corrections(made, removals, missing.copy(), holes, borders).own.tolist()
+        return [int(run) for run in Corrections(made, removals, missing.copy(), holes, borders).own]
 
     assert own(Removals(made)) == []
     removals = Removals(made)

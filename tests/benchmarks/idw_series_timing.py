@@ -64,7 +64,7 @@ def by_record(network: GaugeNetwork, basins: Basins, grid: Grid, depth: Floats, 
         "sets": len(runs.sets),
         "error": error(network, basins, grid, depth, ready(depth, runs)),
         "idw": ratios(lambda: series(network, basins, depth, "idw"), plain, best_of=best_of).figures(),
-        "idw, tiles at hand": ratios(lambda: ready(depth, runs), plain, rounds=3, best_of=1).figures(),
+        "idw, tiles at hand": ratios(lambda: ready(depth, runs), plain, best_of=1).figures(),
         "arithmetic": ratios(lambda: series(network, basins, depth, "arithmetic"), plain).figures(),
     }
 
@@ -79,9 +79,7 @@ def set_by_set(network: GaugeNetwork, basins: Basins, grid: Grid, depth: Floats)
     even = METHODS["arithmetic"](network, basins)
     figures: dict[str, object] = {
         "a user's loop, s a set": min(seconds(lambda: users_loop(network, grid, sample[0])) for _ in range(SAMPLE)),
-        "arithmetic": ratios(
-            lambda: reweigh_by_sets(even, len(basins))(depth, runs), plain, rounds=3, best_of=1
-        ).figures(),
+        "arithmetic": ratios(lambda: reweigh_by_sets(even, len(basins))(depth, runs), plain, best_of=1).figures(),
     }
     for method, options in (("idw", {"grid": grid, "max_gauges": 5}), ("thiessen", {})):
         weigh = METHODS[method](network, basins, options)

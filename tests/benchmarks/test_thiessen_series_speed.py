@@ -21,12 +21,12 @@ SCRIPT = "thiessen_series_timing.py"
 def test_whole_job_beside_one_product(which: str, held_to: float) -> None:
     """Runs, geometry and averaging together cost at most 8 dense products, 15 where the network changes."""
     found = run_child(SCRIPT, "ratio", which)
-    sets = found["overlay"] * found["sets"]
+    overlays = found["overlay"] * found["sets"]
     print(  # noqa: T201
-        f"\nrecord {which}: {found['median']:.2f} x the product of {found['beside']:.3f} s (at most {found['most']:.2f}), "
-        f"{found['work']:.2f} s; with the geometry at hand {found['again']:.2f} x; {found['silent']:.1%} silent; worst "
-        f"difference {found['worst']:.1e} mm; {found['sets']} sets of gauges, an overlay {found['overlay']:.3f} s, all of "
-        f"them {sets:.0f} s = {sets / found['work']:.0f} x"
+        f"\nrecord {which}, {found['silent']:.1%} silent: {found['work']:.2f} s, {found['median']:.2f} x the product "
+        f"of {found['beside']:.3f} s (at most {found['most']:.2f}), {found['again']:.2f} x with geometry at hand; "
+        f"worst difference {found['worst']:.1e} mm; {found['sets']} sets of gauges, an overlay {found['overlay']:.3f} s, "
+        f"for all sets {overlays:.0f} s = {overlays / found['work']:.0f} x"
     )
     assert found["worst"] <= 1e-9
     assert found["median"] <= held_to

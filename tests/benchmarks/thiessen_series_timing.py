@@ -1,13 +1,14 @@
 """Run in a process of its own: Thiessen means of a long record while gauges come and go.
 
-``ratio one|two`` beside one dense product, ``memory FILE`` of a record saved as an array, ``slopes`` against size. Prints
-one JSON object. BLAS is to be held to one thread outside.
+``ratio one|two`` beside one dense product, ``memory FILE`` of a record saved as an array, ``slopes`` against size.
+Prints one JSON object. BLAS is to be held to one thread outside.
 """
 
 from __future__ import annotations
 
 import json
 import sys
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -59,7 +60,7 @@ def overlay_seconds(network: GaugeNetwork, basins: Basins, depth: Floats) -> tup
 
     overlay(sets[0])
     chosen = sets[np.linspace(0, len(sets) - 1, 5).astype(int)]
-    return sum(seconds(lambda present=present: overlay(present)) for present in chosen) / 5, len(sets)
+    return sum(seconds(partial(overlay, present)) for present in chosen) / 5, len(sets)
 
 
 def ratio(which: str) -> dict[str, Any]:
@@ -98,7 +99,8 @@ def slopes() -> dict[str, list[tuple[int, float]]]:
 
 def main() -> None:
     what, *rest = sys.argv[1:]
-    print(json.dumps({"ratio": ratio, "memory": memory, "slopes": slopes}[what](*rest)))  # noqa: T201
+    found: Any = ratio(*rest) if what == "ratio" else memory(*rest) if what == "memory" else slopes()
+    print(json.dumps(found))  # noqa: T201
 
 
 if __name__ == "__main__":

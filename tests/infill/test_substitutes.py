@@ -8,7 +8,6 @@ import pytest
 from leave_one_out_data import small_network
 
 from basinrain.infill import InfillOptions
-from basinrain.infill import substitutes
 from basinrain.infill.substitutes import Substitutes
 
 Bools = npt.NDArray[np.bool_]

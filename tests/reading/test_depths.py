@@ -175,3 +175,30 @@ def test_rules_that_cannot_be() -> None:
 def test_units_round_trip(mm: float, unit: str) -> None:
     """A depth written in any unit is read as the same mm."""
     assert cell(repr(mm / DEPTH_UNITS[unit]), unit=unit)[0] == pytest.approx(mm, rel=1e-12, abs=1e-300)
+
+
+@given(
+    values=st.lists(
+        st.one_of(
+            st.integers(-20, 20000).map(lambda n: n / 10), st.sampled_from([np.nan, np.inf, -9999.0, 99999.0, 0.05])
+        ),
+        min_size=1,
+    ),
+    marks=st.booleans(),
+)
+def test_numbers_are_judged_as_their_text(values: list[float], marks: bool) -> None:  # noqa: FBT001 - drawn
+    """A number gives the depth, status and fault of a cell with the same text, with marks beside it or without."""
+    rules = depth_rules(
+        unit="in", interval=None, missing=[-1.5, "7"], trace=["0.05"], flags={"estimated": ["E"], "rejected": ["X"]},
+        accumulated=None,
+    )  # fmt: skip
+    texts = ["" if np.isnan(value) else np.format_float_positional(value, trim="-") for value in values]
+    flags = [("", "E", "X")[k % 3] for k in range(len(values))]
+    frame = pd.DataFrame({"text": texts, "number": np.array(values), "flag": flags})
+    table = DelimitedTable("rain.csv", tuple(frame), frame, np.arange(2, len(frame) + 2), ".")
+    flag = "flag" if marks else None
+    expected = DepthCells(table, rules).column("text", flag=flag)
+    found = DepthCells(table, rules).column("number", flag=flag)
+    np.testing.assert_array_equal(found[0], expected[0])
+    np.testing.assert_array_equal(found[1], expected[1])
+    assert found[2] == expected[2]

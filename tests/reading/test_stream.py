@@ -31,7 +31,7 @@ FORMS = sorted(WRITERS)
 
 def whole(sources: list[dict[str, Any]], network: GaugeNetwork, **options: Any) -> RainRecord:  # noqa: ANN401
     """Return the record of all files, read at once."""
-    return bring_to_step([read_rainfall(**source) for source in sources], network, **options)[0]
+    return bring_to_step([read_rainfall(**{"layout": "wide"} | source) for source in sources], network, **options)[0]
 
 
 def in_parts(stream: RecordStream, borders: list[int]) -> RainRecord:

@@ -87,7 +87,8 @@ def years_of_rain(years: int = 4, seed: int = 3) -> npt.NDArray[np.float64]:
     depth[60:80, 1] = N
     depth[400:500, 1] = N
     depth[900, 2] = N
-    return depth.round(1)
+    rounded: npt.NDArray[np.float64] = np.round(depth, 1)
+    return rounded
 
 
 def make_series_run(
@@ -164,7 +165,9 @@ def widened(run: SeriesRun, n: int) -> SeriesRun:
     columns = np.append(np.arange(n) % (old - 1), old - 1)
     side = int(np.ceil(np.sqrt(n)))
     squares = [shapely.box(k % side, k // side, k % side + 1, k // side + 1) for k in range(n)]
-    basins = Basins(ids=tuple(f"B{k:04d}" for k in range(n)), polygons=squares, crs=run.basins.crs).with_union()
+    basins = Basins(
+        ids=tuple(f"B{k:04d}" for k in range(n)), polygons=np.array(squares, dtype=object), crs=run.basins.crs
+    ).with_union()
 
     def wide(value: Any) -> Any:  # noqa: ANN401 - any part of a result
         if isinstance(value, np.ndarray) and value.ndim and value.shape[-1] == old:
@@ -197,6 +200,6 @@ def four_days() -> SeriesRun:
     By Thiessen the square is A's for .5, B's for .425, C's for .075; without B A's for .675 and C's for .325. B gets
     the mean of A and C, 30. So the depths are 15 and 25.75 by infill, 15 and 26.5 by reweighting.
     """
-    depth = [[10, 20, 20], [0, 0, 0], [20, N, 40], [0, 0, 0]]
+    depth = np.array([[10, 20, 20], [0, 0, 0], [20, N, 40], [0, 0, 0]])
     with TemporaryDirectory() as folder:
         return make_series_run(Path(folder), depth, gaps=["infill", "reweight"], methods=["thiessen"])

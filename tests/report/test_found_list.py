@@ -53,7 +53,7 @@ def test_an_index_that_is_spun_up_stands_alone(tmp_path: Path) -> None:
 
 def test_storms_that_are_not_complete_stand_apart(tmp_path: Path) -> None:
     """No gauge reports on the day after 9 mm: that storm has no rank, and would be the first."""
-    depth = [[0, 0, 0], [9, 9, 9], [N, N, N], [0, 0, 0], [0, 0, 0], [4, 4, 4], [0, 0, 0]]
+    depth = np.array([0, 9, N, 0, 0, 4, 0])[:, None] * np.ones(3)
     run = make_series_run(tmp_path, depth, gaps=["reweight"], methods=["thiessen"], basins=1)
     table = incomplete_table(run)
     assert table is not None

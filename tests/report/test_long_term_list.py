@@ -29,6 +29,16 @@ def test_means_of_years_are_those_of_complete_ones() -> None:
     assert table.over[3] == ("difference to infill-then-reweight, %", 2)
 
 
+def test_depths_of_other_steps_are_told_apart() -> None:
+    """Three steps by one policy and four by the other."""
+    run = four_days()
+    terms = run.summaries["reweight", "thiessen"].terms
+    summary = replace(run.summaries["reweight", "thiessen"], terms=replace(terms, steps=terms.steps - 1))
+    table = long_term_list.means_table(replace(run, summaries={**run.summaries, ("reweight", "thiessen"): summary}))
+    assert table.rows[0][4] == f"3{DASH}4"
+    assert table.notes[-1] == "Where steps differ between policies, the depths are not of the same steps."
+
+
 def test_one_policy_has_no_difference(tmp_path: Path) -> None:
     """Nothing to compare, no line above the heads."""
     run = make_series_run(tmp_path, [[10, 20, 20]], gaps=["reweight"], methods=["thiessen"])

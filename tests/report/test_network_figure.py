@@ -10,6 +10,7 @@ from report.series_run import four_days, four_years, make_series_run, read_by_ch
 
 from basinrain.report import network_figure
 from basinrain.report.network_figure import network_picture
+from basinrain.series.network_changes import RETURNS, SILENT, NetworkChange
 
 
 def test_gauges_are_counted_at_every_step() -> None:
@@ -44,6 +45,20 @@ def test_a_record_in_chunks_shows_what_the_changes_tell() -> None:
     assert picture is not None
     assert "in service, not silent for long, from the first change" in svg_texts(picture.svg)
     assert "how many reported at every step was not counted" in picture.caption
+
+
+def test_a_network_that_changes_all_the_time_stays_small() -> None:
+    """Of a hundred thousand changes the paper shows a few hundred."""
+    run = four_years()
+    times = run.starts[0] + np.arange(100_000) * np.timedelta64(1200, "s")
+    changes = tuple(
+        NetworkChange(time=when, gauge=f"G{k % 99}", change=(SILENT, RETURNS)[k % 2], gauges=50 + k % 2)
+        for k, when in enumerate(times)
+    )
+    for many in (replace(run, changes=changes), read_by_chunks(replace(run, changes=changes))):
+        picture = network_picture(many)
+        assert picture is not None
+        assert len(picture.svg) < 200_000
 
 
 def test_nothing_to_draw(tmp_path: Path) -> None:

@@ -73,7 +73,8 @@ def test_of_many_those_that_last_are_shown_first() -> None:
     assert len(table.rows) == CHANGES
     assert table.rows[-1][2] == "Z"
     assert table.notes[-1] == (
-        f"Shown: {CHANGES} of 101, gauges that come into service or go out of it first. All are in network_changes.csv."
+        f"Shown: {CHANGES} of 101 lines, gauges that come into service or go out of it first. All are in "
+        "network_changes.csv."
     )
 
 
@@ -84,3 +85,11 @@ def test_gaps_of_any_length_are_no_change() -> None:
     assert changes_sentence(replace(run, setup=setup)) == (
         "No gauge came into service or went out of it during the record."
     )
+
+
+def test_gauges_that_change_together_share_a_line() -> None:
+    """Eight open on one day, six of them are named; a ninth opens on the next."""
+    run = _changed(*((1, f"G{k}", OPENS) for k in range(8)), (2, "G8", OPENS))
+    table = changes_table(run)
+    assert table is not None
+    assert [row[2] for row in table.rows] == ["G0, G1, G2, G3, G4, G5 and 2 more", "G8"]

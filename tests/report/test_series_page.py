@@ -67,7 +67,7 @@ def test_a_repeat_is_identical(html: str) -> None:
 
 def test_names_stay_text(tmp_path: Path) -> None:
     """Markup in ids and notes is shown, not obeyed."""
-    run = make_series_run(tmp_path, [[1, 2, 3], [4, np.nan, 6]], names=(f"A{SCRIPT}", "B&B", "$a_b$"))
+    run = make_series_run(tmp_path, np.array([[1, 2, 3], [4, np.nan, 6]]), names=(f"A{SCRIPT}", "B&B", "$a_b$"))
     basins = replace(run.basins, ids=("we<b>st", "</style></svg>", "union"))
     run = replace(run, basins=basins, notes=(Note(code="far-gauge", text=SCRIPT),))
     page = render_series(run)

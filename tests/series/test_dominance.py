@@ -23,7 +23,7 @@ def looked_at(setup: SeriesSetup, steps: dict[tuple[str, str], list[list[int]]],
 
 
 def test_weights_at_the_step_itself() -> None:
-    """With all there no gauge has over half of the strip; A alone has all of it; with C, A has half, which is not over."""
+    """With all there no gauge has over half of the strip; A alone has it all; with C, A has half, which is not over."""
     setup = strip(gaps=(INFILL, REWEIGHT))
     series = (REWEIGHT, "thiessen")
     assert looked_at(setup, {series: [[0, -1]]}) == []

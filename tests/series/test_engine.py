@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from typing import Any
+
 import numpy as np
 import numpy.typing as npt
 import pytest
@@ -28,7 +31,7 @@ SQUARE = basins_of(1000.0, square=shapely.box(0, 0, 10, 10))
 GAUGES = gauges_at((2.5, 5), (7.5, 5), (12.5, 5), unit=1000.0)
 
 
-def daily(network: GaugeNetwork, depth: npt.ArrayLike) -> RainRecord:
+def daily(network: GaugeNetwork, depth: Sequence[Sequence[float]] | npt.NDArray[np.float64]) -> RainRecord:
     values = np.array(depth, dtype=float)
     ends = np.datetime64("2031-05-02", "s") + np.arange(len(values)) * np.timedelta64(86400, "s")
     return RainRecord.from_depths(network.ids, ends - 86400, ends, values, step="1d")
@@ -97,7 +100,9 @@ def test_marks_of_what_values_rest_on() -> None:
 
 def test_ratios_to_normals_by_hand() -> None:
     """A's half has a normal of 500 mm, B's of 1,500: while B is out, A and C give the ratio, the basin the depth."""
-    network = GaugeNetwork(ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=[[500.0], [1500.0], [1000.0]])
+    network = GaugeNetwork(
+        ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=np.array([[500.0], [1500.0], [1000.0]])
+    )
     record = daily(network, [[5, 15, 10], [5, N, 20], [N, N, N]])
     setup = setup_of(network, SQUARE, gaps=(REWEIGHT,), ratios=True)
     part = SeriesEngine(setup).compute(record)[REWEIGHT, "thiessen"]
@@ -107,7 +112,7 @@ def test_ratios_to_normals_by_hand() -> None:
 
 def test_ratios_need_normals() -> None:
     """Every gauge without a usable normal is named."""
-    network = GaugeNetwork(ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=[[500.0], [0.0], [N]])
+    network = GaugeNetwork(ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=np.array([[500.0], [0.0], [N]]))
     with pytest.raises(DataError, match=r"gauge B: found a normal of 0 mm(?s:.*)gauge C: found"):
         SeriesEngine(setup_of(network, SQUARE, ratios=True))
 
@@ -152,7 +157,10 @@ def test_equal_to_new_weights_at_every_step(drawn: tuple[Case, RainRecord]) -> N
     """Every policy and method gives what a tessellation, a grid or a count made anew at every step gives."""
     case, record = drawn
     cell = float(np.sqrt(case.basins.areas.min()) / 6)
-    methods = {name: {} for name in METHODS} | {"idw": {"grid": choose_grid(case.network, case.basins, cell=cell)}}
+    methods: dict[str, dict[str, Any]] = {name: {} for name in METHODS}
+    methods["idw"] = {"grid": choose_grid(case.network, case.basins, cell=cell)}
+        "idw": {"grid": choose_grid(case.network, case.basins, cell=cell)}
+    }
     setup = setup_of(case.network, case.basins, methods=methods)
     long = longer_than(record, gap_mask(record), setup.infill.longest_gap)
     parts = SeriesEngine(setup).compute(record, long)

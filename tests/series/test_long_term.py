@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -31,19 +32,23 @@ class Stored:
 
     @property
     def n_steps(self) -> int:
+        """Steps of the series."""
         return len(self.values)
 
-    def depth(self, gaps: str, method: str) -> npt.NDArray[np.float64]:
+    def depth(self, *_: str) -> npt.NDArray[np.float64]:
+        """Return the depths."""
         return self.values
 
-    def observed_share(self, gaps: str, method: str) -> npt.NDArray[np.float32]:
+    def observed_share(self, *_: str) -> npt.NDArray[np.float32]:
+        """Return the shares."""
         return self.shares
 
-    def flags(self, gaps: str, method: str) -> npt.NDArray[np.uint8]:
+    def flags(self, *_: str) -> npt.NDArray[np.uint8]:
+        """Return the marks."""
         return self.marks
 
 
-def daily(depth: npt.ArrayLike, gauges: tuple[str, ...]) -> RainRecord:
+def daily(depth: Sequence[Sequence[float]] | npt.NDArray[np.float64], gauges: tuple[str, ...]) -> RainRecord:
     values = np.array(depth, dtype=float)
     ends = np.datetime64("2031-05-02", "s") + np.arange(len(values)) * np.timedelta64(86400, "s")
     return RainRecord.from_depths(gauges, ends - 86400, ends, values, step="1d")
@@ -136,11 +141,11 @@ def test_small_networks_are_tried_whole_and_large_ones_by_what_gauges_put_in() -
     network = gauges_at(*[(2 * k + 1, 5) for k in range(30)], ids=[f"G{k:02d}" for k in range(30)])
     setup = strip(network=network, basins=basins_of(1.0, all=shapely.box(0, 0, 60, 10)))
     wet = np.arange(30.0)
-    chosen = gauges_to_leave_out(setup, daily([wet], network.ids))
+    chosen = gauges_to_leave_out(setup, daily(wet[None, :], network.ids))
     assert chosen == tuple(f"G{k:02d}" for k in range(29, 9, -1))
 
 
 def test_nothing_is_left_out_of_an_unknown_gauge() -> None:
     """A gauge that is not in the record is an error of the caller."""
-    with pytest.raises(ValueError, match="tuple.index"):
+    with pytest.raises(ValueError, match=r"tuple\.index"):
         left_out(strip(), [lambda: (daily([[1, 2, 3]], ("A", "B", "C")), None)], ["Q"])

@@ -23,9 +23,7 @@ def stored(n_steps: int, n_basins: int) -> Stored:
 def summary(series: Stored) -> SeriesSummary:
     ends = np.datetime64("2030-11-01", "s") + np.arange(1, series.n_steps + 1) * HOUR
     durations = [HOUR, 6 * HOUR]
-    return summarise(
-        series, "infill", "thiessen", ends - HOUR, ends, durations=durations, water_year=10, complete=0.9
-    )
+    return summarise(series, "infill", "thiessen", ends - HOUR, ends, durations=durations, water_year=10, complete=0.9)
 
 
 @pytest.mark.parametrize("held", [1, 3 * 24 * 90, 10**9])

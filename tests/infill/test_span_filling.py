@@ -1,0 +1,134 @@
+"""Spans and their parts, sums over them, and the pattern of the nearest wet recorder, by hand."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+from windows import hourly, network
+
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill import InfillOptions, RecordFiller
+from basinrain.infill.span_filling import Fate, intervals_of, span_sums
+from basinrain.rainfall import RainRecord, Status
+
+NAN = float("nan")
+
+
+def test_spans_are_cut_for_the_gauge_that_comes_or_goes() -> None:
+    """Of three spans the second gauge leaves within the first and is back with the third; the third comes within it."""
+    absent = np.zeros((9, 3), dtype=bool)
+    absent[2:6, 1] = True
+    absent[:7, 2] = True
+    found = intervals_of(np.array([0, 3, 6]), absent)
+    assert list(zip(found.first.tolist(), found.stop.tolist(), strict=True)) == [
+        *((0, 3), (3, 6), (6, 9)),
+        *((0, 2), (2, 3), (6, 7), (7, 9)),
+    ]
+    assert found.n_spans == 3
+    parts = zip(found.gauge.tolist(), found.span.tolist(), found.row.tolist(), strict=True)
+    assert sorted(parts) == [(1, 0, 3), (1, 0, 4), (2, 2, 5), (2, 2, 6)]
+
+
+def test_a_gauge_that_comes_and_goes_several_times_in_a_span() -> None:
+    """Each stretch is a part of its own; two gauges with the same stretch share it."""
+    absent = np.array([[0, 0], [1, 0], [0, 0], [1, 1]], dtype=bool)
+    found = intervals_of(np.array([0]), absent)
+    of = {g: sorted(found.first[found.row[found.gauge == g]].tolist()) for g in (0, 1)}
+    assert of == {0: [0, 1, 2, 3], 1: [0, 3]}
+    assert len(found.first) == 1 + 5
+
+
+@given(st.integers(0, 2**32 - 1), st.booleans())
+def test_sums_over_spans_and_parts(seed: int, even: bool) -> None:  # noqa: FBT001 - drawn
+    """They are the plain sums of their steps, of spans as long as each other and of others, of depths and of counts."""
+    rng = np.random.default_rng(seed)
+    n_steps = 600
+    first = np.arange(0, n_steps, 300) if even else np.unique([0, *rng.integers(0, n_steps, 5)])
+    absent = np.arange(n_steps)[:, None] < rng.integers(0, n_steps, 3)
+    found = intervals_of(first, absent)
+    for values in (rng.random((n_steps, 3)), rng.random((n_steps, 3)) < 0.9):
+        sums = span_sums(values, found)
+        for row, (begin, stop) in enumerate(zip(found.first, found.stop, strict=True)):
+            np.testing.assert_allclose(sums[row], values[begin:stop].sum(axis=0), rtol=1e-12)
+
+
+def test_counts_above_255_steps() -> None:
+    """A span of 300 steps has 300 of them, not 44."""
+    found = intervals_of(np.array([0, 300]), np.zeros((600, 1), dtype=bool))
+    assert span_sums(np.ones((600, 1), dtype=bool), found).ravel().tolist() == [300, 300]
+
+
+def test_what_became_of_every_span() -> None:
+    """Four days of two half days: estimated, raised, without donors, and a gap that is too long."""
+    record = hourly([4.0, 4, 1, 1, NAN, 9, 3, 3], [NAN, NAN, 9, NAN, NAN, NAN, NAN, NAN], [2.0] * 8, hours=12)
+    record = replace(record, depth=np.vstack([record.depth, [1.0, NAN, 1.0]]), **longer(record))
+    long = np.zeros((9, 3), dtype=bool)
+    long[6:8, 1] = True
+    filled = RecordFiller(network(3), InfillOptions(method="station-average", scale="day")).fill(
+        record, long, trace=True
+    )
+    assert filled.spans is not None
+    mine = filled.spans.of_gauge(1)
+    assert [Fate(fate) for fate in mine.fate] == [Fate.SPREAD, Fate.UNKNOWN, Fate.LONG, Fate.SPREAD]
+    assert mine.first.tolist() == [0, 4, 6, 8]
+    # Half of the second day is there, so that is infilled step by step; the last day has one half day only.
+    assert filled.depth[:, 1] == pytest.approx([3, 3, 9, 1.5, NAN, NAN, NAN, NAN, 1], nan_ok=True)
+
+
+def longer(record: RainRecord) -> dict[str, object]:
+    """Return times and statuses of one more step, at which B is missing."""
+    more = [[Status.OBSERVED, Status.MISSING, Status.OBSERVED]]
+    step = np.timedelta64(12, "h")
+    return {
+        "starts": np.append(record.starts, record.ends[-1]),
+        "ends": np.append(record.ends, record.ends[-1] + step),
+        "status": np.vstack([record.status, more]).astype(np.uint8),
+    }
+
+
+def test_a_total_below_what_was_observed() -> None:
+    """B saw 9 mm in a quarter of its day while the others had 4 and 8: the missing steps are infilled one by one."""
+    record = hourly([1.0] * 4, [9.0, NAN, NAN, NAN], [2.0] * 4, hours=6)
+    filled = RecordFiller(network(3), InfillOptions(method="station-average", scale="day")).fill(record, trace=True)
+    assert filled.depth[:, 1].tolist() == [9, 1.5, 1.5, 1.5]
+    assert filled.spans is not None
+    assert filled.spans.fate.tolist() == [Fate.RAISED]
+
+
+def many_gauges(n: int) -> tuple[GaugeNetwork, list[list[float]]]:
+    """Return gauges in a row and a dry day of four steps at each; the first has nothing."""
+    net = GaugeNetwork(
+        ids=tuple(f"G{k:03d}" for k in range(n)), x=np.arange(n, dtype=float) * 1e3, y=np.zeros(n), crs="local"
+    )
+    return net, [[NAN] * 4, *([0.0] * 4 for _ in range(n - 1))]
+
+
+@pytest.mark.parametrize("wet", [3, 70, 98])
+def test_the_nearest_wet_recorder_however_far(wet: int) -> None:
+    """All donate, one of a hundred gauges is wet, and its times are the pattern."""
+    net, columns = many_gauges(100)
+    columns[wet] = [0.0, 3.0, 0.0, 1.0]
+    step = np.timedelta64(6, "h")
+    ends = np.datetime64("2031-05-04T00", "s") + np.arange(1, 5) * step
+    record = RainRecord.from_depths(net.ids, ends - step, ends, np.array(columns).T, step="6h")
+    options = InfillOptions(method="station-average", scale="day", nearest="all")
+    filled = RecordFiller(net, options).fill(record, trace=True)
+    assert filled.depth[:, 0] == pytest.approx(np.array([0.0, 3.0, 0.0, 1.0]) / 99)
+    assert filled.depth[:, 0].sum() == pytest.approx(4 / 99, rel=1e-15)
+
+
+def test_rain_must_have_fallen_in_the_missing_steps() -> None:
+    """B has the first quarter of the day. A, nearest by its id, was wet then only; C and D give no pattern but D does."""
+    record = hourly([4.0, 0, 0, 0], [1.0, NAN, NAN, NAN], [8.0, 0, 0, 0], [0.0, 0, 6.0, 2.0], hours=6)
+    filled = RecordFiller(network(4), InfillOptions(method="station-average", scale="day")).fill(record, trace=True)
+    total = (4 + 8 + 8) / 3
+    assert filled.depth[:, 1] == pytest.approx([1, 0, (total - 1) * 0.75, (total - 1) * 0.25])
+    dry = replace(record, depth=np.where(np.arange(4) == 3, 0.0, record.depth))
+    even = RecordFiller(network(4), InfillOptions(method="station-average", scale="day")).fill(dry, trace=True)
+    assert even.depth[:, 1] == pytest.approx([1, 1, 1, 1])
+    assert even.spans is not None
+    assert even.spans.fate.tolist() == [Fate.EVEN_NONE_WET]
