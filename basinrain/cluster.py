@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import asyncio
 import hashlib
 import logging
 import os
@@ -14,7 +15,7 @@ import threading
 import time
 from collections import deque
 from collections.abc import Callable, Iterator, Sequence
-from concurrent.futures import CancelledError
+from concurrent.futures import CancelledError, ThreadPoolExecutor
 from contextlib import ExitStack, contextmanager, suppress
 from importlib.metadata import PackageNotFoundError, version
 from typing import TYPE_CHECKING, Any, Final
@@ -269,6 +270,9 @@ def _connected(on: str, workers: int | None) -> Iterator[Client]:
 
     if on not in {"threads", "processes"}:
         try:
+            # In a thread, since this one may have an event loop of its own, as in a notebook.
+            with ThreadPoolExecutor(1) as pool:
+                pool.submit(asyncio.run, _require_scheduler(on)).result()
             client = Client(on, timeout=REACH_SECONDS, set_as_default=False)
         except OSError:
             raise _refused(
@@ -302,6 +306,18 @@ def _connected(on: str, workers: int | None) -> Iterator[Client]:
         Client(cluster, set_as_default=False) as client,
     ):
         yield client
+
+
+async def _require_scheduler(address: str) -> None:
+    """Ask who is at an address; a client would wait for ever for one that listens and says nothing."""
+    from distributed.core import rpc
+    from distributed.security import Security
+
+    async with (
+        asyncio.timeout(REACH_SECONDS),
+        rpc(address, connection_args=Security().get_connection_args("client")) as scheduler,
+    ):
+        await scheduler.identity()
 
 
 def _require_package(client: Client) -> None:

@@ -31,7 +31,7 @@ def test_a_set_that_is_refused_says_why() -> None:
     """Its weights are the error, its steps are NaN; the others have their numbers."""
     sets = np.array([[True, True, False], [True, False, False]])
     first, second = Averager(thirds).weights(sets)
-    assert np.array_equal(first, [[0.5, 0.5, 0.0]])
+    assert np.asarray(first).tolist() == [[0.5, 0.5, 0.0]]
     assert str(second) == "thirds: found one gauge; expected two"
     depth = np.array([[2.0, 4.0, 9.0], [2.0, 4.0, 9.0]])
     assert Averager(thirds).means(depth, sets, 1).ravel() == pytest.approx([3, NAN], nan_ok=True)
@@ -64,7 +64,7 @@ def test_a_storm_is_averaged_alike_either_way(monkeypatch: pytest.MonkeyPatch, n
     """Depths, shares, contributions and extremes of weights do not depend on how weights are found."""
     rng = np.random.default_rng(4)
     network = gauges_at((3, 5), (9, 2), (14, 8), (21, 4), (27, 6), unit=1e3)
-    depth = np.where(rng.random((60, 5)) < 0.35, NAN, rng.gamma(0.5, 6, (60, 5)))
+    depth = np.where(rng.random((60, 5)) < 0.5, NAN, rng.gamma(0.5, 6, (60, 5)))
     depth[:, 0] = 1.0
     completed = complete(hourly(depth.tolist(), network), network, InfillOptions(scale="step", min_donors=3))
     method = averaging_method(name)

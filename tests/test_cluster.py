@@ -8,13 +8,15 @@ import logging
 import os
 import re
 import signal
+import socket
 import subprocess
 import sys
 import time
 from collections.abc import Callable, Iterator
-from contextlib import ExitStack
+from contextlib import ExitStack, suppress
 from dataclasses import dataclass, replace
 from pathlib import Path
+from threading import Thread
 from typing import Any
 
 import psutil
@@ -169,7 +171,7 @@ def test_a_chunk_that_kills_every_worker_ends_the_run(tmp_path: Path) -> None:
 def test_what_a_worker_finds_at_fault_arrives_whole(on: str) -> None:
     """An error of the data is the same error here, with all its lines."""
     with small_store() as store:
-        with pytest.raises(DataError, match="^gauge A: found a fault\ngauge B: found another$") as error:
+        with pytest.raises(DataError, match=r"^gauge A: found a fault\ngauge B: found another$") as error:
             run_chunks(small_setup(), SourceWith(Faulty(2)), store, on=on, workers=1)
         assert [problem.item for problem in error.value.problems] == ["gauge A", "gauge B"]
         assert not store.is_done(2)
@@ -276,6 +278,28 @@ def test_a_scheduler_that_cannot_be_reached_is_one_line(address: str, monkeypatc
         f"[series] on: found no scheduler that answers at {address} within 0.5 s; expected the address of a running "
         'one; start it with `dask scheduler`, or on = "here"; finished chunks stay'
     )
+
+
+@pytest.mark.parametrize(
+    "answer", [b"", b"HTTP/1.1 400 Bad Request\r\nContent-Length: 0\r\n\r\n" * 3], ids=["none", "http"]
+)
+def test_a_server_of_another_kind_is_no_scheduler(answer: bytes, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Somebody who listens and says nothing, or something else, is as nobody."""
+    monkeypatch.setattr(cluster, "REACH_SECONDS", 0.5)
+    with socket.create_server(("127.0.0.1", 0)) as server, ExitStack() as stack:
+
+        def serve() -> None:
+            with suppress(OSError):
+                while True:
+                    stack.enter_context(server.accept()[0]).sendall(answer)
+
+        serving = Thread(target=serve, daemon=True)
+        serving.start()
+        address = f"tcp://127.0.0.1:{server.getsockname()[1]}"
+        line = refused(address)
+        server.shutdown(socket.SHUT_RDWR)
+        serving.join(10)
+    assert line.startswith(f"[series] on: found no scheduler that answers at {address} within 0.5 s; expected")
 
 
 def test_a_worker_of_other_versions_is_refused(strangers: Others, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -426,10 +426,16 @@ def test_edits_and_entries_settle_what_they_name() -> None:
 
 
 def test_storms_of_the_record_run_and_come_near_the_truth() -> None:
-    """The three storms have means everywhere, and the silent gauges' estimates are within a fifth of the truth."""
+    """The three storms and the two largest of the record have means everywhere, and the silent gauges' estimates are within a fifth of the truth."""
     run = run_storm(read_job(RECORD / "job.toml"))
     assert run.comparison is not None
-    assert [result.storm.name for result in run.storms] == ["Lantern rain", "Thaw rain", "October front"]
+    assert [result.storm.name for result in run.storms] == [
+        "Lantern rain",
+        "Thaw rain",
+        "October front",
+        "No. 1, 2031-09-28",
+        "No. 2, 2021-02-14",
+    ]
     assert run.basin_means["depth"].notna().all()
     totals = run.gauge_totals.set_index(["storm", "gauge"])["depth"]
     for gauge, true in (("R04", 57.4), ("R06", 78.6), ("R09", 70.2)):

@@ -11,6 +11,7 @@ from basinrain.cli.running import console, show_warnings
 from basinrain.jobfile import Job
 from basinrain.report.words import depth_decimals, number_text
 from basinrain.results_series import SeriesRun
+from basinrain.series.events import TOTAL
 from basinrain.series_job import run_series
 from basinrain.tables import time_text
 from basinrain.units import depth_factor
@@ -75,7 +76,8 @@ def _show_storms(run: SeriesRun, digits: int, mm: float) -> None:
     table = Table(show_edge=False, pad_edge=False)
     for heading in ("", "start", "end"):
         table.add_column(heading, no_wrap=True)
-    for heading in (f"depth {run.depth_unit}", "greatest step", "5 days before", "30 days before"):
+    by = () if found.ranking.by == TOTAL else (f"in {found.ranking.by}",)
+    for heading in (f"depth {run.depth_unit}", *by, "peak step", "5 d before", "30 d before"):
         table.add_column(heading, justify="right")
     for k, ranked in enumerate(found.taken):
         before = [np.nan] * 3 if found.before is None else (found.before.depth[k] / mm).tolist()
@@ -84,6 +86,7 @@ def _show_storms(run: SeriesRun, digits: int, mm: float) -> None:
             time_text(ranked.event.start, run.record.zone),
             time_text(ranked.event.end, run.record.zone),
             number_text(ranked.event.total / mm, digits),
+            *(number_text(ranked.depth / mm, digits) for _ in by),
             number_text(ranked.event.peak / mm, digits),
             number_text(before[0], digits),
             number_text(before[2], digits),

@@ -25,8 +25,8 @@ def test_whole_job_beside_one_product(which: str, held_to: float) -> None:
     print(  # noqa: T201
         f"\nrecord {which}, {found['silent']:.1%} silent: {found['work']:.2f} s, {found['median']:.2f} x the product "
         f"of {found['beside']:.3f} s (at most {found['most']:.2f}), {found['again']:.2f} x with geometry at hand; "
-        f"worst difference {found['worst']:.1e} mm; {found['sets']} sets of gauges, an overlay {found['overlay']:.3f} s, "
-        f"for all sets {overlays:.0f} s = {overlays / found['work']:.0f} x"
+        f"worst difference {found['worst']:.1e} mm; {found['sets']} sets of gauges, "
+        f"an overlay {found['overlay']:.3f} s, for all sets {overlays:.0f} s = {overlays / found['work']:.0f} x"
     )
     assert found["worst"] <= 1e-9
     assert found["median"] <= held_to

@@ -7,6 +7,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 import pytest
+from drawn import gauges_at
 from gappy import options_of
 from hypothesis import given
 from hypothesis import strategies as st
@@ -21,7 +22,7 @@ NAN = float("nan")
 
 def test_all_that_report_by_hand() -> None:
     """B between A at 1 and C at 2 km: (4 x 6 + 12)/5 = 7.2; with D at 3 km, 9 mm, the squares are as 36 : 9 : 4."""
-    network = GaugeNetwork(ids=("A", "B", "C", "D"), x=[0.0, 1e3, 3e3, 4e3], y=[0.0] * 4, crs="local")
+    network = gauges_at((0, 0), (1, 0), (3, 0), (4, 0), unit=1e3)
     values = np.array([[6.0, NAN, 12.0, NAN], [6.0, NAN, 12.0, 9.0], [NAN, NAN, NAN, 9.0]])
     out, wanted = values.copy(), np.zeros(values.shape, dtype=bool)
     wanted[:, 1] = True
@@ -32,7 +33,7 @@ def test_all_that_report_by_hand() -> None:
 
 def test_nothing_wanted() -> None:
     """Nothing is written, and nothing asked for: a method without its normals is not refused."""
-    network = GaugeNetwork(ids=("A", "B"), x=[0.0, 1e3], y=[0.0, 0.0], crs="local")
+    network = gauges_at((0, 0), (1, 0))
     out = np.array([[1.0, NAN]])
     none = np.zeros((1, 2), dtype=bool)
     DonorSums(network, InfillOptions(method="normal-ratio")).put(out, ~none, none, np.array([5]), out)

@@ -29,6 +29,7 @@ from basinrain.infill import (
     substitutes,
 )
 from basinrain.infill.gaps import gap_mask, longer_than
+from basinrain.infill.spans import span_starts
 from basinrain.rainfall import RainRecord, Status
 
 NAN = float("nan")
@@ -70,7 +71,7 @@ def long_record(net: GaugeNetwork, n_steps: int, *, seed: int = 2, share: float 
     record = RainRecord.from_depths(net.ids, ends - step, ends, depth, step="6h")
     status = record.status.copy()
     status[(status == Status.OBSERVED) & (rng.random(n) < 0.15)] = Status.SPREAD
-    for g in np.flatnonzero(rng.random(n) < 0.15):
+    for g in np.flatnonzero(rng.random(n) < 0.15).tolist():
         away = slice(0, n_steps // 3 + 1) if g % 2 else slice(n_steps // 2 + 1, None)
         status[away, g], depth[away, g] = Status.NOT_INSTALLED, NAN
     return replace(record, depth=depth, status=status)
@@ -101,7 +102,7 @@ def test_stretches_of_whole_days_are_filled_as_the_whole(
     long = longer_than(record, gap_mask(record), chosen.longest_gap)
     filler = RecordFiller(net, chosen, relations=case.relations)
     whole = filler.fill(record, long)
-    borders = [*record_filling.span_starts(record, "day").tolist(), len(record)]
+    borders = [*span_starts(record, "day").tolist(), len(record)]
     days = list(pairwise(borders))
     for first, stop in data.draw(st.permutations(days)):
         day = filler.fill(record.window(first, stop), long[first:stop])
@@ -126,11 +127,11 @@ def by_single_steps(record: RainRecord, net: GaugeNetwork, options: InfillOption
 @methods
 @pytest.mark.parametrize("given_options", [{}, {"nearest": "all"}, {"nearest": "all", "radius": 40e3}, {"nearest": 34}])
 def test_equals_the_weights_of_every_step(method: str, given_options: dict[str, Any]) -> None:
-    """Forty gauges over two months' border: few donors, all that report, all within a radius, and too many to look up."""
+    """Forty gauges over the border of two months: few donors, all, all within a radius, too many to look up."""
     net = gauges(40)
     record = long_record(net, 70)
     options = options_of(method, {"scale": "step", "longest_gap": 1e6, **given_options})
-    further = {"relations": relations(net)} if options.chosen_method.needs_relations else {}
+    further: dict[str, Any] = {"relations": relations(net)} if options.chosen_method.needs_relations else {}
     filled = RecordFiller(net, options, **further).fill(record)
     assert filled.filled.sum() > 150
     np.testing.assert_allclose(filled.depth, by_single_steps(record, net, options, **further), rtol=1e-12, atol=1e-12)
@@ -169,8 +170,8 @@ def test_steep_powers_with_all_gauges(power: float) -> None:
 @pytest.mark.parametrize("scale", ["step", "day"])
 def test_memory_and_blocks_change_no_number(
     monkeypatch: pytest.MonkeyPatch,
-    scale: Any,
-    nearest: Any,  # noqa: ANN401 - as the options
+    scale: Any,  # noqa: ANN401 - as the options
+    nearest: Any,  # noqa: ANN401
 ) -> None:
     """With next to nothing kept, and looked at a few steps at a time, depths are the same to the last bit or nearly."""
     net, record = gauges(20), long_record(gauges(20), 300)
@@ -227,8 +228,7 @@ def test_normals_that_are_not_known_matter_where_a_gauge_takes_part(method: str,
     normals[2, 4] = NAN
     net = network(4, normals)
     record = hourly([1.0, 1.0], [NAN, 2.0], [3.0, 3.0], [4.0, 5.0])
-    away = replace(record, depth=np.where(np.arange(4) == 2, NAN, record.depth))
-    away = with_status(away, "C", slice(None), Status.NOT_INSTALLED)
+    away = with_status(hourly([1.0, 1.0], [NAN, 2.0], [NAN, NAN], [4.0, 5.0]), "C", slice(None), Status.NOT_INSTALLED)
     filler = RecordFiller(net, InfillOptions(method=method, scale="step"))
     assert filler.fill(away).filled.sum() == 1
     if remedied:

@@ -13,7 +13,7 @@ from windows import hourly, network
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill import InfillOptions, RecordFiller
 from basinrain.infill.span_filling import Fate, intervals_of, span_sums
-from basinrain.rainfall import RainRecord, Status
+from basinrain.rainfall import RainRecord
 
 NAN = float("nan")
 
@@ -63,31 +63,33 @@ def test_counts_above_255_steps() -> None:
 
 
 def test_what_became_of_every_span() -> None:
-    """Four days of two half days: estimated, raised, without donors, and a gap that is too long."""
-    record = hourly([4.0, 4, 1, 1, NAN, 9, 3, 3], [NAN, NAN, 9, NAN, NAN, NAN, NAN, NAN], [2.0] * 8, hours=12)
-    record = replace(record, depth=np.vstack([record.depth, [1.0, NAN, 1.0]]), **longer(record))
+    """Days of two half days: estimated, there by half, without donors, missing for too long; then half a day alone."""
+    missing = [NAN] * 9
+    missing[2] = 9.0
+    record = hourly([4.0, 4, 1, 1, NAN, 9, 3, 3, 1], missing, [2.0] * 8 + [1.0], hours=12)
     long = np.zeros((9, 3), dtype=bool)
     long[6:8, 1] = True
-    filled = RecordFiller(network(3), InfillOptions(method="station-average", scale="day")).fill(
-        record, long, trace=True
-    )
+    options = InfillOptions(method="station-average", scale="day")
+    filled = RecordFiller(network(3), options).fill(record, long, trace=True)
     assert filled.spans is not None
     mine = filled.spans.of_gauge(1)
-    assert [Fate(fate) for fate in mine.fate] == [Fate.SPREAD, Fate.UNKNOWN, Fate.LONG, Fate.SPREAD]
-    assert mine.first.tolist() == [0, 4, 6, 8]
-    # Half of the second day is there, so that is infilled step by step; the last day has one half day only.
+    assert [Fate(fate) for fate in mine.fate] == [Fate.SPREAD, Fate.UNKNOWN, Fate.SPREAD]
+    assert (mine.first.tolist(), mine.stop.tolist()) == ([0, 4, 8], [2, 6, 9])
+    assert mine.total == pytest.approx([6, NAN, 1], nan_ok=True)
+    # Half of the second day is there, so that is infilled step by step.
     assert filled.depth[:, 1] == pytest.approx([3, 3, 9, 1.5, NAN, NAN, NAN, NAN, 1], nan_ok=True)
 
 
-def longer(record: RainRecord) -> dict[str, object]:
-    """Return times and statuses of one more step, at which B is missing."""
-    more = [[Status.OBSERVED, Status.MISSING, Status.OBSERVED]]
-    step = np.timedelta64(12, "h")
-    return {
-        "starts": np.append(record.starts, record.ends[-1]),
-        "ends": np.append(record.ends, record.ends[-1] + step),
-        "status": np.vstack([record.status, more]).astype(np.uint8),
-    }
+def test_a_day_missing_in_part_for_too_long() -> None:
+    """Three of four quarters are missing, one of them as part of a long gap: no total is made up for the day."""
+    record = hourly([1.0] * 4, [NAN, NAN, 1.0, NAN], [3.0] * 4, hours=6)
+    long = np.zeros((4, 3), dtype=bool)
+    long[:2, 1] = True
+    options = InfillOptions(method="station-average", scale="day")
+    filled = RecordFiller(network(3), options).fill(record, long, trace=True)
+    assert filled.spans is not None
+    assert filled.spans.fate.tolist() == [Fate.LONG]
+    assert np.isnan(filled.depth[:, 1]).tolist() == [True, True, False, True]
 
 
 def test_a_total_below_what_was_observed() -> None:
@@ -122,7 +124,7 @@ def test_the_nearest_wet_recorder_however_far(wet: int) -> None:
 
 
 def test_rain_must_have_fallen_in_the_missing_steps() -> None:
-    """B has the first quarter of the day. A, nearest by its id, was wet then only; C and D give no pattern but D does."""
+    """B has the first quarter of its day. A and C, the nearest, were wet in that alone; D gives the pattern."""
     record = hourly([4.0, 0, 0, 0], [1.0, NAN, NAN, NAN], [8.0, 0, 0, 0], [0.0, 0, 6.0, 2.0], hours=6)
     filled = RecordFiller(network(4), InfillOptions(method="station-average", scale="day")).fill(record, trace=True)
     total = (4 + 8 + 8) / 3

@@ -159,8 +159,6 @@ def test_equal_to_new_weights_at_every_step(drawn: tuple[Case, RainRecord]) -> N
     cell = float(np.sqrt(case.basins.areas.min()) / 6)
     methods: dict[str, dict[str, Any]] = {name: {} for name in METHODS}
     methods["idw"] = {"grid": choose_grid(case.network, case.basins, cell=cell)}
-        "idw": {"grid": choose_grid(case.network, case.basins, cell=cell)}
-    }
     setup = setup_of(case.network, case.basins, methods=methods)
     long = longer_than(record, gap_mask(record), setup.infill.longest_gap)
     parts = SeriesEngine(setup).compute(record, long)
