@@ -313,11 +313,15 @@ async def _require_scheduler(address: str) -> None:
     from distributed.core import rpc
     from distributed.security import Security
 
-    async with (
-        asyncio.timeout(REACH_SECONDS),
-        rpc(address, connection_args=Security().get_connection_args("client")) as scheduler,
-    ):
-        await scheduler.identity()
+    arguments = Security().get_connection_args("client")
+    try:
+        async with asyncio.timeout(REACH_SECONDS), rpc(address, connection_args=arguments) as there:
+            kind = (await there.identity())["type"]
+    except Exception as error:
+        # Another kind of server may answer with anything.
+        raise ConnectionError(address) from error
+    if kind != "Scheduler":
+        raise ConnectionError(address)
 
 
 def _require_package(client: Client) -> None:

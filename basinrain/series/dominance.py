@@ -8,7 +8,6 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import MethodError
 from basinrain.rainfall import RainRecord
 from basinrain.series.engine import SeriesEngine, SeriesSetup
 
@@ -99,10 +98,7 @@ def dominances(
 def _of_step(  # noqa: PLR0917 - one step of one series
     engine: SeriesEngine, present: Bools, gaps: str, method: str, step: int, basins: Sequence[int], above: float
 ) -> list[Dominance]:
-    try:
-        weights = engine.weights(method, present)
-    except MethodError:
-        return []
+    weights = engine.weights(method, present)
     ids, gauges = engine.setup.basins.ids, engine.setup.network.ids
     found = []
     for b in basins:

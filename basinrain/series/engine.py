@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections import OrderedDict
 from collections.abc import Mapping
-from contextlib import suppress
 from dataclasses import dataclass
 from typing import Any, Final
 
@@ -15,7 +14,6 @@ from scipy import sparse
 from basinrain.averaging import averaging_method
 from basinrain.averaging.reporting import ReportingRuns
 from basinrain.basins import Basins
-from basinrain.errors import MethodError
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.normals import normals_of, require_normals
 from basinrain.infill.options import InfillOptions
@@ -159,7 +157,6 @@ class SeriesEngine:
     def __init__(self, setup: SeriesSetup) -> None:
         self.setup = setup
         network, basins = setup.network, setup.basins
-        self._weighers = {name: averaging_method(name)(network, basins, o) for name, o in setup.methods.items()}
         self._reweighers = {
             name: averaging_method(name).reweigher(network, basins, o) for name, o in setup.methods.items()
         }
@@ -172,8 +169,8 @@ class SeriesEngine:
             everyone = np.ones(len(network), dtype=bool)
             require_normals(network, everyone, [None, *range(1, 13)], method="ratios to normals")
             normals = np.column_stack([normals_of(network, month) for month in (None, *range(1, 13))])
-            for name, weigh in self._weighers.items():
-                self._basin_normals[name] = weigh(everyone).weights @ normals
+            for name in setup.methods:
+                self._basin_normals[name] = self.weights(name, everyone) @ normals
 
     def compute(self, chunk: RainRecord, long: Bools | None = None) -> Parts:
         """Return the series of a chunk, by policy and method.
@@ -215,14 +212,11 @@ class SeriesEngine:
         return {gaps: kind >= _OWN for gaps, _, kind in self._completed(chunk, long)}
 
     def weights(self, method: str, present: Bools) -> Floats:
-        """Return a method's weights for a set of gauges, (n_basins, n_gauges); NaN where it has no number.
-
-        Raises
-        ------
-        MethodError
-            The method refuses these gauges.
-        """
-        return self._weighers[method](present).weights
+        """Return a method's weights for a set of gauges, (n_basins, n_gauges); NaN where it has no number."""
+        n = len(present)
+        # A millimetre at one gauge after the other: what it makes of the basins' means is its weight in them.
+        one_by_one = ReportingRuns(np.zeros(1, dtype=np.int64), present[None, :], n)
+        return self._reweighers[method](np.eye(n), one_by_one).T
 
     def _completed(self, chunk: RainRecord, long: Bools | None) -> list[tuple[str, Floats, Bytes]]:
         """Return, for every policy, the chunk's depths and their kinds, (n_steps, n_gauges)."""
@@ -272,12 +266,7 @@ class SeriesEngine:
         """Return a method's weights with the gauges in service, (n_basins, n_gauges); zeros where it has no number."""
         key = (method, service.tobytes())
         if key not in self._service:
-            weights = np.zeros((len(self.setup.basins), len(service)))
-            # A method that refuses these gauges has no number here either.
-            with suppress(MethodError):
-                if service.any():
-                    weights = np.nan_to_num(self._weighers[method](service).weights)
-            self._service[key] = weights
+            self._service[key] = np.nan_to_num(self.weights(method, service))
             if len(self._service) > _REMEMBERED:
                 self._service.popitem(last=False)
         self._service.move_to_end(key)

@@ -195,7 +195,7 @@ def test_numbers_are_judged_as_their_text(values: list[float], marks: bool) -> N
     texts = ["" if np.isnan(value) else np.format_float_positional(value, trim="-") for value in values]
     flags = [("", "E", "X")[k % 3] for k in range(len(values))]
     frame = pd.DataFrame({"text": texts, "number": np.array(values), "flag": flags})
-    table = DelimitedTable("rain.csv", tuple(frame), frame, np.arange(2, len(frame) + 2), ".")
+    table = DelimitedTable("rain.csv", ("text", "number", "flag"), frame, np.arange(2, len(frame) + 2), ".")
     flag = "flag" if marks else None
     expected = DepthCells(table, rules).column("text", flag=flag)
     found = DepthCells(table, rules).column("number", flag=flag)
