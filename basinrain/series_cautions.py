@@ -65,6 +65,7 @@ def series_cautions(
     yield from _decided_by_one(setup, left_out)
     yield from _dominated(dominant, ends, zone)
     yield from _without_number(setup, summaries)
+    yield from _without_totals(summaries)
 
 
 def _policies_apart(setup: SeriesSetup, summaries: Summaries) -> Iterator[Note]:
@@ -153,3 +154,15 @@ def _without_number(setup: SeriesSetup, summaries: Summaries) -> Iterator[Note]:
                 basin=setup.basins.ids[b],
                 method=method,
             )
+
+
+def _without_totals(summaries: Summaries) -> Iterator[Note]:
+    found = next(iter(summaries.values()))
+    kinds = {"month": found.months, "year": found.years, "water year": found.water_years}
+    without = [kind for kind, totals in kinds.items() if not totals.names]
+    if without:
+        yield Note(
+            code="totals-left-out",
+            text=f"No totals by {', '.join(without)}: steps of more than a day lie in two of these periods.",
+            level="info",
+        )

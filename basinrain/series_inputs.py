@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
@@ -86,12 +87,13 @@ def held_inputs(given: Inputs, longest_gap: float) -> SeriesInputs:
 def borders_of(inputs: SeriesInputs, setup: SeriesSetup, memory: float) -> Ints:
     """Return where chunks begin so that one process stays within ``memory`` GiB; see :func:`chunk_steps_within`."""
     begin = inputs.starts.astype(np.int64)
-    length = int(np.median(inputs.ends.astype(np.int64) - begin))
-    per_day = max(_DAY // max(length, 1), 1)
-    head = 0
-    if per_day > 1:
-        into_day = int(begin[0] - inputs.given.record.day_phase) % _DAY
-        head = (_DAY - into_day) // length if into_day else 0
+    length = max(int(np.median(inputs.ends.astype(np.int64) - begin)), 1)
+    per_day, head = 1, 0
+    if length < _DAY:
+        # Of as many days as the steps divide, in which the borders of days then come back.
+        per_day = math.lcm(length, _DAY) // length
+        middle = int(begin[0] + length // 2 - inputs.given.record.day_phase) % _DAY
+        head = -(-(_DAY - middle) // length)
     most = chunk_steps_within(
         memory * _GIB,
         n_gauges=len(setup.network),

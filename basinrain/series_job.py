@@ -38,6 +38,7 @@ from basinrain.series.long_term import LeftOut, gauges_to_leave_out, left_out
 from basinrain.series.network_changes import network_changes
 from basinrain.series.policies import REWEIGHT
 from basinrain.series.regrouping import Regrouping, regroup
+from basinrain.series.steps import DAY
 from basinrain.series.summary import summarise
 from basinrain.series_cautions import series_cautions
 from basinrain.series_check import WET_DEPTH
@@ -317,8 +318,17 @@ def _durations(job: Job, inputs: SeriesInputs) -> tuple[np.timedelta64, ...]:
         if len(lengths) > 1 or seconds is None or seconds % step:
             own = inputs.given.record.step
             problems.add(item=item, found=f"'{word}'", expected=f"a whole number of the record's steps of {own}")
+    # Windows of the clock begin with the day; steps of 18 h, say, need not.
+    off_clock = int(inputs.starts[0].astype(np.int64) - inputs.given.record.day_phase) % DAY % step > 0
+    if off_clock and job.series.durations and not problems:
+        problems.add(
+            item="[series] durations",
+            found=f"steps that do not begin with the day, the first of them at {inputs.starts[0]}",
+            expected="a record whose first step begins a whole number of steps after its day does",
+            remedy="leave durations out",
+        )
     problems.raise_as(JobError)
-    if len(lengths) > 1:
+    if len(lengths) > 1 or off_clock:
         return ()
     words = job.series.durations or [word for word in _DURATIONS if (parse_interval(word).seconds or 0) % step == 0]
     return tuple(_length(word) for word in words)
@@ -371,6 +381,7 @@ def _key(job: Job, setup: SeriesSetup, borders: npt.NDArray[np.int64]) -> str:
     told = {
         "job": decides,
         "plane": job.job.plane,
+        "depth_unit": job.job.depth_unit,  # what edits set is given in it
         "series": setup.series,
         "weigh": job.series.weigh,
         "infill": setup.infill.label,

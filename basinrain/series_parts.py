@@ -22,7 +22,7 @@ from basinrain.job_parts import Report
 from basinrain.jobfile import Job
 from basinrain.jobfile.fields import LEAVE_ONE_OUT
 from basinrain.notes import Note
-from basinrain.rainfall import RainRecord
+from basinrain.rainfall import RainRecord, Status
 from basinrain.reading.stream import RecordStream, open_stream
 from basinrain.reading.stream_gaps import LongGaps, long_gaps
 from basinrain.reading.stream_size import bytes_to_read
@@ -75,7 +75,12 @@ def _within(edit: Edit, record: RainRecord) -> Edit | None:
     start = record.starts[0] if np.isnat(edit.start) else max(edit.start, record.starts[0])
     end = record.ends[-1] if np.isnat(edit.end) else min(edit.end, record.ends[-1])
     inside = (record.ends > start) & (record.starts < end)
-    if not record.reporting[inside, record.gauges.index(edit.gauge)].any():
+    column = record.gauges.index(edit.gauge)
+    # A value may be set where the file has none; but a gauge that is not in service has no values.
+    changeable = (
+        record.status[:, column] != Status.NOT_INSTALLED if edit.action == "set" else record.reporting[:, column]
+    )
+    if not changeable[inside].any():
         return None
     return replace(edit, start=start, end=end)
 
@@ -240,6 +245,15 @@ def _require_in_record(edits: tuple[Edit, ...], stream: RecordStream) -> None:
                 found=f"{edit.start} to {edit.end}",
                 expected=f"times in the record, {starts[0]} to {ends[-1]}",
                 remedy="correct from or to",
+                gauge=edit.gauge,
+            )
+        # The steps may lie on either side of a border, where each part would see only its own.
+        elif edit.action == "set" and (n := np.count_nonzero(~(starts < edit.start) & ~(ends > edit.end))) > 1:
+            problems.add(
+                item=edit.item,
+                found=f"{n} steps of the gauge in {edit.start} to {edit.end}",
+                expected="one step to set",
+                remedy="narrow it to one, and give every step its own edit",
                 gauge=edit.gauge,
             )
     problems.raise_as(JobError)

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import numpy.typing as npt
 import pytest
 import shapely
 from strips import BASINS, NAN, NETWORK, hourly
 
+from basinrain import basin_depths
 from basinrain.averaging import averaging_method
 from basinrain.basin_depths import BasinDepths, average_storm, spread_across_methods
 from basinrain.basins import Basins
@@ -148,3 +151,20 @@ def test_contributions_with_a_gauge_that_closes_inside_a_spread_total() -> None:
     assert completed.record.depth[:, 1] == pytest.approx([10.5 * 6 / 9, 0, 10.5 * 3 / 9])
     result = average_storm(completed, averaging_method("thiessen")(network, BASINS))
     assert result.contribution[0].sum() == pytest.approx(result.total[0], abs=1e-12)
+
+
+def test_a_long_storm_is_averaged_a_few_steps_at_a_time(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Looked at two steps at a time, while B goes missing for good in the middle, nothing changes."""
+    depth = np.random.default_rng(2).gamma(0.5, 6, (11, 3))
+    depth[3:5, 0], depth[6:, 1] = NAN, NAN
+    record = hourly(depth.tolist())
+    status = record.status.copy()
+    status[6:, 1] = Status.NOT_INSTALLED
+    record = replace(record, status=status)
+    options = InfillOptions(method="station-average", scale="step", min_donors=1)
+    whole = averaged(record, options, "thiessen")
+    monkeypatch.setattr(basin_depths, "_BLOCK", 6)
+    parts = averaged(record, options, "thiessen")
+    for name in ("depth", "infilled", "contribution", "least", "most", "observed_share", "reporting"):
+        np.testing.assert_allclose(getattr(parts, name), getattr(whole, name), rtol=1e-13, err_msg=name)
+    assert whole.contribution[0].sum() == pytest.approx(whole.total[0])

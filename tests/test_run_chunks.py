@@ -9,7 +9,9 @@ import time
 from pathlib import Path
 
 import numpy as np
+import numpy.typing as npt
 import pytest
+import shapely
 from chunked import (
     DAY,
     STEPS,
@@ -24,9 +26,16 @@ from chunked import (
 )
 from threadpoolctl import threadpool_limits
 
+from basinrain.basins import Basins
+from basinrain.blas import one_blas_thread
 from basinrain.errors import DataError, JobError
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill.gaps import gap_mask, longer_than
+from basinrain.infill.options import InfillOptions
+from basinrain.rainfall import RainRecord, Status
 from basinrain.run_chunks import run_chunks
-from basinrain.series.engine import SeriesEngine
+from basinrain.series.chunks import RecordSource, chunk_borders
+from basinrain.series.engine import SeriesEngine, SeriesSetup
 from basinrain.series_store import SeriesStore
 
 CHUNKS = STEPS // DAY
@@ -82,6 +91,111 @@ def test_only_missing_chunks_are_computed(tmp_path: Path, undisturbed: bytes) ->
         run_chunks(small_setup(), SourceWith(Counting(tmp_path / "seen")), store)
         assert sorted(int(path.stem) for path in (tmp_path / "seen").iterdir()) == list(range(5, CHUNKS))
         assert stored_bytes(store) == undisturbed
+
+
+def wide_setup() -> SeriesSetup:
+    """Return thirty gauges over six strips, all policies and methods."""
+    rng = np.random.default_rng(21)
+    x, y = rng.uniform(0, 30_000, (2, 30))
+    network = GaugeNetwork(ids=tuple(f"W{n:02d}" for n in range(30)), x=x, y=y, crs="local")
+    strips = np.array([shapely.box(5000 * n, 0, 5000 * (n + 1), 30_000) for n in range(6)])
+    return SeriesSetup(
+        network=network,
+        basins=Basins(ids=tuple("abcdef"), polygons=strips, crs="local"),
+        methods={"thiessen": {}, "arithmetic": {"gauges": "all"}, "idw": {"cell": 1000.0}},
+        gaps=("infill", "reweight", "infill-then-reweight"),
+        infill=InfillOptions(method="inverse-distance", scale="day"),
+    )
+
+
+def coming_and_going(n_days: int = 20) -> tuple[RainRecord, npt.NDArray[np.bool_]]:
+    """Return hours with outages, five gauges that open late and two that close early, and which gaps are long."""
+    rng = np.random.default_rng(22)
+    ends = np.datetime64("2031-05-04T00", "s") + np.arange(1, 24 * n_days + 1) * np.timedelta64(1, "h")
+    depth = rng.gamma(0.3, 4.0, (len(ends), 30))
+    status = np.full(depth.shape, Status.OBSERVED, dtype=np.uint8)
+    for _ in range(60):
+        first, gauge, hours = rng.integers(0, len(ends)), rng.integers(0, 30), rng.integers(1, 100)
+        status[first : first + hours, gauge] = Status.MISSING
+    for gauge in range(5):
+        status[: 24 * 3 * gauge + 7, gauge] = Status.NOT_INSTALLED
+    status[24 * 15 + 5 :, 28:] = Status.NOT_INSTALLED
+    depth[np.isin(status, [Status.MISSING, Status.NOT_INSTALLED])] = np.nan
+    starts = ends - np.timedelta64(1, "h")
+    record = RainRecord(tuple(f"W{n:02d}" for n in range(30)), starts, ends, depth, status, step="1h")
+    return record, longer_than(record, gap_mask(record), 2)
+
+
+def test_what_an_engine_did_before_changes_no_byte() -> None:
+    """Each chunk by an engine of its own, and all by one engine from the last to the first: the same bytes."""
+    record, long = coming_and_going()
+    source = RecordSource(record, long, chunk_borders(len(record), steps_per_day=24, chunk_steps=96))
+    assert long.any()
+    used = SeriesEngine(wide_setup())
+    with one_blas_thread():
+        for k in reversed(range(len(source.borders) - 1)):
+            fresh, late = SeriesEngine(wide_setup()).compute(*source.task(k)()), used.compute(*source.task(k)())
+            for name, part in fresh.items():
+                for kind in ("depth", "observed_share", "flags"):
+                    assert getattr(part, kind).tobytes() == getattr(late[name], kind).tobytes(), (k, name, kind)
+
+
+LARGE = """
+import sys
+from pathlib import Path
+import numpy as np, shapely
+from basinrain.basins import Basins
+from basinrain.gauges import GaugeNetwork
+from basinrain.infill.options import InfillOptions
+from basinrain.rainfall import RainRecord
+from basinrain.run_chunks import run_chunks
+from basinrain.series.chunks import chunk_borders, chunk_steps_within
+from basinrain.series.engine import SeriesSetup
+from basinrain.series_store import SeriesStore
+
+class Endless:
+    def __init__(self, n_steps, borders):
+        self.n_steps, self.borders = n_steps, borders
+    def task(self, k):
+        return lambda: self.chunk(int(self.borders[k]), int(self.borders[k + 1]))
+    def chunk(self, first, stop):
+        rng = np.random.default_rng(first)
+        ends = np.datetime64("2001-01-01T00", "s") + np.arange(first + 1, stop + 1) * np.timedelta64(1, "h")
+        depth = rng.random((stop - first, 300))
+        depth[rng.random(depth.shape) < 0.001] = np.nan
+        return RainRecord.from_depths(network.ids, ends - np.timedelta64(1, "h"), ends, depth, step="1h"), None
+
+x, y = np.random.default_rng(1).uniform(0, 2e5, (2, 300))
+network = GaugeNetwork(ids=tuple(f"G{n:03d}" for n in range(300)), x=x, y=y, crs="local")
+boxes = np.array([shapely.box(2e4 * c, 1e4 * r, 2e4 * c + 2e4, 1e4 * r + 1e4) for c in range(10) for r in range(20)])
+setup = SeriesSetup(
+    network=network,
+    basins=Basins(ids=tuple(f"B{n:03d}" for n in range(200)), polygons=boxes, crs="local"),
+    methods={"thiessen": {}},
+    gaps=("reweight", "infill"),
+    infill=InfillOptions(method="inverse-distance", scale="step"),
+)
+most = chunk_steps_within(float(sys.argv[1]), 300, 200, 2)
+n_steps = int(2.5 * most)
+borders = chunk_borders(n_steps, steps_per_day=24, chunk_steps=most)
+with SeriesStore.open(
+    Path(sys.argv[2]), key="large", n_steps=n_steps, n_basins=200, series=setup.series, borders=borders
+) as store:
+    run_chunks(setup, Endless(n_steps, borders), store)
+    assert not np.isnan(store.depth("reweight", "thiessen")[::1000]).any()
+line = next(line for line in open("/proc/self/status") if line.startswith("VmHWM"))
+print(n_steps * 300 * 9, int(line.split()[1]) * 1024)
+"""
+
+
+@pytest.mark.skipif(not Path("/proc/self/status").exists(), reason="reads the process's memory where Linux shows it")
+def test_a_record_larger_than_the_memory_stays_within_it(tmp_path: Path) -> None:
+    """With chunks of the size that is stated for 640 MiB the whole process has at most that, results on disk."""
+    bound = 640 << 20
+    command = [sys.executable, "-c", LARGE, str(bound), str(tmp_path / "work")]
+    run = subprocess.run(command, capture_output=True, text=True, check=True)
+    _, peak = (int(word) for word in run.stdout.split())
+    assert peak < bound
 
 
 WORK = """

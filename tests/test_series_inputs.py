@@ -36,6 +36,20 @@ def test_chunks_are_whole_days(tmp_path: Path) -> None:
     assert borders_of(found, SETUP, 1e-9).tolist() == [0, 6, 30, 54, 60]
 
 
+def test_chunks_of_steps_that_do_not_divide_a_day(tmp_path: Path) -> None:
+    """Steps of 5 h meet the days again after five of them, 24 steps; a step is of the day that holds its middle."""
+    ends = np.datetime64("2031-05-04T15:00") + np.arange(1, 60) * np.timedelta64(5, "h")
+    text = JOB.replace('interval = "1h"', 'interval = "5h"')
+    rain = "time,A,B,C\n" + "".join(f"{end},1,1,1\n" for end in ends)
+    job = read_job(write_tiny(tmp_path, rain=rain, job=text))
+    found = held_inputs(read_inputs(job, lambda _: None), 31)
+    borders = borders_of(found, SETUP, 1e-9)
+    assert borders.tolist() == [0, 2, 26, 50, 59]
+    middle = found.starts[borders[1:-1]] + np.timedelta64(9000, "s")
+    before = middle - np.timedelta64(5, "h")
+    assert (middle.astype("datetime64[D]") > before.astype("datetime64[D]")).all()
+
+
 def test_with_memory_it_is_one_chunk(tmp_path: Path) -> None:
     """Two GiB hold sixty hours of three gauges."""
     found = inputs(tmp_path, hours("2031-05-04T18:00", 60))

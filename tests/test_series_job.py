@@ -206,6 +206,44 @@ def test_a_record_in_parts_is_the_same(tmp_path: Path, monkeypatch: pytest.Monke
     assert parted.edit_table["steps_changed"].isna().all()
 
 
+SET = EDIT.replace("2031-05-05T00", "2031-05-06T05").replace("2031-05-06T00", "2031-05-06T06")
+SET = SET.replace('"A"', '"B"').replace('"scale"\nvalue = 0.1', '"set"\nvalue = 2')
+
+
+@pytest.mark.parametrize("opened", ["", "2031-05-07"])
+def test_a_value_set_in_a_gap_in_parts(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, opened: str) -> None:
+    """A value that an edit sets where the file has none is there in parts, too, unless the gauge is not in service."""
+    gauges = f"id,x,y,from\nA,2.5,5,\nB,7.5,5,{opened}\nC,11,5,\n"
+    job = write_tiny(tmp_path, rain=wandering(96), gauges=gauges, job=JOB + SET)
+    settings = ["infill.method=station-average", "series.gaps=reweight", "series.memory=1e-9"]
+    held = run_series(job, settings).store.depth("reweight", "arithmetic")
+    parted = in_parts(monkeypatch, job, settings).store.depth("reweight", "arithmetic")
+    np.testing.assert_allclose(parted, held, rtol=1e-12, atol=1e-12)
+    east = list(held[52:55, 1])
+    assert east[1] == 2 if not opened else np.isnan(east[1])
+    assert np.isnan([east[0], east[2]]).all()
+
+
+def test_one_step_is_set_in_parts(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Two steps to set are refused, though they lie in two parts."""
+    job = write_tiny(tmp_path, rain=wandering(96), job=JOB + SET.replace("06T05", "05T23").replace("06T06", "06T01"))
+    with pytest.raises(
+        JobError, match=r"gauge B\): found 2 steps of the gauge in 2031-05-05T23:00:00 to 2031-05-06T01"
+    ):
+        in_parts(monkeypatch, job, ["series.memory=1e-9"])
+
+
+def test_parts_of_another_unit_are_not_gone_on_from(tmp_path: Path) -> None:
+    """Two units set by an edit are 2 mm or 50.8 mm: finished chunks of the one are not taken for the other's."""
+    job = write_tiny(tmp_path, rain=wandering(96), job=JOB + SET)
+    east = []
+    for unit in ("mm", "in"):
+        run = run_series(job, [f"job.depth_unit={unit}", "series.gaps=reweight"], work=tmp_path / "work")
+        east.append(float(run.store.depth("reweight", "arithmetic")[53, 1]))
+        run.store.close()
+    assert east == pytest.approx([2.0, 50.8])
+
+
 @pytest.mark.parametrize(
     ("setting", "message"),
     [
@@ -273,3 +311,33 @@ def test_the_same_from_a_frame_and_a_store(tmp_path: Path) -> None:
     frame = run.series
     mine = frame.pivot_table(index="time", columns="basin", values="depth", sort=False)[list(run.basins.ids)]
     np.testing.assert_allclose(mine.to_numpy() * 25.4, run.store.depth("infill-then-reweight", "idw"))
+
+
+def test_weeks_have_no_totals_by_month(tmp_path: Path) -> None:
+    """A record of weeks is averaged; that it has no totals by month and year is remarked, and the report is written."""
+    ends = np.datetime64("2031-01-06") + 7 * np.arange(60)
+    rain = "date,A,B,C\n" + "".join(f"{end},{k % 5},2,4\n" for k, end in enumerate(ends))
+    job = write_tiny(tmp_path, rain=rain, job=JOB.replace('"1h"', '"7d"'))
+    run = run_series(job, ["averaging.methods=thiessen", "infill.method=station-average"])
+    assert run.period_totals.empty
+    assert list(run.period_totals.columns[:4]) == ["basin", "method", "gaps", "period"]
+    (text,) = [note.text for note in run.notes if note.code == "totals-left-out"]
+    assert text == "No totals by month, year, water year: steps of more than a day lie in two of these periods."
+    west = run.series_means.set_index("basin").loc["west"]
+    assert west["years"] == 0
+    assert west["mean_annual_of_steps"] == pytest.approx(west["depth"] / 60 / 7 * 365.2425)
+    run.write(tmp_path / "out")
+    assert (tmp_path / "out" / "report.html").exists()
+
+
+def test_greatest_depths_of_steps_that_do_not_begin_with_the_day(tmp_path: Path) -> None:
+    """Steps of 18 h of which the first begins at 06:00: no durations unless they are asked for, which is refused."""
+    ends = np.datetime64("2031-05-05T00:00") + np.arange(40) * np.timedelta64(18, "h")
+    rain = "time,A,B,C\n" + "".join(f"{end},1,2,4\n" for end in ends)
+    job = write_tiny(tmp_path, rain=rain, job=JOB.replace('"1h"', '"18h"'))
+    settings = ["averaging.methods=thiessen", "infill.method=station-average"]
+    assert run_series(job, settings).greatest_depths.empty
+    with pytest.raises(
+        JobError, match=r"\[series\] durations: found steps that do not begin with the day, the first of"
+    ):
+        run_series(job, [*settings, "series.durations=3d"])

@@ -14,11 +14,12 @@ from basinrain.gauges import GaugeNetwork
 from basinrain.infill.donor_sums import DonorSums
 from basinrain.infill.donors import distances_from, require_elevations
 from basinrain.infill.gaps import gap_mask, longer_than
+from basinrain.infill.intervals import intervals_of
 from basinrain.infill.normals import require_normals
 from basinrain.infill.options import InfillOptions
 from basinrain.infill.record_normals import NormalRatios
 from basinrain.infill.relations import Relations
-from basinrain.infill.span_filling import Block, SpanCells, fill_spans, intervals_of
+from basinrain.infill.span_filling import Block, SpanCells, fill_spans
 from basinrain.infill.spans import KnownTotals, month_of, span_starts
 from basinrain.rainfall import MEASURED, REPORTING, RainRecord, Status
 

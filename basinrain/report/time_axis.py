@@ -5,7 +5,7 @@ from __future__ import annotations
 from datetime import UTC
 from typing import Any
 
-from matplotlib.dates import AutoDateLocator, ConciseDateFormatter
+from matplotlib.dates import HOURLY, MINUTELY, MONTHLY, SECONDLY, AutoDateLocator, ConciseDateFormatter
 
 __all__ = ["date_axis"]
 
@@ -14,6 +14,9 @@ def date_axis(axis: Any, *, most: int = 6) -> None:  # noqa: ANN401 - matplotlib
     """Give an axis dates as digits, at most ``most`` of them; values are those of :func:`matplotlib.dates.date2num`."""
     # In the record's own clock, never the machine's.
     locator = AutoDateLocator(tz=UTC, minticks=3, maxticks=most)  # type: ignore[no-untyped-call]
+    # Without these nearly three years, days, hours or minutes have no interval that is long enough, and it warns.
+    for unit, longest in ((MONTHLY, 12), (HOURLY, 24), (MINUTELY, 60), (SECONDLY, 60)):
+        locator.intervald[unit] = [*locator.intervald[unit], longest]
     axis.set_major_locator(locator)
     # Digits only: the names of months would follow the machine's language.
     formatter = ConciseDateFormatter(  # type: ignore[no-untyped-call]

@@ -28,12 +28,12 @@ LoadChunk = Callable[[], Chunk]
 
 _PREPARED: Final = 384 << 20
 """Bytes of a process before it computes: the libraries, and what is remembered of the network between chunks."""
+_PER_PAIR: Final = (8, 24)
+"""Bytes for every pair of gauges, and for every pair of a gauge and a basin: the weights that all gauges have."""
 _PER_VALUE: Final = 40
 """Bytes at the height of the work for every value of a chunk's record."""
-_PER_MEAN: Final = 26
-"""Bytes for every mean of a chunk, by every policy and method: two times what is kept of it, 8 + 4 + 1."""
-_PER_BASIN: Final = 32
-"""Bytes for every basin and step, whatever the number of series: the means at work."""
+_PER_BASIN: Final = (24, 13)
+"""Bytes for every step and basin, and for every mean of them by a policy and a method: 8 + 4 + 1."""
 
 
 class ChunkSource(Protocol):
@@ -61,7 +61,7 @@ def chunk_borders(n_steps: int, *, steps_per_day: int, chunk_steps: int, head: i
     n_steps
         Steps of the record.
     steps_per_day
-        Steps of a day; 1 where they are a day or longer.
+        Steps of a day; of as many days as they divide, where they do not divide one; 1 where they are a day or longer.
     chunk_steps
         How many steps a chunk may have. The whole days among them are taken, at least one day.
     head
@@ -101,12 +101,14 @@ def chunk_borders(n_steps: int, *, steps_per_day: int, chunk_steps: int, head: i
 def chunk_steps_within(memory_bytes: float, n_gauges: int, n_basins: int, n_series: int) -> int:
     """Return how many steps a chunk may have for one process to stay within a bound of memory.
 
-    A process holds 384 MiB before it computes (libraries, and what is remembered of the network). In a chunk each step
-    takes at most 40 bytes a gauge (the record: 8 + 1; a completed copy: 8 + 1; the gaps: 1; what is at work: 21),
-    32 bytes a basin, and 26 bytes a basin and series (depth 8, observed share 4, flags 1, two times: the chunk that is
-    kept and the one that is made)::
+    Before it computes, a process holds 384 MiB (libraries, and what is remembered of the network) and the weights of
+    all gauges. In a chunk each step then takes at most 40 bytes a gauge (the record as it is read, its completed copy,
+    the gaps), and for every basin 24 bytes and 13 a series (depth 8, observed share 4, flags 1)::
 
-        steps = (memory - 384 MiB) / (40 gauges + 32 basins + 26 basins series)
+        fixed = 384 MiB + 8 gauges^2 + 24 gauges basins
+        steps = (memory - fixed) / (40 gauges + 24 basins + 13 basins series)
+
+    A record that is in memory as a whole comes on top of it.
 
     Parameters
     ----------
@@ -126,14 +128,15 @@ def chunk_steps_within(memory_bytes: float, n_gauges: int, n_basins: int, n_seri
     Examples
     --------
     >>> chunk_steps_within(2 << 30, n_gauges=300, n_basins=200, n_series=3)
-    51232
-    >>> chunk_steps_within(2 << 30, n_gauges=10_000, n_basins=50_000, n_series=1)
-    529
+    70840
+    >>> chunk_steps_within(2 << 30, n_gauges=2000, n_basins=1000, n_series=1)
+    14229
     >>> chunk_steps_within(1, n_gauges=300, n_basins=200, n_series=3)
     1
     """
-    per_step = _PER_VALUE * n_gauges + (_PER_BASIN + _PER_MEAN * n_series) * n_basins
-    return max(int((memory_bytes - _PREPARED) / max(per_step, 1)), 1)
+    fixed = _PREPARED + _PER_PAIR[0] * n_gauges**2 + _PER_PAIR[1] * n_gauges * n_basins
+    per_step = _PER_VALUE * n_gauges + (_PER_BASIN[0] + _PER_BASIN[1] * n_series) * n_basins
+    return max(int((memory_bytes - fixed) / max(per_step, 1)), 1)
 
 
 @dataclass(frozen=True, eq=False)

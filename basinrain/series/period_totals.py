@@ -230,7 +230,8 @@ def mean_annual(
     Parameters
     ----------
     starts, ends, depth, water_year, complete
-        As for :func:`period_totals`; ``water_year=1`` takes calendar years.
+        As for :func:`period_totals`; ``water_year=1`` takes calendar years. Where steps of more than a day lie in two
+        years, no year is complete.
 
     Returns
     -------
@@ -238,7 +239,7 @@ def mean_annual(
 
     Raises
     ------
-    DataError, JobError, MethodError
+    DataError, JobError
         As :func:`period_totals`.
 
     Examples
@@ -251,8 +252,11 @@ def mean_annual(
     >>> float(mean.of_years), int(mean.years), round(float(mean.of_steps), 3), float(mean.share)
     (630.0, 2, 675.005, 1.0)
     """
-    totals = period_totals(starts, ends, depth, by="water-year", water_year=water_year, complete=complete).total
     begin, end, values = check_steps(starts, ends, depth)
+    try:
+        totals = period_totals(starts, ends, depth, by="water-year", water_year=water_year, complete=complete).total
+    except MethodError:
+        totals = np.empty((0, *values.shape[1:]))
     lengths = (end - begin).astype(np.int64)
     edges = np.append(np.arange(0, len(values), _BLOCK), len(values))
     present, time = (parts.sum(axis=0) for parts in _sums(values, lengths, edges))

@@ -9,6 +9,7 @@ from typing import Any, Final, TypeVar, cast
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.errors import MethodError
 from basinrain.series.greatest_depths import Greatest, GreatestDepths, greatest_depths
 from basinrain.series.long_term import LongTerm, long_term
 from basinrain.series.period_totals import MeanAnnual, PeriodTotals, mean_annual, period_totals
@@ -46,7 +47,7 @@ class SeriesSummary:
     annual
         Its mean annual depth.
     months, years, water_years
-        Its totals.
+        Its totals; without periods where steps of more than a day lie in two of them.
     greatest
         Its greatest depths by duration; None where no duration was asked for.
     largest : array of int, shape (n, n_basins)
@@ -104,11 +105,9 @@ def summarise(
         found.append(
             {
                 "annual": mean_annual(starts, ends, part, water_year=water_year, complete=complete),
-                "months": period_totals(starts, ends, part, by="month", complete=complete),
-                "years": period_totals(starts, ends, part, by="year", complete=complete),
-                "water_years": period_totals(
-                    starts, ends, part, by="water-year", water_year=water_year, complete=complete
-                ),
+                "months": _totals(starts, ends, part, by="month", complete=complete),
+                "years": _totals(starts, ends, part, by="year", complete=complete),
+                "water_years": _totals(starts, ends, part, by="water-year", water_year=water_year, complete=complete),
                 "largest": _largest(part),
                 "greatest": greatest_depths(starts, ends, part, durations=durations, day_phase=day_phase)
                 if len(durations)
@@ -119,6 +118,17 @@ def summarise(
     together = {name: _side_by_side([part[name] for part in found]) for name in found[0]}
     together["largest"] = np.concatenate([part["largest"] for part in found], axis=1)
     return SeriesSummary(terms=long_term(stored, gaps, method, lengths), **together)
+
+
+def _totals(starts: Times, ends: Times, depth: npt.NDArray[np.float64], **how: Any) -> PeriodTotals:  # noqa: ANN401
+    """Return totals by period; of no period where steps of more than a day lie in two."""
+    try:
+        return period_totals(starts, ends, depth, **how)
+    except MethodError:
+        times, depths = starts[:0], depth[:0]
+        return PeriodTotals(
+            names=(), starts=times, ends=times, total=depths, present=depths, share=depths, straddling=0
+        )
 
 
 def _largest(depth: npt.NDArray[np.float64]) -> npt.NDArray[np.int64]:

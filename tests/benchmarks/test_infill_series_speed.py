@@ -26,11 +26,11 @@ def test_infilled_and_averaged_beside_one_product(scale: str, held_to: float, ne
     loop = run_child(SCRIPT, "loop", nearest)
     whole = loop["each"] * loop["missing"]
     print(  # noqa: T201
-        f"\n{scale}, nearest {nearest}, {found['silent']:.1%} silent: {found['work']:.2f} s, {found['median']:.2f} x the "
-        f"product of {found['beside']:.3f} s (at most {found['most']:.2f}); worst difference {found['worst']:.1e} mm; "
-        f"asking value by value {whole:.0f} s = {whole / found['work']:.0f} x"
+        f"\n{scale}, nearest {nearest}, {found['silent']:.1%} silent: {found['work']:.2f} s, {found['median']:.2f} x "
+        f"the product of {found['beside']:.3f} s (at most {found['most']:.2f}); worst difference "
+        f"{found['worst']:.1e} mm; asking value by value {whole:.0f} s = {whole / found['work']:.0f} x"
     )
-    assert found["worst"] <= 1e-12
+    assert found["worst"] <= 1e-11
     assert found["median"] <= held_to
 
 

@@ -99,7 +99,6 @@ def test_words_and_steps_are_shown_on_a_terminal(monkeypatch: pytest.MonkeyPatch
 
 def test_the_rate_counts_from_where_this_run_began(monkeypatch: pytest.MonkeyPatch) -> None:
     """Steps that an earlier run had finished are no speed of this one, and words in between start the clock anew."""
-    terminal_of(monkeypatch)
     clock = iter([100.0, 110.0, 500.0, 502.0])
     monkeypatch.setattr(module.time, "monotonic", lambda: next(clock))
     told: list[str] = []

@@ -65,3 +65,15 @@ def test_sources_of_a_dry_total() -> None:
 def test_a_record_without_gaps() -> None:
     """Every gauge is its own source."""
     assert completed([1, 2], [3, 4], scale="storm").sources().tolist() == [[3, 0], [0, 7]]
+
+
+@pytest.mark.parametrize("scale", ["step", "storm"])
+def test_influence_is_the_least_and_most_of_all_tables(scale: str) -> None:
+    """Over some steps, each gauge's own weight through the donors of every step."""
+    result = completed([5, 10, 5, 0, 2], [6, NAN, NAN, NAN, 1], [4, 8, NAN, 2, NAN], [1, 1, 1, 1, 1], scale=scale)
+    weights = np.array([[0.4, 0.3, 0.2, 0.1], [0.0, 0.5, 0.5, 0.0]])
+    for steps in (slice(0, 5), np.array([1, 3]), np.array([2])):
+        tables = [weights @ result.donor_table(int(step)) for step in np.arange(5)[steps]]
+        least, most = result.influence(weights, steps)
+        np.testing.assert_allclose(least, np.min(tables, axis=0), atol=1e-15)
+        np.testing.assert_allclose(most, np.max(tables, axis=0), atol=1e-15)

@@ -141,6 +141,15 @@ def test_long_steps_across_a_border_are_refused() -> None:
         period_totals(starts, ends, np.ones(60), by="year")
 
 
+def test_mean_annual_of_steps_across_years() -> None:
+    """No year of weeks is complete; the mean of all steps stands: 7 mm a week, 365.2425 mm a year."""
+    starts, ends = steps(60, step=7 * DAY, start=np.datetime64("2031-01-01T00:00:00"))
+    mean = mean_annual(starts, ends, np.full((60, 2), 7.0), water_year=1)
+    assert mean.years.tolist() == [0, 0]
+    assert np.isnan(mean.of_years).all()
+    np.testing.assert_allclose(mean.of_steps, 365.2425)
+
+
 def test_bad_options_and_series_are_refused() -> None:
     """Another period, a month that is none, a completeness of nothing or above all, and times with a hole."""
     starts, ends = steps(3)

@@ -1,0 +1,23 @@
+"""The time axis of figures."""
+
+from datetime import UTC, datetime, timedelta
+
+import pytest
+from matplotlib.dates import date2num
+from matplotlib.figure import Figure
+
+from basinrain.report.time_axis import date_axis
+
+
+@pytest.mark.parametrize("most", [5, 6, 9])
+@pytest.mark.parametrize(
+    "length",
+    [timedelta(days=1000), timedelta(days=1090), timedelta(hours=66), timedelta(hours=71), timedelta(minutes=170)],
+)
+def test_any_length_has_a_few_dates_and_no_warning(length: timedelta, most: int) -> None:
+    """Axes of nearly three years, days or hours have at least two dates and no more than asked for (and one)."""
+    start = datetime(2031, 2, 20, 7, 30, tzinfo=UTC)
+    axes = Figure().subplots()
+    axes.set_xlim(date2num(start), date2num(start + length))
+    date_axis(axes.xaxis, most=most)
+    assert 2 <= len(axes.xaxis.get_majorticklocs()) <= most + 1
