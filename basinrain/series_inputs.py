@@ -42,6 +42,8 @@ class SeriesInputs:
     absent, silent
         Given a first step and the one after the last: which gauges are not in service; which have a gap longer than is
         infilled. Shape (n, n_gauges).
+    part
+        Given a first step and the one after the last: their record.
     held
         The whole record, where it is in memory.
     """
@@ -52,6 +54,7 @@ class SeriesInputs:
     chunks: Callable[[Ints], ChunkSource]
     absent: Callable[[int, int], Bools]
     silent: Callable[[int, int], Bools]
+    part: Callable[[int, int], RainRecord]
     held: RainRecord | None
 
 
@@ -79,6 +82,7 @@ def held_inputs(given: Inputs, longest_gap: float) -> SeriesInputs:
             chunks=lambda borders: RecordSource(record, long, borders),
             absent=lambda first, stop: record.status[first:stop] == Status.NOT_INSTALLED,
             silent=lambda first, stop: long[first:stop],
+            part=record.window,
             held=record,
         )
     raise DataError(Problem(item="series", found=found, expected="a record of steps with times", remedy=remedy))

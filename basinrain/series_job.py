@@ -6,57 +6,46 @@ import hashlib
 import json
 from collections.abc import Callable, Sequence
 from dataclasses import replace
-from functools import partial
 from pathlib import Path
-from typing import Final, cast
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from basinrain.averaging import choose_grid
-from basinrain.basins import UNION
 from basinrain.cautions import network_cautions
-from basinrain.errors import JobError, Problem, Problems, nearest_name
 from basinrain.infill import InfillOptions
 from basinrain.infill.leave_one_out import Comparison
-from basinrain.infill.spans import span_starts
 from basinrain.infill_choice import InfillChoice, choose_infill, infill_options
-from basinrain.inputs import Inputs, attempt, input_digests, read_inputs
+from basinrain.inputs import Inputs, input_digests, read_inputs
 from basinrain.job_parts import Report, choice_fact, common_fields, library_versions, resolved
 from basinrain.jobfile import Job
 from basinrain.jobfile.series_tables import ESTIMATED_GAP, TOTAL, StormsTable
 from basinrain.notes import Note, once
 from basinrain.rainfall import RainRecord
-from basinrain.reading.intervals import parse_interval
 from basinrain.results_series import SeriesRun
-from basinrain.run_chunks import check_place, run_chunks
-from basinrain.series.chunks import ChunkSource, LoadChunk
+from basinrain.run_chunks import run_chunks
+from basinrain.series.chunks import LoadChunk
 from basinrain.series.dominance import dominances
 from basinrain.series.engine import SeriesSetup
 from basinrain.series.found_storms import FoundStorms, find_storms
 from basinrain.series.long_term import LeftOut, gauges_to_leave_out, left_out
 from basinrain.series.network_changes import network_changes
 from basinrain.series.policies import REWEIGHT
-from basinrain.series.regrouping import Regrouping, regroup
-from basinrain.series.steps import DAY
-from basinrain.series.summary import summarise
+from basinrain.series.summary import SeriesSummary, summarise
+from basinrain.series_asked import basin_of_storms, checked, length_of, wet_depth_of
 from basinrain.series_cautions import series_cautions
-from basinrain.series_check import WET_DEPTH
 from basinrain.series_inputs import SeriesInputs, borders_of, held_inputs
 from basinrain.series_parts import needs_parts, parted_inputs
 from basinrain.series_store import SeriesStore
-from basinrain.units import depth_factor
 
-__all__ = ["WET_DAY", "largest_storms", "run_series", "series_setup", "storms_of_series"]
+__all__ = ["largest_storms", "run_series", "series_setup", "storms_of_series"]
 
 Counted = Callable[[int, int], None]
 """Is called with the steps that are done and all steps."""
 
-WET_DAY: Final = 1.0
-"""mm; a day with at least this depth is wet, as in the indices of climate change (ETCCDI; from memory)."""
-
-_DURATIONS: Final = ("5min", "10min", "15min", "30min", "1h", "2h", "3h", "6h", "12h", "1d", "2d", "3d", "5d", "10d")
-"""Of the greatest depths, as far as the record's step divides them, where the job names none."""
+_LOOKED_AT: Final = 50
+"""Largest depths of a series whose weights are looked at."""
 
 
 def run_series(
@@ -117,7 +106,7 @@ def run_series(
     job, say = resolved(job, settings), progress or (lambda _: None)
     inputs = parted_inputs(job, say) if needs_parts(job) else held_inputs(read_inputs(job, say), _longest_gap(job))
     given = inputs.given
-    grouping, durations = _checked(job, inputs)
+    grouping, durations = checked(job, inputs)
     setup, infill, facts, notes = series_setup(job, given, say)
     borders = borders_of(inputs, setup, job.series.memory)
     source = inputs.chunks(borders)
@@ -151,7 +140,7 @@ def run_series(
         say("leaving out gauges")
         without = _left_out(job, inputs, setup, [source.task(k) for k in range(len(borders) - 1)], say)
         dominant = dominances(
-            setup, {series: found.largest for series, found in summaries.items()}, partial(_day_of, source)
+            setup, {series: _looked_at(found) for series, found in summaries.items()}, _Days(inputs).holding
         )
         blocks = list(zip(borders[:-1].tolist(), borders[1:].tolist(), strict=True))
         changes = network_changes(setup.network.ids, inputs.starts, blocks, inputs.absent, inputs.silent)
@@ -230,7 +219,7 @@ def storms_of_series(job: Job, inputs: SeriesInputs, setup: SeriesSetup, store: 
     """Return the storms of the series of one basin, by the first policy and method of the job."""
     table = job.storms or StormsTable()
     gaps, method = setup.series[0]
-    column = setup.basins.ids.index(_basin_of_storms(table, setup.basins.ids))
+    column = setup.basins.ids.index(basin_of_storms(table, setup.basins.ids))
     return find_storms(
         inputs.starts,
         inputs.ends,
@@ -239,9 +228,9 @@ def storms_of_series(job: Job, inputs: SeriesInputs, setup: SeriesSetup, store: 
         gaps=gaps,
         method=method,
         count=table.count,
-        dry_gap=None if table.dry_gap == ESTIMATED_GAP else _length(table.dry_gap),
-        wet_depth=_wet_depth(inputs) if table.wet_depth is None else table.wet_depth * depth_factor(job.job.depth_unit),
-        rank="total" if table.rank == TOTAL else _length(table.rank),
+        dry_gap=None if table.dry_gap == ESTIMATED_GAP else length_of(table.dry_gap),
+        wet_depth=wet_depth_of(job, inputs),
+        rank="total" if table.rank == TOTAL else length_of(table.rank),
         recession=table.antecedent.recession,
     )
 
@@ -252,7 +241,7 @@ def largest_storms(job: Job, given: Inputs, say: Report, *, comparison: Comparis
     ``comparison`` is that of the infill methods, where it has been made.
     """
     inputs = held_inputs(given, _longest_gap(job))
-    _checked(job, inputs)
+    checked(job, inputs)
     setup, *_ = series_setup(job, given, say, comparison=comparison)
     first = replace(setup, gaps=setup.gaps[:1], methods=dict(list(setup.methods.items())[:1]))
     borders = borders_of(inputs, first, job.series.memory)
@@ -268,93 +257,6 @@ def _longest_gap(job: Job) -> float:
     return infill_options(job).longest_gap
 
 
-def _wet_depth(inputs: SeriesInputs) -> float:
-    """Return the depth in mm from which a step is wet where the job names none; a day needs more than an hour."""
-    daily = (inputs.ends[0] - inputs.starts[0]) >= np.timedelta64(1, "D")
-    return WET_DAY if daily else WET_DEPTH
-
-
-def _checked(job: Job, inputs: SeriesInputs) -> tuple[Regrouping, tuple[np.timedelta64, ...]]:
-    """Return how steps are written and the durations of greatest depths; what cannot be is told before any work."""
-    problems = Problems()
-    record, table = inputs.given.record, job.series
-    grouping = attempt(
-        problems,
-        partial(
-            regroup,
-            inputs.starts,
-            inputs.ends,
-            step=table.step,
-            zone=record.zone,
-            timezone=table.timezone,
-            day_phase=record.day_phase,
-        ),
-    )
-    attempt(problems, partial(check_place, table.on))
-    attempt(problems, partial(_basin_of_storms, job.storms or StormsTable(), inputs.given.basins.ids))
-    for gauge in table.leave_out or ():
-        if gauge not in record.gauges:
-            problems.add(
-                item="[series] leave_out",
-                found=f"'{gauge}'",
-                expected="the id of a gauge",
-                remedy=nearest_name(gauge, record.gauges),
-                gauge=gauge,
-            )
-    durations = attempt(problems, partial(_durations, job, inputs))
-    problems.raise_as(JobError)
-    return cast("Regrouping", grouping), cast("tuple[np.timedelta64, ...]", durations)
-
-
-def _durations(job: Job, inputs: SeriesInputs) -> tuple[np.timedelta64, ...]:
-    lengths = np.unique((inputs.ends - inputs.starts).astype("timedelta64[s]").astype(np.int64))
-    step = int(lengths[0])
-    named = [("[series] durations", word) for word in job.series.durations]
-    if job.storms is not None and job.storms.rank != TOTAL:
-        named.append(("[storms] rank", job.storms.rank))
-    problems = Problems()
-    for item, word in named:
-        seconds = parse_interval(word).seconds
-        if len(lengths) > 1 or seconds is None or seconds % step:
-            own = inputs.given.record.step
-            problems.add(item=item, found=f"'{word}'", expected=f"a whole number of the record's steps of {own}")
-    # Windows of the clock begin with the day; steps of 18 h, say, need not.
-    off_clock = int(inputs.starts[0].astype(np.int64) - inputs.given.record.day_phase) % DAY % step > 0
-    if off_clock and job.series.durations and not problems:
-        problems.add(
-            item="[series] durations",
-            found=f"steps that do not begin with the day, the first of them at {inputs.starts[0]}",
-            expected="a record whose first step begins a whole number of steps after its day does",
-            remedy="leave durations out",
-        )
-    problems.raise_as(JobError)
-    if len(lengths) > 1 or off_clock:
-        return ()
-    words = job.series.durations or [word for word in _DURATIONS if (parse_interval(word).seconds or 0) % step == 0]
-    return tuple(_length(word) for word in words)
-
-
-def _length(word: str) -> np.timedelta64:
-    return np.timedelta64(parse_interval(word).seconds or 0, "s")
-
-
-def _basin_of_storms(table: StormsTable, basins: Sequence[str]) -> str:
-    """Return the basin in which storms are sought: the one named; of a single basin there is no union to name."""
-    if table.basin in basins:
-        return table.basin
-    if table.basin == UNION and len(basins) == 1:
-        return basins[0]
-    raise JobError(
-        Problem(
-            item="[storms] basin",
-            found=f"'{table.basin}'",
-            expected="the id of a basin",
-            remedy=nearest_name(table.basin, basins),
-            basin=table.basin,
-        )
-    )
-
-
 def _left_out(
     job: Job, inputs: SeriesInputs, setup: SeriesSetup, chunks: Sequence[LoadChunk], say: Report
 ) -> tuple[LeftOut, ...]:
@@ -364,15 +266,28 @@ def _left_out(
     return left_out(setup, chunks, gauges, progress=lambda gauge: say(f"without gauge {gauge}")) if gauges else ()
 
 
-def _day_of(source: ChunkSource, step: int) -> tuple[RainRecord, npt.NDArray[np.bool_] | None, int]:
-    """Return the rainfall day that holds a step, its long gaps, and the step's place in it."""
-    k = int(np.searchsorted(source.borders, step, side="right")) - 1
-    chunk, long = source.task(k)()
-    place = step - int(source.borders[k])
-    days = np.append(span_starts(chunk, "day"), len(chunk))
-    at = int(np.searchsorted(days, place, side="right")) - 1
-    first, stop = int(days[at]), int(days[at + 1])
-    return chunk.window(first, stop), None if long is None else long[first:stop], place - first
+def _looked_at(found: SeriesSummary) -> npt.NDArray[np.int64]:
+    """Return the steps of a series whose weights are looked at, (n, n_basins): -1 but for the largest depths of all."""
+    depth = found.largest_depth
+    if depth.size <= _LOOKED_AT:
+        return found.largest
+    least = np.partition(depth, depth.size - _LOOKED_AT, axis=None)[depth.size - _LOOKED_AT]
+    return np.where(depth >= least, found.largest, -1)
+
+
+class _Days:
+    """The rainfall days of a record."""
+
+    def __init__(self, inputs: SeriesInputs) -> None:
+        self._inputs = inputs
+        begin, end = inputs.starts.astype(np.int64), inputs.ends.astype(np.int64)
+        # A step belongs to the day that holds its middle.
+        self._day = (begin + (end - begin) // 2 - inputs.given.record.day_phase) // 86400
+
+    def holding(self, step: int) -> tuple[RainRecord, npt.NDArray[np.bool_] | None, int]:
+        """Return the day that holds a step, its long gaps, and the step's place in it."""
+        first, stop = np.searchsorted(self._day, [self._day[step], self._day[step] + 1]).tolist()
+        return self._inputs.part(first, stop), self._inputs.silent(first, stop), step - first
 
 
 def _key(job: Job, setup: SeriesSetup, borders: npt.NDArray[np.int64]) -> str:

@@ -186,6 +186,7 @@ def parted_inputs(job: Job, say: Report) -> SeriesInputs:
         chunks=lambda borders: PartedRecord(stream, gaps, borders),
         absent=partial(_absent, stream),
         silent=gaps.mask,
+        part=stream.read,
         held=None,
     )
 

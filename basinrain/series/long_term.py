@@ -24,6 +24,8 @@ _BLOCK: Final = 1 << 20
 """Values that are looked at together."""
 _LEFT_OUT: Final = 20
 """Gauges that are left out in turn, unless others are asked for: those that put most into a mean."""
+_WORK: Final = 200_000_000
+"""Values of the record, times series, that are averaged again for them at most."""
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -135,13 +137,16 @@ class LeftOut:
 def gauges_to_leave_out(setup: SeriesSetup, record: RainRecord) -> tuple[str, ...]:
     """Return the gauges whose removal is tried: all of a small network, else those that put most into a basin mean.
 
+    They are at most 20, and fewer of a long record, since everything is computed again for each.
+
     What a gauge puts in is the product of its mean depth and its weight among all gauges, the greatest in any basin and
     method, in proportion to the basin's mean.
     """
     reporting = record.reporting
     count = reporting.sum(axis=0)
     some = np.flatnonzero(count)
-    if len(some) <= _LEFT_OUT:
+    number = min(_LEFT_OUT, _WORK // max(record.depth.size * len(setup.series), 1))
+    if len(some) <= number:
         return tuple(record.gauges[g] for g in some)
     mean = np.where(reporting, record.depth, 0.0).sum(axis=0) / np.maximum(count, 1)
     put = np.zeros(len(mean))
@@ -149,7 +154,7 @@ def gauges_to_leave_out(setup: SeriesSetup, record: RainRecord) -> tuple[str, ..
     for method in setup.methods:
         parts = engine.weights_in_service(method, count > 0) * mean
         put = np.maximum(put, (parts / np.maximum(parts.sum(axis=1, keepdims=True), np.finfo(float).tiny)).max(axis=0))
-    chosen = sorted(some.tolist(), key=lambda g: (-put[g], record.gauges[g]))[:_LEFT_OUT]
+    chosen = sorted(some.tolist(), key=lambda g: (-put[g], record.gauges[g]))[:number]
     return tuple(record.gauges[g] for g in chosen)
 
 

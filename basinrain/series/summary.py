@@ -50,9 +50,9 @@ class SeriesSummary:
         Its totals; without periods where steps of more than a day lie in two of them.
     greatest
         Its greatest depths by duration; None where no duration was asked for.
-    largest : array of int, shape (n, n_basins)
-        The steps with its largest depths, the largest first, :data:`LARGEST` of them or all there are; -1 where no
-        further depth is above 0.
+    largest, largest_depth : array of int and of float, shape (n, n_basins)
+        The steps with its largest depths, and these in mm, the largest first, :data:`LARGEST` of them or all there
+        are; -1 and 0 where no further depth is above 0.
     """
 
     terms: LongTerm
@@ -62,6 +62,7 @@ class SeriesSummary:
     water_years: PeriodTotals
     greatest: GreatestDepths | None
     largest: npt.NDArray[np.int64]
+    largest_depth: npt.NDArray[np.float64]
 
 
 def summarise(
@@ -102,13 +103,15 @@ def summarise(
     found: list[dict[str, Any]] = []
     for basins in _columns(*depth.shape):
         part = np.ascontiguousarray(depth[0 : stored.n_steps, basins])
+        largest, largest_depth = _largest(part)
         found.append(
             {
+                "largest": largest,
+                "largest_depth": largest_depth,
                 "annual": mean_annual(starts, ends, part, water_year=water_year, complete=complete),
                 "months": _totals(starts, ends, part, by="month", complete=complete),
                 "years": _totals(starts, ends, part, by="year", complete=complete),
                 "water_years": _totals(starts, ends, part, by="water-year", water_year=water_year, complete=complete),
-                "largest": _largest(part),
                 "greatest": greatest_depths(starts, ends, part, durations=durations, day_phase=day_phase)
                 if len(durations)
                 else None,
@@ -116,7 +119,8 @@ def summarise(
         )
     lengths = (ends - starts) / np.timedelta64(1, "s")
     together = {name: _side_by_side([part[name] for part in found]) for name in found[0]}
-    together["largest"] = np.concatenate([part["largest"] for part in found], axis=1)
+    for name in ("largest", "largest_depth"):
+        together[name] = np.concatenate([part[name] for part in found], axis=1)
     return SeriesSummary(terms=long_term(stored, gaps, method, lengths), **together)
 
 
@@ -131,13 +135,14 @@ def _totals(starts: Times, ends: Times, depth: npt.NDArray[np.float64], **how: A
         )
 
 
-def _largest(depth: npt.NDArray[np.float64]) -> npt.NDArray[np.int64]:
+def _largest(depth: npt.NDArray[np.float64]) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]:
     number = min(LARGEST, len(depth))
     known = np.where(depth > 0, depth, 0.0)
     some = np.argpartition(known, -number, axis=0)[len(known) - number :]
     order = np.argsort(-np.take_along_axis(known, some, axis=0), axis=0, kind="stable")
     steps = np.take_along_axis(some, order, axis=0)
-    return np.where(np.take_along_axis(known, steps, axis=0) > 0, steps, -1)
+    depths = np.take_along_axis(known, steps, axis=0)
+    return np.where(depths > 0, steps, -1), depths
 
 
 def _columns(n_steps: int, n_basins: int) -> Iterator[slice]:
