@@ -12,7 +12,7 @@ from basinrain.basins import UNION
 from basinrain.errors import JobError, Problem, Problems, nearest_name
 from basinrain.inputs import attempt
 from basinrain.jobfile import Job
-from basinrain.jobfile.series_tables import TOTAL, StormsTable
+from basinrain.jobfile.series_tables import ESTIMATED_GAP, TOTAL, StormsTable
 from basinrain.reading.intervals import parse_interval
 from basinrain.run_chunks import check_place
 from basinrain.series.regrouping import Regrouping, regroup
@@ -48,6 +48,9 @@ def checked(job: Job, inputs: SeriesInputs) -> tuple[Regrouping, tuple[np.timede
     )
     attempt(problems, partial(check_place, table.on))
     attempt(problems, partial(basin_of_storms, job.storms or StormsTable(), inputs.given.basins.ids))
+    dry_gap = StormsTable().dry_gap if job.storms is None else job.storms.dry_gap
+    if dry_gap != ESTIMATED_GAP and parse_interval(dry_gap).seconds is None:
+        problems.add(item="[storms] dry_gap", found=f"'{dry_gap}'", expected="minutes, hours or days")
     for gauge in table.leave_out or ():
         if gauge not in record.gauges:
             problems.add(

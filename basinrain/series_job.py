@@ -32,6 +32,7 @@ from basinrain.series.found_storms import FoundStorms, find_storms
 from basinrain.series.long_term import LeftOut, gauges_to_leave_out, left_out
 from basinrain.series.network_changes import network_changes
 from basinrain.series.policies import REWEIGHT
+from basinrain.series.series_source import copied
 from basinrain.series.summary import SeriesSummary, summarise
 from basinrain.series_asked import basin_of_storms, checked, length_of, wet_depth_of
 from basinrain.series_cautions import series_cautions
@@ -223,7 +224,7 @@ def storms_of_series(job: Job, inputs: SeriesInputs, setup: SeriesSetup, store: 
     return find_storms(
         inputs.starts,
         inputs.ends,
-        np.array(store.depth(gaps, method)[:, column], dtype=float),
+        copied(store.depth(gaps, method), slice(0, store.n_steps), slice(column, column + 1))[:, 0],
         basin=setup.basins.ids[column],
         gaps=gaps,
         method=method,

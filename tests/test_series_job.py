@@ -341,3 +341,10 @@ def test_greatest_depths_of_steps_that_do_not_begin_with_the_day(tmp_path: Path)
         JobError, match=r"\[series\] durations: found steps that do not begin with the day, the first of"
     ):
         run_series(job, [*settings, "series.durations=3d"])
+
+
+def test_a_month_is_no_dry_gap(tmp_path: Path) -> None:
+    """Months differ in length; that is said before anything is computed."""
+    job = write_tiny(tmp_path, job=JOB + '[storms]\ndry_gap = "1mo"\n')
+    with pytest.raises(JobError, match=r"\[storms\] dry_gap: found '1mo'; expected minutes, hours or days"):
+        run_series(job)

@@ -12,7 +12,7 @@ import numpy.typing as npt
 from basinrain.rainfall import RainRecord, Status
 from basinrain.series.engine import SeriesEngine, SeriesSetup
 from basinrain.series.flags import Flag
-from basinrain.series.series_source import SeriesSource
+from basinrain.series.series_source import SeriesSource, copied
 
 __all__ = ["LeftOut", "LongTerm", "gauges_to_leave_out", "left_out", "long_term"]
 
@@ -84,13 +84,14 @@ def long_term(stored: SeriesSource, gaps: str, method: str, lengths: Floats) -> 
     counts = {name: np.zeros(n, dtype=np.int64) for name in ("steps", "infilled", "reweighted")}
     basins = slice(0, n)
     for rows in _blocks(stored.n_steps, n):
-        known = ~np.isnan(depth[rows, basins])
+        values, shares, marks = (copied(kind, rows, basins) for kind in (depth, share, flags))
+        known = ~np.isnan(values)
         counts["steps"] += known.sum(axis=0)
         sums["seconds"] += lengths[rows] @ known
-        sums["total"] += np.where(known, depth[rows, basins], 0.0).sum(axis=0)
-        sums["share"] += np.where(known, share[rows, basins], 0.0).sum(axis=0)
+        sums["total"] += np.where(known, values, 0.0).sum(axis=0)
+        sums["share"] += np.where(known, shares, 0.0).sum(axis=0)
         for name, flag in (("infilled", Flag.INFILLED), ("reweighted", Flag.REWEIGHTED)):
-            counts[name] += ((flags[rows, basins] & np.uint8(flag)) > 0).sum(axis=0)
+            counts[name] += ((marks & np.uint8(flag)) > 0).sum(axis=0)
     some = counts["steps"] > 0
     return LongTerm(
         steps=counts["steps"],

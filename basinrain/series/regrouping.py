@@ -15,7 +15,7 @@ from basinrain.notes import Note
 from basinrain.reading.clocks import clock_name, clock_seconds, parse_zone, standard_offset
 from basinrain.reading.intervals import DAY, interval_of, parse_interval
 from basinrain.series.flags import Flag
-from basinrain.series.series_source import Rows, SeriesSource
+from basinrain.series.series_source import Rows, SeriesSource, copied
 
 __all__ = ["Regrouping", "regroup"]
 
@@ -387,6 +387,6 @@ class _Combined:
         held = parts if len(first) > 1 else max(1, _HELD // max(1, width))
         for begin in range(0, parts, held):
             stop = min(begin + held, parts)
-            block = self._rows[int(first[0]) + begin : int(first[-1]) + stop, basins]
+            block = copied(self._rows, slice(int(first[0]) + begin, int(first[-1]) + stop), basins)
             for step in range(begin, stop):
                 yield block[first - first[0] + step - begin]

@@ -2,11 +2,16 @@
 
 from __future__ import annotations
 
-from typing import Any, Protocol
+import mmap
+from typing import Any, Final, Protocol
 
+import numpy as np
 import numpy.typing as npt
 
-__all__ = ["Rows", "SeriesSource"]
+__all__ = ["Rows", "SeriesSource", "copied"]
+
+_HELD: Final = 1 << 22
+"""Values of a mapped file that are looked at together."""
 
 
 class Rows(Protocol):
@@ -39,3 +44,26 @@ class SeriesSource(Protocol):
 
     def flags(self, gaps: str, method: str, /) -> Rows:
         """Return sums of :class:`~basinrain.series.flags.Flag`; shape (n_steps, n_basins)."""
+
+
+def copied(rows: Rows, steps: slice, basins: slice) -> npt.NDArray[Any]:
+    """Return a copy of some steps and basins, and let go of what was mapped from a file to get it.
+
+    Without that all of a file that is looked at part by part would count as memory of the process in the end.
+
+    Examples
+    --------
+    >>> copied(np.arange(6.0).reshape(3, 2), slice(1, 9), slice(0, 1))
+    array([[2.],
+           [4.]])
+    """
+    base = getattr(rows, "base", None)
+    if not isinstance(base, mmap.mmap) or not hasattr(base, "madvise"):
+        return np.array(rows[steps, basins])
+    first, stop, _ = steps.indices(rows.shape[0])
+    size = max(_HELD // max(rows.shape[1], 1), 1)
+    parts = []
+    for at in range(first, stop, size):
+        parts.append(np.array(rows[at : min(at + size, stop), basins]))
+        base.madvise(mmap.MADV_DONTNEED)
+    return np.concatenate(parts) if parts else np.array(rows[first:first, basins])

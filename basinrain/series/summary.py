@@ -13,7 +13,7 @@ from basinrain.errors import MethodError
 from basinrain.series.greatest_depths import Greatest, GreatestDepths, greatest_depths
 from basinrain.series.long_term import LongTerm, long_term
 from basinrain.series.period_totals import MeanAnnual, PeriodTotals, mean_annual, period_totals
-from basinrain.series.series_source import SeriesSource
+from basinrain.series.series_source import SeriesSource, copied
 
 __all__ = ["LARGEST", "SeriesSummary", "summarise"]
 
@@ -102,7 +102,7 @@ def summarise(
     depth = stored.depth(gaps, method)
     found: list[dict[str, Any]] = []
     for basins in _columns(*depth.shape):
-        part = np.ascontiguousarray(depth[0 : stored.n_steps, basins])
+        part = copied(depth, slice(0, stored.n_steps), basins)
         largest, largest_depth = _largest(part)
         found.append(
             {
@@ -138,7 +138,8 @@ def _totals(starts: Times, ends: Times, depth: npt.NDArray[np.float64], **how: A
 def _largest(depth: npt.NDArray[np.float64]) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.float64]]:
     number = min(LARGEST, len(depth))
     known = np.where(depth > 0, depth, 0.0)
-    some = np.argpartition(known, -number, axis=0)[len(known) - number :]
+    # Basin by basin, each in one stretch of memory.
+    some = np.argpartition(np.ascontiguousarray(known.T), -number, axis=1)[:, len(known) - number :].T
     order = np.argsort(-np.take_along_axis(known, some, axis=0), axis=0, kind="stable")
     steps = np.take_along_axis(some, order, axis=0)
     depths = np.take_along_axis(known, steps, axis=0)

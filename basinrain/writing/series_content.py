@@ -12,6 +12,7 @@ import numpy.typing as npt
 
 from basinrain.errors import DataError, Problem, Problems, WriteError
 from basinrain.series.flags import flag_words
+from basinrain.series.series_source import copied
 from basinrain.units import area_factor, depth_factor
 
 if TYPE_CHECKING:
@@ -120,11 +121,12 @@ class SeriesContent:
 
     def block(self, gaps: str, method: str, steps: slice, basins: slice = slice(None)) -> SeriesBlock:
         """Return a series' values of some steps and basins, depths in the unit that is written."""
-        part = steps, basins
+        kinds = (self.source.depth, self.source.observed_share, self.source.flags)
+        depth, share, flags = (copied(kind(gaps, method), steps, basins) for kind in kinds)
         return SeriesBlock(
-            np.asarray(self.source.depth(gaps, method)[part], dtype=np.float64) / depth_factor(self.depth_unit),
-            np.asarray(self.source.observed_share(gaps, method)[part], dtype=np.float32),
-            np.asarray(self.source.flags(gaps, method)[part], dtype=np.uint8),
+            np.asarray(depth, dtype=np.float64) / depth_factor(self.depth_unit),
+            np.asarray(share, dtype=np.float32),
+            np.asarray(flags, dtype=np.uint8),
         )
 
     def time_texts(self, steps: slice) -> list[str]:

@@ -110,6 +110,19 @@ def test_ratios_to_normals_by_hand() -> None:
     np.testing.assert_allclose(part.depth[:, 0], [0.01 * 1000, (0.75 * 0.01 + 0.25 * 0.02) * 1000, N])
 
 
+def test_ratios_take_the_normals_of_the_month() -> None:
+    """On the last of May ratios are to May's normals and times May's, a day later June's; a day is of its middle."""
+    monthly = np.full((3, 12), 100.0)
+    monthly[:, 4], monthly[:, 5] = [50, 100, 200], [80, 40, 40]
+    network = GaugeNetwork(ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=monthly)
+    ends = np.array(["2031-06-01T00", "2031-06-02T00"], dtype="datetime64[s]")
+    record = RainRecord.from_depths(network.ids, ends - 86400, ends, [[5, N, 40], [8, N, 12]], step="1d")
+    part = SeriesEngine(setup_of(network, SQUARE, gaps=(REWEIGHT,), ratios=True)).compute(record)[REWEIGHT, "thiessen"]
+    # The basin's normals: (50 + 100) / 2 = 75 and (80 + 40) / 2 = 60.
+    may, june = (0.75 * 5 / 50 + 0.25 * 40 / 200) * 75, (0.75 * 8 / 80 + 0.25 * 12 / 40) * 60
+    np.testing.assert_allclose(part.depth[:, 0], [may, june])
+
+
 def test_ratios_need_normals() -> None:
     """Every gauge without a usable normal is named."""
     network = GaugeNetwork(ids=GAUGES.ids, x=GAUGES.x, y=GAUGES.y, crs="local", normals=np.array([[500.0], [0.0], [N]]))

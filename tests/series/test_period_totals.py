@@ -150,6 +150,18 @@ def test_mean_annual_of_steps_across_years() -> None:
     np.testing.assert_allclose(mean.of_steps, 365.2425)
 
 
+def test_time_of_a_month_whose_border_is_the_middle_of_a_step() -> None:
+    """Steps of 7 h with a middle at the first moment of March: 107 middles lie in it, of which one is missing."""
+    starts, ends = steps(96 + 107 + 9, step=hours(7), start=np.datetime64("2031-01-31T20:30:00"))
+    depth = np.ones(len(ends))
+    depth[96 + 50] = np.nan
+    found = period_totals(starts, ends, depth, by="month", complete=1.0)
+    assert found.names == ("2031-02", "2031-03", "2031-04")
+    np.testing.assert_allclose(found.share[:2], [1, 106 / 107], rtol=1e-12)
+    assert found.total[0] == 96
+    assert np.isnan(found.total[1])
+
+
 def test_bad_options_and_series_are_refused() -> None:
     """Another period, a month that is none, a completeness of nothing or above all, and times with a hole."""
     starts, ends = steps(3)
