@@ -3,17 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from functools import partial
 from typing import Final, cast
 
 import numpy as np
 
 from basinrain.basins import UNION
-from basinrain.errors import JobError, Problem, Problems, nearest_name
+from basinrain.errors import DataError, JobError, Problem, Problems, nearest_name
+from basinrain.infill.normals import require_normals
 from basinrain.inputs import attempt
+from basinrain.intervals import parse_interval
 from basinrain.jobfile import Job
 from basinrain.jobfile.series_tables import ESTIMATED_GAP, TOTAL, StormsTable
-from basinrain.reading.intervals import parse_interval
 from basinrain.run_chunks import check_place
 from basinrain.series.regrouping import Regrouping, regroup
 from basinrain.series.steps import DAY
@@ -47,6 +49,8 @@ def checked(job: Job, inputs: SeriesInputs) -> tuple[Regrouping, tuple[np.timede
         ),
     )
     attempt(problems, partial(check_place, table.on))
+    if table.weigh == "ratios":
+        attempt(problems, partial(_require_normals, inputs))
     attempt(problems, partial(basin_of_storms, job.storms or StormsTable(), inputs.given.basins.ids))
     dry_gap = StormsTable().dry_gap if job.storms is None else job.storms.dry_gap
     if dry_gap != ESTIMATED_GAP and parse_interval(dry_gap).seconds is None:
@@ -63,6 +67,22 @@ def checked(job: Job, inputs: SeriesInputs) -> tuple[Regrouping, tuple[np.timede
     durations = attempt(problems, partial(_durations, job, inputs))
     problems.raise_as(JobError)
     return cast("Regrouping", grouping), cast("tuple[np.timedelta64, ...]", durations)
+
+
+def _require_normals(inputs: SeriesInputs) -> None:
+    """Raise an error that names every gauge without a normal that its depths can be divided by."""
+    network = inputs.given.network
+    try:
+        require_normals(network, np.ones(len(network), dtype=bool), [None, *range(1, 13)], method="ratios to normals")
+    except DataError as error:
+        raise JobError(
+            replace(
+                problem,
+                expected="a normal above 0, which [series] weigh = 'ratios' needs of every gauge",
+                remedy="give it, exclude the gauge, or set weigh = 'depths'",
+            )
+            for problem in error.problems
+        ) from error
 
 
 def _durations(job: Job, inputs: SeriesInputs) -> tuple[np.timedelta64, ...]:

@@ -129,31 +129,55 @@ def _dominated(dominant: Sequence[Dominance], ends: Times, zone: str) -> Iterato
 
 
 def _without_number(setup: SeriesSetup, summaries: Summaries) -> Iterator[Note]:
+    # What is the same for several series is said once.
+    missing: dict[tuple[int, int, int, int], list[tuple[str, str]]] = {}
+    observed: dict[tuple[int, str], list[tuple[str, str]]] = {}
     for gaps, method in setup.series:
         terms = summaries[gaps, method].terms
-        n = int((terms.steps + terms.missing)[0])
         lacking = np.flatnonzero(terms.missing)
         if len(lacking):
             b = int(lacking[np.argmax(terms.missing[lacking])])
-            yield Note(
-                code="steps-missing",
-                text=f"{len(lacking)} of {len(setup.basins)} series by '{gaps}' ({method}) have steps without a "
-                f"number, which are missing, not zero; most in basin {setup.basins.ids[b]}, "
-                f"{int(terms.missing[b]):,} of {n:,}.",
-                basin=setup.basins.ids[b],
-                method=method,
-            )
+            alike = (len(lacking), b, int(terms.missing[b]), int((terms.steps + terms.missing)[0]))
+            missing.setdefault(alike, []).append((gaps, method))
         share = np.where(np.isnan(terms.observed_share), 1.0, terms.observed_share)
         b = int(np.argmin(share))
         if share[b] < _OBSERVED:
-            rest = "reweighted" if gaps == REWEIGHT else "infilled or reweighted"
-            yield Note(
-                code="little-observed",
-                text=f"In basin {setup.basins.ids[b]} {100 * share[b]:.0f} % of the weight was observed over the "
-                f"record ('{gaps}', {method}); the rest was {rest}.",
-                basin=setup.basins.ids[b],
-                method=method,
-            )
+            observed.setdefault((b, f"{100 * share[b]:.0f} %"), []).append((gaps, method))
+    for (lacking_series, b, steps, n), series in missing.items():
+        yield Note(
+            code="steps-missing",
+            text=f"{lacking_series} of {len(setup.basins)} series by {_series_text(series)} "
+            f"{'has' if lacking_series == 1 else 'have'} steps without a number, which are missing, not zero; most in "
+            f"basin {setup.basins.ids[b]}, {steps:,} of {n:,}.",
+            basin=setup.basins.ids[b],
+            method=_only_method(series),
+        )
+    for (b, percent), series in observed.items():
+        rest = "reweighted" if {gaps for gaps, _ in series} == {REWEIGHT} else "infilled or reweighted"
+        by = "'{}', {}".format(*series[0]) if len(series) == 1 else f"by {_series_text(series)}"
+        yield Note(
+            code="little-observed",
+            text=f"In basin {setup.basins.ids[b]} {percent} of the weight was observed over the record "
+            f"({by}); the rest was {rest}.",
+            basin=setup.basins.ids[b],
+            method=_only_method(series),
+        )
+
+
+def _series_text(series: Sequence[tuple[str, str]]) -> str:
+    """Return the names of series, policies of the same methods together: "'infill', 'reweight' (thiessen, idw)"."""
+    methods: dict[str, list[str]] = {}
+    for gaps, method in series:
+        methods.setdefault(gaps, []).append(method)
+    policies: dict[tuple[str, ...], list[str]] = {}
+    for gaps, names in methods.items():
+        policies.setdefault(tuple(names), []).append(f"'{gaps}'")
+    return "; ".join(f"{', '.join(gaps)} ({', '.join(names)})" for names, gaps in policies.items())
+
+
+def _only_method(series: Sequence[tuple[str, str]]) -> str:
+    methods = {method for _, method in series}
+    return methods.pop() if len(methods) == 1 else ""
 
 
 def _without_totals(summaries: Summaries) -> Iterator[Note]:

@@ -66,13 +66,14 @@ def held_inputs(given: Inputs, longest_gap: float) -> SeriesInputs:
     DataError
         The record is one of storm totals, or has no step, or no gauge that reports.
     """
-    record = given.record
+    record, expected = given.record, "a record of steps with times"
     if record.labels or np.isnat(record.ends).any():
         found, remedy = "storm totals without times", "give a record in steps, or use 'basinrain storm'"
     elif not len(record):
         found, remedy = "no step", "give a record with rows"
     elif not record.reporting.any():
-        found, remedy = "no gauge with a value", "correct the files, or the gauges' ids"
+        found, expected = "no gauge with a value in its time of service", "a gauge that reports at some step"
+        remedy = "correct the files, what counts as missing, or from and to of the gauges"
     else:
         long = longer_than(record, gap_mask(record), longest_gap)
         return SeriesInputs(
@@ -85,7 +86,7 @@ def held_inputs(given: Inputs, longest_gap: float) -> SeriesInputs:
             part=record.window,
             held=record,
         )
-    raise DataError(Problem(item="series", found=found, expected="a record of steps with times", remedy=remedy))
+    raise DataError(Problem(item="series", found=found, expected=expected, remedy=remedy))
 
 
 def borders_of(inputs: SeriesInputs, setup: SeriesSetup, memory: float) -> Ints:

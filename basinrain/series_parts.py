@@ -265,9 +265,9 @@ def _refuse_silent(gaps: LongGaps, stream: RecordStream) -> None:
         raise DataError(
             Problem(
                 item="series",
-                found="no gauge with a value",
-                expected="a record of steps with times",
-                remedy="correct the files, or the gauges' ids",
+                found="no gauge with a value in its time of service",
+                expected="a gauge that reports at some step",
+                remedy="correct the files, what counts as missing, or from and to of the gauges",
             )
         )
 

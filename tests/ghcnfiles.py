@@ -9,11 +9,11 @@ from typing import Literal
 import numpy as np
 
 from basinrain.errors import Problems, ReadError
+from basinrain.intervals import DAY, Interval
 from basinrain.rainfall import RainRecord, Status
 from basinrain.reading.axis import join_blocks
 from basinrain.reading.blocks import Block
 from basinrain.reading.ghcn import read_ghcn
-from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.stamps import StampRules
 
 ONE = "ORX00000001"

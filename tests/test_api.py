@@ -72,7 +72,7 @@ def test_every_module_says_what_it_offers(name: str) -> None:
 
 def test_computing_rooms_import_no_file_plot_or_command_line_code() -> None:
     """Imports go one way: computing rooms load neither reading, writing, report nor cli."""
-    rooms = ["averaging", "infill", "storms", "weights", "cautions", "spreading", "catch", "colocated"]
+    rooms = ["averaging", "infill", "series", "storms", "weights", "cautions", "spreading", "catch", "colocated"]
     code = "import importlib\n" + "\n".join(f"importlib.import_module('basinrain.{room}')" for room in rooms)
     code += "\nbad = [m for m in sys.modules if m.startswith(tuple('basinrain.' + r for r in "
     code += "('reading', 'writing', 'report', 'cli', 'job')))]\nassert not bad, bad"

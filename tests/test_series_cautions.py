@@ -83,6 +83,22 @@ def test_steps_without_a_number(tmp_path: Path) -> None:
     )
 
 
+def test_what_is_the_same_in_several_series_is_told_once(tmp_path: Path) -> None:
+    """The same day is missing whatever the policy and method, and the same weight observed whatever the policy."""
+    settings = ["averaging.methods=['thiessen', 'arithmetic']", "averaging.arithmetic.gauges=all"]
+    found = run(tmp_path, ["1,1,1", ",,", ",1,1", ",1,1"], "series.gaps=['infill', 'reweight']", *settings)
+    (text,) = texts(found, "steps-missing")
+    assert text == (
+        "3 of 3 series by 'infill', 'reweight' (thiessen, arithmetic) have steps without a number, which are missing, "
+        "not zero; most in basin west, 1 of 4."
+    )
+    (text,) = texts(found, "little-observed")
+    assert text == (
+        "In basin west 33 % of the weight was observed over the record (by 'infill', 'reweight' (thiessen)); the rest "
+        "was infilled or reweighted."
+    )
+
+
 def test_little_observed(tmp_path: Path) -> None:
     """West is A's, which reports on one day of three."""
     found = run(tmp_path, ["1,1,1", ",1,1", ",1,1"], "series.gaps=reweight")

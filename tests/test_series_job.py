@@ -289,10 +289,26 @@ def test_a_record_without_values_is_refused(tmp_path: Path, monkeypatch: pytest.
     """Neither whole nor in parts is there anything to average."""
     rain = "time,A,B,C\n2031-05-04T01:00,,,\n2031-05-04T02:00,,,\n"
     job = write_tiny(tmp_path, rain=rain)
-    with pytest.raises(DataError, match="series: found no gauge with a value"):
+    message = "series: found no gauge with a value in its time of service; expected a gauge that reports at some step"
+    with pytest.raises(DataError, match=message):
         run_series(job)
-    with pytest.raises(DataError, match="series: found no gauge with a value"):
+    with pytest.raises(DataError, match=message):
         in_parts(monkeypatch, job, [])
+
+
+@pytest.mark.parametrize(("normal", "found"), [("0", "a normal of 0 mm for the year"), ("", "no normal for the year")])
+def test_ratios_without_normals_are_refused_before_any_work(tmp_path: Path, normal: str, found: str) -> None:
+    """Every gauge without a normal above 0 is named, with the key that needs it; no part is begun."""
+    job = write_tiny(tmp_path)
+    gauges = tmp_path / "gauges.csv"
+    text = gauges.read_text().replace(",900\n", f",{normal}\n").replace(",1200\n", f",{normal}\n")
+    gauges.write_text(text)
+    with pytest.raises(
+        JobError, match=r"needs of every gauge; give it, exclude the gauge, or set weigh = 'depths'"
+    ) as e:
+        run_series(job, ["series.weigh=ratios"], work=tmp_path / "work")
+    assert [(problem.gauge, problem.found) for problem in e.value.problems] == [("A", found), ("C", found)]
+    assert not (tmp_path / "work").exists()
 
 
 def test_no_storms_to_run(tmp_path: Path) -> None:

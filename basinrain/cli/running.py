@@ -57,19 +57,19 @@ def run_command(
     job = read_job(job_file, settings)
     folder = (output if output is not None else job.path(job.job.output)) / command
     check_folder(folder, [job_file, *job.inputs])
-    further: dict[str, Any] = {}
-    with Progress(quiet=quiet) as progress:
-        if counted:
-            further = {"counted": progress.steps, "work": folder.with_name(f".{command}.unfinished")}
-        try:
+    try:
+        # The line of progress is gone before anything else is printed.
+        with Progress(quiet=quiet) as progress:
+            work = folder.with_name(f".{command}.unfinished")
+            further: dict[str, Any] = {"counted": progress.steps, "work": work} if counted else {}
             run = compute(job, progress=progress, **further)
             progress("writing")
             write_run(run, folder)
-        except KeyboardInterrupt:
-            if not counted:
-                raise
-            click.echo("Stopped; the parts that are finished are kept: run it again to go on from them.", err=True)
-            sys.exit(130)
+    except KeyboardInterrupt:
+        if not counted:
+            raise
+        click.echo("Stopped; the parts that are finished are kept: run it again to go on from them.", err=True)
+        sys.exit(130)
     if as_json:
         files = sorted(path.name for path in folder.iterdir() if path.name != RECORD)
         sys.stdout.write(record_text(run, files))

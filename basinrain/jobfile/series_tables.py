@@ -9,8 +9,8 @@ from pydantic_core import PydanticCustomError
 
 from basinrain.basins import UNION
 from basinrain.errors import JobError
+from basinrain.intervals import FORMS, parse_interval
 from basinrain.jobfile.fields import Count, NameList, Positive, Table, names, one_of
-from basinrain.reading.intervals import FORMS, parse_interval
 from basinrain.series.policies import GAPS, INFILL_THEN_REWEIGHT
 
 __all__ = ["ESTIMATED_GAP", "FORMATS", "TOTAL", "AntecedentTable", "SeriesTable", "StormsTable"]

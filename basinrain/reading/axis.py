@@ -9,9 +9,9 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import Problems, ReadError
+from basinrain.intervals import DAY, Interval
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 from basinrain.reading.blocks import Block
-from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.spacing import check_spacing
 
 __all__ = [

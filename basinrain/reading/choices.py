@@ -7,6 +7,7 @@ from collections.abc import Collection, Mapping, Sequence
 from typing import Final
 
 from basinrain.errors import JobError, Problem, Problems, nearest_name
+from basinrain.intervals import DAY, FORMS, Interval, interval_of, parse_interval
 from basinrain.layouts import (
     COLUMNS,
     FORMAT_LAYOUTS,
@@ -18,7 +19,6 @@ from basinrain.layouts import (
     NOT_IN_NETCDF,
     misplaced,
 )
-from basinrain.reading.intervals import DAY, FORMS, Interval, interval_of, parse_interval
 
 __all__ = ["check_choices", "check_numbers", "reading_hour", "source_interval", "time_of_day"]
 

@@ -7,8 +7,8 @@ from collections.abc import Sequence
 import numpy as np
 
 from basinrain.errors import DataError, Problems
+from basinrain.intervals import DAY, Interval, interval_of, parse_interval
 from basinrain.reading.grid import Grid, Source, off_bounds, relation
-from basinrain.reading.intervals import DAY, Interval, interval_of, parse_interval
 
 __all__ = ["common_grid", "reading_hours"]
 

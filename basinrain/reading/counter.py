@@ -12,18 +12,18 @@ from dataclasses import replace
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.clocks import clock_name
 from basinrain.errors import JobError, Problem, Problems, ReadError
+from basinrain.intervals import DAY, parse_interval
 from basinrain.notes import Note
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 from basinrain.reading.blocks import DEPTH_NAMES, GAUGE_NAMES, Block
-from basinrain.reading.clocks import clock_name
 from basinrain.reading.columns import find_column
 from basinrain.reading.counter_column import CounterColumn, counter_column
 from basinrain.reading.counter_rises import depth_rises
 from basinrain.reading.counter_rules import CounterRules
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthRules
-from basinrain.reading.intervals import DAY, parse_interval
 from basinrain.reading.long import read_long
 from basinrain.reading.stamps import StampRules
 from basinrain.reading.wide import read_wide

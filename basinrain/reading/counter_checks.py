@@ -8,13 +8,13 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.clocks import clock_name
 from basinrain.errors import Problems
+from basinrain.intervals import DAY
 from basinrain.notes import Note
-from basinrain.reading.clocks import clock_name
 from basinrain.reading.counter_column import CounterColumn
 from basinrain.reading.counter_rules import LEAST, CounterRules, Falls
 from basinrain.reading.depths import greatest_depth
-from basinrain.reading.intervals import DAY
 
 __all__ = ["check_falls", "check_reset", "check_rises", "notes_of"]
 

@@ -8,8 +8,8 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import Problems
+from basinrain.intervals import DAY
 from basinrain.rainfall import RainRecord
-from basinrain.reading.intervals import DAY
 
 __all__ = ["CounterColumn", "counter_column"]
 

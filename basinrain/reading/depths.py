@@ -15,10 +15,10 @@ import numpy.typing as npt
 import pandas as pd
 
 from basinrain.errors import JobError, Problems, nearest_name
+from basinrain.intervals import DAY, Interval
 from basinrain.rainfall import Status
 from basinrain.reading.columns import numbers
 from basinrain.reading.delimited import DelimitedTable
-from basinrain.reading.intervals import DAY, Interval
 from basinrain.units import depth_factor
 
 __all__ = ["MARKED", "DepthCells", "DepthRules", "Fault", "Judged", "depth_rules", "greatest_depth", "number_depths"]

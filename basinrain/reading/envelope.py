@@ -7,9 +7,9 @@ from pathlib import Path
 from typing import Final
 
 from basinrain.errors import JobError, Problems, ReadError, nearest_name
+from basinrain.intervals import DAY, parse_interval
 from basinrain.reading.columns import find_column, numbers
 from basinrain.reading.delimited import read_delimited
-from basinrain.reading.intervals import DAY, parse_interval
 from basinrain.units import DEPTH_UNITS, depth_factor
 
 __all__ = ["read_envelope"]

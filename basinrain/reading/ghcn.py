@@ -66,7 +66,7 @@ def read_ghcn(
     Examples
     --------
     >>> import tempfile
-    >>> from basinrain.reading.intervals import DAY, Interval
+    >>> from basinrain.intervals import DAY, Interval
     >>> path = Path(tempfile.mkdtemp()) / "orx.csv"
     >>> _ = path.write_text("ORX00000001,20310504,PRCP,15,,,X,\nORX00000001,20310506,PRCP,0,T,,X,0700\n")
     >>> rules = StampRules(interval=Interval("1d", DAY))

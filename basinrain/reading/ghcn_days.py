@@ -138,7 +138,7 @@ def block_of_days(cells: DayCells, *, file: str, stamps: StampRules, problems: P
     --------
     45.0 mm over the 3 days to 6 May, with 2.0 mm on the day before them:
 
-    >>> from basinrain.reading.intervals import DAY, Interval
+    >>> from basinrain.intervals import DAY, Interval
     >>> day = np.datetime64("2031-05-03").astype(int) + np.array([0, 3, 3])
     >>> element, value = np.array([0, 1, 2], dtype=np.uint8), np.array([20, 450, 3])
     >>> blank = np.full(3, 32, dtype=np.uint8)

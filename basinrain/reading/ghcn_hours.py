@@ -6,10 +6,10 @@ from typing import Final
 
 import numpy as np
 
+from basinrain.clocks import clock_name
+from basinrain.intervals import DAY
 from basinrain.notes import Note
-from basinrain.reading.clocks import clock_name
 from basinrain.reading.ghcn_days import ELEMENTS, MISSING, DayCells
-from basinrain.reading.intervals import DAY
 from basinrain.reading.stamps import StampRules
 
 __all__ = ["ObservationHours"]
@@ -27,7 +27,7 @@ class ObservationHours:
     --------
     >>> from basinrain.errors import Problems
     >>> from basinrain.reading.ghcn_csv import csv_cells
-    >>> from basinrain.reading.intervals import Interval
+    >>> from basinrain.intervals import Interval
     >>> hours = ObservationHours()
     >>> hours.add(csv_cells(b"ORX00000001,20310504,PRCP,15,,,X,0700\n", Problems()))
     >>> [note] = hours.notes(StampRules(interval=Interval("1d", DAY)))

@@ -9,9 +9,9 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.intervals import DAY, Interval
 from basinrain.notes import Note
 from basinrain.rainfall import WITHOUT_DEPTH, KnownTotal, Status
-from basinrain.reading.intervals import DAY, Interval
 
 __all__ = ["ABSENT", "Grid", "OnGrid", "Source", "off_bounds", "place", "relation"]
 

@@ -9,12 +9,12 @@ import numpy.typing as npt
 import pandas as pd
 
 from basinrain.errors import Problems
+from basinrain.intervals import Interval
 from basinrain.rainfall import Status
 from basinrain.reading.blocks import DEPTH_NAMES, FLAG_NAMES, GAUGE_NAMES, STEPS_NAMES, TIME_NAMES, Block
 from basinrain.reading.columns import find_column, numbers
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules
-from basinrain.reading.intervals import Interval
 from basinrain.reading.stamps import StampRules, read_stamps
 
 __all__ = ["depth_column", "read_long", "report_blank", "required_columns"]
@@ -57,7 +57,7 @@ def read_long(
     Examples
     --------
     >>> from basinrain.reading.depths import depth_rules
-    >>> from basinrain.reading.intervals import parse_interval
+    >>> from basinrain.intervals import parse_interval
     >>> day = parse_interval("1d")
     >>> rules = depth_rules(unit="mm", interval=day, missing=[], trace=["T"], flags={}, accumulated=None)
     >>> frame = pd.DataFrame({"gauge": ["W02", "W01"], "date": ["2031-05-04"] * 2, "depth": ["1.5", "T"]})

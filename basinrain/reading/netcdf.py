@@ -76,7 +76,7 @@ def read_netcdf(
     --------
     >>> import netCDF4, tempfile
     >>> from basinrain.reading.depths import depth_rules
-    >>> from basinrain.reading.intervals import parse_interval
+    >>> from basinrain.intervals import parse_interval
     >>> path = Path(tempfile.mkdtemp()) / "rain.nc"
     >>> with netCDF4.Dataset(path, "w") as file:
     ...     _ = file.createDimension("time", 2), file.createDimension("gauge", 1)

@@ -10,9 +10,9 @@ from typing import Any, Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.clocks import clock_name
 from basinrain.errors import Problems
-from basinrain.reading.clocks import clock_name
-from basinrain.reading.intervals import Interval
+from basinrain.intervals import Interval
 from basinrain.reading.stamps import StampRules, read_stamps
 
 __all__ = ["NetcdfTimes", "interval_ends"]

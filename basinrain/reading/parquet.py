@@ -13,9 +13,9 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
+from basinrain.clocks import clock_name, parse_zone, standard_offset
 from basinrain.errors import JobError, Problem, Problems, ReadError
 from basinrain.reading.blocks import DEPTH_NAMES, FLAG_NAMES, GAUGE_NAMES, STEPS_NAMES, TIME_NAMES
-from basinrain.reading.clocks import clock_name, parse_zone, standard_offset
 from basinrain.reading.columns import find_column
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.files import read_bytes

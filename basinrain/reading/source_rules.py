@@ -7,13 +7,13 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal
 
+from basinrain.clocks import parse_zone
 from basinrain.errors import JobError, Problems
+from basinrain.intervals import Interval
 from basinrain.layouts import GHCN, GHCN_UNIT, file_format
 from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval, time_of_day
-from basinrain.reading.clocks import parse_zone
 from basinrain.reading.counter_rules import CounterRules
 from basinrain.reading.depths import DepthRules, depth_rules
-from basinrain.reading.intervals import Interval
 from basinrain.reading.options import of_file, option_problems
 from basinrain.reading.stamps import StampRules
 from basinrain.reading.tips import TipRules

@@ -12,9 +12,9 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import Problems
+from basinrain.intervals import DAY, Interval, interval_of
 from basinrain.rainfall import Status
 from basinrain.reading.blocks import Block
-from basinrain.reading.intervals import DAY, Interval, interval_of
 
 __all__ = ["check_gauge_spacing", "check_spacing"]
 

@@ -17,9 +17,9 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
+from basinrain.clocks import clock_name, clock_seconds, parse_zone, standard_offset
 from basinrain.errors import JobError, Problem
-from basinrain.reading.clocks import clock_name, clock_seconds, parse_zone, standard_offset
-from basinrain.reading.intervals import DAY, Interval
+from basinrain.intervals import DAY, Interval
 
 __all__ = ["StampFault", "StampRules", "Stamps", "read_stamps"]
 

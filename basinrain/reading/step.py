@@ -7,14 +7,14 @@ from dataclasses import replace
 
 import numpy as np
 
+from basinrain.clocks import clock_name, clock_seconds, one_clock
 from basinrain.errors import JobError, Problems
 from basinrain.gauges import GaugeNetwork
+from basinrain.intervals import DAY, Interval, parse_interval
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
-from basinrain.reading.clocks import clock_name, clock_seconds, one_clock
 from basinrain.reading.common_grid import common_grid, reading_hours
 from basinrain.reading.grid import ABSENT, Grid, Source, place, relation
-from basinrain.reading.intervals import DAY, Interval, parse_interval
 from basinrain.reading.membership import check_membership, without_gauges
 from basinrain.reading.merging import merge_sources, take_out_of_service, unused_values
 from basinrain.reading.storm_totals import merge_storm_totals, storm_bounds

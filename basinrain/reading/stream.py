@@ -9,14 +9,14 @@ from typing import Any, Final, Protocol
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.clocks import one_clock
 from basinrain.errors import JobError, Problems, ReadError
 from basinrain.gauges import GaugeNetwork
+from basinrain.intervals import DAY, Interval, parse_interval
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
-from basinrain.reading.clocks import one_clock
 from basinrain.reading.common_grid import common_grid
 from basinrain.reading.grid import ABSENT, Grid, place, relation
-from basinrain.reading.intervals import DAY, Interval, parse_interval
 from basinrain.reading.membership import check_membership
 from basinrain.reading.merging import Unused, merge_sources, take_out_of_service
 from basinrain.reading.options import option_problems

@@ -9,9 +9,9 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import Problems, ReadError
+from basinrain.intervals import Interval
 from basinrain.reading.axis import absent_steps, check_length, check_phase, positions, unit_of
 from basinrain.reading.blocks import Block
-from basinrain.reading.intervals import Interval
 from basinrain.reading.spacing import check_spacing
 from basinrain.reading.stream_files import StreamFile
 

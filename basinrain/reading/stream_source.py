@@ -8,14 +8,14 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.clocks import clock_seconds
 from basinrain.errors import Problems, ReadError
+from basinrain.intervals import Interval
 from basinrain.rainfall import Status
 from basinrain.reading.axis import interval_end, join_cells, positions, unit_of
 from basinrain.reading.blocks import problems_of
-from basinrain.reading.clocks import clock_seconds
 from basinrain.reading.files import report_repeated
 from basinrain.reading.grid import Source
-from basinrain.reading.intervals import Interval
 from basinrain.reading.options import of_file
 from basinrain.reading.source_rules import SourceRules
 from basinrain.reading.stream_axis import regular_axis

@@ -57,7 +57,7 @@ class TimeColumn:
 
     Examples
     --------
-    >>> from basinrain.reading.intervals import Interval
+    >>> from basinrain.intervals import Interval
     >>> times = TimeColumn("time", StampRules(interval=Interval("1d", 86400)), None, Problems())
     >>> times.add(["2031-05-04"], np.array([2]))
     >>> times.add(["2031-05-05"], np.array([3]))

@@ -14,11 +14,11 @@ import numpy.typing as npt
 import pandas as pd
 
 from basinrain.errors import Problems
+from basinrain.intervals import Interval
 from basinrain.reading.blocks import DEPTH_NAMES, GAUGE_NAMES, TIME_NAMES
 from basinrain.reading.columns import find_column
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules
-from basinrain.reading.intervals import Interval
 from basinrain.reading.long import report_blank, required_columns
 from basinrain.reading.stamps import StampRules, read_stamps
 

@@ -16,13 +16,13 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import JobError, Problem, Problems
+from basinrain.intervals import DAY, Interval
 from basinrain.notes import Note
 from basinrain.rainfall import Status
 from basinrain.reading.axis import check_length
 from basinrain.reading.blocks import Block, problems_of
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthRules
-from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.options import of_file
 from basinrain.reading.stamps import StampRules, read_stamps
 from basinrain.reading.tip_logs import TipLog, join_logs, moment, read_logs

@@ -51,7 +51,7 @@ def read_wide(
     --------
     >>> import pandas as pd
     >>> from basinrain.reading.depths import depth_rules
-    >>> from basinrain.reading.intervals import parse_interval
+    >>> from basinrain.intervals import parse_interval
     >>> day = parse_interval("1d")
     >>> rules = depth_rules(unit="mm", interval=day, missing=[], trace=["T"], flags={}, accumulated=None)
     >>> frame = pd.DataFrame({"date": ["2031-05-04"], "W01": ["1.5"], "W02": ["T"]})

@@ -10,10 +10,10 @@ from typing import Any, Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.clocks import clock_name, clock_seconds, parse_zone, standard_offset
 from basinrain.errors import DataError, JobError, Problem, Problems
+from basinrain.intervals import DAY, interval_of, parse_interval
 from basinrain.notes import Note
-from basinrain.reading.clocks import clock_name, clock_seconds, parse_zone, standard_offset
-from basinrain.reading.intervals import DAY, interval_of, parse_interval
 from basinrain.series.flags import Flag
 from basinrain.series.series_source import Rows, SeriesSource, copied
 

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any, Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.reading.clocks import clock_seconds
+from basinrain.clocks import clock_seconds
 from basinrain.writing.series_content import SeriesContent, words_by_code, writing
 
 if TYPE_CHECKING:

@@ -115,8 +115,8 @@ def main() -> None:
     seconds = time.perf_counter() - start
     peak = resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss / 1024
     print(  # noqa: T201
-        f"{steps:,} steps x {asked.gauges:,} gauges x {asked.basins:,} basins: {seconds:.0f} s, {peak:,.0f} MiB at most, "
-        f"of {asked.memory * 1024:,.0f} MiB that the job allows"
+        f"{steps:,} steps x {asked.gauges:,} gauges x {asked.basins:,} basins: {seconds:.0f} s, "
+        f"{peak:,.0f} MiB at most, of {asked.memory * 1024:,.0f} MiB that the job allows"
     )
 
 

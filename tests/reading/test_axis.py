@@ -10,9 +10,9 @@ import pytest
 from rainfiles import labels, read, times, written
 
 from basinrain.errors import Problems, ReadError
+from basinrain.intervals import parse_interval
 from basinrain.rainfall import RainRecord
 from basinrain.reading.axis import check_length
-from basinrain.reading.intervals import parse_interval
 from basinrain.reading.rainfall import read_rainfall
 
 

@@ -7,9 +7,9 @@ from typing import Any
 import pytest
 
 from basinrain.errors import JobError, Problems
+from basinrain.intervals import DAY, Interval
 from basinrain.layouts import GHCN, LAYOUTS, TAKEN_BY
 from basinrain.reading.choices import check_choices, check_numbers, reading_hour, source_interval, time_of_day
-from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.rainfall import read_rainfall
 
 GIVEN: dict[str, Any] = {

@@ -8,10 +8,10 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from basinrain.errors import JobError, ReadError
+from basinrain.intervals import parse_interval
 from basinrain.rainfall import RainRecord, Status
 from basinrain.reading.counter import counter_depths
 from basinrain.reading.counter_rules import CounterRules
-from basinrain.reading.intervals import parse_interval
 
 NAN = np.nan
 

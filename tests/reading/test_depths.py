@@ -11,10 +11,10 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from basinrain.errors import JobError
+from basinrain.intervals import parse_interval
 from basinrain.rainfall import Status
 from basinrain.reading.delimited import DelimitedTable
 from basinrain.reading.depths import DepthCells, DepthRules, depth_rules
-from basinrain.reading.intervals import parse_interval
 from basinrain.units import DEPTH_UNITS
 
 

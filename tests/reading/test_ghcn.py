@@ -13,9 +13,9 @@ from ghcnfiles import DAILY, ONE, TWO, block_of, days, faults_of, month, record_
 
 from basinrain.errors import Problems, ReadError
 from basinrain.gauges import GaugeNetwork
+from basinrain.intervals import DAY, Interval
 from basinrain.rainfall import RainRecord, Status
 from basinrain.reading.ghcn import read_ghcn
-from basinrain.reading.intervals import DAY, Interval
 from basinrain.reading.stamps import StampRules
 from basinrain.reading.step import bring_to_step
 

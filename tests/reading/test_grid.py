@@ -9,9 +9,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from hypothesis.extra import numpy as stn
 
+from basinrain.intervals import parse_interval
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 from basinrain.reading.grid import ABSENT, Grid, Source, off_bounds, place, relation
-from basinrain.reading.intervals import parse_interval
 
 START = np.datetime64("2031-05-04T00:00:00")
 

@@ -11,9 +11,9 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from basinrain.clocks import clock_seconds
 from basinrain.errors import JobError
-from basinrain.reading.clocks import clock_seconds
-from basinrain.reading.intervals import parse_interval
+from basinrain.intervals import parse_interval
 from basinrain.reading.stamps import StampRules, Stamps, read_stamps
 
 

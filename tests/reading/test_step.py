@@ -16,9 +16,9 @@ from strategies import networks
 
 from basinrain.errors import DataError, JobError
 from basinrain.gauges import GaugeNetwork
+from basinrain.intervals import parse_interval
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
-from basinrain.reading.intervals import parse_interval
 from basinrain.reading.step import bring_to_step
 
 START = np.datetime64("2031-06-04T00:00:00")

@@ -33,6 +33,14 @@ def test_weights_at_the_step_itself() -> None:
     assert found.weight == pytest.approx(1)
 
 
+def test_the_step_within_what_is_loaded() -> None:
+    """Of three steps loaded together the one asked for is looked at: A has all the weight at the second alone."""
+    setup, series = strip(gaps=(REWEIGHT,)), (REWEIGHT, "thiessen")
+    for step, gauges in ((0, []), (1, ["A"]), (2, [])):
+        found = dominances(setup, {series: np.array([[step, -1]])}, lambda step: (RECORD, None, step))
+        assert [one.gauge for one in found] == gauges
+
+
 def test_infilled_gauges_keep_their_weight() -> None:
     """On the third day B is infilled from A and C, so that nobody has over half of the strip."""
     setup = strip(gaps=(INFILL, REWEIGHT))

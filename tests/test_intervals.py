@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 
 from basinrain.errors import JobError
-from basinrain.reading.intervals import interval_of, parse_interval
+from basinrain.intervals import interval_of, parse_interval
 
 
 @pytest.mark.parametrize(

@@ -9,8 +9,8 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from basinrain.clocks import clock_name, clock_seconds, parse_zone, standard_offset
 from basinrain.errors import JobError
-from basinrain.reading.clocks import clock_name, clock_seconds, parse_zone, standard_offset
 
 
 def test_unknown_zone() -> None:
