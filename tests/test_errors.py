@@ -116,3 +116,12 @@ def test_every_error_is_one_of_ours() -> None:
     assert len(kinds) == 7
     assert all(issubclass(kind, BasinRainError) for kind in kinds)
     assert issubclass(errors.SettingError, errors.JobError)
+
+
+@pytest.mark.parametrize("kind", [getattr(errors, name) for name in errors.__all__ if name.endswith("Error")])
+def test_an_error_arrives_whole_from_another_process(kind: type[BasinRainError]) -> None:
+    """Sent and received it has its kind, its problems, what it does not list, and its text."""
+    sent = kind([Problem(item="gauge A", found="one", gauge="A"), Problem(item="gauge B", found="two")], unlisted=3)
+    received = pickle.loads(pickle.dumps(sent))  # noqa: S301 - made here
+    assert (type(received), received.problems, received.unlisted) == (kind, sent.problems, 3)
+    assert str(received) == str(sent)

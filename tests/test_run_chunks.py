@@ -184,18 +184,17 @@ with SeriesStore.open(
     run_chunks(setup, Endless(n_steps, borders), store)
     assert not np.isnan(store.depth("reweight", "thiessen")[::1000]).any()
 line = next(line for line in open("/proc/self/status") if line.startswith("VmHWM"))
-print(n_steps * 300 * 9, int(line.split()[1]) * 1024)
+print(int(line.split()[1]) * 1024)
 """
 
 
 @pytest.mark.skipif(not Path("/proc/self/status").exists(), reason="reads the process's memory where Linux shows it")
-def test_a_record_larger_than_the_memory_stays_within_it(tmp_path: Path) -> None:
-    """With chunks of the size that is stated for 640 MiB the whole process has at most that, results on disk."""
+def test_a_run_stays_within_its_memory(tmp_path: Path) -> None:
+    """With chunks of the size that is stated for 640 MiB the whole process has at most that, and at least a quarter."""
     bound = 640 << 20
     command = [sys.executable, "-c", LARGE, str(bound), str(tmp_path / "work")]
     run = subprocess.run(command, capture_output=True, text=True, check=True)
-    _, peak = (int(word) for word in run.stdout.split())
-    assert peak < bound
+    assert 0.25 * bound < int(run.stdout) < bound
 
 
 WORK = """
