@@ -167,6 +167,52 @@ def test_a_chunk_that_kills_every_worker_ends_the_run(tmp_path: Path) -> None:
     assert {int(path.stem) for path in (tmp_path / "seen").iterdir()} == set(range(CHUNKS)) - finished
 
 
+WORK = """
+import sys
+from pathlib import Path
+from chunked import Slow, SourceWith, small_setup, small_store
+from basinrain.run_chunks import run_chunks
+
+if __name__ == "__main__":
+    with small_store(Path(sys.argv[1])) as store:
+        try:
+            source = SourceWith(Slow(0.3))
+            tell = lambda done, _: print(done, flush=True)
+            run_chunks(small_setup(), source, store, on="processes", workers=2, progress=tell)
+        except KeyboardInterrupt:
+            print("stopped")
+"""
+
+
+@pytest.mark.parametrize("how", [signal.SIGINT, signal.SIGKILL], ids=["Ctrl-C", "killed"])
+def test_stopping_the_run_stops_its_workers_without_a_word(
+    tmp_path: Path, undisturbed: bytes, how: signal.Signals
+) -> None:
+    """Ctrl-C reaches workers too, as in a terminal: they say nothing and end, as they do when the run is killed."""
+    (tmp_path / "work.py").write_text(WORK)
+    command = [sys.executable, str(tmp_path / "work.py"), str(tmp_path / "work")]
+    with subprocess.Popen(
+        command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, env=ENVIRONMENT, start_new_session=True
+    ) as run:
+        assert run.stdout is not None
+        assert [run.stdout.readline() for _ in range(3)] == ["0\n", f"{DAY}\n", f"{2 * DAY}\n"]
+        workers = workers_of(psutil.Process(run.pid))
+        assert len(workers) == 2
+        if how == signal.SIGINT:
+            os.killpg(run.pid, how)
+        else:
+            run.send_signal(how)
+        said, complaint = run.communicate(timeout=60)
+    if how == signal.SIGINT:
+        assert complaint == ""
+    assert said.endswith("stopped\n") == (how == signal.SIGINT)
+    assert psutil.wait_procs(workers, timeout=30)[1] == []
+    with small_store(tmp_path / "work") as store:
+        assert 0 < len(store.missing_chunks) <= CHUNKS - 2
+        run_chunks(small_setup(), small_source(), store)
+        assert stored_bytes(store) == undisturbed
+
+
 @pytest.mark.parametrize("on", ["threads", "processes"])
 def test_what_a_worker_finds_at_fault_arrives_whole(on: str) -> None:
     """An error of the data is the same error here, with all its lines."""

@@ -115,8 +115,8 @@ def coming_and_going(n_days: int = 20) -> tuple[RainRecord, npt.NDArray[np.bool_
     depth = rng.gamma(0.3, 4.0, (len(ends), 30))
     status = np.full(depth.shape, Status.OBSERVED, dtype=np.uint8)
     for _ in range(60):
-        first, gauge, hours = rng.integers(0, len(ends)), rng.integers(0, 30), rng.integers(1, 100)
-        status[first : first + hours, gauge] = Status.MISSING
+        at, silent, hours = rng.integers(0, len(ends)), rng.integers(0, 30), rng.integers(1, 100)
+        status[at : at + hours, silent] = Status.MISSING
     for gauge in range(5):
         status[: 24 * 3 * gauge + 7, gauge] = Status.NOT_INSTALLED
     status[24 * 15 + 5 :, 28:] = Status.NOT_INSTALLED

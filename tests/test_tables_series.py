@@ -140,3 +140,22 @@ def test_units(tmp_path: Path) -> None:
                 np.testing.assert_allclose(one[name] * 25.4, other[name])
             elif name.endswith("percent"):
                 np.testing.assert_allclose(one[name], other[name])
+
+
+@pytest.mark.parametrize("wet_depth", [[], ["storms.wet_depth=0.04"]])
+def test_storms_and_differences_in_inches(tmp_path: Path, wet_depth: list[str]) -> None:
+    """Half a mm between two wet days is dry, by 1 mm a day or 0.04 in; A's silent day is in one policy's mean alone."""
+    depth = ["0,0,0"] * 40
+    depth[20], depth[28], depth[29], depth[30] = ",0,0", "25.4,25.4,25.4", "0.5,0.5,0.5", "50.8,50.8,50.8"
+    rain = "date,A,B,C\n" + "".join(f"{np.datetime64('2031-05-04') + k},{row}\n" for k, row in enumerate(depth))
+    job = write_tiny(tmp_path, rain=rain, job=JOB.replace('"1h"', '"1d"') + "[storms]\ncount = 1\n")
+    settings = ["job.depth_unit=in", "averaging.methods=['thiessen', 'arithmetic']", "infill.method=station-average"]
+    run = run_series(job, [*settings, "series.gaps=['reweight', 'infill']", *wet_depth])
+    (storm,) = run.storms_found.to_dict("records")
+    assert (storm["method"], storm["gaps"], storm["hours"]) == ("thiessen", "reweight", 24)
+    assert storm["depth"] == pytest.approx(2.0)
+    assert storm["before_5d"] == pytest.approx(25.9 / 25.4)
+    means = run.series_means.set_index(["basin", "method", "gaps"])["difference_percent"]
+    # The same depth over 40 days instead of 39; by Thiessen polygons B has A's half meanwhile, and no day is lost.
+    assert means["west", "arithmetic", "infill"] == pytest.approx(-2.5)
+    assert means["west", "thiessen", "infill"] == pytest.approx(0, abs=1e-9)

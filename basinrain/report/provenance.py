@@ -173,8 +173,8 @@ def ground_facts(run: Run) -> list[tuple[str, str]]:
     text = ", ".join(f"{gauge} {_value(factor)}" for gauge, factor in factors.items())
     lines.append(("Gauge catch", f"Depths were multiplied by these factors: {text}." if text else "Not corrected."))
     if not np.isnan(run.basins.official_areas).all():
-        worst = np.nanmax(np.abs(run.basins.areas / run.basins.official_areas - 1))
-        most = f"{100 * worst:.2g}{NARROW_SPACE}%"
+        worst = 100 * np.nanmax(np.abs(run.basins.areas / run.basins.official_areas - 1))
+        most = f"{worst:{'.0f' if worst >= 10 else '.2g'}}{NARROW_SPACE}%"
         lines.append(("Areas", f"Polygon areas differ from those that the register states by at most {most}."))
     return lines
 

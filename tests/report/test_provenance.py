@@ -3,6 +3,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 import numpy as np
+import pytest
 from report.small_run import make_run
 
 from basinrain.ground import Plane, equal_area_plane
@@ -32,11 +33,12 @@ def test_catch_factors_are_listed(run: StormRun) -> None:
     assert dict(ground_facts(job))["Gauge catch"] == "Depths were multiplied by these factors: A 1.05."
 
 
-def test_areas_beside_the_registers(run: StormRun) -> None:
-    """A register's 99 km² for a square of 100 km² is 1 % off."""
-    official = np.array([99e6, np.nan, np.nan])
+@pytest.mark.parametrize(("area", "percent"), [(99e6, "1"), (25e6, "300"), (99.98e6, "0.02")])
+def test_areas_beside_the_registers(run: StormRun, area: float, percent: str) -> None:
+    """A register's 99 km² for a square of 100 km² is 1 % off, its 25 km² 300 %, in plain digits."""
+    official = np.array([area, np.nan, np.nan])
     job = replace(run, basins=replace(run.basins, official_areas=official))
-    assert dict(ground_facts(job))["Areas"].endswith("at most 1\u202f%.")
+    assert dict(ground_facts(job))["Areas"].endswith(f"at most {percent}\u202f%.")
 
 
 def test_formulas_of_what_was_used(run: StormRun) -> None:
