@@ -296,7 +296,8 @@ def _chosen_storms(job: Job, given: Inputs, infill: InfillChoice, say: Report) -
         raise DataError(
             Problem(
                 item="[storms]",
-                found=f"no storm in the series of {found.basin} whose steps all have a number",
+                found="; ".join(note.text for note in found.notes if note.code == "storms-not-sought")
+                or f"no storm in the series of {found.basin} whose steps all have a number",
                 expected="one at least",
                 remedy="name the storms in [[storm]], or lower wet_depth",
             )

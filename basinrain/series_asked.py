@@ -16,7 +16,7 @@ from basinrain.inputs import attempt
 from basinrain.intervals import parse_interval
 from basinrain.jobfile import Job
 from basinrain.jobfile.series_tables import ESTIMATED_GAP, TOTAL, StormsTable
-from basinrain.run_chunks import check_place
+from basinrain.run_chunks import HERE, check_place
 from basinrain.series.regrouping import Regrouping, regroup
 from basinrain.series.steps import DAY
 from basinrain.series_check import WET_DEPTH
@@ -48,6 +48,13 @@ def checked(job: Job, inputs: SeriesInputs) -> tuple[Regrouping, tuple[np.timede
             day_phase=record.day_phase,
         ),
     )
+    if table.workers is not None and table.on == HERE:
+        problems.add(
+            item="[series] workers",
+            found=f"{table.workers} beside on = '{HERE}'",
+            expected="it only where chunks are computed elsewhere",
+            remedy="remove it, or set on",
+        )
     attempt(problems, partial(check_place, table.on))
     if table.weigh == "ratios":
         attempt(problems, partial(_require_normals, inputs))

@@ -25,6 +25,7 @@ __all__ = ["series_cautions"]
 _POLICY_PERCENT: Final = 5.0
 _GAUGE_PERCENT: Final = 10.0
 _OBSERVED: Final = 0.75
+_DOMINANT: Final = 0.5
 _LISTED: Final = 5
 
 Times = npt.NDArray[np.datetime64]
@@ -38,6 +39,7 @@ def series_cautions(
     changes: Sequence[NetworkChange],
     dominant: Sequence[Dominance],
     *,
+    usual: Mapping[str, npt.NDArray[np.float64]],
     ends: Times,
     zone: str,
 ) -> Iterator[Note]:
@@ -47,6 +49,8 @@ def series_cautions(
     ----------
     setup, summaries, left_out, changes, dominant
         Parts of a run.
+    usual : mapping to array of float, shape (n_basins, n_gauges)
+        Weights with all gauges that were ever in service, by method.
     ends : array of datetime64, shape (n_steps,)
         Ends of the record's steps.
     zone
@@ -63,6 +67,7 @@ def series_cautions(
         )
     yield from _policies_apart(setup, summaries)
     yield from _decided_by_one(setup, left_out)
+    yield from _one_gauge(setup, usual)
     yield from _dominated(dominant, ends, zone)
     yield from _without_number(setup, summaries)
     yield from _without_totals(summaries)
@@ -73,9 +78,7 @@ def _policies_apart(setup: SeriesSetup, summaries: Summaries) -> Iterator[Note]:
     for gaps in setup.gaps[1:]:
         for method in setup.methods:
             one, other = summaries[first, method].terms, summaries[gaps, method].terms
-            with np.errstate(divide="ignore", invalid="ignore"):
-                percent = 100 * (other.total / other.seconds / (one.total / one.seconds) - 1)
-            percent = np.where(np.isfinite(percent), percent, 0.0)
+            percent = np.nan_to_num(other.percent_above(one))
             b = int(np.argmax(np.abs(percent)))
             if abs(percent[b]) > _POLICY_PERCENT:
                 yield Note(
@@ -109,6 +112,24 @@ def _decided_by_one(setup: SeriesSetup, left_out: Sequence[LeftOut]) -> Iterator
             )
 
 
+def _one_gauge(setup: SeriesSetup, usual: Mapping[str, npt.NDArray[np.float64]]) -> Iterator[Note]:
+    for method, weights in usual.items():
+        known = np.nan_to_num(weights)
+        over = np.flatnonzero(known.max(axis=1) > _DOMINANT)
+        over = over[np.argsort(-known[over].max(axis=1), kind="stable")]
+        if len(over):
+            named = ", ".join(
+                f"{setup.basins.ids[b]} ({setup.network.ids[int(known[b].argmax())]}, {100 * known[b].max():.1f} %)"
+                for b in over[:_LISTED]
+            )
+            more = f" and {len(over) - _LISTED} more" if len(over) > _LISTED else ""
+            yield Note(
+                code="dominant-gauge",
+                text=f"Even while all gauges are there one has over half of the weight ({method}) in: {named}{more}.",
+                method=method,
+            )
+
+
 def _dominated(dominant: Sequence[Dominance], ends: Times, zone: str) -> Iterator[Note]:
     by_series: dict[tuple[str, str], list[Dominance]] = {}
     for found in dominant:
@@ -116,12 +137,12 @@ def _dominated(dominant: Sequence[Dominance], ends: Times, zone: str) -> Iterato
     for (gaps, method), several in by_series.items():
         worst = max(several, key=lambda one: (one.weight, -one.step))
         rest = len(several) - 1
-        more = f" ({rest} more of the largest depths rest on one gauge for over half)" if rest else ""
+        more = f"; {rest} more of the largest depths rest on one gauge in the same way" if rest else ""
         yield Note(
             code="one-gauge-largest",
             text=f"One of the largest depths of basin {worst.basin}, in the step ending "
-            f"{time_text(ends[worst.step], zone)}, has {100 * worst.weight:.1f} % of its weight on gauge {worst.gauge} "
-            f"('{gaps}', {method}){more}.",
+            f"{time_text(ends[worst.step], zone)}, has {100 * worst.weight:.1f} % of its weight on gauge "
+            f"{worst.gauge}, which has {100 * worst.usual:.1f} % while all are there ('{gaps}', {method}){more}.",
             basin=worst.basin,
             gauge=worst.gauge,
             method=method,

@@ -27,7 +27,7 @@ from basinrain.results_series import SeriesRun
 from basinrain.run_chunks import run_chunks
 from basinrain.series.chunks import LoadChunk
 from basinrain.series.dominance import dominances
-from basinrain.series.engine import SeriesSetup
+from basinrain.series.engine import SeriesEngine, SeriesSetup
 from basinrain.series.found_storms import FoundStorms, find_storms
 from basinrain.series.long_term import LeftOut, gauges_to_leave_out, left_out
 from basinrain.series.network_changes import network_changes
@@ -140,10 +140,12 @@ def run_series(
         storms = storms_of_series(job, inputs, setup, store)
         say("leaving out gauges")
         without = _left_out(job, inputs, setup, [source.task(k) for k in range(len(borders) - 1)], say)
-        dominant = dominances(
-            setup, {series: _looked_at(found) for series, found in summaries.items()}, _Days(inputs).holding
-        )
         blocks = list(zip(borders[:-1].tolist(), borders[1:].tolist(), strict=True))
+        in_use = np.any([~inputs.absent(first, stop).all(axis=0) for first, stop in blocks], axis=0)
+        engine = SeriesEngine(setup)
+        usual = {method: engine.weights(method, in_use) for method in setup.methods}
+        largest = {series: _looked_at(found) for series, found in summaries.items()}
+        dominant = dominances(setup, largest, usual, _Days(inputs).holding)
         changes = network_changes(setup.network.ids, inputs.starts, blocks, inputs.absent, inputs.silent)
     except BaseException:
         store.close()
@@ -152,8 +154,10 @@ def run_series(
         *given.notes,
         *notes,
         *grouping.notes,
-        *network_cautions(setup.network, setup.basins),
-        *series_cautions(setup, summaries, without, changes, dominant, ends=inputs.ends, zone=given.record.zone),
+        *network_cautions(setup.network.subset(in_use), setup.basins),
+        *series_cautions(
+            setup, summaries, without, changes, dominant, usual=usual, ends=inputs.ends, zone=given.record.zone
+        ),
         *storms.notes,
     )
     return SeriesRun(

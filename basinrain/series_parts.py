@@ -38,6 +38,8 @@ Bools = npt.NDArray[np.bool_]
 Ints = npt.NDArray[np.int64]
 
 _GIB: Final = 1 << 30
+_LOOKED: Final = 4096
+"""Steps that are read at a time to look for a value."""
 _MEMORY: Final = "give more [series] memory, so that the record is read whole"
 
 
@@ -155,6 +157,7 @@ def parted_inputs(job: Job, say: Report) -> SeriesInputs:
     )
     edits = edits_of(job, stream.zone, [source.gauges for source in stream.sources])
     _require_in_record(edits, stream)
+    _require_values(edits, stream)
     network, (polygons, basin_notes) = stream.network, cast("tuple[Basins, tuple[Note, ...]]", basins)
     network, polygons, plane, ground_notes = reading.settle(network, polygons, plane=job.job.plane)
     refuse_colocated(network)
@@ -255,6 +258,28 @@ def _require_in_record(edits: tuple[Edit, ...], stream: RecordStream) -> None:
                 found=f"{n} steps of the gauge in {edit.start} to {edit.end}",
                 expected="one step to set",
                 remedy="narrow it to one, and give every step its own edit",
+                gauge=edit.gauge,
+            )
+    problems.raise_as(JobError)
+
+
+def _require_values(edits: tuple[Edit, ...], stream: RecordStream) -> None:
+    """Refuse edits of stretches in which the gauge has no value at all, as of a record that is read whole."""
+    problems = Problems()
+    starts, ends = stream.starts, stream.ends
+    for edit in edits:
+        if edit.action == "set":
+            continue  # it may give a missing step its value
+        column = stream.gauges.index(edit.gauge)
+        first = 0 if np.isnat(edit.start) else int(np.searchsorted(ends, edit.start, side="right"))
+        stop = len(ends) if np.isnat(edit.end) else int(np.searchsorted(starts, edit.end, side="left"))
+        blocks = (stream.read(at, min(at + _LOOKED, stop)) for at in range(first, stop, _LOOKED))
+        if not any(block.reporting[:, column].any() for block in blocks):
+            problems.add(
+                item=edit.item,
+                found=f"no value of the gauge, {edit.start} to {edit.end}",
+                expected="a stretch with values",
+                remedy="correct from or to, or remove the edit",
                 gauge=edit.gauge,
             )
     problems.raise_as(JobError)

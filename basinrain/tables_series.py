@@ -5,7 +5,7 @@ Columns and their order are those of the CSV files; ``docs/outputs.md`` describe
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -109,17 +109,10 @@ def series_means(run: SeriesRun) -> pd.DataFrame:
                         int(terms.infilled[b]),
                         int(terms.reweighted[b]),
                         terms.observed_share[b],
-                        np.nan if found is run.summaries[run.setup.gaps[0], method] else _percent(first, terms, b),
+                        np.nan if terms is first else terms.percent_above(first)[b],
                     )
                 )
     return pd.DataFrame(rows, columns=_MEANS.split())
-
-
-def _percent(first: Any, other: Any, b: int) -> float:  # noqa: ANN401 - LongTerm
-    """Return by how much the mean rate of one series is above another's, in per cent."""
-    if not (first.total[b] > 0 and other.seconds[b] > 0):
-        return np.nan
-    return float(100 * (other.total[b] / other.seconds[b] / (first.total[b] / first.seconds[b]) - 1))
 
 
 def left_out_means(run: SeriesRun) -> pd.DataFrame:

@@ -11,6 +11,7 @@ from basinrain.results_series import SeriesRun
 from basinrain.series_job import run_series
 
 CODES = {
+    "dominant-gauge",
     "network-changed",
     "policies-apart",
     "mean-on-one-gauge",
@@ -35,11 +36,14 @@ def texts(found: SeriesRun, code: str) -> list[str]:
     return [note.text for note in found.warnings if note.code == code]
 
 
-def test_a_whole_record_is_not_warned_of(tmp_path: Path) -> None:
-    """Three gauges that agree and always report: the union has nothing that is warned of; single halves hang on one."""
+def test_a_whole_record_is_warned_of_what_is_always_so(tmp_path: Path) -> None:
+    """Three gauges that agree and always report: the west is A's, the east mostly B's; nothing else is told."""
     found = run(tmp_path, ["10,10,10", "4,4,4"])
-    codes = {note.code for note in found.warnings} & CODES
-    assert codes == {"one-gauge-largest"}
+    assert {note.code for note in found.warnings} & CODES == {"dominant-gauge"}
+    assert texts(found, "dominant-gauge") == [
+        "Even while all gauges are there one has over half of the weight (thiessen) in: west (A, 100.0 %), "
+        "east (B, 85.0 %)."
+    ]
 
 
 def test_policies_apart(tmp_path: Path) -> None:
@@ -109,10 +113,10 @@ def test_little_observed(tmp_path: Path) -> None:
 
 
 def test_largest_depths_on_one_gauge(tmp_path: Path) -> None:
-    """The largest depth of the union while A alone reports has all of its weight on A."""
+    """The largest depths of the east and the union while A alone reports have all of their weight on A."""
     found = run(tmp_path, ["90,,", "1,1,1"], "series.gaps=reweight", "infill.min_donors=1")
     (text,) = texts(found, "one-gauge-largest")
     assert text.startswith(
-        "One of the largest depths of basin west, in the step ending 2031-05-05T00:00, has 100.0 % of its weight on "
-        "gauge A ('reweight', thiessen)"
+        "One of the largest depths of basin east, in the step ending 2031-05-05T00:00, has 100.0 % of its weight on "
+        "gauge A, which has 0.0 % while all are there ('reweight', thiessen); 1 more of the largest depths rest on one"
     )

@@ -75,7 +75,7 @@ def run_command(
         sys.stdout.write(record_text(run, files))
     elif not quiet:
         show(run)
-        show_end(folder)
+        show_end(folder, "the files of series and tables" if isinstance(run, SeriesRun) else "the CSV files")
     if isinstance(run, SeriesRun):
         run.store.remove()
 
@@ -97,9 +97,9 @@ def show_warnings(page: Console, warnings: Iterable[Note]) -> None:
             page.print(f"Warning: {len(notes) - _SHOWN} more of this kind stand in report.html", soft_wrap=True)
 
 
-def show_end(folder: Path) -> None:
+def show_end(folder: Path, files: str = "the CSV files") -> None:
     """Print the caution and where the results are."""
     console().print(
         "For a qualified engineer's judgement; local codes and licensed practice govern design.", soft_wrap=True
     )
-    click.echo(f"Written to {folder}: report.html, record.json and the CSV files")
+    click.echo(f"Written to {folder}: report.html, record.json and {files}")

@@ -36,7 +36,7 @@ def show(run: SeriesRun) -> None:
     zone = run.record.zone
     page.print(
         f"{len(run.starts):,} steps of {run.record.step}, {time_text(run.starts[0], zone)} to "
-        f"{time_text(run.ends[-1], zone)}: mean annual depth in {run.depth_unit}"
+        f"{time_text(run.ends[-1], zone)}: mean annual depth, {run.depth_unit}"
     )
     table = Table(show_edge=False, pad_edge=False)
     for heading in ("basin", "method", "gaps"):

@@ -13,7 +13,7 @@ from basinrain.intervals import FORMS, parse_interval
 from basinrain.jobfile.fields import Count, NameList, Positive, Table, names, one_of
 from basinrain.series.policies import GAPS, INFILL_THEN_REWEIGHT
 
-__all__ = ["ESTIMATED_GAP", "FORMATS", "TOTAL", "AntecedentTable", "SeriesTable", "StormsTable"]
+__all__ = ["ESTIMATED_GAP", "FORMATS", "LEAST_MEMORY", "TOTAL", "AntecedentTable", "SeriesTable", "StormsTable"]
 
 FORMATS = ("csv", "csv-per-basin", "parquet", "netcdf")
 """Kinds of files that a series is written to."""
@@ -23,6 +23,9 @@ TOTAL = "total"
 
 ESTIMATED_GAP = "estimated"
 """Written for the dry gap that is to be found from the record."""
+
+LEAST_MEMORY = 1.0
+"""GiB; with less the libraries alone would leave no room for a record."""
 
 _MONTHS = 12
 
@@ -72,7 +75,7 @@ class SeriesTable(Table):
     water_year: Annotated[int, Field(ge=1, le=_MONTHS)] = 10
     complete: Annotated[float, Field(gt=0, le=1)] = 0.95
     leave_out: NameList | None = None
-    memory: Positive = 2.0
+    memory: Annotated[float, Field(ge=LEAST_MEMORY)] = 2.0
     on: str = "here"
     workers: Count | None = None
 

@@ -14,12 +14,13 @@ from basinrain.series.engine import SeriesEngine, SeriesSetup
 __all__ = ["Dominance", "dominances"]
 
 Bools = npt.NDArray[np.bool_]
+Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.int64]
 
 
 @dataclass(frozen=True, kw_only=True)
 class Dominance:
-    """A large depth in which one gauge has over half of the weight.
+    """A large depth in which one gauge has over half of the weight, which it has not while all are there.
 
     Parameters
     ----------
@@ -27,8 +28,8 @@ class Dominance:
         The series.
     step
         The step of the record.
-    gauge, weight
-        The gauge and its weight, with the gauges that have a depth at the step.
+    gauge, weight, usual
+        The gauge, its weight with the gauges that have a depth at the step, and its weight with all gauges.
     """
 
     gaps: str
@@ -37,16 +38,20 @@ class Dominance:
     step: int
     gauge: str
     weight: float
+    usual: float
 
 
 def dominances(
     setup: SeriesSetup,
     largest: Mapping[tuple[str, str], Ints],
+    usual: Mapping[str, Floats],
     load: Callable[[int], tuple[RainRecord, Bools | None, int]],
     *,
     above: float = 0.5,
 ) -> tuple[Dominance, ...]:
     """Return the largest depths of every series in which one gauge has more than a share of the weight.
+
+    A gauge that has more than the share while all gauges are there is not told of.
 
     Parameters
     ----------
@@ -54,6 +59,8 @@ def dominances(
         What the series rest on.
     largest : mapping to array of int, shape (n, n_basins)
         Steps to look at, by policy and method; -1 for none.
+    usual : mapping to array of float, shape (n_basins, n_gauges)
+        The weights with all gauges, by method.
     load
         Given a step, the whole rainfall day of the record that holds it, its long gaps, and the step's place in it.
     above
@@ -77,7 +84,8 @@ def dominances(
     ...     gaps=("reweight",),
     ...     infill=InfillOptions(scale="step"),
     ... )
-    >>> found = dominances(setup, {("reweight", "thiessen"): np.array([[0]])}, lambda step: (record, None, 0))
+    >>> usual = {"thiessen": np.array([[0.5, 0.5, 0.0]])}
+    >>> found = dominances(setup, {("reweight", "thiessen"): np.array([[0]])}, usual, lambda step: (record, None, 0))
     >>> [(one.gauge, round(one.weight, 3)) for one in found]
     [('A', 0.75)]
     """
@@ -91,19 +99,35 @@ def dominances(
                 steps = largest.get((gaps, method))
                 basins = [] if steps is None else np.flatnonzero((steps == step).any(axis=0)).tolist()
                 if basins:
-                    found += _of_step(engine, has_depth[place], gaps, method, step, basins, above)
+                    found += _of_step(engine, has_depth[place], usual[method], gaps, method, step, basins, above)
     return tuple(found)
 
 
 def _of_step(  # noqa: PLR0917 - one step of one series
-    engine: SeriesEngine, present: Bools, gaps: str, method: str, step: int, basins: Sequence[int], above: float
+    engine: SeriesEngine,
+    present: Bools,
+    usual: Floats,
+    gaps: str,
+    method: str,
+    step: int,
+    basins: Sequence[int],
+    above: float,
 ) -> list[Dominance]:
     weights = engine.weights(method, present)
     ids, gauges = engine.setup.basins.ids, engine.setup.network.ids
     found = []
     for b in basins:
         g = int(np.nanargmax(weights[b])) if not np.isnan(weights[b]).all() else -1
-        if g >= 0 and weights[b, g] > above:
-            weight = float(weights[b, g])
-            found.append(Dominance(gaps=gaps, method=method, basin=ids[b], step=step, gauge=gauges[g], weight=weight))
+        if g >= 0 and weights[b, g] > above and not usual[b, g] > above:
+            found.append(
+                Dominance(
+                    gaps=gaps,
+                    method=method,
+                    basin=ids[b],
+                    step=step,
+                    gauge=gauges[g],
+                    weight=float(weights[b, g]),
+                    usual=float(usual[b, g]),
+                )
+            )
     return found

@@ -8,6 +8,7 @@ from typing import Final, Literal
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.errors import MethodError
 from basinrain.notes import Note
 from basinrain.series.antecedent import AntecedentDepths, AntecedentIndex, antecedent_depths, antecedent_index
 from basinrain.series.dry_gap import DryGap, estimate_dry_gap
@@ -99,12 +100,13 @@ def find_storms(
     Returns
     -------
     FoundStorms
-        Without any where steps are longer than a day, or differ in length, or do not divide a day: a note says so.
+        Without any where steps are longer than a day, or differ in length, or do not divide a day, or the test does
+        not settle on a gap: a note says so.
 
     Raises
     ------
     BasinRainError
-        As those functions; the test does not settle on a gap.
+        As those functions.
 
     Examples
     --------
@@ -142,7 +144,11 @@ def find_storms(
     if lengths.min() != lengths.max() or DAY % int(lengths[0]):
         text = "No storms were sought in the record: its steps are not of one length that divides a day."
         return replace(nothing, notes=(Note(code="storms-not-sought", text=text, level="info"),))
-    test = estimate_dry_gap(starts, ends, depth, wet_depth=wet_depth) if dry_gap is None else None
+    try:
+        test = estimate_dry_gap(starts, ends, depth, wet_depth=wet_depth) if dry_gap is None else None
+    except MethodError as error:
+        text = f"No storms were sought in the record, since no dry gap could be found: {error}"
+        return replace(nothing, notes=(Note(code="storms-not-sought", text=text),))
     gap = dry_gap if test is None else test.gap
     assert gap is not None  # noqa: S101 - one of the two is there
     events = find_events(starts, ends, depth, dry_gap=gap, wet_depth=wet_depth)

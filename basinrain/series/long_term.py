@@ -54,6 +54,12 @@ class LongTerm:
     reweighted: Ints
     missing: Ints
 
+    def percent_above(self, other: LongTerm) -> Floats:
+        """Return by how many per cent the mean is above another's, (n_basins,); NaN where that one is not above 0."""
+        with np.errstate(divide="ignore", invalid="ignore"):
+            change = 100 * (self.total / self.seconds / (other.total / other.seconds) - 1)
+        return np.where(other.total > 0, change, np.nan)
+
 
 def long_term(stored: SeriesSource, gaps: str, method: str, lengths: Floats) -> LongTerm:
     """Sum up one series, a block of steps at a time.

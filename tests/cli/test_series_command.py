@@ -67,13 +67,16 @@ def test_what_is_printed(tmp_path: Path) -> None:
     done = basinrain("series", job, "--set", "averaging.methods=thiessen", "--set", "storms.dry_gap=1h")
     assert (done.returncode, done.stderr) == (0, "")
     lines = done.stdout.splitlines()
-    assert lines[0] == "4 steps of 1h, 2031-05-04T00:00 to 2031-05-04T04:00: mean annual depth in mm"
+    assert lines[0] == "4 steps of 1h, 2031-05-04T00:00 to 2031-05-04T04:00: mean annual depth, mm"
     assert lines[1].split("┃")[0].strip() == "basin"
     (union,) = [line for line in lines if line.startswith("union")]
     assert [cell.strip() for cell in union.split("│")][1:3] == ["thiessen", "infill-then-reweight"]
     assert "Largest storms of union by total (thiessen, infill-then-reweight; dry gap 1 h)" in lines
     assert lines[-2] == "For a qualified engineer's judgement; local codes and licensed practice govern design."
-    assert lines[-1] == f"Written to {tmp_path / 'output' / 'series'}: report.html, record.json and the CSV files"
+    assert (
+        lines[-1]
+        == f"Written to {tmp_path / 'output' / 'series'}: report.html, record.json and the files of series and tables"
+    )
 
 
 def test_the_files_are_these_and_the_record_keeps_its_schema(tmp_path: Path) -> None:

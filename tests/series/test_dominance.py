@@ -12,6 +12,8 @@ from basinrain.series.engine import SeriesSetup
 from basinrain.series.policies import INFILL, REWEIGHT
 
 N = np.nan
+USUAL = {"thiessen": np.array([[1 / 3, 1 / 3, 1 / 3], [1.0, 0.0, 0.0]])}
+"""Weights in the strip and in its western third while all gauges are there."""
 RECORD = daily([[3, 9, 6], [30, N, N], [6, N, 3]], ("A", "B", "C"))
 
 
@@ -19,7 +21,7 @@ def looked_at(setup: SeriesSetup, steps: dict[tuple[str, str], list[list[int]]],
     def load(step: int) -> tuple[RainRecord, None, int]:
         return RECORD.window(step, step + 1), None, 0
 
-    return list(dominances(setup, {series: np.array(rows) for series, rows in steps.items()}, load, **given))
+    return list(dominances(setup, {series: np.array(rows) for series, rows in steps.items()}, USUAL, load, **given))
 
 
 def test_weights_at_the_step_itself() -> None:
@@ -37,7 +39,7 @@ def test_the_step_within_what_is_loaded() -> None:
     """Of three steps loaded together the one asked for is looked at: A has all the weight at the second alone."""
     setup, series = strip(gaps=(REWEIGHT,)), (REWEIGHT, "thiessen")
     for step, gauges in ((0, []), (1, ["A"]), (2, [])):
-        found = dominances(setup, {series: np.array([[step, -1]])}, lambda step: (RECORD, None, step))
+        found = dominances(setup, {series: np.array([[step, -1]])}, USUAL, lambda step: (RECORD, None, step))
         assert [one.gauge for one in found] == gauges
 
 
@@ -50,7 +52,17 @@ def test_infilled_gauges_keep_their_weight() -> None:
 
 
 def test_only_the_basins_whose_step_it_is() -> None:
-    """The western third is A's at every step; it is told of for its own largest steps alone."""
+    """A step that is large in one basin is told of in that basin alone."""
+    setup, series = strip(gaps=(REWEIGHT,)), (REWEIGHT, "thiessen")
+    usual = {"thiessen": np.array([[1 / 3, 1 / 3, 1 / 3], [0.4, 0.6, 0.0]])}
+    for steps, basins in (([[1, -1]], ["strip"]), ([[-1, 1]], ["west"]), ([[1, 1]], ["strip", "west"])):
+        found = dominances(
+            setup, {series: np.array(steps)}, usual, lambda step: (RECORD.window(step, step + 1), None, 0)
+        )
+        assert [one.basin for one in found] == basins
+
+
+def test_what_is_always_so_is_not_told() -> None:
+    """The western third is A's at every step, whoever else is silent."""
     setup = strip(gaps=(REWEIGHT,))
-    found = looked_at(setup, {(REWEIGHT, "thiessen"): [[-1, 0], [-1, 2]]})
-    assert [(one.basin, one.step) for one in found] == [("west", 0), ("west", 2)]
+    assert looked_at(setup, {(REWEIGHT, "thiessen"): [[-1, 0], [-1, 1]]}) == []

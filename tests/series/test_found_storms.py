@@ -6,9 +6,7 @@ from typing import Any
 
 import numpy as np
 import numpy.typing as npt
-import pytest
 
-from basinrain.errors import MethodError
 from basinrain.series.found_storms import FoundStorms, find_storms
 
 N = np.nan
@@ -80,5 +78,8 @@ def test_the_gap_from_the_record() -> None:
     assert storms.test is not None
     assert storms.dry_gap == storms.test.gap
     assert storms.dry_gap > HOUR
-    with pytest.raises(MethodError, match="dry spells"):
-        found([1, 0, 0, 1], dry_gap=None)
+    short = found([1, 0, 0, 1], dry_gap=None)
+    assert short.taken == ()
+    (note,) = short.notes
+    assert note.level == "warning"
+    assert note.text.startswith("No storms were sought in the record, since no dry gap could be found: ")
