@@ -40,10 +40,11 @@ def test_a_whole_record_is_warned_of_what_is_always_so(tmp_path: Path) -> None:
     """Three gauges that agree and always report: the west is A's, the east mostly B's; nothing else is told."""
     found = run(tmp_path, ["10,10,10", "4,4,4"])
     assert {note.code for note in found.warnings} & CODES == {"dominant-gauge"}
-    assert texts(found, "dominant-gauge") == [
+    (text,) = texts(found, "dominant-gauge")
+    assert text == (
         "Even while all gauges are there one has over half of the weight (thiessen) in: west (A, 100.0 %), "
         "east (B, 85.0 %)."
-    ]
+    )
 
 
 def test_policies_apart(tmp_path: Path) -> None:
