@@ -13,6 +13,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.averaging import choose_grid
+from basinrain.blas import one_blas_thread
 from basinrain.cautions import network_cautions
 from basinrain.infill import InfillOptions
 from basinrain.infill.leave_one_out import Comparison
@@ -139,7 +140,8 @@ def run_series(
         }
         storms = storms_of_series(job, inputs, setup, store)
         say("leaving out gauges")
-        without = _left_out(job, inputs, setup, [source.task(k) for k in range(len(borders) - 1)], say)
+        with one_blas_thread():
+            without = _left_out(job, inputs, setup, [source.task(k) for k in range(len(borders) - 1)], say)
         blocks = list(zip(borders[:-1].tolist(), borders[1:].tolist(), strict=True))
         in_use = np.any([~inputs.absent(first, stop).all(axis=0) for first, stop in blocks], axis=0)
         engine = SeriesEngine(setup)

@@ -30,6 +30,7 @@ __all__ = ["SeriesEngine", "SeriesPart", "SeriesSetup"]
 Bools = npt.NDArray[np.bool_]
 Bytes = npt.NDArray[np.uint8]
 Floats = npt.NDArray[np.float64]
+Table = sparse.csr_array | npt.NDArray[np.float32]
 Parts = dict[tuple[str, str], "SeriesPart"]
 
 _ABSENT, _WITHOUT, _OWN, _SPREAD, _ESTIMATED, _INFILLED = range(6)
@@ -47,10 +48,12 @@ _KIND: Final = np.array(
     ],
     dtype=np.uint8,
 )
-_REMEMBERED: Final = 64
-"""Sets of gauges in service whose weights are kept."""
+_KEPT_BYTES: Final = 64 << 20
+"""Bytes of the weights of sets of gauges in service that are kept."""
+_TOGETHER: Final = 512
+"""Gauges whose weights are asked for together."""
 _DENSE: Final = 0.2
-"""A weight table with a smaller share of weights above 0 is multiplied as a sparse one."""
+"""A weight table with a smaller share of weights other than 0 is kept and multiplied as a sparse one."""
 _ROWS: Final = 1 << 14
 """Stretches of equal kinds that are looked at together."""
 
@@ -160,7 +163,7 @@ class SeriesEngine:
         self._reweighers = {
             name: averaging_method(name).reweigher(network, basins, o) for name, o in setup.methods.items()
         }
-        self._service: OrderedDict[tuple[str, bytes], Floats] = OrderedDict()
+        self._service: OrderedDict[tuple[str, bytes], Table] = OrderedDict()
         self._filler: RecordFiller | None = None
         if set(setup.gaps) != {REWEIGHT}:
             self._filler = RecordFiller(network, setup.infill, relations=setup.relations, ratios=setup.normal_ratios)
@@ -214,9 +217,13 @@ class SeriesEngine:
     def weights(self, method: str, present: Bools) -> Floats:
         """Return a method's weights for a set of gauges, (n_basins, n_gauges); NaN where it has no number."""
         n = len(present)
-        # A millimetre at one gauge after the other: what it makes of the basins' means is its weight in them.
-        one_by_one = ReportingRuns(np.zeros(1, dtype=np.int64), present[None, :], n)
-        return self._reweighers[method](np.eye(n), one_by_one).T
+        parts = []
+        for first in range(0, n, _TOGETHER):
+            # A millimetre at one gauge after the other: what it makes of the basins' means is its weight in them.
+            one_by_one = np.eye(min(_TOGETHER, n - first), n, k=first)
+            runs = ReportingRuns(np.zeros(1, dtype=np.int64), present[None, :], len(one_by_one))
+            parts.append(self._reweighers[method](one_by_one, runs))
+        return np.concatenate(parts).T
 
     def _completed(self, chunk: RainRecord, long: Bools | None) -> list[tuple[str, Floats, Bytes]]:
         """Return, for every policy, the chunk's depths and their kinds, (n_steps, n_gauges)."""
@@ -252,8 +259,8 @@ class SeriesEngine:
         share = np.empty((len(kinds.rows), n_basins), dtype=np.float32)
         flags = np.zeros((len(kinds.rows), n_basins), dtype=np.uint8)
         for rows, kind in kinds.by_service():
-            weights = self.weights_in_service(method, kind[0] != _ABSENT)
-            has_weight = weights != 0
+            weights = self._in_service(method, kind[0] != _ABSENT)
+            has_weight = weights.astype(np.bool_).astype(np.float32)
             # From 1 downward, so that it is 1 to the last digit where every gauge in service reports.
             share[rows] = np.maximum(1 - _product((kind == _WITHOUT) | (kind == _INFILLED), weights), 0)
             for flag, meant in _FLAGGED.items():
@@ -262,12 +269,14 @@ class SeriesEngine:
                     flags[rows] |= np.where(_product(marked, has_weight) > 0, np.uint8(flag), np.uint8(0))
         return np.repeat(share, kinds.lengths, axis=0), np.repeat(flags, kinds.lengths, axis=0)
 
-    def weights_in_service(self, method: str, service: Bools) -> Floats:
+    def _in_service(self, method: str, service: Bools) -> Table:
         """Return a method's weights with the gauges in service, (n_basins, n_gauges); zeros where it has no number."""
         key = (method, service.tobytes())
         if key not in self._service:
-            self._service[key] = np.nan_to_num(self.weights(method, service))
-            if len(self._service) > _REMEMBERED:
+            weights = np.nan_to_num(self.weights(method, service)).astype(np.float32)
+            thin = np.count_nonzero(weights) < _DENSE * weights.size
+            self._service[key] = sparse.csr_array(weights) if thin else weights
+            while len(self._service) > 1 and sum(map(_bytes_of, self._service.values())) > _KEPT_BYTES:
                 self._service.popitem(last=False)
         self._service.move_to_end(key)
         return self._service[key]
@@ -304,9 +313,12 @@ class _Kinds:
         return [(block, self.rows[block]) for block in blocks]
 
 
-def _product(marked: Bools, weights: npt.NDArray[Any]) -> npt.NDArray[np.float32]:
+def _product(marked: Bools, weights: Table) -> npt.NDArray[np.float32]:
     """Return the sum of the weights of the marked gauges, (n_rows, n_basins)."""
-    values = weights.astype(np.float32)
-    if np.count_nonzero(values) < _DENSE * values.size:
-        return np.asarray((sparse.csr_array(values) @ marked.T.astype(np.float32)).T)
-    return np.asarray(marked.astype(np.float32) @ values.T)
+    return np.asarray((weights @ marked.T.astype(np.float32)).T, dtype=np.float32)
+
+
+def _bytes_of(weights: Table) -> int:
+    if isinstance(weights, np.ndarray):
+        return weights.nbytes
+    return int(weights.data.nbytes + weights.indices.nbytes + weights.indptr.nbytes)

@@ -159,7 +159,7 @@ def gauges_to_leave_out(setup: SeriesSetup, record: RainRecord) -> tuple[str, ..
     put = np.zeros(len(mean))
     engine = SeriesEngine(replace(setup, ratios=False))
     for method in setup.methods:
-        parts = engine.weights_in_service(method, count > 0) * mean
+        parts = np.nan_to_num(engine.weights(method, count > 0)) * mean
         put = np.maximum(put, (parts / np.maximum(parts.sum(axis=1, keepdims=True), np.finfo(float).tiny)).max(axis=0))
     chosen = sorted(some.tolist(), key=lambda g: (-put[g], record.gauges[g]))[:number]
     return tuple(record.gauges[g] for g in chosen)
