@@ -18,7 +18,7 @@ from basinrain.gauges import ONE_PLACE, GaugeNetwork
 from basinrain.notes import Note
 from basinrain.rainfall import KnownTotal, RainRecord, Status
 
-__all__ = ["NEAREST", "pattern_shares", "share_out", "spread_totals"]
+__all__ = ["NEAREST", "share_out", "spread_totals"]
 
 NEAREST: Final = 5
 """How many recording gauges make a pattern."""
@@ -28,51 +28,32 @@ _NONE_COMPLETE: Final = "no recording gauge is complete over it"
 _ALL_DRY: Final = "none of the recording gauges near it has rain"
 
 
-def pattern_shares(depths: npt.NDArray[np.float64], weights: npt.NDArray[np.float64]) -> npt.NDArray[np.float64] | None:
-    """Return the share of every step in the rain of the donors.
+def share_out(totals: npt.NDArray[np.float64], shares: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
+    """Return totals given to steps by shares, the sums kept: rounding goes to the last step of the largest share.
 
     Parameters
     ----------
-    depths : array of float, shape (n_steps, n_donors)
-        mm, complete: a NaN would become NaN shares.
-    weights : array of float, shape (n_donors,)
-        Weight of every donor, above 0; only their proportions count.
+    totals : array of float, shape (n,)
+        mm, 0 or more.
+    shares : array of float, shape (n_steps, n)
+        0 or more, each column summing to 1.
 
     Returns
     -------
-    array of float, shape (n_steps,), or None
-        Shares that sum to 1; None when all donors are dry or there is none, which leaves no pattern.
+    array of float, shape (n_steps, n)
 
     Examples
     --------
-    >>> shares = pattern_shares(np.array([[10.0, 0.0], [0.0, 0.0], [20.0, 10.0]]), np.array([1.0, 1.0]))
-    >>> shares  # 5, 0 and 15 mm on average
-    array([0.25, 0.  , 0.75])
-    >>> pattern_shares(np.zeros((3, 2)), np.array([1.0, 1.0])) is None
-    True
+    >>> share_out(np.array([48.0]), np.array([[1 / 3], [2 / 3]]))
+    array([[16.],
+           [32.]])
     """
-    mixed = depths @ weights
-    total = mixed.sum()
-    # Weights and depths are not negative, so a sum of zero means that every donor is dry.
-    return None if total == 0 else mixed / total
-
-
-def share_out(total: float, shares: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
-    """Return ``total`` given to steps by ``shares``, the sum kept: rounding goes to the last step of the largest share.
-
-    Parameters
-    ----------
-    total : float
-        mm, 0 or more.
-    shares : array of float, shape (n_steps,)
-        0 or more, summing to 1.
-
-    Examples
-    --------
-    >>> share_out(48.0, np.array([1 / 3, 2 / 3]))
-    array([16., 32.])
-    """
-    return _share_out(np.array([total]), shares[:, None])[:, 0]
+    parts = shares * totals
+    # The last of the largest: it is wet, and large enough never to be pushed below zero by rounding.
+    largest = len(shares) - 1 - shares[::-1].argmax(axis=0)
+    each = np.arange(len(totals))
+    parts[largest, each] += totals - parts.sum(axis=0)
+    return parts
 
 
 def spread_totals(
@@ -126,7 +107,7 @@ def spread_totals(
         caught = mixed.sum(axis=0)
         even = caught == 0
         shares = np.where(even, 1 / (stop - first), mixed / np.where(even, 1.0, caught))
-        depth[first:stop, targets] = _share_out(amounts, shares)
+        depth[first:stop, targets] = share_out(amounts, shares)
         status[first:stop, targets] = np.where(amounts == 0, Status.ZERO, Status.SPREAD)
         for k in np.flatnonzero(even & (amounts > 0)):
             reason = _ALL_DRY if weights[k].any() else _NONE_COMPLETE
@@ -134,16 +115,6 @@ def spread_totals(
     notes = [_evenly_note(gauge, reason, where) for (gauge, reason), where in evenly.items()]
     notes.sort(key=lambda note: (column[note.gauge], note.text))
     return replace(record, depth=depth, status=status, totals=(*record.totals, *totals)), tuple(notes)
-
-
-def _share_out(totals: npt.NDArray[np.float64], shares: npt.NDArray[np.float64]) -> npt.NDArray[np.float64]:
-    """Give each total (n,) to its steps by shares (n_steps, n)."""
-    parts = shares * totals
-    # The last of the largest: it is wet, and large enough never to be pushed below zero by rounding.
-    largest = len(shares) - 1 - shares[::-1].argmax(axis=0)
-    each = np.arange(len(totals))
-    parts[largest, each] += totals - parts.sum(axis=0)
-    return parts
 
 
 def _by_distance(

@@ -13,7 +13,7 @@ from hypothesis.extra import numpy as stn
 
 from basinrain.gauges import GaugeNetwork
 from basinrain.rainfall import KnownTotal, RainRecord, Status
-from basinrain.spreading import pattern_shares, share_out, spread_totals
+from basinrain.spreading import share_out, spread_totals
 
 DAY = np.timedelta64(86400, "s")
 ENDS = np.datetime64("2031-05-04T00:00:00") + np.arange(1, 4) * DAY
@@ -173,11 +173,6 @@ def test_no_totals() -> None:
     assert notes == ()
 
 
-def test_shares_without_donors() -> None:
-    """No donor leaves no pattern."""
-    assert pattern_shares(np.empty((3, 0)), np.empty(0)) is None
-
-
 @pytest.mark.parametrize(
     ("parts", "of", "mm", "last"),
     [
@@ -193,7 +188,7 @@ def test_what_rounding_leaves_goes_to_the_last_of_the_largest_steps(
     """The products of share and total miss the total by some bits; these go to one step, the rest are the products."""
     shares = np.array(parts) / of
     rounded = shares * mm
-    given = share_out(mm, shares)
+    given = share_out(np.array([mm]), shares[:, None])[:, 0]
     assert rounded.sum() != mm
     assert given.sum() == mm
     assert np.flatnonzero(given != rounded).tolist() == [last]
@@ -201,7 +196,8 @@ def test_what_rounding_leaves_goes_to_the_last_of_the_largest_steps(
 
 def test_shares_that_do_not_sum_to_one_keep_the_total() -> None:
     """Thirds with four digits leave 0.0001 of the total, which the last of the largest steps takes."""
-    np.testing.assert_allclose(share_out(90.0, np.full(3, 0.3333)), [29.997, 29.997, 30.006], rtol=1e-12)
+    parts = share_out(np.array([90.0]), np.full((3, 1), 0.3333))
+    np.testing.assert_allclose(parts.ravel(), [29.997, 29.997, 30.006], rtol=1e-12)
 
 
 DEPTHS = stn.arrays(
@@ -210,30 +206,12 @@ DEPTHS = stn.arrays(
 
 
 @settings(deadline=None)
-@given(DEPTHS, st.data())
-def test_shares_sum_to_one(depths: npt.NDArray[np.float64], data: st.DataObject) -> None:
-    """Shares are not negative and sum to 1 unless all donors are dry; only the weights' proportions count."""
-    n = depths.shape[1]
-    weights = np.array(data.draw(st.lists(st.floats(0.01, 10), min_size=n, max_size=n)))
-    shares = pattern_shares(depths, weights)
-    if shares is None:
-        assert not depths.any()
-        return
-    assert shares.sum() == pytest.approx(1, abs=1e-12)
-    assert (shares >= 0).all()
-    assert not shares[(depths == 0).all(axis=1)].any()
-    again = pattern_shares(depths, 1000 * weights)
-    assert again is not None
-    np.testing.assert_allclose(again, shares, rtol=1e-9, atol=1e-15)
-
-
-@settings(deadline=None)
 @given(DEPTHS, st.floats(0, 2000))
 def test_sharing_out_keeps_the_total(depths: npt.NDArray[np.float64], mm: float) -> None:
     """The parts sum to the total and none is negative."""
-    shares = pattern_shares(depths, np.ones(depths.shape[1]))
-    if shares is not None:
-        parts = share_out(mm, shares)
+    mixed = depths.sum(axis=1)
+    if mixed.any():
+        parts = share_out(np.array([mm]), (mixed / mixed.sum())[:, None])
         assert parts.sum() == pytest.approx(mm, rel=1e-12, abs=1e-12)
         assert (parts >= 0).all()
 
