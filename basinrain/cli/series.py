@@ -34,25 +34,33 @@ def show(run: SeriesRun) -> None:
     page = console()
     digits, mm = depth_decimals(run.depth_unit), depth_factor(run.depth_unit)
     zone = run.record.zone
+    means = run.series_means
+    # Without a year the depth of the record says more than a dash.
+    yearly = bool(means["mean_annual_of_steps"].notna().any())
     page.print(
         f"{len(run.starts):,} steps of {run.record.step}, {time_text(run.starts[0], zone)} to "
-        f"{time_text(run.ends[-1], zone)}: mean annual depth, {run.depth_unit}"
+        f"{time_text(run.ends[-1], zone)}: {'mean annual depth' if yearly else 'depth of the record'}, {run.depth_unit}"
     )
     table = Table(show_edge=False, pad_edge=False)
     for heading in ("basin", "method", "gaps"):
         table.add_column(heading, no_wrap=True)
-    for heading in ("of years", "years", "of steps", "differs %", "observed %", "missing"):
+    for heading in (
+        *(("of years", "years", "of steps") if yearly else ("depth",)),
+        "differs %",
+        "observed %",
+        "missing",
+    ):
         table.add_column(heading, justify="right")
-    shown = set(run.basins.ids[-1:] if len(run.series_means) > _ROWS else run.basins.ids)
-    for row in run.series_means.to_dict("records"):
+    shown = set(run.basins.ids[-1:] if len(means) > _ROWS else run.basins.ids)
+    for row in means.to_dict("records"):
         if row["basin"] in shown:
+            kinds = ("mean_annual", "mean_annual_of_steps") if yearly else ("depth",)
+            words = [number_text(row[kind], digits) for kind in kinds]
             table.add_row(
                 row["basin"],
                 row["method"],
                 row["gaps"],
-                number_text(row["mean_annual"], digits),
-                str(row["years"]),
-                number_text(row["mean_annual_of_steps"], digits),
+                *((words[0], str(row["years"]), words[1]) if yearly else words),
                 number_text(row["difference_percent"], 1),
                 number_text(100 * row["observed_share"], 0),
                 f"{row['steps_missing']:,}",

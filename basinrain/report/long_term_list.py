@@ -144,10 +144,7 @@ def _from_to(counts: list[int]) -> str:
 
 def _percents(run: SeriesRun, policy: str, method: str) -> Floats:
     """Return by how many per cent the mean depth of a step is above that by the first policy, shape (n_basins,)."""
-    one, other = run.summaries[run.setup.gaps[0], method].terms, run.summaries[policy, method].terms
-    with np.errstate(divide="ignore", invalid="ignore"):
-        percent = 100 * (other.total / other.seconds / (one.total / one.seconds) - 1)
-    return np.where(np.isfinite(percent), percent, np.nan)
+    return run.summaries[policy, method].terms.percent_above(run.summaries[run.setup.gaps[0], method].terms)
 
 
 def _listed_basins(run: SeriesRun) -> list[int]:

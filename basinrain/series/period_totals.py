@@ -34,6 +34,7 @@ WATER_YEAR: Final = 10
 """First month of the water year, unless another is asked for."""
 
 _YEAR_SECONDS: Final = 365.2425 * DAY
+_LEAST_SECONDS: Final = 365 * DAY
 _BLOCK: Final = 8192
 
 
@@ -210,8 +211,8 @@ class MeanAnnual:
         How many years these are.
     of_steps : array of float, as ``of_years``
         mm a year: the mean depth of all steps that have a number, by their time, scaled to a year of 365.2425 days. Its
-        seasons count by what there is of them, so it is no mean annual depth where gaps favour a season. NaN where no
-        step has a number.
+        seasons count by what there is of them, so it is no mean annual depth where gaps favour a season. NaN where
+        they last less than 365 days.
     share : array of float, as ``of_years``
         Share of the series' time that has a number, on which ``of_steps`` rests.
     """
@@ -264,7 +265,8 @@ def mean_annual(
     years = counts.sum(axis=0)
     with np.errstate(invalid="ignore"):
         of_years = np.sum(totals, axis=0, where=counts) / years
-        of_steps = present / time * _YEAR_SECONDS
+        # A few wet days are no year.
+        of_steps = np.where(time >= _LEAST_SECONDS, present / time * _YEAR_SECONDS, np.nan)
     return MeanAnnual(
         of_years=np.asarray(of_years),
         years=np.asarray(years),

@@ -67,7 +67,7 @@ def test_what_is_printed(tmp_path: Path) -> None:
     done = basinrain("series", job, "--set", "averaging.methods=thiessen", "--set", "storms.dry_gap=1h")
     assert (done.returncode, done.stderr) == (0, "")
     lines = done.stdout.splitlines()
-    assert lines[0] == "4 steps of 1h, 2031-05-04T00:00 to 2031-05-04T04:00: mean annual depth, mm"
+    assert lines[0] == "4 steps of 1h, 2031-05-04T00:00 to 2031-05-04T04:00: depth of the record, mm"
     assert lines[1].split("┃")[0].strip() == "basin"
     (union,) = [line for line in lines if line.startswith("union")]
     assert [cell.strip() for cell in union.split("│")][1:3] == ["thiessen", "infill-then-reweight"]

@@ -227,6 +227,14 @@ def test_mean_annual_from_years_and_from_steps() -> None:
     assert mean.share == 1
 
 
+@pytest.mark.parametrize(("n", "mean"), [(364, NAN), (365, 365.2425)])
+def test_less_than_a_year_has_no_mean_annual_depth(n: int, mean: float) -> None:
+    """What fell in 364 days is not scaled to a year."""
+    starts, ends = days("2031-01-01", "2032-01-01")
+    found = mean_annual(starts[:n], ends[:n], np.ones(n))
+    np.testing.assert_allclose(found.of_steps, mean)
+
+
 def test_mean_annual_of_basins_with_gaps() -> None:
     """A basin with half a year missing loses that year, one without any number has neither mean."""
     starts, ends = days("2031-01-01", "2033-01-01")
