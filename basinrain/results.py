@@ -122,10 +122,6 @@ class Run:
         ------
         WriteError
             It is a file, holds something that no earlier run wrote, or cannot be written.
-
-        See Also
-        --------
-        basinrain.writing.write_run : the same as a function.
         """
         from basinrain.writing import write_run
 

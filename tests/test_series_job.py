@@ -417,3 +417,16 @@ def test_too_little_memory_is_refused(tmp_path: Path) -> None:
     """Less than a GiB is less than the libraries and a chunk take."""
     with pytest.raises(JobError, match=r"\[series\] memory"):
         run_series(write_tiny(tmp_path), ["series.memory=0.4"])
+
+
+def test_parts_on_two_processes_are_the_same_bytes(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Workers read their parts of the files themselves, and give the bytes of a run here."""
+    job = write_tiny(tmp_path, rain=wandering(240), job=JOB + EDIT)
+    settings = ["infill.method=station-average", "infill.longest_gap=3"]
+    here = in_parts(monkeypatch, job, settings, gib=1)
+    there = in_parts(monkeypatch, job, [*settings, "series.on=processes", "series.workers=2"], gib=1)
+    assert len(here.store.borders) > 5
+    for series in here.setup.series:
+        assert here.store.depth(*series).tobytes() == there.store.depth(*series).tobytes()
+        assert here.store.observed_share(*series).tobytes() == there.store.observed_share(*series).tobytes()
+        assert here.store.flags(*series).tobytes() == there.store.flags(*series).tobytes()

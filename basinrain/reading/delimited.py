@@ -20,12 +20,12 @@ import numpy.typing as npt
 import pandas as pd
 
 from basinrain.errors import Problem, Problems, ReadError
+from basinrain.reading.decimal_signs import decimal_signs
 from basinrain.reading.files import read_bytes
 
 __all__ = [
     "DelimitedTable",
     "Header",
-    "decimal_signs",
     "decode_text",
     "has_spaces_at_cell_ends",
     "header_of",
@@ -385,23 +385,3 @@ def _check_names(columns: Sequence[str], frame: pd.DataFrame, problems: Problems
                 expected="a name for every column",
                 line=line,
             )
-
-
-def decimal_signs(text: str, separator: str) -> frozenset[str]:
-    r"""Return the signs, of comma and point, that stand in whole cells which are numbers with a decimal sign.
-
-    A comma is the file's decimal sign where no cell has a point.
-
-    Examples
-    --------
-    >>> sorted(decimal_signs("8:00;1,5\n9:00;0.5", ";")), sorted(decimal_signs("1,5", ","))
-    ([',', '.'], [])
-    """
-    if separator == ",":
-        return frozenset()
-
-    def has(sign: str) -> bool:
-        cell = rf'(?:^|{separator})[ "]*[+-]?[0-9]*{sign}[0-9]+(?:[eE][+-]?[0-9]+)?[ "]*(?:{separator}|$)'
-        return re.search(cell, text, re.MULTILINE) is not None
-
-    return frozenset(sign for sign, form in ((",", ","), (".", r"\.")) if has(form))

@@ -37,6 +37,7 @@ MARKED: Final[Mapping[str, Status]] = MappingProxyType(
 )
 """What a quality mark of a file can be declared to mean."""
 
+_MEND: Final = "correct the cell or its mark"
 _CODES: Final = frozenset({99.99, 999.0, 999.9, 999.99, 9999.0, 9999.9, 9999.99, 99999.0, 99999.9})
 _NEGATIVE_CODES: Final = frozenset({9.0, 9.9, 99.0, 99.9, 88.0, 888.0, 6999.0, 32768.0}) | _CODES
 
@@ -345,9 +346,8 @@ def number_depths(
 
     Returns
     -------
-    depth, status : arrays of the shape of ``values``
-        As of :meth:`DepthCells.column`.
-    faults : list of (flat position, Fault)
+    depth, status, faults
+        As of :meth:`DepthCells.column`, in the shape of ``values``; faults by flat position.
 
     Examples
     --------
@@ -361,7 +361,7 @@ def number_depths(
     status = (depth == 0).astype(np.uint8)  # ZERO, else OBSERVED
     blank = np.isnan(depth)
     status[blank] = Status.MISSING
-    # Whatever may be no plain depth is judged by its text; a comparison is much cheaper than a membership.
+    # What may be no plain depth is judged by its text; comparing is much cheaper than membership.
     doubtful = (depth < 0) | np.isinf(depth)
     likely = np.flatnonzero(values >= min(_CODES))
     if len(likely):
@@ -387,12 +387,10 @@ def _marked(text: str, mark: str, meaning: Status, depth: float) -> _Cell:
     blank = np.isnan(depth)
     if meaning in {Status.TRACE, Status.PRESUMED_ZERO}:
         if depth > 0:
-            return _fault(
-                f"'{text}' marked '{mark}', {meaning.label}", "no depth, or 0", "correct the cell or its mark"
-            )
+            return _fault(f"'{text}' marked '{mark}', {meaning.label}", "no depth, or 0", _MEND)
         return _Cell(0.0, meaning)
     if blank and meaning is Status.ACCUMULATED:
-        return _fault(f"a blank cell marked '{mark}'", "the accumulated depth", "correct the cell or its mark")
+        return _fault(f"a blank cell marked '{mark}'", "the accumulated depth", _MEND)
     if blank:
         return _MISSING
     if meaning is Status.OBSERVED and depth == 0:

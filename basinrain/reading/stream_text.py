@@ -12,10 +12,10 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import Problem, ReadError
+from basinrain.reading.decimal_signs import decimal_signs
 from basinrain.reading.delimited import (
     DelimitedTable,
     Header,
-    decimal_signs,
     decode_text,
     has_spaces_at_cell_ends,
     header_of,
