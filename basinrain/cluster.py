@@ -49,6 +49,8 @@ _SETTINGS: Final = {
     # A worker that computes for minutes without a break is not ill.
     "distributed.admin.tick.limit": "1h",
     "distributed.comm.timeouts.connect": f"{REACH_SECONDS}s",
+    # A worker process says nothing from its very start, before it is told how loud to be.
+    "distributed.nanny.pre-spawn-environ.DASK_LOGGING__DISTRIBUTED": "critical",
     "distributed.scheduler.http.routes": [],
     "distributed.worker.http.routes": [],
 }
