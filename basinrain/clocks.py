@@ -13,7 +13,23 @@ import numpy.typing as npt
 
 from basinrain.errors import DataError, JobError, Problem, Problems, nearest_name
 
-__all__ = ["clock_name", "clock_seconds", "one_clock", "parse_zone", "standard_offset"]
+__all__ = ["MONTHS", "clock_name", "clock_seconds", "one_clock", "parse_zone", "standard_offset"]
+
+MONTHS: Final = (
+    "January",
+    "February",
+    "March",
+    "April",
+    "May",
+    "June",
+    "July",
+    "August",
+    "September",
+    "October",
+    "November",
+    "December",
+)
+"""In English whatever the locale is."""
 
 _OFFSET: Final = re.compile(r"(?P<sign>[+-])(?P<hours>[01][0-9]):?(?P<minutes>[0-5][0-9])")
 

@@ -40,7 +40,6 @@ MARKED: Final[Mapping[str, Status]] = MappingProxyType(
 _MEND: Final = "correct the cell or its mark"
 _CODES: Final = frozenset({99.99, 999.0, 999.9, 999.99, 9999.0, 9999.9, 9999.99, 99999.0, 99999.9})
 _NEGATIVE_CODES: Final = frozenset({9.0, 9.9, 99.0, 99.9, 88.0, 888.0, 6999.0, 32768.0}) | _CODES
-
 _EXPECTED: Final = "a depth of 0 or more"
 
 
@@ -359,8 +358,7 @@ def number_depths(
     """
     depth = np.asarray(values, dtype=np.float64) * rules.factor
     status = (depth == 0).astype(np.uint8)  # ZERO, else OBSERVED
-    blank = np.isnan(depth)
-    status[blank] = Status.MISSING
+    status[np.isnan(depth)] = Status.MISSING
     # What may be no plain depth is judged by its text; comparing is much cheaper than membership.
     doubtful = (depth < 0) | np.isinf(depth)
     likely = np.flatnonzero(values >= min(_CODES))

@@ -8,6 +8,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.basins import UNION
+from basinrain.clocks import MONTHS
 from basinrain.report import limits, series_names
 from basinrain.report.table import Row, Table
 from basinrain.report.words import DASH, NARROW_SPACE, counted, depth_text, number_text, percent_text, unit_word
@@ -17,7 +18,6 @@ from basinrain.units import depth_factor
 
 __all__ = [
     "GAUGES",
-    "MONTHS",
     "has_years",
     "left_out_sentence",
     "left_out_table",
@@ -29,21 +29,6 @@ __all__ = [
 
 GAUGES: Final = 20
 """Gauges left out in turn that are shown."""
-
-MONTHS: Final = (
-    "January",
-    "February",
-    "March",
-    "April",
-    "May",
-    "June",
-    "July",
-    "August",
-    "September",
-    "October",
-    "November",
-    "December",
-)
 
 _YEAR: Final = np.timedelta64(365, "D")
 

@@ -6,8 +6,9 @@ from typing import Final
 
 import numpy as np
 
+from basinrain.clocks import MONTHS
 from basinrain.report import series_names
-from basinrain.report.long_term_list import MONTHS, year_rule
+from basinrain.report.long_term_list import year_rule
 from basinrain.report.table import Row, Table
 from basinrain.report.words import DASH, depth_decimals, depth_text, number_text, percent_text, unit_word
 from basinrain.results_series import SeriesRun

@@ -7,6 +7,7 @@ from typing import Final
 
 import numpy as np
 
+from basinrain.clocks import MONTHS
 from basinrain.screening.annual import COMPLETE, calendar_years
 from basinrain.screening.findings import Finding
 from basinrain.screening.screened import DAY, Screened
@@ -28,22 +29,6 @@ _ADVICE: Final = (
     "Say that normals from this record are of a period of its own.",
     f"Say that normals from this record are of a period of its own; where years are under {LEAST_YEARS}, give others.",
     "Give normals from elsewhere, or use a method without normals.",
-)
-
-_MONTHS: Final = (
-    "",
-    "January",
-    "February",
-    "March",
-    "April",
-    "May",
-    "June",
-    "July",
-    "August",
-    "September",
-    "October",
-    "November",
-    "December",
 )
 
 
@@ -95,7 +80,7 @@ def short_records(view: Screened) -> Iterator[Finding]:
 def cold_seasons(view: Screened) -> Iterator[Finding]:
     """Yield gauges without heating that have values in cold months."""
     cold = np.isin(view.months, view.options.cold_months)
-    names = ", ".join(_MONTHS[month] for month in sorted(view.options.cold_months))
+    names = ", ".join(MONTHS[month - 1] for month in sorted(view.options.cold_months))
     for gauge in view.options.unheated:
         if gauge not in view.network.ids:
             continue
