@@ -11,7 +11,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain import tables_series
-from basinrain.results import Run
+from basinrain.results_common import GaugedRun
 from basinrain.series.engine import SeriesSetup
 from basinrain.series.found_storms import FoundStorms
 from basinrain.series.long_term import LeftOut
@@ -29,7 +29,7 @@ Times = npt.NDArray[np.datetime64]
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
-class SeriesRun(Run):
+class SeriesRun(GaugedRun):
     """The whole record averaged over the basins, with the tables that go to files, reports and notebooks.
 
     They are :attr:`series_means`, :attr:`left_out_means`, :attr:`network_changes`, :attr:`period_totals`,
@@ -56,7 +56,7 @@ class SeriesRun(Run):
         When the network changed.
     name, settings, depth_unit, area_unit, network, basins, plane, record, screening, edits, edit_rows, notes, inputs, \
 versions, facts
-        As for :class:`~basinrain.results.Run`.
+        As for :class:`~basinrain.results_common.GaugedRun`.
 
     Examples
     --------

@@ -77,7 +77,7 @@ def run_series(
     Returns
     -------
     SeriesRun
-        Nothing has been written but into ``work``; see :meth:`~basinrain.results.Run.write`.
+        Nothing has been written but into ``work``; see :meth:`~basinrain.results_common.Run.write`.
 
     Raises
     ------

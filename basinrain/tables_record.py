@@ -16,7 +16,8 @@ from basinrain.units import depth_factor
 if TYPE_CHECKING:
     import pandas as pd
 
-    from basinrain.results import Run, ScreenRun
+    from basinrain.results import ScreenRun
+    from basinrain.results_common import GaugedRun
 
 __all__ = ["completeness", "double_mass", "edit_table", "findings", "homogeneity"]
 
@@ -31,7 +32,7 @@ _HOMOGENEITY = (
 )
 
 
-def findings(run: Run) -> pd.DataFrame:
+def findings(run: GaugedRun) -> pd.DataFrame:
     """Return ``findings``: one row per finding; times are blank where it concerns the whole record."""
     import pandas as pd
 
@@ -87,7 +88,7 @@ def completeness(run: ScreenRun) -> pd.DataFrame:
     return pd.DataFrame(rows, columns=columns)
 
 
-def edit_table(run: Run) -> pd.DataFrame:
+def edit_table(run: GaugedRun) -> pd.DataFrame:
     """Return ``edits``: one row per edit and what it did; a depth to set, and the sums, are in the job's unit.
 
     ``depth_before`` and ``depth_after`` are the sums of the depths acted on, NaN where nothing is known.

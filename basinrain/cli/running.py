@@ -13,7 +13,7 @@ from rich.console import Console
 from basinrain.cli.progress import Progress
 from basinrain.jobfile import read_job
 from basinrain.notes import Note
-from basinrain.results import Run
+from basinrain.results_common import Run
 from basinrain.results_series import SeriesRun
 from basinrain.writing import check_folder, record_text, write_run
 from basinrain.writing.folder import RECORD

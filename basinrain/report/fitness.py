@@ -9,7 +9,7 @@ from basinrain.report.edit_list import edit_table
 from basinrain.report.findings_list import check_counts, settled_table
 from basinrain.report.table import Table
 from basinrain.report.words import counted, zone_text
-from basinrain.results import Run
+from basinrain.results_common import GaugedRun
 from basinrain.results_series import SeriesRun
 
 __all__ = ["Fitness", "fitness"]
@@ -28,7 +28,7 @@ class Fitness:
     tables: tuple[Table, ...]
 
 
-def fitness(run: Run) -> Fitness:
+def fitness(run: GaugedRun) -> Fitness:
     """Return what screening found in a run's record and what the job says of it, with the whole edit log.
 
     Parameters

@@ -13,7 +13,8 @@ from basinrain.basins import UNION
 from basinrain.notes import Note
 from basinrain.report.table import Table
 from basinrain.report.words import area_text, counted, step_text, unit_text, unit_word, when_text, zone_text
-from basinrain.results import Run, StormRun
+from basinrain.results import StormRun
+from basinrain.results_common import GaugedRun, Run
 from basinrain.storms import MEAN, NEAREST_RECORDER
 from basinrain.units import area_factor, volume_unit_for
 
@@ -89,7 +90,7 @@ def what_was_asked(run: StormRun) -> list[tuple[str, str]]:
     return lines
 
 
-def where_asked(run: Run) -> list[tuple[str, str]]:
+def where_asked(run: GaugedRun) -> list[tuple[str, str]]:
     """Return basins and gauges in two lines, each a name and a text."""
     basins = [b for b, basin in enumerate(run.basins.ids) if basin != UNION]
     union = (

@@ -8,7 +8,8 @@ from basinrain.report.fitness import fitness
 from basinrain.report.map_figure import map_pictures
 from basinrain.report.rendering import render_template
 from basinrain.report.weights_figure import weights_pictures
-from basinrain.results import CAUTION, StormRun
+from basinrain.results import StormRun
+from basinrain.results_common import CAUTION
 
 __all__ = ["render_report"]
 

@@ -13,7 +13,8 @@ from markupsafe import Markup
 from basinrain.ground import LOCAL
 from basinrain.report.table import Table
 from basinrain.report.words import NARROW_SPACE
-from basinrain.results import Run, StormRun
+from basinrain.results import StormRun
+from basinrain.results_common import GaugedRun, Run
 
 __all__ = [
     "Formula",
@@ -165,6 +166,17 @@ def ground_facts(run: Run) -> list[tuple[str, str]]:
         for name, text in run.facts.items()
         if name not in ("normals", "catch")
     ]
+    if isinstance(run, GaugedRun):
+        lines += _gauge_facts(run)
+    if not np.isnan(run.basins.official_areas).all():
+        worst = 100 * np.nanmax(np.abs(run.basins.areas / run.basins.official_areas - 1))
+        most = f"{worst:{'.0f' if worst >= 10 else '.2g'}}{NARROW_SPACE}%"
+        lines.append(("Areas", f"Polygon areas differ from those that the register states by at most {most}."))
+    return lines
+
+
+def _gauge_facts(run: GaugedRun) -> list[tuple[str, str]]:
+    lines = []
     if run.network.normals is not None:
         kind = "of the months" if run.network.normals.shape[1] == 12 else "of the year"
         period = run.network.normal_period or "period not stated"
@@ -172,10 +184,6 @@ def ground_facts(run: Run) -> list[tuple[str, str]]:
     factors = run.settings.get("gauges", {}).get("catch_factor") or {}
     text = ", ".join(f"{gauge} {_value(factor)}" for gauge, factor in factors.items())
     lines.append(("Gauge catch", f"Depths were multiplied by these factors: {text}." if text else "Not corrected."))
-    if not np.isnan(run.basins.official_areas).all():
-        worst = 100 * np.nanmax(np.abs(run.basins.areas / run.basins.official_areas - 1))
-        most = f"{worst:{'.0f' if worst >= 10 else '.2g'}}{NARROW_SPACE}%"
-        lines.append(("Areas", f"Polygon areas differ from those that the register states by at most {most}."))
     return lines
 
 

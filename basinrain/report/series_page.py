@@ -20,7 +20,7 @@ from basinrain.report.left_out_figure import left_out_picture
 from basinrain.report.network_figure import network_picture
 from basinrain.report.rendering import render_template
 from basinrain.report.years_figure import years_picture
-from basinrain.results import CAUTION
+from basinrain.results_common import CAUTION
 from basinrain.results_series import SeriesRun
 
 __all__ = ["render_series"]

@@ -6,7 +6,8 @@ import json
 import math
 from typing import TYPE_CHECKING, Any
 
-from basinrain.results import CAUTION, InfillRun, Run, ScreenRun, StormRun
+from basinrain.results import InfillRun, ScreenRun, StormRun
+from basinrain.results_common import CAUTION, GaugedRun, Run
 from basinrain.results_series import SeriesRun
 
 if TYPE_CHECKING:
@@ -57,7 +58,9 @@ def run_tables(run: Run) -> dict[str, pd.DataFrame]:
             "greatest_depths": run.greatest_depths,
             "storms_found": run.storms_found,
         }
-    return {**own, "findings": run.findings, "edits": run.edit_table}
+    if isinstance(run, GaugedRun):
+        own |= {"findings": run.findings, "edits": run.edit_table}
+    return own
 
 
 def long_tables(run: Run) -> dict[str, pd.DataFrame]:
@@ -91,13 +94,19 @@ def run_record(run: Run, files: list[str]) -> dict[str, Any]:
         "inputs": {name: {"sha256": digest} for name, digest in run.inputs.items()},
         "files": files,
         "plane": {"name": run.plane.name, "crs": run.plane.crs, "largest_distortion": run.plane.distortion},
-        "clock": run.record.zone or "as in the files",
-        "step": run.record.step,
-        "checks": {"run": list(run.screening.checks_run), "skipped": dict(run.screening.checks_skipped)},
+        **(_of_record(run) if isinstance(run, GaugedRun) else {}),
         "facts": dict(run.facts),
         "warnings": [_note(note) for note in run.notes if note.level == "warning"],
         "remarks": [_note(note) for note in run.notes if note.level == "info"],
         "results": {name: _rows(frame) for name, frame in run_tables(run).items()},
+    }
+
+
+def _of_record(run: GaugedRun) -> dict[str, Any]:
+    return {
+        "clock": run.record.zone or "as in the files",
+        "step": run.record.step,
+        "checks": {"run": list(run.screening.checks_run), "skipped": dict(run.screening.checks_skipped)},
     }
 
 

@@ -8,7 +8,8 @@ from typing import cast
 
 from basinrain.ground import LOCAL
 from basinrain.report import render_comparison, render_report, render_screening, render_series
-from basinrain.results import CAUTION, InfillRun, Run, ScreenRun, StormRun
+from basinrain.results import InfillRun, ScreenRun, StormRun
+from basinrain.results_common import CAUTION, Run
 from basinrain.results_series import SeriesRun
 from basinrain.writing.folder import RECORD, whole_folder
 from basinrain.writing.record import long_tables, record_text, run_tables

@@ -17,7 +17,8 @@ from basinrain.basins import Basins
 from basinrain.ground import Plane, equal_area_plane
 from basinrain.notes import Note
 from basinrain.report import render_report
-from basinrain.results import CAUTION, StormRun
+from basinrain.results import StormRun
+from basinrain.results_common import CAUTION
 
 SCRIPT = "<script>alert(1)</script>"
 NASTY = (f"A{SCRIPT}", 'R&D "x"', "$a_b$", "雨<b>", "</style></svg>", "_F' onload='x")

@@ -11,7 +11,7 @@ from report.series_run import four_days, four_years, make_series_run, read_by_ch
 
 from basinrain.notes import Note
 from basinrain.report import render_series
-from basinrain.results import CAUTION
+from basinrain.results_common import CAUTION
 
 SCRIPT = "<script>alert(1)</script>"
 

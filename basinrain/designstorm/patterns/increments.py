@@ -1,0 +1,250 @@
+"""Depths of the steps of a storm, from depths that add up in time or with duration."""
+
+from __future__ import annotations
+
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+from scipy.optimize import isotonic_regression
+
+from basinrain.errors import MethodError, Problem, Problems
+from basinrain.intervals import interval_of
+
+__all__ = ["check_step", "falling_increments", "increments_of", "span_in_words"]
+
+Floats = npt.NDArray[np.float64]
+
+# Differences below this share of the whole depth are rounding and no finding.
+_ROUNDING: Final = 1e-9
+
+
+def check_step(minutes: int, step: int) -> None:
+    """Make sure that a duration is a whole number of steps, one at least.
+
+    Parameters
+    ----------
+    minutes, step
+        The duration and the step, minutes.
+
+    Raises
+    ------
+    MethodError
+        It is not.
+
+    Examples
+    --------
+    >>> check_step(120, 10)
+    >>> check_step(25, 10)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: [design] step: found 10min for a duration of 25min; expected a step that divides the \
+duration; a step of 5min does
+    >>> check_step(10, 60)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: [design] step: found 1h for a duration of 10min; expected a step no longer than the \
+duration; a step of 10min is
+    """
+    if minutes > 0 and step > 0 and minutes % step == 0:
+        return
+    if minutes <= 0 or step <= 0:
+        problem = Problem(
+            item="[design] step",
+            found=f"{step} min for a duration of {minutes} min",
+            expected="minutes above 0",
+            remedy="correct it",
+        )
+    else:
+        divides = int(np.gcd(minutes, step))
+        short = minutes < step
+        problem = Problem(
+            item="[design] step",
+            found=f"{interval_of(step * 60).label} for a duration of {interval_of(minutes * 60).label}",
+            expected="a step no longer than the duration" if short else "a step that divides the duration",
+            remedy=f"a step of {interval_of(divides * 60).label} {'is' if short else 'does'}",
+        )
+    raise MethodError(problem)
+
+
+def increments_of(cumulative: Floats, total: float) -> Floats:
+    """Return the depths of steps whose cumulative shape is known at their borders.
+
+    Parameters
+    ----------
+    cumulative : array of float, shape (n_steps + 1,)
+        What has fallen by every border of a step, the begin and the end of the storm included, in any unit.
+    total
+        The depth of the storm, mm.
+
+    Returns
+    -------
+    array of float, shape (n_steps,)
+        mm; sums to ``total``. None is negative.
+
+    Raises
+    ------
+    MethodError
+        It falls somewhere by more than rounding, does not rise from first to last, or holds what is no number.
+
+    Examples
+    --------
+    >>> increments_of(np.array([0.0, 0.1, 0.9, 1.0]), 50.0)
+    array([ 5., 40.,  5.])
+    >>> increments_of(np.array([2.0, 2.0]), 50.0)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: cumulative depth: found none between the begin and the end; expected a depth that \
+rises; check the pattern
+    """
+    rise = cumulative[-1] - cumulative[0]
+    steps = np.diff(cumulative)
+    found = ""
+    if not np.isfinite(cumulative).all():
+        found = f"no number at border {int(np.argmin(np.isfinite(cumulative)))} of a step"
+    elif rise <= 0:
+        found = "none between the begin and the end"
+    elif steps.min() < -_ROUNDING * rise:
+        found = f"a fall in step {int(np.argmin(steps)) + 1} of {len(steps)}"
+    if found:
+        raise MethodError(
+            Problem(item="cumulative depth", found=found, expected="a depth that rises", remedy="check the pattern")
+        )
+    shares = np.maximum(steps, 0.0)
+    return shares * (total / shares.sum())
+
+
+def falling_increments(depth: Floats, step: int, *, shape: str, smooth: bool = False) -> tuple[Floats, tuple[str, ...]]:
+    """Return what every further step adds to the depth, from the first on, never rising.
+
+    Parameters
+    ----------
+    depth : array of float, shape (n_steps,)
+        Depths in mm of 1, 2, ... n steps.
+    step
+        Minutes.
+    shape
+        The pattern that needs them, for the message.
+    smooth
+        Whether increments that rise may be evened out.
+
+    Returns
+    -------
+    array of float, shape (n_steps,)
+        mm; they fall or stay the same, are not negative, and sum to the last depth.
+    tuple of str
+        What was evened out, and the greatest change that this makes to the depth of any duration.
+
+    Raises
+    ------
+    MethodError
+        The depth falls with duration, or what a step adds rises with duration; all places together. With ``smooth``
+        only where a fall remains after evening out.
+
+    Notes
+    -----
+    A depth by duration that is to be laid out around one peak has to be concave, that is, its increments must not rise.
+    Evening out is the isotonic regression by pooling adjacent violators (Barlow, R. E., Bartholomew, D. J., Bremner,
+    J. M. and Brunk, H. D., 1972: Statistical Inference under Order Restrictions): increments that rise are replaced by
+    their mean. The depths that result are the least concave ones that nowhere lie below those given: they only ever
+    become greater, and the last stays as it is. Differences under 1e-9 of the depth are rounding.
+
+    Examples
+    --------
+    >>> falling_increments(np.array([50.0, 55.0, 66.0, 73.0]), 60, shape="nested")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: shape "nested": found a depth per step that rises with duration, from 5 mm in 1 to \
+2 h to 11 mm in 2 to 3 h; expected one that never rises with duration; check the depths and areal reductions of these \
+durations, or even them out with smooth = true
+    >>> falling_increments(np.array([50.0, 55.0, 66.0, 73.0]), 60, shape="nested", smooth=True)
+    (array([50.,  8.,  8.,  7.]), ('What a step adds to the depth rose with duration and was evened out over 1 to 3 h: \
+the depth of 2 h is 3 mm greater, the largest change; the total is kept.',))
+    """
+    tolerance = _ROUNDING * float(np.abs(depth).max())
+    raw = np.diff(depth, prepend=0.0)
+    rises, falls = np.diff(raw) > tolerance, raw < -tolerance
+    if not (rises.any() or falls.any()):
+        return _settled(raw, depth[-1]), ()
+    problems = Problems()
+    if not smooth:
+        _add_rises(problems, raw, rises, step, shape=shape)
+        _add_falls(problems, depth, falls, step, shape=shape)
+        problems.raise_as(MethodError)
+    fitted = isotonic_regression(raw, increasing=False)
+    even = np.asarray(fitted.x, dtype=np.float64)
+    left = even < -tolerance
+    _add_falls(problems, np.cumsum(even), left, step, shape=shape)
+    problems.raise_as(MethodError)
+    change = np.cumsum(even) - depth
+    borders = np.asarray(fitted.blocks, dtype=np.int64)
+    spans = [
+        span_in_words(int(first) * step, int(last) * step)
+        for first, last in zip(borders[:-1], borders[1:], strict=True)
+        if np.abs(change[first:last]).max() > tolerance
+    ]
+    largest = int(np.argmax(change))
+    return _settled(even, depth[-1]), (
+        f"What a step adds to the depth rose with duration and was evened out over {', '.join(spans)}: the depth of "
+        f"{span_in_words((largest + 1) * step)} is {change[largest]:.3g} mm greater, the largest change; the total is "
+        "kept.",
+    )
+
+
+def span_in_words(start: float, end: float | None = None) -> str:
+    """Return minutes, or minutes to minutes, in words: hours where they are whole.
+
+    Examples
+    --------
+    >>> span_in_words(120, 180), span_in_words(60, 90), span_in_words(0, 60), span_in_words(1440), span_in_words(7.5)
+    ('2 to 3 h', '60 to 90 min', '0 to 1 h', '24 h', '7.5 min')
+    """
+    ends = [start] if end is None else [start, end]
+    hours = all(minutes % 60 == 0 for minutes in ends)
+    return " to ".join(f"{minutes / 60 if hours else minutes:.6g}" for minutes in ends) + (" h" if hours else " min")
+
+
+def _settled(increments: Floats, total: float) -> Floats:
+    """Without what rounding left: in order, not negative, with the exact sum."""
+    ordered = np.sort(np.maximum(increments, 0.0))[::-1]
+    return ordered * (total / ordered.sum())
+
+
+def _add_rises(problems: Problems, raw: Floats, rises: npt.NDArray[np.bool_], step: int, *, shape: str) -> None:
+    for first, last in _runs(rises):
+        less, more = _told_apart(raw[first], raw[last])
+        problems.add(
+            item=f'shape "{shape}"',
+            found=f"a depth per step that rises with duration, from {less} mm in "
+            f"{span_in_words(first * step, (first + 1) * step)} to {more} mm in "
+            f"{span_in_words(last * step, (last + 1) * step)}",
+            expected="one that never rises with duration",
+            remedy="check the depths and areal reductions of these durations, or even them out with smooth = true",
+        )
+
+
+def _add_falls(problems: Problems, depth: Floats, falls: npt.NDArray[np.bool_], step: int, *, shape: str) -> None:
+    reached = np.concatenate([[0.0], depth])
+    for first, last in _runs(falls):
+        more, less = _told_apart(reached[first], reached[last])
+        problems.add(
+            item=f'shape "{shape}"',
+            found=f"a depth that falls with duration, from {more} mm in {span_in_words(first * step)} to {less} mm in "
+            f"{span_in_words(last * step)}",
+            expected="one that never falls with duration",
+            remedy="check the depths and areal reductions of these durations",
+        )
+
+
+def _runs(marked: npt.NDArray[np.bool_]) -> list[tuple[int, int]]:
+    """First and one past the last of every run of marks."""
+    edges = np.diff(np.concatenate([[0], marked.astype(np.int8), [0]]))
+    return [(int(a), int(b)) for a, b in zip(np.flatnonzero(edges == 1), np.flatnonzero(edges == -1), strict=True)]
+
+
+def _told_apart(one: float, other: float) -> tuple[str, str]:
+    """Two numbers in as few digits as show that they differ, four at least."""
+    return next(
+        (words for words in ((f"{one:.{n}g}", f"{other:.{n}g}") for n in range(4, 17)) if words[0] != words[1]),
+        (f"{one:.17g}", f"{other:.17g}"),
+    )

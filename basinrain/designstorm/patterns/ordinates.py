@@ -1,0 +1,143 @@
+"""The dimensionless cumulative curve of a pattern, and the increments that it gives."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cache
+from importlib.resources import files
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.designstorm.patterns.increments import check_step, increments_of
+from basinrain.designstorm.patterns.pattern import PatternCase
+from basinrain.errors import DataError, Problems
+
+__all__ = ["Ordinates", "increments_by", "published_ordinates"]
+
+Floats = npt.NDArray[np.float64]
+
+_ITEM = "ordinates of a temporal pattern"
+
+
+@dataclass(frozen=True, eq=False)
+class Ordinates:
+    """A cumulative curve: what share of the depth has fallen after what share of the duration.
+
+    Parameters
+    ----------
+    time : array of float, shape (n,)
+        Shares of the duration, from 0 to 1, rising. Copied, and not to be written to.
+    share : array of float, shape (n,)
+        Shares of the total depth, from 0 to 1, nowhere falling. Copied, and not to be written to.
+
+    Raises
+    ------
+    DataError
+        It is no such curve; everything that is wrong with it together, NaN and infinite numbers included.
+
+    Examples
+    --------
+    Two thirds of the depth in the first half; between ordinates the curve is straight.
+
+    >>> curve = Ordinates(time=[0.0, 0.5, 1.0], share=[0.0, 0.6, 1.0])
+    >>> curve.at(np.array([0.25, 0.5, 0.75])).round(3)
+    array([0.3, 0.6, 0.8])
+    >>> Ordinates(time=[0, 50, 100], share=[0, 60, 100])
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.DataError: ordinates of a temporal pattern: found times that end at 100; expected 1; declare \
+percent = true
+    ordinates of a temporal pattern: found shares that end at 100; expected 1; declare percent = true
+    """
+
+    time: Floats
+    share: Floats
+
+    def __post_init__(self) -> None:
+        for name in ("time", "share"):
+            values = np.array(getattr(self, name), dtype=np.float64)
+            values.setflags(write=False)
+            object.__setattr__(self, name, values)
+        self._problems().raise_as(DataError)
+
+    def _problems(self) -> Problems:
+        problems = Problems()
+        if self.time.ndim != 1 or self.time.shape != self.share.shape:
+            problems.add(
+                item=_ITEM,
+                found=f"times of shape {self.time.shape} and shares of shape {self.share.shape}",
+                expected="two columns of one length",
+            )
+            return problems
+        if len(self.time) < 2:
+            problems.add(item=_ITEM, found=f"{len(self.time)} row(s)", expected="two at least, the first 0, 0 and the last 1, 1")
+            return problems
+        for words, values in (("time", self.time), ("share", self.share)):
+            for row in np.flatnonzero(~np.isfinite(values)):
+                problems.add(item=f"{_ITEM}, row {row + 1}", found=f"{words} {values[row]:g}", expected="a number from 0 to 1")
+            if values[0] != 0 and np.isfinite(values[0]):
+                problems.add(item=_ITEM, found=f"{words}s that begin at {values[0]:g}", expected="0", remedy="add the row 0, 0")
+            if values[-1] != 1 and np.isfinite(values[-1]):
+                problems.add(
+                    item=_ITEM,
+                    found=f"{words}s that end at {values[-1]:g}",
+                    expected="1",
+                    remedy="declare percent = true" if values[-1] == 100 else f"divide the {words}s by their last",
+                )
+        with np.errstate(invalid="ignore"):
+            stuck, fallen = np.diff(self.time) <= 0, np.diff(self.share) < 0
+        for row in np.flatnonzero(stuck):
+            problems.add(
+                item=f"{_ITEM}, row {row + 2}",
+                found=f"time {self.time[row + 1]:g} after {self.time[row]:g}",
+                expected="a later one",
+            )
+        for row in np.flatnonzero(fallen):
+            problems.add(
+                item=f"{_ITEM}, row {row + 2}",
+                found=f"share {self.share[row + 1]:g} after {self.share[row]:g}",
+                expected="none smaller, since the shares are cumulative",
+            )
+        return problems
+
+    def at(self, time: Floats) -> Floats:
+        """Return the shares of the depth, as ``time``, that have fallen after shares of the duration from 0 to 1.
+
+        Linear between ordinates.
+        """
+        return np.asarray(np.interp(time, self.time, self.share), dtype=np.float64)
+
+
+def increments_by(ordinates: Ordinates, case: PatternCase) -> Floats:
+    """Return the depth of every step, mm, shape (n_steps,), when a case's total falls by a curve.
+
+    Raises
+    ------
+    MethodError
+        The step does not divide the duration.
+    """
+    check_step(case.minutes, case.step)
+    return increments_of(ordinates.at(np.arange(case.n_steps + 1) / case.n_steps), case.total)
+
+
+@cache
+def published_ordinates(table: str, column: str) -> Ordinates:
+    """Return one column of a table that the package holds, scaled by its last row.
+
+    Parameters
+    ----------
+    table
+        Name of the table: ``"nrcs_6min"``, ``"nrcs_30min"``, ``"huff_point"`` or ``"huff_area"``.
+    column
+        Name of the column of shares; times are in the first one.
+
+    Examples
+    --------
+    >>> published_ordinates("huff_point", "Q1").at(np.array([0.25, 0.5, 0.75]))
+    array([0.6 , 0.82, 0.92])
+    """
+    text = (files(__package__) / "data" / f"{table}.csv").read_text(encoding="ascii")
+    head, *rows = (line.split(",") for line in text.split())
+    values = np.array(rows, dtype=np.float64)
+    return Ordinates(values[:, 0] / values[-1, 0], values[:, head.index(column)] / values[-1, head.index(column)])
