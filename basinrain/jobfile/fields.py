@@ -5,18 +5,20 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Mapping
 from datetime import date, datetime, time
-from typing import Annotated
+from typing import Annotated, Any
 
 from pydantic import AfterValidator, BaseModel, BeforeValidator, ConfigDict, Field
 from pydantic_core import PydanticCustomError
 
-from basinrain.errors import nearest_name
+from basinrain.errors import JobError, nearest_name
+from basinrain.intervals import FORMS, parse_interval
 from basinrain.units import DEPTH_UNITS, LENGTH_UNITS
 
 __all__ = [
     "LEAVE_ONE_OUT",
     "Count",
     "DepthUnit",
+    "Duration",
     "LengthUnit",
     "Moment",
     "NameList",
@@ -26,6 +28,7 @@ __all__ = [
     "clock_time",
     "is_month",
     "names",
+    "once",
     "one_of",
 ]
 
@@ -96,10 +99,25 @@ def names(value: object) -> object:
     return [value] if isinstance(value, str) else value
 
 
+def once(values: tuple[Any, ...]) -> tuple[Any, ...]:
+    """Refuse a list that holds one value twice."""
+    if len(set(values)) < len(values):
+        raise PydanticCustomError("repeated", "{expected}", {"expected": "each of them once"})
+    return values
+
+
+def _interval(word: str) -> str:
+    try:
+        return parse_interval(word).label
+    except JobError:
+        raise PydanticCustomError("interval", "{expected}", {"expected": FORMS}) from None
+
+
 DepthUnit = Annotated[str, one_of(DEPTH_UNITS)]
 LengthUnit = Annotated[str, one_of(LENGTH_UNITS)]
 Moment = Annotated[str, BeforeValidator(_moment), AfterValidator(_iso)]
 NameList = Annotated[tuple[str, ...], BeforeValidator(names)]
+Duration = Annotated[str, AfterValidator(_interval)]
 Positive = Annotated[float, Field(gt=0)]
 Count = Annotated[int, Field(ge=1)]
 

@@ -10,11 +10,13 @@ from pydantic import BaseModel
 from pydantic_core import ErrorDetails
 
 from basinrain.errors import Problem, nearest_name
-from basinrain.jobfile.tables import Job
 
 __all__ = ["plainest", "problem_of"]
 
-_REPEATED = frozenset({"edit", "rainfall", "storm"})
+_REPEATED = frozenset({"edit", "rainfall", "storm", "design.point", "design.pattern", "design.depths.raster"})
+
+_WITHIN = frozenset({"design.depths", "design.uplift", "design.areal_reduction", "design.rarity", *_REPEATED})
+"""Tables within a table that have a heading of their own."""
 
 _MESSAGES: Mapping[str, tuple[str, str]] = {
     "string_type": ("text in quotes", "correct the value"),
@@ -51,15 +53,18 @@ def _place(details: ErrorDetails) -> list[str | int]:
     return [part for part in details["loc"] if isinstance(part, int) or not _internal(part)]
 
 
-def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
-    """Return one finding as a :class:`~basinrain.errors.Problem`, with the line where it stands in ``text``."""
+def problem_of(details: ErrorDetails, file: str, text: str, job: type[BaseModel]) -> Problem:
+    """Return one finding as a :class:`~basinrain.errors.Problem`, with the line where it stands in ``text``.
+
+    ``job`` is the model of the whole job that was checked.
+    """
     loc = _place(details)
     kind = details["type"]
     context = details.get("ctx", {})
     item, line = _item(loc), _line(loc, text)
     found = f"'{details['input']}'" if isinstance(details["input"], str) else f"{details['input']!r}"
     if kind == "extra_forbidden":
-        known = _keys_at(loc[:-1])
+        known = _keys_at(job, loc[:-1])
         return Problem(
             item=item,
             found="a key that is not known",
@@ -69,7 +74,8 @@ def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
             line=line,
         )
     if kind == "missing":
-        table = len(loc) == 1
+        head, number, rest = _split(loc)
+        table = not rest and number is None
         return Problem(
             item=item,
             found="no such table" if table else "no such key",
@@ -78,8 +84,8 @@ def problem_of(details: ErrorDetails, file: str, text: str) -> Problem:
             file=file,
             line=_line(loc[:-1], text),
         )
-    if kind == "too_short" and loc == ["rainfall"]:
-        return Problem(item="[[rainfall]]", found="no table", expected="at least one", remedy="add it", file=file)
+    if kind == "too_short" and loc[-1] in {"rainfall", "pattern"}:
+        return Problem(item=item, found="no table", expected="at least one", remedy="add it", file=file)
     if kind == "too_short":
         return Problem(
             item=item, found="an empty list", expected="at least one", remedy="name one", file=file, line=line
@@ -107,20 +113,25 @@ def _is_near(name: str, known: Sequence[str]) -> bool:
 def _item(loc: Sequence[str | int]) -> str:
     if not loc:
         return "job"
-    table = str(loc[0])
-    rest = list(loc[1:])
-    if table in _REPEATED:
-        number = f" no. {int(rest.pop(0)) + 1}" if rest and isinstance(rest[0], int) else ""
-        head = f"[[{table}]]{number}"
-    else:
-        head = f"[{table}]"
+    head, number, rest = _split(loc)
+    counted = "" if number is None else f" no. {number + 1}"
+    head = f"[[{head}]]{counted}" if head in _REPEATED else f"[{head}]"
     words = "".join(f" no. {part + 1}" if isinstance(part, int) else f".{part}" for part in rest)
     return f"{head} {words.removeprefix('.').strip()}".strip()
 
 
-def _keys_at(loc: Sequence[str | int]) -> list[str]:
+def _split(loc: Sequence[str | int]) -> tuple[str, int | None, list[str | int]]:
+    """Return the heading of the table that a location is in, its number where it repeats, and the rest."""
+    head, rest = str(loc[0]), list(loc[1:])
+    while rest and f"{head}.{rest[0]}" in _WITHIN:
+        head = f"{head}.{rest.pop(0)}"
+    number = rest.pop(0) if head in _REPEATED and rest and isinstance(rest[0], int) else None
+    return head, number if isinstance(number, int) else None, rest
+
+
+def _keys_at(job: type[BaseModel], loc: Sequence[str | int]) -> list[str]:
     """Return the keys that the model at a location accepts."""
-    model: type[BaseModel] = Job
+    model = job
     for part in loc:
         if isinstance(part, int):
             continue
@@ -145,9 +156,9 @@ def _line(loc: Sequence[str | int], text: str) -> int | None:
     """Return the line on which a key of a table stands, as far as plain TOML shows it."""
     if not text or not loc:
         return None
-    table = str(loc[0])
-    number = loc[1] if len(loc) > 1 and isinstance(loc[1], int) else 0
-    keys = [part for part in loc[1:] if isinstance(part, str)]
+    table, counted, rest = _split(loc)
+    number = counted or 0
+    keys = [part for part in rest if isinstance(part, str)]
     seen, here, header = -1, False, None
     for k, raw in enumerate(text.splitlines(), start=1):
         line = raw.strip()

@@ -7,15 +7,20 @@ import tomllib
 from collections.abc import Mapping, Sequence
 from itertools import pairwise
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from pydantic import ValidationError
 
 from basinrain.errors import JobError, Problem, ReadError, SettingError
 from basinrain.jobfile.problems import plainest, problem_of
-from basinrain.jobfile.tables import Job
+from basinrain.jobfile.tables import BasinsJob, DesignJob, Job
 
-__all__ = ["parse_job", "read_job"]
+__all__ = ["parse_design_job", "parse_job", "read_design_job", "read_job"]
+
+_OF_GAUGES = frozenset(Job.model_fields) - frozenset(DesignJob.model_fields)
+"""The tables that only a job with gauges has."""
+
+_J = TypeVar("_J", bound=BasinsJob)
 
 
 def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
@@ -45,6 +50,26 @@ def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
     SettingError
         One of ``settings`` cannot be placed.
     """
+    content, text = _content(path)
+    return parse_job(content, folder=Path(path).resolve().parent, settings=settings, file=str(path), text=text)
+
+
+def read_design_job(path: str | Path, settings: Sequence[str] = ()) -> Job | DesignJob:
+    """Read and check the file of a job of design storms, which may do without gauges.
+
+    Parameters, and what is raised, are those of :func:`read_job`.
+
+    Returns
+    -------
+    Job or DesignJob
+        As :func:`parse_design_job`.
+    """
+    content, text = _content(path)
+    return parse_design_job(content, folder=Path(path).resolve().parent, settings=settings, file=str(path), text=text)
+
+
+def _content(path: str | Path) -> tuple[dict[str, Any], str]:
+    """Return what a job file holds, as tables and as text."""
     place = Path(path)
     try:
         text = place.read_text(encoding="utf-8-sig")
@@ -54,10 +79,9 @@ def read_job(path: str | Path, settings: Sequence[str] = ()) -> Job:
             Problem(item="job file", found=found, expected="a TOML file", remedy="check the path", file=str(path))
         ) from None
     try:
-        content = tomllib.loads(text.replace("\r\n", "\n"))
+        return tomllib.loads(text.replace("\r\n", "\n")), text
     except tomllib.TOMLDecodeError as error:
         raise ReadError(_not_toml(str(error), text, str(path))) from None
-    return parse_job(content, folder=place.resolve().parent, settings=settings, file=str(path), text=text)
 
 
 def _not_toml(message: str, text: str, file: str) -> Problem:
@@ -129,17 +153,69 @@ area_unit, output, plane; did you mean 'depth_unit'?
     [gauges] file: found no such key; expected it to be given; add it
     [[rainfall]]: found no table; expected at least one; add it
     """
-    tables = _plain(content)
+    return _parsed(_tables(content, settings), Job, folder, settings, file, text)
+
+
+def parse_design_job(
+    content: Mapping[str, Any],
+    *,
+    folder: str | Path = ".",
+    settings: Sequence[str] = (),
+    file: str = "",
+    text: str = "",
+) -> Job | DesignJob:
+    """Check a job of design storms given as nested tables, and resolve its defaults.
+
+    Parameters, and what is raised, are those of :func:`parse_job`.
+
+    Returns
+    -------
+    Job or DesignJob
+        A whole job where it has a table about gauges or their record, else one that does without.
+
+    Examples
+    --------
+    >>> job = parse_design_job(
+    ...     {
+    ...         "job": {"name": "Culvert"},
+    ...         "basins": {"file": "basins.geojson"},
+    ...         "design": {
+    ...             "aep": 0.1,
+    ...             "durations": "60min",
+    ...             "step": "10min",
+    ...             "depths": {"from": "table", "file": "depths.csv"},
+    ...             "pattern": {"shape": "alternating-block"},
+    ...         },
+    ...     }
+    ... )
+    >>> type(job).__name__, job.design.durations, job.design.pattern[0].label, job.input_names
+    ('DesignJob', ('1h',), 'alternating-block', ('basins.geojson', 'depths.csv'))
+    """
+    tables = _tables(content, settings)
+    kind = Job if _OF_GAUGES & tables.keys() else DesignJob
+    return _parsed(tables, kind, folder, settings, file, text)
+
+
+def _tables(content: Mapping[str, Any], settings: Sequence[str]) -> dict[str, Any]:
+    tables: dict[str, Any] = _plain(content)
     for setting in settings:
         _apply(tables, setting)
+    return tables
+
+
+def _parsed(
+    tables: Mapping[str, Any], kind: type[_J], folder: str | Path, settings: Sequence[str], file: str, text: str
+) -> _J:
     try:
-        return Job.model_validate({**tables, "folder": Path(folder)})
+        return kind.model_validate({**tables, "folder": Path(folder)})
     except ValidationError as error:
         # What a setting brought in does not stand in the file.
         changed = [_setting_words(setting) for setting in settings]
         raise JobError(
             [
-                problem_of(details, "", "") if _is_set(details["loc"], changed) else problem_of(details, file, text)
+                problem_of(details, "", "", kind)
+                if _is_set(details["loc"], changed)
+                else problem_of(details, file, text, kind)
                 for details in plainest(error.errors())
             ]
         ) from None

@@ -10,10 +10,18 @@ from pydantic_core import PydanticCustomError
 from basinrain.basins import UNION
 from basinrain.errors import JobError
 from basinrain.intervals import FORMS, parse_interval
-from basinrain.jobfile.fields import Count, NameList, Positive, Table, names, one_of
+from basinrain.jobfile.fields import Count, Duration, NameList, Positive, Table, names, once, one_of
 from basinrain.series.policies import GAPS, INFILL_THEN_REWEIGHT
 
-__all__ = ["ESTIMATED_GAP", "FORMATS", "LEAST_MEMORY", "TOTAL", "AntecedentTable", "SeriesTable", "StormsTable"]
+__all__ = [
+    "ESTIMATED_GAP",
+    "FORMATS",
+    "LEAST_MEMORY",
+    "TOTAL",
+    "AntecedentTable",
+    "SeriesTable",
+    "StormsTable",
+]
 
 FORMATS = ("csv", "csv-per-basin", "parquet", "netcdf")
 """Kinds of files that a series is written to."""
@@ -30,13 +38,6 @@ LEAST_MEMORY = 1.0
 _MONTHS = 12
 
 
-def _interval(word: str) -> str:
-    try:
-        return parse_interval(word).label
-    except JobError:
-        raise PydanticCustomError("interval", "{expected}", {"expected": FORMS}) from None
-
-
 def _or_interval(*words: str) -> AfterValidator:
     def check(value: str) -> str:
         if value in words:
@@ -50,28 +51,19 @@ def _or_interval(*words: str) -> AfterValidator:
     return AfterValidator(check)
 
 
-def _once(values: tuple[str, ...]) -> tuple[str, ...]:
-    if len(set(values)) < len(values):
-        raise PydanticCustomError("repeated", "{expected}", {"expected": "each of them once"})
-    return values
-
-
-Duration = Annotated[str, AfterValidator(_interval)]
-
-
 class SeriesTable(Table):
     """``[series]``: the whole record, basin by basin and step by step."""
 
     gaps: Annotated[
-        tuple[Annotated[str, one_of(GAPS)], ...], BeforeValidator(names), Field(min_length=1), AfterValidator(_once)
+        tuple[Annotated[str, one_of(GAPS)], ...], BeforeValidator(names), Field(min_length=1), AfterValidator(once)
     ] = (INFILL_THEN_REWEIGHT,)
     weigh: Annotated[str, one_of(("depths", "ratios"))] = "depths"
     step: Duration | None = None
     timezone: str | None = None
     formats: Annotated[
-        tuple[Annotated[str, one_of(FORMATS)], ...], BeforeValidator(names), Field(min_length=1), AfterValidator(_once)
+        tuple[Annotated[str, one_of(FORMATS)], ...], BeforeValidator(names), Field(min_length=1), AfterValidator(once)
     ] = ("csv",)
-    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(_once)] = ()
+    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(once)] = ()
     water_year: Annotated[int, Field(ge=1, le=_MONTHS)] = 10
     complete: Annotated[float, Field(gt=0, le=1)] = 0.95
     leave_out: NameList | None = None

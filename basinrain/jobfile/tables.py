@@ -27,6 +27,7 @@ from basinrain.jobfile.fields import (
     names,
     one_of,
 )
+from basinrain.jobfile.design_tables import DesignTable
 from basinrain.jobfile.series_tables import SeriesTable, StormsTable
 from basinrain.units import AREA_UNITS
 
@@ -34,7 +35,9 @@ __all__ = [
     "ArithmeticTable",
     "AveragingTable",
     "BasinsTable",
+    "BasinsJob",
     "BufferTable",
+    "DesignJob",
     "EditTable",
     "GaugesTable",
     "IdwTable",
@@ -265,7 +268,29 @@ class AveragingTable(Table):
         return {} if table is None else table.model_dump(exclude_none=True)
 
 
-class Job(Table):
+class BasinsJob(Table):
+    """What every job has, whether it has gauges or not; see :class:`Job` and :class:`DesignJob`."""
+
+    job: JobTable
+    basins: BasinsTable
+    folder: Annotated[Path, Field(exclude=True)] = Path()
+
+    def path(self, name: str) -> Path:
+        """Return the path of a file that the job names; an absolute ``name`` is that path itself."""
+        return self.folder / name
+
+    @property
+    def input_names(self) -> tuple[str, ...]:
+        """Every input file of the job as it is named, in the job's order."""
+        return (self.basins.file,)
+
+    @property
+    def inputs(self) -> tuple[Path, ...]:
+        """The paths of every input file of the job."""
+        return tuple(self.path(name) for name in self.input_names)
+
+
+class Job(BasinsJob):
     """A whole job, as resolved: what the file says, what ``--set`` changed, and every default.
 
     It cannot be changed; :func:`~basinrain.jobfile.parse_job` and :func:`~basinrain.jobfile.read_job` make one, and
@@ -297,6 +322,8 @@ class Job(Table):
         ``[series]``: what is done with the whole record.
     storms : StormsTable or None
         ``[storms]``: storms that are found in the record, run beside those of ``[[storm]]``.
+    design : DesignTable or None
+        ``[design]``: the depths that are wanted, and how they fall in time.
     folder : Path
         Where relative paths start, the job file's own folder; not a key of the file.
 
@@ -330,20 +357,42 @@ class Job(Table):
     averaging: AveragingTable = AveragingTable()
     series: SeriesTable = SeriesTable()
     storms: StormsTable | None = None
-    folder: Annotated[Path, Field(exclude=True)] = Path()
-
-    def path(self, name: str) -> Path:
-        """Return the path of a file that the job names; an absolute ``name`` is that path itself."""
-        return self.folder / name
+    design: DesignTable | None = None
 
     @property
     def input_names(self) -> tuple[str, ...]:
         """Every input file of the job as it is named, in the job's order."""
         rain = (name for source in self.rainfall for name in source.paths)
         envelope = () if self.screening.envelope is None else (self.screening.envelope,)
-        return (self.gauges.file, *rain, self.basins.file, *envelope)
+        design = () if self.design is None else self.design.input_names
+        return (self.gauges.file, *rain, self.basins.file, *envelope, *design)
+
+
+class DesignJob(BasinsJob):
+    """A job of design storms that reads no gauges.
+
+    Parameters
+    ----------
+    job : JobTable
+        ``[job]``: name, units of the results, output folder, working plane.
+    basins : BasinsTable
+        ``[basins]``: the file of watershed polygons.
+    averaging : AveragingTable
+        ``[averaging]``: options of the averaging methods.
+    design : DesignTable
+        ``[design]``: the depths that are wanted, and how they fall in time.
+    folder : Path
+        Where relative paths start, the job file's own folder; not a key of the file.
+
+    Examples
+    --------
+    See :func:`~basinrain.jobfile.parse_design_job`, which makes one.
+    """
+
+    averaging: AveragingTable = AveragingTable()
+    design: DesignTable
 
     @property
-    def inputs(self) -> tuple[Path, ...]:
-        """The paths of every input file of the job."""
-        return tuple(self.path(name) for name in self.input_names)
+    def input_names(self) -> tuple[str, ...]:
+        """Every input file of the job as it is named, in the job's order."""
+        return (self.basins.file, *self.design.input_names)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
@@ -16,7 +17,7 @@ from basinrain.ground import Plane
 from basinrain.notes import Note
 from basinrain.reading.options import option_problems
 
-__all__ = ["settle"]
+__all__ = ["check_near", "settle", "settle_basins"]
 
 _NEAR_DIAGONALS: Final = 5.0
 _NEAR_METRES: Final = 100_000.0
@@ -75,25 +76,55 @@ def settle(
         )
     if plane is not None:
         _check_plane(plane, local=basins.crs == ground.LOCAL)
-    _check_near(network, basins)
+    check_near(network, basins)
+    basins, used = _on_plane(basins, plane)
+    network = network.to_crs(used.crs)
+    if used.crs != ground.LOCAL:
+        used = replace(used, distortion=_distortion(basins, network))
+    return network, basins.with_union(), used, _notes(basins, used, "gauges and basins")
+
+
+def settle_basins(basins: Basins, *, plane: str | None = None) -> tuple[Basins, Plane, tuple[Note, ...]]:
+    """Bring basins without gauges onto the plane of the run.
+
+    Parameters, what is returned and what is raised are as for :func:`settle`, without what concerns gauges.
+
+    Examples
+    --------
+    >>> basins = Basins(ids=("upper",), polygons=[shapely.box(8, 47, 8.5, 47.5)], crs="EPSG:4326")
+    >>> basins, plane, notes = settle_basins(basins)
+    >>> plane.name, round(float(basins.areas[0]) / 1e6, 1), notes
+    ('Lambert azimuthal equal-area plane centred on 47.25° N, 8.25° E', 2104.0, ())
+    """
+    if plane is not None:
+        _check_plane(plane, local=basins.crs == ground.LOCAL)
+    basins, used = _on_plane(basins, plane)
+    if used.crs != ground.LOCAL:
+        used = replace(used, distortion=_distortion(basins))
+    return basins.with_union(), used, _notes(basins, used, "places in the basins")
+
+
+def _on_plane(basins: Basins, plane: str | None) -> tuple[Basins, Plane]:
+    """Return basins in their plane, and the plane with its distortion still to be found."""
     if basins.crs == ground.LOCAL:
-        settled, notes = basins.with_union(), _area_notes(basins)
-        return network, settled, Plane(ground.LOCAL, "local coordinates in m", 0.0), tuple(notes)
+        return basins, Plane(ground.LOCAL, "local coordinates in m", 0.0)
     crs, name = _around(basins.polygons, basins.crs)
     if plane is not None:
         crs, name = plane, ground.title(plane)
-    network, basins = network.to_crs(crs), basins.to_crs(crs)
-    used = Plane(crs, name, _distortion(network, basins))
+    return basins.to_crs(crs), Plane(crs, name, 0.0)
+
+
+def _notes(basins: Basins, used: Plane, between: str) -> tuple[Note, ...]:
     notes = _area_notes(basins)
     if used.distortion > _DIFFERENCE:
         notes.append(
             Note(
                 code="plane-distortion",
-                text=f"Distances between gauges and basins in the plane {name} are up to {100 * used.distortion:.1f} % "
-                "off those on the ground.",
+                text=f"Distances between {between} in the plane {used.name} are up to "
+                f"{100 * used.distortion:.1f} % off those on the ground.",
             )
         )
-    return network, basins.with_union(), used, tuple(notes)
+    return tuple(notes)
 
 
 def _check_plane(plane: str, *, local: bool) -> None:
@@ -135,14 +166,37 @@ def _around(polygons: npt.NDArray[np.object_], crs: str) -> tuple[str, str]:
     return ground.equal_area_plane(x, south, x, north), name
 
 
-def _check_near(network: GaugeNetwork, basins: Basins) -> None:
+def check_near(network: GaugeNetwork, basins: Basins, *, kind: str = "gauge") -> None:
+    """Refuse gauges, or other points, that are nowhere near the basins.
+
+    Parameters
+    ----------
+    network, basins
+        Each in its own coordinate system; both local or both on the map.
+    kind
+        What the points are called.
+
+    Raises
+    ------
+    DataError
+        As :func:`settle`.
+
+    Examples
+    --------
+    >>> basins = Basins(ids=("cell",), polygons=[shapely.box(0, 0, 100, 100)], crs="local")
+    >>> check_near(GaugeNetwork(ids=("P",), x=[9000], y=[50], crs="local"), basins, kind="depth point")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.DataError: depth points and basins: found them nowhere near each other: depth point P, the \
+nearest, is 8.9 km away; expected a depth point within 0.707 km of the basins; check both files and their crs
+    """
     x, y, polygons = network.x, network.y, basins.polygons
     away, limit, gauge = _nearest(x, y, network.crs, polygons, basins.crs)
     if away <= limit:
         return
     swapped = []
     if _may_swap(x, y, network.crs) and _is_near(_nearest(y, x, network.crs, polygons, basins.crs)):
-        swapped.append(f"{_pair(network.crs)} of the gauges")
+        swapped.append(f"{_pair(network.crs)} of the {kind}s")
     if _may_swap(*_xy(polygons), basins.crs):
         flipped = shapely.transform(polygons, lambda xy: xy[:, ::-1])
         if _is_near(_nearest(x, y, network.crs, flipped, basins.crs)):
@@ -150,9 +204,9 @@ def _check_near(network: GaugeNetwork, basins: Basins) -> None:
     how_far = f"{_km(away)} away" if np.isfinite(away) else "off the map"
     raise DataError(
         Problem(
-            item="gauges and basins",
-            found=f"them nowhere near each other: gauge {network.ids[gauge]}, the nearest, is {how_far}",
-            expected=f"a gauge within {_km(limit)} of the basins",
+            item=f"{kind}s and basins",
+            found=f"them nowhere near each other: {kind} {network.ids[gauge]}, the nearest, is {how_far}",
+            expected=f"a {kind} within {_km(limit)} of the basins",
             remedy=f"{', or '.join(swapped)} look swapped" if swapped else "check both files and their crs",
         )
     )
@@ -208,12 +262,12 @@ def _nearest(
     return away, limit, gauge
 
 
-def _distortion(network: GaugeNetwork, basins: Basins) -> float:
+def _distortion(basins: Basins, network: GaugeNetwork | None = None) -> float:
     """Return the largest relative difference of planar and geodesic distances among gauges and the basins' corners."""
     corners = shapely.get_coordinates(
         shapely.convex_hull(shapely.multipoints(shapely.get_coordinates(basins.polygons)))
     )
-    gauges = np.column_stack([network.x, network.y])
+    gauges = np.empty((0, 2)) if network is None else np.column_stack([network.x, network.y])
     if len(gauges) > _MOST_POINTS // 2:
         gauges = shapely.get_coordinates(shapely.convex_hull(shapely.multipoints(gauges)))
     xy = np.vstack([_thinned(corners), _thinned(gauges)])

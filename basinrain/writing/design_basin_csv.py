@@ -1,4 +1,4 @@
-"""Design hyetographs as one CSV file per point of interest, basin and duration, frequencies and patterns side by side."""
+"""Design hyetographs as one CSV file per point of interest, basin and duration, the others side by side."""
 
 from __future__ import annotations
 
@@ -20,7 +20,7 @@ INDEX: Final = "index"
 
 
 def write_basin_csv(folder: Path, content: DesignContent) -> None:
-    """Write a file per point, basin and duration with one row per step and one column of depths per frequency and pattern.
+    """Write a file per point, basin and duration: a row per step, a column of depths per frequency and pattern.
 
     Parameters
     ----------

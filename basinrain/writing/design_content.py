@@ -227,11 +227,13 @@ class DesignContent:
     def groups(self, rows: int) -> Iterator[tuple[DesignHyetograph, ...]]:
         """Give out hyetographs in order, so many together that they hold no more than some values, and at least one."""
         group: list[DesignHyetograph] = []
+        held = 0
         for one in self.hyetographs:
-            if group and sum(other.depth.size for other in group) + one.depth.size > rows:
+            if group and held + one.depth.size > rows:
                 yield tuple(group)
-                group = []
+                group, held = [], 0
             group.append(one)
+            held += one.depth.size
         yield tuple(group)
 
     def by_storm(self) -> dict[tuple[str, int], list[DesignHyetograph]]:

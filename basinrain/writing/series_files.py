@@ -45,13 +45,15 @@ FORMATS: Final[Mapping[str, SeriesFormat]] = MappingProxyType(
 """The formats by the word that a job says."""
 
 
-def check_formats(formats: Sequence[str]) -> None:
+def check_formats(formats: Sequence[str], *, item: str = "[series] formats") -> None:
     """Refuse formats that cannot be written, before anything is computed.
 
     Parameters
     ----------
     formats
         Words of :data:`FORMATS`.
+    item
+        Where the job asks for them, for the message.
 
     Raises
     ------
@@ -70,14 +72,14 @@ netcdf; did you mean 'parquet'?
     for word in formats:
         if word not in FORMATS:
             problems.add(
-                item="[series] formats",
+                item=item,
                 found=f"'{word}'",
                 expected="one of: " + ", ".join(FORMATS),
                 remedy=nearest_name(word, FORMATS),
             )
         elif (library := FORMATS[word].library) and find_spec(library) is None:
             problems.add(
-                item="[series] formats",
+                item=item,
                 found=f"'{word}', and no {library} to write it with",
                 expected=f"the extra basinrain[{FORMATS[word].extra}]",
                 remedy=f"pip install 'basinrain[{FORMATS[word].extra}]', or choose csv",

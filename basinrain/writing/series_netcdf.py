@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Final, Literal
 
 import numpy as np
 
 from basinrain.series.flags import Flag
+from basinrain.writing.netcdf_parts import DEFLATE, opened, write_basins
 from basinrain.writing.series_content import SeriesContent, series_name, writing
 
 if TYPE_CHECKING:
@@ -24,8 +23,6 @@ _HELD: Final = 1 << 20
 """Values of a series that are held together; about 30 MiB with shares, flags and copies."""
 _PIECE: Final = 1 << 17
 """Values that are compressed together: 1 MiB of depths."""
-_DEFLATE: Final = 2
-"""Higher levels take twice the time for a few percent."""
 
 
 def write_netcdf(folder: Path, content: SeriesContent) -> None:
@@ -49,30 +46,22 @@ def write_netcdf(folder: Path, content: SeriesContent) -> None:
     Eaton, B., and others: NetCDF Climate and Forecast (CF) Metadata Conventions, version 1.11.
     """
     # The library says RuntimeError of what happens below it, a full disk included.
-    with writing(NAME, faults=(OSError, RuntimeError)), _opened(folder / NAME) as file:
+    with writing(NAME, faults=(OSError, RuntimeError)), opened(folder / NAME) as file:
         file.createDimension("time", content.n_steps)
         file.createDimension("basin", len(content.basins))
         file.createDimension("nv", 2)
         file.setncatts(_facts(content))
         _write_times(file, content)
-        _write_basins(file, content)
+        write_basins(
+            file,
+            content.basins,
+            names=content.names,
+            areas=content.areas,
+            points=content.points,
+            facts={"cf_role": "timeseries_id"},
+        )
         for gaps, method in content.source.series:
             _write_series(file, content, gaps, method)
-
-
-@contextmanager
-def _opened(path: Path) -> Iterator[netCDF4.Dataset]:
-    import netCDF4
-
-    file = netCDF4.Dataset(path, mode="w", format="NETCDF4")
-    try:
-        yield file
-    except BaseException:
-        # What was wrong is known; that the file cannot be closed either adds nothing.
-        with suppress(RuntimeError, OSError):
-            file.close()
-        raise
-    file.close()
 
 
 def _facts(content: SeriesContent) -> dict[str, str]:
@@ -120,41 +109,6 @@ def _write_times(file: netCDF4.Dataset, content: SeriesContent) -> None:
     bounds[:] = (np.column_stack([starts, ends]) - origin) // per
 
 
-def _write_basins(file: netCDF4.Dataset, content: SeriesContent) -> None:
-    _write_words(file, "basin_id", content.basins, {"long_name": "basin", "cf_role": "timeseries_id"})
-    if any(content.names):
-        _write_words(file, "basin_name", content.names, {"long_name": "name of the basin"})
-    area = file.createVariable("basin_area", "f8", ("basin",))
-    area.setncatts({"standard_name": "cell_area", "long_name": "area of the basin", "units": "m2"})
-    area[:] = np.asarray(content.areas, dtype=float)
-    if content.points is None:
-        return
-    file.createVariable("crs", "i4").setncatts(
-        {
-            "grid_mapping_name": "latitude_longitude",
-            "long_name": "WGS 84",
-            "semi_major_axis": 6378137.0,
-            "inverse_flattening": 298.257223563,
-            "longitude_of_prime_meridian": 0.0,
-        }
-    )
-    for name, standard, units, column in (
-        ("lon", "longitude", "degrees_east", 0),
-        ("lat", "latitude", "degrees_north", 1),
-    ):
-        place = file.createVariable(name, "f8", ("basin",))
-        place.setncatts(
-            {"standard_name": standard, "long_name": f"{standard} of a point inside the basin", "units": units}
-        )
-        place[:] = content.points[:, column]
-
-
-def _write_words(file: netCDF4.Dataset, name: str, words: tuple[str, ...], facts: dict[str, str]) -> None:
-    variable = file.createVariable(name, str, ("basin",))
-    variable.setncatts(facts)
-    variable[:] = np.array(words, dtype=object)
-
-
 def _write_series(file: netCDF4.Dataset, content: SeriesContent, gaps: str, method: str) -> None:
     name = series_name(gaps, method)
     words = f"by method {method}, gaps: {gaps}"
@@ -170,7 +124,7 @@ def _write_series(file: netCDF4.Dataset, content: SeriesContent, gaps: str, meth
             kind,
             ("basin", "time"),
             compression="zlib",
-            complevel=_DEFLATE,
+            complevel=DEFLATE,
             shuffle=True,
             chunksizes=piece,
             chunk_cache=piece[0] * piece[1] * np.dtype(kind).itemsize,

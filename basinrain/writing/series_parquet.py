@@ -16,7 +16,7 @@ from basinrain.writing.series_content import SeriesContent, words_by_code, writi
 if TYPE_CHECKING:
     import pyarrow as pa
 
-__all__ = ["NAME", "write_parquet"]
+__all__ = ["NAME", "basin_facts", "chosen_words", "write_parquet"]
 
 NAME: Final = "series.parquet"
 """The file's name."""
@@ -59,14 +59,14 @@ def write_parquet(folder: Path, content: SeriesContent) -> None:
                 block = content.block(gaps, method, steps)
                 same = np.zeros(block.depth.size, dtype=np.int8)
                 columns = [
-                    _chosen(np.tile(np.arange(n_basins, dtype=np.int32), len(block.depth)), content.basins),
-                    _chosen(same, [method]),
-                    _chosen(same, [gaps]),
+                    chosen_words(np.tile(np.arange(n_basins, dtype=np.int32), len(block.depth)), content.basins),
+                    chosen_words(same, [method]),
+                    chosen_words(same, [gaps]),
                     pa.array(np.repeat(milliseconds[steps], n_basins)).cast(schema.field("time").type),
                     pa.array(block.depth.ravel(), from_pandas=True),
-                    _chosen(same, [content.depth_unit]),
+                    chosen_words(same, [content.depth_unit]),
                     pa.array(block.observed_share.ravel(), from_pandas=True),
-                    _chosen(place_of_code[block.flags.ravel()], vocabulary),
+                    chosen_words(place_of_code[block.flags.ravel()], vocabulary),
                 ]
                 file.write_batch(pa.RecordBatch.from_arrays(columns, schema=schema), row_group_size=len(same))
 
@@ -97,23 +97,24 @@ def _schema(content: SeriesContent) -> pa.Schema:
         "institution": content.institution,
         "source": f"basinrain {content.version}".strip(),
         "plane": content.plane,
-        "basins": json.dumps(
-            {
-                basin: {"name": name, "area_m2": area}
-                for basin, name, area in zip(
-                    content.basins,
-                    content.names or ("",) * len(content.basins),
-                    np.asarray(content.areas, dtype=float).tolist(),
-                    strict=True,
-                )
-            },
-            ensure_ascii=False,
-        ),
+        "basins": basin_facts(content.basins, content.names, content.areas),
     }
     return pa.schema(fields, metadata={key: text for key, text in facts.items() if text})
 
 
-def _chosen(places: npt.NDArray[Any], words: Sequence[str]) -> pa.Array:
+def basin_facts(basins: Sequence[str], names: Sequence[str], areas: npt.NDArray[np.float64]) -> str:
+    """Return names and areas of basins as JSON, for a place among the facts of a schema.
+
+    Examples
+    --------
+    >>> basin_facts(["upper"], [], np.array([4e6]))
+    '{"upper": {"name": "", "area_m2": 4000000.0}}'
+    """
+    known = zip(basins, names or ("",) * len(basins), np.asarray(areas, dtype=float).tolist(), strict=True)
+    return json.dumps({basin: {"name": name, "area_m2": area} for basin, name, area in known}, ensure_ascii=False)
+
+
+def chosen_words(places: npt.NDArray[Any], words: Sequence[str]) -> pa.Array:
     """Return a column of words, each given by its place."""
     import pyarrow as pa
 

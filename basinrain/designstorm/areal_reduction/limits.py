@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Final, Literal
 
 import numpy as np
@@ -58,9 +59,15 @@ class Limits:
         largest: Floats = areas[np.searchsorted(starts, nearly, side="right") - 1]
         return largest
 
-    def area_words(self, area: float) -> str:
-        """Return an area in words, in the method's own unit too where that is not km²."""
-        return area_words(area, self.area_unit)
+    def duration_words(self) -> str:
+        """Return the range of durations in words."""
+        low, high = (duration_words(minutes) for minutes in self.minutes)
+        return between_words(low, high)
+
+    def below_words(self, area: float) -> str:
+        """Return for which durations an area is the largest, with a space before; empty where for all."""
+        ends = {largest: until for (_, largest), (until, _) in pairwise(self.largest_areas)}
+        return f" below {duration_words(ends[area])}" if area in ends else ""
 
 
 def area_words(area: float, unit: str = "km2") -> str:

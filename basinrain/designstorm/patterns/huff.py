@@ -2,28 +2,31 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from functools import partial
 from typing import Final
 
-from basinrain.designstorm.patterns.increments import check_step
-from basinrain.designstorm.patterns.ordinates import increments_by, published_ordinates
+from basinrain.designstorm.patterns.cumulative import fall_by, step_problems
+from basinrain.designstorm.patterns.ordinates import published_ordinates
 from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
-from basinrain.errors import JobError, MethodError, Problem, Problems, nearest_name
+from basinrain.errors import JobError, MethodError, Problem, nearest_name
 from basinrain.intervals import interval_of
+from basinrain.units import area_factor
 
-__all__ = ["BASES", "HUFF", "SQUARE_MILE", "huff"]
+__all__ = ["BASES", "HUFF", "huff"]
 
 BASES: Final = ("point", "area")
 """The two tables: of a point (areas to 10 mi²), and of areas of 50 to 400 mi²."""
 
-SQUARE_MILE: Final = 2_589_988.110336
-"""m², exactly: a mile is 1609.344 m."""
+_SQUARE_MILE: Final = area_factor("mi2")
 
-_POINT_MOST: Final = 10 * SQUARE_MILE
-_AREA_LEAST: Final = 50 * SQUARE_MILE
-_AREA_MOST: Final = 400 * SQUARE_MILE
+# Limits in m²; an area that is a limit but for rounding is within it.
+_ROUNDING: Final = 1e-9
+_POINT_MOST: Final = 10 * _SQUARE_MILE * (1 + _ROUNDING)
+_AREA_LEAST: Final = 50 * _SQUARE_MILE * (1 - _ROUNDING)
+_AREA_MOST: Final = 400 * _SQUARE_MILE * (1 + _ROUNDING)
 
-_SPACING: Final = 20
+_PARTS: Final = 20
 """Ordinates are every twentieth of the duration."""
 
 _HOURS: Final = {1: (0.0, 6.0), 2: (6.0, 12.0), 3: (12.0, 24.0), 4: (24.0, float("inf"))}
@@ -84,19 +87,62 @@ def huff(case: PatternCase, *, quartile: int, basis: str | None = None) -> Shape
             )
         )
     chosen = basis or _basis_of(case.area)
-    problems = Problems()
-    if chosen is None:
+    problems = step_problems(case)
+    if not chosen:
         problems.add(
             item=f"pattern huff-{quartile}",
-            found=f"an area of {_words(case.area)}",
-            expected="up to 10 mi² (25.9 km²), or 50 to 400 mi² (129.5 to 1036 km²), for which it is published",
+            found=f"an area of {_area_words(case.area)}",
+            expected="up to 10 mi² (25.9 km²) or 50 to 400 mi² (129.5 to 1036 km²), for which it is published",
             remedy='state basis = "point" or "area"',
         )
-    try:
-        check_step(case.minutes, case.step)
-    except MethodError as error:
-        problems.extend(error)
-    if chosen is None or problems:
-        raise MethodError(problems.kept)
-    depth = increments_by(published_ordinates(f"huff_{chosen}", f"Q{quartile}"), case)
+    problems.raise_as(MethodError)
+    depth = fall_by(published_ordinates(f"huff_{chosen}", f"Q{quartile}").at, case)
     return Shaped(depth, tuple(_remarks(case, quartile, chosen)))
+
+
+def _basis_of(area: float) -> str:
+    """Return the basis whose range an area in m² is in; empty where it is in neither."""
+    if area <= _POINT_MOST:
+        return "point"
+    return "area" if _AREA_LEAST <= area <= _AREA_MOST else ""
+
+
+def _remarks(case: PatternCase, quartile: int, basis: str) -> Iterator[str]:
+    if basis == "area":
+        yield f"The Huff quartile {quartile} distribution of 50 to 400 mi² is from memory; check it against the source."
+    if basis != _basis_of(case.area):
+        known = "up to 10 mi² (25.9 km²)" if basis == "point" else "50 to 400 mi² (129.5 to 1036 km²)"
+        yield (
+            f"The Huff quartile {quartile} distribution used is published for areas of {known}; the area here is "
+            f"{_area_words(case.area)}."
+        )
+    above, most = _HOURS[quartile]
+    if not above < case.minutes / 60 <= most:
+        usual = next(number for number, (_, most) in _HOURS.items() if case.minutes / 60 <= most)
+        yield (
+            f"A storm of {interval_of(60 * case.minutes).label} is commonly given Huff quartile {usual}, not "
+            f"{quartile} (to 6 h the first, to 12 h the second, to 24 h the third, longer the fourth)."
+        )
+    if case.step * _PARTS < case.minutes:
+        yield (
+            f"The ordinates of Huff quartile {quartile} are {case.minutes / _PARTS:g} minutes apart, so that steps of "
+            f"{case.step} min between two of them get equal depths."
+        )
+
+
+def _area_words(area: float) -> str:
+    return f"{area / _SQUARE_MILE:.6g} mi² ({area / 1e6:.6g} km²)"
+
+
+HUFF: Final = tuple(
+    Pattern(
+        name=f"huff-{quartile}",
+        title=f"Huff quartile {quartile}, median",
+        shape=partial(huff, quartile=quartile),
+        options=("basis",),
+        source="Huff (1990), Illinois State Water Survey Circular 173; Huff and Angel (1992), Bulletin 71",
+        evidence="The distributions of 50 to 400 mi² are from memory; those of a point were seen in public copies.",
+    )
+    for quartile in _HOURS
+)
+"""A pattern for each quartile."""

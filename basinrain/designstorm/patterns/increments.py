@@ -2,16 +2,20 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from dataclasses import replace
+from itertools import pairwise
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 from scipy.optimize import isotonic_regression
 
+from basinrain.designstorm.depth_source import Curve
 from basinrain.errors import MethodError, Problem, Problems
 from basinrain.intervals import interval_of
 
-__all__ = ["check_step", "falling_increments", "increments_of", "span_in_words"]
+__all__ = ["check_growth", "check_step", "falling_increments", "increments_of", "known_depth", "runs", "span_in_words"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -110,8 +114,7 @@ rises; check the pattern
         raise MethodError(
             Problem(item="cumulative depth", found=found, expected="a depth that rises", remedy="check the pattern")
         )
-    shares = np.maximum(steps, 0.0)
-    return shares * (total / shares.sum())
+    return _scaled(steps, total)
 
 
 def falling_increments(depth: Floats, step: int, *, shape: str, smooth: bool = False) -> tuple[Floats, tuple[str, ...]]:
@@ -162,33 +165,130 @@ durations, or even them out with smooth = true
 the depth of 2 h is 3 mm greater, the largest change; the total is kept.',))
     """
     tolerance = _ROUNDING * float(np.abs(depth).max())
+    minutes: Floats = np.arange(1.0, len(depth) + 1) * step
     raw = np.diff(depth, prepend=0.0)
-    rises, falls = np.diff(raw) > tolerance, raw < -tolerance
-    if not (rises.any() or falls.any()):
-        return _settled(raw, depth[-1]), ()
     problems = Problems()
+    _add_rises(problems, raw, step, tolerance, shape=shape)
+    _add_falls(problems, minutes, depth, tolerance, shape=shape)
+    if not len(problems):
+        return _scaled(np.sort(raw)[::-1], depth[-1]), ()
     if not smooth:
-        _add_rises(problems, raw, rises, step, shape=shape)
-        _add_falls(problems, depth, falls, step, shape=shape)
         problems.raise_as(MethodError)
     fitted = isotonic_regression(raw, increasing=False)
     even = np.asarray(fitted.x, dtype=np.float64)
-    left = even < -tolerance
-    _add_falls(problems, np.cumsum(even), left, step, shape=shape)
-    problems.raise_as(MethodError)
+    left = Problems()
+    _add_falls(left, minutes, np.cumsum(even), tolerance, shape=shape)
+    left.raise_as(MethodError)
     change = np.cumsum(even) - depth
     borders = np.asarray(fitted.blocks, dtype=np.int64)
     spans = [
         span_in_words(int(first) * step, int(last) * step)
-        for first, last in zip(borders[:-1], borders[1:], strict=True)
+        for first, last in pairwise(borders)
         if np.abs(change[first:last]).max() > tolerance
     ]
     largest = int(np.argmax(change))
-    return _settled(even, depth[-1]), (
+    remark = (
         f"What a step adds to the depth rose with duration and was evened out over {', '.join(spans)}: the depth of "
         f"{span_in_words((largest + 1) * step)} is {change[largest]:.3g} mm greater, the largest change; the total is "
-        "kept.",
+        "kept."
     )
+    return _scaled(np.sort(even)[::-1], depth[-1]), (remark,)
+
+
+def known_depth(curve: Curve, minutes: Floats, *, shape: str, remedy: str) -> Floats:
+    """Return the depths of a curve; where it has none, its own message and what to do about the pattern.
+
+    Parameters
+    ----------
+    curve
+        Depths in mm of durations in minutes.
+    minutes : array of float, shape (n,)
+        Durations that the pattern needs; none of them is no question to the curve.
+    shape
+        The pattern that needs them, for the message.
+    remedy
+        What would make the pattern do without the shortest of them.
+
+    Returns
+    -------
+    array of float, shape (n,)
+        mm.
+
+    Raises
+    ------
+    MethodError
+        The curve has no depth for a duration.
+
+    Examples
+    --------
+    >>> known_depth(lambda minutes: minutes / 2, np.array([10.0, 20.0]), shape="nested", remedy="take a longer step")
+    array([ 5., 10.])
+    >>> known_depth(lambda minutes: minutes * np.nan, np.array([10.0]), shape="nested", remedy="take a longer step")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: shape "nested": found no depth of 10 min; expected depths of durations from 10 to 10 \
+min; take a longer step
+    """
+    if not len(minutes):
+        return np.empty(0)
+    wanted = f"durations from {span_in_words(minutes.min(), minutes.max())}"
+    try:
+        depth = curve(minutes)
+    except MethodError as error:
+        advice = f'shape "{shape}" needs {wanted}: {remedy}'
+        problems = [
+            replace(problem, remedy=f"{problem.remedy}; {advice}" if problem.remedy else advice)
+            for problem in error.problems
+        ]
+        raise MethodError(problems, unlisted=error.unlisted) from error
+    if not np.isfinite(depth).all():
+        first = span_in_words(minutes[np.argmin(np.isfinite(depth))])
+        raise MethodError(
+            Problem(
+                item=f'shape "{shape}"', found=f"no depth of {first}", expected=f"depths of {wanted}", remedy=remedy
+            )
+        )
+    return depth
+
+
+def check_growth(minutes: Floats, depth: Floats, *, shape: str) -> None:
+    """Make sure that the depth nowhere falls with duration.
+
+    Parameters
+    ----------
+    minutes, depth : array of float, shape (n,)
+        Durations, rising, and their depths in mm.
+    shape
+        The pattern that needs them, for the message.
+
+    Raises
+    ------
+    MethodError
+        It falls by more than rounding; all places together.
+
+    Examples
+    --------
+    >>> check_growth(np.array([30.0, 60, 90]), np.array([20.0, 20, 19]), shape="chicago")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: shape "chicago": found a depth that falls with duration, from 20 mm in 1 h to 19 mm \
+in 90 min; expected one that never falls with duration; check the depths and areal reductions of these durations
+    """
+    problems = Problems()
+    _add_falls(problems, minutes, depth, _ROUNDING * float(np.abs(depth).max()), shape=shape)
+    problems.raise_as(MethodError)
+
+
+def runs(marked: npt.NDArray[np.bool_]) -> Iterator[tuple[int, int]]:
+    """Return the first and one past the last of every run of marks.
+
+    Examples
+    --------
+    >>> list(runs(np.array([True, False, True, True]))), list(runs(np.array([], dtype=bool)))
+    ([(0, 1), (2, 4)], [])
+    """
+    edges = np.diff(np.concatenate([[0], marked.astype(np.int8), [0]]))
+    return zip(np.flatnonzero(edges == 1).tolist(), np.flatnonzero(edges == -1).tolist(), strict=True)
 
 
 def span_in_words(start: float, end: float | None = None) -> str:
@@ -204,14 +304,15 @@ def span_in_words(start: float, end: float | None = None) -> str:
     return " to ".join(f"{minutes / 60 if hours else minutes:.6g}" for minutes in ends) + (" h" if hours else " min")
 
 
-def _settled(increments: Floats, total: float) -> Floats:
-    """Without what rounding left: in order, not negative, with the exact sum."""
-    ordered = np.sort(np.maximum(increments, 0.0))[::-1]
-    return ordered * (total / ordered.sum())
+def _scaled(increments: Floats, total: float) -> Floats:
+    """Without negative ones that rounding left, and with the exact sum."""
+    kept: Floats = np.maximum(increments, 0.0)
+    kept *= total / kept.sum()
+    return kept
 
 
-def _add_rises(problems: Problems, raw: Floats, rises: npt.NDArray[np.bool_], step: int, *, shape: str) -> None:
-    for first, last in _runs(rises):
+def _add_rises(problems: Problems, raw: Floats, step: int, tolerance: float, *, shape: str) -> None:
+    for first, last in runs(np.diff(raw) > tolerance):
         less, more = _told_apart(raw[first], raw[last])
         problems.add(
             item=f'shape "{shape}"',
@@ -223,23 +324,17 @@ def _add_rises(problems: Problems, raw: Floats, rises: npt.NDArray[np.bool_], st
         )
 
 
-def _add_falls(problems: Problems, depth: Floats, falls: npt.NDArray[np.bool_], step: int, *, shape: str) -> None:
-    reached = np.concatenate([[0.0], depth])
-    for first, last in _runs(falls):
+def _add_falls(problems: Problems, minutes: Floats, depth: Floats, tolerance: float, *, shape: str) -> None:
+    times, reached = np.concatenate([[0.0], minutes]), np.concatenate([[0.0], depth])
+    for first, last in runs(np.diff(reached) < -tolerance):
         more, less = _told_apart(reached[first], reached[last])
         problems.add(
             item=f'shape "{shape}"',
-            found=f"a depth that falls with duration, from {more} mm in {span_in_words(first * step)} to {less} mm in "
-            f"{span_in_words(last * step)}",
+            found=f"a depth that falls with duration, from {more} mm in {span_in_words(times[first])} to {less} mm in "
+            f"{span_in_words(times[last])}",
             expected="one that never falls with duration",
             remedy="check the depths and areal reductions of these durations",
         )
-
-
-def _runs(marked: npt.NDArray[np.bool_]) -> list[tuple[int, int]]:
-    """First and one past the last of every run of marks."""
-    edges = np.diff(np.concatenate([[0], marked.astype(np.int8), [0]]))
-    return [(int(a), int(b)) for a, b in zip(np.flatnonzero(edges == 1), np.flatnonzero(edges == -1), strict=True)]
 
 
 def _told_apart(one: float, other: float) -> tuple[str, str]:

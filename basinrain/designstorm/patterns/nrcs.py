@@ -5,10 +5,10 @@ from __future__ import annotations
 from functools import partial
 from typing import Final
 
-from basinrain.designstorm.patterns.increments import check_step
-from basinrain.designstorm.patterns.ordinates import increments_by, published_ordinates
+from basinrain.designstorm.patterns.cumulative import fall_by, step_problems
+from basinrain.designstorm.patterns.ordinates import published_ordinates
 from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
-from basinrain.errors import MethodError, Problems
+from basinrain.errors import MethodError
 from basinrain.intervals import interval_of
 
 __all__ = ["NRCS", "NRCS_TYPES", "nrcs"]
@@ -59,26 +59,22 @@ def nrcs(case: PatternCase, *, kind: str) -> Shaped:
     >>> nrcs(case, kind="II").depth[10:14].round(2)
     array([ 5.4, 42.8, 10.9,  4.8])
     """
-    problems = Problems()
+    problems = step_problems(case)
     if case.minutes != _DAY:
         problems.add(
             item=f"pattern nrcs-type-{kind.lower()}",
             found=f"a duration of {interval_of(60 * case.minutes).label}",
             expected="24 h, the only duration that it is published for",
-            remedy="give the pattern durations = [\"24h\"], or choose another one",
+            remedy='give the pattern durations = ["24h"], or choose another one',
         )
-    try:
-        check_step(case.minutes, case.step)
-    except MethodError as error:
-        problems.extend(error)
     problems.raise_as(MethodError)
     spacing = _SPACING[kind]
-    depth = increments_by(published_ordinates(f"nrcs_{spacing}min", f"type_{kind}"), case)
+    depth = fall_by(published_ordinates(f"nrcs_{spacing}min", f"type_{kind}").at, case)
     if case.step >= spacing:
         return Shaped(depth)
     remark = (
-        f"The ordinates of NRCS type {kind} are {spacing} minutes apart, so that steps of {case.step} min between two of "
-        f"them get equal depths and the greatest intensity is that of {spacing} minutes."
+        f"The ordinates of NRCS type {kind} are {spacing} minutes apart, so that steps of {case.step} min between "
+        f"two of them get equal depths, and the greatest intensity is that of {spacing} minutes."
     )
     return Shaped(depth, (remark,))
 
@@ -88,7 +84,7 @@ NRCS: Final = tuple(
         name=f"nrcs-type-{kind.lower()}",
         title=f"NRCS 24-hour type {kind}",
         shape=partial(nrcs, kind=kind),
-        source="NRCS National Engineering Handbook, part 630, chapter 4: 24-hour rainfall distributions, ordinates every "
+        source="NRCS National Engineering Handbook, part 630, chapter 4; ordinates every "
         + ("0.5 h" if kind == "IA" else "0.1 h"),
     )
     for kind in NRCS_TYPES

@@ -1,23 +1,25 @@
-"""The dimensionless cumulative curve of a pattern, and the increments that it gives."""
+"""The dimensionless cumulative curve of a pattern, a user's own or a published one."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cache
 from importlib.resources import files
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.patterns.increments import check_step, increments_of
-from basinrain.designstorm.patterns.pattern import PatternCase
 from basinrain.errors import DataError, Problems
 
-__all__ = ["Ordinates", "increments_by", "published_ordinates"]
+__all__ = ["Ordinates", "published_ordinates"]
 
 Floats = npt.NDArray[np.float64]
 
-_ITEM = "ordinates of a temporal pattern"
+_ITEM: Final = "ordinates of a temporal pattern"
+
+_AT_THE_END: Final = {100.0: "declare percent = true", 0.01: "leave percent = true out"}
+"""What to do about a curve that ends at this."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -71,19 +73,27 @@ percent = true
             )
             return problems
         if len(self.time) < 2:
-            problems.add(item=_ITEM, found=f"{len(self.time)} row(s)", expected="two at least, the first 0, 0 and the last 1, 1")
+            problems.add(
+                item=_ITEM,
+                found="one row" if len(self.time) else "no rows",
+                expected="two at least, the first 0, 0 and the last 1, 1",
+            )
             return problems
         for words, values in (("time", self.time), ("share", self.share)):
             for row in np.flatnonzero(~np.isfinite(values)):
-                problems.add(item=f"{_ITEM}, row {row + 1}", found=f"{words} {values[row]:g}", expected="a number from 0 to 1")
+                problems.add(
+                    item=f"{_ITEM}, row {row + 1}", found=f"{words} {values[row]:g}", expected="a number from 0 to 1"
+                )
             if values[0] != 0 and np.isfinite(values[0]):
-                problems.add(item=_ITEM, found=f"{words}s that begin at {values[0]:g}", expected="0", remedy="add the row 0, 0")
+                problems.add(
+                    item=_ITEM, found=f"{words}s that begin at {values[0]:g}", expected="0", remedy="add the row 0, 0"
+                )
             if values[-1] != 1 and np.isfinite(values[-1]):
                 problems.add(
                     item=_ITEM,
                     found=f"{words}s that end at {values[-1]:g}",
                     expected="1",
-                    remedy="declare percent = true" if values[-1] == 100 else f"divide the {words}s by their last",
+                    remedy=_AT_THE_END.get(float(values[-1]), f"divide the {words}s by their last"),
                 )
         with np.errstate(invalid="ignore"):
             stuck, fallen = np.diff(self.time) <= 0, np.diff(self.share) < 0
@@ -107,18 +117,6 @@ percent = true
         Linear between ordinates.
         """
         return np.asarray(np.interp(time, self.time, self.share), dtype=np.float64)
-
-
-def increments_by(ordinates: Ordinates, case: PatternCase) -> Floats:
-    """Return the depth of every step, mm, shape (n_steps,), when a case's total falls by a curve.
-
-    Raises
-    ------
-    MethodError
-        The step does not divide the duration.
-    """
-    check_step(case.minutes, case.step)
-    return increments_of(ordinates.at(np.arange(case.n_steps + 1) / case.n_steps), case.total)
 
 
 @cache

@@ -17,6 +17,8 @@ CENTRE: Final = "centre"
 PEAKS: Final[Mapping[str, float]] = MappingProxyType({"early": 0.25, CENTRE: 0.5, "late": 0.75})
 """Fractions of the duration that lie before the peak, by their words."""
 
+_ITEM: Final = "[[design.pattern]] peak"
+
 _EXPECTED: Final = "early, centre, late, or a fraction of the duration between 0 and 1"
 
 # What a fraction times a number of steps may be off, in steps, for the rounding of decimal fractions.
@@ -47,19 +49,20 @@ def peak_fraction(peak: str | float = CENTRE) -> float:
     >>> peak_fraction(37.5)
     Traceback (most recent call last):
         ...
-    basinrain.errors.JobError: peak: found 37.5; expected early, centre, late, or a fraction of the duration between \
-0 and 1; write 0.375 for 37.5 %
+    basinrain.errors.JobError: [[design.pattern]] peak: found 37.5; expected early, centre, late, or a fraction of the \
+duration between 0 and 1; write 0.375 for 37.5 %
     """
     if isinstance(peak, str):
         if peak in PEAKS:
             return PEAKS[peak]
-        raise JobError(Problem(item="peak", found=f"'{peak}'", expected=_EXPECTED, remedy=nearest_name(peak, PEAKS)))
+        remedy = nearest_name(peak, PEAKS)
+        raise JobError(Problem(item=_ITEM, found=f"'{peak}'", expected=_EXPECTED, remedy=remedy))
     # True is a number to Python, but no fraction that anybody means.
     if isinstance(peak, bool) or not 0 < peak < 1:
         percent = not isinstance(peak, bool) and 1 < peak < 100
         remedy = f"write {peak / 100:g} for {peak:g} %" if percent else "correct it"
         found = str(peak).lower() if isinstance(peak, bool) else f"{peak:g}"
-        raise JobError(Problem(item="peak", found=found, expected=_EXPECTED, remedy=remedy))
+        raise JobError(Problem(item=_ITEM, found=found, expected=_EXPECTED, remedy=remedy))
     return float(peak)
 
 

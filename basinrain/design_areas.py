@@ -1,0 +1,113 @@
+"""The areas of a design: all basins above every point of interest as one, and each basin by itself."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+import shapely
+
+from basinrain.basins import UNION, Basins
+from basinrain.designstorm.design_storms import PointOfInterest
+from basinrain.errors import JobError, Problems, nearest_name
+from basinrain.jobfile.design_tables import DesignTable
+
+__all__ = ["Areas", "areas_of"]
+
+_LAPPED: Final = 1e-6
+"""Share of the area over which basins may lap, as they do by the rounding of their corners, and still be apart."""
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Areas:
+    """The areas of a design, each a row.
+
+    Parameters
+    ----------
+    points
+        The points of interest, each with its rows.
+    basins
+        Every area as a polygon in the working plane, rows as the points have them; ids are names for messages.
+    names
+        What results call them: names of the points, and ids of basins.
+    """
+
+    points: tuple[PointOfInterest, ...]
+    basins: Basins
+    names: tuple[str, ...]
+
+
+def areas_of(design: DesignTable, basins: Basins) -> Areas:
+    """Return the areas of a design.
+
+    Parameters
+    ----------
+    design
+        The job's table; without points of interest there is one, for all basins together.
+    basins
+        In the working plane, with the union's row.
+
+    Raises
+    ------
+    JobError
+        A point names a basin that there is not; all of them.
+
+    Examples
+    --------
+    >>> from basinrain.jobfile import parse_design_job
+    >>> job = parse_design_job(
+    ...     {
+    ...         "job": {"name": "Two halves"},
+    ...         "basins": {"file": "basins.geojson"},
+    ...         "design": {
+    ...             "aep": 0.1,
+    ...             "durations": "1h",
+    ...             "step": "10min",
+    ...             "depths": {"from": "table"},
+    ...             "point": [{"name": "ford", "basins": ["east"]}, {"name": "mouth", "basins": ["east", "west"]}],
+    ...             "pattern": {"shape": "uniform"},
+    ...         },
+    ...     }
+    ... )
+    >>> halves = Basins(ids=("west", "east"), polygons=[shapely.box(0, 0, 5, 10), shapely.box(5, 0, 10, 10)], crs="local")
+    >>> areas = areas_of(job.design, halves.with_union())
+    >>> areas.names, areas.basins.areas, areas.points[1].rows
+    (('ford', 'mouth', 'east', 'west'), array([ 50., 100.,  50.,  50.]), (2, 3))
+    """
+    known = tuple(basin for basin in basins.ids if basin != UNION)
+    asked = {point.name: point.basins for point in design.point} or {_name_of_all(known): known}
+    problems = Problems()
+    for name, above in asked.items():
+        for basin in above:
+            if basin not in known:
+                problems.add(
+                    item=f"[[design.point]] {name}, basins",
+                    found=f"'{basin}'",
+                    expected="the id of a basin",
+                    remedy=nearest_name(basin, known),
+                    basin=basin,
+                )
+    problems.raise_as(JobError)
+    parts = tuple(dict.fromkeys(basin for above in asked.values() for basin in above))
+    polygons = [basins.polygons[basins.ids.index(basin)] for basin in parts]
+    of = dict(zip(parts, polygons, strict=True))
+    wholes = [shapely.union_all([of[basin] for basin in above]) for above in asked.values()]
+    points = tuple(
+        PointOfInterest(
+            name=name,
+            row=k,
+            basins=tuple(above),
+            rows=tuple(len(asked) + parts.index(basin) for basin in above),
+            apart=sum(of[basin].area for basin in above) <= wholes[k].area * (1 + _LAPPED),
+        )
+        for k, (name, above) in enumerate(asked.items())
+    )
+    ids = (*(f"all above {name}" for name in asked), *(f"basin {basin}" for basin in parts))
+    every = np.empty(len(ids), dtype=object)
+    every[:] = [*wholes, *polygons]
+    return Areas(points=points, basins=Basins(ids=ids, polygons=every, crs=basins.crs), names=(*asked, *parts))
+
+
+def _name_of_all(known: tuple[str, ...]) -> str:
+    return known[0] if len(known) == 1 else UNION

@@ -1,0 +1,285 @@
+"""The depths that a job's design rests on, and how much every point counts in every area."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from functools import partial
+from typing import Any, cast
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain import reading
+from basinrain.averaging import averaging_method
+from basinrain.basins import Basins
+from basinrain.design_asked import minutes_of
+from basinrain.designstorm.areal_reduction import (
+    ExponentialCoefficients,
+    Reduced,
+    areal_reduction,
+)
+from basinrain.designstorm.depth_chain import Reducer
+from basinrain.designstorm.depth_source import DepthSource
+from basinrain.designstorm.equations import EquationDepths
+from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.interval_factors import interval_factor
+from basinrain.designstorm.patterns import PATTERNS
+from basinrain.designstorm.point_depths import PointDepths
+from basinrain.errors import DataError, JobError, Problem, Problems
+from basinrain.gauges import GaugeNetwork
+from basinrain.inputs import attempt
+from basinrain.jobfile import DesignJob, Job
+from basinrain.jobfile.design_tables import EQUATION, NO_REDUCTION, RASTERS, DesignDepthsTable, DesignTable
+from basinrain.reading.depth_rasters import RasterFile, read_depth_rasters
+from basinrain.reading.design_depths import read_point_depths
+from basinrain.reading.pattern_table import read_pattern_table
+from basinrain.reading.reduction_table import read_reduction_table
+from basinrain.units import area_factor
+
+__all__ = ["Sourced", "interval_factors", "pattern_options", "reducer", "sourced"]
+
+Floats = npt.NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class Sourced:
+    """Depths by duration and frequency, with the weight of every point in every area.
+
+    Parameters
+    ----------
+    source
+        The depths.
+    weights : array of float, shape (n_areas, n_points)
+        Rows sum to 1.
+    method
+        What made the weights, in words.
+    """
+
+    source: DepthSource
+    weights: Floats
+    method: str
+
+
+def sourced(job: Job | DesignJob, design: DesignTable, areas: Basins) -> Sourced:
+    """Read the depths that a job names, and weigh their points over the areas of the design.
+
+    Parameters
+    ----------
+    job, design
+        The job and its table; depths from the record are made elsewhere.
+    areas
+        In the working plane.
+
+    Raises
+    ------
+    ReadError, DataError, JobError, MethodError
+        A file or what it says cannot be; points are nowhere near the areas, or have no position where they need one.
+    """
+    table = design.depths
+    if table.origin == EQUATION:
+        return Sourced(source=_equation(table), weights=np.ones((len(areas), 1)), method="one point")
+    if table.origin == RASTERS:
+        depths, weights = read_depth_rasters(
+            _rasters(job, table),
+            areas,
+            unit=table.unit or "",
+            crs=table.crs,
+            source=table.source,
+            date=table.date,
+        )
+        return Sourced(source=depths, weights=weights.weights, method="share of the area in every cell")
+    depths = read_point_depths(
+        job.path(table.file or ""),
+        unit=table.unit or "",
+        series=table.series or "",
+        probability=table.probability or "",
+        layout=table.layout,
+        columns=table.columns,
+        duration_unit=table.duration_unit,
+        crs=table.crs,
+        source=table.source,
+        date=table.date,
+    )
+    if len(depths.points) == 1:
+        _check_place(depths, areas)
+        return Sourced(source=depths, weights=np.ones((len(areas), 1)), method="one point")
+    return Sourced(source=depths, weights=_weights(job, depths, areas, table.average), method=table.average)
+
+
+def _equation(table: DesignDepthsTable) -> EquationDepths:
+    first, last = table.valid or ("", "")
+    return EquationDepths(
+        point="equation",
+        equation=table.equation or "",
+        coefficients=table.coefficients,
+        return_periods=np.array(table.return_periods),
+        valid=(minutes_of(first), minutes_of(last)),
+        unit=table.unit or "",
+        duration_unit=table.duration_unit or "",
+        series=table.series or "",
+        source=table.source,
+        date=table.date,
+    )
+
+
+def _rasters(job: Job | DesignJob, table: DesignDepthsTable) -> list[RasterFile]:
+    problems = Problems()
+    files = []
+    for raster in table.raster:
+        make = (
+            partial(Frequency.of_aep, raster.aep)
+            if raster.aep is not None
+            else partial(Frequency, raster.return_period or 0.0, table.series or "")
+        )
+        frequency = attempt(problems, cast("Callable[[], Frequency]", make))
+        if frequency is not None:
+            files.append(RasterFile(job.path(raster.file), minutes_of(raster.duration), frequency))
+    problems.raise_as(JobError)
+    return files
+
+
+def _network(depths: PointDepths) -> GaugeNetwork:
+    return GaugeNetwork(ids=depths.points, x=depths.positions[:, 0], y=depths.positions[:, 1], crs=depths.crs)
+
+
+def _check_place(depths: PointDepths, areas: Basins) -> None:
+    if not np.isnan(depths.positions).any():
+        reading.check_near(_network(depths).to_crs(areas.crs), areas, kind="depth point")
+
+
+def _weights(job: Job | DesignJob, depths: PointDepths, areas: Basins, average: str) -> Floats:
+    without = [point for point, position in zip(depths.points, depths.positions, strict=True) if np.isnan(position[0])]
+    if without:
+        raise DataError(
+            Problem(
+                item=f"[design.depths] file, point {point}",
+                found="no position",
+                expected="its coordinates, by which several points are averaged",
+                remedy="add columns for them, or keep one point",
+            )
+            for point in without
+        )
+    network = _network(depths).to_crs(areas.crs)
+    reading.check_near(network, areas, kind="depth point")
+    weigh = averaging_method(average).prepare(network, areas, **job.averaging.options(average))
+    weights = weigh(np.ones(len(network), dtype=bool)).weights
+    problems = Problems()
+    for row in np.flatnonzero(np.isnan(weights).any(axis=1)):
+        problems.add(
+            item=f"[design.depths] average, {areas.ids[row]}",
+            found=f"no weights by '{average}' from the points of the table",
+            expected="points that the method can use",
+            remedy="choose 'thiessen', which takes the nearest",
+        )
+    problems.raise_as(DataError)
+    return weights
+
+
+def interval_factors(table: DesignDepthsTable, observed_every: float | None = None) -> Callable[[Floats], Floats] | None:
+    """Return what makes up for depths that were read at fixed intervals; None where the job asks for nothing.
+
+    ``observed_every`` is the interval in minutes, of a record; else the job states it.
+    """
+    if table.interval_factor is None:
+        return None
+    every = minutes_of(table.observed_every or "") if observed_every is None else observed_every
+    return partial(_factor, table.interval_factor, every)
+
+
+def _factor(method: str, every: float, minutes: Floats) -> Floats:
+    return interval_factor(method, minutes, every)
+
+
+def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
+    """Return the areal reduction that a job asks for; None where it asks for none."""
+    table = design.areal_reduction
+    if table is None or table.method == NO_REDUCTION:
+        return None
+    options: dict[str, Any] = {}
+    if table.method == "arr-2019" and table.region is not None:
+        options["region"] = table.region
+    elif table.method == "exponential":
+        options["coefficients"] = _coefficients(design)
+    elif table.method == "table":
+        if table.file is None:
+            raise JobError(
+                Problem(
+                    item="[design.areal_reduction] file",
+                    found="nothing",
+                    expected="the file of the reduction table",
+                    remedy="name it",
+                )
+            )
+        options["table"] = read_reduction_table(
+            job.path(table.file), area_unit=table.area_unit or "", source=table.source
+        )
+    method = areal_reduction(table.method)
+    method.check_options(options)
+
+    def reduce(area: float, minutes: Floats, frequency: Frequency) -> Reduced:
+        return method.reduce(area, minutes, frequency, outside=table.outside, **options)
+
+    return reduce
+
+
+def _coefficients(design: DesignTable) -> ExponentialCoefficients:
+    table = design.areal_reduction
+    assert table is not None
+    problems = Problems()
+    for name in ("c1", "c2", "c3"):
+        if name not in table.coefficients:
+            problems.add(
+                item=f"[design.areal_reduction] coefficients, {name}", found="none", expected="c1, c2 and c3"
+            )
+    for name in table.coefficients.keys() - {"c1", "c2", "c3"}:
+        problems.add(item=f"[design.areal_reduction] coefficients, {name}", found="it", expected="c1, c2 and c3")
+    if table.valid_areas is not None and table.area_unit is None:
+        problems.add(
+            item="[design.areal_reduction] area_unit",
+            found="nothing",
+            expected="the unit of valid_areas",
+            remedy="state it",
+        )
+    problems.raise_as(JobError)
+    areas = None
+    if table.valid_areas is not None:
+        factor = area_factor(table.area_unit or "")
+        areas = (table.valid_areas[0] * factor, table.valid_areas[1] * factor)
+    minutes = None if table.valid is None else (float(minutes_of(table.valid[0])), float(minutes_of(table.valid[1])))
+    return ExponentialCoefficients(
+        c1=table.coefficients["c1"],
+        c2=table.coefficients["c2"],
+        c3=table.coefficients["c3"],
+        source=table.source,
+        areas=areas,
+        minutes=minutes,
+    )
+
+
+def pattern_options(job: Job | DesignJob, design: DesignTable, observed: Callable[[str], Any]) -> Sequence[dict[str, Any]]:
+    """Return the options of every pattern, with the files that patterns name read.
+
+    ``observed`` gives the ordinates of a storm of the record by its name.
+    """
+    problems = Problems()
+    result = []
+    for number, table in enumerate(design.pattern, start=1):
+        options: dict[str, Any] = {}
+        for option in PATTERNS[table.shape].options:
+            if option == "ordinates":
+                read = (
+                    partial(observed, table.storm)
+                    if table.storm is not None
+                    else partial(
+                        read_pattern_table, job.path(table.file or ""), percent=table.percent, columns=table.columns
+                    )
+                )
+                options[option] = attempt(problems, cast("Callable[[], Any]", read))
+            elif getattr(table, option) is not None:
+                options[option] = getattr(table, option)
+        if "peak" in options:
+            attempt(problems, partial(_peak, number, options["peak"]))
+        result.append(options)
+    problems.raise_as(JobError)
+    return result

@@ -1,0 +1,145 @@
+"""Durations and depths of design tables: what their units and words mean, and how they are said."""
+
+from __future__ import annotations
+
+import re
+from types import MappingProxyType
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.intervals import interval_of
+from basinrain.units import depth_factor
+
+__all__ = ["DURATION_UNITS", "UNITS", "depth_words", "duration_words", "in_mm", "parse_duration", "unit_factor"]
+
+Floats = npt.NDArray[np.float64]
+
+DURATION_UNITS: Final = MappingProxyType({"min": 1.0, "h": 60.0, "d": 1440.0})
+"""Units of durations and how many minutes one of them is."""
+
+UNITS: Final = ("mm", "in", "mm/h", "in/h")
+"""Units of the values of a table of depths; per hour means intensity."""
+
+_PER_HOUR: Final = "/h"
+_WORD: Final = re.compile(r"(?P<number>[0-9]+\.?[0-9]*|\.[0-9]+)\s*(?P<unit>min|h|d)?")
+
+
+def duration_words(minutes: float) -> str:
+    """Return a duration in the largest unit of which it is a whole number.
+
+    Examples
+    --------
+    >>> duration_words(90), duration_words(1440), duration_words(7.5)
+    ('90min', '1d', '7.5min')
+    """
+    return interval_of(round(minutes) * 60).label if minutes >= 1 and minutes % 1 == 0 else f"{minutes:.6g}min"
+
+
+def parse_duration(text: str, *, unit: str | None = None) -> float:
+    """Return the minutes of a duration.
+
+    Parameters
+    ----------
+    text
+        A number with ``min``, ``h`` or ``d``, capitals or not; a number alone where ``unit`` is given.
+    unit
+        The unit of a number alone, one of :data:`DURATION_UNITS`.
+
+    Returns
+    -------
+    float
+        Above 0.
+
+    Raises
+    ------
+    JobError
+        It is no such text, or 0.
+
+    Examples
+    --------
+    >>> parse_duration("24h"), parse_duration("1.5 h"), parse_duration("45", unit="min")
+    (1440.0, 90.0, 45.0)
+    >>> parse_duration("45")
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.JobError: duration: found '45' without a unit; expected a number with min, h or d: 15min, 1h, 2d; \
+write the unit, or declare duration_unit
+    """
+    match = _WORD.fullmatch(text.strip().lower())
+    own = match["unit"] if match else None
+    if match and (own or unit) and (minutes := float(match["number"]) * DURATION_UNITS[own or str(unit)]) > 0:
+        return minutes
+    bare = match is not None and float(match["number"]) > 0
+    raise JobError(
+        Problem(
+            item="duration",
+            found=f"'{text}'" + (" without a unit" if bare else ""),
+            expected="a number with min, h or d: 15min, 1h, 2d",
+            remedy="write the unit, or declare duration_unit" if bare else "",
+        )
+    )
+
+
+def unit_factor(unit: str, *, known: tuple[str, ...] = UNITS) -> float:
+    """Return how many mm, or mm/h, one ``unit`` of a table is.
+
+    Parameters
+    ----------
+    unit
+        One of ``known``.
+    known
+        The units that are accepted, of :data:`UNITS`.
+
+    Raises
+    ------
+    JobError
+        It is another; the nearest accepted one is named.
+
+    Examples
+    --------
+    >>> unit_factor("in/h")
+    25.4
+    >>> unit_factor("mm", known=("mm/h", "in/h"))
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.JobError: unit: found 'mm'; expected one of: mm/h, in/h; did you mean 'mm/h'?
+    """
+    if unit not in known:
+        expected = "one of: " + ", ".join(known)
+        raise JobError(Problem(item="unit", found=f"'{unit}'", expected=expected, remedy=nearest_name(unit, known)))
+    return depth_factor(unit.removesuffix(_PER_HOUR))
+
+
+def in_mm(values: Floats, minutes: Floats, unit: str) -> Floats:
+    """Return depths in mm of depths or intensities.
+
+    Parameters
+    ----------
+    values : array of float
+        In ``unit``, one of :data:`UNITS`; NaN stays.
+    minutes : array of float
+        Their durations, in a shape that goes with ``values``.
+
+    Examples
+    --------
+    >>> in_mm(np.array([2.0, 1.0]), np.array([30.0, 120.0]), "in/h")
+    array([25.4, 50.8])
+    """
+    depth: Floats = values * unit_factor(unit)
+    return depth * (minutes / DURATION_UNITS["h"]) if unit.endswith(_PER_HOUR) else depth
+
+
+def depth_words(mm: float, minutes: float, unit: str = "mm") -> str:
+    """Return a depth and its intensity in words, in the unit that a table is in.
+
+    Examples
+    --------
+    >>> depth_words(50.8, 120.0), depth_words(50.8, 120.0, "in/h")
+    ('50.8 mm (25.4 mm/h)', '2 in (1 in/h)')
+    """
+    depth_unit = unit.removesuffix(_PER_HOUR)
+    depth = mm / unit_factor(unit)
+    return f"{depth:.6g} {depth_unit} ({depth / minutes * DURATION_UNITS['h']:.6g} {depth_unit}{_PER_HOUR})"

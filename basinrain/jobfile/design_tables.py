@@ -1,0 +1,215 @@
+"""The tables of a job that are about design storms: ``[design]`` and those within it."""
+
+from __future__ import annotations
+
+from datetime import date
+from typing import Annotated, Any
+
+from pydantic import AfterValidator, BeforeValidator, Field
+from pydantic_core import PydanticCustomError
+
+from basinrain import averaging
+from basinrain.designstorm.areal_reduction import REDUCTIONS
+from basinrain.designstorm.equations import EQUATIONS
+from basinrain.designstorm.exceedance import SERIES
+from basinrain.designstorm.interval_factors import INTERVAL_FACTORS
+from basinrain.designstorm.patterns import PATTERNS
+from basinrain.designstorm.extreme_values import DISTRIBUTIONS
+from basinrain.jobfile.fields import Moment, NameList, Positive, Table, as_list, names, once, one_of
+from basinrain.jobfile.series_tables import FORMATS
+from basinrain.errors import JobError
+from basinrain.intervals import parse_interval
+from basinrain.units import AREA_UNITS, DEPTH_UNITS
+
+__all__ = [
+    "EQUATION",
+    "NO_REDUCTION",
+    "ORIGINS",
+    "RASTERS",
+    "RECORD",
+    "TABLE",
+    "ArealReductionTable",
+    "DesignTable",
+    "DesignDepthsTable",
+    "PatternTable",
+    "PointTable",
+    "RarityTable",
+    "RasterTable",
+    "UpliftTable",
+]
+
+TABLE, RASTERS, EQUATION, RECORD = "table", "rasters", "equation", "record"
+ORIGINS = (TABLE, RASTERS, EQUATION, RECORD)
+"""Where depths by duration and frequency may come from."""
+
+NO_REDUCTION = "none"
+"""Written for an areal reduction that is not made."""
+
+RATES = tuple(f"{unit}/h" for unit in DEPTH_UNITS if unit != "kg m-2")
+"""Units of intensity."""
+
+
+def _length(word: str) -> str:
+    try:
+        interval = parse_interval(word)
+    except JobError:
+        interval = None
+    if interval is None or interval.seconds is None:
+        expected = "a number with min, h or d: 10min, 6h, 1d"
+        raise PydanticCustomError("length", "{expected}", {"expected": expected})
+    return interval.label
+
+
+Duration = Annotated[str, AfterValidator(_length)]
+"""A number with min, h or d; a month has no one length."""
+
+
+def _plain_date(value: object) -> object:
+    return value.isoformat() if isinstance(value, date) else str(value) if isinstance(value, int) else value
+
+
+def _stated(value: str) -> str:
+    if not value.strip():
+        raise PydanticCustomError("stated", "{expected}", {"expected": "it to be stated"})
+    return value.strip()
+
+
+Stated = Annotated[str, AfterValidator(_stated)]
+Durations = Annotated[tuple[Duration, ...], BeforeValidator(names), Field(min_length=1), AfterValidator(once)]
+
+
+def _list(value: object) -> object:
+    return [value] if isinstance(value, int | float) else value
+
+
+Numbers = Annotated[tuple[float, ...], BeforeValidator(_list), Field(min_length=1), AfterValidator(once)]
+
+
+class RasterTable(Table):
+    """``[[design.depths.raster]]``: the depths of one duration and frequency."""
+
+    file: str
+    duration: Duration
+    aep: float | None = None
+    return_period: float | None = None
+
+
+class DesignDepthsTable(Table):
+    """``[design.depths]``: depths by duration and frequency."""
+
+    origin: Annotated[str, one_of(ORIGINS), Field(alias="from")]
+    source: str = ""
+    date: Annotated[str, BeforeValidator(_plain_date)] = ""
+    series: Annotated[str, one_of(SERIES)] | None = None
+    unit: Annotated[str, one_of((*DEPTH_UNITS, *RATES))] | None = None
+    file: str | None = None
+    layout: Annotated[str, one_of(("long", "wide"))] = "long"
+    probability: Annotated[str, one_of(("aep", "aep-percent", "return-period"))] | None = None
+    duration_unit: Annotated[str, one_of(("min", "h", "d"))] | None = None
+    columns: dict[str, str] = Field(default={})
+    crs: str | None = None
+    raster: Annotated[tuple[RasterTable, ...], BeforeValidator(as_list)] = ()
+    equation: Annotated[str, one_of(EQUATIONS)] | None = None
+    coefficients: Annotated[tuple[dict[str, float], ...], BeforeValidator(as_list)] = ()
+    valid: tuple[Duration, Duration] | None = None
+    return_periods: Annotated[tuple[Positive, ...], AfterValidator(once)] = ()
+    convert: bool = False
+    extrapolate: bool = False
+    average: Annotated[str, one_of(averaging.METHODS)] = "thiessen"
+    interval_factor: Annotated[str, one_of(INTERVAL_FACTORS)] | None = None
+    observed_every: Duration | None = None
+    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(once)] = ()
+    gauges: NameList = ()
+    wet_season: tuple[Annotated[int, Field(ge=1, le=12)], ...] = ()
+    distribution: Annotated[str, one_of(DISTRIBUTIONS)] | None = None
+    beyond_record: bool = False
+
+
+class UpliftTable(Table):
+    """``[design.uplift]``: a factor for climate to come, with where it is from and for when."""
+
+    factor: Positive
+    source: Stated
+    horizon: Annotated[str, BeforeValidator(_plain_date), AfterValidator(_stated)]
+
+
+class ArealReductionTable(Table):
+    """``[design.areal_reduction]``: from a point's depth to that of an area."""
+
+    method: Annotated[str, one_of((*REDUCTIONS, NO_REDUCTION))]
+    region: str | None = None
+    coefficients: dict[str, float] = Field(default={})
+    source: str = ""
+    file: str | None = None
+    area_unit: Annotated[str, one_of(AREA_UNITS)] | None = None
+    valid: tuple[Duration, Duration] | None = None
+    valid_areas: tuple[float, float] | None = None
+    area: Annotated[str, one_of(("to-point", "own"))] = "to-point"
+    outside: Annotated[str, one_of(("refuse", "clamp"))] = "refuse"
+    compare: Annotated[
+        tuple[Annotated[str, one_of(REDUCTIONS)], ...], BeforeValidator(names), AfterValidator(once)
+    ] = ()
+
+
+class PointTable(Table):
+    """``[[design.point]]``: a point of interest and the basins above it."""
+
+    name: Stated
+    basins: Annotated[tuple[str, ...], BeforeValidator(names), Field(min_length=1), AfterValidator(once)]
+
+
+class PatternTable(Table):
+    """``[[design.pattern]]``: how a depth falls in time."""
+
+    name: str | None = None
+    shape: Annotated[str, one_of(PATTERNS)]
+    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(once)] = ()
+    peak: str | float | None = None
+    basis: Annotated[str, one_of(("point", "area"))] | None = None
+    smooth: bool = False
+    file: str | None = None
+    percent: bool = False
+    columns: dict[str, str] = Field(default={})
+    storm: str | None = None
+
+    @property
+    def label(self) -> str:
+        """What results call it."""
+        return self.name or self.shape
+
+
+class RarityTable(Table):
+    """``[design.rarity]``: how rare storms of the record were over the areas of the design."""
+
+    storms: NameList = ()
+    average: Annotated[str, one_of(averaging.METHODS)] | None = None
+    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(once)] = ()
+
+
+class DesignTable(Table):
+    """``[design]``: the depths that are wanted, and how they fall in time."""
+
+    aep: Numbers | None = None
+    return_periods: Numbers | None = None
+    durations: Durations
+    step: Duration
+    jurisdiction: str = ""
+    sub_basins: Annotated[str, one_of(("same-depth", "own-depth"))] = "same-depth"
+    start: Moment | None = None
+    formats: Annotated[
+        tuple[Annotated[str, one_of(FORMATS)], ...], BeforeValidator(names), Field(min_length=1), AfterValidator(once)
+    ] = ("csv",)
+    depths: DesignDepthsTable
+    uplift: UpliftTable | None = None
+    areal_reduction: ArealReductionTable | None = None
+    point: Annotated[tuple[PointTable, ...], BeforeValidator(as_list)] = ()
+    pattern: Annotated[tuple[PatternTable, ...], BeforeValidator(as_list), Field(min_length=1)]
+    rarity: RarityTable | None = None
+
+    @property
+    def input_names(self) -> tuple[str, ...]:
+        """The files that the design reads, as they are named."""
+        reduction = None if self.areal_reduction is None else self.areal_reduction.file
+        files: list[Any] = [self.depths.file, *(raster.file for raster in self.depths.raster), reduction]
+        files += [pattern.file for pattern in self.pattern]
+        return tuple(file for file in files if file is not None)
