@@ -70,7 +70,9 @@ def areas_of(design: DesignTable, basins: Basins) -> Areas:
     ...         },
     ...     }
     ... )
-    >>> halves = Basins(ids=("west", "east"), polygons=[shapely.box(0, 0, 5, 10), shapely.box(5, 0, 10, 10)], crs="local")
+    >>> halves = Basins(
+    ...     ids=("west", "east"), polygons=[shapely.box(0, 0, 5, 10), shapely.box(5, 0, 10, 10)], crs="local"
+    ... )
     >>> areas = areas_of(job.design, halves.with_union())
     >>> areas.names, areas.basins.areas, areas.points[1].rows
     (('ford', 'mouth', 'east', 'west'), array([ 50., 100.,  50.,  50.]), (2, 3))

@@ -4,12 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
+from datetime import datetime
 from functools import partial
 from typing import Any, Final
+
+import numpy as np
 
 from basinrain.designstorm.areal_reduction import REDUCTIONS, areal_reduction, check_jurisdiction
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, PARTIAL_DURATION, Frequency
 from basinrain.designstorm.patterns import PATTERNS
+from basinrain.designstorm.patterns.peak import peak_fraction
 from basinrain.errors import JobError, Problem, Problems, nearest_name
 from basinrain.inputs import attempt
 from basinrain.intervals import parse_interval
@@ -25,6 +29,7 @@ from basinrain.jobfile.design_tables import (
     DesignTable,
     PatternTable,
 )
+from basinrain.jobfile.fields import is_month
 
 __all__ = ["Asked", "asked", "minutes_of"]
 
@@ -93,12 +98,15 @@ class Asked:
         Durations in minutes, the shortest first.
     step
         The step in minutes.
+    start
+        The nominal start of every storm, if one is given.
     """
 
     design: DesignTable
     frequencies: tuple[Frequency, ...]
     minutes: tuple[int, ...]
     step: int
+    start: np.datetime64 | None
 
 
 def asked(job: Job | DesignJob) -> Asked:
@@ -153,12 +161,13 @@ as the source has it; state it
                 expected="a whole number of steps" if each > step else "a duration of one step at least",
                 remedy="choose a step that divides it" if each > step else "choose a shorter step",
             )
+    start = _start(design, problems)
     _check_reduction(design, problems)
     _check_points(design, problems)
     _check_patterns(job, design, problems)
     _check_record(job, design, problems)
     problems.raise_as(JobError)
-    return Asked(design=design, frequencies=frequencies, minutes=tuple(minutes), step=step)
+    return Asked(design=design, frequencies=frequencies, minutes=tuple(minutes), step=step, start=start)
 
 
 def minutes_of(word: str) -> int:
@@ -170,6 +179,20 @@ def minutes_of(word: str) -> int:
     (360, 1440)
     """
     return (parse_interval(word).seconds or 0) // 60
+
+
+def _start(design: DesignTable, problems: Problems) -> np.datetime64 | None:
+    if design.start is None:
+        return None
+    when = None if is_month(design.start) else datetime.fromisoformat(design.start)
+    if when is None or when.tzinfo is not None:
+        problems.add(
+            item="[design] start",
+            found=f"'{design.start}'",
+            expected="a date, or a date and time without an offset, such as 2031-05-04T06:00:00",
+        )
+        return None
+    return np.datetime64(when, "s")
 
 
 def _check_depths(table: DesignDepthsTable, problems: Problems) -> None:
@@ -263,14 +286,8 @@ def _check_reduction(design: DesignTable, problems: Problems) -> None:
             remedy="take the table out",
         )
     else:
-        attempt(problems, partial(check_jurisdiction, table.method, design.jurisdiction))
-        _refuse_keys(
-            "[design.areal_reduction]",
-            table,
-            ("method", "area", "outside", "compare", *_keys_of_reduction(table)),
-            f"method = '{table.method}'",
-            problems,
-        )
+        attempt(problems, partial(check_jurisdiction, areal_reduction(table.method), design.jurisdiction or None))
+        _check_keys_of_reduction(table, problems)
     for name in table.compare:
         if areal_reduction(name).options:
             problems.add(
@@ -280,12 +297,33 @@ def _check_reduction(design: DesignTable, problems: Problems) -> None:
             )
 
 
-def _keys_of_reduction(table: ArealReductionTable) -> tuple[str, ...]:
-    return {
-        "arr-2019": ("region",),
-        "exponential": ("coefficients", "source", "valid", "valid_areas", "area_unit"),
-        "table": ("file", "source", "area_unit"),
-    }.get(table.method, ())
+_OF_REDUCTION: Final[Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]]] = {
+    "arr-2019": (("region",), ()),
+    "exponential": (("coefficients", "source"), ("valid", "valid_areas", "area_unit")),
+    "table": (("file", "source", "area_unit"), ()),
+}
+"""The keys that a method of areal reduction needs, and those that it takes besides."""
+
+
+def _check_keys_of_reduction(table: ArealReductionTable, problems: Problems) -> None:
+    needed, taken = _OF_REDUCTION.get(table.method, ((), ()))
+    for key in needed:
+        if not getattr(table, key):
+            problems.add(
+                item=f"[design.areal_reduction] {key}",
+                found="nothing",
+                expected=f"it, which method = '{table.method}' needs",
+                remedy="state it",
+            )
+    keys = ("method", "area", "outside", "compare", *needed, *taken)
+    _refuse_keys("[design.areal_reduction]", table, keys, f"method = '{table.method}'", problems)
+    if table.valid_areas is not None and table.area_unit is None:
+        problems.add(
+            item="[design.areal_reduction] area_unit",
+            found="nothing",
+            expected="the unit of valid_areas",
+            remedy="state it",
+        )
 
 
 def _refuse_keys(item: str, table: Any, taken: Iterable[str], beside: str, problems: Problems) -> None:  # noqa: ANN401
@@ -344,6 +382,8 @@ def _check_options(item: str, table: PatternTable, problems: Problems) -> None:
                 expected=words,
                 remedy="remove it",
             )
+    if table.peak is not None:
+        _named(f"{item} peak", partial(peak_fraction, table.peak), problems)
     for key in files[:1]:
         if getattr(table, key) is None:
             words = "the file of the pattern" if key == "file" else "the name of a [[storm]] of the job"

@@ -2,42 +2,33 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
-from typing import Any, cast
+from typing import cast
 
 import numpy as np
 import numpy.typing as npt
+from scipy.spatial import KDTree
 
 from basinrain import reading
 from basinrain.averaging import averaging_method
 from basinrain.basins import Basins
 from basinrain.design_asked import minutes_of
-from basinrain.designstorm.areal_reduction import (
-    ExponentialCoefficients,
-    Reduced,
-    areal_reduction,
-)
-from basinrain.designstorm.depth_chain import Reducer
 from basinrain.designstorm.depth_source import DepthSource
 from basinrain.designstorm.equations import EquationDepths
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.interval_factors import interval_factor
-from basinrain.designstorm.patterns import PATTERNS
 from basinrain.designstorm.point_depths import PointDepths
 from basinrain.errors import DataError, JobError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
 from basinrain.inputs import attempt
 from basinrain.jobfile import DesignJob, Job
-from basinrain.jobfile.design_tables import EQUATION, NO_REDUCTION, RASTERS, DesignDepthsTable, DesignTable
+from basinrain.jobfile.design_tables import EQUATION, RASTERS, DesignDepthsTable, DesignTable
 from basinrain.reading.depth_rasters import RasterFile, read_depth_rasters
 from basinrain.reading.design_depths import read_point_depths
-from basinrain.reading.pattern_table import read_pattern_table
-from basinrain.reading.reduction_table import read_reduction_table
-from basinrain.units import area_factor
 
-__all__ = ["Sourced", "interval_factors", "pattern_options", "reducer", "sourced"]
+__all__ = ["Sourced", "interval_factors", "nearest_points", "sourced"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -176,7 +167,9 @@ def _weights(job: Job | DesignJob, depths: PointDepths, areas: Basins, average: 
     return weights
 
 
-def interval_factors(table: DesignDepthsTable, observed_every: float | None = None) -> Callable[[Floats], Floats] | None:
+def interval_factors(
+    table: DesignDepthsTable, observed_every: float | None = None
+) -> Callable[[Floats], Floats] | None:
     """Return what makes up for depths that were read at fixed intervals; None where the job asks for nothing.
 
     ``observed_every`` is the interval in minutes, of a record; else the job states it.
@@ -191,95 +184,19 @@ def _factor(method: str, every: float, minutes: Floats) -> Floats:
     return interval_factor(method, minutes, every)
 
 
-def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
-    """Return the areal reduction that a job asks for; None where it asks for none."""
-    table = design.areal_reduction
-    if table is None or table.method == NO_REDUCTION:
-        return None
-    options: dict[str, Any] = {}
-    if table.method == "arr-2019" and table.region is not None:
-        options["region"] = table.region
-    elif table.method == "exponential":
-        options["coefficients"] = _coefficients(design)
-    elif table.method == "table":
-        if table.file is None:
-            raise JobError(
-                Problem(
-                    item="[design.areal_reduction] file",
-                    found="nothing",
-                    expected="the file of the reduction table",
-                    remedy="name it",
-                )
-            )
-        options["table"] = read_reduction_table(
-            job.path(table.file), area_unit=table.area_unit or "", source=table.source
-        )
-    method = areal_reduction(table.method)
-    method.check_options(options)
+def nearest_points(source: DepthSource, network: GaugeNetwork) -> npt.NDArray[np.int64]:
+    """Return which point of the depths is nearest to each gauge; the only one where there is one.
 
-    def reduce(area: float, minutes: Floats, frequency: Frequency) -> Reduced:
-        return method.reduce(area, minutes, frequency, outside=table.outside, **options)
-
-    return reduce
-
-
-def _coefficients(design: DesignTable) -> ExponentialCoefficients:
-    table = design.areal_reduction
-    assert table is not None
-    problems = Problems()
-    for name in ("c1", "c2", "c3"):
-        if name not in table.coefficients:
-            problems.add(
-                item=f"[design.areal_reduction] coefficients, {name}", found="none", expected="c1, c2 and c3"
-            )
-    for name in table.coefficients.keys() - {"c1", "c2", "c3"}:
-        problems.add(item=f"[design.areal_reduction] coefficients, {name}", found="it", expected="c1, c2 and c3")
-    if table.valid_areas is not None and table.area_unit is None:
-        problems.add(
-            item="[design.areal_reduction] area_unit",
-            found="nothing",
-            expected="the unit of valid_areas",
-            remedy="state it",
-        )
-    problems.raise_as(JobError)
-    areas = None
-    if table.valid_areas is not None:
-        factor = area_factor(table.area_unit or "")
-        areas = (table.valid_areas[0] * factor, table.valid_areas[1] * factor)
-    minutes = None if table.valid is None else (float(minutes_of(table.valid[0])), float(minutes_of(table.valid[1])))
-    return ExponentialCoefficients(
-        c1=table.coefficients["c1"],
-        c2=table.coefficients["c2"],
-        c3=table.coefficients["c3"],
-        source=table.source,
-        areas=areas,
-        minutes=minutes,
-    )
-
-
-def pattern_options(job: Job | DesignJob, design: DesignTable, observed: Callable[[str], Any]) -> Sequence[dict[str, Any]]:
-    """Return the options of every pattern, with the files that patterns name read.
-
-    ``observed`` gives the ordinates of a storm of the record by its name.
+    Parameters
+    ----------
+    source
+        The depths; several points have positions.
+    network
+        In the working plane.
     """
-    problems = Problems()
-    result = []
-    for number, table in enumerate(design.pattern, start=1):
-        options: dict[str, Any] = {}
-        for option in PATTERNS[table.shape].options:
-            if option == "ordinates":
-                read = (
-                    partial(observed, table.storm)
-                    if table.storm is not None
-                    else partial(
-                        read_pattern_table, job.path(table.file or ""), percent=table.percent, columns=table.columns
-                    )
-                )
-                options[option] = attempt(problems, cast("Callable[[], Any]", read))
-            elif getattr(table, option) is not None:
-                options[option] = getattr(table, option)
-        if "peak" in options:
-            attempt(problems, partial(_peak, number, options["peak"]))
-        result.append(options)
-    problems.raise_as(JobError)
-    return result
+    if len(source.points) == 1 or not isinstance(source, PointDepths):
+        return np.zeros(len(network), dtype=np.int64)
+    points = _network(source).to_crs(network.crs)
+    tree = KDTree(np.column_stack([points.x, points.y]))
+    nearest: npt.NDArray[np.int64] = tree.query(np.column_stack([network.x, network.y]))[1]
+    return nearest

@@ -75,10 +75,14 @@ class InfillChoice:
         }
         return {key: value for key, value in given.items() if value is not None}
 
-    def complete(self, window: RainRecord, *, long: npt.NDArray[np.bool_] | None = None) -> Completed:
-        """Infill a window of the record; ``long`` as for :func:`basinrain.infill.complete`."""
+    def complete(
+        self, window: RainRecord, *, long: npt.NDArray[np.bool_] | None = None, trace: bool = True
+    ) -> Completed:
+        """Infill a window of the record; ``long`` and ``trace`` as for :func:`basinrain.infill.complete`."""
         relations = self.relations if self.options.chosen_method.needs_relations else None
-        return complete(window, self.network, self.options, long=long, relations=relations, ratios=self.ratios)
+        return complete(
+            window, self.network, self.options, long=long, relations=relations, ratios=self.ratios, trace=trace
+        )
 
 
 def compare(job: Job, record: RainRecord, network: GaugeNetwork, say: Callable[[str], None]) -> Comparison:

@@ -21,7 +21,7 @@ from basinrain.gauges import GaugeNetwork, refuse_colocated
 from basinrain.ground import Plane
 from basinrain.infill_choice import infill_options
 from basinrain.jobfile import Job
-from basinrain.jobfile.tables import EditTable, RainfallTable, StormTable
+from basinrain.jobfile.tables import BasinsJob, EditTable, RainfallTable, StormTable
 from basinrain.jobfile.times import edit_window_times, rainfall_day_start, storm_window_times
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
@@ -189,7 +189,7 @@ def _read_source(job: Job, number: int, table: RainfallTable) -> RainRecord:
         return reading.read_rainfall([job.path(name) for name in table.paths], **options)
 
 
-def read_basins_of(job: Job) -> tuple[Basins, tuple[Note, ...]]:
+def read_basins_of(job: BasinsJob) -> tuple[Basins, tuple[Note, ...]]:
     """Return a job's basins as their file has them, and what was remarked."""
     table = job.basins
     return reading.read_basins(job.path(table.file), **table.model_dump(exclude={"file"}))
@@ -311,13 +311,13 @@ def catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.f
     return factors
 
 
-def input_digests(job: Job) -> dict[str, str]:
+def input_digests(job: BasinsJob) -> dict[str, str]:
     """Return the SHA-256 of every input file, by its name in the job."""
     names = job.input_names
     return {part: _digest(job.path(part)) for name in names for part in _parts(job, name)}
 
 
-def _parts(job: Job, name: str) -> list[str]:
+def _parts(job: BasinsJob, name: str) -> list[str]:
     """Return the files that one name stands for: a shapefile has its table, index and projection beside it."""
     path = job.path(name)
     if path.suffix.lower() != ".shp":

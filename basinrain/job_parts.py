@@ -7,13 +7,15 @@ from importlib.metadata import version
 from pathlib import Path
 from typing import Any
 
+from basinrain.basins import Basins
 from basinrain.errors import JobError, Problem
+from basinrain.ground import Plane
 from basinrain.infill.leave_one_out import Comparison
 from basinrain.infill_choice import InfillChoice
 from basinrain.inputs import Inputs, input_digests
-from basinrain.jobfile import Job, read_job
+from basinrain.jobfile import DesignJob, Job, read_job
 
-__all__ = ["Report", "choice_fact", "common_fields", "library_versions", "resolved"]
+__all__ = ["Report", "basin_fields", "choice_fact", "common_fields", "library_versions", "refuse_settings", "resolved"]
 
 Report = Callable[[str], None]
 """Is called with a few words before each part of the work."""
@@ -23,6 +25,12 @@ def resolved(job: Job | str | Path, settings: Sequence[str]) -> Job:
     """Return a job that may be given by the path of its file; settings go with a path only."""
     if not isinstance(job, Job):
         return read_job(job, settings)
+    refuse_settings(settings)
+    return job
+
+
+def refuse_settings(settings: Sequence[str]) -> None:
+    """Refuse settings beside a job that is already resolved."""
     if settings:
         raise JobError(
             Problem(
@@ -32,24 +40,32 @@ def resolved(job: Job | str | Path, settings: Sequence[str]) -> Job:
                 remedy="give them to read_job",
             )
         )
-    return job
 
 
 def common_fields(job: Job, given: Inputs, infill: InfillChoice | None = None) -> dict[str, Any]:
-    """Return what every run has."""
-    settings = job.model_dump(mode="json", exclude_none=True, by_alias=True)
+    """Return what every run has that rests on a record."""
+    fields = basin_fields(job, given.basins, given.plane)
+    settings = fields["settings"]
     return {
-        "name": job.job.name,
+        **fields,
         "settings": settings if infill is None else {**settings, "infill": infill.settings},
-        "depth_unit": job.job.depth_unit,
-        "area_unit": job.job.area_unit,
         "network": given.network,
-        "basins": given.basins,
-        "plane": given.plane,
         "record": given.record,
         "screening": given.screening,
         "edits": given.edits,
         "edit_rows": given.edit_rows,
+    }
+
+
+def basin_fields(job: Job | DesignJob, basins: Basins, plane: Plane) -> dict[str, Any]:
+    """Return what every run has, with gauges or without."""
+    return {
+        "name": job.job.name,
+        "settings": job.model_dump(mode="json", exclude_none=True, by_alias=True),
+        "depth_unit": job.job.depth_unit,
+        "area_unit": job.job.area_unit,
+        "basins": basins,
+        "plane": plane,
         "inputs": input_digests(job),
         "versions": library_versions(),
     }

@@ -26,6 +26,7 @@ if TYPE_CHECKING:
 
 __all__ = ["AveragedRun", "InfillRun", "ScreenRun", "StormResult", "StormRun"]
 
+
 @dataclass(frozen=True, eq=False)
 class StormResult:
     """One storm of a run.

@@ -67,6 +67,11 @@ class Run:
     facts: Mapping[str, str] = field(default_factory=dict)
 
     @property
+    def caution(self) -> str:
+        """What every output of the run says of its use."""
+        return CAUTION
+
+    @property
     def warnings(self) -> tuple[Note, ...]:
         """The notes that are warnings."""
         return tuple(note for note in self.notes if note.level == "warning")

@@ -33,6 +33,7 @@ DEPTH_UNITS: Final = MappingProxyType(
         "0.01 mm": 0.01,
         "0.1 in": 2.54,
         "0.01 in": 0.254,
+        "0.001 in": 0.0254,
         "kg m-2": 1.0,
     }
 )
@@ -87,7 +88,7 @@ def depth_factor(unit: str) -> float:
     Traceback (most recent call last):
         ...
     basinrain.errors.JobError: depth unit: found 'inch'; expected one of: mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, \
-0.01 in, kg m-2; did you mean 'in'?
+0.01 in, 0.001 in, kg m-2; did you mean 'in'?
     """
     return _factor(unit, DEPTH_UNITS, "depth")
 

@@ -21,6 +21,11 @@ PUBLISHED: Final = Path(__file__).parent / "data" / "published"
 INCH: Final = 25.4
 
 
+def durations(n_steps: int, step: float) -> Array:
+    """Return 1, 2, ... n steps in minutes."""
+    return np.asarray(np.arange(1, n_steps + 1) * float(step), dtype=np.float64)
+
+
 def published(name: str) -> list[dict[str, str]]:
     """Return the rows of a table of published values."""
     with (PUBLISHED / name).open(encoding="utf-8", newline="") as file:
@@ -37,7 +42,7 @@ def through(minutes: list[float] | Array, depth: list[float] | Array) -> Curve:
     times, depths = np.concatenate([[0.0], minutes]), np.concatenate([[0.0], depth])
 
     def curve(wanted: Array) -> Array:
-        return np.interp(wanted, times, depths)
+        return np.asarray(np.interp(wanted, times, depths), dtype=np.float64)
 
     return curve
 
@@ -45,20 +50,13 @@ def through(minutes: list[float] | Array, depth: list[float] | Array) -> Curve:
 def case_of(curve: Curve, minutes: int, step: int, *, by_duration: Curve | None = None) -> PatternCase:
     """Return the case of a curve, both reductions alike unless the second is given."""
     total = float(curve(np.array([float(minutes)]))[0])
-    return PatternCase(
-        minutes=minutes,
-        step=step,
-        total=total,
-        curve=curve,
-        curve_by_duration=by_duration or curve,
-        area=5e7,
-    )
+    own = by_duration or curve
+    return PatternCase(minutes=minutes, step=step, total=total, curve=curve, curve_by_duration=own, area=5e7)
 
 
 def added_up(increments: list[float], step: int) -> PatternCase:
     """Return the case whose steps add these depths in mm to one another."""
-    times = np.arange(1, len(increments) + 1) * float(step)
-    return case_of(through(times, np.cumsum(increments)), len(increments) * step, step)
+    return case_of(through(durations(len(increments), step), np.cumsum(increments)), len(increments) * step, step)
 
 
 def greatest(depth: Array) -> Array:

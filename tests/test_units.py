@@ -34,7 +34,7 @@ ACRE = 4840 * YARD**2
     [
         (depth_factor, {"mm": 1, "cm": 10, "m": 1000, "in": INCH * 1000, "kg m-2": 1}),
         (depth_factor, {"0.1 mm": Fraction(1, 10), "0.01 mm": Fraction(1, 100)}),
-        (depth_factor, {"0.1 in": INCH * 100, "0.01 in": INCH * 10}),
+        (depth_factor, {"0.1 in": INCH * 100, "0.01 in": INCH * 10, "0.001 in": INCH}),
         (length_factor, {"m": 1, "km": 1000, "ft": FOOT, "us-ft": Fraction(1200, 3937), "mi": MILE}),
         (area_factor, {"m2": 1, "km2": 1000**2, "ha": 100**2, "ft2": FOOT**2, "acre": ACRE, "mi2": MILE**2}),
         (volume_factor, {"m3": 1, "acre-ft": ACRE * FOOT}),
@@ -48,7 +48,7 @@ def test_factors_are_those_of_the_definitions(factor: Callable[[str], float], ex
 
 def test_every_unit_is_checked_above() -> None:
     """No unit escapes the check of the definitions."""
-    assert set(DEPTH_UNITS) == {"mm", "cm", "m", "in", "0.1 mm", "0.01 mm", "0.1 in", "0.01 in", "kg m-2"}
+    assert set(DEPTH_UNITS) == {"mm", "cm", "m", "in", "0.1 mm", "0.01 mm", "0.1 in", "0.01 in", "0.001 in", "kg m-2"}
     assert set(LENGTH_UNITS) == {"m", "km", "ft", "us-ft", "mi"}
     assert set(AREA_UNITS) == {"m2", "km2", "ha", "ft2", "acre", "mi2"}
     assert set(VOLUME_UNITS) == {"m3", "acre-ft"}

@@ -114,6 +114,18 @@ def series(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes wh
 
 
 @main.command()
+@_of_job
+@_clear_errors
+def design(job: Path, **options: Any) -> None:  # noqa: ANN401 - click passes what the options say
+    """Design storms of JOB: point depths, areal reduction, hyetographs of every basin; how rare a storm was."""
+    from basinrain.cli.design import compute, show
+    from basinrain.cli.running import run_command
+    from basinrain.jobfile import read_design_job
+
+    run_command("design", compute, show, job, read=read_design_job, **options)
+
+
+@main.command()
 @click.argument("folder", type=click.Path(path_type=Path))
 @_clear_errors
 def start(folder: Path) -> None:

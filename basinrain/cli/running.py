@@ -12,6 +12,7 @@ from rich.console import Console
 
 from basinrain.cli.progress import Progress
 from basinrain.jobfile import read_job
+from basinrain.jobfile.tables import BasinsJob
 from basinrain.notes import Note
 from basinrain.results_common import Run
 from basinrain.results_series import SeriesRun
@@ -37,6 +38,7 @@ def run_command(
     as_json: bool,
     quiet: bool,
     counted: bool = False,
+    read: Callable[[Path, tuple[str, ...]], BasinsJob] = read_job,
 ) -> None:
     """Run a command on a job; nothing is written unless everything worked.
 
@@ -53,8 +55,10 @@ def run_command(
     counted
         Whether ``compute`` takes ``counted``, which it tells of the steps that are done, and ``work``, the folder for
         what is finished of an interrupted run.
+    read
+        Reads the job.
     """
-    job = read_job(job_file, settings)
+    job = read(job_file, settings)
     folder = (output if output is not None else job.path(job.job.output)) / command
     check_folder(folder, [job_file, *job.inputs])
     try:

@@ -173,7 +173,7 @@ def cell_weights(basins: Basins, grid: CellGrid) -> CellWeights:
 
     Examples
     --------
-    A square of 2 km over the corner of four cells of 2 km, an eighth of it in the western two, and one under water:
+    A square of 2 km over the corner that four cells of 2 km share:
 
     >>> basins = Basins(ids=("square",), polygons=[shapely.box(1500, 1000, 3500, 3000)], crs="local")
     >>> grid = CellGrid(
@@ -195,7 +195,7 @@ or correct crs
     found = list(_areas(basins, grid))
     basin, row, column = (np.concatenate([part[k] for part in found]).astype(np.int64) for k in range(3))
     share = np.concatenate([part[3] for part in found]) / basins.areas[basin]
-    _require_cover(np.bincount(basin, share, minlength=len(basins)), basins, grid)
+    _require_cover(np.bincount(basin, share, minlength=len(basins)).astype(float), basins, grid)
     kept = share > _ROUNDING
     cells, place = np.unique(row[kept] * grid.n_columns + column[kept], return_inverse=True)
     weights = np.zeros((len(basins), len(cells)))
@@ -230,7 +230,10 @@ def _require_planes(basins: Basins, grid: CellGrid) -> None:
 
 
 def _areas(basins: Basins, grid: CellGrid) -> Iterator[tuple[Integers, Integers, Integers, Floats]]:
-    """Yield basins, rows, columns and areas of cells that basins reach, tile by tile; nothing for all at first."""
+    """Yield basins, rows and columns of cells that basins reach, and the areas they share, tile by tile.
+
+    First comes a part without any, so that there is one where no cell is reached.
+    """
     nothing = np.empty(0, dtype=np.int64)
     yield nothing, nothing, nothing, np.empty(0)
     rows, columns = grid.block(ground.project(np.array([shapely.box(*basins.bounds)]), basins.crs, grid.crs)[0])

@@ -34,6 +34,18 @@ class DepthSource(Protocol):
         """Whether the depths are of areas already, so that none may be reduced again."""
 
     @property
+    def frequencies(self) -> tuple[Frequency, ...]:
+        """Those that depths are known of without interpolation, the most frequent first."""
+
+    @property
+    def source(self) -> str:
+        """Where the depths come from."""
+
+    @property
+    def date(self) -> str:
+        """Of when they are."""
+
+    @property
     def shortest(self) -> float:
         """The shortest duration that has a depth, minutes."""
 

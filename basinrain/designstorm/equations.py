@@ -11,8 +11,9 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import SERIES, Frequency
-from basinrain.designstorm.measures import DURATION_UNITS, depth_words, duration_words, in_mm
+from basinrain.designstorm.measures import DURATION_UNITS, INTENSITY_UNITS, depth_words, duration_words, in_mm
 from basinrain.designstorm.reach import SLACK, bracket, check_reach, refuse_unphysical
 from basinrain.errors import JobError, Problems, nearest_name
 
@@ -21,7 +22,6 @@ __all__ = ["EQUATIONS", "Equation", "EquationDepths"]
 Floats = npt.NDArray[np.float64]
 Coefficients = Mapping[str, float]
 
-INTENSITY_UNITS: Final = ("mm/h", "in/h")
 _POWER: Final = "x"
 _GRID: Final = 400
 """Durations, even in their logarithm, at which curves of two return periods are compared."""
@@ -124,7 +124,7 @@ class EquationDepths:
     valid : tuple of float
         The shortest and the longest duration for which the coefficients are valid, minutes.
     unit : str
-        Of the equation's intensity: "mm/h" or "in/h".
+        Of the equation's intensity, one of :data:`~basinrain.designstorm.measures.INTENSITY_UNITS`.
     duration_unit : str
         Of the equation's duration, one of :data:`~basinrain.designstorm.measures.DURATION_UNITS`.
     series : str
@@ -202,13 +202,7 @@ class EquationDepths:
             ("duration_unit", self.duration_unit, tuple(DURATION_UNITS)),
             ("series", self.series, SERIES),
         ):
-            if value not in known:
-                problems.add(
-                    item=f"[design.depths] {key}",
-                    found=f"'{value}'",
-                    expected="one of: " + ", ".join(known),
-                    remedy=nearest_name(value, known),
-                )
+            report_unknown(f"[design.depths] {key}", value, known, problems)
         for key in ("point", "source", "date"):
             if not getattr(self, key).strip():
                 problems.add(item=f"[design.depths] {key}", found="nothing", expected=f"the {key} of the depths")
@@ -298,11 +292,8 @@ class EquationDepths:
     def _check_rarity(self, problems: Problems) -> None:
         if len(self.coefficients) == 1:
             if (power := self.coefficients[0].get(_POWER, 0.0)) < 0:
-                problems.add(
-                    item=self._item(0, _POWER),
-                    found=f"{power:g}, by which depth falls with rarity",
-                    expected="0 or more",
-                )
+                found = f"{power:g}, by which depth falls with rarity"
+                problems.add(item=self._item(0, _POWER), found=found, expected="0 or more", remedy="correct it")
             return
         between = np.geomspace(*self.valid, _GRID)
         depth = np.array([self._depth(one, between) for one in range(len(self.coefficients))])

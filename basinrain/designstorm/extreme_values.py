@@ -97,6 +97,8 @@ def quantiles_of_shape(shape: Floats, variates: Floats) -> Floats:
     array([3.499, 3.   , 2.592])
     """
     none = shape == 0
+    if np.all(none):
+        return np.broadcast_to(variates, np.broadcast_shapes(np.shape(shape), np.shape(variates)))
     k = np.where(none, 1.0, shape)
     return np.where(none, variates, -np.expm1(-k * variates) / k)
 

@@ -302,11 +302,12 @@ def _years(variate: Floats, series: str) -> Floats:
 
 def _check(values: Floats, nodes: Floats, n_t: int) -> None:
     problems = Problems()
-    if nodes.shape not in ((n_t,), (*values.shape, n_t)):
+    fitting = dict.fromkeys(((*values.shape, n_t), (n_t,)))
+    if nodes.shape not in fitting:
         problems.add(
             item="the table's depths",
             found=f"shape {nodes.shape}",
-            expected=f"shape {(*values.shape, n_t)} or {(n_t,)}, a depth for every frequency",
+            expected="shape " + " or ".join(map(str, fitting)) + ", a depth for every frequency",
         )
         problems.raise_as(DataError)
     for item, array in (("depth", values), ("the table's depth", nodes)):

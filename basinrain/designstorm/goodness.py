@@ -10,7 +10,7 @@ from scipy import special
 
 from basinrain.designstorm.extreme_values import quantiles_of_shape
 
-__all__ = ["Goodness", "plot_correlation", "plotting_variates", "share_at_or_below", "shape_test"]
+__all__ = ["Goodness", "plot_correlation", "plotting_variates", "shape_test", "share_at_or_below"]
 
 Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.int64]
@@ -80,14 +80,13 @@ def plot_correlation(ranked: Floats, shape: Floats) -> Floats:
     >>> float(plot_correlation(x**3, np.array(0.0)).round(3))
     0.787
     """
-    if np.any(shape != 0):
-        expected = quantiles_of_shape(np.asarray(shape)[..., None], plotting_variates(ranked.shape[-1]))
-    else:
-        expected = plotting_variates(ranked.shape[-1])
+    variates = plotting_variates(ranked.shape[-1])
+    # The same line for all where all are Gumbel.
+    expected = quantiles_of_shape(np.asarray(shape)[..., None], variates) if np.any(shape) else variates
     a = ranked - ranked.mean(axis=-1, keepdims=True)
     b = expected - expected.mean(axis=-1, keepdims=True)
-    together = (a * b).sum(axis=-1)
-    apart = np.sqrt((a * a).sum(axis=-1) * (b * b).sum(axis=-1))
+    together, a_alone, b_alone = (np.einsum("...i,...i->...", *two) for two in ((a, b), (a, a), (b, b)))
+    apart = np.sqrt(a_alone * b_alone)
     return np.asarray(np.divide(together, apart, out=np.full(together.shape, np.nan), where=apart > 0))
 
 

@@ -14,8 +14,9 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.measures import duration_words
-from basinrain.errors import JobError, MethodError, Problem, Problems, nearest_name
+from basinrain.errors import JobError, MethodError, Problem, Problems
 
 __all__ = ["INTERVAL_FACTORS", "IntervalFactor", "hershfield", "interval_factor", "weiss"]
 
@@ -142,13 +143,7 @@ def interval_factor(method: str, minutes: Floats, observed_every: float) -> Floa
 1h; expected one interval or more; leave the duration out, or the factor
     """
     problems = Problems()
-    if method not in INTERVAL_FACTORS:
-        problems.add(
-            item="[design.depths] interval_factor",
-            found=f"'{method}'",
-            expected="one of: " + ", ".join(INTERVAL_FACTORS),
-            remedy=nearest_name(method, INTERVAL_FACTORS),
-        )
+    report_unknown("[design.depths] interval_factor", method, INTERVAL_FACTORS, problems)
     if not (np.isfinite(observed_every) and observed_every > 0):
         problems.add(item="[design.depths] observed_every", found=f"{observed_every:g} minutes", expected="more than 0")
     problems.raise_as(JobError)

@@ -114,8 +114,8 @@ def _of_gaps(total: Floats, gaps: Floats, n: Ints) -> tuple[Floats, Floats, Floa
     third = second * (2 * c - m) / (m - 2)
     return (
         np.asarray(total / m[..., 0]),
-        np.asarray((gaps * second).sum(axis=-1)),
-        np.asarray((gaps * third).sum(axis=-1)),
+        np.asarray(np.einsum("...i,...i->...", gaps, second)),
+        np.asarray(np.einsum("...i,...i->...", gaps, third)),
     )
 
 

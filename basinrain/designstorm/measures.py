@@ -9,21 +9,25 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, Problem
 from basinrain.intervals import interval_of
-from basinrain.units import depth_factor
+from basinrain.units import DEPTH_UNITS, depth_factor
 
-__all__ = ["DURATION_UNITS", "UNITS", "depth_words", "duration_words", "in_mm", "parse_duration", "unit_factor"]
+__all__ = ["DURATION_UNITS", "INTENSITY_UNITS", "UNITS", "depth_words", "duration_words", "in_mm", "parse_duration"]
 
 Floats = npt.NDArray[np.float64]
 
 DURATION_UNITS: Final = MappingProxyType({"min": 1.0, "h": 60.0, "d": 1440.0})
 """Units of durations and how many minutes one of them is."""
 
-UNITS: Final = ("mm", "in", "mm/h", "in/h")
+_PER_HOUR: Final = "/h"
+
+INTENSITY_UNITS: Final = tuple(f"{unit}{_PER_HOUR}" for unit in DEPTH_UNITS if unit != "kg m-2")
+"""Units of intensities."""
+
+UNITS: Final = (*DEPTH_UNITS, *INTENSITY_UNITS)
 """Units of the values of a table of depths; per hour means intensity."""
 
-_PER_HOUR: Final = "/h"
 _WORD: Final = re.compile(r"(?P<number>[0-9]+\.?[0-9]*|\.[0-9]+)\s*(?P<unit>min|h|d)?")
 
 
@@ -83,36 +87,6 @@ write the unit, or declare duration_unit
     )
 
 
-def unit_factor(unit: str, *, known: tuple[str, ...] = UNITS) -> float:
-    """Return how many mm, or mm/h, one ``unit`` of a table is.
-
-    Parameters
-    ----------
-    unit
-        One of ``known``.
-    known
-        The units that are accepted, of :data:`UNITS`.
-
-    Raises
-    ------
-    JobError
-        It is another; the nearest accepted one is named.
-
-    Examples
-    --------
-    >>> unit_factor("in/h")
-    25.4
-    >>> unit_factor("mm", known=("mm/h", "in/h"))
-    Traceback (most recent call last):
-        ...
-    basinrain.errors.JobError: unit: found 'mm'; expected one of: mm/h, in/h; did you mean 'mm/h'?
-    """
-    if unit not in known:
-        expected = "one of: " + ", ".join(known)
-        raise JobError(Problem(item="unit", found=f"'{unit}'", expected=expected, remedy=nearest_name(unit, known)))
-    return depth_factor(unit.removesuffix(_PER_HOUR))
-
-
 def in_mm(values: Floats, minutes: Floats, unit: str) -> Floats:
     """Return depths in mm of depths or intensities.
 
@@ -128,7 +102,7 @@ def in_mm(values: Floats, minutes: Floats, unit: str) -> Floats:
     >>> in_mm(np.array([2.0, 1.0]), np.array([30.0, 120.0]), "in/h")
     array([25.4, 50.8])
     """
-    depth: Floats = values * unit_factor(unit)
+    depth: Floats = values * depth_factor(unit.removesuffix(_PER_HOUR))
     return depth * (minutes / DURATION_UNITS["h"]) if unit.endswith(_PER_HOUR) else depth
 
 
@@ -141,5 +115,5 @@ def depth_words(mm: float, minutes: float, unit: str = "mm") -> str:
     ('50.8 mm (25.4 mm/h)', '2 in (1 in/h)')
     """
     depth_unit = unit.removesuffix(_PER_HOUR)
-    depth = mm / unit_factor(unit)
+    depth = mm / depth_factor(depth_unit)
     return f"{depth:.6g} {depth_unit} ({depth / minutes * DURATION_UNITS['h']:.6g} {depth_unit}{_PER_HOUR})"

@@ -10,10 +10,11 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import SERIES, Frequency
 from basinrain.designstorm.measures import depth_words, duration_words
 from basinrain.designstorm.reach import SLACK, bracket, check_reach, refuse_unphysical
-from basinrain.errors import DataError, JobError, Problems, nearest_name
+from basinrain.errors import DataError, JobError, Problems
 
 __all__ = ["PointDepths", "report_faults"]
 
@@ -128,19 +129,12 @@ them; give depths for it, or allow it with extrapolate = true
             )
 
     def _check_axes(self, problems: Problems) -> None:
-        if self.series not in SERIES:
-            problems.add(
-                item="series",
-                found=f"'{self.series}'",
-                expected="one of: " + ", ".join(SERIES),
-                remedy=nearest_name(self.series, SERIES),
-            )
-        else:
-            for years in self.return_periods:
-                try:
-                    Frequency(float(years), self.series)
-                except JobError as error:
-                    problems.extend(error)
+        report_unknown("series", self.series, SERIES, problems)
+        for years in self.return_periods if self.series in SERIES else ():
+            try:
+                Frequency(float(years), self.series)
+            except JobError as error:
+                problems.extend(error)
         for name in ("source", "date"):
             if not getattr(self, name).strip():
                 problems.add(item=name, found="nothing", expected=f"the {name} of the depths")
@@ -242,6 +236,7 @@ def report_faults(
     *,
     unit: str = "mm",
     lines: npt.NDArray[np.int64] | None = None,
+    gaps: bool = True,
 ) -> None:
     """Report the entries of a table of depths that cannot be.
 
@@ -257,7 +252,9 @@ def report_faults(
     unit
         In which depths are shown.
     lines : array of int, shape as ``depth``, optional
-        The line of the file on which every entry stands; a gap with a line has been reported already.
+        The line of the file on which every entry stands, 0 for none; a gap with a line has been reported already.
+    gaps
+        Whether to report gaps.
 
     Examples
     --------
@@ -307,10 +304,11 @@ expected an intensity that does not rise with duration; correct one of them
 
         return words
 
-    gaps = np.isnan(depth) if lines is None else np.isnan(depth) & (lines == 0)
-    report(gaps, lambda _: "no depth", "a depth for every duration and frequency of a point", "add it")
+    if gaps:
+        absent = np.isnan(depth) if lines is None else np.isnan(depth) & (lines == 0)
+        report(absent, lambda _: "no depth", "a depth for every duration and frequency of a point", "add it")
     sound = np.isfinite(depth) & (depth > 0)
-    report(~sound & ~np.isnan(depth), lambda place: f"{depth[place]:g} mm", "a depth above 0")
+    report(~sound & ~np.isnan(depth), value_words, "a depth above 0", "correct it")
     known = np.where(sound, depth, np.nan)
     rate = known / durations[:, None]
     wrong = np.zeros(depth.shape, dtype=bool)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Literal
+from typing import Final, Literal
 
 import numpy as np
 import numpy.typing as npt
@@ -27,6 +27,8 @@ __all__ = ["RarityRow", "StormDepths", "StormRarity", "comparable", "duration_te
 Bools = npt.NDArray[np.bool_]
 Floats = npt.NDArray[np.float64]
 Times = npt.NDArray[np.datetime64]
+
+_ROUNDING: Final = 1e-6
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -295,11 +297,11 @@ def _both(depths: StormDepths) -> Bools:
 
 def _why_not(minutes: float, step: float, window: float) -> str:
     # Durations are of whole seconds at the least.
-    if minutes < step - 1e-6:
+    if minutes < step - _ROUNDING:
         return f"shorter than the record's step of {duration_text(step)}"
-    if minutes > window + 1e-6:
+    if minutes > window + _ROUNDING:
         return f"longer than the storm's window of {duration_text(window)}"
-    if abs(minutes / step - round(minutes / step)) > 1e-6:
+    if abs(minutes / step - round(minutes / step)) > _ROUNDING:
         return f"no whole number of the record's steps of {duration_text(step)}"
     return ""
 
@@ -418,6 +420,6 @@ def _check(
     if shares is not None:
         if shares.shape != (len(areal.names),):
             problems.add(item="infilled", found=f"shape {shares.shape}", expected=f"shape {(len(areal.names),)}")
-        elif ((shares < 0) | (shares > 1)).any():
+        elif ((shares < -_ROUNDING) | (shares > 1 + _ROUNDING)).any():
             problems.add(item="infilled", found=str(shares.tolist()), expected="shares between 0 and 1")
     problems.raise_as(DataError)

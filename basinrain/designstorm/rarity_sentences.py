@@ -21,10 +21,10 @@ __all__ = [
     "searched_sentence",
 ]
 
-FEW: Final = 6
+_FEW: Final = 6
 """Up to so many steps, depths at fixed intervals read low by 2 % or more on average."""
 
-MUCH: Final = 0.25
+_MUCH: Final = 0.25
 """Share of a mean on infilled values above which it is said."""
 
 _ANNUAL: Final = (
@@ -79,11 +79,9 @@ def rarest_sentence(where: Sequence[str], found: Sequence[FoundFrequency]) -> st
     if found[0].estimate is None and not found[0].beyond:
         return f"None of the depths compared is within the table: each is {words}."
     head = "The rarest of the depths compared: "
-    if len(where) == 1:
-        return f"{head}{where[0]}, {words}."
-    if found[0].beyond:
+    if len(where) > 1 and found[0].beyond:
         return f"{head}{'; '.join(where)}; each is {words}, and which of them is the rarest the table cannot tell."
-    return f"{head}{'; '.join(where)}; each is {words}."
+    return head + "; ".join(f"{place}, {one.words}" for place, one in zip(where, found, strict=True)) + "."
 
 
 def searched_sentence(n_durations: int, n_areas: int, n_looks: int) -> str:
@@ -130,7 +128,7 @@ def few_steps_remark(steps: float, *, same: bool) -> str:
     ('', '')
     """
     n = round(steps)
-    if same or not 1 <= n <= FEW:
+    if same or not 1 <= n <= _FEW:
         return ""
     factor = float(weiss(np.array([float(n)]))[0])
     return (
@@ -212,10 +210,10 @@ def meaning_sentences(series: str, *, beyond: bool, infilled: Sequence[tuple[str
     if beyond:
         sentences.append(_BEYOND)
     sentences += [_NO_FLOOD, _NO_FORECAST, _TABLE_ERROR, _NOT_RANDOM]
-    much = [f"{name} {100 * share:.0f} %" for name, share in infilled if not math.isnan(share) and share > MUCH]
+    much = [f"{name} {100 * share:.0f} %" for name, share in infilled if not math.isnan(share) and share > _MUCH]
     if much:
         sentences.append(
-            f"Over {100 * MUCH:.0f} % of the storm's mean rests on infilled values ({', '.join(much)}): how rare it "
+            f"Over {100 * _MUCH:.0f} % of the storm's mean rests on infilled values ({', '.join(much)}): how rare it "
             "was there is that much less sure."
         )
     if aligned:

@@ -12,13 +12,13 @@ from basinrain import averaging
 from basinrain.designstorm.areal_reduction import REDUCTIONS
 from basinrain.designstorm.equations import EQUATIONS
 from basinrain.designstorm.exceedance import SERIES
+from basinrain.designstorm.extreme_values import DISTRIBUTIONS
 from basinrain.designstorm.interval_factors import INTERVAL_FACTORS
 from basinrain.designstorm.patterns import PATTERNS
-from basinrain.designstorm.extreme_values import DISTRIBUTIONS
-from basinrain.jobfile.fields import Moment, NameList, Positive, Table, as_list, names, once, one_of
-from basinrain.jobfile.series_tables import FORMATS
 from basinrain.errors import JobError
 from basinrain.intervals import parse_interval
+from basinrain.jobfile.fields import Moment, NameList, Positive, Table, as_list, names, once, one_of
+from basinrain.jobfile.series_tables import FORMATS
 from basinrain.units import AREA_UNITS, DEPTH_UNITS
 
 __all__ = [
@@ -29,8 +29,8 @@ __all__ = [
     "RECORD",
     "TABLE",
     "ArealReductionTable",
-    "DesignTable",
     "DesignDepthsTable",
+    "DesignTable",
     "PatternTable",
     "PointTable",
     "RarityTable",

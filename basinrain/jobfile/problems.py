@@ -74,7 +74,7 @@ def problem_of(details: ErrorDetails, file: str, text: str, job: type[BaseModel]
             line=line,
         )
     if kind == "missing":
-        head, number, rest = _split(loc)
+        _, number, rest = _split(loc)
         table = not rest and number is None
         return Problem(
             item=item,

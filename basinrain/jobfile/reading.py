@@ -153,7 +153,7 @@ area_unit, output, plane; did you mean 'depth_unit'?
     [gauges] file: found no such key; expected it to be given; add it
     [[rainfall]]: found no table; expected at least one; add it
     """
-    return _parsed(_tables(content, settings), Job, folder, settings, file, text)
+    return _parsed(_tables(content, settings), Job, folder, settings=settings, file=file, text=text)
 
 
 def parse_design_job(
@@ -192,8 +192,9 @@ def parse_design_job(
     ('DesignJob', ('1h',), 'alternating-block', ('basins.geojson', 'depths.csv'))
     """
     tables = _tables(content, settings)
-    kind = Job if _OF_GAUGES & tables.keys() else DesignJob
-    return _parsed(tables, kind, folder, settings, file, text)
+    if _OF_GAUGES & tables.keys():
+        return _parsed(tables, Job, folder, settings=settings, file=file, text=text)
+    return _parsed(tables, DesignJob, folder, settings=settings, file=file, text=text)
 
 
 def _tables(content: Mapping[str, Any], settings: Sequence[str]) -> dict[str, Any]:
@@ -204,7 +205,7 @@ def _tables(content: Mapping[str, Any], settings: Sequence[str]) -> dict[str, An
 
 
 def _parsed(
-    tables: Mapping[str, Any], kind: type[_J], folder: str | Path, settings: Sequence[str], file: str, text: str
+    tables: Mapping[str, Any], kind: type[_J], folder: str | Path, *, settings: Sequence[str], file: str, text: str
 ) -> _J:
     try:
         return kind.model_validate({**tables, "folder": Path(folder)})

@@ -13,6 +13,7 @@ from pydantic import BeforeValidator, Field, ValidationInfo, field_validator, mo
 from pydantic_core import PydanticCustomError
 
 from basinrain import averaging, infill, layouts
+from basinrain.jobfile.design_tables import DesignTable
 from basinrain.jobfile.fields import (
     LEAVE_ONE_OUT,
     Count,
@@ -27,15 +28,14 @@ from basinrain.jobfile.fields import (
     names,
     one_of,
 )
-from basinrain.jobfile.design_tables import DesignTable
 from basinrain.jobfile.series_tables import SeriesTable, StormsTable
 from basinrain.units import AREA_UNITS
 
 __all__ = [
     "ArithmeticTable",
     "AveragingTable",
-    "BasinsTable",
     "BasinsJob",
+    "BasinsTable",
     "BufferTable",
     "DesignJob",
     "EditTable",

@@ -10,6 +10,7 @@ from matplotlib.figure import Figure
 from matplotlib.ticker import FixedLocator, FuncFormatter, LogLocator, NullFormatter, NullLocator
 
 from basinrain.report import series_names
+from basinrain.report.duration_axis import words_with_room
 from basinrain.report.figures import HALF_WIDTH, LINES, MARKS, Picture, figure_style, to_svg
 from basinrain.report.greatest_list import duration_words
 from basinrain.report.words import depth_text, inline, unit_word
@@ -19,7 +20,6 @@ from basinrain.units import depth_factor
 __all__ = ["duration_pictures"]
 
 _HEIGHT, _LEFT, _RIGHT, _FOOT = 2.9, 0.52, 0.14, 0.44  # inches
-_APART: Final = 17.0  # points between labels of the axis
 _LINE: Final = 0.145
 _GREYS: Final = ("black", "#5a6268", "#7b848a", "black")
 _CURVES: Final = 4
@@ -155,12 +155,6 @@ def _label(axes: Any, words: list[str], seconds: Floats) -> None:  # noqa: ANN40
     """Mark every duration, and name as many as have room."""
     points = (HALF_WIDTH - _LEFT - _RIGHT) * 72
     at = np.log(seconds / seconds[0]) / np.log(seconds[-1] / seconds[0] * 1.25**2) * points
-    shown: list[str] = []
-    last = -np.inf
-    for place, word in zip(at, words, strict=True):
-        room = place - last >= max(_APART, 4.2 * len(word))
-        shown.append(word if room else "")
-        last = place if room else last
     axes.xaxis.set_major_locator(FixedLocator(seconds.tolist()))
-    axes.set_xticks(seconds, shown)
+    axes.set_xticks(seconds, words_with_room(at.tolist(), words))
     axes.xaxis.set_minor_locator(NullLocator())

@@ -9,7 +9,6 @@ from basinrain.report.map_figure import map_pictures
 from basinrain.report.rendering import render_template
 from basinrain.report.weights_figure import weights_pictures
 from basinrain.results import StormRun
-from basinrain.results_common import CAUTION
 
 __all__ = ["render_report"]
 
@@ -35,7 +34,7 @@ def render_report(run: StormRun) -> str:
     return render_template(
         "report.html",
         run=run,
-        caution=CAUTION,
+        caution=run.caution,
         asked=overview.what_was_asked(run),
         storms_asked=overview.storms_asked(run),
         warnings=overview.note_groups(run.warnings),

@@ -20,7 +20,6 @@ from basinrain.report.left_out_figure import left_out_picture
 from basinrain.report.network_figure import network_picture
 from basinrain.report.rendering import render_template
 from basinrain.report.years_figure import years_picture
-from basinrain.results_common import CAUTION
 from basinrain.results_series import SeriesRun
 
 __all__ = ["render_series"]
@@ -47,7 +46,7 @@ def render_series(run: SeriesRun) -> str:
     return render_template(
         "series.html",
         run=run,
-        caution=CAUTION,
+        caution=run.caution,
         facts=series_facts.record_facts(run),
         basin=run.basins.ids[series_names.lead_basin(run)],
         warnings=overview.note_groups(run.warnings),

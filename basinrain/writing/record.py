@@ -7,13 +7,14 @@ import math
 from typing import TYPE_CHECKING, Any
 
 from basinrain.results import InfillRun, ScreenRun, StormRun
-from basinrain.results_common import CAUTION, GaugedRun, Run
+from basinrain.results_common import GaugedRun, Run
+from basinrain.results_design import DesignRun
 from basinrain.results_series import SeriesRun
 
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["long_tables", "record_text", "run_record", "run_tables"]
+__all__ = ["long_tables", "record_text", "run_record", "run_tables", "told_tables"]
 
 
 def run_tables(run: Run) -> dict[str, pd.DataFrame]:
@@ -58,9 +59,34 @@ def run_tables(run: Run) -> dict[str, pd.DataFrame]:
             "greatest_depths": run.greatest_depths,
             "storms_found": run.storms_found,
         }
+    elif isinstance(run, DesignRun):
+        own = {
+            "design_depths": run.design_depths,
+            "design_storms": run.design_storms,
+            "point_depths": run.point_depths,
+            "point_weights": run.point_weights,
+            **_asked_tables(run),
+        }
     if isinstance(run, GaugedRun):
         own |= {"findings": run.findings, "edits": run.edit_table}
     return own
+
+
+def _asked_tables(run: DesignRun) -> dict[str, pd.DataFrame]:
+    """Return the tables that a design has where its job asks for what they hold."""
+    tables = {}
+    if run.compared:
+        tables["reductions_compared"] = run.reductions_compared
+    if run.rarities:
+        tables["storm_rarity"] = run.storm_rarity
+    if run.from_record is not None:
+        tables |= {"record_fits": run.record_fits, "annual_maxima": run.annual_maxima}
+    return tables
+
+
+def told_tables(run: Run) -> dict[str, pd.DataFrame]:
+    """Return the tables that stand in the record besides those that are files of their own: in files they are series."""
+    return {"design_hyetographs": run.design_hyetographs} if isinstance(run, DesignRun) else {}
 
 
 def long_tables(run: Run) -> dict[str, pd.DataFrame]:
@@ -88,7 +114,7 @@ def run_record(run: Run, files: list[str]) -> dict[str, Any]:
     """
     return {
         "name": run.name,
-        "caution": CAUTION,
+        "caution": run.caution,
         "versions": dict(run.versions),
         "job": dict(run.settings),
         "inputs": {name: {"sha256": digest} for name, digest in run.inputs.items()},
@@ -98,7 +124,7 @@ def run_record(run: Run, files: list[str]) -> dict[str, Any]:
         "facts": dict(run.facts),
         "warnings": [_note(note) for note in run.notes if note.level == "warning"],
         "remarks": [_note(note) for note in run.notes if note.level == "info"],
-        "results": {name: _rows(frame) for name, frame in run_tables(run).items()},
+        "results": {name: _rows(frame) for name, frame in {**run_tables(run), **told_tables(run)}.items()},
     }
 
 

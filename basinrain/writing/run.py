@@ -6,11 +6,15 @@ import json
 from pathlib import Path
 from typing import cast
 
+from basinrain.basins import Basins
 from basinrain.ground import LOCAL
-from basinrain.report import render_comparison, render_report, render_screening, render_series
+from basinrain.report import render_comparison, render_design, render_report, render_screening, render_series
 from basinrain.results import InfillRun, ScreenRun, StormRun
-from basinrain.results_common import CAUTION, Run
+from basinrain.results_common import Run
+from basinrain.results_design import DesignRun
 from basinrain.results_series import SeriesRun
+from basinrain.writing.design_content import DesignContent, DesignHyetograph
+from basinrain.writing.design_files import write_design_files
 from basinrain.writing.folder import RECORD, whole_folder
 from basinrain.writing.record import long_tables, record_text, run_tables
 from basinrain.writing.series_content import SeriesContent
@@ -48,6 +52,8 @@ def write_run(run: Run, folder: str | Path) -> Path:
             (built / "thiessen.geojson").write_text(thiessen_text(run), encoding="utf-8")
         if isinstance(run, SeriesRun):
             write_series_files(built, series_content(run), formats=run.formats)
+        if isinstance(run, DesignRun):
+            write_design_files(built, design_content(run), formats=run.formats)
         (built / "report.html").write_text(_report(run), encoding="utf-8")
         files = sorted(path.name for path in built.iterdir())
         (built / RECORD).write_text(record_text(run, files), encoding="utf-8")
@@ -59,6 +65,8 @@ def _report(run: Run) -> str:
         return render_screening(run)
     if isinstance(run, SeriesRun):
         return render_series(run)
+    if isinstance(run, DesignRun):
+        return render_design(run)
     if isinstance(run, InfillRun):
         return render_comparison(run)
     return render_report(cast("StormRun", run))
@@ -78,8 +86,38 @@ def series_content(run: SeriesRun) -> SeriesContent:
         depth_unit=run.depth_unit,
         area_unit=run.area_unit,
         job=run.name,
-        caution=CAUTION,
+        caution=run.caution,
         plane=run.plane.name,
+        version=run.versions.get("basinrain", ""),
+    )
+
+
+def design_content(run: DesignRun) -> DesignContent:
+    """Return a run's hyetographs, with what files say beside the numbers."""
+    first = len(run.areas.points)
+    parts = Basins(ids=run.areas.names[first:], polygons=run.areas.basins.polygons[first:], crs=run.areas.basins.crs)
+    return DesignContent(
+        hyetographs=tuple(
+            DesignHyetograph(
+                point=storm.point.name,
+                frequency=storm.frequency,
+                minutes=storm.minutes,
+                pattern=storm.choice.label,
+                step=storm.step,
+                basins=storm.point.basins,
+                depth=storm.depth,
+            )
+            for storm in run.storms
+        ),
+        basins=parts.ids,
+        areas=parts.areas,
+        positions=points_inside(parts),
+        start=run.start,
+        depth_unit=run.depth_unit,
+        area_unit=run.area_unit,
+        source=f"{run.sourced.source.source} ({run.sourced.source.date})",
+        job=run.name,
+        caution=run.caution,
         version=run.versions.get("basinrain", ""),
     )
 

@@ -89,7 +89,7 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
     with pytest.raises(JobError) as caught:
         read_job(path)
     unknown = "found a key that is not known; expected one of:"
-    units = "mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, kg m-2"
+    units = "mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, 0.001 in, kg m-2"
     names = "job, gauges, rainfall, step, basins, screening, edit, storm, infill, averaging, series, storms"
     expected = [
         f"{path}:2: [job] name: found no such key; expected it to be given; add it",

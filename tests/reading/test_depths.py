@@ -158,8 +158,8 @@ def test_rules_that_cannot_be() -> None:
         rules("inch", flags={"estimate": ["E"], "trace": ["S"], "rejected": ["S", ""]})
     assert str(caught.value).splitlines() == [
         (
-            "depth unit: found 'inch'; expected one of: mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, kg m-2; did "
-            "you mean 'in'?"
+            "depth unit: found 'inch'; expected one of: mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, 0.001 in, "
+            "kg m-2; did you mean 'in'?"
         ),
         (
             "flags: found 'estimate'; expected one of: observed, estimated, adjusted, rejected, missing, trace, "

@@ -14,7 +14,7 @@ from basinrain.errors import JobError, Problems
 
 __all__ = ["EXPONENTIAL", "ExponentialCoefficients", "exponential"]
 
-_KEY = "[design.areal_reduction] coefficients"
+_KEYS = "[design.areal_reduction]"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -48,7 +48,7 @@ class ExponentialCoefficients:
     Traceback (most recent call last):
         ...
     basinrain.errors.JobError: [design.areal_reduction] coefficients, c1: found 0; expected a number above 0
-    [design.areal_reduction] coefficients, source: found none; say where the coefficients are from
+    [design.areal_reduction] source: found none; say where the coefficients are from
     """
 
     c1: float
@@ -62,14 +62,14 @@ class ExponentialCoefficients:
         problems = Problems()
         for name in ("c1", "c2", "c3"):
             if not (math.isfinite(value := getattr(self, name)) and value > 0):
-                problems.add(item=f"{_KEY}, {name}", found=f"{value:g}", expected="a number above 0")
+                problems.add(item=f"{_KEYS} coefficients, {name}", found=f"{value:g}", expected="a number above 0")
         if not self.source.strip():
-            problems.add(item=f"{_KEY}, source", found="none", remedy="say where the coefficients are from")
-        for name, key, unit in (("areas", "areas", "m²"), ("minutes", "durations", "min")):
+            problems.add(item=f"{_KEYS} source", found="none", remedy="say where the coefficients are from")
+        for name, key, unit in (("areas", "valid_areas", "m²"), ("minutes", "valid", "min")):
             ends = getattr(self, name)
             if ends is not None and not (0 <= ends[0] <= ends[1] < math.inf and ends[1] > 0):
                 problems.add(
-                    item=f"{_KEY}, {key}",
+                    item=f"{_KEYS} {key}",
                     found=f"{ends[0]:g} to {ends[1]:g} {unit}",
                     expected="the least and the greatest, in this order",
                 )

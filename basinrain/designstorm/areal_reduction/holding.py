@@ -107,13 +107,13 @@ class Holder:
         minutes = minutes[durations]
         low, high = self.limits.minutes
         sides = ((minutes < low * (1 - TOLERANCE), low), (minutes > high * (1 + TOLERANCE), high))
-        moved = {joined([duration_words(value) for value in minutes[side]]): end for side, end in sides if side.any()}
+        moved = [([duration_words(value) for value in minutes[side]], end) for side, end in sides if side.any()]
         if moved:
             self._outside(
                 "duration",
-                joined(list(moved)),
+                joined([word for words, _ in moved for word in words]),
                 self.limits.duration_words(),
-                {values: duration_words(end) for values, end in moved.items()},
+                {joined(words): duration_words(end) for words, end in moved},
             )
         return np.clip(minutes, low, high)
 
@@ -129,9 +129,10 @@ class Holder:
             self._outside("area", asked, f"at least {end}", {asked: end})
         largest = self.limits.largest_area(minutes)
         for over in np.unique(largest[area > largest * (1 + TOLERANCE)]):
-            at = f"{asked} at {joined([duration_words(value) for value in minutes[largest == over]])}"
-            end = area_words(over, unit)
-            self._outside("area", at, f"at most {end}{self.limits.below_words(over)}", {at: end})
+            found, end = asked, area_words(over, unit)
+            if len(self.limits.largest_areas) > 1:
+                found += f" at {joined([duration_words(value) for value in np.unique(minutes[largest == over])])}"
+            self._outside("area", found, f"at most {end}{self.limits.below_words(over)}", {found: end})
         areas: Floats = np.clip(area, smallest, largest)
         return areas
 

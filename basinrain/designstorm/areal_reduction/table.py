@@ -77,7 +77,7 @@ write percent as fractions
         if self.factor.shape != (shape := (self.areas.size, self.minutes.size)):
             problems.add(
                 item=f"{item}: factors",
-                found=f"{self.factor.shape[0] if self.factor.ndim else 0} rows, shape {self.factor.shape}",
+                found=f"shape {self.factor.shape}",
                 expected=f"shape {shape}: a row for every area, a column for every duration",
             )
         problems.raise_as(DataError)
@@ -121,8 +121,8 @@ def tabulated(area: npt.ArrayLike, minutes: npt.ArrayLike, *, table: ReductionTa
     ... )
     >>> tabulated(1e8, [60, 120, 240], table=table).round(3)  # 100 km² is midway from 10 to 1000, 2 h from 1 to 4
     array([0.8 , 0.84, 0.88])
-    >>> tabulated(5e6, 60, table=table)
-    array(nan)
+    >>> tabulated([5e6, 1e7], 60, table=table)
+    array([nan, 0.9])
     """
     area, minutes = np.broadcast_arrays(np.asarray(area, dtype=float), np.asarray(minutes, dtype=float))
     with np.errstate(divide="ignore"):

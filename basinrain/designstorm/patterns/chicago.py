@@ -27,6 +27,9 @@ _NAME: Final = "chicago"
 # Rises of less than this share of the whole depth are rounding and no finding.
 _ROUNDING: Final = 1e-9
 
+# Minutes from a whole number of them that are rounding.
+_NEAR: Final = 1e-6
+
 
 def chicago(case: PatternCase, *, peak: str | float = CENTRE) -> Shaped:
     """Return the Chicago hyetograph of a depth-duration curve.
@@ -83,17 +86,22 @@ def chicago(case: PatternCase, *, peak: str | float = CENTRE) -> Shaped:
     """
     fraction = peak_fraction(peak)
     check_step(case.minutes, case.step)
-    # A word such as 1/3 or 0.7 puts the peak on a border but for rounding.
-    peak_time = round(fraction * case.minutes, 9)
-    times = np.arange(1, case.n_steps) * float(case.step)
-    # Durations around the peak, negative before it; rounded so that no noise carries one out of what the curve knows.
-    around = np.where(times < peak_time, (times - peak_time) / fraction, (times - peak_time) / (1 - fraction)).round(9)
+    borders: Floats = np.arange(1.0, case.n_steps) * case.step
+    away = borders - fraction * case.minutes
+    # Durations around the peak, negative before it.
+    around = _to_whole(np.where(away < 0, away / fraction, away / (1 - fraction)))
     inner = _depth_around(case, np.abs(around), on_border=not np.all(around))
     before = fraction * (case.total - inner)
     after = fraction * case.total + (1 - fraction) * inner
     cumulative = np.concatenate([[0.0], np.where(around < 0, before, after), [case.total]])
     depth = increments_of(cumulative, case.total)
     return Shaped(depth, _rises_away(depth, case.step))
+
+
+def _to_whole(minutes: Floats) -> Floats:
+    """Minutes, whole where they are so but for rounding, which could lie outside what the curve knows."""
+    whole = np.rint(minutes)
+    return np.where(np.abs(minutes - whole) < _NEAR, whole, minutes)
 
 
 def _depth_around(case: PatternCase, minutes: Floats, *, on_border: bool) -> Floats:

@@ -2,10 +2,24 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import given
-from nesting_cases import INCH, added_up, case_of, denver, falling_depths, greatest, has_one_peak, peaks, published
+from hypothesis import strategies as st
+from nesting_cases import (
+    INCH,
+    added_up,
+    case_of,
+    denver,
+    durations,
+    falling_depths,
+    greatest,
+    has_one_peak,
+    peaks,
+    published,
+)
 
 from basinrain.designstorm.patterns.alternating_block import ALTERNATING_BLOCK, alternating_block, around_peak
 from basinrain.designstorm.patterns.nested import nested
@@ -32,7 +46,7 @@ def test_one_step_and_two() -> None:
 
 
 def test_worked_example() -> None:
-    """Chow, Maidment and Mays (1988), example 14.4.1 (from memory): Denver, 10 years, 2 h in steps of 10 min, inches."""
+    """Chow, Maidment and Mays (1988), example 14.4.1 (from memory): Denver, 10 years, 2 h by 10 min, inches."""
     depth = alternating_block(case_of(denver, 120, 10)).depth / INCH
     rows = published("alternating_block_chow_14_4_1.csv")
     printed = np.array([float(row["published_hyetograph"]) for row in rows])
@@ -72,17 +86,29 @@ def test_the_largest_stand_side_by_side(blocks: list[float], peak: str | float) 
         assert places[0] <= at <= places[-1]
 
 
-@given(falling_depths(), peaks())
-def test_nested_is_the_same_where_the_reduction_is_one(blocks: list[float], peak: str | float) -> None:
+@given(falling_depths(), st.floats(0.3, 1), peaks())
+def test_nested_is_the_same_where_the_reduction_is_one(blocks: list[float], factor: float, peak: str | float) -> None:
     """Where all durations have one reduction the nested storm is this one."""
-    case = added_up(blocks, 10)
-    np.testing.assert_array_equal(alternating_block(case, peak=peak).depth, nested(case, peak=peak).depth)
+    point = added_up(blocks, 10)
+    reduced = [block * factor for block in blocks]
+    case = case_of(
+        lambda times: point.curve(times) * factor, point.minutes, 10, by_duration=added_up(reduced, 10).curve
+    )
+    here, there = alternating_block(case, peak=peak).depth, nested(case, peak=peak).depth
+    np.testing.assert_allclose(here, there, rtol=0, atol=1e-9 * case.total)
 
 
 def test_the_whole_duration_has_the_reduction() -> None:
     """The curve with the reduction of the whole duration is used, and not that by duration."""
     case = case_of(denver, 120, 10, by_duration=lambda minutes: np.full(len(minutes), np.nan))
-    np.testing.assert_allclose(greatest(alternating_block(case).depth), denver(np.arange(1, 13) * 10.0), rtol=1e-9)
+    np.testing.assert_allclose(greatest(alternating_block(case).depth), denver(durations(12, 10)), rtol=1e-9)
+
+
+def test_total_is_that_of_the_case() -> None:
+    """Where the curve's end differs from the total in the last digits the total is kept."""
+    case = case_of(denver, 120, 10)
+    case = replace(case, total=case.total * (1 + 1e-10))
+    assert alternating_block(case).depth.sum() == pytest.approx(case.total, rel=1e-13)
 
 
 def test_blocks_that_grow() -> None:

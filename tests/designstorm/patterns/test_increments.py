@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
-from nesting_cases import Array, falling_depths
+from nesting_cases import Array, durations, falling_depths
 from sklearn.isotonic import IsotonicRegression
 
 from basinrain.designstorm.patterns.increments import (
@@ -36,8 +36,8 @@ def exactly(*lines: str) -> str:
 def told(span: str, change: str) -> str:
     """Return what is said of evening out."""
     return (
-        f"What a step adds to the depth rose with duration and was evened out over {span}: {change} greater, the largest "
-        "change; the total is kept."
+        f"What a step adds to the depth rose with duration and was evened out over {span}: {change} greater, the "
+        "largest change; the total is kept."
     )
 
 
@@ -122,7 +122,7 @@ def test_what_falls_stays(depths: list[float]) -> None:
 
 def test_a_rise_between_tabulated_durations() -> None:
     """50, 55 and 90 mm in 1, 2 and 6 h: by ln(90/55)/ln 3 the third hour adds 55 (3/2)^b - 55 mm, after 5 mm."""
-    depth = log_log([60, 120, 360], [50, 55, 90], np.arange(1, 7) * 60.0)
+    depth = log_log([60, 120, 360], [50, 55, 90], durations(6, 60))
     third = 55 * 1.5 ** (np.log(90 / 55) / np.log(3)) - 55
     assert third == pytest.approx(10.963, abs=0.0005)
     with pytest.raises(MethodError, match=exactly(f"{RISE}5 mm in 1 to 2 h to 10.96 mm in 2 to 3{RISE_EXPECTED}")):

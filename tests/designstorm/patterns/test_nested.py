@@ -13,6 +13,7 @@ from nesting_cases import (
     added_up,
     case_of,
     denver,
+    durations,
     falling_depths,
     greatest,
     has_one_peak,
@@ -31,7 +32,8 @@ REDUCED_AREA = 250.0
 def reduced(minutes: Array) -> Array:
     """Return Denver's depths over 250 mi², each reduced by its own duration (Leclerc and Schaake 1972, from memory)."""
     strength = -1.1 * (minutes / 60) ** 0.25
-    return denver(minutes) * (1 - np.exp(strength) + np.exp(strength - 0.01 * REDUCED_AREA))
+    factor = 1 - np.exp(strength) + np.exp(strength - 0.01 * REDUCED_AREA)
+    return np.asarray(denver(minutes) * factor, dtype=np.float64)
 
 
 def test_by_hand() -> None:
@@ -51,7 +53,7 @@ def test_by_hand() -> None:
 @pytest.mark.parametrize(("minutes", "step"), [(120, 10), (360, 5), (1440, 60), (90, 18)])
 def test_every_duration_has_its_reduced_depth(minutes: int, step: int, peak: str | float) -> None:
     """In every whole number of steps the greatest depth over all windows is that duration's own reduced depth."""
-    by_duration = reduced(np.arange(1, minutes // step + 1) * float(step))
+    by_duration = reduced(durations(minutes // step, step))
     total = by_duration[-1]
     whole = total / denver(np.array([float(minutes)]))[0]
     case = case_of(lambda times: denver(times) * whole, minutes, step, by_duration=reduced)
@@ -65,11 +67,11 @@ def test_every_duration_has_its_reduced_depth(minutes: int, step: int, peak: str
 
 @given(falling_depths(), st.floats(0.2, 1), peaks())
 def test_laws(blocks: list[float], lowest: float, peak: str | float) -> None:
-    """For any curve that stays concave when reduced, the greatest depths are the reduced ones and nothing is remarked."""
+    """For any curve that stays concave when reduced the greatest depths are the reduced ones; nothing is remarked."""
     case = added_up(blocks, 10)
     by_duration = np.cumsum(blocks)
     # Between the curve and its chord lies a concave curve: short durations lose most, the whole one nothing.
-    times = np.arange(1, len(blocks) + 1) * 10.0
+    times = durations(len(blocks), 10)
     lower = lowest * by_duration + (1 - lowest) * by_duration[-1] * times / times[-1]
     own = case_of(case.curve, case.minutes, case.step, by_duration=through(times, lower))
     shaped = nested(own, peak=peak)
@@ -91,7 +93,7 @@ def ratios(region: str) -> tuple[Array, Array]:
 
 @pytest.mark.parametrize("region", ["type_II", "region_A", "region_B", "region_C", "region_D"])
 def test_nesting_of_nrcs_ratios(region: str) -> None:
-    """The storm and its mirror together follow F(12 h -+ d/2) = 0.5 -+ r(d)/2 (NRCS, NEH 630 chapter 4, slides seen)."""
+    """The storm and its mirror together follow F(12 h -+ d/2) = 0.5 -+ r(d)/2 (NRCS, NEH 630 ch. 4, slides seen)."""
     minutes, ratio = ratios(region)
     case = case_of(through(minutes, ratio), 1440, 5)
     depth = nested(case).depth
@@ -109,7 +111,7 @@ def test_nesting_of_nrcs_ratios(region: str) -> None:
 
 @pytest.mark.parametrize("region", ["region_A", "region_B", "region_C", "region_D"])
 def test_published_ratios_may_rise_between_durations(region: str) -> None:
-    """Straight lines in logarithms between a published table's durations bend upward at 3 h: refused, and evened out on demand."""
+    """Straight lines in logarithms between a table's durations bend upward at 3 h: refused, or evened out on demand."""
     minutes, ratio = ratios(region)
 
     def straight(wanted: Array) -> Array:
@@ -121,11 +123,10 @@ def test_published_ratios_may_rise_between_durations(region: str) -> None:
     shaped = nested(case, smooth=True)
     assert has_one_peak(shaped.depth)
     assert shaped.depth.sum() == pytest.approx(100, rel=1e-12)
-    change = greatest(shaped.depth) - straight(np.arange(1, 49) * 30.0)
+    change = greatest(shaped.depth) - straight(durations(48, 30))
     assert change.min() > -1e-9
-    told = re.search(
-        r"the depth of 3 h is ([0-9.]+) mm greater, the largest change; the total is kept\.$", *shaped.remarks
-    )
+    (remark,) = shaped.remarks
+    told = re.search(r"the depth of 3 h is ([0-9.]+) mm greater, the largest change; the total is kept\.$", remark)
     assert told
     assert float(told[1]) == pytest.approx(change.max(), rel=5e-3)
     assert int(np.argmax(change)) == 5
@@ -140,8 +141,8 @@ def test_increments_that_rise() -> None:
     case = case_of(rising, 360, 60)
     with pytest.raises(
         MethodError,
-        match=r'^shape "nested": found a depth per step that rises with duration, from 5 mm in 1 to 2 h to 10\.96 mm in '
-        r"2 to 3 h; expected one that never rises with duration; check the depths and areal reductions of these "
+        match=r'^shape "nested": found a depth per step that rises with duration, from 5 mm in 1 to 2 h to 10\.96 mm '
+        r"in 2 to 3 h; expected one that never rises with duration; check the depths and areal reductions of these "
         r"durations, or even them out with smooth = true$",
     ):
         nested(case)
@@ -156,8 +157,8 @@ def test_depth_that_falls_after_reduction() -> None:
     for smooth in (False, True):
         with pytest.raises(
             MethodError,
-            match=r'^shape "nested": found a depth that falls with duration, from 46 mm in 2 h to 44 mm in 3 h; expected '
-            r"one that never falls with duration; check the depths and areal reductions of these durations$",
+            match=r'^shape "nested": found a depth that falls with duration, from 46 mm in 2 h to 44 mm in 3 h; '
+            r"expected one that never falls with duration; check the depths and areal reductions of these durations$",
         ):
             nested(case, smooth=smooth)
 
@@ -172,13 +173,11 @@ def test_durations_that_the_table_has_not() -> None:
 
     with pytest.raises(
         MethodError,
-        match=r'^depths: found 5 min; expected 15 min or more; shape "nested" needs durations from 5 to 120 min: take a '
-        r"longer step, or depths of shorter durations$",
+        match=r'^depths: found 5 min; expected 15 min or more; shape "nested" needs durations from 5 to 120 min: take '
+        r"a longer step, or depths of shorter durations$",
     ):
         nested(case_of(table, 120, 5))
-    np.testing.assert_allclose(
-        greatest(nested(case_of(table, 120, 15)).depth), denver(np.arange(1, 9) * 15.0), rtol=1e-9
-    )
+    np.testing.assert_allclose(greatest(nested(case_of(table, 120, 15)).depth), denver(durations(8, 15)), rtol=1e-9)
 
 
 def test_registered_options() -> None:

@@ -72,7 +72,7 @@ def test_type_ii_has_the_ratios_of_the_handbook(row: dict[str, str]) -> None:
     ],
 )
 def test_greatest_shares_by_duration(kind: str, minutes: int, expected: float) -> None:
-    """Greatest shares of the published ordinates themselves, differenced by hand at their own spacing."""
+    """Greatest shares derived from the published ordinates at their own spacing, apart from the package."""
     assert greatest(kind, minutes, 30 if kind == "IA" else 6) == pytest.approx(expected, abs=5e-5)
 
 

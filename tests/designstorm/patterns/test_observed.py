@@ -42,6 +42,12 @@ def test_both_ends_may_be_dry() -> None:
     assert [remark.split(" of ")[0] for remark in shaped.remarks] == ["The first 50 %", "The last 25 %"]
 
 
+def test_a_tenth_at_either_end_is_not_told() -> None:
+    """One dry step of ten before the rain and one after it are nothing to remark on."""
+    storm = np.array([0.0] + [1.0] * 8 + [0.0])
+    assert by_observed(pattern_case(), ordinates=ordinates_of(storm)).remarks == ()
+
+
 def test_dry_steps_inside_are_no_dry_ends() -> None:
     """A pause in the middle of the storm is nothing to remark on."""
     assert by_observed(pattern_case(), ordinates=ordinates_of(np.array([2.0, 0.0, 0.0, 2.0]))).remarks == ()

@@ -54,6 +54,13 @@ def test_steps_by_hand() -> None:
     assert [peak_step(0.5, n) for n in (1, 2, 3, 4)] == [0, 0, 1, 1]
 
 
+def test_decimal_fractions_end_where_they_should() -> None:
+    """0.55 of 100 steps ends the 55th, though 0.55 x 100 is above 55 in binary numbers; so do 0.07 and the 7th."""
+    assert 0.55 * 100 > 55
+    assert 0.07 * 100 > 7
+    assert [peak_step(0.55, 100), peak_step(0.07, 100)] == [54, 6]
+
+
 @given(st.integers(1, 20), st.integers(1, 19), st.integers(1, 300))
 def test_nearest_middle(part: int, parts: int, n_steps: int) -> None:
     """The step is the one whose middle is nearest to the peak, in exact fractions, the earlier of two equally near."""

@@ -1,0 +1,258 @@
+"""How rare storms of a job's record were over the areas of its design."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from functools import cached_property, partial
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.averager import Averager
+from basinrain.averaging import averaging_method
+from basinrain.basin_depths import BasinDepths, average_storm
+from basinrain.design_areas import Areas
+from basinrain.design_asked import Asked, minutes_of
+from basinrain.design_sources import nearest_points
+from basinrain.designstorm.depth_chain import DepthChain
+from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.patterns import Ordinates, ordinates_of
+from basinrain.designstorm.rarity import StormDepths, StormRarity, comparable, storm_rarity
+from basinrain.errors import JobError, MethodError, Problem
+from basinrain.infill.gaps import gap_mask, longer_than
+from basinrain.infill_choice import InfillChoice
+from basinrain.inputs import Inputs, window_of
+from basinrain.jobfile import Job
+from basinrain.rainfall import RainRecord
+from basinrain.series.greatest_depths import greatest_depths
+from basinrain.series.steps import constant_step
+from basinrain.storms import Storm, storm_window
+
+__all__ = ["ObservedStorm", "ObservedStorms", "storm_rarities"]
+
+Bools = npt.NDArray[np.bool_]
+Floats = npt.NDArray[np.float64]
+
+_DURATIONS: Final = (5, 10, 15, 30, 60, 120, 180, 360, 720, 1440, 2880, 4320, 7200, 14400)
+"""Durations, in minutes, that are compared where the job names none."""
+
+
+@dataclass(frozen=True, eq=False, kw_only=True)
+class ObservedStorm:
+    """A storm of the record over the areas of a design.
+
+    Parameters
+    ----------
+    storm
+        Its name and window.
+    window
+        Its record before infill.
+    means
+        Means over the areas after infill.
+    """
+
+    storm: Storm
+    window: RainRecord
+    means: BasinDepths
+
+    @property
+    def step(self) -> int:
+        """The record's step in minutes."""
+        return constant_step(self.window.starts, self.window.ends, wanted_for=f"storm {self.storm.name}") // 60
+
+
+@dataclass(frozen=True, eq=False)
+class ObservedStorms:
+    """The storms of a job's record, averaged over the areas of its design when they are asked for.
+
+    Parameters
+    ----------
+    job, given
+        The job and its files.
+    areas
+        The areas.
+    infill
+        How gaps are infilled.
+    average
+        The averaging method.
+    """
+
+    job: Job
+    given: Inputs
+    areas: Areas
+    infill: InfillChoice
+    average: str
+
+    @cached_property
+    def _long(self) -> Bools:
+        record = self.given.record
+        return longer_than(record, gap_mask(record), self.infill.options.longest_gap)
+
+    @cached_property
+    def _averager(self) -> Averager:
+        method, options = averaging_method(self.average), self.job.averaging.options(self.average)
+        network, basins = self.given.network, self.areas.basins
+        return Averager(method(network, basins, options), partial(method.reweigher, network, basins, options))
+
+    def storm(self, name: str) -> ObservedStorm:
+        """Return one of the job's storms by its name."""
+        table = next(table for table in self.job.storm if table.name == name)
+        record = self.given.record
+        start, end = window_of(self.job, table, record.zone)
+        storm, _ = storm_window(record, name, start=start, end=end, pattern=table.pattern)
+        window = storm.cut(record)
+        if np.isnat(window.ends).any() or not window.reporting.any():
+            raise JobError(
+                Problem(
+                    item=f"storm {name}",
+                    found="no gauge that reports in it, or totals without times",
+                    expected="a storm with a record in steps",
+                )
+            )
+        completed = self.infill.complete(window, long=self._long[storm.first : storm.stop])
+        return ObservedStorm(storm=storm, window=window, means=average_storm(completed, self._averager))
+
+    def ordinates(self, name: str) -> Ordinates:
+        """Return how a storm fell in time over the largest of the areas."""
+        row = int(np.argmax(self.areas.basins.areas))
+        depth = self.storm(name).means.depth[:, row]
+        try:
+            return ordinates_of(depth)
+        except (JobError, MethodError) as error:
+            raise JobError(
+                [replace(problem, item=f"storm {name}: {problem.item}") for problem in error.problems]
+            ) from None
+
+
+def storm_rarities(
+    observed: ObservedStorms, chain: DepthChain, asked: Asked, *, table_step: int | None
+) -> tuple[StormRarity, ...]:
+    """Return how rare each of the storms that a job asks about was.
+
+    Parameters
+    ----------
+    observed
+        The storms.
+    chain
+        The depths of the design. Its uplift is left out: a storm that has fallen is compared with the climate that the
+        depths are of.
+    asked
+        What the job asks.
+    table_step
+        The record's step in minutes, where the depths were made from it and nothing makes up for fixed intervals.
+    """
+    table = asked.design.rarity
+    if table is None:
+        return ()
+    present = replace(chain, uplift=1.0)
+    names = table.storms or tuple(storm.name for storm in observed.job.storm)
+    named = [minutes_of(word) for word in table.durations]
+    minutes = np.unique(np.array(named or [*asked.minutes, *_DURATIONS], dtype=float))
+    # Of what nobody named, only what the table has is looked at.
+    within = (minutes >= present.source.shortest) & (minutes <= present.source.longest)
+    minutes = minutes[within | np.isin(minutes, named or asked.minutes)]
+    frequencies = present.source.frequencies
+    return tuple(
+        _rarity(observed.storm(name), observed, present, minutes, frequencies, table_step=table_step) for name in names
+    )
+
+
+def _rarity(
+    storm: ObservedStorm,
+    observed: ObservedStorms,
+    chain: DepthChain,
+    minutes: Floats,
+    frequencies: Sequence[Frequency],
+    *,
+    table_step: int | None,
+) -> StormRarity:
+    window = (storm.storm.end - storm.storm.start) / np.timedelta64(60, "s")
+    if not comparable(minutes, step=storm.step, window=window).any():
+        raise MethodError(
+            Problem(
+                item=f"[design.rarity] {storm.storm.name}",
+                found="no duration that is a whole number of the record's steps, within the storm and in the table",
+                expected="one at least",
+                remedy="widen the storm's window, or give depths of longer durations",
+            )
+        )
+    rows = _rows_apart(observed.areas)
+    names = tuple(observed.areas.names[row] for row in rows)
+    ladder = np.stack([_ladder(chain, row, minutes, frequencies) for row in rows])
+    means = storm.means
+    with np.errstate(invalid="ignore"):
+        infilled = (means.infilled / means.total)[rows]
+    return storm_rarity(
+        storm.storm.name,
+        minutes,
+        _depths(storm, means.depth[:, rows], minutes, names=names, ladder=ladder, window=window),
+        frequencies=frequencies,
+        step=storm.step,
+        window=window,
+        gauges=None if chain.source.areal else _gauges(storm, observed, chain, minutes, frequencies, window=window),
+        infilled=infilled,
+        table_step=table_step,
+    )
+
+
+def _rows_apart(areas: Areas) -> list[int]:
+    """Return the rows of the points of interest, and those of basins that are not a point's only one."""
+    alone = {point.rows[0] for point in areas.points if len(point.rows) == 1}
+    return [row for row in range(len(areas.names)) if row not in alone]
+
+
+def _depths(
+    storm: ObservedStorm, depth: Floats, minutes: Floats, *, names: tuple[str, ...], ladder: Floats, window: float
+) -> StormDepths:
+    shape = (len(minutes), len(names))
+    most, aligned = np.full(shape, np.nan), np.full(shape, np.nan)
+    ends = np.full(shape, np.datetime64("NaT", "s"))
+    fit = comparable(minutes, step=storm.step, window=window)
+    if fit.any():
+        found = greatest_depths(
+            storm.window.starts,
+            storm.window.ends,
+            depth,
+            durations=[np.timedelta64(int(each) * 60, "s") for each in minutes[fit]],
+            day_phase=storm.window.day_phase,
+        )
+        most[fit], ends[fit], aligned[fit] = found.sliding.depth, found.sliding.ends, found.aligned.depth
+    return StormDepths(names=names, depth=most, ends=ends, ladder=ladder, aligned=aligned)
+
+
+def _ladder(chain: DepthChain, row: int, minutes: Floats, frequencies: Sequence[Frequency]) -> Floats:
+    """Return areal depths by duration and frequency, NaN where the table or the reduction has no answer."""
+    depths = np.full((len(minutes), len(frequencies)), np.nan)
+    for d, each in enumerate(minutes):
+        for f, frequency in enumerate(frequencies):
+            try:
+                depths[d, f] = chain.links(row, np.array([each]), frequency).areal[0]
+            except MethodError:
+                continue
+    return depths
+
+
+def _gauges(
+    storm: ObservedStorm,
+    observed: ObservedStorms,
+    chain: DepthChain,
+    minutes: Floats,
+    frequencies: Sequence[Frequency],
+    *,
+    window: float,
+) -> StormDepths | None:
+    """Return the gauges that count in an area, with the depths of the point nearest to each, nothing reduced."""
+    counts = (storm.means.table.weights > 0).any(axis=0) & storm.window.reporting.any(axis=0)
+    network = observed.given.network.subset(np.asarray(counts))
+    if not len(network):
+        return None
+    nearest = nearest_points(chain.source, network)
+    points = np.eye(len(chain.source.points))[nearest]
+    ones = np.ones(len(network))
+    at_points = replace(chain, weights=points, areas=ones, reduce=None)
+    # Gauges with one nearest point share its ladder.
+    of_point = {int(near): _ladder(at_points, k, minutes, frequencies) for k, near in enumerate(nearest)}
+    ladder = np.stack([of_point[int(near)] for near in nearest])
+    return _depths(storm, storm.window.depth[:, counts], minutes, names=network.ids, ladder=ladder, window=window)

@@ -1,0 +1,68 @@
+"""The areal reduction that a job's design asks for."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.design_asked import minutes_of
+from basinrain.designstorm.areal_reduction import ExponentialCoefficients, Reduced, areal_reduction
+from basinrain.designstorm.depth_chain import Reducer
+from basinrain.designstorm.exceedance import Frequency
+from basinrain.errors import JobError, Problems
+from basinrain.jobfile import DesignJob, Job
+from basinrain.jobfile.design_tables import NO_REDUCTION, ArealReductionTable, DesignTable
+from basinrain.reading.reduction_table import read_reduction_table
+from basinrain.units import area_factor
+
+__all__ = ["reducer"]
+
+Floats = npt.NDArray[np.float64]
+
+
+def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
+    """Return the areal reduction that a job asks for; None where it asks for none."""
+    table = design.areal_reduction
+    if table is None or table.method == NO_REDUCTION:
+        return None
+    options: dict[str, Any] = {}
+    if table.method == "arr-2019" and table.region is not None:
+        options["region"] = table.region
+    elif table.method == "exponential":
+        options["coefficients"] = _coefficients(table)
+    elif table.method == "table":
+        options["table"] = read_reduction_table(
+            job.path(table.file or ""), area_unit=table.area_unit or "", source=table.source
+        )
+    method = areal_reduction(table.method)
+    method.check_options(options)
+
+    def reduce(area: float, minutes: Floats, frequency: Frequency) -> Reduced:
+        return method.reduce(area, minutes, frequency, outside=table.outside, **options)
+
+    return reduce
+
+
+def _coefficients(table: ArealReductionTable) -> ExponentialCoefficients:
+    problems = Problems()
+    for name in ("c1", "c2", "c3"):
+        if name not in table.coefficients:
+            problems.add(item=f"[design.areal_reduction] coefficients, {name}", found="none", expected="c1, c2 and c3")
+    for name in table.coefficients.keys() - {"c1", "c2", "c3"}:
+        problems.add(item=f"[design.areal_reduction] coefficients, {name}", found="it", expected="c1, c2 and c3")
+    problems.raise_as(JobError)
+    areas = None
+    if table.valid_areas is not None:
+        factor = area_factor(table.area_unit or "")
+        areas = (table.valid_areas[0] * factor, table.valid_areas[1] * factor)
+    minutes = None if table.valid is None else (float(minutes_of(table.valid[0])), float(minutes_of(table.valid[1])))
+    return ExponentialCoefficients(
+        c1=table.coefficients["c1"],
+        c2=table.coefficients["c2"],
+        c3=table.coefficients["c3"],
+        source=table.source,
+        areas=areas,
+        minutes=minutes,
+    )
