@@ -11,14 +11,16 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from basinrain.averaging import arithmetic_weights, idw_weights, thiessen_weights
     from basinrain.basins import Basins
+    from basinrain.design_job import run_design
     from basinrain.errors import BasinRainError
     from basinrain.gauges import GaugeNetwork
     from basinrain.infill import InfillOptions, complete
     from basinrain.job import run_infill, run_screen, run_storm
-    from basinrain.jobfile import Job, parse_job, read_job
+    from basinrain.jobfile import DesignJob, Job, parse_design_job, parse_job, read_design_job, read_job
     from basinrain.rainfall import RainRecord, Status
     from basinrain.reading import bring_to_step, read_basins, read_gauges, read_rainfall, settle
     from basinrain.results import InfillRun, ScreenRun, StormRun
+    from basinrain.results_design import DesignRun
     from basinrain.results_series import SeriesRun
     from basinrain.series_job import run_series
     from basinrain.weights import WeightTable, compare
@@ -26,6 +28,8 @@ if TYPE_CHECKING:
 __all__ = [
     "BasinRainError",
     "Basins",
+    "DesignJob",
+    "DesignRun",
     "GaugeNetwork",
     "InfillOptions",
     "InfillRun",
@@ -41,11 +45,14 @@ __all__ = [
     "compare",
     "complete",
     "idw_weights",
+    "parse_design_job",
     "parse_job",
     "read_basins",
+    "read_design_job",
     "read_gauges",
     "read_job",
     "read_rainfall",
+    "run_design",
     "run_infill",
     "run_screen",
     "run_series",
@@ -57,6 +64,8 @@ __all__ = [
 _ROOMS = {
     "BasinRainError": "errors",
     "Basins": "basins",
+    "DesignJob": "jobfile",
+    "DesignRun": "results_design",
     "GaugeNetwork": "gauges",
     "InfillOptions": "infill",
     "InfillRun": "results",
@@ -72,11 +81,14 @@ _ROOMS = {
     "compare": "weights",
     "complete": "infill",
     "idw_weights": "averaging",
+    "parse_design_job": "jobfile",
     "parse_job": "jobfile",
     "read_basins": "reading",
+    "read_design_job": "jobfile",
     "read_gauges": "reading",
     "read_job": "jobfile",
     "read_rainfall": "reading",
+    "run_design": "design_job",
     "run_infill": "job",
     "run_screen": "job",
     "run_series": "series_job",

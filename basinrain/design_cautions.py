@@ -116,9 +116,10 @@ def _of_reduction(
     method = REDUCTIONS[table.method]
     if method.evidence:
         yield Note(code="reduction-evidence", level="info", text=f"{method.title}: {method.evidence}")
-    said = dict.fromkeys((name, remark) for (name, _), found in links.items() for remark in found.remarks)
-    for name, remark in said:
-        yield Note(code="areal-reduction", text=f"{name}: {remark}")
+    for text in dict.fromkeys(remark for found in links.values() for remark in found.remarks):
+        yield Note(code="areal-reduction", level="info", text=text)
+    for name, text in dict.fromkeys((name, text) for (name, _), found in links.items() for text in found.clamped):
+        yield Note(code="reduction-clamped", text=f"{name}: {text}")
     if table.area == "own":
         yield Note(
             code="own-area",

@@ -15,7 +15,7 @@ from basinrain.writing.folder import whole_folder
 __all__ = ["start_command"]
 
 _SAMPLE = ("README.md", "basins.geojson", "gauges.csv", "job.toml", "rain_daily.csv", "rain_hourly.csv")
-_FOLDERS = ("handbook", "record")
+_FOLDERS = ("design", "handbook", "record")
 
 
 def start_command(folder: Path) -> None:

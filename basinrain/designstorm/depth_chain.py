@@ -40,8 +40,8 @@ class Links:
         Areal over point depth; 1 where nothing is reduced.
     reduced_area : float
         The area that decides the reduction, m².
-    remarks : tuple of str
-        Whole sentences: what was brought into a range, what a reader must know.
+    clamped, remarks : tuple of str
+        Whole sentences: what was brought into the reduction's range, and what a reader must know of it.
     """
 
     minutes: Floats
@@ -50,6 +50,7 @@ class Links:
     uplift: float
     reduction: Floats
     reduced_area: float
+    clamped: tuple[str, ...] = ()
     remarks: tuple[str, ...] = ()
 
     @property
@@ -154,7 +155,8 @@ class DepthChain:
             uplift=self.uplift,
             reduction=ones if reduced is None else reduced.factor,
             reduced_area=size,
-            remarks=() if reduced is None else (*reduced.clamped, *reduced.remarks),
+            clamped=() if reduced is None else reduced.clamped,
+            remarks=() if reduced is None else reduced.remarks,
         )
 
     def curves(self, area: int, minutes: int, frequency: Frequency, *, reduced_as: int | None = None) -> CurvePair:

@@ -266,10 +266,11 @@ class EquationDepths:
         ends = np.array(self.valid)
         with np.errstate(over="ignore", divide="ignore"):
             depth = self._depth(one, ends)
-        if not (np.isfinite(depth) & (depth > 0)).all():
+        sound = np.isfinite(depth) & (depth > 0)
+        if not sound.all():
             problems.add(
                 item=self._item(one),
-                found=f"that {form.formula} has no value above 0 at {duration_words(ends[int(depth[0] > 0)])}",
+                found=f"that {form.formula} has no value above 0 at {duration_words(ends[int(sound[0])])}",
                 expected="intensities above 0 at every valid duration",
                 remedy="correct the coefficients, or narrow valid",
             )

@@ -10,7 +10,6 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.errors import JobError, Problem
-from basinrain.intervals import interval_of
 from basinrain.units import DEPTH_UNITS, depth_factor
 
 __all__ = ["DURATION_UNITS", "INTENSITY_UNITS", "UNITS", "depth_words", "duration_words", "in_mm", "parse_duration"]
@@ -20,6 +19,7 @@ Floats = npt.NDArray[np.float64]
 DURATION_UNITS: Final = MappingProxyType({"min": 1.0, "h": 60.0, "d": 1440.0})
 """Units of durations and how many minutes one of them is."""
 
+_MOST_HOURS: Final = 3 * 1440
 _PER_HOUR: Final = "/h"
 
 INTENSITY_UNITS: Final = tuple(f"{unit}{_PER_HOUR}" for unit in DEPTH_UNITS if unit != "kg m-2")
@@ -32,14 +32,16 @@ _WORD: Final = re.compile(r"(?P<number>[0-9]+\.?[0-9]*|\.[0-9]+)\s*(?P<unit>min|
 
 
 def duration_words(minutes: float) -> str:
-    """Return a duration in the largest unit of which it is a whole number.
+    """Return a duration as engineers name it: whole hours up to three days, whole days beyond, else minutes.
 
     Examples
     --------
-    >>> duration_words(90), duration_words(1440), duration_words(7.5)
-    ('90min', '1d', '7.5min')
+    >>> duration_words(90), duration_words(1440), duration_words(5760), duration_words(7.5)
+    ('90min', '24h', '4d', '7.5min')
     """
-    return interval_of(round(minutes) * 60).label if minutes >= 1 and minutes % 1 == 0 else f"{minutes:.6g}min"
+    if minutes % 60:
+        return f"{minutes:.6g}min"
+    return f"{minutes / 60:g}h" if minutes <= _MOST_HOURS or minutes % 1440 else f"{minutes / 1440:g}d"
 
 
 def parse_duration(text: str, *, unit: str | None = None) -> float:

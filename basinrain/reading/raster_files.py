@@ -180,8 +180,10 @@ def _named(text: str, path: Path) -> str:
         parsed = pyproj.CRS.from_user_input(text)
         if parsed.is_compound:
             parsed = parsed.sub_crs_list[0]
-        authority = parsed.to_2d().to_authority(min_confidence=100)
-        return ground.parse_crs(":".join(authority) if authority else parsed.to_2d().to_wkt())
+        # Made two-dimensional for no reason, a system loses its code.
+        parsed = parsed.to_2d() if len(parsed.axis_info) > 2 else parsed
+        authority = parsed.to_authority(min_confidence=100)
+        return ground.parse_crs(":".join(authority) if authority else parsed.to_wkt())
     except (pyproj.exceptions.CRSError, JobError):
         raise ReadError(
             Problem(

@@ -22,7 +22,7 @@ __all__ = ["NAME", "write_parquet"]
 NAME: Final = "design_hyetographs.parquet"
 """The file's name."""
 
-_HELD: Final = 1 << 20
+_HELD: Final = 1 << 18
 """Rows of a group of the file, which are held together."""
 
 
@@ -34,7 +34,7 @@ def write_parquet(folder: Path, content: DesignContent) -> None:
     folder
         Where ``design_hyetographs.parquet`` is made.
     content
-        What to write. A group of rows holds whole hyetographs, of about a million values together.
+        What to write. A group of rows holds whole hyetographs, of about 260 thousand values together.
 
     Raises
     ------

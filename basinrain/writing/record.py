@@ -85,7 +85,7 @@ def _asked_tables(run: DesignRun) -> dict[str, pd.DataFrame]:
 
 
 def told_tables(run: Run) -> dict[str, pd.DataFrame]:
-    """Return the tables that stand in the record besides those that are files of their own: in files they are series."""
+    """Return the tables of the record that are written in formats of their own, not as plain tables."""
     return {"design_hyetographs": run.design_hyetographs} if isinstance(run, DesignRun) else {}
 
 

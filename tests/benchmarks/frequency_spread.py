@@ -36,7 +36,7 @@ class Spread(NamedTuple):
 
 
 class Cover(NamedTuple):
-    """How often the 90 % interval holds the true 100-year depth, in percent, and its median width, of the true depth."""
+    """How often the 90 % interval holds the true 100-year depth, and its median width; all in percent."""
 
     truth: str
     years: int
@@ -102,21 +102,18 @@ def covers(*, number: int = 2_000, seed: int = 8) -> list[Cover]:
     return found
 
 
-def spread_lines(found: list[Spread]) -> list[str]:
-    """Return the rows of the table of spreads."""
+def lines_of(found: list[Spread] | list[Cover]) -> list[str]:
+    """Return the rows of a table; whole percents, but a bias with one decimal and its sign."""
     return [
-        f"| {row.truth} | {row.years} | {row.fitted} | {row.low:.0f} | {row.middle:.0f} | {row.high:.0f} | {row.bias:+.1f} |"
-        for row in found
-    ]
-
-
-def cover_lines(found: list[Cover]) -> list[str]:
-    """Return the rows of the table of intervals."""
-    return [
-        f"| {row.truth} | {row.years} | {row.fitted} | {row.held:.0f} | {row.below:.0f} | {row.above:.0f} | {row.width:.0f} |"
+        "| "
+        + " | ".join(
+            f"{value:+.1f}" if name == "bias" else f"{value:.0f}" if isinstance(value, float) else str(value)
+            for name, value in zip(row._fields, row, strict=True)
+        )
+        + " |"
         for row in found
     ]
 
 
 if __name__ == "__main__":
-    print("\n".join([*spread_lines(spreads()), "", *cover_lines(covers())]))  # noqa: T201
+    print("\n".join([*lines_of(spreads()), "", *lines_of(covers())]))  # noqa: T201

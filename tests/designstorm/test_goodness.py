@@ -40,7 +40,7 @@ def test_correlation_is_that_with_the_library_s_quantiles(shape: float) -> None:
     ],
 )
 def test_critical_values_are_the_published_ones(n: int, ten: float, five: float) -> None:
-    """10 % and 5 % points for Gumbel are those of Vogel (1986), in Handbook of Hydrology, table 18.3.3 (from memory)."""
+    """10 % and 5 % points for Gumbel are Vogel's (1986; Handbook of Hydrology, 1993, table 18.3.3; from memory)."""
     found = plot_correlation(gumbel_samples(40_000, n, seed=n), np.array(0.0))
     np.testing.assert_allclose(np.quantile(found, [0.10, 0.05]), [ten, five], atol=2e-3)
 

@@ -50,15 +50,11 @@ def test_words_are_read_back(minutes: int) -> None:
     assert parse_duration(duration_words(minutes)) == minutes
 
 
-def test_words_of_short_durations() -> None:
-    """A duration that is no whole number of minutes keeps its fraction."""
-    assert [duration_words(minutes) for minutes in (0.5, 7.5, 60.0, 90.0, 2880.0)] == [
-        "0.5min",
-        "7.5min",
-        "1h",
-        "90min",
-        "2d",
-    ]
+def test_words_of_durations() -> None:
+    """Hours up to three days, days beyond; minutes, with their fraction, for what is no whole number of hours."""
+    minutes = (0.5, 7.5, 60.0, 90.0, 2880.0, 4320.0, 4380.0, 5760.0)
+    words = ["0.5min", "7.5min", "1h", "90min", "48h", "72h", "73h", "4d"]
+    assert [duration_words(length) for length in minutes] == words
 
 
 @pytest.mark.parametrize("unit", UNITS)

@@ -49,15 +49,15 @@ def test_whether_anything_lies_outside() -> None:
 
 def test_a_law_goes_on_from_one_frequency() -> None:
     """What has a law of its own may go on from one frequency; else there is no segment to go on along."""
-    for law in (True, False):
-        asked = {"durations": [60.0, 120.0], "frequencies": [TEN], "extrapolate": True, "fixed_law": law}
-        if law:
-            assert check_reach(np.array([60.0]), Frequency(20.0, ANNUAL_MAXIMUM), **asked)
-        else:
-            with pytest.raises(
-                MethodError, match=r"^AEP 0\.05 .*: found that the depths have only AEP 0\.1 \(1 in 10\)"
-            ):
-                check_reach(np.array([60.0]), Frequency(20.0, ANNUAL_MAXIMUM), **asked)
+    rarer = Frequency(20.0, ANNUAL_MAXIMUM)
+
+    def check(*, law: bool) -> bool:
+        span = [60.0, 120.0]
+        return check_reach(np.array([60.0]), rarer, durations=span, frequencies=[TEN], extrapolate=True, fixed_law=law)
+
+    assert check(law=True)
+    with pytest.raises(MethodError, match=r"^AEP 0\.05 .*: found that the depths have only AEP 0\.1 \(1 in 10\)"):
+        check(law=False)
 
 
 def test_sound_depths_pass_and_each_unsound_point_is_named_once() -> None:

@@ -18,7 +18,7 @@ from basinrain.writing.design_csv import COLUMNS, write_csv
 from basinrain.writing.design_parquet import write_parquet
 
 
-@pytest.mark.parametrize(("held", "groups"), [(1 << 20, 1), (130, 7), (1, 16)])
+@pytest.mark.parametrize(("held", "groups"), [(1 << 18, 1), (130, 7), (1, 16)])
 def test_pyarrow_reads_every_number(tmp_path: Path, held: int, groups: int, monkeypatch: pytest.MonkeyPatch) -> None:
     """A group of rows holds whole hyetographs; the probability of a partial duration series is null."""
     monkeypatch.setattr(design_parquet, "_HELD", held)

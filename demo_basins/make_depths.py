@@ -1,10 +1,9 @@
-"""Make the invented depth-duration-frequency table of this folder; run again, it writes the same bytes."""
+"""Make the invented depth-duration-frequency table of the design job: ``make_depths.py [FOLDER]``."""
 
 from __future__ import annotations
 
+import sys
 from pathlib import Path
-
-HERE = Path(__file__).parent
 
 POINTS = {
     "Skarn Head": (137.085, 46.565, 1.14),
@@ -32,16 +31,16 @@ def growth(minutes: int) -> float:
     return minutes / (minutes**0.72 + 8.0) / (1440 / (1440**0.72 + 8.0))
 
 
-def main() -> None:
-    """Write the table."""
+def main(folder: Path) -> None:
+    """Write the table into a folder."""
     lines = ["point,lon,lat,duration,aep,depth_mm"]
     for point, (lon, lat, wetness) in POINTS.items():
         for word in DURATIONS:
             for aep, day in DAY.items():
                 depth = day * wetness * growth(minutes_of(word))
                 lines.append(f"{point},{lon},{lat},{word},{aep},{depth:.1f}")
-    (HERE / "depths.csv").write_text("\n".join(lines) + "\n", encoding="utf-8")
+    (folder / "depths.csv").write_text("\n".join(lines) + "\n", encoding="utf-8")
 
 
 if __name__ == "__main__":
-    main()
+    main(Path(sys.argv[1]) if len(sys.argv) > 1 else Path(__file__).parent / "design")
