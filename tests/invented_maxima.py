@@ -11,7 +11,7 @@ from basinrain.designstorm.exceedance import Frequency
 
 Floats = npt.NDArray[np.float64]
 
-MINUTES: Final = np.array([30.0, 60.0, 180.0, 1440.0])
+MINUTES: Final = np.array([30.0, 60.0, 180.0, 720.0])
 FREQUENCIES: Final = tuple(Frequency(years, "annual-maximum") for years in (2.0, 5.0, 10.0, 20.0))
 
 
@@ -22,12 +22,15 @@ def annual_maxima(years: int, areas: int = 2, *, seed: int = 21) -> Floats:
     return np.maximum(storm * (MINUTES[:, None] / 60) ** 0.35 + generator.random((years, 4, areas)), 1.0)
 
 
-def crossing_maxima(years: int = 20) -> Floats:
-    """Return maxima of one area in an hour and in three, never less in three, whose fits cross.
+def crossing_maxima() -> Floats:
+    """Return maxima of 20 years of one area in an hour and in three, never less in three, whose fits cross.
 
-    The hour has one great storm with nothing around it; in other years the three hours have much more than the hour.
+    Six years have great storms that last an hour. The others have little in the hour and much more in the three, so
+    that the three hours differ less from year to year; from 1 in 20 on the hour's Gumbel fit is the greater one.
     """
-    hour = 14 + 4 * np.sin(np.arange(years) * 1.7)
-    three = 34 + 2 * np.sin(np.arange(years) * 2.3)
-    hour[7] = three[7] = 52.0
+    place = np.arange(20)
+    stormy = place % 3 == 1
+    stormy[19] = False
+    hour = np.where(stormy, 50.0, 6.0) + 0.1 * (place * 7 % 20)
+    three = np.where(stormy, hour, 25.0 + 0.1 * (place * 7 % 20))
     return np.stack([hour, three], axis=1)[:, :, None]

@@ -177,7 +177,7 @@ table
     fits = {
         one: fit_record(one, values, moments, minutes=minutes, variates=variates, drawn=drawn) for one in DISTRIBUTIONS
     }
-    check_depths(fits[name].depth, minutes, names, asked)
+    check_depths(fits[name].quantiles, minutes, names, asked)
     statistic, p_value = shape_test(fits[GEV].parameters.shape, moments.n)
     return RecordDepths(
         depths=PointDepths(

@@ -2,13 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Final
 
 import numpy as np
-import numpy.typing as npt
 import pandas as pd
 
 from basinrain.designstorm.areal_reduction.table import ReductionTable
@@ -22,6 +20,8 @@ from basinrain.units import area_factor
 __all__ = ["read_reduction_table"]
 
 _SLACK: Final = 1e-9
+_PERCENT: Final = 2.0
+"""What is no factor and at least this is taken to be in percent, in the advice that an error gives."""
 
 
 @dataclass(frozen=True)
@@ -133,18 +133,27 @@ def _entries(table: DelimitedTable, area_unit: str, problems: Problems) -> list[
         for cell, line in zip(table.frame[duration], table.lines, strict=True)
     ]
     if area is not None and factor is not None:
-        areas = _checked(table, area, "an area, a number of 0 or more", lambda v: v >= 0, problems)
+        areas, bad = numbers(table, area)
+        for row in np.flatnonzero(bad | ~(areas >= 0)):
+            _report(table, area, int(row), "an area, 0 or more", "correct the cell", problems)
         factors = {factor: areas}
     else:
-        names = [name for name in table.columns if name != duration]
-        headings = DelimitedTable(
-            table.file, ("area",), pd.DataFrame({"area": names}), np.ones(len(names), dtype=np.int64), table.decimal
-        )
-        areas = _checked(headings, "area", "an area as heading, a number of 0 or more", lambda v: v >= 0, problems)
-        factors = {name: np.full(len(minutes), area) for name, area in zip(names, areas, strict=True)}
+        headings = [name for name in table.columns if name != duration]
+        cells = pd.DataFrame({"area": headings})
+        areas, bad = numbers(replace(table, columns=("area",), frame=cells), "area")
+        for place in np.flatnonzero(bad | ~(areas >= 0)):
+            problems.add(
+                item="the header",
+                found=f"'{headings[place]}'",
+                expected="columns area, duration and factor, or an area over every column but the duration's",
+            )
+        factors = {name: np.full(len(minutes), of) for name, of in zip(headings, areas, strict=True)}
     entries = []
     for column, of in factors.items():
-        values = _checked(table, column, "a factor above 0 and at most 1", lambda v: (v > 0) & (v <= 1), problems)
+        values, _ = numbers(table, column)
+        for row in np.flatnonzero(~((values > 0) & (values <= 1))):
+            remedy = "write percent as fractions" if _PERCENT <= values[row] <= 100 else "correct the cell"
+            _report(table, column, int(row), "a factor above 0 and at most 1", remedy, problems)
         entries += [
             _Entry(float(a), m, float(f), int(line), column)
             for a, m, f, line in zip(of, minutes, values, table.lines, strict=True)
@@ -157,27 +166,24 @@ def _minutes(text: str, line: int, column: str, problems: Problems) -> float:
         return parse_duration(text)
     except JobError as error:
         problem = error.problems[0]
-        problems.add(item=problem.item, found=problem.found, expected=problem.expected, line=line, column=column)
+        problems.add(
+            item="a duration",
+            found=problem.found,
+            expected=problem.expected,
+            remedy="write the unit" if problem.remedy else "correct the cell",
+            line=line,
+            column=column,
+        )
         return np.nan
 
 
-def _checked(
-    table: DelimitedTable,
-    column: str,
-    expected: str,
-    good: Callable[[npt.NDArray[np.float64]], npt.NDArray[np.bool_]],
-    problems: Problems,
-) -> npt.NDArray[np.float64]:
-    """Return a column's numbers; others are reported."""
-    values, _ = numbers(table, column)
-    for row in np.flatnonzero(~good(values)):
-        cell = table.frame[column].iloc[row]
-        problems.add(
-            item="areal reduction",
-            found=f"'{cell}'" if cell else "nothing",
-            expected=expected,
-            remedy="write percent as fractions" if "factor" in expected and 1 < values[row] <= 100 else "",
-            line=int(table.lines[row]),
-            column=column,
-        )
-    return values
+def _report(table: DelimitedTable, column: str, row: int, expected: str, remedy: str, problems: Problems) -> None:
+    cell = table.frame[column].iloc[row]
+    problems.add(
+        item="a row",
+        found=f"'{cell}'" if cell else "nothing",
+        expected=expected,
+        remedy=remedy,
+        line=int(table.lines[row]),
+        column=column,
+    )

@@ -23,7 +23,7 @@ from basinrain.report.series_names import length_text
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.units import depth_factor
 
-__all__ = ["MOST_FREQUENCIES", "apart", "depths_picture"]
+__all__ = ["MOST_FREQUENCIES", "apart", "depths_picture", "short_label"]
 
 MOST_FREQUENCIES: Final = 8
 """Frequencies whose curves can still be told apart."""
@@ -119,7 +119,7 @@ def depths_picture(
         ends = [depth for depth, _ in kinds.values()]
         _label_curves(axes, minutes, ends[-1], labels, points=high * 72)
         if both:
-            short = [_short_label(frequencies[row]) for row in rows]
+            short = [short_label(frequencies[row]) for row in rows]
             _label_curves(axes, minutes, ends[0], short, points=high * 72, first=True)
         figure.text(0.012, 1 - 0.04 / _HEIGHT, about, ha="left", va="top", fontsize=8, fontweight="bold")
         figure.legend(
@@ -165,7 +165,14 @@ def _depth_axis(axes: Any, depths: list[Floats], unit: str) -> None:  # noqa: AN
         axes.spines[side].set_visible(False)
 
 
-def _short_label(frequency: Frequency) -> str:
+def short_label(frequency: Frequency) -> str:
+    """Return a frequency in as few letters as can be, where another place says what it is counted in.
+
+    Examples
+    --------
+    >>> short_label(Frequency.of_aep(0.01)), short_label(Frequency(2.0, "partial-duration"))
+    ('1 in 100', '2-year')
+    """
     years = f"{frequency.return_period:.4g}"
     return f"1 in {years}" if frequency.series == ANNUAL_MAXIMUM else f"{years}-year"
 

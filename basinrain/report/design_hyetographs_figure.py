@@ -17,6 +17,7 @@ from matplotlib.ticker import FixedLocator, FuncFormatter, MaxNLocator, Multiple
 
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.intervals import interval_of
+from basinrain.report.design_depths_figure import short_label
 from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.hyetograph_figure import binned
 from basinrain.report.series_names import length_text
@@ -247,7 +248,7 @@ def _head(figure: Figure, title: str, rarest: Frequency, others: list[Frequency]
     figure.text(0.012, 1 - 0.04 / height, title, ha="left", va="top", fontsize=8, fontweight="bold")
     handles: list[Any] = [Patch(facecolor=_FILL, edgecolor=INK, linewidth=0.4, label=rarest.label)]
     handles += [
-        Line2D([], [], color=INK, linestyle=line, linewidth=0.8, label=frequency.label)
+        Line2D([], [], color=INK, linestyle=line, linewidth=0.8, label=short_label(frequency))
         for frequency, line in zip(others, _OUTLINES, strict=False)
     ]
     handles.append(Line2D([], [], label="cumulative share", **_SHARE))

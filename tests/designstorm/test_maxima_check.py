@@ -13,12 +13,12 @@ from basinrain.errors import DataError, MethodError, Problems
 
 Floats = npt.NDArray[np.float64]
 
-MINUTES = np.array([60.0, 1440.0])
+MINUTES = np.array([60.0, 720.0])
 
 
-def annual(*years: float) -> Frequency:
+def annual(years: float) -> Frequency:
     """Return one frequency of an annual maximum series."""
-    return Frequency(years[0], "annual-maximum")
+    return Frequency(years, "annual-maximum")
 
 
 def series(*columns: Floats) -> Floats:
@@ -36,9 +36,9 @@ def test_all_problems_of_maxima_together() -> None:
         check_maxima(maxima, np.array([2001, 2003, 2002]), MINUTES[::-1], ["Quill", "Quill"])
     assert str(caught.value).splitlines() == [
         "years: found 2002 after 2003; expected each once, rising",
-        "durations: found 60 after 1440; expected each once, rising",
+        "durations: found 60 after 720; expected each once, rising",
         "area Quill: found the id twice; expected each area once",
-        "area Quill, 1d, 2003: found -3 mm; expected a finite depth of 0 or more, or none",
+        "area Quill, 12h, 2003: found -3 mm; expected a finite depth of 0 or more, or none",
         "area Quill, 1h, 2002: found inf mm; expected a finite depth of 0 or more, or none",
     ]
 
@@ -66,13 +66,18 @@ def test_series_that_no_distribution_fits() -> None:
     check_series(moments, MINUTES, ["Quill", "Reed"], problems, shape_wanted=True)
     with pytest.raises(MethodError) as caught:
         problems.raise_as(MethodError)
-    assert str(caught.value).splitlines() == [
-        "area Quill, 1h: found 9 years with an annual maximum; expected 10 at least; take a longer record, or depths of "
-        "a table",
-        "area Quill, 1d: found annual maxima that are all 7 mm; expected maxima that differ; look at the record",
-        "area Reed, 1d: found annual maxima of which all but one are equal; expected maxima that differ, to fit a shape "
-        'to; look at the record, or write distribution = "gumbel"',
-    ]
+    nine, equal, lone = str(caught.value).splitlines()
+    assert nine == (
+        "area Quill, 1h: found 9 years with an annual maximum; expected 10 at least; take a longer record, or depths "
+        "of a table"
+    )
+    assert equal == (
+        "area Quill, 12h: found annual maxima that are all 7 mm; expected maxima that differ; look at the record"
+    )
+    assert lone == (
+        "area Reed, 12h: found annual maxima of which all but one are equal; expected maxima that differ, to fit a "
+        'shape to; look at the record, or write distribution = "gumbel"'
+    )
     fewer = Problems()
     check_series(moments, MINUTES, ["Quill", "Reed"], fewer, shape_wanted=False)
     assert len(fewer) == 2
@@ -88,7 +93,7 @@ def test_twice_the_years_of_the_shortest_series_is_the_reach() -> None:
     check_asked(asked, moments, MINUTES, ["Quill"], problems, beyond_record=False)
     with pytest.raises(
         MethodError,
-        match=r"^AEP 0\.02857 \(1 in 35\): found a return period of over 2 times the 17 years of area Quill, 1d; "
+        match=r"^AEP 0\.02857 \(1 in 35\): found a return period of over 2 times the 17 years of area Quill, 12h; "
         r"expected 34 years at most; ask for a less rare one, or allow it with beyond_record = true$",
     ):
         problems.raise_as(MethodError)

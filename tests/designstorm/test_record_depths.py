@@ -90,11 +90,11 @@ def test_one_short_series_decides_for_all() -> None:
 
 
 def test_nine_years_are_refused() -> None:
-    """Ten years of which one does not count at the day are named by area, duration and years."""
+    """Ten years of which one does not count at twelve hours are named by area, duration and years."""
     maxima = annual_maxima(10)
     maxima[6, 3, 1] = np.nan
     with pytest.raises(
-        MethodError, match=r"^area B, 1d: found 9 years with an annual maximum; expected 10 at least; take a longer"
+        MethodError, match=r"^area B, 12h: found 9 years with an annual maximum; expected 10 at least; take a longer"
     ):
         found_of(maxima)
 
@@ -130,7 +130,7 @@ def test_frequencies_once_each_and_in_order() -> None:
 
 
 def test_a_repeat_is_identical() -> None:
-    """The same record gives the same bytes, another seed other intervals of the same depths; the input is left alone."""
+    """The same record gives the same bytes, another seed other intervals of the same depths; no input is touched."""
     maxima = annual_maxima(30)
     maxima[3, 1, 0] = np.nan
     before = maxima.copy()
@@ -219,9 +219,9 @@ def test_what_cannot_be_asked() -> None:
         found_of(annual_maxima(30), distribution="gumble")
     with pytest.raises(JobError, match=r"^resamples: found 10; expected 100 at least$"):
         found_of(annual_maxima(30), resamples=10)
-    with pytest.raises(DataError, match=r"^area B, 1d, 1993: found -1 mm; expected a finite depth"):
-        maxima = annual_maxima(30)
-        maxima[2, 3, 1] = -1.0
+    maxima = annual_maxima(30)
+    maxima[2, 3, 1] = -1.0
+    with pytest.raises(DataError, match=r"^area B, 12h, 1993: found -1 mm; expected a finite depth"):
         found_of(maxima)
 
 

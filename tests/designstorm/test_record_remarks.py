@@ -24,8 +24,8 @@ def test_gumbel_says_its_bias_and_how_far_gev_differs() -> None:
     found = found_of(annual_maxima(30))
     change = 100 * (found.fits["gev"].depth[..., -1] / found.fits["gumbel"].depth[..., -1] - 1)
     assert found.remarks[0] == (
-        "The Gumbel distribution is fitted to annual maxima of 30 years by L-moments. Gumbel underestimates rare depths "
-        "where the true upper tail is heavier. At AEP 0.05 (1 in 20) depths of the generalised extreme value "
+        "The Gumbel distribution is fitted to annual maxima of 30 years by L-moments. Gumbel underestimates rare "
+        "depths where the true upper tail is heavier. At AEP 0.05 (1 in 20) depths of the generalised extreme value "
         f"distribution differ from Gumbel's by {change.min():+.1f} to {change.max():+.1f} %."
     )
 
@@ -79,7 +79,7 @@ def test_years_that_do_not_count_are_told() -> None:
     maxima[1, 3, 1] = 60.0
     maxima[4:6, 2, 1] = np.nan
     assert (
-        "Not all of the 29 years count in A 30min, A 1h, A 3h, A 1d, B 30min, B 1h and 1 more; the fewest, 26, in B 3h."
+        "Not all of the 29 years count in A 30min, A 1h, A 3h, A 12h, B 30min, B 1h and 1 more; the fewest, 26, in B 3h."
         in found_of(maxima).remarks
     )
 
@@ -92,7 +92,8 @@ def test_raised_depths_are_told() -> None:
     before, after = found.fit.quantiles[0, 1, 3], found.fit.depth[0, 1, 3]
     assert found.remarks[-1] == (
         "Fits of different durations cross; so that depth does not fall with duration nor intensity rise, these are "
-        f"raised by up to {100 * (after / before - 1):.2f} %: A 3h AEP 0.05 (1 in 20) from {before:.2f} to {after:.2f} mm."
+        f"raised by up to {100 * (after / before - 1):.2f} %: A 3h AEP 0.05 (1 in 20) from {before:.2f} to "
+        f"{after:.2f} mm."
     )
 
 

@@ -11,6 +11,7 @@ import shapely
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 from rasterfiles import write_asc, write_tiff
+from rasterio.transform import Affine
 
 from basinrain.basins import Basins
 from basinrain.designstorm.exceedance import Frequency
@@ -99,7 +100,7 @@ def test_units(tmp_path: Path, unit: str, factor: float) -> None:
 
 
 def test_geotiff_and_ascii_grid_in_degrees(tmp_path: Path) -> None:
-    """Both formats give the same cells over a basin in the plane; the mean of a plane of depths is that at its middle."""
+    """Both formats give the same cells over basins in the plane; depths that rise evenly average to the middle's."""
     plane = "+proj=laea +lat_0=40 +lon_0=-105 +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs"
     basins = basins_of(shapely.box(-9000, -9000, 9000, 9000), shapely.box(1000, 0, 1400, 300), crs=plane)
     # Hundredths of a degree around 105 W, 40 N: 50 mm, and 2 mm more for every cell eastward.
@@ -110,9 +111,7 @@ def test_geotiff_and_ascii_grid_in_degrees(tmp_path: Path) -> None:
         if suffix == ".asc":
             write_asc(path, values, west=-105.2, south=39.8, cell=0.01, crs="EPSG:4326")
         else:
-            from rasterio.transform import from_origin
-
-            write_tiff(path, values, transform=from_origin(-105.2, 40.2, 0.01, 0.01), crs="EPSG:4326")
+            write_tiff(path, values, transform=Affine(0.01, 0.0, -105.2, 0.0, -0.01, 40.2), crs="EPSG:4326")
         found.append(read([RasterFile(path, 60.0, TWO)], basins, crs=None))
     (depths, weights), (others, other_weights) = found
     assert depths.points == others.points
@@ -156,13 +155,13 @@ def test_every_duration_has_every_frequency_once(tmp_path: Path) -> None:
     """What is missing and what stands twice is named by duration and frequency."""
     a, b, c = (RasterFile(tmp_path / f"{name}.asc", 60.0, TWO) for name in "abc")
     with pytest.raises(JobError) as caught:
-        read([a, b, RasterFile(c.path, 1440.0, TEN)])
+        read([a, b, RasterFile(c.path, 360.0, TEN)])
     assert str(caught.value).replace(str(tmp_path), ".").splitlines() == [
         f"[[design.depths.raster]] of 1h, {LABELS[TWO]}: found two: ./a.asc and ./b.asc; expected one; remove one",
         *(
             f"[[design.depths.raster]] of {words}: found none; expected a raster for every duration at every "
             "frequency; add it"
-            for words in (f"1h, {LABELS[TEN]}", f"1d, {LABELS[TWO]}")
+            for words in (f"1h, {LABELS[TEN]}", f"6h, {LABELS[TWO]}")
         ),
     ]
 
@@ -234,11 +233,11 @@ def test_values_that_are_no_depths(tmp_path: Path) -> None:
     """Zeros and codes below zero are refused with their number, file by file, with files that cannot be read."""
     files = four(tmp_path, PLAIN)
     write_asc(files[0].path, [[-999, 36, 1], [0, 48, 1]])
-    write_asc(files[2].path, [["x", 36, 1], [0, 48, 1]])
+    write_asc(files[2].path, [[60, "x", 1], [0, 48, 1]])
     assert problems_of(files, tmp_path, unit="in") == [
         (
-            f"./0.asc: the raster of 1h, {LABELS[TWO]}: found 2 cells without a depth, such as row 1 column 1 with -999 "
-            "in; expected depths above 0; correct the raster, or mark such cells as without data"
+            f"./0.asc: the raster of 1h, {LABELS[TWO]}: found 2 cells without a depth, such as row 1 column 1 with "
+            "-999 in; expected depths above 0; correct the raster, or mark such cells as without data"
         ),
         "./2.asc:7: the raster: found 'x'; expected numbers with a decimal point",
     ]
@@ -247,15 +246,15 @@ def test_values_that_are_no_depths(tmp_path: Path) -> None:
 def test_depths_out_of_order_are_summed_up(tmp_path: Path) -> None:
     """One line for each kind of fault, with the number of cells and the worst of them."""
     files = four(tmp_path, PLAIN)
-    # Less than at 2 years in one cell, by a fifth; less than in 1 h in two cells, by 1 % and 2 %; 4 h thrice as intense.
+    # A fifth less than at 2 years in one cell; 1 % and 2 % less than in 1 h in two; in 4 h thrice as intense in one.
     write_asc(files[1].path, [[24, 56, 1], [62, 68, 1]])
     write_asc(files[2].path, [[60, 36 * 0.99, 1], [42 * 0.98, 78, 1]])
     write_asc(files[3].path, [[288, 96, 1], [102, 108, 1]])
     tail = "correct the rasters, or leave out a duration or frequency"
     assert problems_of(files, tmp_path) == [
         (
-            "./2.asc: the rasters: found 2 cells of 4 with less depth in a longer duration, the worst row 2 column 1 at "
-            f"4h, {LABELS[TWO]}: 41.16 mm (10.29 mm/h), 2 % less than the 42 mm (42 mm/h) of 1h; expected depths that "
+            "./2.asc: the rasters: found 2 cells of 4 with less depth in a longer duration, the worst row 2 column 1 "
+            f"at 4h, {LABELS[TWO]}: 41.16 mm (10.29 mm/h), 2 % less than the 42 mm (42 mm/h) of 1h; expected depths that "
             f"do not fall with duration; {tail}"
         ),
         (
@@ -264,8 +263,8 @@ def test_depths_out_of_order_are_summed_up(tmp_path: Path) -> None:
             f"that do not fall with rarity; {tail}"
         ),
         (
-            "./3.asc: the rasters: found 1 cell of 4 with more intensity in a longer duration, the worst row 1 column 1 "
-            f"at 4h, {LABELS[TEN]}: 288 mm (72 mm/h), 200 % more than the 24 mm (24 mm/h) of 1h; expected intensities "
+            "./3.asc: the rasters: found 1 cell of 4 with more intensity in a longer duration, the worst row 1 column "
+            f"1 at 4h, {LABELS[TEN]}: 288 mm (72 mm/h), 200 % more than the 24 mm (24 mm/h) of 1h; expected intensities "
             f"that do not rise with duration; {tail}"
         ),
     ]

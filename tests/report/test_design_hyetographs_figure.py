@@ -61,7 +61,7 @@ def test_the_rarest_has_the_bars_and_the_others_are_outlines(figures: list[Any])
     assert corners(axes)[:, 2] == pytest.approx([25.4, 76.2, 25.4])
     outlines = [patch for patch in axes.patches if patch.get_linestyle() not in ("-", "solid")]
     assert [outline.get_data().values.tolist() for outline in outlines] == [[1.0, 2.0, 1.0]]
-    assert {"AEP 0.01 (1 in 100)", "2-year, partial duration", "cumulative share"} <= set(svg_texts(one.svg))
+    assert {"AEP 0.01 (1 in 100)", "2-year", "cumulative share"} <= set(svg_texts(one.svg))
 
 
 def test_patterns_stand_side_by_side_in_one_scale(figures: list[Any]) -> None:
@@ -108,12 +108,8 @@ def test_what_is_not_drawn_is_counted() -> None:
     one = design_pictures(many, "mm")[0]
     texts = svg_texts(one.svg)
     assert [text for text in texts if text.startswith("pattern ")] == [f"pattern {k}" for k in range(6)]
-    assert [text for text in texts if text.startswith("AEP")] == [
-        "AEP 0.01 (1 in 100)",
-        "AEP 0.02 (1 in 50)",
-        "AEP 0.1 (1 in 10)",
-        "AEP 0.5 (1 in 2)",
-    ]
+    labels = [text for text in texts if "1 in" in text]
+    assert labels == ["AEP 0.01 (1 in 100)", "1 in 50", "1 in 10", "1 in 2"]
     assert "Drawn: 6 of 9 patterns. 2 more frequencies are not drawn." in one.caption
 
 
