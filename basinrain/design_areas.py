@@ -30,7 +30,7 @@ class Areas:
     basins
         Every area as a polygon in the working plane, rows as the points have them; ids are names for messages.
     names
-        What results call them: names of the points, and ids of basins.
+        What results call them, each once: names of the points, and ids of the basins that are not points as well.
     """
 
     points: tuple[PointOfInterest, ...]
@@ -51,7 +51,7 @@ def areas_of(design: DesignTable, basins: Basins) -> Areas:
     Raises
     ------
     JobError
-        A point names a basin that there is not; all of them.
+        A point names a basin that there is not, or is called after one but has others above it; all of them.
 
     Examples
     --------
@@ -81,6 +81,14 @@ def areas_of(design: DesignTable, basins: Basins) -> Areas:
     asked = {point.name: point.basins for point in design.point} or {_name_of_all(known): known}
     problems = Problems()
     for name, above in asked.items():
+        if name in known and tuple(above) != (name,):
+            problems.add(
+                item=f"[[design.point]] {name}",
+                found="the id of a basin that is not all that lies above the point",
+                expected="a name of its own",
+                remedy="results could not tell the two apart",
+                basin=name,
+            )
         for basin in above:
             if basin not in known:
                 problems.add(
@@ -91,23 +99,25 @@ def areas_of(design: DesignTable, basins: Basins) -> Areas:
                     basin=basin,
                 )
     problems.raise_as(JobError)
-    parts = tuple(dict.fromkeys(basin for above in asked.values() for basin in above))
-    polygons = [basins.polygons[basins.ids.index(basin)] for basin in parts]
-    of = dict(zip(parts, polygons, strict=True))
+    every_part = dict.fromkeys(basin for above in asked.values() for basin in above)
+    of = {basin: basins.polygons[basins.ids.index(basin)] for basin in every_part}
     wholes = [shapely.union_all([of[basin] for basin in above]) for above in asked.values()]
+    # A point that has the name of its one basin stands for the basin too.
+    parts = tuple(basin for basin in every_part if basin not in asked)
+    row = {name: k for k, name in enumerate((*asked, *parts))}
     points = tuple(
         PointOfInterest(
             name=name,
             row=k,
             basins=tuple(above),
-            rows=tuple(len(asked) + parts.index(basin) for basin in above),
+            rows=tuple(row[basin] for basin in above),
             apart=sum(of[basin].area for basin in above) <= wholes[k].area * (1 + _LAPPED),
         )
         for k, (name, above) in enumerate(asked.items())
     )
     ids = (*(f"all above {name}" for name in asked), *(f"basin {basin}" for basin in parts))
     every = np.empty(len(ids), dtype=object)
-    every[:] = [*wholes, *polygons]
+    every[:] = [*wholes, *(of[basin] for basin in parts)]
     return Areas(points=points, basins=Basins(ids=ids, polygons=every, crs=basins.crs), names=(*asked, *parts))
 
 

@@ -2,86 +2,37 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 from datetime import datetime
 from functools import partial
-from typing import Any, Final
+from itertools import pairwise
+from typing import Any
 
 import numpy as np
 
+from basinrain.design_keys import check_depth_keys, check_one_of, check_pattern_keys, check_reduction_keys
+from basinrain.design_reduction import stated_options
 from basinrain.designstorm.areal_reduction import REDUCTIONS, areal_reduction, check_jurisdiction
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, PARTIAL_DURATION, Frequency
 from basinrain.designstorm.patterns import PATTERNS
 from basinrain.designstorm.patterns.peak import peak_fraction
 from basinrain.errors import JobError, Problem, Problems, nearest_name
 from basinrain.inputs import attempt
-from basinrain.intervals import parse_interval
 from basinrain.jobfile import DesignJob, Job
 from basinrain.jobfile.design_tables import (
     EQUATION,
     NO_REDUCTION,
-    RASTERS,
     RECORD,
     TABLE,
     ArealReductionTable,
     DesignDepthsTable,
     DesignTable,
-    PatternTable,
+    minutes_of,
 )
 from basinrain.jobfile.fields import is_month
+from basinrain.jobfile.tables import AveragingTable
 
-__all__ = ["Asked", "asked", "minutes_of"]
-
-_NEEDED: Final[Mapping[str, tuple[str, ...]]] = {
-    TABLE: ("file", "unit", "probability", "series", "source", "date"),
-    RASTERS: ("raster", "unit", "series", "source", "date"),
-    EQUATION: (
-        "equation",
-        "coefficients",
-        "return_periods",
-        "valid",
-        "unit",
-        "duration_unit",
-        "series",
-        "source",
-        "date",
-    ),
-    RECORD: (),
-}
-"""The keys of ``[design.depths]`` without which depths of an origin cannot be had."""
-
-_TAKEN: Final[Mapping[str, tuple[str, ...]]] = {
-    TABLE: ("layout", "duration_unit", "columns", "crs", "convert", "extrapolate", "interval_factor", "average"),
-    RASTERS: ("crs", "convert", "extrapolate", "interval_factor"),
-    EQUATION: ("convert", "extrapolate", "interval_factor"),
-    RECORD: (
-        "durations",
-        "gauges",
-        "wet_season",
-        "distribution",
-        "beyond_record",
-        "extrapolate",
-        "interval_factor",
-        "average",
-    ),
-}
-"""The further keys that depths of an origin take."""
-
-_WORDS: Final = {
-    "source": "where the depths come from: publication, volume, edition",
-    "date": "when they were published or read",
-    "series": f"'{ANNUAL_MAXIMUM}' or '{PARTIAL_DURATION}', as the source has it",
-    "unit": "that of the depths, such as 'mm', or of intensities, such as 'mm/h'",
-    "probability": "what the column holds: 'aep', 'aep-percent' or 'return-period'",
-    "file": "the file of depths",
-    "raster": "one table [[design.depths.raster]] for every duration and frequency",
-    "equation": "its name",
-    "coefficients": "those of the equation: one set with an x, or one for every return period",
-    "return_periods": "that of every set of coefficients, or the least and the greatest of a set with an x",
-    "duration_unit": "that of the durations in the equation: 'min' or 'h'",
-    "valid": "the shortest and the longest duration for which the equation holds",
-}
+__all__ = ["Asked", "asked"]
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -147,7 +98,8 @@ as the source has it; state it
     if design is None:
         raise JobError(Problem(item="[design]", found="no such table", expected="it to be given", remedy="add it"))
     problems = Problems()
-    _check_depths(design.depths, problems)
+    check_depth_keys(design.depths, problems)
+    _check_depth_frequencies(design.depths, problems)
     series = ANNUAL_MAXIMUM if design.depths.origin == RECORD else design.depths.series
     frequencies = _frequencies(design, series or ANNUAL_MAXIMUM, problems)
     minutes = sorted(minutes_of(word) for word in design.durations)
@@ -170,17 +122,6 @@ as the source has it; state it
     return Asked(design=design, frequencies=frequencies, minutes=tuple(minutes), step=step, start=start)
 
 
-def minutes_of(word: str) -> int:
-    """Return the minutes of a duration such as ``"6h"``.
-
-    Examples
-    --------
-    >>> minutes_of("6h"), minutes_of("1d")
-    (360, 1440)
-    """
-    return (parse_interval(word).seconds or 0) // 60
-
-
 def _start(design: DesignTable, problems: Problems) -> np.datetime64 | None:
     if design.start is None:
         return None
@@ -195,53 +136,29 @@ def _start(design: DesignTable, problems: Problems) -> np.datetime64 | None:
     return np.datetime64(when, "s")
 
 
-def _check_depths(table: DesignDepthsTable, problems: Problems) -> None:
-    needed = _NEEDED[table.origin]
-    for key in needed:
-        if not getattr(table, key):
-            problems.add(item=f"[design.depths] {key}", found="nothing", expected=_WORDS[key], remedy="state it")
-    taken = {"origin", *needed, *_TAKEN[table.origin]}
-    if table.interval_factor is not None and table.origin != RECORD:
-        taken.add("observed_every")
-    for key, info in type(table).model_fields.items():
-        if key not in taken and getattr(table, key) != info.default:
-            problems.add(
-                item=f"[design.depths] {key}",
-                found=f"it beside from = '{table.origin}'",
-                expected="what goes with that: " + ", ".join(sorted(taken - {"origin"})),
-                remedy="remove it",
-            )
-    if table.interval_factor is not None and table.observed_every is None and table.origin != RECORD:
-        problems.add(
-            item="[design.depths] observed_every",
-            found="nothing",
-            expected="the fixed interval at which the depths were read, which interval_factor needs",
-            remedy="state it, or take interval_factor out",
-        )
+def _check_depth_frequencies(table: DesignDepthsTable, problems: Problems) -> None:
+    """Tell which frequencies of rasters and of an equation cannot be."""
+    if table.series is None:
+        return
     for number, raster in enumerate(table.raster, start=1):
-        if (raster.aep is None) == (raster.return_period is None):
-            problems.add(
-                item=f"[[design.depths.raster]] no. {number}",
-                found="both or neither of aep and return_period",
-                expected="one of them",
-                remedy="give one of the two",
-            )
-    if table.valid is not None and minutes_of(table.valid[0]) >= minutes_of(table.valid[1]):
-        problems.add(
-            item="[design.depths] valid",
-            found=f"{table.valid[0]} to {table.valid[1]}",
-            expected="the shorter duration first",
-        )
+        item = f"[[design.depths.raster]] no. {number}"
+        if raster.aep is not None:
+            _named(f"{item} aep", partial(Frequency.of_aep, raster.aep), problems)
+        if raster.return_period is not None:
+            _named(f"{item} return_period", partial(Frequency, raster.return_period, table.series), problems)
+    if table.origin == EQUATION:
+        item, periods = "[design.depths] return_periods", table.return_periods
+        for years in periods:
+            _named(item, partial(Frequency, years, table.series), problems)
+        for before, after in pairwise(periods):
+            if after < before:
+                problems.add(item=item, found=f"{after:g} years after {before:g}", expected="each once, rising")
 
 
 def _frequencies(design: DesignTable, series: str, problems: Problems) -> tuple[Frequency, ...]:
+    keys = ("aep", "return_periods")
+    check_one_of("[design]", keys, (design.aep is not None, design.return_periods is not None), problems)
     if (design.aep is None) == (design.return_periods is None):
-        problems.add(
-            item="[design]",
-            found="both or neither of aep and return_periods",
-            expected="one of them",
-            remedy="give one of the two",
-        )
         return ()
     key, values = ("aep", design.aep) if design.aep is not None else ("return_periods", design.return_periods)
     found = []
@@ -276,18 +193,19 @@ def _check_reduction(design: DesignTable, problems: Problems) -> None:
     table = design.areal_reduction
     if table is None:
         return
-    if table.method == NO_REDUCTION:
-        _refuse_keys("[design.areal_reduction]", table, ("method", "compare"), f"method = '{NO_REDUCTION}'", problems)
-    elif design.depths.origin == RECORD:
-        problems.add(
-            item="[design.areal_reduction] method",
-            found=f"'{table.method}' beside depths from the record, which are areal already",
-            expected=f"'{NO_REDUCTION}'",
-            remedy="take the table out",
-        )
-    else:
+    areal = design.depths.origin == RECORD
+    for key, value in (("method", table.method), ("compare", ", ".join(table.compare))):
+        if areal and value not in {NO_REDUCTION, ""}:
+            problems.add(
+                item=f"[design.areal_reduction] {key}",
+                found=f"'{value}' beside depths from the record, which are areal already",
+                expected=f"'{NO_REDUCTION}'" if key == "method" else "nothing",
+                remedy="take the table out",
+            )
+    if table.method != NO_REDUCTION and not areal:
         attempt(problems, partial(check_jurisdiction, areal_reduction(table.method), design.jurisdiction or None))
-        _check_keys_of_reduction(table, problems)
+    if table.method == NO_REDUCTION or not areal:
+        _check_options(table, problems)
     for name in table.compare:
         if areal_reduction(name).options:
             problems.add(
@@ -297,46 +215,17 @@ def _check_reduction(design: DesignTable, problems: Problems) -> None:
             )
 
 
-_OF_REDUCTION: Final[Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]]] = {
-    "arr-2019": (("region",), ()),
-    "exponential": (("coefficients", "source"), ("valid", "valid_areas", "area_unit")),
-    "table": (("file", "source", "area_unit"), ()),
-}
-"""The keys that a method of areal reduction needs, and those that it takes besides."""
-
-
-def _check_keys_of_reduction(table: ArealReductionTable, problems: Problems) -> None:
-    needed, taken = _OF_REDUCTION.get(table.method, ((), ()))
-    for key in needed:
-        if not getattr(table, key):
-            problems.add(
-                item=f"[design.areal_reduction] {key}",
-                found="nothing",
-                expected=f"it, which method = '{table.method}' needs",
-                remedy="state it",
-            )
-    keys = ("method", "area", "outside", "compare", *needed, *taken)
-    _refuse_keys("[design.areal_reduction]", table, keys, f"method = '{table.method}'", problems)
-    if table.valid_areas is not None and table.area_unit is None:
-        problems.add(
-            item="[design.areal_reduction] area_unit",
-            found="nothing",
-            expected="the unit of valid_areas",
-            remedy="state it",
-        )
-
-
-def _refuse_keys(item: str, table: Any, taken: Iterable[str], beside: str, problems: Problems) -> None:  # noqa: ANN401
-    for key, info in type(table).model_fields.items():
-        if key not in taken and getattr(table, key) != info.default:
-            problems.add(
-                item=f"{item} {key}", found=f"it beside {beside}", expected=", ".join(taken), remedy="remove it"
-            )
+def _check_options(table: ArealReductionTable, problems: Problems) -> None:
+    """Tell what is wrong with a reduction's keys; with their values where all keys are there."""
+    before = len(problems)
+    check_reduction_keys(table, problems)
+    if len(problems) == before and table.method not in {NO_REDUCTION, TABLE}:
+        attempt(problems, lambda: areal_reduction(table.method).check_options(stated_options(table)))
 
 
 def _check_points(design: DesignTable, problems: Problems) -> None:
     names = [point.name for point in design.point]
-    for name in {name for name in names if names.count(name) > 1}:
+    for name in sorted({name for name in names if names.count(name) > 1}):
         problems.add(item=f"[[design.point]] {name}", found="the name twice", expected="each once")
 
 
@@ -358,7 +247,9 @@ def _check_patterns(job: Job | DesignJob, design: DesignTable, problems: Problem
                     found=f"'{word}'",
                     expected="of [design] durations: " + ", ".join(design.durations),
                 )
-        _check_options(item, table, problems)
+        check_pattern_keys(item, table, problems)
+        if table.peak is not None and "peak" in PATTERNS[table.shape].options:
+            _named(f"{item} peak", partial(peak_fraction, table.peak), problems)
         if table.storm is not None and table.storm not in _storms_of(job):
             problems.add(
                 item=f"{item} storm",
@@ -366,28 +257,6 @@ def _check_patterns(job: Job | DesignJob, design: DesignTable, problems: Problem
                 expected="the name of a [[storm]] of the job",
                 remedy=nearest_name(table.storm, _storms_of(job)),
             )
-
-
-def _check_options(item: str, table: PatternTable, problems: Problems) -> None:
-    """Tell options that the shape does not take, and what it lacks."""
-    options = PATTERNS[table.shape].options
-    files = {"table": ("file", "percent", "columns"), "observed": ("storm",)}.get(table.shape, ())
-    taken = ("name", "shape", "durations", *files, *(option for option in options if option != "ordinates"))
-    for key, info in type(table).model_fields.items():
-        if key not in taken and getattr(table, key) != info.default:
-            words = ", ".join(taken[3:]) or "no options"
-            problems.add(
-                item=f"{item} {key}",
-                found=f"it beside shape = '{table.shape}'",
-                expected=words,
-                remedy="remove it",
-            )
-    if table.peak is not None:
-        _named(f"{item} peak", partial(peak_fraction, table.peak), problems)
-    for key in files[:1]:
-        if getattr(table, key) is None:
-            words = "the file of the pattern" if key == "file" else "the name of a [[storm]] of the job"
-            problems.add(item=f"{item} {key}", found="nothing", expected=words, remedy="name it")
 
 
 def _storms_of(job: Job | DesignJob) -> tuple[str, ...]:
@@ -409,6 +278,13 @@ def _check_record(job: Job | DesignJob, design: DesignTable, problems: Problems)
                     expected="[gauges], [[rainfall]] and [[storm]]",
                     remedy="add them, or take it out",
                 )
+        if job.averaging.methods != AveragingTable().methods:
+            problems.add(
+                item="[averaging] methods",
+                found="it in a job without gauges",
+                expected="options of the methods alone",
+                remedy="name the method in [design.depths] average",
+            )
         return
     for name in () if design.rarity is None else design.rarity.storms:
         if name not in _storms_of(job):

@@ -81,6 +81,12 @@ def design_cautions(
                 text=f"Depths from the record are sums of its steps of {duration_words(record.step)}: for durations of "
                 "few steps they read lower than true-interval depths, and nothing was done about it.",
             )
+    made = {storm.minutes for storm in storms}
+    if bare := [duration_words(minutes) for minutes in asked.minutes if minutes not in made]:
+        yield Note(
+            code="no-pattern",
+            text=f"No hyetograph is made for {', '.join(bare)}: every pattern's own durations leave it out.",
+        )
     for storm in storms:
         for remark in storm.remarks:
             yield Note(

@@ -13,7 +13,7 @@ import numpy as np
 from basinrain import reading
 from basinrain.blas import one_blas_thread
 from basinrain.design_areas import Areas, areas_of
-from basinrain.design_asked import Asked, asked, minutes_of
+from basinrain.design_asked import Asked, asked
 from basinrain.design_cautions import design_cautions
 from basinrain.design_patterns import pattern_choices
 from basinrain.design_rarity import ObservedStorms, storm_rarities
@@ -31,7 +31,7 @@ from basinrain.infill_choice import InfillChoice, choose_infill
 from basinrain.inputs import Inputs, read_basins_of, read_inputs
 from basinrain.job_parts import Report, basin_fields, choice_fact, refuse_settings
 from basinrain.jobfile import DesignJob, Job, read_design_job
-from basinrain.jobfile.design_tables import RECORD
+from basinrain.jobfile.design_tables import RECORD, minutes_of
 from basinrain.notes import once
 from basinrain.results_design import ComparedReduction, DesignRun
 
@@ -110,7 +110,7 @@ def run_design(
         unadjusted = None if record is None or chain.interval_factor is not None else record.step
         rarities = storm_rarities(observed, chain, wanted, table_step=unadjusted)
     compared = _compared(chain, areas, wanted)
-    fields = basin_fields(job, given.basins, given.plane)
+    fields = basin_fields(job, given.basins, given.plane, files=given.files)
     infill = given.infill
     if infill is not None:
         fields["settings"] = {**fields["settings"], "infill": infill.settings}
@@ -164,6 +164,13 @@ class _Given:
             basins, notes = read_basins_of(job)
             self.basins, self.plane, more = reading.settle_basins(basins, plane=job.job.plane)
             self.notes = (*notes, *more)
+
+    @property
+    def files(self) -> tuple[str, ...]:
+        """The input files that are read, as the job names them."""
+        if self.inputs is not None:
+            return self._job.input_names
+        return (self._job.basins.file, *self._wanted.design.input_names)
 
     @property
     def zone(self) -> str:

@@ -14,17 +14,18 @@ from basinrain.averager import Averager
 from basinrain.averaging import averaging_method
 from basinrain.basin_depths import BasinDepths, average_storm
 from basinrain.design_areas import Areas
-from basinrain.design_asked import Asked, minutes_of
+from basinrain.design_asked import Asked
 from basinrain.design_sources import nearest_points
 from basinrain.designstorm.depth_chain import DepthChain
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.patterns import Ordinates, ordinates_of
 from basinrain.designstorm.rarity import StormDepths, StormRarity, comparable, storm_rarity
-from basinrain.errors import JobError, MethodError, Problem
+from basinrain.errors import JobError, MethodError, Problem, Problems
 from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.infill_choice import InfillChoice
 from basinrain.inputs import Inputs, window_of
 from basinrain.jobfile import Job
+from basinrain.jobfile.design_tables import minutes_of
 from basinrain.rainfall import RainRecord
 from basinrain.series.greatest_depths import greatest_depths
 from basinrain.series.steps import constant_step
@@ -103,14 +104,22 @@ class ObservedStorms:
         start, end = window_of(self.job, table, record.zone)
         storm, _ = storm_window(record, name, start=start, end=end, pattern=table.pattern)
         window = storm.cut(record)
-        if np.isnat(window.ends).any() or not window.reporting.any():
-            raise JobError(
-                Problem(
-                    item=f"storm {name}",
-                    found="no gauge that reports in it, or totals without times",
-                    expected="a storm with a record in steps",
-                )
+        problems = Problems()
+        if np.isnat(window.ends).any():
+            problems.add(
+                item=f"storm {name}",
+                found="totals without times",
+                expected="a record in steps, from which depths of shorter durations and a pattern can be had",
+                remedy="give such a record, or leave the storm out of [design]",
             )
+        elif not window.reporting.any():
+            problems.add(
+                item=f"storm {name}",
+                found="no gauge that reports in it",
+                expected="one at least",
+                remedy="correct its start and end, or the record",
+            )
+        problems.raise_as(JobError)
         completed = self.infill.complete(window, long=self._long[storm.first : storm.stop])
         return ObservedStorm(storm=storm, window=window, means=average_storm(completed, self._averager))
 
@@ -199,7 +208,7 @@ def _rarity(
 
 def _rows_apart(areas: Areas) -> list[int]:
     """Return the rows of the points of interest, and those of basins that are not a point's only one."""
-    alone = {point.rows[0] for point in areas.points if len(point.rows) == 1}
+    alone = {point.rows[0] for point in areas.points if len(point.rows) == 1} - {point.row for point in areas.points}
     return [row for row in range(len(areas.names)) if row not in alone]
 
 

@@ -11,13 +11,15 @@ import numpy.typing as npt
 
 from basinrain.averaging import averaging_method
 from basinrain.basins import Basins
-from basinrain.design_asked import Asked, minutes_of
+from basinrain.design_asked import Asked
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.measures import duration_words
 from basinrain.designstorm.record_depths import RecordDepths, record_depths
 from basinrain.errors import DataError, JobError, Problem, Problems, nearest_name
 from basinrain.infill_choice import InfillChoice
 from basinrain.inputs import Inputs
 from basinrain.jobfile import Job
+from basinrain.jobfile.design_tables import minutes_of
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.series.greatest_depths import annual_maxima
@@ -93,8 +95,9 @@ def record_source(
     Raises
     ------
     JobError
-        Gauges that there are not, or none that is in service throughout; durations that the record's step does not
-        divide.
+        Gauges that there are not; durations that the record's step does not divide, or that are shorter.
+    DataError
+        No gauge that is in service throughout; areas that the averaging method has no weights for.
     MethodError
         Fewer than ten years, or as :func:`~basinrain.designstorm.record_depths.record_depths`.
     """
@@ -106,6 +109,7 @@ def record_source(
     network = given.network.subset(columns)
     weigh = averaging_method(table.average).prepare(network, areas, **job.averaging.options(table.average))
     weights = weigh(np.ones(len(network), dtype=bool)).weights
+    _check_weights(weights, names, table.average)
     depth = infill.complete(record, long=inputs.silent(0, len(starts)), trace=False).record.depth[:, columns].copy()
     depth[(record.status == Status.NOT_INSTALLED)[:, columns]] = np.nan
     # A gauge without weight in an area does not take the area's number away.
@@ -181,23 +185,43 @@ def _held(record: RainRecord, named: tuple[str, ...]) -> Bools:
     return throughout
 
 
+def _check_weights(weights: Floats, names: tuple[str, ...], average: str) -> None:
+    """Refuse areas that a method has no mean of, such as the arithmetic one of an area without a gauge inside."""
+    problems = Problems()
+    for row in np.flatnonzero(np.isnan(weights).any(axis=1)):
+        problems.add(
+            item=f"[design.depths] average, {names[row]}",
+            found=f"no weights by '{average}' from the gauges that are held",
+            expected="gauges that the method can use",
+            remedy="choose 'thiessen', which takes the nearest",
+        )
+    problems.raise_as(DataError)
+
+
 def _minutes(asked: Asked, step: int) -> Floats:
     """Return the durations of annual maxima, rising."""
     named = [minutes_of(word) for word in asked.design.depths.durations]
     problems = Problems()
+    if asked.minutes[0] < step and not asked.design.depths.extrapolate:
+        problems.add(
+            item="[design] durations",
+            found=duration_words(asked.minutes[0]),
+            expected=f"the record's step of {duration_words(step)} at least",
+            remedy="ask for longer durations, or give a record of shorter steps",
+        )
     for word, minutes in zip(asked.design.depths.durations, named, strict=True):
         if minutes % step:
             problems.add(
                 item="[design.depths] durations",
                 found=f"'{word}'",
-                expected=f"a whole number of the record's steps of {step} min",
+                expected=f"a whole number of the record's steps of {duration_words(step)}",
+                remedy="correct it, or leave durations out",
             )
     problems.raise_as(JobError)
     if not named:
-        longest = max(asked.minutes)
-        named = [
-            each for each in (*asked.minutes, *_DURATIONS, step) if each % step == 0 and each <= max(longest, step)
-        ]
+        # Steps enough to hold the longest that is asked for.
+        longest = -(-max(asked.minutes) // step) * step
+        named = [each for each in (*asked.minutes, *_DURATIONS, step, longest) if each % step == 0 and each <= longest]
     return np.unique(np.array(named, dtype=float))
 
 

@@ -7,17 +7,16 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.design_asked import minutes_of
 from basinrain.designstorm.areal_reduction import ExponentialCoefficients, Reduced, areal_reduction
 from basinrain.designstorm.depth_chain import Reducer
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.errors import JobError, Problems
 from basinrain.jobfile import DesignJob, Job
-from basinrain.jobfile.design_tables import NO_REDUCTION, ArealReductionTable, DesignTable
+from basinrain.jobfile.design_tables import NO_REDUCTION, ArealReductionTable, DesignTable, minutes_of
 from basinrain.reading.reduction_table import read_reduction_table
 from basinrain.units import area_factor
 
-__all__ = ["reducer"]
+__all__ = ["reducer", "stated_options"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -27,12 +26,8 @@ def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
     table = design.areal_reduction
     if table is None or table.method == NO_REDUCTION:
         return None
-    options: dict[str, Any] = {}
-    if table.method == "arr-2019" and table.region is not None:
-        options["region"] = table.region
-    elif table.method == "exponential":
-        options["coefficients"] = _coefficients(table)
-    elif table.method == "table":
+    options = stated_options(table)
+    if table.method == "table":
         options["table"] = read_reduction_table(
             job.path(table.file or ""), area_unit=table.area_unit or "", source=table.source
         )
@@ -45,12 +40,25 @@ def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
     return reduce
 
 
+def stated_options(table: ArealReductionTable) -> dict[str, Any]:
+    """Return the options of a reduction that the job itself states, those of its file left out.
+
+    Raises
+    ------
+    JobError
+        Coefficients that cannot be; all of them.
+    """
+    if table.method == "arr-2019":
+        return {"region": table.region}
+    return {"coefficients": _coefficients(table)} if table.method == "exponential" else {}
+
+
 def _coefficients(table: ArealReductionTable) -> ExponentialCoefficients:
     problems = Problems()
     for name in ("c1", "c2", "c3"):
         if name not in table.coefficients:
             problems.add(item=f"[design.areal_reduction] coefficients, {name}", found="none", expected="c1, c2 and c3")
-    for name in table.coefficients.keys() - {"c1", "c2", "c3"}:
+    for name in sorted(table.coefficients.keys() - {"c1", "c2", "c3"}):
         problems.add(item=f"[design.areal_reduction] coefficients, {name}", found="it", expected="c1, c2 and c3")
     problems.raise_as(JobError)
     areas = None

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
-from typing import cast
 
 import numpy as np
 import numpy.typing as npt
@@ -14,17 +13,15 @@ from scipy.spatial import KDTree
 from basinrain import reading
 from basinrain.averaging import averaging_method
 from basinrain.basins import Basins
-from basinrain.design_asked import minutes_of
 from basinrain.designstorm.depth_source import DepthSource
 from basinrain.designstorm.equations import EquationDepths
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.interval_factors import interval_factor
 from basinrain.designstorm.point_depths import PointDepths
-from basinrain.errors import DataError, JobError, Problem, Problems
+from basinrain.errors import DataError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
-from basinrain.inputs import attempt
 from basinrain.jobfile import DesignJob, Job
-from basinrain.jobfile.design_tables import EQUATION, RASTERS, DesignDepthsTable, DesignTable
+from basinrain.jobfile.design_tables import EQUATION, RASTERS, DesignDepthsTable, DesignTable, RasterTable, minutes_of
 from basinrain.reading.depth_rasters import RasterFile, read_depth_rasters
 from basinrain.reading.design_depths import read_point_depths
 
@@ -115,19 +112,14 @@ def _equation(table: DesignDepthsTable) -> EquationDepths:
 
 
 def _rasters(job: Job | DesignJob, table: DesignDepthsTable) -> list[RasterFile]:
-    problems = Problems()
-    files = []
-    for raster in table.raster:
-        make = (
-            partial(Frequency.of_aep, raster.aep)
-            if raster.aep is not None
-            else partial(Frequency, raster.return_period or 0.0, table.series or "")
-        )
-        frequency = attempt(problems, cast("Callable[[], Frequency]", make))
-        if frequency is not None:
-            files.append(RasterFile(job.path(raster.file), minutes_of(raster.duration), frequency))
-    problems.raise_as(JobError)
-    return files
+    return [
+        RasterFile(job.path(raster.file), minutes_of(raster.duration), _frequency(raster, table.series or ""))
+        for raster in table.raster
+    ]
+
+
+def _frequency(raster: RasterTable, series: str) -> Frequency:
+    return Frequency.of_aep(raster.aep) if raster.aep is not None else Frequency(raster.return_period or 0.0, series)
 
 
 def _network(depths: PointDepths) -> GaugeNetwork:

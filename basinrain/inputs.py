@@ -311,9 +311,9 @@ def catch_factors(job: Job, network: GaugeNetwork) -> dict[str, npt.NDArray[np.f
     return factors
 
 
-def input_digests(job: BasinsJob) -> dict[str, str]:
-    """Return the SHA-256 of every input file, by its name in the job."""
-    names = job.input_names
+def input_digests(job: BasinsJob, files: Sequence[str] | None = None) -> dict[str, str]:
+    """Return the SHA-256 of every input file, or of some of them, by its name in the job."""
+    names = job.input_names if files is None else files
     return {part: _digest(job.path(part)) for name in names for part in _parts(job, name)}
 
 

@@ -57,8 +57,10 @@ def common_fields(job: Job, given: Inputs, infill: InfillChoice | None = None) -
     }
 
 
-def basin_fields(job: Job | DesignJob, basins: Basins, plane: Plane) -> dict[str, Any]:
-    """Return what every run has, with gauges or without."""
+def basin_fields(
+    job: Job | DesignJob, basins: Basins, plane: Plane, *, files: Sequence[str] | None = None
+) -> dict[str, Any]:
+    """Return what every run has, with gauges or without; ``files`` are those that were read, by default all."""
     return {
         "name": job.job.name,
         "settings": job.model_dump(mode="json", exclude_none=True, by_alias=True),
@@ -66,7 +68,7 @@ def basin_fields(job: Job | DesignJob, basins: Basins, plane: Plane) -> dict[str
         "area_unit": job.job.area_unit,
         "basins": basins,
         "plane": plane,
-        "inputs": input_digests(job),
+        "inputs": input_digests(job, files),
         "versions": library_versions(),
     }
 

@@ -264,7 +264,7 @@ class EquationDepths:
         """Depth must grow and intensity fall; how steeply intensity falls is monotone, so the ends decide."""
         form, given = EQUATIONS[self.equation], self.coefficients[one]
         ends = np.array(self.valid)
-        with np.errstate(over="ignore", divide="ignore"):
+        with np.errstate(over="ignore", divide="ignore", invalid="ignore"):
             depth = self._depth(one, ends)
         sound = np.isfinite(depth) & (depth > 0)
         if not sound.all():
@@ -292,8 +292,11 @@ class EquationDepths:
 
     def _check_rarity(self, problems: Problems) -> None:
         if len(self.coefficients) == 1:
-            if (power := self.coefficients[0].get(_POWER, 0.0)) < 0:
-                found = f"{power:g}, by which depth falls with rarity"
+            power = self.coefficients[0].get(_POWER, 0.0)
+            with np.errstate(over="ignore"):
+                finite = np.isfinite(self.return_periods[-1] ** power)
+            if power < 0 or not finite:
+                found = f"{power:g}, by which depth " + ("falls with rarity" if power < 0 else "has no bounds")
                 problems.add(item=self._item(0, _POWER), found=found, expected="0 or more", remedy="correct it")
             return
         between = np.geomspace(*self.valid, _GRID)
@@ -371,7 +374,7 @@ class EquationDepths:
         )
         if outside:
             known = np.unique(np.concatenate((minutes, self.valid)))
-            with np.errstate(divide="ignore"):
+            with np.errstate(divide="ignore", invalid="ignore"):
                 refuse_unphysical(self._between(known, frequency), known, self.points, frequency)
         return self._between(minutes, frequency)
 

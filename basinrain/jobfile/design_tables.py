@@ -14,12 +14,13 @@ from basinrain.designstorm.equations import EQUATIONS
 from basinrain.designstorm.exceedance import SERIES
 from basinrain.designstorm.extreme_values import DISTRIBUTIONS
 from basinrain.designstorm.interval_factors import INTERVAL_FACTORS
+from basinrain.designstorm.measures import UNITS
 from basinrain.designstorm.patterns import PATTERNS
 from basinrain.errors import JobError
 from basinrain.intervals import parse_interval
 from basinrain.jobfile.fields import Moment, NameList, Positive, Table, as_list, names, once, one_of
 from basinrain.jobfile.series_tables import FORMATS
-from basinrain.units import AREA_UNITS, DEPTH_UNITS
+from basinrain.units import AREA_UNITS
 
 __all__ = [
     "EQUATION",
@@ -36,6 +37,7 @@ __all__ = [
     "RarityTable",
     "RasterTable",
     "UpliftTable",
+    "minutes_of",
 ]
 
 TABLE, RASTERS, EQUATION, RECORD = "table", "rasters", "equation", "record"
@@ -45,8 +47,27 @@ ORIGINS = (TABLE, RASTERS, EQUATION, RECORD)
 NO_REDUCTION = "none"
 """Written for an areal reduction that is not made."""
 
-RATES = tuple(f"{unit}/h" for unit in DEPTH_UNITS if unit != "kg m-2")
-"""Units of intensity."""
+
+def minutes_of(word: str) -> int:
+    """Return the minutes of a duration such as ``"6h"``.
+
+    Examples
+    --------
+    >>> minutes_of("6h"), minutes_of("1d")
+    (360, 1440)
+    """
+    return (parse_interval(word).seconds or 0) // 60
+
+
+def _no_length() -> PydanticCustomError:
+    expected = "a number with min, h or d, 31d at most: 10min, 6h, 1d"
+    return PydanticCustomError("length", "{expected}", {"expected": expected})
+
+
+def _word(value: object) -> object:
+    if not isinstance(value, str):
+        raise _no_length()
+    return value
 
 
 def _length(word: str) -> str:
@@ -55,17 +76,21 @@ def _length(word: str) -> str:
     except JobError:
         interval = None
     if interval is None or interval.seconds is None:
-        expected = "a number with min, h or d: 10min, 6h, 1d"
-        raise PydanticCustomError("length", "{expected}", {"expected": expected})
+        raise _no_length()
     return interval.label
 
 
-Duration = Annotated[str, AfterValidator(_length)]
+def _words(value: object) -> object:
+    return names(value) if isinstance(value, str | list | tuple) else names(_word(value))
+
+
+Duration = Annotated[str, BeforeValidator(_word), AfterValidator(_length)]
 """A number with min, h or d; a month has no one length."""
 
 
 def _plain_date(value: object) -> object:
-    return value.isoformat() if isinstance(value, date) else str(value) if isinstance(value, int) else value
+    whole = isinstance(value, int) and not isinstance(value, bool)
+    return value.isoformat() if isinstance(value, date) else str(value) if whole else value
 
 
 def _stated(value: str) -> str:
@@ -74,15 +99,32 @@ def _stated(value: str) -> str:
     return value.strip()
 
 
+Plain = Annotated[str, AfterValidator(str.strip)]
+"""Text that may be left out; blanks alone are no text."""
+
 Stated = Annotated[str, AfterValidator(_stated)]
-Durations = Annotated[tuple[Duration, ...], BeforeValidator(names), Field(min_length=1), AfterValidator(once)]
+SomeDurations = Annotated[tuple[Duration, ...], BeforeValidator(_words), AfterValidator(once)]
+Durations = Annotated[SomeDurations, Field(min_length=1)]
+Names = Annotated[NameList, AfterValidator(once)]
 
 
 def _list(value: object) -> object:
+    if isinstance(value, bool | str):
+        raise PydanticCustomError("numbers", "{expected}", {"expected": "a number, or a list of numbers"})
     return [value] if isinstance(value, int | float) else value
 
 
-Numbers = Annotated[tuple[float, ...], BeforeValidator(_list), Field(min_length=1), AfterValidator(once)]
+def _number(value: object) -> object:
+    # True is 1 to Python, but no number that anybody means.
+    if isinstance(value, bool | str):
+        raise PydanticCustomError("number", "{expected}", {"expected": "a number"})
+    return value
+
+
+Number = Annotated[float, BeforeValidator(_number)]
+Area = Annotated[Number, Field(ge=0)]
+Numbers = Annotated[tuple[Number, ...], BeforeValidator(_list), AfterValidator(once)]
+SomeNumbers = Annotated[Numbers, Field(min_length=1)]
 
 
 class RasterTable(Table):
@@ -90,18 +132,18 @@ class RasterTable(Table):
 
     file: str
     duration: Duration
-    aep: float | None = None
-    return_period: float | None = None
+    aep: Number | None = None
+    return_period: Number | None = None
 
 
 class DesignDepthsTable(Table):
     """``[design.depths]``: depths by duration and frequency."""
 
     origin: Annotated[str, one_of(ORIGINS), Field(alias="from")]
-    source: str = ""
-    date: Annotated[str, BeforeValidator(_plain_date)] = ""
+    source: Plain = ""
+    date: Annotated[Plain, BeforeValidator(_plain_date)] = ""
     series: Annotated[str, one_of(SERIES)] | None = None
-    unit: Annotated[str, one_of((*DEPTH_UNITS, *RATES))] | None = None
+    unit: Annotated[str, one_of(UNITS)] | None = None
     file: str | None = None
     layout: Annotated[str, one_of(("long", "wide"))] = "long"
     probability: Annotated[str, one_of(("aep", "aep-percent", "return-period"))] | None = None
@@ -110,17 +152,17 @@ class DesignDepthsTable(Table):
     crs: str | None = None
     raster: Annotated[tuple[RasterTable, ...], BeforeValidator(as_list)] = ()
     equation: Annotated[str, one_of(EQUATIONS)] | None = None
-    coefficients: Annotated[tuple[dict[str, float], ...], BeforeValidator(as_list)] = ()
+    coefficients: Annotated[tuple[dict[str, Number], ...], BeforeValidator(as_list)] = ()
     valid: tuple[Duration, Duration] | None = None
-    return_periods: Annotated[tuple[Positive, ...], AfterValidator(once)] = ()
+    return_periods: Numbers = ()
     convert: bool = False
     extrapolate: bool = False
     average: Annotated[str, one_of(averaging.METHODS)] = "thiessen"
     interval_factor: Annotated[str, one_of(INTERVAL_FACTORS)] | None = None
     observed_every: Duration | None = None
-    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(once)] = ()
-    gauges: NameList = ()
-    wet_season: tuple[Annotated[int, Field(ge=1, le=12)], ...] = ()
+    durations: SomeDurations = ()
+    gauges: Names = ()
+    wet_season: Annotated[tuple[Annotated[int, Field(ge=1, le=12)], ...], AfterValidator(once)] = ()
     distribution: Annotated[str, one_of(DISTRIBUTIONS)] | None = None
     beyond_record: bool = False
 
@@ -128,7 +170,7 @@ class DesignDepthsTable(Table):
 class UpliftTable(Table):
     """``[design.uplift]``: a factor for climate to come, with where it is from and for when."""
 
-    factor: Positive
+    factor: Annotated[Positive, BeforeValidator(_number)]
     source: Stated
     horizon: Annotated[str, BeforeValidator(_plain_date), AfterValidator(_stated)]
 
@@ -138,12 +180,12 @@ class ArealReductionTable(Table):
 
     method: Annotated[str, one_of((*REDUCTIONS, NO_REDUCTION))]
     region: str | None = None
-    coefficients: dict[str, float] = Field(default={})
-    source: str = ""
+    coefficients: dict[str, Number] = Field(default={})
+    source: Plain = ""
     file: str | None = None
     area_unit: Annotated[str, one_of(AREA_UNITS)] | None = None
     valid: tuple[Duration, Duration] | None = None
-    valid_areas: tuple[float, float] | None = None
+    valid_areas: tuple[Area, Area] | None = None
     area: Annotated[str, one_of(("to-point", "own"))] = "to-point"
     outside: Annotated[str, one_of(("refuse", "clamp"))] = "refuse"
     compare: Annotated[
@@ -161,9 +203,9 @@ class PointTable(Table):
 class PatternTable(Table):
     """``[[design.pattern]]``: how a depth falls in time."""
 
-    name: str | None = None
+    name: Stated | None = None
     shape: Annotated[str, one_of(PATTERNS)]
-    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(once)] = ()
+    durations: SomeDurations = ()
     peak: str | float | None = None
     basis: Annotated[str, one_of(("point", "area"))] | None = None
     smooth: bool = False
@@ -181,19 +223,19 @@ class PatternTable(Table):
 class RarityTable(Table):
     """``[design.rarity]``: how rare storms of the record were over the areas of the design."""
 
-    storms: NameList = ()
+    storms: Names = ()
     average: Annotated[str, one_of(averaging.METHODS)] | None = None
-    durations: Annotated[tuple[Duration, ...], BeforeValidator(names), AfterValidator(once)] = ()
+    durations: SomeDurations = ()
 
 
 class DesignTable(Table):
     """``[design]``: the depths that are wanted, and how they fall in time."""
 
-    aep: Numbers | None = None
-    return_periods: Numbers | None = None
+    aep: SomeNumbers | None = None
+    return_periods: SomeNumbers | None = None
     durations: Durations
     step: Duration
-    jurisdiction: str = ""
+    jurisdiction: Plain = ""
     sub_basins: Annotated[str, one_of(("same-depth", "own-depth"))] = "same-depth"
     start: Moment | None = None
     formats: Annotated[

@@ -73,6 +73,10 @@ def problem_of(details: ErrorDetails, file: str, text: str, job: type[BaseModel]
             file=file,
             line=line,
         )
+    if kind == "missing" and isinstance(loc[-1], int):
+        item, line, found = _item(loc[:-1]), _line(loc[:-1], text), f"{details['input']!r}"
+        expected = f"a list of at least {loc[-1] + 1}"
+        return Problem(item=item, found=found, expected=expected, remedy="add what is missing", file=file, line=line)
     if kind == "missing":
         _, number, rest = _split(loc)
         table = not rest and number is None
@@ -90,6 +94,11 @@ def problem_of(details: ErrorDetails, file: str, text: str, job: type[BaseModel]
         return Problem(
             item=item, found="an empty list", expected="at least one", remedy="name one", file=file, line=line
         )
+    if kind == "too_long":
+        expected = f"a list of {context['max_length']}"
+        return Problem(item=item, found=found, expected=expected, remedy="remove the rest", file=file, line=line)
+    if kind == "tuple_type" and _split(loc)[0] in _REPEATED and not _split(loc)[2]:
+        return Problem(item=item, found=found, expected=f"a table {item}", remedy="write it so", file=file, line=line)
     if kind in {"file_or_files", "no_interval"}:
         found = "both or neither" if kind == "file_or_files" else "no interval"
     expected, remedy = _MESSAGES.get(kind, (details["msg"].lower(), "correct the value"))
@@ -157,8 +166,17 @@ def _line(loc: Sequence[str | int], text: str) -> int | None:
     if not text or not loc:
         return None
     table, counted, rest = _split(loc)
-    number = counted or 0
     keys = [part for part in rest if isinstance(part, str)]
+    line = _line_in(table, counted or 0, keys[0] if keys else "", text)
+    while line is None and "." in table:
+        # A table within a table may be written as a key of it.
+        table, _, key = table.rpartition(".")
+        line = _line_in(table, 0, key, text)
+    return line
+
+
+def _line_in(table: str, number: int, key: str, text: str) -> int | None:
+    """Return the line of a key under the heading of a table, or of the heading where the key is not there."""
     seen, here, header = -1, False, None
     for k, raw in enumerate(text.splitlines(), start=1):
         line = raw.strip()
@@ -168,6 +186,6 @@ def _line(loc: Sequence[str | int], text: str) -> int | None:
             seen += here
             header = k if here and seen == number else header
             here = here and seen == number
-        elif here and keys and re.match(rf"^[\"']?{re.escape(keys[0])}[\"']?\s*[=.]", line):
+        elif here and key and re.match(rf"^[\"']?{re.escape(key)}[\"']?\s*[=.]", line):
             return k
     return header

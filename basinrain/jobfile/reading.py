@@ -266,7 +266,7 @@ def _apply(tables: dict[str, Any], setting: str) -> None:
                 item=f"--set {setting}",
                 found=f"{len(place)} such tables",
                 expected="the number of one of them, counted from 1",
-                remedy=f"write {words[0]}.1.{words[-1]}=...",
+                remedy=f"write {'.'.join(words[:-1])}.1.{words[-1]}=...",
             )
         )
     if not isinstance(place, dict):

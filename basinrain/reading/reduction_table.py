@@ -71,7 +71,7 @@ def read_reduction_table(path: Path, *, area_unit: str, source: str) -> Reductio
     ([10000000.0, 100000000.0], [60.0, 360.0], [[0.9, 0.96], [0.75, 0.9]])
     """
     problems = Problems(file=str(path))
-    with option_problems(problems, item="[design.areal_reduction] area_unit"):
+    with option_problems(problems, file=str(path), item="[design.areal_reduction] area_unit"):
         square_metres = area_factor(area_unit)
     if not source.strip():
         problems.add(
@@ -135,7 +135,7 @@ def _entries(table: DelimitedTable, area_unit: str, problems: Problems) -> list[
     if area is not None and factor is not None:
         areas, bad = numbers(table, area)
         for row in np.flatnonzero(bad | ~(areas >= 0)):
-            _report(table, area, int(row), "an area, 0 or more", "correct the cell", problems)
+            _report(table, area, int(row), problems, expected="an area, 0 or more", remedy="correct the cell")
         factors = {factor: areas}
     else:
         headings = [name for name in table.columns if name != duration]
@@ -153,7 +153,7 @@ def _entries(table: DelimitedTable, area_unit: str, problems: Problems) -> list[
         values, _ = numbers(table, column)
         for row in np.flatnonzero(~((values > 0) & (values <= 1))):
             remedy = "write percent as fractions" if _PERCENT <= values[row] <= 100 else "correct the cell"
-            _report(table, column, int(row), "a factor above 0 and at most 1", remedy, problems)
+            _report(table, column, int(row), problems, expected="a factor above 0 and at most 1", remedy=remedy)
         entries += [
             _Entry(float(a), m, float(f), int(line), column)
             for a, m, f, line in zip(of, minutes, values, table.lines, strict=True)
@@ -177,7 +177,7 @@ def _minutes(text: str, line: int, column: str, problems: Problems) -> float:
         return np.nan
 
 
-def _report(table: DelimitedTable, column: str, row: int, expected: str, remedy: str, problems: Problems) -> None:
+def _report(table: DelimitedTable, column: str, row: int, problems: Problems, *, expected: str, remedy: str) -> None:
     cell = table.frame[column].iloc[row]
     problems.add(
         item="a row",

@@ -9,8 +9,8 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.measures import duration_words
 from basinrain.errors import DataError, Problems
-from basinrain.intervals import interval_of
 from basinrain.units import area_factor, depth_factor
 
 __all__ = ["DesignContent", "DesignHyetograph", "aep_of", "column_word", "frequency_word", "years_of"]
@@ -109,8 +109,8 @@ class DesignHyetograph:
 
     @property
     def duration(self) -> str:
-        """The duration in the shortest word, such as ``"6h"``."""
-        return interval_of(60 * self.minutes).label
+        """The duration as every table has it, such as ``"6h"``."""
+        return duration_words(self.minutes)
 
     @property
     def totals(self) -> Floats:

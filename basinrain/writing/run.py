@@ -94,8 +94,9 @@ def series_content(run: SeriesRun) -> SeriesContent:
 
 def design_content(run: DesignRun) -> DesignContent:
     """Return a run's hyetographs, with what files say beside the numbers."""
-    first = len(run.areas.points)
-    parts = Basins(ids=run.areas.names[first:], polygons=run.areas.basins.polygons[first:], crs=run.areas.basins.crs)
+    rows = {basin: row for point in run.areas.points for basin, row in zip(point.basins, point.rows, strict=True)}
+    polygons = run.areas.basins.polygons[list(rows.values())]
+    parts = Basins(ids=tuple(rows), polygons=polygons, crs=run.areas.basins.crs)
     return DesignContent(
         hyetographs=tuple(
             DesignHyetograph(

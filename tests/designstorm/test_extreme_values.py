@@ -105,7 +105,7 @@ def test_gev_at_the_gumbel_ratio_is_gumbel() -> None:
     """A ratio of log2(9/8) gives shape 0 and Gumbel's location and scale."""
     both = fit_gumbel(moments_of(37.0, 6.0, GUMBEL_RATIO)), fit_gev(moments_of(37.0, 6.0, GUMBEL_RATIO))
     for name in ("location", "scale", "shape"):
-        np.testing.assert_allclose(*(getattr(fit, name) for fit in both), atol=1e-13)
+        np.testing.assert_allclose(getattr(both[1], name), getattr(both[0], name), atol=1e-13)
 
 
 def test_fit_is_smooth_where_the_shape_passes_zero() -> None:

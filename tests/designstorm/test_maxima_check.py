@@ -66,8 +66,8 @@ def test_series_that_no_distribution_fits() -> None:
     check_series(moments, MINUTES, ["Quill", "Reed"], problems, shape_wanted=True)
     with pytest.raises(MethodError) as caught:
         problems.raise_as(MethodError)
-    nine, equal, lone = str(caught.value).splitlines()
-    assert nine == (
+    short, equal, lone = str(caught.value).splitlines()
+    assert short == (
         "area Quill, 1h: found 9 years with an annual maximum; expected 10 at least; take a longer record, or depths "
         "of a table"
     )

@@ -254,8 +254,8 @@ def test_depths_out_of_order_are_summed_up(tmp_path: Path) -> None:
     assert problems_of(files, tmp_path) == [
         (
             "./2.asc: the rasters: found 2 cells of 4 with less depth in a longer duration, the worst row 2 column 1 "
-            f"at 4h, {LABELS[TWO]}: 41.16 mm (10.29 mm/h), 2 % less than the 42 mm (42 mm/h) of 1h; expected depths that "
-            f"do not fall with duration; {tail}"
+            f"at 4h, {LABELS[TWO]}: 41.16 mm (10.29 mm/h), 2 % less than the 42 mm (42 mm/h) of 1h; expected depths "
+            f"that do not fall with duration; {tail}"
         ),
         (
             "./1.asc: the rasters: found 1 cell of 4 with less depth at a rarer frequency, the worst row 1 column 1 at "
@@ -264,8 +264,8 @@ def test_depths_out_of_order_are_summed_up(tmp_path: Path) -> None:
         ),
         (
             "./3.asc: the rasters: found 1 cell of 4 with more intensity in a longer duration, the worst row 1 column "
-            f"1 at 4h, {LABELS[TEN]}: 288 mm (72 mm/h), 200 % more than the 24 mm (24 mm/h) of 1h; expected intensities "
-            f"that do not rise with duration; {tail}"
+            f"1 at 4h, {LABELS[TEN]}: 288 mm (72 mm/h), 200 % more than the 24 mm (24 mm/h) of 1h; expected "
+            f"intensities that do not rise with duration; {tail}"
         ),
     ]
 

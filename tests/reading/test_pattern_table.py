@@ -36,7 +36,9 @@ def test_columns_may_be_named(tmp_path: Path) -> None:
     assert read_pattern_table(path, columns={"share": "of depth"}).share.tolist() == [0.0, 0.9, 1.0]
     with pytest.raises(ReadError, match=r"columns\.share: found no column 'depht'; expected a column of the file; did"):
         read_pattern_table(path, columns={"share": "depht"})
-    with pytest.raises(JobError, match="columns: found 'shares'; expected one of: time, share; did you mean 'share'?"):
+    with pytest.raises(
+        JobError, match=r"columns: found 'shares'; expected one of: time, share; did you mean 'share'\?"
+    ):
         read_pattern_table(path, columns={"shares": "of depth"})
 
 
@@ -58,7 +60,10 @@ def test_every_fault_is_listed_with_its_line(tmp_path: Path) -> None:
     assert problems_of(path) == [
         "F:2: column time: the pattern: found that it starts at 0.1; expected 0; give the whole curve, from 0 to 1",
         "F:8: column time: the pattern: found that it ends at 0.9; expected 1; give the whole curve, from 0 to 1",
-        "F:4: column time: the pattern: found that it stands still, from 0.3 to 0.3; expected a later time in every row",
+        (
+            "F:4: column time: the pattern: found that it stands still, from 0.3 to 0.3; expected a later time in "
+            "every row"
+        ),
         "F:6: column time: the pattern: found that it falls, from 0.5 to 0.4; expected a later time in every row",
         "F:5: column share: the pattern: found nothing; expected a number from 0 to 1",
         "F:6: column share: the pattern: found 'x'; expected a number from 0 to 1",

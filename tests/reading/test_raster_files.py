@@ -28,9 +28,14 @@ def asc(tmp_path: Path, text: str) -> Path:
     return path
 
 
+def read_whole(path: Path, crs: str | None) -> None:
+    read_grid(path, crs=crs)
+    read_cells(path, *ALL)
+
+
 def refused(path: Path, *, crs: str | None = "local") -> list[str]:
     with pytest.raises(ReadError) as caught:
-        read_cells(path, *ALL) if read_grid(path, crs=crs) else None
+        read_whole(path, crs)
     return str(caught.value).replace(str(path.parent), ".").splitlines()
 
 

@@ -1,0 +1,186 @@
+"""Areal reduction: the method with where it holds, and others beside it."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+from basinrain.design_asked import minutes_of
+from basinrain.designstorm.areal_reduction import REDUCTIONS, ExponentialCoefficients, Limits
+from basinrain.designstorm.areal_reduction.limits import area_words, between_words, duration_words
+from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.rarity import duration_text
+from basinrain.report import design_shown
+from basinrain.report.design_chain_list import reduces
+from basinrain.report.table import Row, Table
+from basinrain.report.words import DASH, area_text, number_text, unit_text
+from basinrain.results_design import ComparedReduction, DesignRun
+from basinrain.units import area_factor
+
+__all__ = ["compared_tables", "reduction_facts"]
+
+_DECIMALS = 4
+
+
+def reduction_facts(run: DesignRun) -> list[tuple[str, str]]:
+    """Return what is to be known of the areal reduction of the design, each a name and a text."""
+    table = run.asked.design.areal_reduction
+    if table is None or not reduces(run):
+        return []
+    method = REDUCTIONS[table.method]
+    where = f"{method.region_words}; the design is for {run.asked.design.jurisdiction or 'a place not stated'}"
+    lines = [("Method", method.title), ("For", where)]
+    if table.region is not None:
+        lines.append(("Region", table.region))
+    own = method.jurisdiction == ()
+    lines += [
+        ("Source", table.source if own else method.source),
+        ("Evidence", method.evidence or ("the job's own" if own else "seen in the source or in copies of it")),
+        ("Range", _range(run)),
+        ("Area that decides", _area(run)),
+        (
+            "Outside the range",
+            "taken at its nearest end, with a warning" if table.outside == "clamp" else "refused",
+        ),
+    ]
+    clamped = dict.fromkeys(text for links in run.links.values() for text in links.clamped)
+    lines.append(("Taken at an end", " ".join(clamped) or "nothing was outside the range"))
+    return lines
+
+
+def _range(run: DesignRun) -> str:
+    table = run.asked.design.areal_reduction
+    if table is None:
+        return DASH
+    method = REDUCTIONS[table.method]
+    if table.method == "table":
+        return f"the durations and areas of {table.file}"
+    options = {}
+    if table.method == "exponential":
+        factor = area_factor(table.area_unit or "km2")
+        options["coefficients"] = ExponentialCoefficients(
+            c1=table.coefficients["c1"],
+            c2=table.coefficients["c2"],
+            c3=table.coefficients["c3"],
+            source=table.source,
+            areas=None if table.valid_areas is None else (table.valid_areas[0] * factor, table.valid_areas[1] * factor),
+            minutes=None if table.valid is None else (minutes_of(table.valid[0]), minutes_of(table.valid[1])),
+        )
+    elif "region" in method.options:
+        options["region"] = table.region or ""
+    return range_words(method.limits(**options))
+
+
+def range_words(limits: Limits) -> str:
+    """Return where a method holds.
+
+    Examples
+    --------
+    >>> range_words(Limits(minutes=(30, 1440), smallest_area=1e7, largest_areas=((0, 1e9),)))
+    'durations 0.5 to 24 h; areas 10 to 1000 km²'
+    >>> range_words(Limits(minutes=(1, 10080), largest_areas=((0, 1e9), (1440, 3e10)), aep=(0.0005, 0.5)))
+    'durations 1 min to 168 h; areas up to 1000 km² below 24 h, else up to 30000 km²; AEP 0.0005 to 0.5'
+    >>> range_words(Limits())
+    'durations: none is stated; areas: none is stated'
+    """
+    low, high = limits.minutes
+    if low == 0 and math.isinf(high):
+        words = ["durations: none is stated"]
+    elif math.isinf(high):
+        words = [f"durations from {duration_words(low)}"]
+    else:
+        words = [f"durations {between_words(duration_words(low), duration_words(high))}"]
+    largest = [area for _, area in limits.largest_areas]
+    parts = []
+    for k, area in enumerate(largest):
+        last = k == len(largest) - 1 and k > 0
+        most = area_words(area, limits.area_unit)
+        lead = f"{area_words(limits.smallest_area, 'km2').removesuffix(' km²')} to" if limits.smallest_area else "up to"
+        parts.append(f"{'else ' if last else ''}{lead} {most}{limits.below_words(area)}")
+    if math.isinf(largest[-1]):
+        least = f" from {area_words(limits.smallest_area)}" if limits.smallest_area else ": none is stated"
+        words.append(f"areas{least}")
+    else:
+        words.append(f"areas {', '.join(parts)}")
+    if limits.aep is not None:
+        words.append(f"AEP {limits.aep[0]:g} to {limits.aep[1]:g}")
+    return "; ".join(words)
+
+
+def _area(run: DesignRun) -> str:
+    table = run.asked.design.areal_reduction
+    if table is not None and table.area == "own":
+        return (
+            "for the areal depth to a point of interest that of all basins above it as one; for each basin's hyetograph "
+            "its own, since the job says so"
+        )
+    m2 = area_factor(run.area_unit)
+    points = [
+        f"{point.name} {area_text(run.links[point.name, run.asked.frequencies[0]].reduced_area / m2)} "
+        f"{unit_text(run.area_unit)}"
+        for point in run.areas.points
+    ]
+    return f"that of all basins above the point of interest as one: {design_shown.cut(points, design_shown.AREAS)}"
+
+
+def compared_tables(run: DesignRun) -> list[tuple[str, Table]]:
+    """Return other areal reductions beside that of the design, each table with the heading that it must have."""
+    groups = (
+        ("Outside their region, for comparison only", [other for other in run.compared if other.outside]),
+        ("Others for the region, for comparison", [other for other in run.compared if not other.outside]),
+    )
+    return [(heading, _compared(run, others)) for heading, others in groups if others]
+
+
+def _compared(run: DesignRun, others: Sequence[ComparedReduction]) -> Table:
+    table = run.asked.design.areal_reduction
+    own = table.method if table is not None and reduces(run) else "no reduction"
+    often = design_shown.frequencies(run) if _varies(run, others) else [run.asked.frequencies[-1]]
+    rows: list[Row] = []
+    reasons: dict[str, None] = {}
+    for point in design_shown.points(run):
+        for frequency in often:
+            links = run.links[point.name, frequency]
+            for minutes in design_shown.durations(run):
+                key = (point.name, frequency, minutes)
+                factor = float(links.reduction[run.asked.minutes.index(minutes)])
+                cells = [number_text(other.factors.get(key, math.nan), _DECIMALS) for other in others]
+                reasons.update(
+                    (f"{other.method.name}, {point.name}, {duration_text(minutes)}: {other.reasons[key]}.", None)
+                    for other in others
+                    if key in other.reasons
+                )
+                name = point.name if len(often) == 1 else f"{point.name}, {frequency.label}"
+                rows.append((name, duration_text(minutes), number_text(factor, _DECIMALS), *cells))
+    told = list(reasons)
+    notes = [
+        *(f"{other.method.name}: {other.method.title}, for {other.method.region_words}." for other in others),
+        *([f"{DASH}: no answer. {' '.join(told[:4])}"] if told else []),
+        *(["Other reasons are in reductions_compared.csv."] if told[4:] else []),
+        *design_shown.left_out(run, "reductions_compared.csv"),
+    ]
+    if len(often) == 1 and len(run.asked.frequencies) > 1:
+        notes.insert(0, "The factors are the same at every frequency.")
+    return Table(
+        caption="Areal reduction factors by other methods",
+        heads=("point of interest", "duration", f"{own}, of the design", *(other.method.name for other in others)),
+        align="tnn" + "n" * len(others),
+        rows=rows,
+        notes=tuple(notes),
+    )
+
+
+def _varies(run: DesignRun, others: Sequence[ComparedReduction]) -> bool:
+    """Return whether a factor, or whether there is one, depends on the frequency."""
+    for point in run.areas.points:
+        for d, minutes in enumerate(run.asked.minutes):
+            found = {
+                (
+                    float(run.links[point.name, frequency].reduction[d]),
+                    *(other.factors.get((point.name, frequency, minutes)) for other in others),
+                )
+                for frequency in run.asked.frequencies
+            }
+            if len(found) > 1:
+                return True
+    return False

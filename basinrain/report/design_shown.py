@@ -1,0 +1,132 @@
+"""What the page of design storms shows of many points of interest, frequencies, durations and areas."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Final, TypeVar
+
+import numpy as np
+
+from basinrain.design_areas import Areas
+from basinrain.designstorm.design_storms import PointOfInterest
+from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.results_design import DesignRun
+
+__all__ = [
+    "AREAS",
+    "DURATIONS",
+    "FILES",
+    "FREQUENCIES",
+    "POINTS",
+    "areas_shown",
+    "cut",
+    "durations",
+    "frequencies",
+    "hyetograph_file",
+    "left_out",
+    "often_head",
+    "points",
+    "spread",
+]
+
+POINTS: Final = 4
+"""Points of interest that have tables and figures."""
+
+FREQUENCIES: Final = 6
+"""Frequencies in a table."""
+
+DURATIONS: Final = 6
+"""Durations in a table."""
+
+AREAS: Final = 12
+"""Basins, and depth points, in a table."""
+
+FILES: Final = {
+    "csv": "design_hyetographs.csv",
+    "csv-per-basin": "hyetographs/",
+    "parquet": "design_hyetographs.parquet",
+    "netcdf": "design_hyetographs.nc",
+}
+
+T = TypeVar("T")
+
+
+def spread(items: Sequence[T], most: int) -> list[T]:
+    """Return at most so many items, the first and the last among them; of one only the last.
+
+    Examples
+    --------
+    >>> spread("abcdefg", 3), spread("abcdefg", 1), spread("ab", 3)
+    (['a', 'd', 'g'], ['g'], ['a', 'b'])
+    """
+    if len(items) <= most:
+        return list(items)
+    if most == 1:
+        return [items[-1]]
+    return [items[at] for at in np.linspace(0, len(items) - 1, most).round().astype(int).tolist()]
+
+
+def points(run: DesignRun) -> tuple[PointOfInterest, ...]:
+    """Return the points of interest that are shown: the first few."""
+    return run.areas.points[:POINTS]
+
+
+def frequencies(run: DesignRun) -> list[Frequency]:
+    """Return the frequencies that are shown, the most frequent and the rarest among them."""
+    return spread(run.asked.frequencies, FREQUENCIES)
+
+
+def durations(run: DesignRun) -> list[int]:
+    """Return the durations that are shown, in minutes, the shortest and the longest among them."""
+    return spread(run.asked.minutes, DURATIONS)
+
+
+def areas_shown(areas: Areas) -> list[int]:
+    """Return the rows of the points of interest, and those of basins that are not a point's only one."""
+    alone = {point.rows[0] for point in areas.points if len(point.rows) == 1}
+    return [row for row in range(len(areas.names)) if row not in alone]
+
+
+def left_out(run: DesignRun, file: str) -> tuple[str, ...]:
+    """Return the sentence that says what of points, frequencies and durations is not shown; nothing when all is."""
+    parts = [
+        f"{'the first ' if noun == 'point' else ''}{shown} of {total} {words}"
+        for noun, shown, total, words in (
+            ("point", len(points(run)), len(run.areas.points), "points of interest"),
+            ("frequency", len(frequencies(run)), len(run.asked.frequencies), "frequencies"),
+            ("duration", len(durations(run)), len(run.asked.minutes), "durations"),
+        )
+        if shown < total
+    ]
+    if not parts:
+        return ()
+    return (f"Shown here: {', '.join(parts[:-1])}{' and ' if parts[1:] else ''}{parts[-1]}; the others are in {file}.",)
+
+
+def often_head(frequency: Frequency) -> str:
+    """Return a frequency as the head of a column.
+
+    Examples
+    --------
+    >>> often_head(Frequency.of_aep(0.01)), often_head(Frequency(2.0, "partial-duration"))
+    ('1 in 100', '2-year')
+    """
+    years = f"{frequency.return_period:.4g}"
+    return f"1 in {years}" if frequency.series == ANNUAL_MAXIMUM else f"{years}-year"
+
+
+def cut(names: Sequence[str], most: int) -> str:
+    """Return names in a row, of many the first ones and how many more there are.
+
+    Examples
+    --------
+    >>> cut(["A", "B", "C"], 2), cut(["A"], 2)
+    ('A, B and 1 more', 'A')
+    """
+    more = len(names) - most
+    return ", ".join(names) if more <= 0 else f"{', '.join(names[:most])} and {more} more"
+
+
+def hyetograph_file(run: DesignRun) -> str:
+    """Return the file that holds every hyetograph, by the job's first format."""
+    return FILES[run.formats[0]]

@@ -1,0 +1,257 @@
+"""Design storms: the depth of every basin, its peak and when it falls, and short hyetographs."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from basinrain.designstorm.design_storms import DesignStorm, PointOfInterest
+from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.rarity import duration_text
+from basinrain.report import design_shown, limits
+from basinrain.report.table import Row, Table
+from basinrain.report.words import (
+    DASH,
+    area_text,
+    counted,
+    depth_text,
+    depth_texts,
+    number_text,
+    unit_text,
+    unit_word,
+    volume_text,
+)
+from basinrain.results_design import DesignRun
+from basinrain.units import area_factor, depth_factor, volume_factor, volume_unit_for
+
+__all__ = ["depth_tables", "hyetograph_tables", "peak_tables"]
+
+_COLUMNS: Final = 8
+_PATTERNS: Final = 6
+_ROWS: Final = 48
+
+Key = tuple[str, Frequency, int, str]
+
+
+class _Storms:
+    """The storms of a run by point of interest, frequency, duration and pattern."""
+
+    def __init__(self, run: DesignRun) -> None:
+        self.run = run
+        self._by = {_key(storm): storm for storm in run.storms}
+        self.patterns = list(dict.fromkeys(storm.choice.label for storm in run.storms))
+        self.rarest = run.asked.frequencies[-1]
+
+    def one(self, point: PointOfInterest, frequency: Frequency, minutes: int, pattern: str) -> DesignStorm | None:
+        return self._by.get((point.name, frequency, minutes, pattern))
+
+    def any(self, point: PointOfInterest, frequency: Frequency, minutes: int) -> DesignStorm | None:
+        """Return a storm of any pattern: the depth of the whole is the same by all of them."""
+        found = (self.one(point, frequency, minutes, pattern) for pattern in self.patterns)
+        return next((storm for storm in found if storm is not None), None)
+
+
+def _key(storm: DesignStorm) -> Key:
+    return storm.point.name, storm.frequency, storm.minutes, storm.choice.label
+
+
+def _basins(storm: DesignStorm) -> list[int]:
+    """Return the basins that are shown, of many the first."""
+    return list(range(min(len(storm.point.basins), design_shown.AREAS)))
+
+
+def _more_basins(point: PointOfInterest, file: str) -> tuple[str, ...]:
+    more = len(point.basins) - design_shown.AREAS
+    return (f"{counted(more, 'more basin is', 'more basins are')} in {file}.",) if more > 0 else ()
+
+
+def depth_tables(run: DesignRun) -> list[Table]:
+    """Return a table of the basins' depths for every point of interest that is shown."""
+    storms = _Storms(run)
+    tables = [_depths(storms, point) for point in design_shown.points(run)]
+    return _with_left_out(run, tables)
+
+
+def _with_left_out(run: DesignRun, tables: list[Table]) -> list[Table]:
+    notes = design_shown.left_out(run, "design_storms.csv")
+    return [*tables[:-1], replace(tables[-1], notes=(*tables[-1].notes, *notes))] if tables else []
+
+
+def _depths(storms: _Storms, point: PointOfInterest) -> Table:
+    run = storms.run
+    often = design_shown.frequencies(run)
+    mm, m2 = depth_factor(run.depth_unit), area_factor(run.area_unit)
+    areas = run.areas.basins.areas[list(point.rows)]
+    own_area = run.asked.design.areal_reduction is not None and run.asked.design.areal_reduction.area == "own"
+    volume_unit = volume_unit_for(run.depth_unit)
+    per = volume_factor(volume_unit)
+    rows: list[Row] = []
+    for minutes in design_shown.durations(run):
+        found = [storms.any(point, frequency, minutes) for frequency in often]
+        rarest = found[-1]
+        if rarest is None:
+            continue
+        totals = np.array([storm.totals / mm for storm in found if storm is not None])
+        reduction = [number_text(float(rarest.reduction[b]), 4) for b in _basins(rarest)] if own_area else []
+        for b in _basins(rarest):
+            rows.append(
+                (
+                    duration_text(minutes),
+                    point.basins[b],
+                    area_text(float(areas[b]) / m2),
+                    *reduction[b : b + 1],
+                    *(depth_text(float(depth), run.depth_unit) for depth in totals[:, b]),
+                    volume_text(float(rarest.totals[b]) / 1000 * float(areas[b]) / per),
+                )
+            )
+        if point.apart and len(point.basins) > 1:
+            rows.append(
+                (
+                    duration_text(minutes),
+                    "mean by area",
+                    area_text(float(areas.sum()) / m2),
+                    *([DASH] if own_area else []),
+                    *(depth_text(float(depth), run.depth_unit) for depth in totals @ areas / areas.sum()),
+                    volume_text(float(rarest.totals @ areas) / 1000 / per),
+                )
+            )
+    notes = []
+    if point.apart and len(point.basins) > 1:
+        notes.append(
+            "The mean by area is more than the areal depth to the point of interest, since each basin is reduced by its "
+            "own area."
+            if own_area
+            else "The mean by area is the areal depth to the point of interest in section 1."
+        )
+    lead = ("duration", "basin", f"area, {unit_text(run.area_unit)}", *(["reduction"] if own_area else []))
+    heads = (*lead, *(design_shown.often_head(f) for f in often), design_shown.often_head(often[-1]))
+    return Table(
+        caption=f"{point.name}: depth of the basins by duration and frequency",
+        heads=heads,
+        over=(("", len(lead)), (f"depth, {unit_word(run.depth_unit)}", len(often)), (f"volume, {unit_text(volume_unit)}", 1)),
+        align="tt" + "n" * (len(heads) - 2),
+        rows=rows,
+        notes=(*notes, *_more_basins(point, "design_storms.csv")),
+    )
+
+
+def peak_tables(run: DesignRun) -> list[Table]:
+    """Return a table of the peaks at the rarest frequency for every point of interest that is shown."""
+    storms = _Storms(run)
+    return _with_left_out(run, [_peaks(storms, point) for point in design_shown.points(run)])
+
+
+def _peaks(storms: _Storms, point: PointOfInterest) -> Table:
+    run, mm = storms.run, depth_factor(storms.run.depth_unit)
+    step = duration_text(run.asked.step)
+    unit = unit_word(run.depth_unit)
+    rows: list[Row] = []
+    for minutes in design_shown.durations(run):
+        for pattern in storms.patterns:
+            storm = storms.one(point, storms.rarest, minutes, pattern)
+            if storm is None:
+                continue
+            alike = np.allclose(storm.depth, storm.depth[:, :1], rtol=1e-9, atol=0)
+            for b in [0] if alike else _basins(storm):
+                peak = int(np.argmax(storm.depth[:, b]))
+                most = float(storm.depth[peak, b]) / mm
+                rows.append(
+                    (
+                        f"{duration_text(minutes)}, {pattern}",
+                        "all" if alike and len(point.basins) > 1 else point.basins[b],
+                        depth_text(float(storm.totals[b]) / mm, run.depth_unit),
+                        depth_text(most, run.depth_unit),
+                        depth_text(most * 60 / storm.step, run.depth_unit),
+                        f"{elapsed_text((peak + 1) * storm.step)}",
+                    )
+                )
+    more = len(rows) - _ROWS
+    return Table(
+        caption=f"{point.name}: peaks at {storms.rarest.label}",
+        heads=(
+            "duration, pattern",
+            "basin",
+            f"depth, {unit}",
+            f"greatest in {step}, {unit}",
+            f"intensity, {unit}/h",
+            "it ends after, h:min",
+        ),
+        align="ttnnnn",
+        rows=rows[:_ROWS],
+        notes=(
+            "The greatest depth of one step, as intensity over that step; of equal ones the first.",
+            *((f"{counted(more, 'more line is', 'more lines are')} in design_storms.csv.",) if more > 0 else ()),
+            *_more_basins(point, "design_storms.csv"),
+        ),
+    )
+
+
+def elapsed_text(minutes: int) -> str:
+    """Return a time since the start as hours and minutes.
+
+    Examples
+    --------
+    >>> elapsed_text(90), elapsed_text(1440)
+    ('1:30', '24:00')
+    """
+    return f"{minutes // 60}:{minutes % 60:02d}"
+
+
+def hyetograph_tables(run: DesignRun) -> list[Table]:
+    """Return the hyetographs of the rarest frequency that are short enough, of every point the longest such duration.
+
+    What is printed sums to the printed total. Where basins differ and there is no room for all, the one with the
+    greatest depth is printed.
+    """
+    storms = _Storms(run)
+    tables = []
+    for point in design_shown.points(run):
+        short = [minutes for minutes in run.asked.minutes if minutes // run.asked.step <= limits.STEPS]
+        for minutes in reversed(short):
+            found = [storms.one(point, storms.rarest, minutes, pattern) for pattern in storms.patterns]
+            kept = [storm for storm in found if storm is not None]
+            if kept:
+                tables.append(_hyetographs(run, kept))
+                break
+    return tables
+
+
+def _hyetographs(run: DesignRun, storms: Sequence[DesignStorm]) -> Table:
+    first, mm = storms[0], depth_factor(run.depth_unit)
+    shown = list(storms[:_PATTERNS])
+    alike = all(np.allclose(storm.depth, storm.depth[:, :1], rtol=1e-9, atol=0) for storm in storms)
+    basins = [0] if alike else list(range(len(first.point.basins)))
+    if len(basins) * len(shown) > _COLUMNS:
+        basins = [int(np.argmax(first.totals.round(9)))]
+    columns = [storm.depth[:, b] / mm for storm in shown for b in basins]
+    printed = [depth_texts(column, run.depth_unit) for column in columns]
+    names = [first.point.basins[b] for b in basins]
+    one = len(basins) == 1
+    whose = f" of {'every basin above it' if alike and len(first.point.basins) > 1 else f'basin {names[0]}'}" if one else ""
+    notes = ["What is printed sums to the printed total."]
+    if not alike and one and len(first.point.basins) > 1:
+        notes.append(f"Of {counted(len(first.point.basins), 'basin')} it has the greatest depth.")
+    if len(storms) > len(shown):
+        notes.append(f"Shown: {len(shown)} of {len(storms)} patterns.")
+    notes.append(f"Other frequencies, durations and basins are in {design_shown.hyetograph_file(run)}.")
+    labels = [storm.choice.label for storm in shown]
+    return Table(
+        caption=f"{first.point.name}, {duration_text(first.minutes)}: hyetographs{whose} at {first.frequency.label}, "
+        f"{unit_word(run.depth_unit)} in {duration_text(first.step)}",
+        heads=("ending after, h:min", *(labels if one else names * len(shown))),
+        over=() if one else (("", 1), *((label, len(basins)) for label in labels)),
+        align="n" * (1 + len(columns)),
+        rows=[
+            (elapsed_text((t + 1) * first.step), *(column[t] for column in printed)) for t in range(len(first.depth))
+        ],
+        foot=[("total", *(_total(column, run.depth_unit) for column in columns))],
+        notes=tuple(notes),
+    )
+
+
+def _total(column: npt.NDArray[np.float64], unit: str) -> str:
+    return depth_text(float(column.sum()), unit)
