@@ -131,6 +131,7 @@ def run_design(
             (
                 *given.notes,
                 *(() if record is None else record.notes),
+                *(() if observed is None else observed.notes),
                 *design_cautions(
                     wanted,
                     areas,

@@ -20,12 +20,13 @@ from basinrain.designstorm.depth_chain import DepthChain
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.patterns import Ordinates, ordinates_of
 from basinrain.designstorm.rarity import StormDepths, StormRarity, comparable, storm_rarity
-from basinrain.errors import JobError, MethodError, Problem, Problems
+from basinrain.errors import DataError, JobError, MethodError, Problem, Problems
 from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.infill_choice import InfillChoice
 from basinrain.inputs import Inputs, window_of
 from basinrain.jobfile import Job
 from basinrain.jobfile.design_tables import minutes_of
+from basinrain.notes import Note
 from basinrain.rainfall import RainRecord
 from basinrain.series.greatest_depths import greatest_depths
 from basinrain.series.steps import constant_step
@@ -52,11 +53,14 @@ class ObservedStorm:
         Its record before infill.
     means
         Means over the areas after infill.
+    notes
+        What was remarked of the window.
     """
 
     storm: Storm
     window: RainRecord
     means: BasinDepths
+    notes: tuple[Note, ...]
 
     @property
     def step(self) -> int:
@@ -87,6 +91,17 @@ class ObservedStorms:
     average: str
 
     @cached_property
+    def _found(self) -> dict[str, ObservedStorm]:
+        return {}
+
+    @property
+    def notes(self) -> tuple[Note, ...]:
+        """What was remarked of the storms that were asked for so far, and how they were averaged."""
+        text = f"Storms of the record were averaged over the areas by '{self.average}'."
+        remarks = (note for storm in self._found.values() for note in storm.notes)
+        return (*remarks, Note(code="storms-averaged", level="info", text=text))
+
+    @cached_property
     def _long(self) -> Bools:
         record = self.given.record
         return longer_than(record, gap_mask(record), self.infill.options.longest_gap)
@@ -98,11 +113,22 @@ class ObservedStorms:
         return Averager(method(network, basins, options), partial(method.reweigher, network, basins, options))
 
     def storm(self, name: str) -> ObservedStorm:
-        """Return one of the job's storms by its name."""
+        """Return one of the job's storms by its name.
+
+        Raises
+        ------
+        JobError
+            Its window cannot be, it is a total without times, or no gauge reports in it.
+        """
+        if name not in self._found:
+            self._found[name] = self._storm(name)
+        return self._found[name]
+
+    def _storm(self, name: str) -> ObservedStorm:
         table = next(table for table in self.job.storm if table.name == name)
         record = self.given.record
         start, end = window_of(self.job, table, record.zone)
-        storm, _ = storm_window(record, name, start=start, end=end, pattern=table.pattern)
+        storm, notes = storm_window(record, name, start=start, end=end, pattern=table.pattern)
         window = storm.cut(record)
         problems = Problems()
         if np.isnat(window.ends).any():
@@ -121,17 +147,35 @@ class ObservedStorms:
             )
         problems.raise_as(JobError)
         completed = self.infill.complete(window, long=self._long[storm.first : storm.stop])
-        return ObservedStorm(storm=storm, window=window, means=average_storm(completed, self._averager))
+        return ObservedStorm(storm=storm, window=window, means=average_storm(completed, self._averager), notes=notes)
 
     def ordinates(self, name: str) -> Ordinates:
-        """Return how a storm fell in time over the largest of the areas."""
+        """Return how a storm fell in time over the largest of the areas.
+
+        Raises
+        ------
+        JobError
+            It has no mean over that area at some step, or is dry; or as :meth:`storm`.
+        """
         row = int(np.argmax(self.areas.basins.areas))
         depth = self.storm(name).means.depth[:, row]
+        if np.isnan(depth).all():
+            raise JobError(
+                Problem(
+                    item=f"storm {name}",
+                    found=f"no mean over {self.areas.names[row]} by '{self.average}' at any step",
+                    expected="one at every step",
+                    remedy="choose another method in [design.rarity] average or [averaging] methods",
+                )
+            )
         try:
             return ordinates_of(depth)
-        except (JobError, MethodError) as error:
+        except DataError as error:
             raise JobError(
-                [replace(problem, item=f"storm {name}: {problem.item}") for problem in error.problems]
+                [
+                    replace(problem, item=problem.item.replace("observed storm", f"storm {name}"))
+                    for problem in error.problems
+                ]
             ) from None
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
+from typing import Literal, cast
 
 import numpy as np
 import numpy.typing as npt
@@ -20,6 +21,7 @@ from basinrain.designstorm.interval_factors import interval_factor
 from basinrain.designstorm.point_depths import PointDepths
 from basinrain.errors import DataError, Problem, Problems
 from basinrain.gauges import GaugeNetwork
+from basinrain.ground import LOCAL
 from basinrain.jobfile import DesignJob, Job
 from basinrain.jobfile.design_tables import EQUATION, RASTERS, DesignDepthsTable, DesignTable, RasterTable, minutes_of
 from basinrain.reading.depth_rasters import RasterFile, read_depth_rasters
@@ -81,8 +83,8 @@ def sourced(job: Job | DesignJob, design: DesignTable, areas: Basins) -> Sourced
         job.path(table.file or ""),
         unit=table.unit or "",
         series=table.series or "",
-        probability=table.probability or "",
-        layout=table.layout,
+        probability=cast("Literal['aep', 'aep-percent', 'return-period']", table.probability),
+        layout=cast("Literal['long', 'wide']", table.layout),
         columns=table.columns,
         duration_unit=table.duration_unit,
         crs=table.crs,
@@ -90,7 +92,8 @@ def sourced(job: Job | DesignJob, design: DesignTable, areas: Basins) -> Sourced
         date=table.date,
     )
     if len(depths.points) == 1:
-        _check_place(depths, areas)
+        if not np.isnan(depths.positions).any():
+            _near(depths, areas)
         return Sourced(source=depths, weights=np.ones((len(areas), 1)), method="one point")
     return Sourced(source=depths, weights=_weights(job, depths, areas, table.average), method=table.average)
 
@@ -126,9 +129,20 @@ def _network(depths: PointDepths) -> GaugeNetwork:
     return GaugeNetwork(ids=depths.points, x=depths.positions[:, 0], y=depths.positions[:, 1], crs=depths.crs)
 
 
-def _check_place(depths: PointDepths, areas: Basins) -> None:
-    if not np.isnan(depths.positions).any():
-        reading.check_near(_network(depths).to_crs(areas.crs), areas, kind="depth point")
+def _near(depths: PointDepths, areas: Basins) -> GaugeNetwork:
+    """Return the points of depths in the plane of the areas; refuse points that are nowhere near."""
+    if (depths.crs == LOCAL) != (areas.crs == LOCAL):
+        raise DataError(
+            Problem(
+                item="[design.depths] crs",
+                found=f"'{depths.crs}' beside basins {'in' if areas.crs == LOCAL else 'that are not in'} 'local'",
+                expected="both 'local', or both on the map",
+                remedy="give both crs so that they can be brought together",
+            )
+        )
+    network = _network(depths).to_crs(areas.crs)
+    reading.check_near(network, areas, kind="depth point")
+    return network
 
 
 def _weights(job: Job | DesignJob, depths: PointDepths, areas: Basins, average: str) -> Floats:
@@ -143,8 +157,7 @@ def _weights(job: Job | DesignJob, depths: PointDepths, areas: Basins, average: 
             )
             for point in without
         )
-    network = _network(depths).to_crs(areas.crs)
-    reading.check_near(network, areas, kind="depth point")
+    network = _near(depths, areas)
     weigh = averaging_method(average).prepare(network, areas, **job.averaging.options(average))
     weights = weigh(np.ones(len(network), dtype=bool)).weights
     problems = Problems()
@@ -190,5 +203,4 @@ def nearest_points(source: DepthSource, network: GaugeNetwork) -> npt.NDArray[np
         return np.zeros(len(network), dtype=np.int64)
     points = _network(source).to_crs(network.crs)
     tree = KDTree(np.column_stack([points.x, points.y]))
-    nearest: npt.NDArray[np.int64] = tree.query(np.column_stack([network.x, network.y]))[1]
-    return nearest
+    return np.asarray(tree.query(np.column_stack([network.x, network.y]))[1], dtype=np.int64)

@@ -112,7 +112,7 @@ def write_design_job(
     """
     folder.mkdir(parents=True, exist_ok=True)
     features = [
-        {"type": "Feature", "properties": {"basin": name}, "geometry": shapely.geometry.mapping(square)}
+        {"type": "Feature", "properties": {"basin": name}, "geometry": json.loads(shapely.to_geojson(square))}
         for name, square in squares.items()
     ]
     (folder / "basins.geojson").write_text(json.dumps({"type": "FeatureCollection", "features": features}))

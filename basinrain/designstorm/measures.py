@@ -12,7 +12,16 @@ import numpy.typing as npt
 from basinrain.errors import JobError, Problem
 from basinrain.units import DEPTH_UNITS, depth_factor
 
-__all__ = ["DURATION_UNITS", "INTENSITY_UNITS", "UNITS", "depth_words", "duration_words", "in_mm", "parse_duration"]
+__all__ = [
+    "DURATION_UNITS",
+    "INTENSITY_UNITS",
+    "UNITS",
+    "depth_words",
+    "duration_text",
+    "duration_words",
+    "in_mm",
+    "parse_duration",
+]
 
 Floats = npt.NDArray[np.float64]
 
@@ -32,7 +41,11 @@ _WORD: Final = re.compile(r"(?P<number>[0-9]+\.?[0-9]*|\.[0-9]+)\s*(?P<unit>min|
 
 
 def duration_words(minutes: float) -> str:
-    """Return a duration as engineers name it: whole hours up to three days, whole days beyond, else minutes.
+    """Return a duration as files and jobs have it: whole hours up to three days, whole days beyond, else minutes.
+
+    See Also
+    --------
+    duration_text : the same in a sentence or a figure.
 
     Examples
     --------
@@ -42,6 +55,19 @@ def duration_words(minutes: float) -> str:
     if minutes % 60:
         return f"{minutes:.6g}min"
     return f"{minutes / 60:g}h" if minutes <= _MOST_HOURS or minutes % 1440 else f"{minutes / 1440:g}d"
+
+
+def duration_text(minutes: float) -> str:
+    """Return a duration as a sentence or a figure has it, in the unit of :func:`duration_words`.
+
+    Examples
+    --------
+    >>> [duration_text(minutes) for minutes in (7.5, 15, 60, 90, 1440, 4320, 5760)]
+    ['7.5 min', '15 min', '1 h', '90 min', '24 h', '72 h', '4 days']
+    """
+    word = duration_words(minutes)
+    unit = word.lstrip("0123456789.e+-")
+    return f"{word.removesuffix(unit)} {'days' if unit == 'd' else unit}"
 
 
 def parse_duration(text: str, *, unit: str | None = None) -> float:

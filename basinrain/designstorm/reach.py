@@ -97,7 +97,7 @@ def check_reach(
             remedy="ask for frequencies of the depths' series, or have them brought over with convert = true",
         )
         problems.raise_as(MethodError)
-    span = f"{duration_words(float(durations[0]))} to {duration_words(float(durations[-1]))}"
+    span = " to ".join(duration_words(float(end)) for end in dict.fromkeys((durations[0], durations[-1])))
     lone = len(durations) == 1 and not fixed_law
     outside = (minutes < durations[0] * (1 - SLACK)) | (minutes > durations[-1] * (1 + SLACK))
     for asked in minutes[~(minutes > 0) | np.isinf(minutes)]:

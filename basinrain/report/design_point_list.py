@@ -104,7 +104,7 @@ def weights_table(run: DesignRun) -> Table | None:
     every = design_shown.areas_shown(run.areas)
     areas, shown = every[:_AREAS], _shown(run)
     taken = weights[np.ix_(areas, shown)]
-    others = 1 - taken.sum(axis=1)
+    others = np.maximum(1 - taken.sum(axis=1), 0)
     more = _left_out(run, len(shown))
     columns = np.column_stack([taken, others]) if more else taken
     printed = np.array([round_to_sum(column, 3) for column in columns])

@@ -234,7 +234,7 @@ def test_one_duration_or_frequency_has_no_segment_to_go_on() -> None:
     with pytest.raises(MethodError) as caught:
         depths.at(np.array([120.0]), annual(10.0), extrapolate=True)
     assert [problem.found for problem in caught.value.problems] == [
-        "that the depths have only 1h to 1h",
+        "that the depths have only 1h",
         "that the depths have only AEP 0.5 (1 in 2)",
     ]
     assert [problem.remedy for problem in caught.value.problems] == [

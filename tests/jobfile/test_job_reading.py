@@ -90,7 +90,7 @@ def test_every_problem_is_listed_with_its_line(tmp_path: Path) -> None:
         read_job(path)
     unknown = "found a key that is not known; expected one of:"
     units = "mm, cm, m, in, 0.1 mm, 0.01 mm, 0.1 in, 0.01 in, 0.001 in, kg m-2"
-    names = "job, gauges, rainfall, step, basins, screening, edit, storm, infill, averaging, series, storms"
+    names = "job, basins, gauges, rainfall, step, screening, edit, storm, infill, averaging, series, storms, design"
     expected = [
         f"{path}:2: [job] name: found no such key; expected it to be given; add it",
         f"{path}:3: [job] nam: {unknown} name, depth_unit, area_unit, output, plane; did you mean 'name'?",
