@@ -16,7 +16,7 @@ from basinrain.designstorm.areal_reduction import REDUCTIONS
 from basinrain.designstorm.depth_chain import Links
 from basinrain.designstorm.design_storms import DesignStorm
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, Frequency
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.rarity import StormRarity
 from basinrain.jobfile.design_tables import NO_REDUCTION, UpliftTable
 from basinrain.notes import Note
@@ -29,6 +29,9 @@ DESIGN_CAUTION: Final = (
     "reduction, duration, pattern and probability apply is theirs to say. A design storm is no storm that has fallen, "
     "and the probability of its depth is not that of the flood it causes."
 )
+
+_OF_CURVES: Final = frozenset({"alternating-block", "chicago", "nested"})
+"""Shapes that ask for depths of durations down to a step."""
 
 _UNREDUCED: Final = 25e6
 """m²; a point's depth is often taken for areas up to about this one (common practice; ten square miles)."""
@@ -57,6 +60,9 @@ def design_cautions(
     design = asked.design
     yield Note(code="climate", level="info", text=climate_sentence(design.uplift))
     yield from _of_reduction(asked, areas, sourced, links, area_unit)
+    points = (f"{name}: {text}" for (name, _), found in links.items() for text in found.clamped)
+    for text in dict.fromkeys((*points, *(text for storm in storms for text in storm.clamped))):
+        yield Note(code="reduction-clamped", text=text)
     if sourced.source.series == PARTIAL_DURATION and design.aep is not None:
         text = (
             "The depths are of a partial duration series; annual exceedance probabilities were brought to its return "
@@ -78,11 +84,11 @@ def design_cautions(
         if design.depths.interval_factor is None:
             yield Note(
                 code="fixed-intervals",
-                text=f"Depths from the record are sums of its steps of {duration_words(record.step)}: for durations of "
+                text=f"Depths from the record are sums of its steps of {duration_text(record.step)}: for durations of "
                 "few steps they read lower than true-interval depths, and nothing was done about it.",
             )
     made = {storm.minutes for storm in storms}
-    if bare := [duration_words(minutes) for minutes in asked.minutes if minutes not in made]:
+    if bare := [duration_text(minutes) for minutes in asked.minutes if minutes not in made]:
         yield Note(
             code="no-pattern",
             text=f"No hyetograph is made for {', '.join(bare)}: every pattern's own durations leave it out.",
@@ -90,7 +96,7 @@ def design_cautions(
     for storm in storms:
         for remark in storm.remarks:
             yield Note(
-                code="pattern", level="info", text=f"{storm.choice.label}, {duration_words(storm.minutes)}: {remark}"
+                code="pattern", level="info", text=f"{storm.choice.label}, {duration_text(storm.minutes)}: {remark}"
             )
     for found in rarities:
         for text in found.left_out:
@@ -124,8 +130,6 @@ def _of_reduction(
         yield Note(code="reduction-evidence", level="info", text=f"{method.title}: {method.evidence}")
     for text in dict.fromkeys(remark for found in links.values() for remark in found.remarks):
         yield Note(code="areal-reduction", level="info", text=text)
-    for name, text in dict.fromkeys((name, text) for (name, _), found in links.items() for text in found.clamped):
-        yield Note(code="reduction-clamped", text=f"{name}: {text}")
     if table.area == "own":
         yield Note(
             code="own-area",
@@ -138,9 +142,9 @@ def _of_extrapolation(asked: Asked, sourced: Sourced) -> Iterator[Note]:
     source = sourced.source
     known = source.frequencies
     outside = [f.label for f in asked.frequencies if not known[0] <= f <= known[-1]]
-    longer = [duration_words(m) for m in asked.minutes if not source.shortest <= m <= source.longest]
-    if asked.step < source.shortest:
-        longer.insert(0, f"steps of {duration_words(asked.step)}")
+    longer = [duration_text(m) for m in asked.minutes if not source.shortest <= m <= source.longest]
+    if asked.step < source.shortest and any(pattern.shape in _OF_CURVES for pattern in asked.design.pattern):
+        longer.insert(0, f"steps of {duration_text(asked.step)}")
     if outside or longer:
         yield Note(
             code="extrapolated",

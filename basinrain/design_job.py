@@ -24,7 +24,7 @@ from basinrain.designstorm.areal_reduction import areal_reduction, outside_regio
 from basinrain.designstorm.depth_chain import DepthChain, Links
 from basinrain.designstorm.design_storms import DesignStorm, PatternChoice, design_storm
 from basinrain.designstorm.exceedance import Frequency
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.rarity import StormRarity
 from basinrain.errors import BasinRainError, JobError, MethodError, Problem
 from basinrain.infill_choice import InfillChoice, choose_infill
@@ -130,6 +130,7 @@ def run_design(
         notes=once(
             (
                 *given.notes,
+                *(() if infill is None else infill.notes),
                 *(() if record is None else record.notes),
                 *(() if observed is None else observed.notes),
                 *design_cautions(
@@ -295,7 +296,7 @@ def _storms(
                         sub_basins=design.sub_basins,
                         own_area=own_area,
                     )
-                    words = f"{point.name}, {frequency.label}, {duration_words(minutes)}, {choice.label}"
+                    words = f"{point.name}, {frequency.label}, {duration_text(minutes)}, {choice.label}"
                     storms.append(cases.attempt(words, work))
     cases.raise_any()
     return tuple(storms)

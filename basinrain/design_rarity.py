@@ -13,6 +13,8 @@ import numpy.typing as npt
 from basinrain.averager import Averager
 from basinrain.averaging import averaging_method
 from basinrain.basin_depths import BasinDepths, average_storm
+from basinrain.basins import Basins
+from basinrain.cautions import screening_cautions, storm_cautions
 from basinrain.design_areas import Areas
 from basinrain.design_asked import Asked
 from basinrain.design_sources import nearest_points
@@ -54,7 +56,7 @@ class ObservedStorm:
     means
         Means over the areas after infill.
     notes
-        What was remarked of the window.
+        What was remarked of the window, its infill and its means.
     """
 
     storm: Storm
@@ -98,8 +100,12 @@ class ObservedStorms:
     def notes(self) -> tuple[Note, ...]:
         """What was remarked of the storms that were asked for so far, and how they were averaged."""
         text = f"Storms of the record were averaged over the areas by '{self.average}'."
-        remarks = (note for storm in self._found.values() for note in storm.notes)
-        return (*remarks, Note(code="storms-averaged", level="info", text=text))
+        storms = [found.storm for found in self._found.values()]
+        return (
+            *(note for found in self._found.values() for note in found.notes),
+            *screening_cautions(self.given.screening, storms),
+            Note(code="storms-averaged", level="info", text=text),
+        )
 
     @cached_property
     def _long(self) -> Bools:
@@ -147,7 +153,15 @@ class ObservedStorms:
             )
         problems.raise_as(JobError)
         completed = self.infill.complete(window, long=self._long[storm.first : storm.stop])
-        return ObservedStorm(storm=storm, window=window, means=average_storm(completed, self._averager), notes=notes)
+        means = average_storm(completed, self._averager)
+        areas = Basins(ids=self.areas.names, polygons=self.areas.basins.polygons, crs=self.areas.basins.crs)
+        unit = self.job.job.depth_unit
+        notes = (
+            *notes,
+            *(note if note.storm else replace(note, storm=name) for note in completed.notes),
+            *storm_cautions(name, self.given.network, areas, {self.average: means}, depth_unit=unit),
+        )
+        return ObservedStorm(storm=storm, window=window, means=means, notes=notes)
 
     def ordinates(self, name: str) -> Ordinates:
         """Return how a storm fell in time over the largest of the areas.

@@ -13,7 +13,7 @@ from basinrain.averaging import averaging_method
 from basinrain.basins import Basins
 from basinrain.design_asked import Asked
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.record_depths import RecordDepths, record_depths
 from basinrain.errors import DataError, JobError, Problem, Problems, nearest_name
 from basinrain.infill_choice import InfillChoice
@@ -205,8 +205,8 @@ def _minutes(asked: Asked, step: int) -> Floats:
     if asked.minutes[0] < step and not asked.design.depths.extrapolate:
         problems.add(
             item="[design] durations",
-            found=duration_words(asked.minutes[0]),
-            expected=f"the record's step of {duration_words(step)} at least",
+            found=duration_text(asked.minutes[0]),
+            expected=f"the record's step of {duration_text(step)} at least",
             remedy="ask for longer durations, or give a record of shorter steps",
         )
     for word, minutes in zip(asked.design.depths.durations, named, strict=True):
@@ -214,7 +214,7 @@ def _minutes(asked: Asked, step: int) -> Floats:
             problems.add(
                 item="[design.depths] durations",
                 found=f"'{word}'",
-                expected=f"a whole number of the record's steps of {duration_words(step)}",
+                expected=f"a whole number of the record's steps of {duration_text(step)}",
                 remedy="correct it, or leave durations out",
             )
     problems.raise_as(JobError)
@@ -268,6 +268,16 @@ def _notes(
                 code="network-held",
                 level="info",
                 text=f"Depths from the record rest on a network that is held fixed, without {', '.join(left)}.",
+            )
+        )
+    unsettled = sum(found.state == "open" and found.severity != "remark" for found in given.screening.findings)
+    if unsettled:
+        stretches = f"stretch{'es' if unsettled > 1 else ''} of the record, not settled by the job"
+        notes.append(
+            Note(
+                code="screening",
+                text=f"Screening found {unsettled} doubtful or erroneous {stretches}: annual maxima may rest on "
+                f"{'them' if unsettled > 1 else 'it'}. 'basinrain screen' shows what they are.",
             )
         )
     for area, name in enumerate(names):

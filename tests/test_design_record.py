@@ -276,13 +276,13 @@ REFUSED: dict[str, tuple[dict[str, Any], type[BasinRainError], str]] = {
     "nine years": (
         {"years": 9},
         MethodError,
-        f"area union, 24h: {NINE}\narea west, 24h: {NINE}\narea east, 24h: {NINE}",
+        f"area union, 24 h: {NINE}\narea west, 24 h: {NINE}\narea east, 24 h: {NINE}",
     ),
     "beyond twice the record": (
         {"design__return_periods": [30, 31]},
         MethodError,
         (
-            "AEP 0.03226 (1 in 31): found a return period of over 2 times the 15 years of area union, 24h; expected "
+            "AEP 0.03226 (1 in 31): found a return period of over 2 times the 15 years of area union, 24 h; expected "
             "30 years at most; ask for a less rare one, or allow it with beyond_record = true"
         ),
     ),
@@ -315,7 +315,7 @@ REFUSED: dict[str, tuple[dict[str, Any], type[BasinRainError], str]] = {
         {"design__durations": ["6h", "1d"], "design__step": "6h"},
         JobError,
         (
-            "[design] durations: found 6h; expected the record's step of 24h at least; ask for longer durations, or "
+            "[design] durations: found 6 h; expected the record's step of 24 h at least; ask for longer durations, or "
             "give a record of shorter steps"
         ),
     ),
@@ -323,10 +323,10 @@ REFUSED: dict[str, tuple[dict[str, Any], type[BasinRainError], str]] = {
         {"design__depths": FROM_RECORD | {"durations": ["6h", "1d", "30h"]}},
         JobError,
         (
-            "[design.depths] durations: found '6h'; expected a whole number of the record's steps of 24h; correct it, "
+            "[design.depths] durations: found '6h'; expected a whole number of the record's steps of 24 h; correct it, "
             "or leave durations out\n"
-            "[design.depths] durations: found '30h'; expected a whole number of the record's steps of 24h; correct it, "
-            "or leave durations out"
+            "[design.depths] durations: found '30h'; expected a whole number of the record's steps of 24 h; correct "
+            "it, or leave durations out"
         ),
     ),
     "no weights": (

@@ -8,7 +8,7 @@ from rich.table import Table
 
 from basinrain.cli.running import console, show_warnings
 from basinrain.design_job import run_design
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text
 from basinrain.jobfile import DesignJob, Job
 from basinrain.report.words import area_text, depth_decimals, number_text, unit_text
 from basinrain.results_design import DesignRun
@@ -65,7 +65,7 @@ def _show_depths(run: DesignRun) -> None:
         table.add_row(
             "" if name == last else name,
             frequency.label,
-            duration_words(links.minutes[d]),
+            duration_text(links.minutes[d]),
             number_text(links.point[d] * links.interval_factor[d] / mm, digits),
             number_text(links.uplift, 2),
             number_text(links.reduction[d], 3),
@@ -82,7 +82,7 @@ def _show_storms(run: DesignRun) -> None:
     page, digits, mm = console(), depth_decimals(run.depth_unit), depth_factor(run.depth_unit)
     rarest = run.asked.frequencies[-1]
     storms = [storm for storm in run.storms if storm.frequency == rarest]
-    page.print(f"Hyetographs, {rarest.label}, steps of {duration_words(run.asked.step)}")
+    page.print(f"Hyetographs, {rarest.label}, steps of {duration_text(run.asked.step)}")
     table = Table(show_edge=False, pad_edge=False)
     for heading in ("point of interest", "duration", "pattern"):
         table.add_column(heading, no_wrap=True)
@@ -94,14 +94,14 @@ def _show_storms(run: DesignRun) -> None:
         least, most = (number_text(value / mm, digits) for value in (storm.totals.min(), storm.totals.max()))
         table.add_row(
             storm.point.name,
-            duration_words(storm.minutes),
+            duration_text(storm.minutes),
             storm.choice.label,
             least if least == most else f"{least} to {most}",
             number_text(peak, digits),
             number_text(peak * 60 / storm.step, digits),
-            duration_words((step + 1) * storm.step),
+            duration_text((step + 1) * storm.step),
         )
     page.print(table)
     if len(storms) > _ROWS:
-        page.print(f"{len(storms) - _ROWS} more rows stand in design_storms.csv")
+        page.print(f"{len(storms) - _ROWS} more storms stand in design_storms.csv")
     page.print()

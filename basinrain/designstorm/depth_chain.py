@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -170,15 +170,30 @@ class DepthChain:
             result: Floats = point * factor * self.uplift * whole
             return result
 
-        def each(durations: Floats) -> Floats:
-            return self.links(area, durations, frequency, reduced_as=reduced_as).areal
+        said: dict[str, None] = {}
 
-        return CurvePair(one, each)
+        def each(durations: Floats) -> Floats:
+            links = self.links(area, durations, frequency, reduced_as=reduced_as)
+            said.update(dict.fromkeys(links.clamped))
+            return links.areal
+
+        return CurvePair(one, each, said)
 
 
 @dataclass(frozen=True)
 class CurvePair:
-    """Areal depths by duration: with one reduction for all, and each with its own."""
+    """Areal depths by duration.
+
+    Parameters
+    ----------
+    one
+        All with one reduction.
+    each
+        Each with that of its own duration.
+    said
+        Whole sentences on what was brought into the reduction's range so far, as ``each`` was asked.
+    """
 
     one: Curve
     each: Curve
+    said: Mapping[str, None]

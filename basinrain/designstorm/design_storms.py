@@ -87,6 +87,8 @@ class DesignStorm:
         The areal reduction that each basin's depth has.
     remarks : tuple of str
         What a reader must know of the pattern.
+    clamped : tuple of str
+        Whole sentences: what was brought into the reduction's range, each with the name of its area.
     """
 
     point: PointOfInterest
@@ -97,6 +99,7 @@ class DesignStorm:
     depth: Floats
     reduction: Floats
     remarks: tuple[str, ...] = ()
+    clamped: tuple[str, ...] = ()
 
     @property
     def totals(self) -> Floats:
@@ -164,19 +167,21 @@ def design_storm(
     """
     at = np.array([float(minutes)])
     if own_area:
-        depths, reductions, remarks = [], [], []
-        for row in point.rows:
+        depths, reductions, remarks, clamped = [], [], [], []
+        for row, basin in zip(point.rows, point.basins, strict=True):
             means = row if sub_basins == OWN_DEPTH else point.row
             links = chain.links(means, at, frequency, reduced_as=row)
-            shaped = _shaped(chain, means, row, links.areal[0], frequency, choice, minutes, step)
+            shaped, said = _shaped(chain, means, row, links.areal[0], frequency, choice, minutes, step)
             depths.append(shaped.depth)
             reductions.append(links.reduction[0])
             remarks += shaped.remarks
+            clamped += [f"{basin}: {text}" for text in (*links.clamped, *said)]
         depth, reduction = np.stack(depths, axis=1), np.array(reductions)
     else:
         links = chain.links(point.row, at, frequency)
-        shaped = _shaped(chain, point.row, point.row, links.areal[0], frequency, choice, minutes, step)
+        shaped, said = _shaped(chain, point.row, point.row, links.areal[0], frequency, choice, minutes, step)
         remarks = list(shaped.remarks)
+        clamped = [f"{point.name}: {text}" for text in (*links.clamped, *said)]
         share = np.ones(len(point.rows))
         if sub_basins == OWN_DEPTH:
             share = _shares(chain, point, at, frequency)
@@ -190,6 +195,7 @@ def design_storm(
         depth=depth,
         reduction=reduction,
         remarks=tuple(dict.fromkeys(remarks)),
+        clamped=tuple(dict.fromkeys(clamped)),
     )
 
 
@@ -202,7 +208,8 @@ def _shaped(
     choice: PatternChoice,
     minutes: int,
     step: int,
-) -> Shaped:
+) -> tuple[Shaped, tuple[str, ...]]:
+    """Return the hyetograph, and what was brought into the reduction's range for it."""
     curves = chain.curves(row, minutes, frequency, reduced_as=reduced_as)
     case = PatternCase(
         minutes=minutes,
@@ -212,7 +219,7 @@ def _shaped(
         curve_by_duration=curves.each,
         area=float(chain.areas[reduced_as]),
     )
-    return choice.pattern.shape(case, **choice.options)
+    return choice.pattern.shape(case, **choice.options), tuple(curves.said)
 
 
 def _shares(chain: DepthChain, point: PointOfInterest, at: Floats, frequency: Frequency) -> Floats:

@@ -13,7 +13,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import SERIES, Frequency
-from basinrain.designstorm.measures import DURATION_UNITS, INTENSITY_UNITS, depth_words, duration_words, in_mm
+from basinrain.designstorm.measures import DURATION_UNITS, INTENSITY_UNITS, depth_words, duration_text, in_mm
 from basinrain.designstorm.reach import SLACK, bracket, check_reach, refuse_unphysical
 from basinrain.errors import JobError, Problems, nearest_name
 
@@ -270,7 +270,7 @@ class EquationDepths:
         if not sound.all():
             problems.add(
                 item=self._item(one),
-                found=f"that {form.formula} has no value above 0 at {duration_words(ends[int(sound[0])])}",
+                found=f"that {form.formula} has no value above 0 at {duration_text(ends[int(sound[0])])}",
                 expected="intensities above 0 at every valid duration",
                 remedy="correct the coefficients, or narrow valid",
             )
@@ -282,7 +282,7 @@ class EquationDepths:
             (steepness < -SLACK, "intensity rises with duration"),
         ):
             if wrong.any():
-                first, last = (duration_words(float(f"{between[wrong][k]:.3g}")) for k in (0, -1))
+                first, last = (duration_text(float(f"{between[wrong][k]:.3g}")) for k in (0, -1))
                 problems.add(
                     item=self._item(one),
                     found=f"that by {form.formula} {found} from {first} to {last}",
@@ -307,7 +307,7 @@ class EquationDepths:
             minutes = float(between[k])
             problems.add(
                 item=self._item(one + 1),
-                found=f"{depth_words(depth[one + 1, k], minutes, self.unit)} of {duration_words(minutes)}, less than "
+                found=f"{depth_words(depth[one + 1, k], minutes, self.unit)} of {duration_text(minutes)}, less than "
                 f"{depth_words(depth[one, k], minutes, self.unit)} of {self.frequencies[one].label}",
                 expected="a depth that does not fall with rarity at any valid duration",
                 remedy="correct the coefficients, or narrow valid",

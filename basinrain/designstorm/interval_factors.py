@@ -15,7 +15,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.designstorm.choices import report_unknown
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text
 from basinrain.errors import JobError, MethodError, Problem, Problems
 
 __all__ = ["INTERVAL_FACTORS", "IntervalFactor", "hershfield", "interval_factor", "weiss"]
@@ -139,8 +139,8 @@ def interval_factor(method: str, minutes: Floats, observed_every: float) -> Floa
     >>> interval_factor("weiss", np.array([30.0]), 60.0)
     Traceback (most recent call last):
         ...
-    basinrain.errors.MethodError: [design.depths] interval_factor 'weiss': found a duration of 30min, 0.5 intervals of \
-1h; expected one interval or more; leave the duration out, or the factor
+    basinrain.errors.MethodError: [design.depths] interval_factor 'weiss': found a duration of 30 min, 0.5 intervals \
+of 1 h; expected one interval or more; leave the duration out, or the factor
     """
     problems = Problems()
     report_unknown("[design.depths] interval_factor", method, INTERVAL_FACTORS, problems)
@@ -159,7 +159,7 @@ def _checked(method: str, intervals: Floats, *, every: float | None = None) -> F
                 item=f"[design.depths] interval_factor '{method}'",
                 found=f"{n:g} intervals"
                 if every is None
-                else f"a duration of {duration_words(float(n) * every)}, {n:g} intervals of {duration_words(every)}",
+                else f"a duration of {duration_text(float(n) * every)}, {n:g} intervals of {duration_text(every)}",
                 expected=known.range,
                 remedy="leave the duration out, or the factor",
             )

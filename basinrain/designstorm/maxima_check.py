@@ -10,7 +10,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.l_moments import LMoments
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text
 from basinrain.errors import DataError, MethodError, Problems
 
 __all__ = ["FEWEST_YEARS", "REACH", "check_asked", "check_depths", "check_maxima", "check_series"]
@@ -48,7 +48,7 @@ def check_maxima(maxima: Floats, years: Ints, minutes: Floats, areas: Sequence[s
     Traceback (most recent call last):
         ...
     basinrain.errors.DataError: years: found 2031 after 2031; expected each once, rising
-    area Quill, 1h, 2031: found -1 mm; expected a finite depth of 0 or more, or none
+    area Quill, 1 h, 2031: found -1 mm; expected a finite depth of 0 or more, or none
     """
     problems = Problems()
     shape = (len(years), len(minutes), len(areas))
@@ -67,7 +67,7 @@ def check_maxima(maxima: Floats, years: Ints, minutes: Floats, areas: Sequence[s
         problems.add(item=f"area {name}", found="the id twice", expected="each area once")
     for t, d, a in np.argwhere((maxima < 0) | np.isinf(maxima)).tolist():
         problems.add(
-            item=f"area {areas[a]}, {duration_words(minutes[d])}, {years[t]}",
+            item=f"area {areas[a]}, {duration_text(minutes[d])}, {years[t]}",
             found=f"{maxima[t, d, a]:g} mm",
             expected="a finite depth of 0 or more, or none",
         )
@@ -91,7 +91,7 @@ def check_series(
         Whether a shape is fitted, which maxima of which all but one are equal do not have.
     """
     for a, d in np.ndindex(moments.n.shape):
-        where = f"area {areas[a]}, {duration_words(float(minutes[d]))}"
+        where = f"area {areas[a]}, {duration_text(float(minutes[d]))}"
         if moments.n[a, d] < FEWEST_YEARS:
             problems.add(
                 item=where,
@@ -155,7 +155,7 @@ def check_asked(
             problems.add(
                 item=frequency.label,
                 found=f"a return period of over {REACH} times the {n} years of area {areas[a]}, "
-                f"{duration_words(minutes[d])}",
+                f"{duration_text(minutes[d])}",
                 expected=f"{REACH * n} years at most",
                 remedy="ask for a less rare one, or allow it with beyond_record = true",
             )
@@ -180,7 +180,7 @@ def check_depths(depth: Floats, minutes: Floats, areas: Sequence[str], frequenci
     problems = Problems()
     for a, d, t in np.argwhere(~(depth > 0)).tolist():
         problems.add(
-            item=f"area {areas[a]}, {duration_words(minutes[d])}, {frequencies[t].label}",
+            item=f"area {areas[a]}, {duration_text(minutes[d])}, {frequencies[t].label}",
             found=f"{depth[a, d, t]:.3g} mm from the fitted distribution",
             expected="a depth above 0",
             remedy="ask for a rarer frequency; the fit does not reach to so frequent a one",

@@ -52,9 +52,7 @@ def duration_words(minutes: float) -> str:
     >>> duration_words(90), duration_words(1440), duration_words(5760), duration_words(7.5)
     ('90min', '24h', '4d', '7.5min')
     """
-    if minutes % 60:
-        return f"{minutes:.6g}min"
-    return f"{minutes / 60:g}h" if minutes <= _MOST_HOURS or minutes % 1440 else f"{minutes / 1440:g}d"
+    return "".join(_in_unit(minutes))
 
 
 def duration_text(minutes: float) -> str:
@@ -65,9 +63,16 @@ def duration_text(minutes: float) -> str:
     >>> [duration_text(minutes) for minutes in (7.5, 15, 60, 90, 1440, 4320, 5760)]
     ['7.5 min', '15 min', '1 h', '90 min', '24 h', '72 h', '4 days']
     """
-    word = duration_words(minutes)
-    unit = word.lstrip("0123456789.e+-")
-    return f"{word.removesuffix(unit)} {'days' if unit == 'd' else unit}"
+    number, unit = _in_unit(minutes)
+    return f"{number} {'days' if unit == 'd' else unit}"
+
+
+def _in_unit(minutes: float) -> tuple[str, str]:
+    if minutes == 0 or minutes % 60:
+        return f"{minutes:.6g}", "min"
+    if minutes <= _MOST_HOURS or minutes % 1440:
+        return f"{minutes / 60:g}", "h"
+    return f"{minutes / 1440:g}", "d"
 
 
 def parse_duration(text: str, *, unit: str | None = None) -> float:

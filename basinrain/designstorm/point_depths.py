@@ -12,7 +12,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import SERIES, Frequency
-from basinrain.designstorm.measures import depth_words, duration_words
+from basinrain.designstorm.measures import depth_words, duration_text
 from basinrain.designstorm.reach import SLACK, bracket, check_reach, refuse_unphysical
 from basinrain.errors import DataError, JobError, Problems
 
@@ -78,7 +78,7 @@ class PointDepths:
     >>> table.at(np.array([30.0]), five)
     Traceback (most recent call last):
         ...
-    basinrain.errors.MethodError: duration 30min: found that the depths are of 1h to 4h; expected a duration within \
+    basinrain.errors.MethodError: duration 30 min: found that the depths are of 1 h to 4 h; expected a duration within \
 them; give depths for it, or allow it with extrapolate = true
     >>> table.at(np.array([30.0]), five, extrapolate=True).round(2)
     array([[30.4]])
@@ -265,15 +265,15 @@ def report_faults(
     >>> problems.raise_as(DataError)
     Traceback (most recent call last):
         ...
-    basinrain.errors.DataError: depths.csv: point Quill, 1h, AEP 0.1 (1 in 10): found 18 mm (18 mm/h), less than 20 mm \
-(40 mm/h) of 30min; expected a depth that does not fall with duration; correct one of them
-    depths.csv: point Quill, 2h, AEP 0.1 (1 in 10): found 60 mm (30 mm/h), more intense than 18 mm (18 mm/h) of 1h; \
+    basinrain.errors.DataError: depths.csv: point Quill, 1 h, AEP 0.1 (1 in 10): found 18 mm (18 mm/h), less than 20 \
+mm (40 mm/h) of 30 min; expected a depth that does not fall with duration; correct one of them
+    depths.csv: point Quill, 2 h, AEP 0.1 (1 in 10): found 60 mm (30 mm/h), more intense than 18 mm (18 mm/h) of 1 h; \
 expected an intensity that does not rise with duration; correct one of them
     """
 
     def place_words(place: tuple[int, ...]) -> str:
         p, d, t = place
-        return f"point {points[p]}, {duration_words(durations[d])}, {frequencies[t].label}"
+        return f"point {points[p]}, {duration_text(durations[d])}, {frequencies[t].label}"
 
     def value_words(place: tuple[int, ...]) -> str:
         return depth_words(depth[place], durations[place[1]], unit)
@@ -298,7 +298,7 @@ expected an intensity that does not rise with duration; correct one of them
     def before(than: str, axis: int) -> Callable[[tuple[int, ...]], str]:
         def words(place: tuple[int, ...]) -> str:
             other = tuple(index - (k == axis) for k, index in enumerate(place))
-            whose = duration_words(durations[other[1]]) if axis == 1 else frequencies[other[2]].label
+            whose = duration_text(durations[other[1]]) if axis == 1 else frequencies[other[2]].label
             where = f" (line {lines[other]})" if lines is not None else ""
             return f"{value_words(place)}, {than} {value_words(other)} of {whose}{where}"
 

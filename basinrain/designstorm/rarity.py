@@ -11,6 +11,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.found_frequency import FoundFrequency, check_frequencies, found_frequencies
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.rarity_sentences import (
     few_steps_remark,
     interval_sentence,
@@ -20,9 +21,8 @@ from basinrain.designstorm.rarity_sentences import (
     searched_sentence,
 )
 from basinrain.errors import DataError, Problems
-from basinrain.series.steps import in_words
 
-__all__ = ["RarityRow", "StormDepths", "StormRarity", "comparable", "duration_text", "storm_rarity"]
+__all__ = ["RarityRow", "StormDepths", "StormRarity", "comparable", "storm_rarity"]
 
 Bools = npt.NDArray[np.bool_]
 Floats = npt.NDArray[np.float64]
@@ -266,23 +266,6 @@ def storm_rarity(
         left_out=left_out,
         sentences=tuple(sentences),
     )
-
-
-def duration_text(minutes: float) -> str:
-    """Return a duration as engineers name it: hours up to three days.
-
-    Examples
-    --------
-    >>> [duration_text(minutes) for minutes in (0.5, 15, 60, 90, 1440, 4320, 7200)]
-    ['30 s', '15 min', '1 h', '90 min', '24 h', '72 h', '5 days']
-    """
-    hours = minutes / 60
-    if 1 <= hours <= 72 and hours.is_integer():
-        return f"{hours:.0f} h"
-    text = in_words(round(minutes * 60))
-    number = text.rstrip("dhmins")
-    unit = text.removeprefix(number)
-    return f"{number} {'days' if unit == 'd' else unit}"
 
 
 def _where(row: RarityRow) -> str:

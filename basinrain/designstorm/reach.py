@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
-from basinrain.designstorm.measures import depth_words, duration_words
+from basinrain.designstorm.measures import depth_words, duration_text
 from basinrain.errors import MethodError, Problems
 
 __all__ = ["SLACK", "bracket", "check_reach", "refuse_unphysical"]
@@ -97,14 +97,14 @@ def check_reach(
             remedy="ask for frequencies of the depths' series, or have them brought over with convert = true",
         )
         problems.raise_as(MethodError)
-    span = " to ".join(duration_words(float(end)) for end in dict.fromkeys((durations[0], durations[-1])))
+    span = " to ".join(duration_text(float(end)) for end in dict.fromkeys((durations[0], durations[-1])))
     lone = len(durations) == 1 and not fixed_law
     outside = (minutes < durations[0] * (1 - SLACK)) | (minutes > durations[-1] * (1 + SLACK))
     for asked in minutes[~(minutes > 0) | np.isinf(minutes)]:
         problems.add(item="duration", found=f"{asked:g} minutes", expected="more than 0 and finite")
     for asked in minutes[outside & (minutes > 0) & np.isfinite(minutes)] if lone or not extrapolate else ():
         problems.add(
-            item=f"duration {duration_words(float(asked))}",
+            item=f"duration {duration_text(float(asked))}",
             found=f"that the depths have only {span}" if lone else f"that the depths are of {span}",
             expected="a duration within them",
             remedy="give depths of two durations or more" if lone else _REMEDY,
@@ -148,9 +148,9 @@ def refuse_unphysical(depth: Floats, minutes: Floats, points: Sequence[str], fre
     problems = Problems()
     for p in np.flatnonzero(wrong.any(axis=1)).tolist():
         d = int(wrong[p].argmax())
-        before = f" after {depth_words(depth[p, d - 1], minutes[d - 1])} of {duration_words(minutes[d - 1])}"
+        before = f" after {depth_words(depth[p, d - 1], minutes[d - 1])} of {duration_text(minutes[d - 1])}"
         problems.add(
-            item=f"point {points[p]}, {duration_words(minutes[d])}, {frequency.label}",
+            item=f"point {points[p]}, {duration_text(minutes[d])}, {frequency.label}",
             found=depth_words(depth[p, d], minutes[d]) + (before if d else "") + " by extrapolation",
             expected="a depth above 0 that does not fall with duration, and an intensity that does not rise",
             remedy="ask for less far outside, or give depths for it",

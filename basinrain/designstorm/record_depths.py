@@ -155,9 +155,9 @@ def record_depths(
     >>> record_depths(maxima[:8], years[:8], np.array([60.0, 180.0]), ["Quill"], frequencies=[ten])
     Traceback (most recent call last):
         ...
-    basinrain.errors.MethodError: area Quill, 1h: found 8 years with an annual maximum; expected 10 at least; take a \
+    basinrain.errors.MethodError: area Quill, 1 h: found 8 years with an annual maximum; expected 10 at least; take a \
 longer record, or depths of a table
-    area Quill, 3h: found 8 years with an annual maximum; expected 10 at least; take a longer record, or depths of a \
+    area Quill, 3 h: found 8 years with an annual maximum; expected 10 at least; take a longer record, or depths of a \
 table
     """
     check_maxima(maxima, years, minutes, areas)

@@ -12,7 +12,7 @@ from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.extreme_values import GEV, GUMBEL
 from basinrain.designstorm.l_moments import LMoments
 from basinrain.designstorm.maxima_check import REACH
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.record_fit import RecordFit
 
 __all__ = ["TITLES", "record_remarks"]
@@ -72,7 +72,7 @@ class _Words:
     """Names the entries of arrays by area and duration, and by frequency where there is a third axis."""
 
     def __init__(self, minutes: Floats, areas: Sequence[str], frequencies: Sequence[Frequency]) -> None:
-        self._axes = (areas, [duration_words(each) for each in minutes], [each.label for each in frequencies])
+        self._axes = (areas, [duration_text(each) for each in minutes], [each.label for each in frequencies])
 
     def __call__(self, place: Sequence[int]) -> str:
         return " ".join(axis[k] for axis, k in zip(self._axes, place, strict=False))

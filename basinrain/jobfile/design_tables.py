@@ -14,7 +14,7 @@ from basinrain.designstorm.equations import EQUATIONS
 from basinrain.designstorm.exceedance import SERIES
 from basinrain.designstorm.extreme_values import DISTRIBUTIONS
 from basinrain.designstorm.interval_factors import INTERVAL_FACTORS
-from basinrain.designstorm.measures import UNITS
+from basinrain.designstorm.measures import UNITS, duration_words
 from basinrain.designstorm.patterns import PATTERNS
 from basinrain.errors import JobError
 from basinrain.intervals import parse_interval
@@ -77,7 +77,7 @@ def _length(word: str) -> str:
         interval = None
     if interval is None or interval.seconds is None:
         raise _no_length()
-    return interval.label
+    return duration_words(interval.seconds / 60)
 
 
 def _words(value: object) -> object:

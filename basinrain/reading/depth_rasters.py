@@ -16,7 +16,7 @@ from basinrain.basins import Basins
 from basinrain.designstorm.cell_weights import CellGrid, CellWeights, cell_weights
 from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import Frequency
-from basinrain.designstorm.measures import UNITS, depth_words, duration_words, in_mm
+from basinrain.designstorm.measures import UNITS, depth_words, duration_text, in_mm
 from basinrain.designstorm.point_depths import PointDepths
 from basinrain.designstorm.reach import SLACK
 from basinrain.errors import JobError, Problems, ReadError
@@ -58,7 +58,7 @@ class RasterFile:
     @property
     def words(self) -> str:
         """Duration and frequency, for messages."""
-        return f"{duration_words(self.minutes)}, {self.frequency.label}"
+        return f"{duration_text(self.minutes)}, {self.frequency.label}"
 
 
 def read_depth_rasters(
@@ -179,7 +179,7 @@ def _axes(
         seen.setdefault(place, file)
     for d, t in sorted({(d, t) for d in range(len(minutes)) for t in range(len(frequencies))} - set(seen)):
         problems.add(
-            item=f"{_TABLE} of {duration_words(minutes[d])}, {frequencies[t].label}",
+            item=f"{_TABLE} of {duration_text(minutes[d])}, {frequencies[t].label}",
             found="none",
             expected="a raster for every duration at every frequency",
             remedy="add it",
@@ -311,11 +311,11 @@ def _require_order(
         longer, rarer = d + (axis == 1), t + (axis == 2)
         value = depth_words(depth[c, longer, rarer], minutes[longer], unit)
         other = depth_words(depth[c, d, t], minutes[d], unit)
-        than = duration_words(minutes[d]) if axis == 1 else frequencies[t].label
+        than = duration_text(minutes[d]) if axis == 1 else frequencies[t].label
         problems.add(
             item="the rasters",
             found=f"{_cells(n)} of {len(cells):,} with {words}, the worst {cells[c]} at "
-            f"{duration_words(minutes[longer])}, {frequencies[rarer].label}: {value}, {100 * beyond[c, d, t]:.3g} % "
+            f"{duration_text(minutes[longer])}, {frequencies[rarer].label}: {value}, {100 * beyond[c, d, t]:.3g} % "
             f"{words.split()[0]} than the {other} of {than}",
             expected=expected,
             remedy="correct the rasters, or leave out a duration or frequency",

@@ -16,7 +16,7 @@ import pandas as pd
 from basinrain import ground
 from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, SERIES, Frequency
-from basinrain.designstorm.measures import DURATION_UNITS, INTENSITY_UNITS, duration_words, in_mm, parse_duration
+from basinrain.designstorm.measures import DURATION_UNITS, INTENSITY_UNITS, duration_text, in_mm, parse_duration
 from basinrain.designstorm.point_depths import PointDepths, report_faults
 from basinrain.errors import JobError, Problem, Problems, ReadError
 from basinrain.reading.columns import numbers
@@ -334,7 +334,7 @@ def _tabulated(entries: _Entries, rules: _Rules, problems: Problems) -> tuple[Fl
     for row in each_of(np.flatnonzero(again), problems):
         p, d, t = (int(axis[row]) for axis in place)
         problems.add(
-            item=f"point {entries.points[p]}, {duration_words(durations[d])}, {frequencies[t].label}",
+            item=f"point {entries.points[p]}, {duration_text(durations[d])}, {frequencies[t].label}",
             found=f"a depth again, first on line {lines[p, d, t]}",
             expected="each once",
             remedy="remove one of them",

@@ -10,7 +10,7 @@ import numpy as np
 import pandas as pd
 
 from basinrain.designstorm.areal_reduction.table import ReductionTable
-from basinrain.designstorm.measures import duration_words, parse_duration
+from basinrain.designstorm.measures import duration_text, parse_duration
 from basinrain.errors import JobError, Problems, ReadError
 from basinrain.reading.columns import find_column, numbers
 from basinrain.reading.delimited import DelimitedTable, read_delimited
@@ -85,7 +85,7 @@ def read_reduction_table(path: Path, *, area_unit: str, source: str) -> Reductio
     factor = np.full((len(areas), len(minutes)), np.nan)
 
     def words(a: int, d: int) -> str:
-        return f"{areas[a]:g} {area_unit}, {duration_words(minutes[d])}"
+        return f"{areas[a]:g} {area_unit}, {duration_text(minutes[d])}"
 
     for entry in entries:
         a, d = areas.index(entry.area), minutes.index(entry.minutes)

@@ -12,7 +12,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.depth_chain import Links
 from basinrain.designstorm.design_storms import PointOfInterest
-from basinrain.designstorm.rarity import duration_text
+from basinrain.designstorm.measures import duration_text
 from basinrain.jobfile.design_tables import NO_REDUCTION
 from basinrain.report import design_shown
 from basinrain.report.design_depths_figure import depths_picture
@@ -47,10 +47,11 @@ def chain_sentences(run: DesignRun) -> list[str]:
         sentences.append(
             "The depths are areal already: they were fitted to the means over each area, so that nothing is reduced."
         )
-    sentences.append(
-        f"Areal depth = {'depth from the record' if areal else 'point depth'} × interval factor × uplift"
-        f"{'' if areal else ' × areal reduction'}, each factor as it stands in the tables."
-    )
+    if _factored(run) or not areal:
+        sentences.append(
+            f"Areal depth = {'depth from the record' if areal else 'point depth'} × interval factor × uplift"
+            f"{'' if areal else ' × areal reduction'}, each factor as it stands in the tables."
+        )
     if not areal:
         sentences.append(
             "The point depth is the mean over the area above the point of interest of the depths at its points."
@@ -63,8 +64,13 @@ def chain_sentences(run: DesignRun) -> list[str]:
     if not areal and not reduces(run):
         none.append("areal reduction")
     if none:
-        sentences.append(f"The job asks for no {' and no '.join(none)}: 1 stands for {'it' if not none[1:] else 'them'}.")
+        stands = f": 1 stands for {'it' if len(none) == 1 else 'them'}" if _factored(run) or not areal else ""
+        sentences.append(f"The job asks for no {' and no '.join(none)}{stands}.")
     return sentences
+
+
+def _factored(run: DesignRun) -> bool:
+    return run.asked.design.depths.interval_factor is not None or run.asked.design.uplift is not None
 
 
 def chain_tables(run: DesignRun) -> list[Table]:
@@ -75,7 +81,7 @@ def chain_tables(run: DesignRun) -> list[Table]:
 
 
 def _table(run: DesignRun, point: PointOfInterest) -> Table:
-    areal, unit = run.sourced.source.areal, unit_word(run.depth_unit)
+    areal, unit, factored = run.sourced.source.areal, unit_word(run.depth_unit), _factored(run)
     shown = [(frequency, run.links[point.name, frequency]) for frequency in design_shown.frequencies(run)]
     places = [run.asked.minutes.index(minutes) for minutes in design_shown.durations(run)]
     more = _decimals_more([links for _, links in shown], places, run.depth_unit)
@@ -83,22 +89,18 @@ def _table(run: DesignRun, point: PointOfInterest) -> Table:
     for frequency, links in shown:
         for d in places:
             *factors, depth = _printed(links, d, run.depth_unit, more)
-            rows.append(
-                (
-                    frequency.label,
-                    duration_text(float(links.minutes[d])),
-                    *(factors[:-1] if areal else factors),
-                    depth,
-                )
-            )
+            links_shown = (factors[:-1] if factored else []) if areal else factors
+            rows.append((frequency.label, duration_text(float(links.minutes[d])), *links_shown, depth))
     size = area_text(float(run.areas.basins.areas[point.row]) / area_factor(run.area_unit))
-    heads = ("frequency", "duration", f"{'from the record' if areal else 'point depth'}, {unit}", "× interval factor")
-    heads += ("× uplift",) if areal else ("× uplift", "× areal reduction")
+    first = f"{'from the record' if areal else 'point depth'}, {unit}"
+    last = () if areal else ("× areal reduction",)
+    products = (first, "× interval factor", "× uplift", *last, "= ") if factored or not areal else ("",)
+    heads = ("frequency", "duration", *products[:-1], f"{products[-1]}areal depth, {unit}")
     return Table(
-        caption=f"{point.name}: from {'the record' if areal else 'point depth'} to areal depth over {size} "
+        caption=f"{point.name}: {'areal depth' if areal else 'from point depth to areal depth'} over {size} "
         f"{unit_text(run.area_unit)}",
-        heads=(*heads, f"= areal depth, {unit}"),
-        align="tn" + "n" * (len(heads) - 1),
+        heads=heads,
+        align="tn" + "n" * (len(heads) - 2),
         rows=rows,
     )
 
@@ -113,12 +115,17 @@ def _decimals_more(shown: Sequence[Links], places: Sequence[int], unit: str) -> 
 
 
 def _printed(links: Links, d: int, unit: str, more: int) -> list[str]:
-    """Return point depth, the three factors and the areal depth; a factor that does nothing is 1 without decimals."""
+    """Return point depth, the three factors and the areal depth; the uplift is as the job has it."""
     mm = depth_factor(unit)
-    factors = (float(links.interval_factor[d]), links.uplift, float(links.reduction[d]))
+    interval, reduction = (
+        "1" if factor == 1 else number_text(float(factor), _FACTOR + more)
+        for factor in (links.interval_factor[d], links.reduction[d])
+    )
     return [
         number_text(float(links.point[d]) / mm, depth_decimals(unit) + 1 + more),
-        *("1" if factor == 1 else number_text(factor, _FACTOR + more) for factor in factors),
+        interval,
+        f"{links.uplift:.12g}",
+        reduction,
         depth_text(float(links.areal[d]) / mm, unit),
     ]
 
@@ -166,4 +173,6 @@ def _with_words(run: DesignRun) -> list[str]:
     ]
     if not words or not reduces(run):
         return []
-    return [f"Point depths are drawn with {' and '.join(words)}, so that what lies between the curves is the reduction."]
+    return [
+        f"Point depths are drawn with {' and '.join(words)}, so that what lies between the curves is the reduction."
+    ]

@@ -16,10 +16,10 @@ from matplotlib.transforms import ScaledTranslation
 from scipy.optimize import isotonic_regression
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.measures import duration_text
 from basinrain.errors import DataError, Problem
 from basinrain.report.duration_axis import duration_axis
 from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
-from basinrain.report.series_names import length_text
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.units import depth_factor
 
@@ -101,7 +101,7 @@ def depths_picture(
     if not kinds:
         raise DataError(Problem(item=f"depths of {title}", found="none above 0", expected="depths by duration"))
     labels = [frequencies[row].label for row in rows]
-    words = [_duration_words(duration) for duration in minutes.tolist()]
+    words = [duration_text(duration) for duration in minutes.tolist()]
     about = inline(title, 60)
     caption = f"{title}: {' and '.join(kinds)} by duration and frequency, both axes logarithmic."
     if len(rows) < len(frequencies):
@@ -139,11 +139,6 @@ def depths_picture(
         heading = inline(f"Depths by duration and frequency, {title}")
         svg = to_svg(figure, name, heading, inline(f"{unit_word(depth_unit)}; {described}"))
     return Picture(name, caption, svg)
-
-
-def _duration_words(minutes: float) -> str:
-    whole = float(minutes).is_integer()
-    return length_text(np.timedelta64(int(minutes), "m")) if whole else f"{minutes:g} min"
 
 
 def _depth_axis(axes: Any, depths: list[Floats], unit: str) -> None:  # noqa: ANN401 - matplotlib's axes

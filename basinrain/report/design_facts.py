@@ -7,7 +7,7 @@ from typing import Final
 from basinrain.designstorm.areal_reduction import REDUCTIONS
 from basinrain.designstorm.design_storms import OWN_DEPTH
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM
-from basinrain.designstorm.rarity import duration_text
+from basinrain.designstorm.measures import duration_text
 from basinrain.jobfile.design_tables import EQUATION, NO_REDUCTION, RASTERS, RECORD, TABLE
 from basinrain.report import design_shown, overview
 from basinrain.report.provenance import ground_facts
@@ -145,4 +145,3 @@ def files_table(run: DesignRun) -> Table:
         ]
     rows.append(("record.json", "the job as resolved, all warnings and remarks, and the tables above"))
     return Table(caption="Files beside this page", heads=("file", "what it holds"), align="tt", rows=rows)
-

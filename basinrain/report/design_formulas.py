@@ -14,7 +14,7 @@ from basinrain.jobfile.design_tables import NO_REDUCTION, ArealReductionTable
 from basinrain.report.provenance import Formula
 from basinrain.results_design import DesignRun
 
-__all__ = ["chain_formulas", "record_formulas", "reduction_formula"]
+__all__ = ["chain_formulas", "record_formulas", "reduction_formula", "used_reduction"]
 
 _BY_DURATION: Final = Formula(
     "Between durations",
@@ -90,9 +90,9 @@ def reduction_formula(name: str, table: ArealReductionTable | None = None) -> Fo
         formula = Markup(
             "1 − (1 − exp(−{} <i>A</i>)) exp(−{} <i>t</i><sup>{}</sup>), <i>t</i> in hours, <i>A</i> in km²"
         ).format(c1, c2, c3)
-        return Formula(method.title, formula, table.source)
+        return Formula(name, formula, table.source)
     source = table.source if table is not None and name == "table" else method.source
-    return Formula(method.title, _REDUCTIONS[name], _evidenced(source, method.evidence))
+    return Formula(name, _REDUCTIONS[name], _evidenced(source, method.evidence))
 
 
 def record_formulas(run: DesignRun) -> list[Formula]:
@@ -106,8 +106,10 @@ def record_formulas(run: DesignRun) -> list[Formula]:
             "Hosking and Wallis (1997), Regional Frequency Analysis, appendix",
         ),
         Formula(
-            "Generalised extreme value",
-            Markup("<i>P</i> = ξ + α (1 − exp(−<i>κ y</i>)) / <i>κ</i>; with <i>κ</i> below 0 the upper tail is heavier"),
+            "GEV",
+            Markup(
+                "<i>P</i> = ξ + α (1 − exp(−<i>κ y</i>)) / <i>κ</i>; with <i>κ</i> below 0 the upper tail is heavier"
+            ),
             "Hosking and Wallis (1997), appendix",
         ),
         Formula(

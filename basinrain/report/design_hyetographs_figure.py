@@ -16,12 +16,11 @@ from matplotlib.patches import Patch
 from matplotlib.ticker import FixedLocator, FuncFormatter, MaxNLocator, MultipleLocator, PercentFormatter
 
 from basinrain.designstorm.exceedance import Frequency
-from basinrain.intervals import interval_of
+from basinrain.designstorm.measures import duration_text
 from basinrain.report.design_depths_figure import short_label
 from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.hyetograph_figure import binned
-from basinrain.report.series_names import length_text
-from basinrain.report.words import depth_text, inline, short_names, step_text, unit_word
+from basinrain.report.words import depth_text, inline, short_names, unit_word
 from basinrain.units import depth_factor
 
 if TYPE_CHECKING:
@@ -130,10 +129,10 @@ def _picture(storm: list[DesignHyetograph], unit: str, *, name: str, more: str) 
             panel.axes.text(0.5, 0.92, words, transform=panel.axes.transAxes, ha="center", va="top", fontsize=7)
     drawn = [one for one in storm if one.frequency in (rarest, *others)]
     top = max(float(_bars(one, b, mm)[0].max()) for one in drawn)
-    step = step_text(interval_of(60 * first.step).label)
+    step = duration_text(first.step)
     step = step if together == 1 else f"{together} × {step}"
     _dress(panels, top or 1.0, first.minutes / 60, f"{unit_word(unit)} in {step}")
-    duration = length_text(np.timedelta64(first.minutes, "m"))
+    duration = duration_text(first.minutes)
     _head(figure, f"{inline(first.point, 40)}, {duration}, {inline(whose, 40)}", rarest, others)
     caption = (
         f"{first.point}, {duration}: design hyetographs of {whose} by pattern; bars and their share of the total "

@@ -5,10 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Final
 
-from basinrain.design_asked import minutes_of
 from basinrain.designstorm.design_storms import PatternChoice
-from basinrain.designstorm.rarity import duration_text
-from basinrain.jobfile.design_tables import PatternTable
+from basinrain.designstorm.measures import duration_text
+from basinrain.jobfile.design_tables import PatternTable, minutes_of
 from basinrain.results_design import DesignRun
 
 __all__ = ["PatternFacts", "pattern_facts"]
@@ -52,9 +51,9 @@ def _facts(run: DesignRun, choice: PatternChoice, table: PatternTable) -> list[t
 def _options(choice: PatternChoice, table: PatternTable) -> str:
     """Return the options that were given, with what a file or a storm was taken for."""
     parts = [
-        f"{name} {str(value).lower() if isinstance(value, bool) else value}"
+        name if value is True else f"{name} {value}"
         for name, value in choice.options.items()
-        if name != "ordinates"
+        if name != "ordinates" and value is not False
     ]
     if table.file is not None:
         parts.append(f"of {table.file}")

@@ -8,8 +8,8 @@ import numpy as np
 
 from basinrain.designstorm.equations import EquationDepths
 from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.point_depths import PointDepths
-from basinrain.designstorm.rarity import duration_text
 from basinrain.report import design_shown
 from basinrain.report.table import Row, Table
 from basinrain.report.words import DASH, counted, depth_text, number_text, round_to_sum, unit_word
@@ -26,19 +26,21 @@ def point_sentences(run: DesignRun) -> list[str]:
     source, table = run.sourced.source, run.asked.design.depths
     n = len(source.points)
     first, last = source.frequencies[0], source.frequencies[-1]
-    sentences = [
-        f"{source.source}, dated {source.date}: {counted(n, 'point')}, {duration_text(source.shortest)} to "
-        f"{duration_text(source.longest)}, {first.label} to {last.label}."
-    ]
+    covers = f"{duration_text(source.shortest)} to {duration_text(source.longest)}, {first.label} to {last.label}"
+    sentences = [f"{source.source}, dated {source.date}: {counted(n, 'point')}, {covers}."]
     if isinstance(source, PointDepths):
         known = set(source.durations.tolist())
         between = [duration_text(m) for m in run.asked.minutes if float(m) not in known]
         often = [f.label for f in run.asked.frequencies if not _tabulated(f, source.frequencies)]
         if between or often:
             words = design_shown.cut([*between, *often], design_shown.AREAS)
-            sentences.append(f"Not tabulated, so interpolated{' or extrapolated' if table.extrapolate else ''}: {words}.")
+            sentences.append(
+                f"Not tabulated, so interpolated{' or extrapolated' if table.extrapolate else ''}: {words}."
+            )
         else:
-            sentences.append("All durations and frequencies asked for are tabulated: none of the depths is interpolated.")
+            sentences.append(
+                "All durations and frequencies asked for are tabulated: none of the depths is interpolated."
+            )
     elif isinstance(source, EquationDepths):
         sentences.append("Depths are the equation's intensity times the duration.")
     if n == 1:

@@ -6,7 +6,8 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
 
-from basinrain.designstorm.rarity import RarityRow, StormRarity, duration_text
+from basinrain.designstorm.measures import duration_text
+from basinrain.designstorm.rarity import RarityRow, StormRarity
 from basinrain.report import design_shown, limits
 from basinrain.report.figures import Picture
 from basinrain.report.rarity_figure import rarity_picture
@@ -29,7 +30,7 @@ class StormShown:
     storm
         Its name.
     sentences
-        What is said of this storm alone.
+        What is said of this storm; of several storms what is said of it alone.
     picture
         Its figure; None where there is nothing to draw.
     tables
@@ -56,35 +57,32 @@ def rarity_facts(run: DesignRun) -> list[tuple[str, str]]:
     ]
     if "method" in infill:
         lines.append(("Infill", f"{infill['method']}{f' at the scale of the {scale}' if scale else ''}"))
-    uplift = ", without the uplift: a storm that has fallen is of the climate that they are of"
-    lines.append(
-        ("Compared with", f"the depths of the design{uplift if run.asked.design.uplift is not None else ''}")
-    )
+    uplift = " without the uplift, which is for a climate to come"
+    lines.append(("Compared with", f"the depths of the design{uplift if run.asked.design.uplift is not None else ''}"))
     return lines
 
 
 def rarity_meaning(run: DesignRun) -> list[str]:
-    """Return what is true of all storms that are compared: what a probability means, and what it does not."""
-    if not run.rarities:
+    """Return what is said of every one of several storms, so that it stands once: what a probability means.
+
+    The first sentence of a storm says which of its depths was the rarest, and stays with it.
+    """
+    if len(run.rarities) < 2:
         return []
-    return [text for text in run.rarities[0].sentences if all(text in found.sentences for found in run.rarities)]
+    every = [found.sentences[1:] for found in run.rarities]
+    return [text for text in every[0] if all(text in sentences for sentences in every)]
 
 
 def rarity_shown(run: DesignRun) -> list[StormShown]:
     """Return what is shown of the first storms."""
     common = rarity_meaning(run)
-    single = len(run.rarities) == 1
     shown = []
     for number, found in enumerate(run.rarities[: limits.STORMS], start=1):
-        # Of one storm nothing tells apart what is true of all: its own are those on what was found and searched.
-        own = found.sentences[:_own(found)] if single else [text for text in found.sentences if text not in common]
         shown.append(
             StormShown(
                 storm=found.storm,
-                sentences=tuple(own),
-                picture=rarity_picture(
-                    found, _area(run, found), depth_unit=run.depth_unit, name=f"rarity-{number}"
-                ),
+                sentences=tuple(text for text in found.sentences if text not in common),
+                picture=rarity_picture(found, _area(run, found), depth_unit=run.depth_unit, name=f"rarity-{number}"),
                 tables=_tables(run, found),
             )
         )
@@ -98,7 +96,7 @@ def _area(run: DesignRun, found: StormRarity) -> str:
 
 
 def _tables(run: DesignRun, found: StormRarity) -> tuple[Table, ...]:
-    shown, more = _shown(run, found)
+    shown, more = _shown(found)
     unit = unit_word(run.depth_unit)
     clock = any(row.aligned == row.aligned for row in found.rows)
     tables = [
@@ -148,7 +146,7 @@ def _row(run: DesignRun, row: RarityRow, *, clock: bool) -> Row:
     )
 
 
-def _shown(run: DesignRun, found: StormRarity) -> tuple[list[RarityRow], int]:
+def _shown(found: StormRarity) -> tuple[list[RarityRow], int]:
     """Return the rows of points of interest and of the first basins, and how many areas are left out."""
     areas = list(dict.fromkeys(row.place for row in found.rows))
     most = max(1, _ROWS // max(1, sum(row.place == areas[0] for row in found.rows))) if areas else 0
@@ -159,11 +157,9 @@ def _shown(run: DesignRun, found: StormRarity) -> tuple[list[RarityRow], int]:
 
 def _remarks(rows: Sequence[RarityRow]) -> tuple[str, ...]:
     """Return what is remarked of durations, each once."""
-    remarks = dict.fromkeys((duration_text(row.minutes), row.remark) for row in rows if row.remark)
+    remarks = list(dict.fromkeys((duration_text(row.minutes), row.remark) for row in rows if row.remark))
     if not remarks:
         return ()
-    return (f"* {'; '.join(f'{duration}: {remark}' for duration, remark in remarks)}.",)
-
-
-def _own(found: StormRarity) -> int:
-    return 2
+    # They differ by the number of steps only: the first and the last tell the others.
+    told = "; ".join(f"{duration}: {remark}" for duration, remark in design_shown.spread(remarks, 2))
+    return (f"* {told}.", *(("The remarks between are in storm_rarity.csv.",) if remarks[2:] else ()))

@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from typing import Final
 
 import numpy as np
+import numpy.typing as npt
 
+from basinrain.clocks import MONTHS
 from basinrain.design_record import SEASON_SHARE, RecordSource
 from basinrain.designstorm.extreme_values import GEV
-from basinrain.designstorm.rarity import duration_text
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.record_remarks import TITLES
 from basinrain.report import design_shown
 from basinrain.report.table import Row, Table
@@ -26,7 +27,8 @@ from basinrain.units import depth_factor
 
 __all__ = ["depths_tables", "durations_drawn", "fit_tables", "maxima_table", "record_facts"]
 
-_MONTHS: Final = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
+Floats = npt.NDArray[np.float64]
+
 _SHORT: Final = {"gumbel": "Gumbel", "gev": "GEV"}
 _GAUGES: Final = 40
 _YEARS: Final = 60
@@ -43,11 +45,11 @@ def record_facts(run: DesignRun) -> list[tuple[str, str]]:
     counting = (record.season_share >= SEASON_SHARE).sum(axis=0)
     least, most = int(counting.min()), int(counting.max())
     months = table.wet_season
-    season = f"the months {', '.join(_MONTHS[m - 1] for m in months)}" if months else "the whole year"
+    season = f"the months {', '.join(MONTHS[m - 1].capitalize() for m in months)}" if months else "the whole year"
     years = f"{least}" if least == most else f"{least} to {most}, by area"
     short = _short_years(record)
     span = f"{record.years[0]} to {record.years[-1]}"
-    lines = [
+    return [
         ("Gauges", f"{design_shown.cut(record.gauges, _GAUGES)}; the same ones with the same weights at every step"),
         ("Average", f"{table.average}; gaps infilled by {_infill(run)}"),
         ("Record's step", duration_text(record.step)),
@@ -57,7 +59,6 @@ def record_facts(run: DesignRun) -> list[tuple[str, str]]:
         ("Distribution", f"{TITLES[found.distribution]}, {_why(run, found.distribution)}, fitted by L-moments"),
         ("Reach", _reach(run, least)),
     ]
-    return lines
 
 
 def _infill(run: DesignRun) -> str:
@@ -154,8 +155,8 @@ def _fits(run: DesignRun, record: RecordSource, row: int) -> Table:
         align="ttnnnnnnn",
         rows=rows,
         notes=(
-            "Correlation: of the probability plot, 1 where it is a straight line. A small p-value speaks against the "
-            "distribution; a large one does not prove it.",
+            "Correlation: of the probability plot, 1 where it is a straight line.",
+            "A small p-value speaks against the distribution; a large one does not prove it.",
             "GEV: generalised extreme value. Every area is in record_fits.csv.",
         ),
     )
@@ -191,8 +192,8 @@ def _depths(run: DesignRun, record: RecordSource, row: int) -> Table:
         align="t" + "n" * (2 * len(at)),
         rows=rows,
         notes=(
-            "The interval tells how far a record of this length may lead astray if the distribution is right, and "
-            "nothing of what a wrong one adds.",
+            "The interval tells how far a record of this length may lead astray if the distribution is right.",
+            "It tells nothing of what a wrong distribution adds.",
             *((f"{counted(left, 'more frequency is', 'more frequencies are')} in record_fits.csv.",) if left else ()),
         ),
     )
@@ -225,10 +226,10 @@ def maxima_table(run: DesignRun) -> Table | None:
     )
 
 
-def _cells(run: DesignRun, depths: Sequence[float]) -> list[str]:
-    return [depth_text(float(depth), run.depth_unit) for depth in depths]
+def _cells(run: DesignRun, depths: Floats) -> list[str]:
+    return [depth_text(float(depth), run.depth_unit) for depth in depths.tolist()]
 
 
 def _year_words(run: DesignRun) -> str:
     first = int(run.settings.get("series", {}).get("water_year", 1))
-    return "it is" if first == 1 else f"it ends in, since it begins with {_MONTHS[first - 1]}"
+    return "it is" if first == 1 else f"it ends in, since it begins with {MONTHS[first - 1].capitalize()}"

@@ -4,12 +4,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from typing import Any, Final
 
-from basinrain.design_asked import minutes_of
 from basinrain.designstorm.areal_reduction import REDUCTIONS, ExponentialCoefficients, Limits
-from basinrain.designstorm.areal_reduction.limits import area_words, between_words, duration_words
-from basinrain.designstorm.exceedance import Frequency
-from basinrain.designstorm.rarity import duration_text
+from basinrain.designstorm.areal_reduction.limits import area_words, between_words
+from basinrain.designstorm.measures import duration_text
+from basinrain.jobfile.design_tables import minutes_of
 from basinrain.report import design_shown
 from basinrain.report.design_chain_list import reduces
 from basinrain.report.table import Row, Table
@@ -19,7 +19,7 @@ from basinrain.units import area_factor
 
 __all__ = ["compared_tables", "reduction_facts"]
 
-_DECIMALS = 4
+_DECIMALS: Final = 4
 
 
 def reduction_facts(run: DesignRun) -> list[tuple[str, str]]:
@@ -32,10 +32,11 @@ def reduction_facts(run: DesignRun) -> list[tuple[str, str]]:
     lines = [("Method", method.title), ("For", where)]
     if table.region is not None:
         lines.append(("Region", table.region))
-    own = method.jurisdiction == ()
+    own = not method.jurisdiction
+    seen = "the job's own values, not checked" if own else "the source, or a copy of it, was seen"
     lines += [
         ("Source", table.source if own else method.source),
-        ("Evidence", method.evidence or ("the job's own" if own else "seen in the source or in copies of it")),
+        ("Evidence", method.evidence or seen),
         ("Range", _range(run)),
         ("Area that decides", _area(run)),
         (
@@ -55,7 +56,7 @@ def _range(run: DesignRun) -> str:
     method = REDUCTIONS[table.method]
     if table.method == "table":
         return f"the durations and areas of {table.file}"
-    options = {}
+    options: dict[str, Any] = {}
     if table.method == "exponential":
         factor = area_factor(table.area_unit or "km2")
         options["coefficients"] = ExponentialCoefficients(
@@ -77,9 +78,9 @@ def range_words(limits: Limits) -> str:
     Examples
     --------
     >>> range_words(Limits(minutes=(30, 1440), smallest_area=1e7, largest_areas=((0, 1e9),)))
-    'durations 0.5 to 24 h; areas 10 to 1000 km²'
+    'durations 30 min to 24 h; areas 10 to 1000 km²'
     >>> range_words(Limits(minutes=(1, 10080), largest_areas=((0, 1e9), (1440, 3e10)), aep=(0.0005, 0.5)))
-    'durations 1 min to 168 h; areas up to 1000 km² below 24 h, else up to 30000 km²; AEP 0.0005 to 0.5'
+    'durations 1 min to 7 days; areas up to 1000 km² below 24 h, else up to 30000 km²; AEP 0.0005 to 0.5'
     >>> range_words(Limits())
     'durations: none is stated; areas: none is stated'
     """
@@ -87,9 +88,9 @@ def range_words(limits: Limits) -> str:
     if low == 0 and math.isinf(high):
         words = ["durations: none is stated"]
     elif math.isinf(high):
-        words = [f"durations from {duration_words(low)}"]
+        words = [f"durations from {duration_text(low)}"]
     else:
-        words = [f"durations {between_words(duration_words(low), duration_words(high))}"]
+        words = [f"durations {between_words(duration_text(low), duration_text(high))}"]
     largest = [area for _, area in limits.largest_areas]
     parts = []
     for k, area in enumerate(largest):
@@ -111,8 +112,8 @@ def _area(run: DesignRun) -> str:
     table = run.asked.design.areal_reduction
     if table is not None and table.area == "own":
         return (
-            "for the areal depth to a point of interest that of all basins above it as one; for each basin's hyetograph "
-            "its own, since the job says so"
+            "for the areal depth to a point of interest that of all basins above it as one; for the hyetograph of each "
+            "basin its own, since the job says so"
         )
     m2 = area_factor(run.area_unit)
     points = [

@@ -11,8 +11,8 @@ import numpy.typing as npt
 
 from basinrain.designstorm.design_storms import DesignStorm, PointOfInterest
 from basinrain.designstorm.exceedance import Frequency
-from basinrain.designstorm.rarity import duration_text
-from basinrain.report import design_shown, limits
+from basinrain.designstorm.measures import duration_text
+from basinrain.report import design_shown
 from basinrain.report.table import Row, Table
 from basinrain.report.words import (
     DASH,
@@ -33,6 +33,8 @@ __all__ = ["depth_tables", "hyetograph_tables", "peak_tables"]
 _COLUMNS: Final = 8
 _PATTERNS: Final = 6
 _ROWS: Final = 48
+_STEPS: Final = 36
+"""Longest hyetograph printed as a table."""
 
 Key = tuple[str, Frequency, int, str]
 
@@ -97,17 +99,17 @@ def _depths(storms: _Storms, point: PointOfInterest) -> Table:
             continue
         totals = np.array([storm.totals / mm for storm in found if storm is not None])
         reduction = [number_text(float(rarest.reduction[b]), 4) for b in _basins(rarest)] if own_area else []
-        for b in _basins(rarest):
-            rows.append(
-                (
-                    duration_text(minutes),
-                    point.basins[b],
-                    area_text(float(areas[b]) / m2),
-                    *reduction[b : b + 1],
-                    *(depth_text(float(depth), run.depth_unit) for depth in totals[:, b]),
-                    volume_text(float(rarest.totals[b]) / 1000 * float(areas[b]) / per),
-                )
+        rows += [
+            (
+                duration_text(minutes),
+                point.basins[b],
+                area_text(float(areas[b]) / m2),
+                *reduction[b : b + 1],
+                *(depth_text(float(depth), run.depth_unit) for depth in totals[:, b]),
+                volume_text(float(rarest.totals[b]) / 1000 * float(areas[b]) / per),
             )
+            for b in _basins(rarest)
+        ]
         if point.apart and len(point.basins) > 1:
             rows.append(
                 (
@@ -122,8 +124,8 @@ def _depths(storms: _Storms, point: PointOfInterest) -> Table:
     notes = []
     if point.apart and len(point.basins) > 1:
         notes.append(
-            "The mean by area is more than the areal depth to the point of interest, since each basin is reduced by its "
-            "own area."
+            "The mean by area is more than the areal depth to the point of interest: each basin is reduced by its own "
+            "area."
             if own_area
             else "The mean by area is the areal depth to the point of interest in section 1."
         )
@@ -132,7 +134,11 @@ def _depths(storms: _Storms, point: PointOfInterest) -> Table:
     return Table(
         caption=f"{point.name}: depth of the basins by duration and frequency",
         heads=heads,
-        over=(("", len(lead)), (f"depth, {unit_word(run.depth_unit)}", len(often)), (f"volume, {unit_text(volume_unit)}", 1)),
+        over=(
+            ("", len(lead)),
+            (f"depth, {unit_word(run.depth_unit)}", len(often)),
+            (f"volume, {unit_text(volume_unit)}", 1),
+        ),
         align="tt" + "n" * (len(heads) - 2),
         rows=rows,
         notes=(*notes, *_more_basins(point, "design_storms.csv")),
@@ -210,7 +216,7 @@ def hyetograph_tables(run: DesignRun) -> list[Table]:
     storms = _Storms(run)
     tables = []
     for point in design_shown.points(run):
-        short = [minutes for minutes in run.asked.minutes if minutes // run.asked.step <= limits.STEPS]
+        short = [minutes for minutes in run.asked.minutes if minutes // run.asked.step <= _STEPS]
         for minutes in reversed(short):
             found = [storms.one(point, storms.rarest, minutes, pattern) for pattern in storms.patterns]
             kept = [storm for storm in found if storm is not None]
@@ -231,7 +237,9 @@ def _hyetographs(run: DesignRun, storms: Sequence[DesignStorm]) -> Table:
     printed = [depth_texts(column, run.depth_unit) for column in columns]
     names = [first.point.basins[b] for b in basins]
     one = len(basins) == 1
-    whose = f" of {'every basin above it' if alike and len(first.point.basins) > 1 else f'basin {names[0]}'}" if one else ""
+    whose = (
+        f" of {'every basin above it' if alike and len(first.point.basins) > 1 else f'basin {names[0]}'}" if one else ""
+    )
     notes = ["What is printed sums to the printed total."]
     if not alike and one and len(first.point.basins) > 1:
         notes.append(f"Of {counted(len(first.point.basins), 'basin')} it has the greatest depth.")

@@ -17,7 +17,7 @@ from basinrain.design_record import RecordSource
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.extreme_values import GEV
 from basinrain.designstorm.goodness import plotting_variates
-from basinrain.designstorm.rarity import duration_text
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.record_remarks import TITLES
 from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.words import depth_text, inline, unit_word
@@ -28,12 +28,12 @@ __all__ = ["MOST_PANELS", "frequency_picture"]
 MOST_PANELS: Final = 3
 """Durations that stand side by side."""
 
-_HEIGHT, _LEFT, _RIGHT, _FOOT, _HEAD, _GAP = 3.0, 0.5, 0.12, 0.46, 0.72, 0.42  # inches
+_HEIGHT, _LEFT, _RIGHT, _FOOT, _HEAD, _GAP = 3.0, 0.5, 0.12, 0.46, 0.62, 0.42  # inches
 _WIDEST: Final = 3.6
-_YEARS: Final = (1.01, 1.25, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0, 200.0, 500.0, 1000.0)
-_APART: Final = 24.0  # points between two labels of return periods
+_YEARS: Final = (1.01, 1.2, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0, 200.0, 500.0, 1000.0)
+_LETTER: Final = 4.2  # points that a letter of a tick's label takes
 _BAND: Final = "#dcdfe2"
-_MARK: Final[dict[str, Any]] = {"marker": "o", "markersize": 4.2, "markerfacecolor": "white", "markeredgewidth": 0.8}
+_MARK: Final[dict[str, Any]] = {"marker": "o", "markersize": 3.6, "markerfacecolor": "white", "markeredgewidth": 0.7}
 
 Floats = npt.NDArray[np.float64]
 
@@ -167,11 +167,12 @@ def _dress(axes: Any, panel: _Panel, width: float) -> None:  # noqa: ANN401 - ma
     drawn = np.concatenate([*panel.lines.values(), panel.ranked, panel.lower, panel.upper])
     least = float(drawn.min())
     axes.set_ylim(min(0.0, least), float(drawn.max()) * 1.06)
-    years, places = [], []
+    years: list[float] = []
+    places: list[float] = []
     for each in _YEARS:
         y = Frequency(each, ANNUAL_MAXIMUM).variate
-        room = not places or (y - places[-1]) / (high - low) * width * 72 >= _APART
-        if low <= y <= high and room:
+        wide = _LETTER * (len(f"{each:g}") + len(f"{years[-1]:g}") + 1) / 2 if years else 0.0
+        if low <= y <= high and (not places or (y - places[-1]) / (high - low) * width * 72 >= wide):
             years.append(each)
             places.append(y)
     labels = dict(zip(places, years, strict=True))
@@ -181,7 +182,7 @@ def _dress(axes: Any, panel: _Panel, width: float) -> None:  # noqa: ANN401 - ma
     axes.yaxis.set_major_locator(MaxNLocator(5))
     axes.set_axisbelow(True)
     axes.grid(axis="both")
-    axes.set_xlabel("1 in ... years")
+    axes.set_xlabel("return period, years")
     for side in ("top", "right"):
         axes.spines[side].set_visible(False)
 
@@ -191,9 +192,9 @@ def _described(panels: Sequence[_Panel], taken: str, depth_unit: str) -> str:
     for panel in panels:
         rarest = float(panel.lower[-1]), float(panel.upper[-1])
         low, high = (depth_text(end, depth_unit) for end in rarest)
+        least, most = (depth_text(float(panel.ranked[k]), depth_unit) for k in (0, -1))
         parts.append(
-            f"{panel.title}: {len(panel.ranked)} annual maxima from {depth_text(float(panel.ranked[0]), depth_unit)} to "
-            f"{depth_text(float(panel.ranked[-1]), depth_unit)}; at the rarest frequency the 90 % interval of "
-            f"{_word(taken)} is {low} to {high}"
+            f"{panel.title}: {len(panel.ranked)} annual maxima from {least} to {most}; at the rarest "
+            f"frequency the 90 % interval of {_word(taken)} is {low} to {high}"
         )
     return f"{unit_word(depth_unit)}; {'; '.join(parts)}"

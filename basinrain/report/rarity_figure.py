@@ -16,7 +16,8 @@ from scipy.optimize import isotonic_regression
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.found_frequency import odds
-from basinrain.designstorm.rarity import RarityRow, StormDepths, StormRarity, duration_text
+from basinrain.designstorm.measures import duration_text
+from basinrain.designstorm.rarity import RarityRow, StormDepths, StormRarity
 from basinrain.report.figures import HALO, INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.units import depth_factor

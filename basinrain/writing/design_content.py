@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
-from basinrain.designstorm.measures import duration_words
+from basinrain.designstorm.measures import duration_text, duration_words
 from basinrain.errors import DataError, Problems
 from basinrain.units import area_factor, depth_factor
 
@@ -57,7 +57,7 @@ class DesignHyetograph:
     ...     depth=np.array([[25.0], [15.0]]),
     ... )
     >>> storm.name
-    'bridge, AEP 0.01 (1 in 100), 2h, triangular'
+    'bridge, AEP 0.01 (1 in 100), 2 h, triangular'
     >>> storm.elapsed, storm.totals
     (array([ 60, 120]), array([40.]))
     """
@@ -120,7 +120,7 @@ class DesignHyetograph:
     @property
     def name(self) -> str:
         """What tells it from the others, in words."""
-        return f"{self.point}, {self.frequency.label}, {self.duration}, {self.pattern}"
+        return f"{self.point}, {self.frequency.label}, {duration_text(self.minutes)}, {self.pattern}"
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)

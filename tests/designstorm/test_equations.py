@@ -204,11 +204,11 @@ def test_depth_grows_and_intensity_falls_or_it_is_refused(
 @pytest.mark.parametrize(
     ("minutes", "years", "message"),
     [
-        (4.0, 10.0, "duration 4min: found that the depths are of 5min to 24h; expected a duration within them; give "),
+        (4.0, 10.0, "duration 4 min: found that the depths are of 5 min to 24 h; expected a duration within them; "),
         (
             2880.0,
             10.0,
-            "duration 48h: found that the depths are of 5min to 24h; expected a duration within them; give ",
+            "duration 48 h: found that the depths are of 5 min to 24 h; expected a duration within them; give ",
         ),
         (60.0, 11.0, "AEP 0.09091 (1 in 11): found that the depths are of AEP 0.5 (1 in 2) to AEP 0.1 (1 in 10); "),
         (60.0, 1.9, "AEP 0.5263 (1 in 1.9): found that the depths are of AEP 0.5 (1 in 2) to AEP 0.1 (1 in 10); "),
@@ -273,18 +273,18 @@ def test_another_series() -> None:
         ("talbot", [{"a": 0.0, "b": 0.0}], {}, "coefficients.a: found 0; expected a number above 0"),
         ("talbot", [{"a": 1.0, "b": math.nan}], {}, "coefficients.b: found nan; expected a finite number"),
         ("general", [{"c": 1.0, "e": 0.5, "f": -10.0}], {},
-         "coefficients: found that i = c / (t^e + f) has no value above 0 at 5min; expected intensities above 0"),
-        ("talbot", [{"a": 1.0, "b": -5.0}], {}, "coefficients: found that i = a / (t + b) has no value above 0 at 5m"),
+         "coefficients: found that i = c / (t^e + f) has no value above 0 at 5 min; expected intensities above 0"),
+        ("talbot", [{"a": 1.0, "b": -5.0}], {}, "coefficients: found that i = a / (t + b) has no value above 0 at 5 "),
         ("talbot", [{"a": 1.0, "b": -4.0}], {},
-         "coefficients: found that by i = a / (t + b) depth falls with duration from 5min to 24h; expected depth that"),
+         "coefficients: found that by i = a / (t + b) depth falls with duration from 5 min to 24 h; expected depth"),
         ("sherman", [{"k": 1.0, "b": 40.0, "n": 1.2}], {},
-         "coefficients: found that by i = k T^x / (t + b)^n depth falls with duration from 200min to 24h; expected"),
+         "coefficients: found that by i = k T^x / (t + b)^n depth falls with duration from 200 min to 24 h; expected"),
         ("bernard", [{"k": 1.0, "n": -0.1}], {},
-         "coefficients: found that by i = k T^x / t^n intensity rises with duration from 5min to 24h; expected depth"),
+         "coefficients: found that by i = k T^x / t^n intensity rises with duration from 5 min to 24 h; expected"),
         ("bernard", [{"k": 1.0, "x": -0.1, "n": 0.5}], {},
          "coefficients.x: found -0.1, by which depth falls with rarity; expected 0 or more"),
         ("talbot", [{"a": 20.0, "b": 9.0}, {"a": 30.0, "b": -9.0}], {"return_periods": TWO},
-         "coefficients of AEP 0.1 (1 in 10): found that i = a / (t + b) has no value above 0 at 5min"),
+         "coefficients of AEP 0.1 (1 in 10): found that i = a / (t + b) has no value above 0 at 5 min"),
     ],
 )  # fmt: skip
 def test_equations_that_cannot_be(name: str, sets: list[dict[str, float]], other: dict[str, Any], message: str) -> None:
@@ -312,7 +312,7 @@ def test_return_periods_that_cannot_be(sets: list[dict[str, float]], periods: li
 def test_curves_that_cross() -> None:
     """20/(t + 9) and 19/(t + 8) cross at t = 11: the first duration after it, of those looked at, is named."""
     sets = ({"a": 20.0, "b": 9.0}, {"a": 19.0, "b": 8.0})
-    with pytest.raises(JobError, match=r"mm/h\) of 11\.\d+min, less than .* of AEP 0\.5 \(1 in 2\); expected a depth"):
+    with pytest.raises(JobError, match=r"mm/h\) of 11\.\d+ min, less than .* of AEP 0\.5 \(1 in 2\); expected a depth"):
         equation("talbot", *sets, return_periods=[2.0, 10.0])
 
 
@@ -333,7 +333,7 @@ def test_everything_wrong_is_said_at_once() -> None:
 
 def test_coefficients_out_of_all_bounds() -> None:
     """Powers that a computer cannot hold are refused, not passed on as zero."""
-    with pytest.raises(JobError, match=r"has no value above 0 at 5min; expected intensities above 0 at every valid"):
+    with pytest.raises(JobError, match=r"has no value above 0 at 5 min; expected intensities above 0 at every valid"):
         equation("general", {"c": 1.0, "e": 1000.0, "f": 1.0})
     with pytest.raises(
         JobError, match=r"coefficients\.x: found 1000, by which depth has no bounds; expected 0 or more"

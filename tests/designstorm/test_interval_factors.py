@@ -68,16 +68,16 @@ def test_durations_below_the_interval() -> None:
     with pytest.raises(MethodError) as caught:
         interval_factor("weiss", np.array([30.0, 60.0, 45.0]), 60.0)
     assert str(caught.value).splitlines() == [
-        f"[design.depths] interval_factor 'weiss': found a duration of {words} intervals of 1h; expected one interval "
+        f"[design.depths] interval_factor 'weiss': found a duration of {words} intervals of 1 h; expected one interval "
         "or more; leave the duration out, or the factor"
-        for words in ("30min, 0.5", "45min, 0.75")
+        for words in ("30 min, 0.5", "45 min, 0.75")
     ]
 
 
 @pytest.mark.parametrize("minutes", [90.0, 30.0, 1500.0])
 def test_rounded_factors_end(minutes: float) -> None:
     """The rounded factors are for whole numbers of intervals, 1 to 24."""
-    with pytest.raises(MethodError, match=r"intervals of 1h; expected a whole number of intervals, 1 to 24; leave"):
+    with pytest.raises(MethodError, match=r"intervals of 1 h; expected a whole number of intervals, 1 to 24; leave"):
         interval_factor("hershfield", np.array([minutes]), 60.0)
 
 

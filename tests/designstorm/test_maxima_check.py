@@ -38,8 +38,8 @@ def test_all_problems_of_maxima_together() -> None:
         "years: found 2002 after 2003; expected each once, rising",
         "durations: found 60 after 720; expected each once, rising",
         "area Quill: found the id twice; expected each area once",
-        "area Quill, 12h, 2003: found -3 mm; expected a finite depth of 0 or more, or none",
-        "area Quill, 1h, 2002: found inf mm; expected a finite depth of 0 or more, or none",
+        "area Quill, 12 h, 2003: found -3 mm; expected a finite depth of 0 or more, or none",
+        "area Quill, 1 h, 2002: found inf mm; expected a finite depth of 0 or more, or none",
     ]
 
 
@@ -68,14 +68,14 @@ def test_series_that_no_distribution_fits() -> None:
         problems.raise_as(MethodError)
     short, equal, lone = str(caught.value).splitlines()
     assert short == (
-        "area Quill, 1h: found 9 years with an annual maximum; expected 10 at least; take a longer record, or depths "
+        "area Quill, 1 h: found 9 years with an annual maximum; expected 10 at least; take a longer record, or depths "
         "of a table"
     )
     assert equal == (
-        "area Quill, 12h: found annual maxima that are all 7 mm; expected maxima that differ; look at the record"
+        "area Quill, 12 h: found annual maxima that are all 7 mm; expected maxima that differ; look at the record"
     )
     assert lone == (
-        "area Reed, 12h: found annual maxima of which all but one are equal; expected maxima that differ, to fit a "
+        "area Reed, 12 h: found annual maxima of which all but one are equal; expected maxima that differ, to fit a "
         'shape to; look at the record, or write distribution = "gumbel"'
     )
     fewer = Problems()
@@ -93,7 +93,7 @@ def test_twice_the_years_of_the_shortest_series_is_the_reach() -> None:
     check_asked(asked, moments, MINUTES, ["Quill"], problems, beyond_record=False)
     with pytest.raises(
         MethodError,
-        match=r"^AEP 0\.02857 \(1 in 35\): found a return period of over 2 times the 17 years of area Quill, 12h; "
+        match=r"^AEP 0\.02857 \(1 in 35\): found a return period of over 2 times the 17 years of area Quill, 12 h; "
         r"expected 34 years at most; ask for a less rare one, or allow it with beyond_record = true$",
     ):
         problems.raise_as(MethodError)
@@ -138,7 +138,7 @@ def test_depths_not_above_zero_are_refused() -> None:
     depth[0, 0, 0] = -1.25
     with pytest.raises(
         MethodError,
-        match=r"^area Quill, 1h, AEP 0\.5 \(1 in 2\): found -1\.25 mm from the fitted distribution; expected a depth "
+        match=r"^area Quill, 1 h, AEP 0\.5 \(1 in 2\): found -1\.25 mm from the fitted distribution; expected a depth "
         r"above 0; ask for a rarer frequency",
     ):
         check_depths(depth, MINUTES, ["Quill"], [annual(2), annual(10)])

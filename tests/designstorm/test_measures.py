@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from basinrain.designstorm.measures import UNITS, depth_words, duration_words, in_mm, parse_duration
+from basinrain.designstorm.measures import UNITS, depth_words, duration_text, duration_words, in_mm, parse_duration
 from basinrain.errors import JobError
 
 
@@ -55,6 +55,13 @@ def test_words_of_durations() -> None:
     minutes = (0.5, 7.5, 60.0, 90.0, 2880.0, 4320.0, 4380.0, 5760.0)
     words = ["0.5min", "7.5min", "1h", "90min", "48h", "72h", "73h", "4d"]
     assert [duration_words(length) for length in minutes] == words
+    texts = ["0.5 min", "7.5 min", "1 h", "90 min", "48 h", "72 h", "73 h", "4 days"]
+    assert [duration_text(length) for length in minutes] == texts
+
+
+def test_words_of_what_is_no_duration() -> None:
+    """Messages name a length of zero, a negative one and NaN in minutes."""
+    assert [duration_text(length) for length in (0.0, -5.0, float("nan"))] == ["0 min", "-5 min", "nan min"]
 
 
 @pytest.mark.parametrize("unit", UNITS)

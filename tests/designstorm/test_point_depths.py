@@ -186,8 +186,8 @@ def test_equal_depths_and_equal_intensities_are_accepted() -> None:
 @pytest.mark.parametrize(
     ("minutes", "years", "extrapolate", "message"),
     [
-        (30.0, 5.0, False, r"^duration 30min: found that the depths are of 1h to 4h; expected a duration within"),
-        (300.0, 5.0, False, r"^duration 5h: found that the depths are of 1h to 4h; .* extrapolate = true$"),
+        (30.0, 5.0, False, r"^duration 30 min: found that the depths are of 1 h to 4 h; expected a duration within"),
+        (300.0, 5.0, False, r"^duration 5 h: found that the depths are of 1 h to 4 h; .* extrapolate = true$"),
         (60.0, 1.5, False, r"^AEP 0\.6667 \(1 in 1\.5\): found that the depths are of AEP 0\.5 \(1 in 2\) to AEP 0\.1"),
         (60.0, 11.0, False, r"^AEP 0\.09091 .* expected a frequency within them; give .* extrapolate = true$"),
         (0.0, 5.0, True, r"^duration: found 0 minutes; expected more than 0 and finite$"),
@@ -205,7 +205,7 @@ def test_outside(minutes: float, years: float, extrapolate: bool, message: str) 
 
 def test_everything_outside_is_said_at_once() -> None:
     """Two durations and the frequency outside: three lines."""
-    with pytest.raises(MethodError, match=r"duration 10min.*\n.*duration 24h.*\n.*AEP 0\.01 \(1 in 100\)") as caught:
+    with pytest.raises(MethodError, match=r"duration 10 min.*\n.*duration 24 h.*\n.*AEP 0\.01 \(1 in 100\)") as caught:
         table([[30.0, 45.0], [60.0, 90.0]]).at(np.array([10.0, 60.0, 1440.0]), annual(100.0))
     assert len(caught.value.problems) == 3
 
@@ -234,7 +234,7 @@ def test_one_duration_or_frequency_has_no_segment_to_go_on() -> None:
     with pytest.raises(MethodError) as caught:
         depths.at(np.array([120.0]), annual(10.0), extrapolate=True)
     assert [problem.found for problem in caught.value.problems] == [
-        "that the depths have only 1h",
+        "that the depths have only 1 h",
         "that the depths have only AEP 0.5 (1 in 2)",
     ]
     assert [problem.remedy for problem in caught.value.problems] == [
@@ -246,9 +246,9 @@ def test_one_duration_or_frequency_has_no_segment_to_go_on() -> None:
 @pytest.mark.parametrize(
     ("depth", "years", "message"),
     [
-        ([[10.0, 40.0], [20.0, 60.0]], 1.05, r"^point P1, 1h, AEP 0\.9524 .*: found -.* by extrapolation; "),
-        ([[10.0, 39.0], [20.0, 40.0]], 100.0, r"^point P1, 4h, AEP 0\.01 .*: found .* after .* of 1h by"),
-        ([[10.0, 20.0], [20.0, 70.0]], 1000.0, r"^point P1, 4h, AEP 0\.001 .*: found .* mm/h\) of 1h by"),
+        ([[10.0, 40.0], [20.0, 60.0]], 1.05, r"^point P1, 1 h, AEP 0\.9524 .*: found -.* by extrapolation; "),
+        ([[10.0, 39.0], [20.0, 40.0]], 100.0, r"^point P1, 4 h, AEP 0\.01 .*: found .* after .* of 1 h by"),
+        ([[10.0, 20.0], [20.0, 70.0]], 1000.0, r"^point P1, 4 h, AEP 0\.001 .*: found .* mm/h\) of 1 h by"),
     ],
 )  # fmt: skip
 def test_extrapolation_that_no_rain_can_have(depth: list[list[float]], years: float, message: str) -> None:
@@ -260,17 +260,17 @@ def test_extrapolation_that_no_rain_can_have(depth: list[list[float]], years: fl
 @pytest.mark.parametrize(
     ("depth", "message"),
     [
-        ([[20, 30], [18, 40]], ("4h, AEP 0.5 (1 in 2): found 18 mm (4.5 mm/h), less than 20 mm (20 mm/h) of 1h; "
+        ([[20, 30], [18, 40]], ("4 h, AEP 0.5 (1 in 2): found 18 mm (4.5 mm/h), less than 20 mm (20 mm/h) of 1 h; "
                                "expected a depth that does not fall with duration; correct one of them")),
-        ([[20, 30], [41, 40]], ("4h, AEP 0.1 (1 in 10): found 40 mm (10 mm/h), less than 41 mm (10.25 mm/h) of AEP 0.5 "
+        ([[20, 30], [41, 40]], ("4 h, AEP 0.1 (1 in 10): found 40 mm (10 mm/h), less than 41 mm (10.25 mm/h) of AEP 0.5 "
                                "(1 in 2); expected a depth that does not fall with rarity; correct one of them")),
-        ([[20, 30], [81, 110]], ("4h, AEP 0.5 (1 in 2): found 81 mm (20.25 mm/h), more intense than 20 mm (20 mm/h) of "
-                                "1h; expected an intensity that does not rise with duration; correct one of them")),
-        ([[20, 30], [np.nan, 40]], ("4h, AEP 0.5 (1 in 2): found no depth; expected a depth for every duration and "
+        ([[20, 30], [81, 110]], ("4 h, AEP 0.5 (1 in 2): found 81 mm (20.25 mm/h), more intense than 20 mm (20 mm/h) of "
+                                "1 h; expected an intensity that does not rise with duration; correct one of them")),
+        ([[20, 30], [np.nan, 40]], ("4 h, AEP 0.5 (1 in 2): found no depth; expected a depth for every duration and "
                                    "frequency of a point; add it")),
-        ([[20, 30], [0, 40]], "4h, AEP 0.5 (1 in 2): found 0 mm (0 mm/h); expected a depth above 0; correct it"),
-        ([[-20, 30], [30, 40]], "1h, AEP 0.5 (1 in 2): found -20 mm (-20 mm/h); expected a depth above 0; correct it"),
-        ([[20, 30], [30, np.inf]], ("4h, AEP 0.1 (1 in 10): found inf mm (inf mm/h); expected a depth above 0; "
+        ([[20, 30], [0, 40]], "4 h, AEP 0.5 (1 in 2): found 0 mm (0 mm/h); expected a depth above 0; correct it"),
+        ([[-20, 30], [30, 40]], "1 h, AEP 0.5 (1 in 2): found -20 mm (-20 mm/h); expected a depth above 0; correct it"),
+        ([[20, 30], [30, np.inf]], ("4 h, AEP 0.1 (1 in 10): found inf mm (inf mm/h); expected a depth above 0; "
                                    "correct it")),
     ],
 )  # fmt: skip
@@ -283,12 +283,12 @@ def test_entries_that_cannot_be(depth: list[list[float]], message: str) -> None:
 
 def test_all_entries_that_cannot_be() -> None:
     """All are said together, of every point."""
-    with pytest.raises(DataError, match=r"point P1, 4h, AEP 0\.1") as caught:
+    with pytest.raises(DataError, match=r"point P1, 4 h, AEP 0\.1") as caught:
         table([[[20.0, 30.0], [30.0, 25.0]], [[20.0, 30.0], [np.nan, 40.0]]])
     assert [problem.item for problem in caught.value.problems] == [
-        "point P2, 4h, AEP 0.5 (1 in 2)",
-        "point P1, 4h, AEP 0.1 (1 in 10)",
-        "point P1, 4h, AEP 0.1 (1 in 10)",
+        "point P2, 4 h, AEP 0.5 (1 in 2)",
+        "point P1, 4 h, AEP 0.1 (1 in 10)",
+        "point P1, 4 h, AEP 0.1 (1 in 10)",
     ]
 
 
@@ -299,7 +299,7 @@ def test_many_faults_are_counted() -> None:
     points = [str(k) for k in range(10_000)]
     report_faults(points, np.array([60.0, 120.0]), [annual(2.0)], depth, problems)
     assert len(problems) == 10_000
-    with pytest.raises(DataError, match=r"^point 0, 2h, .*\n(?:.*\n){49}9950 more problems: found but not listed$"):
+    with pytest.raises(DataError, match=r"^point 0, 2 h, .*\n(?:.*\n){49}9950 more problems: found but not listed$"):
         problems.raise_as(DataError)
 
 

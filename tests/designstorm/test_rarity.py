@@ -5,7 +5,7 @@ import pytest
 from rarity_cases import END, FREQUENCIES, MINUTES, NAN, UPPER, at_gauges, over_basins, quill, storm_depths
 
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, Frequency
-from basinrain.designstorm.rarity import StormRarity, comparable, duration_text, storm_rarity
+from basinrain.designstorm.rarity import StormRarity, comparable, storm_rarity
 from basinrain.errors import DataError
 from basinrain.series.greatest_depths import greatest_depths
 
@@ -253,8 +253,3 @@ def test_inputs_that_do_not_fit() -> None:
         quill(infilled=[0.5])
     with pytest.raises(DataError, match=r"areas: found none; expected one at least"):
         quill(storm_depths("", np.zeros((5, 0)), np.zeros((0, 5, 3))))
-
-
-def test_durations_in_words() -> None:
-    """As engineers name them."""
-    assert [duration_text(m) for m in (5, 60, 1440, 2880, 10080)] == ["5 min", "1 h", "24 h", "48 h", "7 days"]

@@ -68,7 +68,7 @@ def test_sound_depths_pass_and_each_unsound_point_is_named_once() -> None:
     with pytest.raises(MethodError) as caught:
         refuse_unphysical(depth, minutes, ["A", "B", "C"], TEN)
     assert [problem.item for problem in caught.value.problems] == [
-        "point B, 2h, AEP 0.1 (1 in 10)",
-        "point C, 1h, AEP 0.1 (1 in 10)",
+        "point B, 2 h, AEP 0.1 (1 in 10)",
+        "point C, 1 h, AEP 0.1 (1 in 10)",
     ]
-    assert "found 9 mm (4.5 mm/h) after 10 mm (10 mm/h) of 1h by extrapolation" in str(caught.value)
+    assert "found 9 mm (4.5 mm/h) after 10 mm (10 mm/h) of 1 h by extrapolation" in str(caught.value)

@@ -94,7 +94,7 @@ def test_nine_years_are_refused() -> None:
     maxima = annual_maxima(10)
     maxima[6, 3, 1] = np.nan
     with pytest.raises(
-        MethodError, match=r"^area B, 12h: found 9 years with an annual maximum; expected 10 at least; take a longer"
+        MethodError, match=r"^area B, 12 h: found 9 years with an annual maximum; expected 10 at least; take a longer"
     ):
         found_of(maxima)
 
@@ -102,7 +102,7 @@ def test_nine_years_are_refused() -> None:
 def test_rare_and_short_are_told_together() -> None:
     """A record without years that count is refused with the frequencies that it cannot tell."""
     with pytest.raises(
-        MethodError, match=r"^area A, 1h: found 0 years(.|\n)*AEP 0\.5 \(1 in 2\): found a return period"
+        MethodError, match=r"^area A, 1 h: found 0 years(.|\n)*AEP 0\.5 \(1 in 2\): found a return period"
     ):
         found_of(np.full((12, 1, 1), np.nan), minutes=MINUTES[[1]])
 
@@ -112,7 +112,7 @@ def test_beyond_twice_the_record_only_when_asked() -> None:
     rare = [Frequency(61.0, "annual-maximum")]
     with pytest.raises(
         MethodError,
-        match=r"^AEP 0\.01639 \(1 in 61\): found .* 2 times the 30 years of area A, 30min; .*beyond_record = true$",
+        match=r"^AEP 0\.01639 \(1 in 61\): found .* 2 times the 30 years of area A, 30 min; .*beyond_record = true$",
     ):
         found_of(annual_maxima(30), frequencies=rare)
     given = found_of(annual_maxima(30), frequencies=rare, beyond_record=True)
@@ -187,7 +187,7 @@ def test_maxima_without_spread_are_refused() -> None:
     maxima = annual_maxima(20, areas=1)
     maxima[:, 1, 0] = 0.1
     with pytest.raises(
-        MethodError, match=r"^area A, 1h: found annual maxima that are all 0\.1 mm; expected maxima that"
+        MethodError, match=r"^area A, 1 h: found annual maxima that are all 0\.1 mm; expected maxima that"
     ):
         found_of(maxima)
 
@@ -206,7 +206,7 @@ def test_one_wet_year_has_no_shape() -> None:
 def test_depths_below_zero_are_refused() -> None:
     """A frequency at which the fitted distribution has no rain is refused by name."""
     with pytest.raises(
-        MethodError, match=r"^area A, 1h, AEP 0\.999 \(1 in 1\.001\): found -[0-9.]+ mm from the fitted distribution;"
+        MethodError, match=r"^area A, 1 h, AEP 0\.999 \(1 in 1\.001\): found -[0-9.]+ mm from the fitted distribution;"
     ):
         found_of(crossing_maxima(), minutes=MINUTES[[1, 2]], frequencies=[Frequency.of_aep(0.999)])
 
@@ -221,7 +221,7 @@ def test_what_cannot_be_asked() -> None:
         found_of(annual_maxima(30), resamples=10)
     maxima = annual_maxima(30)
     maxima[2, 3, 1] = -1.0
-    with pytest.raises(DataError, match=r"^area B, 12h, 1993: found -1 mm; expected a finite depth"):
+    with pytest.raises(DataError, match=r"^area B, 12 h, 1993: found -1 mm; expected a finite depth"):
         found_of(maxima)
 
 

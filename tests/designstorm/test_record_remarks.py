@@ -44,9 +44,10 @@ def test_heavy_and_light_tails_are_told_apart() -> None:
     maxima[:, 0, 0] = 10 + (1 - steps) ** -0.4
     maxima[:, 1, 0] = 60 + 10 * np.sin(np.pi * (steps - 0.5))
     remarks = found_of(maxima, minutes=MINUTES[:2]).remarks
-    assert "The test of the shape speaks against Gumbel at 5 %, heavier tail: A 30min; lighter tail: A 1h." in remarks
+    assert "The test of the shape speaks against Gumbel at 5 %, heavier tail: A 30 min; lighter tail: A 1 h." in remarks
     assert (
-        "The probability plot of the Gumbel distribution is less straight than 95 % of its own samples: A 30min, A 1h."
+        "The probability plot of the Gumbel distribution is less straight than 95 % of its own samples: A 30 min, "
+        "A 1 h."
         in remarks
     )
 
@@ -58,8 +59,8 @@ def test_an_upper_bound_is_told() -> None:
     bound = found.fit.parameters.bound[0, 0]
     assert bound < found.fit.parameters.bound[1, 0]
     assert (
-        "The fitted distribution has an upper bound, which rain does not have to respect: A 1h, B 1h; the lowest is "
-        f"{bound:.1f} mm (A 1h)." in found.remarks
+        "The fitted distribution has an upper bound, which rain does not have to respect: A 1 h, B 1 h; the lowest is "
+        f"{bound:.1f} mm (A 1 h)." in found.remarks
     )
 
 
@@ -79,8 +80,8 @@ def test_years_that_do_not_count_are_told() -> None:
     maxima[1, 3, 1] = 60.0
     maxima[4:6, 2, 1] = np.nan
     assert found_of(maxima).remarks[-1] == (
-        "Not all of the 29 years count in A 30min, A 1h, A 3h, A 12h, B 30min, B 1h and 1 more; the fewest, 26, in "
-        "B 3h."
+        "Not all of the 29 years count in A 30 min, A 1 h, A 3 h, A 12 h, B 30 min, B 1 h and 1 more; the fewest, 26, "
+        "in B 3 h."
     )
 
 
@@ -92,7 +93,7 @@ def test_raised_depths_are_told() -> None:
     before, after = found.fit.quantiles[0, 1, 3], found.fit.depth[0, 1, 3]
     assert found.remarks[-1] == (
         "Fits of different durations cross; so that depth does not fall with duration nor intensity rise, these are "
-        f"raised by up to {100 * (after / before - 1):.2f} %: A 3h AEP 0.05 (1 in 20) from {before:.2f} to "
+        f"raised by up to {100 * (after / before - 1):.2f} %: A 3 h AEP 0.05 (1 in 20) from {before:.2f} to "
         f"{after:.2f} mm."
     )
 
@@ -102,5 +103,5 @@ def test_no_shape_is_told() -> None:
     maxima = annual_maxima(20, areas=1)
     maxima[:, 0, 0] = np.eye(20)[4] * 3 + 5
     remarks = found_of(maxima).remarks
-    assert "No shape can be fitted where all maxima but one are equal: A 30min." in remarks
+    assert "No shape can be fitted where all maxima but one are equal: A 30 min." in remarks
     assert "differ from Gumbel's" not in remarks[0]

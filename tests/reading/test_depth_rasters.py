@@ -157,11 +157,11 @@ def test_every_duration_has_every_frequency_once(tmp_path: Path) -> None:
     with pytest.raises(JobError) as caught:
         read([a, b, RasterFile(c.path, 360.0, TEN)])
     assert str(caught.value).replace(str(tmp_path), ".").splitlines() == [
-        f"[[design.depths.raster]] of 1h, {LABELS[TWO]}: found two: ./a.asc and ./b.asc; expected one; remove one",
+        f"[[design.depths.raster]] of 1 h, {LABELS[TWO]}: found two: ./a.asc and ./b.asc; expected one; remove one",
         *(
             f"[[design.depths.raster]] of {words}: found none; expected a raster for every duration at every "
             "frequency; add it"
-            for words in (f"1h, {LABELS[TEN]}", f"6h, {LABELS[TWO]}")
+            for words in (f"1 h, {LABELS[TEN]}", f"6 h, {LABELS[TWO]}")
         ),
     ]
 
@@ -213,9 +213,9 @@ def test_no_data_under_a_basin_is_refused(tmp_path: Path) -> None:
     found = problems_of(files, tmp_path, basins=basins_of(L_SHAPE, shapely.box(1100, 600, 1900, 900)))
     tail = "expected depths over the whole of it; use rasters that cover the basin; no data is not zero"
     assert found == [
-        f"./0.asc: the raster of 1h, {LABELS[TWO]}: found no data over 33.3 % of basin A; {tail}",
-        f"./3.asc: the raster of 4h, {LABELS[TEN]}: found no data over 16.7 % of basin A; {tail}",
-        f"./3.asc: the raster of 4h, {LABELS[TEN]}: found no data over 100 % of basin B; {tail}",
+        f"./0.asc: the raster of 1 h, {LABELS[TWO]}: found no data over 33.3 % of basin A; {tail}",
+        f"./3.asc: the raster of 4 h, {LABELS[TEN]}: found no data over 16.7 % of basin A; {tail}",
+        f"./3.asc: the raster of 4 h, {LABELS[TEN]}: found no data over 100 % of basin B; {tail}",
     ]
 
 
@@ -236,7 +236,7 @@ def test_values_that_are_no_depths(tmp_path: Path) -> None:
     write_asc(files[2].path, [[60, "x", 1], [0, 48, 1]])
     assert problems_of(files, tmp_path, unit="in") == [
         (
-            f"./0.asc: the raster of 1h, {LABELS[TWO]}: found 2 cells without a depth, such as row 1 column 1 with "
+            f"./0.asc: the raster of 1 h, {LABELS[TWO]}: found 2 cells without a depth, such as row 1 column 1 with "
             "-999 in; expected depths above 0; correct the raster, or mark such cells as without data"
         ),
         "./2.asc:7: the raster: found 'x'; expected numbers with a decimal point",
@@ -254,17 +254,17 @@ def test_depths_out_of_order_are_summed_up(tmp_path: Path) -> None:
     assert problems_of(files, tmp_path) == [
         (
             "./2.asc: the rasters: found 2 cells of 4 with less depth in a longer duration, the worst row 2 column 1 "
-            f"at 4h, {LABELS[TWO]}: 41.16 mm (10.29 mm/h), 2 % less than the 42 mm (42 mm/h) of 1h; expected depths "
+            f"at 4 h, {LABELS[TWO]}: 41.16 mm (10.29 mm/h), 2 % less than the 42 mm (42 mm/h) of 1 h; expected depths "
             f"that do not fall with duration; {tail}"
         ),
         (
             "./1.asc: the rasters: found 1 cell of 4 with less depth at a rarer frequency, the worst row 1 column 1 at "
-            f"1h, {LABELS[TEN]}: 24 mm (24 mm/h), 20 % less than the 30 mm (30 mm/h) of {LABELS[TWO]}; expected depths "
+            f"1 h, {LABELS[TEN]}: 24 mm (24 mm/h), 20 % less than the 30 mm (30 mm/h) of {LABELS[TWO]}; expected depths "
             f"that do not fall with rarity; {tail}"
         ),
         (
             "./3.asc: the rasters: found 1 cell of 4 with more intensity in a longer duration, the worst row 1 column "
-            f"1 at 4h, {LABELS[TEN]}: 288 mm (72 mm/h), 200 % more than the 24 mm (24 mm/h) of 1h; expected "
+            f"1 at 4 h, {LABELS[TEN]}: 288 mm (72 mm/h), 200 % more than the 24 mm (24 mm/h) of 1 h; expected "
             f"intensities that do not rise with duration; {tail}"
         ),
     ]

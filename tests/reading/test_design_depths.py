@@ -151,24 +151,24 @@ NO_UNIT = "expected a number with min, h or d: 15min, 1h, 2d; write the unit, or
         ("2h,0.1", "later,0.1", {},
          [":5: column duration: found 'later'; expected a number with min, h or d: 15min, 1h, 2d"]),
         ("0.5,28", "0.5,-28", {},
-         [":4: point A, 2h, AEP 0.5 (1 in 2): found -28 mm (-14 mm/h); expected a depth above 0; correct it"]),
+         [":4: point A, 2 h, AEP 0.5 (1 in 2): found -28 mm (-14 mm/h); expected a depth above 0; correct it"]),
         ("0.5,28", "0.5,0", {},
-         [":4: point A, 2h, AEP 0.5 (1 in 2): found 0 mm (0 mm/h); expected a depth above 0; correct it"]),
+         [":4: point A, 2 h, AEP 0.5 (1 in 2): found 0 mm (0 mm/h); expected a depth above 0; correct it"]),
         ("0.5,28", "0.5,19", {},
-         [(":4: point A, 2h, AEP 0.5 (1 in 2): found 19 mm (9.5 mm/h), less than 20 mm (20 mm/h) of 1h (line 2); "
+         [(":4: point A, 2 h, AEP 0.5 (1 in 2): found 19 mm (9.5 mm/h), less than 20 mm (20 mm/h) of 1 h (line 2); "
           "expected a depth that does not fall with duration; correct one of them")]),
         ("0.5,28", "0.5,39.5", {"unit": "in"}, []),
         ("0.5,28", "0.5,40.5", {"unit": "in"},
-         [(":5: point A, 2h, AEP 0.1 (1 in 10): found 40 in (20 in/h), less than 40.5 in (20.25 in/h) of AEP 0.5 (1 in "
-          "2) (line 4); expected a depth that does not fall with rarity; correct one of them"),
-          (":4: point A, 2h, AEP 0.5 (1 in 2): found 40.5 in (20.25 in/h), more intense than 20 in (20 in/h) of 1h "
+         [(":5: point A, 2 h, AEP 0.1 (1 in 10): found 40 in (20 in/h), less than 40.5 in (20.25 in/h) of AEP 0.5 (1 "
+          "in 2) (line 4); expected a depth that does not fall with rarity; correct one of them"),
+          (":4: point A, 2 h, AEP 0.5 (1 in 2): found 40.5 in (20.25 in/h), more intense than 20 in (20 in/h) of 1 h "
           "(line 2); expected an intensity that does not rise with duration; correct one of them")]),
         ("A,2h,0.5,28\n", "", {},
-         [(": point A, 2h, AEP 0.5 (1 in 2): found no depth; expected a depth for every duration and frequency of a "
+         [(": point A, 2 h, AEP 0.5 (1 in 2): found no depth; expected a depth for every duration and frequency of a "
           "point; add it")]),
         ("A,2h,0.5,28\n", "A,2h,0.5,28\nA,120min,.50,29\n", {},
-         [(":5: point A, 2h, AEP 0.5 (1 in 2): found a depth again, first on line 4; expected each once; remove one of "
-          "them")]),
+         [(":5: point A, 2 h, AEP 0.5 (1 in 2): found a depth again, first on line 4; expected each once; remove one "
+          "of them")]),
         ("0.5,28", "0.5,28mm", {},
          [":4: column depth: point A, duration 2h, aep 0.5: found '28mm'; expected a number; correct the cell"]),
         ("0.5,28", "0.5,", {},
@@ -212,7 +212,7 @@ def test_annual_maximum_return_periods(tmp_path: Path, years: str) -> None:
 def test_wide_faults(tmp_path: Path) -> None:
     """In a wide table the heading or the cell is named, with the line of the cell; all faults together."""
     cell = "point quill, duration {}h, return-period 100"
-    before = "20 mm (20 mm/h) of 1h (line 2); expected a depth that does not fall with duration; correct one of them"
+    before = "20 mm (20 mm/h) of 1 h (line 2); expected a depth that does not fall with duration; correct one of them"
     text = "duration,2,x,100\n1h,20,30,40\n2h,19,31,\n3h,25,32,forty\n"
     with pytest.raises(ReadError, match="column x") as caught:
         read(tmp_path, text, layout="wide", probability="return-period")
@@ -220,14 +220,14 @@ def test_wide_faults(tmp_path: Path) -> None:
         ": column x: found 'x'; expected a number of years",
         f":3: column 100: {cell.format(2)}: found nothing; expected a number; correct the cell",
         f":4: column 100: {cell.format(3)}: found 'forty'; expected a number; correct the cell",
-        f":3: point quill, 2h, AEP 0.5 (1 in 2): found 19 mm (9.5 mm/h), less than {before}",
+        f":3: point quill, 2 h, AEP 0.5 (1 in 2): found 19 mm (9.5 mm/h), less than {before}",
     ]
 
 
 def test_two_headings_of_one_frequency(tmp_path: Path) -> None:
     """0.1 and 0.10 are one frequency, which may not come twice."""
     with pytest.raises(
-        ReadError, match=r"quill\.csv:2: point quill, 1h, AEP 0\.1 .*: found a depth again, first on line 2"
+        ReadError, match=r"quill\.csv:2: point quill, 1 h, AEP 0\.1 .*: found a depth again, first on line 2"
     ):
         read(tmp_path, "duration,0.1,0.10\n1h,20,21\n", layout="wide")
 
@@ -248,12 +248,12 @@ def test_gaps_of_several_points(tmp_path: Path) -> None:
     with pytest.raises(ReadError, match="found no depth") as caught:
         read(tmp_path, text)
     assert [problem.item for problem in caught.value.problems] == [
-        "point A, 3h, AEP 0.5 (1 in 2)",
-        "point A, 3h, AEP 0.1 (1 in 10)",
-        "point B, 1h, AEP 0.1 (1 in 10)",
-        "point B, 2h, AEP 0.5 (1 in 2)",
-        "point B, 2h, AEP 0.1 (1 in 10)",
-        "point B, 3h, AEP 0.1 (1 in 10)",
+        "point A, 3 h, AEP 0.5 (1 in 2)",
+        "point A, 3 h, AEP 0.1 (1 in 10)",
+        "point B, 1 h, AEP 0.1 (1 in 10)",
+        "point B, 2 h, AEP 0.5 (1 in 2)",
+        "point B, 2 h, AEP 0.1 (1 in 10)",
+        "point B, 3 h, AEP 0.1 (1 in 10)",
     ]
 
 

@@ -107,10 +107,10 @@ def test_gaps_repetitions_and_factors_that_rise(tmp_path: Path) -> None:
     """A complete table is needed, every factor once, none greater over a larger area."""
     path = table(tmp_path, "area,duration,factor\n10,1h,0.9\n100,1h,0.95\n10,6h,0.96\n10,360min,0.97\n")
     assert problems_of(path) == [
-        "F:5: column factor: 10 km2, 6h: found a factor of 0.97 after one of 0.96; expected one; remove one",
-        "F: 100 km2, 6h: found no factor; expected one for every area and duration; add it",
+        "F:5: column factor: 10 km2, 6 h: found a factor of 0.97 after one of 0.96; expected one; remove one",
+        "F: 100 km2, 6 h: found no factor; expected one for every area and duration; add it",
         (
-            "F: 100 km2, 1h: found a factor of 0.95, above 0.9 of 10 km2; expected a factor that does not rise with "
+            "F: 100 km2, 1 h: found a factor of 0.95, above 0.9 of 10 km2; expected a factor that does not rise with "
             "area; correct one of them"
         ),
     ]

@@ -54,7 +54,7 @@ def test_every_curve_is_labelled(figures: list[Any]) -> None:
     texts = svg_texts(picture().svg)
     for text in ("AEP 0.01 (1 in 100)", "AEP 0.5 (1 in 2)", "1 in 100", "1 in 2", "point depth", "areal depth"):
         assert texts.count(text) == 1
-    assert {"1 h", "6 h", "2 days", "duration", "depth, mm", "Old weir"} <= set(texts)
+    assert {"1 h", "6 h", "48 h", "duration", "depth, mm", "Old weir"} <= set(texts)
     ends = {note.get_text(): note.xy for note in figures[0].axes[0].texts}
     assert ends["AEP 0.01 (1 in 100)"] == pytest.approx((2880, 120.65))
     assert ends["1 in 2"] == pytest.approx((60, 25.4))
@@ -64,8 +64,8 @@ def test_the_description_has_the_numbers() -> None:
     """Whoever does not see the figure is told every depth, and its unit."""
     one = picture(title="R&D <weir>")
     description = svg_tree(one.svg)[1].text or ""
-    assert description.startswith("mm; point depth, AEP 0.5 (1 in 2): 1 h 25.4, 6 h 38.1, 2 days 63.5; ")
-    assert description.endswith("areal depth, AEP 0.01 (1 in 100): 1 h 40.6, 6 h 68.6, 2 days 120.7")
+    assert description.startswith("mm; point depth, AEP 0.5 (1 in 2): 1 h 25.4, 6 h 38.1, 48 h 63.5; ")
+    assert description.endswith("areal depth, AEP 0.01 (1 in 100): 1 h 40.6, 6 h 68.6, 48 h 120.7")
     assert one.caption == "R&D <weir>: point depth and areal depth by duration and frequency, both axes logarithmic."
     assert (one.name, one.half) == ("f", False)
 

@@ -122,7 +122,7 @@ def test_a_large_run_has_a_handful_of_pictures() -> None:
     ]
     pictures = design_pictures(many, "mm")
     heads = [one.caption.split(":")[0] for one in pictures]
-    assert heads == [f"{point}, {words}" for point in ("bridge", "old weir", "mill") for words in ("10 min", "2 days")]
+    assert heads == [f"{point}, {words}" for point in ("bridge", "old weir", "mill") for words in ("10 min", "48 h")]
     assert [one.name for one in pictures] == [f"design-hyetographs-{k}" for k in range(1, 7)]
     assert [" Drawn: 6 of 15 points and durations." in one.caption for one in pictures] == [False] * 5 + [True]
 

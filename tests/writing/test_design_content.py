@@ -19,7 +19,7 @@ def test_a_hyetograph_tells_itself() -> None:
     """Ten-minute steps end at 10, 20 and 30 minutes; 1 + 2 + 4 mm are 7."""
     one = hyetograph([[1.0], [2.0], [4.0]], basins=("west",), step=10)
     assert (one.elapsed.tolist(), one.totals.tolist(), one.duration, one.n_steps) == ([10, 20, 30], [7.0], "30min", 3)
-    assert one.name == "bridge, AEP 0.01 (1 in 100), 30min, nrcs-type-ii"
+    assert one.name == "bridge, AEP 0.01 (1 in 100), 30 min, nrcs-type-ii"
 
 
 @pytest.mark.parametrize(("minutes", "step"), [(25, 10), (10, 20), (60, 0)])
@@ -36,7 +36,7 @@ def test_a_step_divides_its_duration(minutes: int, step: int) -> None:
 def test_depths_have_steps_and_basins() -> None:
     """One basin twice and a step too few are named together."""
     message = (
-        r"^hyetograph bridge, AEP 0.01 \(1 in 100\), 2h, nrcs-type-ii: found basins west, west; expected each basin "
+        r"^hyetograph bridge, AEP 0.01 \(1 in 100\), 2 h, nrcs-type-ii: found basins west, west; expected each basin "
         r"once\nhyetograph .*: found depths of shape \(1, 2\); expected steps and basins, \(2, 2\)$"
     )
     with pytest.raises(DataError, match=message):
@@ -59,11 +59,11 @@ def test_everything_that_disagrees_is_named_together() -> None:
     message = (
         r"^names: found 1; expected 2\nareas: found 3; expected 2\npositions: found 0; expected 2\n"
         r"start: found no time; expected a time, or None\n"
-        r"hyetograph bridge, AEP 0.01 \(1 in 100\), 2h, nrcs-type-ii: found two; expected one of each point, frequency,"
-        r" duration and pattern\n"
+        r"hyetograph bridge, AEP 0.01 \(1 in 100\), 2 h, nrcs-type-ii: found two; expected one of each point, "
+        r"frequency, duration and pattern\n"
         r"hyetograph .*chicago: found basins north; expected basins of the content\n"
         r"hyetograph .*chicago: found basins north; expected west as in bridge, .*nrcs-type-ii\n"
-        r"hyetograph bridge, .*, 30min, nested: found a step of 30 min; expected 60 min as the first$"
+        r"hyetograph bridge, .*, 30 min, nested: found a step of 30 min; expected 60 min as the first$"
     )
     with pytest.raises(DataError, match=message):
         two_steps(

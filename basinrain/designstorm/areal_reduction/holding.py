@@ -11,10 +11,10 @@ from basinrain.designstorm.areal_reduction.limits import (
     TOLERANCE,
     Limits,
     area_words,
-    duration_words,
     joined,
 )
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.measures import duration_text
 from basinrain.errors import MethodError, Problems
 
 __all__ = ["Held", "Holder"]
@@ -107,13 +107,13 @@ class Holder:
         minutes = minutes[durations]
         low, high = self.limits.minutes
         sides = ((minutes < low * (1 - TOLERANCE), low), (minutes > high * (1 + TOLERANCE), high))
-        moved = [([duration_words(value) for value in minutes[side]], end) for side, end in sides if side.any()]
+        moved = [([duration_text(value) for value in minutes[side]], end) for side, end in sides if side.any()]
         if moved:
             self._outside(
                 "duration",
                 joined([word for words, _ in moved for word in words]),
                 self.limits.duration_words(),
-                {joined(words): duration_words(end) for words, end in moved},
+                {joined(words): duration_text(end) for words, end in moved},
             )
         return np.clip(minutes, low, high)
 
@@ -131,7 +131,7 @@ class Holder:
         for over in np.unique(largest[area > largest * (1 + TOLERANCE)]):
             found, end = asked, area_words(over, unit)
             if len(self.limits.largest_areas) > 1:
-                found += f" at {joined([duration_words(value) for value in np.unique(minutes[largest == over])])}"
+                found += f" at {joined([duration_text(value) for value in np.unique(minutes[largest == over])])}"
             self._outside("area", found, f"at most {end}{self.limits.below_words(over)}", {found: end})
         areas: Floats = np.clip(area, smallest, largest)
         return areas

@@ -1,4 +1,4 @@
-"""The range of a method of areal reduction, and areas and durations in words."""
+"""The range of a method of areal reduction, and areas in words."""
 
 from __future__ import annotations
 
@@ -10,9 +10,10 @@ from typing import Final, Literal
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.designstorm.measures import duration_text
 from basinrain.units import area_factor
 
-__all__ = ["TOLERANCE", "Limits", "area_words", "between_words", "duration_words", "joined"]
+__all__ = ["TOLERANCE", "Limits", "area_words", "between_words", "joined"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -61,13 +62,13 @@ class Limits:
 
     def duration_words(self) -> str:
         """Return the range of durations in words."""
-        low, high = (duration_words(minutes) for minutes in self.minutes)
+        low, high = (duration_text(minutes) for minutes in self.minutes)
         return between_words(low, high)
 
     def below_words(self, area: float) -> str:
         """Return for which durations an area is the largest, with a space before; empty where for all."""
         ends = {largest: until for (_, largest), (until, _) in pairwise(self.largest_areas)}
-        return f" below {duration_words(ends[area])}" if area in ends else ""
+        return f" below {duration_text(ends[area])}" if area in ends else ""
 
 
 def area_words(area: float, unit: str = "km2") -> str:
@@ -82,25 +83,13 @@ def area_words(area: float, unit: str = "km2") -> str:
     return metric if unit == "km2" else f"{metric} ({area / area_factor(unit):.6g} {unit[:-1]}²)"
 
 
-def duration_words(minutes: float) -> str:
-    """Return a duration given in minutes in words: hours where they are whole or half, else minutes.
-
-    Examples
-    --------
-    >>> [duration_words(minutes) for minutes in (15, 30, 90, 100, 2160)]
-    ['15 min', '0.5 h', '1.5 h', '100 min', '36 h']
-    """
-    hours = minutes / 60
-    return f"{hours:.6g} h" if hours * 2 == round(hours * 2) else f"{minutes:.6g} min"
-
-
 def between_words(low: str, high: str) -> str:
     """Return a range in words, its unit once where both ends have the same.
 
     Examples
     --------
-    >>> between_words("0.5 h", "24 h"), between_words("15 min", "600 h")
-    ('0.5 to 24 h', '15 min to 600 h')
+    >>> between_words("1 h", "24 h"), between_words("30 min", "24 h")
+    ('1 to 24 h', '30 min to 24 h')
     """
     number, _, unit = low.partition(" ")
     return f"{number} to {high}" if unit == high.partition(" ")[2] else f"{low} to {high}"

@@ -10,8 +10,9 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.designstorm.areal_reduction.holding import Held, Holder
-from basinrain.designstorm.areal_reduction.limits import Limits, area_words, duration_words
+from basinrain.designstorm.areal_reduction.limits import Limits, area_words
 from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.measures import duration_text
 from basinrain.errors import JobError, MethodError, Problem, Problems, nearest_name
 
 __all__ = ["OUTSIDE", "ArealReduction", "Reduced"]
@@ -97,10 +98,10 @@ class ArealReduction:
     >>> halved.reduce(1e8, np.array([30.0, 360.0, 2880.0]))
     Traceback (most recent call last):
         ...
-    basinrain.errors.MethodError: [design.areal_reduction] halved, duration: found 0.5 h and 48 h; expected 1 to 24 h; \
-outside = "clamp" takes the factor of the range's nearest end
+    basinrain.errors.MethodError: [design.areal_reduction] halved, duration: found 30 min and 48 h; expected 1 to 24 h\
+; outside = "clamp" takes the factor of the range's nearest end
     >>> halved.reduce(1e8, np.array([30.0]), outside="clamp").clamped
-    ("Half of it: the factor of 0.5 h is that of 1 h, the nearest end of the method's range (1 to 24 h).",)
+    ("Half of it: the factor of 30 min is that of 1 h, the nearest end of the method's range (1 to 24 h).",)
     """
 
     name: str
@@ -210,7 +211,7 @@ outside = "clamp" takes the factor of the range's nearest end
             problems.add(
                 item=f"[design.areal_reduction] {self.name}",
                 found=f"{'no factor' if np.isnan(value) else f'a factor of {value:.4g}'} for"
-                f" {area_words(held.areas[wrong])} at {duration_words(held.minutes[wrong])}",
+                f" {area_words(held.areas[wrong])} at {duration_text(held.minutes[wrong])}",
                 expected="a factor above 0 and at most 1",
                 remedy="ask for a duration or an area that the method can answer, or take another method",
             )

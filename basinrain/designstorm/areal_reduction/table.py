@@ -7,8 +7,9 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.areal_reduction.limits import Limits, area_words, duration_words
+from basinrain.designstorm.areal_reduction.limits import Limits, area_words
 from basinrain.designstorm.areal_reduction.reduction import ArealReduction
+from basinrain.designstorm.measures import duration_text
 from basinrain.errors import DataError, Problems
 
 __all__ = ["TABLE", "ReductionTable", "tabulated"]
@@ -84,7 +85,7 @@ write percent as fractions
         for a, d in np.argwhere(~np.isnan(self.factor) & ~((self.factor > 0) & (self.factor <= 1))):
             value = float(self.factor[a, d])
             problems.add(
-                item=f"{item}: {area_words(self.areas[a])}, {duration_words(self.minutes[d])}",
+                item=f"{item}: {area_words(self.areas[a])}, {duration_text(self.minutes[d])}",
                 found=f"{value:g}",
                 expected="a factor above 0 and at most 1",
                 remedy="write percent as fractions" if 1 < value <= 100 else "correct it",

@@ -6,11 +6,11 @@ from collections.abc import Iterator
 from functools import partial
 from typing import Final
 
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.patterns.cumulative import fall_by, step_problems
 from basinrain.designstorm.patterns.ordinates import published_ordinates
 from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
 from basinrain.errors import JobError, MethodError, Problem, nearest_name
-from basinrain.intervals import interval_of
 from basinrain.units import area_factor
 
 __all__ = ["BASES", "HUFF", "huff"]
@@ -120,7 +120,7 @@ def _remarks(case: PatternCase, quartile: int, basis: str) -> Iterator[str]:
     if not above < case.minutes / 60 <= most:
         usual = next(number for number, (_, most) in _HOURS.items() if case.minutes / 60 <= most)
         yield (
-            f"A storm of {interval_of(60 * case.minutes).label} is commonly given Huff quartile {usual}, not "
+            f"A storm of {duration_text(case.minutes)} is commonly given Huff quartile {usual}, not "
             f"{quartile} (to 6 h the first, to 12 h the second, to 24 h the third, longer the fourth)."
         )
     if case.step * _PARTS < case.minutes:

@@ -12,8 +12,8 @@ import numpy.typing as npt
 from scipy.optimize import isotonic_regression
 
 from basinrain.designstorm.depth_source import Curve
+from basinrain.designstorm.measures import duration_text
 from basinrain.errors import MethodError, Problem, Problems
-from basinrain.intervals import interval_of
 
 __all__ = ["check_growth", "check_step", "falling_increments", "increments_of", "known_depth", "runs", "span_in_words"]
 
@@ -42,13 +42,13 @@ def check_step(minutes: int, step: int) -> None:
     >>> check_step(25, 10)
     Traceback (most recent call last):
         ...
-    basinrain.errors.MethodError: [design] step: found 10min for a duration of 25min; expected a step that divides the \
-duration; a step of 5min does
+    basinrain.errors.MethodError: [design] step: found 10 min for a duration of 25 min; expected a step that divides \
+the duration; a step of 5 min does
     >>> check_step(10, 60)
     Traceback (most recent call last):
         ...
-    basinrain.errors.MethodError: [design] step: found 1h for a duration of 10min; expected a step no longer than the \
-duration; a step of 10min is
+    basinrain.errors.MethodError: [design] step: found 1 h for a duration of 10 min; expected a step no longer than \
+the duration; a step of 10 min is
     """
     if minutes > 0 and step > 0 and minutes % step == 0:
         return
@@ -64,9 +64,9 @@ duration; a step of 10min is
         short = minutes < step
         problem = Problem(
             item="[design] step",
-            found=f"{interval_of(step * 60).label} for a duration of {interval_of(minutes * 60).label}",
+            found=f"{duration_text(step)} for a duration of {duration_text(minutes)}",
             expected="a step no longer than the duration" if short else "a step that divides the duration",
-            remedy=f"a step of {interval_of(divides * 60).label} {'is' if short else 'does'}",
+            remedy=f"a step of {duration_text(divides)} {'is' if short else 'does'}",
         )
     raise MethodError(problem)
 
@@ -189,7 +189,7 @@ the depth of 2 h is 3 mm greater, the largest change; the total is kept.',))
     largest = int(np.argmax(change))
     remark = (
         f"What a step adds to the depth rose with duration and was evened out over {', '.join(spans)}: the depth of "
-        f"{span_in_words((largest + 1) * step)} is {change[largest]:.3g} mm greater, the largest change; the total is "
+        f"{duration_text((largest + 1) * step)} is {change[largest]:.3g} mm greater, the largest change; the total is "
         "kept."
     )
     return _scaled(np.sort(even)[::-1], depth[-1]), (remark,)
@@ -242,7 +242,7 @@ min; take a longer step
         ]
         raise MethodError(problems, unlisted=error.unlisted) from error
     if not np.isfinite(depth).all():
-        first = span_in_words(minutes[np.argmin(np.isfinite(depth))])
+        first = duration_text(minutes[np.argmin(np.isfinite(depth))])
         raise MethodError(
             Problem(
                 item=f'shape "{shape}"', found=f"no depth of {first}", expected=f"depths of {wanted}", remedy=remedy
@@ -291,17 +291,17 @@ def runs(marked: npt.NDArray[np.bool_]) -> Iterator[tuple[int, int]]:
     return zip(np.flatnonzero(edges == 1).tolist(), np.flatnonzero(edges == -1).tolist(), strict=True)
 
 
-def span_in_words(start: float, end: float | None = None) -> str:
-    """Return minutes, or minutes to minutes, in words: hours where they are whole.
+def span_in_words(start: float, end: float) -> str:
+    """Return minutes to minutes in words, both in one unit: hours where they are whole.
 
     Examples
     --------
-    >>> span_in_words(120, 180), span_in_words(60, 90), span_in_words(0, 60), span_in_words(1440), span_in_words(7.5)
-    ('2 to 3 h', '60 to 90 min', '0 to 1 h', '24 h', '7.5 min')
+    >>> span_in_words(120, 180), span_in_words(60, 90), span_in_words(0, 60)
+    ('2 to 3 h', '60 to 90 min', '0 to 1 h')
     """
-    ends = [start] if end is None else [start, end]
-    hours = all(minutes % 60 == 0 for minutes in ends)
-    return " to ".join(f"{minutes / 60 if hours else minutes:.6g}" for minutes in ends) + (" h" if hours else " min")
+    hours = start % 60 == end % 60 == 0
+    unit, length = ("h", 60.0) if hours else ("min", 1.0)
+    return f"{start / length:.6g} to {end / length:.6g} {unit}"
 
 
 def _scaled(increments: Floats, total: float) -> Floats:
@@ -330,8 +330,8 @@ def _add_falls(problems: Problems, minutes: Floats, depth: Floats, tolerance: fl
         more, less = _told_apart(reached[first], reached[last])
         problems.add(
             item=f'shape "{shape}"',
-            found=f"a depth that falls with duration, from {more} mm in {span_in_words(times[first])} to {less} mm in "
-            f"{span_in_words(times[last])}",
+            found=f"a depth that falls with duration, from {more} mm in {duration_text(times[first])} to {less} mm in "
+            f"{duration_text(times[last])}",
             expected="one that never falls with duration",
             remedy="check the depths and areal reductions of these durations",
         )

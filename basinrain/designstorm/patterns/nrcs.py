@@ -5,11 +5,11 @@ from __future__ import annotations
 from functools import partial
 from typing import Final
 
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.patterns.cumulative import fall_by, step_problems
 from basinrain.designstorm.patterns.ordinates import published_ordinates
 from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
 from basinrain.errors import MethodError
-from basinrain.intervals import interval_of
 
 __all__ = ["NRCS", "NRCS_TYPES", "nrcs"]
 
@@ -64,7 +64,7 @@ def nrcs(case: PatternCase, *, kind: str) -> Shaped:
     if case.minutes != _DAY:
         problems.add(
             item=f"pattern nrcs-type-{kind.lower()}",
-            found=f"a duration of {interval_of(60 * case.minutes).label}",
+            found=f"a duration of {duration_text(case.minutes)}",
             expected="24 h, the only duration that it is published for",
             remedy='give the pattern durations = ["24h"], or choose another one',
         )

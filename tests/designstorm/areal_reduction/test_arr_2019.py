@@ -152,7 +152,7 @@ def test_clamping_the_area_by_duration() -> None:
 def test_over_a_week_is_refused() -> None:
     """10 080 minutes are the longest."""
     METHOD.reduce(100 * KM2, np.array([10_080.0]), ONE_PERCENT, region="SE Coast")
-    with pytest.raises(MethodError, match="duration: found 169 h; expected 1 min to 168 h"):
+    with pytest.raises(MethodError, match="duration: found 169 h; expected 1 min to 7 days"):
         METHOD.reduce(100 * KM2, np.array([10_140.0]), ONE_PERCENT, region="SE Coast")
 
 

@@ -71,7 +71,7 @@ def test_a_stated_range_is_held() -> None:
     for area in (1e7, 1e9):
         assert METHOD.reduce(area, np.array([60.0, 1440.0]), coefficients=stated).clamped == ()
     with pytest.raises(
-        MethodError, match=r"(?s)found 0.5 h and 48 h; expected 1 to 24 h.*found 5 km²; .* at least 10 km²"
+        MethodError, match=r"(?s)found 30 min and 48 h; expected 1 to 24 h.*found 5 km²; .* at least 10 km²"
     ):
         METHOD.reduce(5e6, np.array([30.0, 60.0, 2880.0]), coefficients=stated)
     with pytest.raises(MethodError, match="found 2000 km²; expected at most 1000 km²"):

@@ -42,9 +42,9 @@ def test_everything_outside_is_refused_together() -> None:
         )
     item = "[design.areal_reduction] arr-2019,"
     assert [str(problem) for problem in refused.value.problems] == [
-        f"{item} duration: found 0.5 min and 336 h; expected 1 min to 168 h; {CLAMP}",
+        f"{item} duration: found 0.5 min and 14 days; expected 1 min to 7 days; {CLAMP}",
         f"{item} area: found 50000 km² at 1 min and 1 h; expected at most 1000 km² below 24 h; {CLAMP}",
-        f"{item} area: found 50000 km² at 168 h; expected at most 30000 km²; {CLAMP}",
+        f"{item} area: found 50000 km² at 7 days; expected at most 30000 km²; {CLAMP}",
         f"{item} frequency: found AEP 0.9; expected AEP 0.0005 to 0.5; {CLAMP}",
     ]
 
@@ -56,8 +56,8 @@ def test_everything_outside_is_clamped_to_the_nearest_end() -> None:
     np.testing.assert_array_equal(reduced.factor, method.reduce(400 * MI2, np.array([30.0, 360.0, 1440.0])).factor)
     end = "the nearest end of the method's range"
     assert reduced.clamped == (
-        f"{method.title}: the factor of 10 min is that of 0.5 h, {end} (0.5 to 24 h).",
-        f"{method.title}: the factor of 36 h is that of 24 h, {end} (0.5 to 24 h).",
+        f"{method.title}: the factor of 10 min is that of 30 min, {end} (30 min to 24 h).",
+        f"{method.title}: the factor of 36 h is that of 24 h, {end} (30 min to 24 h).",
         (
             f"{method.title}: the factor of 1812.99 km² (700 mi²) is that of 1036 km² (400 mi²), {end} (at most"
             " 1036 km² (400 mi²))."
@@ -71,7 +71,7 @@ def test_the_area_is_moved_by_duration() -> None:
     assert held.areas.tolist() == [1e9, 1e9, 5e9, 5e9]
     assert held.sentences == (
         (
-            "A method: the factor of 5000 km² at 1 h and 1.5 h is that of 1000 km², the nearest end of the method's"
+            "A method: the factor of 5000 km² at 1 h and 90 min is that of 1000 km², the nearest end of the method's"
             " range (at most 1000 km² below 12 h)."
         ),
     )
@@ -110,8 +110,8 @@ def test_both_sides_of_one_duration() -> None:
     held = hold(1e8, [30, 60, 90], limits=Limits(minutes=(60, 60)))
     assert held.minutes.tolist() == [60, 60, 60]
     assert [sentence.partition(" is that")[0] for sentence in held.sentences] == [
-        "A method: the factor of 0.5 h",
-        "A method: the factor of 1.5 h",
+        "A method: the factor of 30 min",
+        "A method: the factor of 90 min",
     ]
 
 

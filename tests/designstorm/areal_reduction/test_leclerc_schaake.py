@@ -84,7 +84,7 @@ def test_beyond_the_range_is_refused_in_one_error() -> None:
         METHOD.reduce(500 * MI2, np.array([10.0, 60.0, 2160.0, 2880.0]))
     assert [str(problem) for problem in refused.value.problems] == [
         (
-            "[design.areal_reduction] leclerc-schaake, duration: found 10 min, 36 h and 48 h; expected 0.5 to 24 h;"
+            "[design.areal_reduction] leclerc-schaake, duration: found 10 min, 36 h and 48 h; expected 30 min to 24 h;"
             ' outside = "clamp" takes the factor of the range\'s nearest end'
         ),
         (

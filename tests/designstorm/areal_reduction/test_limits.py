@@ -1,4 +1,4 @@
-"""Ranges, and areas and durations in words."""
+"""Ranges, and areas in words."""
 
 from __future__ import annotations
 
@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from basinrain.designstorm.areal_reduction import Limits
-from basinrain.designstorm.areal_reduction.limits import area_words, between_words, duration_words, joined
+from basinrain.designstorm.areal_reduction.limits import area_words, between_words, joined
 
 STEPPED = Limits(minutes=(15, 36_000), largest_areas=((0, 3e9), (30, 1e10), (60, 3e10)))
 
@@ -28,16 +28,13 @@ def test_without_limits() -> None:
 
 def test_until_when_an_area_is_the_largest() -> None:
     """All steps but the last say below which duration they hold."""
-    assert [STEPPED.below_words(area) for area in (3e9, 1e10, 3e10)] == [" below 0.5 h", " below 1 h", ""]
+    assert [STEPPED.below_words(area) for area in (3e9, 1e10, 3e10)] == [" below 30 min", " below 1 h", ""]
 
 
 def test_words() -> None:
-    """Hours where they are whole or half, the method's own unit of area beside km², ranges with their unit once."""
-    assert [duration_words(value) for value in (1, 10, 30, 60, 150, 2160, 100.5)] == [
-        "1 min", "10 min", "0.5 h", "1 h", "2.5 h", "36 h", "100.5 min",
-    ]  # fmt: skip
+    """The method's own unit of area beside km², ranges with their unit once."""
     assert area_words(1e5) == "0.1 km²"
     assert area_words(100 * 1609.344**2, "mi2") == "258.999 km² (100 mi²)"
-    assert STEPPED.duration_words() == "15 min to 600 h"
+    assert STEPPED.duration_words() == "15 min to 25 days"
     assert between_words("1 min", "10 min") == "1 to 10 min"
     assert joined(["a", "b"]) == "a and b"

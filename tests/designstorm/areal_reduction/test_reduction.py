@@ -137,7 +137,7 @@ def test_what_is_no_factor_is_refused() -> None:
             WILD.reduce(1e8, np.array([12.0, 30.0, 60.0, 120.0, 300.0]), outside=outside)
         assert [problem.found for problem in refused.value.problems] == [
             "a factor of -0.2 for 100 km² at 12 min",
-            "a factor of 0 for 100 km² at 0.5 h",
+            "a factor of 0 for 100 km² at 30 min",
             "a factor of 3 for 100 km² at 5 h",
         ]
     np.testing.assert_allclose(WILD.reduce(1e8, np.array([60.0, 120.0])).factor, [1 / 3, 1.0])

@@ -81,7 +81,7 @@ def test_a_row_of_area_zero() -> None:
 def test_outside_the_table_is_refused() -> None:
     """Durations on both sides and the area are named together."""
     with pytest.raises(
-        MethodError, match=r"(?s)found 0\.5 h and 48 h; expected 1 to 24 h.*found 1500 km²; .*at most 1000 km²"
+        MethodError, match=r"(?s)found 30 min and 48 h; expected 1 to 24 h.*found 1500 km²; .*at most 1000 km²"
     ):
         METHOD.reduce(1500 * KM2, np.array([30.0, 60.0, 2880.0]), table=table())
     assert np.isnan(tabulated([5e6, 2e9, 1e8, 1e8], [60, 60, 59, 1441], table=table())).all()
@@ -111,8 +111,8 @@ def test_one_area_or_one_duration() -> None:
     reduced = METHOD.reduce(1e9, np.array([30.0, 60.0, 90.0]), outside="clamp", table=column)
     assert reduced.factor == pytest.approx([0.7, 0.7, 0.7])
     assert [sentence.partition(" is that")[0].rpartition("of ")[2] for sentence in reduced.clamped] == [
-        "0.5 h",
-        "1.5 h",
+        "30 min",
+        "90 min",
     ]
 
 

@@ -132,7 +132,7 @@ def test_what_is_asked_wrongly() -> None:
     """A peak that is none and a step that does not divide the duration are refused."""
     with pytest.raises(JobError, match=r"peak: found 'left'; expected early, centre, late, or a fraction"):
         alternating_block(case_of(denver, 120, 10), peak="left")
-    with pytest.raises(MethodError, match=r"step: found 50min for a duration of 2h; .* a step of 10min does$"):
+    with pytest.raises(MethodError, match=r"step: found 50 min for a duration of 2 h; .* a step of 10 min does$"):
         alternating_block(case_of(denver, 120, 50))
 
 

@@ -217,7 +217,7 @@ def test_what_is_asked_wrongly() -> None:
     """A peak that is none and a step that does not divide the duration are refused."""
     with pytest.raises(JobError, match=r"peak: found 1; expected early, centre, late, or a fraction"):
         chicago(case_of(denver, 120, 10), peak=1)
-    with pytest.raises(MethodError, match=r"step: found 4h for a duration of 2h; .* a step of 2h is$"):
+    with pytest.raises(MethodError, match=r"step: found 4 h for a duration of 2 h; .* a step of 2 h is$"):
         chicago(case_of(denver, 120, 240))
 
 

@@ -24,7 +24,7 @@ def test_a_depth_of_nothing_falls_as_nothing() -> None:
 
 def test_bad_steps_are_refused() -> None:
     """A step that does not divide the duration, or is longer, is an error, and can be collected with others."""
-    with pytest.raises(MethodError, match=re.escape("[design] step: found 25min for a duration of 3h")):
+    with pytest.raises(MethodError, match=re.escape("[design] step: found 25 min for a duration of 3 h")):
         fall_by(np.square, pattern_case(180, 25))
     assert len(step_problems(pattern_case(180, 200))) == 1
     assert len(step_problems(pattern_case(180, 20))) == 0

@@ -49,9 +49,9 @@ def log_log(minutes: list[float], depth: list[float], at: Array) -> Array:
 @pytest.mark.parametrize(
     ("minutes", "step", "said"),
     [
-        (90, 60, "1h for a duration of 90min; expected a step that divides the duration; a step of 30min does"),
-        (30, 60, "1h for a duration of 30min; expected a step no longer than the duration; a step of 30min is"),
-        (50, 60, "1h for a duration of 50min; expected a step no longer than the duration; a step of 10min is"),
+        (90, 60, "1 h for a duration of 90 min; expected a step that divides the duration; a step of 30 min does"),
+        (30, 60, "1 h for a duration of 30 min; expected a step no longer than the duration; a step of 30 min is"),
+        (50, 60, "1 h for a duration of 50 min; expected a step no longer than the duration; a step of 10 min is"),
         (0, 10, "10 min for a duration of 0 min; expected minutes above 0; correct it"),
         (60, -5, "-5 min for a duration of 60 min; expected minutes above 0; correct it"),
     ],
@@ -70,8 +70,8 @@ def test_step_that_divides(minutes: int, step: int) -> None:
         return
     with pytest.raises(MethodError, match=r"\[design\] step: found") as refused:
         check_step(minutes, step)
-    number, unit = re.findall(r"a step of (\d+)(min|h|d)", str(refused.value))[-1]
-    check_step(minutes, int(number) * {"min": 1, "h": 60, "d": 1440}[unit])
+    number, unit = re.findall(r"a step of (\d+) (min|h|days)", str(refused.value))[-1]
+    check_step(minutes, int(number) * {"min": 1, "h": 60, "days": 1440}[unit])
 
 
 def test_increments_by_hand() -> None:
@@ -269,4 +269,4 @@ def test_growth() -> None:
 
 def test_words_of_durations() -> None:
     """Hours where both ends are whole hours, else minutes."""
-    assert [span_in_words(60, 180), span_in_words(60, 75), span_in_words(45)] == ["1 to 3 h", "60 to 75 min", "45 min"]
+    assert [span_in_words(60, 180), span_in_words(60, 75)] == ["1 to 3 h", "60 to 75 min"]

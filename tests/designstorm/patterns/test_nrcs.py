@@ -117,7 +117,7 @@ def test_the_registered_patterns_are_the_four_types() -> None:
 def test_another_duration_than_24_hours_is_refused() -> None:
     """6 h have no NRCS distribution; a step that does not divide them is told in the same error."""
     with pytest.raises(
-        MethodError, match=re.escape("pattern nrcs-type-ii: found a duration of 6h; expected 24 h, the only duration")
+        MethodError, match=re.escape("pattern nrcs-type-ii: found a duration of 6 h; expected 24 h, the only duration")
     ) as caught:
         nrcs(pattern_case(360, 7), kind="II")
     assert {problem.item for problem in caught.value.problems} == {"pattern nrcs-type-ii", "[design] step"}

@@ -88,5 +88,5 @@ def test_all_bad_steps_are_named_at_once() -> None:
 
 def test_a_step_that_does_not_divide_the_duration_is_refused() -> None:
     """As for every pattern."""
-    with pytest.raises(MethodError, match=re.escape("[design] step: found 7min for a duration of 6h")):
+    with pytest.raises(MethodError, match=re.escape("[design] step: found 7 min for a duration of 6 h")):
         by_observed(pattern_case(360, 7), ordinates=ordinates_of(np.array([1.0])))

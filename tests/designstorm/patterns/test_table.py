@@ -29,5 +29,5 @@ def test_a_step_over_several_ordinates_gets_all_of_them() -> None:
 
 def test_a_step_that_does_not_divide_the_duration_is_refused() -> None:
     """240 min cannot be made of steps of 7."""
-    with pytest.raises(MethodError, match=re.escape("[design] step: found 7min for a duration of 4h")):
+    with pytest.raises(MethodError, match=re.escape("[design] step: found 7 min for a duration of 4 h")):
         by_table(pattern_case(240, 7), ordinates=CURVE)

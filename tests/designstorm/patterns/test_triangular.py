@@ -67,5 +67,5 @@ def test_what_cannot_be_is_refused() -> None:
     """A peak at the very end and a step that does not divide the duration are errors."""
     with pytest.raises(JobError, match="peak: found 1; expected early, centre, late, or a fraction"):
         triangular(pattern_case(), peak=1)
-    with pytest.raises(MethodError, match=re.escape("[design] step: found 7min for a duration of 6h")):
+    with pytest.raises(MethodError, match=re.escape("[design] step: found 7 min for a duration of 6 h")):
         triangular(pattern_case(360, 7))

@@ -19,5 +19,5 @@ def test_every_step_gets_the_same() -> None:
 
 def test_a_step_that_does_not_divide_the_duration_is_refused() -> None:
     """One hour cannot be made of steps of 50 minutes."""
-    with pytest.raises(MethodError, match=re.escape("[design] step: found 50min for a duration of 1h")):
+    with pytest.raises(MethodError, match=re.escape("[design] step: found 50 min for a duration of 1 h")):
         uniform(pattern_case(60, 50))

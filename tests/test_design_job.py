@@ -1,0 +1,502 @@
+"""Whole runs of design storms: from every origin of depths to files, and one chain by other means."""
+
+from __future__ import annotations
+
+import re
+from itertools import pairwise, product
+from pathlib import Path
+from typing import Any
+
+import geopandas as gpd
+import numpy as np
+import numpy.typing as npt
+import pandas as pd
+import pytest
+import shapely
+import xarray as xr
+from design_jobs import DEPTHS, TWO_POINTS, US_REDUCTION, design_tables, write_design_job
+from rasterfiles import write_asc
+
+from basinrain.design_job import run_design
+from basinrain.errors import JobError, MethodError
+from basinrain.jobfile import read_design_job
+from basinrain.results_design import DesignRun
+
+Floats = npt.NDArray[np.float64]
+
+DEMO = Path(__file__).parents[1] / "demo_basins" / "design"
+CASE = ["point", "return_period", "duration"]
+
+
+def many(folder: Path, **changes: Any) -> Path:  # noqa: ANN401 - values of a job
+    """Write a job of two points of interest, two frequencies, three durations and three patterns over two points."""
+    given: dict[str, Any] = {
+        "unit": "km",
+        "depths": TWO_POINTS.replace(
+            "6h,2,40",
+            "1h,2,20\nwest,2500,5000,1h,10,30\nwest,2500,5000,24h,2,60\n"
+            "west,2500,5000,24h,10,90\nwest,2500,5000,6h,2,40",
+        ).replace(
+            "6h,2,60",
+            "1h,2,25\neast,7500,5000,1h,10,40\n"
+            "east,7500,5000,24h,2,80\neast,7500,5000,24h,10,110\neast,7500,5000,6h,2,60",
+        ),
+        "design__depths": design_tables()["design"]["depths"] | {"crs": "local"},
+        "design__return_periods": [2, 10],
+        "design__durations": ["3h", "6h", "24h"],
+        "design__areal_reduction": US_REDUCTION,
+        "design__point": [
+            {"name": "ford", "basins": ["nw", "ne"]},
+            {"name": "mouth", "basins": ["nw", "ne", "sw", "se"]},
+        ],
+        "design__pattern": [
+            {"shape": "uniform"},
+            {"shape": "nrcs-type-ii", "durations": ["24h"]},
+            {"shape": "triangular", "peak": 0.3},
+        ],
+    }
+    return write_design_job(folder, **(given | changes))
+
+
+def test_every_hyetograph_sums_to_the_areal_depth_of_its_row(tmp_path: Path) -> None:
+    """With one depth for all basins every one of them has that of design_depths, in steps and as a total."""
+    run = run_design(many(tmp_path))
+    areal = run.design_depths.set_index(CASE)["areal_depth"]
+    assert len(areal) == 2 * 2 * 3
+    sums = run.design_hyetographs.groupby([*CASE, "pattern", "basin"], sort=False)
+    assert len(sums) == (2 + 4) * 2 * (3 + 3 + 1)
+    for case, total in sums["depth"].sum().items():
+        assert total == pytest.approx(areal[case[:3]], rel=1e-9)  # type: ignore[index]
+    for case, last in sums["cumulative"].last().items():
+        assert last == pytest.approx(areal[case[:3]], rel=1e-9)  # type: ignore[index]
+    storms = run.design_storms
+    for row in storms.to_dict("records"):
+        assert row["depth"] == pytest.approx(areal[tuple(row[name] for name in CASE)], rel=1e-9)
+        assert row["volume"] == pytest.approx(row["depth"] * 25e3, rel=1e-9)
+
+
+def test_links_multiply_to_the_areal_depth(tmp_path: Path) -> None:
+    """Point depth times factor for intervals, uplift and reduction; the point depths are half west and half east."""
+    uplift = {"factor": 1.2, "source": "invented", "horizon": "2080"}
+    depths = design_tables()["design"]["depths"] | {
+        "crs": "local",
+        "interval_factor": "weiss",
+        "observed_every": "1h",
+    }
+    run = run_design(many(tmp_path, design__uplift=uplift, design__depths=depths))
+    table = run.design_depths
+    product_of = table["point_depth"] * table["interval_factor"] * table["uplift"] * table["reduction"]
+    np.testing.assert_allclose(table["areal_depth"], product_of, rtol=1e-12)
+    six = table[table["duration"] == "6h"].set_index(["point", "return_period"])
+    assert six["point_depth"].to_dict() == pytest.approx(
+        {("ford", 2.0): 50, ("ford", 10.0): 70, ("mouth", 2.0): 50, ("mouth", 10.0): 70}
+    )
+    # Weiss (1964): 8n / (8n - 1) of n = 6 intervals.
+    assert six["interval_factor"].unique().tolist() == pytest.approx([48 / 47])
+    assert six["uplift"].unique().tolist() == [1.2]
+    assert six["reduction_area"].to_dict() == pytest.approx(
+        {(point, years): area for point, area in (("ford", 50), ("mouth", 100)) for years in (2.0, 10.0)}
+    )
+
+
+@pytest.mark.parametrize("shape", ["uniform", "triangular"])
+def test_volumes_of_basins_with_their_own_depths_add_up(tmp_path: Path, shape: str) -> None:
+    """The west's basins get less than the east's in proportion to their points; the whole keeps depth times area."""
+    run = run_design(many(tmp_path, design__sub_basins="own-depth", design__pattern=[{"shape": shape}]))
+    storms = run.design_storms.set_index([*CASE, "basin"]).sort_index()
+    for row in run.design_depths.to_dict("records"):
+        case = tuple(row[name] for name in CASE)
+        assert storms.loc[case, "volume"].sum() == pytest.approx(row["areal_depth"] * row["area"] * 1e3, rel=1e-12)
+    depth = storms["depth"]
+    assert depth["mouth", 10.0, "6h", "sw"] / depth["mouth", 10.0, "6h", "se"] == pytest.approx(60 / 80)
+
+
+def test_basins_reduced_by_their_own_area_are_more_than_the_whole(tmp_path: Path) -> None:
+    """Each quarter has the reduction of its 25 km2, and a warning says that they belong to no one storm."""
+    run = run_design(many(tmp_path, design__areal_reduction=US_REDUCTION | {"area": "own"}))
+    single = run_design(
+        many(tmp_path / "one", design__point=[{"name": "gate", "basins": ["nw"]}], design__areal_reduction=US_REDUCTION)
+    )
+    wanted = single.design_depths.set_index(CASE)["reduction"]
+    for row in run.design_storms.to_dict("records"):
+        assert row["reduction"] == pytest.approx(wanted["gate", row["return_period"], row["duration"]], rel=1e-12)
+    areal = run.design_depths.set_index(CASE)["areal_depth"]
+    totals = run.design_storms[run.design_storms["point"] == "mouth"]
+    assert all(row["depth"] > areal[tuple(row[name] for name in CASE)] for row in totals.to_dict("records"))
+    assert "own-area" in {note.code for note in run.warnings}
+
+
+def test_every_format_reads_back_to_the_hyetographs(tmp_path: Path) -> None:
+    """CSV, a CSV for every basin, Parquet and NetCDF hold what the run has, to the last digit."""
+    formats = ["csv", "csv-per-basin", "parquet", "netcdf"]
+    run = run_design(many(tmp_path, design__formats=formats, design__start="2031-05-04T06:00"))
+    folder = run.write(tmp_path / "written")
+    wanted = run.design_hyetographs
+    table = pd.read_csv(folder / "design_hyetographs.csv")
+    pd.testing.assert_frame_equal(table.drop(columns="time"), wanted, check_dtype=False)
+    parquet = pd.read_parquet(folder / "design_hyetographs.parquet")
+    assert parquet.columns.tolist() == table.columns.tolist()
+    for name in wanted:
+        assert parquet[name].tolist() == wanted[name].tolist()
+    start = np.datetime64("2031-05-04T06:00")
+    times = start + wanted["elapsed_min"].to_numpy() * np.timedelta64(1, "m")
+    assert (parquet["time"].to_numpy() == times).all()
+    assert (pd.to_datetime(table["time"]).to_numpy() == times).all()
+    index = pd.read_csv(folder / "hyetographs" / "index.csv")
+    assert len(index) == (2 + 4) * 3
+    with xr.open_dataset(folder / "design_hyetographs.nc") as nc:
+        basins = nc["basin_id"].values.astype(str).tolist()
+        cases = list(
+            zip(
+                nc["point"].values.astype(str),
+                nc["return_period"].values,
+                nc["pattern"].values.astype(str),
+                strict=True,
+            )
+        )
+        for key, rows in wanted.groupby(["point", "return_period", "pattern", "duration", "basin"]):
+            point, years, pattern, duration, basin = map(str, key)  # type: ignore[arg-type]
+            steps = len(rows)
+            (entry,) = index[
+                (index["point"] == point) & (index["basin"] == basin) & (index["duration"] == duration)
+            ].to_dict("records")
+            own = pd.read_csv(folder / "hyetographs" / entry["file"])
+            column = f"depth_aep_{1 / float(years):g}_{pattern}"
+            assert own[column].tolist() == rows["depth"].tolist()
+            assert own["elapsed_min"].tolist() == rows["elapsed_min"].tolist()
+            found = [
+                k
+                for k, case in enumerate(cases)
+                if case == (point, float(years), pattern)
+                and int(
+                    nc["duration"].dt.total_seconds()[k] if nc["duration"].dtype.kind == "m" else 60 * nc["duration"][k]
+                )
+                == 3600 * steps
+            ]
+            assert len(found) == 1
+            depth = nc["depth"].values[found[0], :, basins.index(basin)]
+            assert depth[:steps].tolist() == rows["depth"].tolist()
+            assert np.isnan(depth[steps:]).all()
+
+
+def test_without_a_start_only_elapsed_time_is_written(tmp_path: Path) -> None:
+    """A design storm has no date unless the job gives one."""
+    folder = run_design(many(tmp_path)).write(tmp_path / "written")
+    head = (folder / "design_hyetographs.csv").read_text(encoding="utf-8").splitlines()[0]
+    assert "elapsed_min" in head
+    assert "time" not in head.split(",")
+
+
+def test_the_same_job_gives_the_same_bytes(tmp_path: Path) -> None:
+    """Nothing that is written depends on when."""
+    job = many(tmp_path, design__formats=["csv", "csv-per-basin", "parquet", "netcdf"])
+    written = []
+    for name in ("one", "two"):
+        folder = run_design(job).write(tmp_path / name)
+        files = sorted(path for path in folder.rglob("*") if path.is_file())
+        written.append({str(path.relative_to(folder)): path.read_bytes() for path in files})
+    assert written[0] == written[1]
+    assert len(written[0]) == 1 + 4 + 1 + 2 + 2 + (2 + 4) * 3
+
+
+def test_gauges_are_not_read_unless_something_asks_for_them(tmp_path: Path) -> None:
+    """Neither a job without gauges nor one whose gauges' files are missing needs them for depths of a table."""
+    without = run_design(write_design_job(tmp_path / "without"))
+    job = write_design_job(
+        tmp_path / "missing",
+        gauges={"file": "nowhere.csv", "crs": "local"},
+        rainfall=[{"file": "nowhere too.csv", "unit": "mm", "interval": "1h"}],
+    )
+    missing = run_design(job)
+    pd.testing.assert_frame_equal(without.design_storms, missing.design_storms)
+    assert sorted(missing.inputs) == ["basins.geojson", "depths.csv"]
+    assert "infill" not in missing.settings or missing.from_record is None
+    assert missing.zone == ""
+
+
+@pytest.mark.parametrize("gauged", [False, True])
+def test_a_job_without_a_design_is_one_clear_line(tmp_path: Path, *, gauged: bool) -> None:
+    """The table that is missing is named."""
+    changes: dict[str, Any] = {"design": None}
+    if gauged:
+        changes |= {
+            "gauges": {"file": "gauges.csv", "crs": "local"},
+            "rainfall": [{"file": "rain.csv", "unit": "mm", "interval": "1h"}],
+        }
+    text = "[design]: found no such table; expected it to be given"
+    with pytest.raises(JobError, match=rf"(^|/job\.toml: ){re.escape(text)}[^\n]*; add it$"):
+        run_design(write_design_job(tmp_path, **changes))
+
+
+def test_inches_and_square_miles(tmp_path: Path) -> None:
+    """2.5 in of a table in inches over 25 square miles: the same in every table, 53 1/3 acre-feet an inch and mile."""
+    text = DEPTHS.replace("60\n24h", "2.5\n24h").replace("20\n", "1\n").replace("30\n", "1.2\n").replace("40\n", "2\n")
+    depths = design_tables()["design"]["depths"] | {"unit": "in"}
+    run = run_design(
+        write_design_job(
+            tmp_path,
+            depths=text.replace("24h,2,60", "24h,2,3").replace("24h,10,90", "24h,10,4"),
+            job={"name": "Four squares", "depth_unit": "in", "area_unit": "mi2"},
+            design__depths=depths,
+        )
+    )
+    (row,) = run.design_depths.to_dict("records")
+    assert (row["depth_unit"], row["area_unit"]) == ("in", "mi2")
+    assert row["area"] == pytest.approx(100)
+    assert row["point_depth"] == pytest.approx(2.5)
+    storms = run.design_storms
+    assert storms["volume"].tolist() == pytest.approx([2.5 * 25 * 640 / 12] * 4)
+    assert storms["volume_unit"].unique().tolist() == ["acre-ft"]
+    assert storms["peak_intensity"].tolist() == pytest.approx([2.5 / 6] * 4)
+    assert storms["intensity_unit"].unique().tolist() == ["in/h"]
+    assert run.design_hyetographs["depth"].tolist() == pytest.approx([2.5 / 6] * 24)
+
+
+def test_nominal_start_is_that_of_every_storm(tmp_path: Path) -> None:
+    """The first step of two hours ends two hours after the start, whatever the duration; a clock is no part of it."""
+    job = write_design_job(
+        tmp_path, design__start="2031-12-31T23:00", design__step="2h", design__durations=["2h", "6h"]
+    )
+    folder = run_design(job).write(tmp_path / "written")
+    table = pd.read_csv(folder / "design_hyetographs.csv")
+    assert table[table["basin"] == "nw"]["time"].tolist() == [
+        "2032-01-01T01:00",
+        "2032-01-01T01:00",
+        "2032-01-01T03:00",
+        "2032-01-01T05:00",
+    ]
+
+
+def test_depths_of_rasters(tmp_path: Path) -> None:
+    """Two columns of cells of 5 km: the left has 40 to 60 mm, the right 50 to 90; halves of the whole and quarters."""
+    asked = {
+        "from": "rasters",
+        "unit": "mm",
+        "series": "annual-maximum",
+        "source": "invented",
+        "date": "2031",
+        "crs": "local",
+    }
+    files = [
+        {"file": f"{k}.asc", "duration": duration, "return_period": years}
+        for k, (duration, years) in enumerate(product(("1h", "6h"), (2, 10)))
+    ]
+    job = write_design_job(
+        tmp_path,
+        unit="km",
+        design__depths=asked | {"raster": files},
+        design__return_periods=[2, 10],
+        design__durations=["1h", "6h"],
+        design__sub_basins="own-depth",
+    )
+    cells = {0: (20, 30), 1: (30, 50), 2: (40, 50), 3: (60, 90)}
+    for k, row in cells.items():
+        write_asc(tmp_path / f"{k}.asc", [row, row], cell=5000.0)
+    run = run_design(job)
+    depths = run.design_depths.set_index(["duration", "return_period"])["areal_depth"]
+    assert depths.to_dict() == pytest.approx({("1h", 2.0): 25, ("1h", 10.0): 40, ("6h", 2.0): 45, ("6h", 10.0): 75})
+    own = run.design_storms.set_index(["duration", "return_period", "basin"])["depth"].sort_index()
+    assert own["6h", 10.0].to_dict() == pytest.approx({"nw": 60, "ne": 90, "sw": 60, "se": 90})
+    weights = run.point_weights
+    assert weights[weights["area_of"] == "union"]["weight"].tolist() == pytest.approx([0.25] * 4)
+    assert set(run.inputs) == {"basins.geojson", "0.asc", "1.asc", "2.asc", "3.asc"}
+
+
+@pytest.mark.parametrize(
+    ("equation", "coefficients", "depth"),
+    [
+        # The intensity is a / (t + b), in mm/h and minutes
+        ("talbot", [{"a": 3000, "b": 20}, {"a": 4800, "b": 20}], 4800 / 80),
+        # The intensity is k T^x / (t + b)^n
+        ("sherman", [{"k": 600, "x": 0.2, "b": 10, "n": 0.7}], 600 * 10**0.2 / 70**0.7),
+    ],
+)
+def test_depths_of_an_equation(
+    tmp_path: Path, equation: str, coefficients: list[dict[str, float]], depth: float
+) -> None:
+    """60 min at 10 years: the intensity is the depth of the hour."""
+    asked = {
+        "from": "equation",
+        "equation": equation,
+        "coefficients": coefficients,
+        "return_periods": [2, 10],
+        "valid": ["5min", "3h"],
+        "unit": "mm/h",
+        "duration_unit": "min",
+        "series": "annual-maximum",
+        "source": "invented",
+        "date": "2031",
+    }
+    job = write_design_job(
+        tmp_path,
+        design__depths=asked,
+        design__durations=["1h"],
+        design__step="5min",
+        design__pattern=[{"shape": "alternating-block"}],
+    )
+    run = run_design(job)
+    assert run.design_depths["areal_depth"].item() == pytest.approx(depth, rel=1e-9)
+    one = run.design_hyetographs[run.design_hyetographs["basin"] == "nw"]
+    assert one["depth"].sum() == pytest.approx(depth, rel=1e-9)
+    with pytest.raises(
+        MethodError, match=r"^union, AEP 0\.1 \(1 in 10\): duration 4 ?h: found that the depths are of "
+    ):
+        run_design(job, ["design.durations=4h"])
+
+
+def test_what_cannot_be_made_is_told_once_with_how_many_cases(tmp_path: Path) -> None:
+    """A duration outside the table, at two points of interest and two frequencies: one line."""
+    job = many(tmp_path, design__durations=["2d"], design__pattern=[{"shape": "uniform"}])
+    text = r"ford, AEP 0\.5 \(1 in 2\) and 3 more: duration 48 h: found that the depths are of 1 h to 24 h; [^\n]*"
+    with pytest.raises(MethodError, match=f"^{text}$"):
+        run_design(job)
+
+
+def test_a_point_of_interest_called_after_another_basin_is_refused(tmp_path: Path) -> None:
+    """Results could not tell them apart; after its own basin it may be called."""
+    points = [{"name": "nw", "basins": ["nw", "ne"]}]
+    with pytest.raises(JobError, match=r"^\[\[design.point\]\] nw: found the id of a basin that is not all that lies"):
+        run_design(write_design_job(tmp_path, design__point=points))
+    points = [{"name": "nw", "basins": ["nw"]}, {"name": "all", "basins": ["ne", "nw"]}]
+    run = run_design(write_design_job(tmp_path, design__point=points, design__formats=["csv", "netcdf"]))
+    assert run.areas.names == ("nw", "all", "ne")
+    assert run.design_storms[["point", "basin", "area"]].to_numpy().tolist() == [
+        ["nw", "nw", pytest.approx(25)],
+        ["all", "ne", pytest.approx(25)],
+        ["all", "nw", pytest.approx(25)],
+    ]
+    with xr.open_dataset(run.write(tmp_path / "written") / "design_hyetographs.nc") as nc:
+        assert sorted(nc["basin_id"].values.astype(str)) == ["ne", "nw"]
+
+
+def test_settings_go_with_a_path_only(tmp_path: Path) -> None:
+    """Beside a job that is resolved they are refused."""
+    path = write_design_job(tmp_path)
+    assert run_design(path, ["design.step=30min"]).asked.step == 30
+    with pytest.raises(JobError, match="found settings beside a job that is already resolved"):
+        run_design(read_design_job(path), ["design.step=30min"])
+
+
+def test_a_job_gives_what_its_path_gives(tmp_path: Path) -> None:
+    """A run given as a job gives what its path gives."""
+    path = many(tmp_path)
+    one, other = run_design(path), run_design(read_design_job(path))
+    pd.testing.assert_frame_equal(one.design_hyetographs, other.design_hyetographs)
+
+
+# The demo by other means: half planes for Thiessen, NumPy for the rest.
+
+
+def thiessen(points: Floats, area: shapely.Geometry) -> Floats:
+    """Return the share of an area that is nearest to each point, by cutting away what is nearer to another."""
+    shares = []
+    for k, one in enumerate(points):
+        part = area
+        for j, other in enumerate(points):
+            if j != k:
+                middle, along = (one + other) / 2, (other - one) / np.hypot(*(other - one))
+                across = np.array([-along[1], along[0]])
+                corners = [middle + 1e6 * across, middle - 1e6 * across]
+                part = part.intersection(
+                    shapely.Polygon([*corners, corners[1] - 1e6 * along, corners[0] - 1e6 * along])
+                )
+        shares.append(part.area / area.area)
+    return np.array(shares)
+
+
+def reduction(area: float, minutes: Floats) -> Floats:
+    """Return the areal reduction of the demo's job: its formula, with its coefficients."""
+    return np.asarray(1 - (1 - np.exp(-0.0028 * area / 1e6)) * np.exp(-0.90 * (minutes / 60) ** 0.27))
+
+
+def test_the_demo_by_other_means(demo: DesignRun) -> None:
+    """Weights by half planes, straight lines on logarithms, the formula, nesting by sorting: all to 1e-6."""
+    frame = gpd.read_file(DEMO.parent / "basins.geojson").set_index("basin").to_crs(demo.plane.crs)
+    table = pd.read_csv(DEMO / "depths.csv")
+    table["minutes"] = pd.to_timedelta(table["duration"]).dt.total_seconds() / 60
+    names = table["point"].unique().tolist()
+    at = table.drop_duplicates("point")
+    positions = gpd.GeoSeries.from_xy(at["lon"], at["lat"], crs="EPSG:4326").to_crs(demo.plane.crs)
+    places = np.column_stack([positions.x, positions.y])
+    steps = np.arange(30.0, 1441, 30)
+    above = {"Teskel Bridge": ["OV1", "OV2"], "Ormavel Mouth": ["OV1", "OV2", "OV3", "OV4"]}
+    areal = demo.design_depths.set_index(["point", "aep", "duration"])["areal_depth"]
+    hyetographs = demo.design_hyetographs.set_index(["point", "aep", "duration", "pattern", "basin"])["depth"]
+
+    def point_depths(aep: float, minutes: Floats) -> Floats:
+        curves = [table[(table["point"] == name) & (table["aep"] == aep)] for name in names]
+        return np.array(
+            [np.exp(np.interp(np.log(minutes), np.log(c["minutes"]), np.log(c["depth_mm"]))) for c in curves]
+        )
+
+    for (point, basins), aep, hours in product(above.items(), (0.5, 0.1, 0.01), (6, 24)):
+        whole = frame.geometry.loc[basins].union_all()
+        minutes = steps[steps <= 60 * hours]
+        own = {basin: thiessen(places, frame.geometry[basin]) @ point_depths(aep, minutes) for basin in basins}
+        curve = thiessen(places, whole) @ point_depths(aep, minutes) * 1.1 * reduction(whole.area, minutes)
+        assert areal[point, aep, f"{hours}h"] == pytest.approx(curve[-1], rel=1e-6)
+        fallen = np.sort(np.diff(curve, prepend=0))[::-1]
+        middle, nested = len(fallen) // 2 - 1, np.zeros(len(fallen))
+        for rank, depth in enumerate(fallen):
+            nested[middle + (rank + 1) // 2 * (1 if rank % 2 else -1)] = depth
+        volume = sum(own[basin][-1] * frame.geometry[basin].area for basin in basins)
+        for basin in basins:
+            share = own[basin][-1] * whole.area / volume
+            found = hyetographs[point, aep, f"{hours}h", "nested", basin].to_numpy()
+            np.testing.assert_allclose(found, nested * share, rtol=1e-6)
+            # The corner at three quarters and the ends of all steps are among the places, so that this is exact.
+            late = np.interp(np.linspace(0, 1, 4801), [0, 0.75, 1], [0, 1, 0])
+            triangle = np.concatenate([[0], np.cumsum(late[1:] + late[:-1])])[:: 4800 // len(fallen)]
+            found = hyetographs[point, aep, f"{hours}h", "triangular", basin].to_numpy()
+            np.testing.assert_allclose(found, np.diff(triangle) / triangle[-1] * curve[-1] * share, rtol=1e-6)
+
+
+def test_the_demo_s_weights_on_a_fine_grid(demo: DesignRun) -> None:
+    """Counting the squares of a grid of 100 m by their nearest point gives the weights to a few in a thousand."""
+    frame = gpd.read_file(DEMO.parent / "basins.geojson").set_index("basin").to_crs(demo.plane.crs)
+    at = pd.read_csv(DEMO / "depths.csv").drop_duplicates("point")
+    positions = gpd.GeoSeries.from_xy(at["lon"], at["lat"], crs="EPSG:4326").to_crs(demo.plane.crs)
+    west, south, east, north = frame.total_bounds
+    x, y = (grid.ravel() for grid in np.meshgrid(np.arange(west, east, 100), np.arange(south, north, 100)))
+    nearest = np.argmin([(x - point.x) ** 2 + (y - point.y) ** 2 for point in positions], axis=0)
+    found = demo.point_weights.pivot_table(index="area_of", columns="depth_point", values="weight").fillna(0)
+    for basin, polygon in frame.geometry.items():
+        inside = shapely.contains_xy(polygon, x, y)
+        counted = np.bincount(nearest[inside], minlength=len(at)) / inside.sum()
+        np.testing.assert_allclose(found.loc[basin, at["point"].tolist()], counted, atol=4e-3)
+
+
+@pytest.fixture(scope="module")
+def demo() -> DesignRun:
+    return run_design(DEMO / "job.toml")
+
+
+def test_nested_depths_of_the_demo_are_inside_each_other(demo: DesignRun) -> None:
+    """The greatest 6 h of the nested 24 h over the whole have the areal depth of 6 h, and all 24 h theirs."""
+    areal = demo.design_depths.set_index(["point", "aep", "duration"])["areal_depth"]
+    table = demo.design_hyetographs
+    areas = dict(zip(demo.basins.ids, demo.basins.areas, strict=True))
+    for point, aep in product(("Teskel Bridge", "Ormavel Mouth"), (0.5, 0.1, 0.01)):
+        rows = table[
+            (table["point"] == point)
+            & (table["aep"] == aep)
+            & (table["duration"] == "24h")
+            & (table["pattern"] == "nested")
+        ]
+        depth = rows.pivot_table(index="elapsed_min", columns="basin", values="depth")
+        own = np.array([areas[basin] for basin in depth])
+        mean = pd.Series(depth.to_numpy() @ own / own.sum())
+        assert mean.rolling(12).sum().max() == pytest.approx(areal[point, aep, "6h"], rel=1e-9)
+        assert mean.sum() == pytest.approx(areal[point, aep, "24h"], rel=1e-9)
+
+
+def test_depths_of_the_demo_grow_with_duration_and_rarity(demo: DesignRun) -> None:
+    """Rarer is deeper, longer is deeper, and a larger area has less of it."""
+    areal = demo.design_depths.set_index(["point", "duration", "aep"])["areal_depth"]
+    for point, duration in product(("Teskel Bridge", "Ormavel Mouth"), ("6h", "24h")):
+        rising = [areal[point, duration, aep] for aep in (0.5, 0.1, 0.01)]
+        assert all(a < b for a, b in pairwise(rising))
+    for aep in (0.5, 0.1, 0.01):
+        assert (
+            areal["Ormavel Mouth", "6h", aep] < areal["Teskel Bridge", "6h", aep] < areal["Teskel Bridge", "24h", aep]
+        )
