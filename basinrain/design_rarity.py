@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from functools import cached_property, partial
 from typing import Final
@@ -18,7 +19,7 @@ from basinrain.cautions import screening_cautions, storm_cautions
 from basinrain.design_areas import Areas
 from basinrain.design_asked import Asked
 from basinrain.design_sources import nearest_points
-from basinrain.designstorm.depth_chain import DepthChain
+from basinrain.designstorm.depth_chain import DepthChain, Reducer
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.patterns import Ordinates, ordinates_of
 from basinrain.designstorm.rarity import StormDepths, StormRarity, comparable, storm_rarity
@@ -247,7 +248,7 @@ def _rarity(
         )
     rows = _rows_apart(observed.areas)
     names = tuple(observed.areas.names[row] for row in rows)
-    ladder = np.stack([_ladder(chain, row, minutes, frequencies) for row in rows])
+    ladder = _ladder(chain, rows, minutes, frequencies)
     means = storm.means
     with np.errstate(invalid="ignore"):
         infilled = (means.infilled / means.total)[rows]
@@ -289,16 +290,38 @@ def _depths(
     return StormDepths(names=names, depth=most, ends=ends, ladder=ladder, aligned=aligned)
 
 
-def _ladder(chain: DepthChain, row: int, minutes: Floats, frequencies: Sequence[Frequency]) -> Floats:
-    """Return areal depths by duration and frequency, NaN where the table or the reduction has no answer."""
-    depths = np.full((len(minutes), len(frequencies)), np.nan)
-    for d, each in enumerate(minutes):
-        for f, frequency in enumerate(frequencies):
-            try:
-                depths[d, f] = chain.links(row, np.array([each]), frequency).areal[0]
-            except MethodError:
-                continue
+def _ladder(chain: DepthChain, rows: Sequence[int], minutes: Floats, frequencies: Sequence[Frequency]) -> Floats:
+    """Return areal depths by area, duration and frequency, NaN where the table or the reduction has no answer."""
+    depths = np.stack(
+        [_answers(partial(_unreduced, chain, rows, frequency), minutes, len(rows)) for frequency in frequencies],
+        axis=-1,
+    )
+    if chain.reduce is not None:
+        for k, row in enumerate(rows):
+            for f, frequency in enumerate(frequencies):
+                factors = partial(_factors, chain.reduce, float(chain.areas[row]), frequency)
+                depths[k, :, f] *= _answers(factors, minutes, 1)[0]
     return depths
+
+
+def _unreduced(chain: DepthChain, rows: Sequence[int], frequency: Frequency, minutes: Floats) -> Floats:
+    return chain.unreduced(rows, minutes, frequency)
+
+
+def _factors(reduce: Reducer, area: float, frequency: Frequency, minutes: Floats) -> Floats:
+    return reduce(area, minutes, frequency).factor[None]
+
+
+def _answers(ask: Callable[[Floats], Floats], minutes: Floats, n_rows: int) -> Floats:
+    """Return what is said of all durations, or of each by itself where some have no answer; (n_rows, n_durations)."""
+    try:
+        return ask(minutes)
+    except MethodError:
+        answers = np.full((n_rows, len(minutes)), np.nan)
+        for d in range(len(minutes)):
+            with suppress(MethodError):
+                answers[:, d] = ask(minutes[d : d + 1])[:, 0]
+        return answers
 
 
 def _gauges(
@@ -316,10 +339,10 @@ def _gauges(
     if not len(network):
         return None
     nearest = nearest_points(chain.source, network)
-    points = np.eye(len(chain.source.points))[nearest]
-    ones = np.ones(len(network))
-    at_points = replace(chain, weights=points, areas=ones, reduce=None)
     # Gauges with one nearest point share its ladder.
-    of_point = {int(near): _ladder(at_points, k, minutes, frequencies) for k, near in enumerate(nearest)}
-    ladder = np.stack([of_point[int(near)] for near in nearest])
+    points, which = np.unique(nearest, return_inverse=True)
+    weights = np.zeros((len(points), len(chain.source.points)))
+    weights[np.arange(len(points)), points] = 1.0
+    at_points = replace(chain, weights=weights, areas=np.ones(len(points)), reduce=None)
+    ladder = _ladder(at_points, range(len(points)), minutes, frequencies)[which]
     return _depths(storm, storm.window.depth[:, counts], minutes, names=network.ids, ladder=ladder, window=window)

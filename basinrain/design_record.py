@@ -112,9 +112,12 @@ def record_source(
     _check_weights(weights, names, table.average)
     depth = infill.complete(record, long=inputs.silent(0, len(starts)), trace=False).record.depth[:, columns].copy()
     depth[(record.status == Status.NOT_INSTALLED)[:, columns]] = np.nan
+    gaps = np.isnan(depth)
+    depth[gaps] = 0.0
+    means = depth @ weights.T
     # A gauge without weight in an area does not take the area's number away.
-    means = np.where(np.isnan(depth), 0.0, depth) @ weights.T
-    means[np.isnan(depth).astype(float) @ (weights != 0).T.astype(float) > 0] = np.nan
+    lost = np.flatnonzero(gaps.any(axis=1))
+    means[lost] = np.where(gaps[lost].astype(float) @ (weights != 0).T > 0, np.nan, means[lost])
     minutes = _minutes(asked, step)
     found = annual_maxima(
         starts,

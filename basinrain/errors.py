@@ -18,7 +18,7 @@ from __future__ import annotations
 
 import difflib
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import partial
 from typing import Any
 
@@ -33,6 +33,7 @@ __all__ = [
     "SettingError",
     "WriteError",
     "nearest_name",
+    "unknown",
 ]
 
 
@@ -211,6 +212,29 @@ class Problems:
                 )
             )
 
+    def include(self, problem: Problem) -> None:
+        """Record a problem that is made already; where it names no file, the collector's is meant."""
+        self._count += 1
+        if len(self._kept) < self._limit:
+            self._kept.append(problem if problem.file else replace(problem, file=self._file))
+
+    def check_known(self, item: str, found: object, known: Iterable[str]) -> None:
+        """Record a name that is none of those known, as :func:`unknown` says it; do nothing where it is one.
+
+        Examples
+        --------
+        >>> problems = Problems(file="depths.csv")
+        >>> problems.check_known("layout", "wide", ["long", "wide"])
+        >>> problems.check_known("layout", "width", ["long", "wide"])
+        >>> problems.raise_as(JobError)
+        Traceback (most recent call last):
+            ...
+        basinrain.errors.JobError: depths.csv: layout: found 'width'; expected one of: long, wide; did you mean 'wide'?
+        """
+        accepted = list(known)
+        if found not in accepted:
+            self.include(unknown(item, found, accepted))
+
     def extend(self, error: BasinRainError) -> None:
         """Take over the problems of an error, those that it does not list included."""
         self._count += len(error.problems) + error.unlisted
@@ -254,3 +278,34 @@ def nearest_name(name: str, known: Iterable[str]) -> str:
         meant = next(n for n in names if n.lower() == close[0])
         return f"did you mean '{meant}'?"
     return "one of: " + ", ".join(names)
+
+
+def unknown(item: str, found: object, known: Iterable[str], *, line: int | None = None) -> Problem:
+    """Return the problem of a name that is none of those known.
+
+    Parameters
+    ----------
+    item
+        What the name is for, in the user's words.
+    found
+        What was given; no text at all is no known name either.
+    known
+        What is accepted.
+    line
+        The line of its file, where that is known.
+
+    Examples
+    --------
+    >>> print(unknown("averaging method", "theissen", ["arithmetic", "thiessen", "idw"]))
+    averaging method: found 'theissen'; expected one of: arithmetic, thiessen, idw; did you mean 'thiessen'?
+    >>> print(unknown("unit", "zzz", ["mm", "in"]))
+    unit: found 'zzz'; expected one of: mm, in
+    """
+    names = list(known)
+    return Problem(
+        item=item,
+        found=f"'{found}'",
+        expected="one of: " + ", ".join(names),
+        remedy=nearest_name(str(found), names),
+        line=line,
+    )

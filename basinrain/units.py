@@ -9,7 +9,7 @@ from __future__ import annotations
 from types import MappingProxyType
 from typing import Final
 
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, unknown
 
 __all__ = [
     "AREA_UNITS",
@@ -63,12 +63,7 @@ def _factor(unit: str, table: MappingProxyType[str, float], kind: str) -> float:
         return table[unit]
     except KeyError:
         raise JobError(
-            Problem(
-                item=f"{kind} unit",
-                found=f"'{unit}'",
-                expected="one of: " + ", ".join(table),
-                remedy=nearest_name(unit, table),
-            )
+            unknown(f"{kind} unit", unit, table)
         ) from None
 
 

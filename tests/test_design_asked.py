@@ -208,7 +208,7 @@ def test_values_of_a_reduction_are_checked_before_any_file_is_read() -> None:
     assert line.startswith("[design.areal_reduction] region: found 'Mars'; expected one of: East Coast North, ")
     own = {"method": "exponential", "source": "invented", "coefficients": {"c1": 0.01, "c2": 0.2, "c3": 0.2}}
     item = "[design.areal_reduction]"
-    for changes, messages in [
+    cases: list[tuple[dict[str, Any], list[str]]] = [
         (
             {"coefficients": {"c1": 0.01, "c5": 1, "c4": 1}},
             [
@@ -232,20 +232,25 @@ def test_values_of_a_reduction_are_checked_before_any_file_is_read() -> None:
         ),
         (
             {"valid_areas": [1, 2]},
-            [(
-                f"{item} area_unit: found nothing beside valid_areas; expected the unit of valid_areas; give both, "
-                "or neither"
-            )],
+            [
+                (
+                    f"{item} area_unit: found nothing beside valid_areas; expected the unit of valid_areas; give both, "
+                    "or neither"
+                )
+            ],
         ),
         (
             {"area_unit": "km2"},
             [
-                (f"{item} valid_areas: found nothing beside area_unit; expected the least and the greatest area; "
-                "give both, or neither")
+                (
+                    f"{item} valid_areas: found nothing beside area_unit; expected the least and the greatest area; "
+                    "give both, or neither"
+                )
             ],
         ),
-    ]:  # fmt: skip
-        assert refusal(design__areal_reduction=own | dict(changes)) == messages
+    ]
+    for changes, messages in cases:
+        assert refusal(design__areal_reduction={**own, **changes}) == messages
 
 
 def test_areal_depths_are_not_reduced() -> None:

@@ -3,16 +3,13 @@
 from __future__ import annotations
 
 import re
-from itertools import pairwise, product
+from itertools import product
 from pathlib import Path
 from typing import Any
 
-import geopandas as gpd
 import numpy as np
-import numpy.typing as npt
 import pandas as pd
 import pytest
-import shapely
 import xarray as xr
 from design_jobs import DEPTHS, TWO_POINTS, US_REDUCTION, design_tables, write_design_job
 from rasterfiles import write_asc
@@ -20,11 +17,7 @@ from rasterfiles import write_asc
 from basinrain.design_job import run_design
 from basinrain.errors import JobError, MethodError
 from basinrain.jobfile import read_design_job
-from basinrain.results_design import DesignRun
 
-Floats = npt.NDArray[np.float64]
-
-DEMO = Path(__file__).parents[1] / "demo_basins" / "design"
 CASE = ["point", "return_period", "duration"]
 
 
@@ -155,7 +148,7 @@ def test_every_format_reads_back_to_the_hyetographs(tmp_path: Path) -> None:
             )
         )
         for key, rows in wanted.groupby(["point", "return_period", "pattern", "duration", "basin"]):
-            point, years, pattern, duration, basin = map(str, key)  # type: ignore[arg-type]
+            point, years, pattern, duration, basin = map(str, key)
             steps = len(rows)
             (entry,) = index[
                 (index["point"] == point) & (index["basin"] == basin) & (index["duration"] == duration)
@@ -382,121 +375,3 @@ def test_a_job_gives_what_its_path_gives(tmp_path: Path) -> None:
     path = many(tmp_path)
     one, other = run_design(path), run_design(read_design_job(path))
     pd.testing.assert_frame_equal(one.design_hyetographs, other.design_hyetographs)
-
-
-# The demo by other means: half planes for Thiessen, NumPy for the rest.
-
-
-def thiessen(points: Floats, area: shapely.Geometry) -> Floats:
-    """Return the share of an area that is nearest to each point, by cutting away what is nearer to another."""
-    shares = []
-    for k, one in enumerate(points):
-        part = area
-        for j, other in enumerate(points):
-            if j != k:
-                middle, along = (one + other) / 2, (other - one) / np.hypot(*(other - one))
-                across = np.array([-along[1], along[0]])
-                corners = [middle + 1e6 * across, middle - 1e6 * across]
-                part = part.intersection(
-                    shapely.Polygon([*corners, corners[1] - 1e6 * along, corners[0] - 1e6 * along])
-                )
-        shares.append(part.area / area.area)
-    return np.array(shares)
-
-
-def reduction(area: float, minutes: Floats) -> Floats:
-    """Return the areal reduction of the demo's job: its formula, with its coefficients."""
-    return np.asarray(1 - (1 - np.exp(-0.0028 * area / 1e6)) * np.exp(-0.90 * (minutes / 60) ** 0.27))
-
-
-def test_the_demo_by_other_means(demo: DesignRun) -> None:
-    """Weights by half planes, straight lines on logarithms, the formula, nesting by sorting: all to 1e-6."""
-    frame = gpd.read_file(DEMO.parent / "basins.geojson").set_index("basin").to_crs(demo.plane.crs)
-    table = pd.read_csv(DEMO / "depths.csv")
-    table["minutes"] = pd.to_timedelta(table["duration"]).dt.total_seconds() / 60
-    names = table["point"].unique().tolist()
-    at = table.drop_duplicates("point")
-    positions = gpd.GeoSeries.from_xy(at["lon"], at["lat"], crs="EPSG:4326").to_crs(demo.plane.crs)
-    places = np.column_stack([positions.x, positions.y])
-    steps = np.arange(30.0, 1441, 30)
-    above = {"Teskel Bridge": ["OV1", "OV2"], "Ormavel Mouth": ["OV1", "OV2", "OV3", "OV4"]}
-    areal = demo.design_depths.set_index(["point", "aep", "duration"])["areal_depth"]
-    hyetographs = demo.design_hyetographs.set_index(["point", "aep", "duration", "pattern", "basin"])["depth"]
-
-    def point_depths(aep: float, minutes: Floats) -> Floats:
-        curves = [table[(table["point"] == name) & (table["aep"] == aep)] for name in names]
-        return np.array(
-            [np.exp(np.interp(np.log(minutes), np.log(c["minutes"]), np.log(c["depth_mm"]))) for c in curves]
-        )
-
-    for (point, basins), aep, hours in product(above.items(), (0.5, 0.1, 0.01), (6, 24)):
-        whole = frame.geometry.loc[basins].union_all()
-        minutes = steps[steps <= 60 * hours]
-        own = {basin: thiessen(places, frame.geometry[basin]) @ point_depths(aep, minutes) for basin in basins}
-        curve = thiessen(places, whole) @ point_depths(aep, minutes) * 1.1 * reduction(whole.area, minutes)
-        assert areal[point, aep, f"{hours}h"] == pytest.approx(curve[-1], rel=1e-6)
-        fallen = np.sort(np.diff(curve, prepend=0))[::-1]
-        middle, nested = len(fallen) // 2 - 1, np.zeros(len(fallen))
-        for rank, depth in enumerate(fallen):
-            nested[middle + (rank + 1) // 2 * (1 if rank % 2 else -1)] = depth
-        volume = sum(own[basin][-1] * frame.geometry[basin].area for basin in basins)
-        for basin in basins:
-            share = own[basin][-1] * whole.area / volume
-            found = hyetographs[point, aep, f"{hours}h", "nested", basin].to_numpy()
-            np.testing.assert_allclose(found, nested * share, rtol=1e-6)
-            # The corner at three quarters and the ends of all steps are among the places, so that this is exact.
-            late = np.interp(np.linspace(0, 1, 4801), [0, 0.75, 1], [0, 1, 0])
-            triangle = np.concatenate([[0], np.cumsum(late[1:] + late[:-1])])[:: 4800 // len(fallen)]
-            found = hyetographs[point, aep, f"{hours}h", "triangular", basin].to_numpy()
-            np.testing.assert_allclose(found, np.diff(triangle) / triangle[-1] * curve[-1] * share, rtol=1e-6)
-
-
-def test_the_demo_s_weights_on_a_fine_grid(demo: DesignRun) -> None:
-    """Counting the squares of a grid of 100 m by their nearest point gives the weights to a few in a thousand."""
-    frame = gpd.read_file(DEMO.parent / "basins.geojson").set_index("basin").to_crs(demo.plane.crs)
-    at = pd.read_csv(DEMO / "depths.csv").drop_duplicates("point")
-    positions = gpd.GeoSeries.from_xy(at["lon"], at["lat"], crs="EPSG:4326").to_crs(demo.plane.crs)
-    west, south, east, north = frame.total_bounds
-    x, y = (grid.ravel() for grid in np.meshgrid(np.arange(west, east, 100), np.arange(south, north, 100)))
-    nearest = np.argmin([(x - point.x) ** 2 + (y - point.y) ** 2 for point in positions], axis=0)
-    found = demo.point_weights.pivot_table(index="area_of", columns="depth_point", values="weight").fillna(0)
-    for basin, polygon in frame.geometry.items():
-        inside = shapely.contains_xy(polygon, x, y)
-        counted = np.bincount(nearest[inside], minlength=len(at)) / inside.sum()
-        np.testing.assert_allclose(found.loc[basin, at["point"].tolist()], counted, atol=4e-3)
-
-
-@pytest.fixture(scope="module")
-def demo() -> DesignRun:
-    return run_design(DEMO / "job.toml")
-
-
-def test_nested_depths_of_the_demo_are_inside_each_other(demo: DesignRun) -> None:
-    """The greatest 6 h of the nested 24 h over the whole have the areal depth of 6 h, and all 24 h theirs."""
-    areal = demo.design_depths.set_index(["point", "aep", "duration"])["areal_depth"]
-    table = demo.design_hyetographs
-    areas = dict(zip(demo.basins.ids, demo.basins.areas, strict=True))
-    for point, aep in product(("Teskel Bridge", "Ormavel Mouth"), (0.5, 0.1, 0.01)):
-        rows = table[
-            (table["point"] == point)
-            & (table["aep"] == aep)
-            & (table["duration"] == "24h")
-            & (table["pattern"] == "nested")
-        ]
-        depth = rows.pivot_table(index="elapsed_min", columns="basin", values="depth")
-        own = np.array([areas[basin] for basin in depth])
-        mean = pd.Series(depth.to_numpy() @ own / own.sum())
-        assert mean.rolling(12).sum().max() == pytest.approx(areal[point, aep, "6h"], rel=1e-9)
-        assert mean.sum() == pytest.approx(areal[point, aep, "24h"], rel=1e-9)
-
-
-def test_depths_of_the_demo_grow_with_duration_and_rarity(demo: DesignRun) -> None:
-    """Rarer is deeper, longer is deeper, and a larger area has less of it."""
-    areal = demo.design_depths.set_index(["point", "duration", "aep"])["areal_depth"]
-    for point, duration in product(("Teskel Bridge", "Ormavel Mouth"), ("6h", "24h")):
-        rising = [areal[point, duration, aep] for aep in (0.5, 0.1, 0.01)]
-        assert all(a < b for a, b in pairwise(rising))
-    for aep in (0.5, 0.1, 0.01):
-        assert (
-            areal["Ormavel Mouth", "6h", aep] < areal["Teskel Bridge", "6h", aep] < areal["Teskel Bridge", "24h", aep]
-        )

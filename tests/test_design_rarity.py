@@ -52,6 +52,12 @@ def rows(run: DesignRun, kind: str = "areal") -> pd.DataFrame:
     return table[table["kind"] == kind].set_index(["place", "duration"])
 
 
+def one_row(table: pd.DataFrame, place: str, duration: str) -> dict[str, Any]:
+    """Return what is found of a place and a duration, by column."""
+    (row,) = table.reset_index().query("place == @place and duration == @duration").to_dict("records")
+    return {str(name): value for name, value in row.items()}
+
+
 def variate(years: float) -> float:
     """Return Gumbel's reduced variate of a return period in an annual maximum series."""
     return float(-np.log(-np.log(1 - 1 / years)))
@@ -71,7 +77,7 @@ def test_depths_of_the_storm_are_those_on_the_drawing(tmp_path: Path) -> None:
         mean = share * alder + (1 - share) * birch
         for hours in (1, 6):
             sums = [mean[k : k + hours].sum() for k in range(13 - hours)]
-            row = found.loc[(area, f"{hours}h")]
+            row = one_row(found, area, f"{hours}h")
             assert row["depth"] == pytest.approx(max(sums), rel=1e-12)
             assert row["window_end"] == f"2031-05-04T{int(np.argmax(sums)) + hours:02d}:00"
             assert row["depth_aligned"] == pytest.approx(max(sums[::hours]), rel=1e-12)
@@ -86,7 +92,7 @@ def test_each_area_is_compared_with_its_own_reduction(tmp_path: Path) -> None:
     found = rows(run_design(place))
     for area, one, six in (("union", 0.8, 0.9), ("west", 0.84, 0.94), ("east", 0.84, 0.94)):
         for duration, factor, (two, ten) in (("1h", one, (20, 30)), ("6h", six, (40, 60))):
-            row = found.loc[(area, duration)]
+            row = one_row(found, area, duration)
             if row["depth"] <= factor * ten:
                 wanted = years_of(row["depth"], factor * two, factor * ten)
                 assert row["estimate_return_period"] == pytest.approx(wanted, rel=1e-9)
@@ -94,7 +100,8 @@ def test_each_area_is_compared_with_its_own_reduction(tmp_path: Path) -> None:
                 assert (row["at_least_return_period"], row["at_most_return_period"]) == (2, 10)
             else:
                 assert row["words"] == "rarer than 1 in 10 a year (the table's end)"
-                assert row[["estimate_aep", "estimate_return_period", "at_most_return_period"]].isna().all()
+                blank = ("estimate_aep", "estimate_return_period", "at_most_return_period")
+                assert all(np.isnan(row[name]) for name in blank)
                 assert row["at_least_return_period"] == 10
     # 18 mm of 16 to 24, 50.8 of 36 to 54; 20 of 16.8 to 25.2, 48 of 37.6 to 56.4; 26 of 25.2 and 56.8 of 56.4.
     assert found["estimate_aep"].notna().tolist() == [True, True, True, True, False, False]
@@ -140,8 +147,29 @@ def test_the_wettest_gauge_is_compared_with_its_nearest_point_unreduced(tmp_path
         0.8 * sum(weights["union", point] * depth for point, depth in (("near Alder", a), ("near Birch", b)))
         for a, b in ((20, 10), (40, 34))
     )
-    areal = rows(run).loc[("union", "1h")]
+    areal = one_row(rows(run), "union", "1h")
     assert areal["estimate_return_period"] == pytest.approx(years_of(18, two, ten), rel=1e-9)
+
+
+def test_a_duration_without_a_reduction_is_compared_at_gauges_alone(tmp_path: Path) -> None:
+    """The table of reductions ends at 6 h: of 12 h nothing is known over the areas, at Birch it is."""
+    reduction = {"method": "table", "file": "reduction.csv", "area_unit": "km2", "source": "invented"}
+    place = job(
+        tmp_path,
+        design__areal_reduction=reduction,
+        design__rarity={"average": "thiessen", "durations": ["1h", "6h", "12h"]},
+    )
+    (tmp_path / "reduction.csv").write_text(REDUCTION)
+    run = run_design(place)
+    row = one_row(rows(run), "union", "12h")
+    assert row["depth"] == pytest.approx(0.6 * sum(ALDER) + 0.4 * sum(BIRCH))
+    assert row["words"] == "not known: no depths of the table"
+    assert np.isnan(row["at_least_return_period"])
+    assert np.isnan(row["at_most_return_period"])
+    # 12 h lie halfway between 6 and 24 h on logarithms: 49 mm at 2 and 73.5 at 10 years.
+    at_gauge = one_row(rows(run, "point"), "Birch", "12h")
+    assert at_gauge["estimate_return_period"] == pytest.approx(years_of(60, 2400**0.5, 5400**0.5), rel=1e-9)
+    assert one_row(rows(run), "union", "6h")["at_least_return_period"] == 2
 
 
 def test_what_was_infilled_is_said(tmp_path: Path) -> None:

@@ -7,7 +7,7 @@ import pickle
 import pytest
 
 from basinrain import errors
-from basinrain.errors import BasinRainError, DataError, Problem, Problems, ReadError, nearest_name
+from basinrain.errors import BasinRainError, DataError, Problem, Problems, ReadError, nearest_name, unknown
 
 
 def collected(number: int, *, limit: int = 50) -> Problems:
@@ -110,6 +110,30 @@ def test_a_problem_of_another_file_names_that_file() -> None:
 def test_the_nearest_name(name: str, known: list[str], advice: str) -> None:
     """A near name is written as it is known, whatever the case; without one all are listed."""
     assert nearest_name(name, iter(known)) == advice
+
+
+def test_only_unknown_names_are_reported() -> None:
+    """A name that is known is no problem; another is one, in whatever the known ones come."""
+    problems = Problems(file="job.toml")
+    problems.check_known("shape", "b", {"a": 1, "b": 2})
+    assert len(problems) == 0
+    problems.check_known("shape", "c", iter(["aa", "bb"]))
+    with pytest.raises(DataError, match=r"^job\.toml: shape: found 'c'; expected one of: aa, bb$"):
+        problems.raise_as(DataError)
+
+
+def test_what_is_no_text_is_no_known_name() -> None:
+    """A number given for a name is shown as it is, on its line."""
+    assert str(unknown("unit", 3, iter(["mm", "in"]), line=4)) == "line 4: unit: found '3'; expected one of: mm, in"
+
+
+def test_problems_made_already_are_kept_to_the_limit() -> None:
+    """Those beyond it are counted, and one that names its own file keeps it."""
+    problems = Problems(file="job.toml", limit=1)
+    problems.include(Problem(item="a", found="b", file="other.csv"))
+    problems.include(Problem(item="c", found="d"))
+    with pytest.raises(DataError, match=r"^other\.csv: a: found b\n1 more problem: found but not listed$"):
+        problems.raise_as(DataError)
 
 
 def test_every_error_is_one_of_ours() -> None:

@@ -23,7 +23,7 @@ from basinrain.averaging.thiessen import (
     thiessen_weights,
 )
 from basinrain.averaging.thiessen_reweighing import prepare_thiessen_reweigher
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, unknown
 
 __all__ = [
     "METHODS",
@@ -76,11 +76,6 @@ mean 'thiessen'?
     """
     if name not in METHODS:
         raise JobError(
-            Problem(
-                item="averaging method",
-                found=f"'{name}'",
-                expected="one of: " + ", ".join(METHODS),
-                remedy=nearest_name(name, METHODS),
-            )
+            unknown("averaging method", name, METHODS)
         )
     return METHODS[name]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -159,15 +159,25 @@ class DepthChain:
             remarks=() if reduced is None else reduced.remarks,
         )
 
+    def unreduced(self, rows: Sequence[int], minutes: Floats, frequency: Frequency) -> Floats:
+        """Return depths of several areas before the areal reduction, mm, shape (n_rows, n).
+
+        Raises
+        ------
+        MethodError
+            The source has no answer.
+        """
+        asked = np.asarray(minutes, dtype=float)
+        depth: Floats = self.weights[list(rows)] @ self.source.at(asked, frequency, extrapolate=self.extrapolate)
+        factor = 1.0 if self.interval_factor is None else self.interval_factor(asked)
+        return depth * factor * self.uplift
+
     def curves(self, area: int, minutes: int, frequency: Frequency, *, reduced_as: int | None = None) -> CurvePair:
         """Return areal depths by duration, with the reduction of one duration, and each with that of its own."""
         whole = self.links(area, np.array([float(minutes)]), frequency, reduced_as=reduced_as).reduction[0]
 
         def one(durations: Floats) -> Floats:
-            asked = np.asarray(durations, dtype=float)
-            point = self.weights[area] @ self.source.at(asked, frequency, extrapolate=self.extrapolate)
-            factor = 1.0 if self.interval_factor is None else self.interval_factor(asked)
-            result: Floats = point * factor * self.uplift * whole
+            result: Floats = self.unreduced([area], durations, frequency)[0] * whole
             return result
 
         said: dict[str, None] = {}

@@ -149,8 +149,13 @@ def design_storm(
     >>> from basinrain.designstorm.patterns import pattern
     >>> from basinrain.designstorm.point_depths import PointDepths
     >>> table = PointDepths(
-    ...     points=("P", "Q"), durations=[30, 60], return_periods=[10], series="annual-maximum",
-    ...     depth=[[[20], [30]], [[25], [40]]], source="invented", date="2031",
+    ...     points=("P", "Q"),
+    ...     durations=[30, 60],
+    ...     return_periods=[10],
+    ...     series="annual-maximum",
+    ...     depth=[[[20], [30]], [[25], [40]]],
+    ...     source="invented",
+    ...     date="2031",
     ... )
     >>> chain = DepthChain(
     ...     source=table, weights=np.array([[0.5, 0.5], [1, 0], [0, 1]]), areas=np.array([2e6, 1e6, 1e6])
@@ -166,12 +171,15 @@ def design_storm(
            [15., 20.]])
     """
     at = np.array([float(minutes)])
+    asked: dict[str, Any] = {"frequency": frequency, "choice": choice, "minutes": minutes, "step": step}
+    remarks: list[str] = []
+    clamped: list[str] = []
     if own_area:
-        depths, reductions, remarks, clamped = [], [], [], []
+        depths, reductions = [], []
         for row, basin in zip(point.rows, point.basins, strict=True):
             means = row if sub_basins == OWN_DEPTH else point.row
             links = chain.links(means, at, frequency, reduced_as=row)
-            shaped, said = _shaped(chain, means, row, links.areal[0], frequency, choice, minutes, step)
+            shaped, said = _shaped(chain, means, row, links.areal[0], **asked)
             depths.append(shaped.depth)
             reductions.append(links.reduction[0])
             remarks += shaped.remarks
@@ -179,9 +187,9 @@ def design_storm(
         depth, reduction = np.stack(depths, axis=1), np.array(reductions)
     else:
         links = chain.links(point.row, at, frequency)
-        shaped, said = _shaped(chain, point.row, point.row, links.areal[0], frequency, choice, minutes, step)
-        remarks = list(shaped.remarks)
-        clamped = [f"{point.name}: {text}" for text in (*links.clamped, *said)]
+        shaped, said = _shaped(chain, point.row, point.row, links.areal[0], **asked)
+        remarks += shaped.remarks
+        clamped += [f"{point.name}: {text}" for text in (*links.clamped, *said)]
         share = np.ones(len(point.rows))
         if sub_basins == OWN_DEPTH:
             share = _shares(chain, point, at, frequency)
@@ -204,6 +212,7 @@ def _shaped(
     row: int,
     reduced_as: int,
     total: float,
+    *,
     frequency: Frequency,
     choice: PatternChoice,
     minutes: int,
@@ -233,7 +242,7 @@ def _shares(chain: DepthChain, point: PointOfInterest, at: Floats, frequency: Fr
                 remedy=f'write sub_basins = "{SAME_DEPTH}", or name basins that do not overlap',
             )
         )
-    own = np.array([chain.links(row, at, frequency, reduced_as=point.row).unreduced[0] for row in point.rows])
+    own = chain.unreduced(point.rows, at, frequency)[:, 0]
     areas = chain.areas[list(point.rows)]
     shares: Floats = own * areas.sum() / (own @ areas)
     return shares

@@ -11,7 +11,6 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import SERIES, Frequency
 from basinrain.designstorm.measures import DURATION_UNITS, INTENSITY_UNITS, depth_words, duration_text, in_mm
 from basinrain.designstorm.reach import SLACK, bracket, check_reach, refuse_unphysical
@@ -202,7 +201,7 @@ class EquationDepths:
             ("duration_unit", self.duration_unit, tuple(DURATION_UNITS)),
             ("series", self.series, SERIES),
         ):
-            report_unknown(f"[design.depths] {key}", value, known, problems)
+            problems.check_known(f"[design.depths] {key}", value, known)
         for key in ("point", "source", "date"):
             if not getattr(self, key).strip():
                 problems.add(item=f"[design.depths] {key}", found="nothing", expected=f"the {key} of the depths")

@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 from typing import Final
 
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, Problem, unknown
 
 __all__ = ["ANNUAL_MAXIMUM", "PARTIAL_DURATION", "SERIES", "Frequency", "reduced_variate"]
 
@@ -63,12 +63,7 @@ shorter ones are of a partial duration series
     def __post_init__(self) -> None:
         if self.series not in SERIES:
             raise JobError(
-                Problem(
-                    item="series",
-                    found=f"'{self.series}'",
-                    expected="one of: " + ", ".join(SERIES),
-                    remedy=nearest_name(self.series, SERIES),
-                )
+                unknown("series", self.series, SERIES)
             )
         annual = self.series == ANNUAL_MAXIMUM
         if not math.isfinite(self.return_period) or self.return_period <= (1 if annual else 0):

@@ -12,7 +12,7 @@ import numpy.typing as npt
 from scipy import special
 
 from basinrain.designstorm.l_moments import LMoments
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, unknown
 
 __all__ = [
     "DISTRIBUTIONS",
@@ -216,10 +216,5 @@ def check_distribution(name: str) -> None:
     """
     if name not in DISTRIBUTIONS:
         raise JobError(
-            Problem(
-                item="distribution",
-                found=f"'{name}'",
-                expected="one of: " + ", ".join(DISTRIBUTIONS),
-                remedy=nearest_name(name, DISTRIBUTIONS),
-            )
+            unknown("distribution", name, DISTRIBUTIONS)
         )

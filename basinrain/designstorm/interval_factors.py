@@ -14,7 +14,6 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.measures import duration_text
 from basinrain.errors import JobError, MethodError, Problem, Problems
 
@@ -143,7 +142,7 @@ def interval_factor(method: str, minutes: Floats, observed_every: float) -> Floa
 of 1 h; expected one interval or more; leave the duration out, or the factor
     """
     problems = Problems()
-    report_unknown("[design.depths] interval_factor", method, INTERVAL_FACTORS, problems)
+    problems.check_known("[design.depths] interval_factor", method, INTERVAL_FACTORS)
     if not (np.isfinite(observed_every) and observed_every > 0):
         problems.add(item="[design.depths] observed_every", found=f"{observed_every:g} minutes", expected="more than 0")
     problems.raise_as(JobError)

@@ -10,7 +10,6 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import SERIES, Frequency
 from basinrain.designstorm.measures import depth_words, duration_text
 from basinrain.designstorm.reach import SLACK, bracket, check_reach, refuse_unphysical
@@ -129,7 +128,7 @@ them; give depths for it, or allow it with extrapolate = true
             )
 
     def _check_axes(self, problems: Problems) -> None:
-        report_unknown("series", self.series, SERIES, problems)
+        problems.check_known("series", self.series, SERIES)
         for years in self.return_periods if self.series in SERIES else ():
             try:
                 Frequency(float(years), self.series)

@@ -9,7 +9,7 @@ from typing import Any, Final, Literal
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import DataError, JobError, Problem, Problems, nearest_name
+from basinrain.errors import DataError, JobError, Problem, Problems, unknown
 from basinrain.gauges import GaugeNetwork
 from basinrain.infill.donors import ALL, Nearest
 from basinrain.infill.inverse_distance import POWER
@@ -92,13 +92,7 @@ take it: inverse-distance, inverse-distance-ratios; remove power, or choose one 
             problems.extend(error)
         scale: object = self.scale
         if scale is not None and scale not in SCALES:
-            advice = nearest_name(str(scale), SCALES)
-            problems.add(
-                item="[infill] scale",
-                found=f"'{scale}'",
-                expected="one of: " + ", ".join(SCALES),
-                remedy=advice if advice.startswith("did") else "",
-            )
+            problems.include(unknown("[infill] scale", scale, SCALES))
         for name in ("longest_gap", "power", "radius", "elevation_limit"):
             value = getattr(self, name)
             unlimited = value == math.inf if name == "longest_gap" else value is None

@@ -10,7 +10,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, unknown
 from basinrain.infill.correlation_weighting import correlation_weights
 from basinrain.infill.four_quadrant import four_quadrant_weights
 from basinrain.infill.inverse_distance import inverse_distance_weights
@@ -187,10 +187,5 @@ correlation-weighting, regression, ratio-regression; did you mean 'normal-ratio'
         return METHODS[name]
     except (KeyError, TypeError):
         raise JobError(
-            Problem(
-                item="[infill] method",
-                found=f"'{name}'",
-                expected="one of: " + ", ".join(METHODS),
-                remedy=nearest_name(str(name), METHODS),
-            )
+            unknown("[infill] method", name, METHODS)
         ) from None

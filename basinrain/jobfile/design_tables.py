@@ -18,7 +18,7 @@ from basinrain.designstorm.measures import UNITS, duration_words
 from basinrain.designstorm.patterns import PATTERNS
 from basinrain.errors import JobError
 from basinrain.intervals import parse_interval
-from basinrain.jobfile.fields import Moment, NameList, Positive, Table, as_list, names, once, one_of
+from basinrain.jobfile.fields import Moment, NameList, Table, as_list, names, once, one_of
 from basinrain.jobfile.series_tables import FORMATS
 from basinrain.units import AREA_UNITS
 
@@ -43,6 +43,8 @@ __all__ = [
 TABLE, RASTERS, EQUATION, RECORD = "table", "rasters", "equation", "record"
 ORIGINS = (TABLE, RASTERS, EQUATION, RECORD)
 """Where depths by duration and frequency may come from."""
+
+_LEAST_UPLIFT, _MOST_UPLIFT = 0.5, 5.0
 
 NO_REDUCTION = "none"
 """Written for an areal reduction that is not made."""
@@ -127,6 +129,14 @@ Numbers = Annotated[tuple[Number, ...], BeforeValidator(_list), AfterValidator(o
 SomeNumbers = Annotated[Numbers, Field(min_length=1)]
 
 
+def _uplift(factor: float) -> float:
+    # 10 or 0.1 written for ten percent would pass for a factor.
+    if not _LEAST_UPLIFT <= factor <= _MOST_UPLIFT:
+        expected = f"a factor from {_LEAST_UPLIFT:g} to {_MOST_UPLIFT:g}: 1.1 for 10 % more"
+        raise PydanticCustomError("uplift", "{expected}", {"expected": expected})
+    return factor
+
+
 class RasterTable(Table):
     """``[[design.depths.raster]]``: the depths of one duration and frequency."""
 
@@ -170,7 +180,7 @@ class DesignDepthsTable(Table):
 class UpliftTable(Table):
     """``[design.uplift]``: a factor for climate to come, with where it is from and for when."""
 
-    factor: Annotated[Positive, BeforeValidator(_number)]
+    factor: Annotated[Number, AfterValidator(_uplift)]
     source: Stated
     horizon: Annotated[str, BeforeValidator(_plain_date), AfterValidator(_stated)]
 

@@ -10,7 +10,7 @@ from typing import Annotated, Any
 from pydantic import AfterValidator, BaseModel, BeforeValidator, ConfigDict, Field
 from pydantic_core import PydanticCustomError
 
-from basinrain.errors import JobError, nearest_name
+from basinrain.errors import JobError, unknown
 from basinrain.intervals import FORMS, parse_interval
 from basinrain.units import DEPTH_UNITS, LENGTH_UNITS
 
@@ -43,11 +43,8 @@ def one_of(known: Iterable[str]) -> AfterValidator:
 
     def check(value: str) -> str:
         if value not in choices:
-            raise PydanticCustomError(
-                "one_of",
-                "{expected}",
-                {"expected": "one of: " + ", ".join(choices), "remedy": nearest_name(value, choices)},
-            )
+            told = unknown("", value, choices)
+            raise PydanticCustomError("one_of", "{expected}", {"expected": told.expected, "remedy": told.remedy})
         return value
 
     return AfterValidator(check)

@@ -13,7 +13,7 @@ import shapely
 
 from basinrain import ground
 from basinrain.basins import UNION, Basins
-from basinrain.errors import JobError, Problems, ReadError, nearest_name
+from basinrain.errors import JobError, Problems, ReadError, unknown
 from basinrain.notes import Note
 from basinrain.reading.columns import find_column, numbers
 from basinrain.reading.delimited import DelimitedTable
@@ -101,12 +101,7 @@ def read_basins(
     length = area_in_m2 = height = np.nan
     faults = Problems(file=file)
     if repeated not in _REPEATED:
-        faults.add(
-            item="[basins] repeated",
-            found=f"'{repeated}'",
-            expected=" or ".join(f"'{choice}'" for choice in _REPEATED),
-            remedy=nearest_name(repeated, _REPEATED),
-        )
+        faults.include(unknown("[basins] repeated", repeated, _REPEATED))
     with option_problems(faults, file=file, item="[basins] length_unit"):
         length = length_factor(length_unit)
     with option_problems(faults, file=file, item="[basins] area_unit"):

@@ -6,7 +6,7 @@ import re
 from collections.abc import Collection, Mapping, Sequence
 from typing import Final
 
-from basinrain.errors import JobError, Problem, Problems, nearest_name
+from basinrain.errors import JobError, Problem, Problems, nearest_name, unknown
 from basinrain.intervals import DAY, FORMS, Interval, interval_of, parse_interval
 from basinrain.layouts import (
     COLUMNS,
@@ -60,12 +60,7 @@ def check_choices(
     """
     for key, value in {"layout": layout, **given}.items():
         if value is not None and key in _CHOICES and value not in _CHOICES[key]:
-            problems.add(
-                item=key,
-                found=f"'{value}'",
-                expected="one of: " + ", ".join(_CHOICES[key]),
-                remedy=nearest_name(str(value), _CHOICES[key]),
-            )
+            problems.include(unknown(key, value, _CHOICES[key]))
         elif value is not None and (expected := misplaced(key, layout)):
             problems.add(item=key, found=f"{value!r}", expected=expected, remedy="leave it out")
     unit = given.get("unit")

@@ -14,7 +14,6 @@ import numpy.typing as npt
 from basinrain import ground
 from basinrain.basins import Basins
 from basinrain.designstorm.cell_weights import CellGrid, CellWeights, cell_weights
-from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import UNITS, depth_words, duration_text, in_mm
 from basinrain.designstorm.point_depths import PointDepths
@@ -150,7 +149,7 @@ def _axes(
 ) -> tuple[Floats, list[Frequency], list[tuple[int, int]]]:
     """Return durations and frequencies, rising, and the place of every file on the two."""
     problems = Problems()
-    report_unknown("[design.depths] unit", unit, UNITS, problems)
+    problems.check_known("[design.depths] unit", unit, UNITS)
     with option_problems(problems, item="[design.depths] crs"):
         _ = None if crs is None else ground.parse_crs(crs)
     if not files:

@@ -14,7 +14,7 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
-from basinrain.errors import JobError, Problems, nearest_name
+from basinrain.errors import JobError, Problems, unknown
 from basinrain.intervals import DAY, Interval
 from basinrain.rainfall import Status
 from basinrain.reading.columns import numbers
@@ -145,12 +145,7 @@ def depth_rules(
         declared.append((accumulated, Status.ACCUMULATED))
     for meaning, given in flags.items():
         if meaning not in MARKED:
-            problems.add(
-                item="flags",
-                found=f"'{meaning}'",
-                expected="one of: " + ", ".join(MARKED),
-                remedy=nearest_name(meaning, MARKED),
-            )
+            problems.include(unknown("flags", meaning, MARKED))
             continue
         declared.extend((mark, MARKED[meaning]) for mark in given)
     marks: dict[str, Status] = {}

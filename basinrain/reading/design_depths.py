@@ -14,7 +14,6 @@ import numpy.typing as npt
 import pandas as pd
 
 from basinrain import ground
-from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, SERIES, Frequency
 from basinrain.designstorm.measures import DURATION_UNITS, INTENSITY_UNITS, duration_text, in_mm, parse_duration
 from basinrain.designstorm.point_depths import PointDepths, report_faults
@@ -210,7 +209,7 @@ def _check_options(rules: _Rules, layout: str, stated: Mapping[str, str], file: 
         *(("columns", key, known) for key in rules.columns),
     ):
         if given is not None:
-            report_unknown(f"[design.depths] {key}", given, accepted, problems)
+            problems.check_known(f"[design.depths] {key}", given, accepted)
     for key, text in stated.items():
         if not text.strip():
             problems.add(item=f"[design.depths] {key}", found="nothing", expected=f"the {key} of the depths")

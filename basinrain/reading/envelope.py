@@ -6,7 +6,7 @@ from itertools import pairwise
 from pathlib import Path
 from typing import Final
 
-from basinrain.errors import JobError, Problems, ReadError, nearest_name
+from basinrain.errors import JobError, Problems, ReadError, unknown
 from basinrain.intervals import DAY, parse_interval
 from basinrain.reading.columns import find_column, numbers
 from basinrain.reading.delimited import read_delimited
@@ -63,13 +63,7 @@ def read_envelope(path: Path) -> tuple[tuple[float, float], ...]:
         line = int(table.lines[row])
         hours = _hours(str(duration), line, problems)
         if unit not in DEPTH_UNITS:
-            problems.add(
-                item="unit",
-                found=f"'{unit}'",
-                expected="one of: " + ", ".join(DEPTH_UNITS),
-                remedy=nearest_name(str(unit), DEPTH_UNITS),
-                line=line,
-            )
+            problems.include(unknown("unit", unit, DEPTH_UNITS, line=line))
         elif not depths[row] > 0:
             cell = table.frame[columns["depth"]].iloc[row]
             problems.add(item="depth", found=f"'{cell}'", expected="a number above 0", line=line)

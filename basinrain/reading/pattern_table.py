@@ -9,7 +9,6 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.choices import report_unknown
 from basinrain.designstorm.patterns.ordinates import Ordinates
 from basinrain.errors import JobError, Problems, ReadError
 from basinrain.reading.columns import numbers
@@ -60,7 +59,7 @@ def read_pattern_table(path: Path, *, percent: bool = False, columns: Mapping[st
     """
     problems = Problems(file=str(path))
     for key in columns or {}:
-        report_unknown("columns", key, _NAMES, problems)
+        problems.check_known("columns", key, _NAMES)
     problems.raise_as(JobError)
     table = read_delimited(path)
     found = required_columns(table, _NAMES, columns or {}, problems)

@@ -38,9 +38,7 @@ def point_sentences(run: DesignRun) -> list[str]:
                 f"Not tabulated, so interpolated{' or extrapolated' if table.extrapolate else ''}: {words}."
             )
         else:
-            sentences.append(
-                "All durations and frequencies asked for are tabulated: none of the depths is interpolated."
-            )
+            sentences.append("All durations and frequencies asked for are tabulated: no depth is interpolated.")
     elif isinstance(source, EquationDepths):
         sentences.append("Depths are the equation's intensity times the duration.")
     if n == 1:
@@ -81,7 +79,7 @@ def depths_table(run: DesignRun) -> Table:
         for d, each in enumerate(minutes)
     ]
     more = _left_out(run, len(shown))
-    notes = [f"{counted(more, 'more point')} in point_depths.csv."] if more else []
+    notes = [f"{counted(more, 'more point is', 'more points are')} in point_depths.csv."] if more else []
     wholly = len(minutes) == len(run.asked.minutes) and len(often) == len(run.asked.frequencies)
     if not wholly:
         notes.append("Other durations and frequencies are in point_depths.csv.")

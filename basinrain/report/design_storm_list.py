@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import replace
 from typing import Final
 
@@ -31,11 +31,14 @@ from basinrain.units import area_factor, depth_factor, volume_factor, volume_uni
 __all__ = ["depth_tables", "hyetograph_tables", "peak_tables"]
 
 _COLUMNS: Final = 8
+_ALIKE: Final = 4
+"""More basins of the same depth share one line."""
 _PATTERNS: Final = 6
 _ROWS: Final = 48
 _STEPS: Final = 36
 """Longest hyetograph printed as a table."""
 
+Floats = npt.NDArray[np.float64]
 Key = tuple[str, Frequency, int, str]
 
 
@@ -91,44 +94,62 @@ def _depths(storms: _Storms, point: PointOfInterest) -> Table:
     own_area = run.asked.design.areal_reduction is not None and run.asked.design.areal_reduction.area == "own"
     volume_unit = volume_unit_for(run.depth_unit)
     per = volume_factor(volume_unit)
+    together = point.apart and len(point.basins) > 1
+    own = [storm for storm in run.storms if storm.point.name == point.name]
+    alike = not own_area and len(point.basins) > _ALIKE and _alike(own)
+    most = 1 if alike else min(len(point.basins), design_shown.AREAS) + together
+    shown = design_shown.durations(run)
+    minutes_shown = design_shown.spread(shown, max(1, _ROWS // most))
+
+    def row(minutes: int, name: str, *, area: float, depths: Floats, volume: float, reduction: str) -> Row:
+        return (
+            duration_text(minutes),
+            name,
+            area_text(area / m2),
+            *([reduction] if own_area else []),
+            *(depth_text(float(depth), run.depth_unit) for depth in depths),
+            volume_text(volume / 1000 / per),
+        )
+
     rows: list[Row] = []
-    for minutes in design_shown.durations(run):
-        found = [storms.any(point, frequency, minutes) for frequency in often]
-        rarest = found[-1]
-        if rarest is None:
+    for minutes in minutes_shown:
+        found = [storm for storm in (storms.any(point, frequency, minutes) for frequency in often) if storm is not None]
+        if not found:
             continue
-        totals = np.array([storm.totals / mm for storm in found if storm is not None])
-        reduction = [number_text(float(rarest.reduction[b]), 4) for b in _basins(rarest)] if own_area else []
-        rows += [
-            (
-                duration_text(minutes),
-                point.basins[b],
-                area_text(float(areas[b]) / m2),
-                *reduction[b : b + 1],
-                *(depth_text(float(depth), run.depth_unit) for depth in totals[:, b]),
-                volume_text(float(rarest.totals[b]) / 1000 * float(areas[b]) / per),
-            )
-            for b in _basins(rarest)
-        ]
-        if point.apart and len(point.basins) > 1:
-            rows.append(
-                (
-                    duration_text(minutes),
-                    "mean by area",
-                    area_text(float(areas.sum()) / m2),
-                    *([DASH] if own_area else []),
-                    *(depth_text(float(depth), run.depth_unit) for depth in totals @ areas / areas.sum()),
-                    volume_text(float(rarest.totals @ areas) / 1000 / per),
+        totals = np.array([storm.totals / mm for storm in found])
+        rarest = found[-1]
+
+        if not alike:
+            rows += [
+                row(
+                    minutes,
+                    point.basins[b],
+                    area=float(areas[b]),
+                    depths=totals[:, b],
+                    volume=float(rarest.totals[b] * areas[b]),
+                    reduction=number_text(float(rarest.reduction[b]), 4),
                 )
-            )
+                for b in _basins(rarest)
+            ]
+        if alike or together:
+            name = f"each of {len(point.basins)}" if alike else "mean by area"
+            whole = run.areas.basins.areas[point.row]
+            depths = totals[:, 0] if alike else totals @ areas / areas.sum()
+            volume = float(rarest.totals[0] * whole) if alike else float(rarest.totals @ areas)
+            rows.append(row(minutes, name, area=float(whole), depths=depths, volume=volume, reduction=DASH))
     notes = []
-    if point.apart and len(point.basins) > 1:
+    if alike:
+        notes.append("Every basin has the areal depth to the point of interest; area and volume are those of all.")
+    elif together:
         notes.append(
             "The mean by area is more than the areal depth to the point of interest: each basin is reduced by its own "
             "area."
             if own_area
             else "The mean by area is the areal depth to the point of interest in section 1."
         )
+    if len(minutes_shown) < len(shown):
+        of = len(run.asked.minutes)
+        notes.append(f"Shown: {len(minutes_shown)} of {of} durations; all are in design_storms.csv.")
     lead = ("duration", "basin", f"area, {unit_text(run.area_unit)}", *(["reduction"] if own_area else []))
     heads = (*lead, *(design_shown.often_head(f) for f in often), design_shown.often_head(often[-1]))
     return Table(
@@ -141,8 +162,13 @@ def _depths(storms: _Storms, point: PointOfInterest) -> Table:
         ),
         align="tt" + "n" * (len(heads) - 2),
         rows=rows,
-        notes=(*notes, *_more_basins(point, "design_storms.csv")),
+        notes=(*notes, *(() if alike else _more_basins(point, "design_storms.csv"))),
     )
+
+
+def _alike(storms: Iterable[DesignStorm]) -> bool:
+    """Return whether all basins have the same depths in every storm."""
+    return all(np.allclose(storm.depth, storm.depth[:, :1], rtol=1e-9, atol=0) for storm in storms)
 
 
 def peak_tables(run: DesignRun) -> list[Table]:
@@ -161,7 +187,7 @@ def _peaks(storms: _Storms, point: PointOfInterest) -> Table:
             storm = storms.one(point, storms.rarest, minutes, pattern)
             if storm is None:
                 continue
-            alike = np.allclose(storm.depth, storm.depth[:, :1], rtol=1e-9, atol=0)
+            alike = _alike([storm])
             for b in [0] if alike else _basins(storm):
                 peak = int(np.argmax(storm.depth[:, b]))
                 most = float(storm.depth[peak, b]) / mm
@@ -229,7 +255,7 @@ def hyetograph_tables(run: DesignRun) -> list[Table]:
 def _hyetographs(run: DesignRun, storms: Sequence[DesignStorm]) -> Table:
     first, mm = storms[0], depth_factor(run.depth_unit)
     shown = list(storms[:_PATTERNS])
-    alike = all(np.allclose(storm.depth, storm.depth[:, :1], rtol=1e-9, atol=0) for storm in storms)
+    alike = _alike(storms)
     basins = [0] if alike else list(range(len(first.point.basins)))
     if len(basins) * len(shown) > _COLUMNS:
         basins = [int(np.argmax(first.totals.round(9)))]
@@ -261,5 +287,5 @@ def _hyetographs(run: DesignRun, storms: Sequence[DesignStorm]) -> Table:
     )
 
 
-def _total(column: npt.NDArray[np.float64], unit: str) -> str:
+def _total(column: Floats, unit: str) -> str:
     return depth_text(float(column.sum()), unit)

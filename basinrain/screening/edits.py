@@ -11,7 +11,7 @@ from typing import Final, Literal, get_args
 
 import numpy as np
 
-from basinrain.errors import JobError, Problems, nearest_name
+from basinrain.errors import JobError, Problems, unknown
 from basinrain.notes import Note
 from basinrain.rainfall import RainRecord, Status
 from basinrain.screening.editing import Outcome, carry_out
@@ -102,7 +102,8 @@ class Edit:
         if self.start >= self.end:
             wrong("from, to", f"{self.start} to {self.end}", "a start before the end")
         if self.action not in get_args(Action):
-            wrong("action", f"'{self.action}'", nearest_name(self.action, get_args(Action)))
+            told = unknown("action", self.action, get_args(Action))
+            wrong(told.item, told.found, told.expected, told.remedy)
         else:
             expected = _value_problem(self.action, self.value)
             if expected:

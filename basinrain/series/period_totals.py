@@ -8,7 +8,7 @@ from typing import Final, Literal, get_args
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.errors import JobError, MethodError, Problem, nearest_name
+from basinrain.errors import JobError, MethodError, Problem, unknown
 from basinrain.series.steps import (
     DAY,
     check_between,
@@ -125,7 +125,7 @@ def period_totals(
     """
     begin, end, values = check_steps(starts, ends, depth)
     if by not in get_args(Period):
-        raise JobError(Problem(item="period of totals", found=f"'{by}'", remedy=nearest_name(by, get_args(Period))))
+        raise JobError(unknown("period of totals", by, get_args(Period)))
     check_month(water_year, item="water_year")
     check_between(complete, 0, 1, item="complete", closed=True)
     middle = middles(begin, end)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 import math
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Final
 
 from basinrain.results import InfillRun, ScreenRun, StormRun
 from basinrain.results_common import GaugedRun, Run
@@ -15,6 +15,9 @@ if TYPE_CHECKING:
     import pandas as pd
 
 __all__ = ["long_tables", "record_text", "run_record", "run_tables", "told_tables"]
+
+
+_MOST_ROWS: Final = 50_000
 
 
 def run_tables(run: Run) -> dict[str, pd.DataFrame]:
@@ -85,8 +88,13 @@ def _asked_tables(run: DesignRun) -> dict[str, pd.DataFrame]:
 
 
 def told_tables(run: Run) -> dict[str, pd.DataFrame]:
-    """Return the tables of the record that are written in formats of their own, not as plain tables."""
-    return {"design_hyetographs": run.design_hyetographs} if isinstance(run, DesignRun) else {}
+    """Return the tables of the record that are written in formats of their own, not as plain tables.
+
+    Design hyetographs of more rows than a reader of JSON would bear are in their files only.
+    """
+    if not isinstance(run, DesignRun) or sum(storm.depth.size for storm in run.storms) > _MOST_ROWS:
+        return {}
+    return {"design_hyetographs": run.design_hyetographs}
 
 
 def long_tables(run: Run) -> dict[str, pd.DataFrame]:

@@ -8,7 +8,7 @@ from pathlib import Path
 from types import MappingProxyType
 from typing import Final, NamedTuple
 
-from basinrain.errors import JobError, Problems, nearest_name
+from basinrain.errors import JobError, Problems, unknown
 from basinrain.writing import series_basin_csv, series_csv, series_netcdf, series_parquet
 from basinrain.writing.series_content import SeriesContent
 
@@ -71,12 +71,7 @@ netcdf; did you mean 'parquet'?
     problems = Problems()
     for word in formats:
         if word not in FORMATS:
-            problems.add(
-                item=item,
-                found=f"'{word}'",
-                expected="one of: " + ", ".join(FORMATS),
-                remedy=nearest_name(word, FORMATS),
-            )
+            problems.include(unknown(item, word, FORMATS))
         elif (library := FORMATS[word].library) and find_spec(library) is None:
             problems.add(
                 item=item,

@@ -11,11 +11,12 @@ from typing import Any
 import jsonschema
 import pandas as pd
 import pytest
-from click.testing import CliRunner
+from click.testing import CliRunner, Result
 from design_jobs import US_REDUCTION, write_design_job
 from record_jobs import daily_record, write_record_job
 
 from basinrain.cli import main
+from basinrain.errors import Problem, WriteError
 
 ROOT = Path(__file__).parents[2]
 COMMAND = Path(sys.executable).with_name("basinrain")
@@ -72,6 +73,11 @@ def basinrain(*arguments: str | Path, cwd: Path | None = None) -> subprocess.Com
     )
 
 
+def inside(*arguments: str | Path) -> Result:
+    """Run the command in this process, which is sooner done."""
+    return CliRunner().invoke(main, ["design", *map(str, arguments)])
+
+
 def several(folder: Path, **changes: Any) -> Path:  # noqa: ANN401 - values of a job
     """Write a job of two frequencies, durations and patterns, an areal reduction and another beside it."""
     return write_design_job(
@@ -113,8 +119,8 @@ def test_what_is_printed(tmp_path: Path) -> None:
 def test_files_hold_full_digits_and_settings_change_the_job(tmp_path: Path) -> None:
     """design_depths.csv and design_storms.csv are exactly this; --output names the folder above the command's."""
     job = write_design_job(tmp_path, unit="km", design__step="2h")
-    done = basinrain("design", job, "--set", "design.step=1h", "--output", tmp_path / "out", "--quiet")
-    assert (done.returncode, done.stdout, done.stderr) == (0, "", "")
+    done = inside(job, "--set", "design.step=1h", "--output", tmp_path / "out", "--quiet")
+    assert (done.exit_code, done.stdout, done.stderr) == (0, "", "")
     folder = tmp_path / "out" / "design"
     assert (folder / "design_depths.csv").read_bytes().decode() == DEPTHS
     head, row = STORMS.splitlines()
@@ -153,7 +159,7 @@ def test_json_is_one_document_that_keeps_its_schema(tmp_path: Path, write: Any) 
 
 def test_the_schema_can_fail(tmp_path: Path) -> None:
     """A column too many in a table of designs, or the clock of a record, does not keep the schema."""
-    assert basinrain("design", several(tmp_path), "--quiet").returncode == 0
+    assert inside(several(tmp_path), "--quiet").exit_code == 0
     document = json.loads((tmp_path / "output" / "design" / "record.json").read_text(encoding="utf-8"))
     validator = jsonschema.Draft202012Validator(schema())
     assert validator.is_valid(document)
@@ -169,8 +175,8 @@ def test_every_column_is_documented(tmp_path: Path) -> None:
     paths: list[Path] = []
     for write in (several, from_record):
         job = write(tmp_path / write.__name__)
-        done = basinrain("design", job, "--set", formats, "--set", "design.start=2031-05-04", "--quiet")
-        assert done.returncode == 0
+        done = inside(job, "--set", formats, "--set", "design.start=2031-05-04", "--quiet")
+        assert done.exit_code == 0
         paths += (job.parent / "output" / "design").iterdir()
     text = (ROOT / "docs" / "outputs.md").read_text(encoding="utf-8")
     section = text.partition("\n# `basinrain design`\n")[2].partition("\n# Of every command\n")[0]
@@ -190,8 +196,8 @@ def test_one_problem_is_one_line(tmp_path: Path) -> None:
         design__depths__source=None,
         design__pattern=[{"shape": "triangular", "peak": "middle"}],
     )
-    done = basinrain("design", job)
-    assert (done.returncode, done.stdout) == (1, "")
+    done = inside(job)
+    assert (done.exit_code, done.stdout) == (1, "")
     lines = [line.removeprefix(f"{job}: ") for line in done.stderr.splitlines()]
     assert [line.partition(": found")[0] for line in lines] == [
         "[design.depths] source",
@@ -218,15 +224,30 @@ REFUSED: dict[str, tuple[dict[str, Any], str]] = {
 def test_what_is_refused_leaves_the_earlier_output_whole(tmp_path: Path, name: str) -> None:
     """Exit 1, one line on the error stream, no traceback, and the results of the run before are as they were."""
     changes, text = REFUSED[name]
-    assert CliRunner().invoke(main, ["design", str(write_design_job(tmp_path)), "--quiet"]).exit_code == 0
+    assert inside(write_design_job(tmp_path), "--quiet").exit_code == 0
     folder = tmp_path / "output" / "design"
     before = {path.name: path.read_bytes() for path in folder.iterdir()}
-    done = CliRunner().invoke(main, ["design", str(write_design_job(tmp_path, **changes))])
+    done = inside(write_design_job(tmp_path, **changes))
     assert (done.exit_code, done.stdout) == (1, "")
     (line,) = done.stderr.splitlines()
     assert text in line
     assert {path.name: path.read_bytes() for path in folder.iterdir()} == before
     assert [path.name for path in folder.parent.iterdir()] == ["design"]
+
+
+def test_a_write_that_fails_leaves_nothing_half_written(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """The tables are there when the hyetographs fail, but not in the folder of the results."""
+    job = write_design_job(tmp_path)
+
+    def fail(folder: Path, *_: object, **__: object) -> None:
+        assert (folder / "design_depths.csv").exists()
+        raise WriteError(Problem(item="design_hyetographs.csv", found="no space", expected="some"))
+
+    monkeypatch.setattr("basinrain.writing.run.write_design_files", fail)
+    done = inside(job)
+    assert (done.exit_code, done.stdout) == (1, "")
+    assert done.stderr == "design_hyetographs.csv: found no space; expected some\n"
+    assert not (tmp_path / "output").exists()
 
 
 @pytest.mark.parametrize(
@@ -240,7 +261,7 @@ def test_what_is_refused_leaves_the_earlier_output_whole(tmp_path: Path, name: s
 def test_wrong_usage(tmp_path: Path, arguments: list[str], text: str) -> None:
     """What the command line itself has wrong is exit 2."""
     job = write_design_job(tmp_path, design__return_periods=None, design__aep=0.1)
-    done = CliRunner().invoke(main, ["design", str(job), *arguments])
+    done = inside(job, *arguments)
     assert (done.exit_code, done.stdout) == (2, "")
     assert text in done.stderr
     assert not (tmp_path / "output").exists()
@@ -250,14 +271,14 @@ def test_inputs_are_not_written_over(tmp_path: Path) -> None:
     """An output folder that holds an input, or anything that no run wrote, is refused before anything is computed."""
     job = write_design_job(tmp_path / "results" / "design")
     before = {path.name: path.read_bytes() for path in job.parent.iterdir()}
-    done = CliRunner().invoke(main, ["design", str(job), "--output", str(tmp_path / "results")])
+    done = inside(job, "--output", tmp_path / "results")
     assert (done.exit_code, done.stdout) == (1, "")
     assert {path.name: path.read_bytes() for path in job.parent.iterdir()} == before
 
 
 def test_depths_from_the_record_and_rarity_are_printed(tmp_path: Path) -> None:
     """The source says how many years and which distribution; every storm has its sentences, every warning its line."""
-    done = CliRunner().invoke(main, ["design", str(from_record(tmp_path))])
+    done = inside(from_record(tmp_path))
     assert (done.exit_code, done.stderr) == (0, "")
     lines = done.stdout.splitlines()
     assert lines[0] == (
@@ -276,7 +297,7 @@ def test_long_tables_are_cut_when_printed(tmp_path: Path) -> None:
     points = [{"name": f"gate {k}", "basins": ["nw", "ne"]} for k in range(1, 22)]
     patterns = [{"shape": "uniform"}, {"shape": "triangular"}]
     job = write_design_job(tmp_path, design__return_periods=[2, 10], design__point=points, design__pattern=patterns)
-    done = CliRunner().invoke(main, ["design", str(job)])
+    done = inside(job)
     assert (done.exit_code, done.stderr) == (0, "")
     lines = done.stdout.splitlines()
     assert "2 more rows stand in design_depths.csv" in lines

@@ -47,6 +47,22 @@ def test_the_links_by_hand() -> None:
     assert (links.reduced_area, links.clamped, links.remarks) == (8e6, ("8e+06 m² clamped.",), ("Halved.",))
 
 
+def test_depths_of_several_areas_before_the_reduction() -> None:
+    """Every row is what the links of its area have before the areal reduction."""
+    chain = DepthChain(
+        source=TWO_POINTS,
+        weights=np.array([[0.75, 0.25], [0.0, 1.0], [1.0, 0.0]]),
+        areas=np.array([8e6, 2e6, 6e6]),
+        interval_factor=lambda minutes: np.where(minutes < 240, 1.2, 1.0),
+        uplift=1.1,
+        reduce=halves,
+    )
+    minutes = np.array([60.0, 240.0])
+    found = chain.unreduced([2, 0], minutes, TEN)
+    assert found == pytest.approx(np.array([[30 * 1.2 * 1.1, 60 * 1.1], [42.9, 71.5]]))
+    assert found == pytest.approx(np.stack([chain.links(row, minutes, TEN).unreduced for row in (2, 0)]))
+
+
 def test_the_area_that_decides_the_reduction_may_be_another() -> None:
     """Depths of one area are reduced as those of the whole to the point of interest, or of a part."""
     chain = DepthChain(source=TWO_POINTS, weights=np.eye(2), areas=np.array([8e6, 2e6]), reduce=halves)

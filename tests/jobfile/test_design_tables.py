@@ -33,7 +33,10 @@ def refusal(settings: tuple[str, ...] = (), **changes: Any) -> str:  # noqa: ANN
 def test_a_job_without_gauges_is_one_of_design_storms() -> None:
     """Without tables about gauges there is a DesignJob; with one there is a whole Job, which then lacks the others."""
     assert isinstance(parse_design_job(design_tables()), DesignJob)
-    gauged: dict[str, Any] = {"gauges": {"file": "g.csv"}, "rainfall": {"file": "r.csv", "unit": "mm", "interval": "1h"}}
+    gauged: dict[str, Any] = {
+        "gauges": {"file": "g.csv"},
+        "rainfall": {"file": "r.csv", "unit": "mm", "interval": "1h"},
+    }
     job = parse_design_job(design_tables(**gauged))
     assert isinstance(job, Job)
     assert job.input_names == ("g.csv", "r.csv", "basins.geojson", "depths.csv")
@@ -45,7 +48,10 @@ def test_a_job_without_gauges_is_one_of_design_storms() -> None:
 
 def test_a_job_with_gauges_may_have_no_design() -> None:
     """The table [design] is optional in a whole job and needed in one without gauges."""
-    gauged: dict[str, Any] = {"gauges": {"file": "g.csv"}, "rainfall": {"file": "r.csv", "unit": "mm", "interval": "1h"}}
+    gauged: dict[str, Any] = {
+        "gauges": {"file": "g.csv"},
+        "rainfall": {"file": "r.csv", "unit": "mm", "interval": "1h"},
+    }
     assert parse_job(design_tables(design=None, **gauged)).design is None
     assert refusal(design=None) == "[design]: found no such table; expected it to be given; add it"
 
@@ -169,8 +175,8 @@ def test_input_files_are_listed_once_a_name_in_the_job() -> None:
             "uplift",
             {"factor": 0, "source": " ", "horizon": ""},
             (
-                "[design.uplift] factor: found 0; expected a number above 0; correct the value\n"
-                "[design.uplift] source: found ' '; expected it to be stated; correct the value\n"
+                "[design.uplift] factor: found 0; expected a factor from 0.5 to 5: 1.1 for 10 % more; correct the "
+                "value\n[design.uplift] source: found ' '; expected it to be stated; correct the value\n"
                 "[design.uplift] horizon: found ''; expected it to be stated; correct the value"
             ),
         ),
@@ -221,6 +227,19 @@ def test_input_files_are_listed_once_a_name_in_the_job() -> None:
 def test_a_wrong_value_says_what_is_accepted(key: str, value: Any, message: str) -> None:  # noqa: ANN401 - values of a job
     """Each kind of wrong value is named by its heading and key, with what was found and what is accepted."""
     assert message in refusal(**{f"design__{key}": value})
+
+
+@pytest.mark.parametrize("factor", [10, 0.1, -1, 5.01, 0.49])
+def test_an_uplift_is_no_percentage(factor: float) -> None:
+    """10 and 0.1, written for ten percent, are refused; 0.5 and 5 pass."""
+    uplift = {"factor": factor, "source": "note", "horizon": 2070}
+    assert refusal(design__uplift=uplift) == (
+        f"[design.uplift] factor: found {factor}; expected a factor from 0.5 to 5: 1.1 for 10 % more; correct the value"
+    )
+    for passes in (0.5, 5):
+        found = design_of(design__uplift={**uplift, "factor": passes}).uplift
+        assert found is not None
+        assert found.factor == passes
 
 
 LINES = """[job]

@@ -14,7 +14,7 @@ from basinrain.errors import DataError, JobError
 from basinrain.gauges import GaugeNetwork
 from basinrain.reading.basins import read_basins
 from basinrain.reading.gauges import read_gauges
-from basinrain.reading.settling import settle
+from basinrain.reading.settling import check_near, settle, settle_basins
 
 DATA = Path(__file__).parents[1] / "data"
 LONLAT = "EPSG:4326"
@@ -292,3 +292,76 @@ def test_long_edges_are_straight_in_degrees() -> None:
     np.testing.assert_allclose(settled.areas, [54_205.3e6], rtol=1e-5)
     np.testing.assert_allclose(settled.areas, [geodesic_area(basins.polygons[0], 0.001)], rtol=1e-6)
     np.testing.assert_allclose(geodesic_area(basins.polygons[0], 360), 54_958.3e6, rtol=1e-6)
+
+
+def test_basins_without_gauges_have_the_same_plane() -> None:
+    """Without gauges the basins lie as they do with gauges among them, the union's row added."""
+    basins = boxes((8, 47, 8.2, 47.2), (8.2, 47, 8.4, 47.2), official=1e8)
+    _, with_gauges, plane, notes = settle(gauges((8.1, 47.1)), basins)
+    alone, own, own_notes = settle_basins(basins)
+    assert (alone.ids, own.crs, own.name) == (with_gauges.ids, plane.crs, plane.name)
+    assert alone.areas.tolist() == with_gauges.areas.tolist()
+    assert [note.text for note in own_notes] == [note.text for note in notes]
+    assert [note.code for note in own_notes] == ["area-differs"] * 2
+
+
+def test_distortion_without_gauges_is_that_of_the_basins() -> None:
+    """A plane that distorts is warned of in words that speak of basins alone; gauges farther out distort more."""
+    basins = boxes((8, 47, 8.2, 47.2))
+    _, plane, notes = settle_basins(basins, plane="EPSG:3857")
+    assert plane.distortion == pytest.approx(1 / np.cos(np.radians(47.1)) - 1, rel=0.02)
+    (note,) = notes
+    assert note.text.startswith(
+        "Distances between places in the basins in the plane EPSG:3857 (WGS 84 / Pseudo-Mercator)"
+    )
+    _, _, farther, _ = settle(gauges((8, 48)), basins, plane="EPSG:3857")
+    assert farther.distortion > plane.distortion
+
+
+def test_local_basins_without_gauges_stay_where_they_are() -> None:
+    """One basin on a site grid is its own union and needs no row for it."""
+    basins, plane, notes = settle_basins(boxes((0, 0, 10, 10), crs="local"))
+    assert (basins.ids, basins.areas.tolist(), plane.crs, plane.distortion, notes) == (
+        ("a",),
+        [100.0],
+        "local",
+        0.0,
+        (),
+    )
+
+
+@pytest.mark.parametrize(
+    ("plane", "crs", "message"),
+    [
+        ("EPSG:3857", "local", r"^\[job\] plane: found 'EPSG:3857', for local coordinates; expected none, or 'local'"),
+        (
+            "local",
+            LONLAT,
+            r"^\[job\] plane: found 'local', for coordinates on the map; expected a projected system in metres",
+        ),
+        (
+            LONLAT,
+            LONLAT,
+            r"^\[job\] plane: found 'EPSG:4326', which is in degrees; expected a projected system in metres",
+        ),
+        ("EPSG:99999", LONLAT, r"^\[job\] plane: found 'EPSG:99999'"),
+    ],
+)
+def test_planes_that_are_none_without_gauges(plane: str, crs: str, message: str) -> None:
+    """The same planes are refused as with gauges."""
+    with pytest.raises(JobError, match=message):
+        settle_basins(boxes((8, 47, 8.2, 47.2), crs=crs), plane=plane)
+
+
+def test_other_points_are_called_what_they_are() -> None:
+    """Points of depths that are swapped or far away are told as such."""
+    basins = boxes((8, 47, 8.2, 47.2))
+    check_near(gauges((8.1, 47.1)), basins, kind="depth point")
+    with pytest.raises(
+        DataError, match=r"; longitude and latitude of the depth points, or longitude and .* look swapped$"
+    ):
+        check_near(gauges((47.1, 8.1)), basins, kind="depth point")
+    with pytest.raises(
+        DataError, match=r"^depth points and basins: .*depth point A, the nearest, is .*check both files"
+    ):
+        check_near(gauges((20, 10)), basins, kind="depth point")

@@ -1,9 +1,10 @@
 """Small runs of design storms that can be reckoned by hand, and one with everything.
 
-``make_design(folder, **changes)``: four squares of 25 km² (``QUARTERS``) with two depth points, the west of 20, 40, 60 mm
-in 1, 6, 24 h at 2 years and 30, 60, 90 mm at 10, the east of 30, 60, 90 mm and 40, 80, 120 mm; the west half (nw, sw) is
-the west point's, the east half the east's. Uplift 1.1, the areal reduction of Leclerc and Schaake, Keers and Wescott
-beside it, two points of interest: ``ford`` above the west half, ``mouth`` above all; triangular and uniform.
+``make_design(folder, **changes)``: four squares of 25 km² (``QUARTERS``) with two depth points. The west one has 20,
+40, 60 mm in 1, 6, 24 h at 2 years and 30, 60, 90 mm at 10, the east one 30, 60, 90 mm and 40, 80, 120 mm; the west
+half (nw, sw) is the west point's, the east half the east's. Uplift 1.1, the areal reduction of Leclerc and Schaake,
+Keers and Wescott beside it, two points of interest: ``ford`` above the west half, ``mouth`` above all; triangular and
+uniform.
 """
 
 from __future__ import annotations

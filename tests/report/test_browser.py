@@ -11,7 +11,9 @@ from tempfile import TemporaryDirectory
 from typing import Any
 
 import pytest
+import shapely
 from report.comparison_pieces import make_comparison, make_network
+from report.design_run import from_record, make_design, two_points, two_storms
 from report.infill_pieces import make_infill_run
 from report.screen_pieces import make_monthly, make_screen_run
 from report.series_run import four_years, make_series_run, widened
@@ -19,7 +21,7 @@ from report.small_run import make_run
 from report.test_effect_figure import make_effect
 
 from basinrain.notes import Note
-from basinrain.report import render_comparison, render_report, render_screening, render_series
+from basinrain.report import render_comparison, render_design, render_report, render_screening, render_series
 
 CHROMIUM = Path("/usr/bin/chromium")
 
@@ -56,6 +58,26 @@ def _series() -> str:
     return render_series(replace(run, basins=basins, setup=replace(run.setup, basins=basins)))
 
 
+def _design(patterns: int = 2) -> str:
+    """Return a page with hostile and long names everywhere, and warnings."""
+    squares = {f"w{NAMES[0]}": shapely.box(0, 0, 5, 10), LONG[0]: shapely.box(5, 0, 10, 10)}
+    points = [{"name": f"Old weir {NAMES[0]}", "basins": [f"w{NAMES[0]}"]}, {"name": LONG[1], "basins": list(squares)}]
+    with TemporaryDirectory() as folder:
+        run = make_design(
+            Path(folder),
+            squares=squares,
+            depths=two_points((f"P{NAMES[0]}", LONG[2])),
+            design__depths__source="Wintermill Rainfall Atlas, volume 2, table 7 (invented)",
+            design__sub_basins="own-depth",
+            design__point=points,
+            design__pattern=[
+                {"name": f"{LONG[3 + k]}, late peak", "shape": "triangular", "peak": 0.3 + k / 10}
+                for k in range(patterns)
+            ],
+        )
+    return render_design(replace(run, notes=(*run.notes, NOTE)))
+
+
 PAGES: dict[str, Callable[[], str]] = {
     "report": _report,
     "screening": lambda: render_screening(make_screen_run(notes=(NOTE,))),
@@ -64,6 +86,10 @@ PAGES: dict[str, Callable[[], str]] = {
     "comparison of forty": lambda: render_comparison(
         replace(make_infill_run(make_comparison(LONG, cases=200)), network=make_network(LONG))
     ),
+    "design": _design,
+    "design of six patterns": lambda: _design(6),
+    "design from the record": lambda: render_design(from_record()),
+    "design with storms": lambda: render_design(two_storms()),
     "series": _series,
     "series of a thousand": lambda: render_series(widened(four_years(), 1000)),
 }
@@ -174,3 +200,32 @@ def test_printed_pages_keep_text_and_figures(page: tuple[Any, list[str], list[st
     ):
         assert words in text
     assert all(len(page.split()) > 10 for page in pages)
+
+
+@pytest.mark.parametrize("file", ["design"], indirect=True)
+def test_figures_of_a_design_keep_their_size_on_a_phone(page: tuple[Any, list[str], list[str]]) -> None:
+    """Their letters are no smaller than they are on paper: the figure is scrolled, the page is not."""
+    opened, _, _ = page
+    opened.set_viewport_size({"width": 390, "height": 844})
+    assert opened.evaluate("document.documentElement.scrollWidth") <= 390
+    heights = opened.evaluate(
+        "[...document.querySelectorAll('figure.whole svg text')].map(t => t.getBoundingClientRect().height)"
+    )
+    assert len(heights) > 50
+    assert max(heights) >= 10
+
+
+@pytest.mark.parametrize("file", ["design", "design with storms"], indirect=True)
+def test_a_printed_design_is_whole(page: tuple[Any, list[str], list[str]], tmp_path: Path) -> None:
+    """No page of the PDF is all but empty, and every section, table and caution is on one."""
+    if shutil.which("pdftotext") is None:
+        pytest.skip("needs pdftotext (poppler-utils)")
+    opened, _, _ = page
+    path = tmp_path / "report.pdf"
+    opened.pdf(path=str(path), format="A4", prefer_css_page_size=True)
+    text = subprocess.run(["pdftotext", "-layout", path, "-"], capture_output=True, text=True, check=True).stdout
+    pages = text.split("\f")[:-1]
+    assert 4 <= len(pages) <= 18
+    for words in ("not a design.", "= areal depth, mm", "share of the total, %", "record.json"):
+        assert words in text
+    assert all(len(one.split()) > 10 for one in pages)

@@ -96,15 +96,15 @@ def test_depths_for_fixed_intervals_have_their_factor(tmp_path: Path) -> None:
     """8 x 6 / (8 x 6 - 1) = 1.0213 of six hours that were read by the hour."""
     run = make_design(tmp_path, design__depths__interval_factor="weiss", design__depths__observed_every="1h")
     assert {row[3] for row in chain_tables(run)[0].rows if row[1] == "6 h"} == {"1.0213"}
-    assert "drawn with the interval factor and the uplift:" in chain_pictures(run)[0].caption
+    assert "drawn with the interval factor and the uplift, " in chain_pictures(run)[0].caption
 
 
 def test_the_figures() -> None:
-    """One a point of interest, point depths with the uplift so that the reduction is seen; of the record areal alone."""
+    """One a point of interest, point depths with the uplift so that the reduction is seen; of the record none."""
     ford, mouth = chain_pictures(two_halves())
     assert (ford.name, mouth.name) == ("design-depths-1", "design-depths-2")
     assert mouth.caption.endswith(
-        "Point depths are drawn with the uplift: what lies between the curves is the reduction."
+        "Point depths are drawn with the uplift, so that what lies between the curves is the reduction."
     )
     assert {"point depth", "areal depth"} <= set(svg_texts(mouth.svg))
     # 70 mm with the uplift.
@@ -116,9 +116,11 @@ def test_the_figures() -> None:
 
 
 def test_inches(tmp_path: Path) -> None:
-    """60 mm are 2.36 in; a depth has one decimal more than the result."""
+    """60 mm are 2.3622 in; 40 mm are 1.5748 in, which 1.575 would round up to 1.58: so all have one decimal more."""
     run = make_design(
         tmp_path, job__depth_unit="in", design__uplift=None, design__areal_reduction=None, design__durations=["6h"]
     )
-    (row,) = [row for row in chain_tables(run)[0].rows if row[0].startswith("AEP 0.1")]
-    assert row[2:] == ("2.362", "1", "1", "1", "2.36")
+    assert [row[2:] for row in chain_tables(run)[0].rows] == [
+        ("1.5748", "1", "1", "1", "1.57"),
+        ("2.3622", "1", "1", "1", "2.36"),
+    ]

@@ -37,9 +37,10 @@ def test_what_is_not_shown_is_counted(tmp_path: Path) -> None:
         design__durations=[f"{hours}h" for hours in range(1, 9)],
         design__point=[{"name": f"P{k}", "basins": ["nw"]} for k in range(6)],
     )
-    assert left_out(run, "f.csv") == (
+    (sentence,) = left_out(run, "f.csv")
+    assert sentence == (
         "Shown here: the first 4 of 6 points of interest, 6 of 8 frequencies and 6 of 8 durations; the others are in "
-        "f.csv.",
+        "f.csv."
     )
     assert [point.name for point in design_shown.points(run)] == ["P0", "P1", "P2", "P3"]
     assert [f.return_period for f in design_shown.frequencies(run)] == [2, 3, 5, 6, 8, 10]

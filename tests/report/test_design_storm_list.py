@@ -1,13 +1,17 @@
 from __future__ import annotations
 
 from pathlib import Path
+from typing import Any
 
+import numpy as np
 import pytest
+import shapely
 from report.design_run import bare, make_design, two_halves
 
 from basinrain.report.design_storm_list import depth_tables, hyetograph_tables, peak_tables
 from basinrain.report.table import Table
 from basinrain.report.words import DASH
+from basinrain.results_design import DesignRun
 
 
 def sums(table: Table) -> list[float]:
@@ -57,9 +61,7 @@ def test_basins_that_overlap_have_no_mean_by_area(tmp_path: Path) -> None:
     assert table.notes == ()
 
 
-def _in_km(shape: object) -> object:
-    import shapely
-
+def _in_km(shape: shapely.Geometry) -> shapely.Geometry:
     return shapely.transform(shape, lambda xy: xy / 1000)
 
 
@@ -133,22 +135,36 @@ def test_a_pattern_for_some_durations_is_in_their_rows_only(tmp_path: Path) -> N
     assert {row[0] for row in peak_tables(run)[0].rows} == {"6 h, uniform"}
 
 
-def test_many_basins_are_shortened(tmp_path: Path) -> None:
-    """The first dozen, with the file that holds the others."""
-    import shapely
+def strips(folder: Path, **changes: Any) -> DesignRun:  # noqa: ANN401 - values of a job
+    """Return a run of twenty strips of 10 km²."""
+    squares = {f"B{k:02d}": shapely.box(k, 0, k + 1, 10) for k in range(20)}
+    points = [{"name": "mouth", "basins": list(squares)}]
+    return make_design(folder, squares=squares, design__point=points, **changes)
 
-    strips = {f"B{k:02d}": shapely.box(k, 0, k + 1, 10) for k in range(20)}
-    run = make_design(
-        tmp_path,
-        squares=strips,
-        design__point=[{"name": "mouth", "basins": list(strips)}],
-        design__durations=["6h"],
-        design__sub_basins="own-depth",
-    )
+
+def test_many_basins_are_shortened(tmp_path: Path) -> None:
+    """The first dozen, with the file that holds the others, and of their durations as many as leave a table short."""
+    run = strips(tmp_path, design__sub_basins="own-depth", design__durations=[f"{h}h" for h in (1, 2, 3, 6, 24)])
     (depths,) = depth_tables(run)
-    assert len(depths.rows) == 13
-    assert depths.notes[-1] == "8 more basins are in design_storms.csv."
+    assert [(row[0], row[1]) for row in depths.rows[11:14]] == [("1 h", "B11"), ("1 h", "mean by area"), ("3 h", "B00")]
+    assert len(depths.rows) == 3 * 13
+    assert depths.notes[1] == "Shown: 3 of 5 durations; all are in design_storms.csv."
+    assert depths.notes[2] == "8 more basins are in design_storms.csv."
     assert peak_tables(run)[0].notes[-1] == "8 more basins are in design_storms.csv."
+
+
+def test_many_basins_of_one_depth_share_a_line(tmp_path: Path) -> None:
+    """200 km² with the areal depth of 6 h at 10 years: 70 x 1.1 mm, reduced by the area of all of them."""
+    run = strips(tmp_path)
+    (depths,) = depth_tables(run)
+    factor = 1 - np.exp(-1.1 * 6**0.25) * (1 - np.exp(-0.01 * 200 / 2.589988110336))
+    assert [row[:2] for row in depths.rows] == [(hours, "each of 20") for hours in ("1 h", "6 h", "24 h")]
+    assert depths.rows[1][2] == "200.0"
+    # The east point is the nearer one of three quarters of the strips.
+    assert float(depths.rows[1][4]) == pytest.approx((0.25 * 60 + 0.75 * 80) * 1.1 * factor, abs=0.06)
+    assert depths.notes == (
+        "Every basin has the areal depth to the point of interest; area and volume are those of all.",
+    )
 
 
 def test_one_basin_has_no_mean() -> None:

@@ -11,7 +11,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.areal_reduction.limits import TOLERANCE, Limits
 from basinrain.designstorm.areal_reduction.reduction import ArealReduction
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, unknown
 
 __all__ = ["ARR_2019", "REGIONS", "LongCoefficients", "arr_2019", "arr_2019_long", "arr_2019_region", "arr_2019_short"]
 
@@ -77,12 +77,7 @@ Northern Coastal, Inland Arid; did you mean 'Tasmania'?
         if region.casefold() == asked:
             return coefficients
     raise JobError(
-        Problem(
-            item="[design.areal_reduction] region",
-            found=f"'{name}'",
-            expected="one of: " + ", ".join(REGIONS),
-            remedy=nearest_name(name, REGIONS),
-        )
+        unknown("[design.areal_reduction] region", name, REGIONS)
     )
 
 

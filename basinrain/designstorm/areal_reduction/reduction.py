@@ -13,7 +13,7 @@ from basinrain.designstorm.areal_reduction.holding import Held, Holder
 from basinrain.designstorm.areal_reduction.limits import Limits, area_words
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_text
-from basinrain.errors import JobError, MethodError, Problem, Problems, nearest_name
+from basinrain.errors import JobError, MethodError, Problems, unknown
 
 __all__ = ["OUTSIDE", "ArealReduction", "Reduced"]
 
@@ -183,12 +183,7 @@ class ArealReduction:
         """
         if outside not in OUTSIDE:
             raise JobError(
-                Problem(
-                    item="[design.areal_reduction] outside",
-                    found=f"'{outside}'",
-                    expected="one of: " + ", ".join(OUTSIDE),
-                    remedy=nearest_name(outside, OUTSIDE),
-                )
+                unknown("[design.areal_reduction] outside", outside, OUTSIDE)
             )
         holder = Holder(
             name=self.name,

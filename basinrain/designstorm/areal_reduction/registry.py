@@ -12,7 +12,7 @@ from basinrain.designstorm.areal_reduction.keers_wescott import KEERS_WESCOTT
 from basinrain.designstorm.areal_reduction.leclerc_schaake import LECLERC_SCHAAKE
 from basinrain.designstorm.areal_reduction.reduction import ArealReduction
 from basinrain.designstorm.areal_reduction.table import TABLE
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, unknown
 
 __all__ = ["REDUCTIONS", "areal_reduction"]
 
@@ -42,11 +42,6 @@ keers-wescott, arr-2019, exponential, table; did you mean 'arr-2019'?
     """
     if name not in REDUCTIONS:
         raise JobError(
-            Problem(
-                item="[design.areal_reduction] method",
-                found=f"'{name}'",
-                expected="one of: " + ", ".join(REDUCTIONS),
-                remedy=nearest_name(name, REDUCTIONS),
-            )
+            unknown("[design.areal_reduction] method", name, REDUCTIONS)
         )
     return REDUCTIONS[name]

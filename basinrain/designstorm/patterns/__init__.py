@@ -17,7 +17,7 @@ from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
 from basinrain.designstorm.patterns.table import TABLE
 from basinrain.designstorm.patterns.triangular import TRIANGULAR
 from basinrain.designstorm.patterns.uniform import UNIFORM
-from basinrain.errors import JobError, Problem, nearest_name
+from basinrain.errors import JobError, unknown
 
 __all__ = ["PATTERNS", "Ordinates", "Pattern", "PatternCase", "Shaped", "ordinates_of", "pattern"]
 
@@ -50,11 +50,6 @@ you mean 'triangular'?
     """
     if name not in PATTERNS:
         raise JobError(
-            Problem(
-                item="[[design.pattern]] shape",
-                found=f"'{name}'",
-                expected="one of: " + ", ".join(PATTERNS),
-                remedy=nearest_name(name, PATTERNS),
-            )
+            unknown("[[design.pattern]] shape", name, PATTERNS)
         )
     return PATTERNS[name]

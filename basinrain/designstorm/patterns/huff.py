@@ -10,7 +10,7 @@ from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.patterns.cumulative import fall_by, step_problems
 from basinrain.designstorm.patterns.ordinates import published_ordinates
 from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
-from basinrain.errors import JobError, MethodError, Problem, nearest_name
+from basinrain.errors import JobError, MethodError, unknown
 from basinrain.units import area_factor
 
 __all__ = ["BASES", "HUFF", "huff"]
@@ -79,12 +79,7 @@ def huff(case: PatternCase, *, quartile: int, basis: str | None = None) -> Shape
     """
     if basis is not None and basis not in BASES:
         raise JobError(
-            Problem(
-                item="[[design.pattern]] basis",
-                found=f"'{basis}'",
-                expected="one of: " + ", ".join(BASES),
-                remedy=nearest_name(basis, BASES),
-            )
+            unknown("[[design.pattern]] basis", basis, BASES)
         )
     chosen = basis or _basis_of(case.area)
     problems = step_problems(case)

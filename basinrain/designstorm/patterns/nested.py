@@ -70,5 +70,5 @@ NESTED: Final = Pattern(
     shape=nested,
     options=("peak", "smooth"),
     source="Common practice; NRCS, National Engineering Handbook, part 630, chapter 4, nests depths of all durations",
-    evidence="The chapter's rule was seen in training slides of the NRCS.",
+    evidence="The rule was seen in a public copy of NRCS material.",
 )

@@ -93,7 +93,7 @@ def ratios(region: str) -> tuple[Array, Array]:
 
 @pytest.mark.parametrize("region", ["type_II", "region_A", "region_B", "region_C", "region_D"])
 def test_nesting_of_nrcs_ratios(region: str) -> None:
-    """The storm and its mirror together follow F(12 h -+ d/2) = 0.5 -+ r(d)/2 (NRCS, NEH 630 ch. 4, slides seen)."""
+    """The storm and its mirror together follow F(12 h -+ d/2) = 0.5 -+ r(d)/2 (NRCS, NEH 630 ch. 4, seen)."""
     minutes, ratio = ratios(region)
     case = case_of(through(minutes, ratio), 1440, 5)
     depth = nested(case).depth
