@@ -28,14 +28,17 @@ class Areas:
     points
         The points of interest, each with its rows.
     basins
-        Every area as a polygon in the working plane, rows as the points have them; ids are names for messages.
-    names
-        What results call them, each once: names of the points, and ids of the basins that are not points as well.
+        Every area as a polygon in the working plane, rows as the points have them. Ids are what results call them, each
+        once: names of the points, and ids of the basins that are not points as well.
     """
 
     points: tuple[PointOfInterest, ...]
     basins: Basins
-    names: tuple[str, ...]
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """What results call the areas."""
+        return self.basins.ids
 
 
 def areas_of(design: DesignTable, basins: Basins) -> Areas:
@@ -115,10 +118,10 @@ def areas_of(design: DesignTable, basins: Basins) -> Areas:
         )
         for k, (name, above) in enumerate(asked.items())
     )
-    ids = (*(f"all above {name}" for name in asked), *(f"basin {basin}" for basin in parts))
-    every = np.empty(len(ids), dtype=object)
+    names = (*asked, *parts)
+    every = np.empty(len(names), dtype=object)
     every[:] = [*wholes, *(of[basin] for basin in parts)]
-    return Areas(points=points, basins=Basins(ids=ids, polygons=every, crs=basins.crs), names=(*asked, *parts))
+    return Areas(points=points, basins=Basins(ids=names, polygons=every, crs=basins.crs))
 
 
 def _name_of_all(known: tuple[str, ...]) -> str:

@@ -244,9 +244,9 @@ class _Cases:
     """Collects what cannot be made, each complaint once with the first case that has it."""
 
     def __init__(self) -> None:
-        self._found: dict[Problem, list[str]] = {}
+        self._found: dict[Problem, list[tuple[str, ...]]] = {}
 
-    def attempt(self, case: str, work: Callable[[], Any]) -> Any:  # noqa: ANN401 - what work gives
+    def attempt(self, case: tuple[str, ...], work: Callable[[], Any]) -> Any:  # noqa: ANN401 - what work gives
         try:
             return work()
         except BasinRainError as error:
@@ -256,10 +256,14 @@ class _Cases:
 
     def raise_any(self) -> None:
         if self._found:
-            raise MethodError(
-                replace(problem, item=f"{cases[0]}{f' and {len(cases) - 1} more' if cases[1:] else ''}: {problem.item}")
-                for problem, cases in self._found.items()
-            )
+            raise MethodError(self._told(problem, cases) for problem, cases in self._found.items())
+
+    @staticmethod
+    def _told(problem: Problem, cases: list[tuple[str, ...]]) -> Problem:
+        # What the complaint says itself is not said twice.
+        first = ", ".join(part for part in cases[0] if part not in problem.item)
+        more = f" and {len(cases) - 1} more" if cases[1:] else ""
+        return replace(problem, item=f"{first}{more}: {problem.item}")
 
 
 def _links(chain: DepthChain, areas: Areas, wanted: Asked) -> dict[tuple[str, Frequency], Links]:
@@ -268,7 +272,7 @@ def _links(chain: DepthChain, areas: Areas, wanted: Asked) -> dict[tuple[str, Fr
     for point in areas.points:
         for frequency in wanted.frequencies:
             work = partial(chain.links, point.row, minutes, frequency)
-            result[point.name, frequency] = cases.attempt(f"{point.name}, {frequency.label}", work)
+            result[point.name, frequency] = cases.attempt((point.name, frequency.label), work)
     cases.raise_any()
     return result
 
@@ -296,8 +300,8 @@ def _storms(
                         sub_basins=design.sub_basins,
                         own_area=own_area,
                     )
-                    words = f"{point.name}, {frequency.label}, {duration_text(minutes)}, {choice.label}"
-                    storms.append(cases.attempt(words, work))
+                    case = (point.name, frequency.label, duration_text(minutes), choice.label)
+                    storms.append(cases.attempt(case, work))
     cases.raise_any()
     return tuple(storms)
 

@@ -14,7 +14,6 @@ import numpy.typing as npt
 from basinrain.averager import Averager
 from basinrain.averaging import averaging_method
 from basinrain.basin_depths import BasinDepths, average_storm
-from basinrain.basins import Basins
 from basinrain.cautions import screening_cautions, storm_cautions
 from basinrain.design_areas import Areas
 from basinrain.design_asked import Asked
@@ -155,7 +154,7 @@ class ObservedStorms:
         problems.raise_as(JobError)
         completed = self.infill.complete(window, long=self._long[storm.first : storm.stop])
         means = average_storm(completed, self._averager)
-        areas = Basins(ids=self.areas.names, polygons=self.areas.basins.polygons, crs=self.areas.basins.crs)
+        areas = self.areas.basins
         unit = self.job.job.depth_unit
         notes = (
             *notes,

@@ -9,9 +9,9 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.averaging import averaging_method
 from basinrain.basins import Basins
 from basinrain.design_asked import Asked
+from basinrain.design_sources import mean_weights
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.record_depths import RecordDepths, record_depths
@@ -107,9 +107,7 @@ def record_source(
     step = constant_step(starts, ends, wanted_for="depths from the record") // 60
     columns = _held(record, table.gauges)
     network = given.network.subset(columns)
-    weigh = averaging_method(table.average).prepare(network, areas, **job.averaging.options(table.average))
-    weights = weigh(np.ones(len(network), dtype=bool)).weights
-    _check_weights(weights, names, table.average)
+    weights = mean_weights(job, network, areas, table.average, whose="gauges that are held", names=names)
     depth = infill.complete(record, long=inputs.silent(0, len(starts)), trace=False).record.depth[:, columns].copy()
     depth[(record.status == Status.NOT_INSTALLED)[:, columns]] = np.nan
     gaps = np.isnan(depth)
@@ -186,19 +184,6 @@ def _held(record: RainRecord, named: tuple[str, ...]) -> Bools:
             )
         )
     return throughout
-
-
-def _check_weights(weights: Floats, names: tuple[str, ...], average: str) -> None:
-    """Refuse areas that a method has no mean of, such as the arithmetic one of an area without a gauge inside."""
-    problems = Problems()
-    for row in np.flatnonzero(np.isnan(weights).any(axis=1)):
-        problems.add(
-            item=f"[design.depths] average, {names[row]}",
-            found=f"no weights by '{average}' from the gauges that are held",
-            expected="gauges that the method can use",
-            remedy="choose 'thiessen', which takes the nearest",
-        )
-    problems.raise_as(DataError)
 
 
 def _minutes(asked: Asked, step: int) -> Floats:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import partial
 from typing import Literal, cast
@@ -27,7 +27,7 @@ from basinrain.jobfile.design_tables import EQUATION, RASTERS, DesignDepthsTable
 from basinrain.reading.depth_rasters import RasterFile, read_depth_rasters
 from basinrain.reading.design_depths import read_point_depths
 
-__all__ = ["Sourced", "interval_factors", "nearest_points", "sourced"]
+__all__ = ["Sourced", "interval_factors", "mean_weights", "nearest_points", "sourced"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -157,15 +157,53 @@ def _weights(job: Job | DesignJob, depths: PointDepths, areas: Basins, average: 
             )
             for point in without
         )
-    network = _near(depths, areas)
+    return mean_weights(job, _near(depths, areas), areas, average, whose="points of the table")
+
+
+def mean_weights(
+    job: Job | DesignJob,
+    network: GaugeNetwork,
+    areas: Basins,
+    average: str,
+    *,
+    whose: str,
+    names: Sequence[str] | None = None,
+) -> Floats:
+    """Return the weights by which points or gauges have their mean over areas.
+
+    Parameters
+    ----------
+    job
+        Holds the options of averaging methods.
+    network
+        The points or gauges.
+    areas
+        The areas.
+    average
+        The averaging method.
+    whose
+        What the network is, for the message: ``"points of the table"``.
+    names
+        What the areas are called there; their ids by default.
+
+    Returns
+    -------
+    array of float, shape (n_areas, n_points)
+        Every row sums to 1; no NaN.
+
+    Raises
+    ------
+    DataError
+        There are areas that the method has no mean of, such as the arithmetic one of an area without a gauge inside.
+    """
     weigh = averaging_method(average).prepare(network, areas, **job.averaging.options(average))
     weights = weigh(np.ones(len(network), dtype=bool)).weights
     problems = Problems()
     for row in np.flatnonzero(np.isnan(weights).any(axis=1)):
         problems.add(
-            item=f"[design.depths] average, {areas.ids[row]}",
-            found=f"no weights by '{average}' from the points of the table",
-            expected="points that the method can use",
+            item=f"[design.depths] average, {(names or areas.ids)[row]}",
+            found=f"no weights by '{average}' from the {whose}",
+            expected=f"{whose.split()[0]} that the method can use",
             remedy="choose 'thiessen', which takes the nearest",
         )
     problems.raise_as(DataError)

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_words
 from basinrain.tables import time_text
 from basinrain.units import area_factor, depth_factor, volume_factor, volume_unit_for
@@ -69,9 +69,7 @@ def frequency_cells(frequency: Frequency | None) -> tuple[float, float, str]:
     """
     if frequency is None:
         return np.nan, np.nan, ""
-    aep = frequency.aep if frequency.series == ANNUAL_MAXIMUM else np.nan
-    # Without what a division leaves behind the twelfth digit.
-    return float(f"{aep:.12g}"), float(f"{frequency.return_period:.12g}"), frequency.series
+    return frequency.written_aep, frequency.written_years, frequency.series
 
 
 def _frame(rows: Iterable[Sequence[Any]], columns: str) -> pd.DataFrame:

@@ -62,9 +62,7 @@ def _factor(unit: str, table: MappingProxyType[str, float], kind: str) -> float:
     try:
         return table[unit]
     except KeyError:
-        raise JobError(
-            unknown(f"{kind} unit", unit, table)
-        ) from None
+        raise JobError(unknown(f"{kind} unit", unit, table)) from None
 
 
 def depth_factor(unit: str) -> float:

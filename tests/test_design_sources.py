@@ -47,7 +47,7 @@ def test_two_points_share_the_whole(tmp_path: Path) -> None:
     """A point in the middle of each half has half of the whole, and the squares of its own half."""
     found, areas = sourced_of(tmp_path, depths=TWO_POINTS, design__depths__crs="local")
     assert found.source.points == ("west", "east")
-    assert areas.ids[1:] == ("basin nw", "basin ne", "basin sw", "basin se")
+    assert areas.ids[1:] == ("nw", "ne", "sw", "se")
     assert found.weights == pytest.approx(np.array([[0.5, 0.5], [1, 0], [0, 1], [1, 0], [0, 1]]), abs=1e-12)
     assert found.method == "thiessen"
 
@@ -91,8 +91,8 @@ def test_a_method_without_weights_is_refused(tmp_path: Path) -> None:
         sourced_of(tmp_path, depths=TWO_POINTS.replace("5000", "6000"), design__depths__crs="local",
                    design__depths__average="arithmetic")  # fmt: skip
     assert [problem.item for problem in caught.value.problems] == [
-        "[design.depths] average, basin sw",
-        "[design.depths] average, basin se",
+        "[design.depths] average, sw",
+        "[design.depths] average, se",
     ]
 
 

@@ -75,7 +75,5 @@ def averaging_method(name: str) -> AveragingMethod:
 mean 'thiessen'?
     """
     if name not in METHODS:
-        raise JobError(
-            unknown("averaging method", name, METHODS)
-        )
+        raise JobError(unknown("averaging method", name, METHODS))
     return METHODS[name]

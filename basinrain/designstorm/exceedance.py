@@ -62,9 +62,7 @@ shorter ones are of a partial duration series
 
     def __post_init__(self) -> None:
         if self.series not in SERIES:
-            raise JobError(
-                unknown("series", self.series, SERIES)
-            )
+            raise JobError(unknown("series", self.series, SERIES))
         annual = self.series == ANNUAL_MAXIMUM
         if not math.isfinite(self.return_period) or self.return_period <= (1 if annual else 0):
             kind = "an annual maximum series" if annual else "a partial duration series"
@@ -129,11 +127,37 @@ write 0.02 for 2 %
         return Frequency(-1 / math.log1p(-self.aep), series)
 
     @property
+    def written_aep(self) -> float:
+        """The AEP for files, to 12 digits; NaN for a partial duration series, whose source states none.
+
+        Examples
+        --------
+        >>> Frequency.of_aep(0.07).written_aep, Frequency(10.0, "partial-duration").written_aep
+        (0.07, nan)
+        """
+        return _written(self.aep) if self.series == ANNUAL_MAXIMUM else math.nan
+
+    @property
+    def written_years(self) -> float:
+        """The return period for files, years, without what a division leaves behind the twelfth digit.
+
+        Examples
+        --------
+        >>> Frequency.of_aep(0.07).written_years, Frequency.of_aep(0.01).written_years
+        (14.2857142857, 100.0)
+        """
+        return _written(self.return_period)
+
+    @property
     def label(self) -> str:
         """The frequency in words, for files and figures."""
         if self.series == ANNUAL_MAXIMUM:
             return f"AEP {self.aep:.4g} (1 in {self.return_period:.4g})"
         return f"{self.return_period:.4g}-year, partial duration"
+
+
+def _written(value: float) -> float:
+    return float(f"{value:.12g}")
 
 
 def reduced_variate(aep: float) -> float:

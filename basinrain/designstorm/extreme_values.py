@@ -215,6 +215,4 @@ def check_distribution(name: str) -> None:
     basinrain.errors.JobError: distribution: found 'gumbell'; expected one of: gumbel, gev; did you mean 'gumbel'?
     """
     if name not in DISTRIBUTIONS:
-        raise JobError(
-            unknown("distribution", name, DISTRIBUTIONS)
-        )
+        raise JobError(unknown("distribution", name, DISTRIBUTIONS))

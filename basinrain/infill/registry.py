@@ -186,6 +186,4 @@ correlation-weighting, regression, ratio-regression; did you mean 'normal-ratio'
     try:
         return METHODS[name]
     except (KeyError, TypeError):
-        raise JobError(
-            unknown("[infill] method", name, METHODS)
-        ) from None
+        raise JobError(unknown("[infill] method", name, METHODS)) from None

@@ -11,14 +11,13 @@ import numpy as np
 import numpy.typing as npt
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
-from matplotlib.ticker import FuncFormatter, LogLocator, NullFormatter, NullLocator
 from matplotlib.transforms import ScaledTranslation
 from scipy.optimize import isotonic_regression
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.measures import duration_text
 from basinrain.errors import DataError, Problem
-from basinrain.report.duration_axis import duration_axis
+from basinrain.report.duration_axis import depth_axis, duration_axis
 from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.units import depth_factor
@@ -148,16 +147,7 @@ def _depth_axis(axes: Any, depths: list[Floats], unit: str) -> None:  # noqa: AN
     axes.set_ylim(least / _ROOM, most * _ROOM)
     # Less than a decade and a half has few places at 1, 2 and 5.
     close = math.log10(most / least * _ROOM**2) < 1.0
-    axes.yaxis.set_major_locator(LogLocator(subs=(1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 7.0) if close else (1.0, 2.0, 5.0)))
-    axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
-    axes.yaxis.set_minor_formatter(NullFormatter())
-    axes.yaxis.set_minor_locator(NullLocator())
-    axes.set_axisbelow(True)
-    axes.grid(axis="both")
-    axes.set_xlabel("duration")
-    axes.set_ylabel(f"depth, {unit}")
-    for side in ("top", "right"):
-        axes.spines[side].set_visible(False)
+    depth_axis(axes, f"depth, {unit}", places=(1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 7.0) if close else (1.0, 2.0, 5.0))
 
 
 def short_label(frequency: Frequency) -> str:

@@ -1,4 +1,4 @@
-"""Durations along an axis: in words, as many as have room."""
+"""The axes of figures of depth by duration: plain depths, and durations in words, as many as have room."""
 
 from __future__ import annotations
 
@@ -8,14 +8,43 @@ from typing import Any, Final
 
 import numpy as np
 import numpy.typing as npt
-from matplotlib.ticker import NullLocator
+from matplotlib.ticker import FuncFormatter, LogLocator, NullFormatter, NullLocator
 
-__all__ = ["duration_axis", "words_with_room"]
+__all__ = ["depth_axis", "duration_axis", "words_with_room"]
 
 _APART: Final = 17.0  # points between labels
 _LETTER: Final = 4.2  # points
 
 Floats = npt.NDArray[np.float64]
+
+
+def depth_axis(
+    axes: Any,  # noqa: ANN401 - matplotlib's axes
+    label: str,
+    *,
+    places: Sequence[float] = (1.0, 2.0, 5.0),
+) -> None:
+    """Write plain numbers along the vertical logarithmic axis of depths by duration, and draw its grid.
+
+    Parameters
+    ----------
+    axes
+        Where to draw; its limits are the caller's.
+    label
+        What stands along the axis.
+    places
+        Where in every decade a number stands.
+    """
+    axes.yaxis.set_major_locator(LogLocator(subs=places))
+    axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
+    axes.yaxis.set_minor_formatter(NullFormatter())
+    axes.yaxis.set_minor_locator(NullLocator())
+    axes.set_axisbelow(True)
+    axes.grid(axis="both")
+    axes.set_xlabel("duration")
+    axes.set_ylabel(label)
+    for side in ("top", "right"):
+        axes.spines[side].set_visible(False)
 
 
 def duration_axis(

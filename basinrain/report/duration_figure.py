@@ -7,10 +7,10 @@ from typing import Any, Final
 import numpy as np
 import numpy.typing as npt
 from matplotlib.figure import Figure
-from matplotlib.ticker import FixedLocator, FuncFormatter, LogLocator, NullFormatter, NullLocator
+from matplotlib.ticker import FixedLocator, NullLocator
 
 from basinrain.report import series_names
-from basinrain.report.duration_axis import words_with_room
+from basinrain.report.duration_axis import depth_axis, words_with_room
 from basinrain.report.figures import HALF_WIDTH, LINES, MARKS, Picture, figure_style, to_svg
 from basinrain.report.greatest_list import duration_words
 from basinrain.report.words import depth_text, inline, unit_word
@@ -124,16 +124,7 @@ def _picture(
         axes.set_xlim(seconds[0] / 1.25, seconds[-1] * 1.25)
         axes.set_ylim(least / 1.25, most * 1.25)
         _label(axes, words, seconds)
-        axes.yaxis.set_major_locator(LogLocator(subs=(1.0, 2.0, 5.0)))
-        axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
-        axes.yaxis.set_minor_formatter(NullFormatter())
-        axes.yaxis.set_minor_locator(NullLocator())
-        axes.set_axisbelow(True)
-        axes.grid(axis="both")
-        axes.set_xlabel("duration")
-        axes.set_ylabel(f"greatest depth, {unit_word(run.depth_unit)}")
-        for side in ("top", "right"):
-            axes.spines[side].set_visible(False)
+        depth_axis(axes, f"greatest depth, {unit_word(run.depth_unit)}")
         figure.legend(
             loc="upper left",
             bbox_to_anchor=(0.02, 1 - 0.04 / total),

@@ -11,13 +11,14 @@ import numpy.typing as npt
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
-from matplotlib.ticker import FixedLocator, FuncFormatter, LogLocator, NullFormatter, NullLocator
+from matplotlib.ticker import FixedLocator, NullLocator
 from scipy.optimize import isotonic_regression
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.found_frequency import odds
 from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.rarity import RarityRow, StormDepths, StormRarity
+from basinrain.report.duration_axis import depth_axis
 from basinrain.report.figures import HALO, INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.units import depth_factor
@@ -130,9 +131,8 @@ def _figure(
         _draw_curves(axes, panel, frequencies)
         _draw_storm(axes, panel, mm)
         _label_axes(axes, durations, width)
+        depth_axis(axes, "" if k else f"depth, {unit_word(depth_unit)}")
         axes.set_title(panel.title, pad=5)
-        if k == 0:
-            axes.set_ylabel(f"depth, {unit_word(depth_unit)}")
     texts = {"areal": f"storm {inline(storm, 40)}, mean over the basin", "point": "wettest gauge"}
     handles = [
         Line2D([], [], color="black", linewidth=1.7, label=texts[panel.rows[0].kind], **panel.look) for panel in panels
@@ -228,15 +228,6 @@ def _label_axes(axes: Axes, minutes: Floats, width: float) -> None:
     axes.xaxis.set_major_locator(FixedLocator(minutes.tolist()))
     axes.set_xticks(minutes, [word if k in shown else "" for k, word in enumerate(words)])
     axes.xaxis.set_minor_locator(NullLocator())
-    axes.yaxis.set_major_locator(LogLocator(subs=(1.0, 2.0, 5.0)))
-    axes.yaxis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
-    axes.yaxis.set_minor_formatter(NullFormatter())
-    axes.yaxis.set_minor_locator(NullLocator())
-    axes.set_axisbelow(True)
-    axes.grid(axis="both")
-    axes.set_xlabel("duration")
-    for side in ("top", "right"):
-        axes.spines[side].set_visible(False)
 
 
 def _described(panels: Sequence[_Panel], mm: float, depth_unit: str) -> str:

@@ -13,7 +13,7 @@ from basinrain.designstorm.measures import duration_text, duration_words
 from basinrain.errors import DataError, Problems
 from basinrain.units import area_factor, depth_factor
 
-__all__ = ["DesignContent", "DesignHyetograph", "aep_of", "column_word", "frequency_word", "years_of"]
+__all__ = ["DesignContent", "DesignHyetograph", "column_word", "frequency_word"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -258,32 +258,6 @@ class DesignContent:
 def column_word(one: DesignHyetograph) -> str:
     """Return what a column of a hyetograph is called after: its frequency and its pattern."""
     return f"{frequency_word(one.frequency)}_{one.pattern}"
-
-
-def aep_of(frequency: Frequency) -> float:
-    """Return the annual exceedance probability that is written; NaN for a partial duration series, which states none.
-
-    Examples
-    --------
-    >>> aep_of(Frequency.of_aep(0.07)), aep_of(Frequency(10.0, "partial-duration"))
-    (0.07, nan)
-    """
-    return _rounded(frequency.aep) if frequency.series == ANNUAL_MAXIMUM else float("nan")
-
-
-def years_of(frequency: Frequency) -> float:
-    """Return the return period that is written, years, without what a division leaves behind the twelfth digit.
-
-    Examples
-    --------
-    >>> years_of(Frequency.of_aep(0.07)), years_of(Frequency.of_aep(0.01))
-    (14.2857142857, 100.0)
-    """
-    return _rounded(frequency.return_period)
-
-
-def _rounded(value: float) -> float:
-    return float(f"{value:.12g}")
 
 
 def frequency_word(frequency: Frequency) -> str:

@@ -7,7 +7,7 @@ from typing import Final
 
 import numpy as np
 
-from basinrain.writing.design_content import DesignContent, DesignHyetograph, aep_of, years_of
+from basinrain.writing.design_content import DesignContent, DesignHyetograph
 from basinrain.writing.series_content import writing
 from basinrain.writing.series_csv import csv_row, depth_texts
 
@@ -64,8 +64,8 @@ def _rows(content: DesignContent, one: DesignHyetograph) -> list[str]:
         ends = [f"{end},{time}" for end, time in zip(ends, content.time_texts(one.elapsed), strict=True)]
     facts = [
         one.point,
-        number_text(aep_of(one.frequency)),
-        number_text(years_of(one.frequency)),
+        number_text(one.frequency.written_aep),
+        number_text(one.frequency.written_years),
         one.frequency.series,
         one.duration,
         one.pattern,

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any, Final
 
 import numpy as np
 
-from basinrain.writing.design_content import DesignContent, aep_of, years_of
+from basinrain.writing.design_content import DesignContent
 from basinrain.writing.netcdf_parts import DEFLATE, opened, write_basins, write_words
 from basinrain.writing.series_content import writing
 
@@ -84,10 +84,10 @@ def _write_cases(file: netCDF4.Dataset, content: DesignContent) -> list[str]:
         write_words(file, "case", name, words, {"long_name": meaning})
     aep = file.createVariable("aep", "f8", ("case",), fill_value=np.nan)
     aep.setncatts({"long_name": "annual exceedance probability", "units": "1"})
-    aep[:] = [aep_of(one.frequency) for one in cases]
+    aep[:] = [one.frequency.written_aep for one in cases]
     years = file.createVariable("return_period", "f8", ("case",))
     years.setncatts({"long_name": "return period", "units": "year"})
-    years[:] = [years_of(one.frequency) for one in cases]
+    years[:] = [one.frequency.written_years for one in cases]
     duration = file.createVariable("duration", "i4", ("case",))
     duration.setncatts({"long_name": "duration of the storm", "units": "minutes"})
     duration[:] = [one.minutes for one in cases]

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.writing.design_content import DesignContent, DesignHyetograph, aep_of, years_of
+from basinrain.writing.design_content import DesignContent, DesignHyetograph
 from basinrain.writing.design_csv import COLUMNS
 from basinrain.writing.series_content import writing
 from basinrain.writing.series_parquet import basin_facts, chosen_words
@@ -69,8 +69,8 @@ def _columns(content: DesignContent, group: tuple[DesignHyetograph, ...]) -> dic
     elapsed = np.concatenate([np.tile(one.elapsed, len(one.basins)) for one in group])
     return {
         "point": words(lambda one: one.point),
-        "aep": numbers(lambda one: aep_of(one.frequency)),
-        "return_period": numbers(lambda one: years_of(one.frequency)),
+        "aep": numbers(lambda one: one.frequency.written_aep),
+        "return_period": numbers(lambda one: one.frequency.written_years),
         "return_period_in": words(lambda one: one.frequency.series),
         "duration": words(lambda one: one.duration),
         "pattern": words(lambda one: one.pattern),

@@ -164,6 +164,7 @@ def test_start_makes_a_job_that_runs(tmp_path: Path) -> None:
     assert sorted(path.name for path in folder.iterdir()) == [
         "README.md",
         "basins.geojson",
+        "design",
         "gauges.csv",
         "handbook",
         "job.toml",

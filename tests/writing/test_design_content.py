@@ -12,7 +12,7 @@ from small_hyetographs import BASINS, COMMON, RARE, drawn_content, hyetograph, t
 
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.errors import DataError, JobError
-from basinrain.writing.design_content import aep_of, column_word, frequency_word, years_of
+from basinrain.writing.design_content import column_word, frequency_word
 
 
 def test_a_hyetograph_tells_itself() -> None:
@@ -134,12 +134,12 @@ def test_times_count_from_the_nominal_start() -> None:
 
 def test_a_partial_duration_series_states_no_probability() -> None:
     """What was not converted is not written as if it were."""
-    assert (aep_of(RARE), years_of(RARE), frequency_word(RARE)) == (0.01, 100.0, "aep_0.01")
-    assert np.isnan(aep_of(COMMON))
-    assert (years_of(COMMON), frequency_word(COMMON)) == (2.0, "return_period_2")
+    assert (RARE.written_aep, RARE.written_years, frequency_word(RARE)) == (0.01, 100.0, "aep_0.01")
+    assert np.isnan(COMMON.written_aep)
+    assert (COMMON.written_years, frequency_word(COMMON)) == (2.0, "return_period_2")
 
 
 @given(st.integers(1, 999))
 def test_a_probability_is_written_as_it_was_given(thousandths: int) -> None:
     """On the way through the return period no digit is lost and none is left behind."""
-    assert aep_of(Frequency.of_aep(thousandths / 1000)) == thousandths / 1000
+    assert Frequency.of_aep(thousandths / 1000).written_aep == thousandths / 1000

@@ -11,7 +11,7 @@ import pandas as pd
 import pytest
 from small_hyetographs import COMMON, drawn_content, hyetograph, two_steps
 
-from basinrain.writing.design_content import DesignContent, aep_of, years_of
+from basinrain.writing.design_content import DesignContent
 from basinrain.writing.design_csv import write_csv
 
 
@@ -47,8 +47,8 @@ def check_rows(rows: list[dict[str, str]], content: DesignContent) -> None:
             at += one.n_steps
             facts = {(r["point"], r["return_period_in"], r["duration"], r["pattern"], r["basin"]) for r in own}
             assert facts == {(one.point, one.frequency.series, one.duration, one.pattern, basin)}
-            assert {float(r["return_period"]) for r in own} == {years_of(one.frequency)}
-            np.testing.assert_array_equal([float(r["aep"] or "nan") for r in own], aep_of(one.frequency))
+            assert {float(r["return_period"]) for r in own} == {one.frequency.written_years}
+            np.testing.assert_array_equal([float(r["aep"] or "nan") for r in own], one.frequency.written_aep)
             assert [int(r["elapsed_min"]) for r in own] == one.elapsed.tolist()
             assert [r["time"] for r in own] == content.time_texts(one.elapsed)
             np.testing.assert_array_equal([float(r["depth"]) for r in own], depth)

@@ -12,7 +12,6 @@ import xarray as xr
 from cf_checker import complaints
 from small_hyetographs import AREAS, BASINS, NAMES, POSITIONS, drawn_content, two_steps
 
-from basinrain.writing.design_content import aep_of, years_of
 from basinrain.writing.design_netcdf import write_netcdf
 
 FILE = "design_hyetographs.nc"
@@ -84,8 +83,8 @@ def test_xarray_reads_every_number(tmp_path: Path, unit: str) -> None:
             own = data.isel(case=case)
             assert (own["point"].item(), own["pattern"].item()) == (one.point, one.pattern)
             assert own["return_period_in"].item() == one.frequency.series
-            assert (own["return_period"].item(), own["duration"].item()) == (years_of(one.frequency), one.minutes)
-            np.testing.assert_array_equal(own["aep"], aep_of(one.frequency))
+            assert (own["return_period"].item(), own["duration"].item()) == (one.frequency.written_years, one.minutes)
+            np.testing.assert_array_equal(own["aep"], one.frequency.written_aep)
             columns = [BASINS.index(basin) for basin in one.basins]
             written = own["depth"].to_numpy()[: one.n_steps, columns]
             np.testing.assert_array_equal(written, content.depth(one).T)

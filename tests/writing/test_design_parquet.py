@@ -13,7 +13,6 @@ import pytest
 from small_hyetographs import drawn_content, two_steps
 
 from basinrain.writing import design_parquet
-from basinrain.writing.design_content import aep_of, years_of
 from basinrain.writing.design_csv import COLUMNS, write_csv
 from basinrain.writing.design_parquet import write_parquet
 
@@ -36,8 +35,14 @@ def test_pyarrow_reads_every_number(tmp_path: Path, held: int, groups: int, monk
         assert rows["basin"].to_pylist() == [basin for basin in one.basins for _ in range(one.n_steps)]
         assert rows["elapsed_min"].to_pylist() == one.elapsed.tolist() * len(one.basins)
         np.testing.assert_array_equal(rows["time"].to_numpy()[: one.n_steps], content.ends(one.elapsed))
-        aep = aep_of(one.frequency)
-        facts = (one.point, None if np.isnan(aep) else aep, years_of(one.frequency), one.frequency.series, one.duration)
+        aep = one.frequency.written_aep
+        facts = (
+            one.point,
+            None if np.isnan(aep) else aep,
+            one.frequency.written_years,
+            one.frequency.series,
+            one.duration,
+        )
         columns = ("point", "aep", "return_period", "return_period_in", "duration", "pattern", "depth_unit")
         assert {tuple(row.values()) for row in rows.select(columns).to_pylist()} == {(*facts, one.pattern, "in")}
     assert at == len(table)

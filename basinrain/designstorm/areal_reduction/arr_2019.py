@@ -76,9 +76,7 @@ Northern Coastal, Inland Arid; did you mean 'Tasmania'?
     for region, coefficients in REGIONS.items():
         if region.casefold() == asked:
             return coefficients
-    raise JobError(
-        unknown("[design.areal_reduction] region", name, REGIONS)
-    )
+    raise JobError(unknown("[design.areal_reduction] region", name, REGIONS))
 
 
 def arr_2019_short(area: npt.ArrayLike, minutes: npt.ArrayLike, *, aep: float) -> Floats:

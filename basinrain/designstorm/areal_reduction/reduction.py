@@ -182,9 +182,7 @@ class ArealReduction:
             there. All such problems together.
         """
         if outside not in OUTSIDE:
-            raise JobError(
-                unknown("[design.areal_reduction] outside", outside, OUTSIDE)
-            )
+            raise JobError(unknown("[design.areal_reduction] outside", outside, OUTSIDE))
         holder = Holder(
             name=self.name,
             title=self.title,

@@ -41,7 +41,5 @@ def areal_reduction(name: str) -> ArealReduction:
 keers-wescott, arr-2019, exponential, table; did you mean 'arr-2019'?
     """
     if name not in REDUCTIONS:
-        raise JobError(
-            unknown("[design.areal_reduction] method", name, REDUCTIONS)
-        )
+        raise JobError(unknown("[design.areal_reduction] method", name, REDUCTIONS))
     return REDUCTIONS[name]

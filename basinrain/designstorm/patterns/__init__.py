@@ -49,7 +49,5 @@ def pattern(name: str) -> Pattern:
 you mean 'triangular'?
     """
     if name not in PATTERNS:
-        raise JobError(
-            unknown("[[design.pattern]] shape", name, PATTERNS)
-        )
+        raise JobError(unknown("[[design.pattern]] shape", name, PATTERNS))
     return PATTERNS[name]

@@ -78,9 +78,7 @@ def huff(case: PatternCase, *, quartile: int, basis: str | None = None) -> Shape
     array([30., 11.,  5.,  4.])
     """
     if basis is not None and basis not in BASES:
-        raise JobError(
-            unknown("[[design.pattern]] basis", basis, BASES)
-        )
+        raise JobError(unknown("[[design.pattern]] basis", basis, BASES))
     chosen = basis or _basis_of(case.area)
     problems = step_problems(case)
     if not chosen:
