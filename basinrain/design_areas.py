@@ -9,11 +9,11 @@ import numpy as np
 import shapely
 
 from basinrain.basins import UNION, Basins
-from basinrain.designstorm.design_storms import PointOfInterest
+from basinrain.designstorm.design_storms import OWN_DEPTH, PointOfInterest
 from basinrain.errors import JobError, Problems, nearest_name
 from basinrain.jobfile.design_tables import DesignTable
 
-__all__ = ["Areas", "areas_of"]
+__all__ = ["Areas", "ReducedArea", "areas_of"]
 
 _LAPPED: Final = 1e-6
 """Share of the area over which basins may lap, as they do by the rounding of their corners, and still be apart."""
@@ -35,10 +35,52 @@ class Areas:
     points: tuple[PointOfInterest, ...]
     basins: Basins
 
+    def reduced(self, design: DesignTable) -> tuple[ReducedArea, ...]:
+        """Return the areas whose chain of depths is shown, and by which the areal reduction goes."""
+        if design.areal_reduction is None or design.areal_reduction.area != "own":
+            return tuple(ReducedArea(point.name, point.name, "", point.row, point.row) for point in self.points)
+        own = design.sub_basins == OWN_DEPTH
+        return tuple(
+            ReducedArea(
+                point.part(basin),
+                point.name,
+                basin,
+                row if own else point.row,
+                row,
+            )
+            for point in self.points
+            for basin, row in zip(point.basins, point.rows, strict=True)
+        )
+
     @property
     def names(self) -> tuple[str, ...]:
         """What results call the areas."""
         return self.basins.ids
+
+
+@dataclass(frozen=True)
+class ReducedArea:
+    """An area with a depth of its own: all basins above a point of interest, or one of them where the job says so.
+
+    Parameters
+    ----------
+    name
+        What results call it.
+    point
+        The point of interest.
+    basin
+        The basin; empty where all of them are one area.
+    row
+        The row of the areas over which points are averaged.
+    reduced_as
+        The row of the area that decides the areal reduction.
+    """
+
+    name: str
+    point: str
+    basin: str
+    row: int
+    reduced_as: int
 
 
 def areas_of(design: DesignTable, basins: Basins) -> Areas:

@@ -63,12 +63,8 @@ def design_cautions(
     points = (f"{name}: {text}" for (name, _), found in links.items() for text in found.clamped)
     for text in dict.fromkeys((*points, *(text for storm in storms for text in storm.clamped))):
         yield Note(code="reduction-clamped", text=text)
-    if sourced.source.series == PARTIAL_DURATION and design.aep is not None:
-        text = (
-            "The depths are of a partial duration series; annual exceedance probabilities were brought to its return "
-            "periods T by AEP = 1 - exp(-1/T) (Langbein 1949)."
-        )
-        yield Note(code="series-converted", level="info", text=text)
+    if sourced.source.series == PARTIAL_DURATION and design.depths.convert:
+        yield from _of_conversion(asked)
     if design.depths.extrapolate:
         yield from _of_extrapolation(asked, sourced)
     if design.depths.interval_factor is not None:
@@ -101,6 +97,8 @@ def design_cautions(
     for found in rarities:
         for text in found.left_out:
             yield Note(code="rarity-left-out", level="info", storm=found.storm, text=text)
+        for text in found.clamped:
+            yield Note(code="rarity-clamped", storm=found.storm, text=f"Areal depths that it is compared with: {text}")
 
 
 def climate_sentence(uplift: UpliftTable | None) -> str:
@@ -108,6 +106,25 @@ def climate_sentence(uplift: UpliftTable | None) -> str:
     if uplift is None:
         return "Climate change is not included: the depths are those of the source, and the job gives no uplift."
     return f"Depths were multiplied by {uplift.factor:g} for the climate of {uplift.horizon} ({uplift.source})."
+
+
+def _of_conversion(asked: Asked) -> Iterator[Note]:
+    design = asked.design
+    by = "by AEP = 1 - exp(-1/T) (Langbein 1949)"
+    same = [f"AEP {each.aep:.4g} is {each.return_period:.4g} years" for each in asked.frequencies]
+    if design.aep is not None:
+        text = (
+            "The depths are of a partial duration series; annual exceedance probabilities were brought to its return "
+            f"periods T {by}: {', '.join(same)}."
+        )
+        yield Note(code="series-converted", level="info", text=text)
+    table = design.areal_reduction
+    if table is not None and table.method in REDUCTIONS and REDUCTIONS[table.method].uses_frequency:
+        text = (
+            "The areal reduction goes by the annual exceedance probability, which return periods T of the depths' "
+            f"partial duration series have {by}{'' if design.aep is not None else ': ' + ', '.join(same)}."
+        )
+        yield Note(code="series-converted", level="info", text=text)
 
 
 def _of_reduction(

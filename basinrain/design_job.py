@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from functools import cached_property, partial
@@ -215,9 +216,7 @@ class _Given:
         job, given = self._gauged()
         self._say("depths from the record")
         with one_blas_thread():
-            return record_source(
-                job, self._wanted, given, areas.basins, names=areas.names, infill=self._infill_of_record
-            )
+            return record_source(job, self._wanted, given, areas.basins, infill=self._infill_of_record)
 
 
 def _of_record(record: RecordSource, areas: Areas, average: str) -> Sourced:
@@ -260,19 +259,20 @@ class _Cases:
 
     @staticmethod
     def _told(problem: Problem, cases: list[tuple[str, ...]]) -> Problem:
-        # What the complaint says itself is not said twice.
-        first = ", ".join(part for part in cases[0] if part not in problem.item)
+        # What the complaint says itself is not said twice; a point called A is not said by the word AEP.
+        said = (part for part in cases[0] if not re.search(rf"(?<!\w){re.escape(part)}(?!\w)", problem.item))
+        first = ", ".join(said)
         more = f" and {len(cases) - 1} more" if cases[1:] else ""
-        return replace(problem, item=f"{first}{more}: {problem.item}")
+        return replace(problem, item=": ".join(part for part in (f"{first}{more}".strip(), problem.item) if part))
 
 
 def _links(chain: DepthChain, areas: Areas, wanted: Asked) -> dict[tuple[str, Frequency], Links]:
     minutes = np.array(wanted.minutes, dtype=float)
     cases, result = _Cases(), {}
-    for point in areas.points:
+    for area in areas.reduced(wanted.design):
         for frequency in wanted.frequencies:
-            work = partial(chain.links, point.row, minutes, frequency)
-            result[point.name, frequency] = cases.attempt((point.name, frequency.label), work)
+            work = partial(chain.links, area.row, minutes, frequency, reduced_as=area.reduced_as)
+            result[area.name, frequency] = cases.attempt((area.name, frequency.label), work)
     cases.raise_any()
     return result
 
@@ -313,13 +313,13 @@ def _compared(chain: DepthChain, areas: Areas, wanted: Asked) -> tuple[ComparedR
     for name in () if table is None else table.compare:
         method = areal_reduction(name)
         factors, reasons = {}, {}
-        for point in areas.points:
-            area = float(chain.areas[point.row])
+        for area in areas.reduced(wanted.design):
+            size = float(chain.areas[area.reduced_as])
             for frequency in wanted.frequencies:
                 for minutes in wanted.minutes:
-                    key = (point.name, frequency, minutes)
+                    key = (area.name, frequency, minutes)
                     try:
-                        factors[key] = float(method.reduce(area, np.array([float(minutes)]), frequency).factor[0])
+                        factors[key] = float(method.reduce(size, np.array([float(minutes)]), frequency).factor[0])
                     except MethodError as error:
                         reasons[key] = "; ".join(f"{p.found}, expected {p.expected}" for p in error.problems)
         outside = outside_region(method, wanted.design.jurisdiction or None)

@@ -39,6 +39,9 @@ __all__ = ["ObservedStorm", "ObservedStorms", "storm_rarities"]
 Bools = npt.NDArray[np.bool_]
 Floats = npt.NDArray[np.float64]
 
+_NAMED: Final = 6
+"""So many areas are named in a sentence."""
+
 _DURATIONS: Final = (5, 10, 15, 30, 60, 120, 180, 360, 720, 1440, 2880, 4320, 7200, 14400)
 """Durations, in minutes, that are compared where the job names none."""
 
@@ -204,7 +207,7 @@ def storm_rarities(
         The storms.
     chain
         The depths of the design. Its uplift is left out: a storm that has fallen is compared with the climate that the
-        depths are of.
+        depths are of. So is extrapolation: how rare a storm was is told from what the source knows.
     asked
         What the job asks.
     table_step
@@ -213,7 +216,7 @@ def storm_rarities(
     table = asked.design.rarity
     if table is None:
         return ()
-    present = replace(chain, uplift=1.0)
+    present = replace(chain, uplift=1.0, extrapolate=False)
     names = table.storms or tuple(storm.name for storm in observed.job.storm)
     named = [minutes_of(word) for word in table.durations]
     minutes = np.unique(np.array(named or [*asked.minutes, *_DURATIONS], dtype=float))
@@ -236,7 +239,8 @@ def _rarity(
     table_step: int | None,
 ) -> StormRarity:
     window = (storm.storm.end - storm.storm.start) / np.timedelta64(60, "s")
-    if not comparable(minutes, step=storm.step, window=window).any():
+    fit = comparable(minutes, step=storm.step, window=window)
+    if not fit.any():
         raise MethodError(
             Problem(
                 item=f"[design.rarity] {storm.storm.name}",
@@ -251,7 +255,7 @@ def _rarity(
     means = storm.means
     with np.errstate(invalid="ignore"):
         infilled = (means.infilled / means.total)[rows]
-    return storm_rarity(
+    found = storm_rarity(
         storm.storm.name,
         minutes,
         _depths(storm, means.depth[:, rows], minutes, names=names, ladder=ladder, window=window),
@@ -262,6 +266,7 @@ def _rarity(
         infilled=infilled,
         table_step=table_step,
     )
+    return replace(found, clamped=_clamped(chain, rows, names, minutes[fit], frequencies))
 
 
 def _rows_apart(areas: Areas) -> list[int]:
@@ -309,6 +314,35 @@ def _unreduced(chain: DepthChain, rows: Sequence[int], frequency: Frequency, min
 
 def _factors(reduce: Reducer, area: float, frequency: Frequency, minutes: Floats) -> Floats:
     return reduce(area, minutes, frequency).factor[None]
+
+
+def _clamped(
+    chain: DepthChain, rows: Sequence[int], names: Sequence[str], minutes: Floats, frequencies: Sequence[Frequency]
+) -> tuple[str, ...]:
+    """Return what is brought into the reduction's range for these durations, each with the areas it is said of."""
+    if chain.reduce is None:
+        return ()
+    known = minutes[(minutes >= chain.source.shortest) & (minutes <= chain.source.longest)]
+    said: dict[str, dict[str, None]] = {}
+    for row, name in zip(rows, names, strict=True):
+        for frequency in frequencies:
+            for text in _brought_in(chain.reduce, float(chain.areas[row]), frequency, known):
+                said.setdefault(text, {})[name] = None
+    return tuple(
+        f"{', '.join(list(of)[:_NAMED])}{f' and {len(of) - _NAMED} more' if len(of) > _NAMED else ''}: {text}"
+        for text, of in said.items()
+    )
+
+
+def _brought_in(reduce: Reducer, area: float, frequency: Frequency, minutes: Floats) -> tuple[str, ...]:
+    """Return what is brought into the reduction's range, durations that have no answer left out."""
+    if not len(minutes):
+        return ()
+    try:
+        return reduce(area, minutes, frequency).clamped
+    except MethodError:
+        alone = [minutes[d : d + 1] for d in range(len(minutes))] if len(minutes) > 1 else []
+        return tuple(text for each in alone for text in _brought_in(reduce, area, frequency, each))
 
 
 def _answers(ask: Callable[[Floats], Floats], minutes: Floats, n_rows: int) -> Floats:

@@ -75,9 +75,7 @@ class RecordSource:
     notes: tuple[Note, ...]
 
 
-def record_source(
-    job: Job, asked: Asked, given: Inputs, areas: Basins, *, names: tuple[str, ...], infill: InfillChoice
-) -> RecordSource:
+def record_source(job: Job, asked: Asked, given: Inputs, areas: Basins, *, infill: InfillChoice) -> RecordSource:
     """Return areal depths by duration and frequency from annual maxima of a job's record.
 
     The mean of an area is taken with the weights of one network throughout: a step at which one of its gauges has no
@@ -87,7 +85,7 @@ def record_source(
     ----------
     job, asked, given
         The job, what it asks of its design, and its files.
-    areas, names
+    areas
         The areas and what results call them.
     infill
         How gaps are infilled.
@@ -107,7 +105,7 @@ def record_source(
     step = constant_step(starts, ends, wanted_for="depths from the record") // 60
     columns = _held(record, table.gauges)
     network = given.network.subset(columns)
-    weights = mean_weights(job, network, areas, table.average, whose="gauges that are held", names=names)
+    weights = mean_weights(job, network, areas, table.average, whose="gauges that are held")
     depth = infill.complete(record, long=inputs.silent(0, len(starts)), trace=False).record.depth[:, columns].copy()
     depth[(record.status == Status.NOT_INSTALLED)[:, columns]] = np.nan
     gaps = np.isnan(depth)
@@ -124,7 +122,6 @@ def record_source(
         durations=[np.timedelta64(int(each) * 60, "s") for each in minutes],
         day_phase=record.day_phase,
         water_year=job.series.water_year,
-        complete=1e-9,
     )
     share = _season_share(
         starts + (ends - starts) // 2,
@@ -140,12 +137,12 @@ def record_source(
         maxima,
         found.years,
         minutes,
-        names,
+        areas.ids,
         frequencies=frequencies,
         distribution=table.distribution,
         beyond_record=table.beyond_record,
     )
-    notes = _notes(given, columns, share, found.years, names)
+    notes = _notes(given, columns, share, found.years, areas.ids)
     return RecordSource(
         depths=depths,
         gauges=network.ids,

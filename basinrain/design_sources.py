@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
 from typing import Literal, cast
@@ -167,7 +167,6 @@ def mean_weights(
     average: str,
     *,
     whose: str,
-    names: Sequence[str] | None = None,
 ) -> Floats:
     """Return the weights by which points or gauges have their mean over areas.
 
@@ -183,8 +182,6 @@ def mean_weights(
         The averaging method.
     whose
         What the network is, for the message: ``"points of the table"``.
-    names
-        What the areas are called there; their ids by default.
 
     Returns
     -------
@@ -199,11 +196,11 @@ def mean_weights(
     weigh = averaging_method(average).prepare(network, areas, **job.averaging.options(average))
     weights = weigh(np.ones(len(network), dtype=bool)).weights
     problems = Problems()
-    for row in np.flatnonzero(np.isnan(weights).any(axis=1)):
+    for row in np.flatnonzero(np.isnan(weights).any(axis=1)).tolist():
         problems.add(
-            item=f"[design.depths] average, {(names or areas.ids)[row]}",
+            item=f"[design.depths] average, {areas.ids[row]}",
             found=f"no weights by '{average}' from the {whose}",
-            expected=f"{whose.split()[0]} that the method can use",
+            expected=f"{whose.split(maxsplit=1)[0]} that the method can use",
             remedy="choose 'thiessen', which takes the nearest",
         )
     problems.raise_as(DataError)

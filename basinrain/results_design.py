@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from basinrain import tables_design
-from basinrain.design_areas import Areas
+from basinrain.design_areas import Areas, ReducedArea
 from basinrain.design_asked import Asked
 from basinrain.design_cautions import DESIGN_CAUTION, climate_sentence
 from basinrain.design_record import RecordSource
@@ -39,7 +39,7 @@ class ComparedReduction:
     outside
         Whether the design is outside the region that it is for.
     factors
-        By point of interest, frequency and duration in minutes; none where the method has no answer.
+        By name of the area, frequency and duration in minutes; none where the method has no answer.
     reasons
         Why it has none, by the same.
     """
@@ -69,7 +69,7 @@ class DesignRun(Run):
     chain
         What leads from them to areal depths.
     links
-        The links of every point of interest and frequency, over the durations.
+        The links of every area that is reduced as one, by its name, and frequency, over the durations.
     storms
         The design storms.
     compared
@@ -101,6 +101,11 @@ class DesignRun(Run):
     from_record: RecordSource | None = None
     start: np.datetime64 | None = None
     zone: str = ""
+
+    @property
+    def reduced(self) -> tuple[ReducedArea, ...]:
+        """The areas that are reduced as one: above each point of interest, or each basin where the job says so."""
+        return self.areas.reduced(self.asked.design)
 
     @property
     def caution(self) -> str:

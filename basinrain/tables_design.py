@@ -35,7 +35,7 @@ __all__ = [
 
 _HOW_OFTEN = "aep return_period return_period_in"
 _DEPTHS = (
-    f"point area area_unit {_HOW_OFTEN} duration point_depth interval_factor uplift reduction_area reduction "
+    f"point basin area area_unit {_HOW_OFTEN} duration point_depth interval_factor uplift reduction "
     "areal_depth depth_unit reduction_method from"
 )
 _STORMS = (
@@ -45,7 +45,7 @@ _STORMS = (
 _HYETOGRAPHS = f"point {_HOW_OFTEN} duration pattern basin elapsed_min depth cumulative depth_unit"
 _POINTS = f"depth_point {_HOW_OFTEN} duration depth depth_unit"
 _WEIGHTS = "area_of depth_point weight method"
-_COMPARED = f"point area area_unit {_HOW_OFTEN} duration method for_region standing factor reason"
+_COMPARED = f"point basin area area_unit {_HOW_OFTEN} duration method for_region standing factor reason"
 _RARITY = (
     "storm kind place duration depth depth_unit window_end depth_aligned estimate_aep estimate_return_period "
     "at_least_return_period at_most_return_period return_period_in words remark"
@@ -79,26 +79,29 @@ def _frame(rows: Iterable[Sequence[Any]], columns: str) -> pd.DataFrame:
 
 
 def design_depths(run: DesignRun) -> pd.DataFrame:
-    """Return ``design_depths``: one row per point of interest, frequency and duration."""
+    """Return ``design_depths``: one row per point of interest, frequency and duration; per basin where each is reduced.
+
+    ``basin`` is blank where all basins above the point are one area.
+    """
     mm, m2 = depth_factor(run.depth_unit), area_factor(run.area_unit)
     table = run.asked.design.areal_reduction
     method = "none" if table is None else table.method
     rows = []
-    for point in run.areas.points:
+    for area in run.reduced:
         for frequency in run.asked.frequencies:
-            links = run.links[point.name, frequency]
+            links = run.links[area.name, frequency]
             for d, minutes in enumerate(links.minutes.tolist()):
                 rows.append(
                     (
-                        point.name,
-                        run.areas.basins.areas[point.row] / m2,
+                        area.point,
+                        area.basin,
+                        run.areas.basins.areas[area.reduced_as] / m2,
                         run.area_unit,
                         *frequency_cells(frequency),
                         duration_words(minutes),
                         links.point[d] / mm,
                         links.interval_factor[d],
                         links.uplift,
-                        links.reduced_area / m2,
                         links.reduction[d],
                         links.areal[d] / mm,
                         run.depth_unit,
@@ -212,17 +215,24 @@ def reductions_compared(run: DesignRun) -> pd.DataFrame:
     m2 = area_factor(run.area_unit)
     rows = []
     if run.compared:
-        for point in run.areas.points:
-            area = run.areas.basins.areas[point.row] / m2
+        for area in run.reduced:
+            size = run.areas.basins.areas[area.reduced_as] / m2
             for frequency in run.asked.frequencies:
-                links = run.links[point.name, frequency]
+                links = run.links[area.name, frequency]
                 for d, minutes in enumerate(run.asked.minutes):
-                    head = (point.name, area, run.area_unit, *frequency_cells(frequency), duration_words(minutes))
+                    head = (
+                        area.point,
+                        area.basin,
+                        size,
+                        run.area_unit,
+                        *frequency_cells(frequency),
+                        duration_words(minutes),
+                    )
                     table = run.asked.design.areal_reduction
                     own = "none" if table is None else table.method
                     rows.append((*head, own, "as the job says", "of the design", links.reduction[d], ""))
                     for other in run.compared:
-                        key = (point.name, frequency, minutes)
+                        key = (area.name, frequency, minutes)
                         rows.append(
                             (
                                 *head,

@@ -28,7 +28,7 @@ def minutes_of(word: str) -> int:
 
 def growth(minutes: int) -> float:
     """Return the depth of a duration over that of a day, by an intensity of the form c / (t^e + f)."""
-    return minutes / (minutes**0.72 + 8.0) / (1440 / (1440**0.72 + 8.0))
+    return float(minutes / (minutes**0.72 + 8.0) / (1440 / (1440**0.72 + 8.0)))
 
 
 def main(folder: Path) -> None:

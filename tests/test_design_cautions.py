@@ -96,7 +96,7 @@ def test_what_was_clamped_is_warned_of_with_its_area(tmp_path: Path) -> None:
     found = notes_of(tmp_path / "a", design__areal_reduction=clamp)["reduction-clamped"]
     assert [(note.level, note.text.partition(": ")[0]) for note in found] == [("warning", "union")]
     found = notes_of(tmp_path / "b", design__areal_reduction={**clamp, "area": "own"})["reduction-clamped"]
-    assert [note.text.partition(": ")[0] for note in found] == ["union", "nw", "ne", "sw", "se"]
+    assert [note.text.split(": ")[:2] for note in found] == [["union", basin] for basin in ("nw", "ne", "sw", "se")]
     found = notes_of(
         tmp_path / "c",
         design__areal_reduction={**OWN, "valid": ["2h", "6h"], "outside": "clamp"},

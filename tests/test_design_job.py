@@ -10,8 +10,9 @@ from typing import Any
 import numpy as np
 import pandas as pd
 import pytest
+import shapely.affinity
 import xarray as xr
-from design_jobs import DEPTHS, TWO_POINTS, US_REDUCTION, design_tables, write_design_job
+from design_jobs import DEPTHS, QUARTERS, TWO_POINTS, US_REDUCTION, design_tables, write_design_job
 from rasterfiles import write_asc
 
 from basinrain.design_job import run_design
@@ -87,7 +88,7 @@ def test_links_multiply_to_the_areal_depth(tmp_path: Path) -> None:
     # Weiss (1964): 8n / (8n - 1) of n = 6 intervals.
     assert six["interval_factor"].unique().tolist() == pytest.approx([48 / 47])
     assert six["uplift"].unique().tolist() == [1.2]
-    assert six["reduction_area"].to_dict() == pytest.approx(
+    assert six["area"].to_dict() == pytest.approx(
         {(point, years): area for point, area in (("ford", 50), ("mouth", 100)) for years in (2.0, 10.0)}
     )
 
@@ -113,10 +114,25 @@ def test_basins_reduced_by_their_own_area_are_more_than_the_whole(tmp_path: Path
     wanted = single.design_depths.set_index(CASE)["reduction"]
     for row in run.design_storms.to_dict("records"):
         assert row["reduction"] == pytest.approx(wanted["gate", row["return_period"], row["duration"]], rel=1e-12)
-    areal = run.design_depths.set_index(CASE)["areal_depth"]
+    whole = run_design(many(tmp_path / "whole", design__areal_reduction=US_REDUCTION))
+    areal = whole.design_depths.set_index(CASE)["areal_depth"]
     totals = run.design_storms[run.design_storms["point"] == "mouth"]
     assert all(row["depth"] > areal[tuple(row[name] for name in CASE)] for row in totals.to_dict("records"))
     assert "own-area" in {note.code for note in run.warnings}
+
+
+def test_by_own_area_every_basin_has_a_chain_of_its_own(tmp_path: Path) -> None:
+    """One row a basin; its area decides, and a union beyond the method's range is not asked."""
+    # Four squares of 144 square miles are 576 together: more than the 400 that the method reaches to.
+    squares = {name: shapely.affinity.scale(square, 2.4, 2.4, origin=(0, 0)) for name, square in QUARTERS.items()}
+    run = run_design(write_design_job(tmp_path, squares=squares, design__areal_reduction=US_REDUCTION | {"area": "own"}))
+    table = run.design_depths[run.design_depths["duration"] == "6h"]
+    assert table["basin"].tolist() == list(squares)
+    assert table["area"].to_numpy() == pytest.approx(144.0)
+    storms = run.design_storms.set_index("basin")["depth"]
+    assert table.set_index("basin")["areal_depth"].to_dict() == pytest.approx(storms.to_dict())
+    with pytest.raises(MethodError, match=r"found 1491.83 km² \(576 mi²\)"):
+        run_design(write_design_job(tmp_path / "whole", squares=squares, design__areal_reduction=US_REDUCTION))
 
 
 def test_every_format_reads_back_to_the_hyetographs(tmp_path: Path) -> None:

@@ -47,21 +47,23 @@ def show(run: DesignRun) -> None:
 def _show_depths(run: DesignRun) -> None:
     page, digits, mm = console(), depth_decimals(run.depth_unit), depth_factor(run.depth_unit)
     table = Table(show_edge=False, pad_edge=False)
-    for heading in ("point of interest", "how often", "duration"):
+    whose = "basin" if any(area.basin for area in run.reduced) else "point of interest"
+    for heading in (whose, "how often", "duration"):
         table.add_column(heading, no_wrap=True)
-    for heading in ("point depth", "uplift", "reduction", f"areal depth {run.depth_unit}"):
+    first = "depth of record" if run.sourced.source.areal else "point depth"
+    for heading in (first, "uplift", "reduction", f"areal depth {run.depth_unit}"):
         table.add_column(heading, justify="right")
     rows = [
-        (point, frequency, links, d)
-        for point in run.areas.points
+        (area, frequency, links, d)
+        for area in run.reduced
         for frequency in run.asked.frequencies
-        for links in [run.links[point.name, frequency]]
+        for links in [run.links[area.name, frequency]]
         for d in range(len(links.minutes))
     ]
     last = ""
-    for point, frequency, links, d in rows[:_ROWS]:
-        area = run.areas.basins.areas[point.row] / area_factor(run.area_unit)
-        name = f"{point.name}, {area_text(area)} {unit_text(run.area_unit)}"
+    for area, frequency, links, d in rows[:_ROWS]:
+        size = run.areas.basins.areas[area.reduced_as] / area_factor(run.area_unit)
+        name = f"{area.name}, {area_text(size)} {unit_text(run.area_unit)}"
         table.add_row(
             "" if name == last else name,
             frequency.label,

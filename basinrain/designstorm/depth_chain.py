@@ -96,8 +96,13 @@ class DepthChain:
 
     >>> from basinrain.designstorm.point_depths import PointDepths
     >>> table = PointDepths(
-    ...     points=("P", "Q"), durations=[60, 360], return_periods=[2, 10], series="annual-maximum",
-    ...     depth=[[[20, 30], [40, 60]], [[30, 40], [50, 80]]], source="invented", date="2031",
+    ...     points=("P", "Q"),
+    ...     durations=[60, 360],
+    ...     return_periods=[2, 10],
+    ...     series="annual-maximum",
+    ...     depth=[[[20, 30], [40, 60]], [[30, 40], [50, 80]]],
+    ...     source="invented",
+    ...     date="2031",
     ... )
     >>> chain = DepthChain(source=table, weights=np.array([[0.5, 0.5]]), areas=np.array([2e7]), uplift=1.1)
     >>> links = chain.links(0, np.array([60.0, 360.0]), Frequency(10.0, "annual-maximum"))

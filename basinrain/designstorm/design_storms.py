@@ -47,6 +47,10 @@ class PointOfInterest:
     rows: tuple[int, ...]
     apart: bool
 
+    def part(self, basin: str) -> str:
+        """Return what one of its basins is called where each has a depth of its own."""
+        return basin if basin == self.name else f"{self.name}: {basin}"
+
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class PatternChoice:
@@ -183,7 +187,7 @@ def design_storm(
             depths.append(shaped.depth)
             reductions.append(links.reduction[0])
             remarks += shaped.remarks
-            clamped += [f"{basin}: {text}" for text in (*links.clamped, *said)]
+            clamped += [f"{point.part(basin)}: {text}" for text in (*links.clamped, *said)]
         depth, reduction = np.stack(depths, axis=1), np.array(reductions)
     else:
         links = chain.links(point.row, at, frequency)

@@ -113,6 +113,8 @@ class StormRarity:
         The durations that cannot be compared, and why.
     sentences : tuple of str
         What all this means, and what it does not.
+    clamped : tuple of str
+        Whole sentences: what was brought into the areal reduction's range for the depths compared with.
     """
 
     storm: str
@@ -129,6 +131,7 @@ class StormRarity:
     n_gauges: int
     left_out: tuple[str, ...]
     sentences: tuple[str, ...]
+    clamped: tuple[str, ...] = ()
 
 
 def comparable(minutes: npt.ArrayLike, *, step: float, window: float) -> Bools:

@@ -10,8 +10,8 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.design_areas import ReducedArea
 from basinrain.designstorm.depth_chain import Links
-from basinrain.designstorm.design_storms import PointOfInterest
 from basinrain.designstorm.measures import duration_text
 from basinrain.jobfile.design_tables import NO_REDUCTION
 from basinrain.report import design_shown
@@ -74,15 +74,16 @@ def _factored(run: DesignRun) -> bool:
 
 
 def chain_tables(run: DesignRun) -> list[Table]:
-    """Return a table for every point of interest that is shown: one row per frequency and duration."""
-    tables = [_table(run, point) for point in design_shown.points(run)]
-    tables[-1] = replace(tables[-1], notes=(*tables[-1].notes, *design_shown.left_out(run, "design_depths.csv")))
+    """Return a table for every area that is shown: one row per frequency and duration."""
+    tables = [_table(run, area) for area in design_shown.reduced(run)]
+    left_out = design_shown.left_out(run, "design_depths.csv", areas=True)
+    tables[-1] = replace(tables[-1], notes=(*tables[-1].notes, *left_out))
     return tables
 
 
-def _table(run: DesignRun, point: PointOfInterest) -> Table:
+def _table(run: DesignRun, area: ReducedArea) -> Table:
     areal, unit, factored = run.sourced.source.areal, unit_word(run.depth_unit), _factored(run)
-    shown = [(frequency, run.links[point.name, frequency]) for frequency in design_shown.frequencies(run)]
+    shown = [(frequency, run.links[area.name, frequency]) for frequency in design_shown.frequencies(run)]
     places = [run.asked.minutes.index(minutes) for minutes in design_shown.durations(run)]
     more = _decimals_more([links for _, links in shown], places, run.depth_unit)
     rows: list[Row] = []
@@ -91,13 +92,13 @@ def _table(run: DesignRun, point: PointOfInterest) -> Table:
             *factors, depth = _printed(links, d, run.depth_unit, more)
             links_shown = (factors[:-1] if factored else []) if areal else factors
             rows.append((frequency.label, duration_text(float(links.minutes[d])), *links_shown, depth))
-    size = area_text(float(run.areas.basins.areas[point.row]) / area_factor(run.area_unit))
+    size = area_text(float(run.areas.basins.areas[area.reduced_as]) / area_factor(run.area_unit))
     first = f"{'from the record' if areal else 'point depth'}, {unit}"
     last = () if areal else ("× areal reduction",)
     products = (first, "× interval factor", "× uplift", *last, "= ") if factored or not areal else ("",)
     heads = ("frequency", "duration", *products[:-1], f"{products[-1]}areal depth, {unit}")
     return Table(
-        caption=f"{point.name}: {'areal depth' if areal else 'from point depth to areal depth'} over {size} "
+        caption=f"{area.name}: {'areal depth' if areal else 'from point depth to areal depth'} over {size} "
         f"{unit_text(run.area_unit)}",
         heads=heads,
         align="tn" + "n" * (len(heads) - 2),
@@ -138,13 +139,13 @@ def _product(cells: Sequence[str], unit: str) -> str:
 
 
 def chain_pictures(run: DesignRun) -> list[Picture]:
-    """Return a figure for every point of interest that is shown; none where there is one duration only."""
+    """Return a figure for every area that is shown; none where there is one duration only."""
     if len(run.asked.minutes) < 2:
         return []
     minutes = np.array(run.asked.minutes, dtype=float)
     pictures = []
-    for number, point in enumerate(design_shown.points(run), start=1):
-        every = [run.links[point.name, frequency] for frequency in run.asked.frequencies]
+    for number, area in enumerate(design_shown.reduced(run), start=1):
+        every = [run.links[area.name, frequency] for frequency in run.asked.frequencies]
         areal = np.array([links.areal for links in every])
         before = np.array([links.unreduced for links in every])
         picture = depths_picture(
@@ -154,7 +155,7 @@ def chain_pictures(run: DesignRun) -> list[Picture]:
             before if reduces(run) else np.full_like(before, np.nan),
             areal,
             depth_unit=run.depth_unit,
-            title=point.name,
+            title=area.name,
             name=f"design-depths-{number}",
         )
         pictures.append(replace(picture, caption=" ".join([picture.caption, *_with_words(run)])))

@@ -111,10 +111,7 @@ def range_words(limits: Limits) -> str:
 def _area(run: DesignRun) -> str:
     table = run.asked.design.areal_reduction
     if table is not None and table.area == "own":
-        return (
-            "for the areal depth to a point of interest that of all basins above it as one; for the hyetograph of each "
-            "basin its own, since the job says so"
-        )
+        return "that of each basin by itself, since the job says so"
     m2 = area_factor(run.area_unit)
     points = [
         f"{point.name} {area_text(run.links[point.name, run.asked.frequencies[0]].reduced_area / m2)} "
@@ -139,32 +136,33 @@ def _compared(run: DesignRun, others: Sequence[ComparedReduction]) -> Table:
     often = design_shown.frequencies(run) if _varies(run, others) else [run.asked.frequencies[-1]]
     rows: list[Row] = []
     reasons: dict[str, None] = {}
-    for point in design_shown.points(run):
+    for area in design_shown.reduced(run):
         for frequency in often:
-            links = run.links[point.name, frequency]
+            links = run.links[area.name, frequency]
             for minutes in design_shown.durations(run):
-                key = (point.name, frequency, minutes)
+                key = (area.name, frequency, minutes)
                 factor = float(links.reduction[run.asked.minutes.index(minutes)])
                 cells = [number_text(other.factors.get(key, math.nan), _DECIMALS) for other in others]
                 reasons.update(
-                    (f"{other.method.name}, {point.name}, {duration_text(minutes)}: {other.reasons[key]}.", None)
+                    (f"{other.method.name}, {area.name}, {duration_text(minutes)}: {other.reasons[key]}.", None)
                     for other in others
                     if key in other.reasons
                 )
-                name = point.name if len(often) == 1 else f"{point.name}, {frequency.label}"
+                name = area.name if len(often) == 1 else f"{area.name}, {frequency.label}"
                 rows.append((name, duration_text(minutes), number_text(factor, _DECIMALS), *cells))
+    whose = "basin" if any(area.basin for area in run.reduced) else "point of interest"
     told = list(reasons)
     notes = [
         *(f"{other.method.name}: {other.method.title}, for {other.method.region_words}." for other in others),
         *([f"{DASH}: no answer. {' '.join(told[:4])}"] if told else []),
         *(["Other reasons are in reductions_compared.csv."] if told[4:] else []),
-        *design_shown.left_out(run, "reductions_compared.csv"),
+        *design_shown.left_out(run, "reductions_compared.csv", areas=True),
     ]
     if len(often) == 1 and len(run.asked.frequencies) > 1:
         notes.insert(0, "The factors are the same at every frequency.")
     return Table(
         caption="Areal reduction factors by other methods",
-        heads=("point of interest", "duration", f"{own}, of the design", *(other.method.name for other in others)),
+        heads=(whose, "duration", f"{own}, of the design", *(other.method.name for other in others)),
         align="tnn" + "n" * len(others),
         rows=rows,
         notes=tuple(notes),
@@ -173,12 +171,12 @@ def _compared(run: DesignRun, others: Sequence[ComparedReduction]) -> Table:
 
 def _varies(run: DesignRun, others: Sequence[ComparedReduction]) -> bool:
     """Return whether a factor, or whether there is one, depends on the frequency."""
-    for point in run.areas.points:
+    for area in run.reduced:
         for d, minutes in enumerate(run.asked.minutes):
             found = {
                 (
-                    float(run.links[point.name, frequency].reduction[d]),
-                    *(other.factors.get((point.name, frequency, minutes)) for other in others),
+                    float(run.links[area.name, frequency].reduction[d]),
+                    *(other.factors.get((area.name, frequency, minutes)) for other in others),
                 )
                 for frequency in run.asked.frequencies
             }

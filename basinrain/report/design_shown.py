@@ -7,7 +7,7 @@ from typing import Final, TypeVar
 
 import numpy as np
 
-from basinrain.design_areas import Areas
+from basinrain.design_areas import Areas, ReducedArea
 from basinrain.designstorm.design_storms import PointOfInterest
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.results_design import DesignRun
@@ -26,6 +26,7 @@ __all__ = [
     "left_out",
     "often_head",
     "points",
+    "reduced",
     "spread",
 ]
 
@@ -71,6 +72,11 @@ def points(run: DesignRun) -> tuple[PointOfInterest, ...]:
     return run.areas.points[:POINTS]
 
 
+def reduced(run: DesignRun) -> tuple[ReducedArea, ...]:
+    """Return the areas whose chain of depths is shown: the first few."""
+    return run.reduced[:POINTS]
+
+
 def frequencies(run: DesignRun) -> list[Frequency]:
     """Return the frequencies that are shown, the most frequent and the rarest among them."""
     return spread(run.asked.frequencies, FREQUENCIES)
@@ -87,12 +93,17 @@ def areas_shown(areas: Areas) -> list[int]:
     return [row for row in range(len(areas.names)) if row not in alone]
 
 
-def left_out(run: DesignRun, file: str) -> tuple[str, ...]:
-    """Return the sentence that says what of points, frequencies and durations is not shown; nothing when all is."""
+def left_out(run: DesignRun, file: str, *, areas: bool = False) -> tuple[str, ...]:
+    """Return the sentence that says what is not shown; nothing when all is.
+
+    Of points of interest, frequencies and durations; with ``areas`` of the areas that are reduced as one.
+    """
     parts = [
         f"{'the first ' if noun == 'point' else ''}{shown} of {total} {words}"
         for noun, shown, total, words in (
-            ("point", len(points(run)), len(run.areas.points), "points of interest"),
+            ("point", len(reduced(run)), len(run.reduced), "areas")
+            if areas and len(run.reduced) != len(run.areas.points)
+            else ("point", len(points(run)), len(run.areas.points), "points of interest"),
             ("frequency", len(frequencies(run)), len(run.asked.frequencies), "frequencies"),
             ("duration", len(durations(run)), len(run.asked.minutes), "durations"),
         )

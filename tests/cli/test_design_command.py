@@ -49,9 +49,9 @@ Written to {folder}: report.html, record.json and the CSV files
 
 # 60 mm in 6 h at 10 years over 100 square miles of 2 589 988.110336 m2, uplifted by nothing, reduced by nothing.
 DEPTHS = """\
-point,area,area_unit,aep,return_period,return_period_in,duration,point_depth,interval_factor,uplift,reduction_area,\
+point,basin,area,area_unit,aep,return_period,return_period_in,duration,point_depth,interval_factor,uplift,\
 reduction,areal_depth,depth_unit,reduction_method,from
-union,100.0,km2,0.1,10.0,annual-maximum,6h,60.0,1.0,1.0,100.0,1.0,60.0,mm,none,invented table
+union,,100.0,km2,0.1,10.0,annual-maximum,6h,60.0,1.0,1.0,1.0,60.0,mm,none,invented table
 """
 STORMS = """\
 point,aep,return_period,return_period_in,duration,pattern,basin,area,area_unit,reduction,depth,depth_unit,volume,\

@@ -262,10 +262,10 @@ def test_extrapolation_that_no_rain_can_have(depth: list[list[float]], years: fl
     [
         ([[20, 30], [18, 40]], ("4 h, AEP 0.5 (1 in 2): found 18 mm (4.5 mm/h), less than 20 mm (20 mm/h) of 1 h; "
                                "expected a depth that does not fall with duration; correct one of them")),
-        ([[20, 30], [41, 40]], ("4 h, AEP 0.1 (1 in 10): found 40 mm (10 mm/h), less than 41 mm (10.25 mm/h) of AEP 0.5 "
-                               "(1 in 2); expected a depth that does not fall with rarity; correct one of them")),
-        ([[20, 30], [81, 110]], ("4 h, AEP 0.5 (1 in 2): found 81 mm (20.25 mm/h), more intense than 20 mm (20 mm/h) of "
-                                "1 h; expected an intensity that does not rise with duration; correct one of them")),
+        ([[20, 30], [41, 40]], ("4 h, AEP 0.1 (1 in 10): found 40 mm (10 mm/h), less than 41 mm (10.25 mm/h) of AEP "
+                               "0.5 (1 in 2); expected a depth that does not fall with rarity; correct one of them")),
+        ([[20, 30], [81, 110]], ("4 h, AEP 0.5 (1 in 2): found 81 mm (20.25 mm/h), more intense than 20 mm (20 mm/h) "
+                                "of 1 h; expected an intensity that does not rise with duration; correct one of them")),
         ([[20, 30], [np.nan, 40]], ("4 h, AEP 0.5 (1 in 2): found no depth; expected a depth for every duration and "
                                    "frequency of a point; add it")),
         ([[20, 30], [0, 40]], "4 h, AEP 0.5 (1 in 2): found 0 mm (0 mm/h); expected a depth above 0; correct it"),

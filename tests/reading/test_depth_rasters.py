@@ -259,8 +259,8 @@ def test_depths_out_of_order_are_summed_up(tmp_path: Path) -> None:
         ),
         (
             "./1.asc: the rasters: found 1 cell of 4 with less depth at a rarer frequency, the worst row 1 column 1 at "
-            f"1 h, {LABELS[TEN]}: 24 mm (24 mm/h), 20 % less than the 30 mm (30 mm/h) of {LABELS[TWO]}; expected depths "
-            f"that do not fall with rarity; {tail}"
+            f"1 h, {LABELS[TEN]}: 24 mm (24 mm/h), 20 % less than the 30 mm (30 mm/h) of {LABELS[TWO]}; expected "
+            f"depths that do not fall with rarity; {tail}"
         ),
         (
             "./3.asc: the rasters: found 1 cell of 4 with more intensity in a longer duration, the worst row 1 column "

@@ -367,5 +367,5 @@ def test_choices_are_checked_first(tmp_path: Path) -> None:
             "crs: found 'EPSG:0'",
         )
     ]
-    assert caught.value.problems[0].expected == "'refuse' or 'merge'"
+    assert caught.value.problems[0].expected == "one of: refuse, merge"
     assert caught.value.problems[2].expected.startswith("one of: m2, km2")

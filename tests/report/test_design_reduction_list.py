@@ -77,7 +77,7 @@ def test_what_was_taken_at_an_end_is_told(tmp_path: Path) -> None:
 def test_each_basins_own_area_is_told(tmp_path: Path) -> None:
     """Where the job says so."""
     run = make_design(tmp_path, design__areal_reduction={"method": "leclerc-schaake", "area": "own"})
-    assert "for the hyetograph of each basin its own" in dict(reduction_facts(run))["Area that decides"]
+    assert dict(reduction_facts(run))["Area that decides"] == "that of each basin by itself, since the job says so"
 
 
 def test_others_stand_under_the_heading_that_they_must_have() -> None:

@@ -51,7 +51,7 @@ def test_durations(value: str, seconds: int) -> None:
         ("shift", "0h", r"value: found '0h'; expected a duration"),
         ("shift", "1mo", r"value: found '1mo'; expected a duration"),
         ("shift", None, r"value: found none; expected a duration"),
-        ("rejct", None, r"action: found 'rejct'; expected did you mean 'reject'\?"),
+        ("rejct", None, r"action: found 'rejct'; expected one of: [a-z, -]+; did you mean 'reject'\?$"),
     ],
 )
 def test_values_that_do_not_fit(action: str, value: object, text: str) -> None:

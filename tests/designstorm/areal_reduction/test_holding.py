@@ -125,7 +125,7 @@ def test_what_cannot_be_is_told_with_what_is_outside() -> None:
         "area: found 0 km²; expected an area above zero",
         (
             "frequency: found 2 years of a partial duration series; expected a frequency of the annual maximum series;"
-            " [design.depths] convert = true counts the depths in that series"
+            " [design.depths] convert = true finds the probability by AEP = 1 - exp(-1/T)"
         ),
     ]
 
