@@ -8,6 +8,8 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Final
 
+import numpy as np
+
 from basinrain.design_areas import Areas
 from basinrain.design_asked import Asked
 from basinrain.design_record import RecordSource
@@ -18,6 +20,7 @@ from basinrain.designstorm.design_storms import DesignStorm
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, Frequency
 from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.rarity import StormRarity
+from basinrain.designstorm.reach import SLACK
 from basinrain.jobfile.design_tables import NO_REDUCTION, UpliftTable
 from basinrain.notes import Note
 from basinrain.units import area_factor
@@ -60,6 +63,7 @@ def design_cautions(
     design = asked.design
     yield Note(code="climate", level="info", text=climate_sentence(design.uplift))
     yield from _of_reduction(asked, areas, sourced, links, area_unit)
+    yield from _of_falling(links)
     points = (f"{name}: {text}" for (name, _), found in links.items() for text in found.clamped)
     for text in dict.fromkeys((*points, *(text for storm in storms for text in storm.clamped))):
         yield Note(code="reduction-clamped", text=text)
@@ -152,6 +156,22 @@ def _of_reduction(
             code="own-area",
             text="Each basin's depth is reduced by its own area, since the job says so: together they are more rain "
             "than the areal depth to the point of interest, and belong to no one storm over all of them.",
+        )
+
+
+def _of_falling(links: Mapping[tuple[str, Frequency], Links]) -> Iterator[Note]:
+    """Yield where an areal depth is less than that of a shorter duration, the most of all frequencies."""
+    most: dict[tuple[str, str, str], float] = {}
+    for (name, _), found in links.items():
+        fallen = 1 - found.areal[1:] / found.areal[:-1]
+        for k in np.flatnonzero(fallen > SLACK):
+            place = (name, duration_text(found.minutes[k]), duration_text(found.minutes[k + 1]))
+            most[place] = max(most.get(place, 0.0), float(fallen[k]))
+    for (name, shorter, longer), share in most.items():
+        yield Note(
+            code="depth-falls",
+            text=f"{name}: the areal depth of {longer} is up to {100 * share:.2g} % less than that of {shorter}, which no "
+            "rain can be: areal reductions or factors for fixed intervals of the two durations do not go together.",
         )
 
 

@@ -113,7 +113,36 @@ def test_probabilities_of_a_partial_duration_series_are_said_to_be_converted(tmp
     assert "series-converted" not in notes_of(tmp_path / "a", **series)
     (note,) = notes_of(tmp_path / "b", **series, design__return_periods=None, design__aep=0.1)["series-converted"]
     assert note.level == "info"
-    assert "AEP = 1 - exp(-1/T) (Langbein 1949)" in note.text
+    # -1 / ln(1 - 0.1) = 9.491
+    assert "AEP = 1 - exp(-1/T) (Langbein 1949): AEP 0.1 is 9.491 years." in note.text
+
+
+def test_a_reduction_by_probability_of_a_partial_duration_series_is_said(tmp_path: Path) -> None:
+    """1 - exp(-1/10) = 0.09516 is the probability that the Australian factors go by."""
+    changes = {
+        "design__depths__series": "partial-duration",
+        "design__depths__convert": True,
+        "design__jurisdiction": "Australia",
+        "design__areal_reduction": {"method": "arr-2019", "region": "Tasmania"},
+    }
+    (note,) = notes_of(tmp_path, **changes)["series-converted"]
+    assert note.text.endswith("AEP = 1 - exp(-1/T) (Langbein 1949): AEP 0.09516 is 10 years.")
+
+
+def test_a_depth_that_falls_with_duration_is_warned_of(tmp_path: Path) -> None:
+    """30 mm by 1.13 in 1 h and 31 mm by 1.04 in 2 h: 33.9 mm, and 4.9 % less."""
+    place = write_design_job(
+        tmp_path,
+        design__durations=["1h", "2h"],
+        design__depths__interval_factor="hershfield",
+        design__depths__observed_every="1h",
+        design__areal_reduction=None,
+    )
+    (tmp_path / "depths.csv").write_text("duration,return_period,depth\n1h,10,30\n2h,10,31\n")
+    (note,) = (note for note in run_design(place).notes if note.code == "depth-falls")
+    assert note.level == "warning"
+    assert note.text.startswith("union: the areal depth of 2 h is up to 4.9 % less than that of 1 h, ")
+    assert "depth-falls" not in notes_of(tmp_path / "b", design__durations=["1h", "6h"])
 
 
 def test_what_was_extrapolated_is_warned_of(tmp_path: Path) -> None:

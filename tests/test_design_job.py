@@ -361,6 +361,14 @@ def test_what_cannot_be_made_is_told_once_with_how_many_cases(tmp_path: Path) ->
         run_design(job)
 
 
+def test_a_point_with_a_short_name_is_named_in_the_line(tmp_path: Path) -> None:
+    """A point called A is not taken for the A of AEP, nor is the line begun by a colon."""
+    point = [{"name": "A", "basins": ["nw", "ne"]}]
+    job = write_design_job(tmp_path, design__point=point, design__return_periods=[500])
+    with pytest.raises(MethodError, match=r"^A: AEP 0\.002 \(1 in 500\): found that the depths are of AEP 0\.5"):
+        run_design(job)
+
+
 def test_a_point_of_interest_called_after_another_basin_is_refused(tmp_path: Path) -> None:
     """Results could not tell them apart; after its own basin it may be called."""
     points = [{"name": "nw", "basins": ["nw", "ne"]}]

@@ -172,6 +172,41 @@ def test_a_duration_without_a_reduction_is_compared_at_gauges_alone(tmp_path: Pa
     assert one_row(rows(run), "union", "6h")["at_least_return_period"] == 2
 
 
+def test_what_was_clamped_for_the_comparison_is_warned_of(tmp_path: Path) -> None:
+    """The table of reductions ends at 6 h: of 12 h its factor at 6 h is taken, which is said of all areas once."""
+    reduction = {"method": "table", "file": "reduction.csv", "area_unit": "km2", "source": "invented"}
+    asked = {"average": "thiessen", "durations": ["1h", "12h"]}
+    for outside, told in (("refuse", []), ("clamp", ["warning"])):
+        place = job(
+            tmp_path / outside, design__areal_reduction={**reduction, "outside": outside}, design__rarity=asked
+        )
+        (place.parent / "reduction.csv").write_text(REDUCTION)
+        run = run_design(place)
+        notes = [note for note in run.notes if note.code == "rarity-clamped"]
+        assert [note.level for note in notes] == told
+    assert notes[0].storm == "Quill"
+    assert "the factor of 12 h is that of 6 h, the nearest end of the method's range" in notes[0].text
+    # 2400 mm2 and 5400 mm2 as below 12 h of the gauge, here by 0.9 over the whole.
+    two, ten = 0.9 * 2400**0.5, 0.9 * 5400**0.5
+    depth = 0.6 * sum(ALDER) + 0.4 * sum(BIRCH)
+    row = one_row(rows(run), "union", "12h")
+    assert row["estimate_return_period"] == pytest.approx(years_of(depth, two, ten), rel=1e-9)
+
+
+def test_nothing_is_extrapolated_for_a_storm_that_has_fallen(tmp_path: Path) -> None:
+    """Where the design goes on beyond the table's 6 h, the storm's 12 h are compared with nothing all the same."""
+    depths = {**design_tables()["design"]["depths"], "extrapolate": True}
+    asked = {"average": "thiessen", "durations": ["6h", "12h"]}
+    place = job(tmp_path, design__depths=depths, design__durations=["12h"], design__rarity=asked)
+    kept = [line for line in (tmp_path / "depths.csv").read_text().splitlines() if not line.startswith("24h")]
+    (tmp_path / "depths.csv").write_text("\n".join(kept) + "\n")
+    run = run_design(place)
+    assert run.design_depths["duration"].tolist() == ["12h"]
+    assert set(rows(run).index.get_level_values("duration")) == {"6h"}
+    (note,) = (note for note in run.notes if note.code == "rarity-left-out")
+    assert note.text == "12 h: the table has no depths of it"
+
+
 def test_what_was_infilled_is_said(tmp_path: Path) -> None:
     """Birch has its first four hours, Alder stands in for the rest: 36 of the 44 mm over the east are infilled."""
     record = rain()

@@ -14,7 +14,7 @@ from basinrain.design_job import run_design
 from basinrain.design_reduction import reducer, stated_options
 from basinrain.designstorm.areal_reduction import arr_2019, keers_wescott
 from basinrain.designstorm.depth_chain import Reducer
-from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, PARTIAL_DURATION, Frequency
 from basinrain.errors import JobError, MethodError, ReadError
 from basinrain.jobfile import parse_design_job
 from basinrain.jobfile.design_tables import ArealReductionTable
@@ -56,6 +56,23 @@ def test_a_region_is_handed_on() -> None:
     """The Australian factors are those of the region and of the probability."""
     expected = arr_2019(1e8, HOURS, aep=0.1, region="Tasmania")
     assert factors(1e8, method="arr-2019", region="Tasmania") == pytest.approx(expected.tolist())
+
+
+def test_a_partial_duration_series_is_reduced_by_its_probability_where_the_job_allows_it() -> None:
+    """Two years of it are AEP 0.3935 by Langbein's relation; without convert the method is refused."""
+    two = Frequency(2.0, PARTIAL_DURATION)
+    asked = {"design__areal_reduction": {"method": "arr-2019", "region": "Tasmania"}}
+    for convert in (True, False):
+        job = parse_design_job(design_tables(**asked, design__depths__convert=convert), folder=Path())
+        assert job.design is not None
+        reduce = reducer(job, job.design)
+        assert reduce is not None
+        if convert:
+            expected = arr_2019(1e8, HOURS, aep=1 - np.exp(-0.5), region="Tasmania")
+            np.testing.assert_allclose(reduce(1e8, HOURS, two).factor, expected, rtol=1e-12)
+        else:
+            with pytest.raises(MethodError, match=r"found 2 years of a partial duration series.*convert = true"):
+                reduce(1e8, HOURS, two)
 
 
 def test_coefficients_of_the_job() -> None:

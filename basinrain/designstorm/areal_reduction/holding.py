@@ -143,7 +143,9 @@ class Holder:
                 "frequency",
                 "none" if frequency is None else f"{frequency.return_period:g} years of a partial duration series",
                 "a frequency of the annual maximum series",
-                "" if frequency is None else "[design.depths] convert = true finds the probability by AEP = 1 - exp(-1/T)",
+                ""
+                if frequency is None
+                else "[design.depths] convert = true finds the probability by AEP = 1 - exp(-1/T)",
             )
             return np.nan
         if self.limits.aep is None:
