@@ -25,7 +25,7 @@ from basinrain.jobfile.design_tables import NO_REDUCTION, UpliftTable
 from basinrain.notes import Note
 from basinrain.units import area_factor
 
-__all__ = ["DESIGN_CAUTION", "climate_sentence", "design_cautions"]
+__all__ = ["DESIGN_CAUTION", "OF_CURVES", "climate_sentence", "design_cautions"]
 
 DESIGN_CAUTION: Final = (
     "Inputs for the judgement of a licensed engineer, not a design. Local criteria govern: which depths, areal "
@@ -33,7 +33,7 @@ DESIGN_CAUTION: Final = (
     "and the probability of its depth is not that of the flood it causes."
 )
 
-_OF_CURVES: Final = frozenset({"alternating-block", "chicago", "nested"})
+OF_CURVES: Final = frozenset({"alternating-block", "chicago", "nested"})
 """Shapes that ask for depths of durations down to a step."""
 
 _UNREDUCED: Final = 25e6
@@ -170,8 +170,9 @@ def _of_falling(links: Mapping[tuple[str, Frequency], Links]) -> Iterator[Note]:
     for (name, shorter, longer), share in most.items():
         yield Note(
             code="depth-falls",
-            text=f"{name}: the areal depth of {longer} is up to {100 * share:.2g} % less than that of {shorter}, which no "
-            "rain can be: areal reductions or factors for fixed intervals of the two durations do not go together.",
+            text=f"{name}: the areal depth of {longer} is up to {100 * share:.2g} % less than that of {shorter}, "
+            "which no rain can be: the areal reductions of the two durations, or their factors for fixed intervals, do "
+            "not go together.",
         )
 
 
@@ -180,7 +181,7 @@ def _of_extrapolation(asked: Asked, sourced: Sourced) -> Iterator[Note]:
     known = source.frequencies
     outside = [f.label for f in asked.frequencies if not known[0] <= f <= known[-1]]
     longer = [duration_text(m) for m in asked.minutes if not source.shortest <= m <= source.longest]
-    if asked.step < source.shortest and any(pattern.shape in _OF_CURVES for pattern in asked.design.pattern):
+    if asked.step < source.shortest and any(pattern.shape in OF_CURVES for pattern in asked.design.pattern):
         longer.insert(0, f"steps of {duration_text(asked.step)}")
     if outside or longer:
         yield Note(

@@ -175,7 +175,8 @@ class ObservedStorms:
             It has no mean over that area at some step, or is dry; or as :meth:`storm`.
         """
         row = int(np.argmax(self.areas.basins.areas))
-        depth = self.storm(name).means.depth[:, row]
+        storm = self.storm(name)
+        depth = storm.means.depth[:, row]
         if np.isnan(depth).all():
             raise JobError(
                 Problem(
@@ -186,7 +187,7 @@ class ObservedStorms:
                 )
             )
         try:
-            return ordinates_of(depth)
+            return ordinates_of(depth, step=storm.step)
         except DataError as error:
             raise JobError(
                 [

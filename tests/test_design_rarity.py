@@ -177,9 +177,7 @@ def test_what_was_clamped_for_the_comparison_is_warned_of(tmp_path: Path) -> Non
     reduction = {"method": "table", "file": "reduction.csv", "area_unit": "km2", "source": "invented"}
     asked = {"average": "thiessen", "durations": ["1h", "12h"]}
     for outside, told in (("refuse", []), ("clamp", ["warning"])):
-        place = job(
-            tmp_path / outside, design__areal_reduction={**reduction, "outside": outside}, design__rarity=asked
-        )
+        place = job(tmp_path / outside, design__areal_reduction={**reduction, "outside": outside}, design__rarity=asked)
         (place.parent / "reduction.csv").write_text(REDUCTION)
         run = run_design(place)
         notes = [note for note in run.notes if note.code == "rarity-clamped"]

@@ -61,7 +61,7 @@ def test_a_region_is_handed_on() -> None:
 def test_a_partial_duration_series_is_reduced_by_its_probability_where_the_job_allows_it() -> None:
     """Two years of it are AEP 0.3935 by Langbein's relation; without convert the method is refused."""
     two = Frequency(2.0, PARTIAL_DURATION)
-    asked = {"design__areal_reduction": {"method": "arr-2019", "region": "Tasmania"}}
+    asked: dict[str, Any] = {"design__areal_reduction": {"method": "arr-2019", "region": "Tasmania"}}
     for convert in (True, False):
         job = parse_design_job(design_tables(**asked, design__depths__convert=convert), folder=Path())
         assert job.design is not None

@@ -38,7 +38,13 @@ def point_sentences(run: DesignRun) -> list[str]:
                 f"Not tabulated, so interpolated{' or extrapolated' if table.extrapolate else ''}: {words}."
             )
         else:
-            sentences.append("All durations and frequencies asked for are tabulated: no depth is interpolated.")
+            asked = "All durations and frequencies asked for are tabulated"
+            curves = [table.label for table in run.asked.design.pattern if table.shape in OF_CURVES]
+            sentences.append(
+                f"{asked}; what lies between them is interpolated for {design_shown.cut(curves, design_shown.AREAS)}."
+                if curves
+                else f"{asked}: no depth is interpolated."
+            )
     elif isinstance(source, EquationDepths):
         sentences.append("Depths are the equation's intensity times the duration.")
     if n == 1:

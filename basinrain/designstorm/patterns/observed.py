@@ -8,6 +8,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.patterns.cumulative import fall_by
 from basinrain.designstorm.patterns.ordinates import Ordinates
 from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
@@ -19,7 +20,7 @@ _DRY_END: Final = 0.1
 """Share of the time that may be dry at an end without a remark."""
 
 
-def ordinates_of(depth: npt.NDArray[np.float64]) -> Ordinates:
+def ordinates_of(depth: npt.NDArray[np.float64], *, step: float | None = None) -> Ordinates:
     """Return the dimensionless cumulative curve of a storm.
 
     Parameters
@@ -27,6 +28,8 @@ def ordinates_of(depth: npt.NDArray[np.float64]) -> Ordinates:
     depth : array of float, shape (n,)
         mm in each of the equal steps of the storm's window, from its start to its end. Dry steps at the ends belong to
         the window and are kept.
+    step
+        Minutes, where it is to be told that the storm is stretched or shortened.
 
     Returns
     -------
@@ -72,7 +75,8 @@ choose a storm without gaps
         )
     problems.raise_as(DataError)
     fallen = np.concatenate(([0.0], np.cumsum(values)))
-    return Ordinates(np.arange(len(fallen)) / len(values), fallen / fallen[-1])
+    minutes = None if step is None else step * len(values)
+    return Ordinates(np.arange(len(fallen)) / len(values), fallen / fallen[-1], minutes)
 
 
 def by_observed(case: PatternCase, *, ordinates: Ordinates) -> Shaped:
@@ -90,7 +94,8 @@ def by_observed(case: PatternCase, *, ordinates: Ordinates) -> Shaped:
     Returns
     -------
     Shaped
-        With a remark on an end of the storm that is dry for more than a tenth of the time.
+        With remarks: where the storm is stretched or shortened, and on an end that is dry for more than a tenth of the
+        time.
 
     Raises
     ------
@@ -106,10 +111,16 @@ def by_observed(case: PatternCase, *, ordinates: Ordinates) -> Shaped:
     >>> shaped.depth, shaped.remarks
     (array([30., 10.]), ('The first 25 % of the observed storm are dry; they are kept as part of its pattern.',))
     """
-    return Shaped(fall_by(ordinates.at, case), tuple(_remarks(ordinates)))
+    return Shaped(fall_by(ordinates.at, case), tuple(_remarks(ordinates, case.minutes)))
 
 
-def _remarks(ordinates: Ordinates) -> Iterator[str]:
+def _remarks(ordinates: Ordinates, minutes: float) -> Iterator[str]:
+    own = ordinates.minutes
+    if own is not None and own != minutes:
+        yield (
+            f"The observed storm of {duration_text(own)} is {'shortened' if own > minutes else 'stretched'} to "
+            f"{duration_text(minutes)}: equal depths fall in {minutes / own:.3g} times the time that they took."
+        )
     wet = np.flatnonzero(np.diff(ordinates.share) > 0)
     before, after = ordinates.time[wet[0]], 1 - ordinates.time[wet[-1] + 1]
     for words, dry in (("first", before), ("last", after)):

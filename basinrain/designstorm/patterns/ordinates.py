@@ -32,6 +32,8 @@ class Ordinates:
         Shares of the duration, from 0 to 1, rising. Copied, and not to be written to.
     share : array of float, shape (n,)
         Shares of the total depth, from 0 to 1, nowhere falling. Copied, and not to be written to.
+    minutes : float, optional
+        The duration of the storm that it was taken from; None where it has none of its own.
 
     Raises
     ------
@@ -55,6 +57,7 @@ percent = true
 
     time: Floats
     share: Floats
+    minutes: float | None = None
 
     def __post_init__(self) -> None:
         for name in ("time", "share"):

@@ -14,6 +14,18 @@ from basinrain.designstorm.patterns.observed import by_observed, ordinates_of
 from basinrain.errors import DataError, MethodError
 
 
+def test_a_storm_of_another_duration_is_said_to_be_stretched() -> None:
+    """Four steps of an hour to two hours and to eight; not where the duration is its own, nor where none is known."""
+    storm = np.array([1.0, 5.0, 3.0, 1.0])
+    told = [by_observed(pattern_case(m, 30), ordinates=ordinates_of(storm, step=60)).remarks for m in (120, 480, 240)]
+    assert told == [
+        ("The observed storm of 4 h is shortened to 2 h: equal depths fall in 0.5 times the time that they took.",),
+        ("The observed storm of 4 h is stretched to 8 h: equal depths fall in 2 times the time that they took.",),
+        (),
+    ]
+    assert by_observed(pattern_case(120, 30), ordinates=ordinates_of(storm)).remarks == ()
+
+
 def test_a_storm_keeps_its_shape_at_another_depth_and_length() -> None:
     """1, 5, 3, 1 mm in four steps become 6, 30, 18, 6 mm of 60, whether an hour or ten minutes long each."""
     curve = ordinates_of(np.array([1.0, 5.0, 3.0, 1.0]))
