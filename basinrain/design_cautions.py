@@ -19,8 +19,8 @@ from basinrain.designstorm.depth_chain import Links
 from basinrain.designstorm.design_storms import DesignStorm
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, Frequency
 from basinrain.designstorm.measures import duration_text
-from basinrain.designstorm.rarity import StormRarity
 from basinrain.designstorm.reach import SLACK
+from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.jobfile.design_tables import NO_REDUCTION, UpliftTable
 from basinrain.notes import Note
 from basinrain.units import area_factor

@@ -26,7 +26,7 @@ from basinrain.designstorm.depth_chain import DepthChain, Links
 from basinrain.designstorm.design_storms import DesignStorm, PatternChoice, design_storm
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_text
-from basinrain.designstorm.rarity import StormRarity
+from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.errors import BasinRainError, JobError, MethodError, Problem
 from basinrain.infill_choice import InfillChoice, choose_infill
 from basinrain.inputs import Inputs, read_basins_of, read_inputs

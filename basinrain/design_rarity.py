@@ -21,7 +21,8 @@ from basinrain.design_sources import nearest_points
 from basinrain.designstorm.depth_chain import DepthChain, Reducer
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.patterns import Ordinates, ordinates_of
-from basinrain.designstorm.rarity import StormDepths, StormRarity, comparable, storm_rarity
+from basinrain.designstorm.rarity import comparable, storm_rarity
+from basinrain.designstorm.storm_depths import StormDepths, StormRarity
 from basinrain.errors import DataError, JobError, MethodError, Problem, Problems
 from basinrain.infill.gaps import gap_mask, longer_than
 from basinrain.infill_choice import InfillChoice

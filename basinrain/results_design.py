@@ -17,9 +17,10 @@ from basinrain.design_record import RecordSource
 from basinrain.design_sources import Sourced
 from basinrain.designstorm.areal_reduction import ArealReduction
 from basinrain.designstorm.depth_chain import DepthChain, Links
+from basinrain.designstorm.design_hyetograph import DesignHyetograph
 from basinrain.designstorm.design_storms import DesignStorm
 from basinrain.designstorm.exceedance import Frequency
-from basinrain.designstorm.rarity import StormRarity
+from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.results_common import Run
 
 if TYPE_CHECKING:
@@ -111,6 +112,22 @@ class DesignRun(Run):
     def caution(self) -> str:
         """What every output of the run says of its use."""
         return " ".join([DESIGN_CAUTION, climate_sentence(self.asked.design.uplift)])
+
+    @cached_property
+    def hyetographs(self) -> tuple[DesignHyetograph, ...]:
+        """The hyetographs of every design storm."""
+        return tuple(
+            DesignHyetograph(
+                point=storm.point.name,
+                frequency=storm.frequency,
+                minutes=storm.minutes,
+                pattern=storm.choice.label,
+                step=storm.step,
+                basins=storm.point.basins,
+                depth=storm.depth,
+            )
+            for storm in self.storms
+        )
 
     @property
     def formats(self) -> tuple[str, ...]:

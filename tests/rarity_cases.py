@@ -8,7 +8,8 @@ import numpy as np
 import numpy.typing as npt
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
-from basinrain.designstorm.rarity import StormDepths, StormRarity, storm_rarity
+from basinrain.designstorm.rarity import storm_rarity
+from basinrain.designstorm.storm_depths import StormDepths, StormRarity
 
 Floats = npt.NDArray[np.float64]
 

@@ -7,8 +7,9 @@ from collections.abc import Sequence
 import numpy as np
 import numpy.typing as npt
 
+from basinrain.designstorm.design_hyetograph import DesignHyetograph
 from basinrain.designstorm.exceedance import Frequency
-from basinrain.writing.design_content import DesignContent, DesignHyetograph
+from basinrain.writing.design_content import DesignContent
 
 RARE = Frequency.of_aep(0.01)
 COMMON = Frequency(2.0, "partial-duration")

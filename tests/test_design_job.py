@@ -125,7 +125,9 @@ def test_by_own_area_every_basin_has_a_chain_of_its_own(tmp_path: Path) -> None:
     """One row a basin; its area decides, and a union beyond the method's range is not asked."""
     # Four squares of 144 square miles are 576 together: more than the 400 that the method reaches to.
     squares = {name: shapely.affinity.scale(square, 2.4, 2.4, origin=(0, 0)) for name, square in QUARTERS.items()}
-    run = run_design(write_design_job(tmp_path, squares=squares, design__areal_reduction=US_REDUCTION | {"area": "own"}))
+    run = run_design(
+        write_design_job(tmp_path, squares=squares, design__areal_reduction=US_REDUCTION | {"area": "own"})
+    )
     table = run.design_depths[run.design_depths["duration"] == "6h"]
     assert table["basin"].tolist() == list(squares)
     assert table["area"].to_numpy() == pytest.approx(144.0)

@@ -24,7 +24,7 @@ from basinrain.report.words import depth_text, inline, short_names, unit_word
 from basinrain.units import depth_factor
 
 if TYPE_CHECKING:
-    from basinrain.writing.design_content import DesignHyetograph
+    from basinrain.designstorm.design_hyetograph import DesignHyetograph
 
 __all__ = ["MOST_BARS", "MOST_OUTLINES", "MOST_PATTERNS", "MOST_PICTURES", "design_pictures"]
 

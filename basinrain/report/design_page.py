@@ -55,9 +55,6 @@ def render_design(run: DesignRun) -> str:
     str
         HTML, to be written as UTF-8.
     """
-    # Files and pages are made of each other's parts; the room of files is imported when a page is made.
-    from basinrain.writing.run import design_content
-
     areal = run.sourced.source.areal
     return render_template(
         "design.html",
@@ -77,7 +74,7 @@ def render_design(run: DesignRun) -> str:
         compared=design_reduction_list.compared_tables(run),
         compared_formulas=[design_formulas.reduction_formula(other.method.name) for other in run.compared],
         patterns=design_pattern_list.pattern_facts(run),
-        hyetograph_pictures=design_pictures(design_content(run).hyetographs, run.depth_unit),
+        hyetograph_pictures=design_pictures(run.hyetographs, run.depth_unit),
         sub_basins=design_facts.sub_basins_words(run),
         depth_tables=design_storm_list.depth_tables(run),
         peak_tables=design_storm_list.peak_tables(run),

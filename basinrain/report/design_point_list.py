@@ -6,6 +6,7 @@ from typing import Final
 
 import numpy as np
 
+from basinrain.design_cautions import OF_CURVES
 from basinrain.designstorm.equations import EquationDepths
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_text
@@ -30,18 +31,17 @@ def point_sentences(run: DesignRun) -> list[str]:
     sentences = [f"{source.source}, dated {source.date}: {counted(n, 'point')}, {covers}."]
     if isinstance(source, PointDepths):
         known = set(source.durations.tolist())
+        how = f"interpolated{' or extrapolated' if table.extrapolate else ''}"
         between = [duration_text(m) for m in run.asked.minutes if float(m) not in known]
         often = [f.label for f in run.asked.frequencies if not _tabulated(f, source.frequencies)]
         if between or often:
             words = design_shown.cut([*between, *often], design_shown.AREAS)
-            sentences.append(
-                f"Not tabulated, so interpolated{' or extrapolated' if table.extrapolate else ''}: {words}."
-            )
+            sentences.append(f"Not tabulated, so {how}: {words}.")
         else:
             asked = "All durations and frequencies asked for are tabulated"
             curves = [table.label for table in run.asked.design.pattern if table.shape in OF_CURVES]
             sentences.append(
-                f"{asked}; what lies between them is interpolated for {design_shown.cut(curves, design_shown.AREAS)}."
+                f"{asked}; other durations, taken for {design_shown.cut(curves, design_shown.AREAS)}, are {how}."
                 if curves
                 else f"{asked}: no depth is interpolated."
             )

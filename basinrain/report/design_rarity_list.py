@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from typing import Final
 
 from basinrain.designstorm.measures import duration_text
-from basinrain.designstorm.rarity import RarityRow, StormRarity
+from basinrain.designstorm.storm_depths import RarityRow, StormRarity
 from basinrain.report import design_shown, limits
 from basinrain.report.figures import Picture
 from basinrain.report.rarity_figure import rarity_picture

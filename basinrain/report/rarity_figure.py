@@ -17,7 +17,7 @@ from scipy.optimize import isotonic_regression
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.found_frequency import odds
 from basinrain.designstorm.measures import duration_text
-from basinrain.designstorm.rarity import RarityRow, StormDepths, StormRarity
+from basinrain.designstorm.storm_depths import RarityRow, StormDepths, StormRarity
 from basinrain.report.duration_axis import depth_axis
 from basinrain.report.figures import HALO, INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.words import depth_text, inline, unit_word

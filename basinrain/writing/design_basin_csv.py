@@ -5,7 +5,8 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Final
 
-from basinrain.writing.design_content import DesignContent, DesignHyetograph, column_word
+from basinrain.designstorm.design_hyetograph import DesignHyetograph
+from basinrain.writing.design_content import DesignContent, column_word
 from basinrain.writing.series_content import writing
 from basinrain.writing.series_csv import csv_row, depth_texts
 from basinrain.writing.series_file_names import file_stems

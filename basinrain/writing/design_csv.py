@@ -7,7 +7,8 @@ from typing import Final
 
 import numpy as np
 
-from basinrain.writing.design_content import DesignContent, DesignHyetograph
+from basinrain.designstorm.design_hyetograph import DesignHyetograph
+from basinrain.writing.design_content import DesignContent
 from basinrain.writing.series_content import writing
 from basinrain.writing.series_csv import csv_row, depth_texts
 

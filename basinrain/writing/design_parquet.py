@@ -9,7 +9,8 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.writing.design_content import DesignContent, DesignHyetograph
+from basinrain.designstorm.design_hyetograph import DesignHyetograph
+from basinrain.writing.design_content import DesignContent
 from basinrain.writing.design_csv import COLUMNS
 from basinrain.writing.series_content import writing
 from basinrain.writing.series_parquet import basin_facts, chosen_words

@@ -13,7 +13,7 @@ from basinrain.results import InfillRun, ScreenRun, StormRun
 from basinrain.results_common import Run
 from basinrain.results_design import DesignRun
 from basinrain.results_series import SeriesRun
-from basinrain.writing.design_content import DesignContent, DesignHyetograph
+from basinrain.writing.design_content import DesignContent
 from basinrain.writing.design_files import write_design_files
 from basinrain.writing.folder import RECORD, whole_folder
 from basinrain.writing.record import long_tables, record_text, run_tables
@@ -98,18 +98,7 @@ def design_content(run: DesignRun) -> DesignContent:
     polygons = run.areas.basins.polygons[list(rows.values())]
     parts = Basins(ids=tuple(rows), polygons=polygons, crs=run.areas.basins.crs)
     return DesignContent(
-        hyetographs=tuple(
-            DesignHyetograph(
-                point=storm.point.name,
-                frequency=storm.frequency,
-                minutes=storm.minutes,
-                pattern=storm.choice.label,
-                step=storm.step,
-                basins=storm.point.basins,
-                depth=storm.depth,
-            )
-            for storm in run.storms
-        ),
+        hyetographs=run.hyetographs,
         basins=parts.ids,
         areas=parts.areas,
         positions=points_inside(parts),

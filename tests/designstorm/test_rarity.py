@@ -5,7 +5,8 @@ import pytest
 from rarity_cases import END, FREQUENCIES, MINUTES, NAN, UPPER, at_gauges, over_basins, quill, storm_depths
 
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, Frequency
-from basinrain.designstorm.rarity import StormRarity, comparable, storm_rarity
+from basinrain.designstorm.rarity import comparable, storm_rarity
+from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.errors import DataError
 from basinrain.series.greatest_depths import greatest_depths
 

@@ -47,8 +47,7 @@ def test_heavy_and_light_tails_are_told_apart() -> None:
     assert "The test of the shape speaks against Gumbel at 5 %, heavier tail: A 30 min; lighter tail: A 1 h." in remarks
     assert (
         "The probability plot of the Gumbel distribution is less straight than 95 % of its own samples: A 30 min, "
-        "A 1 h."
-        in remarks
+        "A 1 h." in remarks
     )
 
 

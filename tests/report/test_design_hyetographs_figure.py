@@ -9,10 +9,10 @@ from report.markup import svg_texts, svg_tree
 from report.spying import drawn_by
 from small_hyetographs import COMMON, RARE, drawn_content, hyetograph
 
+from basinrain.designstorm.design_hyetograph import DesignHyetograph
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.report import design_hyetographs_figure
 from basinrain.report.design_hyetographs_figure import design_pictures
-from basinrain.writing.design_content import DesignHyetograph
 
 
 @pytest.fixture

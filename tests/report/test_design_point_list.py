@@ -46,6 +46,15 @@ def test_what_the_source_covers_and_what_is_interpolated(tmp_path: Path) -> None
     assert point_sentences(run)[1] == "Not tabulated, so interpolated: 3 h, AEP 0.2 (1 in 5)."
 
 
+def test_patterns_made_from_depths_by_duration_take_interpolated_ones(tmp_path: Path) -> None:
+    """A nested storm of 6 h in steps of an hour takes 2 to 5 h, which the table does not have."""
+    pattern = [{"shape": "nested", "smooth": True}, {"shape": "uniform"}]
+    run = make_design(tmp_path, design__durations=["6h"], design__pattern=pattern)
+    assert point_sentences(run)[1] == (
+        "All durations and frequencies asked for are tabulated; other durations, taken for nested, are interpolated."
+    )
+
+
 def test_extrapolation_is_said(tmp_path: Path) -> None:
     """Where the job allows it and something is beyond the table."""
     run = make_design(

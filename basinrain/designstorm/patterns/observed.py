@@ -58,11 +58,11 @@ choose a storm without gaps
     if values.ndim != 1 or not len(values):
         problems.add(item="observed storm", found=f"depths of shape {values.shape}", expected="one depth a step")
         problems.raise_as(DataError)
-    for step in np.flatnonzero(~(np.isfinite(values) & (values >= 0))):
-        missing = np.isnan(values[step])
+    for place in np.flatnonzero(~(np.isfinite(values) & (values >= 0))):
+        missing = np.isnan(values[place])
         problems.add(
-            item=f"observed storm, step {step + 1}",
-            found="no depth" if missing else f"{values[step]:g} mm",
+            item=f"observed storm, step {place + 1}",
+            found="no depth" if missing else f"{values[place]:g} mm",
             expected="a depth of 0 or more",
             remedy="infill it, or choose a storm without gaps" if missing else "correct it",
         )
