@@ -11,8 +11,8 @@ from typing import Any
 import numpy as np
 
 from basinrain.design_keys import check_depth_keys, check_one_of, check_pattern_keys, check_reduction_keys
-from basinrain.design_reduction import stated_options
-from basinrain.designstorm.areal_reduction import REDUCTIONS, areal_reduction, check_jurisdiction
+from basinrain.design_reduction import COMPARABLE, stated_options
+from basinrain.designstorm.areal_reduction import areal_reduction, check_jurisdiction
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, PARTIAL_DURATION, Frequency
 from basinrain.designstorm.patterns import PATTERNS
 from basinrain.designstorm.patterns.peak import peak_fraction
@@ -207,11 +207,11 @@ def _check_reduction(design: DesignTable, problems: Problems) -> None:
     if table.method == NO_REDUCTION or not areal:
         _check_options(table, problems)
     for name in table.compare:
-        if areal_reduction(name).options:
+        if name not in COMPARABLE:
             problems.add(
                 item="[design.areal_reduction] compare",
-                found=f"'{name}', which needs values of the job's own",
-                expected="one of: " + ", ".join(each for each, method in REDUCTIONS.items() if not method.options),
+                found=f"'{name}', which is made of values of the job's own",
+                expected="one of: " + ", ".join(COMPARABLE),
             )
 
 
@@ -219,8 +219,14 @@ def _check_options(table: ArealReductionTable, problems: Problems) -> None:
     """Tell what is wrong with a reduction's keys; with their values where all keys are there."""
     before = len(problems)
     check_reduction_keys(table, problems)
-    if len(problems) == before and table.method not in {NO_REDUCTION, TABLE}:
-        attempt(problems, lambda: areal_reduction(table.method).check_options(stated_options(table)))
+    if len(problems) == before:
+        for name in dict.fromkeys((table.method, *(each for each in table.compare if each in COMPARABLE))):
+            if name not in {NO_REDUCTION, TABLE}:
+                attempt(problems, partial(_check_stated, name, table))
+
+
+def _check_stated(name: str, table: ArealReductionTable) -> None:
+    areal_reduction(name).check_options(stated_options(name, table))
 
 
 def _check_points(design: DesignTable, problems: Problems) -> None:

@@ -19,12 +19,12 @@ from basinrain.design_cautions import design_cautions
 from basinrain.design_patterns import pattern_choices
 from basinrain.design_rarity import ObservedStorms, storm_rarities
 from basinrain.design_record import RecordSource, record_source
-from basinrain.design_reduction import reducer
+from basinrain.design_reduction import reducer, stated_options
 from basinrain.design_sources import Sourced, interval_factors, sourced
 from basinrain.designstorm.areal_reduction import areal_reduction, outside_region
 from basinrain.designstorm.depth_chain import DepthChain, Links
 from basinrain.designstorm.design_storms import DesignStorm, PatternChoice, design_storm
-from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.errors import BasinRainError, JobError, MethodError, Problem
@@ -311,19 +311,25 @@ def _compared(chain: DepthChain, areas: Areas, wanted: Asked) -> tuple[ComparedR
     table = wanted.design.areal_reduction
     result = []
     for name in () if table is None else table.compare:
-        method = areal_reduction(name)
-        factors, reasons = {}, {}
+        method, factors, reasons = areal_reduction(name), {}, {}
+        options = {} if table is None else stated_options(name, table)
         for area in areas.reduced(wanted.design):
             size = float(chain.areas[area.reduced_as])
             for frequency in wanted.frequencies:
                 for minutes in wanted.minutes:
                     key = (area.name, frequency, minutes)
+                    often = frequency.to(ANNUAL_MAXIMUM) if wanted.design.depths.convert else frequency
                     try:
-                        factors[key] = float(method.reduce(size, np.array([float(minutes)]), frequency).factor[0])
+                        factors[key] = float(
+                            method.reduce(size, np.array([float(minutes)]), often, **options).factor[0]
+                        )
                     except MethodError as error:
                         reasons[key] = "; ".join(f"{p.found}, expected {p.expected}" for p in error.problems)
         outside = outside_region(method, wanted.design.jurisdiction or None)
-        result.append(ComparedReduction(method=method, outside=outside, factors=factors, reasons=reasons))
+        region = ": ".join((method.region_words, *(str(value) for key, value in options.items() if key == "region")))
+        result.append(
+            ComparedReduction(method=method, region=region, outside=outside, factors=factors, reasons=reasons)
+        )
     return tuple(result)
 
 

@@ -74,8 +74,10 @@ _WORDS: Final = {
 }
 
 
+_REGIONAL: Final = "arr-2019"
+
 _OF_REDUCTION: Final[Mapping[str, tuple[tuple[str, ...], tuple[str, ...]]]] = {
-    "arr-2019": (("region",), ()),
+    _REGIONAL: (("region",), ()),
     "exponential": (("coefficients", "source"), ("valid", "valid_areas", "area_unit")),
     "table": (("file", "source", "area_unit"), ()),
 }
@@ -93,6 +95,13 @@ def check_depth_keys(table: DesignDepthsTable, problems: Problems) -> None:
         taken.add("observed_every")
     words = "what goes with that: " + ", ".join(sorted(taken - {"origin"}))
     _refuse("[design.depths]", table, taken, f"from = '{table.origin}'", problems, words=words)
+    if table.convert and table.series == ANNUAL_MAXIMUM:
+        problems.add(
+            item="[design.depths] convert",
+            found=f"it beside series = '{ANNUAL_MAXIMUM}'",
+            expected=f"it with depths of a {PARTIAL_DURATION} series, which it brings to probabilities",
+            remedy="remove it",
+        )
     if table.interval_factor is not None and table.observed_every is None and table.origin != RECORD:
         problems.add(
             item="[design.depths] observed_every",
@@ -109,13 +118,16 @@ def check_depth_keys(table: DesignDepthsTable, problems: Problems) -> None:
 def check_reduction_keys(table: ArealReductionTable, problems: Problems) -> None:
     """Tell which keys of ``[design.areal_reduction]`` are lacking, and which do not go with its method."""
     needed, taken = _OF_REDUCTION.get(table.method, ((), ()))
+    own, own_words, regional_words = needed, f"method = '{table.method}'", f"compare = '{_REGIONAL}'"
+    if _REGIONAL in table.compare and table.method != _REGIONAL:
+        needed = (*needed, "region")
     common = ("method", "compare") if table.method == NO_REDUCTION else ("method", "area", "outside", "compare")
     for key in needed:
         if not getattr(table, key):
             problems.add(
                 item=f"[design.areal_reduction] {key}",
                 found="nothing",
-                expected=f"it, which method = '{table.method}' needs",
+                expected=f"it, which {own_words if key in own else regional_words} needs",
                 remedy="state it",
             )
     keys = (*common, *needed, *taken)

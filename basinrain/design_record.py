@@ -142,7 +142,10 @@ def record_source(job: Job, asked: Asked, given: Inputs, areas: Basins, *, infil
         distribution=table.distribution,
         beyond_record=table.beyond_record,
     )
-    notes = _notes(given, columns, share, found.years, areas.ids)
+    notes = (
+        *_notes(given, columns, share, found.years, areas.ids),
+        *_out_of_season(found.sliding.ends.transpose(1, 0, 2), ~np.isnan(maxima), table.wet_season),
+    )
     return RecordSource(
         depths=depths,
         gauges=network.ids,
@@ -265,15 +268,26 @@ def _notes(
                 f"{'them' if unsettled > 1 else 'it'}. 'basinrain screen' shows what they are.",
             )
         )
+    alike: dict[str, list[str]] = {}
     for area, name in enumerate(names):
         short = years[share[:, area] < SEASON_SHARE]
         if len(short):
-            notes.append(
-                Note(
-                    code="years-not-counted",
-                    level="info",
-                    text=f"{name}: {len(short)} of {len(years)} years do not count, less than 90 % of their wet season "
-                    f"having a depth: {', '.join(str(year) for year in short)}.",
-                )
-            )
+            text = f"{len(short)} of {len(years)} years do not count, less than 90 % of their wet season having a depth"
+            alike.setdefault(f"{text}: {', '.join(str(year) for year in short)}.", []).append(name)
+    notes += [
+        Note(code="years-not-counted", level="info", text=f"{', '.join(where)}: {text}")
+        for text, where in alike.items()
+    ]
     return tuple(notes)
+
+
+def _out_of_season(ends: npt.NDArray[np.datetime64], counted: Bools, season: tuple[int, ...]) -> tuple[Note, ...]:
+    """Return a remark where annual maxima that count ended outside the wet season."""
+    outside = int((counted & ~_in_months(ends, season)).sum()) if season else 0
+    if not outside:
+        return ()
+    text = (
+        f"{outside} of {int(counted.sum())} annual maxima fell outside the wet season. Only its months decide whether "
+        "a year counts; other months may have gaps."
+    )
+    return (Note(code="maxima-out-of-season", level="info", text=text),)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Any
+from typing import Any, Final
 
 import numpy as np
 import numpy.typing as npt
@@ -16,9 +16,12 @@ from basinrain.jobfile.design_tables import NO_REDUCTION, ArealReductionTable, D
 from basinrain.reading.reduction_table import read_reduction_table
 from basinrain.units import area_factor
 
-__all__ = ["reducer", "stated_options"]
+__all__ = ["COMPARABLE", "reducer", "stated_options"]
 
 Floats = npt.NDArray[np.float64]
+
+COMPARABLE: Final = ("leclerc-schaake", "keers-wescott", "arr-2019")
+"""Published reductions, which can be shown beside another; the others are a job's own."""
 
 
 def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
@@ -26,7 +29,7 @@ def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
     table = design.areal_reduction
     if table is None or table.method == NO_REDUCTION:
         return None
-    options = stated_options(table)
+    options = stated_options(table.method, table)
     if table.method == "table":
         options["table"] = read_reduction_table(
             job.path(table.file or ""), area_unit=table.area_unit or "", source=table.source
@@ -43,17 +46,24 @@ def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
     return reduce
 
 
-def stated_options(table: ArealReductionTable) -> dict[str, Any]:
+def stated_options(method: str, table: ArealReductionTable) -> dict[str, Any]:
     """Return the options of a reduction that the job itself states, those of its file left out.
+
+    Parameters
+    ----------
+    method
+        That of the table, or one that is compared with it.
+    table
+        The job's table.
 
     Raises
     ------
     JobError
         Coefficients that cannot be; all of them.
     """
-    if table.method == "arr-2019":
+    if method == "arr-2019":
         return {"region": table.region}
-    return {"coefficients": _coefficients(table)} if table.method == "exponential" else {}
+    return {"coefficients": _coefficients(table)} if method == "exponential" else {}
 
 
 def _coefficients(table: ArealReductionTable) -> ExponentialCoefficients:

@@ -37,6 +37,8 @@ class ComparedReduction:
     ----------
     method
         From the registry.
+    region
+        The region that it is for, in words.
     outside
         Whether the design is outside the region that it is for.
     factors
@@ -46,6 +48,7 @@ class ComparedReduction:
     """
 
     method: ArealReduction
+    region: str
     outside: bool
     factors: Mapping[tuple[str, Frequency, int], float]
     reasons: Mapping[tuple[str, Frequency, int], str]

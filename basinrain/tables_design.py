@@ -237,7 +237,7 @@ def reductions_compared(run: DesignRun) -> pd.DataFrame:
                             (
                                 *head,
                                 other.method.name,
-                                other.method.region_words,
+                                other.region,
                                 "outside its region" if other.outside else "for comparison",
                                 other.factors.get(key, np.nan),
                                 other.reasons.get(key, ""),

@@ -272,12 +272,19 @@ def test_areal_depths_are_not_reduced() -> None:
 
 
 def test_only_reductions_without_values_of_the_job_are_compared() -> None:
-    """A method that needs a region or coefficients has none to be compared with."""
-    (line,) = refusal(design__areal_reduction={"method": "none", "compare": ["arr-2019", "keers-wescott"]})
+    """A method made of a job's own coefficients has none to be compared with; one by region needs the region."""
+    (line,) = refusal(design__areal_reduction={"method": "none", "compare": ["exponential", "keers-wescott"]})
     assert line == (
-        "[design.areal_reduction] compare: found 'arr-2019', which needs values of the job's own; expected one of: "
-        "leclerc-schaake, keers-wescott"
+        "[design.areal_reduction] compare: found 'exponential', which is made of values of the job's own; expected one "
+        "of: leclerc-schaake, keers-wescott, arr-2019"
     )
+    (line,) = refusal(design__areal_reduction={"method": "none", "compare": ["arr-2019"]})
+    assert line == (
+        "[design.areal_reduction] region: found nothing; expected it, which compare = 'arr-2019' needs; state it"
+    )
+    (line,) = refusal(design__areal_reduction={"method": "none", "compare": ["arr-2019"], "region": "Tasmannia"})
+    assert "found 'Tasmannia'" in line
+    assert line.endswith("did you mean 'Tasmania'?")
 
 
 def test_names_stand_once() -> None:

@@ -124,6 +124,7 @@ def test_a_key_goes_with_its_own_origins_alone(origin: str) -> None:
     assert every == set(VALUES)
     for key in every:
         more = {"observed_every": "1h"} if key == "interval_factor" and origin != "record" else {}
+        more |= {"series": "partial-duration"} if key == "convert" and origin != "record" else {}
         lines = of_depths(depths_table(origin, **{key: VALUES[key]}, **more))
         if key in needed | TAKEN[origin]:
             assert lines == []
@@ -133,6 +134,15 @@ def test_a_key_goes_with_its_own_origins_alone(origin: str) -> None:
                 f"[design.depths] {key}: found it beside from = '{origin}'; expected what goes with "
             )
             assert line.endswith("; remove it")
+
+
+def test_annual_maxima_need_no_conversion() -> None:
+    """A conversion would do nothing there, so that it is refused."""
+    (line,) = of_depths(depths_table("table", convert=True))
+    assert line == (
+        "[design.depths] convert: found it beside series = 'annual-maximum'; expected it with depths of a "
+        "partial-duration series, which it brings to probabilities; remove it"
+    )
 
 
 def test_an_interval_factor_needs_the_interval() -> None:

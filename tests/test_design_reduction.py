@@ -112,10 +112,14 @@ def test_a_table_of_factors(tmp_path: Path) -> None:
 
 def test_options_that_the_job_states() -> None:
     """A region, coefficients, or none; what the coefficients lack is told by name, in the order of the alphabet."""
-    assert stated_options(ArealReductionTable(method="leclerc-schaake")) == {}
-    assert stated_options(ArealReductionTable(method="arr-2019", region="Tasmania")) == {"region": "Tasmania"}
-    assert stated_options(ArealReductionTable(method="table", file="f.csv")) == {}
-    given = stated_options(ArealReductionTable.model_validate({**OWN, "valid_areas": [1, 2], "area_unit": "ha"}))
+    assert stated_options("leclerc-schaake", ArealReductionTable(method="leclerc-schaake")) == {}
+    assert stated_options("arr-2019", ArealReductionTable(method="arr-2019", region="Tasmania")) == {
+        "region": "Tasmania"
+    }
+    assert stated_options("table", ArealReductionTable(method="table", file="f.csv")) == {}
+    given = stated_options(
+        "exponential", ArealReductionTable.model_validate({**OWN, "valid_areas": [1, 2], "area_unit": "ha"})
+    )
     assert (given["coefficients"].c2, given["coefficients"].areas, given["coefficients"].minutes) == (
         0.9,
         (1e4, 2e4),
@@ -124,7 +128,9 @@ def test_options_that_the_job_states() -> None:
     with pytest.raises(
         JobError, match=r"c1: found none; (.|\n)*c3: found none; (.|\n)*c0: found it; (.|\n)*c9: found it; "
     ):
-        stated_options(ArealReductionTable.model_validate({**OWN, "coefficients": {"c9": 1, "c2": 1, "c0": 1}}))
+        stated_options(
+            "exponential", ArealReductionTable.model_validate({**OWN, "coefficients": {"c9": 1, "c2": 1, "c0": 1}})
+        )
 
 
 def quarters(side: float) -> dict[str, shapely.Polygon]:

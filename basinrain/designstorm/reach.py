@@ -102,9 +102,13 @@ def check_reach(
     outside = (minutes < durations[0] * (1 - SLACK)) | (minutes > durations[-1] * (1 + SLACK))
     for asked in minutes[~(minutes > 0) | np.isinf(minutes)]:
         problems.add(item="duration", found=f"{asked:g} minutes", expected="more than 0 and finite")
-    for asked in minutes[outside & (minutes > 0) & np.isfinite(minutes)] if lone or not extrapolate else ():
+    asked_outside = np.unique(minutes[outside & (minutes > 0) & np.isfinite(minutes)])
+    for side in (asked_outside[asked_outside < durations[0]], asked_outside[asked_outside > durations[-1]]):
+        if not len(side) or (extrapolate and not lone):
+            continue
+        ends = " to ".join(duration_text(float(end)) for end in dict.fromkeys((side[0], side[-1])))
         problems.add(
-            item=f"duration {duration_text(float(asked))}",
+            item=f"duration{'s' if len(side) > 1 else ''} {ends}",
             found=f"that the depths have only {span}" if lone else f"that the depths are of {span}",
             expected="a duration within them",
             remedy="give depths of two durations or more" if lone else _REMEDY,

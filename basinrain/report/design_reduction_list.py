@@ -153,7 +153,7 @@ def _compared(run: DesignRun, others: Sequence[ComparedReduction]) -> Table:
     whose = "basin" if any(area.basin for area in run.reduced) else "point of interest"
     told = list(reasons)
     notes = [
-        *(f"{other.method.name}: {other.method.title}, for {other.method.region_words}." for other in others),
+        *(f"{other.method.name}: {other.method.title}, for {other.region}." for other in others),
         *([f"{DASH}: no answer. {' '.join(told[:4])}"] if told else []),
         *(["Other reasons are in reductions_compared.csv."] if told[4:] else []),
         *design_shown.left_out(run, "reductions_compared.csv", areas=True),
