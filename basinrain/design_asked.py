@@ -257,11 +257,12 @@ def _check_patterns(job: Job | DesignJob, design: DesignTable, problems: Problem
         if table.peak is not None and "peak" in PATTERNS[table.shape].options:
             _named(f"{item} peak", partial(peak_fraction, table.peak), problems)
         if table.storm is not None and table.storm not in _storms_of(job):
+            known = _storms_of(job)
             problems.add(
                 item=f"{item} storm",
                 found=f"'{table.storm}'",
                 expected="the name of a [[storm]] of the job",
-                remedy=nearest_name(table.storm, _storms_of(job)),
+                remedy=nearest_name(table.storm, known) if known else "add it, or choose another shape",
             )
 
 

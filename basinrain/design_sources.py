@@ -20,7 +20,7 @@ from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.interval_factors import interval_factor
 from basinrain.designstorm.point_depths import PointDepths
 from basinrain.errors import DataError, Problem, Problems
-from basinrain.gauges import GaugeNetwork
+from basinrain.gauges import GaugeNetwork, colocated_groups
 from basinrain.ground import LOCAL
 from basinrain.jobfile import DesignJob, Job
 from basinrain.jobfile.design_tables import EQUATION, RASTERS, DesignDepthsTable, DesignTable, RasterTable, minutes_of
@@ -157,7 +157,17 @@ def _weights(job: Job | DesignJob, depths: PointDepths, areas: Basins, average: 
             )
             for point in without
         )
-    return mean_weights(job, _near(depths, areas), areas, average, whose="points of the table")
+    network = _near(depths, areas)
+    problems = Problems()
+    for group in colocated_groups(network):
+        problems.add(
+            item=f"[design.depths] file, points {', '.join(group[:-1])} and {group[-1]}",
+            found="one place for all of them",
+            expected="places apart, by which several points are averaged",
+            remedy="correct a position, or keep one of the points",
+        )
+    problems.raise_as(DataError)
+    return mean_weights(job, network, areas, average, whose="points of the table")
 
 
 def mean_weights(

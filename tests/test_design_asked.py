@@ -338,8 +338,8 @@ def test_what_needs_a_record_is_refused_without_gauges() -> None:
         design__depths={"from": "record"}, design__rarity={}, design__pattern={"shape": "observed", "storm": "May"}
     ) == [
         (
-            "[[design.pattern]] no. 1 storm: found 'May'; expected the name of a [[storm]] of the job; nothing "
-            "is accepted here"
+            "[[design.pattern]] no. 1 storm: found 'May'; expected the name of a [[storm]] of the job; add it, "
+            "or choose another shape"
         ),
         f"[design.depths] from: found 'record' {needs}",
         f"[design.rarity]: found it {needs}",

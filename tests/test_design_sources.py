@@ -105,6 +105,11 @@ def test_a_method_without_weights_is_refused(tmp_path: Path) -> None:
             r"^\[design.depths\] file, point west: found no position; expected its coordinates, ",
         ),
         (
+            TWO_POINTS.replace("7500", "2500"),
+            "local",
+            r"^\[design.depths\] file, points west and east: found one place for all of them; expected places apart, ",
+        ),
+        (
             TWO_POINTS.replace("00,5000", "0000,5000"),
             "local",
             r"^depth points and basins: found them nowhere near each other: depth point west, the nearest, is 240 km ",
@@ -117,7 +122,7 @@ def test_a_method_without_weights_is_refused(tmp_path: Path) -> None:
     ],
 )
 def test_points_that_cannot_be_placed(tmp_path: Path, depths: str, crs: str | None, message: str) -> None:
-    """Points without a position, far away, or on another kind of ground are refused."""
+    """Points without a position, at one place, far away, or on another kind of ground are refused."""
     with pytest.raises(DataError, match=message):
         sourced_of(tmp_path, depths=depths, design__depths__crs=crs)
 

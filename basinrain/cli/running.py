@@ -97,8 +97,9 @@ def show_warnings(page: Console, warnings: Iterable[Note]) -> None:
     for notes in by_code.values():
         for note in notes[:_SHOWN]:
             page.print(f"Warning: {note}", soft_wrap=True)
-        if len(notes) > _SHOWN:
-            page.print(f"Warning: {len(notes) - _SHOWN} more of this kind stand in report.html", soft_wrap=True)
+        if (more := len(notes) - _SHOWN) > 0:
+            stand = "stands" if more == 1 else "stand"
+            page.print(f"Warning: {more} more of this kind {stand} in report.html", soft_wrap=True)
 
 
 def show_end(folder: Path, files: str = "the CSV files") -> None:

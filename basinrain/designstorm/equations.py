@@ -231,8 +231,11 @@ class EquationDepths:
         if len(self.coefficients) != wanted:
             problems.add(
                 item="[design.depths] coefficients",
-                found=f"{len(self.coefficients)} sets",
-                expected=f"one set, since it has {_POWER}" if powers else f"{wanted}, one a return period",
+                found=f"{len(self.coefficients)} set{'' if len(self.coefficients) == 1 else 's'}",
+                expected=f"one set, since it has {_POWER}"
+                if powers
+                else f"{wanted}, one a return period"
+                + (f", or one set with {_POWER}" if EQUATIONS[self.equation].power else ""),
             )
 
     def _item(self, one: int, name: str = "") -> str:

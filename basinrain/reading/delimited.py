@@ -22,6 +22,7 @@ import pandas as pd
 from basinrain.errors import Problem, Problems, ReadError
 from basinrain.reading.decimal_signs import decimal_signs
 from basinrain.reading.files import read_bytes
+from basinrain.reading.interrupts import interrupts_seen
 
 __all__ = [
     "DelimitedTable",
@@ -301,7 +302,7 @@ empty one where there is no value
                 item="a row",
                 found=f"{len(cells)} cell" + ("s" if len(cells) > 1 else ""),
                 expected=f"{n_columns}, as the header has",
-                remedy=_uneven_remedy(separator, more=len(cells) > n_columns),
+                remedy=_uneven_remedy(separator, n_columns, more=len(cells) > n_columns),
                 line=int(lines[place]),
             )
         cut[place] = _joined(cells[:n_columns], separator) if isinstance(rows[0], str) else cells[:n_columns]
@@ -320,19 +321,20 @@ def _frame(
     if not rows or not isinstance(rows[0], str):
         padded = [[*row, *[""] * (n_columns - len(row))] for row in cut]
         return pd.DataFrame(padded, columns=range(n_columns), dtype=object)
-    return pd.read_csv(
-        io.StringIO("\n".join(str(row) for row in cut)),
-        sep=separator,
-        header=None,
-        names=list(range(n_columns)),
-        index_col=False,
-        dtype=object,  # plain strings: three times as fast as strings of Arrow
-        na_filter=False,
-        skip_blank_lines=False,
-        skipinitialspace=True,
-        engine="c",
-        low_memory=False,
-    )
+    with interrupts_seen():
+        return pd.read_csv(
+            io.StringIO("\n".join(str(row) for row in cut)),
+            sep=separator,
+            header=None,
+            names=list(range(n_columns)),
+            index_col=False,
+            dtype=object,  # plain strings: three times as fast as strings of Arrow
+            na_filter=False,
+            skip_blank_lines=False,
+            skipinitialspace=True,
+            engine="c",
+            low_memory=False,
+        )
 
 
 def _uneven(
@@ -352,9 +354,11 @@ def _uneven(
             yield place, cells
 
 
-def _uneven_remedy(separator: str, *, more: bool) -> str:
+def _uneven_remedy(separator: str, n_columns: int, *, more: bool) -> str:
     if not more:
         return "give every cell, an empty one where there is no value"
+    if n_columns == 1:
+        return "begin the file with its header: remove titles above it"
     if separator == ",":
         return "separate cells by semicolons where the decimal sign is a comma, or quote cells with a comma"
     return ""

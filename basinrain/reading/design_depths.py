@@ -253,7 +253,9 @@ def _axis(cells: DesignCells, column: str, values_of: _Parser, rules: _Rules, pr
     """Return the values of an axis' column; every text that is none is reported once, where it first stands."""
     codes, found = pd.factorize(cells.table.frame[column])
     texts = [str(text) for text in found]
-    first, count = np.unique(codes, return_index=True)[1], np.bincount(codes)
+    # A row of a wide table has a value for every frequency.
+    each = len(codes) // max(len(np.unique(cells.table.lines)), 1)
+    first, count = np.unique(codes, return_index=True)[1], np.bincount(codes) // max(each, 1)
     heading = cells.wide and column == cells.probability
     values = np.full(len(texts), np.nan)
     for place, value in enumerate(values_of(texts, cells.table, rules)):

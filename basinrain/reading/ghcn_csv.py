@@ -15,6 +15,7 @@ import pandas as pd
 
 from basinrain.errors import Problems
 from basinrain.reading.ghcn_days import ELEMENTS, YEARS, DayCells, LineFault, is_element, report_lines
+from basinrain.reading.interrupts import interrupts_seen
 
 __all__ = ["csv_cells"]
 
@@ -49,16 +50,17 @@ def csv_cells(content: bytes, problems: Problems) -> DayCells:
     (('ORX00000001',), array([15]), '2031-05-04')
     """
     rows, numbers, element = _rows(content, problems)
-    frame = pd.read_csv(
-        io.BytesIO(b"\n".join(rows) or b"," * (len(_COLUMNS) - 1)),
-        header=None,
-        names=list(_COLUMNS),
-        usecols=list(_READ),
-        dtype=str,
-        na_filter=False,
-        quoting=csv.QUOTE_NONE,
-        encoding="latin-1",
-    ).iloc[: len(rows)]
+    with interrupts_seen():
+        frame = pd.read_csv(
+            io.BytesIO(b"\n".join(rows) or b"," * (len(_COLUMNS) - 1)),
+            header=None,
+            names=list(_COLUMNS),
+            usecols=list(_READ),
+            dtype=str,
+            na_filter=False,
+            quoting=csv.QUOTE_NONE,
+            encoding="latin-1",
+        ).iloc[: len(rows)]
     sound = np.ones(len(rows), dtype=bool)
 
     def column(name: str, read: Callable[[str], int | None], expected: str) -> npt.NDArray[np.int64]:

@@ -268,14 +268,19 @@ def _take(words: list[str], said: dict[str, float], line: int, problems: Problem
 def _ascii_cells(path: Path, header: _AsciiHeader, rows: slice, columns: slice) -> Floats:
     """Return a window; its lines alone are split where every line holds a row, as nearly all files have it."""
     kept: list[tuple[int, bytes]] = []
-    n_lines = 0
+    n_lines, last = 0, (0, b"")
     with path.open("rb") as file:
         for number, line in enumerate(islice(file, header.lines, None), start=header.lines + 1):
             if not line.isspace():
                 if rows.start <= n_lines < rows.stop:
                     kept.append((number, line))
-                n_lines += 1
-    values = _rows(path, header, kept, columns) if n_lines == header.n_rows else _wrapped(path, header, rows, columns)
+                n_lines, last = n_lines + 1, (number, line)
+    if n_lines == header.n_rows:
+        # A file that was cut off has less in its last line, which the window need not reach.
+        further = [] if kept[-1:] == [last] else [last]
+        values = _rows(path, header, kept + further, columns)[: len(kept)]
+    else:
+        values = _wrapped(path, header, rows, columns)
     return np.where(values == header.no_data, np.nan, values)
 
 

@@ -179,6 +179,22 @@ def test_the_decimal_sign_is_one_for_the_file(tmp_path: Path, content: str, deci
             ),
         ),
         (
+            b"Depths of Quill, 2031\n;2;10\n1h;20;30\n",
+            (
+                "table.csv:2: a row: found 1 cell; expected 2, as the header has; give every cell, an empty one where "
+                "there is no value\n"
+                "table.csv:3: a row: found 1 cell; expected 2, as the header has; give every cell, an empty one where "
+                "there is no value"
+            ),
+        ),
+        (
+            b"Depths of Quill\nduration;2;10\n1h;20,5;30,5\n",
+            (
+                "table.csv:3: a row: found 3 cells; expected 1, as the header has; begin the file with its header: "
+                "remove titles above it"
+            ),
+        ),
+        (
             b"id,x\nA,1,5\n",
             (
                 "table.csv:2: a row: found 3 cells; expected 2, as the header has; "

@@ -136,6 +136,13 @@ PERCENT = (
 NO_UNIT = "expected a number with min, h or d: 15min, 1h, 2d; write the unit, or declare duration_unit"
 
 
+def test_rows_of_a_wide_table_are_counted_not_their_cells(tmp_path: Path) -> None:
+    """A duration that cannot be read stands in one row of a wide table, however many frequencies there are."""
+    with pytest.raises(ReadError) as caught:
+        read(tmp_path, "duration,0.5,0.1\n1h,20,30\n120,28,40\n", layout="wide")
+    assert [problem.found for problem in caught.value.problems] == ["'120' without a unit"]
+
+
 @pytest.mark.parametrize(
     ("old", "new", "options", "lines"),
     [

@@ -189,6 +189,10 @@ def test_the_system_of_an_ascii_grid(tmp_path: Path) -> None:
             ],
         ),
         (
+            HEAD + "1 2 3\n4 5\n",
+            ["./depth.asc:7: the raster: found 2 values in a row; expected 3, as ncols says"],
+        ),
+        (
             HEAD + "1 2 3\n",
             [
                 (
