@@ -44,7 +44,8 @@ class Asked:
     design
         The job's table.
     frequencies
-        How often depths are exceeded, the most frequent first, counted in the series of the depths.
+        How often depths are exceeded, the most frequent first, counted in the series of the depths; where it is to be
+        converted, in an annual maximum series.
     minutes
         Durations in minutes, the shortest first.
     step
@@ -167,16 +168,15 @@ def _frequencies(design: DesignTable, series: str, problems: Problems) -> tuple[
         frequency = _named(f"[design] {key}", partial(make, value), problems)
         if frequency is not None:
             found.append(frequency)
-    if key == "aep" and series == PARTIAL_DURATION:
-        if design.depths.convert:
-            found = [frequency.to(series) for frequency in found]
-        else:
-            problems.add(
-                item="[design] aep",
-                found="annual exceedance probabilities beside depths of a partial duration series",
-                expected="return_periods, which such a series has",
-                remedy="write return_periods, or allow AEP = 1 - exp(-1/T) with [design.depths] convert = true",
-            )
+    if series == PARTIAL_DURATION and design.depths.convert:
+        found = [frequency.to(ANNUAL_MAXIMUM) for frequency in found]
+    elif series == PARTIAL_DURATION and key == "aep":
+        problems.add(
+            item="[design] aep",
+            found="annual exceedance probabilities beside depths of a partial duration series",
+            expected="return_periods, which such a series has",
+            remedy="write return_periods, or allow AEP = 1 - exp(-1/T) with [design.depths] convert = true",
+        )
     return tuple(sorted(found))
 
 

@@ -23,7 +23,8 @@ from basinrain.designstorm.reach import SLACK
 from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.jobfile.design_tables import NO_REDUCTION, UpliftTable
 from basinrain.notes import Note
-from basinrain.units import area_factor
+from basinrain.screening.envelope import world_depth
+from basinrain.units import area_factor, depth_factor
 
 __all__ = ["DESIGN_CAUTION", "OF_CURVES", "climate_sentence", "design_cautions"]
 
@@ -35,6 +36,8 @@ DESIGN_CAUTION: Final = (
 
 OF_CURVES: Final = frozenset({"alternating-block", "chicago", "nested"})
 """Shapes that ask for depths of durations down to a step."""
+
+_LISTED: Final = 5
 
 _UNREDUCED: Final = 25e6
 """m²; a point's depth is often taken for areas up to about this one (common practice; ten square miles)."""
@@ -50,6 +53,7 @@ def design_cautions(
     rarities: Sequence[StormRarity],
     record: RecordSource | None,
     area_unit: str,
+    depth_unit: str,
 ) -> Iterator[Note]:
     """Yield warnings and remarks about design storms.
 
@@ -57,13 +61,14 @@ def design_cautions(
     ----------
     asked, areas, sourced, links, storms, rarities, record
         Parts of a run.
-    area_unit
-        The unit in which areas are said.
+    area_unit, depth_unit
+        The units in which areas and depths are said.
     """
     design = asked.design
     yield Note(code="climate", level="info", text=climate_sentence(design.uplift))
     yield from _of_reduction(asked, areas, sourced, links, area_unit)
     yield from _of_falling(links)
+    yield from _of_points(sourced, links, depth_unit)
     points = (f"{name}: {text}" for (name, _), found in links.items() for text in found.clamped)
     for text in dict.fromkeys((*points, *(text for storm in storms for text in storm.clamped))):
         yield Note(code="reduction-clamped", text=text)
@@ -113,22 +118,13 @@ def climate_sentence(uplift: UpliftTable | None) -> str:
 
 
 def _of_conversion(asked: Asked) -> Iterator[Note]:
-    design = asked.design
-    by = "by AEP = 1 - exp(-1/T) (Langbein 1949)"
-    same = [f"AEP {each.aep:.4g} is {each.return_period:.4g} years" for each in asked.frequencies]
-    if design.aep is not None:
-        text = (
-            "The depths are of a partial duration series; annual exceedance probabilities were brought to its return "
-            f"periods T {by}: {', '.join(same)}."
-        )
-        yield Note(code="series-converted", level="info", text=text)
-    table = design.areal_reduction
-    if table is not None and table.method in REDUCTIONS and REDUCTIONS[table.method].uses_frequency:
-        text = (
-            "The areal reduction goes by the annual exceedance probability, which return periods T of the depths' "
-            f"partial duration series have {by}{'' if design.aep is not None else ': ' + ', '.join(same)}."
-        )
-        yield Note(code="series-converted", level="info", text=text)
+    same = [f"{each.label} is {each.to(PARTIAL_DURATION).return_period:.4g} years" for each in asked.frequencies]
+    yield Note(
+        code="series-converted",
+        level="info",
+        text="The depths are of a partial duration series; its return periods T were brought to annual exceedance "
+        f"probabilities by AEP = 1 - exp(-1/T) (Langbein 1949): {', '.join(same)}.",
+    )
 
 
 def _of_reduction(
@@ -176,10 +172,40 @@ def _of_falling(links: Mapping[tuple[str, Frequency], Links]) -> Iterator[Note]:
         )
 
 
+def _of_points(sourced: Sourced, links: Mapping[tuple[str, Frequency], Links], unit: str) -> Iterator[Note]:
+    """Yield depths that were never measured anywhere, and depth points that count nowhere."""
+    beyond: dict[str, float] = {}
+    for (name, _), found in links.items():
+        world = np.array([world_depth(minutes / 60) for minutes in found.minutes])
+        for k in np.flatnonzero(found.unreduced > world):
+            place = f"{name}, {duration_text(found.minutes[k])}"
+            beyond[place] = max(beyond.get(place, 0.0), float(found.unreduced[k]))
+    if beyond:
+        places = [f"{place}: {depth / depth_factor(unit):.4g} {unit}" for place, depth in beyond.items()]
+        more = " and more" if places[_LISTED:] else ""
+        yield Note(
+            code="beyond-envelope",
+            text="Depths are over the greatest known in the world for their duration (about 422 mm times the 0.475th "
+            f"power of hours, from memory): {', '.join(places[:_LISTED])}{more}. Check unit and duration_unit.",
+        )
+    nowhere = [
+        point
+        for point, counts in zip(sourced.source.points, np.any(sourced.weights > 0, axis=0).tolist(), strict=True)
+        if not counts
+    ]
+    if nowhere and not sourced.source.areal:
+        yield Note(
+            code="points-not-counted",
+            level="info",
+            text=f"Depth points that count in no area: {', '.join(nowhere[:_LISTED])}"
+            f"{f' and {len(nowhere) - _LISTED} more' if nowhere[_LISTED:] else ''}.",
+        )
+
+
 def _of_extrapolation(asked: Asked, sourced: Sourced) -> Iterator[Note]:
     source = sourced.source
-    known = source.frequencies
-    outside = [f.label for f in asked.frequencies if not known[0] <= f <= known[-1]]
+    least, most = source.frequencies[0].variate, source.frequencies[-1].variate
+    outside = [f.label for f in asked.frequencies if not least - SLACK <= f.variate <= most + SLACK]
     longer = [duration_text(m) for m in asked.minutes if not source.shortest <= m <= source.longest]
     if asked.step < source.shortest and any(pattern.shape in OF_CURVES for pattern in asked.design.pattern):
         longer.insert(0, f"steps of {duration_text(asked.step)}")

@@ -24,7 +24,7 @@ from basinrain.design_sources import Sourced, interval_factors, sourced
 from basinrain.designstorm.areal_reduction import areal_reduction, outside_region
 from basinrain.designstorm.depth_chain import DepthChain, Links
 from basinrain.designstorm.design_storms import DesignStorm, PatternChoice, design_storm
-from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.errors import BasinRainError, JobError, MethodError, Problem
@@ -32,7 +32,7 @@ from basinrain.infill_choice import InfillChoice, choose_infill
 from basinrain.inputs import Inputs, read_basins_of, read_inputs
 from basinrain.job_parts import Report, basin_fields, choice_fact, refuse_settings
 from basinrain.jobfile import DesignJob, Job, read_design_job
-from basinrain.jobfile.design_tables import RECORD, minutes_of
+from basinrain.jobfile.design_tables import RECORD, RarityTable, minutes_of
 from basinrain.notes import once
 from basinrain.results_design import ComparedReduction, DesignRun
 
@@ -143,6 +143,7 @@ def run_design(
                     rarities=rarities,
                     record=record,
                     area_unit=job.job.area_unit,
+                    depth_unit=job.job.depth_unit,
                 ),
             ),
             (),
@@ -206,9 +207,8 @@ class _Given:
         if not self._of_storms:
             return None
         job, given = self._gauged()
-        table = self._wanted.design.rarity
-        average = job.averaging.methods[0] if table is None or table.average is None else table.average
-        return ObservedStorms(job, given, areas, self._infill_of_storms, average)
+        table = self._wanted.design.rarity or RarityTable()
+        return ObservedStorms(job, given, areas, self._infill_of_storms, table.average)
 
     def record_source(self, areas: Areas) -> RecordSource | None:
         if not self._of_record:
@@ -232,6 +232,7 @@ def _chain(
         source=depths.source,
         weights=depths.weights,
         areas=areas.basins.areas,
+        convert=design.depths.convert,
         extrapolate=design.depths.extrapolate,
         interval_factor=interval_factors(design.depths, None if record is None else record.step),
         uplift=1.0 if design.uplift is None else design.uplift.factor,
@@ -318,10 +319,9 @@ def _compared(chain: DepthChain, areas: Areas, wanted: Asked) -> tuple[ComparedR
             for frequency in wanted.frequencies:
                 for minutes in wanted.minutes:
                     key = (area.name, frequency, minutes)
-                    often = frequency.to(ANNUAL_MAXIMUM) if wanted.design.depths.convert else frequency
                     try:
                         factors[key] = float(
-                            method.reduce(size, np.array([float(minutes)]), often, **options).factor[0]
+                            method.reduce(size, np.array([float(minutes)]), frequency, **options).factor[0]
                         )
                     except MethodError as error:
                         reasons[key] = "; ".join(f"{p.found}, expected {p.expected}" for p in error.problems)

@@ -34,6 +34,7 @@ from basinrain.rainfall import RainRecord
 from basinrain.series.greatest_depths import greatest_depths
 from basinrain.series.steps import constant_step
 from basinrain.storms import Storm, storm_window
+from basinrain.tables import time_text
 
 __all__ = ["ObservedStorm", "ObservedStorms", "storm_rarities"]
 
@@ -42,6 +43,8 @@ Floats = npt.NDArray[np.float64]
 
 _NAMED: Final = 6
 """So many areas are named in a sentence."""
+
+_TIMES: Final = 4
 
 _DURATIONS: Final = (5, 10, 15, 30, 60, 120, 180, 360, 720, 1440, 2880, 4320, 7200, 14400)
 """Durations, in minutes, that are compared where the job names none."""
@@ -184,7 +187,18 @@ class ObservedStorms:
                     item=f"storm {name}",
                     found=f"no mean over {self.areas.names[row]} by '{self.average}' at any step",
                     expected="one at every step",
-                    remedy="choose another method in [design.rarity] average or [averaging] methods",
+                    remedy="choose another method in [design.rarity] average",
+                )
+            )
+        if without := [time_text(end, self.given.record.zone) for end in storm.window.ends[np.isnan(depth)]]:
+            more = f" and {len(without) - _TIMES} more" if len(without) > _TIMES else ""
+            raise JobError(
+                Problem(
+                    item=f"storm {name}",
+                    found=f"no gauge with a depth, infilled or its own, in the steps that end at "
+                    f"{', '.join(without[:_TIMES])}{more}",
+                    expected="a mean at every step",
+                    remedy="choose a storm without such gaps, or let [infill] fill longer ones",
                 )
             )
         try:
@@ -225,7 +239,7 @@ def storm_rarities(
     # Of what nobody named, only what the table has is looked at.
     within = (minutes >= present.source.shortest) & (minutes <= present.source.longest)
     minutes = minutes[within | np.isin(minutes, named or asked.minutes)]
-    frequencies = present.source.frequencies
+    frequencies = present.frequencies
     return tuple(
         _rarity(observed.storm(name), observed, present, minutes, frequencies, table_step=table_step) for name in names
     )

@@ -9,7 +9,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.areal_reduction import ExponentialCoefficients, Reduced, areal_reduction
 from basinrain.designstorm.depth_chain import Reducer
-from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.exceedance import Frequency
 from basinrain.errors import JobError, Problems
 from basinrain.jobfile import DesignJob, Job
 from basinrain.jobfile.design_tables import NO_REDUCTION, ArealReductionTable, DesignTable, minutes_of
@@ -36,12 +36,9 @@ def reducer(job: Job | DesignJob, design: DesignTable) -> Reducer | None:
         )
     method = areal_reduction(table.method)
     method.check_options(options)
-    convert = design.depths.convert
 
     def reduce(area: float, minutes: Floats, frequency: Frequency) -> Reduced:
-        # A method that goes by probability is asked by that of Langbein's relation, where the job allows it.
-        asked = frequency.to(ANNUAL_MAXIMUM) if convert and method.uses_frequency else frequency
-        return method.reduce(area, minutes, asked, outside=table.outside, **options)
+        return method.reduce(area, minutes, frequency, outside=table.outside, **options)
 
     return reduce
 

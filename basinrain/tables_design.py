@@ -182,7 +182,7 @@ def point_depths(run: DesignRun) -> pd.DataFrame:
     counts = np.flatnonzero((run.sourced.weights > 0).any(axis=0))
     rows = []
     for frequency in run.asked.frequencies:
-        depth = source.at(minutes, frequency, extrapolate=run.chain.extrapolate)
+        depth = run.chain.at(minutes, frequency)
         rows += [
             (
                 source.points[point],

@@ -112,18 +112,24 @@ def test_a_partial_duration_series_has_any_return_period_above_zero() -> None:
 
 
 def test_probabilities_of_a_partial_duration_series_need_leave() -> None:
-    """Aep beside such a series is refused unless convert brings it to return periods."""
-    changes = {"design__depths__series": PARTIAL_DURATION, "design__aep": [0.3934693], "design__return_periods": None}
+    """Aep beside such a series is refused unless convert allows it, which brings its return periods to AEP too."""
+    changes: dict[str, Any] = {
+        "design__depths__series": PARTIAL_DURATION,
+        "design__aep": [0.3934693],
+        "design__return_periods": None,
+    }
     message = (
         "[design] aep: found annual exceedance probabilities beside depths of a partial duration series; expected "
         "return_periods, which such a series has; write return_periods, or allow AEP = 1 - exp(-1/T) with "
         "[design.depths] convert = true"
     )
     assert refusal(**changes) == [message]
+    (as_asked,) = asked_of(**changes, design__depths__convert=True).frequencies
+    assert (as_asked.series, as_asked.written_aep) == (ANNUAL_MAXIMUM, 0.3934693)
+    changes |= {"design__aep": None, "design__return_periods": [2.0]}
     (converted,) = asked_of(**changes, design__depths__convert=True).frequencies
-    assert converted.series == PARTIAL_DURATION
     # 1 - exp(-1/2) = 0.3934693
-    assert converted.return_period == pytest.approx(2, rel=1e-6)
+    assert (converted.series, round(converted.aep, 7)) == (ANNUAL_MAXIMUM, 0.3934693)
 
 
 def test_one_of_aep_and_return_periods_is_given() -> None:

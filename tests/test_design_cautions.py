@@ -7,7 +7,7 @@ from typing import Any
 
 import pytest
 import shapely
-from design_jobs import US_REDUCTION, write_design_job
+from design_jobs import TWO_POINTS, US_REDUCTION, write_design_job
 
 from basinrain.design_cautions import DESIGN_CAUTION, climate_sentence
 from basinrain.design_job import run_design
@@ -108,25 +108,34 @@ def test_what_was_clamped_is_warned_of_with_its_area(tmp_path: Path) -> None:
 
 
 def test_probabilities_of_a_partial_duration_series_are_said_to_be_converted(tmp_path: Path) -> None:
-    """Only where the job asks by probability."""
-    series = {"design__depths__series": "partial-duration", "design__depths__convert": True}
+    """Only where the job allows it; every probability stands beside its return period of that series."""
+    series: dict[str, Any] = {"design__depths__series": "partial-duration"}
     assert "series-converted" not in notes_of(tmp_path / "a", **series)
-    (note,) = notes_of(tmp_path / "b", **series, design__return_periods=None, design__aep=0.1)["series-converted"]
-    assert note.level == "info"
-    # -1 / ln(1 - 0.1) = 9.491
-    assert "AEP = 1 - exp(-1/T) (Langbein 1949): AEP 0.1 is 9.491 years." in note.text
+    series |= {"design__depths__convert": True}
+    # 1 - exp(-1/10) = 0.09516; -1 / ln(1 - 0.1) = 9.491
+    for changes, words in (
+        ({}, "AEP 0.09516 (1 in 10.51) is 10 years."),
+        ({"design__return_periods": None, "design__aep": 0.1}, "AEP 0.1 (1 in 10) is 9.491 years."),
+    ):
+        (note,) = notes_of(tmp_path / words[4:9], **series, **changes)["series-converted"]
+        assert note.level == "info"
+        assert note.text.endswith(f"AEP = 1 - exp(-1/T) (Langbein 1949): {words}")
 
 
-def test_a_reduction_by_probability_of_a_partial_duration_series_is_said(tmp_path: Path) -> None:
-    """1 - exp(-1/10) = 0.09516 is the probability that the Australian factors go by."""
-    changes = {
-        "design__depths__series": "partial-duration",
-        "design__depths__convert": True,
-        "design__jurisdiction": "Australia",
-        "design__areal_reduction": {"method": "arr-2019", "region": "Tasmania"},
-    }
-    (note,) = notes_of(tmp_path, **changes)["series-converted"]
-    assert note.text.endswith("AEP = 1 - exp(-1/T) (Langbein 1949): AEP 0.09516 is 10 years.")
+def test_depths_over_all_that_were_ever_measured_are_warned_of(tmp_path: Path) -> None:
+    """A table in mm that is declared to be in inches has 60 x 25.4 = 1524 mm in 6 h; 422 x 6^0.475 = 988 (memory)."""
+    (note,) = notes_of(tmp_path / "in", design__depths__unit="in")["beyond-envelope"]
+    assert note.level == "warning"
+    assert "union, 6 h: 1524 mm. Check unit and duration_unit." in note.text
+    assert "beyond-envelope" not in notes_of(tmp_path / "mm")
+
+
+def test_points_that_count_nowhere_are_named(tmp_path: Path) -> None:
+    """A third point 40 km north of the squares has no part of them by Thiessen."""
+    third = TWO_POINTS.replace("west", "far").replace("2500,5000", "5000,50000").split("\n")[1:3]
+    depths = TWO_POINTS + "\n".join(third) + "\n"
+    (note,) = notes_of(tmp_path, unit="km", depths=depths, design__depths__crs="local")["points-not-counted"]
+    assert note.text == "Depth points that count in no area: far."
 
 
 def test_a_depth_that_falls_with_duration_is_warned_of(tmp_path: Path) -> None:

@@ -344,7 +344,7 @@ def test_the_observed_pattern_is_that_of_the_largest_area(tmp_path: Path) -> Non
             (*ALDER[:3], np.nan, *ALDER[4:]),
             (*BIRCH[:3], np.nan, *BIRCH[4:]),
             "thiessen",
-            "storm Quill, step 4: found no depth; expected a depth of 0 or more; infill it, ",
+            "storm Quill: found no gauge with a depth, infilled or its own, in the steps that end at ",
         ),
     ],
     ids=["dry", "gap"],
@@ -367,14 +367,14 @@ def test_an_area_that_the_method_has_no_mean_of_has_no_pattern(tmp_path: Path) -
         interval="1h",
         gauges=outside,
         storm=QUILL,
-        averaging={"methods": ["arithmetic"]},
+        design__rarity={"average": "arithmetic"},
         design__depths=design_tables()["design"]["depths"],
         design__durations=["6h"],
         design__pattern=OBSERVED,
     )
     text = (
         "storm Quill: found no mean over union by 'arithmetic' at any step; expected one at every step; choose another "
-        "method in [design.rarity] average or [averaging] methods"
+        "method in [design.rarity] average"
     )
     with pytest.raises(JobError, match=f"^{re.escape(text)}$"):
         run_design(place)

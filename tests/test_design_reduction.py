@@ -58,21 +58,15 @@ def test_a_region_is_handed_on() -> None:
     assert factors(1e8, method="arr-2019", region="Tasmania") == pytest.approx(expected.tolist())
 
 
-def test_a_partial_duration_series_is_reduced_by_its_probability_where_the_job_allows_it() -> None:
-    """Two years of it are AEP 0.3935 by Langbein's relation; without convert the method is refused."""
-    two = Frequency(2.0, PARTIAL_DURATION)
+def test_a_partial_duration_series_has_no_probability_to_reduce_by() -> None:
+    """The Australian factors go by AEP: a return period of another series is refused, and convert named."""
     asked: dict[str, Any] = {"design__areal_reduction": {"method": "arr-2019", "region": "Tasmania"}}
-    for convert in (True, False):
-        job = parse_design_job(design_tables(**asked, design__depths__convert=convert), folder=Path())
-        assert job.design is not None
-        reduce = reducer(job, job.design)
-        assert reduce is not None
-        if convert:
-            expected = arr_2019(1e8, HOURS, aep=1 - np.exp(-0.5), region="Tasmania")
-            np.testing.assert_allclose(reduce(1e8, HOURS, two).factor, expected, rtol=1e-12)
-        else:
-            with pytest.raises(MethodError, match=r"found 2 years of a partial duration series.*convert = true"):
-                reduce(1e8, HOURS, two)
+    job = parse_design_job(design_tables(**asked), folder=Path())
+    assert job.design is not None
+    reduce = reducer(job, job.design)
+    assert reduce is not None
+    with pytest.raises(MethodError, match=r"found 2 years of a partial duration series.*convert = true"):
+        reduce(1e8, HOURS, Frequency(2.0, PARTIAL_DURATION))
 
 
 def test_coefficients_of_the_job() -> None:

@@ -43,12 +43,12 @@ def test_return_periods_of_a_partial_duration_series_are_no_probabilities(tmp_pa
 
 
 def test_probabilities_of_a_partial_duration_series_are_brought_over_if_the_job_says_so(tmp_path: Path) -> None:
-    """AEP 0.1 is T = -1 / ln 0.9 = 9.49 years (Langbein 1949); the depth is under that of 10 years, and it is said."""
+    """AEP 0.1 is T = -1 / ln 0.9 = 9.49 years of it (Langbein 1949): under the depth of 10 years, and said."""
     asked = {"design__return_periods": None, "design__aep": 0.1}
     found = run(tmp_path / "yes", design__depths=PARTIAL | {"convert": True}, **asked)
     years = -1 / np.log(0.9)
     (row,) = found.design_depths.to_dict("records")
-    assert row["return_period"] == pytest.approx(years, rel=1e-9)
+    assert (row["aep"], row["return_period"], row["return_period_in"]) == (0.1, 10, "annual-maximum")
     # The reduced variate of a partial duration series is ln T.
     assert row["point_depth"] == pytest.approx(40 + 20 * np.log(years / 2) / np.log(5), rel=1e-9)
     assert "series-converted" in {note.code for note in found.notes}

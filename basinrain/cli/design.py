@@ -50,8 +50,9 @@ def _show_depths(run: DesignRun) -> None:
     whose = "basin" if any(area.basin for area in run.reduced) else "point of interest"
     for heading in (whose, "how often", "duration"):
         table.add_column(heading, no_wrap=True)
-    first = "depth of record" if run.sourced.source.areal else "point depth"
-    for heading in (first, "uplift", "reduction", f"areal depth {run.depth_unit}"):
+    areal = run.sourced.source.areal
+    factors = ("depth of record", "uplift") if areal else ("point depth", "uplift", "reduction")
+    for heading in (*factors, f"areal depth {run.depth_unit}"):
         table.add_column(heading, justify="right")
     rows = [
         (area, frequency, links, d)
@@ -70,7 +71,7 @@ def _show_depths(run: DesignRun) -> None:
             duration_text(links.minutes[d]),
             number_text(links.point[d] * links.interval_factor[d] / mm, digits),
             number_text(links.uplift, 2),
-            number_text(links.reduction[d], 3),
+            *(() if areal else (number_text(links.reduction[d], 3),)),
             number_text(links.areal[d] / mm, digits),
         )
         last = name

@@ -10,7 +10,7 @@ import numpy.typing as npt
 
 from basinrain.designstorm.areal_reduction.reduction import Reduced
 from basinrain.designstorm.depth_source import Curve, DepthSource
-from basinrain.designstorm.exceedance import Frequency
+from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.errors import MethodError, Problem
 
 __all__ = ["CurvePair", "DepthChain", "Links", "Reducer"]
@@ -76,6 +76,8 @@ class DepthChain:
         The weight of every point of the source in every area.
     areas : array of float, shape (n_areas,)
         m².
+    convert : bool
+        Whether frequencies are counted in an annual maximum series, and brought to the source's by Langbein's relation.
     extrapolate : bool
         Whether the source may go on beyond what it knows.
     interval_factor : callable, optional
@@ -113,6 +115,7 @@ class DepthChain:
     source: DepthSource
     weights: Floats
     areas: Floats
+    convert: bool = False
     extrapolate: bool = False
     interval_factor: Callable[[Floats], Floats] | None = None
     uplift: float = 1.0
@@ -128,6 +131,23 @@ class DepthChain:
                     remedy='take the table out, or write method = "none"',
                 )
             )
+
+    @property
+    def frequencies(self) -> tuple[Frequency, ...]:
+        """Those that the source knows without interpolation, counted as they are asked for."""
+        known = self.source.frequencies
+        return tuple(each.to(ANNUAL_MAXIMUM) for each in known) if self.convert else known
+
+    def at(self, minutes: Floats, frequency: Frequency) -> Floats:
+        """Return depths of the points, mm, shape (n_points, n).
+
+        Raises
+        ------
+        MethodError
+            The source has no answer.
+        """
+        asked = frequency.to(self.source.series) if self.convert else frequency
+        return self.source.at(np.asarray(minutes, dtype=float), asked, extrapolate=self.extrapolate)
 
     def links(self, area: int, minutes: Floats, frequency: Frequency, *, reduced_as: int | None = None) -> Links:
         """Return every link from the points' depths to the areal depth.
@@ -149,7 +169,7 @@ class DepthChain:
             The source or the reduction has no answer.
         """
         asked = np.asarray(minutes, dtype=float)
-        point = self.weights[area] @ self.source.at(asked, frequency, extrapolate=self.extrapolate)
+        point = self.weights[area] @ self.at(asked, frequency)
         ones = np.ones(len(asked))
         size = float(self.areas[area if reduced_as is None else reduced_as])
         reduced = None if self.reduce is None else self.reduce(size, asked, frequency)
@@ -173,7 +193,7 @@ class DepthChain:
             The source has no answer.
         """
         asked = np.asarray(minutes, dtype=float)
-        depth: Floats = self.weights[list(rows)] @ self.source.at(asked, frequency, extrapolate=self.extrapolate)
+        depth: Floats = self.weights[list(rows)] @ self.at(asked, frequency)
         factor = 1.0 if self.interval_factor is None else self.interval_factor(asked)
         return depth * factor * self.uplift
 

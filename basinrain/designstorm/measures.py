@@ -37,7 +37,11 @@ INTENSITY_UNITS: Final = tuple(f"{unit}{_PER_HOUR}" for unit in DEPTH_UNITS if u
 UNITS: Final = (*DEPTH_UNITS, *INTENSITY_UNITS)
 """Units of the values of a table of depths; per hour means intensity."""
 
-_WORD: Final = re.compile(r"(?P<number>[0-9]+\.?[0-9]*|\.[0-9]+)\s*(?P<unit>min|h|d)?")
+_WORD: Final = re.compile(
+    r"(?P<number>[0-9]+\.?[0-9]*|\.[0-9]+)[\s-]*"
+    r"(?:(?P<min>min(?:s|utes?)?)|(?P<h>h(?:rs?|ours?)?)|(?P<d>d(?:ays?)?))?\.?"
+)
+"""Durations as people write them in files: 1h, 1 hr, 24 hours, 24-hour, 15 mins., 2 days."""
 
 
 def duration_words(minutes: float) -> str:
@@ -81,7 +85,8 @@ def parse_duration(text: str, *, unit: str | None = None) -> float:
     Parameters
     ----------
     text
-        A number with ``min``, ``h`` or ``d``, capitals or not; a number alone where ``unit`` is given.
+        A number with ``min``, ``h`` or ``d``, or with the word that it stands for, capitals or not; a number alone
+        where ``unit`` is given.
     unit
         The unit of a number alone, one of :data:`DURATION_UNITS`.
 
@@ -97,8 +102,8 @@ def parse_duration(text: str, *, unit: str | None = None) -> float:
 
     Examples
     --------
-    >>> parse_duration("24h"), parse_duration("1.5 h"), parse_duration("45", unit="min")
-    (1440.0, 90.0, 45.0)
+    >>> parse_duration("24h"), parse_duration("1.5 hours"), parse_duration("2-day"), parse_duration("45", unit="min")
+    (1440.0, 90.0, 2880.0, 45.0)
     >>> parse_duration("45")
     Traceback (most recent call last):
         ...
@@ -106,7 +111,7 @@ def parse_duration(text: str, *, unit: str | None = None) -> float:
 write the unit, or declare duration_unit
     """
     match = _WORD.fullmatch(text.strip().lower())
-    own = match["unit"] if match else None
+    own = next((word for word in DURATION_UNITS if match and match[word]), None)
     if match and (own or unit) and (minutes := float(match["number"]) * DURATION_UNITS[own or str(unit)]) > 0:
         return minutes
     bare = match is not None and float(match["number"]) > 0

@@ -234,7 +234,7 @@ class RarityTable(Table):
     """``[design.rarity]``: how rare storms of the record were over the areas of the design."""
 
     storms: Names = ()
-    average: Annotated[str, one_of(averaging.METHODS)] | None = None
+    average: Annotated[str, one_of(averaging.METHODS)] = "thiessen"
     durations: SomeDurations = ()
 
 

@@ -33,7 +33,7 @@ def point_sentences(run: DesignRun) -> list[str]:
         known = set(source.durations.tolist())
         how = f"interpolated{' or extrapolated' if table.extrapolate else ''}"
         between = [duration_text(m) for m in run.asked.minutes if float(m) not in known]
-        often = [f.label for f in run.asked.frequencies if not _tabulated(f, source.frequencies)]
+        often = [f.label for f in run.asked.frequencies if not _tabulated(f, run.chain.frequencies)]
         if between or often:
             words = design_shown.cut([*between, *often], design_shown.AREAS)
             sentences.append(f"Not tabulated, so {how}: {words}.")
@@ -74,7 +74,7 @@ def depths_table(run: DesignRun) -> Table:
     source, mm = run.sourced.source, depth_factor(run.depth_unit)
     shown, minutes, often = _shown(run), design_shown.durations(run), design_shown.frequencies(run)
     at = np.array(minutes, dtype=float)
-    depths = np.array([source.at(at, f, extrapolate=run.chain.extrapolate)[shown] for f in often]) / mm
+    depths = np.array([run.chain.at(at, f)[shown] for f in often]) / mm
     rows: list[Row] = [
         (
             source.points[point],

@@ -13,7 +13,10 @@ from basinrain.errors import JobError
 
 @pytest.mark.parametrize(
     ("text", "minutes"),
-    [("15min", 15), ("1h", 60), ("24 h", 1440), ("2d", 2880), ("1.5H", 90), (" .5h ", 30), ("7.5 min", 7.5)],
+    [
+        *[("15min", 15), ("1h", 60), ("24 h", 1440), ("2d", 2880), ("1.5H", 90), (" .5h ", 30), ("7.5 min", 7.5)],
+        *[("1 hr", 60), ("24 hours", 1440), ("24-hour", 1440), ("15 mins.", 15), ("3 days", 4320), ("1 minute", 1)],
+    ],
 )
 def test_durations(text: str, minutes: float) -> None:
     """A number with its unit, in capitals or not, with a space or not."""

@@ -53,7 +53,8 @@ def check_jurisdiction(method: ArealReduction, jurisdiction: str | None) -> None
         ...
     basinrain.errors.JobError: [design] jurisdiction: found 'Australia' beside [design.areal_reduction] method = \
 'keers-wescott'; expected the region that it is for, the United Kingdom ('united kingdom', 'great britain' or 'uk'); \
-for Australia: arr-2019, exponential, table; [design.areal_reduction] compare shows others beside it
+write 'united kingdom' for a place within it; for Australia: \
+arr-2019, exponential, table; [design.areal_reduction] compare shows others beside it
     """
     if not outside_region(method, jurisdiction):
         return
@@ -63,7 +64,7 @@ for Australia: arr-2019, exponential, table; [design.areal_reduction] compare sh
     else:
         found = f"'{jurisdiction}'"
         fitting = [name for name, other in REDUCTIONS.items() if not outside_region(other, jurisdiction)]
-        remedy = f"for {jurisdiction}: {', '.join(fitting)}"
+        remedy = f"write {words[0]} for a place within it; for {jurisdiction}: {', '.join(fitting)}"
     raise JobError(
         Problem(
             item="[design] jurisdiction",

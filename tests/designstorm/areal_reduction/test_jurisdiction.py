@@ -53,7 +53,8 @@ def test_another_jurisdiction_is_refused() -> None:
     assert str(refused.value) == (
         "[design] jurisdiction: found 'Australia' beside [design.areal_reduction] method = 'leclerc-schaake'; expected"
         " the region that it is for, the United States ('united states', 'united states of america', 'us' or 'usa');"
-        " for Australia: arr-2019, exponential, table; [design.areal_reduction] compare shows others beside it"
+        " write 'united states' for a place within it; for Australia: arr-2019, exponential, table;"
+        " [design.areal_reduction] compare shows others beside it"
     )
     with pytest.raises(JobError, match=r"found 'Italy' .*; for Italy: exponential, table; "):
         check_jurisdiction(areal_reduction("keers-wescott"), "Italy")
