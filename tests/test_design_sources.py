@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 import pytest
 import shapely
-from design_jobs import TWO_POINTS, write_design_job
+from design_jobs import DEPTHS, TWO_POINTS, write_design_job
 from drawn import gauges_at
 from rasterfiles import write_asc
 
@@ -17,6 +17,7 @@ from basinrain.design_areas import areas_of
 from basinrain.design_asked import asked
 from basinrain.design_job import run_design
 from basinrain.design_sources import Sourced, interval_factors, nearest_points, sourced
+from basinrain.designstorm.areal_reduction import REDUCTIONS
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.errors import DataError, JobError, MethodError, ReadError
 from basinrain.inputs import read_basins_of
@@ -316,3 +317,22 @@ def test_an_equation_that_cannot_be(tmp_path: Path) -> None:
     wrong = {**EQUATION, "coefficients": [{"a": 2000}, {"a": -3000, "b": 40}]}
     with pytest.raises(JobError, match=r"\[design.depths\] coefficients"):
         sourced_of(tmp_path, design__depths=wrong)
+
+
+def test_converted_return_periods_are_reduced_by_their_probability(tmp_path: Path) -> None:
+    """Two years of a partial duration series are AEP 0.3935 (Langbein 1949), and the Australian factor is that of it."""
+    job = write_design_job(
+        tmp_path,
+        unit="km",
+        depths=DEPTHS,
+        design__jurisdiction="Australia",
+        design__return_periods=[2],
+        design__depths__series="partial-duration",
+        design__depths__convert=True,
+        design__areal_reduction={"method": "arr-2019", "region": "Tasmania"},
+    )
+    (row,) = run_design(job).design_depths.to_dict("records")
+    aep = -np.expm1(-0.5)
+    assert (row["aep"], row["point_depth"]) == (pytest.approx(aep), pytest.approx(40))
+    factor = REDUCTIONS["arr-2019"].reduce(1e8, np.array([360.0]), Frequency.of_aep(aep), region="Tasmania").factor
+    assert row["reduction"] == pytest.approx(factor.item(), rel=1e-12)
