@@ -320,7 +320,7 @@ def test_an_equation_that_cannot_be(tmp_path: Path) -> None:
 
 
 def test_converted_return_periods_are_reduced_by_their_probability(tmp_path: Path) -> None:
-    """Two years of a partial duration series are AEP 0.3935 (Langbein 1949), and the Australian factor is that of it."""
+    """Two years of a partial duration series are AEP 0.3935 (Langbein 1949); the Australian factor goes by it."""
     job = write_design_job(
         tmp_path,
         unit="km",

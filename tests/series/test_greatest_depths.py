@@ -162,6 +162,18 @@ def test_what_is_published_of_fixed_intervals() -> None:
     assert instant == [60.0] * 60
 
 
+def test_a_published_storm_by_quarter_hours() -> None:
+    """Punmia, Irrigation and Water Power Engineering, ex. 4.7 and 4.8 (inputs and answers seen): mm/h by duration."""
+    cumulative = [0, 12.4, 22.1, 35.1, 52.7, 63.7, 81.9, 109.2, 123.5, 132.6, 143.3, 146, 146]
+    starts, ends = steps(12, step=np.timedelta64(15, "m"))
+    minutes = [15, 30, 45, 60, 90, 120]
+    found = greatest_depths(
+        starts, ends, np.diff(cumulative), durations=[np.timedelta64(each, "m") for each in minutes]
+    )
+    printed = [109.2, 91.0, 79.7, 74.1, 67.6, 61.75]
+    np.testing.assert_allclose(found.sliding.depth / np.array(minutes) * 60, printed, atol=0.05)
+
+
 def test_all_bad_durations_together() -> None:
     """Of three durations the two that are no whole number of hours are named; none at all is refused as well."""
     with pytest.raises(JobError, match=r"duration 90min: found steps of 1h.*\nduration 10min: found steps of 1h"):

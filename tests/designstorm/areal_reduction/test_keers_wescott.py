@@ -106,3 +106,12 @@ def test_rows_join_without_a_rise(km2: float, minutes: float) -> None:
     below, at, above = keers_wescott(np.array([km2 * (1 - 1e-12), km2, km2 * (1 + 1e-12)]) * KM2, minutes)
     assert at <= below + 1e-5
     assert above <= at + 1e-5
+
+
+def test_another_fit_to_the_same_table() -> None:
+    """From half an hour on within 0.0185 of max(1 - .048 A^(.36-.01 ln A) / d^.35, .25), Koutsoyiannis (memory)."""
+    rows = [row for row in ROWS if row["duration_h"] >= 0.5]
+    area, hours = (np.array([row[key] for row in rows]) for key in ("area_km2", "duration_h"))
+    other = np.maximum(1 - 0.048 * area ** (0.36 - 0.01 * np.log(area)) / hours**0.35, 0.25)
+    np.testing.assert_allclose(other, [row["koutsoyiannis_fit_from_memory"] for row in rows], atol=5.01e-5)
+    np.testing.assert_allclose(keers_wescott(area * KM2, hours * 60), other, atol=0.0185)
