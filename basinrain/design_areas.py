@@ -37,20 +37,20 @@ class Areas:
 
     def reduced(self, design: DesignTable) -> tuple[ReducedArea, ...]:
         """Return the areas whose chain of depths is shown, and by which the areal reduction goes."""
-        if design.areal_reduction is None or design.areal_reduction.area != "own":
+        if not design.own_area:
             return tuple(ReducedArea(point.name, point.name, "", point.row, point.row) for point in self.points)
         own = design.sub_basins == OWN_DEPTH
         return tuple(
-            ReducedArea(
-                point.part(basin),
-                point.name,
-                basin,
-                row if own else point.row,
-                row,
-            )
+            ReducedArea(point.part(basin), point.name, basin, row if own else point.row, row)
             for point in self.points
             for basin, row in zip(point.basins, point.rows, strict=True)
         )
+
+    @property
+    def rows_apart(self) -> list[int]:
+        """Rows of the points of interest, and of basins other than a point's only one: no area twice."""
+        alone = {point.rows[0] for point in self.points if len(point.rows) == 1} - {point.row for point in self.points}
+        return [row for row in range(len(self.names)) if row not in alone]
 
     @property
     def names(self) -> tuple[str, ...]:

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 from datetime import datetime
 from functools import partial
 from itertools import pairwise
-from typing import Any
+from typing import TypeVar
 
 import numpy as np
 
@@ -33,6 +34,8 @@ from basinrain.jobfile.fields import is_month
 from basinrain.jobfile.tables import AveragingTable
 
 __all__ = ["Asked", "asked"]
+
+_T = TypeVar("_T")
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -180,8 +183,8 @@ def _frequencies(design: DesignTable, series: str, problems: Problems) -> tuple[
     return tuple(sorted(found))
 
 
-def _named(item: str, work: Any, problems: Problems) -> Any:  # noqa: ANN401 - what work gives
-    """Do work, and keep what it complains of under the name of a key."""
+def _named(item: str, work: Callable[[], _T], problems: Problems) -> _T | None:
+    """Do work, and keep what it complains of under the name of a key; None then."""
     try:
         return work()
     except JobError as error:

@@ -19,6 +19,7 @@ from basinrain.designstorm.depth_chain import Links
 from basinrain.designstorm.design_storms import DesignStorm
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, Frequency
 from basinrain.designstorm.measures import duration_text
+from basinrain.designstorm.patterns import PATTERNS
 from basinrain.designstorm.reach import SLACK
 from basinrain.designstorm.storm_depths import StormRarity
 from basinrain.jobfile.design_tables import NO_REDUCTION, UpliftTable
@@ -26,16 +27,13 @@ from basinrain.notes import Note
 from basinrain.screening.envelope import world_depth
 from basinrain.units import area_factor, depth_factor
 
-__all__ = ["DESIGN_CAUTION", "OF_CURVES", "climate_sentence", "design_cautions"]
+__all__ = ["DESIGN_CAUTION", "climate_sentence", "design_cautions"]
 
 DESIGN_CAUTION: Final = (
     "Inputs for the judgement of a licensed engineer, not a design. Local criteria govern: which depths, areal "
     "reduction, duration, pattern and probability apply is theirs to say. A design storm is no storm that has fallen, "
     "and the probability of its depth is not that of the flood it causes."
 )
-
-OF_CURVES: Final = frozenset({"alternating-block", "chicago", "nested"})
-"""Shapes that ask for depths of durations down to a step."""
 
 _LISTED: Final = 5
 
@@ -147,7 +145,7 @@ def _of_reduction(
         yield Note(code="reduction-evidence", level="info", text=f"{method.title}: {method.evidence}")
     for text in dict.fromkeys(remark for found in links.values() for remark in found.remarks):
         yield Note(code="areal-reduction", level="info", text=text)
-    if table.area == "own":
+    if asked.design.own_area:
         yield Note(
             code="own-area",
             text="Each basin's depth is reduced by its own area, since the job says so: together they are more rain "
@@ -207,7 +205,7 @@ def _of_extrapolation(asked: Asked, sourced: Sourced) -> Iterator[Note]:
     least, most = source.frequencies[0].variate, source.frequencies[-1].variate
     outside = [f.label for f in asked.frequencies if not least - SLACK <= f.variate <= most + SLACK]
     longer = [duration_text(m) for m in asked.minutes if not source.shortest <= m <= source.longest]
-    if asked.step < source.shortest and any(pattern.shape in OF_CURVES for pattern in asked.design.pattern):
+    if asked.step < source.shortest and any(PATTERNS[table.shape].by_curve for table in asked.design.pattern):
         longer.insert(0, f"steps of {duration_text(asked.step)}")
     if outside or longer:
         yield Note(

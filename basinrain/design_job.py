@@ -7,7 +7,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import replace
 from functools import cached_property, partial
 from pathlib import Path
-from typing import Any
+from typing import Any, NoReturn
 
 import numpy as np
 
@@ -282,7 +282,6 @@ def _storms(
     chain: DepthChain, areas: Areas, wanted: Asked, choices: Sequence[PatternChoice]
 ) -> tuple[DesignStorm, ...]:
     design = wanted.design
-    own_area = design.areal_reduction is not None and design.areal_reduction.area == "own"
     cases, storms = _Cases(), []
     for point in areas.points:
         for frequency in wanted.frequencies:
@@ -299,7 +298,7 @@ def _storms(
                         minutes=minutes,
                         step=wanted.step,
                         sub_basins=design.sub_basins,
-                        own_area=own_area,
+                        own_area=design.own_area,
                     )
                     case = (point.name, frequency.label, duration_text(minutes), choice.label)
                     storms.append(cases.attempt(case, work))
@@ -310,10 +309,12 @@ def _storms(
 def _compared(chain: DepthChain, areas: Areas, wanted: Asked) -> tuple[ComparedReduction, ...]:
     """Return the areal reductions that are shown beside; one without an answer says why."""
     table = wanted.design.areal_reduction
+    if table is None:
+        return ()
     result = []
-    for name in () if table is None else table.compare:
+    for name in table.compare:
         method, factors, reasons = areal_reduction(name), {}, {}
-        options = {} if table is None else stated_options(name, table)
+        options = stated_options(name, table)
         for area in areas.reduced(wanted.design):
             size = float(chain.areas[area.reduced_as])
             for frequency in wanted.frequencies:
@@ -333,5 +334,5 @@ def _compared(chain: DepthChain, areas: Areas, wanted: Asked) -> tuple[ComparedR
     return tuple(result)
 
 
-def _no_storms(name: str) -> Any:  # noqa: ANN401 - never gives anything
+def _no_storms(name: str) -> NoReturn:
     raise JobError(Problem(item=f"storm {name}", found="a job without gauges", expected="a job with a record"))

@@ -265,7 +265,7 @@ def _rarity(
                 remedy="widen the storm's window, or give depths of longer durations",
             )
         )
-    rows = _rows_apart(observed.areas)
+    rows = observed.areas.rows_apart
     names = tuple(observed.areas.names[row] for row in rows)
     ladder = _ladder(chain, rows, minutes, frequencies)
     means = storm.means
@@ -283,12 +283,6 @@ def _rarity(
         table_step=table_step,
     )
     return replace(found, clamped=_clamped(chain, rows, names, minutes[fit], frequencies))
-
-
-def _rows_apart(areas: Areas) -> list[int]:
-    """Return the rows of the points of interest, and those of basins that are not a point's only one."""
-    alone = {point.rows[0] for point in areas.points if len(point.rows) == 1} - {point.row for point in areas.points}
-    return [row for row in range(len(areas.names)) if row not in alone]
 
 
 def _depths(

@@ -26,7 +26,7 @@ from basinrain.series.greatest_depths import annual_maxima
 from basinrain.series.steps import constant_step, year_starts
 from basinrain.series_inputs import held_inputs
 
-__all__ = ["RecordSource", "record_source"]
+__all__ = ["SEASON_SHARE", "RecordSource", "record_source"]
 
 Bools = npt.NDArray[np.bool_]
 Floats = npt.NDArray[np.float64]
@@ -79,7 +79,8 @@ def record_source(job: Job, asked: Asked, given: Inputs, areas: Basins, *, infil
     """Return areal depths by duration and frequency from annual maxima of a job's record.
 
     The mean of an area is taken with the weights of one network throughout: a step at which one of its gauges has no
-    depth even after infill has no number. A year counts where 90 % of the steps of its wet season have one.
+    depth even after infill has no number. A year counts where :data:`SEASON_SHARE` of the steps of its wet season have
+    one.
 
     Parameters
     ----------
@@ -272,7 +273,10 @@ def _notes(
     for area, name in enumerate(names):
         short = years[share[:, area] < SEASON_SHARE]
         if len(short):
-            text = f"{len(short)} of {len(years)} years do not count, less than 90 % of their wet season having a depth"
+            least = f"{100 * SEASON_SHARE:.0f} %"
+            text = (
+                f"{len(short)} of {len(years)} years do not count, less than {least} of their wet season having a depth"
+            )
             alike.setdefault(f"{text}: {', '.join(str(year) for year in short)}.", []).append(name)
     notes += [
         Note(code="years-not-counted", level="info", text=f"{', '.join(where)}: {text}")

@@ -7,7 +7,7 @@ from typing import Any, Final
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.areal_reduction import ExponentialCoefficients, Reduced, areal_reduction
+from basinrain.designstorm.areal_reduction import REDUCTIONS, ExponentialCoefficients, Reduced, areal_reduction
 from basinrain.designstorm.depth_chain import Reducer
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.errors import JobError, Problems
@@ -20,7 +20,7 @@ __all__ = ["COMPARABLE", "reducer", "stated_options"]
 
 Floats = npt.NDArray[np.float64]
 
-COMPARABLE: Final = ("leclerc-schaake", "keers-wescott", "arr-2019")
+COMPARABLE: Final = tuple(name for name, method in REDUCTIONS.items() if method.jurisdiction)
 """Published reductions, which can be shown beside another; the others are a job's own."""
 
 

@@ -52,7 +52,7 @@ _RARITY = (
 )
 _FITS = (
     f"area_of duration distribution taken years location scale shape {_HOW_OFTEN} fitted depth lower_90 upper_90 "
-    "depth_unit plot_correlation p_value"
+    "depth_unit plot_correlation p_value l_skewness l_skewness_error"
 )
 _MAXIMA = "area_of duration year season_share depth depth_unit"
 
@@ -304,6 +304,8 @@ def record_fits(run: DesignRun) -> pd.DataFrame:
                         run.depth_unit,
                         fit.goodness.correlation[at],
                         fit.goodness.p_value[at],
+                        found.moments.ratio[at],
+                        fit.ratio_error[at],
                     )
                     for f, frequency in enumerate(found.depths.frequencies)
                 ]

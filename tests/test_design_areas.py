@@ -90,6 +90,16 @@ def test_a_point_may_be_called_as_its_only_basin() -> None:
         areas(QUARTERS, ("nw", ["nw", "ne"]))
 
 
+def test_a_points_only_basin_is_no_area_of_its_own() -> None:
+    """The point stands for it, whether it has the basin's name or another; the only basin stands for itself."""
+    for found, names in [
+        (areas(QUARTERS, ("ford", ["nw"]), ("mouth", ["nw", "ne"])), ["ford", "mouth", "ne"]),
+        (areas(QUARTERS, ("nw", ["nw"]), ("mouth", ["nw", "ne"])), ["nw", "mouth", "ne"]),
+        (areas({"only": shapely.box(0, 0, 5, 5)}), ["only"]),
+    ]:
+        assert [found.names[row] for row in found.rows_apart] == names
+
+
 def test_unknown_basins_are_all_named() -> None:
     """Every basin that there is not is told with the nearest; the union is none."""
     with pytest.raises(JobError, match="basins") as caught:

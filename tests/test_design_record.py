@@ -117,6 +117,10 @@ def test_the_generalised_distribution_is_that_of_its_published_formulas(tmp_path
     assert row["shape"] == pytest.approx(7.8590 * at + 2.9554 * at**2, abs=9e-4)
     wanted = scipy.stats.genextreme(row["shape"], loc=row["location"], scale=row["scale"])
     assert row["fitted"] == pytest.approx(wanted.isf(0.1), rel=1e-9)
+    assert row["l_skewness"] == pytest.approx(ratio, rel=1e-9)
+    # The spread of samples as long as the record: scipy's draws of the fit, far fewer than make the digits agree.
+    samples = scipy.stats.lmoment(wanted.rvs((15, 20_000), random_state=np.random.default_rng(3)), order=[3], axis=0)
+    assert row["l_skewness_error"] == pytest.approx(float(samples.std()), rel=0.1)
     assert wanted.mean() == pytest.approx(mean, rel=1e-6)
 
 

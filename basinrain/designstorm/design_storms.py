@@ -141,6 +141,10 @@ def design_storm(
         Whether each basin's depth is reduced by its own area rather than by that of all basins above the point. The
         depths then belong to no one storm over the whole, and are said so.
 
+    Returns
+    -------
+    DesignStorm
+
     Raises
     ------
     MethodError

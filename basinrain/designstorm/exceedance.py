@@ -155,6 +155,18 @@ write 0.02 for 2 %
             return f"AEP {self.aep:.4g} (1 in {self.return_period:.4g})"
         return f"{self.return_period:.4g}-year, partial duration"
 
+    @property
+    def short_label(self) -> str:
+        """The frequency in as few letters as can be, where another place says what it is counted in.
+
+        Examples
+        --------
+        >>> Frequency.of_aep(0.01).short_label, Frequency(2.0, "partial-duration").short_label
+        ('1 in 100', '2-year')
+        """
+        years = f"{self.return_period:.4g}"
+        return f"1 in {years}" if self.series == ANNUAL_MAXIMUM else f"{years}-year"
+
 
 def _written(value: float) -> float:
     return float(f"{value:.12g}")

@@ -111,6 +111,11 @@ def fit_gumbel(moments: LMoments) -> ExtremeValues:
     moments
         Where the scale is 0, so is that of the distribution, and all its values are the mean.
 
+    Returns
+    -------
+    ExtremeValues
+        Arrays of the shape of the moments; NaN where these are.
+
     Notes
     -----
     Scale ``l2 / ln 2``, location ``l1 - 0.5772 scale`` (Hosking and Wallis, 1997, appendix A.4).
@@ -139,6 +144,11 @@ def fit_gev(moments: LMoments) -> ExtremeValues:
     ----------
     moments
         Where the values are all equal, or L-skewness is 1 or -1, no distribution has these moments: NaN.
+
+    Returns
+    -------
+    ExtremeValues
+        Arrays of the shape of the moments.
 
     Notes
     -----

@@ -131,7 +131,7 @@ def shape_test(shape: Floats, n: Ints) -> tuple[Floats, Floats]:
 
     Notes
     -----
-    ``shape sqrt(n / 0.5633)`` of Hosking, Wallis and Wood (1985), Technometrics 27, 251-261, section 7.
+    ``shape sqrt(n / 0.5633)`` of Hosking, Wallis and Wood (1985), Technometrics 27, 251-261, section 7 (from memory).
 
     Examples
     --------

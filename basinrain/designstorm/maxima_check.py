@@ -89,6 +89,18 @@ def check_series(
         Takes series that are too short, and those whose maxima are all equal.
     shape_wanted
         Whether a shape is fitted, which maxima of which all but one are equal do not have.
+
+    Examples
+    --------
+    >>> from basinrain.designstorm.l_moments import l_moments
+    >>> problems = Problems()
+    >>> moments = l_moments(np.full((12, 1, 1), 30.0))
+    >>> check_series(moments, np.array([60.0]), ["Quill"], problems, shape_wanted=False)
+    >>> problems.raise_as(MethodError)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: area Quill, 1 h: found annual maxima that are all 30 mm; expected maxima that \
+differ; look at the record
     """
     for a, d in np.ndindex(moments.n.shape):
         where = f"area {areas[a]}, {duration_text(float(minutes[d]))}"
@@ -137,6 +149,25 @@ def check_asked(
         ``beyond_record``, and no frequency at all.
     beyond_record
         Whether those are given all the same.
+
+    Returns
+    -------
+    tuple of Frequency
+
+    Examples
+    --------
+    >>> from basinrain.designstorm.l_moments import l_moments
+    >>> moments = l_moments(np.arange(20.0, 32.0)[:, None, None])
+    >>> often = [Frequency(years, "annual-maximum") for years in (100, 2, 2)]
+    >>> problems = Problems()
+    >>> asked = check_asked(often, moments, np.array([60.0]), ["Quill"], problems, beyond_record=False)
+    >>> [frequency.return_period for frequency in asked]
+    [2, 100]
+    >>> problems.raise_as(MethodError)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: AEP 0.01 (1 in 100): found a return period of over 2 times the 12 years of area \
+Quill, 1 h; expected 24 years at most; ask for a less rare one, or allow it with beyond_record = true
     """
     if not frequencies:
         problems.add(item="frequencies", found="none", expected="one at least")
@@ -176,6 +207,15 @@ def check_depths(depth: Floats, minutes: Floats, areas: Sequence[str], frequenci
     ------
     MethodError
         A depth is not above 0; all of them together.
+
+    Examples
+    --------
+    >>> often = [Frequency(1.01, "annual-maximum")]
+    >>> check_depths(np.array([[[-0.5]]]), np.array([60.0]), ["Quill"], often)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: area Quill, 1 h, AEP 0.9901 (1 in 1.01): found -0.5 mm from the fitted \
+distribution; expected a depth above 0; ask for a rarer frequency; the fit does not reach to so frequent a one
     """
     problems = Problems()
     for a, d, t in np.argwhere(~(depth > 0)).tolist():

@@ -131,9 +131,15 @@ def in_mm(values: Floats, minutes: Floats, unit: str) -> Floats:
     Parameters
     ----------
     values : array of float
-        In ``unit``, one of :data:`UNITS`; NaN stays.
+        In ``unit``; NaN stays.
     minutes : array of float
         Their durations, in a shape that goes with ``values``.
+    unit : str
+        One of :data:`UNITS`.
+
+    Returns
+    -------
+    array of float, the broadcast shape
 
     Examples
     --------

@@ -18,6 +18,7 @@ from basinrain.errors import DataError, JobError, Problems
 __all__ = ["PointDepths", "report_faults"]
 
 Floats = npt.NDArray[np.float64]
+_Place = tuple[int, ...]
 
 _LISTED: Final = 50
 
@@ -269,55 +270,67 @@ mm (40 mm/h) of 30 min; expected a depth that does not fall with duration; corre
     depths.csv: point Quill, 2 h, AEP 0.1 (1 in 10): found 60 mm (30 mm/h), more intense than 18 mm (18 mm/h) of 1 h; \
 expected an intensity that does not rise with duration; correct one of them
     """
+    table = _Entries(points, durations, frequencies, depth, problems, unit, lines)
+    if gaps:
+        absent = np.isnan(depth) if lines is None else np.isnan(depth) & (lines == 0)
+        table.report(absent, lambda _: "no depth", "a depth for every duration and frequency of a point", "add it")
+    sound = np.isfinite(depth) & (depth > 0)
+    table.report(~sound & ~np.isnan(depth), table.value, "a depth above 0", "correct it")
+    known = np.where(sound, depth, np.nan)
+    rate = known / durations[:, None]
+    for axis, falling, than, expected in (
+        (1, known, "less than", "a depth that does not fall with duration"),
+        (2, known, "less than", "a depth that does not fall with rarity"),
+        (1, -rate, "more intense than", "an intensity that does not rise with duration"),
+    ):
+        table.report(_falls(falling, axis), table.beside(than, axis), expected, "correct one of them")
 
-    def place_words(place: tuple[int, ...]) -> str:
-        p, d, t = place
-        return f"point {points[p]}, {duration_text(durations[d])}, {frequencies[t].label}"
 
-    def value_words(place: tuple[int, ...]) -> str:
-        return depth_words(depth[place], durations[place[1]], unit)
+def _falls(values: Floats, axis: int) -> npt.NDArray[np.bool_]:
+    """Return where a value is less, by more than rounding, than the one before it along an axis."""
+    before, after = (np.moveaxis(values, axis, 0)[part] for part in (slice(None, -1), slice(1, None)))
+    falls = np.zeros(values.shape, dtype=bool)
+    np.moveaxis(falls, axis, 0)[1:] = after < before - SLACK * np.abs(before)
+    return falls
 
-    def report(
-        wrong: npt.NDArray[np.bool_], found: Callable[[tuple[int, ...]], str], expected: str, remedy: str = ""
-    ) -> None:
-        places = np.argwhere(wrong)
-        for row in places[:_LISTED]:
-            place = tuple(row.tolist())
-            problems.add(
-                item=place_words(place),
-                found=found(place),
-                expected=expected,
-                remedy=remedy,
-                line=int(lines[place]) if lines is not None and lines[place] else None,
-            )
-        # Sentences for a million entries of a wrong table would take longer than reading it.
-        if len(places) > _LISTED:
-            problems.extend(DataError((), unlisted=len(places) - _LISTED))
 
-    def before(than: str, axis: int) -> Callable[[tuple[int, ...]], str]:
-        def words(place: tuple[int, ...]) -> str:
+@dataclass(frozen=True, eq=False)
+class _Entries:
+    """A table of depths whose entries are reported in words, by their places on its three axes."""
+
+    points: Sequence[str]
+    durations: Floats
+    frequencies: Sequence[Frequency]
+    depth: Floats
+    problems: Problems
+    unit: str
+    lines: npt.NDArray[np.int64] | None
+
+    def value(self, place: _Place) -> str:
+        return depth_words(self.depth[place], self.durations[place[1]], self.unit)
+
+    def beside(self, than: str, axis: int) -> Callable[[_Place], str]:
+        """Return what says an entry's value beside that of the one before it along an axis."""
+
+        def words(place: _Place) -> str:
             other = tuple(index - (k == axis) for k, index in enumerate(place))
-            whose = duration_text(durations[other[1]]) if axis == 1 else frequencies[other[2]].label
-            where = f" (line {lines[other]})" if lines is not None else ""
-            return f"{value_words(place)}, {than} {value_words(other)} of {whose}{where}"
+            whose = duration_text(self.durations[other[1]]) if axis == 1 else self.frequencies[other[2]].label
+            where = f" (line {self.lines[other]})" if self.lines is not None else ""
+            return f"{self.value(place)}, {than} {self.value(other)} of {whose}{where}"
 
         return words
 
-    if gaps:
-        absent = np.isnan(depth) if lines is None else np.isnan(depth) & (lines == 0)
-        report(absent, lambda _: "no depth", "a depth for every duration and frequency of a point", "add it")
-    sound = np.isfinite(depth) & (depth > 0)
-    report(~sound & ~np.isnan(depth), value_words, "a depth above 0", "correct it")
-    known = np.where(sound, depth, np.nan)
-    rate = known / durations[:, None]
-    wrong = np.zeros(depth.shape, dtype=bool)
-    wrong[:, 1:] = known[:, 1:] < known[:, :-1] * (1 - SLACK)
-    report(wrong, before("less than", 1), "a depth that does not fall with duration", "correct one of them")
-    wrong = np.zeros(depth.shape, dtype=bool)
-    wrong[:, :, 1:] = known[:, :, 1:] < known[:, :, :-1] * (1 - SLACK)
-    report(wrong, before("less than", 2), "a depth that does not fall with rarity", "correct one of them")
-    wrong = np.zeros(depth.shape, dtype=bool)
-    wrong[:, 1:] = rate[:, 1:] > rate[:, :-1] * (1 + SLACK)
-    report(
-        wrong, before("more intense than", 1), "an intensity that does not rise with duration", "correct one of them"
-    )
+    def report(self, wrong: npt.NDArray[np.bool_], found: Callable[[_Place], str], expected: str, remedy: str) -> None:
+        places = np.argwhere(wrong)
+        for row in places[:_LISTED]:
+            place = p, d, t = tuple(row.tolist())
+            self.problems.add(
+                item=f"point {self.points[p]}, {duration_text(self.durations[d])}, {self.frequencies[t].label}",
+                found=found(place),
+                expected=expected,
+                remedy=remedy,
+                line=int(self.lines[place]) if self.lines is not None and self.lines[place] else None,
+            )
+        # Sentences for a million entries of a wrong table would take longer than reading it.
+        if len(places) > _LISTED:
+            self.problems.extend(DataError((), unlisted=len(places) - _LISTED))

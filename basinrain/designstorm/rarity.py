@@ -140,8 +140,8 @@ def storm_rarity(
         *([searched_sentence(n_durations, n_areas, len(known))] if known else []),
     ]
     if rarest_at_gauge:
-        at = rarest_sentence([_where(row) for row in rarest_at_gauge], [row.found for row in rarest_at_gauge])
-        sentences += [at.replace("the depths compared", "the wettest gauges' depths"), points_sentence(n_gauges)]
+        where, found = [_where(row) for row in rarest_at_gauge], [row.found for row in rarest_at_gauge]
+        sentences += [rarest_sentence(where, found, of="the wettest gauges' depths"), points_sentence(n_gauges)]
     table_words = None if table_step is None else duration_text(table_step)
     sentences.append(interval_sentence(duration_text(step), table_words, same=table_step == step))
     sentences += meaning_sentences(

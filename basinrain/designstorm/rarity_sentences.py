@@ -58,7 +58,7 @@ _ALIGNED: Final = (
 )
 
 
-def rarest_sentence(where: Sequence[str], found: Sequence[FoundFrequency]) -> str:
+def rarest_sentence(where: Sequence[str], found: Sequence[FoundFrequency], *, of: str = "the depths compared") -> str:
     """Return which depth was the rarest; several where a table cannot tell them apart.
 
     Parameters
@@ -67,6 +67,8 @@ def rarest_sentence(where: Sequence[str], found: Sequence[FoundFrequency]) -> st
         Places and durations, in words.
     found
         How rare each was; all of one rank.
+    of
+        What the depths are called.
 
     Examples
     --------
@@ -77,8 +79,8 @@ def rarest_sentence(where: Sequence[str], found: Sequence[FoundFrequency]) -> st
         return "None of the depths could be compared."
     words = found[0].words
     if found[0].estimate is None and not found[0].beyond:
-        return f"None of the depths compared is within the table: each is {words}."
-    head = "The rarest of the depths compared: "
+        return f"None of {of} is within the table: each is {words}."
+    head = f"The rarest of {of}: "
     if len(where) > 1 and found[0].beyond:
         return f"{head}{'; '.join(where)}; each is {words}, and which of them is the rarest the table cannot tell."
     return head + "; ".join(f"{place}, {one.words}" for place, one in zip(where, found, strict=True)) + "."
@@ -117,7 +119,8 @@ def few_steps_remark(steps: float, *, same: bool) -> str:
     Notes
     -----
     8n / (8n - 1) for n steps: Weiss, L. L. (1964): Ratio of true to fixed-interval maximum rainfall, Journal of the
-    Hydraulics Division, ASCE, 90 (HY1). From memory. It is a mean over many storms: one storm may need more or nothing.
+    Hydraulics Division, ASCE, 90; derived in :func:`~basinrain.designstorm.interval_factors.weiss`. It is a mean over
+    many storms: one storm may need more or nothing.
 
     Examples
     --------

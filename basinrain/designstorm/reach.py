@@ -86,6 +86,20 @@ def check_reach(
     MethodError
         All of: the frequency is counted in another series; a duration is not above 0; a duration or the frequency lies
         outside and ``extrapolate`` is false, or nothing is known to go on from.
+
+    Examples
+    --------
+    >>> known = {"durations": (60.0, 240.0), "frequencies": [Frequency(years, "annual-maximum") for years in (2, 10)]}
+    >>> five = Frequency(5, "annual-maximum")
+    >>> check_reach(np.array([60.0, 90.0]), five, **known, extrapolate=False)
+    False
+    >>> check_reach(np.array([30.0]), five, **known, extrapolate=True)
+    True
+    >>> check_reach(np.array([30.0]), five, **known, extrapolate=False)
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: duration 30 min: found that the depths are of 1 h to 4 h; expected a duration within \
+them; give depths for it, or allow it with extrapolate = true
     """
     problems = Problems()
     first, last = frequencies[0], frequencies[-1]
@@ -143,6 +157,17 @@ def refuse_unphysical(depth: Floats, minutes: Floats, points: Sequence[str], fre
     ------
     MethodError
         A depth is not above 0 or falls with duration, or an intensity rises with it; every point once.
+
+    Examples
+    --------
+    >>> refuse_unphysical(
+    ...     np.array([[20.0, 18.0]]), np.array([60.0, 120.0]), ["Quill"], Frequency(10, "annual-maximum")
+    ... )
+    Traceback (most recent call last):
+        ...
+    basinrain.errors.MethodError: point Quill, 2 h, AEP 0.1 (1 in 10): found 18 mm (9 mm/h) after 20 mm (20 mm/h) of \
+1 h by extrapolation; expected a depth above 0 that does not fall with duration, and an intensity that does not rise; \
+ask for less far outside, or give depths for it
     """
     wrong = ~(depth > 0)
     with np.errstate(invalid="ignore"):

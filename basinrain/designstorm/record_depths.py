@@ -21,7 +21,7 @@ from basinrain.designstorm.record_remarks import TITLES, record_remarks
 from basinrain.designstorm.resampling import SEED, draw_years
 from basinrain.errors import MethodError, Problems
 
-__all__ = ["DISTRIBUTIONS", "YEARS_FOR_GEV", "RecordDepths", "RecordFit", "record_depths"]
+__all__ = ["YEARS_FOR_GEV", "RecordDepths", "record_depths"]
 
 Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.int64]
@@ -39,13 +39,14 @@ class RecordDepths:
     depths : PointDepths
         The depths of the distribution that was taken; areal, in an annual maximum series.
     distribution : str
-        Its name, of :data:`DISTRIBUTIONS`.
+        Its name, of :data:`~basinrain.designstorm.extreme_values.DISTRIBUTIONS`.
     fits : mapping of str to RecordFit
         Both distributions by name.
     moments : LMoments
         Of the annual maxima; arrays of shape (n_areas, n_durations).
-    shape_statistic, shape_p_value : array of float, shape (n_areas, n_durations)
-        Test whether the shape of the generalised extreme value distribution is 0, that is Gumbel.
+    shape_p_value : array of float, shape (n_areas, n_durations)
+        Of the test whether the shape of the generalised extreme value distribution is 0, that is Gumbel; NaN where
+        there is no shape.
     remarks : tuple of str
         Whole sentences on what a reader must know.
     """
@@ -54,7 +55,6 @@ class RecordDepths:
     distribution: str
     fits: Mapping[str, RecordFit]
     moments: LMoments
-    shape_statistic: Floats
     shape_p_value: Floats
     remarks: tuple[str, ...]
 
@@ -178,7 +178,7 @@ table
         one: fit_record(one, values, moments, minutes=minutes, variates=variates, drawn=drawn) for one in DISTRIBUTIONS
     }
     check_depths(fits[name].quantiles, minutes, names, asked)
-    statistic, p_value = shape_test(fits[GEV].parameters.shape, moments.n)
+    _, p_value = shape_test(fits[GEV].parameters.shape, moments.n)
     return RecordDepths(
         depths=PointDepths(
             points=names,
@@ -193,7 +193,6 @@ table
         distribution=name,
         fits=MappingProxyType(fits),
         moments=moments,
-        shape_statistic=statistic,
         shape_p_value=p_value,
         remarks=record_remarks(
             name,

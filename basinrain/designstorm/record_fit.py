@@ -68,6 +68,10 @@ def fit_record(
     drawn
         The years of every sample, the same for all areas.
 
+    Returns
+    -------
+    RecordFit
+
     Examples
     --------
     >>> from basinrain.designstorm.l_moments import l_moments

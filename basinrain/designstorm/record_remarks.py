@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from types import MappingProxyType
 from typing import Final
 
 import numpy as np
@@ -15,12 +16,15 @@ from basinrain.designstorm.maxima_check import REACH
 from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.record_fit import RecordFit
 
-__all__ = ["TITLES", "record_remarks"]
+__all__ = ["SHORT_TITLES", "TITLES", "record_remarks"]
 
 Floats = npt.NDArray[np.float64]
 
-TITLES: Final[Mapping[str, str]] = {GUMBEL: "Gumbel", GEV: "generalised extreme value"}
+TITLES: Final[Mapping[str, str]] = MappingProxyType({GUMBEL: "Gumbel", GEV: "generalised extreme value"})
 """The distributions by name, as they are said."""
+
+SHORT_TITLES: Final[Mapping[str, str]] = MappingProxyType({**TITLES, GEV: "GEV"})
+"""The same where there is little room."""
 
 _DOUBTFUL: Final = 0.05
 _LISTED: Final = 6

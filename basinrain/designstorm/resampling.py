@@ -101,6 +101,10 @@ def draw_years(n_years: int, resamples: int, *, seed: int = SEED) -> DrawnYears:
     seed
         Of numpy's default generator.
 
+    Returns
+    -------
+    DrawnYears
+
     Raises
     ------
     JobError

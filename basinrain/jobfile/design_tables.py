@@ -9,13 +9,15 @@ from pydantic import AfterValidator, BeforeValidator, Field
 from pydantic_core import PydanticCustomError
 
 from basinrain import averaging
-from basinrain.designstorm.areal_reduction import REDUCTIONS
+from basinrain.designstorm.areal_reduction import OUTSIDE, REDUCTIONS
+from basinrain.designstorm.design_storms import OWN_DEPTH, SAME_DEPTH
 from basinrain.designstorm.equations import EQUATIONS
 from basinrain.designstorm.exceedance import SERIES
 from basinrain.designstorm.extreme_values import DISTRIBUTIONS
 from basinrain.designstorm.interval_factors import INTERVAL_FACTORS
-from basinrain.designstorm.measures import UNITS, duration_words
+from basinrain.designstorm.measures import DURATION_UNITS, UNITS, duration_words
 from basinrain.designstorm.patterns import PATTERNS
+from basinrain.designstorm.patterns.huff import BASES
 from basinrain.errors import JobError
 from basinrain.intervals import parse_interval
 from basinrain.jobfile.fields import Moment, NameList, Table, as_list, names, once, one_of
@@ -157,7 +159,7 @@ class DesignDepthsTable(Table):
     file: str | None = None
     layout: Annotated[str, one_of(("long", "wide"))] = "long"
     probability: Annotated[str, one_of(("aep", "aep-percent", "return-period"))] | None = None
-    duration_unit: Annotated[str, one_of(("min", "h", "d"))] | None = None
+    duration_unit: Annotated[str, one_of(DURATION_UNITS)] | None = None
     columns: dict[str, str] = Field(default={})
     crs: str | None = None
     raster: Annotated[tuple[RasterTable, ...], BeforeValidator(as_list)] = ()
@@ -197,7 +199,7 @@ class ArealReductionTable(Table):
     valid: tuple[Duration, Duration] | None = None
     valid_areas: tuple[Area, Area] | None = None
     area: Annotated[str, one_of(("to-point", "own"))] = "to-point"
-    outside: Annotated[str, one_of(("refuse", "clamp"))] = "refuse"
+    outside: Annotated[str, one_of(OUTSIDE)] = "refuse"
     compare: Annotated[
         tuple[Annotated[str, one_of(REDUCTIONS)], ...], BeforeValidator(names), AfterValidator(once)
     ] = ()
@@ -217,7 +219,7 @@ class PatternTable(Table):
     shape: Annotated[str, one_of(PATTERNS)]
     durations: SomeDurations = ()
     peak: str | float | None = None
-    basis: Annotated[str, one_of(("point", "area"))] | None = None
+    basis: Annotated[str, one_of(BASES)] | None = None
     smooth: bool = False
     file: str | None = None
     percent: bool = False
@@ -246,7 +248,7 @@ class DesignTable(Table):
     durations: Durations
     step: Duration
     jurisdiction: Plain = ""
-    sub_basins: Annotated[str, one_of(("same-depth", "own-depth"))] = "same-depth"
+    sub_basins: Annotated[str, one_of((SAME_DEPTH, OWN_DEPTH))] = SAME_DEPTH
     start: Moment | None = None
     formats: Annotated[
         tuple[Annotated[str, one_of(FORMATS)], ...], BeforeValidator(names), Field(min_length=1), AfterValidator(once)
@@ -257,6 +259,11 @@ class DesignTable(Table):
     point: Annotated[tuple[PointTable, ...], BeforeValidator(as_list)] = ()
     pattern: Annotated[tuple[PatternTable, ...], BeforeValidator(as_list), Field(min_length=1)]
     rarity: RarityTable | None = None
+
+    @property
+    def own_area(self) -> bool:
+        """Whether each basin's depth is reduced by its own area, not by that of all basins above the point."""
+        return self.areal_reduction is not None and self.areal_reduction.area == "own"
 
     @property
     def input_names(self) -> tuple[str, ...]:

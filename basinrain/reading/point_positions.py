@@ -90,7 +90,7 @@ def read_positions(
     (array([[ 9.5, 47. ],
            [ 9.6, 47.1]]), 'EPSG:4326')
     """
-    nothing = np.full((len(points), 2), np.nan)
+    positions = np.full((len(points), 2), np.nan)
     found = {
         key: find_column(table.columns, names, mapped=columns.get(key), key=key, problems=problems)
         for key, names in POSITION_NAMES.items()
@@ -110,13 +110,12 @@ def read_positions(
                     expected=" and ".join(keys),
                     remedy=f'name it with columns = {{ {key} = "..." }}',
                 )
-        return nothing, ""
+        return positions, ""
     if planar and crs is None:
         add_no_crs(problems)
     cells = _coordinates(table, pair, point, points, problems)
     known = np.flatnonzero(~np.isnan(cells).any(axis=1))
     places, first = np.unique(point[known], return_index=True)
-    positions = nothing
     positions[places] = cells[known[first]]
     line_of = np.zeros(len(points), dtype=np.int64)
     line_of[places] = table.lines[known[first]]
@@ -134,18 +133,24 @@ def read_positions(
         )
     used = crs or (ground.LONLAT if not planar else "")
     if used and ground.is_geographic(used):
-        with np.errstate(invalid="ignore"):
-            wrong = (np.abs(positions[:, 0]) > 180) | (np.abs(positions[:, 1]) > 90)
-        for p in each_of(np.flatnonzero(wrong), problems):
-            x, y = positions[p].tolist()
-            problems.add(
-                item=f"point {points[p]}",
-                found=f"longitude {x:.10g} and latitude {y:.10g}",
-                expected="degrees that a place can have",
-                remedy=ground.degree_fault(x, y),
-                line=int(line_of[p]),
-            )
+        _check_degrees(positions, points, line_of, problems)
     return positions, used if len(known) else ""
+
+
+def _check_degrees(
+    positions: Floats, points: Sequence[str], line_of: npt.NDArray[np.int64], problems: Problems
+) -> None:
+    with np.errstate(invalid="ignore"):
+        wrong = (np.abs(positions[:, 0]) > 180) | (np.abs(positions[:, 1]) > 90)
+    for p in each_of(np.flatnonzero(wrong), problems):
+        x, y = positions[p].tolist()
+        problems.add(
+            item=f"point {points[p]}",
+            found=f"longitude {x:.10g} and latitude {y:.10g}",
+            expected="degrees that a place can have",
+            remedy=ground.degree_fault(x, y),
+            line=int(line_of[p]),
+        )
 
 
 def _coordinates(

@@ -125,9 +125,9 @@ def read_cells(path: Path, rows: slice, columns: slice) -> Floats:
     """
     if _is_ascii(path):
         return _ascii_cells(path, _ascii_header(path), rows, columns)
-    from rasterio.windows import Window
-
     with _tiff(path) as file:
+        from rasterio.windows import Window
+
         try:
             read = file.read(1, window=Window.from_slices(rows, columns), masked=True)
         except OSError as error:

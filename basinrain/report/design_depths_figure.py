@@ -14,7 +14,7 @@ from matplotlib.lines import Line2D
 from matplotlib.transforms import ScaledTranslation
 from scipy.optimize import isotonic_regression
 
-from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_text
 from basinrain.errors import DataError, Problem
 from basinrain.report.duration_axis import depth_axis, duration_axis
@@ -22,7 +22,7 @@ from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_sty
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.units import depth_factor
 
-__all__ = ["MOST_FREQUENCIES", "apart", "depths_picture", "short_label"]
+__all__ = ["MOST_FREQUENCIES", "apart", "depths_picture"]
 
 MOST_FREQUENCIES: Final = 8
 """Frequencies whose curves can still be told apart."""
@@ -118,7 +118,7 @@ def depths_picture(
         ends = [depth for depth, _ in kinds.values()]
         _label_curves(axes, minutes, ends[-1], labels, points=high * 72)
         if both:
-            short = [short_label(frequencies[row]) for row in rows]
+            short = [frequencies[row].short_label for row in rows]
             _label_curves(axes, minutes, ends[0], short, points=high * 72, first=True)
         figure.text(0.012, 1 - 0.04 / _HEIGHT, about, ha="left", va="top", fontsize=8, fontweight="bold")
         figure.legend(
@@ -148,18 +148,6 @@ def _depth_axis(axes: Any, depths: list[Floats], unit: str) -> None:  # noqa: AN
     # Less than a decade and a half has few places at 1, 2 and 5.
     close = math.log10(most / least * _ROOM**2) < 1.0
     depth_axis(axes, f"depth, {unit}", places=(1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 7.0) if close else (1.0, 2.0, 5.0))
-
-
-def short_label(frequency: Frequency) -> str:
-    """Return a frequency in as few letters as can be, where another place says what it is counted in.
-
-    Examples
-    --------
-    >>> short_label(Frequency.of_aep(0.01)), short_label(Frequency(2.0, "partial-duration"))
-    ('1 in 100', '2-year')
-    """
-    years = f"{frequency.return_period:.4g}"
-    return f"1 in {years}" if frequency.series == ANNUAL_MAXIMUM else f"{years}-year"
 
 
 def _label_curves(

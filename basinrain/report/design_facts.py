@@ -6,7 +6,7 @@ from typing import Final
 
 from basinrain.designstorm.areal_reduction import REDUCTIONS
 from basinrain.designstorm.design_storms import OWN_DEPTH
-from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM
+from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, PARTIAL_DURATION
 from basinrain.designstorm.measures import duration_text
 from basinrain.jobfile.design_tables import EQUATION, NO_REDUCTION, RASTERS, RECORD, TABLE
 from basinrain.report import design_shown, overview
@@ -26,8 +26,8 @@ _ORIGINS: Final = {
     RECORD: "the job's own record",
 }
 _SERIES: Final = {
-    "annual-maximum": "annual maximum series",
-    "partial-duration": "partial duration series",
+    ANNUAL_MAXIMUM: "annual maximum series",
+    PARTIAL_DURATION: "partial duration series",
 }
 
 
@@ -76,8 +76,7 @@ def _reduction(run: DesignRun) -> str:
 def sub_basins_words(run: DesignRun) -> str:
     """Return what depth every basin above a point of interest has."""
     design = run.asked.design
-    own_area = design.areal_reduction is not None and design.areal_reduction.area == "own"
-    if own_area:
+    if design.own_area:
         whose = "its own point depths" if design.sub_basins == OWN_DEPTH else "the point depths of all of them"
         return f"each has {whose}, reduced by its own area; not one storm over all of them"
     if design.sub_basins == OWN_DEPTH:

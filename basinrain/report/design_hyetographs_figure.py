@@ -17,7 +17,7 @@ from matplotlib.ticker import FixedLocator, FuncFormatter, MaxNLocator, Multiple
 
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_text
-from basinrain.report.design_depths_figure import short_label
+from basinrain.report.design_shown import spread
 from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.hyetograph_figure import binned
 from basinrain.report.words import depth_text, inline, short_names, unit_word
@@ -90,14 +90,8 @@ def _drawn(storms: list[Storm]) -> list[Storm]:
         own = sorted((storm for storm in storms if storm[0] == point), key=lambda storm: storm[1])
         room = (MOST_PICTURES - len(chosen)) // (len(points) - k)
         # A point's only picture is that of its longest storm.
-        chosen += own[-1:] if room == 1 else _spread(own, room)
+        chosen += spread(own, room)
     return [storm for storm in storms if storm in chosen]
-
-
-def _spread(items: list[Any], most: int) -> list[Any]:
-    if len(items) <= most:
-        return items
-    return [items[at] for at in np.linspace(0, len(items) - 1, most).round().astype(int).tolist()]
 
 
 def _picture(storm: list[DesignHyetograph], unit: str, *, name: str, more: str) -> Picture:
@@ -158,7 +152,7 @@ def _picture(storm: list[DesignHyetograph], unit: str, *, name: str, more: str) 
 def _frequencies(storm: list[DesignHyetograph]) -> tuple[Frequency, list[Frequency], int]:
     """Return the rarest frequency, those drawn beside it from rare to common, and how many are left out."""
     order = sorted({one.frequency for one in storm}, key=lambda frequency: -frequency.variate)
-    others = _spread(order[1:], MOST_OUTLINES)
+    others = spread(order[1:], MOST_OUTLINES)
     return order[0], others, len(order) - 1 - len(others)
 
 
@@ -247,7 +241,7 @@ def _head(figure: Figure, title: str, rarest: Frequency, others: list[Frequency]
     figure.text(0.012, 1 - 0.04 / height, title, ha="left", va="top", fontsize=8, fontweight="bold")
     handles: list[Any] = [Patch(facecolor=_FILL, edgecolor=INK, linewidth=0.4, label=rarest.label)]
     handles += [
-        Line2D([], [], color=INK, linestyle=line, linewidth=0.8, label=short_label(frequency))
+        Line2D([], [], color=INK, linestyle=line, linewidth=0.8, label=frequency.short_label)
         for frequency, line in zip(others, _OUTLINES, strict=False)
     ]
     handles.append(Line2D([], [], label="cumulative share", **_SHARE))

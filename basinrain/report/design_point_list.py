@@ -6,10 +6,10 @@ from typing import Final
 
 import numpy as np
 
-from basinrain.design_cautions import OF_CURVES
 from basinrain.designstorm.equations import EquationDepths
 from basinrain.designstorm.exceedance import Frequency
 from basinrain.designstorm.measures import duration_text
+from basinrain.designstorm.patterns import PATTERNS
 from basinrain.designstorm.point_depths import PointDepths
 from basinrain.report import design_shown
 from basinrain.report.table import Row, Table
@@ -39,7 +39,7 @@ def point_sentences(run: DesignRun) -> list[str]:
             sentences.append(f"Not tabulated, so {how}: {words}.")
         else:
             asked = "All durations and frequencies asked for are tabulated"
-            curves = [table.label for table in run.asked.design.pattern if table.shape in OF_CURVES]
+            curves = [table.label for table in run.asked.design.pattern if PATTERNS[table.shape].by_curve]
             sentences.append(
                 f"{asked}; other durations, taken for {design_shown.cut(curves, design_shown.AREAS)}, are {how}."
                 if curves
@@ -91,7 +91,7 @@ def depths_table(run: DesignRun) -> Table:
         notes.append("Other durations and frequencies are in point_depths.csv.")
     return Table(
         caption=f"Point depths of the source, {unit_word(run.depth_unit)}",
-        heads=("depth point", "duration", *(design_shown.often_head(f) for f in often)),
+        heads=("depth point", "duration", *(f.short_label for f in often)),
         align="tn" + "n" * len(often),
         rows=rows,
         notes=tuple(notes),
@@ -107,7 +107,7 @@ def weights_table(run: DesignRun) -> Table | None:
     source, weights = run.sourced.source, run.sourced.weights
     if len(source.points) == 1:
         return None
-    every = design_shown.areas_shown(run.areas)
+    every = run.areas.rows_apart
     areas, shown = every[:_AREAS], _shown(run)
     taken = weights[np.ix_(areas, shown)]
     others = np.maximum(1 - taken.sum(axis=1), 0)

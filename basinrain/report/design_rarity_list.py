@@ -48,15 +48,11 @@ def rarity_facts(run: DesignRun) -> list[tuple[str, str]]:
     table = run.asked.design.rarity
     if table is None or not run.rarities:
         return []
-    infill = run.settings.get("infill", {})
-    scale = infill.get("scale")
-    methods = run.settings.get("averaging", {}).get("methods", [""])
     lines = [
         ("Storms", design_shown.cut([found.storm for found in run.rarities], design_shown.AREAS)),
-        ("Average", str(table.average or methods[0])),
+        ("Average", table.average),
+        ("Infill", design_shown.infill_words(run)),
     ]
-    if "method" in infill:
-        lines.append(("Infill", f"{infill['method']}{f' at the scale of the {scale}' if scale else ''}"))
     uplift = " without the uplift, which is for a climate to come"
     lines.append(("Compared with", f"the depths of the design{uplift if run.asked.design.uplift is not None else ''}"))
     return lines

@@ -9,19 +9,13 @@ import numpy.typing as npt
 
 from basinrain.clocks import MONTHS
 from basinrain.design_record import SEASON_SHARE, RecordSource
-from basinrain.designstorm.extreme_values import GEV
+from basinrain.designstorm.extreme_values import GEV, GUMBEL_RATIO
 from basinrain.designstorm.measures import duration_text
-from basinrain.designstorm.record_remarks import TITLES
+from basinrain.designstorm.record_depths import YEARS_FOR_GEV
+from basinrain.designstorm.record_remarks import SHORT_TITLES, TITLES
 from basinrain.report import design_shown
 from basinrain.report.table import Row, Table
-from basinrain.report.words import (
-    DASH,
-    counted,
-    depth_text,
-    number_text,
-    percent_text,
-    unit_word,
-)
+from basinrain.report.words import DASH, counted, depth_text, number_text, percent_text, unit_word
 from basinrain.results_design import DesignRun
 from basinrain.units import depth_factor
 
@@ -29,7 +23,6 @@ __all__ = ["depths_tables", "durations_drawn", "fit_tables", "maxima_table", "re
 
 Floats = npt.NDArray[np.float64]
 
-_SHORT: Final = {"gumbel": "Gumbel", "gev": "GEV"}
 _GAUGES: Final = 40
 _YEARS: Final = 60
 _COLUMNS: Final = 8
@@ -51,7 +44,7 @@ def record_facts(run: DesignRun) -> list[tuple[str, str]]:
     span = f"{record.years[0]} to {record.years[-1]}"
     return [
         ("Gauges", f"{design_shown.cut(record.gauges, _GAUGES)}; the same ones with the same weights at every step"),
-        ("Average", f"{table.average}; gaps infilled by {_infill(run)}"),
+        ("Average", f"{table.average}; gaps infilled by {design_shown.infill_words(run)}"),
         ("Record's step", duration_text(record.step)),
         ("Years", f"{len(record.years)}, {span}; {years} count"),
         ("A year counts", f"where at least {100 * SEASON_SHARE:.0f} % of the steps of {season} have a depth"),
@@ -61,16 +54,10 @@ def record_facts(run: DesignRun) -> list[tuple[str, str]]:
     ]
 
 
-def _infill(run: DesignRun) -> str:
-    infill = run.settings.get("infill", {})
-    scale = infill.get("scale")
-    return str(infill.get("method", DASH)) + (f" at the scale of the {scale}" if scale else "")
-
-
 def _why(run: DesignRun, taken: str) -> str:
     if run.asked.design.depths.distribution is not None:
         return "as the job says"
-    return "since no series is shorter than 50 years" if taken == GEV else "since a series is shorter than 50 years"
+    return f"since {'no' if taken == GEV else 'a'} series is shorter than {YEARS_FOR_GEV} years"
 
 
 def _reach(run: DesignRun, least: int) -> str:
@@ -129,7 +116,7 @@ def _fits(run: DesignRun, record: RecordSource, row: int) -> Table:
             rows.append(
                 (
                     duration_text(float(record.minutes[d])),
-                    _SHORT[name] + (", taken" if name == found.distribution else ""),
+                    SHORT_TITLES[name] + (", taken" if name == found.distribution else ""),
                     str(int(found.n_years[at])),
                     number_text(float(fit.parameters.location[at]) / mm, 2),
                     number_text(float(fit.parameters.scale[at]) / mm, 2),
@@ -157,7 +144,7 @@ def _fits(run: DesignRun, record: RecordSource, row: int) -> Table:
         notes=(
             "Correlation: of the probability plot, 1 where it is a straight line.",
             "A small p-value speaks against the distribution; a large one does not prove it.",
-            "GEV: generalised extreme value. Every area is in record_fits.csv.",
+            f"GEV: generalised extreme value. L-skewness (Gumbel's {GUMBEL_RATIO:.4f}) and all areas: record_fits.csv.",
         ),
     )
 

@@ -4,12 +4,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from typing import Any, Final
+from typing import Final
 
-from basinrain.designstorm.areal_reduction import REDUCTIONS, ExponentialCoefficients, Limits
+from basinrain.design_reduction import stated_options
+from basinrain.designstorm.areal_reduction import REDUCTIONS, Limits
 from basinrain.designstorm.areal_reduction.limits import area_words, between_words
 from basinrain.designstorm.measures import duration_text
-from basinrain.jobfile.design_tables import minutes_of
 from basinrain.report import design_shown
 from basinrain.report.design_chain_list import reduces
 from basinrain.report.table import Row, Table
@@ -56,20 +56,7 @@ def _range(run: DesignRun) -> str:
     method = REDUCTIONS[table.method]
     if table.method == "table":
         return f"the durations and areas of {table.file}"
-    options: dict[str, Any] = {}
-    if table.method == "exponential":
-        factor = area_factor(table.area_unit or "km2")
-        options["coefficients"] = ExponentialCoefficients(
-            c1=table.coefficients["c1"],
-            c2=table.coefficients["c2"],
-            c3=table.coefficients["c3"],
-            source=table.source,
-            areas=None if table.valid_areas is None else (table.valid_areas[0] * factor, table.valid_areas[1] * factor),
-            minutes=None if table.valid is None else (minutes_of(table.valid[0]), minutes_of(table.valid[1])),
-        )
-    elif "region" in method.options:
-        options["region"] = table.region or ""
-    return range_words(method.limits(**options))
+    return range_words(method.limits(**stated_options(table.method, table)))
 
 
 def range_words(limits: Limits) -> str:
@@ -109,8 +96,7 @@ def range_words(limits: Limits) -> str:
 
 
 def _area(run: DesignRun) -> str:
-    table = run.asked.design.areal_reduction
-    if table is not None and table.area == "own":
+    if run.asked.design.own_area:
         return "that of each basin by itself, since the job says so"
     m2 = area_factor(run.area_unit)
     points = [

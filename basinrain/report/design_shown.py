@@ -7,9 +7,9 @@ from typing import Final, TypeVar
 
 import numpy as np
 
-from basinrain.design_areas import Areas, ReducedArea
+from basinrain.design_areas import ReducedArea
 from basinrain.designstorm.design_storms import PointOfInterest
-from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
+from basinrain.designstorm.exceedance import Frequency
 from basinrain.results_design import DesignRun
 
 __all__ = [
@@ -18,13 +18,12 @@ __all__ = [
     "FILES",
     "FREQUENCIES",
     "POINTS",
-    "areas_shown",
     "cut",
     "durations",
     "frequencies",
     "hyetograph_file",
+    "infill_words",
     "left_out",
-    "often_head",
     "points",
     "reduced",
     "spread",
@@ -87,12 +86,6 @@ def durations(run: DesignRun) -> list[int]:
     return spread(run.asked.minutes, DURATIONS)
 
 
-def areas_shown(areas: Areas) -> list[int]:
-    """Return the rows of the points of interest, and those of basins that are not a point's only one."""
-    alone = {point.rows[0] for point in areas.points if len(point.rows) == 1}
-    return [row for row in range(len(areas.names)) if row not in alone]
-
-
 def left_out(run: DesignRun, file: str, *, areas: bool = False) -> tuple[str, ...]:
     """Return the sentence that says what is not shown; nothing when all is.
 
@@ -114,18 +107,6 @@ def left_out(run: DesignRun, file: str, *, areas: bool = False) -> tuple[str, ..
     return (f"Shown here: {', '.join(parts[:-1])}{' and ' if parts[1:] else ''}{parts[-1]}; the others are in {file}.",)
 
 
-def often_head(frequency: Frequency) -> str:
-    """Return a frequency as the head of a column.
-
-    Examples
-    --------
-    >>> often_head(Frequency.of_aep(0.01)), often_head(Frequency(2.0, "partial-duration"))
-    ('1 in 100', '2-year')
-    """
-    years = f"{frequency.return_period:.4g}"
-    return f"1 in {years}" if frequency.series == ANNUAL_MAXIMUM else f"{years}-year"
-
-
 def cut(names: Sequence[str], most: int) -> str:
     """Return names in a row, of many the first ones and how many more there are.
 
@@ -136,6 +117,13 @@ def cut(names: Sequence[str], most: int) -> str:
     """
     more = len(names) - most
     return ", ".join(names) if more <= 0 else f"{', '.join(names[:most])} and {more} more"
+
+
+def infill_words(run: DesignRun) -> str:
+    """Return how gaps of the record were infilled."""
+    infill = run.settings["infill"]
+    scale = infill.get("scale")
+    return str(infill["method"]) + (f" at the scale of the {scale}" if scale else "")
 
 
 def hyetograph_file(run: DesignRun) -> str:

@@ -89,81 +89,86 @@ def _with_left_out(run: DesignRun, tables: list[Table]) -> list[Table]:
 def _depths(storms: _Storms, point: PointOfInterest) -> Table:
     run = storms.run
     often = design_shown.frequencies(run)
-    mm, m2 = depth_factor(run.depth_unit), area_factor(run.area_unit)
-    areas = run.areas.basins.areas[list(point.rows)]
-    own_area = run.asked.design.areal_reduction is not None and run.asked.design.areal_reduction.area == "own"
-    volume_unit = volume_unit_for(run.depth_unit)
-    per = volume_factor(volume_unit)
+    own_area = run.asked.design.own_area
     together = point.apart and len(point.basins) > 1
     own = [storm for storm in run.storms if storm.point.name == point.name]
     alike = not own_area and len(point.basins) > _ALIKE and _alike(own)
     most = 1 if alike else min(len(point.basins), design_shown.AREAS) + together
     shown = design_shown.durations(run)
     minutes_shown = design_shown.spread(shown, max(1, _ROWS // most))
-
-    def row(minutes: int, name: str, *, area: float, depths: Floats, volume: float, reduction: str) -> Row:
-        return (
-            duration_text(minutes),
-            name,
-            area_text(area / m2),
-            *([reduction] if own_area else []),
-            *(depth_text(float(depth), run.depth_unit) for depth in depths),
-            volume_text(volume / 1000 / per),
-        )
-
-    rows: list[Row] = []
-    for minutes in minutes_shown:
-        found = [storm for storm in (storms.any(point, frequency, minutes) for frequency in often) if storm is not None]
-        if not found:
-            continue
-        totals = np.array([storm.totals / mm for storm in found])
-        rarest = found[-1]
-
-        if not alike:
-            rows += [
-                row(
-                    minutes,
-                    point.basins[b],
-                    area=float(areas[b]),
-                    depths=totals[:, b],
-                    volume=float(rarest.totals[b] * areas[b]),
-                    reduction=number_text(float(rarest.reduction[b]), 4),
-                )
-                for b in _basins(rarest)
-            ]
-        if alike or together:
-            name = f"each of {len(point.basins)}" if alike else "mean by area"
-            whole = run.areas.basins.areas[point.row]
-            depths = totals[:, 0] if alike else totals @ areas / areas.sum()
-            volume = float(rarest.totals[0] * whole) if alike else float(rarest.totals @ areas)
-            rows.append(row(minutes, name, area=float(whole), depths=depths, volume=volume, reduction=DASH))
-    notes = []
-    if alike:
-        notes.append("Every basin has the areal depth to the point of interest; area and volume are those of all.")
-    elif together:
-        notes.append(
-            "The mean by area is more than the areal depth to the point of interest: each basin is reduced by its own "
-            "area."
-            if own_area
-            else "The mean by area is the areal depth to the point of interest in section 1."
-        )
+    notes = _depth_notes(alike=alike, together=together, own_area=own_area)
     if len(minutes_shown) < len(shown):
         of = len(run.asked.minutes)
         notes.append(f"Shown: {len(minutes_shown)} of {of} durations; all are in design_storms.csv.")
     lead = ("duration", "basin", f"area, {unit_text(run.area_unit)}", *(["reduction"] if own_area else []))
-    heads = (*lead, *(design_shown.often_head(f) for f in often), design_shown.often_head(often[-1]))
+    heads = (*lead, *(f.short_label for f in often), often[-1].short_label)
     return Table(
         caption=f"{point.name}: depth of the basins by duration and frequency",
         heads=heads,
         over=(
             ("", len(lead)),
             (f"depth, {unit_word(run.depth_unit)}", len(often)),
-            (f"volume, {unit_text(volume_unit)}", 1),
+            (f"volume, {unit_text(volume_unit_for(run.depth_unit))}", 1),
         ),
         align="tt" + "n" * (len(heads) - 2),
-        rows=rows,
+        rows=[
+            row
+            for minutes in minutes_shown
+            for row in _depth_rows(storms, point, minutes, alike=alike, together=together)
+        ],
         notes=(*notes, *(() if alike else _more_basins(point, "design_storms.csv"))),
     )
+
+
+def _depth_rows(storms: _Storms, point: PointOfInterest, minutes: int, *, alike: bool, together: bool) -> list[Row]:
+    """Return a row per basin with its volume at the rarest frequency, and one of all where they go together."""
+    run, often = storms.run, design_shown.frequencies(storms.run)
+    found = [storm for storm in (storms.any(point, frequency, minutes) for frequency in often) if storm is not None]
+    if not found:
+        return []
+    mm, m2 = depth_factor(run.depth_unit), area_factor(run.area_unit)
+    per = volume_factor(volume_unit_for(run.depth_unit))
+    areas = run.areas.basins.areas[list(point.rows)]
+    totals, rarest = np.array([storm.totals / mm for storm in found]), found[-1]
+
+    def row(name: str, *, area: float, depths: Floats, volume: float, reduction: str) -> Row:
+        return (
+            duration_text(minutes),
+            name,
+            area_text(area / m2),
+            *([reduction] if run.asked.design.own_area else []),
+            *(depth_text(float(depth), run.depth_unit) for depth in depths),
+            volume_text(volume / 1000 / per),
+        )
+
+    rows: list[Row] = []
+    if not alike:
+        rows += [
+            row(
+                point.basins[b],
+                area=float(areas[b]),
+                depths=totals[:, b],
+                volume=float(rarest.totals[b] * areas[b]),
+                reduction=number_text(float(rarest.reduction[b]), 4),
+            )
+            for b in _basins(rarest)
+        ]
+    if alike or together:
+        name = f"each of {len(point.basins)}" if alike else "mean by area"
+        whole = float(run.areas.basins.areas[point.row])
+        depths = totals[:, 0] if alike else totals @ areas / areas.sum()
+        volume = float(rarest.totals[0] * whole) if alike else float(rarest.totals @ areas)
+        rows.append(row(name, area=whole, depths=depths, volume=volume, reduction=DASH))
+    return rows
+
+
+def _depth_notes(*, alike: bool, together: bool, own_area: bool) -> list[str]:
+    if alike:
+        return ["Every basin has the areal depth to the point of interest; area and volume are those of all."]
+    if not together:
+        return []
+    more = "more than the areal depth to the point of interest: each basin is reduced by its own area."
+    return [f"The mean by area is {more if own_area else 'the areal depth to the point of interest in section 1.'}"]
 
 
 def _alike(storms: Iterable[DesignStorm]) -> bool:
@@ -198,7 +203,7 @@ def _peaks(storms: _Storms, point: PointOfInterest) -> Table:
                         depth_text(float(storm.totals[b]) / mm, run.depth_unit),
                         depth_text(most, run.depth_unit),
                         depth_text(most * 60 / storm.step, run.depth_unit),
-                        f"{elapsed_text((peak + 1) * storm.step)}",
+                        elapsed_text((peak + 1) * storm.step),
                     )
                 )
     more = len(rows) - _ROWS

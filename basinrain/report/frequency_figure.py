@@ -15,10 +15,9 @@ from matplotlib.ticker import FixedLocator, FuncFormatter, MaxNLocator, NullLoca
 
 from basinrain.design_record import RecordSource
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
-from basinrain.designstorm.extreme_values import GEV
 from basinrain.designstorm.goodness import plotting_variates
 from basinrain.designstorm.measures import duration_text
-from basinrain.designstorm.record_remarks import TITLES
+from basinrain.designstorm.record_remarks import SHORT_TITLES, TITLES
 from basinrain.report.figures import INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.words import depth_text, inline, unit_word
 from basinrain.units import depth_factor
@@ -143,9 +142,9 @@ def _figure(panels: Sequence[_Panel], taken: str, other: str, area: str, unit: s
     figure.legend(
         handles=[
             Line2D([], [], linestyle="none", label="annual maximum", **_MARK),
-            Line2D([], [], color="black", linewidth=1.4, label=f"{_word(taken)}, taken"),
+            Line2D([], [], color="black", linewidth=1.4, label=f"{SHORT_TITLES[taken]}, taken"),
             Patch(facecolor=_BAND, edgecolor=INK, linewidth=0.5, label="its 90 % interval"),
-            Line2D([], [], color=INK, linewidth=1.0, linestyle=LINES[1], label=_word(other)),
+            Line2D([], [], color=INK, linewidth=1.0, linestyle=LINES[1], label=SHORT_TITLES[other]),
         ],
         loc="upper left",
         bbox_to_anchor=(0.012, 1 - 0.21 / _HEIGHT),
@@ -155,10 +154,6 @@ def _figure(panels: Sequence[_Panel], taken: str, other: str, area: str, unit: s
         handlelength=2.8,
     )
     return figure
-
-
-def _word(distribution: str) -> str:
-    return "GEV" if distribution == GEV else TITLES[distribution]
 
 
 def _dress(axes: Any, panel: _Panel, width: float) -> None:  # noqa: ANN401 - matplotlib's axes
@@ -195,6 +190,6 @@ def _described(panels: Sequence[_Panel], taken: str, depth_unit: str) -> str:
         least, most = (depth_text(float(panel.ranked[k]), depth_unit) for k in (0, -1))
         parts.append(
             f"{panel.title}: {len(panel.ranked)} annual maxima from {least} to {most}; at the rarest "
-            f"frequency the 90 % interval of {_word(taken)} is {low} to {high}"
+            f"frequency the 90 % interval of {SHORT_TITLES[taken]} is {low} to {high}"
         )
     return f"{unit_word(depth_unit)}; {'; '.join(parts)}"

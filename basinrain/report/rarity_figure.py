@@ -12,12 +12,12 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.ticker import FixedLocator, NullLocator
-from scipy.optimize import isotonic_regression
 
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.found_frequency import odds
 from basinrain.designstorm.measures import duration_text
 from basinrain.designstorm.storm_depths import RarityRow, StormDepths, StormRarity
+from basinrain.report.design_depths_figure import apart
 from basinrain.report.duration_axis import depth_axis
 from basinrain.report.figures import HALO, INK, LINES, PAGE_WIDTH, Picture, figure_style, to_svg
 from basinrain.report.words import depth_text, inline, unit_word
@@ -162,8 +162,9 @@ def _draw_curves(axes: Axes, panel: _Panel, frequencies: Sequence[Frequency]) ->
             ends.append((float(minutes[-1]), float(depth[-1]), odds(frequency)))
     low, high = np.log(axes.get_ylim())
     points = axes.get_position().height * _HEIGHT * 72
-    wanted = np.array([(np.log(last) - low) / (high - low) * points for _, last, _ in ends])
-    for (longest, last, text), place in zip(ends, _spread(wanted, points), strict=True):
+    ends.sort(key=lambda end: end[1])
+    wanted = [float((np.log(last) - low) / (high - low) * points) for _, last, _ in ends]
+    for (longest, last, text), place in zip(ends, apart(wanted, gap=_APART, top=points), strict=True):
         axes.annotate(
             text,
             (longest, last),
@@ -175,16 +176,6 @@ def _draw_curves(axes: Axes, panel: _Panel, frequencies: Sequence[Frequency]) ->
             annotation_clip=False,
             arrowprops={"arrowstyle": "-", "color": _GREY, "linewidth": 0.5, "shrinkA": 0.5, "shrinkB": 0.5},
         )
-
-
-def _spread(wanted: Floats, points: float) -> Floats:
-    """Return places of labels, as near to the wanted ones as leaves them apart and inside."""
-    order = np.argsort(wanted, kind="stable")
-    steps = np.arange(len(order)) * _APART
-    place = np.asarray(isotonic_regression(wanted[order] - steps).x, dtype=np.float64) + steps
-    spread = np.empty(len(order))
-    spread[order] = np.minimum(place, points - steps[::-1])
-    return spread
 
 
 def _draw_storm(axes: Axes, panel: _Panel, mm: float) -> None:

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import TYPE_CHECKING, Any, Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
+import numpy.typing as npt
 
 from basinrain.writing.design_content import DesignContent
 from basinrain.writing.netcdf_parts import DEFLATE, opened, write_basins, write_words
@@ -15,6 +16,8 @@ if TYPE_CHECKING:
     import netCDF4
 
 __all__ = ["NAME", "write_netcdf"]
+
+Ints = npt.NDArray[np.int64]
 
 NAME: Final = "design_hyetographs.nc"
 """The file's name."""
@@ -117,7 +120,7 @@ def _write_times(file: netCDF4.Dataset, content: DesignContent) -> list[str]:
     return ["elapsed", "time"]
 
 
-def _write_time(file: netCDF4.Dataset, name: str, ends: Any, bounds: Any, facts: dict[str, str]) -> None:  # noqa: ANN401 - whole numbers
+def _write_time(file: netCDF4.Dataset, name: str, ends: Ints, bounds: Ints, facts: dict[str, str]) -> None:
     time = file.createVariable(name, "i4", ("step",))
     time.setncatts({"units": "minutes", **facts, "bounds": f"{name}_bounds"})
     time[:] = ends

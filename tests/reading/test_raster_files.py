@@ -279,6 +279,8 @@ def test_without_rasterio_the_extra_is_named(tmp_path: Path, monkeypatch: pytest
             "basinrain[raster]"
         )
     ]
+    with pytest.raises(ReadError, match="rasterio is not installed"):
+        read_cells(path, *ALL)
     assert read_cells(asc(tmp_path, HEAD + "1 2 3\n4 5 6\n"), *ALL).sum() == 21
 
 

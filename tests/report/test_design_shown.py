@@ -8,7 +8,7 @@ from hypothesis import strategies as st
 from report.design_run import bare, make_design, two_halves
 
 from basinrain.report import design_shown
-from basinrain.report.design_shown import areas_shown, left_out, spread
+from basinrain.report.design_shown import left_out, spread
 
 
 @given(items=st.lists(st.integers(), min_size=1, max_size=30, unique=True), most=st.integers(2, 12))
@@ -19,13 +19,6 @@ def test_of_many_the_ends_and_some_between_in_order(items: list[int], most: int)
     assert (kept[0], kept[-1]) == (items[0], items[-1])
     places = [items.index(item) for item in kept]
     assert places == sorted(set(places))
-
-
-def test_an_area_that_is_a_points_only_basin_is_not_shown_twice(tmp_path: Path) -> None:
-    """The point stands for it."""
-    points = [{"name": "ford", "basins": ["nw"]}, {"name": "mouth", "basins": ["nw", "ne"]}]
-    areas = make_design(tmp_path, design__point=points).areas
-    assert [areas.names[row] for row in areas_shown(areas)] == ["ford", "mouth", "ne"]
 
 
 def test_what_is_not_shown_is_counted(tmp_path: Path) -> None:

@@ -1,15 +1,12 @@
 from __future__ import annotations
 
 import numpy as np
-import pytest
-from hypothesis import given
-from hypothesis import strategies as st
 from rarity_cases import FREQUENCIES, NAN, UPPER, at_gauges, over_basins, quill, storm_depths
 from report.markup import svg_texts
 
 from basinrain.designstorm.exceedance import PARTIAL_DURATION, Frequency
 from basinrain.report.figures import Picture
-from basinrain.report.rarity_figure import _spread, rarity_picture
+from basinrain.report.rarity_figure import rarity_picture
 
 
 def drawn(picture: Picture | None) -> Picture:
@@ -116,16 +113,6 @@ def test_a_gap_in_the_table_is_no_zero() -> None:
     areal.ladder[0, 4, 2] = NAN
     texts = svg_texts(drawn(rarity_picture(quill(areal), "Upper", depth_unit="mm")).svg)
     assert "1 in 100" in texts
-
-
-@given(places=st.lists(st.floats(0.0, 200.0), min_size=1, max_size=8))
-def test_names_of_curves_do_not_touch(places: list[float]) -> None:
-    """They stay in order, 9 points apart, never above the panel; one that has room stays where it is."""
-    spread = np.sort(_spread(np.array(places), 200.0))
-    assert np.all(np.diff(spread) >= 9.0 - 1e-9)
-    assert spread[-1] <= 200.0 + 1e-9
-    if len(places) == 1:
-        assert spread[0] == pytest.approx(places[0])
 
 
 def test_a_repeat_is_identical() -> None:

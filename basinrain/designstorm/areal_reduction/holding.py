@@ -7,12 +7,7 @@ from dataclasses import dataclass, field
 import numpy as np
 import numpy.typing as npt
 
-from basinrain.designstorm.areal_reduction.limits import (
-    TOLERANCE,
-    Limits,
-    area_words,
-    joined,
-)
+from basinrain.designstorm.areal_reduction.limits import TOLERANCE, Limits, area_words, joined
 from basinrain.designstorm.exceedance import ANNUAL_MAXIMUM, Frequency
 from basinrain.designstorm.measures import duration_text
 from basinrain.errors import MethodError, Problems

@@ -19,6 +19,10 @@ def outside_region(method: ArealReduction, jurisdiction: str | None) -> bool:
     jurisdiction
         The region in the job's words, however its letters are cased; None where the job names none.
 
+    Returns
+    -------
+    bool
+
     Examples
     --------
     >>> uk = REDUCTIONS["keers-wescott"]

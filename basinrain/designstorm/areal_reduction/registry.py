@@ -25,6 +25,15 @@ REDUCTIONS: Final[Mapping[str, ArealReduction]] = MappingProxyType(
 def areal_reduction(name: str) -> ArealReduction:
     """Return the method of areal reduction called ``name``.
 
+    Parameters
+    ----------
+    name
+        One of :data:`REDUCTIONS`.
+
+    Returns
+    -------
+    ArealReduction
+
     Raises
     ------
     JobError

@@ -33,6 +33,15 @@ PATTERNS: Final[Mapping[str, Pattern]] = MappingProxyType(
 def pattern(name: str) -> Pattern:
     """Return the temporal pattern called ``name``.
 
+    Parameters
+    ----------
+    name
+        One of :data:`PATTERNS`.
+
+    Returns
+    -------
+    Pattern
+
     Raises
     ------
     JobError

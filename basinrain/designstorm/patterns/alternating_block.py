@@ -145,6 +145,7 @@ ALTERNATING_BLOCK: Final = Pattern(
     title="Alternating block",
     shape=alternating_block,
     options=("peak", "smooth"),
+    by_curve=True,
     source="Chow, V. T., Maidment, D. R. and Mays, L. W. (1988), Applied Hydrology, section 14.4",
     evidence="The method and its worked example (14.4.1) are from memory.",
 )

@@ -141,6 +141,7 @@ CHICAGO: Final = Pattern(
     title="Chicago",
     shape=chicago,
     options=("peak",),
+    by_curve=True,
     source="Keifer, C. J. and Chu, H. H. (1957), Synthetic storm pattern for drainage design, Journal of the "
     "Hydraulics Division, ASCE, 83(HY4)",
     evidence="The form of the intensity was seen for another equation of the same kind; its figures are derived.",

@@ -69,6 +69,7 @@ NESTED: Final = Pattern(
     title="Nested (balanced)",
     shape=nested,
     options=("peak", "smooth"),
+    by_curve=True,
     source="Common practice; NRCS, National Engineering Handbook, part 630, chapter 4, nests depths of all durations",
     evidence="The rule was seen in a public copy of NRCS material.",
 )

@@ -47,8 +47,8 @@ def nrcs(case: PatternCase, *, kind: str) -> Shaped:
     -----
     Types I, II and III have an ordinate every 0.1 h, type IA one every 0.5 h; between them the curve is straight. The
     greatest depths by duration of type II are those of NRCS National Engineering Handbook, part 630, chapter 4, figure
-    4-31. Of type II an older and coarser curve is also in use, with 0.357
-    at 11.75 h where this one has 0.3926; the two are never mixed here. Type III is symmetric only to 0.001.
+    4-31. Of type II an older and coarser curve is also in use, with 0.357 at 11.75 h where this one has 0.3926; the two
+    are never mixed here. Type III is symmetric only to 0.001.
 
     Examples
     --------

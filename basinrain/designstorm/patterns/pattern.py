@@ -78,6 +78,8 @@ class Pattern:
         Makes the hyetograph of a :class:`PatternCase`; further keyword arguments are the pattern's ``options``.
     options
         Names of the keyword arguments that ``shape`` takes.
+    by_curve
+        Whether it is made from depths of durations down to a step, not of a shape of its own.
     source
         Where it is published.
     evidence
@@ -88,5 +90,6 @@ class Pattern:
     title: str
     shape: Callable[..., Shaped]
     options: tuple[str, ...] = ()
+    by_curve: bool = False
     source: str
     evidence: str = ""

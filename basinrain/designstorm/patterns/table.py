@@ -8,11 +8,22 @@ from basinrain.designstorm.patterns.cumulative import fall_by
 from basinrain.designstorm.patterns.ordinates import Ordinates
 from basinrain.designstorm.patterns.pattern import Pattern, PatternCase, Shaped
 
-__all__ = ["TABLE", "Ordinates", "by_table"]
+__all__ = ["TABLE", "by_table"]
 
 
 def by_table(case: PatternCase, *, ordinates: Ordinates) -> Shaped:
     """Return the hyetograph of a depth that falls by a cumulative curve, straight between its ordinates.
+
+    Parameters
+    ----------
+    case
+        The depth that is to fall.
+    ordinates
+        The curve.
+
+    Returns
+    -------
+    Shaped
 
     Raises
     ------

@@ -15,6 +15,15 @@ __all__ = ["UNIFORM", "uniform"]
 def uniform(case: PatternCase) -> Shaped:
     """Return the hyetograph of a depth that falls evenly.
 
+    Parameters
+    ----------
+    case
+        The depth that is to fall.
+
+    Returns
+    -------
+    Shaped
+
     Raises
     ------
     MethodError

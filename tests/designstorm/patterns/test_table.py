@@ -8,7 +8,8 @@ import numpy as np
 import pytest
 from pattern_cases import pattern_case
 
-from basinrain.designstorm.patterns.table import Ordinates, by_table
+from basinrain.designstorm.patterns.ordinates import Ordinates
+from basinrain.designstorm.patterns.table import by_table
 from basinrain.errors import MethodError
 
 CURVE = Ordinates(np.array([0.0, 0.25, 0.5, 1.0]), np.array([0.0, 0.1, 0.7, 1.0]))
